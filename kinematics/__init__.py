@@ -1,0 +1,1 @@
+"""Kinematics of serial arms given by Denavit-Hartenberg tables: no HTTP, no files, no clocks."""

@@ -1,0 +1,179 @@
+"""The chain: where links, flange and tool are for given joint values, many postures at once.
+
+One walk ``X0 Z1 X1 ... Zn Xn`` serves both conventions; only the place where frame i is read off
+differs. Left out: velocities (jacobian.py).
+"""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from kinematics.arm import Arm
+from kinematics.errors import NotFinite, OutOfRange, WrongJointCount
+from kinematics.kernels.compiler import for_kernel
+from kinematics.kernels.forward import frames_and_axes, tool_poses
+from kinematics.table import Convention, FloatArray
+from kinematics.tolerances import LARGEST_MAGNITUDE
+
+
+@dataclass(frozen=True)
+class Walk:
+    """All that one walk along the chain meets, in the base frame; n rows.
+
+    Attributes
+    ----------
+    axis_direction : (..., n, 3), unit vector of each row's joint axis.
+    axis_point : (..., n, 3), origin of the frame the row turns from, a point on that axis.
+    link_in_base : (..., n + 1, 4, 4), frames 0 ... n of the table's convention.
+    flange_in_base : (..., 4, 4), the last frame of the table.
+    """
+
+    axis_direction: FloatArray
+    axis_point: FloatArray
+    link_in_base: FloatArray
+    flange_in_base: FloatArray
+
+    def of_posture(self, index: int) -> "Walk":
+        """Return one posture of a batch (count,), without the batch axis."""
+        return Walk(
+            self.axis_direction[index],
+            self.axis_point[index],
+            self.link_in_base[index],
+            self.flange_in_base[index],
+        )
+
+
+def checked_joint_values(arm: Arm, joint_values: ArrayLike) -> FloatArray:
+    """Return joint values as a float array (..., joints), or refuse them.
+
+    Raises
+    ------
+    WrongJointCount : the last axis is not one value per driven row.
+    NotFinite, OutOfRange : ``where`` leads to the first such value.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, Table
+    >>> checked_joint_values(Arm("empty", Table(Convention.STANDARD, ())), []).shape
+    (0,)
+    """
+    values = np.asarray(joint_values, dtype=np.float64)
+    given = values.shape[-1] if values.ndim else 0
+    if values.ndim == 0 or given != arm.joint_count:
+        raise WrongJointCount(
+            f"{given} joint values for an arm of {arm.joint_count} joints",
+            value=given,
+            way_out=f"give {arm.joint_count} values, one for each driven row in row order",
+        )
+    usable = np.abs(values) <= LARGEST_MAGNITUDE
+    if not usable.all():
+        where = tuple(int(index) for index in np.argwhere(~usable)[0])
+        value = float(values[where])
+        if np.isfinite(value):
+            raise OutOfRange(
+                f"joint value {value:.6g} is beyond 1e9 metres or radians",
+                where=where,
+                value=value,
+                way_out="check the units",
+            )
+        raise NotFinite(
+            f"joint value {value} is not a finite number",
+            where=where,
+            value=value,
+            way_out="give a number",
+        )
+    return values
+
+
+def walk(arm: Arm, joint_values: FloatArray) -> Walk:
+    """Walk the chain for postures (..., joints) and return every axis and frame in the base.
+
+    A table without rows gives the base itself.
+
+    Parameters
+    ----------
+    joint_values : (..., joints), radians or metres, as the controller shows them.
+
+    Source
+    ------
+    Product of link transforms: Craig, chapter 3; regrouped to ``X0 Z1 X1 ... Zn Xn`` here.
+
+    Examples
+    --------
+    >>> from kinematics.table import JointKind, Row, Table
+    >>> rows = (Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0),) * 2
+    >>> arm = Arm("planar", Table(Convention.STANDARD, rows))
+    >>> walk(arm, np.array([0.0, np.pi / 2])).flange_in_base[:3, 3].round(12)
+    array([0.4, 0.4, 0. ])
+    """
+    chain = arm.table.chain
+    batch, values = _as_rows(joint_values)
+    count, rows = len(values), len(arm.table.rows)
+    direction, point = np.empty((count, rows, 3)), np.empty((count, rows, 3))
+    frames = np.empty((count, rows + 2, 4, 4))
+    frames_and_axes(
+        values,
+        arm.drive_map.matrix,
+        chain.first,
+        chain.offset_terms,
+        chain.link_terms,
+        chain.revolute,
+        arm.table.convention is Convention.STANDARD,
+        direction,
+        point,
+        frames,
+    )
+    frames = frames.reshape(*batch, rows + 2, 4, 4)
+    return Walk(
+        direction.reshape(*batch, rows, 3),
+        point.reshape(*batch, rows, 3),
+        frames[..., :-1, :, :],
+        frames[..., -1, :, :],
+    )
+
+
+def tool_in_base(
+    arm: Arm,
+    joint_values: FloatArray,
+    tool_in_flange: FloatArray,
+    out: FloatArray | None = None,
+) -> FloatArray:
+    """Return the pose of the tool in the base, (..., 4, 4) for postures (..., joints).
+
+    Parameters
+    ----------
+    tool_in_flange : (4, 4).
+    out : where to write, (count, 4, 4) in C order, for a batch (count, joints); saves asking the
+        system for fresh memory, which takes longer than the kinematics.
+
+    Examples
+    --------
+    >>> from kinematics.table import Table
+    >>> arm = Arm("empty", Table(Convention.STANDARD, ()))
+    >>> bool((tool_in_base(arm, np.empty((3, 0)), np.eye(4)) == np.eye(4)).all())
+    True
+    """
+    chain = arm.table.chain
+    batch, values = _as_rows(joint_values)
+    poses = np.empty((len(values), 4, 4)) if out is None else out
+    tool_poses(
+        values,
+        arm.drive_map.matrix,
+        chain.first,
+        chain.offset_terms,
+        chain.link_terms,
+        chain.revolute,
+        for_kernel(tool_in_flange),
+        poses,
+    )
+    return poses.reshape(*batch, 4, 4)
+
+
+def _as_rows(joint_values: FloatArray) -> tuple[tuple[int, ...], FloatArray]:
+    """Return the batch shape, and the postures one under the other as the kernels take them."""
+    batch = joint_values.shape[:-1]
+    count = math.prod(batch)
+    rows = for_kernel(joint_values)
+    return batch, rows.reshape(count, joint_values.shape[-1])

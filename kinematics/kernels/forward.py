@@ -1,0 +1,207 @@
+"""The chain walked for many postures: tool poses, joint axes and link frames.
+
+Left out: what the numbers mean (kinematics/chain.py).
+"""
+
+from collections.abc import Callable
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.kernels.compiler import compiled
+from kinematics.kernels.sine_cosine import sine_cosine
+from kinematics.kernels.workspace import BLOCK, COSINE, POINT, SINE, SIZE, SLIDE, X, Y, Z
+from kinematics.number_checks import FloatArray
+
+Turn = Callable[[FloatArray, int, float, float, float], None]
+
+
+def _turn_of(entry: int) -> Turn:
+    """Return the kernel that carries one of the three entries of all axes over one row.
+
+    A factory, since offsets must be constants when the kernel is compiled.
+    """
+    x_at, y_at, z_at, point_at = (
+        X + entry * BLOCK,
+        Y + entry * BLOCK,
+        Z + entry * BLOCK,
+        POINT + entry * BLOCK,
+    )
+
+    @compiled
+    def turn(work: FloatArray, count: int, a: float, cos_alpha: float, sin_alpha: float) -> None:
+        for b in range(count):
+            cosine, sine = work[COSINE + b], work[SINE + b]
+            x, y, z = work[x_at + b], work[y_at + b], work[z_at + b]
+            turned_x = cosine * x + sine * y
+            turned_y = cosine * y - sine * x
+            work[point_at + b] = work[point_at + b] + work[SLIDE + b] * z + a * turned_x
+            work[x_at + b] = turned_x
+            work[y_at + b] = cos_alpha * turned_y + sin_alpha * z
+            work[z_at + b] = cos_alpha * z - sin_alpha * turned_y
+
+    return turn
+
+
+_turn_0, _turn_1, _turn_2 = _turn_of(0), _turn_of(1), _turn_of(2)
+
+
+@compiled
+def _start(work: FloatArray, count: int, first: FloatArray) -> None:
+    """Put the first constant transform into every posture of the block."""
+    for entry in range(3):
+        for b in range(count):
+            work[X + entry * BLOCK + b] = first[entry, 0]
+            work[Y + entry * BLOCK + b] = first[entry, 1]
+            work[Z + entry * BLOCK + b] = first[entry, 2]
+            work[POINT + entry * BLOCK + b] = first[entry, 3]
+
+
+@compiled
+def _drive(
+    work: FloatArray,
+    count: int,
+    joint_values: FloatArray,
+    begin: int,
+    shares: FloatArray,
+    offset: FloatArray,
+    revolute: bool,
+) -> None:
+    """Put a row's cosine, sine and slide into the block: its drive map's row times the joints."""
+    for b in range(count):
+        work[COSINE + b] = 0.0
+    for joint in range(shares.shape[0]):
+        share = shares[joint]
+        if share != 0.0:
+            for b in range(count):
+                work[COSINE + b] += share * joint_values[begin + b, joint]
+    if revolute:
+        sine_cosine(work, count, offset[0], offset[1])
+        for b in range(count):
+            work[SLIDE + b] = offset[2]
+    else:
+        for b in range(count):
+            work[SLIDE + b] = offset[2] + work[COSINE + b]
+            work[COSINE + b] = offset[0]
+            work[SINE + b] = offset[1]
+
+
+@compiled
+def _keep_frame(work: FloatArray, count: int, begin: int, frames: FloatArray, place: int) -> None:
+    """Write the current frame of every posture to ``frames[begin + b, place]`` (4, 4)."""
+    for b in range(count):
+        for entry in range(3):
+            at = entry * BLOCK + b
+            frames[begin + b, place, entry, 0] = work[X + at]
+            frames[begin + b, place, entry, 1] = work[Y + at]
+            frames[begin + b, place, entry, 2] = work[Z + at]
+            frames[begin + b, place, entry, 3] = work[POINT + at]
+        for entry in range(3):
+            frames[begin + b, place, 3, entry] = 0.0
+        frames[begin + b, place, 3, 3] = 1.0
+
+
+@compiled
+def tool_poses(
+    joint_values: FloatArray,
+    drive_matrix: FloatArray,
+    first: FloatArray,
+    offset: FloatArray,
+    link: FloatArray,
+    revolute: NDArray[np.bool_],
+    tool: FloatArray,
+    poses: FloatArray,
+) -> None:
+    """Write the tool's pose in the base for each posture to ``poses`` (count, 4, 4).
+
+    Parameters
+    ----------
+    joint_values : (count, joints); drive_matrix : (rows, joints).
+    first, tool : (4, 4), the constant transforms before the first row and after the last.
+    offset : (rows, 3), cosine and sine of theta, and d, at joint value 0.
+    link : (rows, 3), a, and cosine and sine of alpha, of the X that follows each Z.
+
+    Examples
+    --------
+    >>> poses = np.empty((1, 4, 4))
+    >>> one_row = np.array([[1.0, 0.0, 0.0]]), np.array([[0.5, 1.0, 0.0]]), np.array([True])
+    >>> tool_poses(np.array([[0.0]]), np.eye(1), np.eye(4), *one_row, np.eye(4), poses)
+    >>> poses[0, :3, 3]
+    array([0.5, 0. , 0. ])
+    """
+    work = np.empty(SIZE)
+    for begin in range(0, joint_values.shape[0], BLOCK):
+        count = min(BLOCK, joint_values.shape[0] - begin)
+        _start(work, count, first)
+        for row in range(offset.shape[0]):
+            _drive(work, count, joint_values, begin, drive_matrix[row], offset[row], revolute[row])
+            a, cos_alpha, sin_alpha = link[row, 0], link[row, 1], link[row, 2]
+            _turn_0(work, count, a, cos_alpha, sin_alpha)
+            _turn_1(work, count, a, cos_alpha, sin_alpha)
+            _turn_2(work, count, a, cos_alpha, sin_alpha)
+        for b in range(count):
+            pose = poses[begin + b]
+            for entry in range(3):
+                at = entry * BLOCK + b
+                x, y, z = work[X + at], work[Y + at], work[Z + at]
+                pose[entry, 0] = x * tool[0, 0] + y * tool[1, 0] + z * tool[2, 0]
+                pose[entry, 1] = x * tool[0, 1] + y * tool[1, 1] + z * tool[2, 1]
+                pose[entry, 2] = x * tool[0, 2] + y * tool[1, 2] + z * tool[2, 2]
+                moved = x * tool[0, 3] + y * tool[1, 3] + z * tool[2, 3]
+                pose[entry, 3] = moved + work[POINT + at]
+            pose[3, 0] = 0.0
+            pose[3, 1] = 0.0
+            pose[3, 2] = 0.0
+            pose[3, 3] = 1.0
+
+
+@compiled
+def frames_and_axes(
+    joint_values: FloatArray,
+    drive_matrix: FloatArray,
+    first: FloatArray,
+    offset: FloatArray,
+    link: FloatArray,
+    revolute: NDArray[np.bool_],
+    standard: bool,
+    direction: FloatArray,
+    point: FloatArray,
+    frames: FloatArray,
+) -> None:
+    """Write every axis and frame that the walk meets, in the base.
+
+    Parameters
+    ----------
+    standard : whether frame i is read off after X_i rather than before it.
+    direction, point : (count, rows, 3), of the axis each row turns about or slides along.
+    frames : (count, rows + 2, 4, 4): link frames 0 ... rows, then the flange.
+    """
+    work = np.empty(SIZE)
+    rows = offset.shape[0]
+    for begin in range(0, joint_values.shape[0], BLOCK):
+        count = min(BLOCK, joint_values.shape[0] - begin)
+        for b in range(count):
+            for i in range(4):
+                for j in range(4):
+                    frames[begin + b, 0, i, j] = 1.0 if i == j else 0.0
+        _start(work, count, first)
+        for row in range(rows):
+            for b in range(count):
+                for entry in range(3):
+                    direction[begin + b, row, entry] = work[Z + entry * BLOCK + b]
+                    point[begin + b, row, entry] = work[POINT + entry * BLOCK + b]
+            _drive(work, count, joint_values, begin, drive_matrix[row], offset[row], revolute[row])
+            if not standard:
+                _turn_0(work, count, 0.0, 1.0, 0.0)
+                _turn_1(work, count, 0.0, 1.0, 0.0)
+                _turn_2(work, count, 0.0, 1.0, 0.0)
+                _keep_frame(work, count, begin, frames, row + 1)
+                for b in range(count):
+                    work[COSINE + b], work[SINE + b], work[SLIDE + b] = 1.0, 0.0, 0.0
+            a, cos_alpha, sin_alpha = link[row, 0], link[row, 1], link[row, 2]
+            _turn_0(work, count, a, cos_alpha, sin_alpha)
+            _turn_1(work, count, a, cos_alpha, sin_alpha)
+            _turn_2(work, count, a, cos_alpha, sin_alpha)
+            if standard:
+                _keep_frame(work, count, begin, frames, row + 1)
+        _keep_frame(work, count, begin, frames, rows + 1)

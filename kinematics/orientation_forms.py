@@ -1,0 +1,321 @@
+"""The 28 ways to write an orientation: their names, both directions, and what input is accepted.
+
+Left out: the arithmetic (rotations, angle_triples, rigidity); units other than radians (the edge).
+
+A form is ``matrix``, ``quaternion-wxyz``, ``quaternion-xyzw``, ``rotation-vector``, or
+``<sequence>-<axes>``, e.g. ``zyx-current``. The angles of a triple stand in the order of the
+sequence; ``fixed`` turns are about the axes that stand still, ``current`` ones about the moving.
+"""
+
+from typing import Final
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from kinematics.angle_triples import (
+    AxisOrder,
+    angles_of,
+    distance_from_gimbal_lock,
+    rotation_from_angles,
+    sum_is_determined,
+)
+from kinematics.errors import InvalidOrientation, OutOfRange
+from kinematics.findings import ANGLES_NOT_UNIQUE, INPUT_REPAIRED, Finding
+from kinematics.number_checks import FloatArray, checked_numbers
+from kinematics.rigidity import checked_rotation_matrix
+from kinematics.rotations import (
+    quaternion_wxyz_of,
+    rotation_from_quaternion,
+    rotation_from_vector,
+    rotation_vector_of,
+)
+from kinematics.tolerances import (
+    LARGEST_MAGNITUDE,
+    LOCK_NOTICE,
+    QUATERNION_SILENT,
+    QUATERNION_ZERO,
+)
+
+SEQUENCES: Final = (
+    *("xyx", "xyz", "xzx", "xzy", "yxy", "yxz"),
+    *("yzx", "yzy", "zxy", "zxz", "zyx", "zyz"),
+)
+_ORDERS: Final = {
+    f"{sequence}-{axes}": AxisOrder(
+        ("xyz".index(sequence[0]), "xyz".index(sequence[1]), "xyz".index(sequence[2])),
+        about_fixed=axes == "fixed",
+    )
+    for sequence in SEQUENCES
+    for axes in ("fixed", "current")
+}
+TRIPLES: Final[tuple[str, ...]] = tuple(_ORDERS)
+FORMS: Final[tuple[str, ...]] = (
+    "matrix",
+    "quaternion-wxyz",
+    "quaternion-xyzw",
+    "rotation-vector",
+    *TRIPLES,
+)
+
+
+def shape_of(form: str) -> tuple[int, ...]:
+    """Return the shape of the values of one orientation.
+
+    Raises
+    ------
+    InvalidOrientation : an unknown form.
+
+    Examples
+    --------
+    >>> shape_of("quaternion-wxyz"), shape_of("matrix"), shape_of("zyz-fixed")
+    ((4,), (3, 3), (3,))
+    """
+    if form not in FORMS:
+        raise InvalidOrientation(
+            f"there is no orientation form {str(form)[:60]!r}",
+            where=("form",),
+            value=form,
+            way_out="use matrix, quaternion-wxyz, quaternion-xyzw, rotation-vector, or a sequence "
+            "with its axes such as xyz-fixed or zyx-current",
+        )
+    if form == "matrix":
+        return (3, 3)
+    return (4,) if form.startswith("quaternion") else (3,)
+
+
+def rotation_from(form: str, values: ArrayLike) -> FloatArray:
+    """Return the rotation that values in a form describe, for numbers already known to be good.
+
+    Nothing but form and shape is checked (see checked_rotation): a matrix is handed through,
+    quaternions are normalised, and rows without a meaning (zero quaternion, NaN) give NaN.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    values : (..., 3), (..., 4) or (..., 3, 3) as the form has it; angles in rad.
+
+    Returns
+    -------
+    rotation : (..., 3, 3), active, entries within a few 1e-16.
+
+    Raises
+    ------
+    InvalidOrientation : an unknown form, or values of another shape.
+
+    Source
+    ------
+    Craig, Introduction to Robotics, chapter 2, for fixed and current turns.
+
+    Examples
+    --------
+    >>> rotation_from("xyz-fixed", [0, 0, np.pi / 2]).round(12) + 0.0
+    array([[ 0., -1.,  0.],
+           [ 1.,  0.,  0.],
+           [ 0.,  0.,  1.]])
+    """
+    shape = shape_of(form)
+    numbers = np.asarray(values, dtype=np.float64)
+    if numbers.shape[-len(shape) :] != shape:
+        raise InvalidOrientation(
+            f"values of {form} have the shape {numbers.shape}; it must end in {shape}",
+            value=numbers.shape,
+            way_out="put batch axes first and the values of one orientation last",
+        )
+    if form == "matrix":
+        return numbers.copy()
+    if form == "quaternion-wxyz":
+        return rotation_from_quaternion(numbers)
+    if form == "quaternion-xyzw":
+        return rotation_from_quaternion(np.roll(numbers, 1, axis=-1))
+    if form == "rotation-vector":
+        return rotation_from_vector(numbers)
+    return rotation_from_angles(_ORDERS[form], numbers)
+
+
+def values_of(form: str, rotation: ArrayLike) -> FloatArray:
+    """Return a rotation in a form, in its one canonical range; never -0.0.
+
+    Triples: first and last in (-pi, pi], middle in [-pi/2, pi/2] (three different axes) or [0, pi];
+    within LOCK_EXACT of gimbal lock the last is 0. Quaternions: w >= 0, at a half turn the first
+    component that is not 0 is positive. Rotation vectors: length 0 to pi, the same sign rule.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    rotation : (..., 3, 3).
+
+    Returns
+    -------
+    values : (..., 3), (..., 4) or (..., 3, 3); angles in rad. rotation_from gives the same matrix
+        within 1e-12 (LOCK_EXACT; elsewhere within a few 1e-16).
+
+    Raises
+    ------
+    InvalidOrientation : an unknown form.
+
+    Source
+    ------
+    See quaternion_wxyz_of, rotation_vector_of and angle_triples.angles_of.
+
+    Examples
+    --------
+    >>> values_of("quaternion-xyzw", np.eye(3))
+    array([0., 0., 0., 1.])
+    """
+    shape_of(form)
+    if form == "matrix":
+        return np.asarray(rotation, dtype=np.float64) + 0.0
+    if form == "quaternion-wxyz":
+        return quaternion_wxyz_of(rotation)
+    if form == "quaternion-xyzw":
+        return np.roll(quaternion_wxyz_of(rotation), -1, axis=-1)
+    if form == "rotation-vector":
+        return rotation_vector_of(rotation)
+    return angles_of(_ORDERS[form], rotation)
+
+
+def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
+    """Return how far a triple's middle angle is from gimbal lock; infinite for other forms.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    rotation : (..., 3, 3).
+
+    Returns
+    -------
+    distance : (...), rad, 0 to pi/2, or +inf.
+
+    Raises
+    ------
+    InvalidOrientation : an unknown form.
+
+    Source
+    ------
+    See angle_triples.distance_from_gimbal_lock.
+
+    Examples
+    --------
+    >>> float(distance_from_lock("zyz-current", np.eye(3)))
+    0.0
+    >>> float(distance_from_lock("matrix", np.eye(3)))
+    inf
+    """
+    shape_of(form)
+    if form not in _ORDERS:
+        return np.full(np.shape(rotation)[:-2], np.inf)
+    return distance_from_gimbal_lock(_ORDERS[form], rotation)
+
+
+def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
+    """Return the finding that a triple's angles are not unique, or None if they are.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    rotation : (3, 3).
+
+    Returns
+    -------
+    finding : code 5, measure the distance from gimbal lock; the sentence names the combination of
+        first and last angle that stays determined, with its value in rad and in degrees.
+
+    Raises
+    ------
+    InvalidOrientation : an unknown form.
+
+    Source
+    ------
+    Diebel, Representing Attitude, 2006, singularities of the Euler angle sequences.
+
+    Examples
+    --------
+    >>> lock_finding("zyz-current", rotation_from("zyz-current", [0.2, 0.0, 0.3])).say[:58]
+    'at gimbal lock only first + last = 0.5 rad (28.6478898 deg'
+    """
+    distance = float(distance_from_lock(form, rotation))
+    if not distance <= LOCK_NOTICE:
+        return None
+    first, _, last = values_of(form, rotation)
+    is_sum = bool(sum_is_determined(_ORDERS[form], rotation))
+    value = float(first + last if is_sum else first - last)
+    value = float(np.arctan2(np.sin(value), np.cos(value)))
+    combination = "first + last" if is_sum else "first - last"
+    return Finding(
+        ANGLES_NOT_UNIQUE,
+        "angles-not-unique",
+        f"at gimbal lock only {combination} = {value:.9g} rad ({np.degrees(value):.9g} deg) of the "
+        f"{form} angles is determined; the middle angle is {{measure}} from it, a notice is given "
+        "within {threshold}",
+        distance,
+        LOCK_NOTICE,
+        "rad",
+    )
+
+
+def checked_rotation(form: str, values: object) -> tuple[FloatArray, tuple[Finding, ...]]:
+    """Return the rotation that one orientation from outside describes, and what was repaired.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    values : 3 or 4 numbers, or 3 rows of 3; angles in rad.
+
+    Returns
+    -------
+    rotation : (3, 3).
+    findings : code 6 where a quaternion was normalised (norm off by more than QUATERNION_SILENT) or
+        a matrix replaced by the nearest rotation (defect above RIGID_SILENT); else empty.
+
+    Raises
+    ------
+    InvalidOrientation : unknown form, wrong count, no number, quaternion of norm below 1e-6.
+    NotFinite : NaN or infinity.
+    OutOfRange : a number or the length of a rotation vector beyond 1e9.
+    NotRigid : a matrix with a defect above RIGID_REPAIRED or with a negative determinant.
+        ``where`` of each is relative to ``values``, except ``("form",)`` for an unknown form.
+
+    Source
+    ------
+    Definition of SO(3); nearest rotation by the polar factor.
+
+    Examples
+    --------
+    >>> rotation, findings = checked_rotation("quaternion-wxyz", [2, 0, 0, 0])
+    >>> findings[0].text()
+    'the norm of the quaternion is off 1 by 1, more than 1e-06; it was normalised'
+    """
+    numbers = checked_numbers(values, shape_of(form), f"an orientation in the form {form}")
+    if form == "matrix":
+        return checked_rotation_matrix(numbers)
+    if form.startswith("quaternion"):
+        return rotation_from(form, numbers), _quaternion_findings(numbers)
+    if form == "rotation-vector" and np.linalg.norm(numbers) > LARGEST_MAGNITUDE:
+        raise OutOfRange(
+            f"the rotation vector has the length {np.linalg.norm(numbers):.6g} rad, beyond 1e9 rad",
+            value=numbers.tolist(),
+            way_out="check the units; a rotation vector of at most pi says the same",
+        )
+    return rotation_from(form, numbers), ()
+
+
+def _quaternion_findings(quaternion: FloatArray) -> tuple[Finding, ...]:
+    norm = float(np.linalg.norm(quaternion))
+    if norm < QUATERNION_ZERO:
+        raise InvalidOrientation(
+            f"the quaternion has the norm {norm:.3g} and so no direction",
+            value=quaternion.tolist(),
+            way_out="give a quaternion of norm 1; no rotation is 1 for w and 0 for x, y, z",
+        )
+    if abs(norm - 1.0) <= QUATERNION_SILENT:
+        return ()
+    return (
+        Finding(
+            INPUT_REPAIRED,
+            "input-repaired",
+            "the norm of the quaternion is off 1 by {measure}, more than {threshold}; "
+            "it was normalised",
+            abs(norm - 1.0),
+            QUATERNION_SILENT,
+        ),
+    )

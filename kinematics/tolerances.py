@@ -1,0 +1,108 @@
+"""Every threshold of the core, each with its reason. Lengths in metres, angles in radians."""
+
+# --- input ---------------------------------------------------------------------------------
+LARGEST_MAGNITUDE = 1e9
+"""Metres or radians; beyond it a double no longer resolves a tenth of a micrometre."""
+
+SHORTEST_LENGTH = 1e-9
+"""Metres; a characteristic length below it is rounding left of 0, or a slip of units. Divided by
+one of 1e-300 m every number of a judgement would leave the range of doubles."""
+
+MOST_ROWS = 32
+"""Rows of a table: twice the longest chains in plants, and a bound for work per posture."""
+
+RIGID_SILENT = 1e-12
+"""max |R^T R - I| that products of doubles reach by themselves; not worth a word."""
+
+RIGID_REPAIRED = 5e-3
+"""max |R^T R - I| of matrices typed with three decimals; beyond it the typing is at fault."""
+
+QUATERNION_SILENT = 1e-6
+"""Deviation of the norm from 1 that six printed decimals leave."""
+
+QUATERNION_ZERO = 1e-6
+"""Norm below which a quaternion's direction is lost in its rounding."""
+
+# --- angle triples -------------------------------------------------------------------------
+LOCK_EXACT = 9e-13
+"""Radians from gimbal lock at which the last angle is put to 0. The rotation then changes by no
+more than this, so that all forms still return to the same matrix within 1e-12."""
+
+LOCK_NOTICE = 1e-7
+"""Radians from gimbal lock within which the middle angle prints as locked (four decimals of a
+degree are 1.7e-6 rad) while first and last swing with the last digits of the input."""
+
+# --- drive map -----------------------------------------------------------------------------
+DRIVE_MAP_SINGULAR = 1e-9
+"""Smallest over largest singular value of C over the driven rows: ratios are typed with some six
+digits, so a map this close to singular was meant to be singular."""
+
+# --- singularity (pure numbers: linear rows over L, prismatic columns times L) --------------
+SINGULAR = 1e-9
+"""Smallest singular value that counts as zero: a joint within about 1e-9 rad of the place, far
+below any encoder's step (1e-6 rad), and far above the rounding of the kernels (1e-15)."""
+
+NEAR_SINGULAR = 0.06
+"""Smallest singular value that counts as near, over that of the best sample posture: the joints
+must move some sixteen times faster than at their best for the same tool speed. A share, since L is
+the sum of all links: long arms reach 0.2 at best and gantries 0.9, and with one number for all
+either a fifth of an arm's postures would be near or a gantry never. A warning that is mostly on is
+worth nothing; the shares for each demonstration arm are in DEVELOPERS.md."""
+
+GENERIC_RANK = 1e-4
+"""Singular value, relative to the largest, that a motion must reach in some posture to count as
+one the arm was built for. Angles typed with four decimals (5e-5 rad) tilt parallel axes by less."""
+
+SAMPLE_POSTURES = 16
+"""Postures whose best rank counts as generic; fixed by the wire's contract."""
+
+# --- rotations -----------------------------------------------------------------------------
+HALF_TURN_NOISE = 2e-15
+"""Radians from a half turn that products of doubles leave by themselves. Within it -180 deg is read
+as 180 deg and a quaternion's w as 0, so that the sign of rounding noise decides no sign."""
+
+SHORT_VECTOR = 1e-10
+"""Length below which sin(x)/x and x/sin(x) are 1 to the last digit (the next term is x^2/6)."""
+
+AXES_PARALLEL = 1e-4
+"""Sine between axes that count as parallel: covers angles typed with four decimals of a radian."""
+
+AXES_MEET = 1e-6
+"""Distance, over L, of axes that count as meeting: lengths are typed to a micrometre at best."""
+
+KIND_AT = 1e-6
+"""Measure of a kind at a singular posture: joint values typed with six decimals of a degree."""
+
+KIND_NEARBY = 0.3
+"""Measure beyond which no geometric kind explains a near posture, and its joints name it."""
+
+KIND_TYPICAL = 1e-3
+"""Measure that a kind must reach in some posture; below it the arm is built that way."""
+
+SUPPORT_AT = 1e-5
+"""Share of a unit null motion by which a joint takes part; rounding leaves some 1e-15."""
+
+SUPPORT_NEAR = 0.05
+"""The same near a singular posture, where the weakest motion also stirs the other joints."""
+
+NUDGE = 1e-6
+"""Radians (or L) by which a joint is moved aside to tell a lost direction from a missing one; the
+direction found is off by no more than about this."""
+
+LOST_PART = 1e-3
+"""Share of the moving (or turning) part of a lost motion below which words leave it out."""
+
+NAMED_AXIS = 0.9998
+"""Cosine within which a direction is called by its axis: about one degree, as people see it."""
+
+UNMET_TWIST = 1e-9
+"""Share of a twist that may be left unmet without a word: far above rounding near regular
+postures (condition below 1e4), far below what a tool path would show."""
+
+LEVEL_VALUE = 1e-12
+"""Change of a singular value per radian (or L) below which it counts as level: rounding leaves
+1e-15, and the singular place would lie further off than any joint can turn."""
+
+TRAVEL_TIE = 1e-9
+"""Relative difference within which two joints' travels to a singular place are the same length,
+and the lower joint is named: rounding must not choose."""

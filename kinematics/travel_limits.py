@@ -1,0 +1,213 @@
+"""Where joint values stand within their travel: margins and findings.
+
+Limits bound the joint values of driven rows, the variable of passive ones, and sums of joint
+values. Beyond travel is a finding, never an error: the arm may be there on a displayed value.
+"""
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.arm import Arm
+from kinematics.findings import OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL, Finding
+from kinematics.table import FloatArray, Travel
+
+ARMS_KEPT = 512
+"""Arms whose limits are kept in the kernels' form, some 2 kB each."""
+
+
+@dataclass(frozen=True)
+class _Limit:
+    """A bounded linear form of the joint values: ``weights . q + constant`` within ``travel``."""
+
+    travel: Travel
+    weights: FloatArray
+    constant: float
+    unit: str
+    subject: str
+    joint: int | None
+    row: int | None
+    working: bool
+    reason: str = ""
+
+
+@dataclass(frozen=True)
+class _Limits:
+    """All limits of an arm, one under the other."""
+
+    each: tuple[_Limit, ...]
+    weights: FloatArray
+    constants: FloatArray
+    lower: FloatArray
+    upper: FloatArray
+    working: NDArray[np.bool_]
+    graver: NDArray[np.intp]
+    """For each working limit the travel limit of the same subject, -1 for none."""
+
+    def room(self, joint_values: FloatArray) -> FloatArray:
+        """Return the share of each travel that is left, (..., limits); negative outside."""
+        values = joint_values @ self.weights.T + self.constants
+        left: FloatArray = np.minimum(values - self.lower, self.upper - values)
+        return left / (self.upper - self.lower)
+
+
+def travel_margin(arm: Arm, joint_values: FloatArray) -> FloatArray:
+    """Return the smallest share of travel left, 0 to 0.5, negative outside; (...,).
+
+    Infinite where nothing bounds the arm. Working travel does not count: it is advice.
+
+    Parameters
+    ----------
+    joint_values : (..., joints), radians or metres.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, travel=Travel(-1.0, 1.0))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> travel_margin(arm, np.array([[0.5], [2.0]]))
+    array([ 0.25, -0.5 ])
+    """
+    limits = _limits_of(arm)
+    left = limits.room(joint_values)[..., ~limits.working]
+    margin: FloatArray = left.min(axis=-1, initial=np.inf)
+    return margin
+
+
+def beyond_travel(arm: Arm, joint_values: FloatArray) -> NDArray[np.bool_]:
+    """Return which postures exceed a travel or working travel limit, (...,).
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, working_travel=Travel(-1.0, 1.0))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> beyond_travel(arm, np.array([[0.5], [2.0]]))
+    array([False,  True])
+    """
+    return np.asarray((_limits_of(arm).room(joint_values) < 0.0).any(axis=-1))
+
+
+def limits_exceeded(
+    arm: Arm, joint_values: FloatArray
+) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+    """Return which postures exceed a working travel limit, and which a travel limit; (...,) each.
+
+    The kinds of ``travel_findings`` for many postures: working travel counts only where the same
+    subject is within its travel.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> bounds = {"travel": Travel(-2.0, 2.0), "working_travel": Travel(-1.0, 1.0)}
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, **bounds)
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> limits_exceeded(arm, np.array([[0.5], [1.5], [2.5]]))
+    (array([False,  True, False]), array([False, False,  True]))
+    """
+    limits = _limits_of(arm)
+    outside = limits.room(joint_values) < 0.0
+    none = np.zeros((*outside.shape[:-1], 1), dtype=bool)
+    outside_graver = np.concatenate([outside, none], axis=-1)[..., limits.graver]
+    working = (outside & limits.working & ~outside_graver).any(axis=-1)
+    return np.asarray(working), np.asarray(outside[..., ~limits.working].any(axis=-1))
+
+
+def travel_findings(arm: Arm, joint_values: FloatArray) -> tuple[Finding, ...]:
+    """Return a finding for each limit that one posture exceeds, naming joint, value and limit.
+
+    Parameters
+    ----------
+    joint_values : (joints,), radians or metres.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.PRISMATIC, 0.0, 0.0, 0.0, 0.0, travel=Travel(0.0, 0.5))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> travel_findings(arm, np.array([0.6]))[0].text()
+    'joint 1 is at 0.6 m, beyond its travel limit 0.5 m'
+    """
+    found: list[Finding] = []
+    beyond: set[str] = set()
+    for limit in _limits_of(arm).each:
+        value = float(joint_values @ limit.weights + limit.constant)
+        bound = limit.travel.lower if value < limit.travel.lower else limit.travel.upper
+        if limit.travel.lower <= value <= limit.travel.upper or limit.subject in beyond:
+            continue
+        reason = f" ({limit.reason})" if limit.reason else ""
+        kind = "working travel" if limit.working else "travel"
+        found.append(
+            Finding(
+                code=OUTSIDE_WORKING_TRAVEL if limit.working else OUTSIDE_TRAVEL,
+                name="outside-working-travel" if limit.working else "outside-travel",
+                say=f"{limit.subject} is at {{measure}}, beyond its {kind} limit "
+                f"{{threshold}}{reason.replace('{', '{{').replace('}', '}}')}",
+                measure=value,
+                threshold=bound,
+                unit=limit.unit,
+                joint=limit.joint,
+                row=limit.row,
+            )
+        )
+        beyond.add(limit.subject)
+    return tuple(found)
+
+
+@lru_cache(maxsize=ARMS_KEPT)
+def _limits_of(arm: Arm) -> _Limits:
+    each = tuple(_listed(arm))
+    travel = {limit.subject: place for place, limit in enumerate(each) if not limit.working}
+    return _Limits(
+        each=each,
+        weights=np.array([limit.weights for limit in each]).reshape(len(each), arm.joint_count),
+        constants=np.array([limit.constant for limit in each]),
+        lower=np.array([limit.travel.lower for limit in each]),
+        upper=np.array([limit.travel.upper for limit in each]),
+        working=np.array([limit.working for limit in each], dtype=bool),
+        graver=np.array(
+            [travel.get(limit.subject, -1) if limit.working else -1 for limit in each],
+            dtype=np.intp,
+        ),
+    )
+
+
+def _listed(arm: Arm) -> list[_Limit]:
+    """List the limits of the arm, travel before working travel so that the graver one is told."""
+    limits: list[_Limit] = []
+    driven = arm.drive_map.driven
+    for index, row in enumerate(arm.table.rows):
+        if row.passive:
+            weights, constant = arm.drive_map.matrix[index], row.offset
+            subject, joint = f"passive row {index + 1}", None
+        else:
+            joint = driven.index(index) + 1
+            weights, constant = np.eye(len(driven))[joint - 1], 0.0
+            subject = f"joint {joint}"
+        for travel, working in ((row.travel, False), (row.working_travel, True)):
+            if travel is not None:
+                reason = row.working_reason if working else ""
+                limits.append(
+                    _Limit(
+                        travel,
+                        weights,
+                        constant,
+                        row.unit,
+                        subject,
+                        joint,
+                        index + 1,
+                        working,
+                        reason,
+                    )
+                )
+    for number, combined in enumerate(arm.combined_travel, start=1):
+        weights = np.zeros(len(driven))
+        for row_number, ratio in combined.ratios.items():
+            weights[driven.index(row_number - 1)] = ratio
+        unit = arm.table.rows[next(iter(combined.ratios)) - 1].unit
+        terms = " + ".join(f"{ratio:g} x q{row}" for row, ratio in combined.ratios.items())
+        subject = f"combined travel {number} ({terms})"
+        limits.append(_Limit(combined.travel, weights, 0.0, unit, subject, None, None, False))
+    return limits
