@@ -1,0 +1,110 @@
+"""From a request about many postures to its answer: which format, and who works on it.
+
+Left out: the addresses (routes/poses.py).
+"""
+
+from functools import partial
+from time import time_ns
+
+from starlette.concurrency import run_in_threadpool
+from starlette.requests import Request
+from starlette.responses import Response
+
+from service.bulk.process import WorkerProcess
+from service.bulk.reading import Key, many_of_body, many_of_table, model_of
+from service.bulk.rendering import RENDERINGS, Rendering, Stamp, WorkedOut
+from service.bulk.threads import Threads
+from service.problems import Problem
+from service.wire.answers import PartsAnswer, json_problem
+from service.wire.body import media_type_of, parse_json, read_bytes
+from service.wire.formats import (
+    BODY_TYPES,
+    Format,
+    answer_format,
+    question_parameters,
+    table_tag,
+)
+
+# Parsed, worked on and printed in a few milliseconds; more is done in pieces.
+_SHORT_BYTES = 64 * 1024
+# Parsing holds the interpreter: beyond this size for longer than others should wait.
+_LONG_BYTES = 2_000_000
+
+
+class Bulk:
+    """The means of one service to answer long requests."""
+
+    def __init__(self) -> None:
+        self.threads = Threads()
+        self.worker = WorkerProcess()
+
+    def stop(self) -> None:
+        """End all work at once."""
+        self.threads.stop()
+        self.worker.stop()
+
+
+async def answer_many(request: Request, key: Key) -> Response:
+    """Answer a request about many postures, whatever its format.
+
+    Raises
+    ------
+    ServiceError, KinematicsError, pydantic.ValidationError : the request is refused.
+    """
+    known = BODY_TYPES.get(media_type_of(request))
+    parameters = question_parameters(request, known)
+    body_format = known or "json"
+    wanted = answer_format(parameters, request.headers.get("accept", ""), body_format)
+    stamp = Stamp(next(request.app.state.sequence), table_tag(parameters), time_ns() // 1_000_000)
+    raw = await read_bytes(request, *BODY_TYPES)
+    bulk, arms = request.app.state.bulk, request.app.state.arms
+    if body_format != "json":
+        read = partial(
+            many_of_table, arms, key, raw, body_format == "csv", parameters, wanted,
+            bulk.threads.refuse_if_stopping,
+        )  # fmt: skip
+        many = await bulk.threads.run(read)
+        return await _in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
+    if len(raw) > _LONG_BYTES:
+        worked_out = await bulk.worker.answer(arms, raw, key, wanted, stamp)
+        if isinstance(worked_out, Problem):
+            return json_problem(worked_out, request.state.request_id)
+        return _answer(worked_out)
+    return await _of_body(request, raw, key, wanted, stamp)
+
+
+async def _of_body(
+    request: Request, raw: bytes, key: Key, wanted: Format, stamp: Stamp
+) -> Response:
+    bulk, arms = request.app.state.bulk, request.app.state.arms
+    if len(raw) > _SHORT_BYTES:
+        body = await bulk.threads.run(partial(parse_json, raw))
+    else:
+        body = parse_json(raw)
+    request.state.json_body = body
+    asked = model_of(key, body)
+
+    def rendering() -> Rendering:
+        return RENDERINGS[wanted](many_of_body(arms, key, asked, wanted), stamp)
+
+    if len(raw) > _SHORT_BYTES:
+        return await _in_pieces(bulk.threads, await bulk.threads.run(rendering))
+    return await run_in_threadpool(lambda: _at_once(rendering()))
+
+
+def _at_once(rendering: Rendering) -> Response:
+    return _answer(rendering.outline().answer([rendering.piece(0, rendering.count)]))
+
+
+async def _in_pieces(threads: Threads, rendering: Rendering) -> Response:
+    pieces = await threads.pieces(rendering.piece, rendering.count, rendering.size)
+    return _answer(rendering.outline().answer(pieces))
+
+
+def _answer(worked_out: WorkedOut) -> Response:
+    is_json = worked_out.media_type.startswith("application/json")
+    return PartsAnswer(
+        worked_out.parts,
+        media_type=worked_out.media_type,
+        headers={} if is_json else {"X-Bad-Rows": str(worked_out.refused)},
+    )

@@ -1,0 +1,169 @@
+"""Units at the edge: metres and radians inside, the user's units outside, converted here alone.
+
+Nothing else in the service does arithmetic on poses, angles or lengths.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from kinematics.arm import Arm
+from kinematics.findings import Finding
+from kinematics.orientation_forms import TRIPLES, values_of
+from kinematics.table import FloatArray
+
+_METRES = {"mm": (1.0, 1000.0), "m": (1.0, 1.0), "in": (0.0254, 1.0)}
+"""Each length unit in metres, as a numerator and a denominator: 400 mm divided by 1000 is the
+double nearest to 0.4 m, which 400 times 0.001 need not be. The inch is exactly 25.4 mm
+(international yard and pound agreement, 1959)."""
+
+
+@dataclass(frozen=True)
+class Units:
+    """One of the wire's unit systems.
+
+    Examples
+    --------
+    >>> UNITS["mm-deg"].length_in(400.0), UNITS["mm-deg"].angle_out(np.pi)
+    (np.float64(0.4), np.float64(180.0))
+    """
+
+    name: str
+    length: str
+    angle: str
+
+    def length_in(self, value: float | FloatArray) -> FloatArray:
+        """Return metres."""
+        numerator, denominator = _METRES[self.length]
+        metres: FloatArray = np.multiply(value, numerator) / denominator
+        return metres
+
+    def length_out(self, metres: float | FloatArray) -> FloatArray:
+        """Return lengths in the user's unit."""
+        numerator, denominator = _METRES[self.length]
+        lengths: FloatArray = np.multiply(metres, denominator) / numerator
+        return lengths
+
+    def angle_in(self, value: float | FloatArray) -> FloatArray:
+        """Return radians."""
+        radians: FloatArray = np.deg2rad(value) if self.angle == "deg" else np.multiply(value, 1.0)
+        return radians
+
+    def angle_out(self, radians: float | FloatArray) -> FloatArray:
+        """Return angles in the user's unit."""
+        angles: FloatArray = (
+            np.rad2deg(radians) if self.angle == "deg" else np.multiply(radians, 1.0)
+        )
+        return angles
+
+    def value_in(self, value: float, unit: str) -> float:
+        """Return a joint value or bound in SI; ``unit`` is its SI unit."""
+        return float(self.angle_in(value) if unit == "rad" else self.length_in(value))
+
+    def value_out(self, value: float, unit: str) -> float:
+        """Return an SI value in the user's unit; a pure number stays as it is."""
+        if unit == "rad":
+            return float(self.angle_out(value))
+        return float(self.length_out(value)) if unit == "m" else float(value)
+
+    def shortest_out(self, value: float, unit: str) -> float:
+        """Return an SI value in the user's unit with the fewest digits that lead back to it.
+
+        A table that is rewritten must show the numbers its owner typed, 37.3 and not
+        37.300000000000004.
+
+        Examples
+        --------
+        >>> units = UNITS["mm-deg"]
+        >>> units.shortest_out(units.value_in(37.3, "rad"), "rad")
+        37.3
+        """
+        shown = self.value_out(value, unit)
+        for digits in (12, 15, 16):
+            shorter = float(f"{shown:.{digits}g}")
+            if self.value_in(shorter, unit) == value:
+                return shorter
+        return shown
+
+    def unit_out(self, unit: str) -> str:
+        """Return the user's name for an SI unit."""
+        return {"rad": self.angle, "m": self.length}.get(unit, unit)
+
+
+UNITS = {
+    "mm-deg": Units("mm-deg", "mm", "deg"),
+    "m-rad": Units("m-rad", "m", "rad"),
+    "in-deg": Units("in-deg", "in", "deg"),
+}
+
+
+def joint_values_in(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
+    """Return joint values, speeds or steps (..., joints) in SI."""
+    return np.where(arm.revolute_joints, units.angle_in(values), units.length_in(values))
+
+
+def joint_values_out(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
+    """Return joint values, speeds or steps (..., joints) in the user's units."""
+    return np.where(arm.revolute_joints, units.angle_out(values), units.length_out(values))
+
+
+def twists_in(units: Units, twists: FloatArray) -> FloatArray:
+    """Return twists (..., 6) in m/s and rad/s."""
+    return np.concatenate(
+        [units.length_in(twists[..., :3]), units.angle_in(twists[..., 3:])], axis=-1
+    )
+
+
+def twists_out(units: Units, twists: FloatArray) -> FloatArray:
+    """Return twists (..., 6) in the user's units per second."""
+    return np.concatenate(
+        [units.length_out(twists[..., :3]), units.angle_out(twists[..., 3:])], axis=-1
+    )
+
+
+def jacobians_out(arm: Arm, units: Units, of_joints: FloatArray) -> FloatArray:
+    """Return Jacobians (..., 6, joints) in the user's tool units per joint unit."""
+    per_joint = joint_values_in(arm, units, np.ones(arm.joint_count))
+    jacobians: FloatArray = of_joints * (twists_out(units, np.ones(6))[:, None] * per_joint)
+    return jacobians
+
+
+def orientation_in(units: Units, form: str, values: FloatArray) -> FloatArray:
+    """Return the values of an orientation form in SI: triples and rotation vectors are angles."""
+    return units.angle_in(values) if _is_angular(form) else values
+
+
+def orientation_out(units: Units, form: str, rotation: FloatArray) -> FloatArray:
+    """Return the values of rotations (..., 3, 3) in a form and the user's units."""
+    values = values_of(form, rotation)
+    return units.angle_out(values) if _is_angular(form) else values
+
+
+def finding_out(units: Units, finding: Finding) -> dict[str, object]:
+    """Return a finding as answered, its sentence and numbers in the user's units."""
+    unit = units.unit_out(finding.unit)
+    measure = units.shortest_out(finding.measure, finding.unit)
+    threshold = units.shortest_out(finding.threshold, finding.unit)
+    shown = f" {unit}" if unit else ""
+    answer: dict[str, object] = {
+        "code": finding.code,
+        "name": finding.name,
+        "say": finding.say.format(
+            measure=f"{measure:.6g}{shown}",
+            threshold=f"{threshold:.6g}{shown}",
+            joint=finding.joint,
+            row=finding.row,
+        ),
+        "measure": measure,
+        "threshold": threshold,
+        "unit": unit,
+    }
+    if finding.joint is not None:
+        answer["joint"] = finding.joint
+    if finding.row is not None:
+        answer["row"] = finding.row
+    return answer
+
+
+def _is_angular(form: str) -> bool:
+    return form in TRIPLES or form == "rotation-vector"

@@ -1,0 +1,219 @@
+"""What a question about postures rests on: which arm, tool, frame, units and task it means.
+
+Left out: the joint values (joint_rows.py) and the answers (poses.py, jacobians.py).
+"""
+
+from collections.abc import Hashable
+from dataclasses import dataclass, field
+from functools import lru_cache
+from typing import Any
+
+from kinematics.arm import FLANGE, Arm
+from kinematics.errors import KinematicsError, UnknownFrame
+from kinematics.findings import Finding
+from kinematics.singular_kinds import Anatomy, anatomy_of
+from kinematics.table import FloatArray
+from kinematics.task_space import TaskSpace, rows_of, task_space
+from service.convert import UNITS, Units
+from service.operations.arms import Arms, StoredArm
+from service.problems import ServiceError
+from service.wire import models
+from service.wire.arms import ReadArm, read_arm_model
+from service.wire.poses import read_pose
+
+# One entry per arm, tool and task in use, some 5 kB each.
+PREPARED_KEPT = 512
+TOOL_AXES = "tool"
+
+
+@dataclass(frozen=True)
+class MeantArm:
+    """The arm a request means; ``revision`` is None for one that came whole in the request."""
+
+    read: ReadArm
+    revision: int | None
+    repaired: tuple[Finding, ...] = ()
+
+    @property
+    def arm(self) -> Arm:
+        """The arm itself."""
+        return self.read.arm
+
+    def identity(self) -> dict[str, object]:
+        """Return what leads back from an answer to the exact numbers it came from."""
+        digests = self.read.digests
+        return {
+            "name": self.read.arm.name,
+            "revision": self.revision,
+            "digest": digests.digest,
+            "table_digest": digests.table_digest,
+            "setup_digest": digests.setup_digest,
+        }
+
+
+@dataclass(frozen=True)
+class MeantTool:
+    """The tool a request means: its name, or its pose as it was given."""
+
+    shown: str | dict[str, Any]
+    tool_in_flange: FloatArray
+    number: int | None
+    repaired: tuple[Finding, ...] = ()
+
+
+@dataclass(frozen=True)
+class Question:
+    """A question about postures of one arm, all but the joint values."""
+
+    meant: MeantArm
+    units: Units
+    tool: MeantTool
+    frame: str
+    form: str
+    task: Hashable
+    repaired: tuple[Finding, ...] = field(default=())
+
+    @property
+    def arm(self) -> Arm:
+        """The arm asked about."""
+        return self.meant.arm
+
+    @property
+    def moves_with_arm(self) -> bool:
+        """Whether the frame's axes turn with the joints (Jacobians only)."""
+        return self.frame in (FLANGE, TOOL_AXES)
+
+    def prepared(self) -> tuple[TaskSpace, Anatomy] | None:
+        """Return what singularity is judged by; None for an arm without joints."""
+        digests = self.meant.read.digests
+        key = (digests.table_digest, digests.setup_digest)
+        return _prepared(_Key(key, self.task, self.arm, self.tool.tool_in_flange))
+
+
+@dataclass(frozen=True, eq=False)
+class _Key:
+    """Arm and tool, told apart by digests and the tool's numbers."""
+
+    digests: tuple[str, str]
+    task: Hashable
+    arm: Arm
+    tool_in_flange: FloatArray
+
+    def _identity(self) -> tuple[object, ...]:
+        return (*self.digests, self.task, self.tool_in_flange.tobytes())
+
+    def __hash__(self) -> int:
+        return hash(self._identity())
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, _Key) and self._identity() == other._identity()
+
+
+@lru_cache(maxsize=PREPARED_KEPT)
+def _prepared(key: _Key) -> tuple[TaskSpace, Anatomy] | None:
+    task = list(key.task) if isinstance(key.task, tuple) else key.task
+    assert task is None or isinstance(task, str | list)
+    space = task_space(key.arm, key.tool_in_flange, task)
+    return None if space is None else (space, anatomy_of(key.arm, space, key.tool_in_flange))
+
+
+def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm) -> MeantArm:
+    """Return the arm a body means: by name, by name and revision, or given whole.
+
+    Raises
+    ------
+    UnknownArm, UnknownRevision : with status 422, since the address itself exists.
+    ServiceError, KinematicsError : the arm given whole is refused.
+    """
+    if isinstance(asked, models.Arm):
+        try:
+            read = read_arm_model(asked)
+        except KinematicsError as error:
+            raise error.below("arm") from None
+        except ServiceError as error:
+            error.where = ("arm", *error.where)
+            raise
+        return MeantArm(read, None, read.findings)
+    stored = stored_arm(arms, asked)
+    return MeantArm(stored.read, stored.record.revision)
+
+
+def stored_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision) -> StoredArm[ReadArm]:
+    """Return the stored arm a body names.
+
+    Raises
+    ------
+    UnknownArm, UnknownRevision : with status 422, since the address itself exists.
+    """
+    name, revision = (asked, None) if isinstance(asked, str) else (asked.name, asked.revision)
+    try:
+        return arms.get(name, revision)
+    except ServiceError as error:
+        if error.code in ("unknown-arm", "unknown-revision"):
+            error.status, error.location = 422, "body"
+            error.where = ("arm",) if isinstance(asked, str) else ("arm", "name")
+            if error.code == "unknown-revision":
+                error.where = ("arm", "revision")
+        raise
+
+
+def meant_tool(arm: Arm, units: Units, asked: str | int | models.Pose | None) -> MeantTool:
+    """Return the tool a request means, by name, number, pose, or the arm's default.
+
+    Raises
+    ------
+    UnknownTool, ToolNotSaid : by name or number.
+    ServiceError, KinematicsError : a pose that cannot be used.
+    """
+    if isinstance(asked, models.Pose):
+        tool_in_flange, repaired = read_pose(asked, units, ("tool",))
+        shown = asked.model_dump(mode="json", exclude_none=True)
+        return MeantTool(shown, tool_in_flange, None, repaired)
+    name = arm.tool_name(asked)
+    number = arm.tools[name].number if name in arm.tools else None
+    return MeantTool(name, arm.tool_in_flange(name), number)
+
+
+def meant_units(meant: MeantArm, asked: str | None) -> Units:
+    """Return the units asked for, or else the arm's own."""
+    return meant.read.units if asked is None else UNITS[asked]
+
+
+def meant_frame(arm: Arm, asked: str | int | None, *, moving: bool = False) -> str:
+    """Return the name of the frame asked for; ``moving`` allows flange and tool axes too.
+
+    Raises
+    ------
+    UnknownFrame
+    """
+    if asked in (FLANGE, TOOL_AXES):
+        if moving:
+            return str(asked)
+        raise UnknownFrame(
+            f"a pose cannot be given in {asked!r}, which moves with the arm",
+            where=("frame",),
+            value=asked,
+            way_out=f"one of: {', '.join(['base', 'world', *arm.frames])}",
+        )
+    return arm.frame_name(asked)
+
+
+def question_of(
+    arms: Arms[ReadArm], asked: models.PosesRequest, form: str, *, moving: bool = False
+) -> Question:
+    """Return the question a body asks."""
+    meant = meant_arm(arms, asked.arm)
+    units = meant_units(meant, asked.units)
+    tool = meant_tool(meant.arm, units, asked.tool)
+    if asked.task is not None:
+        # Also where nobody asks for a judgement: a question is refused for what it says.
+        rows_of(asked.task)
+    return Question(
+        meant=meant,
+        units=units,
+        tool=tool,
+        frame=meant_frame(meant.arm, asked.frame, moving=moving),
+        form=form,
+        task=tuple(asked.task) if isinstance(asked.task, list) else asked.task,
+        repaired=meant.repaired + tool.repaired,
+    )

@@ -1,0 +1,168 @@
+"""One posture of a stored arm, as a controller asks for it.
+
+Left out: query strings and flat answers (wire).
+"""
+
+from collections.abc import Container, Sequence
+from dataclasses import replace
+
+from kinematics.arm import Arm
+from kinematics.errors import KinematicsError
+from kinematics.task_space import rows_of
+from kinematics.travel_limits import travel_margin
+from service.convert import Units
+from service.operations.arms import Arms
+from service.operations.jacobians import Wanted, jacobian_items
+from service.operations.joint_rows import JointRows, read_joint_rows
+from service.operations.poses import head_of, pose_items
+from service.operations.questions import (
+    MeantArm,
+    MeantTool,
+    Question,
+    meant_frame,
+    meant_tool,
+    meant_units,
+)
+from service.problems import DigestDiffers, ServiceError, UnknownRevision
+from service.wire.arms import ReadArm
+from service.wire.single import TOOL_PARAMETERS, SingleAnswer, SingleQuestion
+
+
+def single_pose(arms: Arms[ReadArm], asked: SingleQuestion) -> SingleAnswer:
+    """Return the tool pose of one posture."""
+    question, rows = _question(arms, asked, moving=False)
+    item = pose_items(question, rows, singularity=True, links=False)[0]
+    return _answer(question, rows, item)
+
+
+def single_jacobian(arms: Arms[ReadArm], asked: SingleQuestion) -> SingleAnswer:
+    """Return the Jacobian of one posture."""
+    question, rows = _question(arms, asked, moving=True)
+    item = jacobian_items(question, rows, Wanted(), singularity=True)[0]
+    return _answer(question, rows, item)
+
+
+def joint_count(arms: Arms[ReadArm], name: str) -> int:
+    """Return how many joint values an arm takes, 0 where it cannot be told."""
+    try:
+        return arms.get(name).read.arm.joint_count
+    except ServiceError:
+        return 0
+
+
+def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) -> Question:
+    """Return the question of a query string, all but the joint values.
+
+    Raises
+    ------
+    ServiceError, KinematicsError : what ``asked`` says cannot be used.
+    """
+    meant = _meant_arm(arms, asked)
+    _check_expected(asked, meant.read.digests.digest)
+    _check_task(asked)
+    arm, units = meant.arm, meant_units(meant, asked.units)
+    tool = _meant_tool(arm, units, asked)
+    return Question(
+        meant=meant,
+        units=units,
+        tool=tool,
+        frame=meant_frame(arm, _name_or_number(asked.frame, arm.frames), moving=moving),
+        form=asked.form,
+        task=tuple(asked.task) if isinstance(asked.task, list) else asked.task,
+        repaired=tool.repaired,
+    )
+
+
+def _question(
+    arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool
+) -> tuple[Question, JointRows]:
+    question = question_asked(arms, asked, moving=moving)
+    try:
+        rows = read_joint_rows(question.arm, question.units, [list(asked.joints)], singularity=True)
+    except ServiceError as error:
+        error.errors = tuple(
+            replace(
+                detail,
+                where=(_parameter(asked, detail.where),),
+                location="query",
+            )
+            for detail in error.errors
+        )
+        raise
+    return question, rows
+
+
+def _answer(question: Question, rows: JointRows, item: dict[str, object]) -> SingleAnswer:
+    frame = question.arm.frames.get(question.frame)
+    findings = item["findings"]
+    assert isinstance(findings, list)
+    return SingleAnswer(
+        head=head_of(question),
+        item=item,
+        margin=float(travel_margin(question.arm, rows.values)[0]),
+        tool_number=question.tool.number or 0,
+        frame_number=(frame.number or 0) if frame is not None else 0,
+        codes=frozenset(finding["code"] for finding in findings),
+    )
+
+
+def _meant_arm(arms: Arms[ReadArm], asked: SingleQuestion) -> MeantArm:
+    try:
+        stored = arms.get(asked.arm, asked.revision)
+    except UnknownRevision as error:
+        error.where, error.location = ("revision",), "query"
+        raise
+    return MeantArm(stored.read, stored.record.revision)
+
+
+def _meant_tool(arm: Arm, units: Units, asked: SingleQuestion) -> MeantTool:
+    if asked.tool_pose is None:
+        return meant_tool(arm, units, _name_or_number(asked.tool, arm.tools))
+    try:
+        return meant_tool(arm, units, asked.tool_pose)
+    except KinematicsError as error:
+        pose = asked.tool_pose
+        assert pose.position is not None
+        assert pose.orientation is not None
+        given = dict(zip(TOOL_PARAMETERS, [*pose.position, *pose.orientation.values], strict=True))
+        turning = 3 if "orientation" in error.where else 0
+        axis = error.where[-1]
+        name = TOOL_PARAMETERS[turning + axis if isinstance(axis, int) else turning]
+        error.where, error.value = (name,), given[name]
+        raise
+
+
+def _check_task(asked: SingleQuestion) -> None:
+    if asked.task is None:
+        return
+    try:
+        rows_of(asked.task)
+    except KinematicsError as error:
+        error.where = ("task",)
+        raise
+
+
+def _check_expected(asked: SingleQuestion, digest: str) -> None:
+    if asked.expect is not None and asked.expect != digest:
+        raise DigestDiffers(
+            f"the arm's digest is {digest}, not {asked.expect}",
+            where=("expect",),
+            location="query",
+            value=asked.expect,
+            way_out="read the arm anew and check what was changed",
+        )
+
+
+def _name_or_number(asked: str | None, known: Container[str]) -> str | int | None:
+    """Return a number where digits are asked that are no name: names may be digits too."""
+    if asked is not None and asked.isascii() and asked.isdigit() and asked not in known:
+        return int(asked[:9])
+    return asked
+
+
+def _parameter(asked: SingleQuestion, where: Sequence[str | int]) -> str:
+    """Return the query parameter that holds the joint value at ``("joints", 0, index)``."""
+    index = where[2] if len(where) > 2 else 0
+    if isinstance(index, int) and index < len(asked.joint_names) and len(where) > 2:
+        return asked.joint_names[index]
+    return "q"

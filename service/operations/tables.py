@@ -1,0 +1,48 @@
+"""The same arm in the other convention, as a document that can be stored.
+
+Left out: the regrouping itself (the core's).
+"""
+
+from kinematics.arm import BASE
+from kinematics.findings import FINE, Finding
+from kinematics.table import Convention
+from kinematics.table_conversion import converted
+from service.convert import finding_out
+from service.operations.arms import Arms
+from service.operations.questions import meant_arm
+from service.wire import models
+from service.wire.arms import ReadArm, arm_document
+
+TEXTS = ("title", "status", "notes")
+
+
+def converted_table(arms: Arms[ReadArm], asked: models.ConversionRequest) -> dict[str, object]:
+    """Return the arm in the convention asked for, and what moved to make it so."""
+    meant = meant_arm(arms, asked.arm)
+    units = meant.read.units
+    other = converted(meant.arm, Convention(asked.to))
+    texts = {key: meant.read.document[key] for key in TEXTS if key in meant.read.document}
+    findings = [*meant.repaired, *_moved(meant.arm.table.convention, Convention(asked.to))]
+    return {
+        "arm": arm_document(other, units, texts),
+        "units": units.name,
+        "findings": [finding_out(units, finding) for finding in findings],
+    }
+
+
+def _moved(before: Convention, after: Convention) -> list[Finding]:
+    if before is after:
+        return []
+    if after is Convention.MODIFIED:
+        name = "flange-moved"
+        say = (
+            "the flange now sits at the last row's joint axis; every tool took in the last row's "
+            "a and alpha, and the former flange is kept as a tool where it differs"
+        )
+    else:
+        name = f"{BASE}-moved"
+        say = (
+            "the base took in the first row's a and alpha: poses in the base change where they "
+            "are not 0, poses in the world do not"
+        )
+    return [Finding(FINE, name, say, 0.0, 0.0)]

@@ -1,0 +1,44 @@
+"""The two tables behind the store: every revision ever written, and one head for each name.
+
+Left out: how a database gets them (``migrations``); a test holds both to the same columns.
+"""
+
+import sqlalchemy as sa
+
+METADATA = sa.MetaData()
+
+# PostgreSQL would sort by the locale of the database, where "-" does not count: pages of names
+# come in the order of their bytes on every database.
+NAME = sa.String(48).with_variant(sa.String(48, collation="C"), "postgresql")
+
+REVISIONS = sa.Table(
+    "arm_revisions",
+    METADATA,
+    sa.Column("name", NAME, primary_key=True),
+    sa.Column("revision", sa.Integer, primary_key=True, autoincrement=False),
+    # JSON as text: a JSON column of a database may print numbers its own way.
+    sa.Column("document", sa.Text, nullable=False),
+    sa.Column("table_digest", sa.String(64), nullable=False),
+    sa.Column("setup_digest", sa.String(64), nullable=False),
+    sa.Column("digest", sa.String(8), nullable=False),
+    sa.Column("author", sa.Text, nullable=False),
+    sa.Column("reason", sa.Text, nullable=False),
+    # Unix milliseconds: the same number on every database, and no time zone to lose.
+    sa.Column("created_at_ms", sa.BigInteger, nullable=False),
+    sa.Column("hidden_by", sa.Text),
+    sa.Column("hidden_reason", sa.Text),
+    sa.Column("hidden_at_ms", sa.BigInteger),
+)
+
+HEADS = sa.Table(
+    "arm_heads",
+    METADATA,
+    sa.Column("name", NAME, primary_key=True),
+    sa.Column("revision", sa.Integer, nullable=False),
+    sa.Column("hidden", sa.Boolean, nullable=False),
+    sa.ForeignKeyConstraint(
+        ["name", "revision"],
+        ["arm_revisions.name", "arm_revisions.revision"],
+        name="arm_heads_revision",
+    ),
+)

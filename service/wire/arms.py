@@ -1,0 +1,275 @@
+"""Arms between the wire and the core: a document in, a checked arm and its digests out, and back.
+
+Left out: storage, and which arm a request means (operations).
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from kinematics.arm import (
+    Arm,
+    CombinedTravel,
+    NamedFrame,
+    SingularityThresholds,
+    Tool,
+)
+from kinematics.digests import Digests, digests_of
+from kinematics.findings import Finding
+from kinematics.table import Convention, Coupling, FloatArray, JointKind, Row, Table, Travel
+from kinematics.tolerances import MOST_ROWS, SINGULAR
+from service.convert import UNITS, Units
+from service.problems import NotAvailable, TooLarge, UnusableValue
+from service.wire import models
+from service.wire.poses import pose_answer, read_pose
+
+RESERVED = frozenset(
+    {"base", "world", "flange", "tool", *(f"link-{number}" for number in range(MOST_ROWS + 1))}
+)
+
+
+@dataclass(frozen=True)
+class ReadArm:
+    """An arm read from a document: checked, with what was repaired, and its digests."""
+
+    arm: Arm
+    units: Units
+    findings: tuple[Finding, ...]
+    document: dict[str, Any]
+    digests: Digests
+
+
+def read_arm(document: object) -> ReadArm:
+    """Return the arm a document describes.
+
+    Raises
+    ------
+    pydantic.ValidationError : shapes and types.
+    ServiceError, KinematicsError : values; ``where`` leads from the document's root.
+    """
+    return read_arm_model(models.Arm.model_validate(document))
+
+
+def read_arm_model(given: models.Arm) -> ReadArm:
+    """Return the arm of a document whose shapes and types are already checked."""
+    _refuse_what_is_not_there(given)
+    units = UNITS[given.units]
+    found: list[Finding] = []
+
+    def placed(pose: models.Pose, *where: str | int) -> FloatArray:
+        x_in_y, findings = read_pose(pose, units, where)
+        found.extend(findings)
+        return x_in_y
+
+    rows = tuple(_row(row, given.rows, units, index) for index, row in enumerate(given.rows))
+    tools = {
+        name: Tool(placed(tool, "tools", name), tool.number) for name, tool in given.tools.items()
+    }
+    frames = {
+        name: NamedFrame(placed(frame, "frames", name), frame.in_, frame.number)
+        for name, frame in given.frames.items()
+    }
+    thresholds = given.singularity_thresholds or models.Thresholds()
+    arm = Arm(
+        name=given.name,
+        table=Table(Convention(given.convention), rows),
+        base_in_world=np.eye(4) if given.base is None else placed(given.base, "base"),
+        tools=tools,
+        default_tool=given.default_tool,
+        frames=frames,
+        combined_travel=tuple(
+            _combined(combined, rows, units) for combined in given.combined_travel
+        ),
+        thresholds=SingularityThresholds(
+            thresholds.near,
+            SINGULAR if thresholds.singular is None else thresholds.singular,
+        ),
+        characteristic_length=None
+        if given.characteristic_length is None
+        else float(units.length_in(given.characteristic_length)),
+        joint_uncertainty=tuple(
+            units.value_in(value, unit)
+            for value, unit in zip(given.joint_uncertainty, _driven_units(rows), strict=False)
+        )
+        + tuple(given.joint_uncertainty[len(_driven_units(rows)) :]),
+    )
+    document = given.model_dump(mode="json", by_alias=True, exclude_unset=True)
+    return ReadArm(arm, units, tuple(found), document, digests_of(arm))
+
+
+def arm_document(arm: Arm, units: Units, texts: Mapping[str, Any]) -> dict[str, Any]:
+    """Return an arm as a document in ``units``; ``texts`` holds title, status and notes."""
+
+    def pose(x_in_y: FloatArray) -> dict[str, Any]:
+        return pose_answer(x_in_y, "matrix", units)
+
+    document: dict[str, Any] = {
+        "name": arm.name,
+        "convention": arm.table.convention.value,
+        "units": units.name,
+        "rows": [_row_document(row, arm.table.rows, units) for row in arm.table.rows],
+        **texts,
+    }
+    if arm.combined_travel:
+        document["combined_travel"] = [
+            {
+                "ratios": {str(row): ratio for row, ratio in combined.ratios.items()},
+                "travel": _bounds_out(combined.travel, _unit_of(combined.ratios, arm), units),
+            }
+            for combined in arm.combined_travel
+        ]
+    if not np.array_equal(arm.base_in_world, np.eye(4)):
+        document["base"] = pose(arm.base_in_world)
+    if arm.tools:
+        document["tools"] = {
+            name: pose(tool.tool_in_flange) | _numbered(tool.number)
+            for name, tool in arm.tools.items()
+        }
+    if arm.default_tool is not None:
+        document["default_tool"] = arm.default_tool
+    if arm.frames:
+        document["frames"] = {
+            name: pose(frame.frame_in_parent) | {"in": frame.parent} | _numbered(frame.number)
+            for name, frame in arm.frames.items()
+        }
+    if arm.joint_uncertainty:
+        document["joint_uncertainty"] = [
+            units.shortest_out(value, unit)
+            for value, unit in zip(arm.joint_uncertainty, arm.joint_units, strict=True)
+        ]
+    if arm.characteristic_length is not None:
+        document["characteristic_length"] = units.shortest_out(arm.characteristic_length, "m")
+    if arm.thresholds != SingularityThresholds():
+        document["singularity_thresholds"] = {"singular": arm.thresholds.singular} | (
+            {} if arm.thresholds.near is None else {"near": arm.thresholds.near}
+        )
+    return document
+
+
+def _refuse_what_is_not_there(given: models.Arm) -> None:
+    if given.cell is not None:
+        raise NotAvailable(
+            "cells are not available in this version",
+            where=("cell",),
+            value=given.cell,
+            way_out='leave "cell" out and give the frames in the arm',
+            status=422,
+        )
+    if len(given.rows) > MOST_ROWS:
+        raise TooLarge(
+            f"the table has {len(given.rows)} rows",
+            where=("rows",),
+            value=len(given.rows),
+            way_out=f"at most {MOST_ROWS} rows",
+            status=422,
+        )
+    for kind, names in (("tools", given.tools), ("frames", given.frames)):
+        for name in names:
+            if name in RESERVED:
+                raise UnusableValue(
+                    f"{name} is a reserved name",
+                    where=(kind, name),
+                    value=name,
+                    way_out="reserved: base, world, flange, tool, link-0 ... link-32",
+                )
+
+
+def _row(row: models.Row, rows: list[models.Row], units: Units, index: int) -> Row:
+    unit = _si_unit(row.joint)
+    return Row(
+        joint=JointKind(row.joint),
+        a=float(units.length_in(row.a)),
+        alpha=float(units.angle_in(row.alpha)),
+        d=float(units.length_in(row.d)),
+        theta=float(units.angle_in(row.theta)),
+        direction=row.direction,
+        travel=_bounds_in(row.travel, unit, units),
+        working_travel=_bounds_in(row.working_travel, unit, units),
+        working_reason=row.working_reason or "",
+        top_speed=None if row.top_speed is None else units.value_in(row.top_speed, unit),
+        couplings=tuple(
+            Coupling(
+                coupling.axis,
+                coupling.ratio * _ratio_scale(row.joint, rows, coupling.axis, units),
+            )
+            for coupling in row.couplings
+        ),
+        passive=row.passive,
+    )
+
+
+def _row_document(row: Row, rows: tuple[Row, ...], units: Units) -> dict[str, Any]:
+    document: dict[str, Any] = {
+        "joint": row.joint.value,
+        "a": units.shortest_out(row.a, "m"),
+        "alpha": units.shortest_out(row.alpha, "rad"),
+        "d": units.shortest_out(row.d, "m"),
+        "theta": units.shortest_out(row.theta, "rad"),
+    }
+    if row.direction != 1:
+        document["direction"] = row.direction
+    if row.travel is not None:
+        document["travel"] = _bounds_out(row.travel, row.unit, units)
+    if row.working_travel is not None:
+        document["working_travel"] = _bounds_out(row.working_travel, row.unit, units)
+    if row.working_reason:
+        document["working_reason"] = row.working_reason
+    if row.top_speed is not None:
+        document["top_speed"] = units.shortest_out(row.top_speed, row.unit)
+    if row.couplings:
+        document["couplings"] = [
+            {
+                "axis": coupling.axis,
+                "ratio": units.value_out(coupling.ratio, row.unit)
+                / units.value_out(1.0, rows[coupling.axis - 1].unit),
+            }
+            for coupling in row.couplings
+        ]
+    if row.passive:
+        document["passive"] = True
+    return document
+
+
+def _combined(given: models.CombinedTravel, rows: tuple[Row, ...], units: Units) -> CombinedTravel:
+    ratios = {int(number): ratio for number, ratio in given.ratios.items()}
+    first = next(iter(ratios), 0)
+    unit = rows[first - 1].unit if 1 <= first <= len(rows) else "rad"
+    travel = Travel(*(units.value_in(bound, unit) for bound in given.travel))
+    return CombinedTravel(ratios, travel)
+
+
+def _ratio_scale(joint: str, rows: list[models.Row], axis: int, units: Units) -> float:
+    """Return SI per SI for a ratio given in this row's unit per the other's; 1 for like kinds."""
+    other = rows[axis - 1].joint if 1 <= axis <= len(rows) else joint
+    if other == joint:
+        return 1.0
+    return units.value_in(1.0, _si_unit(joint)) / units.value_in(1.0, _si_unit(other))
+
+
+def _si_unit(joint: str) -> str:
+    return "rad" if joint == "revolute" else "m"
+
+
+def _driven_units(rows: tuple[Row, ...]) -> list[str]:
+    return [row.unit for row in rows if not row.passive]
+
+
+def _unit_of(ratios: Mapping[int, float], arm: Arm) -> str:
+    return arm.table.rows[next(iter(ratios)) - 1].unit
+
+
+def _bounds_in(bounds: list[float] | None, unit: str, units: Units) -> Travel | None:
+    if bounds is None:
+        return None
+    lower, upper = (units.value_in(bound, unit) for bound in bounds)
+    return Travel(lower, upper)
+
+
+def _bounds_out(bounds: Travel, unit: str, units: Units) -> list[float]:
+    return [units.shortest_out(bound, unit) for bound in bounds]
+
+
+def _numbered(number: int | None) -> dict[str, int]:
+    return {} if number is None else {"number": number}

@@ -1,0 +1,208 @@
+"""The body of a request, read within its limits: type, size, time, JSON that says one thing only.
+
+Left out: what the JSON means (models check that) and tables of binary numbers.
+"""
+
+import asyncio
+import json
+import re
+from collections.abc import AsyncIterator, Sequence
+from time import monotonic
+from typing import Any
+
+from starlette.requests import ClientDisconnect, Request
+
+from service.errors import DuplicateKey, RequestTimeout, TooLarge, Unparseable, WrongMediaType
+from service.settings import Settings
+
+# A body may take its stall limit and then as long as a slow plant link needs: whoever sends one
+# byte at a time would otherwise hold a connection for days.
+_SLOWEST_BYTES_PER_S = 16 * 1024
+# An escaped half of a surrogate pair; alone it is no character and cannot be printed again.
+_SURROGATE = re.compile(rb"\\u[dD][89a-fA-F]")
+
+
+async def read_json(request: Request, *, empty_ok: bool = False) -> object:
+    """Return the parsed JSON body of ``request``; an empty one is None if ``empty_ok``.
+
+    ``NaN`` and ``Infinity`` pass here as floats, and ``1e999`` as infinity, so that the check of
+    the field refuses them with a pointer. The body is kept as ``request.state.json_body``: the
+    handler of errors checks pointers against it.
+
+    Raises
+    ------
+    WrongMediaType : a body that is not ``application/json``.
+    TooLarge : more bytes than ``settings.body_limit``, said or counted.
+    RequestTimeout : nothing arrived for ``settings.body_timeout_s``.
+    Unparseable : not UTF-8, no JSON, nested too deeply, empty; says the position.
+    DuplicateKey : a key twice in one object, at any level.
+    """
+    raw = await read_bytes(request, "application/json")
+    if not raw and empty_ok:
+        return None
+    body = parse_json(raw)
+    request.state.json_body = body
+    return body
+
+
+async def read_bytes(request: Request, *media_types: str) -> bytes:
+    """Return the raw body, checked for type and size and read within the time allowed.
+
+    An empty body may be of any type; which one a request says is ``media_type_of``'s to tell.
+    """
+    settings: Settings = request.app.state.settings
+    length = _length_said(request)
+    has_body = length != 0 if length is not None else "transfer-encoding" in request.headers
+    if has_body:
+        _check_media_type(request.headers.get("content-type"), media_types)
+    if length is not None and length > settings.body_limit:
+        raise _too_large(settings.body_limit, length)
+    raw = bytearray()
+    async for chunk in _chunks(request, settings.body_timeout_s):
+        raw += chunk
+        if len(raw) > settings.body_limit:
+            raise _too_large(settings.body_limit, None)
+    if length is not None and len(raw) < length:
+        # The sender has gone before the end; nobody is left to read an answer.
+        raise ClientDisconnect
+    return bytes(raw)
+
+
+def media_type_of(request: Request) -> str:
+    """Return the media type a request says its body has, without parameters; may be empty.
+
+    Examples
+    --------
+    >>> from starlette.requests import Request
+    >>> said = (b"content-type", b"Text/CSV; header=present")
+    >>> media_type_of(Request({"type": "http", "headers": [said]}))
+    'text/csv'
+    """
+    return _plain(request.headers.get("content-type", ""))
+
+
+def parse_json(raw: bytes) -> object:
+    """Return what ``raw`` says, if it is JSON that can be read in one way only.
+
+    Examples
+    --------
+    >>> parse_json(b'{"a": [1, 2.5]}')
+    {'a': [1, 2.5]}
+    >>> parse_json(b'{"rows": [{"a": 1, "a": 2}]}')
+    Traceback (most recent call last):
+    service.errors.DuplicateKey: the key "a" stands twice in one object
+    """
+    if not raw:
+        raise Unparseable("the body is empty", way_out="send a JSON object")
+    text = _text(raw)
+    twice: list[tuple[dict[str, Any], str]] = []
+
+    def object_of(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+        found = dict(pairs)
+        if len(found) != len(pairs):
+            twice.append((found, _first_repeated(pairs)))
+        return found
+
+    try:
+        body: object = json.loads(text, object_pairs_hook=object_of)
+        if _SURROGATE.search(raw):
+            json.dumps(body, ensure_ascii=False).encode("utf-8")
+    except json.JSONDecodeError as error:
+        say = f"not JSON at line {error.lineno}, column {error.colno}: {error.msg}"
+        raise Unparseable(say, value=text[error.pos : error.pos + 20]) from None
+    except RecursionError:
+        raise Unparseable("not JSON that can be read: nested too deeply") from None
+    except UnicodeEncodeError:
+        raise Unparseable(
+            "a string holds half of a surrogate pair, which is no character"
+        ) from None
+    except ValueError:
+        # The interpreter refuses integers of more than some thousand digits.
+        raise Unparseable("an integer has too many digits", way_out="write it as 1e99") from None
+    if twice:
+        node, key = twice[0]
+        where = (*(_path_to(node, body) or ()), key)
+        raise DuplicateKey(
+            f'the key "{key}" stands twice in one object', where=where, way_out="leave one of them"
+        )
+    return body
+
+
+def _length_said(request: Request) -> int | None:
+    said = request.headers.get("content-length", "")
+    return int(said) if said.isascii() and said.isdigit() else None
+
+
+def _check_media_type(said: str | None, wanted: Sequence[str]) -> None:
+    if said is not None and _plain(said) in wanted:
+        return
+    raise WrongMediaType(
+        "the body has no content type" if said is None else "the body is of the wrong content type",
+        where=("content-type",),
+        location="header",
+        value=said,
+        way_out=f"send Content-Type: {' or '.join(wanted)}",
+    )
+
+
+def _plain(said: str) -> str:
+    return said.split(";", 1)[0].strip().lower()
+
+
+def _too_large(limit: int, length: int | None) -> TooLarge:
+    return TooLarge(
+        f"the body is larger than {limit} bytes",
+        value=length,
+        way_out="send it in several requests",
+    )
+
+
+async def _chunks(request: Request, stall_s: float) -> AsyncIterator[bytes]:
+    begun = monotonic()
+    received = 0
+    stream = request.stream()
+    while True:
+        allowed = begun + stall_s + received / _SLOWEST_BYTES_PER_S - monotonic()
+        try:
+            async with asyncio.timeout(min(stall_s, allowed)):
+                chunk = await anext(stream, None)
+        except TimeoutError:
+            say = f"the body stopped after {received} bytes"
+            raise RequestTimeout(say, way_out="send the request again") from None
+        if chunk is None:
+            return
+        received += len(chunk)
+        yield chunk
+
+
+def _text(raw: bytes) -> str:
+    try:
+        text = raw.decode("utf-8")
+    except UnicodeDecodeError as error:
+        raise Unparseable(f"not UTF-8 at byte {error.start}", way_out="send UTF-8") from None
+    if text.startswith("\ufeff"):
+        raise Unparseable("the body begins with a byte order mark", way_out="send UTF-8 without it")
+    return text
+
+
+def _first_repeated(pairs: list[tuple[str, Any]]) -> str:
+    seen: set[str] = set()
+    for key, _ in pairs:
+        if key in seen:
+            break
+        seen.add(key)
+    return key
+
+
+def _path_to(wanted: object, body: object) -> tuple[str | int, ...] | None:
+    """Return the path of keys and indices to the very object ``wanted``, None if it is gone."""
+    open_ends: list[tuple[tuple[str | int, ...], object]] = [((), body)]
+    while open_ends:
+        path, node = open_ends.pop()
+        if node is wanted:
+            return path
+        if isinstance(node, dict):
+            open_ends += [((*path, key), item) for key, item in node.items()]
+        elif isinstance(node, list):
+            open_ends += [((*path, index), item) for index, item in enumerate(node)]
+    return None

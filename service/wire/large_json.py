@@ -1,0 +1,77 @@
+"""A large JSON body: its joint vectors as an array, without care for each number on the way.
+
+The long array is cut out of the text and read by itself; the rest, some hundred bytes, is read as
+small bodies are (body.py).
+"""
+
+import re
+from contextlib import suppress
+from dataclasses import dataclass
+
+import numpy as np
+import orjson
+
+from kinematics.table import FloatArray
+from service.errors import Unparseable
+from service.wire.body import parse_json
+
+_FIELD = "joints"
+_BEGIN = re.compile(rb'"joints"\s*:\s*(?=\[\s*\[)')
+# Stands in place of the array while the rest is read: no text can hold it, no request knows it.
+_MARK = b'{"\\u0000":0}'
+_MARKED = {"\0": 0}
+
+
+@dataclass(frozen=True)
+class LargeBody:
+    """``document`` as parsed; where ``joints`` is an array (count, n), its field is empty."""
+
+    document: object
+    joints: FloatArray | None
+
+
+def parse_large_json(raw: bytes) -> LargeBody:
+    """Return what ``raw`` says, as ``parse_json`` does, the joint vectors as an array if possible.
+
+    Raises
+    ------
+    Unparseable, DuplicateKey : as ``parse_json``.
+
+    Examples
+    --------
+    >>> body = parse_large_json(b'{"arm": "x", "joints": [[1, 2], [3, 4.5]]}')
+    >>> body.document, body.joints.tolist()
+    ({'arm': 'x', 'joints': []}, [[1.0, 2.0], [3.0, 4.5]])
+    """
+    span = _span(raw)
+    joints = None if span is None else _array(raw[slice(*span)])
+    if span is not None and joints is not None:
+        # What is wrong with the rest is told by its place in the whole.
+        with suppress(Unparseable):
+            document = parse_json(raw[: span[0]] + _MARK + raw[span[1] :])
+            # Elsewhere it would be in the middle of a text, or the field of something else.
+            if isinstance(document, dict) and document.get(_FIELD) == _MARKED:
+                return LargeBody(document | {_FIELD: []}, joints)
+    return LargeBody(parse_json(raw), None)
+
+
+def _span(raw: bytes) -> tuple[int, int] | None:
+    """Return where the array seems to stand: up to the last bracket before another field."""
+    found = _BEGIN.search(raw)
+    if found is None:
+        return None
+    begin = found.end()
+    ends = [end for end in (raw.find(b'"', begin), raw.find(b"}", begin)) if end >= 0]
+    end = raw.rfind(b"]", begin, min(ends, default=len(raw))) + 1
+    return (begin, end) if end else None
+
+
+def _array(text: bytes) -> FloatArray | None:
+    """Return the numbers if there is nothing else, in rows of one length, none of them empty."""
+    if any(letter in text for letter in (b"t", b"f", b"n")):  # true, false, null
+        return None
+    try:
+        array = np.array(orjson.loads(text), dtype=np.float64)
+    except ValueError:
+        return None
+    return array if array.ndim == 2 and array.shape[1] else None

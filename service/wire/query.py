@@ -1,0 +1,139 @@
+"""Parameters of a query string, read the way controllers print them.
+
+Left out: which parameters an address has; its handler says so.
+"""
+
+import math
+import re
+from collections.abc import Collection
+
+from starlette.requests import Request
+
+from service.details import Detail, way_out_of_unknown
+from service.errors import ServiceError, UnknownField, Unparseable, UnusableValue
+
+# As controllers print them: 1.5E+01, +3.0, 007, .5, 5. - and "nan", so that it is refused by name.
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
+_NOT_FINITE = re.compile(r"[+-]?(nan|inf|infinity|1\.#\w+)", re.ASCII | re.IGNORECASE)
+_DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+", re.ASCII)
+_WHOLE = re.compile(r"[+-]?\d+", re.ASCII)
+# Beyond 64 bits no field of an answer could give it back.
+_MOST_DIGITS = 18
+
+
+class NotFiniteParameter(UnusableValue):
+    """A parameter that says NaN or infinity."""
+
+    code = "not-finite"
+
+
+def known_parameters(request: Request, allowed: Collection[str]) -> dict[str, str]:
+    """Return the query's parameters; refuse unknown and repeated ones, all of them at once.
+
+    Raises
+    ------
+    UnknownField : with the nearest known name as the way out.
+    UnusableValue : a parameter stands twice.
+    """
+    found: dict[str, str] = {}
+    wrong: list[Detail] = []
+    for name, text in request.query_params.multi_items():
+        if name not in allowed:
+            say = f'unknown parameter "{name}"'
+            way_out = way_out_of_unknown(name, allowed)
+            wrong.append(Detail("unknown-field", say, (name,), "query", text, way_out))
+        elif name in found:
+            say = f'the parameter "{name}" stands twice'
+            wrong.append(Detail("unusable-value", say, (name,), "query", text, "leave one of them"))
+        found[name] = text
+    if wrong:
+        refusal = UnknownField if wrong[0].code == "unknown-field" else UnusableValue
+        raise refusal(wrong[0].say, errors=wrong)
+    return found
+
+
+def number(text: str, name: str) -> float:
+    """Return the number a parameter says.
+
+    A raw ``+`` in a query arrives as a blank, so one blank before the digits, or after an
+    exponent's ``e``, is read as the ``+`` it was.
+
+    Raises
+    ------
+    Unparseable : no number; a decimal comma is named as such.
+    NotFiniteParameter : NaN, infinity, or a number too large for a double.
+
+    Examples
+    --------
+    >>> number("1.5E+01", "q1"), number(" 3.0", "q1"), number("1.5E 01", "q1"), number("007", "q1")
+    (15.0, 3.0, 15.0, 7.0)
+    """
+    mended = _mended(text)
+    if _NUMBER.fullmatch(mended):
+        value = float(mended)
+        if math.isfinite(value):
+            return value
+    elif not _NOT_FINITE.fullmatch(mended):
+        raise _no_number(text, name)
+    raise NotFiniteParameter(
+        f'"{name}" must be a finite number',
+        where=(name,),
+        location="query",
+        value=text,
+        way_out="give a finite number; a failed measurement cannot be computed with",
+    )
+
+
+def whole_number(text: str, name: str) -> int:
+    """Return the whole number a parameter says.
+
+    Examples
+    --------
+    >>> whole_number("+12", "tag"), whole_number(" 12", "tag"), whole_number("-012", "tag")
+    (12, 12, -12)
+    """
+    mended = _mended(text)
+    if not _WHOLE.fullmatch(mended):
+        raise Unparseable(
+            f'"{name}" must be a whole number',
+            where=(name,),
+            location="query",
+            value=text,
+            way_out="write it like 12",
+        )
+    if len(mended.lstrip("+-0")) > _MOST_DIGITS:
+        raise UnusableValue(
+            f'"{name}" has more than {_MOST_DIGITS} digits',
+            where=(name,),
+            location="query",
+            value=text,
+            way_out=f"give at most {_MOST_DIGITS} digits",
+        )
+    return int(mended)
+
+
+def numbers(text: str, name: str) -> list[float]:
+    """Return the numbers of a comma list; an empty text is an empty list.
+
+    Examples
+    --------
+    >>> numbers("0,-90, 1e2", "q"), numbers("", "q")
+    ([0.0, -90.0, 100.0], [])
+    """
+    return [number(part, name) for part in text.split(",")] if text else []
+
+
+def _mended(text: str) -> str:
+    if text.startswith(" "):
+        text = "+" + text[1:]
+    return re.sub(r"(?<=[eE]) (?=\d)", "+", text)
+
+
+def _no_number(text: str, name: str) -> ServiceError:
+    if _DECIMAL_COMMA.fullmatch(_mended(text)):
+        say, way_out = f'"{name}" has a decimal comma', "write a decimal point"
+    elif not text.strip():
+        say, way_out = f'"{name}" is empty', "give it a number or leave it out"
+    else:
+        say, way_out = f'"{name}" must be a number', "write it like -12.5 or 1.25e+01"
+    return Unparseable(say, where=(name,), location="query", value=text, way_out=way_out)
