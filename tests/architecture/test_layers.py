@@ -1,0 +1,312 @@
+"""The house held to its plan: imports point down, the core is alone, modules stay small.
+
+Everything is read from the text of the modules; only the test of lone imports runs them.
+"""
+
+import ast
+import graphlib
+import inspect
+import re
+import subprocess
+import sys
+
+import pytest
+
+from kinematics import errors as core_errors
+from service import errors as service_errors
+from service import problems
+from service.problems import ANSWERS, KINDS
+from service.web import pages
+from tests.architecture.imports import (
+    PACKAGES,
+    ROOT,
+    imported_by,
+    modules,
+    others,
+    ours,
+    tree_of,
+    within,
+)
+
+# The core, layer by layer: a module imports from its own layer or from those above it here.
+LAYERS = (
+    ("errors", "findings", "tolerances"),
+    ("number_checks", "kernels", "kernels.compiler", "kernels.workspace"),
+    (
+        "kernels.sine_cosine",
+        "kernels.forward",
+        "kernels.jacobian",
+        "kernels.decomposition",
+        "kernels.quaternions",
+    ),
+    ("rigidity", "rotations", "angle_triples", "orientation_forms", "transforms"),
+    ("table", "drive_map", "arm"),
+    ("chain", "travel_limits", "digests", "table_conversion"),
+    ("jacobian",),
+    (
+        "peak_demand",
+        "task_space",
+        "singularity",
+        "singular_kinds",
+        "lost_motion",
+        "joint_speeds",
+    ),
+    ("warm_up",),
+)
+
+# The core computes: with numpy, scipy and the compiler, and with nothing that reaches outside.
+CORE_IMPORTS = {
+    *("numpy", "scipy", "numba"),
+    *("collections", "dataclasses", "enum", "functools", "hashlib", "itertools", "json", "math"),
+    *("numbers", "typing"),
+}
+
+MOST_LINES = 330
+MOST_BODY_LINES = 45
+WEB = ("starlette", "fastapi", "uvicorn")
+
+
+def of(package: str) -> list[str]:
+    return [module for module in modules() if within(module, (package,))]
+
+
+def test_all_modules_are_found() -> None:
+    assert len(of("kinematics")) >= 25
+    assert len(of("service")) >= 50
+
+
+# --- the core ------------------------------------------------------------------------------
+
+
+def layer_of(module: str) -> int:
+    name = module.removeprefix("kinematics.")
+    layers = [number for number, names in enumerate(LAYERS) if name in names]
+    assert len(layers) == 1, f"{module} stands in {len(layers)} layers of the plan"
+    return layers[0]
+
+
+CORE = [module for module in of("kinematics") if module != "kinematics"]
+
+
+@pytest.mark.parametrize("module", CORE)
+def test_imports_of_the_core_point_down(module: str) -> None:
+    for imported in ours(module):
+        assert within(imported, ("kinematics",)), f"{module} imports {imported}"
+        assert layer_of(imported) <= layer_of(module), f"{module} imports {imported}, above it"
+
+
+@pytest.mark.parametrize("module", of("kinematics"))
+def test_the_core_reaches_for_nothing_outside(module: str) -> None:
+    assert others(module) <= CORE_IMPORTS
+
+
+def test_kernels_know_arrays_alone() -> None:
+    """They take plain arrays: of the core they know the name of an array's type, no arm."""
+    for module in of("kinematics.kernels"):
+        outside = {name for name in ours(module) if not within(name, ("kinematics.kernels",))}
+        assert outside <= {"kinematics.number_checks"}
+        for node in ast.walk(tree_of(module)):
+            if isinstance(node, ast.ImportFrom) and node.module == "kinematics.number_checks":
+                assert [alias.name for alias in node.names] == ["FloatArray"]
+
+
+def test_no_imports_go_in_a_circle() -> None:
+    graph = {module: ours(module) & set(modules()) - {module} for module in modules()}
+    assert len(list(graphlib.TopologicalSorter(graph).static_order())) == len(graph)
+
+
+# --- the service ---------------------------------------------------------------------------
+
+# Who must not import what; a name ending in a star stands for all below it.
+FORBIDDEN = {
+    "service.operations": (*WEB, "sqlalchemy", "alembic", "sqlite3", "service.routes"),
+    "service.storage": (*WEB, "pydantic", "service.wire", "service.routes", "kinematics"),
+    "service.wire": ("fastapi", "sqlalchemy", "service.routes", "service.operations"),
+    "service.routes": ("sqlalchemy", "sqlite3", "alembic"),
+    "service.convert": (*WEB, "pydantic", "service"),
+    "service.web": ("sqlalchemy", "kinematics", "service.operations", "service.routes"),
+}
+
+
+@pytest.mark.parametrize("package", FORBIDDEN)
+def test_what_each_part_of_the_service_leaves_to_others(package: str) -> None:
+    assert of(package)
+    for module in of(package):
+        bad = [name for name in imported_by(module) if within(name, FORBIDDEN[package])]
+        assert not bad, f"{module} imports {bad}"
+
+
+def test_only_the_app_and_the_command_see_concrete_storage() -> None:
+    """All others know the ports: what a store does, not which one it is."""
+    seeing = {
+        module
+        for module in of("service")
+        for name in ours(module)
+        if within(name, ("service.storage",))
+        and name != "service.storage.ports"
+        and not within(module, ("service.storage",))
+    }
+    assert seeing == {"service.app", "service.arms_commands"}
+
+
+def test_nothing_below_imports_the_app() -> None:
+    assert {m for m in modules() if "service.app" in ours(m)} == {"service.server"}
+
+
+# --- mathematics stays in the core ---------------------------------------------------------
+
+ANGLES = {
+    *("sin", "cos", "tan", "asin", "acos", "atan", "atan2", "arcsin", "arccos", "arctan"),
+    *("arctan2", "hypot", "deg2rad", "rad2deg", "radians", "degrees", "cross", "dot", "matmul"),
+    *("einsum", "linalg", "pi", "tau", "inv", "svd", "norm", "trace", "det"),
+}
+
+# What stands in the service all the same: a change of frame, written as the product whose names
+# cancel, ``base_in_frame @ tool_in_base``; and nothing else, there and nowhere else.
+EXCUSED = re.compile(r"base_in_frame @ ")
+MAY_CHANGE_FRAMES = ("service.operations",)
+
+
+def arithmetic_of(module: str) -> set[str]:
+    """Return the products of matrices and the functions of angles that a module uses."""
+    found = set()
+    for node in ast.walk(tree_of(module)):
+        if isinstance(node, ast.BinOp | ast.AugAssign) and isinstance(node.op, ast.MatMult):
+            found.add(ast.unparse(node))
+        elif isinstance(node, ast.Attribute) and node.attr in ANGLES:
+            of_numbers = isinstance(node.value, ast.Name) and node.value.id in ("np", "math")
+            if of_numbers or node.attr in ("linalg", "svd"):
+                found.add(ast.unparse(node))
+        elif isinstance(node, ast.ImportFrom) and node.module in ("math", "numpy", "numpy.linalg"):
+            found |= {alias.name for alias in node.names if alias.name in ANGLES}
+    return found
+
+
+@pytest.mark.parametrize("module", of("service"))
+def test_the_service_knows_no_mathematics(module: str) -> None:
+    """Poses and angles are computed in the core, and units converted in one module."""
+    if module == "service.convert":
+        return
+    found = arithmetic_of(module)
+    if within(module, MAY_CHANGE_FRAMES):
+        found = {expression for expression in found if not EXCUSED.match(expression)}
+    assert not found
+    assert not others(module) & {"scipy", "numba"}
+
+
+def test_the_search_finds_what_it_is_made_for() -> None:
+    assert {"np.deg2rad", "np.rad2deg"} <= arithmetic_of("service.convert")
+    assert any("@" in expression for expression in arithmetic_of("kinematics.jacobian"))
+    assert "np.linalg" in arithmetic_of("kinematics.peak_demand") | arithmetic_of(
+        "kinematics.joint_speeds"
+    )
+    excused = {e for m in of("service.operations") for e in arithmetic_of(m) if EXCUSED.match(e)}
+    assert excused
+
+
+# --- size, lone imports --------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("module", modules())
+def test_no_module_is_two(module: str) -> None:
+    assert len(modules()[module].read_text(encoding="utf-8").splitlines()) <= MOST_LINES
+
+
+@pytest.mark.parametrize("module", modules())
+def test_no_function_is_two(module: str) -> None:
+    for node in ast.walk(tree_of(module)):
+        if isinstance(node, ast.FunctionDef | ast.AsyncFunctionDef):
+            body = node.body[1:] if ast.get_docstring(node) else node.body
+            if body:
+                length = int(body[-1].end_lineno or 0) - body[0].lineno + 1
+                assert length <= MOST_BODY_LINES, f"{node.name} of {module}"
+
+
+@pytest.mark.parametrize("module", modules())
+def test_a_module_says_its_idea_first(module: str) -> None:
+    if not modules()[module].read_text(encoding="utf-8"):
+        return  # an empty package file has nothing to say
+    assert len((ast.get_docstring(tree_of(module)) or "").split()) >= 4
+
+
+def test_names_say_what_is_inside() -> None:
+    for module in modules():
+        assert not re.search(r"(^|[._])(utils?|helpers?|managers?|common|misc)([._]|$)", module)
+
+
+LONE_IMPORTS = """
+import importlib, sys, traceback
+failed = 0
+for name in sys.argv[1:]:
+    for loaded in [m for m in sys.modules if m.split(".")[0] in ("kinematics", "service")]:
+        del sys.modules[loaded]
+    try:
+        importlib.import_module(name)
+    except Exception:
+        failed += 1
+        print(name)
+        traceback.print_exc()
+sys.exit(1 if failed else 0)
+"""
+
+
+def test_each_module_imports_alone() -> None:
+    """Before any of the others: no module relies on another having been imported first.
+
+    Two of them do something when imported, which is what they are for: the command, and the
+    migration's steps.
+    """
+    alone = [m for m in modules() if m != "service.__main__" and ".versions." not in m]
+    assert len(alone) >= 75
+    result = subprocess.run(
+        [sys.executable, "-W", "error", "-c", LONE_IMPORTS, *alone],
+        cwd=ROOT,
+        capture_output=True,
+        text=True,
+        check=False,
+        timeout=120,
+    )
+    assert result.returncode == 0, result.stdout + result.stderr
+
+
+# --- what is documented --------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("code", KINDS)
+def test_every_code_is_on_the_page_of_problems(code: str) -> None:
+    html = pages._problems_html().decode()
+    assert f'id="{code}"' in html
+    assert KINDS[code].title in html
+    assert str(KINDS[code].number) in html
+
+
+def test_every_code_of_an_answer_is_on_the_page_of_problems() -> None:
+    html = pages._problems_html().decode()
+    for number, meaning in ANSWERS.items():
+        assert str(number) in html
+        assert meaning in html
+
+
+@pytest.mark.parametrize("house", [core_errors, service_errors], ids=lambda house: house.__name__)
+def test_every_error_is_drawn_says_when_and_has_a_known_code(house: object) -> None:
+    classes = [
+        kind
+        for _, kind in inspect.getmembers(house, inspect.isclass)
+        if issubclass(kind, Exception) and kind.__module__ == house.__name__  # type: ignore[attr-defined]
+    ]
+    assert len(classes) >= 12
+    for kind in classes:
+        assert re.search(rf"\b{kind.__name__}\b", house.__doc__ or ""), kind
+        assert kind.__doc__, kind
+        assert kind.code in KINDS, kind
+
+
+def test_problems_offers_what_it_says_it_offers() -> None:
+    for name in problems.__all__:
+        assert hasattr(problems, name)
+
+
+def test_packages_are_the_two_of_the_plan() -> None:
+    assert PACKAGES == ("kinematics", "service")
+    for package in PACKAGES:
+        assert (ROOT / package / "__init__.py").exists()

@@ -1,0 +1,168 @@
+"""Every example of the documentation, asked of the demonstration cell, answers what it says.
+
+Run as a program it writes the answers anew, for a change that is meant; read the diff then.
+"""
+
+import asyncio
+import json
+import math
+import re
+from collections.abc import AsyncIterator, Iterator
+from contextlib import asynccontextmanager
+from typing import Any
+
+import httpx
+import pytest
+from fastapi import FastAPI
+from fastapi.routing import APIRoute
+
+from service.app import create_app
+from service.settings import Settings
+from service.web.document import KEY
+from service.web.examples import examples_of, folder
+
+pytestmark = pytest.mark.anyio
+
+COUNTS = {"jacobian": 3, "jacobians": 4, "pose": 6, "poses": 8, "tables-conversions": 3}
+CLOSE = 1e-9
+"""Relative and absolute: far above rounding, far below any digit a user reads."""
+
+OF_THE_MOMENT = frozenset({"seq", "t_ms"})
+NUMBER = re.compile(r"[-+]?\d+(?:\.\d+)?(?:e[-+]?\d+)?")
+CASES = [(name, case) for name in sorted(COUNTS) for case in examples_of(name)]
+
+
+def routes_of(app: FastAPI) -> dict[str, APIRoute]:
+    """Return the route of each folder of examples."""
+    found: dict[str, APIRoute] = {}
+    for route in app.router.routes:
+        if isinstance(route, APIRoute) and route.include_in_schema:
+            name = (route.openapi_extra or {})[KEY].examples
+            if name:
+                assert found.setdefault(name, route).path == route.path
+    return found
+
+
+async def answer_to(client: httpx.AsyncClient, route: APIRoute, request: Any) -> Any:
+    """Ask what an example asks and return the answer's body; it must not be refused."""
+    if "GET" in (route.methods or ()):
+        path = route.path.format(**request["path"])
+        response = await client.get(path, params=request["query"])
+    else:
+        response = await client.post(route.path, json=request)
+    assert response.status_code == 200, response.text
+    return response.json()
+
+
+def differences(said: Any, got: Any, where: str = "") -> Iterator[str]:
+    """Yield where two answers differ; numbers may by CLOSE, within texts too."""
+    told = f"{where}: {said!r} became {got!r}"
+    if isinstance(said, dict) and isinstance(got, dict):
+        # Their order counts too: a flat answer is read by place.
+        if list(said) != list(got):
+            yield told
+            return
+        for key in said.keys() - OF_THE_MOMENT:
+            yield from differences(said[key], got[key], f"{where}/{key}")
+    elif isinstance(said, list) and isinstance(got, list) and len(said) == len(got):
+        for index, (one, other) in enumerate(zip(said, got, strict=True)):
+            yield from differences(one, other, f"{where}/{index}")
+    elif isinstance(said, str) and isinstance(got, str) and not where.endswith("digest"):
+        if NUMBER.sub("#", said) != NUMBER.sub("#", got):
+            yield told
+            return
+        ours, theirs = (list(map(float, NUMBER.findall(text))) for text in (said, got))
+        yield from differences(ours, theirs, where)
+    elif _is_number(said) and _is_number(got):
+        if not math.isclose(said, got, rel_tol=CLOSE, abs_tol=CLOSE):
+            yield told
+    elif said != got or type(said) is not type(got):
+        yield told
+
+
+def _is_number(value: object) -> bool:
+    return isinstance(value, int | float) and not isinstance(value, bool)
+
+
+@pytest.fixture
+def settings() -> Settings:
+    """The demonstration cell."""
+    return Settings(database=":memory:", demo=True)
+
+
+@pytest.mark.parametrize(("name", "case"), CASES)
+async def test_the_example_answers_what_it_says(
+    app: FastAPI, client: httpx.AsyncClient, name: str, case: str
+) -> None:
+    example = examples_of(name)[case]
+    got = await answer_to(client, routes_of(app)[name], example.request)
+    assert list(differences(example.answer, got)) == []
+
+
+def test_every_route_with_examples_has_them_all(app: FastAPI) -> None:
+    assert sorted(routes_of(app)) == sorted(COUNTS)
+    assert sorted(path.name for path in folder().iterdir()) == sorted(COUNTS)
+    assert {name: len(examples_of(name)) for name in COUNTS} == COUNTS
+    assert len(CASES) == sum(COUNTS.values())
+
+
+def test_every_example_has_a_title_of_its_own() -> None:
+    titles = [examples_of(name)[case].title for name, case in CASES]
+    assert len(set(titles)) == len(titles)
+    assert all(20 <= len(title) <= 100 for title in titles)
+
+
+def test_every_arm_of_the_cell_is_in_some_example() -> None:
+    text = json.dumps([examples_of(name)[case].request for name, case in CASES])
+    arms = ["housing-loader", "lathe-tender", "line-runner", "pallet-stacker", "seal-setter"]
+    for arm in [*arms, "wash-arm", "wash-gantry"]:
+        assert f'"{arm}"' in text
+
+
+@pytest.mark.parametrize(
+    ("got", "where"),
+    [
+        ({"x": 1.0 + 2e-9, "say": "at 5 deg"}, "/x"),
+        ({"x": 1.0, "say": "at 6 deg"}, "/say"),
+        ({"x": 1.0, "say": "to 5 deg"}, "/say"),
+        ({"x": True, "say": "at 5 deg"}, "/x"),
+        ({"x": [1.0], "say": "at 5 deg"}, "/x"),
+        ({"say": "at 5 deg", "x": 1.0}, ""),
+    ],
+)
+def test_a_difference_is_seen(got: Any, where: str) -> None:
+    (found,) = differences({"x": 1.0, "say": "at 5 deg"}, got)
+    assert found.startswith((f"{where}:", f"{where}/"))
+
+
+def test_rounding_and_the_moment_are_no_difference() -> None:
+    said = {"seq": 1, "x": 1e-17, "say": "value 4.2e-17"}
+    assert list(differences(said, {"seq": 9, "x": 0.0, "say": "value 1.3e-17"})) == []
+
+
+@asynccontextmanager
+async def demonstration() -> AsyncIterator[tuple[FastAPI, httpx.AsyncClient]]:
+    """Run the demonstration cell outside of pytest."""
+    app = create_app(Settings(database=":memory:", demo=True))
+    transport = httpx.ASGITransport(app)
+    async with (
+        app.router.lifespan_context(app),
+        httpx.AsyncClient(transport=transport, base_url="http://armspan.test") as client,
+    ):
+        yield app, client
+
+
+async def write_answers() -> None:
+    """Write the answer of every example as it is now."""
+    async with demonstration() as (app, client):
+        for name, route in sorted(routes_of(app).items()):
+            for path in sorted((folder() / name).glob("*.json")):
+                case = json.loads(path.read_text(encoding="utf-8"))
+                case["answer"] = await answer_to(client, route, case["request"])
+                case["answer"] |= dict.fromkeys(OF_THE_MOMENT & case["answer"].keys(), 1)
+                path.write_text(json.dumps(case, indent=1, ensure_ascii=False) + "\n", "utf-8")
+                print(f"{name}/{path.name}")
+
+
+if __name__ == "__main__":
+    asyncio.run(write_answers())

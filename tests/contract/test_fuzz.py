@@ -1,0 +1,249 @@
+"""Every address met with requests drawn from its own OpenAPI document, right ones and wrong ones.
+
+Held: no 5xx, no status, media type or shape beyond the document, one shape of refusal. Left out:
+whether the numbers are right. Seeds are fixed, so a run that fails fails again.
+"""
+
+from collections.abc import Callable
+from typing import Any
+
+import pytest
+import schemathesis
+from fastapi.routing import APIRoute
+from hypothesis import HealthCheck, Phase, given, seed, settings
+from hypothesis import strategies as st
+from schemathesis import GenerationMode
+from schemathesis.checks import not_a_server_error
+from schemathesis.config import SchemathesisConfig
+from schemathesis.generation.case import Case
+from schemathesis.specs.openapi.checks import (
+    content_type_conformance,
+    negative_data_rejection,
+    response_headers_conformance,
+    response_schema_conformance,
+    status_code_conformance,
+)
+
+from service.app import ROUTERS, create_app
+from service.problems import KINDS, MEDIA_TYPE
+from service.settings import Settings
+
+CHECKS: list[Any] = [
+    not_a_server_error,
+    status_code_conformance,
+    content_type_conformance,
+    response_headers_conformance,
+    response_schema_conformance,
+]
+OPERATIONS = sorted(
+    {
+        (method, route.path)
+        for router in ROUTERS
+        for route in router.routes
+        if isinstance(route, APIRoute) and route.include_in_schema
+        for method in route.methods or ()
+    }
+)
+EXAMPLES = 25
+REFUSALS = sorted({kind.status for kind in KINDS.values() if kind.status < 500})
+ROW = {"joint": "revolute", "a": 100, "alpha": 90, "d": 10, "theta": 0, "travel": [-170, 170]}
+PLACED = {"position": [0, 0, 50], "orientation": {"form": "xyz-fixed", "values": [0, 0, 0]}}
+ARM: dict[str, Any] = {
+    "name": "shelf-arm",
+    "convention": "standard",
+    "units": "mm-deg",
+    "rows": [ROW, ROW, {**ROW, "joint": "prismatic"}],
+    "tools": {"gripper": {**PLACED, "number": 1}},
+    "default_tool": "gripper",
+    "frames": {"tray": {**PLACED, "number": 1}},
+}
+
+
+def examples(count: int) -> Callable[[Any], Any]:
+    return settings(
+        max_examples=count,
+        deadline=None,
+        database=None,
+        derandomize=False,
+        phases=(Phase.explicit, Phase.generate, Phase.shrink),
+        suppress_health_check=list(HealthCheck),
+    )
+
+
+@pytest.fixture(scope="module")
+def schema() -> Any:
+    """The service with one arm, and its document as the fuzzer reads it."""
+    app = create_app(Settings(database=":memory:"))
+    config = SchemathesisConfig.from_dict(
+        {"checks": {"negative_data_rejection": {"expected-statuses": REFUSALS}}}
+    )
+    made = schemathesis.openapi.from_asgi("/openapi.json", app, config=config)
+    stored = made["/v1/arms"]["POST"].Case(body=ARM, media_type="application/json").call()
+    assert stored.status_code == 201
+    return made
+
+
+def held(case: Case, *more: Any) -> Any:
+    response = case.call()
+    # With errors=inline a refusal comes with status 200, as is asked for.
+    inline = "inline" in str((case.query or {}).get("errors"))
+    case.validate_response(response, checks=[*CHECKS, *(() if inline else more)])
+    if response.status_code >= 400 and case.method != "HEAD":
+        assert response.headers["content-type"] in ([MEDIA_TYPE], ["application/json"])
+        told = response.json()
+        if response.headers["content-type"] == [MEDIA_TYPE]:
+            assert told["number"] == KINDS[told["code"]].number
+            assert told["status"] == response.status_code
+        else:
+            assert told["ok"] == 0
+    return response
+
+
+def test_the_operations_are_all_here(schema: Any) -> None:
+    documented = {
+        (operation.ok().method.upper(), operation.ok().path)
+        for operation in schema.get_all_operations()
+    }
+    assert documented == set(OPERATIONS)
+    assert len(OPERATIONS) >= 20
+
+
+@pytest.mark.parametrize("mode", [GenerationMode.POSITIVE, GenerationMode.NEGATIVE])
+@pytest.mark.parametrize(("method", "path"), OPERATIONS)
+def test_drawn_requests(schema: Any, method: str, path: str, mode: GenerationMode) -> None:
+    operation = schema[path][method]
+    known = {"arm": "shelf-arm"} if "{arm}" in path and method in ("GET", "HEAD") else None
+    if mode is GenerationMode.NEGATIVE and not (operation.query or operation.body):
+        return
+    more = [negative_data_rejection] if mode is GenerationMode.NEGATIVE else []
+
+    @seed(20260101)
+    @examples(EXAMPLES)
+    @given(case=operation.as_strategy(generation_mode=mode, path_parameters=known))
+    def hold(case: Case) -> None:
+        held(case, *more)
+
+    hold()
+
+
+# Values at which arithmetic goes wrong first: the largest an arm may have, and beyond it.
+EDGES = (0, -0.0, 1e-300, -1e-12, 1e-6, 90, -180, 360, 1e9, -1e9)
+NUMBERS = st.one_of(
+    st.sampled_from(EDGES),
+    st.floats(-1000, 1000, allow_nan=False),
+    st.integers(-180, 180),
+)
+BEYOND = st.one_of(NUMBERS, st.sampled_from([1e12, -1e154, 1e308]))
+UNITS = st.sampled_from(["mm-deg", "m-rad", "in-deg"])
+FORMS = {"quaternion-wxyz": 4, "zyx-current": 3, "rotation-vector": 3, "xyx-fixed": 3}
+
+
+def vectors(count: int, numbers: st.SearchStrategy[Any] = NUMBERS) -> st.SearchStrategy[Any]:
+    return st.lists(numbers, min_size=count, max_size=count)
+
+
+@st.composite
+def rows(draw: st.DrawFn) -> dict[str, Any]:
+    row: dict[str, Any] = {"joint": draw(st.sampled_from(["revolute", "prismatic"]))}
+    row |= {name: draw(NUMBERS) for name in ("a", "alpha", "d", "theta")}
+    if draw(st.booleans()):
+        lower, least, most, upper = sorted(draw(vectors(4)))
+        row |= {"travel": [lower, upper], "working_travel": [least, most]}
+    optional = {
+        "direction": st.sampled_from([1, -1]),
+        "working_reason": st.text(max_size=5),
+        "top_speed": st.sampled_from([1e-300, 1e-6, 90, 1e9]),
+        "couplings": vectors(1, st.fixed_dictionaries({"axis": AXES, "ratio": NUMBERS})),
+        "passive": st.booleans(),
+    }
+    return row | draw(st.fixed_dictionaries({}, optional=optional))
+
+
+AXES = st.integers(1, 4)
+POSES = st.one_of(
+    *(
+        st.fixed_dictionaries(
+            {
+                "position": vectors(3),
+                "orientation": st.fixed_dictionaries(
+                    {"form": st.just(form), "values": vectors(count)}
+                ),
+            }
+        )
+        for form, count in FORMS.items()
+    )
+)
+TRAVEL = st.fixed_dictionaries(
+    {"ratios": st.dictionaries(st.just("1"), NUMBERS), "travel": vectors(2).map(sorted)}
+)
+ARMS = st.fixed_dictionaries(
+    {
+        "name": st.just("wild-arm"),
+        "convention": st.sampled_from(["standard", "modified"]),
+        "units": UNITS,
+        "rows": st.lists(rows(), max_size=7),
+    },
+    optional={
+        "base": POSES,
+        "tools": st.dictionaries(st.sampled_from(["pen", "saw"]), POSES, max_size=2),
+        "default_tool": st.just("flange"),
+        "frames": st.dictionaries(st.sampled_from(["bench", "tray"]), POSES, max_size=2),
+        "combined_travel": vectors(1, TRAVEL),
+        "characteristic_length": NUMBERS,
+    },
+)
+
+
+@st.composite
+def questions(draw: st.DrawFn, *, moving: bool) -> dict[str, Any]:
+    """Draw a body that is right in shape and count, with values at the edges."""
+    arm = draw(ARMS)
+    count = sum(not row.get("passive", False) for row in arm["rows"])
+    joints = draw(st.lists(vectors(count, BEYOND), min_size=1, max_size=3))
+    frames = ["base", "world", *arm.get("frames", ()), *(["tool", "flange"] if moving else [])]
+    optional: dict[str, st.SearchStrategy[Any]] = {
+        "tool": st.one_of(POSES, st.sampled_from(["flange", *arm.get("tools", ())])),
+        "frame": st.sampled_from(frames),
+        "form": st.sampled_from(["matrix", "zyx-current", "zyz-fixed", "rotation-vector"]),
+        "units": UNITS,
+        "links": st.booleans(),
+        "singularity": st.booleans(),
+        "task": st.sampled_from(["pose", "position", "orientation", ["vx", "wz"]]),
+    }
+    if moving:
+        for name, width in (("speeds", count), ("twists", 6), ("loads", 6)):
+            optional[name] = vectors(len(joints), vectors(width, BEYOND))
+    asked = draw(st.fixed_dictionaries({}, optional=optional))
+    return {"arm": arm, "joints": joints, **asked}
+
+
+@pytest.mark.parametrize("path", ["/v1/poses", "/v1/jacobians"])
+def test_postures_at_the_edges(schema: Any, path: str) -> None:
+    operation = schema[path]["POST"]
+    statuses: list[int] = []
+
+    @seed(20260102)
+    @examples(20 * EXAMPLES)
+    @given(body=questions(moving=path == "/v1/jacobians"))
+    def hold(body: dict[str, Any]) -> None:
+        case = operation.Case(body=body, media_type="application/json")
+        statuses.append(held(case).status_code)
+
+    hold()
+    assert set(statuses) <= {200, 422}
+    assert statuses.count(200) >= EXAMPLES
+
+
+def test_conversions_at_the_edges(schema: Any) -> None:
+    operation = schema["/v1/tables/conversions"]["POST"]
+    statuses: list[int] = []
+
+    @seed(20260103)
+    @examples(10 * EXAMPLES)
+    @given(arm=ARMS, to=st.sampled_from(["standard", "modified"]))
+    def hold(arm: dict[str, Any], to: str) -> None:
+        case = operation.Case(body={"arm": arm, "to": to}, media_type="application/json")
+        statuses.append(held(case).status_code)
+
+    hold()
+    assert statuses.count(200) >= EXAMPLES

@@ -1,0 +1,153 @@
+"""A controller's query as a question: what it means, and what it may leave out."""
+
+from typing import Any
+
+import pytest
+
+from kinematics.orientation_forms import FORMS, TRIPLES
+from service.problems import (
+    FormNotFlat,
+    MissingField,
+    NotAvailable,
+    ServiceError,
+    Unparseable,
+    UnusableValue,
+)
+from service.wire.controller import (
+    PARAMETERS,
+    errors_inline,
+    single_question,
+    wanted_format,
+    wanted_tag,
+)
+from service.wire.question_parameters import QUESTION_PARAMETERS
+from service.wire.single import SingleQuestion
+
+ALL_NAMES = [f"q{n}" for n in range(1, 33)]
+
+
+def asked(flat: bool = False, **parameters: str) -> SingleQuestion:
+    return single_question("one-turn", parameters, "flat" if flat else "json")
+
+
+def refusal(kind: type[ServiceError], flat: bool = False, **parameters: str) -> ServiceError:
+    with pytest.raises(kind) as caught:
+        asked(flat, **parameters)
+    assert caught.value.location == "query"
+    return caught.value
+
+
+def test_the_least_question() -> None:
+    question = asked(q="1,2")
+    assert (question.arm, question.joints, question.joint_names) == ("one-turn", [1, 2], ["q", "q"])
+    assert question.form == "quaternion-wxyz"
+    assert asked(True, q="1").form == "xyz-fixed"
+    rest = ("tool", "tool_pose", "frame", "units", "revision", "expect", "task")
+    assert [getattr(question, name) for name in rest] == [None] * 7
+
+
+def test_a_whole_question() -> None:
+    question = asked(
+        q="1", tool="3", frame="tray", form="matrix", units="in-deg", revision="4",
+        expect="0af70af7", task="vx,wz", tag="5", format="json",
+    )  # fmt: skip
+    assert (question.tool, question.frame, question.form) == ("3", "tray", "matrix")
+    assert (question.units, question.revision, question.expect) == ("in-deg", 4, "0af70af7")
+    assert question.task == ["vx", "wz"]
+    assert asked(q="1", task="position").task == "position"
+
+
+@pytest.mark.parametrize(
+    ("parameters", "joints", "names"),
+    [
+        ({"q": "0,-90,1.5E+01"}, [0, -90, 15], ["q"] * 3),
+        ({"q": ""}, [], []),
+        ({}, [], []),
+        ({"q1": "1", "q2": "-2"}, [1, -2], ["q1", "q2"]),
+        ({"q2": "-2", "q1": " 1"}, [1, -2], ["q1", "q2"]),
+        ({f"q{n}": str(n) for n in range(32, 0, -1)}, list(range(1, 33)), ALL_NAMES),
+    ],
+)
+def test_joint_values(parameters: dict[str, str], joints: list[float], names: list[str]) -> None:
+    question = asked(**parameters)
+    assert question.joints == joints
+    assert question.joint_names == names
+
+
+def test_joint_values_that_cannot_be_told() -> None:
+    assert refusal(UnusableValue, q="1", q1="1").where == ("q1",)
+    assert refusal(MissingField, q2="1").where == ("q1",)
+    assert refusal(MissingField, q1="1", q2="1", q4="1").where == ("q3",)
+    assert refusal(Unparseable, q1="1", q2="").where == ("q2",)
+    assert refusal(Unparseable, q="1;2").where == ("q",)
+
+
+def test_an_inline_tool() -> None:
+    pose = asked(q="1", tx="1", tz="-3.5", tr2="90").tool_pose
+    assert pose is not None
+    assert pose.model_dump(exclude_unset=True) == {
+        "position": [1, 0, -3.5],
+        "orientation": {"form": "xyz-fixed", "values": [0, 90, 0]},
+    }
+    for form, read in [("zyx-current", "zyx-current"), ("matrix", "xyz-fixed")]:
+        pose = asked(q="1", tx="0", form=form).tool_pose
+        assert pose is not None
+        assert pose.orientation is not None
+        assert pose.orientation.form == read
+    assert refusal(UnusableValue, q="1", tx="1", tool="pen").where == ("tool",)
+    assert refusal(Unparseable, q="1", tr3="left").where == ("tr3",)
+
+
+@pytest.mark.parametrize("form", FORMS)
+def test_only_triples_are_flat(form: str) -> None:
+    assert asked(q="1", form=form).form == form
+    if form in TRIPLES:
+        assert asked(True, q="1", form=form).form == form
+    else:
+        error = refusal(FormNotFlat, True, q="1", form=form)
+        assert (error.where, error.value) == (("form",), form)
+
+
+@pytest.mark.parametrize(
+    ("parameters", "where"),
+    [({"units": "cm"}, "units"), ({"revision": "1.5"}, "revision"), ({"scale": "10"}, "scale")],
+)
+def test_other_values_that_cannot_be_used(parameters: dict[str, str], where: str) -> None:
+    assert refusal(ServiceError, q="1", **parameters).where == (where,)
+
+
+def test_a_format() -> None:
+    assert wanted_format({}) == "json"
+    assert wanted_format({"format": "flat"}) == "flat"
+    for later in ("txt", "csv"):
+        with pytest.raises(NotAvailable) as caught:
+            wanted_format({"format": later})
+        assert caught.value.status == 422
+    for wrong in ("xml", "", "FLAT"):
+        with pytest.raises(UnusableValue):
+            wanted_format({"format": wrong})
+
+
+def test_a_tag() -> None:
+    assert wanted_tag({}) == 0
+    assert [wanted_tag({"tag": text}) for text in ("7", "-7", " 7", "007")] == [7, -7, 7, 7]
+    for wrong in ("", "x", "1.0", "1e3"):
+        with pytest.raises(Unparseable):
+            wanted_tag({"tag": wrong})
+
+
+def test_refusals_inline() -> None:
+    assert [errors_inline(given) for given in ({}, {"errors": "inline"})] == [False, True]
+    for wrong in ("", "yes", "INLINE"):
+        with pytest.raises(UnusableValue):
+            errors_inline({"errors": wrong})
+
+
+def test_what_is_documented_is_what_is_known() -> None:
+    said = {given["name"]: given for given in QUESTION_PARAMETERS}
+    assert len(said) == len(QUESTION_PARAMETERS) == 49
+    # What comes later is known, so that it can be refused by name.
+    assert set(said) | {"scale"} == PARAMETERS
+    schemas: list[dict[str, Any]] = [given["schema"] for given in said.values()]
+    assert all(schema["type"] for schema in schemas)
+    assert said["form"]["schema"]["enum"] == list(FORMS)
