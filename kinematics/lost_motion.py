@@ -17,7 +17,7 @@ from kinematics.singular_kinds import Anatomy, kinds_of, support_of
 from kinematics.singularity import NEAR, REGULAR, SINGULAR, STATES, Judgement
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace
-from kinematics.tolerances import LOST_PART, NAMED_AXIS, NUDGE, TRAVEL_TIE
+from kinematics.tolerances import FURTHEST_STEP, LOST_PART, NAMED_AXIS, NUDGE, TRAVEL_TIE
 
 
 @dataclass(frozen=True)
@@ -188,7 +188,7 @@ def _told(
     else:
         say = (
             f"the tool {verb} turn about {_axis(angular, frame)} "
-            f"without moving along {_axis(-linear, frame)}"
+            f"without moving along {_axis(linear, frame)}"
         )
     return LostMotion(linear + 0.0, angular + 0.0, say)
 
@@ -210,7 +210,8 @@ def _unit(vector: FloatArray) -> FloatArray:
 
 def _travel_to(arm: Arm, space: TaskSpace, judgement: Judgement) -> tuple[int, float, str] | None:
     pure = np.abs(judgement.step / space.joint_scale)
-    if np.isnan(pure).any():
+    # Where the value is flat, the first-order step leads nowhere.
+    if not pure.max() <= FURTHEST_STEP:
         return None
     joint = int(np.argmax(pure >= pure.max() * (1.0 - TRAVEL_TIE)))
     return joint + 1, float(judgement.step[joint]), arm.joint_units[joint]

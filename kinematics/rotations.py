@@ -172,8 +172,10 @@ def quaternion_wxyz_of(rotation: ArrayLike) -> FloatArray:
     # An accepted matrix is good to RIGID_SILENT only: smaller components have no sign of their own.
     quaternions_wxyz(matrices, 0.5 * HALF_TURN_NOISE, RIGID_SILENT, quaternions)
     quaternions += 0.0  # -0.0 becomes 0.0
-    # Compiled code may take NaN for any number.
-    quaternions[~np.isfinite(matrices).all(axis=(1, 2))] = np.nan
+    with np.errstate(invalid="ignore", over="ignore"):
+        suspect = not np.isfinite(matrices.sum())
+    if suspect:  # compiled code may take NaN for any number
+        quaternions[~np.isfinite(matrices).all(axis=(1, 2))] = np.nan
     return quaternions.reshape(*batch, 4)
 
 

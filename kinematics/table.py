@@ -12,7 +12,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.errors import InvalidArm, NotFinite, OutOfRange, TooManyRows
-from kinematics.tolerances import LARGEST_MAGNITUDE, MOST_ROWS
+from kinematics.tolerances import (
+    LARGEST_MAGNITUDE,
+    MOST_ROWS,
+    NARROWEST_TRAVEL,
+    SLOWEST_SPEED,
+)
 
 FloatArray = NDArray[np.float64]
 
@@ -200,9 +205,10 @@ def check_row(row: Row, index: int) -> None:
         )
     if row.top_speed is not None:
         check_number(row.top_speed, (*where, "top_speed"))
-        if row.top_speed <= 0:
+        if row.top_speed < SLOWEST_SPEED:
             raise InvalidArm(
-                f"top speed of row {index + 1} is not positive",
+                f"top speed of row {index + 1} is not positive, or below {SLOWEST_SPEED:g} "
+                "per second",
                 where=(*where, "top_speed"),
                 value=row.top_speed,
                 way_out="give a speed above 0, or leave it out",
@@ -251,7 +257,7 @@ def check_travel(bounds: Travel, where: Sequence[str | int], what: str) -> None:
     """
     for position, bound in enumerate(bounds):
         check_number(bound, (*where, position))
-    if not bounds.lower < bounds.upper:
+    if not bounds.upper - bounds.lower >= NARROWEST_TRAVEL:
         raise InvalidArm(
             f"{what} is reversed or empty",
             where=where,

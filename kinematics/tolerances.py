@@ -8,6 +8,14 @@ SHORTEST_LENGTH = 1e-9
 """Metres; a characteristic length below it is rounding left of 0, or a slip of units. Divided by
 one of 1e-300 m every number of a judgement would leave the range of doubles."""
 
+SLOWEST_SPEED = 1e-9
+"""Radians or metres per second: a turn takes two hundred years. A joint whose top speed is below
+it does not move, and numbers divided by the speed would leave the range of doubles."""
+
+NARROWEST_TRAVEL = 1e-9
+"""Radians or metres; a travel below it is empty to any encoder, and shares of it would leave the
+range of doubles."""
+
 MOST_ROWS = 32
 """Rows of a table: twice the longest chains in plants, and a bound for work per posture."""
 
@@ -106,3 +114,7 @@ LEVEL_VALUE = 1e-12
 TRAVEL_TIE = 1e-9
 """Relative difference within which two joints' travels to a singular place are the same length,
 and the lower joint is named: rounding must not choose."""
+
+FURTHEST_STEP = 100.0
+"""Radians, or L, of a first-order step to a singular place beyond which it is not told: no joint
+travels that far, and the step says only that the value hardly changes here."""

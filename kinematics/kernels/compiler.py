@@ -3,11 +3,14 @@
 Left out: when they are compiled (at the first call; the service does it ahead in a thread).
 """
 
+import pickle
 from collections.abc import Callable
+from contextlib import suppress
 from typing import Any, TypeVar
 
 import numba
 import numpy as np
+from numba.core.caching import FunctionCache
 from numpy.typing import NDArray
 
 Function = TypeVar("Function", bound=Callable[..., Any])
@@ -31,17 +34,26 @@ def compiled(function: Function) -> Function:
     >>> doubled(1.5)
     3.0
     """
-    options: dict[str, Any] = {
-        "fastmath": set(FLAGS),
-        "error_model": "numpy",
-        "nogil": True,
-    }
-    try:
-        made = numba.njit(cache=True, **options)(function)
-    except RuntimeError:
-        # No place for a cache: numba says so when the function is made, that is, on import.
-        made = numba.njit(cache=False, **options)(function)
+    # Numba's own types do not say that what it makes is called as the function was.
+    made: Any = numba.njit(fastmath=set(FLAGS), error_model="numpy", nogil=True)(function)
+    # No place for a cache is told when the cache is made, that is, on import.
+    with suppress(RuntimeError):
+        made._cache = _CacheIfPossible(function)  # type: ignore[no-untyped-call]
     return made  # type: ignore[no-any-return]
+
+
+class _CacheIfPossible(FunctionCache):
+    """Numba's cache, for which a full disk or a torn file is a reason to compile, not to fail."""
+
+    def save_overload(self, sig: object, data: object) -> None:
+        with suppress(OSError):
+            super().save_overload(sig, data)  # type: ignore[no-untyped-call]
+
+    def load_overload(self, sig: object, target_context: object) -> object:
+        try:
+            return super().load_overload(sig, target_context)  # type: ignore[no-untyped-call]
+        except (OSError, EOFError, pickle.UnpicklingError):
+            return None
 
 
 def for_kernel(values: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -13,7 +13,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import BASE
-from kinematics.chain import tool_in_base
 from kinematics.findings import (
     ANGLES_NOT_UNIQUE,
     INPUT_REPAIRED,
@@ -32,7 +31,7 @@ from kinematics.travel_limits import limits_exceeded, travel_margin
 from service.convert import jacobians_out, orientation_out
 from service.operations.jacobians import Wanted, base_in_axes_of, jacobian_items
 from service.operations.joint_rows import JointRows
-from service.operations.poses import pose_items
+from service.operations.poses import placed, pose_items
 from service.operations.questions import Question
 from service.operations.singularities import judged
 from service.problems import KINDS
@@ -145,9 +144,7 @@ class ManyPoses(Many):
         return pose_items(self.question, rows, singularity=self.singularity, links=self.links)
 
     def _bare(self, values: FloatArray) -> FloatArray:
-        tool_in_frame = self._placed(
-            tool_in_base(self.question.arm, values, self.question.tool.tool_in_flange)
-        )
+        tool_in_frame = placed(self.question, values, None)
         bare = np.empty((len(values), 7))
         bare[:, :3] = self.question.units.length_out(tool_in_frame[:, :3, 3])
         bare[:, 3:] = quaternion_wxyz_of(tool_in_frame[:, :3, :3])
@@ -157,11 +154,7 @@ class ManyPoses(Many):
         question, motion = self.question, None
         if self.singularity:
             motion = motion_of(question.arm, values, question.tool.tool_in_flange)
-            tool_in_frame = self._placed(motion.tool_in_base)
-        else:
-            tool_in_frame = self._placed(
-                tool_in_base(question.arm, values, question.tool.tool_in_flange)
-            )
+        tool_in_frame = placed(question, values, motion)
         rotation = tool_in_frame[:, :3, :3]
         numbers = np.hstack(
             [
@@ -170,13 +163,6 @@ class ManyPoses(Many):
             ]
         )
         return numbers, motion, distance_from_lock(question.form, rotation) <= LOCK_NOTICE
-
-    def _placed(self, of_base: FloatArray) -> FloatArray:
-        base_in_frame = self.question.arm.base_in_frame(self.question.frame)
-        if np.array_equal(base_in_frame, np.eye(4)):
-            return of_base
-        placed: FloatArray = base_in_frame @ of_base
-        return placed
 
 
 @dataclass(frozen=True)

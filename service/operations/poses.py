@@ -8,9 +8,10 @@ from typing import Any
 
 import numpy as np
 
+from kinematics.arm import BASE
 from kinematics.chain import Walk, tool_in_base
 from kinematics.findings import Finding
-from kinematics.jacobian import motion_of
+from kinematics.jacobian import Motion, motion_of
 from kinematics.orientation_forms import distance_from_lock
 from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE
@@ -41,9 +42,7 @@ def pose_items(
     arm, tool_in_flange = question.arm, question.tool.tool_in_flange
     motion = motion_of(arm, rows.values, tool_in_flange) if singularity or links else None
     base_in_frame = arm.base_in_frame(question.frame)
-    tool_in_frame = base_in_frame @ (
-        tool_in_base(arm, rows.values, tool_in_flange) if motion is None else motion.tool_in_base
-    )
+    tool_in_frame = placed(question, rows.values, motion)
     positions = question.units.length_out(tool_in_frame[..., :3, 3]).tolist()
     orientations = orientation_out(
         question.units, question.form, tool_in_frame[..., :3, :3]
@@ -75,6 +74,20 @@ def pose_items(
             parts["links"] = _links(question, motion.walk, index, base_in_frame)
         items.append(answered(question.units, findings, parts))
     return with_refused(items, rows, ("position", "orientation"))
+
+
+def placed(question: Question, joint_values: FloatArray, motion: Motion | None) -> FloatArray:
+    """Return the tool in the frame asked for, (count, 4, 4); from the motion if there is one."""
+    arm = question.arm
+    in_base = (
+        tool_in_base(arm, joint_values, question.tool.tool_in_flange)
+        if motion is None
+        else motion.tool_in_base
+    )
+    if question.frame == BASE:
+        return in_base
+    in_frame: FloatArray = arm.base_in_frame(question.frame) @ in_base
+    return in_frame
 
 
 def _plain_items(

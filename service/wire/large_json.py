@@ -7,6 +7,7 @@ small bodies are (body.py).
 import re
 from contextlib import suppress
 from dataclasses import dataclass
+from itertools import chain
 
 import numpy as np
 import orjson
@@ -71,7 +72,12 @@ def _array(text: bytes) -> FloatArray | None:
     if any(letter in text for letter in (b"t", b"f", b"n")):  # true, false, null
         return None
     try:
-        array = np.array(orjson.loads(text), dtype=np.float64)
-    except ValueError:
+        rows = orjson.loads(text)
+        widths = set(map(len, rows))
+        if len(widths) != 1 or widths == {0}:
+            return None
+        numbers = chain.from_iterable(rows)
+        flat = np.fromiter(numbers, np.float64, len(rows) * widths.pop())
+    except (ValueError, TypeError):  # no JSON, or rows that hold more than numbers
         return None
-    return array if array.ndim == 2 and array.shape[1] else None
+    return flat.reshape(len(rows), -1)

@@ -59,6 +59,8 @@ CORE_IMPORTS = {
     *("numpy", "scipy", "numba"),
     *("collections", "dataclasses", "enum", "functools", "hashlib", "itertools", "json", "math"),
     *("numbers", "typing"),
+    # What a cache of machine code that cannot be read or written fails with.
+    *("contextlib", "pickle"),
 }
 
 MOST_LINES = 330
@@ -163,7 +165,7 @@ ANGLES = {
 
 # What stands in the service all the same: a change of frame, written as the product whose names
 # cancel, ``base_in_frame @ tool_in_base``; and nothing else, there and nowhere else.
-EXCUSED = re.compile(r"base_in_frame @ ")
+EXCUSED = re.compile(r"(arm\.)?base_in_frame(\(\w+\.frame\))? @ ")
 MAY_CHANGE_FRAMES = ("service.operations",)
 
 

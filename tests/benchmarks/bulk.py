@@ -8,11 +8,13 @@ controller's question takes meanwhile, and with the longest time the event loop 
 import asyncio
 import http.client
 import json
-import multiprocessing
 import subprocess
 import sys
 import time
-from concurrent.futures import ProcessPoolExecutor
+from collections.abc import Iterator
+from concurrent.futures import Future, ProcessPoolExecutor
+from contextlib import contextmanager
+from multiprocessing import get_context
 from pathlib import Path
 from typing import Any
 
@@ -35,6 +37,7 @@ JUDGED = 20_000
 TURNS = 7
 SEED = 20_261_201
 TICK_S = 0.001
+WARM_S = 3.0
 LENGTHS = ((60, 410), (520, 0), (30, 0), (0, 470), (0, 0), (0, 110))
 TWISTS = (90, 0, 90, -90, 90, 0)
 ARM: dict[str, Any] = {
@@ -97,12 +100,11 @@ def send(port: int, path: str, body: bytes, content_type: str) -> tuple[float, i
     return taken, answer.status, content
 
 
-def get_times(port: int, seconds: float, until: Any = None) -> list[float]:
-    """Return what single poses take, asked one after the other; ``until`` is a future."""
+def get_times(port: int, until: Future[None]) -> list[float]:
+    """Return what single poses take, asked one after the other until something else is done."""
     connection = http.client.HTTPConnection("127.0.0.1", port, timeout=120)
     times = []
-    end = time.perf_counter() + seconds
-    while time.perf_counter() < end or (until is not None and not until.done()):
+    while not until.done():
         started = time.perf_counter()
         connection.request("GET", "/v1/arms/measured/pose?q=10,20,30,40,50,60&format=flat")
         answer = connection.getresponse()
@@ -152,38 +154,57 @@ def bodies() -> dict[str, tuple[str, bytes, str]]:
     }
 
 
-def measure(port: int, pid: int) -> None:
+def measure() -> None:
     """Print every figure."""
     sides = bodies()
-    for path, body, content_type in sides.values():  # so that nothing is compiled while measured
-        assert send(port, path, body, content_type)[1] == 200, path
-    times: dict[str, list[float]] = {name: [] for name in sides}
-    for _ in range(TURNS):
-        for name, side in sides.items():
-            times[name].append(send(port, *side)[0])
-    yardstick = float(np.median(times["echo"]))
-    print(f"{VECTORS} joint vectors; a raw echo of their doubles takes {1e3 * yardstick:.1f} ms")
-    print(f"{'':28}{'ms':>8}{'x echo':>8}{'+ MiB':>8}{'GET p50':>9}{'p99':>7}{'stall':>7}  (ms)")
-    send(port, "/watch", b"", "")
-    idle = get_times(port, 3.0)
-    send_get(port, "/stall")
-    print(f"{'idle':28}{'':24}{_quantiles(idle)}{'':>7}")
-    with ProcessPoolExecutor(1, multiprocessing.get_context("spawn")) as other:
+    peaks = {name: peak_of(side) for name, side in sides.items()}
+    with running() as (port, _), ProcessPoolExecutor(1, get_context("spawn")) as other:
+        for path, body, content_type in sides.values():  # so that nothing is compiled later
+            assert send(port, path, body, content_type)[1] == 200, path
+        times: dict[str, list[float]] = {name: [] for name in sides}
+        for _ in range(TURNS):
+            for name, side in sides.items():
+                times[name].append(send(port, *side)[0])
+        yardstick = float(np.median(times["echo"]))
+        print(f"{VECTORS} joint vectors; a raw echo of their doubles: {1e3 * yardstick:.1f} ms")
+        print(f"{'':28}{'ms':>8}{'x echo':>8}{'+ MiB':>8}{'GET p50':>9}{'p99':>7}{'stall':>7}")
+        send(port, "/watch", b"", "")
         other.submit(time.sleep, 0).result()
+        print(f"{'idle':28}{'':24}{quantiles(get_times(port, other.submit(time.sleep, 3.0)))}")
         for name, side in sides.items():
-            time.sleep(0.3)
-            before = memory(pid, "VmRSS")
-            Path(f"/proc/{pid}/clear_refs").write_text("5", encoding="ascii")
-            send(port, *side)
-            above = memory(pid, "VmHWM") - before
-            send_get(port, "/stall")
-            meanwhile = get_times(port, 0.0, other.submit(repeated, port, side))
-            stood = 1e3 * float(send_get(port, "/stall"))
+            get(port, "/stall")
+            meanwhile = get_times(port, other.submit(repeated, port, side))
+            stood = 1e3 * float(get(port, "/stall"))
             median = float(np.median(times[name]))
             print(
-                f"{name:28}{1e3 * median:8.1f}{median / yardstick:8.1f}{above:8.0f}"
-                f"{_quantiles(meanwhile)}{stood:7.1f}"
+                f"{name:28}{1e3 * median:8.1f}{median / yardstick:8.1f}{peaks[name]:8.0f}"
+                f"{quantiles(meanwhile)}{stood:7.1f}"
             )
+
+
+def peak_of(side: tuple[str, bytes, str]) -> float:
+    """Return by how many MiB one request lifts the serving process above idle."""
+    with running() as (port, pid):
+        assert get(port, "/v1/arms/measured/pose?q=0,0,0,0,0,0")
+        before = memory(pid, "VmRSS")
+        Path(f"/proc/{pid}/clear_refs").write_text("5", encoding="ascii")
+        assert send(port, *side)[1] == 200
+        return memory(pid, "VmHWM") - before
+
+
+@contextmanager
+def running() -> Iterator[tuple[int, int]]:
+    """Start a server that knows the arm; gives its port and process number."""
+    command = [sys.executable, __file__, "serve"]
+    with subprocess.Popen(command, stdout=subprocess.PIPE, text=True, cwd=ROOT) as process:
+        try:
+            assert process.stdout is not None
+            port = int(process.stdout.readline().rsplit(":", 1)[1])
+            time.sleep(WARM_S)
+            assert send(port, "/v1/arms", json.dumps(ARM).encode(), "application/json")[1] == 201
+            yield port, process.pid
+        finally:
+            process.terminate()
 
 
 def repeated(port: int, side: tuple[str, bytes, str]) -> None:
@@ -192,7 +213,7 @@ def repeated(port: int, side: tuple[str, bytes, str]) -> None:
         send(port, *side)
 
 
-def send_get(port: int, path: str) -> str:
+def get(port: int, path: str) -> str:
     """Return the body of one GET."""
     connection = http.client.HTTPConnection("127.0.0.1", port)
     connection.request("GET", path)
@@ -201,27 +222,14 @@ def send_get(port: int, path: str) -> str:
     return text
 
 
-def _quantiles(times: list[float]) -> str:
+def quantiles(times: list[float]) -> str:
+    """Return median and 99th percentile in milliseconds as columns."""
     half, most = np.quantile(times, (0.5, 0.99))
     return f"{1e3 * half:9.1f}{1e3 * most:7.1f}"
-
-
-def main() -> None:
-    """Start a server, measure, end it."""
-    command = [sys.executable, __file__, "serve"]
-    with subprocess.Popen(command, stdout=subprocess.PIPE, text=True, cwd=ROOT) as process:
-        try:
-            assert process.stdout is not None
-            port = int(process.stdout.readline().rsplit(":", 1)[1])
-            time.sleep(3.0)
-            assert send(port, "/v1/arms", json.dumps(ARM).encode(), "application/json")[1] == 201
-            measure(port, process.pid)
-        finally:
-            process.terminate()
 
 
 if __name__ == "__main__":
     if sys.argv[1:] == ["serve"]:
         serve()
     else:
-        main()
+        measure()

@@ -152,7 +152,7 @@ def rows(draw: st.DrawFn) -> dict[str, Any]:
     optional = {
         "direction": st.sampled_from([1, -1]),
         "working_reason": st.text(max_size=5),
-        "top_speed": st.sampled_from([1e-300, 1e-6, 90, 1e9]),
+        "top_speed": st.sampled_from([1e-6, 90, 1e9]),
         "couplings": vectors(1, st.fixed_dictionaries({"axis": AXES, "ratio": NUMBERS})),
         "passive": st.booleans(),
     }

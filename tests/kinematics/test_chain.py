@@ -90,6 +90,50 @@ def test_many_turns_cost_no_digit(turns: float) -> None:
         np.testing.assert_allclose(posed, expected, rtol=0.0, atol=OF_REACH * reach)
 
 
+@pytest.mark.parametrize("count", [127, 128, 129, 300])
+def test_long_batches_equal_loops(count: int) -> None:
+    """Postures are worked on in blocks of 128: none is lost or mixed up where blocks meet."""
+    random = np.random.default_rng(count)
+    arm = random_arm(random, 6, coupled=True, passive=1)
+    tool = random_pose(random)
+    postures = random_joint_values(random, arm, count)
+    # One posture in the midst of a block takes the way of angles beyond a million radians.
+    postures[count // 2] *= 1e7
+    posed, walked = tool_in_base(arm, postures, tool), walk(arm, postures)
+    for index in range(count):
+        alone = walk(arm, postures[index])
+        scale = 1.0 + reach_of(arm, postures[index], tool)
+        single = tool_in_base(arm, postures[index], tool)
+        np.testing.assert_allclose(posed[index], single, rtol=0.0, atol=OF_REACH * scale)
+        for part in ("axis_direction", "axis_point", "link_in_base", "flange_in_base"):
+            actual, expected = getattr(walked, part)[index], getattr(alone, part)
+            np.testing.assert_allclose(actual, expected, rtol=0.0, atol=OF_REACH * scale)
+
+
+def test_any_layout_of_joint_values_is_read_alike() -> None:
+    random = np.random.default_rng(2)
+    arm = random_arm(random, 6)
+    postures = random_joint_values(random, arm, 20)
+    expected = tool_in_base(arm, postures, AT_FLANGE)
+    frozen = postures.copy()
+    frozen.setflags(write=False)
+    wide = np.zeros((40, 12))
+    wide[::2, ::2] = postures
+    for layout in (np.asfortranarray(postures), frozen, wide[::2, ::2], postures[::-1][::-1]):
+        assert (tool_in_base(arm, layout, AT_FLANGE) == expected).all()
+        assert (walk(arm, layout).flange_in_base == walk(arm, postures).flange_in_base).all()
+    assert (postures == frozen).all()
+
+
+def test_poses_are_written_where_they_are_wanted() -> None:
+    arm = arm_of(*SIX)
+    postures = random_joint_values(np.random.default_rng(3), arm, 10)
+    out = np.full((10, 4, 4), np.nan)
+    posed = tool_in_base(arm, postures, AT_FLANGE, out=out)
+    assert np.shares_memory(posed, out)
+    assert (out == tool_in_base(arm, postures, AT_FLANGE)).all()
+
+
 def test_many_turns_through_couplings_cost_what_adding_them_costs() -> None:
     random = np.random.default_rng(5)
     for _ in range(20):

@@ -1,5 +1,6 @@
 """Lost motions against the Jacobian in any axes, in words by hand, and as limits of motions."""
 
+import re
 from dataclasses import replace
 from typing import Any
 
@@ -157,6 +158,19 @@ def test_words_of_a_wrist_with_a_hand_are_true() -> None:
     of_joints = stepped_jacobian(arm_of(*WRIST), np.zeros(3), AT_FLANGE)
     assert abs(lost @ [0, 0, 0, 1, 0, 0]) > 0.01
     np.testing.assert_allclose(lost @ of_joints, 0.0, rtol=0.0, atol=1e-15)
+
+
+@pytest.mark.parametrize("name", ["six, wrist", "seven, elbow", "five, elbow"])
+def test_the_two_directions_in_words_are_lines_of_the_lost_motion(name: str) -> None:
+    """Both are lines, told without a sense: the largest entry is positive."""
+    rows, joint_values, _ = SINGULAR_POSTURES[name]
+    (one,) = told(arm_of(*rows), joint_values).posture.lost_motion
+    numbers = r"\(([-\d.]+), ([-\d.]+), ([-\d.]+)\)"
+    turn, move = (np.array(found, dtype=float) for found in re.findall(numbers, one.say))
+    for shown, part in ((turn, one.angular), (move, one.linear)):
+        line = part / np.linalg.norm(part) * np.sign(part[np.abs(part).argmax()])
+        # Two decimals: off by up to half a hundredth in each entry.
+        np.testing.assert_allclose(shown, line, rtol=0.0, atol=0.0051)
 
 
 def test_several_lost_motions_do_not_turn_with_rounding() -> None:

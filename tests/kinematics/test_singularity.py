@@ -426,3 +426,17 @@ def test_shapes(name: str, batch: tuple[int, ...]) -> None:
     assert judgement.step.shape == (*batch, count)
     for part in ("state", "rank", "condition", "manipulability", "smallest", "speed_factor"):
         assert getattr(judgement, part).shape == batch
+
+
+@pytest.mark.parametrize("name", ["planar", "five", "six", "nine"])
+@pytest.mark.parametrize("count", [63, 64, 65, 200])
+def test_long_batches_equal_loops(name: str, count: int) -> None:
+    """Matrices are decomposed in blocks of 64: none is lost or mixed up where blocks meet."""
+    arm = arm_of(*EXAMPLES[name])
+    postures = random_joint_values(np.random.default_rng(count), arm, count)
+    postures[count // 2] = 0.0  # one singular posture in the midst of the others
+    _, batch = judged(arm, postures)
+    for index in range(count):
+        _, alone = judged(arm, postures[index])
+        np.testing.assert_allclose(batch.values[index], alone.values, rtol=0.0, atol=1e-14)
+        assert int(batch.state[index]) == int(alone.state)
