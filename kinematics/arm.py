@@ -249,6 +249,13 @@ def _check_combined(arm: Arm, index: int, combined: CombinedTravel) -> None:
             value=list(combined.ratios),
             way_out="name rows of one kind",
         )
+    if not any(combined.ratios.values()):
+        raise InvalidArm(
+            "a combined travel with ratios of 0 alone bounds nothing",
+            where=(*where, "ratios"),
+            value=dict(combined.ratios),
+            way_out="give at least one ratio other than 0",
+        )
     check_travel(combined.travel, (*where, "travel"), f"combined travel {index + 1}")
 
 

@@ -14,8 +14,11 @@ from kinematics.arm import Arm
 from kinematics.errors import NotFinite, OutOfRange, WrongJointCount
 from kinematics.kernels.compiler import for_kernel
 from kinematics.kernels.forward import frames_and_axes, tool_poses
-from kinematics.table import Convention, FloatArray
+from kinematics.table import Convention, FloatArray, JointKind
 from kinematics.tolerances import LARGEST_MAGNITUDE
+
+MOST_JOINTS_LISTED = 12
+"""In a refusal; a controller's display shows no more."""
 
 
 @dataclass(frozen=True)
@@ -45,6 +48,33 @@ class Walk:
         )
 
 
+def joints_in_words(arm: Arm, *, length: str = "m", angle: str = "rad") -> str:
+    """Return how many joint values the arm takes and what each of them is, the first twelve.
+
+    Parameters
+    ----------
+    length, angle : names of the units of prismatic and of revolute rows.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = (Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, passive=True),
+    ...         Row(JointKind.PRISMATIC, 0.0, 0.0, 0.1, 0.0))
+    >>> joints_in_words(Arm("lift", Table(Convention.STANDARD, rows)))
+    '1 values, one for each driven row: row 2 prismatic (m)'
+    """
+    driven = arm.drive_map.driven
+    said = [
+        f"row {index + 1} {kind} ({angle if kind is JointKind.REVOLUTE else length})"
+        for index in driven[:MOST_JOINTS_LISTED]
+        for kind in (arm.table.rows[index].joint,)
+    ]
+    more = len(driven) - len(said)
+    if more:
+        said.append(f"and {more} more")
+    return f"{len(driven)} values, one for each driven row: {', '.join(said) or 'there is none'}"
+
+
 def checked_joint_values(arm: Arm, joint_values: ArrayLike) -> FloatArray:
     """Return joint values as a float array (..., joints), or refuse them.
 
@@ -65,7 +95,7 @@ def checked_joint_values(arm: Arm, joint_values: ArrayLike) -> FloatArray:
         raise WrongJointCount(
             f"{given} joint values for an arm of {arm.joint_count} joints",
             value=given,
-            way_out=f"give {arm.joint_count} values, one for each driven row in row order",
+            way_out=f"give {joints_in_words(arm)}",
         )
     usable = np.abs(values) <= LARGEST_MAGNITUDE
     if not usable.all():

@@ -31,7 +31,7 @@ def digests_of(arm: Arm) -> Digests:
 
     Source
     ------
-    SHA-256: FIPS 180-4; shortest doubles as ECMA-262 / RFC 8785 print them, by Python's repr.
+    SHA-256: FIPS 180-4; doubles as Python prints them, with the fewest digits that read back.
 
     Examples
     --------

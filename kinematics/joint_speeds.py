@@ -37,7 +37,8 @@ def joint_speeds(
 
     All six rows are asked for, scaled by L; directions the arm never has are left unmet. A
     singular value s below the near threshold t is damped by the factor s / (s^2 + d^2) with
-    d^2 = (1 - (s / t)^2) t^2, which meets 1 / s at t without a jump and stays below 1 / t.
+    d^2 = (1 - (s / t)^2) t^2, which meets 1 / s at t without a jump and stays below 1 / t. The
+    threshold is that of ``space``: an arm judged by its position alone is damped by that.
 
     Source
     ------

@@ -17,7 +17,15 @@ from kinematics.singular_kinds import Anatomy, kinds_of, support_of
 from kinematics.singularity import NEAR, REGULAR, SINGULAR, STATES, Judgement
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace
-from kinematics.tolerances import FURTHEST_STEP, LOST_PART, NAMED_AXIS, NUDGE, TRAVEL_TIE
+from kinematics.tolerances import (
+    FURTHEST_STEP,
+    LOST_PART,
+    MOST_SPARE,
+    NAMED_AXIS,
+    NUDGE,
+    SETTLED_DECIMALS,
+    TRAVEL_TIE,
+)
 
 
 @dataclass(frozen=True)
@@ -78,9 +86,12 @@ def describe(
     if state != REGULAR:
         left = _lost_directions(arm, space, joint_values, tool_in_flange, judgement)
         lost = [_unit(space.covector(direction)) for direction in left]
-        null_motions = _null_motions(space, judgement)
-        taking_part = _taking_part(space, judgement, null_motions)
-        kinds = kinds_of(arm, anatomy, motion, state, null_motions, taking_part, lost)
+        null_motions = _null_motions(judgement)
+        taking_part = _taking_part(
+            arm, space, joint_values, tool_in_flange, judgement, null_motions
+        )
+        in_joint_units = null_motions * space.joint_scale[:, None]
+        kinds = kinds_of(arm, anatomy, motion, state, in_joint_units, taking_part, lost)
         joints = tuple(index + 1 for index in taking_part)
     return PostureSingularity(
         state=STATES[state],
@@ -132,7 +143,7 @@ def _settled(directions: list[FloatArray]) -> list[FloatArray]:
     settled: list[FloatArray] = []
     for _ in directions:
         # Rounded, so that of axes that share a direction equally the first is taken.
-        axis = int(np.diag(remaining).round(9).argmax())
+        axis = int(np.diag(remaining).round(SETTLED_DECIMALS).argmax())
         settled.append(remaining[axis] / np.sqrt(remaining[axis, axis]))
         remaining = remaining - np.outer(settled[-1], settled[-1])
     return settled
@@ -149,28 +160,51 @@ def _nudged(
     return best
 
 
-def _null_motions(space: TaskSpace, judgement: Judgement) -> FloatArray:
-    """Return joint motions (joints, k), scaled, that (nearly) do not move the task."""
+def _null_motions(judgement: Judgement) -> FloatArray:
+    """Return joint motions (joints, k), pure numbers, that (nearly) do not move the task."""
     if int(judgement.state) == NEAR:
         return judgement.right[:, -1:]
-    null: FloatArray = np.hstack([judgement.right[:, int(judgement.rank) :], judgement.rest])
-    return null * space.joint_scale[:, None]
+    return np.hstack([judgement.right[:, int(judgement.rank) :], judgement.rest])
 
 
 def _taking_part(
-    space: TaskSpace, judgement: Judgement, null_motions: FloatArray
+    arm: Arm,
+    space: TaskSpace,
+    joint_values: FloatArray,
+    tool_in_flange: FloatArray,
+    judgement: Judgement,
+    null_motions: FloatArray,
 ) -> tuple[int, ...]:
+    """Return the indices of the joints that tell the posture.
+
+    With spare joints, what the posture lost mixes with what the arm can always do without moving
+    its tool. Two ways to tell them apart are tried, and the one that names fewer joints is taken:
+    what is left once the free motions of a posture a hair aside are taken out, and the fewest
+    joints whose motion moves nothing.
+    """
     state = int(judgement.state)
     spare = judgement.rest.shape[1]
     if state == NEAR or not spare:
         return support_of(null_motions, state)
-    # The fewest joints that move nothing: zero as many entries as there are spare motions.
+    scaled = space.scaled(_nudged(arm, space, joint_values, tool_in_flange))
+    free = np.linalg.svd(scaled)[2][space.generic_rank :].T
+    taken_out = null_motions @ np.linalg.svd(free.T @ null_motions)[2][spare:].T
+    ways = [support_of(taken_out, NEAR)]
+    if spare <= MOST_SPARE:
+        ways.append(_fewest_joints(null_motions, spare))
+    return min(ways, key=len)
+
+
+def _fewest_joints(null_motions: FloatArray, spare: int) -> tuple[int, ...]:
+    """Return the joints of the null motions that take the fewest, of several such of all.
+
+    As many entries can be made zero as there are spare motions.
+    """
     supports = []
-    for zeroed in combinations(range(null_motions.shape[0]), min(spare, 2)):
-        free = np.linalg.svd(null_motions[list(zeroed)])[2][len(zeroed) :].T
-        supports.append(support_of(null_motions @ free, state))
-    supports = [support for support in supports if support]
-    fewest = min((len(support) for support in supports), default=0)
+    for zeroed in combinations(range(null_motions.shape[0]), spare):
+        left_over = np.linalg.svd(null_motions[list(zeroed)])[2][spare:].T
+        supports.append(support_of(null_motions @ left_over, SINGULAR))
+    fewest = min(len(support) for support in supports)
     return tuple(sorted({i for support in supports if len(support) == fewest for i in support}))
 
 

@@ -6,6 +6,7 @@ One small minimax problem per posture; closed form for no or one spare joint mot
 import numpy as np
 
 from kinematics.table import FloatArray
+from kinematics.tolerances import LINES_CROSS
 
 
 def least_peak(demand: FloatArray, spare: FloatArray) -> FloatArray:
@@ -45,7 +46,7 @@ def _on_one_line(demand: FloatArray, spare: FloatArray) -> FloatArray:
     rise = signed_spare[..., :, None] - signed_spare[..., None, :]
     gap = signed_demand[..., None, :] - signed_demand[..., :, None]
     crossing = np.zeros_like(gap)
-    np.divide(gap, rise, out=crossing, where=np.abs(rise) > 1e-12)
+    np.divide(gap, rise, out=crossing, where=np.abs(rise) > LINES_CROSS)
     candidates = crossing.reshape(*crossing.shape[:-2], crossing.shape[-1] ** 2)
     loads = np.abs(demand[..., None, :] + spare[..., None, :] * candidates[..., None])
     least: FloatArray = loads.max(axis=-1).min(axis=-1)

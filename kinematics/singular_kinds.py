@@ -21,6 +21,7 @@ from kinematics.tolerances import (
     AXES_PARALLEL,
     KIND_AT,
     KIND_NEARBY,
+    KIND_TIED,
     KIND_TYPICAL,
     SUPPORT_AT,
     SUPPORT_NEAR,
@@ -102,7 +103,7 @@ def kinds_of(
     Parameters
     ----------
     motion : of one posture.
-    null_motions : (joints, k), joint motions that (nearly) do not move the task.
+    null_motions : (joints, k), joint motions (rad, m) that (nearly) do not move the task.
     taking_part : indices of the joints that tell the posture where no measure does.
     lost : directions (6,) in metres and radians, base axes, that are (nearly) lost.
 
@@ -121,7 +122,7 @@ def kinds_of(
     if state == SINGULAR:
         limit = KIND_AT
     else:
-        limit = max(anatomy.near, 1.5 * closest) if closest < KIND_NEARBY else 0.0
+        limit = max(anatomy.near, KIND_TIED * closest) if closest < KIND_NEARBY else 0.0
     kinds = [kind for kind in sorted(measures, key=measures.__getitem__) if measures[kind] <= limit]
     if not kinds:
         kinds = [_by_joints(arm, anatomy, taking_part)]

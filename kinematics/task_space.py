@@ -233,7 +233,12 @@ def _near(arm: Arm, jacobians: FloatArray) -> float:
 
 
 def _possible_motions(jacobians: FloatArray) -> FloatArray:
-    """Return an orthonormal basis (rows, k) of what the sample postures together can produce."""
+    """Return an orthonormal basis (rows, k) of what the sample postures together can produce.
+
+    Held against the largest value of a single posture, as the generic rank is, so that k is never
+    below it: side by side no singular value is smaller than alone.
+    """
+    largest = np.linalg.svd(jacobians, compute_uv=False).max(initial=0.0)
     side_by_side = np.concatenate(list(jacobians), axis=1)
     left, values, _ = np.linalg.svd(side_by_side, full_matrices=False)
-    return left[:, values > GENERIC_RANK * values[0]] if values[0] else left[:, :0]
+    return left[:, values > GENERIC_RANK * largest] if largest else left[:, :0]

@@ -118,3 +118,17 @@ and the lower joint is named: rounding must not choose."""
 FURTHEST_STEP = 100.0
 """Radians, or L, of a first-order step to a singular place beyond which it is not told: no joint
 travels that far, and the step says only that the value hardly changes here."""
+
+MOST_SPARE = 2
+"""Spare joint motions up to which the fewest joints are looked for: the search tries every pair of
+joints, and every triple would take a hundred times as long for arms that hardly exist."""
+
+SETTLED_DECIMALS = 9
+"""Decimals to which shares of an axis are compared, so that rounding does not choose the axis."""
+
+KIND_TIED = 1.5
+"""Measures of kinds within this factor of the closest are told together near a posture that both
+lead to."""
+
+LINES_CROSS = 1e-12
+"""Difference of slopes, pure numbers, below which two lines of a joint demand do not cross."""

@@ -207,7 +207,7 @@ def _listed(arm: Arm) -> list[_Limit]:
         for row_number, ratio in combined.ratios.items():
             weights[driven.index(row_number - 1)] = ratio
         unit = arm.table.rows[next(iter(combined.ratios)) - 1].unit
-        terms = " + ".join(f"{ratio:g} x q{row}" for row, ratio in combined.ratios.items())
+        terms = " + ".join(f"{ratio:g} x row {row}" for row, ratio in combined.ratios.items())
         subject = f"combined travel {number} ({terms})"
         limits.append(_Limit(combined.travel, weights, 0.0, unit, subject, None, None, False))
     return limits

@@ -253,3 +253,10 @@ def test_joint_units_are_those_of_driven_rows() -> None:
     arm: Arm = arm_of(*MIXED)
     assert arm.joint_count == 3
     assert arm.joint_units == ("rad", "m", "rad")
+
+
+def test_a_combined_travel_of_zero_ratios_bounds_nothing() -> None:
+    nothing = CombinedTravel({1: 0.0, 2: 0.0}, Travel(0.1, 0.2))
+    error = refusal_of(combined_travel=(nothing,))
+    assert type(error) is InvalidArm
+    assert error.where == ("combined_travel", 0, "ratios")

@@ -1,5 +1,6 @@
 """Lost motions against the Jacobian in any axes, in words by hand, and as limits of motions."""
 
+import math
 import re
 from dataclasses import replace
 from typing import Any
@@ -11,7 +12,7 @@ from kinematics.arm import Arm, SingularityThresholds
 from kinematics.jacobian import in_axes, motion_of
 from kinematics.rotations import rotation_about
 from kinematics.singularity import SINGULAR
-from kinematics.table import Row, Table
+from kinematics.table import JointKind, Row, Table
 from kinematics.task_space import TaskSpace
 from kinematics.tolerances import NEAR_SINGULAR
 from kinematics.tolerances import SINGULAR as ZERO
@@ -410,3 +411,23 @@ def test_every_arm_at_rest_and_elsewhere_is_told_in_finite_numbers(name: str, ta
         expected = motion_of(arm, joint_values, AT_FLANGE).of_joints
         if posture.state == "singular":
             np.testing.assert_allclose(lost @ expected, 0.0, rtol=0.0, atol=1e-8)
+
+
+@pytest.mark.parametrize("rails", [0, 1, 2, 3, 4])
+def test_spare_rails_do_not_hide_the_joints_of_a_wrist(rails: int) -> None:
+    """Rails along one axis move against each other and nothing; the wrist's joints are told.
+
+    Source: by construction. A gantry along three axes carries a wrist of three meeting axes whose
+    middle joint is at 0, so its first and last axes line up.
+    """
+    quarter = math.pi / 2
+    slide = Row(JointKind.PRISMATIC, 0.0, 0.0, 0.0, 0.0)
+    turned = replace(slide, alpha=-quarter, theta=-quarter)
+    wrist = Row(JointKind.REVOLUTE, 0.0, -quarter, 0.0, 0.0)
+    rows = [slide] * rails + [turned, turned, slide]
+    rows += [wrist, replace(wrist, alpha=quarter), replace(wrist, alpha=0.0, d=0.1)]
+    joint_values = np.full(len(rows), 0.3)
+    joint_values[-2] = 0.0
+    posture = told(arm_of(*rows), joint_values).posture
+    assert (posture.state, posture.kinds) == ("singular", ("wrist",))
+    assert posture.joints == (rails + 4, rails + 6)

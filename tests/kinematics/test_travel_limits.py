@@ -91,7 +91,7 @@ def test_combined_travel_by_hand() -> None:
     assert (finding.code, finding.measure, finding.threshold) == (4, 2.0, 1.5)
     assert (finding.joint, finding.row, finding.unit) == (None, None, "rad")
     assert finding.text() == (
-        "combined travel 1 (1 x q2 + 0.5 x q3) is at 2 rad, beyond its travel limit 1.5 rad"
+        "combined travel 1 (1 x row 2 + 0.5 x row 3) is at 2 rad, beyond its travel limit 1.5 rad"
     )
 
 
