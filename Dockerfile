@@ -23,6 +23,6 @@ RUN .venv/bin/python -c "from kinematics.warm_up import warm_up; warm_up()"
 VOLUME /var/lib/armspan
 EXPOSE 8017
 HEALTHCHECK --interval=30s --timeout=3s --start-period=20s \
-    CMD [".venv/bin/python", "-c", "import urllib.request; urllib.request.urlopen('http://127.0.0.1:8017/v1/ping', timeout=2)"]
+    CMD [".venv/bin/python", "-c", "import os, urllib.request; urllib.request.urlopen('http://127.0.0.1:' + os.environ['ARMSPAN_PORT'] + '/v1/ping', timeout=2)"]
 ENTRYPOINT [".venv/bin/armspan"]
 CMD ["serve"]

@@ -11,7 +11,8 @@ NOT_A_SAFETY_FUNCTION = (
 CAUTIONS = (
     NOT_A_SAFETY_FUNCTION,
     '"Reachable" means geometry only: no collision, cable, payload or dynamics check.',
-    'A displayed pose may be late, stale, simulated or wrong; no display means "safe to enter".',
+    "A displayed pose may be late, stale, simulated or wrong; nothing that is displayed here, and "
+    'nothing that is missing, ever means "safe to enter".',
     "Joint values from here are proposals: first run at reduced speed by trained people.",
     "After a collision, motor, gear, tool or base change the table is void until a check pose "
     "has been measured.",

@@ -6,6 +6,7 @@ Left out: codes' numbers and statuses (``problems.py``) and how a complaint is f
 import difflib
 import json
 import math
+import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Literal
@@ -16,6 +17,8 @@ Location = Literal["body", "query", "path", "header"]
 SHOWN_CHARACTERS = 200
 _SHOWN_ITEMS = 12
 _SHOWN_DEPTH = 4
+_FEWEST_FOLDED = 3
+_NUMBERED = re.compile(r"(.*?[^0-9])([1-9][0-9]{0,8})", re.ASCII | re.DOTALL)
 _ABSENT = object()
 # orjson prints no integer beyond 64 bits.
 _LARGEST_INTEGER = 2**63 - 1
@@ -147,7 +150,34 @@ def way_out_of_unknown(name: str, known: Iterable[str]) -> str:
     close = nearest(name, names)
     if close is not None:
         return f'did you mean "{close}"?'
-    return f"known here: {', '.join(names)}" if names else "leave it out"
+    return f"known here: {', '.join(folded(names))}" if names else "leave it out"
+
+
+def folded(names: Iterable[str]) -> list[str]:
+    """Return names in order, with runs of numbered ones told by their first and last.
+
+    Examples
+    --------
+    >>> folded(["q", "q1", "q2", "q3", "q10", "arm", "a1", "a2"])
+    ['a1', 'a2', 'arm', 'q', 'q1 ... q3', 'q10']
+    """
+    runs: list[tuple[str, list[int]]] = []
+    for stem, number in sorted(map(_stem_and_number, set(names))):
+        if runs and runs[-1][0] == stem and 0 < runs[-1][1][-1] == number - 1:
+            runs[-1][1].append(number)
+        else:
+            runs.append((stem, [number]))
+    told: list[str] = []
+    for stem, numbers in runs:
+        each = [stem if number == 0 else f"{stem}{number}" for number in numbers]
+        told += each if len(each) < _FEWEST_FOLDED else [f"{each[0]} ... {each[-1]}"]
+    return told
+
+
+def _stem_and_number(name: str) -> tuple[str, int]:
+    """Return a name's text and the number from 1 on at its end, 0 where there is none."""
+    found = _NUMBERED.fullmatch(name)
+    return (found[1], int(found[2])) if found else (name, 0)
 
 
 def _below(node: object, step: str | int) -> object:

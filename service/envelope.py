@@ -22,6 +22,7 @@ _LOG = logging.getLogger(__name__)
 
 # W3C Trace Context, level 1: version, trace id, parent id, flags. A later version may append.
 _TRACEPARENT = re.compile(r"([0-9a-f]{2})-([0-9a-f]{32})-([0-9a-f]{16})-[0-9a-f]{2}(-.*)?")
+_ABSOLUTE = re.compile(r"https?://[^/]*", re.IGNORECASE)
 _SECURITY_HEADERS = (
     (b"x-content-type-options", b"nosniff"),
     (b"referrer-policy", b"no-referrer"),
@@ -52,6 +53,7 @@ class Envelope:
         if scope["type"] != "http":
             await self._app(scope, receive, send)
             return
+        _in_origin_form(scope)
         request_id = _request_id(scope["headers"])
         scope.setdefault("state", {})["request_id"] = request_id
         started = perf_counter()
@@ -105,7 +107,21 @@ def _request_id(headers: Iterable[tuple[bytes, bytes]]) -> str:
         is_allowed = version != "ff" and not (version == "00" and more)
         if is_allowed and trace_id.strip("0") and parent_id.strip("0"):
             return trace_id
+    return new_request_id()
+
+
+def new_request_id() -> str:
+    """Return a request id for a request that brought none."""
     return secrets.token_hex(16)
+
+
+def _in_origin_form(scope: Scope) -> None:
+    """Take scheme and host off a target that is a whole address (RFC 9112, 3.2.2)."""
+    found = _ABSOLUTE.match(scope["path"])
+    if found is not None:
+        scope["path"] = scope["path"][found.end() :] or "/"
+        raw = scope.get("raw_path", b"").decode("latin-1")
+        scope["raw_path"] = (_ABSOLUTE.sub("", raw) or "/").encode("latin-1")
 
 
 def _dressed(headers: Iterable[tuple[bytes, bytes]], request_id: str) -> list[tuple[bytes, bytes]]:

@@ -46,7 +46,7 @@ class ServiceError(Exception):
     way_out : what the caller can do about it.
     errors : several complaints at once, in place of the one above; ``say`` then sums them up.
     status : HTTP status where it differs from the table's (an unknown arm named in a body: 422).
-    headers : further headers of the answer.
+    headers : headers of the answer, beside those its kind always has.
 
     Examples
     --------
@@ -56,6 +56,7 @@ class ServiceError(Exception):
     """
 
     code: ClassVar[str] = "internal"
+    usual_headers: ClassVar[Mapping[str, str]] = {}
 
     def __init__(
         self,
@@ -77,7 +78,7 @@ class ServiceError(Exception):
         self.way_out = way_out
         self.errors = tuple(errors)
         self.status = status
-        self.headers = dict(headers or {})
+        self.headers = {**self.usual_headers, **(headers or {})}
 
     def details(self) -> tuple[Detail, ...]:
         """Return the complaints, at least one."""
@@ -178,7 +179,9 @@ class NotAvailable(ServiceError):
 
 
 class StorageUnavailable(NotAvailable):
-    """The database does not answer; asking again may help."""
+    """The database does not answer; asking again may help, after the seconds it says."""
+
+    usual_headers: ClassVar[Mapping[str, str]] = {"Retry-After": "5"}
 
 
 class StorageUnusable(NotAvailable):

@@ -79,41 +79,50 @@ MOST_DETAILS = 20
 
 
 class Kind(NamedTuple):
-    """A row of the table: the integer of flat answers, the HTTP status, what it means."""
+    """A row of the table: the integer of flat answers, the HTTP statuses, what it means.
+
+    What is in the path cannot be found (404) and what is in the body cannot be used (422); so some
+    codes have a second status beside the one they have where nothing else is said.
+    """
 
     number: int
-    status: int
+    statuses: tuple[int, ...]
     title: str
+
+    @property
+    def status(self) -> int:
+        """The status where nothing else is said."""
+        return self.statuses[0]
 
 
 KINDS: Mapping[str, Kind] = {
-    "unparseable": Kind(100, 400, "The request cannot be read"),
-    "duplicate-key": Kind(100, 400, "A key stands twice in one object"),
-    "wrong-media-type": Kind(100, 415, "The body is of a type this address does not read"),
-    "request-timeout": Kind(100, 408, "The body did not arrive in time"),
-    "wrong-joint-count": Kind(101, 422, "Not one joint value per driven row"),
-    "not-finite": Kind(102, 422, "A number is NaN or infinite"),
-    "unknown-arm": Kind(103, 404, "No arm or cell of this name"),
-    "unknown-tool": Kind(104, 422, "No tool of this name or number"),
-    "unknown-frame": Kind(104, 422, "No frame of this name or number"),
-    "unusable-value": Kind(105, 422, "A value cannot be used"),
-    "missing-field": Kind(105, 422, "A required field is missing"),
-    "out-of-range": Kind(105, 422, "A value is beyond 1e9 m or 1e9 rad"),
-    "not-rigid": Kind(106, 422, "A matrix is no rigid motion"),
-    "unknown-revision": Kind(107, 404, "No revision of this number"),
-    "digest-differs": Kind(107, 409, "The arm is not the one that was expected"),
-    "name-taken": Kind(107, 409, "The name is taken"),
-    "revision-differs": Kind(107, 412, "The arm has been changed since it was read"),
-    "precondition-required": Kind(107, 428, "A write must say which revision it replaces"),
-    "too-large": Kind(108, 413, "The request is too large"),
-    "not-available": Kind(109, 503, "Not available now"),
-    "internal": Kind(109, 500, "The service failed"),
-    "unknown-field": Kind(110, 422, "A field or parameter is not known"),
-    "unknown-path": Kind(110, 404, "No such address"),
-    "method-not-allowed": Kind(110, 405, "The address does not take this method"),
-    "tool-not-said": Kind(111, 422, "The arm has tools and no default tool"),
-    "form-not-flat": Kind(112, 422, "The orientation form does not fit a flat answer"),
-    "number-does-not-fit": Kind(113, 422, "A number does not fit its fixed-width field"),
+    "unparseable": Kind(100, (400,), "The request cannot be read"),
+    "duplicate-key": Kind(100, (400,), "A key stands twice in one object"),
+    "wrong-media-type": Kind(100, (415,), "The body is of a type this address does not read"),
+    "request-timeout": Kind(100, (408,), "The body did not arrive in time"),
+    "wrong-joint-count": Kind(101, (422,), "Not one joint value per driven row"),
+    "not-finite": Kind(102, (422,), "A number is NaN or infinite"),
+    "unknown-arm": Kind(103, (404, 422), "No arm or cell of this name"),
+    "unknown-tool": Kind(104, (422,), "No tool of this name or number"),
+    "unknown-frame": Kind(104, (422,), "No frame of this name or number"),
+    "unusable-value": Kind(105, (422,), "A value cannot be used"),
+    "missing-field": Kind(105, (422,), "A required field is missing"),
+    "out-of-range": Kind(105, (422,), "A value is beyond 1e9 m or 1e9 rad"),
+    "not-rigid": Kind(106, (422,), "A matrix is no rigid motion"),
+    "unknown-revision": Kind(107, (404, 422), "No revision of this number"),
+    "digest-differs": Kind(107, (409,), "The arm is not the one that was expected"),
+    "name-taken": Kind(107, (409,), "The name is taken"),
+    "revision-differs": Kind(107, (412,), "The arm has been changed since it was read"),
+    "precondition-required": Kind(107, (428,), "A write must say which revision it replaces"),
+    "too-large": Kind(108, (413, 422), "The request is too large"),
+    "not-available": Kind(109, (503, 422), "Not available now"),
+    "internal": Kind(109, (500,), "The service failed"),
+    "unknown-field": Kind(110, (422,), "A field or parameter is not known"),
+    "unknown-path": Kind(110, (404,), "No such address"),
+    "method-not-allowed": Kind(110, (405,), "The address does not take this method"),
+    "tool-not-said": Kind(111, (422,), "The arm has tools and no default tool"),
+    "form-not-flat": Kind(112, (422,), "The orientation form does not fit a flat answer"),
+    "number-does-not-fit": Kind(113, (422,), "A number does not fit its fixed-width field"),
 }
 
 # Codes that items and flat answers carry and that are no refusals.

@@ -82,5 +82,6 @@ def _methods_at(request: Request) -> list[str]:
 
 
 def _plain_paths(request: Request) -> list[str]:
-    paths = (getattr(route, "path", "") for route in request.app.router.routes)
+    # An address has a route for each of its methods.
+    paths = {getattr(route, "path", "") for route in request.app.router.routes}
     return [path for path in paths if path and "{" not in path and not path.startswith("/docs/")]

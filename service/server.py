@@ -22,6 +22,7 @@ from kinematics.warm_up import warm_up
 from service.app import create_app
 from service.cautions import NOT_A_SAFETY_FUNCTION
 from service.errors import StorageUnavailable, StorageUnusable
+from service.http_line import FixedLengthH11
 from service.settings import Settings, unknown_variables
 from service.web.pages import version_here
 
@@ -75,7 +76,7 @@ async def _serve(app: FastAPI, listener: socket.socket, settings: Settings) -> N
     config = uvicorn.Config(
         app,
         # The faster parser sends chunks to HTTP/1.0 clients and refuses bare line feeds.
-        http="h11",
+        http=FixedLengthH11,
         ws="none",
         # Run below instead, so that a store that cannot be opened is one line, no traceback.
         lifespan="off",

@@ -5,7 +5,7 @@ Left out: models themselves, and the words pydantic chose where they already say
 
 from collections.abc import Iterator, Mapping, Sequence
 from types import EllipsisType
-from typing import Any, get_args
+from typing import Any, Literal, get_args, get_origin
 
 from pydantic import BaseModel, ValidationError
 
@@ -86,7 +86,8 @@ def _detail(title: str, error: Mapping[str, Any], location: Location, body: obje
     if code == "missing-field":
         name = str(error["loc"][-1])
         say = f'"{name}" is missing'
-        return Detail(code, say, where, location, None, f'add "{name}"')
+        choice = _choice(title, error["loc"])
+        return Detail(code, say, where, location, None, f'add "{name}"{choice}')
     say, way_out = _sentence(error["msg"]), _way_out(kind, error.get("ctx") or {})
     return Detail(code, say, where, location, error["input"], way_out)
 
@@ -111,6 +112,24 @@ def place(loc: Sequence[str | int], body: object, *, missing: bool = False) -> W
 
 def known_names(title: str, loc: Sequence[str | int]) -> set[str]:
     """Return the field names (as on the wire) that the model ``title`` knows at ``loc``."""
+    return {
+        info.alias or name
+        for model in _models_at(title, loc)
+        for name, info in model.model_fields.items()
+    }
+
+
+def _choice(title: str, loc: Sequence[str | int]) -> str:
+    """Return the values a missing field may have, in words; nothing where there are too many."""
+    for model in _models_at(title, loc[:-1]):
+        for name, info in model.model_fields.items():
+            if loc[-1] in (name, info.alias) and get_origin(info.annotation) is Literal:
+                return f": {', '.join(map(str, get_args(info.annotation)))}"
+    return ""
+
+
+def _models_at(title: str, loc: Sequence[str | int]) -> set[type[BaseModel]]:
+    """Return the models that may stand at ``loc`` of the model ``title``."""
     models = {model for model in _all_models(BaseModel) if model.__name__ == title}
     for step in loc:
         below = set[type[BaseModel]]()
@@ -121,7 +140,7 @@ def known_names(title: str, loc: Sequence[str | int]) -> set[str]:
         named = {model for model in models if model.__name__ == step}
         # A number or a tag stays where it is; a model's own name as tag narrows the choice.
         models = below or named or models
-    return {info.alias or name for model in models for name, info in model.model_fields.items()}
+    return models
 
 
 def _readings(loc: Where, node: object, missing: bool) -> Iterator[Where]:

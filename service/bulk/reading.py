@@ -13,6 +13,7 @@ from kinematics.errors import KinematicsError, WrongJointCount
 from kinematics.table import FloatArray
 from service.convert import joint_values_in, twists_in
 from service.details import Detail
+from service.errors import ServiceError, UnknownArm, UnknownRevision, UnusableValue
 from service.operations.arms import Arms
 from service.operations.jacobians import Wanted
 from service.operations.joint_rows import (
@@ -21,14 +22,14 @@ from service.operations.joint_rows import (
     read_joint_rows,
     read_vectors,
     refuse_too_many,
+    told_joints,
 )
 from service.operations.joint_table import JointTable
 from service.operations.many import Many, ManyJacobians, ManyPoses, Rows
 from service.operations.questions import Question, question_of
 from service.operations.single import question_asked
-from service.problems import ServiceError, UnknownArm, UnknownRevision, UnusableValue
 from service.wire.arms import ReadArm
-from service.wire.csv_rows import read_csv
+from service.wire.csv_rows import CsvRows, WrongColumnCount, read_csv
 from service.wire.formats import (
     Format,
     form_for,
@@ -130,7 +131,7 @@ def many_of_table(
     joints = question.arm.joint_count
     if is_csv:
         most = MOST_VECTORS_WITH_SINGULARITY if singularity else MOST_VECTORS
-        lines = read_csv(raw, joints, most, between)
+        lines = _read_lines(question, raw, most, between)
         refuse_too_many(len(lines.values), singularity=singularity)
 
         def line_place(row: int, joint: int) -> tuple[str | int, ...]:
@@ -143,11 +144,19 @@ def many_of_table(
         raise WrongJointCount(
             f"{values.shape[1]} columns for an arm of {joints} joints",
             value=values.shape[1],
-            way_out=f"send {joints} columns, one for each driven row in row order",
+            way_out=f"in each row send {told_joints(question.arm, question.units)}",
         )
     refuse_too_many(len(values), singularity=singularity)
     table = JointTable(question.arm, question.units, values, lambda row, joint: (row, joint))
     return _many(key, question, table, singularity)
+
+
+def _read_lines(question: Question, raw: bytes, most: int, between: Callable[[], None]) -> CsvRows:
+    try:
+        return read_csv(raw, question.arm.joint_count, most, between)
+    except WrongColumnCount as error:
+        error.way_out += f"; the arm takes {told_joints(question.arm, question.units)}"
+        raise
 
 
 def _many(

@@ -19,8 +19,9 @@ from kinematics.errors import KinematicsError
 from service.bulk.reading import Key, many_of_body, model_of
 from service.bulk.rendering import RENDERINGS, Outline, Piece, Rendering, Stamp
 from service.details import as_given, shown
+from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
-from service.problems import Problem, ServiceError, problem_of
+from service.problems import Problem, problem_of
 from service.storage.ports import Revision
 from service.wire.arms import ReadArm, read_arm
 from service.wire.formats import Format

@@ -4,8 +4,8 @@ import json
 from importlib.resources import files
 from typing import Any
 
+from service.errors import NameTaken
 from service.operations.arms import Arms
-from service.problems import NameTaken
 
 AUTHOR = "armspan"
 REASON = "demonstration cell"
@@ -22,6 +22,8 @@ def seed(arms: Arms[Any]) -> list[str]:
     """Store the demonstration arms that are not there yet, and return their names."""
     stored = []
     for document in documents():
+        if arms.storage.head_number(document["name"]) is not None:
+            continue
         try:
             arms.create(document, author=AUTHOR, reason=REASON, seed=True)
         except NameTaken:

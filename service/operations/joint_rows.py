@@ -11,13 +11,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import Arm
-from kinematics.chain import checked_joint_values
-from kinematics.errors import KinematicsError, NotFinite, OutOfRange
+from kinematics.chain import checked_joint_values, joints_in_words
+from kinematics.errors import KinematicsError, NotFinite, OutOfRange, WrongJointCount
 from kinematics.table import FloatArray
 from kinematics.tolerances import LARGEST_MAGNITUDE
 from service.convert import Units, joint_values_in
 from service.details import Detail, as_given
-from service.problems import ServiceError, TooLarge, UnusableValue
+from service.errors import ServiceError, TooLarge, UnusableValue
 
 MOST_VECTORS = 200_000
 MOST_VECTORS_WITH_SINGULARITY = 20_000
@@ -93,6 +93,13 @@ def read_joint_rows(
     together = _all_at_once(arm, units, rows)
     if together is not None:
         return JointRows(together, np.arange(len(rows)), {}, len(rows))
+    if all(isinstance(row, int | float) for row in rows):
+        raise UnusableValue(
+            "joints is a list of joint vectors, and this is one vector",
+            where=("joints",),
+            value=list(rows),
+            way_out="write [[...]], one list for each posture",
+        )
     usable: dict[int, FloatArray] = {}
     refused: dict[int, Detail] = {}
     for index, row in enumerate(rows):
@@ -107,6 +114,11 @@ def read_joint_rows(
         raise ServiceError(first.say, errors=list(refused.values()), status=422)
     values = np.array(list(usable.values())).reshape(len(usable), arm.joint_count)
     return JointRows(values, np.array(list(usable), dtype=np.intp), refused, len(rows))
+
+
+def told_joints(arm: Arm, units: Units) -> str:
+    """Return how many joint values the arm takes and what each of them is, in the user's units."""
+    return joints_in_words(arm, length=units.length, angle=units.angle)
 
 
 def read_vectors(
@@ -171,10 +183,14 @@ def _one(arm: Arm, units: Units, row: object) -> FloatArray:
         raise KinematicsError(
             "a joint vector is a list of numbers",
             value=row,
-            way_out=f"give {arm.joint_count} numbers",
+            way_out=f"give a list of {told_joints(arm, units)}",
         )
     if len(row) != arm.joint_count:
-        return checked_joint_values(arm, np.zeros(len(row)))
+        raise WrongJointCount(
+            f"{len(row)} joint values for an arm of {arm.joint_count} joints",
+            value=len(row),
+            way_out=f"give {told_joints(arm, units)}",
+        )
     return checked_joint_values(
         arm, joint_values_in(arm, units, _numbers(row, arm.joint_count, "a joint vector"))
     )

@@ -15,8 +15,8 @@ from kinematics.singular_kinds import Anatomy, anatomy_of
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace, rows_of, task_space
 from service.convert import UNITS, Units
+from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
-from service.problems import ServiceError
 from service.wire import models
 from service.wire.arms import ReadArm, read_arm_model
 from service.wire.poses import read_pose
@@ -77,11 +77,6 @@ class Question:
     def arm(self) -> Arm:
         """The arm asked about."""
         return self.meant.arm
-
-    @property
-    def moves_with_arm(self) -> bool:
-        """Whether the frame's axes turn with the joints (Jacobians only)."""
-        return self.frame in (FLANGE, TOOL_AXES)
 
     def prepared(self) -> tuple[TaskSpace, Anatomy] | None:
         """Return what singularity is judged by; None for an arm without joints."""

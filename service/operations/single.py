@@ -6,7 +6,7 @@ Left out: query strings and flat answers (wire).
 from collections.abc import Container, Sequence
 from dataclasses import replace
 
-from kinematics.arm import Arm
+from kinematics.arm import BASE, FLANGE, Arm
 from kinematics.errors import KinematicsError
 from kinematics.task_space import rows_of
 from kinematics.travel_limits import travel_margin
@@ -26,6 +26,9 @@ from service.operations.questions import (
 from service.problems import DigestDiffers, ServiceError, UnknownRevision
 from service.wire.arms import ReadArm
 from service.wire.single import TOOL_PARAMETERS, SingleAnswer, SingleQuestion
+
+LONGEST_NUMBER = 3
+"""Digits of the numbers that controllers know tools and frames by."""
 
 
 def single_pose(arms: Arms[ReadArm], asked: SingleQuestion) -> SingleAnswer:
@@ -66,7 +69,7 @@ def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) 
         meant=meant,
         units=units,
         tool=tool,
-        frame=meant_frame(arm, _name_or_number(asked.frame, arm.frames), moving=moving),
+        frame=meant_frame(arm, _name_or_number(asked.frame, arm.frames, BASE), moving=moving),
         form=asked.form,
         task=tuple(asked.task) if isinstance(asked.task, list) else asked.task,
         repaired=tool.repaired,
@@ -117,7 +120,7 @@ def _meant_arm(arms: Arms[ReadArm], asked: SingleQuestion) -> MeantArm:
 
 def _meant_tool(arm: Arm, units: Units, asked: SingleQuestion) -> MeantTool:
     if asked.tool_pose is None:
-        return meant_tool(arm, units, _name_or_number(asked.tool, arm.tools))
+        return meant_tool(arm, units, _name_or_number(asked.tool, arm.tools, FLANGE))
     try:
         return meant_tool(arm, units, asked.tool_pose)
     except KinematicsError as error:
@@ -153,10 +156,17 @@ def _check_expected(asked: SingleQuestion, digest: str) -> None:
         )
 
 
-def _name_or_number(asked: str | None, known: Container[str]) -> str | int | None:
-    """Return a number where digits are asked that are no name: names may be digits too."""
+def _name_or_number(asked: str | None, known: Container[str], own: str) -> str | int | None:
+    """Return a number where digits are asked that are no name: names may be digits too.
+
+    0 is the arm's ``own``, flange or base, as answers number them.
+    """
     if asked is not None and asked.isascii() and asked.isdigit() and asked not in known:
-        return int(asked[:9])
+        # Beyond three digits there are no numbers: left as text it is an unknown name.
+        digits = asked.lstrip("0")
+        if not digits:
+            return own
+        return int(digits) if len(digits) <= LONGEST_NUMBER else asked
     return asked
 
 

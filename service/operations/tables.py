@@ -5,7 +5,7 @@ Left out: the regrouping itself (the core's).
 
 from kinematics.arm import BASE
 from kinematics.findings import FINE, Finding
-from kinematics.table import Convention
+from kinematics.table import Convention, Table
 from kinematics.table_conversion import converted
 from service.convert import finding_out
 from service.operations.arms import Arms
@@ -22,7 +22,7 @@ def converted_table(arms: Arms[ReadArm], asked: models.ConversionRequest) -> dic
     units = meant.read.units
     other = converted(meant.arm, Convention(asked.to))
     texts = {key: meant.read.document[key] for key in TEXTS if key in meant.read.document}
-    findings = [*meant.repaired, *_moved(meant.arm.table.convention, Convention(asked.to))]
+    findings = [*meant.repaired, *_moved(meant.arm.table, Convention(asked.to))]
     return {
         "arm": arm_document(other, units, texts),
         "units": units.name,
@@ -30,19 +30,23 @@ def converted_table(arms: Arms[ReadArm], asked: models.ConversionRequest) -> dic
     }
 
 
-def _moved(before: Convention, after: Convention) -> list[Finding]:
-    if before is after:
+def _moved(before: Table, after: Convention) -> list[Finding]:
+    """Return what moved, where something did: a and alpha of 0 move nothing."""
+    if before.convention is after or not before.rows:
+        return []
+    row = before.rows[-1 if after is Convention.MODIFIED else 0]
+    if row.a == 0 and row.alpha == 0:
         return []
     if after is Convention.MODIFIED:
         name = "flange-moved"
         say = (
             "the flange now sits at the last row's joint axis; every tool took in the last row's "
-            "a and alpha, and the former flange is kept as a tool where it differs"
+            "a and alpha, and the former flange is kept as a tool"
         )
     else:
         name = f"{BASE}-moved"
         say = (
-            "the base took in the first row's a and alpha: poses in the base change where they "
-            "are not 0, poses in the world do not"
+            "the base took in the first row's a and alpha: poses in the base change, poses in the "
+            "world do not"
         )
     return [Finding(FINE, name, say, 0.0, 0.0)]

@@ -145,8 +145,9 @@ async def get_arm(request: Request) -> Response:
 async def put_arm(request: Request) -> Response:
     """Store the next revision of an arm."""
     author, reason = _said(known_parameters(request, _WHO_AND_WHY))
-    document = await read_json(request)
+    # Before the body: whoever left it out is told so, whatever the body is.
     expected = _expected(request)
+    document = await read_json(request)
     stored = await run_in_threadpool(
         _arms(request).replace,
         request.path_params["arm"],

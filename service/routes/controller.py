@@ -3,7 +3,7 @@
 Left out: what the query means (wire/controller.py) and what the answer says (operations).
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from time import time_ns
 
 from fastapi import APIRouter
@@ -15,31 +15,30 @@ from starlette.responses import Response
 from kinematics.errors import KinematicsError
 from service.operations.arms import Arms
 from service.operations.single import joint_count, single_jacobian, single_pose
-from service.problems import ServiceError
+from service.problems import Problem, ServiceError
 from service.refusals import problem_at
 from service.web.document import documented
-from service.wire.answers import json_answer
+from service.wire import one_answer
 from service.wire.arms import ReadArm
 from service.wire.controller import (
+    FORMATS,
+    JACOBIAN_PARAMETERS,
     PARAMETERS,
     Format,
     errors_inline,
     single_question,
     wanted_format,
+    wanted_row,
     wanted_tag,
 )
 from service.wire.controller_answers import FlatJacobian, FlatPose, JacobianReply, PoseReply
-from service.wire.flat import (
-    flat_jacobian,
-    flat_jacobian_refusal,
-    flat_pose,
-    flat_pose_refusal,
-)
+from service.wire.one_answer import Stamp
 from service.wire.query import known_parameters
-from service.wire.question_parameters import QUESTION_PARAMETERS
+from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
 from service.wire.single import SingleAnswer, SingleQuestion
 
 router = APIRouter()
+_MEDIA = ("application/json", "text/plain", "text/csv")
 Ask = Callable[[Arms[ReadArm], SingleQuestion], SingleAnswer]
 
 
@@ -48,9 +47,12 @@ Ask = Callable[[Arms[ReadArm], SingleQuestion], SingleAnswer]
     methods=["GET", "HEAD"],
     openapi_extra=documented(
         "Tool pose of a stored arm",
-        "One posture by query string. `format=flat` answers one level in fixed order; there the "
-        "orientation is one of the 24 angle triples.",
+        "One posture by query string. `format=flat` answers one level in fixed order, `csv` the "
+        "same with a head line, `txt` one line with each field at its place; there the "
+        "orientation is one of the 24 angle triples. Places, codes and a client: "
+        "/docs/controllers.",
         answer=PoseReply,
+        answer_media=_MEDIA,
         flat_refusal=FlatPose,
         parameters=QUESTION_PARAMETERS,
         statuses=(404, 409, 503),
@@ -69,10 +71,12 @@ async def pose(request: Request) -> Response:
     openapi_extra=documented(
         "Jacobian of a stored arm",
         "One posture by query string; `frame` may also be `flange` or `tool`. `format=flat` "
-        "answers j11 ... j6n by rows vx vy vz wx wy wz.",
+        "answers j11 ... j6n by rows vx vy vz wx wy wz, `csv` the same with a head line, and "
+        "`txt` with `row` one of these rows.",
         answer=JacobianReply,
+        answer_media=_MEDIA,
         flat_refusal=FlatJacobian,
-        parameters=QUESTION_PARAMETERS,
+        parameters=JACOBIAN_QUESTION_PARAMETERS,
         statuses=(404, 409, 503),
         controller=True,
         examples="jacobian",
@@ -85,38 +89,50 @@ async def jacobian(request: Request) -> Response:
 
 async def _answered(request: Request, ask: Ask, key: str) -> Response:
     # Read by hand before anything is refused, so that a refusal comes in the format asked for.
-    answer_format: Format = "flat" if request.query_params.get("format") == "flat" else "json"
+    given = request.query_params.get("format")
+    wanted: Format = given if given in FORMATS else "json"
     inline = request.query_params.get("errors") == "inline"
-    stamp = {
+    stamp: Stamp = {
         "seq": next(request.app.state.sequence),
         "tag": _readable_tag(request),
         "t_ms": time_ns() // 1_000_000,
     }
     try:
-        parameters = known_parameters(request, PARAMETERS)
-        wanted_tag(parameters)
-        errors_inline(parameters)
-        wanted_format(parameters)
-        asked = single_question(request.path_params["arm"], parameters, answer_format)
-        arms: Arms[ReadArm] = request.app.state.arms
-        # One posture takes some tenths of a millisecond, handing it to a thread as long again.
-        answer = (
-            ask(arms, asked) if arms.answers_at_once else await run_in_threadpool(ask, arms, asked)
-        )
+        content = await _content(request, ask, key, wanted, stamp)
     except (ServiceError, KinematicsError, ValidationError) as error:
-        if answer_format == "json" and not inline:
+        if wanted == "json" and not inline:
             raise
-        return await _refused(request, error, answer_format, inline, key, stamp)
-    if answer_format == "flat":
-        content = (
-            flat_pose(answer, form=asked.form, **stamp)
-            if key == "poses"
-            else flat_jacobian(answer, **stamp)
-        )
-    else:
-        head = {"ok": True, "code": answer.item["code"], **stamp}
-        content = head | answer.head | {key: [answer.item]}
-    return json_answer(content, headers={"Cache-Control": "no-store"})
+        problem = problem_at(request, error)
+        content = await _refused(request, problem, wanted, key, stamp)
+        return _response(content, 200 if inline else problem.status, problem.headers)
+    return _response(content)
+
+
+async def _content(
+    request: Request, ask: Ask, key: str, wanted: Format, stamp: Stamp
+) -> one_answer.Content:
+    of_poses = key == "poses"
+    parameters = known_parameters(request, PARAMETERS if of_poses else JACOBIAN_PARAMETERS)
+    wanted_tag(parameters)
+    errors_inline(parameters)
+    wanted_format(parameters)
+    row = None if of_poses else wanted_row(parameters, wanted)
+    asked = single_question(request.path_params["arm"], parameters, wanted)
+    arms: Arms[ReadArm] = request.app.state.arms
+    # One posture takes some tenths of a millisecond, handing it to a thread as long again.
+    answer = ask(arms, asked) if arms.answers_at_once else await run_in_threadpool(ask, arms, asked)
+    if wanted == "json":
+        return one_answer.nested(answer, key, stamp, asked.scale)
+    if of_poses:
+        return one_answer.pose(answer, asked, wanted, stamp)
+    return one_answer.jacobian(answer, asked, wanted, stamp, row)
+
+
+def _response(
+    content: one_answer.Content, status: int = 200, headers: Mapping[str, str] | None = None
+) -> Response:
+    kept = {"Cache-Control": "no-store", **(headers or {})}
+    return Response(content.body, status, headers=kept, media_type=content.media_type)
 
 
 def _readable_tag(request: Request) -> int:
@@ -127,24 +143,12 @@ def _readable_tag(request: Request) -> int:
 
 
 async def _refused(
-    request: Request,
-    error: Exception,
-    answer_format: Format,
-    inline: bool,
-    key: str,
-    stamp: dict[str, int],
-) -> Response:
-    problem = problem_at(request, error)
-    content: dict[str, object]
-    if answer_format == "flat":
-        if key == "poses":
-            content = flat_pose_refusal(problem.number, **stamp)
-        else:
-            arms, name = request.app.state.arms, request.path_params["arm"]
-            joints = await run_in_threadpool(joint_count, arms, name)
-            content = flat_jacobian_refusal(problem.number, joints, **stamp)
-    else:
-        document = problem.document(request.state.request_id)
-        content = document | {"ok": False, "code": problem.number, **stamp}
-    headers = {"Cache-Control": "no-store", **problem.headers}
-    return json_answer(content, 200 if inline else problem.status, headers)
+    request: Request, problem: Problem, wanted: Format, key: str, stamp: Stamp
+) -> one_answer.Content:
+    if wanted == "json":
+        return one_answer.refused_inline(problem, request.state.request_id, stamp)
+    if key == "poses":
+        return one_answer.refused_pose(problem, wanted, stamp)
+    arms, name = request.app.state.arms, request.path_params["arm"]
+    joints = await run_in_threadpool(joint_count, arms, name)
+    return one_answer.refused_jacobian(problem, wanted, stamp, joints)

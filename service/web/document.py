@@ -288,7 +288,7 @@ def _answer_content(
     shown = {
         name: {"summary": case.title, "value": case.answer}
         for name, case in cases.items()
-        if (as_json or media.startswith("text/")) and isinstance(case.answer, str) != as_json
+        if case.media == media
     }
     if shown:
         content["examples"] = shown
@@ -304,6 +304,9 @@ def _refusal(status: int, entry: Documented, references: References) -> Schema:
     if entry.flat_refusal is not None and status != 500:
         flat = references[entry.flat_refusal, "serialization"]
         content["application/json"] = {"schema": flat}
+        content |= {
+            media: {"schema": TEXT} for media in entry.answer_media if media.startswith("text/")
+        }
     return {
         "description": f"Refused: {', '.join(codes)}." if codes else "Refused.",
         "content": content,

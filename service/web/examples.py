@@ -32,6 +32,13 @@ class Example:
         asked = self.request.get("query") if isinstance(self.request, dict) else None
         return asked if isinstance(asked, dict) else {}
 
+    @property
+    def media(self) -> str:
+        """The media type of the answer."""
+        if not isinstance(self.answer, str):
+            return "application/json"
+        return "text/csv" if self.query.get("format") == "csv" else "text/plain"
+
 
 def folder() -> Path:
     """Return where the examples are: within an installed package, else beside the source.

@@ -18,6 +18,7 @@ from starlette.responses import Response
 from service.cautions import CAUTIONS
 from service.errors import UnknownPath
 from service.problems import ANSWERS, KINDS
+from service.web.controllers_page import CLIENTS, client_text, controllers_html
 from service.web.document import openapi_document
 from service.wire.query import known_parameters
 
@@ -53,11 +54,20 @@ async def problems_page(request: Request) -> Response:
     return _answer(request, _problems_html(), "text/html")
 
 
+@router.api_route("/docs/controllers", methods=_READ)
+async def controllers_page(request: Request) -> Response:
+    """Answer the page for who programs a controller."""
+    known_parameters(request, ())
+    return _answer(request, controllers_html(), "text/html")
+
+
 @router.api_route("/docs/files/{name}", methods=_READ)
 async def page_file(request: Request) -> Response:
-    """Answer a script or a style sheet of the pages."""
+    """Answer a script or a style sheet of the pages, or a client to take along."""
     known_parameters(request, ())
     name = request.path_params["name"]
+    if name in CLIENTS:
+        return _answer(request, client_text(name), "text/plain")
     if name not in _FILES:
         raise UnknownPath("no such file", location="path", value=name)
     package, media_type = _FILES[name]
@@ -137,7 +147,7 @@ _PROBLEMS = """<!doctype html>
 <body>
 <h1>Codes and problems</h1>
 <p>Texts may change, codes never do. With several codes the highest wins.
-<a href="/docs">Addresses</a></p>
+<a href="/docs">Addresses</a> · <a href="/docs/controllers">For controllers</a></p>
 <h2>Refusals</h2>
 <table>
 <tr><th>code</th><th>number</th><th>status</th><th>meaning</th></tr>

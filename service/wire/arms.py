@@ -21,7 +21,7 @@ from kinematics.findings import Finding
 from kinematics.table import Convention, Coupling, FloatArray, JointKind, Row, Table, Travel
 from kinematics.tolerances import MOST_ROWS, SINGULAR
 from service.convert import UNITS, Units
-from service.problems import NotAvailable, TooLarge, UnusableValue
+from service.errors import NotAvailable, TooLarge, UnusableValue
 from service.wire import models
 from service.wire.poses import pose_answer, read_pose
 

@@ -9,20 +9,18 @@ from typing import Literal
 from kinematics.orientation_forms import TRIPLES
 from kinematics.tolerances import MOST_ROWS
 from service.convert import UNITS
-from service.problems import FormNotFlat, MissingField, NotAvailable, UnusableValue
+from service.problems import FormNotFlat, MissingField, UnusableValue
 from service.wire import models
 from service.wire.poses import checked_form
-from service.wire.query import number, numbers, whole_number
+from service.wire.query import number, whole_number
 from service.wire.single import TOOL_PARAMETERS, SingleQuestion
 
-Format = Literal["json", "flat"]
-FORMATS: tuple[Format, ...] = ("json", "flat")
+Format = Literal["json", "flat", "txt", "csv"]
+FORMATS: tuple[Format, ...] = ("json", "flat", "txt", "csv")
 FLAT_FORM = "xyz-fixed"
-_DEFAULT_FORMS = {"json": "quaternion-wxyz", "flat": FLAT_FORM}
+_NESTED_FORM = "quaternion-wxyz"
 _JOINT_PARAMETERS = tuple(f"q{joint}" for joint in range(1, MOST_ROWS + 1))
-_LATER = {
-    "scale": "leave it out: numbers are printed with their decimals",
-}
+MOST_SCALE = 1_000_000
 PARAMETERS = frozenset(
     {
         "q",
@@ -38,9 +36,10 @@ PARAMETERS = frozenset(
         "tag",
         "task",
         "errors",
-        *_LATER,
+        "scale",
     }
 )
+JACOBIAN_PARAMETERS = PARAMETERS | {"row"}
 
 
 def wanted_format(parameters: Mapping[str, str]) -> Format:
@@ -48,28 +47,48 @@ def wanted_format(parameters: Mapping[str, str]) -> Format:
 
     Raises
     ------
-    NotAvailable : txt and csv.
-    UnusableValue : anything else that is not known.
+    UnusableValue : it is not known.
     """
     text = parameters.get("format", "json")
     if text in FORMATS:
         return text
-    if text in ("txt", "csv"):
-        raise NotAvailable(
-            f"format={text} is not available in this version",
-            where=("format",),
-            location="query",
-            value=text,
-            way_out="use format=flat or format=json",
-            status=422,
-        )
     raise UnusableValue(
         f"there is no format {text!r}",
         where=("format",),
         location="query",
         value=text,
-        way_out="one of: json, flat",
+        way_out=f"one of: {', '.join(FORMATS)}",
     )
+
+
+def wanted_row(parameters: Mapping[str, str], answer_format: Format) -> int | None:
+    """Return which row of a Jacobian a line of text is to hold, None in other formats.
+
+    Raises
+    ------
+    MissingField : a line of text, and no row.
+    UnusableValue : no row from 1 to 6, or a format that holds all of them.
+    """
+    text = parameters.get("row")
+    if text is None:
+        if answer_format == "txt":
+            raise MissingField(
+                "a line of text holds one row of a Jacobian",
+                where=("row",),
+                location="query",
+                way_out="add row=1 to row=6, for vx vy vz wx wy wz",
+            )
+        return None
+    row = whole_number(text, "row")
+    if answer_format != "txt" or not 1 <= row <= 6:
+        raise UnusableValue(
+            f"there is no row {row}" if answer_format == "txt" else "row is for format=txt",
+            where=("row",),
+            location="query",
+            value=text,
+            way_out="row=1 to row=6, with format=txt",
+        )
+    return row
 
 
 def wanted_tag(parameters: Mapping[str, str]) -> int:
@@ -105,18 +124,10 @@ def single_question(
     ------
     ServiceError, KinematicsError : a parameter that cannot be used.
     """
-    for name, way_out in _LATER.items():
-        if name in parameters:
-            raise NotAvailable(
-                f"{name} is not available in this version",
-                where=(name,),
-                location="query",
-                value=parameters[name],
-                way_out=way_out,
-                status=422,
-            )
-    form = checked_form(parameters.get("form", _DEFAULT_FORMS[answer_format]))
-    if answer_format == "flat" and form not in TRIPLES:
+    form = checked_form(
+        parameters.get("form", _NESTED_FORM if answer_format == "json" else FLAT_FORM)
+    )
+    if answer_format != "json" and form not in TRIPLES:
         raise FormNotFlat(
             f"the form {form} does not fit a flat answer",
             where=("form",),
@@ -124,7 +135,8 @@ def single_question(
             value=form,
             way_out="use one of the 24 angle triples, e.g. xyz-fixed",
         )
-    names, joints = _joints(parameters)
+    scale = _scale(parameters.get("scale"))
+    names, joints = _joints(parameters, scale)
     revision = parameters.get("revision")
     return SingleQuestion(
         arm=arm,
@@ -132,16 +144,37 @@ def single_question(
         joint_names=names,
         form=form,
         tool=parameters.get("tool"),
-        tool_pose=_inline_tool(parameters, form),
+        tool_pose=_inline_tool(parameters, form, scale),
         frame=parameters.get("frame"),
         units=_units(parameters.get("units")),
         revision=None if revision is None else whole_number(revision, "revision"),
         expect=parameters.get("expect"),
         task=_task(parameters.get("task")),
+        scale=scale,
     )
 
 
-def _joints(parameters: Mapping[str, str]) -> tuple[list[str], list[float]]:
+def _scale(text: str | None) -> int | None:
+    if text is None:
+        return None
+    scale = whole_number(text, "scale")
+    if not 1 <= scale <= MOST_SCALE:
+        raise UnusableValue(
+            f"a scale of {scale} cannot be used",
+            where=("scale",),
+            location="query",
+            value=text,
+            way_out=f"give a whole number from 1 to {MOST_SCALE}",
+        )
+    return scale
+
+
+def _value(text: str, name: str, scale: int | None) -> float:
+    """Return a joint value or a tool's; beside a scale it is an integer, and in scaled units."""
+    return number(text, name) if scale is None else whole_number(text, name) / scale
+
+
+def _joints(parameters: Mapping[str, str], scale: int | None) -> tuple[list[str], list[float]]:
     """Return the joint values and the parameters that hold them."""
     single = [name for name in _JOINT_PARAMETERS if name in parameters]
     if "q" in parameters and single:
@@ -154,7 +187,7 @@ def _joints(parameters: Mapping[str, str]) -> tuple[list[str], list[float]]:
         )
     if "q" in parameters:
         text = parameters["q"]
-        joints = numbers(text, "q") if text else []
+        joints = [_value(part, "q", scale) for part in text.split(",")] if text else []
         return ["q"] * len(joints), joints
     for place, name in enumerate(single, start=1):
         if name != f"q{place}":
@@ -164,10 +197,10 @@ def _joints(parameters: Mapping[str, str]) -> tuple[list[str], list[float]]:
                 location="query",
                 way_out=f"give q1 to {single[-1]} without a gap",
             )
-    return single, [number(parameters[name], name) for name in single]
+    return single, [_value(parameters[name], name, scale) for name in single]
 
 
-def _inline_tool(parameters: Mapping[str, str], form: str) -> models.Pose | None:
+def _inline_tool(parameters: Mapping[str, str], form: str, scale: int | None) -> models.Pose | None:
     """Return the tool whose pose in the flange stands in the query itself."""
     given = [name for name in TOOL_PARAMETERS if name in parameters]
     if not given:
@@ -180,7 +213,7 @@ def _inline_tool(parameters: Mapping[str, str], form: str) -> models.Pose | None
             value=parameters["tool"],
             way_out="name a tool or give its pose, not both",
         )
-    values = [number(parameters.get(name, "0"), name) for name in TOOL_PARAMETERS]
+    values = [_value(parameters.get(name, "0"), name, scale) for name in TOOL_PARAMETERS]
     return models.Pose(
         position=values[:3],
         orientation=models.Orientation(

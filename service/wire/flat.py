@@ -1,13 +1,16 @@
 """Flat answers: one level, fixed order, every key always there.
 
-Left out: fixed-width text and csv.
+Left out: fixed-width text (fixed_text.py) and csv about many postures (csv_text.py).
 """
 
 import math
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from service.wire.answers import json_bytes
 from service.wire.single import SingleAnswer
+
+CSV_MEDIA_TYPE = "text/csv; charset=utf-8"
 
 NO_NUMBER = -999999.9999
 """Stands at the place of every number of a pose that could not be told."""
@@ -42,10 +45,26 @@ def flat_pose(
     )
 
 
-def flat_jacobian(answer: SingleAnswer, *, seq: int, tag: int, t_ms: int) -> dict[str, object]:
-    """Return the Jacobian of one posture as a flat answer, ``j11`` ... ``j6n`` by rows."""
+def flat_jacobian(
+    answer: SingleAnswer, *, seq: int, tag: int, t_ms: int, scale: int | None = None
+) -> dict[str, object]:
+    """Return the Jacobian of one posture as a flat answer, ``j11`` ... ``j6n`` by rows.
+
+    Entries keep as many decimals as fit; beside a ``scale`` all, as they become integers next.
+    """
     matrix: Any = answer.item["matrix"]
-    return _head(answer, seq, tag, t_ms) | _entries(matrix) | _tail(answer)
+    entries = _entries(matrix) if scale is None else _whole_entries(matrix)
+    return _head(answer, seq, tag, t_ms) | entries | _tail(answer)
+
+
+def flat_jacobian_row(
+    answer: SingleAnswer, row: int, *, seq: int, tag: int, t_ms: int
+) -> dict[str, object]:
+    """Return one row, 1 to 6, of the Jacobian as a flat answer, its entries not rounded."""
+    matrix: Any = answer.item["matrix"]
+    entries = [float(entry) for entry in matrix[row - 1]]
+    keys = jacobian_row_keys(row, len(entries))
+    return _head(answer, seq, tag, t_ms) | dict(zip(keys, entries, strict=True)) | _tail(answer)
 
 
 def flat_pose_refusal(code: int, *, seq: int, tag: int, t_ms: int) -> dict[str, object]:
@@ -62,6 +81,30 @@ def flat_jacobian_refusal(
     return _refused_head(code, seq, tag, t_ms) | entries_gone | _refused_tail()
 
 
+def flat_jacobian_row_refusal(
+    code: int, joints: int, *, seq: int, tag: int, t_ms: int
+) -> dict[str, object]:
+    """Return a row of the Jacobian of an arm of so many joints, without its numbers."""
+    # Which row it would have been may be the very thing that cannot be told.
+    entries_gone: dict[str, object] = dict.fromkeys(jacobian_row_keys(1, joints), NO_NUMBER)
+    return _refused_head(code, seq, tag, t_ms) | entries_gone | _refused_tail()
+
+
+def csv_of_one(told: Mapping[str, object]) -> bytes:
+    """Return a flat answer as CSV (RFC 4180): the keys, then the values, printed as in JSON.
+
+    Examples
+    --------
+    >>> csv_of_one({"ok": 1, "x": -0.5, "state": "near"})
+    b'ok,x,state\\r\\n1,-0.5,near\\r\\n'
+    """
+    # Neither names nor other texts of a caller's are among them: nothing needs quotes.
+    values = [
+        text if isinstance(text, str) else json_bytes(text).decode() for text in told.values()
+    ]
+    return "".join(",".join(line) + "\r\n" for line in (told, values)).encode("ascii")
+
+
 def jacobian_keys(joints: int) -> tuple[str, ...]:
     """Return the keys of a flat Jacobian that hold its entries, by rows.
 
@@ -70,7 +113,12 @@ def jacobian_keys(joints: int) -> tuple[str, ...]:
     >>> jacobian_keys(2)[:3]
     ('j11', 'j12', 'j21')
     """
-    return tuple(f"j{row}{column}" for row in range(1, 7) for column in range(1, joints + 1))
+    return tuple(key for row in range(1, 7) for key in jacobian_row_keys(row, joints))
+
+
+def jacobian_row_keys(row: int, joints: int) -> tuple[str, ...]:
+    """Return the keys of one row of a flat Jacobian, ``j<row>1`` ... ``j<row>n``."""
+    return tuple(f"j{row}{column}" for column in range(1, joints + 1))
 
 
 def _refused_head(code: int, seq: int, tag: int, t_ms: int) -> dict[str, object]:
@@ -95,6 +143,11 @@ def _entries(matrix: Sequence[Sequence[float]]) -> dict[str, float]:
     decimals = JACOBIAN_DECIMALS[min(joints, len(JACOBIAN_DECIMALS) - 1)]
     entries = [round(entry, decimals) + 0.0 for row in matrix for entry in row]
     return dict(zip(jacobian_keys(joints), entries, strict=True))
+
+
+def _whole_entries(matrix: Sequence[Sequence[float]]) -> dict[str, float]:
+    entries = [float(entry) for row in matrix for entry in row]
+    return dict(zip(jacobian_keys(len(matrix[0])), entries, strict=True))
 
 
 def _head(answer: SingleAnswer, seq: int, tag: int, t_ms: int) -> dict[str, object]:

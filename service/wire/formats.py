@@ -47,8 +47,8 @@ def question_parameters(request: Request, body: Format | None) -> dict[str, str]
     ------
     UnknownField, UnusableValue : unknown, twice, or to be said in the body.
     """
-    found = known_parameters(request, TABLE_PARAMETERS)
     if body == "json":
+        found = known_parameters(request, TABLE_PARAMETERS, offered=_BODY_PARAMETERS)
         wrong = [
             Detail(
                 "unknown-field",
@@ -63,7 +63,8 @@ def question_parameters(request: Request, body: Format | None) -> dict[str, str]
         ]
         if wrong:
             raise UnknownField(wrong[0].say, errors=wrong)
-    return found
+        return found
+    return known_parameters(request, TABLE_PARAMETERS)
 
 
 def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -> Format:

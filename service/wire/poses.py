@@ -9,7 +9,7 @@ from kinematics.orientation_forms import checked_rotation, lock_finding, shape_o
 from kinematics.table import FloatArray
 from kinematics.transforms import checked_pose, checked_position, pose
 from service.convert import Units, orientation_in, orientation_out
-from service.problems import MissingField, UnusableValue
+from service.errors import MissingField, UnusableValue
 from service.wire.models import Orientation, Pose
 
 Where = tuple[str | int, ...]

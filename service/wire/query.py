@@ -27,8 +27,14 @@ class NotFiniteParameter(UnusableValue):
     code = "not-finite"
 
 
-def known_parameters(request: Request, allowed: Collection[str]) -> dict[str, str]:
+def known_parameters(
+    request: Request, allowed: Collection[str], *, offered: Collection[str] | None = None
+) -> dict[str, str]:
     """Return the query's parameters; refuse unknown and repeated ones, all of them at once.
+
+    Parameters
+    ----------
+    offered : the names a refusal may offer, where those are not all of ``allowed``.
 
     Raises
     ------
@@ -40,7 +46,7 @@ def known_parameters(request: Request, allowed: Collection[str]) -> dict[str, st
     for name, text in request.query_params.multi_items():
         if name not in allowed:
             say = f'unknown parameter "{name}"'
-            way_out = way_out_of_unknown(name, allowed)
+            way_out = way_out_of_unknown(name, allowed if offered is None else offered)
             wrong.append(Detail("unknown-field", say, (name,), "query", text, way_out))
         elif name in found:
             say = f'the parameter "{name}" stands twice'
@@ -110,17 +116,6 @@ def whole_number(text: str, name: str) -> int:
             way_out=f"give at most {_MOST_DIGITS} digits",
         )
     return int(mended)
-
-
-def numbers(text: str, name: str) -> list[float]:
-    """Return the numbers of a comma list; an empty text is an empty list.
-
-    Examples
-    --------
-    >>> numbers("0,-90, 1e2", "q"), numbers("", "q")
-    ([0.0, -90.0, 100.0], [])
-    """
-    return [number(part, name) for part in text.split(",")] if text else []
 
 
 def _mended(text: str) -> str:

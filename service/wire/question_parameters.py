@@ -7,7 +7,7 @@ from kinematics.tolerances import MOST_ROWS
 from service.convert import UNITS
 from service.web.document import parameter
 from service.wire import formats
-from service.wire.controller import FORMATS
+from service.wire.controller import FORMATS, MOST_SCALE
 
 _NUMBER = {"type": "number"}
 _TEXT = {"type": "string"}
@@ -40,7 +40,22 @@ QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
         "What singularity is judged by: pose, position, orientation, or rows such as vx,vy.",
         _TEXT,
     ),
+    parameter(
+        "scale",
+        "Joint and tool values are integers and divided by it; numbers of the answer are "
+        "multiplied by it and printed as integers.",
+        {"type": "integer", "minimum": 1, "maximum": MOST_SCALE},
+    ),
     parameter("errors", "inline: refusals come with status 200.", _one_of("inline")),
+)
+
+JACOBIAN_QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
+    *QUESTION_PARAMETERS,
+    parameter(
+        "row",
+        "Row of the matrix that a line of text holds, for vx vy vz wx wy wz; for format=txt alone.",
+        {"type": "integer", "minimum": 1, "maximum": 6},
+    ),
 )
 
 _OF_TABLES = (

@@ -16,7 +16,8 @@ TOOL_PARAMETERS = ("tx", "ty", "tz", "tr1", "tr2", "tr3")
 class SingleQuestion:
     """What a controller asks: one posture, in its own words.
 
-    ``joint_names`` are the parameters the joint values came in, for errors to point at.
+    ``joint_names`` are the parameters the joint values came in, for errors to point at. All
+    values are divided by ``scale`` already; the answer's numbers are still to be multiplied.
     """
 
     arm: str
@@ -30,6 +31,7 @@ class SingleQuestion:
     revision: int | None = None
     expect: str | None = None
     task: str | list[str] | None = None
+    scale: int | None = None
 
 
 @dataclass(frozen=True)

@@ -24,6 +24,7 @@ class StoredArmAnswer(Open):
     author: str
     reason: str
     created_at: datetime
+    units: str
     findings: list[Finding]
     arm: Arm
 
@@ -82,6 +83,7 @@ def stored_arm_answer(record: Revision, read: ReadArm) -> dict[str, object]:
     return {
         "name": record.name,
         **_trace(record),
+        "units": read.units.name,
         "findings": [finding_out(read.units, finding) for finding in read.findings],
         "arm": record.document,
     }

@@ -3,17 +3,21 @@
 Left out: arms that cannot be used (test_bad_arms) and questions by query (test_bad_queries).
 """
 
+import io
 import math
 from typing import Any
 
 import httpx
+import numpy as np
 import pytest
 
 from service.problems import KINDS
 from tests.contract.refusals import (
     ARM,
     AT_ORIGIN,
+    ROW,
     Body,
+    arm,
     matrix,
     only_entry,
     row,
@@ -24,15 +28,17 @@ from tests.contract.refusals import (
 pytestmark = pytest.mark.anyio
 
 NAN, INFINITY = math.nan, math.inf
+TWO = "2 values, one for each driven row: row 1 revolute (deg), row 2 revolute (deg)"
 
 # name: (further fields of a question, code, pointer, value, words said, words of the way out)
 # fmt: off
 QUESTIONS: dict[str, tuple[Body, str, str, Any, str, str]] = {
     "too few joints": ({"joints": [[1]]}, "wrong-joint-count", "/joints/0", 1,
-        "1 joint values for an arm of 2 joints", "give 2 values"),
+        "1 joint values for an arm of 2 joints", f"give {TWO}"),
     "too many joints": ({"joints": [[1, 2, 3]]}, "wrong-joint-count", "/joints/0", 3,
-        "3 joint values for an arm of 2 joints", "give 2 values"),
-    "no list": ({"joints": [5]}, "unusable-value", "/joints/0", 5, "list", "2 numbers"),
+        "3 joint values for an arm of 2 joints", f"give {TWO}"),
+    "no list": ({"joints": [5]}, "unusable-value", "/joints", [5], "list", "[[...]]"),
+    "text for a vector": ({"joints": ["a"]}, "unusable-value", "/joints/0", "a", "list", "2 val"),
     "text": ({"joints": [["1", 2]]}, "unusable-value", "/joints/0/0", "1", "number", "quotes"),
     "a truth": ({"joints": [[0, True]]}, "unusable-value", "/joints/0/1", True, "number", "number"),
     "nan": ({"joints": [[0, NAN]]}, "not-finite", "/joints/0/1", "NaN", "finite", "number"),
@@ -79,6 +85,60 @@ async def test_a_question_that_cannot_be_used(
     assert entry["value"] == value
     assert say in entry["say"]
     assert way_out in entry["way_out"]
+
+
+@pytest.mark.parametrize(
+    ("units", "lift", "turn"),
+    [("mm-deg", "mm", "deg"), ("m-rad", "m", "rad"), ("in-deg", "in", "deg")],
+)
+async def test_the_way_out_of_a_wrong_count_says_what_the_joints_are(
+    client: httpx.AsyncClient, units: str, lift: str, turn: str
+) -> None:
+    """A passive row takes no value and is passed over; its number is not."""
+    slide = {**ROW, "joint": "prismatic", "d": 0, "travel": [0, 100]}
+    rows = [ROW, {**ROW, "passive": True, "couplings": [{"axis": 1, "ratio": -1}]}, slide]
+    expected = (
+        f"2 values, one for each driven row: row 1 revolute ({turn}), row 3 prismatic ({lift})"
+    )
+    for joints in ([1], [1, 2, 3], []):
+        body = {"arm": arm(rows=rows), "joints": [joints], "units": units}
+        entry = only_entry(await client.post("/v1/poses", json=body), "wrong-joint-count")
+        assert entry["way_out"] == f"give {expected}"
+
+
+@pytest.mark.parametrize("path", ["/v1/poses", "/v1/jacobians"])
+async def test_so_it_does_for_tables_of_joint_vectors(client: httpx.AsyncClient, path: str) -> None:
+    assert (await client.post("/v1/arms", json=ARM)).status_code == 201
+    numbers = io.BytesIO()
+    np.save(numbers, np.zeros((1, 3)))
+    for kind, content in (
+        ("application/x-npy", numbers.getvalue()),
+        ("text/csv", b"q1,q2,q3\r\n0,0,0\r\n"),
+        ("text/csv", b"q1,q2\r\n0,0\r\n0\r\n"),
+    ):
+        answer = await client.post(
+            path, params={"arm": ARM["name"]}, content=content, headers={"content-type": kind}
+        )
+        assert TWO in only_entry(answer, "wrong-joint-count")["way_out"]
+
+
+@pytest.mark.parametrize(
+    ("count", "listed", "end"),
+    [
+        (0, 0, "for each driven row: there is none"),
+        (12, 12, "row 12 revolute (deg)"),
+        (13, 12, "row 12 revolute (deg), and 1 more"),
+        (32, 12, "row 12 revolute (deg), and 20 more"),
+    ],
+)
+async def test_a_long_list_of_joints_is_cut(
+    client: httpx.AsyncClient, count: int, listed: int, end: str
+) -> None:
+    body = {"arm": arm(rows=[ROW] * count), "joints": [[0] * (count + 1)]}
+    entry = only_entry(await client.post("/v1/poses", json=body), "wrong-joint-count")
+    assert entry["way_out"].startswith(f"give {count} values, ")
+    assert entry["way_out"].endswith(end)
+    assert entry["way_out"].count("revolute") == listed
 
 
 @pytest.mark.parametrize("name", ["speeds", "twists", "loads"])
@@ -199,4 +259,26 @@ async def test_conversion_to_what_is_not_there(client: httpx.AsyncClient) -> Non
 
 
 def test_the_list_is_whole() -> None:
-    assert len(QUESTIONS) == 24
+    assert len(QUESTIONS) == 25
+
+
+async def test_one_vector_that_is_not_in_a_list(client: httpx.AsyncClient) -> None:
+    body = {"arm": ARM, "joints": [1.0, 2.0]}
+    answer = await client.post("/v1/poses", json=body)
+    assert answer.status_code == 422
+    (entry,) = answer.json()["errors"]
+    assert entry["pointer"] == "/joints"
+    assert "[[...]]" in entry["way_out"]
+
+
+@pytest.mark.parametrize(
+    ("field", "choice"),
+    [("units", "mm-deg, m-rad, in-deg"), ("convention", "standard, modified")],
+)
+async def test_a_missing_choice_says_what_there_is(
+    client: httpx.AsyncClient, field: str, choice: str
+) -> None:
+    arm = {name: value for name, value in ARM.items() if name != field}
+    answer = await client.post("/v1/poses", json={"arm": arm, "joints": [[1.0, 2.0]]})
+    (entry,) = answer.json()["errors"]
+    assert (entry["pointer"], entry["way_out"]) == (f"/arm/{field}", f'add "{field}": {choice}')

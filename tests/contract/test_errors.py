@@ -171,6 +171,37 @@ async def test_the_nearest_address_is_the_way_out(client: httpx.AsyncClient) -> 
     assert document["errors"][0]["way_out"] == 'did you mean "/v1/ping"?'
 
 
+async def test_addresses_are_offered_once_each(client: httpx.AsyncClient) -> None:
+    (entry,) = checked(await client.get("/nowhere/at/all"))["errors"]
+    offered = entry["way_out"].removeprefix("known here: ").split(", ")
+    assert {"/v1/arms", "/v1/poses", "/v1/jacobians", "/docs"} <= set(offered)
+    assert len(offered) == len(set(offered))
+
+
+async def test_numbered_names_are_offered_as_a_range(stocked: httpx.AsyncClient) -> None:
+    (path,) = [filled(path) for path in PATHS if path.endswith("/pose")]
+    (entry,) = checked(await stocked.get(path, params={"zzzzzz": "1"}))["errors"]
+    assert "q1 ... q32" in entry["way_out"].split(", ")
+    assert "q2," not in entry["way_out"]
+    assert len(entry["way_out"]) <= 200
+
+
+@pytest.mark.parametrize("path", ["/v1/poses", "/v1/jacobians"])
+async def test_beside_a_json_body_only_its_own_parameters_are_offered(
+    client: httpx.AsyncClient, path: str
+) -> None:
+    for wrong, way_out in (
+        ("x", "known here: format, tag"),
+        ("formt", 'did you mean "format"?'),
+        ("unit", "known here: format, tag"),
+        ("units", 'say "units" in the body'),
+    ):
+        answer = await client.post(path, params={wrong: "1"}, json={"arm": "a", "joints": []})
+        (entry,) = checked(answer)["errors"]
+        assert (entry["pointer"], entry["in"]) == (f"/{wrong}", "query")
+        assert entry["way_out"] == way_out
+
+
 @pytest.mark.parametrize(
     "given",
     [
@@ -216,6 +247,27 @@ async def test_a_failure_tells_nothing_but_its_id(
     assert "str" not in document["detail"]
     assert TRACE in caplog.text
     assert "AttributeError" in caplog.text
+
+
+async def test_a_database_that_fails_says_when_to_ask_again(
+    app: FastAPI, stocked: httpx.AsyncClient
+) -> None:
+    with app.state.storage._engine.connect() as connection:
+        connection.exec_driver_sql("DROP TABLE arm_heads")
+        connection.commit()
+    asked = {"arm": "other-arm", "joints": [[0]]}
+    for method, path, body in (
+        ("GET", "/v1/arms", None),
+        ("GET", "/v1/arms/other-arm", None),
+        ("GET", "/v1/arms/other-arm/pose?q1=0", None),
+        ("POST", "/v1/arms", {**ARM, "name": "other-arm"}),
+        ("POST", "/v1/poses", asked),
+        ("POST", "/v1/jacobians", asked),
+    ):
+        answer = await stocked.request(method, path, json=body)
+        document = checked(answer)
+        assert (document["code"], document["status"]) == ("not-available", 503)
+        assert answer.headers["retry-after"] == "5"
 
 
 async def test_a_silent_database_is_not_available(app: FastAPI, client: httpx.AsyncClient) -> None:

@@ -58,6 +58,7 @@ async def test_an_arm_is_created(client: httpx.AsyncClient) -> None:
         "setup_digest": digests.setup_digest,
         "author": "Ada Ü",
         "reason": "new line",
+        "units": "mm-deg",
         "findings": [],
         "arm": document(),
     }
@@ -161,6 +162,18 @@ async def test_a_put_with_the_present_etag_stores_the_next_revision(
     assert stored["arm"] == document(title="2")
     assert answer.headers["etag"] == f'"2-{stored["digest"]}"'
     assert (await client.get(ARM)).json() == stored
+
+
+async def test_what_a_put_replaces_is_asked_before_its_body_is_read(
+    client: httpx.AsyncClient,
+) -> None:
+    for body, kind in ((b"{", "application/json"), (b"", "application/json"), (b"x", "text/csv")):
+        answer = await client.put(ARM, content=body, headers={"Content-Type": kind})
+        assert refused(answer, 428, "precondition-required", "/if-match", "header")
+        answer = await client.put(
+            ARM, content=body, headers={"Content-Type": kind, "If-None-Match": "*"}
+        )
+        assert answer.status_code in (400, 415)
 
 
 async def test_a_put_that_does_not_say_what_it_replaces_is_428(client: httpx.AsyncClient) -> None:

@@ -6,8 +6,6 @@ The files give poses in the frame in which ``base`` stands, so everything is ask
 their singular values are unscaled, so arms come with a characteristic length of one metre.
 """
 
-import json
-from pathlib import Path
 from typing import Any
 
 import httpx
@@ -15,24 +13,20 @@ import numpy as np
 import pytest
 
 from kinematics.tolerances import NEAR_SINGULAR
+from tests.published.cases import Case, cases_of
 
 pytestmark = pytest.mark.anyio
 
-Case = dict[str, Any]
 Item = dict[str, Any]
 
-DATA = Path(__file__).parent / "data"
 ROW_NAMES = ("vx", "vy", "vz", "wx", "wy", "wz")
 WAYS = ("alone", "in-a-batch", "by-query")
 BOUNDARIES = {"outer boundary", "inner boundary"}
 
 
-def cases_of(family: str) -> list[Case]:
-    return json.loads((DATA / f"{family}.json").read_text(encoding="utf-8"))["cases"]
-
-
-FK, EQUIVALENCE = cases_of("fk"), cases_of("equivalence")
-JACOBIAN, SINGULARITY = cases_of("jacobian"), cases_of("singularity")
+FK, EQUIVALENCE, JACOBIAN, SINGULARITY = (
+    list(cases_of(family).values()) for family in ("fk", "equivalence", "jacobian", "singularity")
+)
 in_three_ways = pytest.mark.parametrize("way", WAYS)
 
 

@@ -1,10 +1,12 @@
 """One table, one tree, one shape: codes are held here against the contract's numbers."""
 
+import ast
 import json
 import math
 import re
 import time
 from collections.abc import Iterator
+from pathlib import Path
 
 import pytest
 from pydantic import BaseModel, Field, ValidationError
@@ -15,6 +17,7 @@ from service.details import Detail
 from service.errors import ServiceError
 from service.problems import ANSWERS, KINDS, problem_of
 
+SERVICE = Path(problems.__file__).parent
 CONTRACT = {
     "unparseable": (100, 400),
     "duplicate-key": (100, 400),
@@ -74,6 +77,71 @@ def test_the_table_is_the_contract() -> None:
     assert not set(ANSWERS) & {kind.number for kind in KINDS.values()}
 
 
+def test_codes_with_two_statuses() -> None:
+    second = {code: kind.statuses[1:] for code, kind in KINDS.items() if len(kind.statuses) > 1}
+    assert second == {
+        "unknown-arm": (422,),
+        "unknown-revision": (422,),
+        "too-large": (422,),
+        "not-available": (422,),
+    }
+
+
+def test_every_status_that_the_service_says_is_one_of_its_code() -> None:
+    """Read from the text: ``Kind(..., status=422)``, and ``error.status = 422`` in a handler.
+
+    ``ServiceError`` itself carries complaints of the core, so it stands for all of theirs.
+    """
+    found = [pair for path in sorted(SERVICE.rglob("*.py")) for pair in statuses_said(path)]
+    assert len(found) >= 8
+    assert [(code, status) for code, status in found if status not in KINDS[code].statuses] == []
+
+
+def statuses_said(path: Path) -> Iterator[tuple[str, int]]:
+    for node in ast.walk(ast.parse(path.read_text(encoding="utf-8"))):
+        if isinstance(node, ast.Call):
+            for keyword in node.keywords:
+                said = keyword.value
+                if keyword.arg == "status" and isinstance(said, ast.Constant) and said.value:
+                    yield from ((code, said.value) for code in codes_of(ast.unparse(node.func)))
+        if isinstance(node, ast.ExceptHandler) and node.type is not None:
+            for status in statuses_set(node):
+                names = [name.id for name in ast.walk(node.type) if isinstance(name, ast.Name)]
+                told = {
+                    text.value
+                    for text in ast.walk(node)
+                    if isinstance(text, ast.Constant) and text.value in KINDS
+                }
+                # A handler for all kinds asks for the codes it means.
+                codes = (
+                    told if names == ["ServiceError"] else {c for n in names for c in codes_of(n)}
+                )
+                assert codes, path
+                yield from ((code, status) for code in codes)
+
+
+def statuses_set(handler: ast.ExceptHandler) -> Iterator[int]:
+    for node in ast.walk(handler):
+        if isinstance(node, ast.Assign) and isinstance(node.targets[0], ast.Tuple):
+            assert isinstance(node.value, ast.Tuple)
+            pairs = list(zip(node.targets[0].elts, node.value.elts, strict=True))
+        elif isinstance(node, ast.Assign):
+            pairs = [(node.targets[0], node.value)]
+        else:
+            continue
+        for target, value in pairs:
+            if isinstance(target, ast.Attribute) and target.attr == "status":
+                assert isinstance(value, ast.Constant)
+                yield value.value
+
+
+def codes_of(name: str) -> set[str]:
+    """Return the codes a class of errors stands for; none for another call with a status."""
+    if name == "ServiceError":
+        return {kind.code for kind in below(core.KinematicsError)}
+    return {kind.code for kind in below(ServiceError) if kind.__name__ == name}
+
+
 def test_every_error_class_has_a_row() -> None:
     classes = [*below(ServiceError), *below(core.KinematicsError)]
     assert len(classes) >= 34
@@ -93,7 +161,7 @@ def test_the_tree_is_drawn_as_it_is() -> None:
 
 
 def test_a_document_has_one_shape() -> None:
-    error = problems.UnknownArm('no arm "axle"', where=("arm",), value="axle", way_out="list them")
+    error = errors.UnknownArm('no arm "axle"', where=("arm",), value="axle", way_out="list them")
     assert problem_of(error).document("0af7") == {
         "type": "/docs/problems#unknown-arm",
         "title": KINDS["unknown-arm"].title,
@@ -115,9 +183,16 @@ def test_a_document_has_one_shape() -> None:
 
 
 def test_a_status_can_be_said() -> None:
-    assert problem_of(problems.UnknownArm("no", status=422)).status == 422
-    assert problem_of(problems.TooLarge("no")).status == 413
-    assert problem_of(problems.TooLarge("no", status=422)).status == 422
+    assert problem_of(errors.UnknownArm("no", status=422)).status == 422
+    assert problem_of(errors.TooLarge("no")).status == 413
+    assert problem_of(errors.TooLarge("no", status=422)).status == 422
+
+
+def test_a_database_that_does_not_answer_says_when_to_ask_again() -> None:
+    assert problem_of(errors.StorageUnavailable("no")).headers == {"Retry-After": "5"}
+    later = errors.StorageUnavailable("no", headers={"Retry-After": "60"})
+    assert problem_of(later).headers == {"Retry-After": "60"}
+    assert problem_of(errors.StorageUnusable("no")).headers == {}
 
 
 def test_of_several_codes_the_highest_wins_and_stands_first() -> None:

@@ -10,6 +10,7 @@ from kinematics.arm import Arm
 from kinematics.errors import KinematicsError, OutOfRange
 from kinematics.table import Convention, JointKind, Row, Table
 from service.convert import UNITS
+from service.errors import ServiceError, TooLarge, UnusableValue
 from service.operations import joint_rows
 from service.operations.joint_rows import (
     MOST_VECTORS,
@@ -18,7 +19,6 @@ from service.operations.joint_rows import (
     read_joint_rows,
     read_vectors,
 )
-from service.problems import ServiceError, TooLarge, UnusableValue
 
 TURN = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0)
 SLIDE = Row(JointKind.PRISMATIC, 0.0, 0.0, 0.0, 0.0)

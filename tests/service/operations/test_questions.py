@@ -2,21 +2,19 @@
 
 from typing import Any
 
-import numpy as np
 import pytest
 
 from kinematics.errors import KinematicsError, ToolNotSaid, UnknownFrame, UnknownTool
 from service.convert import UNITS
+from service.errors import ServiceError, UnknownArm, UnknownRevision
 from service.operations.arms import Arms
 from service.operations.questions import (
-    MeantArm,
     meant_arm,
     meant_frame,
     meant_tool,
     meant_units,
     question_of,
 )
-from service.problems import ServiceError, UnknownArm, UnknownRevision
 from service.wire import models
 from service.wire.arms import ReadArm, read_arm
 
@@ -156,13 +154,3 @@ def test_what_is_judged_by_is_prepared_once_per_arm_tool_and_task(
     ):
         assert other is not first
     assert prepared({**document, "rows": []}) is None
-
-
-def test_frames_that_move_with_the_arm(arms: Arms[ReadArm]) -> None:
-    for frame, moves in [("base", False), ("world", False), ("flange", True), ("tool", True)]:
-        question = question_of(arms, asked("two-turns", frame=frame), "matrix", moving=True)
-        assert question.moves_with_arm is moves
-    meant = MeantArm(
-        read_arm({"name": "e", "convention": "standard", "units": "m-rad", "rows": []}), None
-    )
-    np.testing.assert_array_equal(meant.arm.base_in_world, np.eye(4))

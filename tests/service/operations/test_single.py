@@ -5,10 +5,10 @@ from typing import Any
 
 import pytest
 
-from kinematics.errors import KinematicsError
+from kinematics.errors import KinematicsError, UnknownFrame, UnknownTool
+from service.errors import DigestDiffers, ServiceError, UnknownArm, UnknownRevision
 from service.operations.arms import Arms
 from service.operations.single import joint_count, single_jacobian, single_pose
-from service.problems import DigestDiffers, ServiceError, UnknownArm, UnknownRevision
 from service.storage.ports import Head
 from service.wire import models
 from service.wire.arms import ReadArm
@@ -47,6 +47,16 @@ def test_tool_and_frame_by_name_or_number(arms: Arms[ReadArm]) -> None:
         assert (answer.head["tool"], answer.head["frame"]) == ("pen", "tray")
         assert (answer.tool_number, answer.frame_number) == (3, 5)
         assert answer.item["position"] == pytest.approx([300, 300, 120])
+    # 0 is what answers say for flange and base.
+    answer = pose(arms, tool="0", frame="00")
+    assert (answer.head["tool"], answer.head["frame"]) == ("flange", "base")
+    # Zeros in front do not count, and no digit is cut off.
+    assert pose(arms, tool="000000000003").tool_number == 3
+    for name, refusal in (("tool", UnknownTool), ("frame", UnknownFrame)):
+        with pytest.raises(refusal):
+            pose(arms, **{name: "00000000030"})
+        with pytest.raises(refusal):
+            pose(arms, **{name: "3000000000"})
     # A tool may be called by digits; its name goes before any number.
     answer = pose(arms, tool="7")
     assert (answer.head["tool"], answer.tool_number) == ("7", 0)

@@ -87,6 +87,21 @@ def test_to_standard_the_base_moves(arms: Arms[ReadArm], document: dict[str, Any
         )
 
 
+@pytest.mark.parametrize(
+    ("convention", "to", "decides"), [("standard", "modified", -1), ("modified", "standard", 0)]
+)
+def test_what_did_not_move_is_not_told(
+    arms: Arms[ReadArm], document: dict[str, Any], convention: str, to: str, decides: int
+) -> None:
+    """Only a and alpha of one row move flange or base: the last or the first."""
+    given = {**document, "convention": convention}
+    for a, alpha, told in ((0, 0, 0), (0, 90, 1), (1, 0, 1)):
+        rows = [dict(row) for row in document["rows"]]
+        rows[decides] |= {"a": a, "alpha": alpha}
+        assert len(converted(arms, {**given, "rows": rows}, to)["findings"]) == told
+    assert converted(arms, {**given, "rows": []}, to)["findings"] == []
+
+
 @pytest.mark.parametrize("units", ["mm-deg", "m-rad", "in-deg"])
 def test_in_the_units_of_the_arm(arms: Arms[ReadArm], document: dict[str, Any], units: str) -> None:
     told = converted(arms, {**document, "units": units}, "modified")

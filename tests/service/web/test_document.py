@@ -82,7 +82,7 @@ async def test_every_refusal_is_a_problem(client: httpx.AsyncClient) -> None:
     for response, operation, status in refusals:
         media = ["application/problem+json"]
         if operation in flat and status != "500":
-            media.append("application/json")
+            media += ["application/json", "text/plain", "text/csv"]
         assert list(response["content"]) == media
 
 

@@ -9,7 +9,7 @@ from service.cautions import CAUTIONS
 from service.problems import ANSWERS, KINDS
 
 pytestmark = pytest.mark.anyio
-PAGES = ["/docs", "/docs/problems"]
+PAGES = ["/docs", "/docs/problems", "/docs/controllers"]
 
 
 @pytest.mark.parametrize("page", PAGES)

@@ -13,7 +13,7 @@ from kinematics.errors import KinematicsError
 from kinematics.table import Convention, Coupling, JointKind, Travel
 from kinematics.tolerances import SINGULAR
 from service.convert import UNITS
-from service.problems import NotAvailable, TooLarge, UnusableValue
+from service.errors import NotAvailable, TooLarge, UnusableValue
 from service.wire.arms import RESERVED, arm_document, read_arm
 
 MATRIX = [[0, -1, 0, 100], [1, 0, 0, 200], [0, 0, 1, 300], [0, 0, 0, 1]]

@@ -8,19 +8,20 @@ from kinematics.orientation_forms import FORMS, TRIPLES
 from service.problems import (
     FormNotFlat,
     MissingField,
-    NotAvailable,
     ServiceError,
     Unparseable,
     UnusableValue,
 )
 from service.wire.controller import (
+    JACOBIAN_PARAMETERS,
     PARAMETERS,
     errors_inline,
     single_question,
     wanted_format,
+    wanted_row,
     wanted_tag,
 )
-from service.wire.question_parameters import QUESTION_PARAMETERS
+from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
 from service.wire.single import SingleQuestion
 
 ALL_NAMES = [f"q{n}" for n in range(1, 33)]
@@ -110,7 +111,7 @@ def test_only_triples_are_flat(form: str) -> None:
 
 @pytest.mark.parametrize(
     ("parameters", "where"),
-    [({"units": "cm"}, "units"), ({"revision": "1.5"}, "revision"), ({"scale": "10"}, "scale")],
+    [({"units": "cm"}, "units"), ({"revision": "1.5"}, "revision"), ({"scale": "-1"}, "scale")],
 )
 def test_other_values_that_cannot_be_used(parameters: dict[str, str], where: str) -> None:
     assert refusal(ServiceError, q="1", **parameters).where == (where,)
@@ -118,14 +119,39 @@ def test_other_values_that_cannot_be_used(parameters: dict[str, str], where: str
 
 def test_a_format() -> None:
     assert wanted_format({}) == "json"
-    assert wanted_format({"format": "flat"}) == "flat"
-    for later in ("txt", "csv"):
-        with pytest.raises(NotAvailable) as caught:
-            wanted_format({"format": later})
-        assert caught.value.status == 422
+    for known in ("json", "flat", "txt", "csv"):
+        assert wanted_format({"format": known}) == known
     for wrong in ("xml", "", "FLAT"):
         with pytest.raises(UnusableValue):
             wanted_format({"format": wrong})
+
+
+def test_a_row() -> None:
+    assert [wanted_row({"row": text}, "txt") for text in ("1", "+6", "02")] == [1, 6, 2]
+    assert [wanted_row({}, form) for form in ("json", "flat", "csv")] == [None] * 3
+    with pytest.raises(MissingField) as caught:
+        wanted_row({}, "txt")
+    assert caught.value.where == ("row",)
+    for wrong in ("0", "7", "-1"):
+        with pytest.raises(UnusableValue):
+            wanted_row({"row": wrong}, "txt")
+    for other in ("json", "flat", "csv"):
+        with pytest.raises(UnusableValue):
+            wanted_row({"row": "1"}, other)
+
+
+def test_a_scale_divides_what_comes_in() -> None:
+    scaled = asked(q="900,-1505", tx="25", tr3="-7", scale="100")
+    assert (scaled.scale, list(scaled.joints)) == (100, [9.0, -15.05])
+    pose = scaled.tool_pose
+    assert pose is not None
+    assert pose.position == [0.25, 0, 0]
+    assert pose.orientation is not None
+    assert pose.orientation.values == [0, 0, -0.07]
+    assert asked(q1="+12", q2=" 012", scale="10").joints == [1.2, 1.2]
+    assert asked(q="1").scale is None
+    for wrong in ("1.0", "1e2", "", "x", "1,5"):
+        assert refusal(Unparseable, q1=wrong, scale="10").where == ("q1",)
 
 
 def test_a_tag() -> None:
@@ -145,9 +171,10 @@ def test_refusals_inline() -> None:
 
 def test_what_is_documented_is_what_is_known() -> None:
     said = {given["name"]: given for given in QUESTION_PARAMETERS}
-    assert len(said) == len(QUESTION_PARAMETERS) == 49
-    # What comes later is known, so that it can be refused by name.
-    assert set(said) | {"scale"} == PARAMETERS
+    assert len(said) == len(QUESTION_PARAMETERS) == 50
+    assert set(said) == PARAMETERS
+    assert {given["name"] for given in JACOBIAN_QUESTION_PARAMETERS} == JACOBIAN_PARAMETERS
+    assert {"row"} == JACOBIAN_PARAMETERS - PARAMETERS
     schemas: list[dict[str, Any]] = [given["schema"] for given in said.values()]
     assert all(schema["type"] for schema in schemas)
     assert said["form"]["schema"]["enum"] == list(FORMS)

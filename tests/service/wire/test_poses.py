@@ -9,7 +9,7 @@ import pytest
 from kinematics.errors import InvalidOrientation, KinematicsError, NotRigid, OutOfRange
 from kinematics.orientation_forms import FORMS
 from service.convert import UNITS
-from service.problems import MissingField, UnusableValue
+from service.errors import MissingField, UnusableValue
 from service.wire.models import Pose
 from service.wire.poses import checked_form, lock_findings, pose_answer, read_pose
 

@@ -1,0 +1,106 @@
+"""The answer to a controller's question in the format asked for: its bytes and their media type.
+
+Left out: which keys a flat answer has (flat.py) and where they stand in a line (fixed_text.py).
+"""
+
+from collections.abc import Mapping
+from typing import NamedTuple, TypedDict
+
+from service.problems import Problem
+from service.wire import fixed_text, flat
+from service.wire.answers import json_bytes
+from service.wire.controller import Format
+from service.wire.single import SingleAnswer, SingleQuestion
+from service.wire.whole_numbers import scaled
+
+_JSON = "application/json"
+
+
+class Stamp(TypedDict):
+    """What tells an answer from a late one."""
+
+    seq: int
+    tag: int
+    t_ms: int
+
+
+class Content(NamedTuple):
+    """The body of an answer."""
+
+    body: bytes
+    media_type: str
+
+
+def nested(answer: SingleAnswer, key: str, stamp: Stamp, scale: int | None) -> Content:
+    """Return the answer as a body's, with one item under ``key``."""
+    head, item = answer.head, answer.item
+    if scale is not None:
+        head, item = scaled(head, scale), scaled(item, scale)
+    told = {"ok": True, "code": answer.item["code"], **stamp} | head | {key: [item]}
+    return Content(json_bytes(told), _JSON)
+
+
+def pose(answer: SingleAnswer, asked: SingleQuestion, wanted: Format, stamp: Stamp) -> Content:
+    """Return a pose on one level.
+
+    Raises
+    ------
+    NumberDoesNotFit : a number is wider than its field.
+    """
+    return _flat(flat.flat_pose(answer, form=asked.form, **stamp), wanted, asked.scale)
+
+
+def jacobian(
+    answer: SingleAnswer, asked: SingleQuestion, wanted: Format, stamp: Stamp, row: int | None
+) -> Content:
+    """Return a Jacobian on one level: the whole matrix, or in a line of text one row.
+
+    Raises
+    ------
+    NumberDoesNotFit : a number is wider than its field.
+    """
+    told = (
+        flat.flat_jacobian(answer, scale=asked.scale, **stamp)
+        if row is None
+        else flat.flat_jacobian_row(answer, row, **stamp)
+    )
+    return _flat(told, wanted, asked.scale)
+
+
+def refused_pose(problem: Problem, wanted: Format, stamp: Stamp) -> Content:
+    """Return a pose without its numbers."""
+    return _refused(flat.flat_pose_refusal(problem.number, **stamp), wanted)
+
+
+def refused_jacobian(problem: Problem, wanted: Format, stamp: Stamp, joints: int) -> Content:
+    """Return the Jacobian of an arm of so many joints without its numbers; text has one row."""
+    told = (
+        flat.flat_jacobian_row_refusal(problem.number, joints, **stamp)
+        if wanted == "txt"
+        else flat.flat_jacobian_refusal(problem.number, joints, **stamp)
+    )
+    return _refused(told, wanted)
+
+
+def refused_inline(problem: Problem, request_id: str, stamp: Stamp) -> Content:
+    """Return the problem document with what begins every answer; its code is the integer."""
+    document = problem.document(request_id)
+    return Content(json_bytes(document | {"ok": False, "code": problem.number, **stamp}), _JSON)
+
+
+def _flat(told: Mapping[str, object], wanted: Format, scale: int | None) -> Content:
+    if wanted == "txt":
+        return Content(fixed_text.text_line(told, scale), fixed_text.MEDIA_TYPE)
+    return _as_json_or_csv(told if scale is None else scaled(told, scale), wanted)
+
+
+def _refused(told: Mapping[str, object], wanted: Format) -> Content:
+    if wanted == "txt":
+        return Content(fixed_text.text_refusal(told), fixed_text.MEDIA_TYPE)
+    return _as_json_or_csv(told, wanted)
+
+
+def _as_json_or_csv(told: Mapping[str, object], wanted: Format) -> Content:
+    if wanted == "csv":
+        return Content(flat.csv_of_one(told), flat.CSV_MEDIA_TYPE)
+    return Content(json_bytes(told), _JSON)
