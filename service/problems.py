@@ -1,6 +1,7 @@
-"""One table of codes, one shape of refusal (RFC 9457); the classes of ``errors.py`` beside them.
+"""One table of codes, one shape of refusal (RFC 9457).
 
-Left out: how pydantic's complaints are read (``validation.py``) and how a problem is sent.
+Left out: the classes that are raised (``errors.py``), how pydantic's complaints are read
+(``validation.py``) and how a problem is sent.
 """
 
 from collections.abc import Mapping, Sequence
@@ -11,67 +12,8 @@ from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError
 from service.details import Detail, Location, as_given, encodable
-from service.errors import (
-    DigestDiffers,
-    DuplicateKey,
-    FormNotFlat,
-    MethodNotAllowed,
-    MissingField,
-    NameTaken,
-    NotAvailable,
-    NotInTheInterface,
-    NumberDoesNotFit,
-    PreconditionRequired,
-    RequestTimeout,
-    RevisionDiffers,
-    ServiceError,
-    StateDiffers,
-    StorageUnavailable,
-    StorageUnusable,
-    TooLarge,
-    UnknownArm,
-    UnknownField,
-    UnknownPath,
-    UnknownRevision,
-    Unparseable,
-    UnusableValue,
-    WrongMediaType,
-)
+from service.errors import ServiceError
 from service.validation import details_of
-
-__all__ = [
-    "ANSWERS",
-    "KINDS",
-    "MEDIA_TYPE",
-    "MOST_DETAILS",
-    "DigestDiffers",
-    "DuplicateKey",
-    "FormNotFlat",
-    "Kind",
-    "MethodNotAllowed",
-    "MissingField",
-    "NameTaken",
-    "NotAvailable",
-    "NotInTheInterface",
-    "NumberDoesNotFit",
-    "PreconditionRequired",
-    "Problem",
-    "RequestTimeout",
-    "RevisionDiffers",
-    "ServiceError",
-    "StateDiffers",
-    "StorageUnavailable",
-    "StorageUnusable",
-    "TooLarge",
-    "UnknownArm",
-    "UnknownField",
-    "UnknownPath",
-    "UnknownRevision",
-    "Unparseable",
-    "UnusableValue",
-    "WrongMediaType",
-    "problem_of",
-]
 
 MEDIA_TYPE = "application/problem+json"
 # Enough to mend a table in one go, few enough to stay within a controller's 16 kB.
@@ -182,6 +124,7 @@ def problem_of(exc: Exception, *, location: Location = "body", body: object = ..
 
     Examples
     --------
+    >>> from service.errors import UnknownField
     >>> problem = problem_of(UnknownField("no", where=("unit",), location="query"))
     >>> problem.code, problem.number, problem.status
     ('unknown-field', 110, 422)

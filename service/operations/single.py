@@ -11,6 +11,7 @@ from kinematics.errors import KinematicsError
 from kinematics.task_space import rows_of
 from kinematics.travel_limits import travel_margin
 from service.convert import Units
+from service.errors import DigestDiffers, ServiceError, UnknownRevision
 from service.operations.arms import Arms
 from service.operations.jacobians import Wanted, jacobian_items
 from service.operations.joint_rows import JointRows, read_joint_rows
@@ -23,7 +24,6 @@ from service.operations.questions import (
     meant_tool,
     meant_units,
 )
-from service.problems import DigestDiffers, ServiceError, UnknownRevision
 from service.wire.arms import ReadArm
 from service.wire.single import TOOL_PARAMETERS, SingleAnswer, SingleQuestion
 

@@ -13,9 +13,10 @@ from starlette.requests import Request
 from starlette.responses import Response
 
 from kinematics.errors import KinematicsError
+from service.errors import ServiceError
 from service.operations.arms import Arms
 from service.operations.single import joint_count, single_jacobian, single_pose
-from service.problems import Problem, ServiceError
+from service.problems import Problem
 from service.refusals import problem_at
 from service.web.document import documented
 from service.wire import one_answer

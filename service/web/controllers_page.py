@@ -104,6 +104,8 @@ _PAGE = """<!doctype html>
 <html lang="en">
 <head>
 <meta charset="utf-8">
+<meta name="viewport" content="width=device-width, initial-scale=1">
+<link rel="icon" href="/docs/files/icon.svg">
 <title>Armspan: for controllers</title>
 <link rel="stylesheet" href="/docs/files/pages.css">
 </head>

@@ -20,6 +20,7 @@ from service.errors import UnknownPath
 from service.problems import ANSWERS, KINDS
 from service.web.controllers_page import CLIENTS, client_text, controllers_html
 from service.web.document import openapi_document
+from service.wire.preconditions import entity_tag, if_none_match
 from service.wire.query import known_parameters
 
 router = APIRouter(include_in_schema=False)
@@ -32,6 +33,7 @@ _FILES = {
     "swagger-ui.css": (_SCRIPTS, "text/css"),
     "docs.js": (_OURS, "text/javascript"),
     "pages.css": (_OURS, "text/css"),
+    "icon.svg": (_OURS, "image/svg+xml"),
 }
 # The style sheet carries its icons as data addresses; nothing else needs more than 'self'.
 _DOCS_POLICY = {
@@ -96,9 +98,10 @@ def version_here() -> str:
 def _answer(
     request: Request, content: bytes, media_type: str, headers: dict[str, str] | None = None
 ) -> Response:
-    tag = f'"{_digest(content)}"'
-    kept = {"ETag": tag, "Cache-Control": "no-cache", **(headers or {})}
-    if tag in request.headers.get("if-none-match", ""):
+    version = _digest(content)
+    kept = {"ETag": entity_tag(version), "Cache-Control": "no-cache", **(headers or {})}
+    known = if_none_match(request)
+    if known == "*" or version in (known or ()):
         return Response(status_code=304, headers=kept)
     return Response(content, media_type=media_type, headers=kept)
 
@@ -122,7 +125,7 @@ def _docs_html() -> bytes:
 @cache
 def _problems_html() -> bytes:
     refusals = "\n".join(
-        f'<tr id="{code}"><td>{code}</td><td>{kind.number}</td><td>{kind.status}</td>'
+        f'<tr id="{code}"><td>{code}</td><td>{kind.number}</td><td>{_listed(kind.statuses)}</td>'
         f"<td>{escape(kind.title)}</td></tr>"
         for code, kind in sorted(KINDS.items(), key=lambda item: (item[1].number, item[0]))
     )
@@ -133,6 +136,10 @@ def _problems_html() -> bytes:
     return _PROBLEMS.format(refusals=refusals, answers=answers, cautions=_cautions()).encode()
 
 
+def _listed(statuses: tuple[int, ...]) -> str:
+    return ", ".join(map(str, statuses))
+
+
 def _cautions() -> str:
     return "".join(f"<li>{escape(line)}</li>" for line in CAUTIONS)
 
@@ -141,6 +148,8 @@ _PROBLEMS = """<!doctype html>
 <html lang="en">
 <head>
 <meta charset="utf-8">
+<meta name="viewport" content="width=device-width, initial-scale=1">
+<link rel="icon" href="/docs/files/icon.svg">
 <title>Armspan: codes and problems</title>
 <link rel="stylesheet" href="/docs/files/pages.css">
 </head>

@@ -9,7 +9,7 @@ from typing import Literal
 from kinematics.orientation_forms import TRIPLES
 from kinematics.tolerances import MOST_ROWS
 from service.convert import UNITS
-from service.problems import FormNotFlat, MissingField, UnusableValue
+from service.errors import FormNotFlat, MissingField, UnusableValue
 from service.wire import models
 from service.wire.poses import checked_form
 from service.wire.query import number, whole_number

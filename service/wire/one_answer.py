@@ -83,9 +83,13 @@ def refused_jacobian(problem: Problem, wanted: Format, stamp: Stamp, joints: int
 
 
 def refused_inline(problem: Problem, request_id: str, stamp: Stamp) -> Content:
-    """Return the problem document with what begins every answer; its code is the integer."""
-    document = problem.document(request_id)
-    return Content(json_bytes(document | {"ok": False, "code": problem.number, **stamp}), _JSON)
+    """Return the problem document with what begins every answer.
+
+    A caller that asks for it reads ``code`` where answers have it, and must find the integer
+    there; the word is ``name``.
+    """
+    named = {"ok": False, "code": problem.number, "name": problem.code, **stamp}
+    return Content(json_bytes(problem.document(request_id) | named), _JSON)
 
 
 def _flat(told: Mapping[str, object], wanted: Format, scale: int | None) -> Content:

@@ -5,13 +5,7 @@ from typing import Any
 import pytest
 
 from kinematics.orientation_forms import FORMS, TRIPLES
-from service.problems import (
-    FormNotFlat,
-    MissingField,
-    ServiceError,
-    Unparseable,
-    UnusableValue,
-)
+from service.errors import FormNotFlat, MissingField, ServiceError, Unparseable, UnusableValue
 from service.wire.controller import (
     JACOBIAN_PARAMETERS,
     PARAMETERS,

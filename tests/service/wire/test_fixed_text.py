@@ -7,7 +7,7 @@ from typing import Any
 
 import pytest
 
-from service.problems import NumberDoesNotFit
+from service.errors import NumberDoesNotFit
 from service.wire.fixed_text import places, text_line, text_refusal
 from service.wire.flat import flat_jacobian_row_refusal, flat_pose_refusal
 

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from service.problems import NumberDoesNotFit
+from service.errors import NumberDoesNotFit
 from service.wire.whole_numbers import scaled
 
 
