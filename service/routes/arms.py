@@ -69,6 +69,7 @@ _LINKED = {"Link": "The next page, if there is one."}
     openapi_extra=documented(
         "List stored arms",
         "Stored arms by name, a page at a time.",
+        examples="arms",
         answer=ArmListAnswer,
         parameters=_PAGES,
         statuses=(503,),
@@ -92,6 +93,7 @@ async def list_arms(request: Request) -> Response:
         "Store a new arm",
         "Stores the arm under its name as the first revision, or the next after a removal.",
         request=Arm,
+        examples="arms-create",
         answer=StoredArmAnswer,
         parameters=_SAID,
         statuses=(409, 503),
@@ -114,6 +116,7 @@ async def create_arm(request: Request) -> Response:
     openapi_extra=documented(
         "Get an arm",
         "The newest revision. With If-None-Match an unchanged one is not sent again.",
+        examples="arm",
         answer=StoredArmAnswer,
         parameters=(_IF_NONE_MATCH,),
         statuses=(304, 404, 422, 503),
@@ -135,6 +138,7 @@ async def get_arm(request: Request) -> Response:
         "With If-Match the arm must be as the caller knows it; with If-None-Match: * it must not "
         "be there yet (then the answer is 201). One of the two is required.",
         request=Arm,
+        examples="arm-replace",
         answer=StoredArmAnswer,
         parameters=(*_SAID, _IF_MATCH, _IF_ABSENT),
         statuses=(412, 428, 503),
@@ -193,6 +197,7 @@ async def delete_arm(request: Request) -> Response:
     openapi_extra=documented(
         "List the revisions of an arm",
         "Every revision of the name, oldest first, those before a removal too.",
+        examples="arm-revisions",
         answer=RevisionListAnswer,
         parameters=_PAGES,
         statuses=(404, 503),
@@ -217,6 +222,7 @@ async def list_revisions(request: Request) -> Response:
     openapi_extra=documented(
         "Get one revision of an arm",
         "A revision never changes, so this answer may be kept for ever.",
+        examples="arm-revision",
         answer=StoredArmAnswer,
         parameters=(_NUMBER_PARAMETER, _IF_NONE_MATCH),
         statuses=(304, 404, 422, 503),

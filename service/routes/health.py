@@ -33,6 +33,7 @@ _NOT_KEPT = {"Cache-Control": "no-store"}
         "Asks no database.",
         answer_media=["text/plain"],
         controller=True,
+        examples="ping",
         statuses=[422],
     ),
 )
@@ -47,7 +48,9 @@ async def ping(request: Request) -> Response:
 @router.api_route(
     "/livez",
     methods=["GET", "HEAD"],
-    openapi_extra=documented("Alive", "The process answers.", answer=_STATE, statuses=[422]),
+    openapi_extra=documented(
+        "Alive", "The process answers.", answer=_STATE, statuses=[422], examples="livez"
+    ),
 )
 async def livez(request: Request) -> Response:
     """Answer as long as the process can."""
@@ -59,7 +62,7 @@ async def livez(request: Request) -> Response:
     "/readyz",
     methods=["GET", "HEAD"],
     openapi_extra=documented(
-        "Ready", "The database answers too.", answer=_STATE, statuses=[422, 503]
+        "Ready", "The database answers too.", answer=_STATE, statuses=[422, 503], examples="readyz"
     ),
 )
 async def readyz(request: Request) -> Response:
