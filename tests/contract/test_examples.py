@@ -24,7 +24,11 @@ from service.web.examples import examples_of, folder
 pytestmark = pytest.mark.anyio
 
 COUNTS = {
-    "jacobian": 4, "jacobians": 4, "pose": 9, "poses": 8, "tables-conversions": 3,
+    "jacobian": 4,
+    "jacobians": 4,
+    "pose": 9,
+    "poses": 8,
+    "tables-conversions": 3,
     **dict.fromkeys(("arms", "arms-create", "arm", "arm-replace"), 1),
     **dict.fromkeys(("arm-revisions", "arm-revision", "ping", "livez", "readyz"), 1),
 }
