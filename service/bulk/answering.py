@@ -17,12 +17,12 @@ from service.bulk.threads import Threads
 from service.problems import Problem
 from service.wire.answers import PartsAnswer, json_problem
 from service.wire.body import media_type_of, parse_json, read_bytes
+from service.wire.controller import wanted_tag
 from service.wire.formats import (
     BODY_TYPES,
     Format,
     answer_format,
     question_parameters,
-    table_tag,
 )
 
 # Parsed, worked on and printed in a few milliseconds; more is done in pieces.
@@ -55,7 +55,7 @@ async def answer_many(request: Request, key: Key) -> Response:
     parameters = question_parameters(request, known)
     body_format = known or "json"
     wanted = answer_format(parameters, request.headers.get("accept", ""), body_format)
-    stamp = Stamp(next(request.app.state.sequence), table_tag(parameters), time_ns() // 1_000_000)
+    stamp = Stamp(next(request.app.state.sequence), wanted_tag(parameters), time_ns() // 1_000_000)
     raw = await read_bytes(request, *BODY_TYPES)
     bulk, arms = request.app.state.bulk, request.app.state.arms
     if body_format != "json":

@@ -13,7 +13,7 @@ from service.details import Detail, Location
 from service.errors import FormNotFlat, MissingField, UnknownField, UnusableValue
 from service.wire import csv_rows, npy
 from service.wire.controller import FLAT_FORM, single_question
-from service.wire.query import known_parameters, whole_number
+from service.wire.query import known_parameters
 from service.wire.single import TOOL_PARAMETERS, SingleQuestion
 
 Format = Literal["json", "npy", "csv"]
@@ -115,11 +115,6 @@ def table_question(parameters: Mapping[str, str], wanted: Format, *, key: str) -
     asked = {name: parameters[name] for name in parameters if name not in ("arm", "singularity")}
     form = form_for(wanted, parameters.get("form"), key=key, location="query")
     return single_question(parameters["arm"], asked | {"form": form}, "json")
-
-
-def table_tag(parameters: Mapping[str, str]) -> int:
-    """Return the caller's tag, 0 where none was sent."""
-    return whole_number(parameters["tag"], "tag") if "tag" in parameters else 0
 
 
 def table_singularity(parameters: Mapping[str, str]) -> bool | None:
