@@ -3,11 +3,14 @@
 Left out: names such as ``zyx-current`` and the finding at gimbal lock (orientation_forms).
 """
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from kinematics.kernels.angles import angle_triples
+from kinematics.kernels.compiler import for_kernel
 from kinematics.number_checks import FloatArray
 from kinematics.rotations import elementary_rotation
 from kinematics.tolerances import HALF_TURN_NOISE, LOCK_EXACT
@@ -44,6 +47,13 @@ class AxisOrder:
     def first_is_last(self) -> bool:
         """Whether the first and the last turn are about the same axis."""
         return self.axes[0] == self.axes[2]
+
+    @property
+    def of_kernel(self) -> tuple[tuple[int, int, int], int, bool, float, float]:
+        """The order and the tolerances as kernels/angles.py takes them."""
+        outermost, middle, innermost = self.as_current
+        axes = outermost, middle, 3 - outermost - middle
+        return axes, innermost, self.about_fixed, LOCK_EXACT, HALF_TURN_NOISE
 
 
 def rotation_from_angles(order: AxisOrder, angles: ArrayLike) -> FloatArray:
@@ -105,31 +115,27 @@ def angles_of(order: AxisOrder, rotation: ArrayLike) -> FloatArray:
     >>> angles_of(AxisOrder((2, 1, 0), False), np.eye(3))
     array([0., 0., 0.])
     """
+    return angles_and_distance(order, rotation)[0]
+
+
+def angles_and_distance(order: AxisOrder, rotation: ArrayLike) -> tuple[FloatArray, FloatArray]:
+    """Return the angles of ``angles_of`` and the distance of ``distance_from_gimbal_lock``.
+
+    Of poses (..., 4, 4) the rotations are taken.
+
+    Examples
+    --------
+    >>> angles, distance = angles_and_distance(AxisOrder((2, 1, 2), False), np.eye(3))
+    >>> angles, float(distance)
+    (array([0., 0., 0.]), 0.0)
+    """
     rotations = np.asarray(rotation, dtype=np.float64)
-    i, j, k, parity = _axes_and_parity(order)
-    across_j, across_k, along = _innermost_axis(order, rotations)
-    across = np.hypot(across_j, across_k)
-    locked = np.arctan2(across, np.abs(along)) <= LOCK_EXACT
-
-    if order.first_is_last:
-        outer = np.arctan2(across_j, -parity * across_k)
-        middle = np.arctan2(np.where(locked, 0.0, across), along)
-    else:
-        outer = np.arctan2(-parity * across_j, across_k)
-        middle = np.arctan2(parity * along, np.where(locked, 0.0, across))
-    outer = np.where(locked, 0.0, outer)
-
-    cosine, sine = np.cos(outer)[..., None], parity * np.sin(outer)[..., None]
-    rest_j = cosine * rotations[..., j, :] + sine * rotations[..., k, :]
-    beside = -parity * rest_j[..., k] if order.first_is_last else parity * rest_j[..., i]
-    inner = np.arctan2(beside, rest_j[..., j])
-
-    if order.about_fixed:
-        first, last = inner, outer
-    else:  # at lock the inner angle holds what is determined; hand it to the first
-        first = np.where(locked, np.where(along > 0.0, inner, -inner), outer)
-        last = np.where(locked, 0.0, inner)
-    return np.stack([_folded(first), middle + 0.0, _folded(last)], axis=-1)
+    batch = rotations.shape[:-2]
+    count = math.prod(batch)
+    angles, distance = np.empty((count, 3)), np.empty(count)
+    matrices = for_kernel(rotations).reshape(count, *rotations.shape[-2:])
+    angle_triples(matrices, *order.of_kernel, angles, distance)
+    return angles.reshape(*batch, 3), distance.reshape(batch)
 
 
 def distance_from_gimbal_lock(order: AxisOrder, rotation: ArrayLike) -> FloatArray:
@@ -153,8 +159,7 @@ def distance_from_gimbal_lock(order: AxisOrder, rotation: ArrayLike) -> FloatArr
     >>> float(distance_from_gimbal_lock(AxisOrder((2, 1, 0), False), np.eye(3)).round(12))
     1.570796326795
     """
-    across_j, across_k, along = _innermost_axis(order, np.asarray(rotation, dtype=np.float64))
-    return np.asarray(np.arctan2(np.hypot(across_j, across_k), np.abs(along)))
+    return angles_and_distance(order, rotation)[1]
 
 
 def sum_is_determined(order: AxisOrder, rotation: ArrayLike) -> BoolArray:
@@ -178,25 +183,5 @@ def sum_is_determined(order: AxisOrder, rotation: ArrayLike) -> BoolArray:
     >>> bool(sum_is_determined(AxisOrder((2, 1, 2), False), np.eye(3)))
     True
     """
-    along = _innermost_axis(order, np.asarray(rotation, dtype=np.float64))[2]
-    return np.asarray(along > 0.0)
-
-
-def _axes_and_parity(order: AxisOrder) -> tuple[int, int, int, int]:
-    """Outermost axis, middle axis, the third one, and +1 if they are right-handed in this order."""
-    i, j, _ = order.as_current
-    return i, j, 3 - i - j, 1 if (j - i) % 3 == 1 else -1
-
-
-def _innermost_axis(
-    order: AxisOrder, rotations: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Components of the turned innermost axis along the middle, the third and the outermost."""
-    i, j, k, _ = _axes_and_parity(order)
-    innermost = order.as_current[2]
-    return rotations[..., j, innermost], rotations[..., k, innermost], rotations[..., i, innermost]
-
-
-def _folded(angle: FloatArray) -> FloatArray:
-    """Angles of arctan2 in (-pi, pi], with 0.0 for -0.0."""
-    return np.where(angle <= HALF_TURN_NOISE - np.pi, np.pi, angle) + 0.0
+    outermost, _, innermost = order.as_current
+    return np.asarray(np.asarray(rotation)[..., outermost, innermost] > 0.0)

@@ -131,6 +131,13 @@ class Arm:
         """Whether each joint value is an angle, (joints,)."""
         return np.array([unit == "rad" for unit in self.joint_units], dtype=bool)
 
+    @cached_property
+    def top_speeds(self) -> FloatArray | None:
+        """Top speed of each joint value, (joints,), rad/s or m/s; None where one is not known."""
+        rows = [self.table.rows[index] for index in self.drive_map.driven]
+        known = [row.top_speed for row in rows if row.top_speed is not None]
+        return np.array(known) if rows and len(known) == len(rows) else None
+
     def tool_name(self, tool: str | int | None, where: tuple[str | int, ...] = ("tool",)) -> str:
         """Return the name of the tool meant by a name, a controller's number, or nothing.
 

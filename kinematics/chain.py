@@ -138,30 +138,62 @@ def walk(arm: Arm, joint_values: FloatArray) -> Walk:
     >>> walk(arm, np.array([0.0, np.pi / 2])).flange_in_base[:3, 3].round(12)
     array([0.4, 0.4, 0. ])
     """
-    chain = arm.table.chain
-    batch, values = _as_rows(joint_values)
-    count, rows = len(values), len(arm.table.rows)
-    direction, point = np.empty((count, rows, 3)), np.empty((count, rows, 3))
-    frames = np.empty((count, rows + 2, 4, 4))
-    frames_and_axes(
-        values,
-        arm.drive_map.matrix,
-        chain.first,
-        chain.offset_terms,
-        chain.link_terms,
-        chain.revolute,
-        arm.table.convention is Convention.STANDARD,
-        direction,
-        point,
-        frames,
-    )
-    frames = frames.reshape(*batch, rows + 2, 4, 4)
+    batch, values = as_rows(joint_values)
+    rows = len(arm.table.rows)
+    run = AxesRun(arm, values, every=True)
+    run()
+    frames = run.frames.reshape(*batch, rows + 2, 4, 4)
     return Walk(
-        direction.reshape(*batch, rows, 3),
-        point.reshape(*batch, rows, 3),
+        run.direction.reshape(*batch, rows, 3),
+        run.point.reshape(*batch, rows, 3),
         frames[..., :-1, :, :],
         frames[..., -1, :, :],
     )
+
+
+class AxesRun:
+    """The arrays of a walk along so many postures and the kernel that fills them.
+
+    Parameters
+    ----------
+    joint_values : (count, joints), as ``as_rows`` gives them; read at each call.
+    every : whether all frames are wanted, or the flange alone.
+
+    Attributes
+    ----------
+    direction, point : (count, n, 3), of the axes, in the base.
+    frames : links 0 ... n and flange, (count, n + 2, 4, 4), or the flange, (count, 1, 4, 4).
+
+    Examples
+    --------
+    >>> from kinematics.table import Table
+    >>> run = AxesRun(Arm("empty", Table(Convention.STANDARD, ())), np.empty((1, 0)), every=False)
+    >>> run()
+    >>> run.frames[0, 0, 2]
+    array([0., 0., 1., 0.])
+    """
+
+    def __init__(self, arm: Arm, joint_values: FloatArray, *, every: bool) -> None:
+        chain = arm.table.chain
+        count, rows = len(joint_values), len(arm.table.rows)
+        self.direction, self.point = np.empty((count, rows, 3)), np.empty((count, rows, 3))
+        self.frames = np.empty((count, rows + 2 if every else 1, 4, 4))
+        self._of_kernel = (
+            joint_values,
+            arm.drive_map.matrix,
+            chain.first,
+            chain.offset_terms,
+            chain.link_terms,
+            chain.revolute,
+            arm.table.convention is Convention.STANDARD,
+            self.direction,
+            self.point,
+            self.frames,
+        )
+
+    def __call__(self) -> None:
+        """Walk."""
+        frames_and_axes(*self._of_kernel)
 
 
 def tool_in_base(
@@ -186,7 +218,7 @@ def tool_in_base(
     True
     """
     chain = arm.table.chain
-    batch, values = _as_rows(joint_values)
+    batch, values = as_rows(joint_values)
     poses = np.empty((len(values), 4, 4)) if out is None else out
     tool_poses(
         values,
@@ -201,9 +233,16 @@ def tool_in_base(
     return poses.reshape(*batch, 4, 4)
 
 
-def _as_rows(joint_values: FloatArray) -> tuple[tuple[int, ...], FloatArray]:
-    """Return the batch shape, and the postures one under the other as the kernels take them."""
+def as_rows(joint_values: FloatArray) -> tuple[tuple[int, ...], FloatArray]:
+    """Return the batch shape, and the postures one under the other as the kernels take them.
+
+    Examples
+    --------
+    >>> as_rows(np.zeros((2, 3, 6)))[1].shape
+    (6, 6)
+    """
     batch = joint_values.shape[:-1]
-    count = math.prod(batch)
     rows = for_kernel(joint_values)
-    return batch, rows.reshape(count, joint_values.shape[-1])
+    if len(batch) == 1:
+        return batch, rows
+    return batch, rows.reshape(math.prod(batch), joint_values.shape[-1])

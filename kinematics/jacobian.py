@@ -5,14 +5,14 @@ joint_speeds.py and singularity.py.
 """
 
 import math
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
 from kinematics.arm import Arm
-from kinematics.chain import Walk, walk
+from kinematics.chain import AxesRun, as_rows, walk
 from kinematics.kernels.compiler import for_kernel
-from kinematics.kernels.decomposition import singular_values
+from kinematics.kernels.decomposition import decompose
 from kinematics.kernels.jacobian import jacobians
 from kinematics.table import FloatArray
 from kinematics.tolerances import SHORTEST_LENGTH
@@ -21,31 +21,27 @@ ROW_NAMES = ("vx", "vy", "vz", "wx", "wy", "wz")
 """Order of the rows everywhere: velocity of the tool point first, then angular velocity."""
 
 
-@dataclass(frozen=True)
-class Motion:
-    """Tool pose and the two Jacobians of a batch of postures, in base axes.
+class Motion(NamedTuple):
+    """Tool pose, axes and the two Jacobians of a batch of postures, in base axes.
 
     Attributes
     ----------
-    tool_in_base : (..., 4, 4).
+    tool_in_base, flange_in_base : (..., 4, 4).
+    axis_direction, axis_point : (..., n, 3), as in ``chain.Walk``.
     of_rows : (..., 6, n), per motion of each row of the table.
     of_joints : (..., 6, joints), per joint value: ``of_rows @ C``.
-    walk : the axes and frames it was made from.
     """
 
     tool_in_base: FloatArray
+    flange_in_base: FloatArray
+    axis_direction: FloatArray
+    axis_point: FloatArray
     of_rows: FloatArray
     of_joints: FloatArray
-    walk: Walk
 
     def of_posture(self, index: int) -> "Motion":
         """Return one posture of a batch (count,), without the batch axis."""
-        return Motion(
-            self.tool_in_base[index],
-            self.of_rows[index],
-            self.of_joints[index],
-            self.walk.of_posture(index),
-        )
+        return Motion(*(part[index] for part in self))
 
 
 def motion_of(arm: Arm, joint_values: FloatArray, tool_in_flange: FloatArray) -> Motion:
@@ -64,26 +60,46 @@ def motion_of(arm: Arm, joint_values: FloatArray, tool_in_flange: FloatArray) ->
     >>> motion_of(arm, np.array([0.0]), np.eye(4)).of_joints.ravel()
     array([0. , 0.5, 0. , 0. , 0. , 1. ])
     """
-    walked = walk(arm, joint_values)
-    tool_in_base = walked.flange_in_base @ tool_in_flange
-    batch, rows, joints = joint_values.shape[:-1], len(arm.table.rows), arm.joint_count
-    count = math.prod(batch)
-    of_rows, of_joints = np.empty((count, 6, rows)), np.empty((count, 6, joints))
-    jacobians(
-        walked.axis_direction.reshape(count, rows, 3),
-        walked.axis_point.reshape(count, rows, 3),
-        tool_in_base.reshape(count, 4, 4),
-        arm.table.chain.revolute,
-        arm.drive_map.matrix,
-        of_rows,
-        of_joints,
-    )
-    return Motion(
-        tool_in_base,
-        of_rows.reshape(*batch, 6, rows),
-        of_joints.reshape(*batch, 6, joints),
-        walked,
-    )
+    batch, values = as_rows(joint_values)
+    run = MotionRun(arm, values, tool_in_flange)
+    run()
+    if len(batch) == 1:
+        return run.motion
+    return Motion(*(part.reshape(batch + part.shape[1:]) for part in run.motion))
+
+
+class MotionRun:
+    """The arrays of so many postures and the kernels that fill them, again and again if asked.
+
+    Attributes
+    ----------
+    motion : of the joint values that stood in ``joint_values`` (count, joints) at the last call.
+    """
+
+    def __init__(self, arm: Arm, joint_values: FloatArray, tool_in_flange: FloatArray) -> None:
+        count, rows, joints = len(joint_values), len(arm.table.rows), arm.joint_count
+        self._axes = AxesRun(arm, joint_values, every=False)
+        flange = self._axes.frames.reshape(count, 4, 4)
+        tool = np.empty((count, 4, 4))
+        of_rows, of_joints = np.empty((count, 6, rows)), np.empty((count, 6, joints))
+        direction, point = self._axes.direction, self._axes.point
+        self._of_jacobians = (
+            direction,
+            point,
+            flange,
+            for_kernel(tool_in_flange),
+            arm.table.chain.revolute,
+            arm.drive_map.matrix,
+            tool,
+            of_rows,
+            of_joints,
+        )
+        self.motion = Motion(tool, flange, direction, point, of_rows, of_joints)
+
+    def __call__(self) -> None:
+        """Work the motion out."""
+        self._axes()
+        jacobians(*self._of_jacobians)
 
 
 def in_axes(of_joints: FloatArray, base_in_axes: FloatArray) -> FloatArray:
@@ -118,7 +134,8 @@ def singular_values_of(of_joints: FloatArray) -> FloatArray:
     batch, joints = of_joints.shape[:-2], of_joints.shape[-1]
     values = np.empty((math.prod(batch), min(6, joints)))
     matrices = for_kernel(of_joints).reshape(len(values), 6, joints)
-    singular_values(matrices, np.eye(6), np.ones(joints), values)
+    no_left, no_right = np.empty((0, 6, min(6, joints))), np.empty((0, joints, joints))
+    decompose(matrices, np.eye(6), np.ones(joints), no_left, values, no_right)
     return values.reshape(*batch, min(6, joints))
 
 

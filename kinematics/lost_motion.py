@@ -6,6 +6,7 @@ Left out: the numbers themselves (singularity.py).
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import combinations
+from math import isnan
 
 import numpy as np
 
@@ -13,18 +14,17 @@ from kinematics import findings
 from kinematics.arm import Arm
 from kinematics.findings import Finding
 from kinematics.jacobian import Motion, motion_of
+from kinematics.kernels.judgement import MOVED, SPEED_FACTOR, TRAVEL_JOINT, TURNED
 from kinematics.singular_kinds import Anatomy, kinds_of, support_of
 from kinematics.singularity import NEAR, REGULAR, SINGULAR, STATES, Judgement
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace
 from kinematics.tolerances import (
-    FURTHEST_STEP,
     LOST_PART,
     MOST_SPARE,
     NAMED_AXIS,
     NUDGE,
     SETTLED_DECIMALS,
-    TRAVEL_TIE,
 )
 
 
@@ -93,6 +93,9 @@ def describe(
         in_joint_units = null_motions * space.joint_scale[:, None]
         kinds = kinds_of(arm, anatomy, motion, state, in_joint_units, taking_part, lost)
         joints = tuple(index + 1 for index in taking_part)
+    travel_to, tool_speed = travel_and_speed(
+        arm, judgement.readings.tolist(), judgement.step.tolist()
+    )
     return PostureSingularity(
         state=STATES[state],
         kinds=kinds,
@@ -100,8 +103,8 @@ def describe(
         lost_motion=tuple(
             _told(direction, space, base_in_frame, frame, state) for direction in lost
         ),
-        travel_to=_travel_to(arm, space, judgement),
-        tool_speed=_tool_speed(space, judgement),
+        travel_to=travel_to,
+        tool_speed=tool_speed,
         findings=(
             *_state_findings(arm, space, judgement, kinds, joints),
             *_position_findings(arm, space, motion),
@@ -242,23 +245,24 @@ def _unit(vector: FloatArray) -> FloatArray:
     return unit if unit[int(np.abs(unit).argmax())] > 0 else -unit
 
 
-def _travel_to(arm: Arm, space: TaskSpace, judgement: Judgement) -> tuple[int, float, str] | None:
-    pure = np.abs(judgement.step / space.joint_scale)
-    # Where the value is flat, the first-order step leads nowhere.
-    if not pure.max() <= FURTHEST_STEP:
-        return None
-    joint = int(np.argmax(pure >= pure.max() * (1.0 - TRAVEL_TIE)))
-    return joint + 1, float(judgement.step[joint]), arm.joint_units[joint]
+def travel_and_speed(
+    arm: Arm, readings: Sequence[float], step: Sequence[float]
+) -> tuple[tuple[int, float, str] | None, tuple[float, float] | None]:
+    """Return ``travel_to`` and ``tool_speed`` of one posture from its numbers in a judgement.
 
-
-def _tool_speed(space: TaskSpace, judgement: Judgement) -> tuple[float, float] | None:
-    factor = float(judgement.speed_factor)
-    if np.isnan(factor):
-        return None
-    weakest = judgement.left[:, -1] / space.row_scale
-    linear = [weakest[k] for k, row in enumerate(space.rows) if row < 3]
-    angular = [weakest[k] for k, row in enumerate(space.rows) if row >= 3]
-    return factor * float(np.linalg.norm(linear)), factor * float(np.linalg.norm(angular))
+    Parameters
+    ----------
+    readings : (READINGS,); step : (joints,), both of that posture, as plain floats.
+    """
+    joint, factor = readings[TRAVEL_JOINT], readings[SPEED_FACTOR]
+    travel_to = None
+    if not isnan(joint):
+        index = int(joint)
+        travel_to = (index + 1, step[index], arm.joint_units[index])
+    tool_speed = None
+    if not isnan(factor):
+        tool_speed = (factor * readings[MOVED], factor * readings[TURNED])
+    return travel_to, tool_speed
 
 
 def _state_findings(

@@ -1,6 +1,7 @@
-"""The 28 ways to write an orientation: their names, both directions, and what input is accepted.
+"""The 28 ways to write an orientation: their names and both directions.
 
-Left out: the arithmetic (rotations, angle_triples, rigidity); units other than radians (the edge).
+Left out: the arithmetic (rotations, angle_triples), which input is accepted (orientation_input),
+units other than radians (the edge).
 
 A form is ``matrix``, ``quaternion-wxyz``, ``quaternion-xyzw``, ``rotation-vector``, or
 ``<sequence>-<axes>``, e.g. ``zyx-current``. The angles of a triple stand in the order of the
@@ -19,22 +20,20 @@ from kinematics.angle_triples import (
     rotation_from_angles,
     sum_is_determined,
 )
-from kinematics.errors import InvalidOrientation, OutOfRange
-from kinematics.findings import ANGLES_NOT_UNIQUE, INPUT_REPAIRED, Finding
-from kinematics.number_checks import FloatArray, checked_numbers
-from kinematics.rigidity import checked_rotation_matrix
+from kinematics.errors import InvalidOrientation
+from kinematics.findings import ANGLES_NOT_UNIQUE, Finding
+from kinematics.kernels.angles import angle_triples
+from kinematics.kernels.compiler import for_kernel
+from kinematics.kernels.quaternions import quaternions_wxyz
+from kinematics.number_checks import FloatArray
 from kinematics.rotations import (
+    QUATERNION_SIGNS,
     quaternion_wxyz_of,
     rotation_from_quaternion,
     rotation_from_vector,
     rotation_vector_of,
 )
-from kinematics.tolerances import (
-    LARGEST_MAGNITUDE,
-    LOCK_NOTICE,
-    QUATERNION_SILENT,
-    QUATERNION_ZERO,
-)
+from kinematics.tolerances import LOCK_NOTICE
 
 SEQUENCES: Final = (
     *("xyx", "xyz", "xzx", "xzy", "yxy", "yxz"),
@@ -86,7 +85,7 @@ def shape_of(form: str) -> tuple[int, ...]:
 def rotation_from(form: str, values: ArrayLike) -> FloatArray:
     """Return the rotation that values in a form describe, for numbers already known to be good.
 
-    Nothing but form and shape is checked (see checked_rotation): a matrix is handed through,
+    Nothing but form and shape is checked (see orientation_input): a matrix is handed through,
     quaternions are normalised, and rows without a meaning (zero quaternion, NaN) give NaN.
 
     Parameters
@@ -207,6 +206,58 @@ def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
     return distance_from_gimbal_lock(_ORDERS[form], rotation)
 
 
+def values_and_distance(form: str, poses: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return the rotations of poses in a form, and how far from gimbal lock they are.
+
+    Parameters
+    ----------
+    form : one of FORMS.
+    poses : (count, 4, 4).
+
+    Returns
+    -------
+    values : as ``values_of``; distance : as ``distance_from_lock``.
+
+    Examples
+    --------
+    >>> values_and_distance("zyz-current", np.eye(4)[None])
+    (array([[0., 0., 0.]]), array([0.]))
+    """
+    run = OrientationRun(form, for_kernel(poses))
+    run()
+    return run.values, run.from_lock
+
+
+class OrientationRun:
+    """The arrays of so many poses' orientations in one form and the kernel that fills them.
+
+    Parameters
+    ----------
+    poses : (count, 4, 4), as kernels take them; read at each call.
+
+    Attributes
+    ----------
+    values, from_lock : as ``values_and_distance`` returns them, of the last call.
+    """
+
+    def __init__(self, form: str, poses: FloatArray) -> None:
+        self._form, self._poses = form, poses
+        self.values = np.empty((len(poses), *shape_of(form)))
+        self.from_lock = np.full(len(poses), np.inf)
+        self._triple = None
+        if form in _ORDERS:
+            self._triple = (poses, *_ORDERS[form].of_kernel, self.values, self.from_lock)
+
+    def __call__(self) -> None:
+        """Write them."""
+        if self._triple is not None:
+            angle_triples(*self._triple)
+        elif self._form == "quaternion-wxyz":
+            quaternions_wxyz(self._poses, *QUATERNION_SIGNS, self.values)
+        else:
+            self.values[:] = values_of(self._form, self._poses[:, :3, :3])
+
+
 def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
     """Return the finding that a triple's angles are not unique, or None if they are.
 
@@ -250,72 +301,4 @@ def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
         distance,
         LOCK_NOTICE,
         "rad",
-    )
-
-
-def checked_rotation(form: str, values: object) -> tuple[FloatArray, tuple[Finding, ...]]:
-    """Return the rotation that one orientation from outside describes, and what was repaired.
-
-    Parameters
-    ----------
-    form : one of FORMS.
-    values : 3 or 4 numbers, or 3 rows of 3; angles in rad.
-
-    Returns
-    -------
-    rotation : (3, 3).
-    findings : code 6 where a quaternion was normalised (norm off by more than QUATERNION_SILENT) or
-        a matrix replaced by the nearest rotation (defect above RIGID_SILENT); else empty.
-
-    Raises
-    ------
-    InvalidOrientation : unknown form, wrong count, no number, quaternion of norm below 1e-6.
-    NotFinite : NaN or infinity.
-    OutOfRange : a number or the length of a rotation vector beyond 1e9.
-    NotRigid : a matrix with a defect above RIGID_REPAIRED or with a negative determinant.
-        ``where`` of each is relative to ``values``, except ``("form",)`` for an unknown form.
-
-    Source
-    ------
-    Definition of SO(3); nearest rotation by the polar factor.
-
-    Examples
-    --------
-    >>> rotation, findings = checked_rotation("quaternion-wxyz", [2, 0, 0, 0])
-    >>> findings[0].text()
-    'the norm of the quaternion is off 1 by 1, more than 1e-06; it was normalised'
-    """
-    numbers = checked_numbers(values, shape_of(form), f"an orientation in the form {form}")
-    if form == "matrix":
-        return checked_rotation_matrix(numbers)
-    if form.startswith("quaternion"):
-        return rotation_from(form, numbers), _quaternion_findings(numbers)
-    if form == "rotation-vector" and np.linalg.norm(numbers) > LARGEST_MAGNITUDE:
-        raise OutOfRange(
-            f"the rotation vector has the length {np.linalg.norm(numbers):.6g} rad, beyond 1e9 rad",
-            value=numbers.tolist(),
-            way_out="check the units; a rotation vector of at most pi says the same",
-        )
-    return rotation_from(form, numbers), ()
-
-
-def _quaternion_findings(quaternion: FloatArray) -> tuple[Finding, ...]:
-    norm = float(np.linalg.norm(quaternion))
-    if norm < QUATERNION_ZERO:
-        raise InvalidOrientation(
-            f"the quaternion has the norm {norm:.3g} and so no direction",
-            value=quaternion.tolist(),
-            way_out="give a quaternion of norm 1; no rotation is 1 for w and 0 for x, y, z",
-        )
-    if abs(norm - 1.0) <= QUATERNION_SILENT:
-        return ()
-    return (
-        Finding(
-            INPUT_REPAIRED,
-            "input-repaired",
-            "the norm of the quaternion is off 1 by {measure}, more than {threshold}; "
-            "it was normalised",
-            abs(norm - 1.0),
-            QUATERNION_SILENT,
-        ),
     )

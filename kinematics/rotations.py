@@ -18,6 +18,10 @@ from kinematics.kernels.quaternions import quaternions_wxyz
 from kinematics.number_checks import FloatArray
 from kinematics.tolerances import HALF_TURN_NOISE, RIGID_SILENT, SHORT_VECTOR
 
+QUATERNION_SIGNS = (0.5 * HALF_TURN_NOISE, RIGID_SILENT)
+"""Scalar up to which a rotation is a half turn, and size up to which a component has no sign of its
+own: an accepted matrix is good to RIGID_SILENT only."""
+
 
 def elementary_rotation(axis_index: int, angle: ArrayLike) -> FloatArray:
     """Return the rotation about the x, y or z axis.
@@ -149,7 +153,7 @@ def quaternion_wxyz_of(rotation: ArrayLike) -> FloatArray:
 
     Parameters
     ----------
-    rotation : (..., 3, 3).
+    rotation : (..., 3, 3), or poses (..., 4, 4), whose rotations are taken.
 
     Returns
     -------
@@ -168,14 +172,8 @@ def quaternion_wxyz_of(rotation: ArrayLike) -> FloatArray:
     rotations = np.asarray(rotation, dtype=np.float64)
     batch = rotations.shape[:-2]
     quaternions = np.empty((math.prod(batch), 4))
-    matrices = for_kernel(rotations).reshape(len(quaternions), 3, 3)
-    # An accepted matrix is good to RIGID_SILENT only: smaller components have no sign of their own.
-    quaternions_wxyz(matrices, 0.5 * HALF_TURN_NOISE, RIGID_SILENT, quaternions)
-    quaternions += 0.0  # -0.0 becomes 0.0
-    with np.errstate(invalid="ignore", over="ignore"):
-        suspect = not np.isfinite(matrices.sum())
-    if suspect:  # compiled code may take NaN for any number
-        quaternions[~np.isfinite(matrices).all(axis=(1, 2))] = np.nan
+    matrices = for_kernel(rotations).reshape(len(quaternions), *rotations.shape[-2:])
+    quaternions_wxyz(matrices, *QUATERNION_SIGNS, quaternions)
     return quaternions.reshape(*batch, 4)
 
 

@@ -67,7 +67,7 @@ def anatomy_of(arm: Arm, space: TaskSpace, tool_in_flange: FloatArray) -> Anatom
     revolute = arm.table.chain.revolute
     rows = [index for index in range(len(revolute)) if revolute[index]]
     zero = motion_of(arm, np.zeros(arm.joint_count), tool_in_flange)
-    axis, point = zero.walk.axis_direction, zero.walk.axis_point
+    axis, point = zero.axis_direction, zero.axis_point
     positional = all(row < 3 for row in space.rows)
     trailing = _trailing_revolute(revolute)
     wrist = trailing[-3:] if len(trailing) >= 3 and not positional else ()
@@ -150,7 +150,7 @@ def support_of(null_motions: FloatArray, state: int) -> tuple[int, ...]:
 
 def _measures(anatomy: Anatomy, motion: Motion) -> Iterator[tuple[tuple[str, int], float]]:
     """Yield each kind, numbered where an arm has several of it, with its measure."""
-    axis, point = motion.walk.axis_direction, motion.walk.axis_point
+    axis, point = motion.axis_direction, motion.axis_point
     carried = _carried_point(anatomy, motion)
     if anatomy.wrist:
         values = np.linalg.svd(axis[list(anatomy.wrist)], compute_uv=False)
@@ -177,9 +177,9 @@ def _carried_point(anatomy: Anatomy, motion: Motion) -> FloatArray:
         tool_point: FloatArray = motion.tool_in_base[:3, 3]
         return tool_point
     if len(rows) == 1:
-        last: FloatArray = motion.walk.axis_point[rows[0]]
+        last: FloatArray = motion.axis_point[rows[0]]
         return last
-    return _closest_point(motion.walk.axis_direction[rows], motion.walk.axis_point[rows])
+    return _closest_point(motion.axis_direction[rows], motion.axis_point[rows])
 
 
 def _bend(points: list[FloatArray], normal: FloatArray) -> float:
@@ -275,8 +275,8 @@ def _at_boundary(
     first = anatomy.shoulder[0]
     if first < 0 or len(lost) != 1:
         return False
-    axis = motion.walk.axis_direction[first]
-    out = motion.tool_in_base[:3, 3] - motion.walk.axis_point[first]
+    axis = motion.axis_direction[first]
+    out = motion.tool_in_base[:3, 3] - motion.axis_point[first]
     radial = out - axis * (axis @ out)
     reach = float(np.linalg.norm(radial))
     if reach < KIND_AT * anatomy.length or np.linalg.norm(lost[0][3:]) > KIND_AT:

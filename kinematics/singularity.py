@@ -5,7 +5,7 @@ Left out: names and words for one posture (lost_motion.py).
 """
 
 import math
-from dataclasses import dataclass, fields
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,17 +15,27 @@ from kinematics.jacobian import Motion
 from kinematics.kernels.compiler import for_kernel
 from kinematics.kernels.decomposition import decompose
 from kinematics.kernels.jacobian import change_with_rows
+from kinematics.kernels.judgement import (
+    CONDITION,
+    MANIPULABILITY,
+    READINGS,
+    SMALLEST,
+    SPEED_FACTOR,
+    judge_postures,
+)
 from kinematics.peak_demand import least_peak
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace
-from kinematics.tolerances import LEVEL_VALUE
+from kinematics.tolerances import FURTHEST_STEP, LEVEL_VALUE, TRAVEL_TIE
 
 REGULAR, NEAR, SINGULAR = 0, 1, 2
+_NONE = np.empty(0)
+_OF_NO_RANK = (0.0, np.inf, 0.0)
+"""Smallest value, condition and manipulability where the task asks nothing the arm can do."""
 STATES = ("regular", "near", "singular")
 
 
-@dataclass(frozen=True)
-class Judgement:
+class Judgement(NamedTuple):
     """The judgement of a batch of postures; r is the generic rank, k columns of the basis.
 
     Attributes
@@ -34,34 +44,46 @@ class Judgement:
     left : (..., rows, r), directions in the scaled task rows; right : (..., joints, r).
     rest : (..., joints, joints - r), joint motions beyond the first r right vectors.
     state : (...,) of 0 regular, 1 near, 2 singular; rank : (...,).
-    condition : (...,), infinite where singular; manipulability : (...,), their product.
     step : (..., joints), first-order joint motion to the singular place; rad or m; NaN where
         there is none to tell.
-    speed_factor : (...,), tool speed along the weakest direction at full joint speeds, in scaled
-        units per second; NaN where a top speed is not known.
+    readings : (..., READINGS), numbers of each posture by the columns of kernels/judgement.py.
     """
 
     values: FloatArray
     left: FloatArray
     right: FloatArray
     rest: FloatArray
-    state: NDArray[np.int_]
-    rank: NDArray[np.int_]
-    condition: FloatArray
-    manipulability: FloatArray
+    state: NDArray[np.int64]
+    rank: NDArray[np.int64]
     step: FloatArray
-    speed_factor: FloatArray
+    readings: FloatArray
 
     @property
     def smallest(self) -> FloatArray:
         """The r-th singular value, (...,); 0 where the task asks nothing the arm can do."""
-        if self.values.shape[-1] == 0:
-            return np.zeros(self.values.shape[:-1])
-        return self.values[..., -1]
+        return self.readings[..., SMALLEST]
+
+    @property
+    def condition(self) -> FloatArray:
+        """Largest singular value over the r-th, (...,); infinite where singular."""
+        return self.readings[..., CONDITION]
+
+    @property
+    def manipulability(self) -> FloatArray:
+        """Product of the singular values, (...,)."""
+        return self.readings[..., MANIPULABILITY]
+
+    @property
+    def speed_factor(self) -> FloatArray:
+        """Tool speed along the weakest direction at full joint speeds, (...,).
+
+        In scaled units per second; NaN where a top speed is not known.
+        """
+        return self.readings[..., SPEED_FACTOR]
 
     def of_posture(self, index: int) -> "Judgement":
         """Return one posture of a batch (count,), without the batch axis."""
-        return Judgement(*(getattr(self, part.name)[index] for part in fields(self)))
+        return Judgement(*(part[index] for part in self))
 
 
 def judge(arm: Arm, space: TaskSpace, motion: Motion) -> Judgement:
@@ -83,31 +105,80 @@ def judge(arm: Arm, space: TaskSpace, motion: Motion) -> Judgement:
     >>> judge(arm, space, motion_of(arm, np.array([[0.3, 0.0], [0.3, 1.5]]), np.eye(4))).state
     array([2, 0])
     """
-    rank = space.generic_rank
-    left, values, right = _decomposed(space, motion.of_joints)
-    left = space.basis @ left[..., :rank]
-    values = values[..., :rank]
-    smallest = values[..., -1] if rank else np.full(values.shape[:-1], np.inf)
-    state = np.where(
-        smallest <= arm.thresholds.singular,
-        SINGULAR,
-        np.where(smallest <= space.near, NEAR, REGULAR),
-    )
-    condition = np.full(state.shape, np.inf)
-    if rank:
-        np.divide(values[..., 0], smallest, out=condition, where=state != SINGULAR)
-    return Judgement(
-        values=values,
-        left=left,
-        right=right[..., :rank],
-        rest=right[..., rank:],
-        state=state,
-        rank=(values > arm.thresholds.singular).sum(axis=-1),
-        condition=condition,
-        manipulability=values.prod(axis=-1) if rank else np.zeros(state.shape),
-        step=_step(arm, space, motion, left, right, smallest, state),
-        speed_factor=_speed_factor(arm, space, right, smallest, rank),
-    )
+    batch = motion.of_joints.shape[:-2]
+    run = JudgementRun(arm, space, motion)
+    run()
+    if len(batch) == 1:
+        return run.judgement
+    return Judgement._make(part.reshape(batch + part.shape[1:]) for part in run.judgement)
+
+
+class JudgementRun:
+    """The arrays of so many postures' judgement and the kernels that fill them.
+
+    Attributes
+    ----------
+    judgement : of the motion, as it was at the last call; one batch axis, (count, ...).
+    """
+
+    def __init__(self, arm: Arm, space: TaskSpace, motion: Motion) -> None:
+        joints, rank, space_rows = arm.joint_count, space.generic_rank, space.row_map.shape[0]
+        count, fewer = math.prod(motion.of_joints.shape[:-2]), min(space_rows, joints)
+        left, values = np.empty((count, space_rows, fewer)), np.empty((count, fewer))
+        right = np.empty((count, joints, joints))
+        of_joints = for_kernel(motion.of_joints).reshape(count, 6, joints)
+        self._of_svd = (of_joints, space.row_map, space.joint_scale, left, values, right)
+        state, ranks = np.empty(count, dtype=np.int64), np.empty(count, dtype=np.int64)
+        directions = np.empty((count, len(space.rows), rank))
+        readings, step = np.empty((count, READINGS)), np.empty((count, joints))
+        self._shared_speeds = arm.top_speeds if rank < joints else None
+        self._arm, self._space = arm, space
+        self._of_kernel = (
+            values,
+            left,
+            right,
+            for_kernel(motion.of_rows).reshape(count, 6, len(arm.table.rows)),
+            space.row_map,
+            space.length,
+            space.joint_scale,
+            arm.drive_map.matrix,
+            _NONE if rank < joints or arm.top_speeds is None else arm.top_speeds,
+            rank,
+            (arm.thresholds.singular, space.near, LEVEL_VALUE, FURTHEST_STEP, TRAVEL_TIE),
+            space.basis,
+            state,
+            ranks,
+            directions,
+            readings,
+            step,
+        )
+        self._right = right
+        self.judgement = Judgement(
+            values[:, :rank],
+            directions,
+            right[:, :, :rank],
+            right[:, :, rank:],
+            state,
+            ranks,
+            step,
+            readings,
+        )
+
+    def __call__(self) -> None:
+        """Judge."""
+        decompose(*self._of_svd)
+        judgement = self.judgement
+        if not self._space.generic_rank:
+            # The task asks nothing the arm can do: nothing can be lost.
+            judgement.state[:], judgement.rank[:] = REGULAR, 0
+            judgement.readings[:], judgement.step[:] = np.nan, np.nan
+            judgement.readings[:, : MANIPULABILITY + 1] = _OF_NO_RANK
+            return
+        judge_postures(*self._of_kernel)
+        if self._shared_speeds is not None:
+            judgement.readings[:, SPEED_FACTOR] = _shared_speed_factor(
+                self._arm, self._space, self._shared_speeds, self._right, judgement.smallest
+            )
 
 
 def change_of_form(of_rows: FloatArray, covector: FloatArray, rates: FloatArray) -> FloatArray:
@@ -130,66 +201,14 @@ def change_of_form(of_rows: FloatArray, covector: FloatArray, rates: FloatArray)
     return change.reshape(rates.shape)
 
 
-def _decomposed(
-    space: TaskSpace, of_joints: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return left vectors, singular values and all right vectors of the scaled task rows."""
-    batch, joints = of_joints.shape[:-2], of_joints.shape[-1]
-    count, rows = math.prod(batch), space.row_map.shape[0]
-    fewer = min(rows, joints)
-    left, values = np.empty((count, rows, fewer)), np.empty((count, fewer))
-    right = np.empty((count, joints, joints))
-    decompose(
-        for_kernel(of_joints).reshape(count, 6, joints),
-        space.row_map,
-        space.joint_scale,
-        left,
-        values,
-        right,
-    )
-    return (
-        left.reshape(*batch, rows, fewer),
-        values.reshape(*batch, fewer),
-        right.reshape(*batch, joints, joints),
-    )
-
-
-def _step(
-    arm: Arm,
-    space: TaskSpace,
-    motion: Motion,
-    left: FloatArray,
-    right: FloatArray,
-    smallest: FloatArray,
-    state: NDArray[np.int_],
+def _shared_speed_factor(
+    arm: Arm, space: TaskSpace, top_speeds: FloatArray, right: FloatArray, smallest: FloatArray
 ) -> FloatArray:
-    """Return s / |grad s| against the gradient, in scaled joint values, then unscaled."""
-    rank = space.generic_rank
-    if not rank:
-        return np.full((*state.shape, arm.joint_count), np.nan)
-    covector = space.covector(left[..., rank - 1])
-    rates = (right[..., rank - 1] * space.joint_scale) @ arm.drive_map.matrix.T
-    of_variables = change_of_form(motion.of_rows, covector, rates)
-    gradient = (of_variables @ arm.drive_map.matrix) * space.joint_scale
-    squared = (gradient**2).sum(axis=-1)
-    # At the singular place itself the value has a kink and its gradient says nothing.
-    tellable = (squared > LEVEL_VALUE**2) & (state != SINGULAR)
-    share = np.full(state.shape, np.nan)
-    np.divide(-smallest, squared, out=share, where=tellable)
-    step: FloatArray = share[..., None] * gradient * space.joint_scale
-    return step
+    """Return the largest f with joint speeds that produce f times the weakest direction.
 
-
-def _speed_factor(
-    arm: Arm, space: TaskSpace, right: FloatArray, smallest: FloatArray, rank: int
-) -> FloatArray:
-    """Return the largest f with joint speeds that produce f times the weakest direction."""
-    rows = [arm.table.rows[index] for index in arm.drive_map.driven]
-    top = np.array([np.nan if row.top_speed is None else row.top_speed for row in rows])
-    if not rank or np.isnan(top).any():
-        return np.full(smallest.shape, np.nan)
-    weight = (space.joint_scale / top)[:, None]
+    Spare joints share the work.
+    """
+    rank, weight = space.generic_rank, (space.joint_scale / top_speeds)[:, None]
     least = least_peak(right[..., rank - 1 : rank] * weight, right[..., rank:] * weight)
-    # At the singular place the rounding left of the value is no speed.
     factor: FloatArray = np.where(smallest <= arm.thresholds.singular, 0.0, smallest / least)
     return factor

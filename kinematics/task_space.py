@@ -13,6 +13,7 @@ import numpy as np
 from kinematics.arm import Arm
 from kinematics.errors import KinematicsError
 from kinematics.jacobian import ROW_NAMES, characteristic_length, motion_of
+from kinematics.kernels.compiler import for_kernel
 from kinematics.table import FloatArray
 from kinematics.tolerances import GENERIC_RANK, NEAR_SINGULAR, SAMPLE_POSTURES
 
@@ -133,7 +134,7 @@ def task_space(arm: Arm, tool_in_flange: FloatArray, task: Task | None = None) -
         generic_rank=_generic_rank(task_jacobians),
         pose_rank=_generic_rank(jacobians),
         near=_near(arm, task_jacobians),
-        basis=_possible_motions(task_jacobians),
+        basis=for_kernel(_possible_motions(task_jacobians)),
         watched_position_rank=watched,
         samples=samples,
     )

@@ -12,7 +12,7 @@ from numpy.typing import ArrayLike
 from kinematics.errors import KinematicsError, NotRigid
 from kinematics.findings import Finding
 from kinematics.number_checks import FloatArray, checked_numbers
-from kinematics.orientation_forms import checked_rotation
+from kinematics.orientation_input import checked_rotation
 from kinematics.tolerances import RIGID_SILENT
 
 
@@ -45,6 +45,26 @@ def pose(rotation: ArrayLike, position: ArrayLike) -> FloatArray:
     x_in_y[..., :3, 3] = positions
     x_in_y[..., 3, 3] = 1.0
     return x_in_y
+
+
+def in_frame(base_in_frame: FloatArray, x_in_base: FloatArray) -> FloatArray:
+    """Return poses in a frame from poses in the base.
+
+    Parameters
+    ----------
+    base_in_frame : (4, 4); x_in_base : (..., 4, 4).
+
+    Returns
+    -------
+    x_in_frame : (..., 4, 4).
+
+    Examples
+    --------
+    >>> in_frame(pose(np.eye(3), [0, 0, 1]), pose(np.eye(3), [1, 2, 3]))[:3, 3]
+    array([1., 2., 4.])
+    """
+    x_in_frame: FloatArray = base_in_frame @ x_in_base
+    return x_in_frame
 
 
 def inverse(x_in_y: ArrayLike) -> FloatArray:

@@ -11,7 +11,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import Arm
+from kinematics.chain import as_rows
 from kinematics.findings import OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL, Finding
+from kinematics.kernels.travel import travel_left
 from kinematics.table import FloatArray, Travel
 
 ARMS_KEPT = 512
@@ -70,10 +72,7 @@ def travel_margin(arm: Arm, joint_values: FloatArray) -> FloatArray:
     >>> travel_margin(arm, np.array([[0.5], [2.0]]))
     array([ 0.25, -0.5 ])
     """
-    limits = _limits_of(arm)
-    left = limits.room(joint_values)[..., ~limits.working]
-    margin: FloatArray = left.min(axis=-1, initial=np.inf)
-    return margin
+    return margin_and_outside(arm, joint_values)[0]
 
 
 def beyond_travel(arm: Arm, joint_values: FloatArray) -> NDArray[np.bool_]:
@@ -87,7 +86,50 @@ def beyond_travel(arm: Arm, joint_values: FloatArray) -> NDArray[np.bool_]:
     >>> beyond_travel(arm, np.array([[0.5], [2.0]]))
     array([False,  True])
     """
-    return np.asarray((_limits_of(arm).room(joint_values) < 0.0).any(axis=-1))
+    return margin_and_outside(arm, joint_values)[1]
+
+
+def margin_and_outside(arm: Arm, joint_values: FloatArray) -> tuple[FloatArray, NDArray[np.bool_]]:
+    """Return what ``travel_margin`` and ``beyond_travel`` tell, found together.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, Table
+    >>> margin_and_outside(Arm("empty", Table(Convention.STANDARD, ())), np.empty((1, 0)))
+    (array([inf]), array([False]))
+    """
+    batch, values = as_rows(joint_values)
+    run = TravelRun(arm, values)
+    run()
+    return run.margin.reshape(batch), run.outside.reshape(batch)
+
+
+class TravelRun:
+    """The travel of so many postures and the kernel that finds it.
+
+    Attributes
+    ----------
+    margin : (count,), smallest share of travel left; outside : (count,), beyond any limit; of the
+        joint values that stood in ``joint_values`` (count, joints) at the last call.
+    """
+
+    def __init__(self, arm: Arm, joint_values: FloatArray) -> None:
+        limits, count = _limits_of(arm), len(joint_values)
+        self.margin, self.outside = np.empty(count), np.empty(count, dtype=np.bool_)
+        self._of_kernel = (
+            joint_values,
+            limits.weights,
+            limits.constants,
+            limits.lower,
+            limits.upper,
+            limits.working,
+            self.margin,
+            self.outside,
+        )
+
+    def __call__(self) -> None:
+        """Find it."""
+        travel_left(*self._of_kernel)
 
 
 def limits_exceeded(

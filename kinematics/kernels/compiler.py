@@ -3,9 +3,12 @@
 Left out: when they are compiled (at the first call; the service does it ahead in a thread).
 """
 
+import hashlib
 import pickle
 from collections.abc import Callable
 from contextlib import suppress
+from functools import cache
+from pathlib import Path
 from typing import Any, TypeVar
 
 import numba
@@ -34,16 +37,60 @@ def compiled(function: Function) -> Function:
     >>> doubled(1.5)
     3.0
     """
+    return _made(function, set(FLAGS))
+
+
+def compiled_exactly(function: Function) -> Function:
+    """Return ``function`` compiled as ``compiled`` does, but keeping NaN and the sign of zero.
+
+    For code that is handed numbers nobody has checked.
+
+    Examples
+    --------
+    >>> @compiled_exactly
+    ... def is_number(value):
+    ...     return value == value
+    >>> is_number(float("nan"))
+    False
+    """
+    return _made(function, False)
+
+
+def _made(function: Function, fastmath: set[str] | bool) -> Function:
     # Numba's own types do not say that what it makes is called as the function was.
-    made: Any = numba.njit(fastmath=set(FLAGS), error_model="numpy", nogil=True)(function)
+    made: Any = numba.njit(fastmath=fastmath, error_model="numpy", nogil=True)(function)
     # No place for a cache is told when the cache is made, that is, on import.
     with suppress(RuntimeError):
-        made._cache = _CacheIfPossible(function)  # type: ignore[no-untyped-call]
+        made._cache = _CacheIfPossible(function)
     return made  # type: ignore[no-any-return]
 
 
+@cache
+def _sources() -> str:
+    """Return a digest of all kernels' texts."""
+    texts = (path.read_bytes() for path in sorted(Path(__file__).parent.glob("*.py")))
+    return hashlib.sha256(b"\0".join(texts)).hexdigest()
+
+
 class _CacheIfPossible(FunctionCache):
-    """Numba's cache, for which a full disk or a torn file is a reason to compile, not to fail."""
+    """Numba's cache, for which a full disk or a torn file is a reason to compile, not to fail.
+
+    Constants and functions of one module are compiled into others. Numba looks at the age of the
+    function's own file alone; here what is kept is good for the same text of all kernels.
+    """
+
+    def __init__(self, function: Callable[..., Any]) -> None:
+        super().__init__(function)  # type: ignore[no-untyped-call]
+        file: Any = self._cache_file
+        file._source_stamp = (file._source_stamp, _sources())
+
+    def has_any(self) -> bool:
+        """Return whether there is machine code of this text, for some processor."""
+        file: Any = self._cache_file
+        try:
+            return bool(file._load_index())
+        except (OSError, EOFError, pickle.UnpicklingError):
+            return False
 
     def save_overload(self, sig: object, data: object) -> None:
         with suppress(OSError):
@@ -54,6 +101,18 @@ class _CacheIfPossible(FunctionCache):
             return super().load_overload(sig, target_context)  # type: ignore[no-untyped-call]
         except (OSError, EOFError, pickle.UnpicklingError):
             return None
+
+
+def is_kept(kernel: Callable[..., Any]) -> bool | None:
+    """Return whether machine code of a kernel is in the cache; None where nothing can be kept.
+
+    Examples
+    --------
+    >>> is_kept(compiled(lambda value: value)) is True
+    False
+    """
+    cache = getattr(kernel, "_cache", None)
+    return cache.has_any() if isinstance(cache, _CacheIfPossible) else None
 
 
 def for_kernel(values: NDArray[np.float64]) -> NDArray[np.float64]:

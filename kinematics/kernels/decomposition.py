@@ -120,47 +120,6 @@ def _load(
 
 
 @compiled
-def singular_values(
-    matrices: FloatArray, row_map: FloatArray, column_scale: FloatArray, values: FloatArray
-) -> None:
-    """Write the singular values of ``row_map @ matrix * column_scale``, largest first.
-
-    Parameters
-    ----------
-    matrices : (count, m, n); row_map : (k, m); column_scale : (n,).
-    values : (count, min(k, n)).
-
-    Examples
-    --------
-    >>> values = np.empty((1, 2))
-    >>> singular_values(np.array([[[0.0, 2.0], [3.0, 0.0]]]), np.eye(2), np.ones(2), values)
-    >>> values
-    array([[3., 2.]])
-    """
-    rows, columns = row_map.shape[0], column_scale.shape[0]
-    by_rows = rows <= columns
-    fewer, longer = min(rows, columns), max(rows, columns)
-    vectors = np.empty((fewer, longer, BLOCK))
-    nothing = np.empty((fewer, 0, BLOCK))
-    for begin in range(0, matrices.shape[0], BLOCK):
-        count = min(BLOCK, matrices.shape[0] - begin)
-        _load(matrices, begin, count, row_map, column_scale, vectors, by_rows)
-        _orthogonalise(vectors, nothing, count)
-        for b in range(count):
-            for i in range(fewer):
-                square = 0.0
-                for k in range(longer):
-                    square += vectors[i, k, b] * vectors[i, k, b]
-                # Insertion from behind: at most six values.
-                value = np.sqrt(square)
-                place = i
-                while place > 0 and values[begin + b, place - 1] < value:
-                    values[begin + b, place] = values[begin + b, place - 1]
-                    place -= 1
-                values[begin + b, place] = value
-
-
-@compiled
 def decompose(
     matrices: FloatArray,
     row_map: FloatArray,
@@ -175,7 +134,8 @@ def decompose(
     ----------
     matrices : (count, m, n); row_map : (k, m); column_scale : (n,).
     left : (count, k, min(k, n)); values : (count, min(k, n)), largest first.
-    right : (count, n, n), complete: vectors beyond the values move nothing.
+    right : (count, n, n), complete: vectors beyond the values move nothing. Without any matrix in
+        ``left`` and ``right``, (0, k, ...) and (0, n, n), the values alone are worked out.
 
     Examples
     --------
@@ -187,21 +147,27 @@ def decompose(
     rows, columns = row_map.shape[0], column_scale.shape[0]
     by_rows = rows <= columns
     fewer, longer = min(rows, columns), max(rows, columns)
-    vectors = np.empty((fewer, longer, BLOCK))
-    rotations = np.empty((fewer, fewer, BLOCK))
+    width = min(BLOCK, matrices.shape[0])
+    kept = fewer if right.shape[0] > 0 else 0
+    vectors = np.empty((fewer, longer, width))
+    rotations = np.empty((fewer, kept, width))
     norms = np.empty(fewer)
     order = np.empty(fewer, dtype=np.int64)
     for begin in range(0, matrices.shape[0], BLOCK):
         count = min(BLOCK, matrices.shape[0] - begin)
         _load(matrices, begin, count, row_map, column_scale, vectors, by_rows)
         for i in range(fewer):
-            for j in range(fewer):
+            for j in range(kept):
                 for b in range(count):
                     rotations[i, j, b] = 1.0 if i == j else 0.0
         _orthogonalise(vectors, rotations, count)
         for b in range(count):
             _sorted_norms(vectors, b, norms, order)
             at = begin + b
+            if kept == 0:
+                for place in range(fewer):
+                    values[at, place] = norms[order[place]]
+                continue
             long_side, short_side = (right[at], left[at]) if by_rows else (left[at], right[at])
             for place in range(fewer):
                 i = order[place]

@@ -10,10 +10,10 @@ from numpy.typing import NDArray
 
 from kinematics.kernels.compiler import compiled
 from kinematics.kernels.sine_cosine import sine_cosine
-from kinematics.kernels.workspace import BLOCK, COSINE, POINT, SINE, SIZE, SLIDE, X, Y, Z
+from kinematics.kernels.workspace import BLOCK, COSINE, POINT, SINE, SIZE, X, Y, Z
 from kinematics.number_checks import FloatArray
 
-Turn = Callable[[FloatArray, int, float, float, float], None]
+Turn = Callable[[FloatArray, int, float, float, float, float], None]
 
 
 def _turn_of(entry: int) -> Turn:
@@ -29,13 +29,15 @@ def _turn_of(entry: int) -> Turn:
     )
 
     @compiled
-    def turn(work: FloatArray, count: int, a: float, cos_alpha: float, sin_alpha: float) -> None:
+    def turn(
+        work: FloatArray, count: int, d: float, a: float, cos_alpha: float, sin_alpha: float
+    ) -> None:
         for b in range(count):
             cosine, sine = work[COSINE + b], work[SINE + b]
             x, y, z = work[x_at + b], work[y_at + b], work[z_at + b]
             turned_x = cosine * x + sine * y
             turned_y = cosine * y - sine * x
-            work[point_at + b] = work[point_at + b] + work[SLIDE + b] * z + a * turned_x
+            work[point_at + b] = work[point_at + b] + d * z + a * turned_x
             work[x_at + b] = turned_x
             work[y_at + b] = cos_alpha * turned_y + sin_alpha * z
             work[z_at + b] = cos_alpha * z - sin_alpha * turned_y
@@ -44,6 +46,16 @@ def _turn_of(entry: int) -> Turn:
 
 
 _turn_0, _turn_1, _turn_2 = _turn_of(0), _turn_of(1), _turn_of(2)
+
+
+@compiled
+def _turn(
+    work: FloatArray, count: int, d: float, a: float, cos_alpha: float, sin_alpha: float
+) -> None:
+    """Carry the frames over one row: its turn, ``d`` along its axis, and the X that follows."""
+    _turn_0(work, count, d, a, cos_alpha, sin_alpha)
+    _turn_1(work, count, d, a, cos_alpha, sin_alpha)
+    _turn_2(work, count, d, a, cos_alpha, sin_alpha)
 
 
 @compiled
@@ -67,23 +79,33 @@ def _drive(
     offset: FloatArray,
     revolute: bool,
 ) -> None:
-    """Put a row's cosine, sine and slide into the block: its drive map's row times the joints."""
-    for b in range(count):
-        work[COSINE + b] = 0.0
+    """Put a row's cosine and sine into the block, and slide the frames by a prismatic row's value.
+
+    The value is the row of the drive map times the joint values, most often one of them.
+    """
+    fresh = True
     for joint in range(shares.shape[0]):
         share = shares[joint]
-        if share != 0.0:
+        if share == 0.0:
+            continue
+        if fresh:
+            for b in range(count):
+                work[COSINE + b] = share * joint_values[begin + b, joint]
+            fresh = False
+        else:
             for b in range(count):
                 work[COSINE + b] += share * joint_values[begin + b, joint]
+    if fresh:
+        for b in range(count):
+            work[COSINE + b] = 0.0
     if revolute:
         sine_cosine(work, count, offset[0], offset[1])
+        return
+    for entry in range(3):
         for b in range(count):
-            work[SLIDE + b] = offset[2]
-    else:
-        for b in range(count):
-            work[SLIDE + b] = offset[2] + work[COSINE + b]
-            work[COSINE + b] = offset[0]
-            work[SINE + b] = offset[1]
+            work[POINT + entry * BLOCK + b] += work[COSINE + b] * work[Z + entry * BLOCK + b]
+    for b in range(count):
+        work[COSINE + b], work[SINE + b] = offset[0], offset[1]
 
 
 @compiled
@@ -130,23 +152,28 @@ def tool_poses(
     array([0.5, 0. , 0. ])
     """
     work = np.empty(SIZE)
+    # Most tools are only set off from the flange: the most work of a row less.
+    turned = False
+    for i in range(3):
+        for j in range(3):
+            turned |= tool[i, j] != (1.0 if i == j else 0.0)
     for begin in range(0, joint_values.shape[0], BLOCK):
         count = min(BLOCK, joint_values.shape[0] - begin)
         _start(work, count, first)
         for row in range(offset.shape[0]):
             _drive(work, count, joint_values, begin, drive_matrix[row], offset[row], revolute[row])
-            a, cos_alpha, sin_alpha = link[row, 0], link[row, 1], link[row, 2]
-            _turn_0(work, count, a, cos_alpha, sin_alpha)
-            _turn_1(work, count, a, cos_alpha, sin_alpha)
-            _turn_2(work, count, a, cos_alpha, sin_alpha)
+            _turn(work, count, offset[row, 2], link[row, 0], link[row, 1], link[row, 2])
         for b in range(count):
             pose = poses[begin + b]
             for entry in range(3):
                 at = entry * BLOCK + b
                 x, y, z = work[X + at], work[Y + at], work[Z + at]
-                pose[entry, 0] = x * tool[0, 0] + y * tool[1, 0] + z * tool[2, 0]
-                pose[entry, 1] = x * tool[0, 1] + y * tool[1, 1] + z * tool[2, 1]
-                pose[entry, 2] = x * tool[0, 2] + y * tool[1, 2] + z * tool[2, 2]
+                if turned:
+                    pose[entry, 0] = x * tool[0, 0] + y * tool[1, 0] + z * tool[2, 0]
+                    pose[entry, 1] = x * tool[0, 1] + y * tool[1, 1] + z * tool[2, 1]
+                    pose[entry, 2] = x * tool[0, 2] + y * tool[1, 2] + z * tool[2, 2]
+                else:
+                    pose[entry, 0], pose[entry, 1], pose[entry, 2] = x, y, z
                 moved = x * tool[0, 3] + y * tool[1, 3] + z * tool[2, 3]
                 pose[entry, 3] = moved + work[POINT + at]
             pose[3, 0] = 0.0
@@ -168,22 +195,25 @@ def frames_and_axes(
     point: FloatArray,
     frames: FloatArray,
 ) -> None:
-    """Write every axis and frame that the walk meets, in the base.
+    """Write every axis, and every frame or the flange alone, that the walk meets, in the base.
 
     Parameters
     ----------
     standard : whether frame i is read off after X_i rather than before it.
     direction, point : (count, rows, 3), of the axis each row turns about or slides along.
-    frames : (count, rows + 2, 4, 4): link frames 0 ... rows, then the flange.
+    frames : (count, rows + 2, 4, 4): link frames 0 ... rows, then the flange; or (count, 1, 4, 4):
+        the flange.
     """
     work = np.empty(SIZE)
     rows = offset.shape[0]
+    every = frames.shape[1] > 1
     for begin in range(0, joint_values.shape[0], BLOCK):
         count = min(BLOCK, joint_values.shape[0] - begin)
-        for b in range(count):
-            for i in range(4):
-                for j in range(4):
-                    frames[begin + b, 0, i, j] = 1.0 if i == j else 0.0
+        if every:
+            for b in range(count):
+                for i in range(4):
+                    for j in range(4):
+                        frames[begin + b, 0, i, j] = 1.0 if i == j else 0.0
         _start(work, count, first)
         for row in range(rows):
             for b in range(count):
@@ -191,17 +221,14 @@ def frames_and_axes(
                     direction[begin + b, row, entry] = work[Z + entry * BLOCK + b]
                     point[begin + b, row, entry] = work[POINT + entry * BLOCK + b]
             _drive(work, count, joint_values, begin, drive_matrix[row], offset[row], revolute[row])
-            if not standard:
-                _turn_0(work, count, 0.0, 1.0, 0.0)
-                _turn_1(work, count, 0.0, 1.0, 0.0)
-                _turn_2(work, count, 0.0, 1.0, 0.0)
+            d = offset[row, 2]
+            if every and not standard:
+                _turn(work, count, d, 0.0, 1.0, 0.0)
                 _keep_frame(work, count, begin, frames, row + 1)
                 for b in range(count):
-                    work[COSINE + b], work[SINE + b], work[SLIDE + b] = 1.0, 0.0, 0.0
-            a, cos_alpha, sin_alpha = link[row, 0], link[row, 1], link[row, 2]
-            _turn_0(work, count, a, cos_alpha, sin_alpha)
-            _turn_1(work, count, a, cos_alpha, sin_alpha)
-            _turn_2(work, count, a, cos_alpha, sin_alpha)
-            if standard:
+                    work[COSINE + b], work[SINE + b] = 1.0, 0.0
+                d = 0.0
+            _turn(work, count, d, link[row, 0], link[row, 1], link[row, 2])
+            if every and standard:
                 _keep_frame(work, count, begin, frames, row + 1)
-        _keep_frame(work, count, begin, frames, rows + 1)
+        _keep_frame(work, count, begin, frames, frames.shape[1] - 1)

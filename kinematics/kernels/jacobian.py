@@ -11,31 +11,42 @@ from kinematics.number_checks import FloatArray
 def jacobians(
     direction: FloatArray,
     point: FloatArray,
-    tool: FloatArray,
+    flange: FloatArray,
+    tool_in_flange: FloatArray,
     revolute: NDArray[np.bool_],
     drive_matrix: FloatArray,
+    tool: FloatArray,
     of_rows: FloatArray,
     of_joints: FloatArray,
 ) -> None:
-    """Write the Jacobian of the tool point per row motion and per joint value, in base axes.
+    """Write the tool's pose and the Jacobian of its point per row motion and per joint value.
 
     Parameters
     ----------
-    direction, point : (count, rows, 3); tool : (count, 4, 4), pose in the base.
-    of_rows : (count, 6, rows); of_joints : (count, 6, joints).
+    direction, point : (count, rows, 3), of each axis; flange : (count, 4, 4); all in the base.
+    tool_in_flange : (4, 4).
+    tool : (count, 4, 4), in the base.
+    of_rows : (count, 6, rows); of_joints : (count, 6, joints); base axes.
 
     Examples
     --------
-    >>> tool = np.eye(4)[None].copy()
-    >>> tool[0, 0, 3] = 0.5
+    >>> tool_in_flange, tool = np.eye(4), np.empty((1, 4, 4))
+    >>> tool_in_flange[0, 3] = 0.5
     >>> of_rows, of_joints = np.empty((1, 6, 1)), np.empty((1, 6, 1))
-    >>> z = np.array([[[0.0, 0.0, 1.0]]])
-    >>> jacobians(z, np.zeros((1, 1, 3)), tool, np.array([True]), np.eye(1), of_rows, of_joints)
+    >>> z, at = np.array([[[0.0, 0.0, 1.0]]]), np.zeros((1, 1, 3))
+    >>> one_row = np.array([True]), np.eye(1)
+    >>> jacobians(z, at, np.eye(4)[None].copy(), tool_in_flange, *one_row, tool, of_rows, of_joints)
     >>> of_joints.ravel()
     array([0. , 0.5, 0. , 0. , 0. , 1. ])
     """
     rows, joints = drive_matrix.shape
     for b in range(direction.shape[0]):
+        for i in range(4):
+            for j in range(4):
+                entry_of_pose = 0.0
+                for k in range(4):
+                    entry_of_pose += flange[b, i, k] * tool_in_flange[k, j]
+                tool[b, i, j] = entry_of_pose
         for row in range(rows):
             x, y, z = direction[b, row, 0], direction[b, row, 1], direction[b, row, 2]
             if revolute[row]:

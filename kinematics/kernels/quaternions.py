@@ -5,11 +5,11 @@ Left out: what the signs mean and where they come from (kinematics/rotations.py)
 
 import numpy as np
 
-from kinematics.kernels.compiler import compiled
+from kinematics.kernels.compiler import compiled_exactly
 from kinematics.number_checks import FloatArray
 
 
-@compiled
+@compiled_exactly
 def quaternions_wxyz(
     rotations: FloatArray, half_turn: float, silent: float, quaternions: FloatArray
 ) -> None:
@@ -17,7 +17,7 @@ def quaternions_wxyz(
 
     Parameters
     ----------
-    rotations : (count, 3, 3).
+    rotations : (count, 3, 3), or (count, 4, 4), poses.
     half_turn : scalar up to which a rotation counts as a half turn.
     silent : entry up to which a component has no sign of its own.
     quaternions : (count, 4).
@@ -49,7 +49,9 @@ def quaternions_wxyz(
             w, x, y, z = from_y, with_xy, by_y, with_yz
         else:
             w, x, y, z = from_z, with_xz, with_yz, by_z
-        scale = 1.0 / np.sqrt(w * w + x * x + y * y + z * z)
+        norm = np.sqrt(w * w + x * x + y * y + z * z)
+        # Numbers that are none make none; infinite ones too.
+        scale = 1.0 / norm if np.isfinite(norm) else np.nan
         w, x, y, z = w * scale, x * scale, y * scale, z * scale
         leading = w
         if abs(w) <= half_turn:
@@ -62,7 +64,8 @@ def quaternions_wxyz(
                 elif abs(z) > silent:
                     leading = z
         sign = -1.0 if leading < 0.0 else 1.0
-        quaternions[b, 0] = sign * w
-        quaternions[b, 1] = sign * x
-        quaternions[b, 2] = sign * y
-        quaternions[b, 3] = sign * z
+        # Adding 0.0 makes 0.0 of -0.0.
+        quaternions[b, 0] = sign * w + 0.0
+        quaternions[b, 1] = sign * x + 0.0
+        quaternions[b, 2] = sign * y + 0.0
+        quaternions[b, 3] = sign * z + 0.0

@@ -5,13 +5,12 @@ BLOCK = 128
 
 COSINE = 0
 SINE = BLOCK
-SLIDE = 2 * BLOCK
-"""Cosine and sine of a row's turn, and how far the row lies along its axis."""
+"""Cosine and sine of a row's turn; before they are there, the row's value."""
 
-X = 3 * BLOCK
-Y = 6 * BLOCK
-Z = 9 * BLOCK
-POINT = 12 * BLOCK
+X = 2 * BLOCK
+Y = 5 * BLOCK
+Z = 8 * BLOCK
+POINT = 11 * BLOCK
 """Three entries each of the current frame's axes and origin, in the base."""
 
-SIZE = 15 * BLOCK
+SIZE = 14 * BLOCK
