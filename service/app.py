@@ -16,6 +16,7 @@ from service.envelope import Envelope
 from service.errors import ServiceError
 from service.metrics import Metrics
 from service.operations.arms import Arms
+from service.readiness import Readiness
 from service.refusals import add_refusals
 from service.routes import arms, controller, health, poses, tables
 from service.settings import Settings
@@ -37,6 +38,7 @@ def create_app(settings: Settings) -> FastAPI:
     """Return the service; its lifespan opens the store and closes it.
 
     ``app.state`` holds ``settings``, ``sequence`` (counts answers), ``started``, ``metrics``,
+    ``readiness`` (of the kernels),
     ``crowded`` (replaced by a server that knows its connections) and, within the lifespan,
     ``arms``, ``bulk``, ``storage``, ``opened`` and ``notices``.
     """
@@ -52,6 +54,7 @@ def create_app(settings: Settings) -> FastAPI:
     app.state.sequence = itertools.count(1)
     app.state.started = monotonic()
     app.state.metrics = Metrics()
+    app.state.readiness = Readiness()
     app.state.crowded = lambda: False
     for router in ROUTERS:
         # Moved, not included: one list to match against, to document, to tell methods from.

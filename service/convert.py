@@ -3,19 +3,29 @@
 Nothing else in the service does arithmetic on poses, angles or lengths.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
+from math import degrees
+from typing import Any
 
 import numpy as np
 
 from kinematics.arm import Arm
 from kinematics.findings import Finding
-from kinematics.orientation_forms import TRIPLES, values_of
+from kinematics.orientation_forms import TRIPLES, values_and_distance
 from kinematics.table import FloatArray
+
+ARMS_KEPT = 512
+"""Arms whose joints' scales are kept, some 200 bytes each."""
 
 _METRES = {"mm": (1.0, 1000.0), "m": (1.0, 1.0), "in": (0.0254, 1.0)}
 """Each length unit in metres, as a numerator and a denominator: 400 mm divided by 1000 is the
 double nearest to 0.4 m, which 400 times 0.001 need not be. The inch is exactly 25.4 mm
 (international yard and pound agreement, 1959)."""
+
+
+_ANGULAR = frozenset({*TRIPLES, "rotation-vector"})
 
 
 @dataclass(frozen=True)
@@ -63,8 +73,11 @@ class Units:
     def value_out(self, value: float, unit: str) -> float:
         """Return an SI value in the user's unit; a pure number stays as it is."""
         if unit == "rad":
-            return float(self.angle_out(value))
-        return float(self.length_out(value)) if unit == "m" else float(value)
+            return degrees(value) if self.angle == "deg" else value
+        if unit == "m":
+            numerator, denominator = _METRES[self.length]
+            return value * denominator / numerator
+        return value
 
     def shortest_out(self, value: float, unit: str) -> float:
         """Return an SI value in the user's unit with the fewest digits that lead back to it.
@@ -99,7 +112,32 @@ UNITS = {
 
 def joint_values_in(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
     """Return joint values, speeds or steps (..., joints) in SI."""
-    return np.where(arm.revolute_joints, units.angle_in(values), units.length_in(values))
+    factors, divisors = _joint_scales(arm, units.name)[0]
+    return values * factors / divisors
+
+
+def joint_row_in(arm: Arm, units: Units, values: Sequence[float]) -> list[float]:
+    """Return the values of one posture, a plain number for each joint, in SI."""
+    factors, divisors = _joint_scales(arm, units.name)[1]
+    return [
+        value * factor / divisor
+        for value, factor, divisor in zip(values, factors, divisors, strict=True)
+    ]
+
+
+@lru_cache(maxsize=ARMS_KEPT)
+def _joint_scales(
+    arm: Arm, units: str
+) -> tuple[tuple[FloatArray, FloatArray], tuple[list[float], list[float]]]:
+    """Return what joint values are multiplied by and then divided by to be SI, (joints,) each.
+
+    As arrays, and as plain numbers.
+    """
+    numerator, denominator = _METRES[UNITS[units].length]
+    per_angle = float(UNITS[units].angle_in(1.0))
+    factors = np.where(arm.revolute_joints, per_angle, numerator)
+    divisors = np.where(arm.revolute_joints, 1.0, denominator)
+    return (factors, divisors), (factors.tolist(), divisors.tolist())
 
 
 def joint_values_out(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
@@ -133,10 +171,18 @@ def orientation_in(units: Units, form: str, values: FloatArray) -> FloatArray:
     return units.angle_in(values) if _is_angular(form) else values
 
 
-def orientation_out(units: Units, form: str, rotation: FloatArray) -> FloatArray:
-    """Return the values of rotations (..., 3, 3) in a form and the user's units."""
-    values = values_of(form, rotation)
-    return units.angle_out(values) if _is_angular(form) else values
+def orientation_out(units: Units, form: str, pose: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return the rotations of poses (count, 4, 4) in a form and the user's units.
+
+    Beside them how far from gimbal lock they are, (count,) in rad; infinite for forms without one.
+    """
+    values, from_lock = values_and_distance(form, pose)
+    return units.angle_out(values) if _is_angular(form) else values, from_lock
+
+
+def orientation_values_out(units: Units, form: str, values: list[Any]) -> list[Any]:
+    """Return the values of one orientation, plain numbers in SI, in the user's units."""
+    return [units.value_out(value, "rad") for value in values] if _is_angular(form) else values
 
 
 def finding_out(units: Units, finding: Finding) -> dict[str, object]:
@@ -166,4 +212,4 @@ def finding_out(units: Units, finding: Finding) -> dict[str, object]:
 
 
 def _is_angular(form: str) -> bool:
-    return form in TRIPLES or form == "rotation-vector"
+    return form in _ANGULAR

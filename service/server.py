@@ -4,30 +4,25 @@ Left out: TLS, several processes and any proxy in front, which the operator's ow
 """
 
 import asyncio
-import gc
 import logging
 import os
 import signal
 import socket
 import sys
-import threading
 from collections.abc import Callable
-from time import monotonic
 from types import FrameType
 
 import uvicorn
 from fastapi import FastAPI
 
-from kinematics.warm_up import warm_up
 from service.app import create_app
 from service.cautions import NOT_A_SAFETY_FUNCTION
 from service.errors import StorageUnavailable, StorageUnusable
 from service.http_line import FixedLengthH11
+from service.readiness import Readiness
 from service.settings import Settings, unknown_variables
 from service.web.pages import version_here
 
-_LONG_S = 1.0
-_COMPILING = "  compiling for this machine, some seconds; the first questions wait for it"
 _KEEP_ALIVE_S = 65
 # A stop is to be over within a second: requests still open after this are answered 503.
 _GRACE_S = 0.25
@@ -90,27 +85,14 @@ async def _serve(app: FastAPI, listener: socket.socket, settings: Settings) -> N
         limit_concurrency=2 * settings.connections,
     )
     server = _Server(config, lambda: print(_start_text(app, listener), flush=True))
-    threading.Thread(target=_warm_up, daemon=True).start()
+    readiness: Readiness = app.state.readiness
+    readiness.prepare()
     app.state.crowded = lambda: len(server.server_state.connections) > settings.connections
-    async with app.router.lifespan_context(app):
-        await server.serve([listener])
-
-
-def _warm_up() -> None:
-    """Compile the kernels ahead of the first question, saying so if that takes long.
-
-    In a daemon thread: a stop does not wait for it.
-    """
-    told = threading.Timer(_LONG_S, print, (_COMPILING,), {"flush": True})
-    told.daemon = True
-    told.start()
-    started = monotonic()
-    warm_up()
-    # What is here now stays: a search for garbage among it would hold up every answer for 0.1 s.
-    gc.freeze()
-    told.cancel()
-    if monotonic() - started > _LONG_S:
-        print(f"  compiled in {monotonic() - started:.1f} s", flush=True)
+    try:
+        async with app.router.lifespan_context(app):
+            await server.serve([listener])
+    finally:
+        readiness.stop()
 
 
 def _bound(host: str, port: int) -> socket.socket:

@@ -27,6 +27,10 @@ from service.wire.formats import (
 
 # Parsed, worked on and printed in a few milliseconds; more is done in pieces.
 _SHORT_BYTES = 64 * 1024
+# A few postures of an arm of some rows take less than to hand them to a thread.
+_TINY_BYTES, _FEW = 4096, 4
+# So few that to copy them into one costs less than to send them one by one.
+_FEW_PARTS = 4
 # Parsing holds the interpreter: beyond this size for longer than others should wait.
 _LONG_BYTES = 2_000_000
 
@@ -89,6 +93,8 @@ async def _of_body(
 
     if len(raw) > _SHORT_BYTES:
         return await _in_pieces(bulk.threads, await bulk.threads.run(rendering))
+    if len(raw) <= _TINY_BYTES and len(asked.joints) <= _FEW and arms.answers_at_once:
+        return _at_once(rendering())
     return await run_in_threadpool(lambda: _at_once(rendering()))
 
 
@@ -103,8 +109,8 @@ async def _in_pieces(threads: Threads, rendering: Rendering) -> Response:
 
 def _answer(worked_out: WorkedOut) -> Response:
     is_json = worked_out.media_type.startswith("application/json")
-    return PartsAnswer(
-        worked_out.parts,
-        media_type=worked_out.media_type,
-        headers={} if is_json else {"X-Bad-Rows": str(worked_out.refused)},
-    )
+    headers = {} if is_json else {"X-Bad-Rows": str(worked_out.refused)}
+    if len(worked_out.parts) <= _FEW_PARTS:
+        whole = b"".join(worked_out.parts)
+        return Response(whole, headers=headers, media_type=worked_out.media_type)
+    return PartsAnswer(worked_out.parts, media_type=worked_out.media_type, headers=headers)

@@ -6,24 +6,22 @@ Left out: which thread or process makes a piece, and sending them.
 from abc import ABC, abstractmethod
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import ClassVar
+from typing import ClassVar, NamedTuple
 
 import numpy as np
 
 from service.operations.many import Many
-from service.operations.poses import head_of
 from service.wire import csv_text, npy
-from service.wire.answers import json_bytes
+from service.wire.answers import json_bytes, plain_items
 from service.wire.csv_rows import NAME
 from service.wire.flat import POSE_KEYS, jacobian_keys
 from service.wire.formats import JSON, Format
 
 # So many vectors that a piece takes some milliseconds: a judgement in words takes 0.1 ms.
-_BARE, _LINES, _ITEMS, _JUDGED_ITEMS = 16_384, 2048, 4096, 64
+_BARE, _LINES, _ITEMS, _JUDGED_ITEMS = 4096, 2048, 4096, 64
 
 
-@dataclass(frozen=True)
-class Stamp:
+class Stamp(NamedTuple):
     """What tells an answer from a late one, as flat answers carry it."""
 
     seq: int
@@ -31,8 +29,7 @@ class Stamp:
     t_ms: int
 
 
-@dataclass(frozen=True)
-class Piece:
+class Piece(NamedTuple):
     """Some vectors' part of an answer; ``refused`` counts for the header of NPY and CSV."""
 
     content: bytes
@@ -65,8 +62,7 @@ class Outline:
         return WorkedOut(self.media_type, parts, sum(piece.refused for piece in pieces))
 
 
-@dataclass(frozen=True)
-class WorkedOut:
+class WorkedOut(NamedTuple):
     """An answer but for its sending."""
 
     media_type: str
@@ -183,7 +179,7 @@ class JsonRendering(Rendering):
     @property
     def head(self) -> bytes:
         """The head of the object, up to where the list of items begins."""
-        head = json_bytes(head_of(self.many.question))
+        head = json_bytes(self.many.question.head)
         return head[:-1] + f',"{self.many.key}":['.encode("ascii")
 
     @property
@@ -193,6 +189,9 @@ class JsonRendering(Rendering):
 
     def piece(self, begin: int, end: int) -> Piece:
         """Return the items of some vectors."""
+        plain = self.many.plain(begin, end) if self.many.names is None else None
+        if plain is not None:
+            return Piece(plain_items(self.many.question.form, *plain), 0)
         items = self.many.items(begin, end)
         if self.many.names is not None:
             for item, name in zip(items, self.many.names[begin:end], strict=True):

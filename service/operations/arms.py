@@ -10,13 +10,7 @@ from datetime import UTC, datetime
 from functools import lru_cache
 from typing import Any, Generic, Protocol, TypeVar
 
-from service.errors import (
-    NameTaken,
-    RevisionDiffers,
-    UnknownArm,
-    UnknownRevision,
-    UnusableValue,
-)
+from service.errors import NameTaken, RevisionDiffers, UnknownArm, UnknownRevision, UnusableValue
 from service.operations.heads import Heads
 from service.storage.ports import (
     ArmStorage,
@@ -70,7 +64,7 @@ class ReadArm(Protocol):
 Read = TypeVar("Read", bound=ReadArm)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, eq=False, slots=True)
 class StoredArm(Generic[Read]):
     """One revision (``record``) together with the arm it describes (``read``)."""
 
@@ -162,7 +156,7 @@ class Arms(Generic[Read]):
         read = self._read_arm(document)
         draft = self._draft(read, author, reason)
         try:
-            return StoredArm(self.storage.write(draft, Head.ABSENT, seed=seed), read)
+            return StoredArm(self._written(draft, Head.ABSENT, seed=seed), read)
         except HeadDiffers as error:
             raise NameTaken(
                 f"there is an arm {draft.name!r} already",
@@ -198,7 +192,7 @@ class Arms(Generic[Read]):
             draft = self._draft(read, author, reason)
             if draft.name != name:
                 raise _other_name(name, draft.name)
-            return StoredArm(self.storage.write(draft, number), read)
+            return StoredArm(self._written(draft, number), read)
         except HeadDiffers as error:
             raise _differs(name, error.current, expected) from error
 
@@ -220,6 +214,7 @@ class Arms(Generic[Read]):
         try:
             number = self._expected_number(name, expected)
             self.storage.hide(name, number, Hiding(author, reason, self._now()))
+            self._heads.forget()
         except HeadDiffers as error:
             if error.current is None:
                 raise _unknown_arm(name) from error
@@ -244,6 +239,11 @@ class Arms(Generic[Read]):
     def count(self) -> int:
         """Return the number of arms that are not hidden."""
         return self.storage.count()
+
+    def _written(self, draft: Draft, expected: int | Head, *, seed: bool = False) -> Revision:
+        written = self.storage.write(draft, expected, seed=seed)
+        self._heads.forget()
+        return written
 
     def _fetch(self, name: str, number: int) -> StoredArm[Read]:
         record = None

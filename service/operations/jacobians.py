@@ -19,10 +19,10 @@ from kinematics.jacobian import (
 )
 from kinematics.joint_speeds import joint_speeds
 from kinematics.table import FloatArray
-from kinematics.travel_limits import beyond_travel, travel_findings
+from kinematics.travel_limits import margin_and_outside, travel_findings
 from service.convert import jacobians_out, joint_values_out, twists_out
 from service.operations.joint_rows import JointRows
-from service.operations.poses import answered, with_refused
+from service.operations.poses import Answered, answered, with_refused
 from service.operations.questions import TOOL_AXES, Question
 from service.operations.singularities import judged
 
@@ -43,8 +43,8 @@ class Wanted:
 
 def jacobian_items(
     question: Question, rows: JointRows, wanted: Wanted, *, singularity: bool
-) -> list[dict[str, object]]:
-    """Return one item for each joint vector of the request, in its order."""
+) -> Answered:
+    """Return one item for each joint vector of the request."""
     arm = question.arm
     motion = motion_of(arm, rows.values, question.tool.tool_in_flange)
     base_in_axes = base_in_axes_of(question, motion)
@@ -52,11 +52,11 @@ def jacobian_items(
     matrices = jacobians_out(arm, question.units, of_joints).tolist()
     values = singular_values_of(of_joints).tolist()
     told = judged(question, rows.values, motion) if singularity else None
-    outside = beyond_travel(arm, rows.values)
+    margins, outside = (found.tolist() for found in margin_and_outside(arm, rows.values))
     items: list[dict[str, object]] = []
-    for index in range(len(rows.values)):
+    for index, is_outside in enumerate(outside):
         findings = list(question.repaired)
-        if outside[index]:
+        if is_outside:
             findings.extend(travel_findings(arm, rows.values[index]))
         parts: dict[str, object] = {"matrix": matrices[index], "singular_values": values[index]}
         if singularity:
@@ -67,20 +67,20 @@ def jacobian_items(
         carried, more = _carried(question, of_joints[index], wanted, index)
         findings.extend(more)
         items.append(answered(question.units, findings, parts | carried))
-    return with_refused(items, rows, ("matrix", "singular_values"))
+    return Answered(with_refused(items, rows, ("matrix", "singular_values")), margins)
 
 
 def base_in_axes_of(question: Question, motion: Motion) -> FloatArray:
     """Return the rotation of the base in the axes asked for, (count, 3, 3)."""
     count = motion.tool_in_base.shape[0]
     if question.frame == FLANGE:
-        axes_in_base = motion.walk.flange_in_base[..., :3, :3]
+        axes_in_base = motion.flange_in_base[..., :3, :3]
     elif question.frame == TOOL_AXES:
         axes_in_base = motion.tool_in_base[..., :3, :3]
     elif question.frame == BASE:
         return np.broadcast_to(np.eye(3), (count, 3, 3))
     else:
-        fixed = question.arm.base_in_frame(question.frame)[:3, :3]
+        fixed = question.base_in_frame[:3, :3]
         return np.broadcast_to(fixed, (count, 3, 3))
     return np.swapaxes(axes_in_base, -1, -2)
 
@@ -99,10 +99,11 @@ def _carried(
         twist = tool_twist(of_joints, wanted.speeds[index])
         parts["twists"] = twists_out(units, twist).tolist()
     if wanted.twists is not None:
-        prepared = question.prepared()
         parts["speeds"] = []
-        if prepared is not None:
-            found = joint_speeds(question.arm, prepared[0], of_joints, wanted.twists[index])
+        if question.prepared is not None:
+            found = joint_speeds(
+                question.arm, question.prepared[0], of_joints, wanted.twists[index]
+            )
             findings = found.findings
             parts["speeds"] = joint_values_out(question.arm, units, found.speeds).tolist()
     if wanted.loads is not None:

@@ -15,12 +15,13 @@ from kinematics.chain import checked_joint_values, joints_in_words
 from kinematics.errors import KinematicsError, NotFinite, OutOfRange, WrongJointCount
 from kinematics.table import FloatArray
 from kinematics.tolerances import LARGEST_MAGNITUDE
-from service.convert import Units, joint_values_in
+from service.convert import Units, joint_row_in, joint_values_in
 from service.details import Detail, as_given
 from service.errors import ServiceError, TooLarge, UnusableValue
 
 MOST_VECTORS = 200_000
 MOST_VECTORS_WITH_SINGULARITY = 20_000
+_NUMBERS = {float, int}
 
 
 @dataclass(frozen=True)
@@ -39,6 +40,11 @@ class JointRows:
     places: NDArray[np.intp]
     refused: dict[int, Detail]
     count: int
+
+    @classmethod
+    def of_one(cls, values: list[float]) -> "JointRows":
+        """Return the one usable vector of a request for one, in SI."""
+        return cls(np.array([values], dtype=np.float64), np.zeros(1, dtype=np.intp), {}, 1)
 
     def piece(self, begin: int, end: int) -> "JointRows":
         """Return vectors ``begin`` ... ``end`` of the request, counted from ``begin``."""
@@ -90,6 +96,8 @@ def read_joint_rows(
     ServiceError : none of the vectors can be used; it lists what is wrong with each.
     """
     refuse_too_many(len(rows), singularity=singularity)
+    if len(rows) == 1 and (alone := _of_good_numbers(arm, units, rows[0])) is not None:
+        return JointRows.of_one(alone)
     together = _all_at_once(arm, units, rows)
     if together is not None:
         return JointRows(together, np.arange(len(rows)), {}, len(rows))
@@ -114,6 +122,30 @@ def read_joint_rows(
         raise ServiceError(first.say, errors=list(refused.values()), status=422)
     values = np.array(list(usable.values())).reshape(len(usable), arm.joint_count)
     return JointRows(values, np.array(list(usable), dtype=np.intp), refused, len(rows))
+
+
+def read_joint_row(arm: Arm, units: Units, values: list[float]) -> list[float]:
+    """Return one joint vector in SI, as plain numbers.
+
+    Raises
+    ------
+    ServiceError : it cannot be used.
+    """
+    row = _of_good_numbers(arm, units, values)
+    if row is None:
+        read_joint_rows(arm, units, [values], singularity=True)
+        raise AssertionError("a joint vector is good alone and bad among others")
+    return row
+
+
+def _of_good_numbers(arm: Arm, units: Units, row: object) -> list[float] | None:
+    if type(row) is not list or len(row) != arm.joint_count or not set(map(type, row)) <= _NUMBERS:
+        return None
+    try:
+        values = joint_row_in(arm, units, row)
+    except OverflowError:
+        return None
+    return values if all(abs(value) <= LARGEST_MAGNITUDE for value in values) else None
 
 
 def told_joints(arm: Arm, units: Units) -> str:
@@ -169,7 +201,7 @@ def _all_at_once(arm: Arm, units: Units, rows: Sequence[object]) -> FloatArray |
     if not all(type(row) is list and len(row) == arm.joint_count for row in rows):
         return None
     # numpy would take text and booleans for numbers: look at the types first.
-    if not set(map(type, chain.from_iterable(rows))) <= {float, int}:  # type: ignore[arg-type]
+    if not set(map(type, chain.from_iterable(rows))) <= _NUMBERS:  # type: ignore[arg-type]
         return None
     try:
         values = np.array(rows, dtype=np.float64).reshape(len(rows), arm.joint_count)

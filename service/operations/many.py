@@ -22,7 +22,6 @@ from kinematics.findings import (
     SINGULAR,
 )
 from kinematics.jacobian import Motion, in_axes, motion_of
-from kinematics.orientation_forms import distance_from_lock
 from kinematics.rotations import quaternion_wxyz_of
 from kinematics.singularity import STATES
 from kinematics.table import FloatArray
@@ -31,7 +30,7 @@ from kinematics.travel_limits import limits_exceeded, travel_margin
 from service.convert import jacobians_out, orientation_out
 from service.operations.jacobians import Wanted, base_in_axes_of, jacobian_items
 from service.operations.joint_rows import JointRows
-from service.operations.poses import placed, pose_items
+from service.operations.poses import placed, plain_poses, pose_item, pose_items
 from service.operations.questions import Question
 from service.operations.singularities import judged
 from service.problems import KINDS
@@ -71,6 +70,10 @@ class Many(ABC):
     def items(self, begin: int, end: int) -> list[dict[str, object]]:
         """Return vectors ``begin`` ... ``end`` answered as in a nested answer."""
 
+    def plain(self, begin: int, end: int) -> tuple[FloatArray, FloatArray] | None:
+        """Return positions and orientations, where that is all there is to tell; else None."""
+        return None
+
     @property
     @abstractmethod
     def shape(self) -> tuple[int, ...]:
@@ -97,12 +100,12 @@ class Many(ABC):
         """Return what a line for each of the vectors ``begin`` ... ``end`` says."""
         rows = self.rows.piece(begin, end)
         arm = self.question.arm
-        numbers, motion, near_lock = self._told(rows.values)
+        numbers, motion, is_near_lock = self._told(rows.values)
         working, travel = limits_exceeded(arm, rows.values)
         applying = {
             OUTSIDE_WORKING_TRAVEL: working,
             OUTSIDE_TRAVEL: travel,
-            ANGLES_NOT_UNIQUE: near_lock,
+            ANGLES_NOT_UNIQUE: is_near_lock,
             INPUT_REPAIRED: np.full(len(rows.values), bool(self.question.repaired)),
         }
         states: Sequence[str] | None = None
@@ -113,7 +116,8 @@ class Many(ABC):
                 states = [NO_STATE] * len(rows.values)
                 conditions = np.zeros(len(rows.values))
             else:
-                state, conditions = found.judgement.state, found.judgement.condition
+                _, judgement = found.whole()
+                state, conditions = judgement.state, judgement.condition
                 states = [STATES[index] for index in state.tolist()]
                 applying[NEAR], applying[SINGULAR] = state == 1, state == 2
         codes = np.zeros(len(rows.values), dtype=np.int64)
@@ -141,13 +145,21 @@ class ManyPoses(Many):
     def items(self, begin: int, end: int) -> list[dict[str, object]]:
         """Return the items of a nested answer."""
         rows = self.rows.piece(begin, end)
-        return pose_items(self.question, rows, singularity=self.singularity, links=self.links)
+        if rows.count == 1 and len(rows.values) == 1 and self.singularity and not self.links:
+            return pose_item(self.question, rows.values[0].tolist()).items
+        return pose_items(self.question, rows, singularity=self.singularity, links=self.links).items
+
+    def plain(self, begin: int, end: int) -> tuple[FloatArray, FloatArray] | None:
+        """Return positions and orientations as arrays, of vectors that are not judged."""
+        if self.singularity or self.links:
+            return None
+        return plain_poses(self.question, self.rows.piece(begin, end))
 
     def _bare(self, values: FloatArray) -> FloatArray:
         tool_in_frame = placed(self.question, values, None)
         bare = np.empty((len(values), 7))
         bare[:, :3] = self.question.units.length_out(tool_in_frame[:, :3, 3])
-        bare[:, 3:] = quaternion_wxyz_of(tool_in_frame[:, :3, :3])
+        bare[:, 3:] = quaternion_wxyz_of(tool_in_frame)
         return bare
 
     def _told(self, values: FloatArray) -> tuple[FloatArray, Motion | None, BoolArray]:
@@ -155,14 +167,9 @@ class ManyPoses(Many):
         if self.singularity:
             motion = motion_of(question.arm, values, question.tool.tool_in_flange)
         tool_in_frame = placed(question, values, motion)
-        rotation = tool_in_frame[:, :3, :3]
-        numbers = np.hstack(
-            [
-                question.units.length_out(tool_in_frame[:, :3, 3]),
-                orientation_out(question.units, question.form, rotation),
-            ]
-        )
-        return numbers, motion, distance_from_lock(question.form, rotation) <= LOCK_NOTICE
+        position = question.units.length_out(tool_in_frame[:, :3, 3])
+        values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+        return np.hstack([position, values]), motion, from_lock <= LOCK_NOTICE
 
 
 @dataclass(frozen=True)
@@ -183,7 +190,7 @@ class ManyJacobians(Many):
         # Speeds, twists and loads come in the same body as lists of joint vectors.
         span = self.rows.usable_within(begin, end) if isinstance(self.rows, JointRows) else (0, 0)
         wanted = self.wanted.piece(*span)
-        return jacobian_items(self.question, rows, wanted, singularity=self.singularity)
+        return jacobian_items(self.question, rows, wanted, singularity=self.singularity).items
 
     def _bare(self, values: FloatArray) -> FloatArray:
         question = self.question

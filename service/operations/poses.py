@@ -3,119 +3,138 @@
 Left out: how the question arrives and how the answer is printed.
 """
 
-from collections.abc import Iterable, Mapping
-from typing import Any
+from collections.abc import Iterable, Mapping, Sequence
+from typing import Any, NamedTuple
 
 import numpy as np
 
 from kinematics.arm import BASE
-from kinematics.chain import Walk, tool_in_base
+from kinematics.chain import tool_in_base, walk
 from kinematics.findings import Finding
 from kinematics.jacobian import Motion, motion_of
-from kinematics.orientation_forms import distance_from_lock
 from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE
-from kinematics.travel_limits import beyond_travel, travel_findings
-from service.convert import Units, finding_out, orientation_out
+from kinematics.transforms import in_frame
+from kinematics.travel_limits import margin_and_outside, travel_findings
+from service.convert import Units, finding_out, orientation_out, orientation_values_out
 from service.details import Detail, pointer, shown
 from service.operations.joint_rows import JointRows
 from service.operations.questions import Question
-from service.operations.singularities import judged
+from service.operations.singularities import Judged, judged, judged_reading
 from service.problems import KINDS
 from service.wire.poses import lock_findings, pose_answer
 
 
-def head_of(question: Question) -> dict[str, object]:
-    """Return what stands at the head of every answer about postures."""
-    return {
-        "arm": question.meant.identity(),
-        "units": question.units.name,
-        "frame": question.frame,
-        "tool": question.tool.shown,
-    }
+class Answered(NamedTuple):
+    """Items in the order of the request, and the travel left at each usable vector."""
+
+    items: list[dict[str, object]]
+    margins: list[float]
 
 
-def pose_items(
-    question: Question, rows: JointRows, *, singularity: bool, links: bool
-) -> list[dict[str, object]]:
-    """Return one item for each joint vector of the request, in its order."""
+class _Placed(NamedTuple):
+    """One posture's pose as told, and what there may be to say of it."""
+
+    position: list[float]
+    orientation: object
+    is_near_lock: bool
+    is_outside: bool
+
+
+def pose_items(question: Question, rows: JointRows, *, singularity: bool, links: bool) -> Answered:
+    """Return one item for each joint vector of the request."""
     arm, tool_in_flange = question.arm, question.tool.tool_in_flange
-    motion = motion_of(arm, rows.values, tool_in_flange) if singularity or links else None
-    base_in_frame = arm.base_in_frame(question.frame)
+    motion = motion_of(arm, rows.values, tool_in_flange) if singularity else None
     tool_in_frame = placed(question, rows.values, motion)
-    positions = question.units.length_out(tool_in_frame[..., :3, 3]).tolist()
-    orientations = orientation_out(
-        question.units, question.form, tool_in_frame[..., :3, :3]
-    ).tolist()
-    near_lock = distance_from_lock(question.form, tool_in_frame[..., :3, :3]) <= LOCK_NOTICE
-    told = judged(question, rows.values, motion) if singularity and motion is not None else None
-    outside = beyond_travel(arm, rows.values)
-    if motion is None and not (question.repaired or outside.any() or near_lock.any()):
-        return with_refused(
-            _plain_items(positions, orientations, question.form), rows, ("position", "orientation")
-        )
+    positions = question.units.length_out(tool_in_frame[:, :3, 3]).tolist()
+    values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+    orientations, locked = values.tolist(), (from_lock <= LOCK_NOTICE).tolist()
+    told = judged(question, rows.values, motion) if motion is not None else None
+    margins, outside = (found.tolist() for found in margin_and_outside(arm, rows.values))
+    listed = _links(question, rows.values) if links else None
     items: list[dict[str, object]] = []
-    for index in range(len(rows.values)):
-        findings = list(question.repaired)
-        if outside[index]:
-            findings.extend(travel_findings(arm, rows.values[index]))
-        if near_lock[index]:
-            findings.extend(lock_findings(tool_in_frame[index], question.form))
-        parts: dict[str, object] = {
-            "position": positions[index],
-            "orientation": {"form": question.form, "values": orientations[index]},
-        }
-        if singularity:
-            parts["singularity"] = None
-        if told is not None:
-            parts["singularity"], more = told.told(index, base_in_frame[:3, :3])
-            findings.extend(more)
-        if links and motion is not None:
-            parts["links"] = _links(question, motion.walk, index, base_in_frame)
-        items.append(answered(question.units, findings, parts))
-    return with_refused(items, rows, ("position", "orientation"))
+    each = zip(positions, orientations, locked, outside, strict=True)
+    for index, found in enumerate(map(_Placed._make, each)):
+        more: dict[str, object] = {"singularity": None} if singularity else {}
+        if listed is not None:
+            more["links"] = listed[index]
+        items.append(_item(question, rows.values, index, found, told, more))
+    return Answered(with_refused(items, rows, ("position", "orientation")), margins)
+
+
+def pose_item(question: Question, joint_values: Sequence[float]) -> Answered:
+    """Return the item of one joint vector, with singularity: what controllers ask all the time."""
+    read, units = question.reader.read(joint_values), question.units
+    found = _Placed(
+        [units.value_out(length, "m") for length in read.position],
+        orientation_values_out(units, question.form, read.orientation),
+        read.from_lock <= LOCK_NOTICE,
+        read.outside,
+    )
+    told = judged_reading(question, joint_values, read)
+    item = _item(question, [joint_values], 0, found, told, {"singularity": None})
+    return Answered([item], [read.margin])
+
+
+def _item(
+    question: Question,
+    joint_values: Sequence[Sequence[float]] | FloatArray,
+    index: int,
+    found: _Placed,
+    told: Judged | None,
+    more: dict[str, object],
+) -> dict[str, object]:
+    """Return the item of one of the postures (count, joints); ``more`` goes into it."""
+    findings = list(question.repaired)
+    if found.is_outside:
+        findings.extend(travel_findings(question.arm, np.asarray(joint_values[index])))
+    if found.is_near_lock:
+        tool_in_frame = placed(question, np.array([joint_values[index]]), None)[0]
+        findings.extend(lock_findings(tool_in_frame, question.form))
+    if told is not None:
+        more["singularity"], said = told.told(index, question.base_in_frame[:3, :3])
+        findings.extend(said)
+    orientation = {"form": question.form, "values": found.orientation}
+    parts = {"position": found.position, "orientation": orientation, **more}
+    return answered(question.units, findings, parts)
 
 
 def placed(question: Question, joint_values: FloatArray, motion: Motion | None) -> FloatArray:
     """Return the tool in the frame asked for, (count, 4, 4); from the motion if there is one."""
-    arm = question.arm
     in_base = (
-        tool_in_base(arm, joint_values, question.tool.tool_in_flange)
+        tool_in_base(question.arm, joint_values, question.tool.tool_in_flange)
         if motion is None
         else motion.tool_in_base
     )
     if question.frame == BASE:
         return in_base
-    in_frame: FloatArray = arm.base_in_frame(question.frame) @ in_base
-    return in_frame
+    return in_frame(question.base_in_frame, in_base)
 
 
-def _plain_items(
-    positions: list[list[float]], orientations: list[list[float]], form: str
-) -> list[dict[str, object]]:
-    """Return items of which there is nothing to tell; most of a long answer's time goes here."""
-    return [
-        {
-            "ok": True,
-            "code": 0,
-            "position": position,
-            "orientation": {"form": form, "values": values},
-            "findings": [],
-        }
-        for position, values in zip(positions, orientations, strict=True)
-    ]
+def plain_poses(question: Question, rows: JointRows) -> tuple[FloatArray, FloatArray] | None:
+    """Return positions (count, 3) and orientations (count, ...) in the user's units, unjudged.
+
+    None where there is more to tell of one of the vectors than its pose.
+    """
+    _, outside = margin_and_outside(question.arm, rows.values)
+    if question.repaired or rows.refused or outside.any():
+        return None
+    tool_in_frame = placed(question, rows.values, None)
+    values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+    if (from_lock <= LOCK_NOTICE).any():
+        return None
+    return question.units.length_out(tool_in_frame[:, :3, 3]), values
 
 
 def answered(
-    units: Units, findings: Iterable[Finding], parts: Mapping[str, object]
+    units: Units, findings: Sequence[Finding], parts: Mapping[str, object]
 ) -> dict[str, object]:
     """Return an item that could be answered; of several codes the highest stands at its head."""
-    findings = list(findings)
     if not findings:
         return {"ok": True, "code": 0, **parts, "findings": []}
     return {
         "ok": True,
-        "code": max((finding.code for finding in findings), default=0),
+        "code": max(finding.code for finding in findings),
         **parts,
         "findings": [finding_out(units, finding) for finding in findings],
     }
@@ -150,9 +169,11 @@ def _refused(detail: Detail, empty: Iterable[str]) -> dict[str, object]:
     }
 
 
-def _links(
-    question: Question, walked: Walk, index: int, base_in_frame: FloatArray
-) -> list[dict[str, object]]:
+def _links(question: Question, joint_values: FloatArray) -> list[list[dict[str, object]]]:
     """Return the poses of link frames 0 ... n, in the frame and form asked for."""
-    link_in_frame: FloatArray = np.asarray(base_in_frame @ walked.link_in_base[index])
-    return [pose_answer(link, question.form, question.units) for link in link_in_frame]
+    link_in_base = walk(question.arm, joint_values).link_in_base
+    link_in_frame = in_frame(question.base_in_frame, link_in_base)
+    return [
+        [pose_answer(link, question.form, question.units) for link in links]
+        for links in link_in_frame
+    ]

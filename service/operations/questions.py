@@ -3,14 +3,15 @@
 Left out: the joint values (joint_rows.py) and the answers (poses.py, jacobians.py).
 """
 
-from collections.abc import Hashable
+from collections.abc import Hashable, Mapping
 from dataclasses import dataclass, field
-from functools import lru_cache
+from functools import cached_property, lru_cache
 from typing import Any
 
-from kinematics.arm import FLANGE, Arm
+from kinematics.arm import BASE, FLANGE, Arm
 from kinematics.errors import KinematicsError, UnknownFrame
 from kinematics.findings import Finding
+from kinematics.posture_reader import PostureReader
 from kinematics.singular_kinds import Anatomy, anatomy_of
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace, rows_of, task_space
@@ -32,7 +33,11 @@ class MeantArm:
 
     read: ReadArm
     revision: int | None
-    repaired: tuple[Finding, ...] = ()
+
+    @property
+    def repaired(self) -> tuple[Finding, ...]:
+        """What was mended in an arm that came whole; of a stored one it was told at the time."""
+        return self.read.findings if self.revision is None else ()
 
     @property
     def arm(self) -> Arm:
@@ -63,7 +68,10 @@ class MeantTool:
 
 @dataclass(frozen=True)
 class Question:
-    """A question about postures of one arm, all but the joint values."""
+    """A question about postures of one arm, all but the joint values.
+
+    What follows from it is worked out once, however many joint values are asked about.
+    """
 
     meant: MeantArm
     units: Units
@@ -73,13 +81,41 @@ class Question:
     task: Hashable
     repaired: tuple[Finding, ...] = field(default=())
 
-    @property
+    @cached_property
     def arm(self) -> Arm:
         """The arm asked about."""
         return self.meant.arm
 
+    @cached_property
+    def base_in_frame(self) -> FloatArray:
+        """The pose of the base in the frame asked for, (4, 4)."""
+        return self.arm.base_in_frame(self.frame)
+
+    @cached_property
+    def reader(self) -> PostureReader:
+        """What reads single postures for this question."""
+        in_base = self.frame in (BASE, FLANGE, TOOL_AXES)
+        return PostureReader(
+            self.arm,
+            self.tool.tool_in_flange,
+            None if in_base else self.base_in_frame,
+            self.form,
+            None if self.prepared is None else self.prepared[0],
+        )
+
+    @cached_property
+    def head(self) -> Mapping[str, object]:
+        """What stands at the head of every answer about postures."""
+        return {
+            "arm": self.meant.identity(),
+            "units": self.units.name,
+            "frame": self.frame,
+            "tool": self.tool.shown,
+        }
+
+    @cached_property
     def prepared(self) -> tuple[TaskSpace, Anatomy] | None:
-        """Return what singularity is judged by; None for an arm without joints."""
+        """What singularity is judged by; None for an arm without joints."""
         digests = self.meant.read.digests
         key = (digests.table_digest, digests.setup_digest)
         return _prepared(_Key(key, self.task, self.arm, self.tool.tool_in_flange))
@@ -122,15 +158,33 @@ def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm)
     """
     if isinstance(asked, models.Arm):
         try:
-            read = read_arm_model(asked)
+            read = _read_whole(_Whole(asked))
         except KinematicsError as error:
             raise error.below("arm") from None
         except ServiceError as error:
             error.where = ("arm", *error.where)
             raise
-        return MeantArm(read, None, read.findings)
+        return MeantArm(read, None)
     stored = stored_arm(arms, asked)
     return MeantArm(stored.read, stored.record.revision)
+
+
+class _Whole:
+    """An arm that came whole; what comes in the same words is one model (wire/models.py)."""
+
+    def __init__(self, given: models.Arm) -> None:
+        self.given = given
+
+    def __hash__(self) -> int:
+        return id(self.given)
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, _Whole) and self.given is other.given
+
+
+@lru_cache(maxsize=models.WHOLE_ARMS_KEPT)
+def _read_whole(whole: _Whole) -> ReadArm:
+    return read_arm_model(whole.given)
 
 
 def stored_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision) -> StoredArm[ReadArm]:
@@ -196,19 +250,37 @@ def meant_frame(arm: Arm, asked: str | int | None, *, moving: bool = False) -> s
 def question_of(
     arms: Arms[ReadArm], asked: models.PosesRequest, form: str, *, moving: bool = False
 ) -> Question:
-    """Return the question a body asks."""
+    """Return the question a body asks; the same object for what is asked in the same words."""
     meant = meant_arm(arms, asked.arm)
-    units = meant_units(meant, asked.units)
-    tool = meant_tool(meant.arm, units, asked.tool)
-    if asked.task is not None:
+    task = tuple(asked.task) if isinstance(asked.task, list) else asked.task
+    if isinstance(asked.tool, models.Pose):
+        return _question(meant, asked.units, asked.tool, asked.frame, form, task, moving)
+    return _question_in_words(meant, asked.units, asked.tool, asked.frame, form, task, moving)
+
+
+def _question(
+    meant: MeantArm,
+    units_said: str | None,
+    tool_said: str | models.Pose | None,
+    frame: str | None,
+    form: str,
+    task: str | tuple[str, ...] | None,
+    moving: bool,
+) -> Question:
+    units = meant_units(meant, units_said)
+    tool = meant_tool(meant.arm, units, tool_said)
+    if task is not None:
         # Also where nobody asks for a judgement: a question is refused for what it says.
-        rows_of(asked.task)
+        rows_of(task)
     return Question(
         meant=meant,
         units=units,
         tool=tool,
-        frame=meant_frame(meant.arm, asked.frame, moving=moving),
+        frame=meant_frame(meant.arm, frame, moving=moving),
         form=form,
-        task=tuple(asked.task) if isinstance(asked.task, list) else asked.task,
+        task=task,
         repaired=meant.repaired + tool.repaired,
     )
+
+
+_question_in_words = lru_cache(maxsize=PREPARED_KEPT)(_question)

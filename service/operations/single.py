@@ -5,18 +5,19 @@ Left out: query strings and flat answers (wire).
 
 from collections.abc import Container, Sequence
 from dataclasses import replace
+from functools import lru_cache
 
 from kinematics.arm import BASE, FLANGE, Arm
 from kinematics.errors import KinematicsError
 from kinematics.task_space import rows_of
-from kinematics.travel_limits import travel_margin
 from service.convert import Units
 from service.errors import DigestDiffers, ServiceError, UnknownRevision
-from service.operations.arms import Arms
+from service.operations.arms import Arms, StoredArm
 from service.operations.jacobians import Wanted, jacobian_items
-from service.operations.joint_rows import JointRows, read_joint_rows
-from service.operations.poses import head_of, pose_items
+from service.operations.joint_rows import JointRows, read_joint_row
+from service.operations.poses import Answered, pose_item
 from service.operations.questions import (
+    PREPARED_KEPT,
     MeantArm,
     MeantTool,
     Question,
@@ -25,24 +26,25 @@ from service.operations.questions import (
     meant_units,
 )
 from service.wire.arms import ReadArm
-from service.wire.single import TOOL_PARAMETERS, SingleAnswer, SingleQuestion
+from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleAnswer, SingleQuestion
 
 LONGEST_NUMBER = 3
 """Digits of the numbers that controllers know tools and frames by."""
 
 
-def single_pose(arms: Arms[ReadArm], asked: SingleQuestion) -> SingleAnswer:
+def single_pose(arms: Arms[ReadArm], asked: SingleQuestion, joints: JointsAsked) -> SingleAnswer:
     """Return the tool pose of one posture."""
-    question, rows = _question(arms, asked, moving=False)
-    item = pose_items(question, rows, singularity=True, links=False)[0]
-    return _answer(question, rows, item)
+    question = question_asked(arms, asked, moving=False)
+    return _answer(question, pose_item(question, _row(question, joints)))
 
 
-def single_jacobian(arms: Arms[ReadArm], asked: SingleQuestion) -> SingleAnswer:
+def single_jacobian(
+    arms: Arms[ReadArm], asked: SingleQuestion, joints: JointsAsked
+) -> SingleAnswer:
     """Return the Jacobian of one posture."""
-    question, rows = _question(arms, asked, moving=True)
-    item = jacobian_items(question, rows, Wanted(), singularity=True)[0]
-    return _answer(question, rows, item)
+    question = question_asked(arms, asked, moving=True)
+    rows = JointRows.of_one(_row(question, joints))
+    return _answer(question, jacobian_items(question, rows, Wanted(), singularity=True))
 
 
 def joint_count(arms: Arms[ReadArm], name: str) -> int:
@@ -60,7 +62,17 @@ def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) 
     ------
     ServiceError, KinematicsError : what ``asked`` says cannot be used.
     """
-    meant = _meant_arm(arms, asked)
+    try:
+        stored = arms.get(asked.arm, asked.revision)
+    except UnknownRevision as error:
+        error.where, error.location = ("revision",), "query"
+        raise
+    return _question_about(stored, asked, moving)
+
+
+@lru_cache(maxsize=PREPARED_KEPT)
+def _question_about(stored: StoredArm[ReadArm], asked: SingleQuestion, moving: bool) -> Question:
+    meant = MeantArm(stored.read, stored.record.revision)
     _check_expected(asked, meant.read.digests.digest)
     _check_task(asked)
     arm, units = meant.arm, meant_units(meant, asked.units)
@@ -76,46 +88,30 @@ def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) 
     )
 
 
-def _question(
-    arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool
-) -> tuple[Question, JointRows]:
-    question = question_asked(arms, asked, moving=moving)
+def _row(question: Question, joints: JointsAsked) -> list[float]:
     try:
-        rows = read_joint_rows(question.arm, question.units, [list(asked.joints)], singularity=True)
+        return read_joint_row(question.arm, question.units, joints.values)
     except ServiceError as error:
         error.errors = tuple(
-            replace(
-                detail,
-                where=(_parameter(asked, detail.where),),
-                location="query",
-            )
+            replace(detail, where=(_parameter(joints, detail.where),), location="query")
             for detail in error.errors
         )
         raise
-    return question, rows
 
 
-def _answer(question: Question, rows: JointRows, item: dict[str, object]) -> SingleAnswer:
+def _answer(question: Question, answered: Answered) -> SingleAnswer:
     frame = question.arm.frames.get(question.frame)
+    item = answered.items[0]
     findings = item["findings"]
     assert isinstance(findings, list)
     return SingleAnswer(
-        head=head_of(question),
+        head=question.head,
         item=item,
-        margin=float(travel_margin(question.arm, rows.values)[0]),
+        margin=answered.margins[0],
         tool_number=question.tool.number or 0,
         frame_number=(frame.number or 0) if frame is not None else 0,
-        codes=frozenset(finding["code"] for finding in findings),
+        codes=frozenset([finding["code"] for finding in findings]),
     )
-
-
-def _meant_arm(arms: Arms[ReadArm], asked: SingleQuestion) -> MeantArm:
-    try:
-        stored = arms.get(asked.arm, asked.revision)
-    except UnknownRevision as error:
-        error.where, error.location = ("revision",), "query"
-        raise
-    return MeantArm(stored.read, stored.record.revision)
 
 
 def _meant_tool(arm: Arm, units: Units, asked: SingleQuestion) -> MeantTool:
@@ -170,9 +166,9 @@ def _name_or_number(asked: str | None, known: Container[str], own: str) -> str |
     return asked
 
 
-def _parameter(asked: SingleQuestion, where: Sequence[str | int]) -> str:
+def _parameter(joints: JointsAsked, where: Sequence[str | int]) -> str:
     """Return the query parameter that holds the joint value at ``("joints", 0, index)``."""
     index = where[2] if len(where) > 2 else 0
-    if isinstance(index, int) and index < len(asked.joint_names) and len(where) > 2:
-        return asked.joint_names[index]
+    if isinstance(index, int) and index < len(joints.names) and len(where) > 2:
+        return joints.names[index]
     return "q"

@@ -1,92 +1,143 @@
 """Singularity of the postures of a question, as answered."""
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from math import isfinite
+from typing import NamedTuple
 
 import numpy as np
 
 from kinematics.findings import Finding
-from kinematics.jacobian import Motion
-from kinematics.lost_motion import PostureSingularity, describe
+from kinematics.jacobian import Motion, motion_of
+from kinematics.kernels.judgement import CONDITION, MANIPULABILITY, SMALLEST
+from kinematics.lost_motion import describe, travel_and_speed
+from kinematics.posture_reader import PostureReading
 from kinematics.singular_kinds import Anatomy
-from kinematics.singularity import Judgement, judge
+from kinematics.singularity import REGULAR, STATES, Judgement, judge
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace
-from service.convert import Units
 from service.operations.questions import Question
 
 
-@dataclass(frozen=True)
-class Judged:
-    """A batch of postures judged once, told one at a time."""
+class Judged(NamedTuple):
+    """Postures judged together, told one at a time.
+
+    Attributes
+    ----------
+    joint_values : (count, joints).
+    states, readings, steps : as in ``Judgement``, as plain numbers, one for each posture.
+    known : what ``whole`` returns, if it has been worked out.
+    """
 
     question: Question
     space: TaskSpace
     anatomy: Anatomy
-    joint_values: FloatArray
-    motion: Motion
-    judgement: Judgement
+    joint_values: Sequence[Sequence[float]] | FloatArray
+    states: list[int]
+    readings: list[list[float]]
+    steps: list[list[float]]
+    known: tuple[Motion, Judgement] | None = None
+
+    def whole(self) -> tuple[Motion, Judgement]:
+        """Return motion and judgement of all postures."""
+        if self.known is not None:
+            return self.known
+        question = self.question
+        values = np.asarray(self.joint_values)
+        motion = motion_of(question.arm, values, question.tool.tool_in_flange)
+        return motion, judge(question.arm, self.space, motion)
 
     def told(
         self, index: int, base_in_frame: FloatArray
     ) -> tuple[dict[str, object], tuple[Finding, ...]]:
         """Return one posture's singularity as answered, and its findings."""
-        judgement = self.judgement.of_posture(index)
+        readings, step = self.readings[index], self.steps[index]
+        # Of a regular posture there is nothing to say in words, unless it is watched for more.
+        if self.states[index] == REGULAR and not self.space.watched_position_rank:
+            travel, speed = travel_and_speed(self.question.arm, readings, step)
+            return self._answer(readings, travel, speed), ()
+        motion, judgement = self.whole()
         described = describe(
             self.question.arm,
             self.space,
             self.anatomy,
-            self.joint_values[index],
+            np.asarray(self.joint_values[index]),
             self.question.tool.tool_in_flange,
-            self.motion.of_posture(index),
-            judgement,
+            motion.of_posture(index),
+            judgement.of_posture(index),
             base_in_frame,
             self.question.frame,
         )
-        answer = _answer(self.question.units, self.space, judgement, described)
+        answer = self._answer(readings, described.travel_to, described.tool_speed)
+        answer |= {
+            "state": described.state,
+            "kinds": list(described.kinds),
+            "joints": list(described.joints),
+            "lost_motion": [
+                {"linear": lost.linear.tolist(), "angular": lost.angular.tolist(), "say": lost.say}
+                for lost in described.lost_motion
+            ],
+        }
         return answer, described.findings
+
+    def _answer(
+        self,
+        readings: list[float],
+        travel_to: tuple[int, float, str] | None,
+        tool_speed: tuple[float, float] | None,
+    ) -> dict[str, object]:
+        """Return a regular posture's singularity as answered."""
+        units, condition = self.question.units, readings[CONDITION]
+        answer: dict[str, object] = {
+            "state": STATES[REGULAR],
+            "kinds": [],
+            "joints": [],
+            "task": self.space.task,
+            "smallest_singular_value": readings[SMALLEST],
+            "condition_number": condition if isfinite(condition) else None,
+            "manipulability": readings[MANIPULABILITY],
+            "characteristic_length": units.value_out(self.space.length, "m"),
+            "lost_motion": [],
+            "travel_to": None,
+            "tool_speed": None,
+        }
+        if travel_to is not None:
+            joint, value, unit = travel_to
+            answer["travel_to"] = {
+                "joint": joint,
+                "value": units.value_out(value, unit),
+                "unit": units.unit_out(unit),
+            }
+        if tool_speed is not None:
+            linear, angular = tool_speed
+            answer["tool_speed"] = {
+                "linear": units.value_out(linear, "m"),
+                "angular": units.value_out(angular, "rad"),
+            }
+        return answer
 
 
 def judged(question: Question, joint_values: FloatArray, motion: Motion) -> Judged | None:
     """Return a batch of postures (count, joints) judged; None for an arm without joints."""
-    prepared = question.prepared()
-    if prepared is None:
+    if question.prepared is None:
         return None
-    space, anatomy = prepared
-    judgement = judge(question.arm, space, motion)
-    return Judged(question, space, anatomy, joint_values, motion, judgement)
+    judgement = judge(question.arm, question.prepared[0], motion)
+    return Judged(
+        question,
+        *question.prepared,
+        joint_values,
+        judgement.state.tolist(),
+        judgement.readings.tolist(),
+        judgement.step.tolist(),
+        (motion, judgement),
+    )
 
 
-def _answer(
-    units: Units, space: TaskSpace, judgement: Judgement, described: PostureSingularity
-) -> dict[str, object]:
-    condition = float(judgement.condition)
-    answer: dict[str, object] = {
-        "state": described.state,
-        "kinds": list(described.kinds),
-        "joints": list(described.joints),
-        "task": space.task,
-        "smallest_singular_value": float(judgement.smallest),
-        "condition_number": condition if np.isfinite(condition) else None,
-        "manipulability": float(judgement.manipulability),
-        "characteristic_length": float(units.length_out(space.length)),
-        "lost_motion": [
-            {"linear": lost.linear.tolist(), "angular": lost.angular.tolist(), "say": lost.say}
-            for lost in described.lost_motion
-        ],
-        "travel_to": None,
-        "tool_speed": None,
-    }
-    if described.travel_to is not None:
-        joint, value, unit = described.travel_to
-        answer["travel_to"] = {
-            "joint": joint,
-            "value": units.value_out(value, unit),
-            "unit": units.unit_out(unit),
-        }
-    if described.tool_speed is not None:
-        linear, angular = described.tool_speed
-        answer["tool_speed"] = {
-            "linear": units.value_out(linear, "m"),
-            "angular": units.value_out(angular, "rad"),
-        }
-    return answer
+def judged_reading(
+    question: Question, joint_values: Sequence[float], reading: PostureReading
+) -> Judged | None:
+    """Return one posture (joints,) as it was read; None for an arm without joints."""
+    if question.prepared is None or reading.state is None:
+        return None
+    space, anatomy = question.prepared
+    states, readings, steps = [reading.state], [reading.readings], [reading.step]
+    return Judged(question, space, anatomy, [joint_values], states, readings, steps)

@@ -13,6 +13,7 @@ from starlette.responses import Response
 
 from service.errors import PreconditionRequired, UnknownRevision, UnusableValue
 from service.operations.arms import NAME, Arms, StoredArm, version_of
+from service.routes.direct import DirectRoute
 from service.storage.ports import Head
 from service.web.document import documented, parameter
 from service.wire import paging
@@ -31,7 +32,7 @@ from service.wire.stored_arms import (
     stored_arm_answer,
 )
 
-router = APIRouter()
+router = APIRouter(route_class=DirectRoute)
 
 LONGEST_SAID = 200
 _NO_CACHE = {"cache-control": "no-cache"}

@@ -18,8 +18,10 @@ from service.operations.arms import Arms
 from service.operations.single import joint_count, single_jacobian, single_pose
 from service.problems import Problem
 from service.refusals import problem_at
+from service.routes.direct import KernelRoute
 from service.web.document import documented
 from service.wire import one_answer
+from service.wire.answers import FreshAnswer
 from service.wire.arms import ReadArm
 from service.wire.controller import (
     FORMATS,
@@ -27,6 +29,7 @@ from service.wire.controller import (
     PARAMETERS,
     Format,
     errors_inline,
+    joints_asked,
     single_question,
     wanted_format,
     wanted_row,
@@ -34,13 +37,13 @@ from service.wire.controller import (
 )
 from service.wire.controller_answers import FlatJacobian, FlatPose, JacobianReply, PoseReply
 from service.wire.one_answer import Stamp
-from service.wire.query import known_parameters
+from service.wire.query import known_ones, query_pairs
 from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
-from service.wire.single import SingleAnswer, SingleQuestion
+from service.wire.single import JointsAsked, SingleAnswer, SingleQuestion
 
-router = APIRouter()
+router = APIRouter(route_class=KernelRoute)
 _MEDIA = ("application/json", "text/plain", "text/csv")
-Ask = Callable[[Arms[ReadArm], SingleQuestion], SingleAnswer]
+Ask = Callable[[Arms[ReadArm], SingleQuestion, JointsAsked], SingleAnswer]
 
 
 @router.api_route(
@@ -90,38 +93,49 @@ async def jacobian(request: Request) -> Response:
 
 async def _answered(request: Request, ask: Ask, key: str) -> Response:
     # Read by hand before anything is refused, so that a refusal comes in the format asked for.
-    given = request.query_params.get("format")
+    pairs = query_pairs(request)
+    said = dict(pairs)
+    given = said.get("format")
     wanted: Format = given if given in FORMATS else "json"
-    inline = request.query_params.get("errors") == "inline"
+    inline = said.get("errors") == "inline"
     stamp: Stamp = {
         "seq": next(request.app.state.sequence),
-        "tag": _readable_tag(request),
+        "tag": _readable_tag(said),
         "t_ms": time_ns() // 1_000_000,
     }
     try:
-        content = await _content(request, ask, key, wanted, stamp)
+        content = await _content(request, ask, key, pairs, wanted, stamp)
     except (ServiceError, KinematicsError, ValidationError) as error:
         if wanted == "json" and not inline:
             raise
         problem = problem_at(request, error)
         content = await _refused(request, problem, wanted, key, stamp)
         return _response(content, 200 if inline else problem.status, problem.headers)
-    return _response(content)
+    return FreshAnswer(*content)
 
 
 async def _content(
-    request: Request, ask: Ask, key: str, wanted: Format, stamp: Stamp
+    request: Request,
+    ask: Ask,
+    key: str,
+    pairs: list[tuple[str, str]],
+    wanted: Format,
+    stamp: Stamp,
 ) -> one_answer.Content:
     of_poses = key == "poses"
-    parameters = known_parameters(request, PARAMETERS if of_poses else JACOBIAN_PARAMETERS)
+    parameters = known_ones(pairs, PARAMETERS if of_poses else JACOBIAN_PARAMETERS)
     wanted_tag(parameters)
     errors_inline(parameters)
     wanted_format(parameters)
     row = None if of_poses else wanted_row(parameters, wanted)
     asked = single_question(request.path_params["arm"], parameters, wanted)
+    joints = joints_asked(parameters, asked.scale)
     arms: Arms[ReadArm] = request.app.state.arms
     # One posture takes some tenths of a millisecond, handing it to a thread as long again.
-    answer = ask(arms, asked) if arms.answers_at_once else await run_in_threadpool(ask, arms, asked)
+    if arms.answers_at_once:
+        answer = ask(arms, asked, joints)
+    else:
+        answer = await run_in_threadpool(ask, arms, asked, joints)
     if wanted == "json":
         return one_answer.nested(answer, key, stamp, asked.scale)
     if of_poses:
@@ -130,15 +144,15 @@ async def _content(
 
 
 def _response(
-    content: one_answer.Content, status: int = 200, headers: Mapping[str, str] | None = None
+    content: one_answer.Content, status: int, headers: Mapping[str, str] | None
 ) -> Response:
     kept = {"Cache-Control": "no-store", **(headers or {})}
     return Response(content.body, status, headers=kept, media_type=content.media_type)
 
 
-def _readable_tag(request: Request) -> int:
+def _readable_tag(said: Mapping[str, str]) -> int:
     try:
-        return wanted_tag(request.query_params)
+        return wanted_tag(said)
     except ServiceError:
         return 0
 

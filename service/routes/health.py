@@ -11,11 +11,12 @@ from starlette.requests import Request
 from starlette.responses import PlainTextResponse, Response
 
 from service.metrics import MEDIA_TYPE, Metrics
+from service.routes.direct import DirectRoute
 from service.web.document import documented
 from service.wire.answers import json_answer
 from service.wire.query import known_parameters
 
-router = APIRouter()
+router = APIRouter(route_class=DirectRoute)
 _STATE = {
     "type": "object",
     "required": ["state"],

@@ -30,7 +30,7 @@ RESERVED = frozenset(
 )
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class ReadArm:
     """An arm read from a document: checked, with what was repaired, and its digests."""
 

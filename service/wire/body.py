@@ -6,7 +6,7 @@ Left out: what the JSON means (models check that) and tables of binary numbers.
 import asyncio
 import json
 import re
-from collections.abc import AsyncIterator, Sequence
+from collections.abc import Sequence
 from time import monotonic
 from typing import Any
 
@@ -57,8 +57,11 @@ async def read_bytes(request: Request, *media_types: str) -> bytes:
         _check_media_type(request.headers.get("content-type"), media_types)
     if length is not None and length > settings.body_limit:
         raise _too_large(settings.body_limit, length)
-    raw = bytearray()
-    async for chunk in _chunks(request, settings.body_timeout_s):
+    begun, stall_s = monotonic(), settings.body_timeout_s
+    raw, more = bytearray(), True
+    while more:
+        allowed = begun + stall_s + len(raw) / _SLOWEST_BYTES_PER_S - monotonic()
+        chunk, more = await _chunk(request, min(stall_s, allowed), len(raw))
         raw += chunk
         if len(raw) > settings.body_limit:
             raise _too_large(settings.body_limit, None)
@@ -95,17 +98,44 @@ def parse_json(raw: bytes) -> object:
     if not raw:
         raise Unparseable("the body is empty", way_out="send a JSON object")
     text = _text(raw)
-    twice: list[tuple[dict[str, Any], str]] = []
-
-    def object_of(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-        found = dict(pairs)
-        if len(found) != len(pairs):
-            twice.append((found, _first_repeated(pairs)))
-        return found
-
     try:
-        body: object = json.loads(text, object_pairs_hook=object_of)
-        if _SURROGATE.search(raw):
+        return _decoded(raw, text, _STRICT)
+    except _Twice:
+        # Where it is can only be told when the whole has been read.
+        twice: list[tuple[dict[str, Any], str]] = []
+
+        def object_of(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+            found = dict(pairs)
+            if len(found) != len(pairs):
+                twice.append((found, _first_repeated(pairs)))
+            return found
+
+        body = _decoded(raw, text, json.JSONDecoder(object_pairs_hook=object_of))
+        node, key = twice[0]
+        where = (*(_path_to(node, body) or ()), key)
+        raise DuplicateKey(
+            f'the key "{key}" stands twice in one object', where=where, way_out="leave one of them"
+        ) from None
+
+
+class _Twice(Exception):
+    """A key stands twice in one object."""
+
+
+def _object_of(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    found = dict(pairs)
+    if len(found) != len(pairs):
+        raise _Twice
+    return found
+
+
+_STRICT = json.JSONDecoder(object_pairs_hook=_object_of)
+
+
+def _decoded(raw: bytes, text: str, decoder: json.JSONDecoder) -> object:
+    try:
+        body: object = decoder.decode(text)
+        if b"\\u" in raw and _SURROGATE.search(raw):
             json.dumps(body, ensure_ascii=False).encode("utf-8")
     except json.JSONDecodeError as error:
         say = f"not JSON at line {error.lineno}, column {error.colno}: {error.msg}"
@@ -119,12 +149,6 @@ def parse_json(raw: bytes) -> object:
     except ValueError:
         # The interpreter refuses integers of more than some thousand digits.
         raise Unparseable("an integer has too many digits", way_out="write it as 1e99") from None
-    if twice:
-        node, key = twice[0]
-        where = (*(_path_to(node, body) or ()), key)
-        raise DuplicateKey(
-            f'the key "{key}" stands twice in one object', where=where, way_out="leave one of them"
-        )
     return body
 
 
@@ -157,22 +181,17 @@ def _too_large(limit: int, length: int | None) -> TooLarge:
     )
 
 
-async def _chunks(request: Request, stall_s: float) -> AsyncIterator[bytes]:
-    begun = monotonic()
-    received = 0
-    stream = request.stream()
-    while True:
-        allowed = begun + stall_s + received / _SLOWEST_BYTES_PER_S - monotonic()
-        try:
-            async with asyncio.timeout(min(stall_s, allowed)):
-                chunk = await anext(stream, None)
-        except TimeoutError:
-            say = f"the body stopped after {received} bytes"
-            raise RequestTimeout(say, way_out="send the request again") from None
-        if chunk is None:
-            return
-        received += len(chunk)
-        yield chunk
+async def _chunk(request: Request, allowed_s: float, received: int) -> tuple[bytes, bool]:
+    """Return what comes next of a body, and whether more will follow."""
+    try:
+        async with asyncio.timeout(allowed_s):
+            message = await request.receive()
+    except TimeoutError:
+        say = f"the body stopped after {received} bytes"
+        raise RequestTimeout(say, way_out="send the request again") from None
+    if message["type"] == "http.disconnect":
+        raise ClientDisconnect
+    return message.get("body", b""), message.get("more_body", False)
 
 
 def _text(raw: bytes) -> str:

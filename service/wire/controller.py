@@ -4,6 +4,7 @@ Left out: the answers' shapes (flat.py) and what they say (operations).
 """
 
 from collections.abc import Mapping
+from functools import lru_cache
 from typing import Literal
 
 from kinematics.orientation_forms import TRIPLES
@@ -12,14 +13,15 @@ from service.convert import UNITS
 from service.errors import FormNotFlat, MissingField, UnusableValue
 from service.wire import models
 from service.wire.poses import checked_form
-from service.wire.query import number, whole_number
-from service.wire.single import TOOL_PARAMETERS, SingleQuestion
+from service.wire.query import number, numbers, whole_number
+from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleQuestion
 
 Format = Literal["json", "flat", "txt", "csv"]
 FORMATS: tuple[Format, ...] = ("json", "flat", "txt", "csv")
 FLAT_FORM = "xyz-fixed"
 _NESTED_FORM = "quaternion-wxyz"
 _JOINT_PARAMETERS = tuple(f"q{joint}" for joint in range(1, MOST_ROWS + 1))
+_ONE_JOINT = frozenset(_JOINT_PARAMETERS)
 MOST_SCALE = 1_000_000
 PARAMETERS = frozenset(
     {
@@ -40,6 +42,11 @@ PARAMETERS = frozenset(
     }
 )
 JACOBIAN_PARAMETERS = PARAMETERS | {"row"}
+_VARYING = frozenset({"q", *_JOINT_PARAMETERS, "format", "tag", "errors", "row"})
+"""What differs from one question to the next, or is read before the question."""
+
+QUESTIONS_KEPT = 1024
+"""Questions in different words that are kept once read, some 500 bytes each."""
 
 
 def wanted_format(parameters: Mapping[str, str]) -> Format:
@@ -124,6 +131,51 @@ def single_question(
     ------
     ServiceError, KinematicsError : a parameter that cannot be used.
     """
+    said = tuple([item for item in parameters.items() if item[0] not in _VARYING])
+    return _question_in_words(arm, said, answer_format)
+
+
+def joints_asked(parameters: Mapping[str, str], scale: int | None) -> JointsAsked:
+    """Return the joint values of a query string.
+
+    Raises
+    ------
+    ServiceError : no numbers, in two places, or with a gap between them.
+    """
+    single: list[str] = []
+    if not _ONE_JOINT.isdisjoint(parameters):
+        single = [name for name in _JOINT_PARAMETERS if name in parameters]
+    if "q" in parameters:
+        if single:
+            raise UnusableValue(
+                f"joint values stand in q and in {single[0]}",
+                where=(single[0],),
+                location="query",
+                value=parameters[single[0]],
+                way_out="use q=0,-90,... or q1=0&q2=-90..., not both",
+            )
+        text = parameters["q"]
+        if scale is None:
+            values = numbers(text, "q")
+        else:
+            values = [_value(part, "q", scale) for part in text.split(",")] if text else []
+        return JointsAsked(values, ["q"] * len(values))
+    for place, name in enumerate(single, start=1):
+        if name != f"q{place}":
+            raise MissingField(
+                f"q{place} is missing before {name}",
+                where=(f"q{place}",),
+                location="query",
+                way_out=f"give q1 to {single[-1]} without a gap",
+            )
+    return JointsAsked([_value(parameters[name], name, scale) for name in single], single)
+
+
+@lru_cache(maxsize=QUESTIONS_KEPT)
+def _question_in_words(
+    arm: str, said: tuple[tuple[str, str], ...], answer_format: Format
+) -> SingleQuestion:
+    parameters = dict(said)
     form = checked_form(
         parameters.get("form", _NESTED_FORM if answer_format == "json" else FLAT_FORM)
     )
@@ -136,12 +188,9 @@ def single_question(
             way_out="use one of the 24 angle triples, e.g. xyz-fixed",
         )
     scale = _scale(parameters.get("scale"))
-    names, joints = _joints(parameters, scale)
     revision = parameters.get("revision")
     return SingleQuestion(
         arm=arm,
-        joints=joints,
-        joint_names=names,
         form=form,
         tool=parameters.get("tool"),
         tool_pose=_inline_tool(parameters, form, scale),
@@ -172,32 +221,6 @@ def _scale(text: str | None) -> int | None:
 def _value(text: str, name: str, scale: int | None) -> float:
     """Return a joint value or a tool's; beside a scale it is an integer, and in scaled units."""
     return number(text, name) if scale is None else whole_number(text, name) / scale
-
-
-def _joints(parameters: Mapping[str, str], scale: int | None) -> tuple[list[str], list[float]]:
-    """Return the joint values and the parameters that hold them."""
-    single = [name for name in _JOINT_PARAMETERS if name in parameters]
-    if "q" in parameters and single:
-        raise UnusableValue(
-            f"joint values stand in q and in {single[0]}",
-            where=(single[0],),
-            location="query",
-            value=parameters[single[0]],
-            way_out="use q=0,-90,... or q1=0&q2=-90..., not both",
-        )
-    if "q" in parameters:
-        text = parameters["q"]
-        joints = [_value(part, "q", scale) for part in text.split(",")] if text else []
-        return ["q"] * len(joints), joints
-    for place, name in enumerate(single, start=1):
-        if name != f"q{place}":
-            raise MissingField(
-                f"q{place} is missing before {name}",
-                where=(f"q{place}",),
-                location="query",
-                way_out=f"give q1 to {single[-1]} without a gap",
-            )
-    return single, [_value(parameters[name], name, scale) for name in single]
 
 
 def _inline_tool(parameters: Mapping[str, str], form: str, scale: int | None) -> models.Pose | None:

@@ -36,13 +36,12 @@ def flat_pose(
     """Return the pose of one posture as a flat answer."""
     orientation: Any = answer.item["orientation"]
     position: Any = answer.item["position"]
-    values = [*position, *orientation["values"]]
-    return (
-        _head(answer, seq, tag, t_ms)
-        | dict(zip(POSE_KEYS, values, strict=True))
-        | {"form": form}
-        | _tail(answer)
-    )
+    told = _head(answer, seq, tag, t_ms)
+    told["x"], told["y"], told["z"] = position
+    told["r1"], told["r2"], told["r3"] = orientation["values"]
+    told["form"] = form
+    told.update(_tail(answer))
+    return told
 
 
 def flat_jacobian(
@@ -154,7 +153,7 @@ def _head(answer: SingleAnswer, seq: int, tag: int, t_ms: int) -> dict[str, obje
     return {
         "ok": 1,
         "code": answer.item["code"],
-        "flags": sum(FLAGS[code] for code in answer.codes if code in FLAGS),
+        "flags": sum([FLAGS[code] for code in answer.codes if code in FLAGS]),
         "seq": seq,
         "tag": tag,
         "t_ms": t_ms,

@@ -4,6 +4,7 @@ Left out: the formats themselves (npy.py, csv_rows.py, csv_text.py, JSON in body
 """
 
 from collections.abc import Mapping, Sequence
+from functools import lru_cache
 from typing import Literal
 
 from starlette.requests import Request
@@ -83,8 +84,7 @@ def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -
     """
     text = parameters.get("format")
     if text is None:
-        weights = {name: _weight(accept, name) for name in (default, *FORMATS)}
-        return max(weights, key=lambda name: weights[name])
+        return _best_accepted(accept, default)
     for name in FORMATS:
         if text == name:
             return name
@@ -183,6 +183,12 @@ def form_for(wanted: Format, said: str | None, *, key: str, location: Location) 
             way_out=f"leave form out or say {QUATERNION}; format=csv has other forms",
         )
     return said or QUATERNION
+
+
+@lru_cache(maxsize=64)
+def _best_accepted(accept: str, default: Format) -> Format:
+    weights = {name: _weight(accept, name) for name in (default, *FORMATS)}
+    return max(weights, key=lambda name: weights[name])
 
 
 def _weight(accept: str, name: Format) -> float:

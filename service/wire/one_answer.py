@@ -36,7 +36,7 @@ def nested(answer: SingleAnswer, key: str, stamp: Stamp, scale: int | None) -> C
     head, item = answer.head, answer.item
     if scale is not None:
         head, item = scaled(head, scale), scaled(item, scale)
-    told = {"ok": True, "code": answer.item["code"], **stamp} | head | {key: [item]}
+    told = {"ok": True, "code": answer.item["code"], **stamp, **head, key: [item]}
     return Content(json_bytes(told), _JSON)
 
 

@@ -5,7 +5,8 @@ import numpy as np
 from kinematics.errors import InvalidOrientation, KinematicsError
 from kinematics.findings import Finding
 from kinematics.number_checks import checked_numbers
-from kinematics.orientation_forms import checked_rotation, lock_finding, shape_of
+from kinematics.orientation_forms import lock_finding, shape_of
+from kinematics.orientation_input import checked_rotation
 from kinematics.table import FloatArray
 from kinematics.transforms import checked_pose, checked_position, pose
 from service.convert import Units, orientation_in, orientation_out
@@ -56,7 +57,7 @@ def pose_answer(x_in_y: FloatArray, form: str, units: Units) -> dict[str, object
         "position": units.length_out(x_in_y[:3, 3]).tolist(),
         "orientation": {
             "form": form,
-            "values": orientation_out(units, form, x_in_y[:3, :3]).tolist(),
+            "values": orientation_out(units, form, x_in_y[None])[0][0].tolist(),
         },
     }
 

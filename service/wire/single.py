@@ -3,8 +3,9 @@
 Left out: query strings (controller.py), flat answers (flat.py), and the answering (operations).
 """
 
-from collections.abc import Sequence
-from dataclasses import dataclass, field
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import NamedTuple
 
 from service.wire import models
 
@@ -12,17 +13,15 @@ TOOL_PARAMETERS = ("tx", "ty", "tz", "tr1", "tr2", "tr3")
 """Position and orientation of a tool that is given by the question itself."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class SingleQuestion:
-    """What a controller asks: one posture, in its own words.
+    """What a controller asks about one posture, in its own words; all but the joint values.
 
-    ``joint_names`` are the parameters the joint values came in, for errors to point at. All
-    values are divided by ``scale`` already; the answer's numbers are still to be multiplied.
+    Controllers ask the same again and again. The same words give the same object, so that what
+    follows from it can be kept. Numbers of the answer are still to be multiplied by ``scale``.
     """
 
     arm: str
-    joints: Sequence[float]
-    joint_names: Sequence[str]
     form: str
     tool: str | None = None
     tool_pose: models.Pose | None = None
@@ -34,8 +33,14 @@ class SingleQuestion:
     scale: int | None = None
 
 
-@dataclass(frozen=True)
-class SingleAnswer:
+class JointsAsked(NamedTuple):
+    """Joint values, divided by the scale, and the parameters they came in, for errors to name."""
+
+    values: list[float]
+    names: list[str]
+
+
+class SingleAnswer(NamedTuple):
     """The answer, with what a flat line shows beside it.
 
     Attributes
@@ -45,9 +50,9 @@ class SingleAnswer:
     margin : smallest share of travel left; infinite without travel limits.
     """
 
-    head: dict[str, object]
+    head: Mapping[str, object]
     item: dict[str, object]
     margin: float
     tool_number: int
     frame_number: int
-    codes: frozenset[int] = field(default=frozenset())
+    codes: frozenset[int] = frozenset()
