@@ -8,13 +8,13 @@ from kinematics.errors import InvalidOrientation, KinematicsError, NotFinite, No
 from kinematics.orientation_forms import (
     FORMS,
     TRIPLES,
-    checked_rotation,
     distance_from_lock,
     lock_finding,
     rotation_from,
     shape_of,
     values_of,
 )
+from kinematics.orientation_input import checked_rotation
 from kinematics.rigidity import defect
 from kinematics.rotations import rotation_about
 from kinematics.tolerances import LOCK_NOTICE, QUATERNION_SILENT

@@ -156,7 +156,7 @@ def test_spare_joints_keep_an_aligned_wrist_regular() -> None:
     """Seven joints: axes 5 and 7 fall together at q6 = 0, and no rank is lost."""
     arm = arm_of(*SEVEN)
     joint_values = np.array([0.2, 0.6, -0.4, 1.3, 0.7, 0.0, 0.1])
-    walked = motion_of(arm, joint_values, AT_FLANGE).walk
+    walked = motion_of(arm, joint_values, AT_FLANGE)
     np.testing.assert_allclose(np.cross(*walked.axis_direction[[4, 6]]), 0.0, rtol=0, atol=1e-15)
     space, judgement = judged(arm, joint_values)
     assert int(judgement.state) == REGULAR
@@ -188,7 +188,7 @@ def test_a_track_frees_an_arm_from_its_shoulder_singularity() -> None:
     states = []
     for first in (0.0, QUARTER):
         joint_values = np.concatenate([[0.1, first], others])
-        lost_by_six = motion_of(on_track, joint_values, AT_FLANGE).walk.axis_direction[2]
+        lost_by_six = motion_of(on_track, joint_values, AT_FLANGE).axis_direction[2]
         along_track = abs(lost_by_six[2])
         space, judgement = judged(on_track, joint_values)
         states.append((round(float(along_track), 12), int(judgement.state)))

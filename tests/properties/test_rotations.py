@@ -7,11 +7,11 @@ from hypothesis import strategies as st
 from kinematics.orientation_forms import (
     FORMS,
     TRIPLES,
-    checked_rotation,
     distance_from_lock,
     rotation_from,
     values_of,
 )
+from kinematics.orientation_input import checked_rotation
 from kinematics.rigidity import defect, nearest_rotation
 from kinematics.rotations import angle_of, rotation_about, rotation_vector_of
 from kinematics.tolerances import LOCK_EXACT

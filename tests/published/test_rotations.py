@@ -8,7 +8,8 @@ import numpy as np
 import pytest
 
 from kinematics.errors import InvalidOrientation, NotRigid
-from kinematics.orientation_forms import checked_rotation, lock_finding, rotation_from, values_of
+from kinematics.orientation_forms import lock_finding, rotation_from, values_of
+from kinematics.orientation_input import checked_rotation
 from kinematics.rigidity import defect, nearest_rotation
 from kinematics.rotations import angle_of, rotation_about
 from kinematics.tolerances import RIGID_SILENT

@@ -208,9 +208,9 @@ def out_from(row: int, axis_row: int | None = None) -> Lines:
     """The line from a row's axis to the tool point; seen along an axis where one is given."""
 
     def line(motion: Motion) -> np.ndarray:
-        out = motion.tool_in_base[:3, 3] - motion.walk.axis_point[row]
+        out = motion.tool_in_base[:3, 3] - motion.axis_point[row]
         if axis_row is not None:
-            axis = motion.walk.axis_direction[axis_row]
+            axis = motion.axis_direction[axis_row]
             out = out - axis * (axis @ out)
         return out[None]
 
@@ -218,11 +218,11 @@ def out_from(row: int, axis_row: int | None = None) -> Lines:
 
 
 def along_axes(*rows: int) -> Lines:
-    return lambda motion: motion.walk.axis_direction[list(rows)]
+    return lambda motion: motion.axis_direction[list(rows)]
 
 
 def across(first: int, second: int) -> Lines:
-    return lambda motion: np.cross(*motion.walk.axis_direction[[first, second]])[None]
+    return lambda motion: np.cross(*motion.axis_direction[[first, second]])[None]
 
 
 # The texts of the cases as lines of the arm, rows from 0: (text, moves or turns, lines).

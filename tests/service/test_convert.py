@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from kinematics.arm import Arm
 from kinematics.findings import Finding
 from kinematics.table import Convention, JointKind, Row, Table
+from kinematics.transforms import pose
 from service.convert import (
     UNITS,
     finding_out,
@@ -18,6 +19,7 @@ from service.convert import (
     joint_values_out,
     orientation_in,
     orientation_out,
+    orientation_values_out,
     twists_in,
     twists_out,
 )
@@ -104,11 +106,21 @@ def test_a_jacobian_takes_joint_speeds_to_twists(units: object) -> None:
 
 def test_only_angles_of_an_orientation_have_a_unit() -> None:
     turned = np.array([[0.0, -1.0, 0.0], [1.0, 0.0, 0.0], [0.0, 0.0, 1.0]])
-    np.testing.assert_allclose(orientation_out(MM, "zyx-current", turned), [90, 0, 0], atol=1e-13)
-    np.testing.assert_allclose(orientation_out(MM, "rotation-vector", turned), [0, 0, 90])
-    np.testing.assert_array_equal(orientation_out(MM, "matrix", turned), turned)
     half = math.sqrt(0.5)
-    np.testing.assert_allclose(orientation_out(MM, "quaternion-wxyz", turned), [half, 0, 0, half])
+    cases: list[tuple[str, list[float] | np.ndarray, float]] = [
+        ("zyx-current", [90, 0, 0], math.pi / 2),
+        ("zyz-fixed", [90, 0, 0], 0.0),
+        ("rotation-vector", [0, 0, 90], math.inf),
+        ("matrix", turned, math.inf),
+        ("quaternion-wxyz", [half, 0, 0, half], math.inf),
+    ]
+    for form, values, distance in cases:
+        (found,), (from_lock,) = orientation_out(MM, form, pose(turned, [1.0, 2.0, 3.0])[None])
+        np.testing.assert_allclose(found, values, atol=1e-13)
+        assert from_lock == pytest.approx(distance)
+        # One orientation as plain numbers says the same.
+        (radians,), _ = orientation_out(UNITS["m-rad"], form, pose(turned, [0.0] * 3)[None])
+        assert orientation_values_out(MM, form, radians.tolist()) == found.tolist()
     for form, given_values, si in [
         ("xyz-fixed", [180.0, 0.0, 90.0], [math.pi, 0.0, math.pi / 2]),
         ("rotation-vector", [0.0, 180.0, 0.0], [0.0, math.pi, 0.0]),

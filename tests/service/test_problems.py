@@ -123,8 +123,12 @@ def statuses_said(path: Path) -> Iterator[tuple[str, int]]:
 def statuses_set(handler: ast.ExceptHandler) -> Iterator[int]:
     for node in ast.walk(handler):
         if isinstance(node, ast.Assign) and isinstance(node.targets[0], ast.Tuple):
-            assert isinstance(node.value, ast.Tuple)
-            pairs = list(zip(node.targets[0].elts, node.value.elts, strict=True))
+            targets = node.targets[0].elts
+            # Whole values taken apart set no status that could be read here.
+            whole = not isinstance(node.value, ast.Tuple)
+            assert not (whole and any("status" in ast.unparse(target) for target in targets))
+            values = [] if whole else node.value.elts  # type: ignore[attr-defined]
+            pairs = list(zip(targets, values, strict=not whole))
         elif isinstance(node, ast.Assign):
             pairs = [(node.targets[0], node.value)]
         else:

@@ -2,6 +2,7 @@
 
 import errno
 import os
+import shutil
 import subprocess
 import sys
 from collections.abc import Callable
@@ -11,6 +12,7 @@ import numpy as np
 import pytest
 from numba.core.caching import FunctionCache
 
+import kinematics
 from kinematics.kernels.compiler import compiled, for_kernel
 
 
@@ -87,3 +89,41 @@ def test_every_layout_becomes_the_one_kernels_know(values: np.ndarray) -> None:
 def test_the_right_layout_is_not_copied() -> None:
     values = np.arange(6.0).reshape(2, 3)
     assert for_kernel(values) is values
+
+
+ONE_TURN = """
+import numpy as np
+from kinematics.kernels.sine_cosine import sine_cosine
+work = np.zeros(8)
+sine_cosine(work, 1, 1.0, 0.0)
+print(int(np.flatnonzero(work == 1.0)[0]), sum(sine_cosine.stats.cache_hits.values()))
+"""
+
+
+def test_what_is_kept_is_made_anew_when_another_module_s_constants_change(tmp_path: Path) -> None:
+    """The machine code of one module holds the constants of others, which no file's age shows."""
+    kernels = Path(kinematics.__file__).parent
+    copy = tmp_path / "kinematics"
+    shutil.copytree(kernels, copy, ignore=shutil.ignore_patterns("__pycache__"))
+    workspace = copy / "kernels" / "workspace.py"
+    text = workspace.read_text(encoding="utf-8")
+    assert "\nCOSINE = 0\n" in text
+    found = []
+    for place in (0, 0, 2, 0):
+        changed = text.replace("\nCOSINE = 0\n", f"\nCOSINE = {place}\n")
+        workspace.write_text(changed.replace("BLOCK = 128", "BLOCK = 4"), encoding="utf-8")
+        # As an archive leaves it: unpacked later, and no younger.
+        os.utime(workspace, (1e9, 1e9))
+        done = subprocess.run(
+            [sys.executable, "-B", "-c", ONE_TURN],
+            env=os.environ | {"NUMBA_CACHE_DIR": str(tmp_path / "cache")},
+            cwd=tmp_path,
+            capture_output=True,
+            text=True,
+            timeout=120,
+            check=False,
+        )
+        assert done.returncode == 0, done.stderr
+        found.append(done.stdout.split())
+    assert [place for place, _ in found] == ["0", "0", "2", "0"]
+    assert found[1][1] == "1"

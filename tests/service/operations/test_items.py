@@ -15,7 +15,7 @@ from service.convert import UNITS
 from service.operations.arms import Arms
 from service.operations.jacobians import Wanted, jacobian_items
 from service.operations.joint_rows import JointRows, read_joint_rows
-from service.operations.poses import answered, head_of, pose_items, with_refused
+from service.operations.poses import answered, pose_item, pose_items, with_refused
 from service.operations.questions import Question, question_of
 from service.operations.singularities import judged
 from service.wire import models
@@ -47,7 +47,7 @@ def test_the_highest_code_stands_at_the_head() -> None:
 
 
 def test_the_head(arms: Arms[ReadArm]) -> None:
-    head = head_of(asked(arms, units="in-deg", tool="pen", frame="tray"))
+    head = asked(arms, units="in-deg", tool="pen", frame="tray").head
     assert (head["units"], head["tool"], head["frame"]) == ("in-deg", "pen", "tray")
 
 
@@ -72,11 +72,12 @@ def test_refused_items_stand_in_their_places(arms: Arms[ReadArm]) -> None:
 def test_what_a_pose_holds(arms: Arms[ReadArm], singularity: bool, links: bool) -> None:
     question = asked(arms)
     rows = rows_of(question, [0, 90], [10, 80])
-    items = pose_items(question, rows, singularity=singularity, links=links)
+    items, margins = pose_items(question, rows, singularity=singularity, links=links)
     wanted = ["ok", "code", "position", "orientation"]
     wanted += ["singularity"] * singularity + ["links"] * links + ["findings"]
     assert [list(item) for item in items] == [wanted, wanted]
     assert items[0]["position"] == pytest.approx([400, 300, 0])
+    assert margins == pytest.approx([80 / 340, 90 / 340])
 
 
 @pytest.mark.parametrize("frame", ["base", "world", "tray", "flange", "tool"])
@@ -85,21 +86,26 @@ def test_one_by_one_as_together(arms: Arms[ReadArm], frame: str) -> None:
     joints = [[0, 90], [0, 0], [171, 20], ["x", 1], [-30, 1e-3]]
     wanted = Wanted(np.ones((4, 2)), np.ones((4, 6)), np.ones((4, 6)))
     rows = rows_of(question, *joints)
-    together = jacobian_items(question, rows, wanted, singularity=True)
+    together, margins = jacobian_items(question, rows, wanted, singularity=True)
     place = 0
     for index, joint_values in enumerate(joints):
         if index == 3:
             assert together[index]["ok"] is False
             continue
         one = wanted.piece(place, place + 1)
-        (alone,) = jacobian_items(question, rows_of(question, joint_values), one, singularity=True)
-        assert alone == together[index]
+        row = rows_of(question, joint_values)
+        alone = jacobian_items(question, row, one, singularity=True)
+        assert alone == ([together[index]], [margins[place]])
         place += 1
     if frame in ("base", "world", "tray"):
-        poses = pose_items(question, rows, singularity=True, links=True)
-        for index in (0, 1, 2, 4):
-            row = rows_of(question, joints[index])
-            assert pose_items(question, row, singularity=True, links=True) == [poses[index]]
+        for links in (True, False):
+            poses, margins = pose_items(question, rows, singularity=True, links=links)
+            for place, index in enumerate((0, 1, 2, 4)):
+                row = rows_of(question, joints[index])
+                expected = [poses[index]], [margins[place]]
+                assert pose_items(question, row, singularity=True, links=links) == expected
+                if not links:
+                    assert pose_item(question, row.values[0].tolist()) == expected
 
 
 def test_what_is_wanted_in_pieces() -> None:
@@ -155,7 +161,11 @@ def test_a_singular_posture_has_no_condition_number(arms: Arms[ReadArm]) -> None
 
 def test_an_arm_without_joints_is_not_judged(arms: Arms[ReadArm], document: dict[str, Any]) -> None:
     question = asked(arms, arm={**document, "rows": []})
-    (item,) = pose_items(question, rows_of(question, []), singularity=True, links=False)
-    assert item["singularity"] is None
+    for found in (
+        pose_items(question, rows_of(question, []), singularity=True, links=False),
+        pose_item(question, []),
+    ):
+        assert found.items[0]["singularity"] is None
+        assert found.margins == [math.inf]
     motion = motion_of(question.arm, np.empty((1, 0)), np.eye(4))
     assert judged(question, np.empty((1, 0)), motion) is None

@@ -141,7 +141,7 @@ def test_what_is_judged_by_is_prepared_once_per_arm_tool_and_task(
     arms: Arms[ReadArm], document: dict[str, Any]
 ) -> None:
     def prepared(arm: Any, **more: Any) -> Any:
-        return question_of(arms, asked(arm, **more), "matrix").prepared()
+        return question_of(arms, asked(arm, **more), "matrix").prepared
 
     first = prepared("two-turns")
     assert prepared(document) is first

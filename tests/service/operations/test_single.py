@@ -12,18 +12,21 @@ from service.operations.single import joint_count, single_jacobian, single_pose
 from service.storage.ports import Head
 from service.wire import models
 from service.wire.arms import ReadArm
-from service.wire.single import SingleAnswer, SingleQuestion
+from service.wire.single import JointsAsked, SingleAnswer, SingleQuestion
 
 EACH = pytest.mark.parametrize("ask", [single_pose, single_jacobian])
 
 
-def question(joints: Any = (0, 90), arm: str = "two-turns", **more: Any) -> SingleQuestion:
+def question(
+    joints: Any = (0, 90), arm: str = "two-turns", **more: Any
+) -> tuple[SingleQuestion, JointsAsked]:
     names = more.pop("joint_names", ["q"] * len(joints))
-    return SingleQuestion(arm, list(joints), names, **{"form": "zyx-current", **more})
+    asked = SingleQuestion(arm, **{"form": "zyx-current", **more})
+    return asked, JointsAsked(list(joints), names)
 
 
 def pose(arms: Arms[ReadArm], *given: Any, **more: Any) -> SingleAnswer:
-    return single_pose(arms, question(*given, **more))
+    return single_pose(arms, *question(*given, **more))
 
 
 def test_a_pose(arms: Arms[ReadArm]) -> None:
@@ -35,7 +38,7 @@ def test_a_pose(arms: Arms[ReadArm]) -> None:
 
 
 def test_a_jacobian(arms: Arms[ReadArm]) -> None:
-    answer = single_jacobian(arms, question((0, math.pi / 2), units="m-rad"))
+    answer = single_jacobian(arms, *question((0, math.pi / 2), units="m-rad"))
     matrix: Any = answer.item["matrix"]
     assert matrix[0] == pytest.approx([-0.3, -0.3])
     assert answer.head["units"] == "m-rad"
@@ -78,9 +81,9 @@ def test_no_travel_no_margin(arms: Arms[ReadArm], document: dict[str, Any]) -> N
 @EACH
 def test_what_is_expected(arms: Arms[ReadArm], ask: Any) -> None:
     digest = arms.get("two-turns").record.digest
-    assert ask(arms, question(expect=digest)).head["arm"]["digest"] == digest
+    assert ask(arms, *question(expect=digest)).head["arm"]["digest"] == digest
     with pytest.raises(DigestDiffers) as caught:
-        ask(arms, question(expect="00000000"))
+        ask(arms, *question(expect="00000000"))
     assert (caught.value.where, caught.value.location) == (("expect",), "query")
     assert digest in caught.value.say
 
@@ -88,13 +91,13 @@ def test_what_is_expected(arms: Arms[ReadArm], ask: Any) -> None:
 @EACH
 def test_a_revision(arms: Arms[ReadArm], document: dict[str, Any], ask: Any) -> None:
     arms.replace("two-turns", {**document, "title": "Again"}, Head.ANY)
-    assert ask(arms, question()).head["arm"]["revision"] == 2
-    assert ask(arms, question(revision=1)).head["arm"]["revision"] == 1
+    assert ask(arms, *question()).head["arm"]["revision"] == 2
+    assert ask(arms, *question(revision=1)).head["arm"]["revision"] == 1
     with pytest.raises(UnknownRevision) as caught:
-        ask(arms, question(revision=3))
+        ask(arms, *question(revision=3))
     assert (caught.value.where, caught.value.location) == (("revision",), "query")
     with pytest.raises(UnknownArm) as unknown:
-        ask(arms, question(arm="three-turns", revision=1))
+        ask(arms, *question(arm="three-turns", revision=1))
     assert unknown.value.location == "path"
 
 
@@ -112,7 +115,7 @@ def test_joint_values_lead_back_to_their_parameter(
     arms: Arms[ReadArm], ask: Any, joints: Any, names: Any, code: str, where: str, value: float
 ) -> None:
     with pytest.raises(ServiceError) as caught:
-        ask(arms, question(joints, joint_names=names))
+        ask(arms, *question(joints, joint_names=names))
     (detail,) = caught.value.details()
     assert (detail.code, detail.where, detail.location) == (code, (where,), "query")
     assert detail.value == value
@@ -132,7 +135,7 @@ def test_an_inline_tool_leads_back_to_its_parameter(
         orientation=models.Orientation(form="xyz-fixed", values=values[3:]),
     )
     with pytest.raises(KinematicsError) as caught:
-        ask(arms, question(tool_pose=tool))
+        ask(arms, *question(tool_pose=tool))
     assert (caught.value.code, caught.value.where) == ("out-of-range", (name,))
     assert caught.value.value == 1e15
 
@@ -141,7 +144,7 @@ def test_an_inline_tool_leads_back_to_its_parameter(
 @pytest.mark.parametrize("task", ["drill", ["vx", "q"], ["vx", "vx"], []])
 def test_a_task_leads_back_to_its_parameter(arms: Arms[ReadArm], ask: Any, task: Any) -> None:
     with pytest.raises(KinematicsError) as caught:
-        ask(arms, question(task=task))
+        ask(arms, *question(task=task))
     assert caught.value.where == ("task",)
 
 

@@ -1,11 +1,13 @@
 """The state of the store changes with every write, by this process or another, and never else."""
 
+import time
 from pathlib import Path
 from types import SimpleNamespace
 
 import pytest
 
 from service.operations.arms import Arms
+from service.operations.heads import LOOKED_FOR_S
 from service.storage.opening import open_storage
 from service.wire.arms import read_arm
 
@@ -17,7 +19,7 @@ ARM = {
 }
 
 
-def test_what_another_process_writes_is_seen_at_the_next_question(
+def test_what_another_process_writes_is_seen_once_the_last_look_has_aged(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     settings = SimpleNamespace(database=str(tmp_path / "arms.db"))
@@ -36,6 +38,7 @@ def test_what_another_process_writes_is_seen_at_the_next_question(
         assert here.storage.state() == settled
         theirs.replace("one", ARM | {"title": "moved"}, [f"1-{ours.get('one').record.digest}"])
         assert here.storage.state() != settled
+        time.sleep(LOOKED_FOR_S)
         assert ours.get("one").record.revision == 2
     finally:
         here.close()

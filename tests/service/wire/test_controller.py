@@ -10,19 +10,30 @@ from service.wire.controller import (
     JACOBIAN_PARAMETERS,
     PARAMETERS,
     errors_inline,
+    joints_asked,
     single_question,
     wanted_format,
     wanted_row,
     wanted_tag,
 )
 from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
-from service.wire.single import SingleQuestion
+from service.wire.single import JointsAsked, SingleQuestion
 
 ALL_NAMES = [f"q{n}" for n in range(1, 33)]
 
 
+def whole(flat: bool, parameters: dict[str, str]) -> tuple[SingleQuestion, JointsAsked]:
+    """Return all that the handler reads, in its order."""
+    question = single_question("one-turn", parameters, "flat" if flat else "json")
+    return question, joints_asked(parameters, question.scale)
+
+
 def asked(flat: bool = False, **parameters: str) -> SingleQuestion:
-    return single_question("one-turn", parameters, "flat" if flat else "json")
+    return whole(flat, parameters)[0]
+
+
+def joints_of(**parameters: str) -> JointsAsked:
+    return whole(False, parameters)[1]
 
 
 def refusal(kind: type[ServiceError], flat: bool = False, **parameters: str) -> ServiceError:
@@ -34,7 +45,8 @@ def refusal(kind: type[ServiceError], flat: bool = False, **parameters: str) -> 
 
 def test_the_least_question() -> None:
     question = asked(q="1,2")
-    assert (question.arm, question.joints, question.joint_names) == ("one-turn", [1, 2], ["q", "q"])
+    assert question.arm == "one-turn"
+    assert joints_of(q="1,2") == ([1, 2], ["q", "q"])
     assert question.form == "quaternion-wxyz"
     assert asked(True, q="1").form == "xyz-fixed"
     rest = ("tool", "tool_pose", "frame", "units", "revision", "expect", "task")
@@ -64,9 +76,7 @@ def test_a_whole_question() -> None:
     ],
 )
 def test_joint_values(parameters: dict[str, str], joints: list[float], names: list[str]) -> None:
-    question = asked(**parameters)
-    assert question.joints == joints
-    assert question.joint_names == names
+    assert joints_of(**parameters) == (joints, names)
 
 
 def test_joint_values_that_cannot_be_told() -> None:
@@ -136,13 +146,14 @@ def test_a_row() -> None:
 
 def test_a_scale_divides_what_comes_in() -> None:
     scaled = asked(q="900,-1505", tx="25", tr3="-7", scale="100")
-    assert (scaled.scale, list(scaled.joints)) == (100, [9.0, -15.05])
+    assert scaled.scale == 100
+    assert joints_of(q="900,-1505", scale="100").values == [9.0, -15.05]
     pose = scaled.tool_pose
     assert pose is not None
     assert pose.position == [0.25, 0, 0]
     assert pose.orientation is not None
     assert pose.orientation.values == [0, 0, -0.07]
-    assert asked(q1="+12", q2=" 012", scale="10").joints == [1.2, 1.2]
+    assert joints_of(q1="+12", q2=" 012", scale="10").values == [1.2, 1.2]
     assert asked(q="1").scale is None
     for wrong in ("1.0", "1e2", "", "x", "1,5"):
         assert refusal(Unparseable, q1=wrong, scale="10").where == ("q1",)

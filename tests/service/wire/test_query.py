@@ -1,11 +1,17 @@
 """Parameters as controllers print them."""
 
+import math
+import time
+from urllib.parse import parse_qsl, quote_plus
+
 import pytest
+from hypothesis import example, given, settings
+from hypothesis import strategies as st
 from starlette.requests import Request
 
 from service.errors import ServiceError
 from service.problems import problem_of
-from service.wire.query import known_parameters, number, whole_number
+from service.wire.query import known_parameters, number, numbers, query_pairs, whole_number
 
 
 def asked(query: str) -> Request:
@@ -108,3 +114,100 @@ def test_a_repeated_parameter_alone_is_an_unusable_value() -> None:
 
 def test_an_empty_value_is_a_parameter() -> None:
     assert known_parameters(asked("tag=&q"), {"tag", "q"}) == {"tag": "", "q": ""}
+
+
+# --- pairs ---------------------------------------------------------------------------------
+
+many = settings(max_examples=400, deadline=None, derandomize=True, database=None)
+AWKWARD = st.text(st.sampled_from("aq1=&;%+.,-/? 2fFé€\x00\n\x7f"), max_size=40)
+WRITTEN = st.lists(st.tuples(st.text(max_size=6), st.text(max_size=6)), max_size=5).map(
+    lambda pairs: "&".join(f"{quote_plus(name)}={quote_plus(text)}" for name, text in pairs)
+)
+
+
+@many
+@example(b"")
+@example(b"q=1,2&form")
+@example(b"&&a==b&=c&=&a")
+@example(b"q=%2B1&q=+1&%zz=%e2%82&=%00")
+@example("q=é".encode("latin-1"))
+@given(raw=st.one_of(st.binary(max_size=40), AWKWARD.map(str.encode), WRITTEN.map(str.encode)))
+def test_pairs_are_read_as_the_standard_library_reads_them(raw: bytes) -> None:
+    request = Request({"type": "http", "query_string": raw, "headers": []})
+    assert query_pairs(request) == parse_qsl(raw.decode("latin-1"), keep_blank_values=True)
+    assert query_pairs(request) == request.query_params.multi_items()
+
+
+# --- several numbers in one parameter ------------------------------------------------------
+
+PIECES = st.one_of(
+    st.floats().map(repr),
+    st.integers(-(10**400), 10**400).map(str),
+    st.from_regex(
+        r"[+ -]?([0-9]{1,3}\.?[0-9]{0,3}|\.[0-9]{1,3})([eE][+ -]?[0-9]{1,4})?", fullmatch=True
+    ),
+    st.text(st.sampled_from("+-.eE 0123456789infaINF_\n\u0663"), max_size=8),
+    st.just(""),
+)
+
+
+def outcome(texts: list[str]) -> list[float] | tuple[object, ...]:
+    """Return what the pieces say, one by one; or the refusal of the first that says nothing."""
+    try:
+        return [number(text, "q") for text in texts]
+    except ServiceError as error:
+        return told(error)
+
+
+def told(error: ServiceError) -> tuple[object, ...]:
+    (detail,) = error.details()
+    return (type(error), *(getattr(detail, part) for part in ("code", "say", "where", "location")),
+            detail.value, detail.way_out)  # fmt: skip
+
+
+@many
+@example(["1", "2.5", ".5", "5.", "1e-3", "+1E+2", "-0"])
+@example(["1", " 2", "1e 3"])
+@example(["1e999", "x"])
+@example(["1", "1e999"])
+@example(["1", ""])
+@example(["1", "nan"])
+@example(["1\n"])
+@given(texts=st.lists(PIECES, min_size=1, max_size=6))
+def test_several_numbers_are_read_piece_by_piece(texts: list[str]) -> None:
+    whole = ",".join(texts)
+    if not whole:
+        assert numbers(whole, "q") == []
+        return
+    expected = outcome(texts)
+    if isinstance(expected, tuple):
+        with pytest.raises(ServiceError) as caught:
+            numbers(whole, "q")
+        assert told(caught.value) == expected
+    else:
+        found = numbers(whole, "q")
+        assert found == expected
+        assert [math.copysign(1, value) for value in found] == [
+            math.copysign(1, value) for value in expected
+        ]
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        ",".join(["1234567890"] * 32) + ",x",
+        ",".join(["12345.67890e+10"] * 32) + ",",
+        "1" * 60_000 + "x",
+        "1" * 60_000,
+        ",".join(["1"] * 30_000) + ",x",
+        "." + "1" * 60_000 + "e",
+    ],
+    ids=lambda text: f"{text[:12]}...{text[-3:]}",
+)
+def test_what_is_no_number_is_told_at_once(text: str) -> None:
+    """However long it is, and however many ways there are to cut it: a query is not a trap."""
+    started = time.process_time()
+    with pytest.raises(ServiceError):
+        numbers(text, "q")
+    # Some milliseconds; a pattern that tries every cut takes minutes or ages.
+    assert time.process_time() - started < 1.0
