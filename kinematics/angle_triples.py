@@ -3,11 +3,14 @@
 Left out: names such as ``zyx-current`` and the finding at gimbal lock (orientation_forms).
 """
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from kinematics.kernels.angle_triples import angles_of_rotations
+from kinematics.kernels.compiler import for_kernel
 from kinematics.number_checks import FloatArray
 from kinematics.rotations import elementary_rotation
 from kinematics.tolerances import HALF_TURN_NOISE, LOCK_EXACT
@@ -107,29 +110,20 @@ def angles_of(order: AxisOrder, rotation: ArrayLike) -> FloatArray:
     """
     rotations = np.asarray(rotation, dtype=np.float64)
     i, j, k, parity = _axes_and_parity(order)
-    across_j, across_k, along = _innermost_axis(order, rotations)
-    across = np.hypot(across_j, across_k)
-    locked = np.arctan2(across, np.abs(along)) <= LOCK_EXACT
-
-    if order.first_is_last:
-        outer = np.arctan2(across_j, -parity * across_k)
-        middle = np.arctan2(np.where(locked, 0.0, across), along)
-    else:
-        outer = np.arctan2(-parity * across_j, across_k)
-        middle = np.arctan2(parity * along, np.where(locked, 0.0, across))
-    outer = np.where(locked, 0.0, outer)
-
-    cosine, sine = np.cos(outer)[..., None], parity * np.sin(outer)[..., None]
-    rest_j = cosine * rotations[..., j, :] + sine * rotations[..., k, :]
-    beside = -parity * rest_j[..., k] if order.first_is_last else parity * rest_j[..., i]
-    inner = np.arctan2(beside, rest_j[..., j])
-
+    batch = rotations.shape[:-2]
+    each = for_kernel(rotations).reshape(math.prod(batch), 3, 3)
+    angles, locked = np.empty((len(each), 3)), np.empty(len(each))
+    angles_of_rotations(each, i, j, k, parity, order.first_is_last, LOCK_EXACT, angles, locked)
+    outer, inner = angles[:, 0].copy(), angles[:, 2].copy()
     if order.about_fixed:
         first, last = inner, outer
     else:  # at lock the inner angle holds what is determined; hand it to the first
-        first = np.where(locked, np.where(along > 0.0, inner, -inner), outer)
-        last = np.where(locked, 0.0, inner)
-    return np.stack([_folded(first), middle + 0.0, _folded(last)], axis=-1)
+        first = np.where(locked != 0.0, locked * inner, outer)
+        last = np.where(locked != 0.0, 0.0, inner)
+    angles[:, 0], angles[:, 2] = _folded(first), _folded(last)
+    angles += 0.0  # -0.0 becomes 0.0
+    _spoil(angles, each)
+    return angles.reshape(*batch, 3)
 
 
 def distance_from_gimbal_lock(order: AxisOrder, rotation: ArrayLike) -> FloatArray:
@@ -195,6 +189,14 @@ def _innermost_axis(
     i, j, k, _ = _axes_and_parity(order)
     innermost = order.as_current[2]
     return rotations[..., j, innermost], rotations[..., k, innermost], rotations[..., i, innermost]
+
+
+def _spoil(found: FloatArray, given: FloatArray) -> None:
+    """Make NaN what was found for rows that are not finite, which compiled code takes amiss."""
+    with np.errstate(invalid="ignore", over="ignore"):
+        suspect = not np.isfinite(given.sum())
+    if suspect:
+        found[~np.isfinite(given.reshape(len(given), -1)).all(axis=1)] = np.nan
 
 
 def _folded(angle: FloatArray) -> FloatArray:

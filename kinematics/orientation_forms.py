@@ -19,11 +19,19 @@ from kinematics.angle_triples import (
     rotation_from_angles,
     sum_is_determined,
 )
-from kinematics.errors import InvalidOrientation, OutOfRange
-from kinematics.findings import ANGLES_NOT_UNIQUE, INPUT_REPAIRED, Finding
+from kinematics.errors import InvalidOrientation
+from kinematics.findings import Finding
+from kinematics.form_names import way_out_of_unknown_form
 from kinematics.number_checks import FloatArray, checked_numbers
+from kinematics.orientation_findings import (
+    angles_not_unique,
+    no_direction,
+    quaternion_normalised,
+    vector_too_long,
+)
 from kinematics.rigidity import checked_rotation_matrix
 from kinematics.rotations import (
+    lengths,
     quaternion_wxyz_of,
     rotation_from_quaternion,
     rotation_from_vector,
@@ -40,7 +48,7 @@ SEQUENCES: Final = (
     *("xyx", "xyz", "xzx", "xzy", "yxy", "yxz"),
     *("yzx", "yzy", "zxy", "zxz", "zyx", "zyz"),
 )
-_ORDERS: Final = {
+ORDERS: Final = {
     f"{sequence}-{axes}": AxisOrder(
         ("xyz".index(sequence[0]), "xyz".index(sequence[1]), "xyz".index(sequence[2])),
         about_fixed=axes == "fixed",
@@ -48,7 +56,7 @@ _ORDERS: Final = {
     for sequence in SEQUENCES
     for axes in ("fixed", "current")
 }
-TRIPLES: Final[tuple[str, ...]] = tuple(_ORDERS)
+TRIPLES: Final[tuple[str, ...]] = tuple(ORDERS)
 FORMS: Final[tuple[str, ...]] = (
     "matrix",
     "quaternion-wxyz",
@@ -63,7 +71,7 @@ def shape_of(form: str) -> tuple[int, ...]:
 
     Raises
     ------
-    InvalidOrientation : an unknown form.
+    InvalidOrientation : an unknown form; the way out names the nearest.
 
     Examples
     --------
@@ -75,8 +83,7 @@ def shape_of(form: str) -> tuple[int, ...]:
             f"there is no orientation form {str(form)[:60]!r}",
             where=("form",),
             value=form,
-            way_out="use matrix, quaternion-wxyz, quaternion-xyzw, rotation-vector, or a sequence "
-            "with its axes such as xyz-fixed or zyx-current",
+            way_out=way_out_of_unknown_form(str(form), FORMS),
         )
     if form == "matrix":
         return (3, 3)
@@ -129,7 +136,7 @@ def rotation_from(form: str, values: ArrayLike) -> FloatArray:
         return rotation_from_quaternion(np.roll(numbers, 1, axis=-1))
     if form == "rotation-vector":
         return rotation_from_vector(numbers)
-    return rotation_from_angles(_ORDERS[form], numbers)
+    return rotation_from_angles(ORDERS[form], numbers)
 
 
 def values_of(form: str, rotation: ArrayLike) -> FloatArray:
@@ -171,7 +178,7 @@ def values_of(form: str, rotation: ArrayLike) -> FloatArray:
         return np.roll(quaternion_wxyz_of(rotation), -1, axis=-1)
     if form == "rotation-vector":
         return rotation_vector_of(rotation)
-    return angles_of(_ORDERS[form], rotation)
+    return angles_of(ORDERS[form], rotation)
 
 
 def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
@@ -202,9 +209,9 @@ def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
     inf
     """
     shape_of(form)
-    if form not in _ORDERS:
+    if form not in ORDERS:
         return np.full(np.shape(rotation)[:-2], np.inf)
-    return distance_from_gimbal_lock(_ORDERS[form], rotation)
+    return distance_from_gimbal_lock(ORDERS[form], rotation)
 
 
 def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
@@ -236,21 +243,9 @@ def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
     distance = float(distance_from_lock(form, rotation))
     if not distance <= LOCK_NOTICE:
         return None
-    first, _, last = values_of(form, rotation)
-    is_sum = bool(sum_is_determined(_ORDERS[form], rotation))
-    value = float(first + last if is_sum else first - last)
-    value = float(np.arctan2(np.sin(value), np.cos(value)))
-    combination = "first + last" if is_sum else "first - last"
-    return Finding(
-        ANGLES_NOT_UNIQUE,
-        "angles-not-unique",
-        f"at gimbal lock only {combination} = {value:.9g} rad ({np.degrees(value):.9g} deg) of the "
-        f"{form} angles is determined; the middle angle is {{measure}} from it, a notice is given "
-        "within {threshold}",
-        distance,
-        LOCK_NOTICE,
-        "rad",
-    )
+    first, _, last = values_of(form, rotation).tolist()
+    is_sum = bool(sum_is_determined(ORDERS[form], rotation))
+    return angles_not_unique(form, first, last, distance, is_sum=is_sum)
 
 
 def checked_rotation(form: str, values: object) -> tuple[FloatArray, tuple[Finding, ...]]:
@@ -290,32 +285,14 @@ def checked_rotation(form: str, values: object) -> tuple[FloatArray, tuple[Findi
         return checked_rotation_matrix(numbers)
     if form.startswith("quaternion"):
         return rotation_from(form, numbers), _quaternion_findings(numbers)
-    if form == "rotation-vector" and np.linalg.norm(numbers) > LARGEST_MAGNITUDE:
-        raise OutOfRange(
-            f"the rotation vector has the length {np.linalg.norm(numbers):.6g} rad, beyond 1e9 rad",
-            value=numbers.tolist(),
-            way_out="check the units; a rotation vector of at most pi says the same",
-        )
+    if form == "rotation-vector" and lengths(numbers) > LARGEST_MAGNITUDE:
+        raise vector_too_long(numbers, float(lengths(numbers)))
     return rotation_from(form, numbers), ()
 
 
 def _quaternion_findings(quaternion: FloatArray) -> tuple[Finding, ...]:
-    norm = float(np.linalg.norm(quaternion))
+    norm = float(lengths(quaternion))
     if norm < QUATERNION_ZERO:
-        raise InvalidOrientation(
-            f"the quaternion has the norm {norm:.3g} and so no direction",
-            value=quaternion.tolist(),
-            way_out="give a quaternion of norm 1; no rotation is 1 for w and 0 for x, y, z",
-        )
-    if abs(norm - 1.0) <= QUATERNION_SILENT:
-        return ()
-    return (
-        Finding(
-            INPUT_REPAIRED,
-            "input-repaired",
-            "the norm of the quaternion is off 1 by {measure}, more than {threshold}; "
-            "it was normalised",
-            abs(norm - 1.0),
-            QUATERNION_SILENT,
-        ),
-    )
+        raise no_direction(quaternion, norm)
+    off = abs(norm - 1.0)
+    return () if off <= QUATERNION_SILENT else (quaternion_normalised(off),)

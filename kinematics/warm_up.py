@@ -7,7 +7,11 @@ import numpy as np
 
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
+from kinematics.frames import FrameGraph
 from kinematics.jacobian import motion_of, singular_values_of
+from kinematics.orientation_batches import checked_rotations
+from kinematics.orientation_forms import values_of
+from kinematics.pose_batches import poses_as_given
 from kinematics.rotations import quaternion_wxyz_of
 from kinematics.singularity import judge
 from kinematics.table import Convention, JointKind, Row, Table
@@ -25,6 +29,11 @@ def warm_up() -> None:
     arm = Arm("planar", Table(Convention.STANDARD, (row, row)))
     flange, posture = np.eye(4), np.array([0.3, 0.4])
     quaternion_wxyz_of(tool_in_base(arm, posture, flange)[:3, :3])
+    for form in ("xyz-fixed", "rotation-vector"):
+        values_of("xyz-fixed", checked_rotations(form, np.zeros((1, 3))).rotation)
+    given = poses_as_given("xyz-fixed", np.zeros((2, 3)), np.zeros((2, 3)))
+    assert given is not None
+    FrameGraph(["a", "a"], ["b", "b"], given).ways(["a"], ["b"])
     motion = motion_of(arm, posture, flange)
     singular_values_of(motion.of_joints)
     space = task_space(arm, flange)

@@ -135,7 +135,11 @@ def orientation_in(units: Units, form: str, values: FloatArray) -> FloatArray:
 
 def orientation_out(units: Units, form: str, rotation: FloatArray) -> FloatArray:
     """Return the values of rotations (..., 3, 3) in a form and the user's units."""
-    values = values_of(form, rotation)
+    return values_out(units, form, values_of(form, rotation))
+
+
+def values_out(units: Units, form: str, values: FloatArray) -> FloatArray:
+    """Return the values of an orientation form in the user's units."""
     return units.angle_out(values) if _is_angular(form) else values
 
 

@@ -5,7 +5,7 @@ Left out: what is in a revision.
 
 from dataclasses import dataclass
 
-from service.storage.ports import ArmStorage
+from service.storage.ports import Storage
 
 
 @dataclass(frozen=True, slots=True)
@@ -19,7 +19,7 @@ class _Looked:
 class Heads:
     """Head numbers of a store, looked up again whenever anything was written to it."""
 
-    def __init__(self, storage: ArmStorage) -> None:
+    def __init__(self, storage: Storage) -> None:
         self._storage = storage
         self._looked = _Looked(None, {})
 

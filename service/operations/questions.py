@@ -19,6 +19,7 @@ from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
 from service.wire import models
 from service.wire.arms import ReadArm, read_arm_model
+from service.wire.cells import CellAt
 from service.wire.poses import read_pose
 
 # One entry per arm, tool and task in use, some 5 kB each.
@@ -122,7 +123,7 @@ def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm)
     """
     if isinstance(asked, models.Arm):
         try:
-            read = read_arm_model(asked)
+            read = read_arm_model(asked, arms.newest_cell)
         except KinematicsError as error:
             raise error.below("arm") from None
         except ServiceError as error:
@@ -131,6 +132,20 @@ def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm)
         return MeantArm(read, None, read.findings)
     stored = stored_arm(arms, asked)
     return MeantArm(stored.read, stored.record.revision)
+
+
+def named_cell(arms: Arms[ReadArm], name: str) -> CellAt:
+    """Return the cell that an arm given whole in a body names.
+
+    Raises
+    ------
+    UnknownArm
+    """
+    try:
+        return arms.newest_cell(name)
+    except ServiceError as error:
+        error.where = ("arm", *error.where)
+        raise
 
 
 def stored_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision) -> StoredArm[ReadArm]:

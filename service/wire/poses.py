@@ -46,8 +46,25 @@ def read_pose(given: Pose, units: Units, where: Where) -> tuple[FloatArray, tupl
         position = checked_position(units.length_in(np.array(given.position)).tolist())
     except KinematicsError as error:
         raise error.below(*where, "position") from None
-    rotation, findings = _read_orientation(given.orientation, units, where)
+    rotation, findings = read_orientation(given.orientation, units, (*where, "orientation"))
     return pose(rotation, position), findings
+
+
+def read_orientation(
+    given: Orientation, units: Units, where: Where
+) -> tuple[FloatArray, tuple[Finding, ...]]:
+    """Return the rotation (3, 3) of an orientation, and what was repaired on the way in.
+
+    Raises
+    ------
+    KinematicsError : with ``where`` from the body's root.
+    """
+    form = checked_form(given.form, (*where, "form"))
+    try:
+        numbers = checked_numbers(given.values, shape_of(form), f"an orientation in {form}")
+        return checked_rotation(form, orientation_in(units, form, numbers).tolist())
+    except KinematicsError as error:
+        raise error.below(*where, "values") from None
 
 
 def pose_answer(x_in_y: FloatArray, form: str, units: Units) -> dict[str, object]:
@@ -80,15 +97,3 @@ def checked_form(form: str, where: Where = ("form",)) -> str:
         error.where = where
         raise
     return form
-
-
-def _read_orientation(
-    given: Orientation, units: Units, where: Where
-) -> tuple[FloatArray, tuple[Finding, ...]]:
-    at = (*where, "orientation")
-    form = checked_form(given.form, (*at, "form"))
-    try:
-        numbers = checked_numbers(given.values, shape_of(form), f"an orientation in {form}")
-        return checked_rotation(form, orientation_in(units, form, numbers).tolist())
-    except KinematicsError as error:
-        raise error.below(*at, "values") from None
