@@ -12,6 +12,8 @@ from numpy.typing import NDArray
 
 from kinematics.drive_map import DriveMap
 from kinematics.errors import InvalidArm, ToolNotSaid, UnknownFrame, UnknownTool
+from kinematics.in_cell import InCell
+from kinematics.known_names import one_of
 from kinematics.table import FloatArray, Table, Travel, check_number, check_travel
 from kinematics.tolerances import SHORTEST_LENGTH, SINGULAR
 from kinematics.transforms import inverse
@@ -71,6 +73,7 @@ class Arm:
     tools, default_tool, frames : what changes when the cell is set up anew.
     characteristic_length : metres; None takes the one the table gives.
     joint_uncertainty : standard uncertainty of each joint value, or empty.
+    cell : what is the cell's of base and frames; None for an arm that names none.
 
     Raises
     ------
@@ -93,6 +96,7 @@ class Arm:
     thresholds: SingularityThresholds = field(default_factory=SingularityThresholds)
     characteristic_length: float | None = None
     joint_uncertainty: tuple[float, ...] = ()
+    cell: InCell | None = None
     drive_map: DriveMap = field(init=False, repr=False, compare=False)
 
     def __post_init__(self) -> None:
@@ -173,6 +177,11 @@ class Arm:
         name = self.tool_name(tool, where)
         return self.tools[name].tool_in_flange if name in self.tools else np.eye(4)
 
+    @cached_property
+    def _numbered_frames(self) -> dict[str | int, str]:
+        numbered = {frame.number: name for name, frame in self.frames.items()}
+        return {number: name for number, name in numbered.items() if number is not None}
+
     def frame_name(self, frame: str | int | None) -> str:
         """Return the name of the frame meant by a name, a number, or nothing (``base``).
 
@@ -184,14 +193,16 @@ class Arm:
             return BASE
         if frame in (BASE, WORLD):
             return str(frame)
-        for name, candidate in self.frames.items():
-            if frame in (name, candidate.number):
-                return name
+        name = self._numbered_frames.get(frame, frame)
+        if name in self.frames:
+            return str(name)
+        if self.cell is not None:
+            self.cell.refuse_unseen(frame)
         raise UnknownFrame(
             f"the arm has no frame {frame!r}",
             where=("frame",),
             value=frame,
-            way_out=f"one of: {', '.join([BASE, WORLD, *map(_with_number, self.frames.items())])}",
+            way_out=one_of(str(frame), [BASE, WORLD, *map(_with_number, self.frames.items())]),
         )
 
     def frame_in_world(self, name: str) -> FloatArray:
@@ -213,11 +224,14 @@ class Arm:
                     way_out="let one of them stand in world or base",
                 )
             if name not in self.frames:
+                where = ("frames", seen[-1], "in") if seen else ("frame",)
+                if self.cell is not None:
+                    self.cell.refuse_unseen(name, where)
                 raise UnknownFrame(
                     f"there is no frame {name!r}",
-                    where=("frames", seen[-1], "in") if seen else ("frame",),
+                    where=where,
                     value=name,
-                    way_out=f"one of: {', '.join([WORLD, BASE, *self.frames])}",
+                    way_out=one_of(name, [WORLD, BASE, *self.frames]),
                 )
             seen.append(name)
             frame_in_world = self.frames[name].frame_in_parent @ frame_in_world

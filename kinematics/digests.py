@@ -1,7 +1,7 @@
-"""Canonical form and digests of an arm: what a logged pose leads back to.
+"""Canonical form and digests of an arm and of a cell: what a logged pose leads back to.
 
-The table's digest covers what a recalibration changes, the set-up's what a moved fixture changes.
-Titles, notes and status are in neither.
+The table's digest covers what a recalibration changes, the set-up's what a moved fixture changes,
+in the arm or in its cell. Titles, notes and status are in none.
 """
 
 import hashlib
@@ -11,6 +11,7 @@ from typing import NamedTuple, TypeAlias
 import numpy as np
 
 from kinematics.arm import Arm
+from kinematics.cell import Cell, Placed
 from kinematics.table import FloatArray, Row, Travel
 
 Plain: TypeAlias = "bool | int | float | str | list[Plain] | dict[str, Plain] | None"
@@ -21,6 +22,13 @@ class Digests(NamedTuple):
 
     table_digest: str
     setup_digest: str
+    digest: str
+
+
+class CellDigests(NamedTuple):
+    """Hexadecimal SHA-256 of a cell, and its first 8 digits."""
+
+    cell_digest: str
     digest: str
 
 
@@ -42,6 +50,23 @@ def digests_of(arm: Arm) -> Digests:
     table, setup = (_sha256(part) for part in (canonical_table(arm), canonical_setup(arm)))
     joined = hashlib.sha256((table + setup).encode()).hexdigest()
     return Digests(table, setup, joined[:8])
+
+
+def cell_digests_of(cell: Cell) -> CellDigests:
+    """Return the digests of a cell: SHA-256 of UTF-8 JSON, sorted keys, SI, -0 as 0.
+
+    Source
+    ------
+    As ``digests_of``.
+
+    Examples
+    --------
+    >>> digests = cell_digests_of(Cell("empty"))
+    >>> digests.cell_digest.startswith(digests.digest), len(digests.digest)
+    (True, 8)
+    """
+    digest = _sha256(canonical_cell(cell))
+    return CellDigests(digest, digest[:8])
 
 
 def canonical_table(arm: Arm) -> dict[str, Plain]:
@@ -69,12 +94,15 @@ def canonical_table(arm: Arm) -> dict[str, Plain]:
 def canonical_setup(arm: Arm) -> dict[str, Plain]:
     """Return base, tools, frames, thresholds and uncertainty as plain values in SI units.
 
+    Frames are the arm's own. What it has of its cell is told by the cell's revision and digest.
+
     Examples
     --------
     >>> from kinematics.table import Convention, Table
     >>> canonical_setup(Arm("empty", Table(Convention.STANDARD, ())))["tools"]
     {}
     """
+    of_cell = () if arm.cell is None else arm.cell.frames
     return {
         "base": _matrix(arm.base_in_world),
         "tools": {
@@ -89,8 +117,11 @@ def canonical_setup(arm: Arm) -> dict[str, Plain]:
                 "number": frame.number,
             }
             for name, frame in arm.frames.items()
+            if name not in of_cell
         },
-        "cell_revision": None,
+        "cell_revision": None if arm.cell is None else arm.cell.revision,
+        # Without a cell there is no such key: arms from before there were cells keep their digest.
+        **({} if arm.cell is None else {"cell_digest": arm.cell.digest}),
         "characteristic_length": _number(arm.characteristic_length),
         "singularity_thresholds": {
             "near": _number(arm.thresholds.near),
@@ -98,6 +129,27 @@ def canonical_setup(arm: Arm) -> dict[str, Plain]:
         },
         "joint_uncertainty": [_number(value) for value in arm.joint_uncertainty],
     }
+
+
+def canonical_cell(cell: Cell) -> dict[str, Plain]:
+    """Return placements and frames as plain values in SI units.
+
+    Examples
+    --------
+    >>> canonical_cell(Cell("empty"))
+    {'arms': {}, 'frames': {}}
+    """
+    return {
+        "arms": {name: _placed(placed) for name, placed in cell.placements.items()},
+        "frames": {
+            name: {**_placed(placed), "number": placed.number}
+            for name, placed in cell.frames.items()
+        },
+    }
+
+
+def _placed(placed: Placed) -> dict[str, Plain]:
+    return {"pose": _matrix(placed.pose_in_parent), "in": placed.parent}
 
 
 def _row(row: Row) -> dict[str, Plain]:

@@ -7,13 +7,18 @@ KinematicsError
 |  |- TooManyRows
 |  |- InvalidCoupling    to itself, to a passive or missing row
 |  '- SingularDriveMap   the driven rows do not move independently
+|- InvalidCell           things stand in each other in a circle, or share a number
+|  '- TooManyPlaced
 |- InvalidOrientation    values that describe no rotation
+|  '- TooManySteps
 |- NotRigid              a matrix that is no rotation, or a mirrored one
 |- OutOfRange            beyond 1e9 m or 1e9 rad
 |- WrongJointCount
 |- NotFinite             NaN or infinity
 |- UnknownTool
 |- UnknownFrame
+|- NotConnected          no relations lead from the one frame to the other
+|- TooLongWays           ways or loops through more relations than can be told
 '- ToolNotSaid           an arm with several tools and no default
 """
 
@@ -84,8 +89,24 @@ class SingularDriveMap(InvalidArm):
     """The couplings leave the driven rows dependent on each other."""
 
 
+class InvalidCell(KinematicsError):
+    """Arms and frames of a cell that stand in each other in a circle, or share a number."""
+
+
+class TooManyPlaced(InvalidCell):
+    """More arms or frames than a cell holds."""
+
+    code = "too-large"
+
+
 class InvalidOrientation(KinematicsError):
     """Values that describe no rotation: unknown form, wrong count, zero quaternion."""
+
+
+class TooManySteps(InvalidOrientation):
+    """More than 1000 turns one after the other."""
+
+    code = "too-large"
 
 
 class NotRigid(KinematicsError):
@@ -134,6 +155,18 @@ class UnknownFrame(KinematicsError):
     """A frame name or number that neither the arm nor its cell has."""
 
     code = "unknown-frame"
+
+
+class NotConnected(KinematicsError):
+    """No relations lead from the one frame to the other."""
+
+    code = "not-connected"
+
+
+class TooLongWays(KinematicsError):
+    """Ways or loops through more relations than can be told in one answer."""
+
+    code = "too-large"
 
 
 class ToolNotSaid(KinematicsError):

@@ -48,7 +48,7 @@ def checked_numbers(
     >>> checked_numbers([1, 2.5], (2,), "a pair")
     array([1. , 2.5])
     """
-    plain = _as_lists(values)
+    plain = _as_lists(values, len(shape))
     if not _has_shape(plain, shape):
         count = " x ".join(str(length) for length in shape)
         raise refusal(
@@ -65,11 +65,12 @@ def checked_numbers(
     return numbers
 
 
-def _as_lists(values: object) -> object:
+def _as_lists(values: object, depth: int) -> object:
     if isinstance(values, np.ndarray):
         return values.tolist()
-    if isinstance(values, list | tuple):
-        return [_as_lists(entry) for entry in values]
+    # What is nested deeper cannot be right, and may be nested deeper than Python can follow.
+    if isinstance(values, list | tuple) and depth:
+        return [_as_lists(entry, depth - 1) for entry in values]
     return values
 
 

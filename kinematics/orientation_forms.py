@@ -21,11 +21,13 @@ from kinematics.angle_triples import (
     sum_is_determined,
 )
 from kinematics.errors import InvalidOrientation
-from kinematics.findings import ANGLES_NOT_UNIQUE, Finding
+from kinematics.findings import Finding
+from kinematics.form_names import way_out_of_unknown_form
 from kinematics.kernels.angles import angle_triples
 from kinematics.kernels.compiler import for_kernel
 from kinematics.kernels.quaternions import quaternions_wxyz
 from kinematics.number_checks import FloatArray
+from kinematics.orientation_findings import angles_not_unique
 from kinematics.rotations import (
     QUATERNION_SIGNS,
     quaternion_wxyz_of,
@@ -39,7 +41,7 @@ SEQUENCES: Final = (
     *("xyx", "xyz", "xzx", "xzy", "yxy", "yxz"),
     *("yzx", "yzy", "zxy", "zxz", "zyx", "zyz"),
 )
-_ORDERS: Final = {
+ORDERS: Final = {
     f"{sequence}-{axes}": AxisOrder(
         ("xyz".index(sequence[0]), "xyz".index(sequence[1]), "xyz".index(sequence[2])),
         about_fixed=axes == "fixed",
@@ -47,7 +49,7 @@ _ORDERS: Final = {
     for sequence in SEQUENCES
     for axes in ("fixed", "current")
 }
-TRIPLES: Final[tuple[str, ...]] = tuple(_ORDERS)
+TRIPLES: Final[tuple[str, ...]] = tuple(ORDERS)
 FORMS: Final[tuple[str, ...]] = (
     "matrix",
     "quaternion-wxyz",
@@ -62,7 +64,7 @@ def shape_of(form: str) -> tuple[int, ...]:
 
     Raises
     ------
-    InvalidOrientation : an unknown form.
+    InvalidOrientation : an unknown form; the way out names the nearest.
 
     Examples
     --------
@@ -74,8 +76,7 @@ def shape_of(form: str) -> tuple[int, ...]:
             f"there is no orientation form {str(form)[:60]!r}",
             where=("form",),
             value=form,
-            way_out="use matrix, quaternion-wxyz, quaternion-xyzw, rotation-vector, or a sequence "
-            "with its axes such as xyz-fixed or zyx-current",
+            way_out=way_out_of_unknown_form(str(form), FORMS),
         )
     if form == "matrix":
         return (3, 3)
@@ -128,7 +129,7 @@ def rotation_from(form: str, values: ArrayLike) -> FloatArray:
         return rotation_from_quaternion(np.roll(numbers, 1, axis=-1))
     if form == "rotation-vector":
         return rotation_from_vector(numbers)
-    return rotation_from_angles(_ORDERS[form], numbers)
+    return rotation_from_angles(ORDERS[form], numbers)
 
 
 def values_of(form: str, rotation: ArrayLike) -> FloatArray:
@@ -170,7 +171,7 @@ def values_of(form: str, rotation: ArrayLike) -> FloatArray:
         return np.roll(quaternion_wxyz_of(rotation), -1, axis=-1)
     if form == "rotation-vector":
         return rotation_vector_of(rotation)
-    return angles_of(_ORDERS[form], rotation)
+    return angles_of(ORDERS[form], rotation)
 
 
 def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
@@ -201,9 +202,9 @@ def distance_from_lock(form: str, rotation: ArrayLike) -> FloatArray:
     inf
     """
     shape_of(form)
-    if form not in _ORDERS:
+    if form not in ORDERS:
         return np.full(np.shape(rotation)[:-2], np.inf)
-    return distance_from_gimbal_lock(_ORDERS[form], rotation)
+    return distance_from_gimbal_lock(ORDERS[form], rotation)
 
 
 def values_and_distance(form: str, poses: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -245,8 +246,8 @@ class OrientationRun:
         self.values = np.empty((len(poses), *shape_of(form)))
         self.from_lock = np.full(len(poses), np.inf)
         self._triple = None
-        if form in _ORDERS:
-            self._triple = (poses, *_ORDERS[form].of_kernel, self.values, self.from_lock)
+        if form in ORDERS:
+            self._triple = (poses, *ORDERS[form].of_kernel, self.values, self.from_lock)
 
     def __call__(self) -> None:
         """Write them."""
@@ -287,18 +288,6 @@ def lock_finding(form: str, rotation: ArrayLike) -> Finding | None:
     distance = float(distance_from_lock(form, rotation))
     if not distance <= LOCK_NOTICE:
         return None
-    first, _, last = values_of(form, rotation)
-    is_sum = bool(sum_is_determined(_ORDERS[form], rotation))
-    value = float(first + last if is_sum else first - last)
-    value = float(np.arctan2(np.sin(value), np.cos(value)))
-    combination = "first + last" if is_sum else "first - last"
-    return Finding(
-        ANGLES_NOT_UNIQUE,
-        "angles-not-unique",
-        f"at gimbal lock only {combination} = {value:.9g} rad ({np.degrees(value):.9g} deg) of the "
-        f"{form} angles is determined; the middle angle is {{measure}} from it, a notice is given "
-        "within {threshold}",
-        distance,
-        LOCK_NOTICE,
-        "rad",
-    )
+    first, _, last = values_of(form, rotation).tolist()
+    is_sum = bool(sum_is_determined(ORDERS[form], rotation))
+    return angles_not_unique(form, first, last, distance, is_sum=is_sum)

@@ -3,13 +3,16 @@
 Left out: what the forms mean (orientation_forms); units other than radians (the edge).
 """
 
-import numpy as np
-
-from kinematics.errors import InvalidOrientation, OutOfRange
-from kinematics.findings import INPUT_REPAIRED, Finding
+from kinematics.findings import Finding
 from kinematics.number_checks import FloatArray, checked_numbers
+from kinematics.orientation_findings import (
+    no_direction,
+    quaternion_normalised,
+    vector_too_long,
+)
 from kinematics.orientation_forms import rotation_from, shape_of
 from kinematics.rigidity import checked_rotation_matrix
+from kinematics.rotations import lengths
 from kinematics.tolerances import LARGEST_MAGNITUDE, QUATERNION_SILENT, QUATERNION_ZERO
 
 
@@ -50,32 +53,14 @@ def checked_rotation(form: str, values: object) -> tuple[FloatArray, tuple[Findi
         return checked_rotation_matrix(numbers)
     if form.startswith("quaternion"):
         return rotation_from(form, numbers), _quaternion_findings(numbers)
-    if form == "rotation-vector" and np.linalg.norm(numbers) > LARGEST_MAGNITUDE:
-        raise OutOfRange(
-            f"the rotation vector has the length {np.linalg.norm(numbers):.6g} rad, beyond 1e9 rad",
-            value=numbers.tolist(),
-            way_out="check the units; a rotation vector of at most pi says the same",
-        )
+    if form == "rotation-vector" and lengths(numbers) > LARGEST_MAGNITUDE:
+        raise vector_too_long(numbers, float(lengths(numbers)))
     return rotation_from(form, numbers), ()
 
 
 def _quaternion_findings(quaternion: FloatArray) -> tuple[Finding, ...]:
-    norm = float(np.linalg.norm(quaternion))
+    norm = float(lengths(quaternion))
     if norm < QUATERNION_ZERO:
-        raise InvalidOrientation(
-            f"the quaternion has the norm {norm:.3g} and so no direction",
-            value=quaternion.tolist(),
-            way_out="give a quaternion of norm 1; no rotation is 1 for w and 0 for x, y, z",
-        )
-    if abs(norm - 1.0) <= QUATERNION_SILENT:
-        return ()
-    return (
-        Finding(
-            INPUT_REPAIRED,
-            "input-repaired",
-            "the norm of the quaternion is off 1 by {measure}, more than {threshold}; "
-            "it was normalised",
-            abs(norm - 1.0),
-            QUATERNION_SILENT,
-        ),
-    )
+        raise no_direction(quaternion, norm)
+    off = abs(norm - 1.0)
+    return () if off <= QUATERNION_SILENT else (quaternion_normalised(off),)

@@ -4,12 +4,15 @@ Left out: pose matrices with their last row (transforms) and all other forms (or
 """
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
-from kinematics.errors import NotFinite, NotRigid
-from kinematics.findings import INPUT_REPAIRED, Finding
+from kinematics.errors import NotFinite
+from kinematics.findings import Finding
 from kinematics.number_checks import FloatArray
+from kinematics.orientation_findings import matrix_replaced, not_rigid
 from kinematics.tolerances import RIGID_REPAIRED, RIGID_SILENT
+
+BoolArray = NDArray[np.bool_]
 
 
 def defect(matrix: ArrayLike) -> FloatArray:
@@ -34,10 +37,39 @@ def defect(matrix: ArrayLike) -> FloatArray:
     >>> float(defect(np.diag([1.0, 1.0, 1.5])))
     1.25
     """
-    matrices = np.asarray(matrix, dtype=np.float64)
+    columns = _columns(matrix)
     with np.errstate(over="ignore", invalid="ignore"):
-        gram = np.swapaxes(matrices, -1, -2) @ matrices
-        return np.asarray(np.abs(gram - np.eye(3)).max(axis=-1).max(axis=-1))
+        entries = [
+            np.abs(sum(a * b for a, b in zip(columns[i], columns[j], strict=True)) - float(i == j))
+            for i in range(3)
+            for j in range(i, 3)
+        ]
+        return np.asarray(np.max(entries, axis=0))
+
+
+def is_mirrored(matrix: ArrayLike) -> BoolArray:
+    """Return whether the determinant is negative.
+
+    Parameters
+    ----------
+    matrix : (..., 3, 3), pure numbers, not far from orthonormal.
+
+    Returns
+    -------
+    mirrored : (...).
+
+    Source
+    ------
+    The determinant as the triple product of the columns.
+
+    Examples
+    --------
+    >>> bool(is_mirrored(np.diag([1.0, -1.0, 1.0])))
+    True
+    """
+    (a, b, c), (d, e, f), (g, h, i) = _columns(matrix)
+    with np.errstate(over="ignore", invalid="ignore"):
+        return np.asarray(a * (e * i - f * h) - b * (d * i - f * g) + c * (d * h - e * g) < 0.0)
 
 
 def nearest_rotation(matrix: ArrayLike) -> FloatArray:
@@ -105,31 +137,15 @@ def checked_rotation_matrix(matrix: FloatArray) -> tuple[FloatArray, tuple[Findi
     (6, 0.002001)
     """
     size = float(defect(matrix))
-    mirrored = float(np.linalg.det(matrix)) < 0.0
-    if size > RIGID_REPAIRED:
-        raise NotRigid(
-            f"the matrix is no rotation: the largest entry of |R^T R - I| is {size:.6g}, "
-            f"and at most {RIGID_REPAIRED:g} is repaired"
-            + ("; its determinant is negative as well (mirrored)" if mirrored else ""),
-            defect=size,
-            value=matrix.tolist(),
-            way_out="give the entries with four decimals or more, or use another form",
-        )
-    if mirrored:
-        raise NotRigid(
-            "the matrix is mirrored: its columns are perpendicular, but its determinant is -1",
-            defect=size,
-            value=matrix.tolist(),
-            way_out="a frame is right-handed: check the sign and the order of the columns",
-        )
+    mirrored = bool(is_mirrored(matrix))
+    if mirrored or size > RIGID_REPAIRED:
+        raise not_rigid(matrix, size, mirrored=mirrored)
     if size <= RIGID_SILENT:
         return matrix, ()
-    finding = Finding(
-        INPUT_REPAIRED,
-        "input-repaired",
-        "the matrix was off a rotation by {measure} (largest entry of |R^T R - I|), more than "
-        "{threshold}; the nearest rotation was taken",
-        size,
-        RIGID_SILENT,
-    )
-    return nearest_rotation(matrix), (finding,)
+    return nearest_rotation(matrix), (matrix_replaced(size),)
+
+
+def _columns(matrix: ArrayLike) -> list[tuple[FloatArray, ...]]:
+    """The entries of each column, each in one piece of memory: three times as fast for many."""
+    matrices = np.asarray(matrix, dtype=np.float64)
+    return [tuple(np.ascontiguousarray(np.moveaxis(matrices[..., j], -1, 0))) for j in range(3)]

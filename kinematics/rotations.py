@@ -23,6 +23,31 @@ QUATERNION_SIGNS = (0.5 * HALF_TURN_NOISE, RIGID_SILENT)
 own: an accepted matrix is good to RIGID_SILENT only."""
 
 
+def lengths(vectors: FloatArray) -> FloatArray:
+    """Return the lengths of vectors, each rounded as if it were alone.
+
+    Parameters
+    ----------
+    vectors : (..., n).
+
+    Returns
+    -------
+    lengths : (...); NaN and infinity where the components are so, and infinity where their squares
+        are beyond the range of doubles.
+
+    Source
+    ------
+    Euclid; the squares are added in the order of the components.
+
+    Examples
+    --------
+    >>> lengths(np.array([[3.0, 4.0], [0.0, 0.0]])).tolist()
+    [5.0, 0.0]
+    """
+    with np.errstate(invalid="ignore", over="ignore"):
+        return np.asarray(np.sqrt(sum(part * part for part in np.moveaxis(vectors, -1, 0))))
+
+
 def elementary_rotation(axis_index: int, angle: ArrayLike) -> FloatArray:
     """Return the rotation about the x, y or z axis.
 

@@ -19,6 +19,14 @@ range of doubles."""
 MOST_ROWS = 32
 """Rows of a table: twice the longest chains in plants, and a bound for work per posture."""
 
+MOST_PLACED = 2000
+"""Arms, and frames, of a cell: some hundred times what stands in one, and still placed within a
+tenth of a second."""
+
+MOST_STEPS = 1000
+"""Turns one after the other: far more than anybody writes, and products of so many stay within
+some 2e-13 of a rotation."""
+
 RIGID_SILENT = 1e-12
 """max |R^T R - I| that products of doubles reach by themselves; not worth a word."""
 
@@ -68,6 +76,14 @@ SAMPLE_POSTURES = 16
 HALF_TURN_NOISE = 2e-15
 """Radians from a half turn that products of doubles leave by themselves. Within it -180 deg is read
 as 180 deg and a quaternion's w as 0, so that the sign of rounding noise decides no sign."""
+
+SAME_AXIS = 2e-15
+"""Sine between directions that are one: products of doubles leave this by themselves, and a turn
+about the one moves nothing by more than this from a turn about the other."""
+
+NO_TURN = 1e-14
+"""Radians below which what is left of turns that cancel may be called rounding of the angles that
+went in; ten turns and one back leave this much. Left out, it moves nothing by more."""
 
 SHORT_VECTOR = 1e-10
 """Length below which sin(x)/x and x/sin(x) are 1 to the last digit (the next term is x^2/6)."""
@@ -132,3 +148,72 @@ lead to."""
 
 LINES_CROSS = 1e-12
 """Difference of slopes, pure numbers, below which two lines of a joint demand do not cross."""
+
+# --- guesses of what a screen shows ----------------------------------------------------------
+MOST_READOUTS = 100
+"""Readouts of one screen: three settle what it shows, and a hundred are still answered within half
+a second."""
+
+SHOWN_TURN = 12.566370614359172
+"""Radians, two turns: beyond it nobody shows an orientation, and 90 on a screen are no half turns.
+With a unit that is said any angle will do."""
+
+SHOWN_LENGTH = 0.05
+"""How far off 1 a shown quaternion or axis may be in length, and a matrix off a rotation: two
+decimals leave 0.01, and numbers further off mean something else."""
+
+GUESS_FITS = 0.008726646259971648
+"""Radians (0.5 deg) within which a reading explains a readout, unless the caller says otherwise:
+what edges and levels show a careful eye, and ten times what encoders and screens leave."""
+
+GUESS_FITS_MOST = 0.5235987755982988
+"""Radians (30 deg); with a wider tolerance half of all readings would explain anything."""
+
+GUESS_DECIMALS = 9
+"""Decimals of a radian to which residuals are told: beyond them rounding would rank what is equal,
+and no screen shows as many."""
+
+TOLD_APART = 0.17453292519943295
+"""Radians (10 deg) between predictions that anybody sees by looking at the tool."""
+
+LOCK_AVOIDED = 0.2617993877991494
+"""Radians (15 deg) that numbers to bring onto a screen keep from gimbal lock, and a rotation vector
+from a half turn: near it a screen shows one of several triples, and not the one asked for."""
+
+PAIRS_TRIED = 12_000_000
+"""Pairs of maps held against each other in search of the next readout: a tenth of a second."""
+
+# --- relations between frames ----------------------------------------------------------------
+LOOP_CLOSED = 1e-6
+"""Metres, and radians, within which a loop of relations closes: lengths are typed to a micrometre
+and angles to four decimals of a degree (1.7e-6 rad) at best."""
+
+USUAL_POSITION_SD = 1e-3
+"""Metres; the standard deviation of a relation that states none: what a frame taught by touching
+is good to. Only its ratio to others matters to the estimate."""
+
+USUAL_ANGLE_SD = 1e-3
+"""Radians; a millimetre over a metre, which is how such a frame's axes are found."""
+
+SMALLEST_SD = 1e-9
+"""Metres, and radians; rounding of the relation itself is of this size where they are large."""
+
+LARGEST_SD = 1e3
+"""Metres, and radians; what is known no better than this is not known."""
+
+ESTIMATE_SETTLED = 1e-8
+"""Length of the last step of an estimate over its own standard deviation: no digit that means
+anything still changes."""
+
+RELATION_WRONG = 22.457744484825323
+"""Reduction of the weighted sum of squares, when a relation is left out, beyond which it is more
+than chance: the 0.999 quantile of chi-square with the six numbers of a relation. Baarda, A Testing
+Procedure for Use in Geodetic Networks, 1968, takes one in a thousand likewise."""
+
+UNCONTROLLED = 1e-7
+"""Share of a mistake that shows in the residuals (the redundancy) below which nothing checks it:
+rounding leaves some 1e-10 of it."""
+
+SUSPECTS_ALIKE = 1e-6
+"""Relative difference of two relations' statistics within which neither is the more likely wrong:
+in a single loop all are the same, but for rounding and the bend of large residuals."""

@@ -1,22 +1,26 @@
 """Has every kernel compiled ahead of the first question, by asking one of each kind.
 
-In two parts that take about as long, so that two processes can compile at once for a third:
-``python -m kinematics.warm_up PART``. Left out: when, and in which process (the service's
-business).
+In parts, so that several processes can compile at once for another that loads what they leave in
+the cache: ``python -m kinematics.warm_up PART``. Left out: when, and in which process (the
+service's business).
 """
 
 import sys
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 
 import numpy as np
 
 from kinematics.angle_triples import AxisOrder, angles_of
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
+from kinematics.frames import FrameGraph
 from kinematics.jacobian import Motion, motion_of, singular_values_of
 from kinematics.kernels.compiler import is_kept
-from kinematics.kernels.forward import tool_poses
+from kinematics.kernels.frame_poses import ways_found
 from kinematics.kernels.judgement import judge_postures
+from kinematics.kernels.travel import travel_left
+from kinematics.orientation_batches import checked_rotations
+from kinematics.pose_batches import poses_as_given
 from kinematics.rotations import quaternion_wxyz_of
 from kinematics.singularity import judge
 from kinematics.table import Convention, JointKind, Row, Table
@@ -56,31 +60,53 @@ def _judgements() -> None:
     judge(_arm(), space, motion)
 
 
-PARTS: Mapping[str, Callable[[], None]] = {"poses": _poses, "judgements": _judgements}
+def _relations() -> None:
+    for form in ("xyz-fixed", "rotation-vector"):
+        checked_rotations(form, np.zeros((1, 3)))
+    given = poses_as_given("xyz-fixed", np.zeros((2, 3)), np.zeros((2, 3)))
+    assert given is not None
+    FrameGraph(["a", "a"], ["b", "b"], given).ways(["a"], ["b"])
 
 
-def warm_up() -> None:
-    """Compile, or load from the cache, every kernel of the core; some seconds when cold.
+_PARTS: Mapping[str, Callable[[], None]] = {
+    "poses": _poses,
+    "judgements": _judgements,
+    "relations": _relations,
+}
+POSTURES = ("poses", "judgements")
+"""The parts that questions about postures need; they take about as long."""
+
+RELATIONS = ("relations",)
+"""The parts that questions about rotations and frames need beside those."""
+
+
+def warm_up(parts: Sequence[str] = (*POSTURES, *RELATIONS)) -> None:
+    """Compile, or load from the cache, the kernels of some parts; some seconds when cold.
 
     Examples
     --------
-    >>> warm_up()
+    >>> warm_up(["poses"])
     """
-    for part in PARTS.values():
-        part()
+    for part in parts:
+        _PARTS[part]()
 
 
-def would_be_kept() -> bool:
-    """Return whether kernels must be compiled and what is compiled can be kept for others.
+def to_be_compiled(parts: Sequence[str]) -> list[str]:
+    """Return the parts that must be compiled and whose code can then be kept for others.
 
     Examples
     --------
-    >>> warm_up()
-    >>> would_be_kept()
-    False
+    >>> warm_up(POSTURES)
+    >>> to_be_compiled(POSTURES)
+    []
     """
-    # The last kernel of each part, so that a part which was cut short counts as missing.
-    return False in (is_kept(tool_poses), is_kept(judge_postures))
+    # One that each part ends with, so that a part which was cut short counts as missing.
+    last: dict[str, Callable[..., object]] = {
+        "poses": travel_left,
+        "judgements": judge_postures,
+        "relations": ways_found,
+    }
+    return [part for part in parts if is_kept(last[part]) is False]
 
 
 def _arm() -> Arm:
@@ -88,4 +114,4 @@ def _arm() -> Arm:
 
 
 if __name__ == "__main__":
-    PARTS[sys.argv[1]]()
+    warm_up(sys.argv[1:])

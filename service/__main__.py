@@ -1,4 +1,4 @@
-"""The command ``armspan``: serve, and stored arms from the command line.
+"""The command ``armspan``: serve, and stored arms and cells from the command line.
 
 Left out: what the subcommands do.
 """
@@ -7,10 +7,10 @@ import argparse
 import sys
 from collections.abc import Sequence
 
-from service.arms_commands import add_arms, list_arms
 from service.errors import ServiceError
 from service.server import run
 from service.settings import Settings, WrongSetting
+from service.stored_commands import add_stored, list_stored
 
 _WRONG_USE = 2
 
@@ -18,7 +18,7 @@ _WRONG_USE = 2
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; return its exit code (2: used wrongly, 1: did not work)."""
     given = vars(_parser().parse_args(arguments))
-    command = given.pop("command")
+    command, kind = given.pop("command"), given.pop("kind", "arm")
     files = given.pop("files", [])
     try:
         settings = Settings.from_environment(given)
@@ -29,8 +29,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return run(settings)
     try:
         if command == "add":
-            return add_arms(settings, files, sys.stdout)
-        return list_arms(settings, sys.stdout)
+            return add_stored(settings, kind, files, sys.stdout)
+        return list_stored(settings, kind, sys.stdout)
     except ServiceError as error:
         print(f"armspan: {error.say}", file=sys.stderr)
         return 1
@@ -56,14 +56,17 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument("--body-timeout-s", help="seconds a request may stall (20)")
     serve.add_argument("--connections", help="connections served at once (512)")
     serve.add_argument("--log-level", help="critical, error, warning, info or debug (warning)")
-    arms = commands.add_parser("arms", help="stored arms", allow_abbrev=False)
-    actions = arms.add_subparsers(required=True, metavar="ACTION")
-    add = actions.add_parser("add", help="store arms from JSON files", allow_abbrev=False)
-    add.add_argument("files", nargs="+", metavar="FILE")
-    add.set_defaults(command="add")
-    shown = actions.add_parser("list", help="list stored arms", allow_abbrev=False)
-    shown.set_defaults(command="list")
-    for command in (serve, add, shown):
+    on_database = [serve]
+    for kind in ("arm", "cell"):
+        stored = commands.add_parser(f"{kind}s", help=f"stored {kind}s", allow_abbrev=False)
+        actions = stored.add_subparsers(required=True, metavar="ACTION")
+        add = actions.add_parser("add", help=f"store {kind}s from JSON files", allow_abbrev=False)
+        add.add_argument("files", nargs="+", metavar="FILE")
+        add.set_defaults(command="add", kind=kind)
+        shown = actions.add_parser("list", help=f"list stored {kind}s", allow_abbrev=False)
+        shown.set_defaults(command="list", kind=kind)
+        on_database += [add, shown]
+    for command in on_database:
         command.add_argument(
             "--database", help="SQLite file or database URL (the user's data folder)"
         )

@@ -16,9 +16,21 @@ from service.envelope import Envelope
 from service.errors import ServiceError
 from service.metrics import Metrics
 from service.operations.arms import Arms
+from service.operations.cells import Cells
 from service.readiness import Readiness
 from service.refusals import add_refusals
-from service.routes import arms, controller, health, poses, tables
+from service.routes import (
+    arms,
+    cells,
+    controller,
+    frames,
+    guesses,
+    health,
+    poses,
+    relation,
+    rotations,
+    tables,
+)
 from service.settings import Settings
 from service.storage.opening import open_storage
 from service.web import pages
@@ -28,7 +40,12 @@ ROUTERS: tuple[APIRouter, ...] = (
     controller.router,
     poses.router,
     tables.router,
+    rotations.router,
+    guesses.router,
+    frames.router,
+    relation.router,
     arms.router,
+    cells.router,
     health.router,
     pages.router,
 )
@@ -40,7 +57,7 @@ def create_app(settings: Settings) -> FastAPI:
     ``app.state`` holds ``settings``, ``sequence`` (counts answers), ``started``, ``metrics``,
     ``readiness`` (of the kernels),
     ``crowded`` (replaced by a server that knows its connections) and, within the lifespan,
-    ``arms``, ``bulk``, ``storage``, ``opened`` and ``notices``.
+    ``arms``, ``cells``, ``bulk``, ``storage``, ``opened`` and ``notices``.
     """
     app = FastAPI(
         title="Armspan",
@@ -74,14 +91,15 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
     try:
         app.state.bulk = bulk
         app.state.opened = opened
-        app.state.storage = opened.storage
-        app.state.arms = Arms(opened.storage, read_arm)
+        app.state.storage = opened.arms
+        app.state.cells = Cells(opened.cells, opened.arms, read_arm)
+        app.state.arms = Arms(opened.arms, read_arm, app.state.cells)
         app.state.notices = [*opened.notices]
         if settings.demo:
             try:
-                demo.seed(app.state.arms)
+                demo.seed(app.state.cells, app.state.arms)
             except ServiceError as error:
-                app.state.notices.append(f"no demonstration arms: {error.say}")
+                app.state.notices.append(f"no demonstration cell: {error.say}")
         yield
     finally:
         bulk.stop()

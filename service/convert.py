@@ -13,7 +13,7 @@ import numpy as np
 
 from kinematics.arm import Arm
 from kinematics.findings import Finding
-from kinematics.orientation_forms import TRIPLES, values_and_distance
+from kinematics.orientation_forms import TRIPLES, values_and_distance, values_of
 from kinematics.table import FloatArray
 
 ARMS_KEPT = 512
@@ -171,18 +171,30 @@ def orientation_in(units: Units, form: str, values: FloatArray) -> FloatArray:
     return units.angle_in(values) if _is_angular(form) else values
 
 
-def orientation_out(units: Units, form: str, pose: FloatArray) -> tuple[FloatArray, FloatArray]:
+def orientation_out(units: Units, form: str, rotation: FloatArray) -> FloatArray:
+    """Return the values of rotations (..., 3, 3) in a form and the user's units."""
+    return values_out(units, form, values_of(form, rotation))
+
+
+def pose_orientations_out(
+    units: Units, form: str, poses: FloatArray
+) -> tuple[FloatArray, FloatArray]:
     """Return the rotations of poses (count, 4, 4) in a form and the user's units.
 
     Beside them how far from gimbal lock they are, (count,) in rad; infinite for forms without one.
     """
-    values, from_lock = values_and_distance(form, pose)
-    return units.angle_out(values) if _is_angular(form) else values, from_lock
+    values, from_lock = values_and_distance(form, poses)
+    return values_out(units, form, values), from_lock
 
 
 def orientation_values_out(units: Units, form: str, values: list[Any]) -> list[Any]:
     """Return the values of one orientation, plain numbers in SI, in the user's units."""
     return [units.value_out(value, "rad") for value in values] if _is_angular(form) else values
+
+
+def values_out(units: Units, form: str, values: FloatArray) -> FloatArray:
+    """Return the values of an orientation form in the user's units."""
+    return units.angle_out(values) if _is_angular(form) else values
 
 
 def finding_out(units: Units, finding: Finding) -> dict[str, object]:

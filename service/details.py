@@ -3,10 +3,8 @@
 Left out: codes' numbers and statuses (``problems.py``) and how a complaint is found.
 """
 
-import difflib
 import json
 import math
-import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Literal
@@ -17,8 +15,6 @@ Location = Literal["body", "query", "path", "header"]
 SHOWN_CHARACTERS = 200
 _SHOWN_ITEMS = 12
 _SHOWN_DEPTH = 4
-_FEWEST_FOLDED = 3
-_NUMBERED = re.compile(r"(.*?[^0-9])([1-9][0-9]{0,8})", re.ASCII | re.DOTALL)
 _ABSENT = object()
 # orjson prints no integer beyond 64 bits.
 _LARGEST_INTEGER = 2**63 - 1
@@ -124,62 +120,6 @@ def encodable(text: str) -> str:
     return text.encode("utf-8", "replace").decode("utf-8")
 
 
-def nearest(name: str, known: Iterable[str]) -> str | None:
-    """Return the known name most like ``name``, or None when none is alike.
-
-    Examples
-    --------
-    >>> nearest("jonits", ["arm", "joints"]), nearest("zzz", ["arm"])
-    ('joints', None)
-    """
-    close = difflib.get_close_matches(name[:100], list(known), n=1, cutoff=0.6)
-    return close[0] if close else None
-
-
-def way_out_of_unknown(name: str, known: Iterable[str]) -> str:
-    """Return the sentence that leads from an unknown name to the nearest known one.
-
-    Examples
-    --------
-    >>> way_out_of_unknown("unit", ["units", "arm"])
-    'did you mean "units"?'
-    >>> way_out_of_unknown("zzz", ["units", "arm"])
-    'known here: arm, units'
-    """
-    names = sorted(known)
-    close = nearest(name, names)
-    if close is not None:
-        return f'did you mean "{close}"?'
-    return f"known here: {', '.join(folded(names))}" if names else "leave it out"
-
-
-def folded(names: Iterable[str]) -> list[str]:
-    """Return names in order, with runs of numbered ones told by their first and last.
-
-    Examples
-    --------
-    >>> folded(["q", "q1", "q2", "q3", "q10", "arm", "a1", "a2"])
-    ['a1', 'a2', 'arm', 'q', 'q1 ... q3', 'q10']
-    """
-    runs: list[tuple[str, list[int]]] = []
-    for stem, number in sorted(map(_stem_and_number, set(names))):
-        if runs and runs[-1][0] == stem and 0 < runs[-1][1][-1] == number - 1:
-            runs[-1][1].append(number)
-        else:
-            runs.append((stem, [number]))
-    told: list[str] = []
-    for stem, numbers in runs:
-        each = [stem if number == 0 else f"{stem}{number}" for number in numbers]
-        told += each if len(each) < _FEWEST_FOLDED else [f"{each[0]} ... {each[-1]}"]
-    return told
-
-
-def _stem_and_number(name: str) -> tuple[str, int]:
-    """Return a name's text and the number from 1 on at its end, 0 where there is none."""
-    found = _NUMBERED.fullmatch(name)
-    return (found[1], int(found[2])) if found else (name, 0)
-
-
 def _below(node: object, step: str | int) -> object:
     if isinstance(node, Mapping):
         return node.get(step, _ABSENT)
@@ -190,6 +130,8 @@ def _below(node: object, step: str | int) -> object:
 
 def _alike(value: object, given: object) -> bool:
     """Whether both are numbers, or lists of as many numbers."""
+    if value is given:  # also where it is nested deeper than Python can follow
+        return True
     if isinstance(value, Sequence) and isinstance(given, list) and not isinstance(value, str):
         return len(value) == len(given) and all(map(_alike, value, given))
     return _is_number(value) and _is_number(given)

@@ -13,6 +13,7 @@ ServiceError
 |  |- DigestDiffers          the arm is not the one that was expected
 |  |- RevisionDiffers        If-Match names another revision
 |  |- PreconditionRequired   a write without If-Match
+|  |- InUse                 a cell in which arms stand
 |  '- NameTaken
 |- UnusableValue
 |  '- MissingField
@@ -146,6 +147,12 @@ class PreconditionRequired(StateDiffers):
     """A write without ``If-Match`` or ``If-None-Match``."""
 
     code = "precondition-required"
+
+
+class InUse(StateDiffers):
+    """What is to be removed is still named by others: a cell in which arms stand."""
+
+    code = "in-use"
 
 
 class NameTaken(StateDiffers):

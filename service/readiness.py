@@ -10,35 +10,50 @@ import gc
 import subprocess
 import sys
 import threading
+from collections.abc import Sequence
 from contextlib import suppress
 from time import monotonic
 
-from kinematics.warm_up import PARTS, warm_up, would_be_kept
+from kinematics.warm_up import POSTURES, RELATIONS, to_be_compiled, warm_up
 
 _LONG_S = 1.0
 _COMPILING = "  compiling for this machine, some seconds; the first questions wait for it"
 
 
-class Readiness:
-    """Whether the kernels of one service are ready.
+class Kernels:
+    """Some of the kernels: whether they are ready, and a way to wait for it.
 
     Ready from the beginning, so that an app without a server answers; ``prepare`` takes it back.
     """
 
-    def __init__(self) -> None:
-        self.is_ready = True
+    def __init__(self, parts: Sequence[str]) -> None:
+        self.parts = parts
+        self.are_ready = True
         self._event = asyncio.Event()
+
+    async def wait(self) -> None:
+        """Return as soon as they are ready."""
+        if not self.are_ready:
+            await self._event.wait()
+
+    def are_ready_now(self, loop: asyncio.AbstractEventLoop) -> None:
+        """Let go who waits; called from another thread than the loop's."""
+        self.are_ready = True
+        with suppress(RuntimeError):  # the loop may be closed by now
+            loop.call_soon_threadsafe(self._event.set)
+
+
+class Readiness:
+    """The kernels of one service: those for postures first, then those for rotations and frames."""
+
+    def __init__(self) -> None:
+        self.postures, self.relations = Kernels(POSTURES), Kernels(RELATIONS)
         self._compiling: list[subprocess.Popen[bytes]] = []
         self._stopped = False
 
-    async def wait(self) -> None:
-        """Return as soon as the kernels are ready."""
-        if not self.is_ready:
-            await self._event.wait()
-
     def prepare(self) -> None:
         """Begin to get the kernels ready, in a daemon thread: a stop does not wait for it."""
-        self.is_ready = False
+        self.postures.are_ready = self.relations.are_ready = False
         loop = asyncio.get_running_loop()
         threading.Thread(target=self._prepare, args=(loop,), daemon=True).start()
 
@@ -55,24 +70,22 @@ class Readiness:
         told = threading.Timer(_LONG_S, print, (_COMPILING,), {"flush": True})
         told.daemon = True
         told.start()
-        try:
-            if would_be_kept():
-                self._compile_beside()
-            warm_up()
-            # What is here now stays: a search for garbage among it would hold up every answer
-            # for 0.1 s.
-            gc.freeze()
-        finally:
-            told.cancel()
-            # Also if it failed: a question then says why.
-            self.is_ready = True
-            with suppress(RuntimeError):  # the loop may be closed by now
-                loop.call_soon_threadsafe(self._event.set)
+        for kernels in (self.postures, self.relations):
+            try:
+                self._compile_beside(to_be_compiled(kernels.parts))
+                warm_up(kernels.parts)
+                # What is here now stays: a search for garbage among it would hold up every
+                # answer for 0.1 s.
+                gc.freeze()
+            finally:
+                told.cancel()
+                # Also if it failed: a question then says why.
+                kernels.are_ready_now(loop)
         if monotonic() - started > _LONG_S:
             print(f"  compiled in {monotonic() - started:.1f} s", flush=True)
 
-    def _compile_beside(self) -> None:
-        for part in PARTS:
+    def _compile_beside(self, parts: Sequence[str]) -> None:
+        for part in parts:
             if self._stopped:
                 return
             command = [sys.executable, "-m", "kinematics.warm_up", part]

@@ -14,7 +14,7 @@ from starlette.responses import Response
 from starlette.routing import Match
 
 from kinematics.errors import KinematicsError
-from service.details import way_out_of_unknown
+from kinematics.known_names import way_out_of_unknown
 from service.errors import MethodNotAllowed, ServiceError, TooLarge, UnknownPath, Unparseable
 from service.problems import Problem, problem_of
 from service.wire.answers import json_problem

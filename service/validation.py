@@ -10,7 +10,8 @@ from typing import Any, Literal, get_args, get_origin
 from pydantic import BaseModel, ValidationError
 
 from kinematics.errors import KinematicsError
-from service.details import Detail, Location, way_out_of_unknown
+from kinematics.known_names import way_out_of_unknown
+from service.details import Detail, Location
 
 Where = tuple[str | int, ...]
 

@@ -1,11 +1,13 @@
-"""Three angles of many rotation matrices, for any order of axes.
+"""Three angles about frame axes, of many rotations at once, both ways.
 
 Left out: names of the orders and what is told at gimbal lock (kinematics/orientation_forms.py).
 """
 
 import math
 
-from kinematics.kernels.compiler import compiled_exactly
+import numpy as np
+
+from kinematics.kernels.compiler import compiled, compiled_exactly
 from kinematics.number_checks import FloatArray
 
 
@@ -40,6 +42,14 @@ def angle_triples(
     first_is_last = innermost == i
     for b in range(rotations.shape[0]):
         r = rotations[b]
+        total = 0.0
+        for row in range(3):
+            total += r[row, 0] + r[row, 1] + r[row, 2]
+        if not np.isfinite(total):
+            # Numbers that are none make none, all three.
+            angles[b, 0], angles[b, 1], angles[b, 2] = np.nan, np.nan, np.nan
+            distance[b] = np.nan
+            continue
         across_j, across_k, along = r[j, innermost], r[k, innermost], r[i, innermost]
         across = math.hypot(across_j, across_k)
         distance[b] = math.atan2(across, abs(along))
@@ -70,3 +80,51 @@ def angle_triples(
         angles[b, 0] = (math.pi if first <= noise - math.pi else first) + 0.0
         angles[b, 1] = middle + 0.0
         angles[b, 2] = (math.pi if last <= noise - math.pi else last) + 0.0
+
+
+@compiled
+def rotations_of_angles(
+    angles: FloatArray, left: int, middle: int, right: int, rotations: FloatArray
+) -> None:
+    """Write the product of three elementary rotations.
+
+    Parameters
+    ----------
+    angles : (count, 3), rad, from left to right in the product.
+    left, middle, right : indices of the axes; neighbours differ.
+    rotations : (count, 3, 3).
+
+    Source
+    ------
+    Craig, Introduction to Robotics, chapter 2.
+
+    Examples
+    --------
+    >>> import numpy as np
+    >>> rotations = np.empty((1, 3, 3))
+    >>> rotations_of_angles(np.array([[np.pi / 2, 0.0, 0.0]]), 2, 1, 0, rotations)
+    >>> rotations[0].round(12) + 0.0
+    array([[ 0., -1.,  0.],
+           [ 1.,  0.,  0.],
+           [ 0.,  0.,  1.]])
+    """
+    j, k = (left + 1) % 3, (left + 2) % 3
+    for b in range(angles.shape[0]):
+        r = rotations[b]
+        cosine, sine = math.cos(angles[b, 0]), math.sin(angles[b, 0])
+        for row in range(3):
+            r[left, row] = 0.0
+            r[row, left] = 0.0
+        r[left, left] = 1.0
+        r[j, j] = cosine
+        r[k, k] = cosine
+        r[j, k] = -sine
+        r[k, j] = sine
+        for place in range(1, 3):
+            axis = middle if place == 1 else right
+            p, q = (axis + 1) % 3, (axis + 2) % 3
+            cosine, sine = math.cos(angles[b, place]), math.sin(angles[b, place])
+            for row in range(3):
+                one, other = r[row, p], r[row, q]
+                r[row, p] = cosine * one + sine * other
+                r[row, q] = cosine * other - sine * one

@@ -12,7 +12,7 @@ from starlette.responses import Response
 
 from service.bulk.process import WorkerProcess
 from service.bulk.reading import Key, many_of_body, many_of_table, model_of
-from service.bulk.rendering import RENDERINGS, Rendering, Stamp, WorkedOut
+from service.bulk.rendering import RENDERINGS, InPieces, Rendering, Stamp, WorkedOut
 from service.bulk.threads import Threads
 from service.problems import Problem
 from service.wire.answers import PartsAnswer, json_problem
@@ -26,13 +26,13 @@ from service.wire.formats import (
 )
 
 # Parsed, worked on and printed in a few milliseconds; more is done in pieces.
-_SHORT_BYTES = 64 * 1024
+SHORT_BYTES = 64 * 1024
 # A few postures of an arm of some rows take less than to hand them to a thread.
 _TINY_BYTES, _FEW = 4096, 4
 # So few that to copy them into one costs less than to send them one by one.
 _FEW_PARTS = 4
 # Parsing holds the interpreter: beyond this size for longer than others should wait.
-_LONG_BYTES = 2_000_000
+LONG_BYTES = 2_000_000
 
 
 class Bulk:
@@ -68,12 +68,12 @@ async def answer_many(request: Request, key: Key) -> Response:
             bulk.threads.refuse_if_stopping,
         )  # fmt: skip
         many = await bulk.threads.run(read)
-        return await _in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
-    if len(raw) > _LONG_BYTES:
+        return await in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
+    if len(raw) > LONG_BYTES:
         worked_out = await bulk.worker.answer(arms, raw, key, wanted, stamp)
         if isinstance(worked_out, Problem):
             return json_problem(worked_out, request.state.request_id)
-        return _answer(worked_out)
+        return answer_of(worked_out)
     return await _of_body(request, raw, key, wanted, stamp)
 
 
@@ -81,7 +81,7 @@ async def _of_body(
     request: Request, raw: bytes, key: Key, wanted: Format, stamp: Stamp
 ) -> Response:
     bulk, arms = request.app.state.bulk, request.app.state.arms
-    if len(raw) > _SHORT_BYTES:
+    if len(raw) > SHORT_BYTES:
         body = await bulk.threads.run(partial(parse_json, raw))
     else:
         body = parse_json(raw)
@@ -91,23 +91,25 @@ async def _of_body(
     def rendering() -> Rendering:
         return RENDERINGS[wanted](many_of_body(arms, key, asked, wanted), stamp)
 
-    if len(raw) > _SHORT_BYTES:
-        return await _in_pieces(bulk.threads, await bulk.threads.run(rendering))
+    if len(raw) > SHORT_BYTES:
+        return await in_pieces(bulk.threads, await bulk.threads.run(rendering))
     if len(raw) <= _TINY_BYTES and len(asked.joints) <= _FEW and arms.answers_at_once:
         return _at_once(rendering())
     return await run_in_threadpool(lambda: _at_once(rendering()))
 
 
 def _at_once(rendering: Rendering) -> Response:
-    return _answer(rendering.outline().answer([rendering.piece(0, rendering.count)]))
+    return answer_of(rendering.outline().answer([rendering.piece(0, rendering.count)]))
 
 
-async def _in_pieces(threads: Threads, rendering: Rendering) -> Response:
+async def in_pieces(threads: Threads, rendering: InPieces) -> Response:
+    """Return the answer whose pieces the threads have made."""
     pieces = await threads.pieces(rendering.piece, rendering.count, rendering.size)
-    return _answer(rendering.outline().answer(pieces))
+    return answer_of(rendering.outline().answer(pieces))
 
 
-def _answer(worked_out: WorkedOut) -> Response:
+def answer_of(worked_out: WorkedOut) -> Response:
+    """Return an answer that is all there, with its count of refusals where items do not tell."""
     is_json = worked_out.media_type.startswith("application/json")
     headers = {} if is_json else {"X-Bad-Rows": str(worked_out.refused)}
     if len(worked_out.parts) <= _FEW_PARTS:

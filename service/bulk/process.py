@@ -6,10 +6,11 @@ One, so that large requests wait for each other and memory stays bounded. Left o
 
 import asyncio
 import multiprocessing
-from collections.abc import Callable
+from collections.abc import Awaitable, Callable
 from concurrent.futures import ProcessPoolExecutor
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import suppress
+from functools import partial
 from multiprocessing.process import BaseProcess
 from typing import TypeVar
 
@@ -17,15 +18,18 @@ from starlette.concurrency import run_in_threadpool
 
 from service.bulk import worker
 from service.bulk.reading import Key
-from service.bulk.rendering import Piece, Stamp, WorkedOut
+from service.bulk.rendering import Outline, Piece, Stamp, WorkedOut
 from service.errors import NotAvailable
 from service.operations.arms import Arms
-from service.operations.questions import stored_arm
+from service.operations.questions import named_cell, stored_arm
 from service.problems import Problem
+from service.storage.ports import Revision
 from service.wire.arms import ReadArm
+from service.wire.cells import CellAt
 from service.wire.formats import Format
 
 Result = TypeVar("Result")
+Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem]]
 
 
 class WorkerProcess:
@@ -46,9 +50,25 @@ class WorkerProcess:
         NotAvailable : the worker died; the next request finds a new one.
         ServiceError : the stored arm that the body names cannot be had.
         """
+        return await self._in_turn(partial(_begun, arms, raw, key, wanted, stamp))
+
+    async def convert(self, raw: bytes, wanted: Format, stamp: Stamp) -> WorkedOut | Problem:
+        """Return the answer to a JSON body that asks for conversions, or why it is refused.
+
+        Raises
+        ------
+        NotAvailable : the worker died; the next request finds a new one.
+        """
+
+        async def begun(pool: ProcessPoolExecutor) -> Outline | Problem:
+            return await _asked(pool, worker.begin_conversions, raw, wanted, stamp)
+
+        return await self._in_turn(begun)
+
+    async def _in_turn(self, begin: Begin) -> WorkedOut | Problem:
         async with self._turn:
             try:
-                return await self._answer(arms, raw, key, wanted, stamp)
+                return await self._answer(begin)
             except BrokenProcessPool:
                 self.stop()
                 raise NotAvailable(
@@ -65,15 +85,10 @@ class WorkerProcess:
             self._process.kill()
         self._pool = self._process = None
 
-    async def _answer(
-        self, arms: Arms[ReadArm], raw: bytes, key: Key, wanted: Format, stamp: Stamp
-    ) -> WorkedOut | Problem:
+    async def _answer(self, begin: Begin) -> WorkedOut | Problem:
         pool = self._started()
-        begun = await _asked(pool, worker.begin, raw, key, wanted, stamp)
         try:
-            if isinstance(begun, worker.ArmWanted):
-                stored = await run_in_threadpool(stored_arm, arms, begun.name)
-                begun = await _asked(pool, worker.go_on, stored.record)
+            begun = await begin(pool)
             if isinstance(begun, Problem):
                 return begun
             pieces: list[Piece] = await asyncio.gather(
@@ -99,6 +114,30 @@ class WorkerProcess:
             started = set(multiprocessing.active_children()) - before
             self._process = started.pop() if started else None
         return self._pool
+
+
+async def _begun(
+    arms: Arms[ReadArm],
+    raw: bytes,
+    key: Key,
+    wanted: Format,
+    stamp: Stamp,
+    pool: ProcessPoolExecutor,
+) -> Outline | Problem:
+    """Have a body about postures read, and the stored arm and cell that it names."""
+    begun = await _asked(pool, worker.begin, raw, key, wanted, stamp)
+    if isinstance(begun, worker.ArmWanted):
+        sent = await run_in_threadpool(_wanted, arms, begun)
+        return await _asked(pool, worker.go_on, *sent)
+    return begun
+
+
+def _wanted(arms: Arms[ReadArm], asked: worker.ArmWanted) -> tuple[Revision | None, CellAt | None]:
+    if asked.name is not None:
+        record = stored_arm(arms, asked.name).record
+        return record, arms.cell_of(record)
+    assert asked.cell is not None
+    return None, named_cell(arms, asked.cell)
 
 
 async def _asked(pool: ProcessPoolExecutor, step: Callable[..., Result], *given: object) -> Result:

@@ -70,12 +70,9 @@ class WorkedOut(NamedTuple):
     refused: int
 
 
-@dataclass(frozen=True)
-class Rendering(ABC):
-    """One answer in one format."""
+class InPieces(ABC):
+    """One answer in one format, made a piece at a time."""
 
-    many: Many
-    stamp: Stamp
     media_type: ClassVar[str]
     joint: ClassVar[bytes] = b""
     tail: ClassVar[bytes] = b""
@@ -95,13 +92,26 @@ class Rendering(ABC):
         """Return the part of vectors ``begin`` ... ``end``."""
 
     @property
+    @abstractmethod
     def count(self) -> int:
         """Vectors in all."""
-        return self.many.rows.count
 
     def outline(self) -> Outline:
         """Return the answer but for its pieces."""
         return Outline(self.media_type, self.head, self.joint, self.tail, self.size, self.count)
+
+
+@dataclass(frozen=True)
+class Rendering(InPieces):
+    """An answer about postures."""
+
+    many: Many
+    stamp: Stamp
+
+    @property
+    def count(self) -> int:
+        """Vectors in all."""
+        return self.many.rows.count
 
 
 class NpyRendering(Rendering):

@@ -1,6 +1,6 @@
 """What runs in the worker process: one large JSON request at a time, parsed, computed, printed.
 
-It is asked in steps, ``begin``, ``go_on`` if the arm is a stored one, ``piece`` ..., ``forget``,
+It is asked in steps, ``begin``, ``go_on`` if arm or cell is stored, ``piece`` ..., ``forget``,
 and keeps the request between them. Left out: the life of the process (process.py).
 """
 
@@ -16,24 +16,29 @@ from typing import Any, cast
 from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError
+from service.bulk import conversion_rendering
+from service.bulk.conversion_reading import VALUES, conversions_of_body
 from service.bulk.reading import Key, many_of_body, model_of
-from service.bulk.rendering import RENDERINGS, Outline, Piece, Rendering, Stamp
+from service.bulk.rendering import RENDERINGS, InPieces, Outline, Piece, Stamp
 from service.details import as_given, shown
 from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
 from service.problems import Problem, problem_of
 from service.storage.ports import Revision
 from service.wire.arms import ReadArm, read_arm
+from service.wire.cells import CellAt, no_cell
 from service.wire.formats import Format
 from service.wire.large_json import LargeBody, parse_large_json
 from service.wire.models import ArmRevision, PosesRequest
+from service.wire.rotations import ConversionsRequest
 
 
 @dataclass(frozen=True)
 class ArmWanted:
-    """The request names a stored arm: the worker has no store."""
+    """The request names a stored arm, or gives one whole that names a cell: here is no store."""
 
-    name: str | ArmRevision
+    name: str | ArmRevision | None
+    cell: str | None = None
 
 
 @dataclass(frozen=True)
@@ -46,22 +51,29 @@ class _Begun:
 
 
 class _OneArm:
-    """Stands in for the store: whatever is asked for, it is this arm."""
+    """Stands in for the store: whatever is asked for, it is this arm, and this cell."""
 
-    def __init__(self, record: Revision | None) -> None:
+    def __init__(self, record: Revision | None, cell: CellAt | None) -> None:
         self._record = record
+        self._cell = cell
 
     def get(self, name: str, revision: int | None = None) -> StoredArm[ReadArm]:
         """Return the arm that was sent along."""
         assert self._record is not None
-        return StoredArm(self._record, _read(_Sent(self._record)))
+        return StoredArm(self._record, _read(_Sent(self._record, self._cell)))
+
+    def newest_cell(self, name: str) -> CellAt:
+        """Return the cell that was sent along."""
+        assert self._cell is not None
+        return self._cell
 
 
 class _Sent:
-    """A stored arm that is the same as another of the same name, revision and digest."""
+    """A stored arm, in its cell, that is the same as another of the same revision and digest."""
 
-    def __init__(self, record: Revision) -> None:
+    def __init__(self, record: Revision, cell: CellAt | None) -> None:
         self.record = record
+        self.cell = cell
         self._identity = (record.name, record.revision, record.digest)
 
     def __hash__(self) -> int:
@@ -73,7 +85,8 @@ class _Sent:
 
 @lru_cache(maxsize=64)
 def _read(sent: _Sent) -> ReadArm:
-    return read_arm(sent.record.document)
+    cell = sent.cell
+    return read_arm(sent.record.document, no_cell if cell is None else lambda _: cell)
 
 
 _kept: dict[str, Any] = {}
@@ -104,22 +117,40 @@ def begin(raw: bytes, key: Key, wanted: Format, stamp: Stamp) -> Problem | ArmWa
         _kept["begun"] = _Begun(key, wanted, stamp, large, asked)
         if isinstance(asked.arm, str | ArmRevision):
             return ArmWanted(asked.arm)
-        return _outline(None)
+        if asked.arm.cell is not None:
+            return ArmWanted(None, asked.arm.cell)
+        return _outline(None, None)
     except (ServiceError, KinematicsError, ValidationError) as error:
         return _refusal(error, body)
 
 
-def go_on(record: Revision) -> Problem | Outline:
-    """Take the stored arm that the request names; the second step."""
+def go_on(record: Revision | None, cell: CellAt | None) -> Problem | Outline:
+    """Take the stored arm that the request names, and the cell it stands in; the second step."""
     try:
-        return _outline(record)
+        return _outline(record, cell)
     except (ServiceError, KinematicsError, ValidationError) as error:
         return _refusal(error, _kept["begun"].body.document)
 
 
+def begin_conversions(raw: bytes, wanted: Format, stamp: Stamp) -> Problem | Outline:
+    """Parse a body that asks for conversions; the first step, after which the pieces come."""
+    forget()
+    body: object = ...
+    try:
+        large = parse_large_json(raw, VALUES, deepest=3)
+        body = large.document
+        asked = ConversionsRequest.model_validate(body)
+        conversions = conversions_of_body(asked, wanted, large.table)
+        rendering = conversion_rendering.RENDERINGS[wanted](conversions, stamp)
+        _kept["rendering"] = rendering
+        return rendering.outline()
+    except (ServiceError, KinematicsError, ValidationError) as error:
+        return _refusal(error, body)
+
+
 def piece(first: int, last: int) -> Piece:
     """Return the part of the answer for vectors ``first`` ... ``last``."""
-    return cast(Rendering, _kept["rendering"]).piece(first, last)
+    return cast(InPieces, _kept["rendering"]).piece(first, last)
 
 
 def forget() -> None:
@@ -128,10 +159,10 @@ def forget() -> None:
     gc.collect()
 
 
-def _outline(record: Revision | None) -> Outline:
+def _outline(record: Revision | None, cell: CellAt | None) -> Outline:
     begun = cast(_Begun, _kept["begun"])
-    arms = cast(Arms[ReadArm], _OneArm(record))
-    many = many_of_body(arms, begun.key, begun.asked, begun.wanted, begun.body.joints)
+    arms = cast(Arms[ReadArm], _OneArm(record, cell))
+    many = many_of_body(arms, begun.key, begun.asked, begun.wanted, begun.body.table)
     rendering = RENDERINGS[begun.wanted](many, begun.stamp)
     _kept["rendering"] = rendering
     return rendering.outline()

@@ -9,7 +9,7 @@ Left out: what is in a revision.
 from dataclasses import dataclass
 from time import monotonic
 
-from service.storage.ports import ArmStorage
+from service.storage.ports import Storage
 
 LOOKED_FOR_S = 0.002
 """How long a look at the state of the store is good for; asking takes 10 us, an answer some 200."""
@@ -27,14 +27,14 @@ class _Looked:
 class Heads:
     """Head numbers of a store, looked up again whenever anything was written to it."""
 
-    def __init__(self, storage: ArmStorage) -> None:
+    def __init__(self, storage: Storage) -> None:
         self._storage = storage
         self._looked = _Looked(None, {}, 0.0)
 
     @property
     def at_once(self) -> bool:
-        """Whether a look takes no more than a look into a local file; told by the last one."""
-        return self._looked.state is not None
+        """Whether a look takes no more than a look into a local file."""
+        return self._looked.state is not None or self._storage.state() is not None
 
     def forget(self) -> None:
         """Look everything up again: this process has written."""

@@ -27,7 +27,7 @@ from kinematics.singularity import STATES
 from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE
 from kinematics.travel_limits import limits_exceeded, travel_margin
-from service.convert import jacobians_out, orientation_out
+from service.convert import jacobians_out, pose_orientations_out
 from service.operations.jacobians import Wanted, base_in_axes_of, jacobian_items
 from service.operations.joint_rows import JointRows
 from service.operations.poses import placed, plain_poses, pose_item, pose_items
@@ -168,7 +168,7 @@ class ManyPoses(Many):
             motion = motion_of(question.arm, values, question.tool.tool_in_flange)
         tool_in_frame = placed(question, values, motion)
         position = question.units.length_out(tool_in_frame[:, :3, 3])
-        values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+        values, from_lock = pose_orientations_out(question.units, question.form, tool_in_frame)
         return np.hstack([position, values]), motion, from_lock <= LOCK_NOTICE
 
 

@@ -16,7 +16,7 @@ from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE
 from kinematics.transforms import in_frame
 from kinematics.travel_limits import margin_and_outside, travel_findings
-from service.convert import Units, finding_out, orientation_out, orientation_values_out
+from service.convert import Units, finding_out, orientation_values_out, pose_orientations_out
 from service.details import Detail, pointer, shown
 from service.operations.joint_rows import JointRows
 from service.operations.questions import Question
@@ -47,7 +47,7 @@ def pose_items(question: Question, rows: JointRows, *, singularity: bool, links:
     motion = motion_of(arm, rows.values, tool_in_flange) if singularity else None
     tool_in_frame = placed(question, rows.values, motion)
     positions = question.units.length_out(tool_in_frame[:, :3, 3]).tolist()
-    values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+    values, from_lock = pose_orientations_out(question.units, question.form, tool_in_frame)
     orientations, locked = values.tolist(), (from_lock <= LOCK_NOTICE).tolist()
     told = judged(question, rows.values, motion) if motion is not None else None
     margins, outside = (found.tolist() for found in margin_and_outside(arm, rows.values))
@@ -120,7 +120,7 @@ def plain_poses(question: Question, rows: JointRows) -> tuple[FloatArray, FloatA
     if question.repaired or rows.refused or outside.any():
         return None
     tool_in_frame = placed(question, rows.values, None)
-    values, from_lock = orientation_out(question.units, question.form, tool_in_frame)
+    values, from_lock = pose_orientations_out(question.units, question.form, tool_in_frame)
     if (from_lock <= LOCK_NOTICE).any():
         return None
     return question.units.length_out(tool_in_frame[:, :3, 3]), values

@@ -20,6 +20,7 @@ from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
 from service.wire import models
 from service.wire.arms import ReadArm, read_arm_model
+from service.wire.cells import CellAt
 from service.wire.poses import read_pose
 
 # One entry per arm, tool and task in use, some 5 kB each.
@@ -158,7 +159,11 @@ def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm)
     """
     if isinstance(asked, models.Arm):
         try:
-            read = _read_whole(_Whole(asked))
+            read = (
+                _read_whole(_Whole(asked))
+                if asked.cell is None
+                else read_arm_model(asked, arms.newest_cell)
+            )
         except KinematicsError as error:
             raise error.below("arm") from None
         except ServiceError as error:
@@ -185,6 +190,20 @@ class _Whole:
 @lru_cache(maxsize=models.WHOLE_ARMS_KEPT)
 def _read_whole(whole: _Whole) -> ReadArm:
     return read_arm_model(whole.given)
+
+
+def named_cell(arms: Arms[ReadArm], name: str) -> CellAt:
+    """Return the cell that an arm given whole in a body names.
+
+    Raises
+    ------
+    UnknownArm
+    """
+    try:
+        return arms.newest_cell(name)
+    except ServiceError as error:
+        error.where = ("arm", *error.where)
+        raise
 
 
 def stored_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision) -> StoredArm[ReadArm]:

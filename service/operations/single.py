@@ -35,7 +35,7 @@ LONGEST_NUMBER = 3
 def single_pose(arms: Arms[ReadArm], asked: SingleQuestion, joints: JointsAsked) -> SingleAnswer:
     """Return the tool pose of one posture."""
     question = question_asked(arms, asked, moving=False)
-    return _answer(question, pose_item(question, _row(question, joints)))
+    return _answer(question, pose_item(question, joint_row(question, joints)))
 
 
 def single_jacobian(
@@ -43,7 +43,7 @@ def single_jacobian(
 ) -> SingleAnswer:
     """Return the Jacobian of one posture."""
     question = question_asked(arms, asked, moving=True)
-    rows = JointRows.of_one(_row(question, joints))
+    rows = JointRows.of_one(joint_row(question, joints))
     return _answer(question, jacobian_items(question, rows, Wanted(), singularity=True))
 
 
@@ -88,7 +88,8 @@ def _question_about(stored: StoredArm[ReadArm], asked: SingleQuestion, moving: b
     )
 
 
-def _row(question: Question, joints: JointsAsked) -> list[float]:
+def joint_row(question: Question, joints: JointsAsked) -> list[float]:
+    """Return the joint values in SI; what is wrong with one leads to its parameter."""
     try:
         return read_joint_row(question.arm, question.units, joints.values)
     except ServiceError as error:

@@ -3,7 +3,11 @@
 Left out: the regrouping itself (the core's).
 """
 
-from kinematics.arm import BASE
+from dataclasses import replace
+
+import numpy as np
+
+from kinematics.arm import BASE, Arm
 from kinematics.findings import FINE, Finding
 from kinematics.table import Convention, Table
 from kinematics.table_conversion import converted
@@ -13,6 +17,10 @@ from service.operations.questions import meant_arm
 from service.wire import models
 from service.wire.arms import ReadArm, arm_document
 
+_LEFT = (
+    "the base is no longer where the cell places it, so the arm is given without its cell: base "
+    "and frames of the cell are its own now"
+)
 TEXTS = ("title", "status", "notes")
 
 
@@ -21,13 +29,25 @@ def converted_table(arms: Arms[ReadArm], asked: models.ConversionRequest) -> dic
     meant = meant_arm(arms, asked.arm)
     units = meant.read.units
     other = converted(meant.arm, Convention(asked.to))
+    left_cell = _must_leave_cell(meant.arm, other)
+    if left_cell:
+        other = replace(other, cell=None)
     texts = {key: meant.read.document[key] for key in TEXTS if key in meant.read.document}
     findings = [*meant.repaired, *_moved(meant.arm.table, Convention(asked.to))]
+    if left_cell:
+        findings.append(Finding(FINE, "cell-left", _LEFT, 0.0, 0.0))
     return {
         "arm": arm_document(other, units, texts),
         "units": units.name,
         "findings": [finding_out(units, finding) for finding in findings],
     }
+
+
+def _must_leave_cell(before: Arm, after: Arm) -> bool:
+    """Whether the base has moved away from where the cell places it."""
+    cell = before.cell
+    places = cell is not None and cell.places_arm
+    return places and not np.array_equal(before.base_in_world, after.base_in_world)
 
 
 def _moved(before: Table, after: Convention) -> list[Finding]:

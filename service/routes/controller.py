@@ -18,7 +18,7 @@ from service.operations.arms import Arms
 from service.operations.single import joint_count, single_jacobian, single_pose
 from service.problems import Problem
 from service.refusals import problem_at
-from service.routes.direct import KernelRoute
+from service.routes.direct import PostureRoute
 from service.web.document import documented
 from service.wire import one_answer
 from service.wire.answers import FreshAnswer
@@ -41,7 +41,7 @@ from service.wire.query import known_ones, query_pairs
 from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
 from service.wire.single import JointsAsked, SingleAnswer, SingleQuestion
 
-router = APIRouter(route_class=KernelRoute)
+router = APIRouter(route_class=PostureRoute)
 _MEDIA = ("application/json", "text/plain", "text/csv")
 Ask = Callable[[Arms[ReadArm], SingleQuestion, JointsAsked], SingleAnswer]
 

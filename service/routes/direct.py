@@ -5,35 +5,42 @@ come in the format asked for. What the framework would prepare for a handler is 
 take a third of the time of a short answer.
 """
 
-from typing import ClassVar
+from typing import ClassVar, Literal
 
 from fastapi.routing import APIRoute
 from starlette.requests import Request
 from starlette.responses import Response
 from starlette.types import Receive, Scope, Send
 
-from service.readiness import Readiness
+from service.readiness import Kernels
 
 
 class DirectRoute(APIRoute):
     """Hands the request straight to the handler; refusals are the app's to answer, as ever."""
 
-    needs_kernels: ClassVar[bool] = False
+    kernels: ClassVar[Literal["postures", "relations"] | None] = None
+    """The kernels the handler calls; it is not called before they are ready."""
 
     async def handle(self, scope: Scope, receive: Receive, send: Send) -> None:
         """Answer one request; another method than the route's is the framework's to refuse."""
         if scope["method"] not in (self.methods or ()):
             await super().handle(scope, receive, send)
             return
-        if self.needs_kernels:
-            readiness: Readiness = scope["app"].state.readiness
-            if not readiness.is_ready:
-                await readiness.wait()
+        if self.kernels is not None:
+            kernels: Kernels = getattr(scope["app"].state.readiness, self.kernels)
+            if not kernels.are_ready:
+                await kernels.wait()
         answer: Response = await self.endpoint(Request(scope, receive, send))
         await answer(scope, receive, send)
 
 
-class KernelRoute(DirectRoute):
-    """A direct route whose handler calls compiled kernels; waits until they are ready."""
+class PostureRoute(DirectRoute):
+    """A direct route that answers about postures of arms."""
 
-    needs_kernels = True
+    kernels = "postures"
+
+
+class RelationRoute(DirectRoute):
+    """A direct route that answers about rotations and frames."""
+
+    kernels = "relations"

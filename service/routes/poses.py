@@ -10,7 +10,7 @@ from starlette.requests import Request
 from starlette.responses import Response
 
 from service.bulk.answering import answer_many
-from service.routes.direct import KernelRoute
+from service.routes.direct import PostureRoute
 from service.web.document import documented
 from service.web.schemas import BYTES, TEXT
 from service.wire import csv_rows, npy
@@ -19,7 +19,7 @@ from service.wire.formats import JSON
 from service.wire.models import JacobiansRequest, PosesRequest
 from service.wire.question_parameters import TABLE_PARAMETERS
 
-router = APIRouter(route_class=KernelRoute)
+router = APIRouter(route_class=PostureRoute)
 
 _TABLES = (
     "\n\nJoint vectors may also come as a table, with all else in the query: `application/x-npy` "

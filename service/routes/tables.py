@@ -9,7 +9,7 @@ from starlette.requests import Request
 from starlette.responses import Response
 
 from service.operations.tables import converted_table
-from service.routes.direct import KernelRoute
+from service.routes.direct import PostureRoute
 from service.web.document import documented
 from service.wire.answer_models import ConversionAnswer
 from service.wire.answers import json_answer
@@ -17,7 +17,7 @@ from service.wire.body import read_json
 from service.wire.models import ConversionRequest
 from service.wire.query import known_parameters
 
-router = APIRouter(route_class=KernelRoute)
+router = APIRouter(route_class=PostureRoute)
 
 
 @router.post(

@@ -10,7 +10,7 @@ import time
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Protocol
+from typing import Any, Protocol
 
 import platformdirs
 import sqlalchemy as sa
@@ -20,7 +20,7 @@ from service.storage.engines import BUSY_TIMEOUT_S, by_url, in_memory, on_file
 from service.storage.inspection import APPLICATION_ID, inspect, unusable
 from service.storage.migrate import known_layouts, layout_of, migrate
 from service.storage.server_lock import ServerLock
-from service.storage.sql import SqlArmStorage, reason_of, sqlite_error_name, writing
+from service.storage.sql import SqlStorage, reason_of, sqlite_error_name, writing
 from service.storage.state import FileState
 
 _LOG = logging.getLogger(__name__)
@@ -36,12 +36,13 @@ class DatabaseSetting(Protocol):
 
 @dataclass(frozen=True)
 class OpenStorage:
-    """A store that is ready; ``notices`` are for the start-up lines and the first page.
+    """Stores that are ready; ``notices`` are for the start-up lines and the first page.
 
     ``writable`` says whether users can store arms; ``description`` where the arms are kept.
     """
 
-    storage: SqlArmStorage
+    arms: SqlStorage
+    cells: SqlStorage
     description: str
     writable: bool
     notices: list[str] = field(default_factory=list)
@@ -102,28 +103,37 @@ def _open_server(url: sa.URL) -> OpenStorage:
     shown = url.render_as_string(hide_password=True)
     try:
         engine = by_url(url)
-        with engine.begin() as connection:
-            # Servers that start at once wait here for the first to lay out the database.
-            connection.execute(sa.select(sa.func.pg_advisory_xact_lock(APPLICATION_ID)))
-            present = layout_of(connection)
-            if present is not None and present not in known_layouts():
-                raise StorageUnusable(
-                    f"a newer version of armspan wrote {shown} (layout {present})",
-                    way_out="start that version, or name another database",
-                )
-            migrate(connection)
     except ModuleNotFoundError as error:
         raise StorageUnusable(
             f"no PostgreSQL driver is installed ({error.name})",
             way_out="install armspan[pg]",
         ) from error
+    try:
+        _lay_out(engine, shown)
     except sa.exc.DBAPIError as error:
+        engine.dispose()
         _LOG.error("%s: %s", shown, error.orig)
         raise StorageUnusable(
             f"the database server of {shown} does not let armspan in",
             way_out="see the log for its answer; check address, user and rights",
         ) from error
-    return OpenStorage(SqlArmStorage(engine), shown, True, [], (engine.dispose,))
+    except BaseException:
+        engine.dispose()
+        raise
+    return OpenStorage(*_both(engine), shown, True, [], (engine.dispose,))
+
+
+def _lay_out(engine: sa.Engine, shown: str) -> None:
+    with engine.begin() as connection:
+        # Servers that start at once wait here for the first to lay out the database.
+        connection.execute(sa.select(sa.func.pg_advisory_xact_lock(APPLICATION_ID)))
+        present = layout_of(connection)
+        if present is not None and present not in known_layouts():
+            raise StorageUnusable(
+                f"a newer version of armspan wrote {shown} (layout {present})",
+                way_out="start that version, or name another database",
+            )
+        migrate(connection)
 
 
 def _open_file(path: Path, serving: bool) -> OpenStorage:
@@ -155,7 +165,7 @@ def _open_file(path: Path, serving: bool) -> OpenStorage:
         return _open_unwritable(path, reason_of(error), is_empty)
     state = FileState(engine)
     return OpenStorage(
-        SqlArmStorage(engine, state=state),
+        *_both(engine, state=state),
         str(path),
         True,
         [],
@@ -232,10 +242,10 @@ def _open_unwritable(path: Path, reason: str, is_empty: bool) -> OpenStorage:
             engine.dispose()
             raise unusable(path, f"it must be brought to a newer layout, and {reason}")
         state = FileState(engine)
-        storage = SqlArmStorage(engine, refuses_writes=why, takes_seeds=False, state=state)
+        both = _both(engine, refuses_writes=why, takes_seeds=False, state=state)
         notice = f"{why}: stored arms can be used, nothing can be stored"
         closings = (state.close, engine.dispose)
-        return OpenStorage(storage, f"{path} (read only)", False, [notice], closings)
+        return OpenStorage(*both, f"{path} (read only)", False, [notice], closings)
     raise unusable(path, "it can be neither written nor read")
 
 
@@ -243,6 +253,10 @@ def _open_memory(why: str) -> OpenStorage:
     engine = in_memory()
     with writing(engine) as connection:
         migrate(connection)
-    storage = SqlArmStorage(engine, refuses_writes=why)
+    both = _both(engine, refuses_writes=why)
     notice = f"{why}: nothing can be stored" if why else "arms are kept until the service stops"
-    return OpenStorage(storage, "memory", not why, [notice], (engine.dispose,))
+    return OpenStorage(*both, "memory", not why, [notice], (engine.dispose,))
+
+
+def _both(engine: sa.Engine, **how: Any) -> tuple[SqlStorage, SqlStorage]:
+    return SqlStorage(engine, "arm", **how), SqlStorage(engine, "cell", **how)

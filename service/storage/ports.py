@@ -1,15 +1,26 @@
-"""What the service asks of a store of arms: revisions that never change and a head for each name.
+"""What the service asks of a store: revisions that never change, and a head for each name.
 
-Left out: how it is kept (``sql.py``), where (``opening.py``), and what a document means.
+There is one such store for each kind of document, arms and cells; an arm may name a cell, and then
+stands in one revision of it.
+
+Left out: how they are kept (``sql.py``), where (``opening.py``), and what a document means.
 """
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from enum import Enum
-from typing import Any, Protocol
+from typing import Any, Literal, NamedTuple, Protocol
 
 Document = dict[str, Any]
+Kind = Literal["arm", "cell"]
+
+
+class CellRevision(NamedTuple):
+    """The revision of a cell that a revision of an arm stands in."""
+
+    name: str
+    revision: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,21 +34,22 @@ class Hiding:
 
 @dataclass(frozen=True, slots=True)
 class Revision:
-    """One stored state of one arm; nothing in it changes but ``hidden``, which is set once.
+    """One stored state of one document; nothing in it changes but ``hidden``, which is set once.
 
-    ``document`` is the arm as on the wire. ``created_at`` is UTC, in whole milliseconds.
-    An author or reason that was not said is the empty string.
+    ``document`` is as on the wire, ``digests`` are under the names they have there, and ``digest``
+    stands for all of them. ``created_at`` is UTC, in whole milliseconds. An author or reason that
+    was not said is the empty string.
     """
 
     name: str
     revision: int
     document: Document
-    table_digest: str
-    setup_digest: str
+    digests: Mapping[str, str]
     digest: str
     author: str
     reason: str
     created_at: datetime
+    cell: CellRevision | None = None
     hidden: Hiding | None = None
 
 
@@ -47,12 +59,19 @@ class Draft:
 
     name: str
     document: Document
-    table_digest: str
-    setup_digest: str
+    digests: Mapping[str, str]
     digest: str
     author: str
     reason: str
     at: datetime
+    cell: CellRevision | None = None
+
+
+class Following(NamedTuple):
+    """An arm's next revision, for the next revision of its cell: if its head is still ``head``."""
+
+    draft: Draft
+    head: int
 
 
 class Head(Enum):
@@ -76,8 +95,26 @@ class HeadDiffers(Exception):
         self.current = current
 
 
-class ArmStorage(Protocol):
-    """Revisions of arms by name.
+class CellMoved(Exception):
+    """While a write was prepared the cell was changed, or which arms stand in it: read again."""
+
+
+class CellInUse(Exception):
+    """The cell cannot be hidden: ``arms`` stand in it.
+
+    Examples
+    --------
+    >>> CellInUse(["press-arm"]).arms
+    ['press-arm']
+    """
+
+    def __init__(self, arms: Sequence[str]) -> None:
+        super().__init__("arms stand in the cell")
+        self.arms = arms
+
+
+class Storage(Protocol):
+    """Revisions of documents of one kind, by name.
 
     Revision numbers of a name count from 1 and are never used again, also after the name was
     hidden and created anew. Every method may raise ``StorageUnavailable``; a write that raises
@@ -102,15 +139,27 @@ class ArmStorage(Protocol):
     def count(self) -> int:
         """Return the number of names that are not hidden."""
 
-    def write(self, draft: Draft, expected: int | Head, *, seed: bool = False) -> Revision:
+    def standing_in(self, cell: str) -> Sequence[Revision]:
+        """Return the heads that stand in a cell, by name, hidden left out."""
+
+    def write(
+        self,
+        draft: Draft,
+        expected: int | Head,
+        *,
+        seed: bool = False,
+        following: Sequence[Following] = (),
+    ) -> Revision:
         """Store ``draft`` as the next revision if the head is as expected, in one step.
 
         ``seed`` writes what ships with the service also into a store in memory that users
-        cannot write to.
+        cannot write to. ``following`` are the arms that stand in a cell, written with it.
 
         Raises
         ------
         HeadDiffers : the head is another one, or there is one (``Head.ABSENT``), or there is none.
+        CellMoved : the draft's cell is at another revision, or is hidden; or ``following`` are not
+            the arms that stand in the cell, at the heads they have.
         """
 
     def hide(self, name: str, expected: int | Head, hiding: Hiding) -> None:
@@ -119,6 +168,7 @@ class ArmStorage(Protocol):
         Raises
         ------
         HeadDiffers : the head is another one, or there is none.
+        CellInUse : arms stand in the cell.
         """
 
     def state(self) -> int | None:

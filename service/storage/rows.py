@@ -4,12 +4,13 @@ Left out: the questions asked of the database (``sql.py``) and its columns (``sc
 """
 
 import json
+from collections.abc import Mapping
 from datetime import UTC, datetime, timedelta
 from typing import Any
 
 import sqlalchemy as sa
 
-from service.storage.ports import Document, Draft, Hiding, Revision
+from service.storage.ports import CellRevision, Draft, Hiding, Revision
 
 _EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
 
@@ -20,32 +21,34 @@ def revision_of(draft: Draft, number: int) -> Revision:
         name=draft.name,
         revision=number,
         document=draft.document,
-        table_digest=draft.table_digest,
-        setup_digest=draft.setup_digest,
+        digests=draft.digests,
         digest=draft.digest,
         author=draft.author,
         reason=draft.reason,
         created_at=moment(milliseconds(draft.at)),
+        cell=draft.cell,
     )
 
 
 def row_of(revision: Revision) -> dict[str, Any]:
-    """Return the values of the columns of ``arm_revisions`` for a revision not yet hidden."""
+    """Return the columns of ``REVISIONS``, but for the kind, for a revision not yet hidden."""
+    cell = revision.cell
     return {
         "name": revision.name,
         "revision": revision.revision,
         "document": _text_of(revision.document),
-        "table_digest": revision.table_digest,
-        "setup_digest": revision.setup_digest,
+        "digests": _text_of(revision.digests),
         "digest": revision.digest,
         "author": revision.author,
         "reason": revision.reason,
         "created_at_ms": milliseconds(revision.created_at),
+        "cell": None if cell is None else cell.name,
+        "cell_revision": None if cell is None else cell.revision,
     }
 
 
 def revision_from(row: sa.Row[Any]) -> Revision:
-    """Return the revision of a row of ``arm_revisions``."""
+    """Return the revision of a row of ``REVISIONS``."""
     hidden = None
     if row.hidden_at_ms is not None:
         hidden = Hiding(row.hidden_by, row.hidden_reason, moment(row.hidden_at_ms))
@@ -53,12 +56,12 @@ def revision_from(row: sa.Row[Any]) -> Revision:
         name=row.name,
         revision=row.revision,
         document=json.loads(row.document),
-        table_digest=row.table_digest,
-        setup_digest=row.setup_digest,
+        digests=json.loads(row.digests),
         digest=row.digest,
         author=row.author,
         reason=row.reason,
         created_at=moment(row.created_at_ms),
+        cell=None if row.cell is None else CellRevision(row.cell, row.cell_revision),
         hidden=hidden,
     )
 
@@ -85,6 +88,6 @@ def moment(unix_milliseconds: int) -> datetime:
     return _EPOCH + timedelta(milliseconds=unix_milliseconds)
 
 
-def _text_of(document: Document) -> str:
+def _text_of(document: Mapping[str, Any]) -> str:
     # ASCII only: no database has to agree with another on an encoding.
     return json.dumps(document, ensure_ascii=True, allow_nan=False, separators=(",", ":"))

@@ -1,4 +1,4 @@
-"""The two tables behind the store: every revision ever written, and one head for each name.
+"""The two tables behind the stores: every revision ever written, and one head for each name.
 
 Left out: how a database gets them (``migrations``); a test holds both to the same columns.
 """
@@ -11,34 +11,41 @@ METADATA = sa.MetaData()
 # come in the order of their bytes on every database.
 NAME = sa.String(48).with_variant(sa.String(48, collation="C"), "postgresql")
 
+KIND = sa.String(8)
+
 REVISIONS = sa.Table(
-    "arm_revisions",
+    "document_revisions",
     METADATA,
+    sa.Column("kind", KIND, primary_key=True),
     sa.Column("name", NAME, primary_key=True),
     sa.Column("revision", sa.Integer, primary_key=True, autoincrement=False),
     # JSON as text: a JSON column of a database may print numbers its own way.
     sa.Column("document", sa.Text, nullable=False),
-    sa.Column("table_digest", sa.String(64), nullable=False),
-    sa.Column("setup_digest", sa.String(64), nullable=False),
+    # JSON as text too: each kind of document has digests of its own.
+    sa.Column("digests", sa.Text, nullable=False),
     sa.Column("digest", sa.String(8), nullable=False),
     sa.Column("author", sa.Text, nullable=False),
     sa.Column("reason", sa.Text, nullable=False),
     # Unix milliseconds: the same number on every database, and no time zone to lose.
     sa.Column("created_at_ms", sa.BigInteger, nullable=False),
+    # Which revision of which cell an arm stands in; both empty where it names none.
+    sa.Column("cell", NAME),
+    sa.Column("cell_revision", sa.Integer),
     sa.Column("hidden_by", sa.Text),
     sa.Column("hidden_reason", sa.Text),
     sa.Column("hidden_at_ms", sa.BigInteger),
 )
 
 HEADS = sa.Table(
-    "arm_heads",
+    "document_heads",
     METADATA,
+    sa.Column("kind", KIND, primary_key=True),
     sa.Column("name", NAME, primary_key=True),
     sa.Column("revision", sa.Integer, nullable=False),
     sa.Column("hidden", sa.Boolean, nullable=False),
     sa.ForeignKeyConstraint(
-        ["name", "revision"],
-        ["arm_revisions.name", "arm_revisions.revision"],
-        name="arm_heads_revision",
+        ["kind", "name", "revision"],
+        [f"document_revisions.{column}" for column in ("kind", "name", "revision")],
+        name="document_heads_revision",
     ),
 )

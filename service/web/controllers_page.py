@@ -9,6 +9,7 @@ from html import escape
 from service.cautions import CAUTIONS
 from service.problems import ANSWERS, KINDS
 from service.web.examples import examples_of, folder
+from service.wire import rotation_flat
 from service.wire.controller import MOST_SCALE
 from service.wire.fixed_text import NUMBER_WIDTH, WIDTHS, places
 from service.wire.flat import FLAGS
@@ -53,10 +54,16 @@ def controllers_html() -> bytes:
     """Return the page."""
     case = examples_of("pose")["txt"]
     query = "&".join(f"{name}={value}" for name, value in case.query.items())
+    turn = examples_of("rotation")["txt"]
+    turning = "&".join(f"{name}={value}" for name, value in turn.query.items())
     lean, dip = EXAMPLE_JOINTS["lean"], EXAMPLE_JOINTS["dip"]
     return _PAGE.format(
         question=escape(f"GET /v1/arms/{case.request['path']['arm']}/pose?{query}"),
         line=escape(case.answer.rstrip("\r\n")),
+        turning=escape(f"GET /v1/rotations?{turning}"),
+        turned=escape(turn.answer.rstrip("\r\n")),
+        form_width=rotation_flat.WIDTHS["form"],
+        units_width=rotation_flat.WIDTHS["units"],
         places=_places(),
         width=NUMBER_WIDTH,
         codes=_codes(),
@@ -128,6 +135,14 @@ CR LF at the end. The line has the same length whatever it says, also when it is
 refused with code 113. A Jacobian comes row by row: <code>/jacobian?row=1&amp;format=txt</code> to
 <code>row=6</code>, for vx vy vz wx wy wz; in place of x to form there is one field of {width}
 characters for each joint.</p>
+<h2 id="orientation">An orientation in another form</h2>
+<pre>{turning}
+{turned}</pre>
+<p><code>ok</code> to <code>t_ms</code> stand as above. Then come the numbers of the form
+<code>to</code>, three, four, or nine of a matrix by rows, each in {width} characters: degrees with
+four decimals, radians and pure numbers with nine; then <code>form</code> in {form_width} and
+<code>units</code> in {units_width}. What is sent as <code>r1</code> and so on are the numbers of
+the form <code>from</code>. Neither form nor units are guessed.</p>
 <h2>What to send</h2>
 <ul>
 <li>Joint values in row order: <code>q=0,-90,90</code>, or <code>q1=0&amp;q2=-90&amp;q3=90</code>.

@@ -16,18 +16,21 @@ from kinematics.arm import (
     SingularityThresholds,
     Tool,
 )
+from kinematics.cell import Seen
 from kinematics.digests import Digests, digests_of
 from kinematics.findings import Finding
+from kinematics.in_cell import InCell
 from kinematics.table import Convention, Coupling, FloatArray, JointKind, Row, Table, Travel
 from kinematics.tolerances import MOST_ROWS, SINGULAR
 from service.convert import UNITS, Units
-from service.errors import NotAvailable, TooLarge, UnusableValue
+from service.errors import TooLarge, UnusableValue
+from service.storage.ports import CellRevision
 from service.wire import models
+from service.wire.cells import RESERVED, CellAt, CellOf, no_cell, reserved_name
 from service.wire.poses import pose_answer, read_pose
 
-RESERVED = frozenset(
-    {"base", "world", "flange", "tool", *(f"link-{number}" for number in range(MOST_ROWS + 1))}
-)
+# What of the cell moves with an arm is seen at given joint values only.
+_MOVING = "ask POST /v1/frames, or GET /v1/arms/{arm}/relation, with joint values"
 
 
 @dataclass(frozen=True, eq=False)
@@ -40,21 +43,27 @@ class ReadArm:
     document: dict[str, Any]
     digests: Digests
 
+    @property
+    def stands_in(self) -> CellRevision | None:
+        """The revision of the cell it was read with, if it names one."""
+        cell = self.arm.cell
+        return None if cell is None else CellRevision(cell.name, cell.revision)
 
-def read_arm(document: object) -> ReadArm:
-    """Return the arm a document describes.
+
+def read_arm(document: object, cell_of: CellOf = no_cell) -> ReadArm:
+    """Return the arm a document describes; ``cell_of`` gives the cell it may name.
 
     Raises
     ------
     pydantic.ValidationError : shapes and types.
     ServiceError, KinematicsError : values; ``where`` leads from the document's root.
     """
-    return read_arm_model(models.Arm.model_validate(document))
+    return read_arm_model(models.Arm.model_validate(document), cell_of)
 
 
-def read_arm_model(given: models.Arm) -> ReadArm:
+def read_arm_model(given: models.Arm, cell_of: CellOf = no_cell) -> ReadArm:
     """Return the arm of a document whose shapes and types are already checked."""
-    _refuse_what_is_not_there(given)
+    _refuse_beforehand(given)
     units = UNITS[given.units]
     found: list[Finding] = []
 
@@ -71,14 +80,18 @@ def read_arm_model(given: models.Arm) -> ReadArm:
         name: NamedFrame(placed(frame, "frames", name), frame.in_, frame.number)
         for name, frame in given.frames.items()
     }
+    base_in_world = np.eye(4) if given.base is None else placed(given.base, "base")
+    seen, cell = Seen(None, {}, {}), None
+    if given.cell is not None:
+        seen, cell = _seen_cell(given, cell_of(given.cell), frames)
     thresholds = given.singularity_thresholds or models.Thresholds()
     arm = Arm(
         name=given.name,
         table=Table(Convention(given.convention), rows),
-        base_in_world=np.eye(4) if given.base is None else placed(given.base, "base"),
+        base_in_world=base_in_world if seen.base_in_world is None else seen.base_in_world,
         tools=tools,
         default_tool=given.default_tool,
-        frames=frames,
+        frames=frames | seen.frames,
         combined_travel=tuple(
             _combined(combined, rows, units) for combined in given.combined_travel
         ),
@@ -89,11 +102,8 @@ def read_arm_model(given: models.Arm) -> ReadArm:
         characteristic_length=None
         if given.characteristic_length is None
         else float(units.length_in(given.characteristic_length)),
-        joint_uncertainty=tuple(
-            units.value_in(value, unit)
-            for value, unit in zip(given.joint_uncertainty, _driven_units(rows), strict=False)
-        )
-        + tuple(given.joint_uncertainty[len(_driven_units(rows)) :]),
+        joint_uncertainty=_joint_uncertainty(given.joint_uncertainty, rows, units),
+        cell=cell,
     )
     document = given.model_dump(mode="json", by_alias=True, exclude_unset=True)
     return ReadArm(arm, units, tuple(found), document, digests_of(arm))
@@ -101,10 +111,6 @@ def read_arm_model(given: models.Arm) -> ReadArm:
 
 def arm_document(arm: Arm, units: Units, texts: Mapping[str, Any]) -> dict[str, Any]:
     """Return an arm as a document in ``units``; ``texts`` holds title, status and notes."""
-
-    def pose(x_in_y: FloatArray) -> dict[str, Any]:
-        return pose_answer(x_in_y, "matrix", units)
-
     document: dict[str, Any] = {
         "name": arm.name,
         "convention": arm.table.convention.value,
@@ -120,20 +126,7 @@ def arm_document(arm: Arm, units: Units, texts: Mapping[str, Any]) -> dict[str, 
             }
             for combined in arm.combined_travel
         ]
-    if not np.array_equal(arm.base_in_world, np.eye(4)):
-        document["base"] = pose(arm.base_in_world)
-    if arm.tools:
-        document["tools"] = {
-            name: pose(tool.tool_in_flange) | _numbered(tool.number)
-            for name, tool in arm.tools.items()
-        }
-    if arm.default_tool is not None:
-        document["default_tool"] = arm.default_tool
-    if arm.frames:
-        document["frames"] = {
-            name: pose(frame.frame_in_parent) | {"in": frame.parent} | _numbered(frame.number)
-            for name, frame in arm.frames.items()
-        }
+    document |= _setup_document(arm, units)
     if arm.joint_uncertainty:
         document["joint_uncertainty"] = [
             units.shortest_out(value, unit)
@@ -148,15 +141,36 @@ def arm_document(arm: Arm, units: Units, texts: Mapping[str, Any]) -> dict[str, 
     return document
 
 
-def _refuse_what_is_not_there(given: models.Arm) -> None:
-    if given.cell is not None:
-        raise NotAvailable(
-            "cells are not available in this version",
-            where=("cell",),
-            value=given.cell,
-            way_out='leave "cell" out and give the frames in the arm',
-            status=422,
-        )
+def _setup_document(arm: Arm, units: Units) -> dict[str, Any]:
+    """Return base, tools and frames, and the cell in place of what is the cell's."""
+
+    def pose(x_in_y: FloatArray) -> dict[str, Any]:
+        return pose_answer(x_in_y, "matrix", units)
+
+    document: dict[str, Any] = {}
+    of_cell = frozenset() if arm.cell is None else arm.cell.frames
+    if arm.cell is not None:
+        document["cell"] = arm.cell.name
+    is_placed = arm.cell is not None and arm.cell.places_arm
+    if not is_placed and not np.array_equal(arm.base_in_world, np.eye(4)):
+        document["base"] = pose(arm.base_in_world)
+    if arm.tools:
+        document["tools"] = {
+            name: pose(tool.tool_in_flange) | _numbered(tool.number)
+            for name, tool in arm.tools.items()
+        }
+    if arm.default_tool is not None:
+        document["default_tool"] = arm.default_tool
+    if arm.frames.keys() - of_cell:
+        document["frames"] = {
+            name: pose(frame.frame_in_parent) | {"in": frame.parent} | _numbered(frame.number)
+            for name, frame in arm.frames.items()
+            if name not in of_cell
+        }
+    return document
+
+
+def _refuse_beforehand(given: models.Arm) -> None:
     if len(given.rows) > MOST_ROWS:
         raise TooLarge(
             f"the table has {len(given.rows)} rows",
@@ -168,12 +182,37 @@ def _refuse_what_is_not_there(given: models.Arm) -> None:
     for kind, names in (("tools", given.tools), ("frames", given.frames)):
         for name in names:
             if name in RESERVED:
-                raise UnusableValue(
-                    f"{name} is a reserved name",
-                    where=(kind, name),
-                    value=name,
-                    way_out="reserved: base, world, flange, tool, link-0 ... link-32",
-                )
+                raise reserved_name(kind, name)
+
+
+def _seen_cell(
+    given: models.Arm, at: CellAt, frames: Mapping[str, NamedFrame]
+) -> tuple[Seen, InCell]:
+    """Return what an arm has of the cell it names.
+
+    Raises
+    ------
+    UnusableValue : it has a base of its own, and one from the cell.
+    InvalidCell : another arm carries it.
+    """
+    cell = at.read.cell
+    if given.base is not None and given.name in cell.placements:
+        raise UnusableValue(
+            f"the base of {given.name} is given here and by cell {cell.name}",
+            where=("base",),
+            way_out='leave "base" out of the arm, or the arm out of the cell',
+        )
+    numbers = [frame.number for frame in frames.values() if frame.number is not None]
+    seen = cell.seen_by(given.name, {*given.tools, *frames}, numbers)
+    return seen, InCell(
+        name=cell.name,
+        revision=at.revision,
+        digest=at.read.digests.cell_digest,
+        places_arm=seen.base_in_world is not None,
+        frames=frozenset(seen.frames),
+        unseen=seen.unseen,
+        way_out=_MOVING.format(arm=given.name),
+    )
 
 
 def _row(row: models.Row, rows: list[models.Row], units: Units, index: int) -> Row:
@@ -250,6 +289,14 @@ def _ratio_scale(joint: str, rows: list[models.Row], axis: int, units: Units) ->
 
 def _si_unit(joint: str) -> str:
     return "rad" if joint == "revolute" else "m"
+
+
+def _joint_uncertainty(
+    given: list[float], rows: tuple[Row, ...], units: Units
+) -> tuple[float, ...]:
+    driven = _driven_units(rows)
+    read = [units.value_in(value, unit) for value, unit in zip(given, driven, strict=False)]
+    return (*read, *given[len(driven) :])
 
 
 def _driven_units(rows: tuple[Row, ...]) -> list[str]:

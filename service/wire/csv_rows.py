@@ -1,5 +1,7 @@
 """Joint vectors as CSV (RFC 4180): a header ``q1..qn[,name]``, then one line for each.
 
+Orientations are read in the same way, with another letter in the header.
+
 A line of another width refuses all; a cell that is no number spoils its own line only. Left out:
 whether the numbers can be used (operations/joint_table.py).
 """
@@ -50,15 +52,21 @@ class CsvRows:
 
 
 def read_csv(
-    raw: bytes, joints: int, most: int, between: Callable[[], None] = lambda: None
+    raw: bytes,
+    joints: int,
+    most: int,
+    between: Callable[[], None] = lambda: None,
+    *,
+    letter: str = "q",
 ) -> CsvRows:
     """Return the joint vectors of a CSV file; at most ``most`` and one more are read.
 
     Parameters
     ----------
     raw : UTF-8, with or without a byte order mark; lines end with CRLF or LF.
-    joints : of the arm.
+    joints : of the arm: columns beside the names.
     between : called now and then; may raise to give up.
+    letter : the columns are called by it and their number.
 
     Raises
     ------
@@ -73,18 +81,19 @@ def read_csv(
     ([[1.5, 2.0], [3.0, nan]], ['above', 'below'], (3, 'q2'))
     """
     if not raw:
-        raise Unparseable("the body is empty", way_out="send a header q1,q2,... and lines below it")
+        way_out = f"send a header {letter}1,{letter}2,... and lines below it"
+        raise Unparseable("the body is empty", way_out=way_out)
     text = io.TextIOWrapper(io.BytesIO(raw), encoding="utf-8-sig", newline="")
     reader = csv.reader(text, strict=True)
     try:
-        named = _named(next(reader, []), joints)
+        named = _named(next(reader, []), joints, letter)
         found = CsvRows(np.empty((0, joints)), names=[] if named else None)
         parts: list[FloatArray] = []
         for rows, lines in _blocks(reader, joints + named):
             between()
             if found.names is not None:
                 found.names += [row[joints] for row in rows]
-            parts.append(_values(rows, lines, joints, found))
+            parts.append(_values(rows, lines, joints, letter, found))
             found.lines += lines
             if len(found.lines) > most:
                 break
@@ -98,11 +107,11 @@ def read_csv(
     return found
 
 
-def _named(header: Sequence[str], joints: int) -> bool:
+def _named(header: Sequence[str], joints: int, letter: str) -> bool:
     """Return whether the header ends with a column for names."""
     named = bool(header) and header[-1] == NAME
     given = len(header) - named
-    wanted = [f"q{joint}" for joint in range(1, joints + 1)]
+    wanted = [f"{letter}{joint}" for joint in range(1, joints + 1)]
     way_out = f"begin with the line {','.join([*wanted, NAME])}; {NAME} may be left out"
     if list(header[:given]) == wanted:
         return named
@@ -140,7 +149,7 @@ def _blocks(reader: "csv._reader", width: int) -> Iterator[tuple[list[list[str]]
 
 
 def _values(
-    rows: Sequence[Sequence[str]], lines: Sequence[int], joints: int, found: CsvRows
+    rows: Sequence[Sequence[str]], lines: Sequence[int], joints: int, letter: str, found: CsvRows
 ) -> FloatArray:
     cells = chain.from_iterable(row[:joints] for row in rows)
     values = _all_at_once(",".join(cells).encode(), len(rows) * joints)
@@ -150,9 +159,9 @@ def _values(
         for index, row in enumerate(rows):
             try:
                 for joint in range(joints):
-                    values[index, joint] = number(row[joint].strip(), f"q{joint + 1}")
+                    values[index, joint] = number(row[joint].strip(), f"{letter}{joint + 1}")
             except ServiceError as error:
-                where = (lines[index], f"q{joint + 1}")
+                where = (lines[index], f"{letter}{joint + 1}")
                 found.unreadable[first + index] = Detail(
                     error.code, error.say, where, "body", row[joint], error.way_out
                 )

@@ -86,7 +86,7 @@ def csv_lines(columns: Columns, same: SameInAll, names: Sequence[str] | None) ->
         return b""
     first = _first(columns, same)
     refused = columns.refused
-    numbers = _texts(np.where(refused[:, None], NO_NUMBER, columns.numbers))
+    numbers = number_texts(np.where(refused[:, None], NO_NUMBER, columns.numbers))
     form = "" if same.form is None else f",{same.form}"
     middle = f"{form},{same.units},{same.tool_no},{same.frame_no},"
     states = columns.states or [""] * count
@@ -97,7 +97,7 @@ def csv_lines(columns: Columns, same: SameInAll, names: Sequence[str] | None) ->
         for before, values, state, measured in zip(first, numbers, states, measures, strict=True)
     ]
     if names is not None:
-        lines = [f"{line},{_quoted(name)}" for line, name in zip(lines, names, strict=True)]
+        lines = [f"{line},{quoted(name)}" for line, name in zip(lines, names, strict=True)]
     return (_END.join(lines) + _END).encode("utf-8")
 
 
@@ -120,13 +120,13 @@ def _measures(columns: Columns, refused: NDArray[np.bool_]) -> list[str]:
     margins = np.where(np.isinf(columns.margins), NO_LIMITS_MARGIN, columns.margins)
     margins = np.where(refused, NO_NUMBER, margins)
     if columns.conditions is None:
-        return [f",{margin}" for margin in _texts(margins[:, None])]
+        return [f",{margin}" for margin in number_texts(margins[:, None])]
     conditions = np.minimum(columns.conditions, LARGEST_CONDITION)
     conditions = np.where(refused, NO_NUMBER, conditions)
-    return _texts(np.stack([conditions, margins], axis=1))
+    return number_texts(np.stack([conditions, margins], axis=1))
 
 
-def _texts(numbers: FloatArray) -> list[str]:
+def number_texts(numbers: FloatArray) -> list[str]:
     """Return the numbers of each row with commas between them."""
     if not numbers.shape[1]:
         return [""] * len(numbers)
@@ -135,5 +135,5 @@ def _texts(numbers: FloatArray) -> list[str]:
     return printed[2:-2].decode("ascii").split("],[")
 
 
-def _quoted(name: str) -> str:
+def quoted(name: str) -> str:
     return '"' + name.replace('"', '""') + '"' if _NEEDS_QUOTES.search(name) else name

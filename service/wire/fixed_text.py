@@ -16,6 +16,7 @@ LARGEST = 999999.9999
 """Largest number of a pose or a Jacobian that has a place in its field."""
 
 NUMBER_WIDTH = 12
+DECIMALS = 4
 WIDTHS: Mapping[str, int] = {
     "ok": 1, "code": 3, "flags": 5, "seq": 10, "tag": 10, "t_ms": 13,
     **dict.fromkeys(POSE_KEYS, NUMBER_WIDTH),
@@ -36,7 +37,7 @@ class Place(NamedTuple):
     width: int
 
 
-def places(keys: Iterable[str]) -> dict[str, Place]:
+def places(keys: Iterable[str], widths: Mapping[str, int] = WIDTHS) -> dict[str, Place]:
     """Return where each field of a line with these keys stands.
 
     Examples
@@ -47,18 +48,27 @@ def places(keys: Iterable[str]) -> dict[str, Place]:
     found: dict[str, Place] = {}
     first = 1
     for key in keys:
-        found[key] = Place(first, _width(key))
-        first += _width(key) + len(SEPARATOR)
+        width = widths.get(key, NUMBER_WIDTH)
+        found[key] = Place(first, width)
+        first += width + len(SEPARATOR)
     return found
 
 
-def text_line(told: Mapping[str, object], scale: int | None = None) -> bytes:
+def text_line(
+    told: Mapping[str, object],
+    scale: int | None = None,
+    *,
+    widths: Mapping[str, int] = WIDTHS,
+    decimals: int = DECIMALS,
+) -> bytes:
     """Return a flat answer as a line.
 
     Parameters
     ----------
     told : of ``flat.py``, before any scale.
     scale : numbers are multiplied by it and printed as integers; None prints decimals.
+    widths : characters of the fields; those not named have NUMBER_WIDTH.
+    decimals : of a number in NUMBER_WIDTH characters.
 
     Raises
     ------
@@ -71,11 +81,14 @@ def text_line(told: Mapping[str, object], scale: int | None = None) -> bytes:
     >>> text_line({"ok": 1, "code": 3, "x": -914.57007, "margin": 0.25}, 100)
     b'1;3  ;-00000091457;+000025\\r\\n'
     """
-    fields = [_field(key, value, scale) for key, value in told.items()]
+    fields = [
+        _field(key, value, scale, widths.get(key, NUMBER_WIDTH), decimals)
+        for key, value in told.items()
+    ]
     return (SEPARATOR.join(fields) + END).encode("ascii")
 
 
-def text_refusal(told: Mapping[str, object]) -> bytes:
+def text_refusal(told: Mapping[str, object], widths: Mapping[str, int] = WIDTHS) -> bytes:
     """Return a flat refusal as a line of the same length, with NO_NUMBER for every number.
 
     Condition and margin have less room: there the smallest number that fits stands.
@@ -88,17 +101,16 @@ def text_refusal(told: Mapping[str, object]) -> bytes:
     fields = {key: NO_NUMBER if isinstance(value, float) else value for key, value in told.items()}
     if len(str(fields["tag"])) > WIDTHS["tag"]:
         fields["tag"] = 0
-    return text_line(fields)
+    return text_line(fields, widths=widths)
 
 
-def _width(key: str) -> int:
-    return WIDTHS.get(key, NUMBER_WIDTH)
-
-
-def _field(key: str, value: object, scale: int | None) -> str:
-    width = _width(key)
+def _field(key: str, value: object, scale: int | None, width: int, decimals: int) -> str:
     if isinstance(value, float):
-        text = _decimal(key, value) if scale is None else _whole(key, value * scale, width)
+        text = (
+            _decimal(key, value, width, decimals)
+            if scale is None
+            else _whole(key, value * scale, width)
+        )
     else:
         text = str(value).ljust(width)
     if len(text) > width:
@@ -115,12 +127,12 @@ def _field(key: str, value: object, scale: int | None) -> str:
 _WAYS_OUT = {"tag": f"send a tag of at most {WIDTHS['tag']} characters"}
 
 
-def _decimal(key: str, value: float) -> str:
+def _decimal(key: str, value: float, width: int, decimals: int) -> str:
+    # Zero is added so that what rounds to zero bears no minus sign.
     if key in _CUT:
         decimals = _DECIMALS[key]
-        # Zero is added so that what rounds to zero bears no minus sign.
-        return f"{round(_cut(value, _CUT[key]), decimals) + 0.0:.{decimals}f}".ljust(_width(key))
-    return f"{round(value, 4) + 0.0:+0{NUMBER_WIDTH}.4f}"
+        return f"{round(_cut(value, _CUT[key]), decimals) + 0.0:.{decimals}f}".ljust(width)
+    return f"{round(value, decimals) + 0.0:+0{width}.{decimals}f}"
 
 
 def _whole(key: str, value: float, width: int) -> str:

@@ -3,7 +3,7 @@
 Left out: the formats themselves (npy.py, csv_rows.py, csv_text.py, JSON in body.py and answers.py).
 """
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from functools import lru_cache
 from typing import Literal
 
@@ -49,23 +49,40 @@ def question_parameters(request: Request, body: Format | None) -> dict[str, str]
     UnknownField, UnusableValue : unknown, twice, or to be said in the body.
     """
     if body == "json":
-        found = known_parameters(request, TABLE_PARAMETERS, offered=_BODY_PARAMETERS)
-        wrong = [
-            Detail(
-                "unknown-field",
-                f'the parameter "{name}" is for tables',
-                (name,),
-                "query",
-                found[name],
-                f'say "{name}" in the body',
-            )
-            for name in found
-            if name not in _BODY_PARAMETERS
-        ]
-        if wrong:
-            raise UnknownField(wrong[0].say, errors=wrong)
-        return found
+        return beside_body(request, TABLE_PARAMETERS, _BODY_PARAMETERS)
     return known_parameters(request, TABLE_PARAMETERS)
+
+
+def beside_body(
+    request: Request, of_tables: Collection[str], of_bodies: Collection[str]
+) -> dict[str, str]:
+    """Return the query's parameters beside a JSON body, which says all else itself.
+
+    Parameters
+    ----------
+    of_tables : what may stand beside a table, and is to be said in a body.
+    of_bodies : those of them that a body does not say.
+
+    Raises
+    ------
+    UnknownField, UnusableValue : unknown, twice, or to be said in the body.
+    """
+    found = known_parameters(request, of_tables, offered=of_bodies)
+    wrong = [
+        Detail(
+            "unknown-field",
+            f'the parameter "{name}" is for tables',
+            (name,),
+            "query",
+            found[name],
+            f'say "{name}" in the body',
+        )
+        for name in found
+        if name not in of_bodies
+    ]
+    if wrong:
+        raise UnknownField(wrong[0].say, errors=wrong)
+    return found
 
 
 def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -> Format:

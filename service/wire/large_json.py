@@ -1,4 +1,4 @@
-"""A large JSON body: its joint vectors as an array, without care for each number on the way.
+"""A large JSON body: its one long table as an array, without care for each number on the way.
 
 The long array is cut out of the text and read by itself; the rest, some hundred bytes, is read as
 small bodies are (body.py).
@@ -16,8 +16,7 @@ from kinematics.table import FloatArray
 from service.errors import Unparseable
 from service.wire.body import parse_json
 
-_FIELD = "joints"
-_BEGIN = re.compile(rb'"joints"\s*:\s*(?=\[\s*\[)')
+JOINTS = "joints"
 # Stands in place of the array while the rest is read: no text can hold it, no request knows it.
 _MARK = b'{"\\u0000":0}'
 _MARKED = {"\0": 0}
@@ -25,14 +24,19 @@ _MARKED = {"\0": 0}
 
 @dataclass(frozen=True)
 class LargeBody:
-    """``document`` as parsed; where ``joints`` is an array (count, n), its field is empty."""
+    """``document`` as parsed; where ``table`` is an array (count, ...), its field is empty."""
 
     document: object
-    joints: FloatArray | None
+    table: FloatArray | None
 
 
-def parse_large_json(raw: bytes) -> LargeBody:
-    """Return what ``raw`` says, as ``parse_json`` does, the joint vectors as an array if possible.
+def parse_large_json(raw: bytes, field: str = JOINTS, deepest: int = 2) -> LargeBody:
+    """Return what ``raw`` says, as ``parse_json`` does, the long table as an array if possible.
+
+    Parameters
+    ----------
+    field : of the document, that holds the table.
+    deepest : lists within lists that the table may be made of: 2, or 3 for matrices in rows.
 
     Raises
     ------
@@ -41,24 +45,24 @@ def parse_large_json(raw: bytes) -> LargeBody:
     Examples
     --------
     >>> body = parse_large_json(b'{"arm": "x", "joints": [[1, 2], [3, 4.5]]}')
-    >>> body.document, body.joints.tolist()
+    >>> body.document, body.table.tolist()
     ({'arm': 'x', 'joints': []}, [[1.0, 2.0], [3.0, 4.5]])
     """
-    span = _span(raw)
-    joints = None if span is None else _array(raw[slice(*span)])
-    if span is not None and joints is not None:
+    span = _span(raw, field)
+    table = None if span is None else _array(raw[slice(*span)], deepest)
+    if span is not None and table is not None:
         # What is wrong with the rest is told by its place in the whole.
         with suppress(Unparseable):
             document = parse_json(raw[: span[0]] + _MARK + raw[span[1] :])
             # Elsewhere it would be in the middle of a text, or the field of something else.
-            if isinstance(document, dict) and document.get(_FIELD) == _MARKED:
-                return LargeBody(document | {_FIELD: []}, joints)
+            if isinstance(document, dict) and document.get(field) == _MARKED:
+                return LargeBody(document | {field: []}, table)
     return LargeBody(parse_json(raw), None)
 
 
-def _span(raw: bytes) -> tuple[int, int] | None:
+def _span(raw: bytes, field: str) -> tuple[int, int] | None:
     """Return where the array seems to stand: up to the last bracket before another field."""
-    found = _BEGIN.search(raw)
+    found = re.search(rb'"%b"\s*:\s*(?=\[\s*\[)' % field.encode("ascii"), raw)
     if found is None:
         return None
     begin = found.end()
@@ -67,17 +71,20 @@ def _span(raw: bytes) -> tuple[int, int] | None:
     return (begin, end) if end else None
 
 
-def _array(text: bytes) -> FloatArray | None:
+def _array(text: bytes, deepest: int) -> FloatArray | None:
     """Return the numbers if there is nothing else, in rows of one length, none of them empty."""
     if any(letter in text for letter in (b"t", b"f", b"n")):  # true, false, null
         return None
     try:
         rows = orjson.loads(text)
-        widths = set(map(len, rows))
-        if len(widths) != 1 or widths == {0}:
-            return None
-        numbers = chain.from_iterable(rows)
-        flat = np.fromiter(numbers, np.float64, len(rows) * widths.pop())
+        shape = [len(rows)]
+        while len(shape) < deepest and (len(shape) == 1 or isinstance(rows[0], list)):
+            widths = set(map(len, rows))
+            if len(widths) != 1 or widths == {0}:
+                return None
+            shape.append(widths.pop())
+            rows = list(chain.from_iterable(rows))
+        flat = np.fromiter(rows, np.float64, len(rows))
     except (ValueError, TypeError):  # no JSON, or rows that hold more than numbers
         return None
-    return flat.reshape(len(rows), -1)
+    return flat.reshape(shape)

@@ -145,6 +145,45 @@ class Arm(Strict):
     notes: Annotated[str, Field(max_length=10_000)] | None = None
 
 
+class Placement(Pose):
+    """Where something is: its pose, in `pose` or beside `in`, in what it stands in."""
+
+    model_config = ConfigDict(
+        json_schema_extra={
+            "oneOf": [
+                {"required": ["pose"]},
+                {"required": ["position", "orientation"]},
+                {"required": ["matrix"]},
+            ]
+        }
+    )
+    in_: Annotated[
+        str,
+        Field(
+            alias="in",
+            description="`world`, a frame of the cell, `<arm>.base` or `<arm>.flange`",
+        ),
+    ] = "world"
+    pose: Pose | None = None
+
+
+class PlacedFrame(Placement):
+    """A frame of a cell, and the number a controller knows it by."""
+
+    number: Annotated[int, Field(ge=1, le=999)] | None = None
+
+
+class Cell(Strict):
+    """What several arms share: where they stand, and frames in the world, in others, on arms."""
+
+    name: Name
+    title: Annotated[str, Field(max_length=200)] | None = None
+    units: UnitsName
+    arms: dict[Name, Placement] = Field(default_factory=dict)
+    frames: dict[Name, PlacedFrame] = Field(default_factory=dict)
+    notes: Annotated[str, Field(max_length=10_000)] | None = None
+
+
 class ArmRevision(Strict):
     """A stored arm, at a stated revision."""
 

@@ -47,8 +47,25 @@ def read_pose(given: Pose, units: Units, where: Where) -> tuple[FloatArray, tupl
         position = checked_position(units.length_in(np.array(given.position)).tolist())
     except KinematicsError as error:
         raise error.below(*where, "position") from None
-    rotation, findings = _read_orientation(given.orientation, units, where)
+    rotation, findings = read_orientation(given.orientation, units, (*where, "orientation"))
     return pose(rotation, position), findings
+
+
+def read_orientation(
+    given: Orientation, units: Units, where: Where
+) -> tuple[FloatArray, tuple[Finding, ...]]:
+    """Return the rotation (3, 3) of an orientation, and what was repaired on the way in.
+
+    Raises
+    ------
+    KinematicsError : with ``where`` from the body's root.
+    """
+    form = checked_form(given.form, (*where, "form"))
+    try:
+        numbers = checked_numbers(given.values, shape_of(form), f"an orientation in {form}")
+        return checked_rotation(form, orientation_in(units, form, numbers).tolist())
+    except KinematicsError as error:
+        raise error.below(*where, "values") from None
 
 
 def pose_answer(x_in_y: FloatArray, form: str, units: Units) -> dict[str, object]:
@@ -57,7 +74,7 @@ def pose_answer(x_in_y: FloatArray, form: str, units: Units) -> dict[str, object
         "position": units.length_out(x_in_y[:3, 3]).tolist(),
         "orientation": {
             "form": form,
-            "values": orientation_out(units, form, x_in_y[None])[0][0].tolist(),
+            "values": orientation_out(units, form, x_in_y[:3, :3]).tolist(),
         },
     }
 
@@ -81,15 +98,3 @@ def checked_form(form: str, where: Where = ("form",)) -> str:
         error.where = where
         raise
     return form
-
-
-def _read_orientation(
-    given: Orientation, units: Units, where: Where
-) -> tuple[FloatArray, tuple[Finding, ...]]:
-    at = (*where, "orientation")
-    form = checked_form(given.form, (*at, "form"))
-    try:
-        numbers = checked_numbers(given.values, shape_of(form), f"an orientation in {form}")
-        return checked_rotation(form, orientation_in(units, form, numbers).tolist())
-    except KinematicsError as error:
-        raise error.below(*at, "values") from None

@@ -10,7 +10,8 @@ from urllib.parse import parse_qsl
 
 from starlette.requests import Request
 
-from service.details import Detail, way_out_of_unknown
+from kinematics.known_names import way_out_of_unknown
+from service.details import Detail
 from service.errors import ServiceError, UnknownField, Unparseable, UnusableValue
 
 # As controllers print them: 1.5E+01, +3.0, 007, .5, 5. - and "nan", so that it is refused by name.

@@ -4,33 +4,34 @@ Left out: the arm itself, whose document is answered as it is stored.
 """
 
 from collections.abc import Mapping, Sequence
-from datetime import datetime
 
 from service.convert import finding_out
 from service.storage.ports import Revision
 from service.wire.answer_models import Finding, Open
 from service.wire.arms import ReadArm
 from service.wire.models import Arm
+from service.wire.stored import HidingAnswer, Trace, trace_of
 
 
-class StoredArmAnswer(Open):
+class ArmTrace(Trace):
+    """Which revision of an arm this is; ``cell_revision`` where it names a cell."""
+
+    table_digest: str
+    setup_digest: str
+    cell_revision: int | None = None
+
+
+class StoredArmAnswer(ArmTrace):
     """One revision of a stored arm, its digests, and who stored it when and why."""
 
     name: str
-    revision: int
-    digest: str
-    table_digest: str
-    setup_digest: str
-    author: str
-    reason: str
-    created_at: datetime
     units: str
     findings: list[Finding]
     arm: Arm
 
 
 class ListedArm(Open):
-    """A stored arm in a list: ``joints`` counts the driven rows."""
+    """A stored arm in a list: ``joints`` counts the driven rows, ``cell`` is the one it names."""
 
     name: str
     title: str | None
@@ -40,6 +41,7 @@ class ListedArm(Open):
     joints: int
     convention: str
     units: str
+    cell: str | None
 
 
 class ArmListAnswer(Open):
@@ -49,24 +51,9 @@ class ArmListAnswer(Open):
     next_page_token: str | None
 
 
-class HidingAnswer(Open):
-    """Who removed an arm that stood at this revision, why and when."""
-
-    author: str
-    reason: str
-    at: datetime
-
-
-class ListedRevision(Open):
+class ListedRevision(ArmTrace):
     """A revision in a list; ``hidden`` is set where the arm was removed at it."""
 
-    revision: int
-    digest: str
-    table_digest: str
-    setup_digest: str
-    author: str
-    reason: str
-    created_at: datetime
     hidden: HidingAnswer | None
 
 
@@ -82,7 +69,7 @@ def stored_arm_answer(record: Revision, read: ReadArm) -> dict[str, object]:
     """Return a ``StoredArmAnswer``; findings say what was mended in the document."""
     return {
         "name": record.name,
-        **_trace(record),
+        **trace_of(record),
         "units": read.units.name,
         "findings": [finding_out(read.units, finding) for finding in read.findings],
         "arm": record.document,
@@ -92,17 +79,6 @@ def stored_arm_answer(record: Revision, read: ReadArm) -> dict[str, object]:
 def arm_list_answer(records: Sequence[Revision], next_token: str | None) -> dict[str, object]:
     """Return an ``ArmListAnswer``."""
     return {"arms": [_listed(record) for record in records], "next_page_token": next_token}
-
-
-def revision_list_answer(
-    name: str, records: Sequence[Revision], next_token: str | None
-) -> dict[str, object]:
-    """Return a ``RevisionListAnswer``."""
-    return {
-        "name": name,
-        "revisions": [{**_trace(record), "hidden": _hidden(record)} for record in records],
-        "next_page_token": next_token,
-    }
 
 
 def driven_rows(document: Mapping[str, object]) -> int:
@@ -118,37 +94,6 @@ def driven_rows(document: Mapping[str, object]) -> int:
     return sum(not row.get("passive", False) for row in rows)
 
 
-def time_of(at: datetime) -> str:
-    """Return a UTC time as RFC 3339 has it, with milliseconds.
-
-    Examples
-    --------
-    >>> from datetime import UTC
-    >>> time_of(datetime(2026, 1, 2, 3, 4, 5, 678_000, tzinfo=UTC))
-    '2026-01-02T03:04:05.678Z'
-    """
-    return at.isoformat(timespec="milliseconds").replace("+00:00", "Z")
-
-
-def _trace(record: Revision) -> dict[str, object]:
-    return {
-        "revision": record.revision,
-        "digest": record.digest,
-        "table_digest": record.table_digest,
-        "setup_digest": record.setup_digest,
-        "author": record.author,
-        "reason": record.reason,
-        "created_at": time_of(record.created_at),
-    }
-
-
-def _hidden(record: Revision) -> dict[str, object] | None:
-    if record.hidden is None:
-        return None
-    hidden = record.hidden
-    return {"author": hidden.author, "reason": hidden.reason, "at": time_of(hidden.at)}
-
-
 def _listed(record: Revision) -> dict[str, object]:
     document = record.document
     return {
@@ -160,4 +105,5 @@ def _listed(record: Revision) -> dict[str, object]:
         "joints": driven_rows(document),
         "convention": document["convention"],
         "units": document["units"],
+        "cell": document.get("cell"),
     }

@@ -30,7 +30,7 @@ from tests.architecture.imports import (
 
 # The core, layer by layer: a module imports from its own layer or from those above it here.
 LAYERS = (
-    ("errors", "findings", "tolerances"),
+    ("errors", "findings", "known_names", "tolerances"),
     ("number_checks", "kernels", "kernels.compiler", "kernels.workspace"),
     (
         "kernels.sine_cosine",
@@ -41,7 +41,12 @@ LAYERS = (
         "kernels.angles",
         "kernels.travel",
         "kernels.judgement",
+        "kernels.rotation_matrices",
+        "kernels.frame_graph",
+        "kernels.frame_poses",
+        "kernels.given_poses",
     ),
+    ("form_names", "orientation_findings"),
     (
         "rigidity",
         "rotations",
@@ -50,8 +55,22 @@ LAYERS = (
         "orientation_input",
         "transforms",
     ),
-    ("table", "drive_map", "arm"),
+    (
+        "rotation_steps",
+        "rewritten_steps",
+        "many_rotations",
+        "orientation_batches",
+        "pose_batches",
+        "block_system",
+    ),
+    ("screen_rotations", "screen_readings", "reading_words"),
+    ("constant_offsets", "next_readout", "readouts", "orientation_guesses"),
+    ("table", "drive_map", "in_cell", "arm", "cell"),
     ("chain", "travel_limits", "digests", "table_conversion"),
+    ("arm_relations", "frames"),
+    ("frame_residuals",),
+    ("frame_estimate",),
+    ("frame_suspects",),
     ("jacobian",),
     (
         "peak_demand",
@@ -68,7 +87,7 @@ LAYERS = (
 CORE_IMPORTS = {
     *("numpy", "scipy", "numba"),
     *("collections", "dataclasses", "enum", "functools", "hashlib", "itertools", "json", "math"),
-    *("numbers", "typing"),
+    *("difflib", "numbers", "re", "typing"),
     # What a cache of machine code that cannot be read or written fails with, and what its code
     # was made from.
     *("contextlib", "pickle", "pathlib"),
@@ -163,7 +182,7 @@ def test_only_the_app_and_the_command_see_concrete_storage() -> None:
         and name != "service.storage.ports"
         and not within(module, ("service.storage",))
     }
-    assert seeing == {"service.app", "service.arms_commands"}
+    assert seeing == {"service.app", "service.stored_commands"}
 
 
 def test_nothing_below_imports_the_app() -> None:

@@ -18,6 +18,7 @@ from kinematics.tolerances import NEAR_SINGULAR
 from kinematics.travel_limits import travel_margin
 from service import demo
 from service.wire.arms import read_arm
+from service.wire.cells import CellAt, read_cell
 
 SHARES_OF_BEST = tuple(sorted({0.02, 0.04, 0.08, 0.12, NEAR_SINGULAR}))
 POSTURES = 20_000
@@ -62,8 +63,9 @@ def main(arguments: Sequence[str] | None = None) -> None:
     print("share called near or singular below each share of the best sample posture's value")
     print(f"the default is {NEAR_SINGULAR}")
     print("  ".join(["arm".ljust(15), *(f"{at:>6}" for at in SHARES_OF_BEST), "median", "sample"]))
+    cells = {cell["name"]: CellAt(read_cell(cell), 1) for cell in demo.documents("cell")}
     for document in demo.documents():
-        arm = read_arm(document).arm
+        arm = read_arm(document, cells.__getitem__).arm
         random = np.random.default_rng(given.seed)
         smallest, best = smallest_values(arm, random_postures(arm, given.postures, random))
         shares = [f"{(smallest <= at * best).mean():6.1%}" for at in SHARES_OF_BEST]

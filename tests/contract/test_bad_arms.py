@@ -97,7 +97,7 @@ ARMS: dict[str, tuple[Body, str, str, Any, str, str]] = {
         "0,47"),
     "a tool name with spaces": (arm(tools={"a b": AT_ORIGIN}, default_tool=None), "unusable-value",
         "/tools/a b", "a b", "match", "a-z"),
-    "a cell": (arm(cell="north"), "not-available", "/cell", "north", "cells", "frames in the arm"),
+    "a cell": (arm(cell="north"), "unknown-arm", "/cell", "north", "no cell", "leave it out"),
     "a default tool that is missing": (arm(default_tool="saw"), "unknown-tool", "/default_tool",
         "saw", "no tool 'saw'", "gripper (3), pen, flange"),
     "a reserved name": (arm(frames={"link-7": AT_ORIGIN}), "unusable-value", "/frames/link-7",

@@ -429,7 +429,7 @@ async def test_a_body_over_the_limit_is_refused(app: FastAPI, stocked: httpx.Asy
 @pytest.fixture
 def every_body_is_large(monkeypatch: pytest.MonkeyPatch) -> None:
     """Let the worker process do all JSON."""
-    monkeypatch.setattr(answering, "_LONG_BYTES", 0)
+    monkeypatch.setattr(answering, "LONG_BYTES", 0)
 
 
 LARGE: list[dict[str, Any]] = [
@@ -493,9 +493,9 @@ async def test_the_worker_answers_as_the_server_does(
     bodies.append(bodies[0].replace(b"[[", b"[\n  [ ").replace(b"]]", b" ]\r\n]"))
     for query in ("", "?format=npy", "?format=csv"):
         for body in bodies:
-            monkeypatch.setattr(answering, "_LONG_BYTES", 10**9)
+            monkeypatch.setattr(answering, "LONG_BYTES", 10**9)
             direct = await send(stocked, path + query, body, JSON)
-            monkeypatch.setattr(answering, "_LONG_BYTES", 0)
+            monkeypatch.setattr(answering, "LONG_BYTES", 0)
             worked_out = await send(stocked, path + query, body, JSON)
             assert worked_out.status_code == direct.status_code, body[:200]
             assert worked_out.headers.get("x-bad-rows") == direct.headers.get("x-bad-rows")

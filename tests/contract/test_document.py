@@ -137,9 +137,10 @@ async def test_every_code_is_documented(document: Document, client: httpx.AsyncC
 async def test_examples_are_there_and_fit_their_schemas(document: Document) -> None:
     count = 0
     for path, method, operation in operations_of(document):
-        computes = path.endswith(("/pose", "/jacobian")) or (
-            method == "post" and path in ("/v1/poses", "/v1/jacobians", "/v1/tables/conversions")
-        )
+        computes = path.endswith(("/pose", "/jacobian", "/relation"))
+        computes |= path.startswith("/v1/rotations")
+        asked_by_body = ("/v1/poses", "/v1/jacobians", "/v1/tables/conversions", "/v1/frames")
+        computes |= method == "post" and path in asked_by_body
         if computes and method != "head":
             assert any(content.get("examples") for content in contents_of(operation)), path
         for content in contents_of(operation):
@@ -162,8 +163,9 @@ async def test_an_example_that_does_not_fit_is_seen(document: Document) -> None:
 
 
 async def test_who_may_call_is_said(document: Document) -> None:
-    for path, _, operation in operations_of(document):
-        small = path.endswith(("/pose", "/jacobian")) or path == "/v1/ping"
+    for path, method, operation in operations_of(document):
+        small = path.endswith(("/pose", "/jacobian", "/relation")) or path == "/v1/ping"
+        small |= path == "/v1/rotations" and method in ("get", "head")
         assert operation["x-for-controllers"] is small, path
 
 
@@ -173,7 +175,12 @@ async def test_an_arm_may_be_created_by_put(document: Document) -> None:
 
 
 async def test_a_flat_refusal_is_documented(document: Document) -> None:
-    for what in ("pose", "jacobian"):
-        answers = document["paths"][f"/v1/arms/{{arm}}/{what}"]["get"]["responses"]
-        for status in ("400", "404", "409", "422", "503"):
+    for path, statuses in {
+        "/v1/arms/{arm}/pose": ("400", "404", "409", "422", "503"),
+        "/v1/arms/{arm}/jacobian": ("400", "404", "409", "422", "503"),
+        "/v1/arms/{arm}/relation": ("400", "404", "409", "422", "503"),
+        "/v1/rotations": ("400", "422", "503"),
+    }.items():
+        answers = document["paths"][path]["get"]["responses"]
+        for status in statuses:
             assert "application/json" in answers[status]["content"]

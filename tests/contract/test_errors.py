@@ -27,6 +27,7 @@ ARM = {
     "units": "mm-deg",
     "rows": [{"joint": "revolute", "a": 100, "alpha": 0, "d": 0, "theta": 0}],
 }
+CELL = {"name": "press-cell", "units": "mm-deg"}
 TRACE = "4bf92f3577b34da6a3ce929d0e0e4736"
 TRACEPARENT = f"00-{TRACE}-00f067aa0ba902b7-01"
 
@@ -51,7 +52,8 @@ PATHS = sorted({path for _, path in CALLS})
 
 
 def filled(path: str, arm: str = ARM["name"]) -> str:  # type: ignore[assignment]
-    return path.replace("{arm}", arm).replace("{n}", "1").replace("{name}", "pages.css")
+    names = {"arm": arm, "cell": CELL["name"], "n": "1", "name": "pages.css"}
+    return path.format(**names)
 
 
 def checked(answer: httpx.Response) -> dict[str, Any]:
@@ -78,9 +80,10 @@ def checked(answer: httpx.Response) -> dict[str, Any]:
 
 @pytest.fixture
 async def stocked(client: httpx.AsyncClient) -> httpx.AsyncClient:
-    """A client of a service that holds one arm."""
-    answer = await client.post("/v1/arms", json=ARM)
-    assert answer.status_code == 201
+    """A client of a service that holds one arm and one cell."""
+    for path, document in (("/v1/arms", ARM), ("/v1/cells", CELL)):
+        answer = await client.post(path, json=document)
+        assert answer.status_code == 201
     return client
 
 
@@ -148,13 +151,15 @@ async def test_a_body_that_is_wrong_is_refused(
 
 
 @pytest.mark.parametrize(
-    ("method", "path"), [(m, p) for m, p in CALLS if "{arm}" in p and m in ("GET", "DELETE")]
+    ("method", "path"),
+    [(m, p) for m, p in CALLS if ("{arm}" in p or "{cell}" in p) and m in ("GET", "DELETE")],
 )
-async def test_an_unknown_arm_in_the_path_is_not_found(
+async def test_an_unknown_arm_or_cell_in_the_path_is_not_found(
     stocked: httpx.AsyncClient, method: str, path: str
 ) -> None:
-    url = filled(path, "no-such-arm")
-    url += "?q=0" if path.endswith(("/pose", "/jacobian")) else ""
+    url = filled(path.replace("{cell}", "{arm}"), "no-such-name")
+    asked = {"pose": "?q=0", "jacobian": "?q=0", "relation": "?q=0&of=flange&in=base"}
+    url += asked.get(path.rpartition("/")[2], "")
     answer = await stocked.request(method, url, headers={"if-match": "*"})
     document = checked(answer)
     assert (document["code"], document["status"]) == ("unknown-arm", 404)
@@ -253,7 +258,7 @@ async def test_a_database_that_fails_says_when_to_ask_again(
     app: FastAPI, stocked: httpx.AsyncClient
 ) -> None:
     with app.state.storage._engine.connect() as connection:
-        connection.exec_driver_sql("DROP TABLE arm_heads")
+        connection.exec_driver_sql("DROP TABLE document_heads")
         connection.commit()
     asked = {"arm": "other-arm", "joints": [[0]]}
     for method, path, body in (

@@ -60,6 +60,13 @@ ARM: dict[str, Any] = {
     "frames": {"tray": {**PLACED, "number": 1}},
 }
 
+CELL: dict[str, Any] = {
+    "name": "shelf-cell",
+    "units": "mm-deg",
+    "arms": {"shelf-arm": {"in": "shelf", "pose": PLACED}},
+    "frames": {"shelf": {**PLACED, "number": 1}},
+}
+
 
 def examples(count: int) -> Callable[[Any], Any]:
     return settings(
@@ -74,14 +81,15 @@ def examples(count: int) -> Callable[[Any], Any]:
 
 @pytest.fixture(scope="module")
 def schema() -> Any:
-    """The service with one arm, and its document as the fuzzer reads it."""
+    """The service with one arm and one cell, and its document as the fuzzer reads it."""
     app = create_app(Settings(database=":memory:"))
     config = SchemathesisConfig.from_dict(
         {"checks": {"negative_data_rejection": {"expected-statuses": REFUSALS}}}
     )
     made = schemathesis.openapi.from_asgi("/openapi.json", app, config=config)
-    stored = made["/v1/arms"]["POST"].Case(body=ARM, media_type="application/json").call()
-    assert stored.status_code == 201
+    for path, body in (("/v1/cells", CELL), ("/v1/arms", ARM)):
+        stored = made[path]["POST"].Case(body=body, media_type="application/json").call()
+        assert stored.status_code == 201
     return made
 
 
@@ -132,8 +140,8 @@ DRAWN = [
 
 
 def test_what_can_be_asked_wrongly_is_all_here(schema: Any) -> None:
-    assert len(OPERATIONS) == 26
-    assert len(WRONGLY_ASKED) == 14
+    assert len(OPERATIONS) == 45
+    assert len(WRONGLY_ASKED) == 29
     for method, path in OPERATIONS:
         operation = schema[path][method]
         assert bool(operation.query or operation.body) == ((method, path) in WRONGLY_ASKED)
@@ -142,7 +150,9 @@ def test_what_can_be_asked_wrongly_is_all_here(schema: Any) -> None:
 @pytest.mark.parametrize(("method", "path", "mode"), DRAWN)
 def test_drawn_requests(schema: Any, method: str, path: str, mode: GenerationMode) -> None:
     operation = schema[path][method]
-    known = {"arm": "shelf-arm"} if "{arm}" in path and method in ("GET", "HEAD") else None
+    names = {"arm": "shelf-arm", "cell": "shelf-cell"}
+    asked = {name: stored for name, stored in names.items() if f"{{{name}}}" in path}
+    known = asked if asked and method in ("GET", "HEAD") else None
     more = [negative_data_rejection] if mode is GenerationMode.NEGATIVE else []
 
     @seed(20260101)

@@ -304,6 +304,7 @@ async def test_arms_are_listed_with_what_tells_them_apart(client: httpx.AsyncCli
             "joints": 1,
             "convention": "modified",
             "units": "mm-deg",
+            "cell": None,
         },
         {
             "name": "b-arm",
@@ -313,6 +314,7 @@ async def test_arms_are_listed_with_what_tells_them_apart(client: httpx.AsyncCli
             "joints": 2,
             "convention": "standard",
             "units": "m-rad",
+            "cell": None,
         },
     ]
 
@@ -460,7 +462,9 @@ async def test_a_full_database_answers_503_to_writes_and_goes_on_reading(
     def tell(connection: Any, _record: object, _proxy: object) -> None:
         connection.execute("PRAGMA max_page_count = 1")
 
-    body = document(notes="x" * 9_000)
+    # More than the pages that the steps to the present layout leave free.
+    frame = {"matrix": [[1, 0, 0, 0], [0, 1, 0, 0], [0, 0, 1, 0], [0, 0, 0, 1]]}
+    body = document(frames={f"frame-{number}": frame for number in range(500)})
     for answer in (
         await client.put(ARM, json=body, headers={"If-Match": "*"}),
         await client.post("/v1/arms", json={**body, "name": "other"}),

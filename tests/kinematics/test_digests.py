@@ -9,7 +9,15 @@ import numpy as np
 import pytest
 
 from kinematics.arm import Arm, CombinedTravel, NamedFrame, SingularityThresholds, Tool
-from kinematics.digests import canonical_setup, canonical_table, digests_of
+from kinematics.cell import Cell, Placed
+from kinematics.digests import (
+    canonical_cell,
+    canonical_setup,
+    canonical_table,
+    cell_digests_of,
+    digests_of,
+)
+from kinematics.in_cell import InCell
 from kinematics.table import Convention, Coupling, Row, Table, Travel
 from kinematics.transforms import pose
 from tests.kinematics.example_arms import arm_of, prismatic, revolute
@@ -170,3 +178,73 @@ def test_whole_numbers_and_numpy_numbers_are_doubles() -> None:
     whole = arm_of(revolute(a=1, d=2, travel=Travel(-1, 1)))
     doubles = arm_of(revolute(a=np.float64(1.0), d=2.0, travel=Travel(-1.0, 1.0)))
     assert digests_of(whole) == digests_of(doubles)
+
+
+# --- cells ---------------------------------------------------------------------------------
+
+SHIFTED = "[[1.0,0.0,0.0,2.0],[0.0,1.0,0.0,0.0],[0.0,0.0,1.0,0.0],[0.0,0.0,0.0,1.0]]"
+CELL_TEXT = (
+    f'{{"arms":{{"press-arm":{{"in":"plate","pose":{SHIFTED}}}}},'
+    f'"frames":{{"plate":{{"in":"world","number":3,"pose":{SHIFTED}}}}}}}'
+)
+PLACED = Placed("plate", pose(np.eye(3), [2.0, -0.0, 0]))
+CELL = Cell(
+    "press-cell",
+    {"press-arm": PLACED},
+    {"plate": Placed("world", pose(np.eye(3), [2.0, 0, 0]), number=3)},
+)
+
+
+def in_cell(**changes: object) -> Arm:
+    cell = InCell("press-cell", 4, sha256(CELL_TEXT), places_arm=True, frames=frozenset({"plate"}))
+    seen = {"plate": NamedFrame(pose(np.eye(3), [2.0, 0, 0]), number=3)}
+    placed = replace(ARM, frames={**ARM.frames, **seen}, cell=cell)
+    return replace(placed, **changes)  # type: ignore[arg-type]
+
+
+def test_the_digest_of_a_cell_by_hand() -> None:
+    assert canonical_cell(CELL) == json.loads(CELL_TEXT)
+    digests = cell_digests_of(CELL)
+    assert digests.cell_digest == sha256(CELL_TEXT)
+    assert digests.digest == sha256(CELL_TEXT)[:8]
+
+
+def test_the_setup_of_an_arm_in_a_cell_by_hand() -> None:
+    """Its own frames, the cell's revision, and the digest of all that is in the cell."""
+    text = SETUP_TEXT.replace(
+        '"cell_revision":null',
+        f'"cell_digest":"{sha256(CELL_TEXT)}","cell_revision":4',
+    )
+    digests = digests_of(in_cell())
+    assert digests.setup_digest == sha256(text)
+    assert digests.table_digest == sha256(TABLE_TEXT)
+
+
+@pytest.mark.parametrize("change", [{"revision": 5}, {"digest": "0" * 64}])
+def test_the_setup_follows_revision_and_content_of_the_cell(change: dict[str, object]) -> None:
+    before = in_cell()
+    assert before.cell is not None
+    after = replace(before, cell=replace(before.cell, **change))  # type: ignore[arg-type]
+    assert digests_of(before).setup_digest != digests_of(after).setup_digest
+    assert digests_of(before).table_digest == digests_of(after).table_digest
+
+
+@pytest.mark.parametrize(
+    "other",
+    [
+        Cell(
+            "c", {"press-arm": replace(CELL.placements["press-arm"], parent="world")}, CELL.frames
+        ),
+        Cell("c", {"other": PLACED}, CELL.frames),
+        Cell("c", CELL.placements, {"plate": replace(CELL.frames["plate"], number=4)}),
+        Cell("c", CELL.placements, {**CELL.frames, "pin": Placed("plate", np.eye(4))}),
+    ],
+    ids=["parent", "arm", "number", "frame"],
+)
+def test_whatever_is_in_the_cell_is_in_its_digest(other: Cell) -> None:
+    assert cell_digests_of(other).cell_digest != cell_digests_of(CELL).cell_digest
+
+
+def test_the_name_of_a_cell_is_not_in_its_digest() -> None:
+    renamed = Cell("other-cell", CELL.placements, CELL.frames)
+    assert cell_digests_of(renamed) == cell_digests_of(CELL)

@@ -18,13 +18,18 @@ CODES = {
     "TooManyRows": "too-large",
     "InvalidCoupling": "unusable-value",
     "SingularDriveMap": "unusable-value",
+    "InvalidCell": "unusable-value",
+    "TooManyPlaced": "too-large",
     "InvalidOrientation": "unusable-value",
+    "TooManySteps": "too-large",
     "NotRigid": "not-rigid",
     "OutOfRange": "out-of-range",
     "WrongJointCount": "wrong-joint-count",
     "NotFinite": "not-finite",
     "UnknownTool": "unknown-tool",
     "UnknownFrame": "unknown-frame",
+    "NotConnected": "not-connected",
+    "TooLongWays": "too-large",
     "ToolNotSaid": "tool-not-said",
 }
 

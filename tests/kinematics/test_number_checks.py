@@ -14,6 +14,14 @@ def test_lists_tuples_and_arrays_are_taken(values: object) -> None:
     assert numbers.tolist() == [1.0, 2.5]
 
 
+def test_what_is_nested_deeper_than_can_be_followed_is_refused() -> None:
+    nested: object = 1.0
+    for _ in range(100_000):
+        nested = [nested]
+    with pytest.raises(InvalidOrientation, match="takes 2 numbers"):
+        checked_numbers([1.0, nested], (2,), "a pair")
+
+
 def test_the_result_is_a_copy() -> None:
     given = np.array([1.0, 2.0])
     checked_numbers(given, (2,), "a pair")[0] = 9.0

@@ -1,6 +1,6 @@
 """All cases of fk, equivalence, jacobian and singularity over HTTP, each in three ways of asking.
 
-Left out: rotations, which have no address yet, and the same cases through the Python API.
+Left out: rotations (test_rotations_over_http), and the same cases through the Python API.
 
 The files give poses in the frame in which ``base`` stands, so everything is asked in ``world``;
 their singular values are unscaled, so arms come with a characteristic length of one metre.

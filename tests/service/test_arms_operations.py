@@ -19,11 +19,13 @@ from service.errors import (
     UnknownRevision,
     UnusableValue,
 )
-from service.operations.arms import Arms, version_of
+from service.operations.arms import Arms
+from service.operations.stored_refusals import version_of
 from service.settings import Settings
 from service.storage.opening import open_storage
 from service.storage.ports import Head
 from service.wire.arms import ReadArm, read_arm
+from service.wire.cells import CellOf
 
 NOON = datetime(2026, 3, 4, 12, 0, 0, 5_000, tzinfo=UTC)
 
@@ -39,9 +41,9 @@ class Reading:
     def __init__(self) -> None:
         self.count = 0
 
-    def __call__(self, given: object) -> ReadArm:
+    def __call__(self, given: object, cell_of: CellOf) -> ReadArm:
         self.count += 1
-        return read_arm(given)
+        return read_arm(given, cell_of)
 
 
 @pytest.fixture
@@ -52,7 +54,7 @@ def reading() -> Reading:
 @pytest.fixture
 def arms(reading: Reading) -> Iterator[Arms[ReadArm]]:
     with closing(open_storage(Settings(database=":memory:"))) as opened:
-        yield Arms(opened.storage, reading, now=lambda: NOON)
+        yield Arms(opened.arms, reading, now=lambda: NOON)
 
 
 def test_a_created_arm_is_there_with_all_that_was_said(arms: Arms[ReadArm]) -> None:
@@ -64,9 +66,7 @@ def test_a_created_arm_is_there_with_all_that_was_said(arms: Arms[ReadArm]) -> N
     assert (got.record.author, got.record.reason) == ("Ada", "new line")
     assert got.record.created_at == NOON
     digests = read_arm(document()).digests
-    assert got.record.table_digest == digests.table_digest
-    assert got.record.setup_digest == digests.setup_digest
-    assert got.record.digest == digests.digest
+    assert {**got.record.digests, "digest": got.record.digest} == digests._asdict()
     assert version_of(got.record) == f"1-{digests.digest}"
     assert got.read.arm.name == "press-arm"
     assert arms.count() == 1
@@ -218,17 +218,17 @@ def test_a_revision_is_read_once(arms: Arms[ReadArm], reading: Reading) -> None:
 def test_the_newest_revision_is_seen_when_another_process_wrote_it(tmp_path: Path) -> None:
     settings = Settings(database=str(tmp_path / "arms.db"))
     with closing(open_storage(settings)) as opened:
-        arms = Arms(opened.storage, read_arm)
+        arms = Arms(opened.arms, read_arm)
         arms.create(document())
         assert arms.get("press-arm").record.revision == 1
         with closing(open_storage(settings, serving=False)) as beside:
-            Arms(beside.storage, read_arm).replace("press-arm", document(), Head.ANY)
+            Arms(beside.arms, read_arm).replace("press-arm", document(), Head.ANY)
         assert arms.get("press-arm").record.revision == 2
 
 
 def test_seeds_go_where_users_cannot_write() -> None:
     with closing(open_storage(Settings(database="/proc/armspan/arms.db"))) as opened:
-        arms = Arms(opened.storage, read_arm)
+        arms = Arms(opened.arms, read_arm)
         with pytest.raises(StorageUnavailable):
             arms.create(document())
         arms.create(document(), seed=True)
@@ -239,7 +239,7 @@ def test_seeds_go_where_users_cannot_write() -> None:
 
 def test_of_two_replacements_at_once_one_wins_and_nothing_is_lost(tmp_path: Path) -> None:
     with closing(open_storage(Settings(database=str(tmp_path / "arms.db")))) as opened:
-        arms = Arms(opened.storage, read_arm)
+        arms = Arms(opened.arms, read_arm)
         version = version_of(arms.create(document()).record)
         start = Barrier(2)
 

@@ -18,8 +18,8 @@ from service.convert import (
     joint_values_in,
     joint_values_out,
     orientation_in,
-    orientation_out,
     orientation_values_out,
+    pose_orientations_out,
     twists_in,
     twists_out,
 )
@@ -115,11 +115,13 @@ def test_only_angles_of_an_orientation_have_a_unit() -> None:
         ("quaternion-wxyz", [half, 0, 0, half], math.inf),
     ]
     for form, values, distance in cases:
-        (found,), (from_lock,) = orientation_out(MM, form, pose(turned, [1.0, 2.0, 3.0])[None])
+        (found,), (from_lock,) = pose_orientations_out(
+            MM, form, pose(turned, [1.0, 2.0, 3.0])[None]
+        )
         np.testing.assert_allclose(found, values, atol=1e-13)
         assert from_lock == pytest.approx(distance)
         # One orientation as plain numbers says the same.
-        (radians,), _ = orientation_out(UNITS["m-rad"], form, pose(turned, [0.0] * 3)[None])
+        (radians,), _ = pose_orientations_out(UNITS["m-rad"], form, pose(turned, [0.0] * 3)[None])
         assert orientation_values_out(MM, form, radians.tolist()) == found.tolist()
     for form, given_values, si in [
         ("xyz-fixed", [180.0, 0.0, 90.0], [math.pi, 0.0, math.pi / 2]),

@@ -23,6 +23,7 @@ from kinematics.tolerances import NEAR_SINGULAR
 from kinematics.travel_limits import travel_findings, travel_margin
 from service import demo
 from service.wire.arms import read_arm
+from service.wire.cells import CellAt, read_cell
 
 ROOT = Path(__file__).resolve().parents[2]
 JOINTS = {
@@ -47,8 +48,16 @@ def documents() -> dict[str, dict[str, Any]]:
 
 
 @cache
+def cell_of(name: str) -> CellAt:
+    given = {document["name"]: document for document in demo.documents("cell")}
+    read = read_cell(given[name])
+    assert read.findings == ()
+    return CellAt(read, 1)
+
+
+@cache
 def arm_of(name: str) -> Arm:
-    read = read_arm(documents()[name])
+    read = read_arm(documents()[name], cell_of)
     assert read.findings == ()
     return read.arm
 
@@ -121,7 +130,7 @@ def test_the_tool_gets_to_every_frame(name: str) -> None:
     arm = arm_of(name)
     drawn = postures(arm, 40_000)
     reached = tool_in_world(name, drawn[travel_margin(arm, drawn) >= 0])[:, :3, 3]
-    for frame in arm.frames:
+    for frame in arm.frames.keys() - (arm.cell.frames if arm.cell else set()):
         gap = np.linalg.norm(reached - arm.frame_in_world(frame)[:3, 3], axis=1).min()
         assert gap < SPREAD, frame
 
@@ -277,3 +286,36 @@ def test_the_shares_called_near_are_as_developers_md_says() -> None:
         share = (smallest <= NEAR_SINGULAR * best).mean()
         # One posture on the threshold's edge may fall either way with the rounding.
         assert 100 * share == pytest.approx(float(percent), abs=0.06)
+
+
+# --- the cell ------------------------------------------------------------------------------
+
+
+def test_the_cell_says_where_the_loader_stands_and_its_fixture_is() -> None:
+    """The loader keeps base and fixture of its own: both must tell one truth."""
+    cell = cell_of("housing-cell").read.cell
+    loader = arm_of("housing-loader")
+    base = cell.anchored("housing-loader.base").pose_in_anchor
+    np.testing.assert_allclose(base, loader.base_in_world, atol=NEAR_ENOUGH)
+    table = cell.anchored("machine-table").pose_in_anchor
+    np.testing.assert_allclose(table, loader.frame_in_world("fixture-a"), atol=NEAR_ENOUGH)
+
+
+def test_the_tender_stands_where_the_cell_says_and_sees_what_stands_still() -> None:
+    tender = arm_of("lathe-tender")
+    assert tender.cell is not None
+    assert tender.base_in_world[:3, 3].tolist() == [2.35, -0.4, 0.35]
+    assert tender.cell.frames >= {"mast-camera", "machine-table", "raw-chute", "out-pallet"}
+    assert set(tender.cell.unseen) == {"hand-camera", 22}
+
+
+def test_the_mast_camera_looks_at_the_machine_table() -> None:
+    """Its z axis, followed down to the height of the table, ends within a hand's breadth."""
+    cell = cell_of("housing-cell").read.cell
+    camera, table = (
+        cell.anchored(name).pose_in_anchor for name in ("mast-camera", "machine-table")
+    )
+    sight, eye = camera[:3, 2], camera[:3, 3]
+    met = eye + (table[2, 3] - eye[2]) / sight[2] * sight
+    assert np.linalg.norm(met - table[:3, 3]) < 0.1
+    assert eye[2] > 2.5

@@ -31,10 +31,12 @@ CONTRACT = {
     "unusable-value": (105, 422),
     "missing-field": (105, 422),
     "out-of-range": (105, 422),
+    "not-connected": (105, 422),
     "not-rigid": (106, 422),
     "unknown-revision": (107, 404),
     "digest-differs": (107, 409),
     "name-taken": (107, 409),
+    "in-use": (107, 409),
     "revision-differs": (107, 412),
     "precondition-required": (107, 428),
     "too-large": (108, 413),
@@ -160,7 +162,7 @@ def test_every_row_but_internal_has_a_class() -> None:
 def test_the_tree_is_drawn_as_it_is() -> None:
     drawn = re.findall(r"[|']- (\w+)", errors.__doc__ or "")
     made = {kind.__name__ for kind in below(ServiceError) if kind.__module__ == errors.__name__}
-    assert len(drawn) == len(set(drawn)) == 23
+    assert len(drawn) == len(set(drawn)) == 24
     assert set(drawn) == made
 
 

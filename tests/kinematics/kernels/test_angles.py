@@ -13,12 +13,12 @@ from kinematics.angle_triples import (
     rotation_from_angles,
 )
 from kinematics.number_checks import FloatArray
-from kinematics.orientation_forms import _ORDERS
+from kinematics.orientation_forms import ORDERS
 from kinematics.rotations import rotation_from_quaternion
 from kinematics.tolerances import HALF_TURN_NOISE, LOCK_EXACT
 from kinematics.transforms import pose
 
-EACH_ORDER = pytest.mark.parametrize("order", _ORDERS.values(), ids=_ORDERS)
+EACH_ORDER = pytest.mark.parametrize("order", ORDERS.values(), ids=ORDERS)
 
 
 def plainly(order: AxisOrder, rotations: FloatArray) -> tuple[FloatArray, FloatArray]:

@@ -43,6 +43,6 @@ def document() -> dict[str, Any]:
 def arms(document: dict[str, Any]) -> Iterator[Arms[ReadArm]]:
     """A store that holds the arm."""
     with closing(open_storage(Settings(database=":memory:"))) as opened:
-        stored = Arms(opened.storage, read_arm)
+        stored = Arms(opened.arms, read_arm)
         stored.create(document)
         yield stored

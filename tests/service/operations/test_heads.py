@@ -128,7 +128,7 @@ def file(tmp_path: Path) -> SimpleNamespace:
 @pytest.fixture
 def arms(file: SimpleNamespace) -> Iterator[Arms[ReadArm]]:
     with closing(open_storage(file)) as opened:
-        yield Arms(opened.storage, read_arm)
+        yield Arms(opened.arms, read_arm)
 
 
 def test_own_writing_is_seen_at_once(arms: Arms[ReadArm], monkeypatch: pytest.MonkeyPatch) -> None:
@@ -186,7 +186,7 @@ from service.storage.opening import open_storage
 from service.storage.ports import Head
 from service.wire.arms import read_arm
 opened = open_storage(SimpleNamespace(database=sys.argv[1]), serving=False)
-arms = Arms(opened.storage, read_arm)
+arms = Arms(opened.arms, read_arm)
 document = dict(arms.get("one").record.document)
 sys.stdin.readline()
 for number in (2, 3):

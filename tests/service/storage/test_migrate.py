@@ -6,7 +6,7 @@ from alembic.migration import MigrationContext
 from sqlalchemy.dialects.postgresql.base import PGDialect
 from sqlalchemy.schema import CreateTable
 
-from service.storage import sql
+from service.storage import statements
 from service.storage.engines import in_memory
 from service.storage.migrate import known_layouts, layout_of, migrate
 from service.storage.schema import HEADS, METADATA, REVISIONS
@@ -30,8 +30,8 @@ def test_the_steps_and_the_schema_make_the_same_columns_and_keys() -> None:
         METADATA.create_all(created)
         by_schema = _columns(created)
     assert by_steps == by_schema
-    assert len(by_steps["arm_revisions"]) == 12
-    assert len(by_steps["arm_heads"]) == 3 + 2
+    assert len(by_steps["document_revisions"]) == 14
+    assert len(by_steps["document_heads"]) == 4 + 3
 
 
 def test_a_second_run_changes_nothing() -> None:
@@ -61,8 +61,9 @@ def test_postgresql_sorts_names_by_their_bytes_and_locks_the_head_it_reads() -> 
     dialect = PGDialect()  # type: ignore[no-untyped-call]
     for table in (REVISIONS, HEADS):
         assert 'name VARCHAR(48) COLLATE "C"' in str(CreateTable(table).compile(dialect=dialect))
-    assert "FOR UPDATE" in str(sql._LAST_NUMBER.compile(dialect=dialect))
-    assert "FOR UPDATE" not in str(sql._HEAD_NUMBER.compile(dialect=dialect))
+    assert "FOR UPDATE" in str(statements.LAST_NUMBER.compile(dialect=dialect))
+    assert "FOR SHARE" in str(statements.HELD_NUMBER.compile(dialect=dialect))
+    assert " FOR " not in str(statements.HEAD_NUMBER.compile(dialect=dialect))
 
 
 def _columns(connection: sa.Connection) -> dict[str, list[tuple[object, ...]]]:

@@ -48,7 +48,7 @@ def test_a_new_file_is_made_with_its_folder_and_marked_as_ours(tmp_path: Path) -
         assert opened.writable
         assert opened.description == str(path)
         assert opened.notices == []
-        assert opened.storage.count() == 0
+        assert opened.arms.count() == 0
     assert path.read_bytes()[68:72] == APPLICATION_ID.to_bytes(4, "big") == b"Aspn"
     assert pragma(path, "journal_mode") == "wal"
     assert pragma(path, "user_version") == 0
@@ -57,14 +57,14 @@ def test_a_new_file_is_made_with_its_folder_and_marked_as_ours(tmp_path: Path) -
 def test_arms_are_there_after_the_next_start(tmp_path: Path, draft: Drafts) -> None:
     path = tmp_path / "arms.db"
     with closing(open_storage(at(path))) as opened:
-        written = opened.storage.write(draft(), Head.ABSENT)
+        written = opened.arms.write(draft(), Head.ABSENT)
     with closing(open_storage(at(path))) as opened:
-        assert opened.storage.head("press-arm") == written
+        assert opened.arms.head("press-arm") == written
 
 
 def test_connections_wait_for_writers_and_outlive_power_cuts(tmp_path: Path) -> None:
     with closing(open_storage(at(tmp_path / "arms.db"))) as opened:
-        engine = opened.storage._engine
+        engine = opened.arms._engine
         with engine.connect() as connection:
             answers = {
                 name: connection.exec_driver_sql(f"PRAGMA {name}").scalar()
@@ -95,8 +95,8 @@ def test_a_store_in_memory_may_be_asked_for(address: str, draft: Drafts) -> None
         assert opened.writable
         assert opened.description == "memory"
         assert opened.notices == ["arms are kept until the service stops"]
-        opened.storage.write(draft(), Head.ABSENT)
-        assert opened.storage.count() == 1
+        opened.arms.write(draft(), Head.ABSENT)
+        assert opened.arms.count() == 1
 
 
 def test_a_file_may_be_named_by_url_with_blanks_and_signs(tmp_path: Path) -> None:
@@ -158,9 +158,9 @@ def test_where_nothing_can_be_made_arms_live_in_memory_for_reading(
         assert "nothing can be stored" in notice
         assert str(place(tmp_path)) in notice
         with pytest.raises(StorageUnavailable, match="nothing can be stored"):
-            opened.storage.write(draft(), Head.ABSENT)
-        opened.storage.write(draft(), Head.ABSENT, seed=True)
-        assert opened.storage.count() == 1
+            opened.arms.write(draft(), Head.ABSENT)
+        opened.arms.write(draft(), Head.ABSENT, seed=True)
+        assert opened.arms.count() == 1
 
 
 def test_a_folder_on_a_read_only_disk_means_memory(small_disk: Disk, draft: Drafts) -> None:
@@ -174,18 +174,18 @@ def test_a_folder_on_a_read_only_disk_means_memory(small_disk: Disk, draft: Draf
 def test_a_database_on_a_read_only_disk_can_be_read(small_disk: Disk, draft: Drafts) -> None:
     path = small_disk.folder / "arms.db"
     with closing(open_storage(at(path), serving=False)) as opened:
-        written = opened.storage.write(draft(), Head.ABSENT)
+        written = opened.arms.write(draft(), Head.ABSENT)
     before = path.read_bytes()
     small_disk.turn_read_only()
     with closing(open_storage(at(path))) as opened:
         assert not opened.writable
         (notice,) = opened.notices
         assert "can only be read" in notice
-        assert opened.storage.head("press-arm") == written
+        assert opened.arms.head("press-arm") == written
         for seed in (False, True):
             with pytest.raises(StorageUnavailable, match="nothing can be stored"):
-                opened.storage.write(draft("other"), Head.ABSENT, seed=seed)
-        assert opened.storage.count() == 1
+                opened.arms.write(draft("other"), Head.ABSENT, seed=seed)
+        assert opened.arms.count() == 1
     assert path.read_bytes() == before
 
 
@@ -194,7 +194,7 @@ def test_a_killed_servers_database_on_a_read_only_disk_shows_its_last_write(
 ) -> None:
     live = tmp_path / "live.db"
     with closing(open_storage(at(live))) as opened:
-        written = opened.storage.write(draft(), Head.ABSENT)
+        written = opened.arms.write(draft(), Head.ABSENT)
         for end in ("", "-wal", "-shm"):
             (small_disk.folder / f"arms.db{end}").write_bytes(
                 live.with_name(live.name + end).read_bytes()
@@ -202,7 +202,7 @@ def test_a_killed_servers_database_on_a_read_only_disk_shows_its_last_write(
     small_disk.turn_read_only()
     with closing(open_storage(at(small_disk.folder / "arms.db"))) as opened:
         assert not opened.writable
-        assert opened.storage.head("press-arm") == written
+        assert opened.arms.head("press-arm") == written
 
 
 @pytest.fixture
@@ -226,13 +226,13 @@ def test_a_file_that_cannot_be_written_can_be_read(
 ) -> None:
     path = tmp_path / "arms.db"
     with closing(open_storage(at(path))) as opened:
-        written = opened.storage.write(draft(), Head.ABSENT)
+        written = opened.arms.write(draft(), Head.ABSENT)
     immutable_file(path)
     with closing(open_storage(at(path))) as opened:
         assert not opened.writable
-        assert opened.storage.head("press-arm") == written
+        assert opened.arms.head("press-arm") == written
         with pytest.raises(StorageUnavailable):
-            opened.storage.write(draft(), 1)
+            opened.arms.write(draft(), 1)
 
 
 @pytest.mark.skipif(os.geteuid() == 0, reason="root may write whatever the mode says")
@@ -240,13 +240,13 @@ def test_a_file_that_cannot_be_written_can_be_read(
 def test_modes_that_forbid_writing_leave_reading(which: str, tmp_path: Path, draft: Drafts) -> None:
     path = tmp_path / "folder" / "arms.db"
     with closing(open_storage(at(path))) as opened:
-        written = opened.storage.write(draft(), Head.ABSENT)
+        written = opened.arms.write(draft(), Head.ABSENT)
     forbidden = path if which == "file" else path.parent
     forbidden.chmod(0o555)
     try:
         with closing(open_storage(at(path))) as opened:
             assert not opened.writable
-            assert opened.storage.head("press-arm") == written
+            assert opened.arms.head("press-arm") == written
     finally:
         forbidden.chmod(0o755)
 

@@ -30,8 +30,8 @@ def ours(path: Path) -> None:
             name = f"arm-{number}"
             document = {"name": name, "notes": "x" * 3000}
             now = datetime.now(UTC)
-            opened.storage.write(
-                Draft(name, document, "a" * 64, "b" * 64, "0" * 8, "", "", now), Head.ABSENT
+            opened.arms.write(
+                Draft(name, document, {"table_digest": "a" * 64}, "0" * 8, "", "", now), Head.ABSENT
             )
 
 
@@ -96,7 +96,7 @@ def one_table_overwritten(path: Path) -> None:
     ours(path)
     with closing(sqlite3.connect(path)) as connection:
         (page,) = connection.execute(
-            "SELECT rootpage FROM sqlite_master WHERE name = 'arm_heads'"
+            "SELECT rootpage FROM sqlite_master WHERE name = 'document_heads'"
         ).fetchone()
     content = bytearray(path.read_bytes())
     content[(page - 1) * 4096 : page * 4096] = b"\x00" * 4096
@@ -166,7 +166,7 @@ def test_the_undamaged_file_of_these_cases_opens(tmp_path: Path) -> None:
     path = tmp_path / "arms.db"
     ours(path)
     with closing(open_storage(Settings(database=str(path)))) as opened:
-        assert opened.storage.count() == 20
+        assert opened.arms.count() == 20
 
 
 def test_a_killed_servers_file_opens_with_all_it_had_answered(
@@ -175,7 +175,7 @@ def test_a_killed_servers_file_opens_with_all_it_had_answered(
     """The file and its log are copied as a killed process leaves them, without shared memory."""
     live, copy = tmp_path / "live.db", tmp_path / "copy.db"
     with closing(open_storage(Settings(database=str(live)))) as opened:
-        opened.storage.write(draft(), Head.ABSENT)
+        opened.arms.write(draft(), Head.ABSENT)
         for end in ("", "-wal"):
             copy.with_name(copy.name + end).write_bytes(
                 live.with_name(live.name + end).read_bytes()
@@ -183,7 +183,7 @@ def test_a_killed_servers_file_opens_with_all_it_had_answered(
     assert (tmp_path / "copy.db-wal").stat().st_size > 0
     with closing(open_storage(Settings(database=str(copy)))) as opened:
         assert opened.writable
-        assert opened.storage.count() == 1
+        assert opened.arms.count() == 1
 
 
 def test_a_start_that_was_cut_short_leaves_a_file_the_next_start_takes(tmp_path: Path) -> None:
@@ -199,4 +199,4 @@ def test_a_start_that_was_cut_short_leaves_a_file_the_next_start_takes(tmp_path:
     connection.close()
     with closing(open_storage(Settings(database=str(copy)))) as opened:
         assert opened.writable
-        assert opened.storage.count() == 0
+        assert opened.arms.count() == 0

@@ -61,9 +61,9 @@ def test_a_command_writes_beside_a_running_server(tmp_path: Path, draft: Drafts)
     with closing(open_storage(settings)) as server:
         with closing(open_storage(settings, serving=False)) as command:
             assert command.writable
-            written = command.storage.write(draft(), Head.ABSENT)
-        assert server.storage.head("press-arm") == written
-        assert server.storage.write(draft(), 1).revision == 2
+            written = command.arms.write(draft(), Head.ABSENT)
+        assert server.arms.head("press-arm") == written
+        assert server.arms.write(draft(), 1).revision == 2
 
 
 def test_two_servers_in_one_process_are_refused_too(tmp_path: Path) -> None:
@@ -100,9 +100,9 @@ def test_commands_that_make_the_database_at_once_all_get_it(tmp_path: Path, draf
 
     def add(number: int) -> None:
         with closing(open_storage(settings, serving=False)) as opened:
-            opened.storage.write(draft(f"arm-{number}"), Head.ABSENT)
+            opened.arms.write(draft(f"arm-{number}"), Head.ABSENT)
 
     with ThreadPoolExecutor(4) as pool:
         list(pool.map(add, range(4)))
     with closing(open_storage(settings)) as opened:
-        assert opened.storage.count() == 4
+        assert opened.arms.count() == 4

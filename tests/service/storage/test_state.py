@@ -25,19 +25,19 @@ def test_what_another_process_writes_is_seen_once_the_last_look_has_aged(
     settings = SimpleNamespace(database=str(tmp_path / "arms.db"))
     here, there = open_storage(settings), open_storage(settings, serving=False)
     try:
-        ours, theirs = Arms(here.storage, read_arm), Arms(there.storage, read_arm)
+        ours, theirs = Arms(here.arms, read_arm), Arms(there.arms, read_arm)
         ours.create(ARM)
         assert ours.get("one").record.revision == 1
-        settled = here.storage.state()
+        settled = here.arms.state()
         assert settled is not None
         assert ours.answers_at_once
         with monkeypatch.context() as patched:
             # Nothing was written in between: the database is not asked again.
-            patched.setattr(here.storage, "head_number", None)
+            patched.setattr(here.arms, "head_number", None)
             assert ours.get("one").record.revision == 1
-        assert here.storage.state() == settled
+        assert here.arms.state() == settled
         theirs.replace("one", ARM | {"title": "moved"}, [f"1-{ours.get('one').record.digest}"])
-        assert here.storage.state() != settled
+        assert here.arms.state() != settled
         time.sleep(LOOKED_FOR_S)
         assert ours.get("one").record.revision == 2
     finally:
@@ -48,7 +48,7 @@ def test_what_another_process_writes_is_seen_once_the_last_look_has_aged(
 def test_a_store_in_memory_tells_no_state() -> None:
     opened = open_storage(SimpleNamespace(database=":memory:"))
     try:
-        assert opened.storage.state() is None
-        assert not Arms(opened.storage, read_arm).answers_at_once
+        assert opened.arms.state() is None
+        assert not Arms(opened.arms, read_arm).answers_at_once
     finally:
         opened.close()

@@ -57,9 +57,19 @@ async def test_every_code_and_every_flag_is_there(client: httpx.AsyncClient) -> 
 
 async def test_the_question_shown_is_answered_as_shown(client: httpx.AsyncClient) -> None:
     text = (await client.get(PAGE)).text.replace("&amp;", "&")
-    (shown,) = re.findall(r"<pre>GET (\S+)\n(.*?)</pre>", text)
+    shown = re.findall(r"<pre>GET (\S+)\n(.*?)</pre>", text)[0]
     answer = (await client.get(shown[0])).text.rstrip("\r\n")
     assert (answer[:12], answer[48:]) == (shown[1][:12], shown[1][48:])
+
+
+async def test_the_orientation_shown_is_answered_as_shown(client: httpx.AsyncClient) -> None:
+    text = (await client.get(PAGE)).text.replace("&amp;", "&")
+    shown = re.findall(r'<h2 id="orientation">.*?<pre>GET (\S+)\n(.*?)</pre>(.*?)</p>', text, re.S)
+    ((address, line, words),) = shown
+    answer = (await client.get(address)).text.rstrip("\r\n")
+    assert (answer[:8], answer[48:]) == (line[:8], line[48:])
+    assert "<code>form</code> in 15" in words
+    assert line[48:].split(";")[-2].ljust(15) == line[-22:-7]
 
 
 async def test_the_clients_are_there_to_take(client: httpx.AsyncClient) -> None:

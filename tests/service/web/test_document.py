@@ -78,7 +78,8 @@ async def test_every_refusal_is_a_problem(client: httpx.AsyncClient) -> None:
         if status >= "400"
     ]
     assert len(refusals) >= 20
-    flat = {f"{method}-{what}" for method in ("get", "head") for what in ("pose", "jacobian")}
+    asked_flat = ("pose", "jacobian", "relation", "rotation")
+    flat = {f"{method}-{what}" for method in ("get", "head") for what in asked_flat}
     for response, operation, status in refusals:
         media = ["application/problem+json"]
         if operation in flat and status != "500":

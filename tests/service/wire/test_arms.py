@@ -13,7 +13,7 @@ from kinematics.errors import KinematicsError
 from kinematics.table import Convention, Coupling, JointKind, Travel
 from kinematics.tolerances import SINGULAR
 from service.convert import UNITS
-from service.errors import NotAvailable, TooLarge, UnusableValue
+from service.errors import TooLarge, UnknownArm, UnusableValue
 from service.wire.arms import RESERVED, arm_document, read_arm
 
 MATRIX = [[0, -1, 0, 100], [1, 0, 0, 200], [0, 0, 1, 300], [0, 0, 0, 1]]
@@ -188,7 +188,7 @@ def test_the_same_arm_in_other_units_has_the_same_digest() -> None:
 
 
 def refusal(given: Any) -> Any:
-    with pytest.raises((UnusableValue, NotAvailable, TooLarge, KinematicsError)) as caught:
+    with pytest.raises((UnusableValue, UnknownArm, TooLarge, KinematicsError)) as caught:
         read_arm(given)
     return caught.value
 
@@ -208,10 +208,10 @@ def test_which_names_are_reserved() -> None:
     assert read_arm(arm(tools={"link-33": ARM["tools"]["pen"]}, default_tool=None)).arm.tools
 
 
-def test_what_is_not_there_yet() -> None:
+def test_a_cell_where_there_are_none() -> None:
     error = refusal(arm(cell="north"))
     assert (error.code, error.where, error.value, error.status) == (
-        "not-available",
+        "unknown-arm",
         ("cell",),
         "north",
         422,

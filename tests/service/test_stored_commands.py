@@ -8,11 +8,12 @@ from typing import Any
 
 import pytest
 
-from service.arms_commands import add_arms, list_arms
 from service.errors import StorageUnusable
 from service.settings import Settings
 from service.storage.opening import open_storage
+from service.stored_commands import add_stored, list_stored
 from service.wire.arms import read_arm
+from service.wire.cells import read_cell
 
 ROW = {"joint": "revolute", "a": 100, "alpha": 90, "d": 0.1, "theta": 0}
 
@@ -34,12 +35,12 @@ def file_of(folder: Path, content: object, name: str = "arm.json") -> Path:
 
 def add(settings: Settings, *files: str | Path) -> tuple[int, list[str]]:
     out = io.StringIO()
-    return add_arms(settings, list(files), out), out.getvalue().splitlines()
+    return add_stored(settings, "arm", list(files), out), out.getvalue().splitlines()
 
 
 def listed(settings: Settings) -> list[str]:
     out = io.StringIO()
-    assert list_arms(settings, out) == 0
+    assert list_stored(settings, "arm", out) == 0
     return out.getvalue().splitlines()
 
 
@@ -52,7 +53,7 @@ def test_each_file_is_stored_and_named(settings: Settings, tmp_path: Path) -> No
         [f"{left}: left stored, 1-{digest}", f"{right}: right stored, 1-{digest}"],
     )
     with closing(open_storage(settings)) as opened:
-        head = opened.storage.head("left")
+        head = opened.arms.head("left")
     assert head is not None
     assert head.document == document("left")
     assert head.reason == "armspan arms add"
@@ -77,7 +78,7 @@ def test_another_arm_of_a_taken_name_is_refused_and_the_others_stored(
     assert "there is an arm 'press-arm' already" in lines[0]
     assert lines[1].startswith(f"{new}: new stored")
     with closing(open_storage(settings)) as opened:
-        assert opened.storage.head_number("press-arm") == 1
+        assert opened.arms.head_number("press-arm") == 1
 
 
 @pytest.mark.parametrize(
@@ -114,7 +115,7 @@ def test_a_missing_file_is_refused(settings: Settings, tmp_path: Path) -> None:
 def test_arms_are_added_beside_a_running_server(settings: Settings, tmp_path: Path) -> None:
     with closing(open_storage(settings)) as server:
         assert add(settings, file_of(tmp_path, document()))[0] == 0
-        assert server.storage.count() == 1
+        assert server.arms.count() == 1
         assert len(listed(settings)) == 2
 
 
@@ -146,3 +147,68 @@ def test_the_list_has_a_line_for_each_arm(settings: Settings, tmp_path: Path) ->
         f"a-arm  1-{digests[0]}  0       standard    mm-deg  -",
         f"b-arm  1-{digests[1]}  1       standard    mm-deg  draft   Bender",
     ]
+
+
+# --- cells, and arms in them ---------------------------------------------------------------
+
+PLACED = {"position": [1, 2, 3], "orientation": {"form": "xyz-fixed", "values": [0, 0, 0]}}
+CELL = {
+    "name": "press-cell",
+    "title": "One press",
+    "units": "mm-deg",
+    "arms": {"press-arm": PLACED},
+    "frames": {"pin": PLACED, "jig": {"in": "pin", **PLACED}},
+}
+
+
+def add_cells(settings: Settings, *files: Path) -> tuple[int, list[str]]:
+    out = io.StringIO()
+    return add_stored(settings, "cell", list(files), out), out.getvalue().splitlines()
+
+
+def test_cells_are_added_and_listed(settings: Settings, tmp_path: Path) -> None:
+    file = file_of(tmp_path, CELL, "cell.json")
+    digest = read_cell(CELL).digests.digest
+    assert add_cells(settings, file) == (0, [f"{file}: press-cell stored, 1-{digest}"])
+    code, (line,) = add_cells(settings, file)
+    assert (code, line) == (0, f"{file}: press-cell is stored already, 1-{digest}")
+    out = io.StringIO()
+    assert list_stored(settings, "cell", out) == 0
+    assert out.getvalue().splitlines() == [
+        "name        version     arms  frames  units   title",
+        f"press-cell  1-{digest}  1     2       mm-deg  One press",
+    ]
+    assert listed(settings) == [f"no arms in {settings.database}"]
+
+
+def test_a_cell_with_a_circle_is_refused_and_no_database_made(
+    settings: Settings, tmp_path: Path
+) -> None:
+    bad = {**CELL, "frames": {"pin": {**PLACED, "in": "pin"}}}
+    code, lines = add_cells(settings, file_of(tmp_path, bad, "bad.json"))
+    assert code == 1
+    assert "pin stands in itself (at /frames/pin/in)" in lines[0]
+    assert lines[1] == "nothing was stored"
+    assert not Path(settings.database).exists()
+
+
+def test_an_arm_is_added_in_its_cell_and_refused_without(
+    settings: Settings, tmp_path: Path
+) -> None:
+    alone = file_of(tmp_path, document("alone"), "alone.json")
+    file = file_of(tmp_path, document(cell="press-cell"), "arm.json")
+    code, lines = add(settings, alone, file)
+    assert code == 1
+    assert lines == [
+        f"{file}: there is no cell 'press-cell' (at /cell): leave it out",
+        "nothing was stored",
+    ]
+    assert listed(settings) == [f"no arms in {settings.database}"]
+    add_cells(settings, file_of(tmp_path, CELL, "cell.json"))
+    code, lines = add(settings, alone, file)
+    assert (code, len(lines)) == (0, 2)
+    assert add(settings, file)[1][0].startswith(f"{file}: press-arm is stored already, 1-")
+    with closing(open_storage(settings)) as opened:
+        head = opened.arms.head("press-arm")
+    assert head is not None
+    assert head.cell == ("press-cell", 1)

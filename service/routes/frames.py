@@ -1,0 +1,64 @@
+"""Relations between frames: those not measured from those that are, loops, the estimate.
+
+Left out: what is answered (operations).
+"""
+
+from fastapi import APIRouter
+from starlette.concurrency import run_in_threadpool
+from starlette.requests import Request
+from starlette.responses import Response
+
+from service.bulk.threads import Threads
+from service.operations.frames import frames_answer
+from service.routes.direct import RelationRoute
+from service.web.document import documented
+from service.wire.answers import json_answer
+from service.wire.body import read_bytes
+from service.wire.formats import JSON
+from service.wire.frame_answers import FramesAnswer
+from service.wire.frames import FramesBody, FramesRequest
+from service.wire.query import known_parameters
+
+router = APIRouter(route_class=RelationRoute)
+
+_SHORT_BYTES = 16 * 1024
+"""Bodies up to this are parsed and answered in a few milliseconds; longer ones wait their turn."""
+
+
+@router.post(
+    "/v1/frames",
+    openapi_extra=documented(
+        "Relations between frames",
+        "Any unknown pose from known `relations`, from `arms` at joint values and from a stored "
+        "`cell`: poses are inverted and put together along the fewest relations, and the way is "
+        "told. Every independent loop comes with what it is off by. With `estimate` all relations "
+        "give way in proportion to their variances (weighted least squares), and the one that "
+        "most likely is wrong is named (data snooping, Baarda 1968). Frames of an arm are called "
+        "`<arm>.base`, `<arm>.flange`, `<arm>.link-3`, `<arm>.<tool or frame>`; those of the cell, "
+        "`world` and your own stand alone. An arm that stands in a cell brings it along. At most "
+        "20 000 relations.",
+        request=FramesRequest,
+        answer=FramesAnswer,
+        statuses=(503,),
+        examples="frames",
+    ),
+)
+async def frames(request: Request) -> Response:
+    """Answer relations between frames."""
+    known_parameters(request, ())
+    raw = await read_bytes(request, JSON)
+    arms, cells = request.app.state.arms, request.app.state.cells
+    threads: Threads = request.app.state.bulk.threads
+
+    def answer() -> Response:
+        body = FramesBody(raw)
+        request.state.json_body = body.document
+        return json_answer(frames_answer(arms, cells, body, threads.refuse_if_stopping))
+
+    if len(raw) > _SHORT_BYTES:
+        return await threads.run(answer)
+    # What is short and looks at nothing far away is answered sooner than a thread would begin.
+    names_stored = b'"arms"' in raw or b'"cell"' in raw
+    if names_stored and not (arms.answers_at_once and cells.answers_at_once):
+        return await run_in_threadpool(answer)
+    return await run_in_threadpool(answer) if b'"estimate"' in raw else answer()
