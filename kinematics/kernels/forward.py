@@ -14,6 +14,7 @@ from kinematics.kernels.workspace import BLOCK, COSINE, POINT, SINE, SIZE, X, Y,
 from kinematics.number_checks import FloatArray
 
 Turn = Callable[[FloatArray, int, float, float, float, float], None]
+Begin = Callable[[FloatArray, int, FloatArray, float, float, float, float], None]
 
 
 def _turn_of(entry: int) -> Turn:
@@ -58,6 +59,46 @@ def _turn(
     _turn_2(work, count, d, a, cos_alpha, sin_alpha)
 
 
+def _begin_of(entry: int) -> Begin:
+    """Return the kernel that does for the first row what ``turn`` does for the others.
+
+    From the one transform before it, in place of a frame for each posture.
+    """
+    x_at, y_at, z_at, point_at = (
+        X + entry * BLOCK,
+        Y + entry * BLOCK,
+        Z + entry * BLOCK,
+        POINT + entry * BLOCK,
+    )
+
+    @compiled
+    def begin(
+        work: FloatArray,
+        count: int,
+        first: FloatArray,
+        d: float,
+        a: float,
+        cos_alpha: float,
+        sin_alpha: float,
+    ) -> None:
+        x, y, z = first[entry, 0], first[entry, 1], first[entry, 2]
+        point = first[entry, 3] + d * z
+        y_of_z, z_of_z = sin_alpha * z, cos_alpha * z
+        for b in range(count):
+            cosine, sine = work[COSINE + b], work[SINE + b]
+            turned_x = cosine * x + sine * y
+            turned_y = cosine * y - sine * x
+            work[point_at + b] = point + a * turned_x
+            work[x_at + b] = turned_x
+            work[y_at + b] = cos_alpha * turned_y + y_of_z
+            work[z_at + b] = z_of_z - sin_alpha * turned_y
+
+    return begin
+
+
+_begin_0, _begin_1, _begin_2 = _begin_of(0), _begin_of(1), _begin_of(2)
+
+
 @compiled
 def _start(work: FloatArray, count: int, first: FloatArray) -> None:
     """Put the first constant transform into every posture of the block."""
@@ -83,23 +124,29 @@ def _drive(
 
     The value is the row of the drive map times the joint values, most often one of them.
     """
-    fresh = True
+    fresh, largest = True, 0.0
     for joint in range(shares.shape[0]):
         share = shares[joint]
         if share == 0.0:
             continue
+        most = 0.0
         if fresh:
             for b in range(count):
-                work[COSINE + b] = share * joint_values[begin + b, joint]
-            fresh = False
+                value = share * joint_values[begin + b, joint]
+                work[COSINE + b] = value
+                most = max(most, abs(value))
         else:
             for b in range(count):
-                work[COSINE + b] += share * joint_values[begin + b, joint]
+                value = share * joint_values[begin + b, joint]
+                work[COSINE + b] += value
+                most = max(most, abs(value))
+        fresh = False
+        largest += most
     if fresh:
         for b in range(count):
             work[COSINE + b] = 0.0
     if revolute:
-        sine_cosine(work, count, offset[0], offset[1])
+        sine_cosine(work, count, largest, offset[0], offset[1])
         return
     for entry in range(3):
         for b in range(count):
@@ -159,8 +206,17 @@ def tool_poses(
             turned |= tool[i, j] != (1.0 if i == j else 0.0)
     for begin in range(0, joint_values.shape[0], BLOCK):
         count = min(BLOCK, joint_values.shape[0] - begin)
-        _start(work, count, first)
-        for row in range(offset.shape[0]):
+        begun = 0
+        if offset.shape[0] > 0 and revolute[0]:
+            _drive(work, count, joint_values, begin, drive_matrix[0], offset[0], True)
+            d, a, cos_alpha, sin_alpha = offset[0, 2], link[0, 0], link[0, 1], link[0, 2]
+            _begin_0(work, count, first, d, a, cos_alpha, sin_alpha)
+            _begin_1(work, count, first, d, a, cos_alpha, sin_alpha)
+            _begin_2(work, count, first, d, a, cos_alpha, sin_alpha)
+            begun = 1
+        else:
+            _start(work, count, first)
+        for row in range(begun, offset.shape[0]):
             _drive(work, count, joint_values, begin, drive_matrix[row], offset[row], revolute[row])
             _turn(work, count, offset[row, 2], link[row, 0], link[row, 1], link[row, 2])
         for b in range(count):

@@ -109,8 +109,9 @@ def test_one_by_one_as_together(joints: int, kind: str, framed: bool) -> None:
         for index, other in enumerate(expected):
             posture = values[index : index + 1]
             (alone,) = together(arm, tool, base_in_frame, form, space, posture)
-            # One posture is one posture to the kernels, however it is laid out.
-            alike(reader.read(posture[0]), alone, 1e-15)
+            # One posture alone, by the kernel for poses and by that for axes: but for rounding, that
+            # angles near a lock enlarge, the same.
+            alike(reader.read(posture[0]), alone, 1e-13)
             alike(reader.read(posture[0]), other, 1e-9)
             np.testing.assert_allclose(alone.position, other.position, rtol=0.0, atol=1e-12)
 
@@ -126,7 +127,7 @@ def test_every_form(form: str) -> None:
         reader = PostureReader(arm, AT_FLANGE, base, form, space)
         for posture in values:
             (alone,) = together(arm, AT_FLANGE, base, form, space, posture[None])
-            alike(reader.read(posture), alone, 1e-15)
+            alike(reader.read(posture), alone, 1e-13)
 
 
 def test_numbers_are_plain_and_stay_as_they_were_read() -> None:

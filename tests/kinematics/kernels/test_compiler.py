@@ -95,7 +95,7 @@ ONE_TURN = """
 import numpy as np
 from kinematics.kernels.sine_cosine import sine_cosine
 work = np.zeros(8)
-sine_cosine(work, 1, 1.0, 0.0)
+sine_cosine(work, 1, 1.0, 1.0, 0.0)
 print(int(np.flatnonzero(work == 1.0)[0]), sum(sine_cosine.stats.cache_hits.values()))
 """
 

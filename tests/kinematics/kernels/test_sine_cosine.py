@@ -6,7 +6,7 @@ import mpmath
 import numpy as np
 import pytest
 
-from kinematics.kernels.sine_cosine import sine_cosine
+from kinematics.kernels.sine_cosine import COSINE_TERMS, SINE_TERMS, sine_cosine
 from kinematics.kernels.workspace import BLOCK, COSINE, SINE, SIZE
 
 # One ulp of a number below 1 is 1.1e-16; the offset's angle sum adds two roundings.
@@ -17,7 +17,8 @@ def both(angles: np.ndarray, offset: float = 0.0) -> tuple[np.ndarray, np.ndarra
     """Return cosine and sine of up to one block of angles."""
     work = np.zeros(SIZE)
     work[COSINE : COSINE + len(angles)] = angles
-    sine_cosine(work, len(angles), math.cos(offset), math.sin(offset))
+    largest = float(np.abs(angles).max())
+    sine_cosine(work, len(angles), largest, math.cos(offset), math.sin(offset))
     return work[COSINE : COSINE + len(angles)], work[SINE : SINE + len(angles)]
 
 
@@ -67,7 +68,26 @@ def test_an_offset_is_not_rounded_against_a_large_angle() -> None:
 
 def test_only_the_block_s_own_part_is_touched() -> None:
     work = np.full(SIZE, 7.0)
-    sine_cosine(work, 3, 1.0, 0.0)
+    sine_cosine(work, 3, 1.0, 1.0, 0.0)
     untouched = np.ones(SIZE, dtype=bool)
     untouched[COSINE : COSINE + 3] = untouched[SINE : SINE + 3] = False
     assert (work[untouched] == 7.0).all()
+
+
+def test_the_polynomials_meet_sine_and_cosine_at_the_chebyshev_points() -> None:
+    """Interpolation at Chebyshev points, worked out with 60 digits (mpmath)."""
+    with mpmath.workdps(60):
+        top = (mpmath.pi / 4) ** 2 * mpmath.mpf("1.0001")
+        count = len(SINE_TERMS)
+        places = [
+            top / 2 * (1 + mpmath.cos((2 * k + 1) * mpmath.pi / (2 * count))) for k in range(count)
+        ]
+        powers = mpmath.matrix([[z**k for k in range(count)] for z in places])
+        of_sine = [(mpmath.sin(mpmath.sqrt(z)) / mpmath.sqrt(z) - 1) / z for z in places]
+        of_cosine = [(mpmath.cos(mpmath.sqrt(z)) - 1 + z / 2) / z**2 for z in places]
+        sine, cosine = (
+            [float(term) for term in mpmath.lu_solve(powers, mpmath.matrix(values))]
+            for values in (of_sine, of_cosine)
+        )
+    assert sine == list(SINE_TERMS)
+    assert cosine == list(COSINE_TERMS)
