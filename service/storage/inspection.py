@@ -12,7 +12,7 @@ from pathlib import Path
 
 from service.errors import StorageUnusable
 from service.storage.engines import BUSY_TIMEOUT_S, FileMode, file_address
-from service.storage.migrate import known_layouts
+from service.storage.layouts import LAYOUTS
 
 # "Aspn" in ASCII; SQLite keeps it at byte 68 of the file for the program that owns the data.
 APPLICATION_ID = int.from_bytes(b"Aspn", "big")
@@ -76,7 +76,7 @@ def _checked_layout(path: Path, connection: sqlite3.Connection) -> str | None:
     row = has_layout and connection.execute("SELECT version_num FROM alembic_version").fetchone()
     if not row:
         return None
-    if row[0] not in known_layouts():
+    if row[0] not in LAYOUTS:
         raise unusable(path, f"a newer version of armspan wrote it (layout {row[0]})")
     return str(row[0])
 

@@ -28,14 +28,6 @@ def known_layouts() -> tuple[str, ...]:
     return tuple(step.revision for step in _steps().walk_revisions())
 
 
-def layout_of(connection: sa.Connection) -> str | None:
-    """Return the layout of the database, or None when it has none yet."""
-    if not sa.inspect(connection).has_table("alembic_version"):
-        return None
-    name = connection.execute(sa.text("SELECT version_num FROM alembic_version")).scalar()
-    return None if name is None else str(name)
-
-
 def migrate(connection: sa.Connection) -> None:
     """Run the missing steps in the transaction of ``connection``; the caller commits."""
     steps = _steps()

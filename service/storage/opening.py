@@ -18,7 +18,7 @@ import sqlalchemy as sa
 from service.errors import StorageUnusable
 from service.storage.engines import BUSY_TIMEOUT_S, by_url, in_memory, on_file
 from service.storage.inspection import APPLICATION_ID, inspect, unusable
-from service.storage.migrate import known_layouts, layout_of, migrate
+from service.storage.layouts import LAYOUTS, lay_out, layout_of
 from service.storage.server_lock import ServerLock
 from service.storage.sql import SqlStorage, reason_of, sqlite_error_name, writing
 from service.storage.state import FileState
@@ -128,12 +128,12 @@ def _lay_out(engine: sa.Engine, shown: str) -> None:
         # Servers that start at once wait here for the first to lay out the database.
         connection.execute(sa.select(sa.func.pg_advisory_xact_lock(APPLICATION_ID)))
         present = layout_of(connection)
-        if present is not None and present not in known_layouts():
+        if present is not None and present not in LAYOUTS:
             raise StorageUnusable(
                 f"a newer version of armspan wrote {shown} (layout {present})",
                 way_out="start that version, or name another database",
             )
-        migrate(connection)
+        lay_out(connection)
 
 
 def _open_file(path: Path, serving: bool) -> OpenStorage:
@@ -190,7 +190,7 @@ def _writable_engine(path: Path) -> sa.Engine:
         with writing(engine) as connection:
             if connection.exec_driver_sql("PRAGMA application_id").scalar() != APPLICATION_ID:
                 connection.exec_driver_sql(f"PRAGMA application_id = {APPLICATION_ID}")
-            migrate(connection)
+            lay_out(connection)
         _use_write_ahead_log(engine)
     except BaseException:
         engine.dispose()
@@ -238,7 +238,7 @@ def _open_unwritable(path: Path, reason: str, is_empty: bool) -> OpenStorage:
             # A log cannot be read where its shared-memory file cannot be made: then without it.
             engine.dispose()
             continue
-        if layout != known_layouts()[0]:
+        if layout != LAYOUTS[0]:
             engine.dispose()
             raise unusable(path, f"it must be brought to a newer layout, and {reason}")
         state = FileState(engine)
@@ -252,7 +252,7 @@ def _open_unwritable(path: Path, reason: str, is_empty: bool) -> OpenStorage:
 def _open_memory(why: str) -> OpenStorage:
     engine = in_memory()
     with writing(engine) as connection:
-        migrate(connection)
+        lay_out(connection)
     both = _both(engine, refuses_writes=why)
     notice = f"{why}: nothing can be stored" if why else "arms are kept until the service stops"
     return OpenStorage(*both, "memory", not why, [notice], (engine.dispose,))

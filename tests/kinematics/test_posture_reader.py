@@ -109,8 +109,8 @@ def test_one_by_one_as_together(joints: int, kind: str, framed: bool) -> None:
         for index, other in enumerate(expected):
             posture = values[index : index + 1]
             (alone,) = together(arm, tool, base_in_frame, form, space, posture)
-            # One posture alone, by the kernel for poses and by that for axes: but for rounding, that
-            # angles near a lock enlarge, the same.
+            # The kernel for poses and the one for axes round alike but for the last digits, which
+            # angles near a lock enlarge.
             alike(reader.read(posture[0]), alone, 1e-13)
             alike(reader.read(posture[0]), other, 1e-9)
             np.testing.assert_allclose(alone.position, other.position, rtol=0.0, atol=1e-12)

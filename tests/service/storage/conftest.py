@@ -12,7 +12,7 @@ import pytest
 import sqlalchemy as sa
 
 from service.settings import Settings
-from service.storage.migrate import known_layouts, layout_of
+from service.storage.layouts import LAYOUTS, layout_of
 from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import Draft
 from service.storage.schema import METADATA
@@ -60,7 +60,7 @@ def opened(request: pytest.FixtureRequest, tmp_path: Path) -> Iterator[OpenStora
 def _empty(url: str) -> None:
     engine = sa.create_engine(sa.make_url(url).set(drivername="postgresql+psycopg"))
     with engine.begin() as connection:
-        if layout_of(connection) == known_layouts()[0]:
+        if layout_of(connection) == LAYOUTS[0]:
             # Quicker than to lay the tables out anew for each test.
             for table in reversed(METADATA.sorted_tables):
                 connection.execute(table.delete())

@@ -1,5 +1,8 @@
 """The steps lead to the tables the code asks, and run again without doing anything."""
 
+import subprocess
+import sys
+
 import sqlalchemy as sa
 from alembic.autogenerate import compare_metadata
 from alembic.migration import MigrationContext
@@ -8,7 +11,8 @@ from sqlalchemy.schema import CreateTable
 
 from service.storage import statements
 from service.storage.engines import in_memory
-from service.storage.migrate import known_layouts, layout_of, migrate
+from service.storage.layouts import LAYOUTS, lay_out, layout_of
+from service.storage.migrate import known_layouts, migrate
 from service.storage.schema import HEADS, METADATA, REVISIONS
 from service.storage.sql import writing
 
@@ -27,11 +31,26 @@ def test_the_steps_and_the_schema_make_the_same_columns_and_keys() -> None:
         migrate(migrated)
         by_steps = _columns(migrated)
     with writing(in_memory()) as created:
-        METADATA.create_all(created)
+        lay_out(created)
         by_schema = _columns(created)
+        assert layout_of(created) == LAYOUTS[0]
     assert by_steps == by_schema
     assert len(by_steps["document_revisions"]) == 14
     assert len(by_steps["document_heads"]) == 4 + 3
+
+
+def test_the_layouts_are_those_that_the_steps_lead_through() -> None:
+    assert known_layouts() == LAYOUTS
+
+
+def test_a_new_database_needs_no_steps() -> None:
+    script = (
+        "import sys; from service.storage.engines import in_memory;"
+        "from service.storage.layouts import lay_out; from service.storage.sql import writing\n"
+        "with writing(in_memory()) as connection: lay_out(connection); lay_out(connection)\n"
+        "assert 'alembic' not in sys.modules"
+    )
+    subprocess.run([sys.executable, "-c", script], check=True)
 
 
 def test_a_second_run_changes_nothing() -> None:

@@ -20,7 +20,7 @@ from service.errors import StorageUnusable
 from service.operations.arms import Arms
 from service.operations.cells import Cells
 from service.settings import Settings
-from service.storage import migrate
+from service.storage import layouts, migrate
 from service.storage.engines import on_file
 from service.storage.inspection import APPLICATION_ID
 from service.storage.opening import open_storage
@@ -47,7 +47,7 @@ def lay_out(connection: sa.Connection, layout: str) -> None:
     tables.reflect(connection)
     for name in ("arm_revisions", "arm_heads"):
         connection.execute(tables.tables[name].insert(), WRITTEN[name])
-    assert migrate.layout_of(connection) == layout
+    assert layouts.layout_of(connection) == layout
 
 
 @pytest.fixture(params=["sqlite", "postgresql"])
@@ -128,7 +128,7 @@ def test_a_second_opening_changes_nothing(database: str) -> None:
     try:
         assert opened.arms.count() == 2
         with opened.arms._engine.connect() as connection:
-            assert migrate.layout_of(connection) == migrate.known_layouts()[0] == "0002"
+            assert layouts.layout_of(connection) == migrate.known_layouts()[0] == "0002"
     finally:
         opened.close()
 

@@ -18,7 +18,7 @@ from service.errors import StorageUnavailable, StorageUnusable
 from service.settings import Settings
 from service.storage import opening
 from service.storage.inspection import APPLICATION_ID
-from service.storage.migrate import known_layouts
+from service.storage.layouts import LAYOUTS
 from service.storage.opening import open_storage
 from service.storage.ports import Draft, Head
 
@@ -258,7 +258,7 @@ def test_an_old_layout_that_cannot_be_brought_up_to_date_is_refused(
     with closing(open_storage(at(path), serving=False)):
         pass
     small_disk.turn_read_only()
-    monkeypatch.setattr(opening, "known_layouts", lambda: ("9999", *known_layouts()))
+    monkeypatch.setattr(opening, "LAYOUTS", ("9999", *LAYOUTS))
     with pytest.raises(StorageUnusable, match="newer layout"):
         open_storage(at(path))
 
