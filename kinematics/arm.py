@@ -14,6 +14,7 @@ from kinematics.drive_map import DriveMap
 from kinematics.errors import InvalidArm, ToolNotSaid, UnknownFrame, UnknownTool
 from kinematics.in_cell import InCell
 from kinematics.known_names import one_of
+from kinematics.number_checks import refuse_shared_numbers
 from kinematics.table import FloatArray, Table, Travel, check_number, check_travel
 from kinematics.tolerances import SHORTEST_LENGTH, SINGULAR
 from kinematics.transforms import inverse
@@ -105,10 +106,9 @@ class Arm:
             _check_combined(self, index, combined)
         if self.default_tool is not None:
             self.tool_in_flange(self.default_tool, where=("default_tool",))
-        _refuse_shared_numbers("tools", {name: tool.number for name, tool in self.tools.items()})
-        _refuse_shared_numbers(
-            "frames", {name: frame.number for name, frame in self.frames.items()}
-        )
+        for what, things in (("tools", self.tools), ("frames", self.frames)):
+            numbers = {name: thing.number for name, thing in things.items()}
+            refuse_shared_numbers(what, numbers, InvalidArm)
         for shared in self.tools.keys() & self.frames.keys():
             raise InvalidArm(
                 f"{shared} is the name of a tool and of a frame",
@@ -278,20 +278,6 @@ def _check_combined(arm: Arm, index: int, combined: CombinedTravel) -> None:
             way_out="give at least one ratio other than 0",
         )
     check_travel(combined.travel, (*where, "travel"), f"combined travel {index + 1}")
-
-
-def _refuse_shared_numbers(what: str, numbers: Mapping[str, int | None]) -> None:
-    seen: dict[int, str] = {}
-    for name, number in numbers.items():
-        if number is not None and number in seen:
-            raise InvalidArm(
-                f"{name} and {seen[number]} have the same number {number}",
-                where=(what, name, "number"),
-                value=number,
-                way_out="give each a number of its own",
-            )
-        if number is not None:
-            seen[number] = name
 
 
 def _check_scalars(arm: Arm) -> None:

@@ -13,6 +13,7 @@ import numpy as np
 from kinematics.arm import BASE, FLANGE, WORLD, NamedFrame
 from kinematics.errors import InvalidCell, TooManyPlaced, UnknownFrame
 from kinematics.known_names import way_out_of_unknown
+from kinematics.number_checks import refuse_shared_numbers
 from kinematics.table import FloatArray
 from kinematics.tolerances import MOST_PLACED
 
@@ -89,7 +90,8 @@ class Cell:
 
     def __post_init__(self) -> None:
         _refuse_too_many(self)
-        _refuse_shared_numbers(self.frames)
+        numbers = {name: frame.number for name, frame in self.frames.items()}
+        refuse_shared_numbers("frames", numbers, InvalidCell)
         nodes = self._nodes()
         known = {WORLD, *nodes, *self._flanges()}
         for node, placed in nodes.items():
@@ -258,18 +260,3 @@ def _refuse_too_many(cell: Cell) -> None:
                 value=len(things),
                 way_out=f"at most {MOST_PLACED}; divide the cell",
             )
-
-
-def _refuse_shared_numbers(frames: Mapping[str, Placed]) -> None:
-    seen: dict[int, str] = {}
-    for name, frame in frames.items():
-        if frame.number is None:
-            continue
-        if frame.number in seen:
-            raise InvalidCell(
-                f"{name} and {seen[frame.number]} have the same number {frame.number}",
-                where=("frames", name, "number"),
-                value=frame.number,
-                way_out="give each a number of its own",
-            )
-        seen[frame.number] = name

@@ -107,7 +107,8 @@ def estimate(
     >>> from kinematics.transforms import pose
     >>> twice = FrameGraph(["a", "a"], ["b", "b"], pose(np.eye(3), [[0, 0, 1.0], [0, 0, 1.3]]))
     >>> found = estimate(twice, np.array([0.1, 0.2]), np.array([0.1, 0.1]))
-    >>> found.pose_between(twice.numbers_of(["a"]), twice.numbers_of(["b"]))[0, 2, 3].round(12)
+    >>> a, b = (twice.connections.numbers_of([name]) for name in "ab")
+    >>> found.pose_between(a, b)[0, 2, 3].round(12)
     np.float64(1.06)
     """
     is_root = graph.group == np.arange(len(graph.names))

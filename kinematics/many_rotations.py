@@ -9,7 +9,7 @@ import numpy as np
 from kinematics.angle_triples import AxisOrder
 from kinematics.kernels.angles import rotations_of_angles
 from kinematics.kernels.compiler import for_kernel
-from kinematics.kernels.rotation_matrices import quaternions_of_vectors, rotations_of_quaternions
+from kinematics.kernels.rotation_matrices import rotations_of_quaternions, rotations_of_vectors
 from kinematics.number_checks import FloatArray
 from kinematics.tolerances import SHORT_VECTOR
 
@@ -59,9 +59,9 @@ def rotations_from_vectors(vectors: FloatArray) -> FloatArray:
     >>> rotations_from_vectors(np.zeros((1, 3)))[0].tolist()
     [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]]
     """
-    quaternions = np.empty((len(vectors), 4))
-    quaternions_of_vectors(for_kernel(vectors), SHORT_VECTOR, quaternions)
-    return rotations_from_quaternions(quaternions)
+    rotations = np.empty((len(vectors), 3, 3))
+    rotations_of_vectors(for_kernel(vectors), SHORT_VECTOR, rotations)
+    return rotations
 
 
 def rotations_from_angles(order: AxisOrder, angles: FloatArray) -> FloatArray:

@@ -1,9 +1,12 @@
 """Numbers as they come in from outside: real, finite, as many as needed, not too large.
 
+And numbers that things are known by, of which each has its own.
+
 Left out: what the numbers mean; whoever asks checks that next.
 """
 
 import math
+from collections.abc import Mapping
 from numbers import Real
 
 import numpy as np
@@ -65,6 +68,42 @@ def checked_numbers(
     return numbers
 
 
+def refuse_shared_numbers(
+    what: str, numbers: Mapping[str, int | None], refusal: type[KinematicsError]
+) -> None:
+    """Refuse two things that a controller would know by the same number.
+
+    Parameters
+    ----------
+    what : the field that holds them.
+    numbers : by the name of each; None for one without.
+
+    Raises
+    ------
+    refusal : ``where`` leads to the number of the second.
+
+    Examples
+    --------
+    >>> from kinematics.errors import InvalidArm
+    >>> refuse_shared_numbers("tools", {"pen": 1, "saw": None, "claw": 1}, InvalidArm)
+    Traceback (most recent call last):
+    ...
+    kinematics.errors.InvalidArm: claw and pen have the same number 1
+    """
+    seen: dict[int, str] = {}
+    for name, number in numbers.items():
+        if number is None:
+            continue
+        if number in seen:
+            raise refusal(
+                f"{name} and {seen[number]} have the same number {number}",
+                where=(what, name, "number"),
+                value=number,
+                way_out="give each a number of its own",
+            )
+        seen[number] = name
+
+
 def _as_lists(values: object, depth: int) -> object:
     if isinstance(values, np.ndarray):
         return values.tolist()
@@ -107,7 +146,7 @@ def _checked_number(
         )
     if abs(number) > LARGEST_MAGNITUDE:
         raise OutOfRange(
-            f"{what} holds {number:.6g}, beyond {LARGEST_MAGNITUDE:.0e} in SI units",
+            f"{what} holds {number:.6g}, beyond 1e9 in SI units",
             where=where,
             value=entry,
             way_out="check the units; magnitudes above 1e9 m or 1e9 rad are refused",

@@ -5,7 +5,7 @@ values. Beyond travel is a finding, never an error: the arm may be there on a di
 """
 
 from dataclasses import dataclass
-from functools import lru_cache
+from weakref import WeakKeyDictionary
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,9 +15,6 @@ from kinematics.chain import as_rows
 from kinematics.findings import OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL, Finding
 from kinematics.kernels.travel import travel_left
 from kinematics.table import FloatArray, Travel
-
-ARMS_KEPT = 512
-"""Arms whose limits are kept in the kernels' form, some 2 kB each."""
 
 
 @dataclass(frozen=True)
@@ -198,8 +195,18 @@ def travel_findings(arm: Arm, joint_values: FloatArray) -> tuple[Finding, ...]:
     return tuple(found)
 
 
-@lru_cache(maxsize=ARMS_KEPT)
+_kept: WeakKeyDictionary[Arm, _Limits] = WeakKeyDictionary()
+"""What was found of an arm, as long as somebody has the arm."""
+
+
 def _limits_of(arm: Arm) -> _Limits:
+    limits = _kept.get(arm)
+    if limits is None:
+        limits = _kept[arm] = _in_the_form_of_kernels(arm)
+    return limits
+
+
+def _in_the_form_of_kernels(arm: Arm) -> _Limits:
     each = tuple(_listed(arm))
     travel = {limit.subject: place for place, limit in enumerate(each) if not limit.working}
     return _Limits(

@@ -16,10 +16,11 @@ from kinematics.chain import tool_in_base
 from kinematics.frames import FrameGraph
 from kinematics.jacobian import Motion, motion_of, singular_values_of
 from kinematics.kernels.compiler import is_kept
-from kinematics.kernels.frame_poses import ways_found
+from kinematics.kernels.frame_poses import loops_walked
 from kinematics.kernels.judgement import judge_postures
 from kinematics.kernels.travel import travel_left
 from kinematics.orientation_batches import checked_rotations
+from kinematics.orientation_forms import shape_of
 from kinematics.pose_batches import poses_as_given
 from kinematics.rotations import quaternion_wxyz_of
 from kinematics.singularity import judge
@@ -61,11 +62,13 @@ def _judgements() -> None:
 
 
 def _relations() -> None:
-    for form in ("xyz-fixed", "rotation-vector"):
-        checked_rotations(form, np.zeros((1, 3)))
+    for form in ("xyz-fixed", "rotation-vector", "quaternion-wxyz"):
+        checked_rotations(form, np.ones((1, *shape_of(form))))
     given = poses_as_given("xyz-fixed", np.zeros((2, 3)), np.zeros((2, 3)))
     assert given is not None
-    FrameGraph(["a", "a"], ["b", "b"], given).ways(["a"], ["b"])
+    graph = FrameGraph(["a", "a"], ["b", "b"], given)
+    graph.ways(["a"], ["b"])
+    assert len(graph.closures[0]) == 1
 
 
 _PARTS: Mapping[str, Callable[[], None]] = {
@@ -104,7 +107,7 @@ def to_be_compiled(parts: Sequence[str]) -> list[str]:
     last: dict[str, Callable[..., object]] = {
         "poses": travel_left,
         "judgements": judge_postures,
-        "relations": ways_found,
+        "relations": loops_walked,
     }
     return [part for part in parts if is_kept(last[part]) is False]
 

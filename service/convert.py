@@ -17,7 +17,7 @@ from kinematics.orientation_forms import TRIPLES, values_and_distance, values_of
 from kinematics.table import FloatArray
 
 ARMS_KEPT = 512
-"""Arms whose joints' scales are kept, some 200 bytes each."""
+"""Arms, by the units of their joints, whose scales are kept, some 500 bytes each."""
 
 _METRES = {"mm": (1.0, 1000.0), "m": (1.0, 1.0), "in": (0.0254, 1.0)}
 """Each length unit in metres, as a numerator and a denominator: 400 mm divided by 1000 is the
@@ -112,13 +112,13 @@ UNITS = {
 
 def joint_values_in(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
     """Return joint values, speeds or steps (..., joints) in SI."""
-    factors, divisors = _joint_scales(arm, units.name)[0]
+    factors, divisors = _joint_scales(arm.joint_units, units.name)[0]
     return values * factors / divisors
 
 
 def joint_row_in(arm: Arm, units: Units, values: Sequence[float]) -> list[float]:
     """Return the values of one posture, a plain number for each joint, in SI."""
-    factors, divisors = _joint_scales(arm, units.name)[1]
+    factors, divisors = _joint_scales(arm.joint_units, units.name)[1]
     return [
         value * factor / divisor
         for value, factor, divisor in zip(values, factors, divisors, strict=True)
@@ -127,7 +127,7 @@ def joint_row_in(arm: Arm, units: Units, values: Sequence[float]) -> list[float]
 
 @lru_cache(maxsize=ARMS_KEPT)
 def _joint_scales(
-    arm: Arm, units: str
+    joint_units: tuple[str, ...], units: str
 ) -> tuple[tuple[FloatArray, FloatArray], tuple[list[float], list[float]]]:
     """Return what joint values are multiplied by and then divided by to be SI, (joints,) each.
 
@@ -135,8 +135,9 @@ def _joint_scales(
     """
     numerator, denominator = _METRES[UNITS[units].length]
     per_angle = float(UNITS[units].angle_in(1.0))
-    factors = np.where(arm.revolute_joints, per_angle, numerator)
-    divisors = np.where(arm.revolute_joints, 1.0, denominator)
+    revolute = [unit == "rad" for unit in joint_units]
+    factors = np.where(revolute, per_angle, numerator)
+    divisors = np.where(revolute, 1.0, denominator)
     return (factors, divisors), (factors.tolist(), divisors.tolist())
 
 

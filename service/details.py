@@ -51,9 +51,14 @@ class Detail:
         {'pointer': '/rows/0/a', 'in': 'body', 'say': 'a must be finite', 'value': 'NaN',
          'way_out': ''}
         """
+        return {"pointer": pointer(self.where), "in": self.location, **self._told()}
+
+    def problem_of_item(self) -> dict[str, object]:
+        """Return the complaint as the item it is about has it, among others that are answered."""
+        return {"code": self.code, "pointer": pointer(self.where), **self._told()}
+
+    def _told(self) -> dict[str, object]:
         return {
-            "pointer": pointer(self.where),
-            "in": self.location,
             "say": encodable(self.say),
             "value": shown(self.value),
             "way_out": encodable(self.way_out),

@@ -32,15 +32,25 @@ def nearby(draw: np.random.Generator, frames: int, relations: int) -> Ends:
     return inner, outer
 
 
-def body_of(size: tuple[int, int], ends: Callable[..., Ends], **more: Any) -> bytes:
-    """Return a question about frames in a hall of 10 m, measured to 1 mm and 1 mrad."""
-    draw = np.random.default_rng(SEED)
+def body_of(
+    size: tuple[int, int],
+    ends: Callable[..., Ends],
+    *,
+    hall: int = SEED,
+    measured: int = 0,
+    **more: Any,
+) -> bytes:
+    """Return a question about frames in a hall of 10 m, measured to 1 mm and 1 mrad.
+
+    In one ``hall`` the same relations are ``measured`` anew, for the same question.
+    """
+    draw = np.random.default_rng(hall)
     frames, relations = size
     inner, outer = ends(draw, frames, relations)
-    rotations = Rotation.random(frames, random_state=SEED)
+    rotations = Rotation.random(frames, random_state=hall)
     places = draw.uniform(0.0, 10_000.0, (frames, 3))
     between = rotations[inner].inv()
-    errors = draw.normal(0.0, 1.0, (relations, 3))
+    errors = np.random.default_rng([hall, measured]).normal(0.0, 1.0, (relations, 3))
     positions = between.apply(places[outer] - places[inner]) + errors
     turned = between * rotations[outer] * Rotation.from_rotvec(1e-3 * errors[:, ::-1])
     quaternions = turned.as_quat(scalar_first=True)

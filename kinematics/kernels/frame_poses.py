@@ -8,44 +8,21 @@ import math
 import numpy as np
 
 from kinematics.kernels.compiler import compiled
-from kinematics.kernels.frame_graph import IntArray, close_loops, shortest_ways
+from kinematics.kernels.frame_graph import IntArray
 from kinematics.number_checks import FloatArray
 
 
 @compiled
-def loops_closed(
-    inner: IntArray, outer: IntArray, frames: int, of_in: FloatArray
-) -> tuple[IntArray, IntArray, IntArray, IntArray, IntArray, FloatArray, FloatArray, FloatArray]:
-    """Return what close_loops and poses_along do, and what each loop is off by, at one call.
+def loops_walked(
+    of_in: FloatArray, begins: IntArray, steps: IntArray
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Return what poses_along and closures do, at one call.
 
     A call from outside takes as long as a dozen loops.
-
-    Returns
-    -------
-    begins, steps, group, first_arc, next_arc : of close_loops.
-    poses : (loops, 4, 4), of poses_along.
-    position, angle : (loops,), m and rad, of closures.
     """
-    begins, steps, group, first_arc, next_arc = close_loops(inner, outer, frames)
     poses = poses_along(of_in, begins, steps)
     position, angle = closures(poses)
-    return begins, steps, group, first_arc, next_arc, poses, position, angle
-
-
-@compiled
-def ways_found(
-    inner: IntArray,
-    outer: IntArray,
-    first_arc: IntArray,
-    next_arc: IntArray,
-    starts: IntArray,
-    ends: IntArray,
-    of_in: FloatArray,
-    most: int,
-) -> tuple[IntArray, IntArray, FloatArray]:
-    """Return what shortest_ways and poses_along do, at one call: begins, steps and poses."""
-    begins, steps = shortest_ways(inner, outer, first_arc, next_arc, starts, ends, most)
-    return begins, steps, poses_along(of_in, begins, steps)
+    return poses, position, angle
 
 
 @compiled

@@ -37,46 +37,48 @@ def rotations_of_quaternions(quaternions: FloatArray, rotations: FloatArray) -> 
         largest = max(max(abs(q[0]), abs(q[1])), max(abs(q[2]), abs(q[3])))
         # Squares of 1e-200 or 1e200 would leave the range of doubles.
         w, x, y, z = q[0] / largest, q[1] / largest, q[2] / largest, q[3] / largest
-        twice = 2.0 / (w * w + x * x + y * y + z * z)
-        r = rotations[b]
-        r[0, 0] = 1.0 - twice * (y * y + z * z)
-        r[0, 1] = twice * (x * y - w * z)
-        r[0, 2] = twice * (x * z + w * y)
-        r[1, 0] = twice * (x * y + w * z)
-        r[1, 1] = 1.0 - twice * (x * x + z * z)
-        r[1, 2] = twice * (y * z - w * x)
-        r[2, 0] = twice * (x * z - w * y)
-        r[2, 1] = twice * (y * z + w * x)
-        r[2, 2] = 1.0 - twice * (x * x + y * y)
+        _write(w, x, y, z, rotations[b])
 
 
 @compiled
-def quaternions_of_vectors(vectors: FloatArray, short: float, quaternions: FloatArray) -> None:
-    """Write the unit quaternion of each rotation vector, scalar first and of any sign.
+def rotations_of_vectors(vectors: FloatArray, short: float, rotations: FloatArray) -> None:
+    """Write the rotation of each rotation vector.
 
     Parameters
     ----------
     vectors : (count, 3), rad.
     short : length below which the sine of half an angle is the half angle.
-    quaternions : (count, 4).
+    rotations : (count, 3, 3).
 
     Source
     ------
-    Shuster, J. Astronautical Sciences 41(4), 1993, rotation vector.
+    Shuster, J. Astronautical Sciences 41(4), 1993, rotation vector; by way of quaternions.
 
     Examples
     --------
     >>> import numpy as np
-    >>> quaternions = np.empty((1, 4))
-    >>> quaternions_of_vectors(np.array([[0.0, 0.0, np.pi]]), 1e-10, quaternions)
-    >>> quaternions.round(12)
-    array([[0., 0., 0., 1.]])
+    >>> rotations = np.empty((1, 3, 3))
+    >>> rotations_of_vectors(np.array([[0.0, 0.0, np.pi]]), 1e-10, rotations)
+    >>> rotations[0].round(12).diagonal()
+    array([-1., -1.,  1.])
     """
     for b in range(vectors.shape[0]):
         x, y, z = vectors[b, 0], vectors[b, 1], vectors[b, 2]
         angle = math.sqrt(x * x + y * y + z * z)
         ratio = 0.5 if angle < short else math.sin(0.5 * angle) / angle
-        quaternions[b, 0] = math.cos(0.5 * angle)
-        quaternions[b, 1] = ratio * x
-        quaternions[b, 2] = ratio * y
-        quaternions[b, 3] = ratio * z
+        _write(math.cos(0.5 * angle), ratio * x, ratio * y, ratio * z, rotations[b])
+
+
+@compiled
+def _write(w: float, x: float, y: float, z: float, r: FloatArray) -> None:
+    """Write the rotation (3, 3) of one quaternion whose squares are within the range of doubles."""
+    twice = 2.0 / (w * w + x * x + y * y + z * z)
+    r[0, 0] = 1.0 - twice * (y * y + z * z)
+    r[0, 1] = twice * (x * y - w * z)
+    r[0, 2] = twice * (x * z + w * y)
+    r[1, 0] = twice * (x * y + w * z)
+    r[1, 1] = 1.0 - twice * (x * x + z * z)
+    r[1, 2] = twice * (y * z - w * x)
+    r[2, 0] = twice * (x * z - w * y)
+    r[2, 1] = twice * (y * z + w * x)
+    r[2, 2] = 1.0 - twice * (x * x + y * y)

@@ -20,7 +20,7 @@ from kinematics.orientation_batches import (
 from kinematics.orientation_forms import shape_of
 from kinematics.table import FloatArray
 from service.convert import Units, finding_out, orientation_in, values_out
-from service.details import Detail, pointer, shown
+from service.details import Detail
 from service.errors import TooLarge
 from service.problems import KINDS
 
@@ -152,14 +152,11 @@ class Conversions:
                 "findings": [finding_out(self.units, finding) for finding in findings],
             }
         detail = self._refusal(row, checked, place)
-        problem: dict[str, object] = {
-            "code": detail.code,
-            "pointer": pointer(detail.where),
-            "say": detail.say,
-            "value": shown(detail.value),
-            "way_out": detail.way_out,
+        return {
+            "code": KINDS[detail.code].number,
+            "findings": [],
+            "problem": detail.problem_of_item(),
         }
-        return {"code": KINDS[detail.code].number, "findings": [], "problem": problem}
 
     def _refusal(self, row: int, checked: CheckedRotations, place: int) -> Detail:
         if row in self.unreadable:

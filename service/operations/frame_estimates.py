@@ -54,7 +54,7 @@ def _poses(
     units: Units,
 ) -> list[dict[str, object]]:
     outer, inner = (
-        network.graph.numbers_of([whole_name(network.arms, name, ()) for name in names])
+        network.graph.connections.numbers_of([whole_name(network.arms, name, ()) for name in names])
         for names in (of, within)
     )
     poses = found.pose_between(outer, inner)

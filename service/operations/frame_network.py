@@ -88,19 +88,22 @@ class Network:
     def _arms_between(self, one: str, other: str) -> list[str]:
         """Return the arms on a way that their joint values would make; none if they would not."""
         graph, group = self.graph, self.graph.group
-        known = set(graph.known)
+        known = set(graph.connections.known)
         arms = [arm for arm in self.still if {f"{arm}.{BASE}", f"{arm}.{FLANGE}"} <= known]
         # Groups of connected frames as frames, and the arms between them as relations.
         ends = [
-            [str(number) for number in group[graph.numbers_of([f"{arm}.{end}" for arm in arms])]]
+            [
+                str(number)
+                for number in group[graph.connections.numbers_of([f"{arm}.{end}" for arm in arms])]
+            ]
             for end in (FLANGE, BASE)
         ]
         between = [place for place in range(len(arms)) if ends[0][place] != ends[1][place]]
         flanges, bases = ([side[place] for place in between] for side in ends)
-        first, last = (str(group[number]) for number in graph.numbers_of([one, other]))
+        first, last = (str(group[number]) for number in graph.connections.numbers_of([one, other]))
         groups = FrameGraph(flanges, bases, np.tile(np.eye(4), (len(between), 1, 1)))
         try:
-            steps = groups.ways([first], [last]).steps_of(0)
+            steps = groups.ways([first], [last]).walks.steps_of(0)
         except KinematicsError:
             return []
         return [arms[between[max(step, ~step)]] for step in steps]
@@ -161,7 +164,7 @@ def network_of(
     )
 
 
-def _graph(of: list[str], within: list[str], of_in: FloatArray) -> FrameGraph:
+def _graph(of: Sequence[str], within: Sequence[str], of_in: FloatArray) -> FrameGraph:
     try:
         return FrameGraph(of, within, of_in)
     except KinematicsError as error:

@@ -10,11 +10,10 @@ from kinematics.arm_relations import ArmAtJoints
 from kinematics.errors import KinematicsError
 from kinematics.findings import FINE, Finding
 from kinematics.frames import FrameGraph, Ways
-from kinematics.orientation_forms import TRIPLES, distance_from_lock
 from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE, LOOP_CLOSED
 from kinematics.travel_limits import travel_findings
-from service.convert import UNITS, Units, finding_out, orientation_out
+from service.convert import UNITS, Units, finding_out, pose_orientations_out
 from service.errors import MissingField, ServiceError, UnusableValue
 from service.operations.arms import Arms
 from service.operations.cells import Cells
@@ -25,12 +24,12 @@ from service.operations.questions import MeantArm, meant_arm
 from service.operations.stored import StoredDocument
 from service.wire.arms import ReadArm
 from service.wire.cells import ReadCell
-from service.wire.frames import ArmAt, FramesBody, FramesRequest
+from service.wire.frames import FramesBody
+from service.wire.frames_request import ArmAt, FramesRequest
 from service.wire.plain_relations import Relations
 from service.wire.poses import checked_form, lock_findings
 
 NESTED_FORM = "quaternion-wxyz"
-MOST_STEPS_SAID = 12
 
 
 def frames_answer(
@@ -80,7 +79,7 @@ def frames_answer(
         "units": units.name,
         **({"arms": [arm.identity() for arm in meant]} if meant else {}),
         **({"cell": cell_identity(cell)} if cell else {}),
-        "answers": way_answers(network.graph, ways, of, within, form, units),
+        "answers": way_answers(ways, of, within, form, units),
         "loops": loops,
         "findings": [*_repaired(own, units), *findings, *open_loops],
     }
@@ -90,7 +89,6 @@ def frames_answer(
 
 
 def way_answers(
-    graph: FrameGraph,
     ways: Ways,
     of: Sequence[str],
     within: Sequence[str],
@@ -98,12 +96,10 @@ def way_answers(
     units: Units,
 ) -> list[dict[str, object]]:
     """Return for each pair its pose, the frames on the way, and the product in words."""
-    rotations = ways.poses[:, :3, :3]
     positions = units.length_out(ways.poses[:, :3, 3]).tolist()
-    orientations = orientation_out(units, form, rotations).tolist()
-    locked = [False] * len(ways)
-    if form in TRIPLES:
-        locked = (distance_from_lock(form, rotations) <= LOCK_NOTICE).tolist()
+    values, from_lock = pose_orientations_out(units, form, ways.poses)
+    orientations, locked = values.tolist(), (from_lock <= LOCK_NOTICE).tolist()
+    products = ways.walks.products
     return [
         {
             "of": of[way],
@@ -113,14 +109,14 @@ def way_answers(
                 "orientation": {"form": form, "values": orientations[way]},
             },
             "path": path,
-            "say": _product(graph, ways.steps_of(way), path),
+            "say": products[way],
             "findings": [
                 finding_out(units, finding) for finding in lock_findings(ways.poses[way], form)
             ]
             if locked[way]
             else [],
         }
-        for way, path in enumerate(graph.frames_of(ways))
+        for way, path in enumerate(ways.walks.frames)
     ]
 
 
@@ -128,46 +124,32 @@ def loops_answer(
     graph: FrameGraph, units: Units
 ) -> tuple[list[dict[str, object]], list[dict[str, object]]]:
     """Return every loop with what it is off by, and a finding if some do not close."""
-    loops = graph.loops
-    if not len(loops):
+    frames = graph.loops.walks.frames
+    if not frames:
         return [], []
     position, angle = graph.closures
     off = list(map(max, position.tolist(), angle.tolist()))
     positions, angles = units.length_out(position).tolist(), units.angle_out(angle).tolist()
     answers: list[dict[str, object]] = [
         {
-            "frames": frames,
-            "closure": {"position": positions[loop], "angle": angles[loop], "at": frames[0]},
+            "frames": around,
+            "closure": {"position": positions[loop], "angle": angles[loop], "at": around[0]},
             "closes": off[loop] <= LOOP_CLOSED,
         }
-        for loop, frames in enumerate(graph.frames_of(loops))
+        for loop, around in enumerate(frames)
     ]
-    is_open = sum(value > LOOP_CLOSED for value in off)
+    is_open = sum([value > LOOP_CLOSED for value in off])
     if not is_open:
         return answers, []
     worst = off.index(max(off))
     unit, measure = ("m", position) if position[worst] >= angle[worst] else ("rad", angle)
     say = (
         f"{is_open} of {len(off)} loops do not close within {{threshold}}: the "
-        f"relations contradict each other; the worst, at {loops.starts[worst]}, is "
+        f"relations contradict each other; the worst, at {frames[worst][0]}, is "
         "off by {measure}"
     )
     finding = Finding(FINE, "loops-open", say, float(measure[worst]), LOOP_CLOSED, unit)
     return answers, [finding_out(units, finding)]
-
-
-def _product(graph: FrameGraph, steps: Sequence[int], path: Sequence[str]) -> str:
-    """Return the way as the product of poses that it is."""
-    whole = f"{path[-1]} in {path[0]}"
-    if not steps:
-        return f"{whole} is the identity"
-    if len(steps) > MOST_STEPS_SAID:
-        return f"{whole} by {len(steps)} relations"
-    factors = [
-        f"({there} in {here})" if step >= 0 else f"({here} in {there})^-1"
-        for step, here, there in zip(steps, path[:-1], path[1:], strict=True)
-    ]
-    return f"{whole} = {' '.join(factors)}"
 
 
 def _meant(arms: Arms[ReadArm], entry: ArmAt, number: int) -> MeantArm:

@@ -188,7 +188,7 @@ def read_vectors(
     if beyond.size:
         index, position = beyond[0].tolist()
         raise OutOfRange(
-            f"one of {name} is beyond {LARGEST_MAGNITUDE:.0e} in SI units",
+            f"one of {name} is beyond 1e9 in SI units",
             where=(name, index, position),
             value=float(values[index, position]),
             way_out="check the units",

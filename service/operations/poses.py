@@ -4,7 +4,7 @@ Left out: how the question arrives and how the answer is printed.
 """
 
 from collections.abc import Iterable, Mapping, Sequence
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 
@@ -17,7 +17,7 @@ from kinematics.tolerances import LOCK_NOTICE
 from kinematics.transforms import in_frame
 from kinematics.travel_limits import margin_and_outside, travel_findings
 from service.convert import Units, finding_out, orientation_values_out, pose_orientations_out
-from service.details import Detail, pointer, shown
+from service.details import Detail
 from service.operations.joint_rows import JointRows
 from service.operations.questions import Question
 from service.operations.singularities import Judged, judged, judged_reading
@@ -153,19 +153,12 @@ def with_refused(
 
 
 def _refused(detail: Detail, empty: Iterable[str]) -> dict[str, object]:
-    problem: dict[str, Any] = {
-        "code": detail.code,
-        "pointer": pointer(detail.where),
-        "say": detail.say,
-        "value": shown(detail.value),
-        "way_out": detail.way_out,
-    }
     return {
         "ok": False,
         "code": KINDS[detail.code].number,
         **dict.fromkeys(empty),
         "findings": [],
-        "problem": problem,
+        "problem": detail.problem_of_item(),
     }
 
 

@@ -30,10 +30,17 @@ TOOL_AXES = "tool"
 
 @dataclass(frozen=True)
 class MeantArm:
-    """The arm a request means; ``revision`` is None for one that came whole in the request."""
+    """The arm a request means.
+
+    Attributes
+    ----------
+    revision : None for an arm that came whole in the request.
+    is_kept : whether the next request that means it will have the same ``read``.
+    """
 
     read: ReadArm
     revision: int | None
+    is_kept: bool = True
 
     @property
     def repaired(self) -> tuple[Finding, ...]:
@@ -117,36 +124,40 @@ class Question:
     @cached_property
     def prepared(self) -> tuple[TaskSpace, Anatomy] | None:
         """What singularity is judged by; None for an arm without joints."""
-        digests = self.meant.read.digests
-        key = (digests.table_digest, digests.setup_digest)
-        return _prepared(_Key(key, self.task, self.arm, self.tool.tool_in_flange))
+        return _prepared(_Key(self))
 
 
-@dataclass(frozen=True, eq=False)
 class _Key:
-    """Arm and tool, told apart by digests and the tool's numbers."""
+    """Arm and tool, told apart by digests and the tool's numbers.
 
-    digests: tuple[str, str]
-    task: Hashable
-    arm: Arm
-    tool_in_flange: FloatArray
+    It holds the arm until that has been asked: a key that is kept must not keep an arm, which may
+    have thousands of tools.
+    """
 
-    def _identity(self) -> tuple[object, ...]:
-        return (*self.digests, self.task, self.tool_in_flange.tobytes())
+    def __init__(self, question: Question) -> None:
+        digests, tool = question.meant.read.digests, question.tool.tool_in_flange
+        self.asked: Question | None = question
+        self._identity = (
+            *(digests.table_digest, digests.setup_digest, question.task),
+            tool.tobytes(),
+        )
 
     def __hash__(self) -> int:
-        return hash(self._identity())
+        return hash(self._identity)
 
     def __eq__(self, other: object) -> bool:
-        return isinstance(other, _Key) and self._identity() == other._identity()
+        return isinstance(other, _Key) and self._identity == other._identity
 
 
 @lru_cache(maxsize=PREPARED_KEPT)
 def _prepared(key: _Key) -> tuple[TaskSpace, Anatomy] | None:
-    task = list(key.task) if isinstance(key.task, tuple) else key.task
+    asked, key.asked = key.asked, None
+    assert asked is not None
+    arm, tool_in_flange = asked.arm, asked.tool.tool_in_flange
+    task = list(asked.task) if isinstance(asked.task, tuple) else asked.task
     assert task is None or isinstance(task, str | list)
-    space = task_space(key.arm, key.tool_in_flange, task)
-    return None if space is None else (space, anatomy_of(key.arm, space, key.tool_in_flange))
+    space = task_space(arm, tool_in_flange, task)
+    return None if space is None else (space, anatomy_of(arm, space, tool_in_flange))
 
 
 def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm) -> MeantArm:
@@ -159,17 +170,17 @@ def meant_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision | models.Arm)
     """
     if isinstance(asked, models.Arm):
         try:
+            # What the cell says of an arm may be another thing at the next question.
+            is_kept = asked.is_kept and asked.cell is None
             read = (
-                _read_whole(_Whole(asked))
-                if asked.cell is None
-                else read_arm_model(asked, arms.newest_cell)
+                _read_whole(_Whole(asked)) if is_kept else read_arm_model(asked, arms.newest_cell)
             )
         except KinematicsError as error:
             raise error.below("arm") from None
         except ServiceError as error:
             error.where = ("arm", *error.where)
             raise
-        return MeantArm(read, None)
+        return MeantArm(read, None, is_kept)
     stored = stored_arm(arms, asked)
     return MeantArm(stored.read, stored.record.revision)
 
@@ -272,9 +283,10 @@ def question_of(
     """Return the question a body asks; the same object for what is asked in the same words."""
     meant = meant_arm(arms, asked.arm)
     task = tuple(asked.task) if isinstance(asked.task, list) else asked.task
-    if isinstance(asked.tool, models.Pose):
+    if isinstance(asked.tool, models.Pose) or not meant.is_kept:
         return _question(meant, asked.units, asked.tool, asked.frame, form, task, moving)
-    return _question_in_words(meant, asked.units, asked.tool, asked.frame, form, task, moving)
+    kept = _question_in_words if meant.revision is not None else _question_about_whole
+    return kept(meant, asked.units, asked.tool, asked.frame, form, task, moving)
 
 
 def _question(
@@ -303,3 +315,5 @@ def _question(
 
 
 _question_in_words = lru_cache(maxsize=PREPARED_KEPT)(_question)
+# These hold arms that nothing else may hold any more.
+_question_about_whole = lru_cache(maxsize=models.WHOLE_ARMS_KEPT)(_question)

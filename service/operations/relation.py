@@ -4,8 +4,7 @@ Left out: query strings and flat answers (wire).
 """
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
-from functools import lru_cache
+from dataclasses import dataclass
 from typing import Protocol
 
 import numpy as np
@@ -22,15 +21,13 @@ from service.operations.arms import Arms
 from service.operations.cells import Cells
 from service.operations.frame_network import NO_RELATIONS, Missing, network_of
 from service.operations.frames import cell_identity, way_answers
-from service.operations.questions import PREPARED_KEPT, Question
-from service.operations.single import joint_row, question_asked
+from service.operations.questions import Question
+from service.operations.single import joint_row, number_said, question_asked
 from service.wire.arms import ReadArm
 from service.wire.relation_query import RelationQuestion
-from service.wire.single import JointsAsked, SingleAnswer, SingleQuestion
+from service.wire.single import JointsAsked, SingleAnswer
 
 TOOL = "tool"
-MOST_DIGITS = 3
-"""Digits of the numbers that controllers know tools and frames by."""
 
 
 def single_relation(
@@ -42,7 +39,7 @@ def single_relation(
     ------
     ServiceError, KinematicsError : with ``where`` a parameter of the query.
     """
-    question = question_asked(arms, _without_tool(asked.single), moving=False)
+    question = question_asked(arms, asked.single, moving=False)
     arm, units = question.arm, question.units
     joint_values = _joint_values(question, asked)
     at = ArmAtJoints(arm, joint_values)
@@ -65,7 +62,7 @@ def single_relation(
         if isinstance(error, ServiceError):
             error.location = "query"
         raise
-    (answer,) = way_answers(network.graph, ways, [of], [within], question.form, units)
+    (answer,) = way_answers(ways, [of], [within], question.form, units)
     beyond: Sequence[Finding] = () if joint_values is None else travel_findings(arm, joint_values)
     findings = [finding_out(units, finding) for finding in beyond]
     answer["findings"] = [*findings, *answer["findings"]]  # type: ignore[misc]
@@ -129,11 +126,11 @@ class _Numbered:
         """
         if asked == TOOL:
             return arm.tool_name(None, (side,))
-        if not (asked.isascii() and asked.isdigit()) or asked in {**self.tools, **self.frames}:
+        number = None if asked in {**self.tools, **self.frames} else number_said(asked)
+        if number is None:
             return asked
-        if not asked.strip("0"):
+        if number == 0:
             return FLANGE if side == "of" else BASE
-        number = int(asked) if len(asked.lstrip("0")) <= MOST_DIGITS else -1
         for things in (self.tools, self.frames) if side == "of" else (self.frames, self.tools):
             for name, thing in things.items():
                 if thing.number == number:
@@ -150,9 +147,3 @@ def _joint_values(question: Question, asked: RelationQuestion) -> FloatArray | N
     if asked.joints is None and question.arm.joint_count:
         return None
     return np.array(joint_row(question, asked.joints or JointsAsked([], [])))
-
-
-@lru_cache(maxsize=PREPARED_KEPT)
-def _without_tool(asked: SingleQuestion) -> SingleQuestion:
-    """Return the same question about the arm itself; the same object for the same question."""
-    return replace(asked, tool=FLANGE, tool_pose=None, frame=None, task=None)

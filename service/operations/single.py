@@ -28,7 +28,7 @@ from service.operations.questions import (
 from service.wire.arms import ReadArm
 from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleAnswer, SingleQuestion
 
-LONGEST_NUMBER = 3
+_LONGEST_NUMBER = 3
 """Digits of the numbers that controllers know tools and frames by."""
 
 
@@ -67,10 +67,10 @@ def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) 
     except UnknownRevision as error:
         error.where, error.location = ("revision",), "query"
         raise
-    return _question_about(stored, asked, moving)
+    about = _question_kept if asked.is_kept else _question_about
+    return about(stored, asked, moving)
 
 
-@lru_cache(maxsize=PREPARED_KEPT)
 def _question_about(stored: StoredArm[ReadArm], asked: SingleQuestion, moving: bool) -> Question:
     meant = MeantArm(stored.read, stored.record.revision)
     _check_expected(asked, meant.read.digests.digest)
@@ -86,6 +86,9 @@ def _question_about(stored: StoredArm[ReadArm], asked: SingleQuestion, moving: b
         task=tuple(asked.task) if isinstance(asked.task, list) else asked.task,
         repaired=tool.repaired,
     )
+
+
+_question_kept = lru_cache(maxsize=PREPARED_KEPT)(_question_about)
 
 
 def joint_row(question: Question, joints: JointsAsked) -> list[float]:
@@ -153,18 +156,29 @@ def _check_expected(asked: SingleQuestion, digest: str) -> None:
         )
 
 
+def number_said(text: str) -> int | None:
+    """Return the number of a tool or a frame that digits say, None for any other text.
+
+    Beyond three digits there are no such numbers: left as text it is an unknown name.
+
+    Examples
+    --------
+    >>> number_said("007"), number_said("0"), number_said("1000"), number_said("pen")
+    (7, 0, None, None)
+    """
+    digits = text.lstrip("0")
+    if not (text.isascii() and text.isdigit()) or len(digits) > _LONGEST_NUMBER:
+        return None
+    return int(digits or "0")
+
+
 def _name_or_number(asked: str | None, known: Container[str], own: str) -> str | int | None:
     """Return a number where digits are asked that are no name: names may be digits too.
 
     0 is the arm's ``own``, flange or base, as answers number them.
     """
-    if asked is not None and asked.isascii() and asked.isdigit() and asked not in known:
-        # Beyond three digits there are no numbers: left as text it is an unknown name.
-        digits = asked.lstrip("0")
-        if not digits:
-            return own
-        return int(digits) if len(digits) <= LONGEST_NUMBER else asked
-    return asked
+    number = None if asked is None or asked in known else number_said(asked)
+    return asked if number is None else number or own
 
 
 def _parameter(joints: JointsAsked, where: Sequence[str | int]) -> str:

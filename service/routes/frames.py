@@ -16,13 +16,12 @@ from service.wire.answers import json_answer
 from service.wire.body import read_bytes
 from service.wire.formats import JSON
 from service.wire.frame_answers import FramesAnswer
-from service.wire.frames import FramesBody, FramesRequest
+from service.wire.frames import FramesBody
+from service.wire.frames_request import FramesRequest
 from service.wire.query import known_parameters
+from service.wire.worded_alike import SHORT_BYTES
 
 router = APIRouter(route_class=RelationRoute)
-
-_SHORT_BYTES = 16 * 1024
-"""Bodies up to this are parsed and answered in a few milliseconds; longer ones wait their turn."""
 
 
 @router.post(
@@ -52,10 +51,14 @@ async def frames(request: Request) -> Response:
 
     def answer() -> Response:
         body = FramesBody(raw)
-        request.state.json_body = body.document
-        return json_answer(frames_answer(arms, cells, body, threads.refuse_if_stopping))
+        try:
+            return json_answer(frames_answer(arms, cells, body, threads.refuse_if_stopping))
+        except Exception:
+            request.state.json_body = body.document
+            raise
 
-    if len(raw) > _SHORT_BYTES:
+    # Longer ones wait their turn.
+    if len(raw) > SHORT_BYTES:
         return await threads.run(answer)
     # What is short and looks at nothing far away is answered sooner than a thread would begin.
     names_stored = b'"arms"' in raw or b'"cell"' in raw

@@ -3,34 +3,19 @@
 Left out: what the query means (wire/relation_query.py) and what the answer says (operations).
 """
 
-from collections.abc import Mapping
-from time import time_ns
-
 from fastapi import APIRouter
-from pydantic import ValidationError
 from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
-from kinematics.errors import KinematicsError
-from service.errors import ServiceError
 from service.operations.relation import single_relation
-from service.refusals import problem_at
 from service.routes.direct import RelationRoute
+from service.routes.in_format import MEDIA_TYPES, Asked, answered_in_format, refused_pose
 from service.web.document import documented
 from service.wire import one_answer
-from service.wire.controller import (
-    FORMATS,
-    Format,
-    errors_inline,
-    wanted_format,
-    wanted_tag,
-)
 from service.wire.controller_answers import FlatPose
-from service.wire.formats import JSON
 from service.wire.frame_answers import RelationReply
-from service.wire.one_answer import Content, Stamp
-from service.wire.query import known_parameters
+from service.wire.one_answer import Content
 from service.wire.relation_query import (
     PARAMETERS,
     RELATION_PARAMETERS,
@@ -52,7 +37,7 @@ router = APIRouter(route_class=RelationRoute)
         "`csv` and `txt` answer with the keys of a flat pose: `tool_no` is the number of `of`, "
         "`frame_no` that of `in`, and nothing is said of singularity.",
         answer=RelationReply,
-        answer_media=(JSON, "text/plain", "text/csv"),
+        answer_media=MEDIA_TYPES,
         flat_refusal=FlatPose,
         parameters=RELATION_PARAMETERS,
         statuses=(404, 409, 503),
@@ -62,53 +47,17 @@ router = APIRouter(route_class=RelationRoute)
 )
 async def relation(request: Request) -> Response:
     """Answer one frame in another."""
-    # Read by hand before anything is refused, so that a refusal comes in the format asked for.
-    query = request.query_params
-    wanted: Format = next((known for known in FORMATS if known == query.get("format")), "json")
-    inline = query.get("errors") == "inline"
-    stamp: Stamp = {
-        "seq": next(request.app.state.sequence),
-        "tag": _readable_tag(request),
-        "t_ms": time_ns() // 1_000_000,
-    }
-    try:
-        return _response(await _content(request, wanted, stamp))
-    except (ServiceError, KinematicsError, ValidationError) as error:
-        if wanted == "json" and not inline:
-            raise
-        problem = problem_at(request, error)
-        if wanted == "json":
-            content = one_answer.refused_inline(problem, request.state.request_id, stamp)
-        else:
-            content = one_answer.refused_pose(problem, wanted, stamp)
-        return _response(content, 200 if inline else problem.status, problem.headers)
+    return await answered_in_format(request, PARAMETERS, _relation, refused_pose)
 
 
-async def _content(request: Request, wanted: Format, stamp: Stamp) -> Content:
-    parameters = known_parameters(request, PARAMETERS)
-    wanted_tag(parameters)
-    errors_inline(parameters)
-    wanted_format(parameters)
-    asked = relation_question(request.path_params["arm"], parameters, wanted)
+async def _relation(asked: Asked) -> Content:
+    request, wanted = asked.request, asked.wanted
+    question = relation_question(request.path_params["arm"], asked.said, wanted)
     arms, cells = request.app.state.arms, request.app.state.cells
     if arms.answers_at_once and cells.answers_at_once:
-        flat, nested = single_relation(arms, cells, asked)
+        flat, nested = single_relation(arms, cells, question)
     else:
-        flat, nested = await run_in_threadpool(single_relation, arms, cells, asked)
+        flat, nested = await run_in_threadpool(single_relation, arms, cells, question)
     if wanted == "json":
-        return nested_relation(nested, stamp, asked.single.scale)
-    return one_answer.pose(flat, asked.single, wanted, stamp)
-
-
-def _response(
-    content: Content, status: int = 200, headers: Mapping[str, str] | None = None
-) -> Response:
-    kept = {"Cache-Control": "no-store", **(headers or {})}
-    return Response(content.body, status, headers=kept, media_type=content.media_type)
-
-
-def _readable_tag(request: Request) -> int:
-    try:
-        return wanted_tag(request.query_params)
-    except ServiceError:
-        return 0
+        return nested_relation(nested, asked.stamp, question.single.scale)
+    return one_answer.pose(flat, question.single, wanted, asked.stamp)

@@ -3,9 +3,6 @@
 Left out: what the query means (wire/rotation_query.py) and what the answers say (operations).
 """
 
-from collections.abc import Mapping
-from time import time_ns
-
 from fastapi import APIRouter
 from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
@@ -13,18 +10,18 @@ from starlette.responses import Response
 
 from kinematics.errors import KinematicsError
 from service.bulk.conversions import answer_conversions
-from service.errors import ServiceError, TooLarge
+from service.errors import TooLarge
 from service.operations.rotations import converted, rotations_answer
-from service.refusals import problem_at
+from service.problems import Problem
 from service.routes.direct import RelationRoute
+from service.routes.in_format import MEDIA_TYPES, Asked, answered_in_format
 from service.web.document import documented
 from service.web.schemas import BYTES, TEXT
 from service.wire import csv_rows, npy
 from service.wire.answers import json_answer
 from service.wire.body import parse_json, read_bytes
-from service.wire.controller import FORMATS, Format, errors_inline, wanted_format, wanted_tag
 from service.wire.formats import JSON
-from service.wire.one_answer import Content, Stamp, refused_inline
+from service.wire.one_answer import Content
 from service.wire.query import known_parameters
 from service.wire.rotation_flat import conversion_content, refused_conversion
 from service.wire.rotation_query import (
@@ -123,7 +120,7 @@ async def rotation_conversions(request: Request) -> Response:
         "`csv` the same with a head line, `txt` one line with each field at its place: degrees "
         "with four decimals, radians and pure numbers with nine.",
         answer=ConversionReply,
-        answer_media=(JSON, "text/plain", "text/csv"),
+        answer_media=MEDIA_TYPES,
         flat_refusal=FlatConversion,
         parameters=CONVERSION_PARAMETERS,
         controller=True,
@@ -132,52 +129,20 @@ async def rotation_conversions(request: Request) -> Response:
 )
 async def rotation(request: Request) -> Response:
     """Answer one orientation in another form."""
-    # Read by hand before anything is refused, so that a refusal comes in the format asked for.
-    query = request.query_params
-    wanted = next((known for known in FORMATS if known == query.get("format")), FORMATS[0])
-    inline = query.get("errors") == "inline"
-    stamp: Stamp = {
-        "seq": next(request.app.state.sequence),
-        "tag": _readable_tag(request),
-        "t_ms": time_ns() // 1_000_000,
-    }
-    try:
-        return _response(_content(request, wanted, stamp))
-    except (ServiceError, KinematicsError) as error:
-        if wanted == "json" and not inline:
-            raise
-        problem = problem_at(request, error)
-        if wanted == "json":
-            content = refused_inline(problem, request.state.request_id, stamp)
-        else:
-            content = refused_conversion(problem.number, query.get("to", FLAT_FORM), wanted, stamp)
-        return _response(content, 200 if inline else problem.status, problem.headers)
+    return await answered_in_format(request, PARAMETERS, _rotation, _refused_rotation)
 
 
-def _content(request: Request, wanted: Format, stamp: Stamp) -> Content:
-    parameters = known_parameters(request, PARAMETERS)
-    wanted_tag(parameters)
-    errors_inline(parameters)
-    wanted_format(parameters)
-    asked = conversion_question(parameters, flat=wanted != "json")
+async def _rotation(asked: Asked) -> Content:
+    question = conversion_question(asked.said, flat=asked.wanted != "json")
     try:
-        orientation, head = converted(asked.form, asked.values, asked.to, asked.units)
+        orientation, head = converted(question.form, question.values, question.to, question.units)
     except KinematicsError as error:
         error.where = (value_parameter(error.where),)
-        error.value = parameters[error.where[0]]
+        error.value = asked.said[error.where[0]]
         raise
-    return conversion_content(orientation, head, asked, wanted, stamp)
+    return conversion_content(orientation, head, question, asked.wanted, asked.stamp)
 
 
-def _response(
-    content: Content, status: int = 200, headers: Mapping[str, str] | None = None
-) -> Response:
-    kept = {"Cache-Control": "no-store", **(headers or {})}
-    return Response(content.body, status, headers=kept, media_type=content.media_type)
-
-
-def _readable_tag(request: Request) -> int:
-    try:
-        return wanted_tag(request.query_params)
-    except ServiceError:
-        return 0
+async def _refused_rotation(asked: Asked, problem: Problem) -> Content:
+    to = asked.said.get("to", FLAT_FORM)
+    return refused_conversion(problem.number, to, asked.wanted, asked.stamp)

@@ -15,6 +15,10 @@ from starlette.requests import ClientDisconnect, Request
 from service.errors import DuplicateKey, RequestTimeout, TooLarge, Unparseable, WrongMediaType
 from service.settings import Settings
 
+MOST_PARSED = 4_000_000
+"""Bytes of a body that is parsed in one go, which holds up everybody else for some 50 ms. Documents
+have some kilobytes; what may be longer has ways of its own (bulk)."""
+
 # A body may take its stall limit and then as long as a slow plant link needs: whoever sends one
 # byte at a time would otherwise hold a connection for days.
 _SLOWEST_BYTES_PER_S = 16 * 1024
@@ -32,12 +36,12 @@ async def read_json(request: Request, *, empty_ok: bool = False) -> object:
     Raises
     ------
     WrongMediaType : a body that is not ``application/json``.
-    TooLarge : more bytes than ``settings.body_limit``, said or counted.
+    TooLarge : more bytes than ``MOST_PARSED`` or ``settings.body_limit``, said or counted.
     RequestTimeout : nothing arrived for ``settings.body_timeout_s``.
     Unparseable : not UTF-8, no JSON, nested too deeply, empty; says the position.
     DuplicateKey : a key twice in one object, at any level.
     """
-    raw = await read_bytes(request, "application/json")
+    raw = await read_bytes(request, "application/json", most=MOST_PARSED)
     if not raw and empty_ok:
         return None
     body = parse_json(raw)
@@ -45,8 +49,12 @@ async def read_json(request: Request, *, empty_ok: bool = False) -> object:
     return body
 
 
-async def read_bytes(request: Request, *media_types: str) -> bytes:
+async def read_bytes(request: Request, *media_types: str, most: int | None = None) -> bytes:
     """Return the raw body, checked for type and size and read within the time allowed.
+
+    Parameters
+    ----------
+    most : bytes at most, where that is less than ``settings.body_limit``.
 
     An empty body may be of any type; which one a request says is ``media_type_of``'s to tell.
     """
@@ -55,16 +63,17 @@ async def read_bytes(request: Request, *media_types: str) -> bytes:
     has_body = length != 0 if length is not None else "transfer-encoding" in request.headers
     if has_body:
         _check_media_type(request.headers.get("content-type"), media_types)
-    if length is not None and length > settings.body_limit:
-        raise _too_large(settings.body_limit, length)
+    limit = settings.body_limit if most is None else min(most, settings.body_limit)
+    if length is not None and length > limit:
+        raise _too_large(limit, length)
     begun, stall_s = monotonic(), settings.body_timeout_s
     raw, more = bytearray(), True
     while more:
         allowed = begun + stall_s + len(raw) / _SLOWEST_BYTES_PER_S - monotonic()
         chunk, more = await _chunk(request, min(stall_s, allowed), len(raw))
         raw += chunk
-        if len(raw) > settings.body_limit:
-            raise _too_large(settings.body_limit, None)
+        if len(raw) > limit:
+            raise _too_large(limit, None)
     if length is not None and len(raw) < length:
         # The sender has gone before the end; nobody is left to read an answer.
         raise ClientDisconnect

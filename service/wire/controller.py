@@ -4,7 +4,9 @@ Left out: the answers' shapes (flat.py) and what they say (operations).
 """
 
 from collections.abc import Mapping
+from dataclasses import replace
 from functools import lru_cache
+from itertools import chain
 from typing import Literal
 
 from kinematics.orientation_forms import TRIPLES
@@ -42,11 +44,14 @@ PARAMETERS = frozenset(
     }
 )
 JACOBIAN_PARAMETERS = PARAMETERS | {"row"}
-_VARYING = frozenset({"q", *_JOINT_PARAMETERS, "format", "tag", "errors", "row"})
-"""What differs from one question to the next, or is read before the question."""
+_VARYING = frozenset({"q", *_JOINT_PARAMETERS, "of", "in", "format", "tag", "errors", "row"})
+"""What differs from one question to the next, or is read beside the question."""
 
 QUESTIONS_KEPT = 1024
 """Questions in different words that are kept once read, some 500 bytes each."""
+
+_LONGEST_KEPT = 512
+"""Characters of a question that is kept; six numbers of a tool and all names take some 300."""
 
 
 def wanted_format(parameters: Mapping[str, str]) -> Format:
@@ -122,6 +127,62 @@ def errors_inline(parameters: Mapping[str, str]) -> bool:
     return text is not None
 
 
+def wanted_scale(parameters: Mapping[str, str]) -> int | None:
+    """Return what values are divided by and numbers of the answer multiplied by, if anything.
+
+    Raises
+    ------
+    ServiceError : no whole number from 1 to ``MOST_SCALE``.
+    """
+    text = parameters.get("scale")
+    if text is None:
+        return None
+    scale = whole_number(text, "scale")
+    if not 1 <= scale <= MOST_SCALE:
+        raise UnusableValue(
+            f"a scale of {scale} cannot be used",
+            where=("scale",),
+            location="query",
+            value=text,
+            way_out=f"give a whole number from 1 to {MOST_SCALE}",
+        )
+    return scale
+
+
+def scaled_number(text: str, name: str, scale: int | None) -> float:
+    """Return the number a parameter says; beside a scale it is an integer, to be divided by it.
+
+    Raises
+    ------
+    ServiceError : no number, or beside a scale no whole one.
+
+    Examples
+    --------
+    >>> scaled_number("12.5", "q1", None), scaled_number("1250", "q1", 100)
+    (12.5, 12.5)
+    """
+    return number(text, name) if scale is None else whole_number(text, name) / scale
+
+
+def wanted_units(parameters: Mapping[str, str]) -> str | None:
+    """Return the name of the units asked for, if any are.
+
+    Raises
+    ------
+    UnusableValue : there are no such units.
+    """
+    text = parameters.get("units")
+    if text is not None and text not in UNITS:
+        raise UnusableValue(
+            f"there are no units {text!r}",
+            where=("units",),
+            location="query",
+            value=text,
+            way_out=f"one of: {', '.join(UNITS)}",
+        )
+    return text
+
+
 def single_question(
     arm: str, parameters: Mapping[str, str], answer_format: Format
 ) -> SingleQuestion:
@@ -132,6 +193,8 @@ def single_question(
     ServiceError, KinematicsError : a parameter that cannot be used.
     """
     said = tuple([item for item in parameters.items() if item[0] not in _VARYING])
+    if len(arm) + sum(map(len, chain.from_iterable(said))) > _LONGEST_KEPT:
+        return replace(_question(arm, said, answer_format), is_kept=False)
     return _question_in_words(arm, said, answer_format)
 
 
@@ -158,7 +221,7 @@ def joints_asked(parameters: Mapping[str, str], scale: int | None) -> JointsAske
         if scale is None:
             values = numbers(text, "q")
         else:
-            values = [_value(part, "q", scale) for part in text.split(",")] if text else []
+            values = [scaled_number(part, "q", scale) for part in text.split(",")] if text else []
         return JointsAsked(values, ["q"] * len(values))
     for place, name in enumerate(single, start=1):
         if name != f"q{place}":
@@ -168,13 +231,10 @@ def joints_asked(parameters: Mapping[str, str], scale: int | None) -> JointsAske
                 location="query",
                 way_out=f"give q1 to {single[-1]} without a gap",
             )
-    return JointsAsked([_value(parameters[name], name, scale) for name in single], single)
+    return JointsAsked([scaled_number(parameters[name], name, scale) for name in single], single)
 
 
-@lru_cache(maxsize=QUESTIONS_KEPT)
-def _question_in_words(
-    arm: str, said: tuple[tuple[str, str], ...], answer_format: Format
-) -> SingleQuestion:
+def _question(arm: str, said: tuple[tuple[str, str], ...], answer_format: Format) -> SingleQuestion:
     parameters = dict(said)
     form = checked_form(
         parameters.get("form", _NESTED_FORM if answer_format == "json" else FLAT_FORM)
@@ -187,7 +247,7 @@ def _question_in_words(
             value=form,
             way_out="use one of the 24 angle triples, e.g. xyz-fixed",
         )
-    scale = _scale(parameters.get("scale"))
+    scale = wanted_scale(parameters)
     revision = parameters.get("revision")
     return SingleQuestion(
         arm=arm,
@@ -195,7 +255,7 @@ def _question_in_words(
         tool=parameters.get("tool"),
         tool_pose=_inline_tool(parameters, form, scale),
         frame=parameters.get("frame"),
-        units=_units(parameters.get("units")),
+        units=wanted_units(parameters),
         revision=None if revision is None else whole_number(revision, "revision"),
         expect=parameters.get("expect"),
         task=_task(parameters.get("task")),
@@ -203,24 +263,7 @@ def _question_in_words(
     )
 
 
-def _scale(text: str | None) -> int | None:
-    if text is None:
-        return None
-    scale = whole_number(text, "scale")
-    if not 1 <= scale <= MOST_SCALE:
-        raise UnusableValue(
-            f"a scale of {scale} cannot be used",
-            where=("scale",),
-            location="query",
-            value=text,
-            way_out=f"give a whole number from 1 to {MOST_SCALE}",
-        )
-    return scale
-
-
-def _value(text: str, name: str, scale: int | None) -> float:
-    """Return a joint value or a tool's; beside a scale it is an integer, and in scaled units."""
-    return number(text, name) if scale is None else whole_number(text, name) / scale
+_question_in_words = lru_cache(maxsize=QUESTIONS_KEPT)(_question)
 
 
 def _inline_tool(parameters: Mapping[str, str], form: str, scale: int | None) -> models.Pose | None:
@@ -236,25 +279,13 @@ def _inline_tool(parameters: Mapping[str, str], form: str, scale: int | None) ->
             value=parameters["tool"],
             way_out="name a tool or give its pose, not both",
         )
-    values = [_value(parameters.get(name, "0"), name, scale) for name in TOOL_PARAMETERS]
+    values = [scaled_number(parameters.get(name, "0"), name, scale) for name in TOOL_PARAMETERS]
     return models.Pose(
         position=values[:3],
         orientation=models.Orientation(
             form=form if form in TRIPLES else FLAT_FORM, values=values[3:]
         ),
     )
-
-
-def _units(text: str | None) -> str | None:
-    if text is not None and text not in UNITS:
-        raise UnusableValue(
-            f"there are no units {text!r}",
-            where=("units",),
-            location="query",
-            value=text,
-            way_out=f"one of: {', '.join(UNITS)}",
-        )
-    return text
 
 
 def _task(text: str | None) -> str | list[str] | None:

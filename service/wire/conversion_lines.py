@@ -13,13 +13,12 @@ from numpy.typing import NDArray
 from kinematics.table import FloatArray
 from service.wire.answers import json_bytes
 from service.wire.csv_rows import NAME
-from service.wire.csv_text import number_texts, quoted
-from service.wire.flat import FLAGS, NO_NUMBER
+from service.wire.csv_text import FIRST, REFUSALS_FROM, line_begins, number_texts, quoted
+from service.wire.flat import NO_NUMBER
 
 _BEGIN = b'{"ok":true,"code":0,"values":'
 _END = b',"findings":[]}'
 _LINE_END = "\r\n"
-_REFUSALS_FROM = 100
 
 
 def item_bytes(values: FloatArray, more: Mapping[int, Mapping[str, object]]) -> bytes:
@@ -60,8 +59,7 @@ def csv_head(numbers: Sequence[str], *, has_name: bool) -> bytes:
     >>> csv_head(["r1"], has_name=True)
     b'ok,code,flags,seq,tag,t_ms,r1,form,units,name\\r\\n'
     """
-    first = ("ok", "code", "flags", "seq", "tag", "t_ms")
-    keys = [*first, *numbers, "form", "units", *([NAME] if has_name else ())]
+    keys = [*FIRST, *numbers, "form", "units", *([NAME] if has_name else ())]
     return (",".join(keys) + _LINE_END).encode("ascii")
 
 
@@ -84,21 +82,10 @@ def csv_lines(
     """
     if not len(values):
         return b""
-    refused = codes >= _REFUSALS_FROM
-    flags = np.zeros(len(codes), dtype=np.int64)
-    for code, applies in applying.items():
-        flags += np.where(applies, FLAGS[code], 0)
-    same = ",".join(map(str, stamp))
-    kinds = (codes << 16) + flags
-    begins = {
-        kind: f"{int(kind >> 16 < _REFUSALS_FROM)},{kind >> 16},{kind & 0xFFFF},{same},"
-        for kind in np.unique(kinds).tolist()
-    }
-    numbers = number_texts(np.where(refused[:, None], NO_NUMBER, values))
+    begins = line_begins(codes, applying, stamp)
+    numbers = number_texts(np.where((codes >= REFUSALS_FROM)[:, None], NO_NUMBER, values))
     last = "," + ",".join(end)
-    lines = [
-        f"{begins[kind]}{told}{last}" for kind, told in zip(kinds.tolist(), numbers, strict=True)
-    ]
+    lines = [f"{begin},{told}{last}" for begin, told in zip(begins, numbers, strict=True)]
     if names is not None:
         lines = [f"{line},{quoted(name)}" for line, name in zip(lines, names, strict=True)]
     return (_LINE_END.join(lines) + _LINE_END).encode("utf-8")
@@ -108,7 +95,7 @@ def _special(numbers: bytes, more: Mapping[str, object]) -> bytes:
     rest = dict(more)
     code = rest.pop("code")
     assert isinstance(code, int)
-    is_refused = code >= _REFUSALS_FROM
+    is_refused = code >= REFUSALS_FROM
     return b'{"ok":%s,"code":%d,"values":%s,%s' % (
         b"false" if is_refused else b"true",
         code,

@@ -19,10 +19,11 @@ from service.wire.flat import FLAGS, LARGEST_CONDITION, NO_LIMITS_MARGIN, NO_NUM
 MEDIA_TYPE = "text/csv; charset=utf-8; header=present"
 _END = "\r\n"
 _NEEDS_QUOTES = re.compile(r'[",\r\n]')
-_FIRST = ("ok", "code", "flags", "seq", "tag", "t_ms")
+FIRST = ("ok", "code", "flags", "seq", "tag", "t_ms")
 _FORM = ("form",)
 _LAST = ("units", "tool_no", "frame_no", "state", "condition", "margin", "revision", "digest")
-_REFUSALS_FROM = 100
+REFUSALS_FROM = 100
+"""The lowest code that is a refusal's."""
 
 
 @dataclass(frozen=True)
@@ -49,7 +50,7 @@ class Columns:
     @property
     def refused(self) -> NDArray[np.bool_]:
         """Which vectors are refused, (count,)."""
-        return np.asarray(self.codes >= _REFUSALS_FROM)
+        return np.asarray(self.codes >= REFUSALS_FROM)
 
 
 @dataclass(frozen=True)
@@ -75,7 +76,7 @@ def csv_head(numbers: Sequence[str], *, has_form: bool, has_name: bool) -> bytes
     >>> csv_head(["x"], has_form=False, has_name=True)
     b'ok,code,flags,seq,tag,t_ms,x,units,tool_no,frame_no,state,condition,margin,revision,digest,name\\r\\n'
     """
-    keys = [*_FIRST, *numbers, *(_FORM if has_form else ()), *_LAST, *([NAME] if has_name else ())]
+    keys = [*FIRST, *numbers, *(_FORM if has_form else ()), *_LAST, *([NAME] if has_name else ())]
     return (",".join(keys) + _END).encode("ascii")
 
 
@@ -84,7 +85,9 @@ def csv_lines(columns: Columns, same: SameInAll, names: Sequence[str] | None) ->
     count = len(columns.codes)
     if not count:
         return b""
-    first = _first(columns, same)
+    stamp = (same.seq, same.tag, same.t_ms)
+    first = line_begins(columns.codes, columns.applying, stamp)
+    comma = "," if columns.numbers.shape[1] else ""
     refused = columns.refused
     numbers = number_texts(np.where(refused[:, None], NO_NUMBER, columns.numbers))
     form = "" if same.form is None else f",{same.form}"
@@ -93,27 +96,12 @@ def csv_lines(columns: Columns, same: SameInAll, names: Sequence[str] | None) ->
     measures = _measures(columns, refused)
     end = f",{same.revision},{same.digest}"
     lines = [
-        f"{before}{values}{middle}{state},{measured}{end}"
+        f"{before}{comma}{values}{middle}{state},{measured}{end}"
         for before, values, state, measured in zip(first, numbers, states, measures, strict=True)
     ]
     if names is not None:
         lines = [f"{line},{quoted(name)}" for line, name in zip(lines, names, strict=True)]
     return (_END.join(lines) + _END).encode("utf-8")
-
-
-def _first(columns: Columns, same: SameInAll) -> list[str]:
-    """Return what stands before the numbers; few lines differ there, so each text is made once."""
-    flags = np.zeros(len(columns.codes), dtype=np.int64)
-    for code, applies in columns.applying.items():
-        flags += np.where(applies, FLAGS[code], 0)
-    kinds = (columns.codes << 16) + flags
-    comma = "," if columns.numbers.shape[1] else ""
-    texts = {
-        kind: f"{int(kind >> 16 < _REFUSALS_FROM)},{kind >> 16},{kind & 0xFFFF},"
-        f"{same.seq},{same.tag},{same.t_ms}{comma}"
-        for kind in np.unique(kinds).tolist()
-    }
-    return [texts[kind] for kind in kinds.tolist()]
 
 
 def _measures(columns: Columns, refused: NDArray[np.bool_]) -> list[str]:
@@ -124,6 +112,34 @@ def _measures(columns: Columns, refused: NDArray[np.bool_]) -> list[str]:
     conditions = np.minimum(columns.conditions, LARGEST_CONDITION)
     conditions = np.where(refused, NO_NUMBER, conditions)
     return number_texts(np.stack([conditions, margins], axis=1))
+
+
+def line_begins(
+    codes: NDArray[np.int64], applying: Mapping[int, NDArray[np.bool_]], stamp: Sequence[int]
+) -> list[str]:
+    """Return what stands before the numbers; few lines differ there, so each text is made once.
+
+    Parameters
+    ----------
+    codes : (count,).
+    applying : for each code that is no refusal, where it applies, (count,).
+    stamp : seq, tag and t_ms.
+
+    Examples
+    --------
+    >>> line_begins(np.array([0, 105]), {}, (1, 2, 3))
+    ['1,0,0,1,2,3', '0,105,0,1,2,3']
+    """
+    flags = np.zeros(len(codes), dtype=np.int64)
+    for code, applies in applying.items():
+        flags += np.where(applies, FLAGS[code], 0)
+    kinds = (codes << 16) + flags
+    same = ",".join(map(str, stamp))
+    texts = {
+        kind: f"{int(kind >> 16 < REFUSALS_FROM)},{kind >> 16},{kind & 0xFFFF},{same}"
+        for kind in np.unique(kinds).tolist()
+    }
+    return [texts[kind] for kind in kinds.tolist()]
 
 
 def number_texts(numbers: FloatArray) -> list[str]:

@@ -38,6 +38,9 @@ TABLE_PARAMETERS = frozenset(
 _BODY_PARAMETERS = frozenset({"format", "tag"})
 """Beside a JSON body, which says all else itself."""
 
+_LONGEST_KEPT = 512
+"""Characters of an ``Accept`` header whose meaning is kept; browsers send some 150."""
+
 _SWITCH = {"true": True, "1": True, "false": False, "0": False}
 
 
@@ -101,7 +104,8 @@ def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -
     """
     text = parameters.get("format")
     if text is None:
-        return _best_accepted(accept, default)
+        best = _best_kept if len(accept) <= _LONGEST_KEPT else _best_accepted
+        return best(accept, default)
     for name in FORMATS:
         if text == name:
             return name
@@ -202,10 +206,12 @@ def form_for(wanted: Format, said: str | None, *, key: str, location: Location) 
     return said or QUATERNION
 
 
-@lru_cache(maxsize=64)
 def _best_accepted(accept: str, default: Format) -> Format:
     weights = {name: _weight(accept, name) for name in (default, *FORMATS)}
     return max(weights, key=lambda name: weights[name])
+
+
+_best_kept = lru_cache(maxsize=64)(_best_accepted)
 
 
 def _weight(accept: str, name: Format) -> float:

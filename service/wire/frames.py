@@ -3,91 +3,28 @@
 Left out: arms and cells and the names they bring along (operations), answers (frame_answers.py).
 """
 
-import re
 from collections.abc import Sequence
 from contextlib import suppress
 from functools import cached_property
-from typing import Annotated, Any
 
 import numpy as np
 import orjson
-from pydantic import Field
-from pydantic.json_schema import WithJsonSchema
 
-from kinematics.orientation_forms import FORMS
 from kinematics.tolerances import LARGEST_SD, SMALLEST_SD, USUAL_ANGLE_SD, USUAL_POSITION_SD
 from service.convert import Units
 from service.errors import TooLarge, UnusableValue
 from service.wire.body import parse_json
-from service.wire.models import AnyArm, Number, Pose, Strict, UnitsName
+from service.wire.frames_request import FRAME_NAME, FramesRequest, Relation, are_frame_names
 from service.wire.plain_relations import Plain, Relations, are_usable, plain_of, plain_relations
 from service.wire.poses import Where, read_pose
+from service.wire.worded_alike import SHORT_BYTES, worded_alike
 
 _MOST = {"relations": 20_000, "find": 10_000, "arms": 100}
 """How many a body may hold; ten times what a plant has between all its frames."""
 
-_QUOTE, _COLON = b'":'
-_NAME = r"[a-z0-9][a-z0-9-]{0,47}(?:\.[a-z0-9][a-z0-9-]{0,47})?"
-FRAME_NAME = re.compile(_NAME, re.ASCII)
-_FRAME_NAMES = re.compile(rf"(?:{_NAME}\n)*", re.ASCII)
-_FRAME = Annotated[
-    str,
-    Field(description="a name, or <arm>.base, .flange, .link-3, .<tool or frame>, or world"),
-]
-
-
-class Between(Strict):
-    """A pair of frames whose relation is asked for: the pose of the one in the other."""
-
-    of: _FRAME
-    in_: Annotated[_FRAME, Field(alias="in")]
-
-
-class Relation(Between):
-    """A known pose of one frame in another, and how well it is known."""
-
-    pose: Pose
-    position_sd: Annotated[
-        Number | None,
-        Field(description="standard deviation of each coordinate; 1 mm where it is left out"),
-    ] = None
-    angle_sd: Annotated[
-        Number | None,
-        Field(description="standard deviation about each axis; 1 mrad where it is left out"),
-    ] = None
-
-
-class ArmAt(Strict):
-    """An arm and its joint values, which are needed where a way leads through it."""
-
-    arm: AnyArm
-    joints: Annotated[
-        list[Any] | None,
-        WithJsonSchema({"type": "array", "items": {"type": "number"}}),
-    ] = None
-
-
-class FramesRequest(Strict):
-    """Known relations between frames, arms at joint values, a cell, and pairs asked for.
-
-    ``units`` may be left out where the cell, or all arms, have the same.
-    """
-
-    relations: list[Relation] = Field(default_factory=list)
-    find: list[Between] = Field(default_factory=list)
-    arms: list[ArmAt] = Field(default_factory=list)
-    cell: str | None = None
-    estimate: bool = False
-    form: Annotated[str, Field(json_schema_extra={"enum": list(FORMS)})] | None = None
-    units: UnitsName | None = None
-
 
 class FramesBody:
     """A body about frames, with the relations in whichever shape they could be taken.
-
-    Attributes
-    ----------
-    document : the body as parsed.
 
     Raises
     ------
@@ -96,18 +33,32 @@ class FramesBody:
     """
 
     def __init__(self, raw: bytes) -> None:
-        self.document, self._plain = _parsed(raw)
+        self._raw = raw
+        self._alike = worded_alike(raw) if len(raw) <= SHORT_BYTES else None
+        if self._alike is None:
+            assert self._parsed
+
+    @cached_property
+    def _parsed(self) -> tuple[object, Plain | None]:
+        return _parsed(self._raw)
+
+    @property
+    def document(self) -> object:
+        """The body as parsed."""
+        return self._parsed[0]
 
     @cached_property
     def asked(self) -> FramesRequest:
-        """All of the body, but no relations where these are plain.
+        """All of the body, but no relations where these are read otherwise.
 
         Raises
         ------
         pydantic.ValidationError : shapes and types.
         """
-        rest = self.document
-        if self._plain is not None:
+        if self._alike is not None:
+            return self._alike.wording.asked
+        rest, plain = self._parsed
+        if plain is not None:
             assert isinstance(rest, dict)
             rest = {**rest, "relations": []}
         return FramesRequest.model_validate(rest)
@@ -120,12 +71,13 @@ class FramesBody:
         ServiceError, KinematicsError, pydantic.ValidationError : with ``where`` from the body's
             root.
         """
-        read = None if self._plain is None else plain_relations(self._plain, units)
+        read = None if self._alike is None else self._alike.relations(units)
+        if read is not None:
+            return read
+        document, plain = self._parsed
+        read = None if plain is None else plain_relations(plain, units)
         if read is None:
-            given = self.asked.relations
-            if self._plain is not None:
-                given = FramesRequest.model_validate(self.document).relations
-            read = _one_by_one(given, units)
+            read = _one_by_one(FramesRequest.model_validate(document).relations, units)
         _refuse_bad_names(read)
         return read
 
@@ -136,10 +88,8 @@ def _parsed(raw: bytes) -> tuple[object, Plain | None]:
     orjson reads four times faster than parse_json, but lets a key stand twice. Where every colon
     follows a quotation mark and nothing is escaped, keys can be counted in the text instead.
     """
-    letters = np.frombuffer(raw, np.uint8)
-    keys = int(np.count_nonzero(letters == _COLON))
-    in_place = np.count_nonzero((letters[1:] == _COLON) & (letters[:-1] == _QUOTE))
-    if b"\\" not in raw and in_place == keys:
+    keys = raw.count(b":")
+    if b"\\" not in raw and raw.count(b'":') == keys:
         with suppress(orjson.JSONDecodeError):
             document = orjson.loads(raw)
             _refuse_too_many(document)
@@ -191,9 +141,7 @@ def _sd(given: float | None, units: Units, unit: str, usual: float, where: Where
 
 def _refuse_bad_names(read: Relations) -> None:
     different = {*read.of, *read.within}
-    # All at once first: a line for each name, and no line more.
-    lines = "".join(f"{name}\n" for name in different)
-    if _FRAME_NAMES.fullmatch(lines) and lines.count("\n") == len(different):
+    if are_frame_names(different):
         return
     bad = {name for name in different if not FRAME_NAME.fullmatch(name)}
     for number, pair in enumerate(zip(read.of, read.within, strict=True)):

@@ -16,13 +16,12 @@ from kinematics.errors import KinematicsError
 from kinematics.findings import Finding
 from kinematics.known_names import way_out_of_unknown
 from kinematics.number_checks import checked_numbers
-from kinematics.orientation_forms import FORMS
 from kinematics.readouts import COUNTS, KnownDirection, KnownOrientation, Meaning, checked_direction
 from kinematics.table import FloatArray
 from kinematics.tolerances import GUESS_FITS, GUESS_FITS_MOST, MOST_READOUTS
 from service.convert import UNITS, Units
 from service.errors import MissingField, TooLarge, UnusableValue
-from service.wire.models import Number, Orientation, Strict, UnitsName
+from service.wire.models import FormName, Number, Orientation, Strict, UnitsName
 from service.wire.poses import Where, checked_form, read_orientation
 
 TOOL_DIRECTIONS = {
@@ -84,10 +83,7 @@ class GuessesRequest(Strict):
         Literal["deg", "rad", "half-turns"] | None,
         Field(description="unit of the screen's angles; left out: all are tried"),
     ] = None
-    form: Annotated[
-        str,
-        Field(description="form of predictions", json_schema_extra={"enum": list(FORMS)}),
-    ] = "quaternion-wxyz"
+    form: Annotated[FormName, Field(description="form of predictions")] = "quaternion-wxyz"
     most: Annotated[int, Field(ge=1, le=100, description="groups answered at most")] = 12
 
 

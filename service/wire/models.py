@@ -13,6 +13,7 @@ from pydantic import (
     Discriminator,
     Field,
     ModelWrapValidatorHandler,
+    PrivateAttr,
     StringConstraints,
     Tag,
     WrapValidator,
@@ -25,6 +26,10 @@ WHOLE_ARMS_KEPT = 64
 """Arms that came whole in a request and are kept checked: a system that has no other place for its
 arm sends it again with each question. Some 20 kB each."""
 
+MOST_WORDS_KEPT = 2**16
+"""Bytes of such an arm's words; some 2 kB are usual. Read, they take thirty times the place: one
+with more tools and frames than that holds is checked anew each time."""
+
 UnitsName = Literal["mm-deg", "m-rad", "in-deg"]
 Number = Annotated[float, Field(allow_inf_nan=False)]
 Name = Annotated[
@@ -35,6 +40,7 @@ Name = Annotated[
 Pair = Annotated[list[Number], Field(min_length=2, max_length=2)]
 Triple = Annotated[list[Number], Field(min_length=3, max_length=3)]
 Row4 = Annotated[list[Number], Field(min_length=4, max_length=4)]
+FormName = Annotated[str, Field(json_schema_extra={"enum": list(FORMS)})]
 Values = Annotated[
     list[Any],
     WithJsonSchema(
@@ -56,7 +62,7 @@ class Strict(BaseModel):
 class Orientation(Strict):
     """An orientation in one of the 28 forms."""
 
-    form: Annotated[str, Field(json_schema_extra={"enum": list(FORMS)})]
+    form: FormName
     values: Values
 
 
@@ -143,6 +149,12 @@ class Arm(Strict):
     singularity_thresholds: Thresholds | None = None
     status: Literal["draft", "measured", "approved", "retired"] | None = None
     notes: Annotated[str, Field(max_length=10_000)] | None = None
+    _is_kept: bool = PrivateAttr(default=False)
+
+    @property
+    def is_kept(self) -> bool:
+        """Whether the same words will be this very model again."""
+        return self._is_kept
 
 
 class Placement(Pose):
@@ -210,6 +222,11 @@ class _Words:
         # Version 2 writes the same bytes for the same values; NaN, 1, 1.0 and true all differ.
         self._key = marshal.dumps(said, 2)  # type: ignore[arg-type]  # refuses what it cannot
 
+    @property
+    def are_few(self) -> bool:
+        """Whether they are few enough to be kept."""
+        return len(self._key) <= MOST_WORDS_KEPT
+
     def __hash__(self) -> int:
         return hash(self._key)
 
@@ -219,16 +236,18 @@ class _Words:
 
 @lru_cache(maxsize=WHOLE_ARMS_KEPT)
 def _checked_once(words: _Words) -> Arm:
-    return words.check(words.said)
+    arm = words.check(words.said)
+    arm._is_kept = True
+    return arm
 
 
 def _in_the_same_words(said: object, check: ModelWrapValidatorHandler[Arm]) -> Arm:
-    """Return the very same model for an arm that comes in the same words again."""
+    """Return the very same model for an arm that comes in the same few words again."""
     try:
         words = _Words(said, check)
     except ValueError:  # nested too deeply, or a value that no JSON holds
         return check(said)
-    return _checked_once(words)
+    return _checked_once(words) if words.are_few else check(said)
 
 
 AnyArm = Annotated[
@@ -268,7 +287,7 @@ class PosesRequest(Strict):
     joints: NumberRows
     tool: AnyTool | None = None
     frame: str | None = None
-    form: Annotated[str, Field(json_schema_extra={"enum": list(FORMS)})] | None = None
+    form: FormName | None = None
     units: UnitsName | None = None
     links: bool = False
     singularity: bool = True

@@ -47,7 +47,8 @@ def pose(answer: SingleAnswer, asked: SingleQuestion, wanted: Format, stamp: Sta
     ------
     NumberDoesNotFit : a number is wider than its field.
     """
-    return _flat(flat.flat_pose(answer, form=asked.form, **stamp), wanted, asked.scale)
+    told = flat.flat_pose(answer, form=asked.form, **stamp)
+    return on_one_level(told, wanted, asked.scale)
 
 
 def jacobian(
@@ -64,12 +65,12 @@ def jacobian(
         if row is None
         else flat.flat_jacobian_row(answer, row, **stamp)
     )
-    return _flat(told, wanted, asked.scale)
+    return on_one_level(told, wanted, asked.scale)
 
 
 def refused_pose(problem: Problem, wanted: Format, stamp: Stamp) -> Content:
     """Return a pose without its numbers."""
-    return _refused(flat.flat_pose_refusal(problem.number, **stamp), wanted)
+    return refused_on_one_level(flat.flat_pose_refusal(problem.number, **stamp), wanted)
 
 
 def refused_jacobian(problem: Problem, wanted: Format, stamp: Stamp, joints: int) -> Content:
@@ -79,7 +80,7 @@ def refused_jacobian(problem: Problem, wanted: Format, stamp: Stamp, joints: int
         if wanted == "txt"
         else flat.flat_jacobian_refusal(problem.number, joints, **stamp)
     )
-    return _refused(told, wanted)
+    return refused_on_one_level(told, wanted)
 
 
 def refused_inline(problem: Problem, request_id: str, stamp: Stamp) -> Content:
@@ -92,15 +93,31 @@ def refused_inline(problem: Problem, request_id: str, stamp: Stamp) -> Content:
     return Content(json_bytes(problem.document(request_id) | named), _JSON)
 
 
-def _flat(told: Mapping[str, object], wanted: Format, scale: int | None) -> Content:
+def on_one_level(
+    told: Mapping[str, object],
+    wanted: Format,
+    scale: int | None,
+    widths: Mapping[str, int] = fixed_text.WIDTHS,
+    decimals: int = fixed_text.DECIMALS,
+) -> Content:
+    """Return a flat answer as JSON, CSV or a line of text; ``widths``, ``decimals`` are a line's.
+
+    Raises
+    ------
+    NumberDoesNotFit : a number is wider than its field.
+    """
     if wanted == "txt":
-        return Content(fixed_text.text_line(told, scale), fixed_text.MEDIA_TYPE)
+        line = fixed_text.text_line(told, scale, widths=widths, decimals=decimals)
+        return Content(line, fixed_text.MEDIA_TYPE)
     return _as_json_or_csv(told if scale is None else scaled(told, scale), wanted)
 
 
-def _refused(told: Mapping[str, object], wanted: Format) -> Content:
+def refused_on_one_level(
+    told: Mapping[str, object], wanted: Format, widths: Mapping[str, int] = fixed_text.WIDTHS
+) -> Content:
+    """Return a flat refusal in the same formats."""
     if wanted == "txt":
-        return Content(fixed_text.text_refusal(told), fixed_text.MEDIA_TYPE)
+        return Content(fixed_text.text_refusal(told, widths), fixed_text.MEDIA_TYPE)
     return _as_json_or_csv(told, wanted)
 
 

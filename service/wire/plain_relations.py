@@ -39,7 +39,7 @@ UNITS_ROUND = 1e-12
 """Share by which a bound may be missed when it is said in another unit."""
 
 _FIELDS = frozenset({"of", "in", "pose", "position_sd", "angle_sd"})
-_WHOLE = "whole"
+WHOLE = "whole"
 """In place of a form, for a pose that is one 4 x 4 matrix."""
 
 
@@ -56,8 +56,8 @@ class Relations:
     more_repaired : how many others were mended.
     """
 
-    of: list[str]
-    within: list[str]
+    of: Sequence[str]
+    within: Sequence[str]
     of_in: FloatArray
     position_sd: FloatArray
     angle_sd: FloatArray
@@ -104,29 +104,41 @@ def plain_of(document: object) -> Plain | None:
         return None
     try:
         poses = [relation["pose"] for relation in given]
-        by_form = _by_form(poses)
+        by_form = _of_one_form(poses) or _by_form(poses)
         of = [relation["of"] for relation in given]
         within = [relation["in"] for relation in given]
         # With as many keys as were looked up just now there can be no others.
-        whole = len(by_form[_WHOLE].places) if _WHOLE in by_form else 0
+        whole = len(by_form[WHOLE].places) if WHOLE in by_form else 0
         in_poses = sum(map(len, poses))
-        in_orientations = sum(len(pose["orientation"]) for pose in poses if "matrix" not in pose)
+        in_orientations = sum([len(pose["orientation"]) for pose in poses if "matrix" not in pose])
     except (KeyError, TypeError):
         return None
     if not set(map(type, chain(of, within, by_form))) <= {str}:
         return None
     if (in_poses, in_orientations) != (2 * len(poses) - whole, 2 * (len(poses) - whole)):
         return None
+    in_relations = sum(map(len, given))
+    if in_relations == 3 * len(given):  # nothing but what was looked up
+        position_sd = angle_sd = [None] * len(given)
+    else:
+        position_sd = [relation.get("position_sd") for relation in given]
+        angle_sd = [relation.get("angle_sd") for relation in given]
     others = sum(keys_in(part) for name, part in document.items() if name != "relations")
-    return Plain(
-        of,
-        within,
-        poses,
-        by_form,
-        [relation.get("position_sd") for relation in given],
-        [relation.get("angle_sd") for relation in given],
-        len(document) + sum(map(len, given)) + in_poses + in_orientations + others,
-    )
+    keys = len(document) + in_relations + in_poses + in_orientations + others
+    return Plain(of, within, poses, by_form, position_sd, angle_sd, keys)
+
+
+def _of_one_form(poses: Sequence[dict[str, Any]]) -> dict[str, OfOneForm] | None:
+    """Return what _by_form does, sooner, if all poses are of one form and no matrix; else None."""
+    if not all("orientation" in given for given in poses):
+        return None
+    orientations = [given["orientation"] for given in poses]
+    forms = {given["form"] for given in orientations}
+    if len(forms) != 1:
+        return None
+    values = [given["values"] for given in orientations]
+    positions = [given["position"] for given in poses]
+    return {forms.pop(): OfOneForm(list(range(len(poses))), values, positions)}
 
 
 def _by_form(poses: Sequence[dict[str, Any]]) -> dict[str, OfOneForm]:
@@ -139,7 +151,7 @@ def _by_form(poses: Sequence[dict[str, Any]]) -> dict[str, OfOneForm]:
     by_form: dict[str, OfOneForm] = {}
     for number, given in enumerate(poses):
         if "matrix" in given:
-            form, values, position = _WHOLE, given["matrix"], None
+            form, values, position = WHOLE, given["matrix"], None
         else:
             orientation = given["orientation"]
             form, values, position = orientation["form"], orientation["values"], given["position"]
@@ -173,18 +185,18 @@ def keys_in(part: object) -> int:
 
 def plain_relations(plain: Plain, units: Units) -> Relations | None:
     """Return the relations in SI, or None if one of them cannot be used."""
-    position_sd = _sds(plain.position_sd, units, "m", USUAL_POSITION_SD)
-    angle_sd = _sds(plain.angle_sd, units, "rad", USUAL_ANGLE_SD)
-    if position_sd is None or angle_sd is None:
+    sds = sds_of(plain, units)
+    if sds is None:
         return None
     of_in, mended = np.empty((len(plain.of), 4, 4)), list[int]()
     for form, group in plain.by_form.items():
-        given = _given(form, group, units)
+        numbers = numbers_of(form, group)
+        given = None if numbers is None else orientations_in(form, *numbers, units)
         if given is None:
             return None
-        shape, values, positions = given
-        poses = poses_as_given(shape, values, positions)
+        poses = poses_as_given(*given)
         if poses is None:
+            shape, values, positions = given
             checked = checked_rotations(shape, values)
             if not checked.usable.all() or not np.abs(positions).max() <= LARGEST_MAGNITUDE:
                 return None
@@ -201,22 +213,39 @@ def plain_relations(plain: Plain, units: Units) -> Relations | None:
         for finding in read_pose(Pose.model_validate(plain.poses[number]), units, ())[1]
     ]
     more = max(len(mended) - MOST_REPAIRED_TOLD, 0)
-    return Relations(plain.of, plain.within, of_in, position_sd, angle_sd, told, more)
+    return Relations(plain.of, plain.within, of_in, *sds, told, more)
 
 
-def _given(form: str, group: OfOneForm, units: Units) -> tuple[str, FloatArray, FloatArray] | None:
-    """Return form, values and positions of poses in SI; None if one holds something else."""
-    if form == _WHOLE:
+def numbers_of(form: str, group: OfOneForm) -> tuple[FloatArray, FloatArray | None] | None:
+    """Return values and positions of poses as they stand, or None if one holds something else.
+
+    Of whole matrices all numbers are values.
+    """
+    if form == WHOLE:
         matrices = _array(group.values, (4, 4))
-        if matrices is None or (np.abs(matrices[:, 3] - [0, 0, 0, 1]) > RIGID_SILENT).any():
-            return None
-        return "matrix", matrices[:, :3, :3], units.length_in(matrices[:, :3, 3])
+        return None if matrices is None else (matrices, None)
     if form not in FORMS:
         return None
     values, positions = _array(group.values, shape_of(form)), _array(group.positions, (3,))
-    if values is None or positions is None:
+    return None if values is None or positions is None else (values, positions)
+
+
+def orientations_in(
+    form: str, values: FloatArray, positions: FloatArray | None, units: Units
+) -> tuple[str, FloatArray, FloatArray] | None:
+    """Return form, values and positions in SI; None if a whole matrix ends otherwise."""
+    if positions is not None:
+        return form, orientation_in(units, form, values), units.length_in(positions)
+    if (np.abs(values[:, 3] - [0, 0, 0, 1]) > RIGID_SILENT).any():
         return None
-    return form, orientation_in(units, form, values), units.length_in(positions)
+    return "matrix", values[:, :3, :3], units.length_in(values[:, :3, 3])
+
+
+def sds_of(plain: Plain, units: Units) -> tuple[FloatArray, FloatArray] | None:
+    """Return standard deviations of positions and angles in SI; None if one cannot be used."""
+    position_sd = _sds(plain.position_sd, units, "m", USUAL_POSITION_SD)
+    angle_sd = _sds(plain.angle_sd, units, "rad", USUAL_ANGLE_SD)
+    return None if position_sd is None or angle_sd is None else (position_sd, angle_sd)
 
 
 def _array(rows: Sequence[object], shape: tuple[int, ...]) -> FloatArray | None:

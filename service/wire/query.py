@@ -152,7 +152,8 @@ def whole_number(text: str, name: str) -> int:
             value=text,
             way_out="write it like 12",
         )
-    if len(mended.lstrip("+-0")) > _MOST_DIGITS:
+    digits = mended.lstrip("+-0")
+    if len(digits) > _MOST_DIGITS:
         raise UnusableValue(
             f'"{name}" has more than {_MOST_DIGITS} digits',
             where=(name,),
@@ -160,7 +161,9 @@ def whole_number(text: str, name: str) -> int:
             value=text,
             way_out=f"give at most {_MOST_DIGITS} digits",
         )
-    return int(mended)
+    # Of the digits that count alone: with thousands of zeros before them it would not be read.
+    value = int(digits or "0")
+    return -value if mended.startswith("-") else value
 
 
 def _mended(text: str) -> str:

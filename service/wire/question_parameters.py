@@ -1,5 +1,6 @@
 """The query parameters of a controller's question, as the OpenAPI document tells them."""
 
+from collections.abc import Mapping
 from typing import Any
 
 from kinematics.orientation_forms import FORMS
@@ -13,9 +14,18 @@ _NUMBER = {"type": "number"}
 _TEXT = {"type": "string"}
 
 
-def _one_of(*names: str) -> dict[str, Any]:
+def one_of(*names: str) -> dict[str, Any]:
+    """Return the schema of a parameter that says one of some names."""
     return {"type": "string", "enum": list(names)}
 
+
+FORMAT = parameter("format", "Shape of the answer.", one_of(*FORMATS))
+TAG = parameter("tag", "A whole number that comes back in the answer.", {"type": "integer"})
+ERRORS = parameter("errors", "inline: refusals come with status 200.", one_of("inline"))
+SCALE_SCHEMA: Mapping[str, object] = {"type": "integer", "minimum": 1, "maximum": MOST_SCALE}
+FORMAT_OF_TABLES = parameter(
+    "format", "Format of the answer; that of the body if left out.", one_of(*formats.FORMATS)
+)
 
 QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
     parameter("q", "Joint values in row order, with commas.", _TEXT, example="0,-90,90,0,45,0"),
@@ -29,12 +39,12 @@ QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
         for name in ("tx", "ty", "tz", "tr1", "tr2", "tr3")
     ),
     parameter("frame", "base, world, or a frame by name or number.", _TEXT),
-    parameter("form", "Orientation form of the answer.", _one_of(*FORMS)),
-    parameter("units", "Units of question and answer.", _one_of(*UNITS)),
-    parameter("format", "Shape of the answer.", _one_of(*FORMATS)),
+    parameter("form", "Orientation form of the answer.", one_of(*FORMS)),
+    parameter("units", "Units of question and answer.", one_of(*UNITS)),
+    FORMAT,
     parameter("revision", "Revision of the arm; the newest if left out.", {"type": "integer"}),
     parameter("expect", "Digest the arm must have; refused with 107 if it differs.", _TEXT),
-    parameter("tag", "A whole number that comes back in the answer.", {"type": "integer"}),
+    TAG,
     parameter(
         "task",
         "What singularity is judged by: pose, position, orientation, or rows such as vx,vy.",
@@ -44,9 +54,9 @@ QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
         "scale",
         "Joint and tool values are integers and divided by it; numbers of the answer are "
         "multiplied by it and printed as integers.",
-        {"type": "integer", "minimum": 1, "maximum": MOST_SCALE},
+        {**SCALE_SCHEMA},
     ),
-    parameter("errors", "inline: refusals come with status 200.", _one_of("inline")),
+    ERRORS,
 )
 
 JACOBIAN_QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
@@ -62,11 +72,6 @@ _OF_TABLES = (
     parameter("arm", "Stored arm the joint vectors are for; required beside a table.", _TEXT),
     parameter("singularity", "Whether singularity is judged.", {"type": "boolean"}),
 )
-_OF_BODIES = (
-    parameter(
-        "format", "Format of the answer; that of the body if left out.", _one_of(*formats.FORMATS)
-    ),
-)
 
 TABLE_PARAMETERS: tuple[dict[str, Any], ...] = (
     *_OF_TABLES,
@@ -75,6 +80,6 @@ TABLE_PARAMETERS: tuple[dict[str, Any], ...] = (
         for known in QUESTION_PARAMETERS
         if known["name"] in formats.TABLE_PARAMETERS - {"format"}
     ),
-    *_OF_BODIES,
+    FORMAT_OF_TABLES,
 )
 """Beside a table of joint vectors; a JSON body says all but ``format`` and ``tag`` itself."""

@@ -8,6 +8,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from kinematics.arm import FLANGE
 from service.errors import MissingField
 from service.web.document import parameter
 from service.wire import controller
@@ -59,7 +60,8 @@ def relation_question(
     ------
     ServiceError, KinematicsError : a parameter that is missing or cannot be used.
     """
-    single = single_question(arm, parameters, answer_format)
+    # About the arm itself, which may have several tools and none that is said by default.
+    single = single_question(arm, {**parameters, "tool": FLANGE}, answer_format)
     for side in _SIDES:
         if not parameters.get(side):
             raise MissingField(

@@ -11,7 +11,8 @@ from service.convert import Units
 from service.wire import fixed_text, flat
 from service.wire.answers import json_bytes
 from service.wire.controller import Format
-from service.wire.one_answer import Content, Stamp
+from service.wire.formats import JSON
+from service.wire.one_answer import Content, Stamp, on_one_level, refused_on_one_level
 from service.wire.rotation_query import FLAT_FORM, VALUE_PARAMETERS, ConversionQuestion, width_of
 from service.wire.whole_numbers import scaled
 
@@ -24,7 +25,6 @@ WIDTHS: Mapping[str, int] = {
 """Characters of each field; an answer has as many of ``r1`` ... ``r9`` as its form has numbers."""
 
 _FINE_DECIMALS = 9
-_MEDIA_TYPE = "application/json"
 
 
 def decimals_of(form: str, units: Units) -> int:
@@ -53,7 +53,7 @@ def conversion_content(
     if wanted == "json":
         told = {"ok": True, "code": head["code"], **stamp, "units": asked.units.name}
         told |= {"orientation": orientation, "findings": head["findings"]}
-        return _in_json(told, asked.scale)
+        return Content(json_bytes(told if asked.scale is None else scaled(told, asked.scale)), JSON)
     values = _flattened(orientation[asked.to])
     codes = {finding["code"] for finding in head["findings"]}
     told = {
@@ -65,14 +65,7 @@ def conversion_content(
         "form": asked.to,
         "units": asked.units.name,
     }
-    if wanted == "txt":
-        decimals = decimals_of(asked.to, asked.units)
-        line = fixed_text.text_line(told, asked.scale, widths=WIDTHS, decimals=decimals)
-        return Content(line, fixed_text.MEDIA_TYPE)
-    if wanted == "csv":
-        whole = told if asked.scale is None else scaled(told, asked.scale)
-        return Content(flat.csv_of_one(whole), flat.CSV_MEDIA_TYPE)
-    return _in_json(told, asked.scale)
+    return on_one_level(told, wanted, asked.scale, WIDTHS, decimals_of(asked.to, asked.units))
 
 
 def refused_conversion(number: int, to: str, wanted: Format, stamp: Stamp) -> Content:
@@ -90,15 +83,7 @@ def refused_conversion(number: int, to: str, wanted: Format, stamp: Stamp) -> Co
         "form": "",
         "units": "",
     }
-    if wanted == "txt":
-        return Content(fixed_text.text_refusal(told, WIDTHS), fixed_text.MEDIA_TYPE)
-    if wanted == "csv":
-        return Content(flat.csv_of_one(told), flat.CSV_MEDIA_TYPE)
-    return Content(json_bytes(told), _MEDIA_TYPE)
-
-
-def _in_json(told: Mapping[str, object], scale: int | None) -> Content:
-    return Content(json_bytes(told if scale is None else scaled(told, scale)), _MEDIA_TYPE)
+    return refused_on_one_level(told, wanted, WIDTHS)
 
 
 def _flattened(values: list[Any]) -> list[float]:

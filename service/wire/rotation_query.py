@@ -13,10 +13,16 @@ from kinematics.orientation_forms import FORMS, shape_of
 from service.convert import UNITS, Units
 from service.errors import MissingField, UnusableValue
 from service.web.document import parameter
-from service.wire import formats
-from service.wire.controller import FORMATS, MOST_SCALE
+from service.wire.controller import scaled_number, wanted_scale, wanted_units
 from service.wire.poses import checked_form
-from service.wire.query import number, whole_number
+from service.wire.question_parameters import (
+    ERRORS,
+    FORMAT,
+    FORMAT_OF_TABLES,
+    SCALE_SCHEMA,
+    TAG,
+    one_of,
+)
 
 FLAT_FORM = "xyz-fixed"
 NESTED_FORM = "quaternion-wxyz"
@@ -74,7 +80,7 @@ def conversion_question(parameters: Mapping[str, str], *, flat: bool) -> Convers
     """
     form = form_said(parameters, "from")
     to = form_said(parameters, "to", FLAT_FORM if flat else NESTED_FORM)
-    scale = _scale(parameters.get("scale"))
+    scale = wanted_scale(parameters)
     wanted, given = VALUE_PARAMETERS[: width_of(form)], [*parameters.keys() & VALUE_PARAMETERS]
     beyond = sorted(set(given) - set(wanted))
     if beyond:
@@ -93,12 +99,7 @@ def conversion_question(parameters: Mapping[str, str], *, flat: bool) -> Convers
             location="query",
             way_out=f"{form} takes {wanted[0]} to {wanted[-1]}",
         )
-    values = [
-        number(parameters[name], name)
-        if scale is None
-        else whole_number(parameters[name], name) / scale
-        for name in wanted
-    ]
+    values = [scaled_number(parameters[name], name, scale) for name in wanted]
     return ConversionQuestion(form, to, units_said(parameters), values, scale)
 
 
@@ -133,53 +134,24 @@ def units_said(parameters: Mapping[str, str]) -> Units:
     ------
     MissingField, UnusableValue
     """
-    text = parameters.get("units")
-    if text is not None and text in UNITS:
-        return UNITS[text]
-    known = ", ".join(UNITS)
-    if text is None:
+    name = wanted_units(parameters)
+    if name is None:
         raise MissingField(
             '"units" is missing, and units are not guessed',
             where=("units",),
             location="query",
-            way_out=f"one of: {known}",
+            way_out=f"one of: {', '.join(UNITS)}",
         )
-    raise UnusableValue(
-        f"there are no units {text!r}",
-        where=("units",),
-        location="query",
-        value=text,
-        way_out=f"one of: {known}",
-    )
+    return UNITS[name]
 
 
-def _scale(text: str | None) -> int | None:
-    if text is None:
-        return None
-    scale = whole_number(text, "scale")
-    if not 1 <= scale <= MOST_SCALE:
-        raise UnusableValue(
-            f"a scale of {scale} cannot be used",
-            where=("scale",),
-            location="query",
-            value=text,
-            way_out=f"give a whole number from 1 to {MOST_SCALE}",
-        )
-    return scale
-
-
-def _one_of(*names: str) -> dict[str, Any]:
-    return {"type": "string", "enum": list(names)}
-
-
-_FROM = parameter("from", "Orientation form of the values.", _one_of(*FORMS), example="zyx-current")
+_FROM = parameter("from", "Orientation form of the values.", one_of(*FORMS), example="zyx-current")
 _TO = parameter(
     "to",
     "Orientation form of the answer; quaternion-wxyz if left out, xyz-fixed in flat, txt and csv.",
-    _one_of(*FORMS),
+    one_of(*FORMS),
 )
-_UNITS = parameter("units", "Units of question and answer; never guessed.", _one_of(*UNITS))
-_TAG = parameter("tag", "A whole number that comes back in the answer.", {"type": "integer"})
+_UNITS = parameter("units", "Units of question and answer; never guessed.", one_of(*UNITS))
 
 CONVERSION_PARAMETERS: tuple[dict[str, Any], ...] = (
     {**_FROM, "required": True},
@@ -189,14 +161,14 @@ CONVERSION_PARAMETERS: tuple[dict[str, Any], ...] = (
         for place, name in enumerate(VALUE_PARAMETERS, start=1)
     ),
     {**_UNITS, "required": True},
-    parameter("format", "Shape of the answer.", _one_of(*FORMATS)),
-    _TAG,
-    parameter("errors", "inline: refusals come with status 200.", _one_of("inline")),
+    FORMAT,
+    TAG,
+    ERRORS,
     parameter(
         "scale",
         "Values are integers and divided by it; numbers of the answer are multiplied by it and "
         "printed as integers.",
-        {"type": "integer", "minimum": 1, "maximum": MOST_SCALE},
+        {**SCALE_SCHEMA},
     ),
 )
 
@@ -204,9 +176,7 @@ CONVERSION_TABLE_PARAMETERS: tuple[dict[str, Any], ...] = (
     _FROM,
     _TO,
     {**_UNITS, "description": "Units of a table and its answer; never guessed."},
-    parameter(
-        "format", "Format of the answer; that of the body if left out.", _one_of(*formats.FORMATS)
-    ),
-    _TAG,
+    FORMAT_OF_TABLES,
+    TAG,
 )
 """Beside a table of orientations; a JSON body says all but ``format`` and ``tag`` itself."""

@@ -11,9 +11,8 @@ from pydantic.json_schema import WithJsonSchema
 from kinematics.orientation_forms import FORMS
 from service.wire.answer_models import Finding, ItemProblem, Open
 from service.wire.controller_answers import InlineRefusal
-from service.wire.models import Number, Orientation, Strict, Triple, UnitsName
+from service.wire.models import FormName, Number, Orientation, Strict, Triple, UnitsName
 
-FormName = Annotated[str, Field(json_schema_extra={"enum": list(FORMS)})]
 OrientationRows = Annotated[
     list[Any],
     WithJsonSchema(

@@ -18,7 +18,8 @@ class SingleQuestion:
     """What a controller asks about one posture, in its own words; all but the joint values.
 
     Controllers ask the same again and again. The same words give the same object, so that what
-    follows from it can be kept. Numbers of the answer are still to be multiplied by ``scale``.
+    follows from it can be kept, unless the words are so many that they are no such question.
+    Numbers of the answer are still to be multiplied by ``scale``.
     """
 
     arm: str
@@ -31,6 +32,7 @@ class SingleQuestion:
     expect: str | None = None
     task: str | list[str] | None = None
     scale: int | None = None
+    is_kept: bool = True
 
 
 class JointsAsked(NamedTuple):

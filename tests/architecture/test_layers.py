@@ -67,6 +67,7 @@ LAYERS = (
     ("constant_offsets", "next_readout", "readouts", "orientation_guesses"),
     ("table", "drive_map", "in_cell", "arm", "cell"),
     ("chain", "travel_limits", "digests", "table_conversion"),
+    ("connections",),
     ("arm_relations", "frames"),
     ("frame_residuals",),
     ("frame_estimate",),
@@ -87,7 +88,7 @@ LAYERS = (
 CORE_IMPORTS = {
     *("numpy", "scipy", "numba"),
     *("collections", "dataclasses", "enum", "functools", "hashlib", "itertools", "json", "math"),
-    *("difflib", "numbers", "re", "typing"),
+    *("difflib", "numbers", "re", "typing", "weakref"),
     # What a cache of machine code that cannot be read or written fails with, and what its code
     # was made from.
     *("contextlib", "pickle", "pathlib"),

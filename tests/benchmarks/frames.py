@@ -1,9 +1,11 @@
 """Relations between frames over HTTP: a short question against an empty POST, and long ones.
 
 `python -m tests.benchmarks.frames`. Both run as real servers with the same middleware and the same
-server options, and always have work (see requests.py).
+server options, and always have work (see requests.py). Relations are measured anew for each
+question: of the same frames, as whoever has a hall does, or each time of other ones.
 """
 
+import itertools
 import json
 import os
 import statistics
@@ -24,25 +26,33 @@ from tests.made_relations import LONG, SHORT, anywhere, body_of, nearby
 
 EMPTY_POST = HELLO.replace("@app.get(", "@app.post(")
 LONG_ROUNDS = 5
+MEASURED = 500
+"""Questions of each kind; the other halls are more than a server keeps."""
 
 
 def against_empty_post(ours: int, theirs: int) -> None:
     """Print what a short question takes beside an empty POST."""
     asked = [Connection(ours) for _ in range(CONNECTIONS)]
     hello = [Connection(theirs) for _ in range(CONNECTIONS)]
-    short = body_of(SHORT, anywhere)
-    taken: dict[str, list[float]] = {"empty POST": [], "50 relations": []}
+    same = [body_of(SHORT, anywhere, measured=number) for number in range(MEASURED)]
+    others = [body_of(SHORT, anywhere, hall=number) for number in range(MEASURED)]
+    kinds = {
+        f"50 relations ({len(same[0])} bytes) of the same frames": itertools.cycle(same),
+        "50 relations of other frames each time": itertools.cycle(others),
+    }
+    empty: list[float] = []
+    taken: dict[str, list[float]] = {name: [] for name in kinds}
     for count in range(ROUNDS + 1):
-        empty, _ = busy(hello, lambda: ("POST", "/", b""), REQUESTS)
-        mine, _ = busy(asked, lambda: ("POST", "/v1/frames", short), REQUESTS)
-        if count:
-            taken["empty POST"].append(empty)
-            taken["50 relations"].append(mine)
-    medians = {name: statistics.median(seconds) for name, seconds in taken.items()}
-    for name, median in medians.items():
-        print(f"{name}: {median * 1e6:.0f} us")
-    ratio = medians["50 relations"] / medians["empty POST"]
-    print(f"50 relations ({len(short)} bytes): {ratio:.2f} times the empty POST")
+        seconds, _ = busy(hello, lambda: ("POST", "/", b""), REQUESTS)
+        empty += [seconds] if count else []
+        for name, bodies in kinds.items():
+            seconds, _ = busy(asked, lambda of=bodies: ("POST", "/v1/frames", next(of)), REQUESTS)
+            taken[name] += [seconds] if count else []
+    usual = statistics.median(empty)
+    print(f"empty POST: {usual * 1e6:.0f} us")
+    for name, each in taken.items():
+        ratio = statistics.median(each) / usual
+        print(f"{name}: {ratio * usual * 1e6:.0f} us, {ratio:.2f} times the empty POST")
 
 
 def long_questions(ours: int) -> None:

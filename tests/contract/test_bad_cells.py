@@ -106,7 +106,7 @@ CELLS: dict[str, tuple[Body, str, str, Any, str, str]] = {
     "infinity": (frame(position=[0, 0, math.inf]), "not-finite", "/frames/pin/position/2",
         "Infinity", "finite", "finite"),
     "1e308": (frame(position=[1e308, 0, 0]), "out-of-range", "/frames/pin/position/0", 1e308,
-        "beyond 1e+09", ""),
+        "beyond 1e9", ""),
     "text for a number": (frame(position=["0", 0, 0]), "unusable-value", "/frames/pin/position/0",
         "0", "number", "without quotes"),
     "an unknown form": (placement(pose={"position": [0, 0, 0], "orientation": {"form": "rpy",

@@ -173,6 +173,9 @@ async def test_refused(stocked: httpx.AsyncClient, name: str) -> None:
     assert (entry["pointer"], entry["in"]) == (pointer, "body")
     assert say in entry["say"], entry
     assert way_out in entry["way_out"], entry
+    for _ in range(2):  # from then on its words are known
+        again = await sent(stocked, "/v1/frames", {**GOOD, **changed})
+        assert only_entry(again, code, 422) == entry
 
 
 async def test_the_good_one_is_good(stocked: httpx.AsyncClient) -> None:

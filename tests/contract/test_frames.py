@@ -9,7 +9,7 @@ import httpx
 import numpy as np
 import pytest
 
-from service.wire.frames import FramesRequest
+from service.wire.frames_request import FramesRequest
 from tests.made_relations import LONG, anywhere, body_of
 
 pytestmark = pytest.mark.anyio

@@ -64,7 +64,7 @@ def relative(frames: np.ndarray) -> np.ndarray:
 
 def in_frame_0(network: RandomNetwork, graph: FrameGraph, found: Estimate) -> np.ndarray:
     names = [f"frame-{k}" for k in range(len(network.frame_in_hall))]
-    numbers = graph.numbers_of(names)
+    numbers = graph.connections.numbers_of(names)
     return found.pose_between(numbers, np.full_like(numbers, numbers[0]))
 
 
@@ -122,7 +122,8 @@ def test_groups_are_estimated_each_for_itself() -> None:
     heights = pose(np.eye(3), [[0, 0, 1.0], [0, 0, 2.0], [0, 0, 1.0], [0, 0, 4.0], [0, 0, 9.0]])
     graph = FrameGraph(["a", "a", "c", "c", "e"], ["b", "b", "d", "d", "world"], heights)
     found = estimate(graph, np.array([1.0, 1, 1, 0.5, 1]), np.ones(5))
-    of, within = graph.numbers_of(["a", "c", "e"]), graph.numbers_of(["b", "d", "world"])
+    ends = ["a", "c", "e"], ["b", "d", "world"]
+    of, within = (graph.connections.numbers_of(names) for names in ends)
     heights_found = found.pose_between(of, within)[:, 2, 3]
     np.testing.assert_allclose(heights_found, [1.5, (1 + 4 * 4) / 5, 9], rtol=0, atol=1e-12)
     assert found.freedom == 12

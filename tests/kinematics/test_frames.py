@@ -8,10 +8,11 @@ from typing import Any
 import numpy as np
 import pytest
 
-from kinematics import frames
+from kinematics import connections
 from kinematics.errors import KinematicsError, NotConnected, TooLongWays, UnknownFrame
 from kinematics.frames import FrameGraph
-from kinematics.kernels.frame_poses import loops_closed, ways_found
+from kinematics.kernels.frame_graph import close_loops, shortest_ways
+from kinematics.kernels.frame_poses import loops_walked, poses_along
 from kinematics.kernels.given_poses import write_poses
 from kinematics.orientation_forms import values_of
 from kinematics.pose_batches import poses_as_given
@@ -31,7 +32,7 @@ def chain(*names: str) -> FrameGraph:
 def test_any_pair_is_as_in_truth(seed: int) -> None:
     network = random_network(15, 22, seed=seed)
     graph = network.graph()
-    names = graph.known
+    names = graph.connections.known
     of = [name for name in names for _ in names]
     within = names * len(names)
     ways = graph.ways(of, within)
@@ -39,7 +40,7 @@ def test_any_pair_is_as_in_truth(seed: int) -> None:
     truth = network.frame_in_hall[number]
     expected = np.linalg.inv(truth)[None, :] @ truth[:, None]
     np.testing.assert_allclose(ways.poses.reshape(expected.shape), expected, rtol=0, atol=1e-12)
-    for way, path in enumerate(graph.frames_of(ways)):
+    for way, path in enumerate(ways.walks.frames):
         assert (path[0], path[-1]) == (within[way], of[way])
         assert len(set(path)) == len(path)
 
@@ -48,8 +49,8 @@ def test_a_frame_in_itself_is_the_identity_and_has_no_steps() -> None:
     graph = chain("table", "lamp")
     ways = graph.ways(["lamp"], ["lamp"])
     assert np.array_equal(ways.poses[0], np.eye(4))
-    assert graph.frames_of(ways) == [["lamp"]]
-    assert ways.steps_of(0) == []
+    assert ways.walks.frames == [["lamp"]]
+    assert ways.walks.steps_of(0) == []
 
 
 def test_a_loop_starts_at_the_world_or_else_where_it_was_named_first() -> None:
@@ -57,9 +58,9 @@ def test_a_loop_starts_at_the_world_or_else_where_it_was_named_first() -> None:
         ["lamp", "world", "lamp"], ["table", "lamp", "world"], np.array([UP] * 3)
     )
     assert with_world.names == ["world", "table", "lamp"]
-    assert with_world.frames_of(with_world.loops) == [["world", "lamp", "world"]]
+    assert with_world.loops.walks.frames == [["world", "lamp", "world"]]
     without = FrameGraph(["b", "c", "b"], ["a", "b", "c"], np.array([UP] * 3))
-    assert without.frames_of(without.loops) == [["b", "c", "b"]]
+    assert without.loops.walks.frames == [["b", "c", "b"]]
     # b in c is a metre up, and so is c in b: around the loop that makes two.
     assert [float(off[0]) for off in without.closures] == [2.0, 0.0]
 
@@ -67,7 +68,7 @@ def test_a_loop_starts_at_the_world_or_else_where_it_was_named_first() -> None:
 def test_a_pair_given_twice_is_a_loop_of_two_and_the_first_is_taken() -> None:
     heights = pose(np.eye(3), [[0, 0, 1.0], [0, 0, 1.25], [0, 0, -1.5]])
     graph = FrameGraph(["a", "a", "b"], ["b", "b", "a"], heights)
-    assert graph.frames_of(graph.loops) == [["b", "a", "b"]] * 2
+    assert graph.loops.walks.frames == [["b", "a", "b"]] * 2
     position, angle = graph.closures
     np.testing.assert_allclose(np.sort(position), [0.25, 0.5], rtol=0, atol=1e-15)
     assert angle.tolist() == [0, 0]
@@ -76,9 +77,9 @@ def test_a_pair_given_twice_is_a_loop_of_two_and_the_first_is_taken() -> None:
 
 def test_no_relations_at_all() -> None:
     graph = FrameGraph([], [], np.empty((0, 4, 4)))
-    assert graph.known == []
+    assert graph.connections.known == []
     assert len(graph.loops) == 0
-    assert graph.frames_of(graph.loops) == []
+    assert graph.loops.walks.frames == []
     with pytest.raises(UnknownFrame):
         graph.ways(["world"], ["world"])
 
@@ -133,9 +134,9 @@ def test_turned_loops_are_off_by_another_distance_elsewhere() -> None:
 
 
 def test_ways_and_loops_too_long_to_be_told(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(frames, "MOST_STEPS_TOLD", 20)
+    monkeypatch.setattr(connections, "MOST_STEPS_TOLD", 20)
     line = chain(*(f"shelf-{k}" for k in range(12)))
-    assert len(line.ways(["shelf-9"] * 2, ["shelf-0"] * 2).steps) == 18
+    assert len(line.ways(["shelf-9"] * 2, ["shelf-0"] * 2).walks.steps) == 18
     with pytest.raises(TooLongWays, match="the ways asked for take 22 relations") as caught:
         line.ways(["shelf-11"] * 9, ["shelf-0"] * 9)
     assert caught.value.code == "too-large"
@@ -144,10 +145,26 @@ def test_ways_and_loops_too_long_to_be_told(monkeypatch: pytest.MonkeyPatch) -> 
         FrameGraph(of, within, np.tile(UP, (24, 1, 1)))
 
 
+def test_what_follows_from_names_is_kept_of_few_relations() -> None:
+    few, many = ([f"n{k}" for k in range(count + 1)] for count in (100, 101))
+    assert chain(*few).connections is chain(*few).connections
+    assert chain(*many).connections is not chain(*many).connections
+    first, second = chain(*few), FrameGraph(few[1:], few[:-1], np.tile(UP @ UP, (100, 1, 1)))
+    for ends in ((["n3"], ["n1"]), (["n9"], ["n1"]), (["n3"], ["n1"]), (["n1"], ["n3"])):
+        for graph, height in ((first, 1.0), (second, 2.0)):
+            ways = graph.ways(*ends)
+            risen = [int(ends[side][0][1:]) for side in (0, 1)]
+            assert ways.poses[0, 2, 3] == height * (risen[0] - risen[1])
+            assert (ways.walks.frames[0][0], ways.walks.frames[0][-1]) == (ends[1][0], ends[0][0])
+    for _ in range(2):
+        with pytest.raises(UnknownFrame):
+            first.ways(["n3"], ["m1"])
+
+
 def test_kernels_are_compiled_once_and_ahead() -> None:
     """Nothing is compiled anew, which takes seconds, whatever network or form comes first."""
     warm_up()
-    kernels: tuple[Any, ...] = (loops_closed, ways_found, write_poses)
+    kernels: tuple[Any, ...] = (close_loops, shortest_ways, poses_along, loops_walked, write_poses)
     before = [len(kernel.signatures) for kernel in kernels]
     for form in ("quaternion-xyzw", "rotation-vector", "zyz-current"):
         values = values_of(form, np.tile(np.eye(3), (4, 1, 1)))
@@ -156,4 +173,5 @@ def test_kernels_are_compiled_once_and_ahead() -> None:
         graph = FrameGraph(["a", "b"], ["b", "c"], given[:, ::-1][:, ::-1])
         graph.ways([], [])
         graph.ways(["a", "c"], ["c", "a"])
-    assert [len(kernel.signatures) for kernel in kernels] == before == [1, 1, 1]
+        assert len(graph.loops) == 0
+    assert [len(kernel.signatures) for kernel in kernels] == before == [1] * 5

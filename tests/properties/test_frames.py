@@ -43,7 +43,7 @@ def networks(draw: st.DrawFn, most_more: int = 12) -> tuple[FrameGraph, np.ndarr
         of_in.reshape(-1, 4, 4),
     )
     number = [int(name[1:]) for name in graph.names[1:]]
-    return graph, np.concatenate([np.eye(4)[None], truth[number]]), len(graph.known)
+    return graph, np.concatenate([np.eye(4)[None], truth[number]]), len(graph.connections.known)
 
 
 @FEW
@@ -72,7 +72,7 @@ def test_loops_are_as_many_as_they_must_be_and_close(
     graph, _, known = drawn
     groups = len(set(graph.group[1:].tolist()))
     assert len(graph.loops) == len(graph.inner) - known + groups
-    assert all(path[0] == path[-1] for path in graph.frames_of(graph.loops))
+    assert all(path[0] == path[-1] for path in graph.loops.walks.frames)
     position, angle = graph.closures
     assert position.max(initial=0.0) < 1e-12
     assert angle.max(initial=0.0) < 1e-13

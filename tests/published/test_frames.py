@@ -65,7 +65,7 @@ def only_loop(case: Case) -> tuple[FrameGraph, Ways]:
 def test_loop(case: Case) -> None:
     graph, loops = only_loop(case)
     expected = case["expected"]["loop"]
-    assert graph.frames_of(loops) == [expected["cycle"]]
+    assert loops.walks.frames == [expected["cycle"]]
     position, angle = (float(off[0]) for off in graph.closures)
     at_world = expected.get("translation_error", expected.get("translation_error_started_at_world"))
     assert position == pytest.approx(at_world, abs=expected["compare_abs"])
@@ -85,7 +85,7 @@ def test_the_distance_depends_on_where_a_turned_loop_starts() -> None:
     )
     expected = case["expected"]["loop"]
     position, angle = (float(off[0]) for off in graph.closures)
-    assert graph.frames_of(graph.loops)[0][0] == "world"
+    assert graph.loops.walks.frames[0][0] == "world"
     started_at_part = expected["translation_error_started_at_part"]
     assert position == pytest.approx(started_at_part, abs=expected["compare_abs"])
     assert angle == pytest.approx(expected["rotation_error"], abs=expected["compare_abs"])

@@ -1,13 +1,18 @@
 """Which arm, tool, frame, units and task a question means."""
 
+import gc
+import weakref
 from typing import Any
 
+import numpy as np
 import pytest
 
+from kinematics.arm import Arm
 from kinematics.errors import KinematicsError, ToolNotSaid, UnknownFrame, UnknownTool
-from service.convert import UNITS
+from service.convert import UNITS, joint_values_in
 from service.errors import ServiceError, UnknownArm, UnknownRevision
 from service.operations.arms import Arms
+from service.operations.poses import pose_item
 from service.operations.questions import (
     meant_arm,
     meant_frame,
@@ -154,3 +159,23 @@ def test_what_is_judged_by_is_prepared_once_per_arm_tool_and_task(
     ):
         assert other is not first
     assert prepared({**document, "rows": []}) is None
+
+
+@pytest.mark.parametrize(("frames", "kept"), [(4, True), (1200, False)])
+def test_a_whole_arm_is_kept_only_if_its_words_are_few(
+    arms: Arms[ReadArm], document: dict[str, Any], frames: int, kept: bool
+) -> None:
+    tray = document["frames"]["tray"]
+    many = {f"tray-{place}": {**tray, "number": None} for place in range(frames)}
+
+    def answered() -> weakref.ref[Arm]:
+        question = question_of(arms, asked({**document, "frames": many}), "matrix")
+        # All that is worked out once for an arm has been: scales, limits, what it is judged by.
+        assert pose_item(question, [0.1, 9.0]).items[0]["code"] == 4
+        assert list(joint_values_in(question.arm, MM, np.array([90.0, 0.0]))) == [np.pi / 2, 0]
+        return weakref.ref(question.arm)
+
+    first, again = answered(), answered()
+    gc.collect()
+    assert (again() is not None) is kept
+    assert first() is again()

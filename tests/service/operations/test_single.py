@@ -8,7 +8,12 @@ import pytest
 from kinematics.errors import KinematicsError, UnknownFrame, UnknownTool
 from service.errors import DigestDiffers, ServiceError, UnknownArm, UnknownRevision
 from service.operations.arms import Arms
-from service.operations.single import joint_count, single_jacobian, single_pose
+from service.operations.single import (
+    _question_kept,
+    joint_count,
+    single_jacobian,
+    single_pose,
+)
 from service.storage.ports import Head
 from service.wire import models
 from service.wire.arms import ReadArm
@@ -152,3 +157,10 @@ def test_how_many_joints_an_arm_takes(arms: Arms[ReadArm]) -> None:
     assert joint_count(arms, "two-turns") == 2
     assert joint_count(arms, "no-such-arm") == 0
     assert joint_count(arms, "no such name") == 0
+
+
+def test_nothing_is_kept_of_a_question_in_many_words(arms: Arms[ReadArm]) -> None:
+    before = _question_kept.cache_info()
+    for _ in range(2):
+        assert pose(arms, tool="3".zfill(600), is_kept=False).tool_number == 3
+    assert _question_kept.cache_info() == before

@@ -79,6 +79,18 @@ def test_joint_values(parameters: dict[str, str], joints: list[float], names: li
     assert joints_of(**parameters) == (joints, names)
 
 
+def test_what_is_asked_in_the_same_few_words_is_one_question() -> None:
+    tool = dict.fromkeys(("tx", "ty", "tz", "tr1", "tr2", "tr3"), f"-{12345.678901234567}")
+    words = {**tool, "frame": "tray", "units": "mm-deg", "revision": "4", "expect": "0af70af7"}
+    assert asked(q="1", tag="1", **words) is asked(q="2", tag="2", **words)
+    assert asked(q="1", **words).is_kept
+    # As many zeros as a query holds may stand before a number, and what was read is the same.
+    long = asked(q="1", revision="4".zfill(60_000))
+    assert (long.revision, long.is_kept) == (4, False)
+    assert long is not asked(q="1", revision="4".zfill(60_000))
+    assert not single_question("a" * 600, {}, "json").is_kept
+
+
 def test_joint_values_that_cannot_be_told() -> None:
     assert refusal(UnusableValue, q="1", q1="1").where == ("q1",)
     assert refusal(MissingField, q2="1").where == ("q1",)

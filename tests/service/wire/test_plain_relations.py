@@ -12,7 +12,8 @@ from kinematics.errors import KinematicsError
 from kinematics.orientation_forms import FORMS, values_of
 from service.convert import UNITS, orientation_out
 from service.errors import DuplicateKey, ServiceError, TooLarge, Unparseable
-from service.wire.frames import FramesBody, FramesRequest, _one_by_one
+from service.wire.frames import FramesBody, _one_by_one
+from service.wire.frames_request import FramesRequest
 from service.wire.plain_relations import plain_of, plain_relations
 from tests.kinematics.networks import random_network
 

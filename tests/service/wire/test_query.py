@@ -72,7 +72,17 @@ def test_not_finite_has_its_own_code(text: str) -> None:
     assert code_of(caught.value) == ("not-finite", 102, 422)
 
 
-@pytest.mark.parametrize(("text", "value"), [("12", 12), ("+12", 12), (" 12", 12), ("-007", -7)])
+MANY_ZEROS = "0" * 5000
+"""More than the interpreter reads of an integer, with or without digits that count."""
+
+
+@pytest.mark.parametrize(
+    ("text", "value"),
+    [
+        *[("12", 12), ("+12", 12), (" 12", 12), ("-007", -7), ("-0", 0)],
+        *[(MANY_ZEROS, 0), (f"-{MANY_ZEROS}12", -12), (f"+{MANY_ZEROS}{10**17}", 10**17)],
+    ],
+)
 def test_whole_numbers(text: str, value: int) -> None:
     assert whole_number(text, "tag") == value
 
