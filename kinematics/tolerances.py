@@ -205,6 +205,12 @@ ESTIMATE_SETTLED = 1e-8
 """Length of the last step of an estimate over its own standard deviation: no digit that means
 anything still changes."""
 
+SDS_APART = 1e5
+"""Ratio of standard deviations, of positions or of angles, up to which all weigh in one estimate."""
+
+ROUNDING_AMPLIFIED = 4e12
+"""Condition number of the scaled normal equations beyond which an estimate has not converged."""
+
 RELATION_WRONG = 22.457744484825323
 """Reduction of the weighted sum of squares, when a relation is left out, beyond which it is more
 than chance: the 0.999 quantile of chi-square with the six numbers of a relation. Baarda, A Testing

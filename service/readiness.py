@@ -7,6 +7,7 @@ kernels. Left out: which requests need them (routes/direct.py).
 
 import asyncio
 import gc
+import logging
 import subprocess
 import sys
 import threading
@@ -16,7 +17,12 @@ from time import monotonic
 
 from kinematics.warm_up import POSTURES, RELATIONS, to_be_compiled, warm_up
 
+_LOG = logging.getLogger(__name__)
+
 _LONG_S = 1.0
+_LONGEST_S = 120.0
+"""Then this process compiles for itself, whatever keeps the other one."""
+
 _COMPILING = "  compiling for this machine, some seconds; the first questions wait for it"
 
 
@@ -50,6 +56,7 @@ class Readiness:
         self.postures, self.relations = Kernels(POSTURES), Kernels(RELATIONS)
         self._compiling: list[subprocess.Popen[bytes]] = []
         self._stopped = False
+        self._lock = threading.Lock()
 
     def prepare(self) -> None:
         """Begin to get the kernels ready, in a daemon thread: a stop does not wait for it."""
@@ -59,9 +66,10 @@ class Readiness:
 
     def stop(self) -> None:
         """End what compiles, and leave no more to do at the end than there is."""
-        self._stopped = True
-        for process in self._compiling:
-            process.kill()
+        with self._lock:
+            self._stopped = True
+            for process in self._compiling:
+                process.kill()
         # Else the interpreter searches it all for garbage once more as it ends, for 0.5 s.
         gc.freeze()
 
@@ -73,27 +81,34 @@ class Readiness:
         for kernels in (self.postures, self.relations):
             try:
                 self._compile_beside(to_be_compiled(kernels.parts))
+                if self._stopped:
+                    return
                 warm_up(kernels.parts)
                 # What is here now stays: a search for garbage among it would hold up every
                 # answer for 0.1 s.
                 gc.freeze()
+            except Exception:
+                # A question that needs them tries again, and tells what is wrong.
+                _LOG.exception("the kernels for %s are not ready", ", ".join(kernels.parts))
             finally:
                 told.cancel()
-                # Also if it failed: a question then says why.
                 kernels.are_ready_now(loop)
         if monotonic() - started > _LONG_S:
             print(f"  compiled in {monotonic() - started:.1f} s", flush=True)
 
     def _compile_beside(self, parts: Sequence[str]) -> None:
         for part in parts:
-            if self._stopped:
-                return
-            command = [sys.executable, "-m", "kinematics.warm_up", part]
-            with suppress(OSError):
+            with self._lock, suppress(OSError):
+                if self._stopped:
+                    return
                 # What goes wrong there goes wrong here again, and is told here.
                 beside = subprocess.Popen(
-                    command, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL
+                    [sys.executable, "-m", "kinematics.warm_up", part],
+                    stdin=subprocess.DEVNULL,
+                    stdout=subprocess.DEVNULL,
+                    stderr=subprocess.DEVNULL,
                 )
                 self._compiling.append(beside)
         for process in self._compiling:
-            process.wait()
+            with suppress(subprocess.TimeoutExpired):
+                process.wait(_LONGEST_S)

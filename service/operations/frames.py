@@ -3,7 +3,7 @@
 Left out: which relations there are (frame_network.py), how the question arrives.
 """
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Sequence, Set
 from dataclasses import replace
 
 from kinematics.arm_relations import ArmAtJoints
@@ -168,21 +168,44 @@ def _meant_cell(
     """Return the cell that is named, or else the one that the arms stand in."""
     if asked.cell is not None:
         try:
-            return cells.get(asked.cell)
+            stored = cells.get(asked.cell)
         except ServiceError as error:
             if error.code == "unknown-arm":
                 error.status, error.location, error.where = 422, "body", ("cell",)
             raise
-    named = {arm.arm.cell.name: arm.arm.cell.revision for arm in meant if arm.arm.cell is not None}
+        stands = [arm.arm.cell for arm in meant if arm.arm.cell is not None]
+        of_this = {cell.revision for cell in stands if cell.name == asked.cell}
+        _refuse_several(asked.cell, of_this | {stored.record.revision})
+        return stored
+    named = {arm.arm.cell.name for arm in meant if arm.arm.cell is not None}
     if len(named) > 1:
         raise MissingField(
             f"the arms stand in several cells: {', '.join(sorted(named))}",
             where=("cell",),
             way_out='say with "cell" which one is meant',
         )
-    for name, revision in named.items():
-        return cells.get(name, revision)
+    for name in named:
+        revisions = {arm.arm.cell.revision for arm in meant if arm.arm.cell is not None}
+        _refuse_several(name, revisions)
+        return cells.get(name, revisions.pop())
     return None
+
+
+def _refuse_several(cell: str, revisions: Set[int]) -> None:
+    """Refuse arms of which one stands in its cell as it is, another as it was.
+
+    Raises
+    ------
+    UnusableValue
+    """
+    if len(revisions) > 1:
+        told = " and ".join(map(str, sorted(revisions)))
+        raise UnusableValue(
+            f"revisions {told} of cell {cell} would be mixed",
+            where=("arms",),
+            value=sorted(revisions),
+            way_out="ask for revisions of the arms that stand in one revision of the cell",
+        )
 
 
 def _units(

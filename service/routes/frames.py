@@ -60,8 +60,10 @@ async def frames(request: Request) -> Response:
     # Longer ones wait their turn.
     if len(raw) > SHORT_BYTES:
         return await threads.run(answer)
-    # What is short and looks at nothing far away is answered sooner than a thread would begin.
+    # What is short and looks at nothing far away is answered sooner than a thread would begin. With
+    # an escape in it, it may be called by any name.
+    at_once = arms.answers_at_once and cells.answers_at_once
     names_stored = b'"arms"' in raw or b'"cell"' in raw
-    if names_stored and not (arms.answers_at_once and cells.answers_at_once):
+    if b"\\" in raw or b'"estimate"' in raw or (names_stored and not at_once):
         return await run_in_threadpool(answer)
-    return await run_in_threadpool(answer) if b'"estimate"' in raw else answer()
+    return answer()

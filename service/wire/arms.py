@@ -3,7 +3,7 @@
 Left out: storage, and which arm a request means (operations).
 """
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sized
 from dataclasses import dataclass
 from typing import Any
 
@@ -21,7 +21,7 @@ from kinematics.digests import Digests, digests_of
 from kinematics.findings import Finding
 from kinematics.in_cell import InCell
 from kinematics.table import Convention, Coupling, FloatArray, JointKind, Row, Table, Travel
-from kinematics.tolerances import MOST_ROWS, SINGULAR
+from kinematics.tolerances import MOST_PLACED, MOST_ROWS, SINGULAR
 from service.convert import UNITS, Units
 from service.errors import TooLarge, UnusableValue
 from service.storage.ports import CellRevision
@@ -179,6 +179,20 @@ def _refuse_beforehand(given: models.Arm) -> None:
             way_out=f"at most {MOST_ROWS} rows",
             status=422,
         )
+    listed: dict[str, Sized] = {
+        "tools": given.tools,
+        "frames": given.frames,
+        "combined_travel": given.combined_travel,
+    }
+    for field, things in listed.items():
+        if len(things) > MOST_PLACED:
+            raise TooLarge(
+                f"the arm has {len(things)} entries in {field}",
+                where=(field,),
+                value=len(things),
+                way_out=f"at most {MOST_PLACED}",
+                status=422,
+            )
     for kind, names in (("tools", given.tools), ("frames", given.frames)):
         for name in names:
             if name in RESERVED:

@@ -4,7 +4,8 @@ Shapes and types only; whether an arm makes sense is the core's word (wire/arms.
 """
 
 import marshal
-from functools import lru_cache
+import threading
+from collections import OrderedDict
 from typing import Annotated, Any, Literal
 
 from pydantic import (
@@ -214,40 +215,52 @@ def _tool_kind(value: object) -> str:
     return "Pose" if isinstance(value, dict) else "str"
 
 
-class _Words:
-    """What a body says of an arm, told apart by every letter and digit of it."""
+class _KnownArms:
+    """Arms that came whole and were checked, by every letter and digit of what was said.
 
-    def __init__(self, said: object, check: ModelWrapValidatorHandler[Arm]) -> None:
-        self.said, self.check = said, check
-        # Version 2 writes the same bytes for the same values; NaN, 1, 1.0 and true all differ.
-        self._key = marshal.dumps(said, 2)  # type: ignore[arg-type]  # refuses what it cannot
+    Whoever has not come for longest goes first. Nothing else of a request is held.
+    """
 
-    @property
-    def are_few(self) -> bool:
-        """Whether they are few enough to be kept."""
-        return len(self._key) <= MOST_WORDS_KEPT
+    def __init__(self, most: int) -> None:
+        self._most = most
+        self._arms: OrderedDict[bytes, Arm] = OrderedDict()
+        self._lock = threading.Lock()
 
-    def __hash__(self) -> int:
-        return hash(self._key)
+    def get(self, words: bytes) -> Arm | None:
+        """Return the arm of these words, if it is known."""
+        with self._lock:
+            arm = self._arms.get(words)
+            if arm is not None:
+                self._arms.move_to_end(words)
+            return arm
 
-    def __eq__(self, other: object) -> bool:
-        return isinstance(other, _Words) and self._key == other._key
+    def keep(self, words: bytes, arm: Arm) -> Arm:
+        """Keep an arm; return the one that was quicker, if there is one."""
+        with self._lock:
+            arm = self._arms.setdefault(words, arm)
+            if len(self._arms) > self._most:
+                self._arms.popitem(last=False)
+            return arm
 
 
-@lru_cache(maxsize=WHOLE_ARMS_KEPT)
-def _checked_once(words: _Words) -> Arm:
-    arm = words.check(words.said)
-    arm._is_kept = True
-    return arm
+_known_arms = _KnownArms(WHOLE_ARMS_KEPT)
 
 
 def _in_the_same_words(said: object, check: ModelWrapValidatorHandler[Arm]) -> Arm:
     """Return the very same model for an arm that comes in the same few words again."""
     try:
-        words = _Words(said, check)
+        # Version 2 writes the same bytes for the same values; NaN, 1, 1.0 and true all differ.
+        words = marshal.dumps(said, 2)  # type: ignore[arg-type]  # refuses what it cannot
     except ValueError:  # nested too deeply, or a value that no JSON holds
         return check(said)
-    return _checked_once(words) if words.are_few else check(said)
+    if len(words) > MOST_WORDS_KEPT:
+        return check(said)
+    known = _known_arms.get(words)
+    if known is not None:
+        return known
+    arm = check(said)
+    arm._is_kept = True
+    return _known_arms.keep(words, arm)
 
 
 AnyArm = Annotated[

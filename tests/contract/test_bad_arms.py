@@ -9,6 +9,7 @@ from typing import Any
 import httpx
 import pytest
 
+from kinematics.tolerances import MOST_PLACED
 from tests.contract.refusals import (
     AT_ORIGIN,
     ROW,
@@ -218,3 +219,16 @@ async def test_all_that_is_wrong_is_said_at_once(client: httpx.AsyncClient) -> N
 
 def test_the_lists_are_whole() -> None:
     assert (len(ARMS), len(UNKNOWN_FIELDS)) == (53, 9)
+
+
+@pytest.mark.parametrize("field", ["tools", "frames", "combined_travel"])
+async def test_an_arm_has_no_more_of_anything_than_a_cell(
+    client: httpx.AsyncClient, field: str
+) -> None:
+    many: object = {f"at-{number}": AT_ORIGIN for number in range(MOST_PLACED + 1)}
+    if field == "combined_travel":
+        many = [{"ratios": {"1": 1}, "travel": [0, 1]}] * (MOST_PLACED + 1)
+    answer = await client.post("/v1/arms", json=arm(**{field: many}))
+    assert answer.status_code == 422
+    problem = answer.json()
+    assert (problem["code"], problem["errors"][0]["pointer"]) == ("too-large", f"/{field}")

@@ -3,12 +3,14 @@
 Left out: each bad body by itself (test_bad_frames) and whether poses are right (published, core).
 """
 
+import threading
 from typing import Any
 
 import httpx
 import numpy as np
 import pytest
 
+from service.routes import frames as frames_route
 from service.wire.frames_request import FramesRequest
 from tests.made_relations import LONG, anywhere, body_of
 
@@ -237,6 +239,42 @@ async def test_an_arm_brings_its_cell_along(stocked: httpx.AsyncClient) -> None:
     answer = await ask(stocked, body)
     assert answer["cell"]["revision"] == 2
     assert answer["answers"][0]["pose"]["position"][1] == pytest.approx(2500)
+
+
+async def test_revisions_of_a_cell_are_not_mixed(stocked: httpx.AsyncClient) -> None:
+    moved = {**CELL, "frames": {**CELL["frames"], "bench": at(0, 2500, 0)}}
+    await stocked.put("/v1/cells/hall", json=moved, headers={"If-Match": "*"})
+    then = {"arm": {"name": "porter", "revision": 1}}
+    whole = {k: v for k, v in ARM.items() if k != "base"}
+    now = {"arm": {**whole, "name": "carrier", "cell": "hall"}}
+    find = [pair("bench", "world")]
+    for arms in ([then, now], [now, then]):
+        answer = await stocked.post("/v1/frames", json={"arms": arms, "find": find})
+        assert answer.status_code == 422, answer.text
+        assert answer.json()["errors"][0]["pointer"] == "/arms"
+    answer = await stocked.post("/v1/frames", json={"arms": [then], "cell": "hall", "find": find})
+    assert answer.status_code == 422
+    told = await ask(stocked, {"arms": [then], "find": find})
+    assert told["cell"]["revision"] == 1
+
+
+@pytest.mark.parametrize("word", ["estimate", r"\u0065stimate"])
+async def test_an_estimate_is_nothing_for_the_event_loop(
+    client: httpx.AsyncClient, monkeypatch: pytest.MonkeyPatch, word: str
+) -> None:
+    threads: list[object] = []
+    answer = frames_route.frames_answer
+
+    def noted(*given: Any) -> dict[str, object]:
+        threads.append(threading.current_thread())
+        return answer(*given)
+
+    monkeypatch.setattr(frames_route, "frames_answer", noted)
+    body = f'{{"relations": [], "find": [], "units": "m-rad", "{word}": true}}'
+    kind = {"content-type": "application/json"}
+    await client.post("/v1/frames", content=body, headers=kind)
+    assert threads
+    assert threading.current_thread() not in threads
 
 
 async def test_joint_values_are_needed_only_on_the_way(stocked: httpx.AsyncClient) -> None:
