@@ -13,6 +13,7 @@ Location = Literal["body", "query", "path", "header"]
 
 # An error document must stay readable on a controller's display and under its 16 kB budget.
 SHOWN_CHARACTERS = 200
+TOLD_CHARACTERS = 1000
 _SHOWN_ITEMS = 12
 _SHOWN_DEPTH = 4
 _ABSENT = object()
@@ -117,12 +118,15 @@ def shown(value: object) -> object:
 def encodable(text: str) -> str:
     """Return ``text`` without lone surrogates, which JSON can carry and UTF-8 cannot.
 
+    And no longer than is read: a name that was sent may have a hundred thousand letters.
+
     Examples
     --------
     >>> encodable(chr(0xD800) + "a")
     '?a'
     """
-    return text.encode("utf-8", "replace").decode("utf-8")
+    told = text if len(text) <= TOLD_CHARACTERS else text[: TOLD_CHARACTERS - 3] + "..."
+    return told.encode("utf-8", "replace").decode("utf-8")
 
 
 def _below(node: object, step: str | int) -> object:

@@ -40,11 +40,14 @@ class Bulk:
 
     def __init__(self) -> None:
         self.threads = Threads()
+        # Takes a whole turn of seconds: nobody who asks for less is to wait behind it.
+        self.estimates = Threads(1)
         self.worker = WorkerProcess()
 
     def stop(self) -> None:
         """End all work at once."""
         self.threads.stop()
+        self.estimates.stop()
         self.worker.stop()
 
 

@@ -17,10 +17,12 @@ THREADS = 2
 
 
 class Threads:
-    """The threads of one service; ``stop`` ends them after the pieces in hand."""
+    """Some threads of one service; ``stop`` ends them after the pieces in hand."""
 
-    def __init__(self) -> None:
-        self._pool = ThreadPoolExecutor(THREADS, thread_name_prefix="bulk")
+    def __init__(self, count: int = THREADS) -> None:
+        self._pool = ThreadPoolExecutor(count, thread_name_prefix="bulk")
+        self._count = count
+        self._given = 0
         self._stopping = threading.Event()
 
     def refuse_if_stopping(self) -> None:
@@ -33,9 +35,28 @@ class Threads:
         if self._stopping.is_set():
             raise NotAvailable("the service is stopping")
 
-    async def run(self, work: Callable[[], Result]) -> Result:
-        """Return what ``work`` returns, done in one of the threads."""
-        return await asyncio.get_running_loop().run_in_executor(self._pool, work)
+    async def run(self, work: Callable[[], Result], *, most: int | None = None) -> Result:
+        """Return what ``work`` returns, done in one of the threads.
+
+        Parameters
+        ----------
+        most : how much work there may be before this, in hand or waiting.
+
+        Raises
+        ------
+        NotAvailable : there is more.
+        """
+        if most is not None and self._given > most:
+            raise NotAvailable(
+                "others have asked for as long work before",
+                way_out="ask again when it is done",
+                headers={"Retry-After": "5"},
+            )
+        self._given += 1
+        try:
+            return await asyncio.get_running_loop().run_in_executor(self._pool, work)
+        finally:
+            self._given -= 1
 
     async def pieces(
         self, work: Callable[[int, int], Result], count: int, size: int
@@ -54,7 +75,7 @@ class Threads:
                 end = min(begin + size, count)
                 results[place] = await loop.run_in_executor(self._pool, work, begin, end)
 
-        await asyncio.gather(*(take_turns() for _ in range(min(THREADS, len(begins)))))
+        await asyncio.gather(*(take_turns() for _ in range(min(self._count, len(begins)))))
         return [results[place] for place in range(len(begins))]
 
     def stop(self) -> None:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from kinematics.arm import BASE, FLANGE
+from kinematics.arm import BASE, FLANGE, Arm
 from kinematics.arm_relations import LINK, ArmAtJoints, Relation
 from kinematics.cell import Cell
 from kinematics.errors import KinematicsError, NotConnected, UnknownFrame
@@ -145,7 +145,7 @@ def network_of(
     wanted = {*of, *within, *asked}
     for name, arm in at.items():
         links = [link for link in arm.links if f"{name}.{link}" in wanted]
-        told += arm.relations(links, with_base=name not in placed)
+        told += arm.relations(links, with_base=name not in placed or _has_own_base(arm.arm, cell))
     graph = _graph(
         of + [relation[0] for relation in told],
         within + [relation[1] for relation in told],
@@ -162,6 +162,15 @@ def network_of(
         at,
         still,
     )
+
+
+def _has_own_base(arm: Arm, cell: Cell | None) -> bool:
+    """Return whether an arm that a cell places says itself where it stands: then both are known.
+
+    Whether they agree is told by the loop they close.
+    """
+    same = arm.cell is not None and cell is not None and arm.cell.name == cell.name
+    return not same and not np.array_equal(arm.base_in_world, np.eye(4))
 
 
 def _graph(of: Sequence[str], within: Sequence[str], of_in: FloatArray) -> FrameGraph:

@@ -49,7 +49,7 @@ def frames_answer(
     ServiceError, KinematicsError, pydantic.ValidationError : with ``where`` from the body's root.
     """
     asked = body.asked
-    form = checked_form(asked.form or NESTED_FORM)
+    form = checked_form(NESTED_FORM if asked.form is None else asked.form)
     meant = [_meant(arms, entry, number) for number, entry in enumerate(asked.arms)]
     cell = _meant_cell(cells, asked, meant)
     units = _units(asked, meant, cell)

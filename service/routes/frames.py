@@ -8,7 +8,7 @@ from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.bulk.threads import Threads
+from service.bulk.answering import Bulk
 from service.operations.frames import frames_answer
 from service.routes.direct import RelationRoute
 from service.web.document import documented
@@ -22,6 +22,12 @@ from service.wire.query import known_parameters
 from service.wire.worded_alike import SHORT_BYTES
 
 router = APIRouter(route_class=RelationRoute)
+
+_MOST_BYTES = 8_000_000
+"""Of a body: 20 000 relations have some 5 MB."""
+
+_MOST_ESTIMATES = 3
+"""Long ones, in hand and waiting, before the next is asked to come again."""
 
 
 @router.post(
@@ -45,25 +51,27 @@ router = APIRouter(route_class=RelationRoute)
 async def frames(request: Request) -> Response:
     """Answer relations between frames."""
     known_parameters(request, ())
-    raw = await read_bytes(request, JSON)
+    raw = await read_bytes(request, JSON, most=_MOST_BYTES)
     arms, cells = request.app.state.arms, request.app.state.cells
-    threads: Threads = request.app.state.bulk.threads
+    bulk: Bulk = request.app.state.bulk
 
     def answer() -> Response:
         body = FramesBody(raw)
         try:
-            return json_answer(frames_answer(arms, cells, body, threads.refuse_if_stopping))
+            return json_answer(frames_answer(arms, cells, body, bulk.threads.refuse_if_stopping))
         except Exception:
             request.state.json_body = body.document
             raise
 
-    # Longer ones wait their turn.
+    # With an escape in it, it may be called by any name.
+    may_estimate = b"\\" in raw or b'"estimate"' in raw
     if len(raw) > SHORT_BYTES:
-        return await threads.run(answer)
-    # What is short and looks at nothing far away is answered sooner than a thread would begin. With
-    # an escape in it, it may be called by any name.
+        if may_estimate:
+            return await bulk.estimates.run(answer, most=_MOST_ESTIMATES)
+        return await bulk.threads.run(answer)
+    # What is short and looks at nothing far away is answered sooner than a thread would begin.
     at_once = arms.answers_at_once and cells.answers_at_once
     names_stored = b'"arms"' in raw or b'"cell"' in raw
-    if b"\\" in raw or b'"estimate"' in raw or (names_stored and not at_once):
+    if may_estimate or (names_stored and not at_once):
         return await run_in_threadpool(answer)
     return answer()

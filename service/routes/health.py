@@ -10,6 +10,7 @@ from fastapi import APIRouter
 from starlette.requests import Request
 from starlette.responses import PlainTextResponse, Response
 
+from service.errors import NotAvailable
 from service.metrics import MEDIA_TYPE, Metrics
 from service.routes.direct import DirectRoute
 from service.web.document import documented
@@ -63,12 +64,18 @@ async def livez(request: Request) -> Response:
     "/readyz",
     methods=["GET", "HEAD"],
     openapi_extra=documented(
-        "Ready", "The database answers too.", answer=_STATE, statuses=[422, 503], examples="readyz"
+        "Ready",
+        "The database answers too, and the kernels are compiled.",
+        answer=_STATE,
+        statuses=[422, 503],
+        examples="readyz",
     ),
 )
 async def readyz(request: Request) -> Response:
-    """Answer 503 while the database does not answer."""
+    """Answer 503 while the database does not answer, or kernels are still being compiled."""
     known_parameters(request, ())
+    if not request.app.state.readiness.relations.are_ready:
+        raise NotAvailable("kernels are being compiled", headers={"Retry-After": "2"})
     await asyncio.to_thread(request.app.state.storage.ping)
     return json_answer({"state": "ready"}, headers=_NOT_KEPT)
 

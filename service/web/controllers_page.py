@@ -135,6 +135,10 @@ CR LF at the end. The line has the same length whatever it says, also when it is
 refused with code 113. A Jacobian comes row by row: <code>/jacobian?row=1&amp;format=txt</code> to
 <code>row=6</code>, for vx vy vz wx wy wz; in place of x to form there is one field of {width}
 characters for each joint.</p>
+<p>One frame in another has the same line:
+<code>/v1/arms/housing-loader/relation?of=gripper&amp;in=fixture-a&amp;q=...</code>; there
+<code>tool_no</code> and <code>frame_no</code> are the numbers of <code>of</code> and
+<code>in</code>, and <code>state</code> is none.</p>
 <h2 id="orientation">An orientation in another form</h2>
 <pre>{turning}
 {turned}</pre>

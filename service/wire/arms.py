@@ -3,7 +3,7 @@
 Left out: storage, and which arm a request means (operations).
 """
 
-from collections.abc import Mapping, Sized
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -171,26 +171,15 @@ def _setup_document(arm: Arm, units: Units) -> dict[str, Any]:
 
 
 def _refuse_beforehand(given: models.Arm) -> None:
-    if len(given.rows) > MOST_ROWS:
-        raise TooLarge(
-            f"the table has {len(given.rows)} rows",
-            where=("rows",),
-            value=len(given.rows),
-            way_out=f"at most {MOST_ROWS} rows",
-            status=422,
-        )
-    listed: dict[str, Sized] = {
-        "tools": given.tools,
-        "frames": given.frames,
-        "combined_travel": given.combined_travel,
-    }
-    for field, things in listed.items():
-        if len(things) > MOST_PLACED:
+    most = {"rows": MOST_ROWS} | dict.fromkeys(("tools", "frames", "combined_travel"), MOST_PLACED)
+    for field, limit in most.items():
+        count = len(getattr(given, field))
+        if count > limit:
             raise TooLarge(
-                f"the arm has {len(things)} entries in {field}",
+                f"the table has {count} rows" if field == "rows" else f"{count} entries in {field}",
                 where=(field,),
-                value=len(things),
-                way_out=f"at most {MOST_PLACED}",
+                value=count,
+                way_out=f"at most {limit} {'rows' if field == 'rows' else 'entries'}",
                 status=422,
             )
     for kind, names in (("tools", given.tools), ("frames", given.frames)):

@@ -15,9 +15,9 @@ from starlette.requests import ClientDisconnect, Request
 from service.errors import DuplicateKey, RequestTimeout, TooLarge, Unparseable, WrongMediaType
 from service.settings import Settings
 
-MOST_PARSED = 4_000_000
-"""Bytes of a body that is parsed in one go, which holds up everybody else for some 50 ms. Documents
-have some kilobytes; what may be longer has ways of its own (bulk)."""
+MOST_PARSED = 1_000_000
+"""Bytes of a body that is parsed in one go, which holds up everybody else, for 0.1 s if it is all
+keys. Documents have some kilobytes; what may be longer has ways of its own (bulk)."""
 
 # A body may take its stall limit and then as long as a slow plant link needs: whoever sends one
 # byte at a time would otherwise hold a connection for days.
@@ -148,12 +148,17 @@ def _decoded(raw: bytes, text: str, decoder: json.JSONDecoder) -> object:
             json.dumps(body, ensure_ascii=False).encode("utf-8")
     except json.JSONDecodeError as error:
         say = f"not JSON at line {error.lineno}, column {error.colno}: {error.msg}"
-        raise Unparseable(say, value=text[error.pos : error.pos + 20]) from None
+        raise Unparseable(
+            say, value=text[error.pos : error.pos + 20], way_out="mend the JSON at this place"
+        ) from None
     except RecursionError:
-        raise Unparseable("not JSON that can be read: nested too deeply") from None
+        raise Unparseable(
+            "not JSON that can be read: nested too deeply", way_out="send fewer levels"
+        ) from None
     except UnicodeEncodeError:
         raise Unparseable(
-            "a string holds half of a surrogate pair, which is no character"
+            "a string holds half of a surrogate pair, which is no character",
+            way_out="send the character itself, in UTF-8",
         ) from None
     except ValueError:
         # The interpreter refuses integers of more than some thousand digits.

@@ -4,7 +4,6 @@ Thousands of them are read in milliseconds; whatever cannot be read so is left t
 which says what is wrong and where. Left out: that way (frames.py).
 """
 
-import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from itertools import chain
@@ -261,7 +260,7 @@ def _array(rows: Sequence[object], shape: tuple[int, ...]) -> FloatArray | None:
         numbers = np.fromiter(cells, np.float64, len(rows) * prod(shape))
     except OverflowError:  # an integer of more than 308 digits
         return None
-    if not math.isfinite(numbers.sum()):
+    if not np.isfinite(numbers).all():
         return None
     array: FloatArray = numbers.reshape(len(rows), *shape)
     return array

@@ -5,7 +5,6 @@ words is found once and kept; of each further body only the numbers are read. Le
 else a body may hold, which is read as a whole (frames.py), and numbers that cannot be used.
 """
 
-import math
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -129,7 +128,7 @@ def worded_alike(raw: bytes) -> WordedAlike | None:
     except orjson.JSONDecodeError:
         return None
     numbers = np.fromiter(listed, np.float64, len(listed))
-    return WordedAlike(wording, numbers) if math.isfinite(numbers.sum()) else None
+    return WordedAlike(wording, numbers) if np.isfinite(numbers).all() else None
 
 
 @lru_cache(maxsize=WORDINGS_KEPT)
