@@ -123,12 +123,13 @@ class BlockMatrix:
         whole[self.pattern.rows, :, self.pattern.columns, :] = self.blocks
         return whole.reshape(self.size, self.size)
 
-    def solver(self, accuracy: float) -> Solve:
+    def solver(self, accuracy: float, between: Callable[[], None] = lambda: None) -> Solve:
         """Return what solves the equations for right-hand sides, (size, columns).
 
         Parameters
         ----------
         accuracy : relative size of what conjugate gradients may leave; factors leave rounding.
+        between : called before each step of conjugate gradients; may raise to give up.
 
         Source
         ------
@@ -158,7 +159,44 @@ class BlockMatrix:
         def by_node(right: FloatArray) -> FloatArray:
             return (nearby @ right.reshape(len(nearby), -1, right.shape[1])).reshape(right.shape)
 
-        return lambda right: _by_steps(lambda trial: whole @ trial, by_node, right, accuracy)
+        def by_matrix(trial: FloatArray) -> FloatArray:
+            between()
+            return np.asarray(whole @ trial)
+
+        return lambda right: _by_steps(by_matrix, by_node, right, accuracy)
+
+    def root_of_inverse(self) -> tuple[FloatArray, float]:
+        """Return W, (size, size), with ``W^T W`` the inverse, and the condition number at most.
+
+        Rows ``a`` of the equations are better multiplied as ``W a``, and squared afterwards, than
+        by the inverse: there what neighbours share is large and cancels. The condition number is
+        that of the matrix with its diagonal scaled to 1, which is what rounding is amplified by.
+
+        Source
+        ------
+        Golub and Van Loan, Matrix Computations, 4.2; Higham, Accuracy and Stability of Numerical
+        Algorithms, 10.1, on scaling.
+
+        Examples
+        --------
+        >>> pattern = BlockPattern(np.array([-1]), np.array([0]), 1)
+        >>> root, most = pattern.normal(np.zeros((1, 1, 1)), np.array([[[4.0]]])).root_of_inverse()
+        >>> root.tolist(), most
+        ([[0.25]], 1.0)
+        """
+        whole = self.dense()
+        diagonal = np.diag(whole)
+        scale = 1.0 / np.sqrt(np.where(diagonal > 0.0, diagonal, 1.0))
+        scaled = whole * scale * scale[:, None]
+        try:
+            root = np.linalg.inv(np.linalg.cholesky(scaled))
+        except np.linalg.LinAlgError:
+            values, axes = np.linalg.eigh(scaled)
+            kept = values > self.size * np.finfo(np.float64).eps * values[-1]
+            root = np.where(kept, axes / np.sqrt(np.where(kept, values, 1.0)), 0.0).T
+            return root * scale, float(np.inf)
+        largest = np.abs(scaled).sum(axis=0).max(initial=0.0)
+        return root * scale, float(largest * (root**2).sum())
 
 
 def inverted(matrices: FloatArray) -> FloatArray:

@@ -16,7 +16,7 @@ from kinematics.kernels.frame_graph import IntArray
 from kinematics.number_checks import FloatArray
 from kinematics.rigidity import nearest_rotation
 from kinematics.rotations import rotation_from_vector
-from kinematics.tolerances import ESTIMATE_SETTLED
+from kinematics.tolerances import ESTIMATE_SETTLED, ROUNDING_AMPLIFIED
 from kinematics.transforms import inverse, pose
 
 MOST_ITERATIONS = 40
@@ -48,9 +48,12 @@ class Estimate:
     sum_of_squares : of all weighted residuals.
     freedom : how many of the 6 numbers of each relation are more than needed.
     rounding : length, in standard deviations, of what rounding alone leaves.
-    settled : whether the last step was small against the uncertainty of the result.
+    settled : whether the last step, and the slope after it, were small against the uncertainty
+        of the result, and rounding is not amplified so much that they say nothing.
     iterations : steps taken.
-    pattern, linearised : the equations of the last step, for frame_suspects.
+    pattern, linearised : the equations at the end, for frame_suspects.
+    root_of_inverse : of their normal equations, (6 unknown frames, 6 unknown frames); None where
+        these are too many.
     """
 
     frame_in_root: FloatArray
@@ -63,6 +66,7 @@ class Estimate:
     iterations: int
     pattern: BlockPattern
     linearised: Linearised
+    root_of_inverse: FloatArray | None
 
     def pose_between(
         self, of: IntArray | Sequence[int], within: IntArray | Sequence[int]
@@ -93,7 +97,11 @@ def estimate(
     graph : relations and frames.
     position_sd, angle_sd : (relations,), m and rad, positive: standard deviation of each
         coordinate of a relation's position, and of its rotation about each axis.
-    between : called before each step; may raise to give up.
+    between : called before each step, and in long ones; may raise to give up.
+
+    Raises
+    ------
+    OutOfRange : standard deviations differ too much; ``where`` is the relation and the field.
 
     Source
     ------
@@ -111,25 +119,28 @@ def estimate(
     >>> found.pose_between(a, b)[0, 2, 3].round(12)
     np.float64(1.06)
     """
+    weights = Weights(position_sd, angle_sd)
+    weights.refuse_if_far_apart()
     is_root = graph.group == np.arange(len(graph.names))
     unknown = np.where(is_root, -1, np.cumsum(~is_root) - 1)
     pattern = BlockPattern(
         unknown[graph.inner], unknown[graph.outer], int(np.count_nonzero(~is_root))
     )
-    weights = Weights(position_sd, angle_sd)
-    frame_in_root = _start(graph, pattern, unknown, angle_sd)
+    frame_in_root = _start(graph, pattern, unknown, angle_sd, between)
     at = linearised(graph, weights, frame_in_root)
     settled, iterations, bent = pattern.nodes == 0, 0, False
     while not settled and iterations < MOST_ITERATIONS:
         between()
-        step, length = _step(pattern, at, bent=bent)
+        step, length = _step(pattern, at, between, bent=bent)
         lower = _lower(graph, weights, frame_in_root, at, _of_frames(step, unknown))
         iterations += 1
         if lower is None:
             break
         bent = at.sum_of_squares - lower[1].sum_of_squares < NEAR_THE_LEAST * at.sum_of_squares
         frame_in_root, at = lower
-        settled = length <= max(ESTIMATE_SETTLED, weights.rounding(graph, frame_in_root))
+        small = max(ESTIMATE_SETTLED, weights.rounding(graph, frame_in_root))
+        settled = length <= small and _steepest(pattern, at) <= small
+    root_of_inverse, amplified = _amplified(pattern, at, between)
     off = at.residuals.reshape(-1, 2, 3)
     return Estimate(
         frame_in_root=frame_in_root,
@@ -138,15 +149,20 @@ def estimate(
         sum_of_squares=at.sum_of_squares,
         freedom=6 * (len(graph.inner) - pattern.nodes),
         rounding=weights.rounding(graph, frame_in_root),
-        settled=settled,
+        settled=settled and amplified <= ROUNDING_AMPLIFIED,
         iterations=iterations,
         pattern=pattern,
         linearised=at,
+        root_of_inverse=root_of_inverse,
     )
 
 
 def _start(
-    graph: FrameGraph, pattern: BlockPattern, unknown: IntArray, angle_sd: FloatArray
+    graph: FrameGraph,
+    pattern: BlockPattern,
+    unknown: IntArray,
+    angle_sd: FloatArray,
+    between: Callable[[], None],
 ) -> FloatArray:
     """Return rotations to start from, all positions 0: these the first step finds exactly.
 
@@ -162,14 +178,16 @@ def _start(
     held = np.where((unknown < 0)[:, None, None], np.eye(3), 0.0)
     off = of_outer @ held[graph.outer] + of_inner @ held[graph.inner]
     right = -pattern.gathered(np.swapaxes(of_inner, 1, 2) @ off, np.swapaxes(of_outer, 1, 2) @ off)
-    solve = pattern.normal(of_inner, of_outer).solver(CONJUGATE_ACCURACY)
+    solve = pattern.normal(of_inner, of_outer).solver(CONJUGATE_ACCURACY, between)
     transposed = solve(right.reshape(-1, 3)).reshape(-1, 3, 3)
     rotations = nearest_rotation(np.swapaxes(transposed, 1, 2))
     frame_in_root[unknown >= 0, :3, :3] = rotations[unknown[unknown >= 0]]
     return frame_in_root
 
 
-def _step(pattern: BlockPattern, at: Linearised, *, bent: bool) -> tuple[FloatArray, float]:
+def _step(
+    pattern: BlockPattern, at: Linearised, between: Callable[[], None], *, bent: bool
+) -> tuple[FloatArray, float]:
     """Return the step downhill, (unknown frames, 6), and its length in standard deviations.
 
     Where the residuals are large their bend counts too (Newton), unless it leads uphill.
@@ -177,11 +195,36 @@ def _step(pattern: BlockPattern, at: Linearised, *, bent: bool) -> tuple[FloatAr
     downhill = -at.gradient(pattern)
     normal = pattern.normal(at.of_inner, at.of_outer)
     for matrix in [normal + at.bend(pattern), normal] if bent else [normal]:
-        step = matrix.solver(CONJUGATE_ACCURACY)(downhill.reshape(-1, 1)).reshape(-1, 6)
+        solve = matrix.solver(CONJUGATE_ACCURACY, between)
+        step = solve(downhill.reshape(-1, 1)).reshape(-1, 6)
         square = float((step * downhill).sum())
         if square >= 0.0:
             break
     return step, float(np.sqrt(max(square, 0.0)))
+
+
+def _steepest(pattern: BlockPattern, at: Linearised) -> float:
+    """Return the largest slope along one number of one frame.
+
+    It is the step of that number alone, in standard deviations as they were if all else was known:
+    never longer than the whole step, unless the equations were not solved.
+    """
+    diagonal = np.diagonal(pattern.normal(at.of_inner, at.of_outer).diagonal(), axis1=1, axis2=2)
+    return float((np.abs(at.gradient(pattern)) / np.sqrt(diagonal)).max(initial=0.0))
+
+
+def _amplified(
+    pattern: BlockPattern, at: Linearised, between: Callable[[], None]
+) -> tuple[FloatArray | None, float]:
+    """Return the root of the inverse, and by how much the equations amplify rounding.
+
+    Of large networks there is no root, and it is only known that no relation is too far apart.
+    """
+    normal = pattern.normal(at.of_inner, at.of_outer)
+    if not normal.is_small:
+        return None, 0.0
+    between()
+    return normal.root_of_inverse()
 
 
 def _of_frames(step: FloatArray, unknown: IntArray) -> FloatArray:

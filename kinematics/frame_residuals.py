@@ -8,9 +8,11 @@ from dataclasses import dataclass
 import numpy as np
 
 from kinematics.block_system import BlockMatrix, BlockPattern
+from kinematics.errors import OutOfRange
 from kinematics.frames import FrameGraph
 from kinematics.number_checks import FloatArray
 from kinematics.rotations import rotation_vector_of
+from kinematics.tolerances import SDS_APART, USUAL_ANGLE_SD, USUAL_POSITION_SD
 
 ROUNDING = 16 * np.finfo(np.float64).eps
 SERIES_BELOW = 1e-3
@@ -81,6 +83,33 @@ class Weights:
 
     position_sd: FloatArray
     angle_sd: FloatArray
+
+    def refuse_if_far_apart(self) -> None:
+        """Refuse what the normal equations cannot tell: they square ratios.
+
+        Raises
+        ------
+        OutOfRange : of the two furthest apart, that further from the usual one; so never one that
+            was not stated.
+        """
+        for field, sds, usual in (
+            ("position_sd", self.position_sd, USUAL_POSITION_SD),
+            ("angle_sd", self.angle_sd, USUAL_ANGLE_SD),
+        ):
+            if not len(sds) or sds.max() <= sds.min() * SDS_APART * (1.0 + ROUNDING):
+                continue
+            furthest = int(np.argmax(np.abs(np.log(sds / usual))))
+            ratio = sds.max() / sds.min()
+            what = field.partition("_")[0]
+            raise OutOfRange(
+                f"standard deviations of {what}s differ by a factor of {ratio:.2g}, and no more "
+                f"than {SDS_APART:g} can be weighed against each other (those not stated are "
+                "1 mm and 1 mrad, as are those of arms and cells)",
+                where=("relations", furthest, field),
+                value=float(sds[furthest]),
+                way_out=f"give it nearer the others: within a factor of {SDS_APART:g} the larger "
+                "ones give way all the same",
+            )
 
     def rounding(self, graph: FrameGraph, frame_in_root: FloatArray) -> float:
         """Return how long, in standard deviations, a step out of rounding alone may be."""

@@ -6,6 +6,7 @@ redundancy give without solving anew. Left out: two wrong relations at once; lea
 and ask again.
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,6 +21,9 @@ MOST_EXACT = 5
 """Relations of a large network that are held exactly; six more equations are solved for each."""
 
 LEVERAGE_ACCURACY = 1e-5
+
+AT_ONCE = 2e6
+"""Numbers of relations' rows held at once: 16 MB, a hundredth of a second."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -51,12 +55,13 @@ class Suspects:
         return self.most_likely is not None and bool(self.drop[self.most_likely] > RELATION_WRONG)
 
 
-def suspects_of(found: Estimate) -> Suspects:
+def suspects_of(found: Estimate, between: Callable[[], None] = lambda: None) -> Suspects:
     """Return how wrong each relation of an estimate seems, and the most likely one.
 
     Parameters
     ----------
     found : of estimate.
+    between : called now and then; may raise to give up.
 
     Source
     ------
@@ -76,22 +81,25 @@ def suspects_of(found: Estimate) -> Suspects:
     (2, 66.666667)
     """
     relations = len(found.position_residual)
-    normal = found.pattern.normal(found.linearised.of_inner, found.linearised.of_outer)
-    if normal.is_small:
-        leverages = _between_ends(found, inverted(normal.dense()))
+    is_exact = found.root_of_inverse is not None
+    if found.root_of_inverse is not None:
+        leverages = _all_known(found, found.root_of_inverse, between)
+        drop, redundancy = _dropped(found, leverages, np.arange(relations))
     else:
+        between()
+        normal = found.pattern.normal(found.linearised.of_inner, found.linearised.of_outer)
         leverages = _neighbours_known(found, normal)
-    drop, redundancy = _dropped(found, leverages, np.arange(relations))
-    if not normal.is_small:
+        drop, redundancy = _dropped(found, leverages, np.arange(relations))
         worst = np.argsort(drop)[::-1][:MOST_EXACT]
-        drop[worst], redundancy[worst] = _dropped(found, _solved(found, worst), worst)
+        exact = _solved(found, normal, worst, between)
+        drop[worst], redundancy[worst] = _dropped(found, exact, worst)
     largest = float(drop.max(initial=0.0))
     if largest <= found.rounding**2:
-        return Suspects(drop, redundancy, normal.is_small, None, ())
+        return Suspects(drop, redundancy, is_exact, None, ())
     alike = np.flatnonzero(drop >= largest * (1.0 - SUSPECTS_ALIKE))
     weighted = np.linalg.norm(found.linearised.residuals[alike], axis=1)
     most_likely = int(alike[np.argmax(weighted)])
-    return Suspects(drop, redundancy, normal.is_small, most_likely, tuple(alike.tolist()))
+    return Suspects(drop, redundancy, is_exact, most_likely, tuple(alike.tolist()))
 
 
 def _dropped(
@@ -106,17 +114,21 @@ def _dropped(
     return shares.sum(axis=1), np.clip(values, 0.0, 1.0).mean(axis=1)
 
 
-def _between_ends(found: Estimate, covariance: FloatArray) -> FloatArray:
-    """Return all leverages from the covariance of all unknowns."""
+def _all_known(found: Estimate, root: FloatArray, between: Callable[[], None]) -> FloatArray:
+    """Return all leverages from the root of the inverse of the normal equations."""
     pattern, at = found.pattern, found.linearised
-    # A held frame, number -1, has the last row and column: it is known exactly.
-    blocks = np.zeros((pattern.nodes + 1, 6, pattern.nodes + 1, 6))
-    blocks[:-1, :, :-1] = covariance.reshape(pattern.nodes, 6, pattern.nodes, 6)
-    one, other = pattern.one, pattern.other
-    crossed = at.of_inner @ blocks[one, :, other, :] @ np.swapaxes(at.of_outer, 1, 2)
-    at_inner = at.of_inner @ blocks[one, :, one, :] @ np.swapaxes(at.of_inner, 1, 2)
-    at_outer = at.of_outer @ blocks[other, :, other, :] @ np.swapaxes(at.of_outer, 1, 2)
-    return at_inner + at_outer + crossed + np.swapaxes(crossed, 1, 2)
+    # A held frame, number -1, has the last columns: it is known exactly.
+    columns = np.zeros((pattern.nodes + 1, 6, 6 * pattern.nodes))
+    columns[:-1] = root.T.reshape(pattern.nodes, 6, 6 * pattern.nodes)
+    leverages = np.empty_like(at.of_inner)
+    size = max(1, int(AT_ONCE / max(1, 6 * columns.shape[2])))
+    for begin in range(0, len(leverages), size):
+        between()
+        part = slice(begin, begin + size)
+        rows = at.of_inner[part] @ columns[pattern.one[part]]
+        rows += at.of_outer[part] @ columns[pattern.other[part]]
+        leverages[part] = rows @ np.swapaxes(rows, 1, 2)
+    return leverages
 
 
 def _neighbours_known(found: Estimate, normal: BlockMatrix) -> FloatArray:
@@ -136,10 +148,12 @@ def _neighbours_known(found: Estimate, normal: BlockMatrix) -> FloatArray:
     return np.asarray(rows @ inverted(ends.reshape(-1, 12, 12)) @ np.swapaxes(rows, 1, 2))
 
 
-def _solved(found: Estimate, relations: IntArray) -> FloatArray:
+def _solved(
+    found: Estimate, normal: BlockMatrix, relations: IntArray, between: Callable[[], None]
+) -> FloatArray:
     """Return the leverages of a few relations, by solving for each of their rows."""
     pattern, at = found.pattern, found.linearised
-    solve = pattern.normal(at.of_inner, at.of_outer).solver(LEVERAGE_ACCURACY)
+    solve = normal.solver(LEVERAGE_ACCURACY, between)
     right = np.zeros((pattern.nodes + 1, 6, len(relations), 6))
     for place, relation in enumerate(relations.tolist()):
         right[pattern.one[relation], :, place] += at.of_inner[relation].T

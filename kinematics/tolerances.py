@@ -206,10 +206,16 @@ ESTIMATE_SETTLED = 1e-8
 anything still changes."""
 
 SDS_APART = 1e5
-"""Ratio of standard deviations, of positions or of angles, up to which all weigh in one estimate."""
+"""Ratio of standard deviations, of positions or of angles, within one estimate. Normal equations
+square it. Up to here estimates that settle agree with those of an orthogonal factorisation to 1e-6
+of their own deviation, or to the rounding of coordinates where that is more, and redundancies to
+2e-5; at ten times as much, one in seven with all deviations at either end no longer settles. No
+plant has gauges as far apart as 10 nm and 1 mm."""
 
 ROUNDING_AMPLIFIED = 4e12
-"""Condition number of the scaled normal equations beyond which an estimate has not converged."""
+"""Condition number of the normal equations, their diagonal scaled to 1, beyond which an estimate
+has not converged: a thousandth of each step is rounding then. A ring of 200 frames, each 100 m from
+the next, has a tenth of it."""
 
 RELATION_WRONG = 22.457744484825323
 """Reduction of the weighted sum of squares, when a relation is left out, beyond which it is more

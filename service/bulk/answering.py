@@ -14,12 +14,14 @@ from service.bulk.process import WorkerProcess
 from service.bulk.reading import Key, many_of_body, many_of_table, model_of
 from service.bulk.rendering import RENDERINGS, InPieces, Rendering, Stamp, WorkedOut
 from service.bulk.threads import Threads
+from service.bulk.worker import BodyRead
 from service.problems import Problem
-from service.wire.answers import PartsAnswer, json_problem
+from service.wire.answers import FreshAnswer, PartsAnswer, json_problem
 from service.wire.body import media_type_of, parse_json, read_bytes
 from service.wire.controller import wanted_tag
 from service.wire.formats import (
     BODY_TYPES,
+    JSON,
     Format,
     answer_format,
     question_parameters,
@@ -76,6 +78,12 @@ async def answer_many(request: Request, key: Key) -> Response:
         worked_out = await bulk.worker.answer(arms, raw, key, wanted, stamp)
         if isinstance(worked_out, Problem):
             return json_problem(worked_out, request.state.request_id)
+        if isinstance(worked_out, BodyRead):
+            request.state.json_body = worked_out.document
+            asked = model_of(key, worked_out.document)
+            read = partial(many_of_body, arms, key, asked, wanted, worked_out.table)
+            many = await bulk.threads.run(read)
+            return await in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
         return answer_of(worked_out)
     return await _of_body(request, raw, key, wanted, stamp)
 
@@ -102,7 +110,11 @@ async def _of_body(
 
 
 def _at_once(rendering: Rendering) -> Response:
-    return answer_of(rendering.outline().answer([rendering.piece(0, rendering.count)]))
+    piece = rendering.piece(0, rendering.count)
+    whole = rendering.head + piece.content + rendering.tail
+    if rendering.media_type == JSON:
+        return FreshAnswer(whole, JSON)
+    return answer_of(WorkedOut(rendering.media_type, [whole], piece.refused))
 
 
 async def in_pieces(threads: Threads, rendering: InPieces) -> Response:

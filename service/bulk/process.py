@@ -29,7 +29,7 @@ from service.wire.cells import CellAt
 from service.wire.formats import Format
 
 Result = TypeVar("Result")
-Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem]]
+Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem | worker.BodyRead]]
 
 
 class WorkerProcess:
@@ -42,8 +42,8 @@ class WorkerProcess:
 
     async def answer(
         self, arms: Arms[ReadArm], raw: bytes, key: Key, wanted: Format, stamp: Stamp
-    ) -> WorkedOut | Problem:
-        """Return the answer to a JSON body, or why it is refused.
+    ) -> WorkedOut | Problem | worker.BodyRead:
+        """Return the answer to a JSON body, or why it is refused, or the body read.
 
         Raises
         ------
@@ -63,9 +63,11 @@ class WorkerProcess:
         async def begun(pool: ProcessPoolExecutor) -> Outline | Problem:
             return await _asked(pool, worker.begin_conversions, raw, wanted, stamp)
 
-        return await self._in_turn(begun)
+        answer = await self._in_turn(begun)
+        assert not isinstance(answer, worker.BodyRead)
+        return answer
 
-    async def _in_turn(self, begin: Begin) -> WorkedOut | Problem:
+    async def _in_turn(self, begin: Begin) -> WorkedOut | Problem | worker.BodyRead:
         async with self._turn:
             try:
                 return await self._answer(begin)
@@ -85,11 +87,11 @@ class WorkerProcess:
             self._process.kill()
         self._pool = self._process = None
 
-    async def _answer(self, begin: Begin) -> WorkedOut | Problem:
+    async def _answer(self, begin: Begin) -> WorkedOut | Problem | worker.BodyRead:
         pool = self._started()
         try:
             begun = await begin(pool)
-            if isinstance(begun, Problem):
+            if not isinstance(begun, Outline):
                 return begun
             pieces: list[Piece] = await asyncio.gather(
                 *(
@@ -123,7 +125,7 @@ async def _begun(
     wanted: Format,
     stamp: Stamp,
     pool: ProcessPoolExecutor,
-) -> Outline | Problem:
+) -> Outline | Problem | worker.BodyRead:
     """Have a body about postures read, and the stored arm and cell that it names."""
     begun = await _asked(pool, worker.begin, raw, key, wanted, stamp)
     if isinstance(begun, worker.ArmWanted):

@@ -5,16 +5,23 @@ Left out: the arithmetic (the core's).
 
 from collections.abc import Callable, Sequence
 from math import sqrt
+from time import monotonic
 
 import numpy as np
 
+from kinematics.errors import OutOfRange
 from kinematics.frame_estimate import Estimate, estimate
 from kinematics.frame_suspects import Suspects, suspects_of
 from kinematics.tolerances import RELATION_WRONG
 from service.convert import Units, orientation_out
+from service.errors import TooLarge
 from service.operations.frame_network import Network, whole_name
 
 MOST_ALIKE = 20
+
+MOST_SECONDS = 20.0
+"""Of one estimate's work: three times what the largest networks take whose deviations are alike.
+Meanwhile all other long requests share one thread."""
 
 
 def estimate_answer(
@@ -30,9 +37,21 @@ def estimate_answer(
     Parameters
     ----------
     between : called now and then; may raise to give up.
+
+    Raises
+    ------
+    OutOfRange : standard deviations differ too much.
+    TooLarge : with status 422, after MOST_SECONDS.
     """
-    found = estimate(network.graph, network.position_sd, network.angle_sd, between)
-    suspects = suspects_of(found)
+    between = _in_time(between)
+    try:
+        found = estimate(network.graph, network.position_sd, network.angle_sd, between)
+    except OutOfRange as error:
+        is_position = error.where[-1] == "position_sd"
+        sds, unit = (network.position_sd, "m") if is_position else (network.angle_sd, "rad")
+        error.value = units.shortest_out(float(sds[int(error.where[1])]), unit)
+        raise
+    suspects = suspects_of(found, between)
     return {
         "converged": found.settled,
         "iterations": found.iterations,
@@ -43,6 +62,25 @@ def estimate_answer(
         "redundancies_exact": suspects.is_exact,
         "suspect": _suspect(network, suspects),
     }
+
+
+def _in_time(between: Callable[[], None]) -> Callable[[], None]:
+    """Return what gives up when ``between`` does, or when it has taken too long from now."""
+    end = monotonic() + MOST_SECONDS
+
+    def check() -> None:
+        between()
+        if monotonic() > end:
+            raise TooLarge(
+                f"the estimate was given up after {MOST_SECONDS:g} s",
+                where=("estimate",),
+                value=True,
+                way_out="give fewer relations at once, or standard deviations that differ less; "
+                "or ask without estimate",
+                status=422,
+            )
+
+    return check
 
 
 def _poses(

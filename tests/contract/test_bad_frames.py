@@ -7,6 +7,7 @@ from typing import Any
 import httpx
 import pytest
 
+from service.operations import frame_estimates
 from tests.contract.refusals import only_entry, refusal, sent
 from tests.contract.test_frames import ARM, CELL, TURNTABLE, Body, pair, relation
 
@@ -117,6 +118,14 @@ BODIES: dict[str, tuple[Body, str, str, str, str]] = {
         "finite", "finite"),
     "a deviation in text": (stated(position_sd="1"), "unusable-value",
         "/relations/0/position_sd", "number", "quotes"),
+    "deviations of positions too far apart": (
+        {"relations": [relation("a", "b", 0, 0, 0), *stated(position_sd=1e-6)["relations"]],
+         "estimate": True}, "out-of-range", "/relations/1/position_sd",
+        "differ by a factor of 1e+06", "within a factor of 100000"),
+    "deviations of angles too far apart": (
+        {"relations": [relation("lamp", "table", 0, 0, 0, angle_sd=180),
+         relation("lamp", "table", 0, 0, 0, angle_sd=1e-4)], "estimate": True}, "out-of-range",
+        "/relations/0/angle_sd", "differ by a factor of 1.8e+06", "within a factor of 100000"),
     "estimate in text": ({"estimate": "yes"}, "unusable-value", "/estimate", "bool", "true"),
     "an unknown cell": ({"cell": "hull"}, "unknown-arm", "/cell", "no cell 'hull'", "/v1/cells"),
     "an unknown arm": ({"arms": [{"arm": "pickr", "joints": []}]}, "unknown-arm", "/arms/0/arm",
@@ -250,7 +259,29 @@ async def test_contradictions_are_loops_not_refusals(stocked: httpx.AsyncClient)
         assert loop["closure"]["angle"] == pytest.approx(180)
 
 
-@pytest.mark.parametrize("sd", [1e-6, 1e6])
+async def test_deviations_too_far_apart_are_told_as_they_were_given(
+    stocked: httpx.AsyncClient,
+) -> None:
+    given = relation("lamp", "table", 0, 0, 1, angle_sd=1e-7)
+    body: Body = {**GOOD, "relations": [given], "arms": A_PICKER}
+    assert (await sent(stocked, "/v1/frames", body)).status_code == 200  # nothing is weighed
+    answer = await sent(stocked, "/v1/frames", {**body, "estimate": True})
+    entry = only_entry(answer, "out-of-range", 422)
+    assert (entry["pointer"], entry["value"]) == ("/relations/0/angle_sd", 1e-7)
+
+
+async def test_an_estimate_that_takes_too_long(
+    stocked: httpx.AsyncClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(frame_estimates, "MOST_SECONDS", -1.0)
+    answer = await sent(stocked, "/v1/frames", {**GOOD, "estimate": True})
+    entry = only_entry(answer, "too-large", 422)
+    assert (entry["pointer"], entry["in"]) == ("/estimate", "body")
+    assert "fewer relations" in entry["way_out"]
+    assert (await sent(stocked, "/v1/frames", GOOD)).status_code == 200
+
+
+@pytest.mark.parametrize("sd", [1e-5, 1e5])
 async def test_deviations_at_the_edges(stocked: httpx.AsyncClient, sd: float) -> None:
     """What is as good as exact wins, what is as good as unknown loses; nothing breaks."""
     given = [
@@ -267,6 +298,7 @@ def drawn(draw: random.Random) -> Body:
     """Return relations of any size and certainty between few frames."""
     names = [f"f{number}" for number in range(draw.randint(2, 5))]
     angles = [0, 1e-12, math.pi, 1e9 / 2]
+    least = draw.uniform(-8, -3)  # with the usual 1e-3, all within what can be weighed
     relations = []
     for _ in range(draw.randint(1, 9)):
         of, within = draw.sample(names, 2)
@@ -276,7 +308,7 @@ def drawn(draw: random.Random) -> Body:
             "position": [draw.uniform(-size, size) for _ in range(3)],
             "orientation": {"form": "rotation-vector", "values": values},
         }
-        sds = {name: 10 ** draw.uniform(-9, 3) for name in ("position_sd", "angle_sd")}
+        sds = {name: 10 ** draw.uniform(least, least + 5) for name in ("position_sd", "angle_sd")}
         relations.append({**pair(of, within), "pose": pose, **(sds if draw.random() < 0.7 else {})})
     first = relations[0]
     find = [pair(first["of"], first["in"])]

@@ -68,6 +68,44 @@ def test_three_ways_one_solution(way: str, monkeypatch: pytest.MonkeyPatch) -> N
     assert not found[:, 2].any()
 
 
+def test_steps_can_be_given_up(monkeypatch: pytest.MonkeyPatch) -> None:
+    pattern, of_one, of_other = system(60, 150, 5)
+    monkeypatch.setattr(block_system, "MOST_DENSE", 0)
+    monkeypatch.setattr(block_system, "MOST_ENVELOPE", 0)
+    asked: list[int] = []
+
+    def between() -> None:
+        asked.append(1)
+        if len(asked) == 3:
+            raise TimeoutError
+
+    solve = pattern.normal(of_one, of_other).solver(1e-13, between)
+    with pytest.raises(TimeoutError):
+        solve(np.ones((180, 2)))
+    assert len(asked) == 3
+
+
+@pytest.mark.parametrize("scale", [1.0, 1e-6])
+def test_the_root_of_the_inverse(scale: float) -> None:
+    pattern, of_one, of_other = system(12, 25, 1)
+    of_one[3], of_other[3] = of_one[3] * scale, of_other[3] * scale
+    matrix = pattern.normal(of_one, of_other)
+    root, most = matrix.root_of_inverse()
+    whole = matrix.dense()
+    np.testing.assert_allclose(root @ whole @ root.T, np.eye(36), rtol=0, atol=1e-9)
+    size = 1.0 / np.sqrt(np.diag(whole))
+    condition = np.linalg.cond(whole * size * size[:, None])
+    assert condition <= most <= 36**2 * condition
+
+
+def test_a_singular_matrix_has_the_root_of_what_it_tells() -> None:
+    pattern = BlockPattern(np.array([HELD]), np.array([0]), 1)
+    row = np.array([[[1.0, 1.0]]])
+    root, most = pattern.normal(-row, row).root_of_inverse()
+    np.testing.assert_allclose(root.T @ root, np.full((2, 2), 0.25), rtol=0, atol=1e-12)
+    assert most == np.inf
+
+
 def test_a_long_thin_graph_is_told_from_a_well_knit_one() -> None:
     line = BlockPattern(np.arange(-1, 1999), np.arange(2000), 2000)
     knit = random_network(2001, 10_000)
