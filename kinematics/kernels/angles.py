@@ -100,7 +100,6 @@ def rotations_of_angles(
 
     Examples
     --------
-    >>> import numpy as np
     >>> rotations = np.empty((1, 3, 3))
     >>> rotations_of_angles(np.array([[np.pi / 2, 0.0, 0.0]]), 2, 1, 0, rotations)
     >>> rotations[0].round(12) + 0.0

@@ -1,6 +1,6 @@
 """How the kernels are compiled: one set of flags, and a cache where one can be kept.
 
-Left out: when they are compiled (at the first call; the service does it ahead in a thread).
+Left out: when they are compiled (at the first call; the service sees to it ahead).
 """
 
 import hashlib

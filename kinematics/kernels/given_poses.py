@@ -7,6 +7,7 @@ extremes that are returned and asks for those elsewhere.
 import math
 
 from kinematics.kernels.compiler import compiled
+from kinematics.kernels.rotation_matrices import write_rotation
 from kinematics.number_checks import FloatArray
 
 QUATERNION = 0
@@ -73,16 +74,7 @@ def write_poses(
             length = math.sqrt(w * w + x * x + y * y + z * z)
             smallest, largest = min(smallest, length), max(largest, length)
         pose = poses[each]
-        twice = 2.0 / (w * w + x * x + y * y + z * z)
-        pose[0, 0] = 1.0 - twice * (y * y + z * z)
-        pose[0, 1] = twice * (x * y - w * z)
-        pose[0, 2] = twice * (x * z + w * y)
-        pose[1, 0] = twice * (x * y + w * z)
-        pose[1, 1] = 1.0 - twice * (x * x + z * z)
-        pose[1, 2] = twice * (y * z - w * x)
-        pose[2, 0] = twice * (x * z - w * y)
-        pose[2, 1] = twice * (y * z + w * x)
-        pose[2, 2] = 1.0 - twice * (x * x + y * y)
+        write_rotation(w, x, y, z, pose)
         for i in range(3):
             pose[i, 3] = positions[each, i]
             pose[3, i] = 0.0

@@ -37,7 +37,7 @@ def rotations_of_quaternions(quaternions: FloatArray, rotations: FloatArray) -> 
         largest = max(max(abs(q[0]), abs(q[1])), max(abs(q[2]), abs(q[3])))
         # Squares of 1e-200 or 1e200 would leave the range of doubles.
         w, x, y, z = q[0] / largest, q[1] / largest, q[2] / largest, q[3] / largest
-        _write(w, x, y, z, rotations[b])
+        write_rotation(w, x, y, z, rotations[b])
 
 
 @compiled
@@ -66,12 +66,17 @@ def rotations_of_vectors(vectors: FloatArray, short: float, rotations: FloatArra
         x, y, z = vectors[b, 0], vectors[b, 1], vectors[b, 2]
         angle = math.sqrt(x * x + y * y + z * z)
         ratio = 0.5 if angle < short else math.sin(0.5 * angle) / angle
-        _write(math.cos(0.5 * angle), ratio * x, ratio * y, ratio * z, rotations[b])
+        write_rotation(math.cos(0.5 * angle), ratio * x, ratio * y, ratio * z, rotations[b])
 
 
 @compiled
-def _write(w: float, x: float, y: float, z: float, r: FloatArray) -> None:
-    """Write the rotation (3, 3) of one quaternion whose squares are within the range of doubles."""
+def write_rotation(w: float, x: float, y: float, z: float, r: FloatArray) -> None:
+    """Write the rotation of one quaternion whose squares are within the range of doubles.
+
+    Parameters
+    ----------
+    r : (3, 3), or (4, 4), a pose, whose rotation is written.
+    """
     twice = 2.0 / (w * w + x * x + y * y + z * z)
     r[0, 0] = 1.0 - twice * (y * y + z * z)
     r[0, 1] = twice * (x * y - w * z)

@@ -1,7 +1,7 @@
 """Where the pieces of a block of postures lie in the one flat workspace of the chain kernels."""
 
 BLOCK = 128
-"""Postures worked on together: the workspace of 15 kB stays in the innermost cache."""
+"""Postures worked on together: the workspace of 14 kB stays in the innermost cache."""
 
 COSINE = 0
 SINE = BLOCK

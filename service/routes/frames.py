@@ -41,7 +41,8 @@ _MOST_ESTIMATES = 3
         "most likely is wrong is named (data snooping, Baarda 1968). Frames of an arm are called "
         "`<arm>.base`, `<arm>.flange`, `<arm>.link-3`, `<arm>.<tool or frame>`; those of the cell, "
         "`world` and your own stand alone. An arm that stands in a cell brings it along. At most "
-        "20 000 relations.",
+        "20 000 relations; with `estimate` deviations at most 100 000 to 1 apart, and 20 s of "
+        "work.",
         request=FramesRequest,
         answer=FramesAnswer,
         statuses=(503,),

@@ -4,8 +4,6 @@ Shapes and types only; whether an arm makes sense is the core's word (wire/arms.
 """
 
 import marshal
-import threading
-from collections import OrderedDict
 from typing import Annotated, Any, Literal
 
 from pydantic import (
@@ -22,6 +20,7 @@ from pydantic import (
 from pydantic.json_schema import WithJsonSchema
 
 from kinematics.orientation_forms import FORMS
+from service.wire.kept_by_words import KeptByWords
 
 WHOLE_ARMS_KEPT = 64
 """Arms that came whole in a request and are kept checked: a system that has no other place for its
@@ -215,35 +214,7 @@ def _tool_kind(value: object) -> str:
     return "Pose" if isinstance(value, dict) else "str"
 
 
-class _KnownArms:
-    """Arms that came whole and were checked, by every letter and digit of what was said.
-
-    Whoever has not come for longest goes first. Nothing else of a request is held.
-    """
-
-    def __init__(self, most: int) -> None:
-        self._most = most
-        self._arms: OrderedDict[bytes, Arm] = OrderedDict()
-        self._lock = threading.Lock()
-
-    def get(self, words: bytes) -> Arm | None:
-        """Return the arm of these words, if it is known."""
-        with self._lock:
-            arm = self._arms.get(words)
-            if arm is not None:
-                self._arms.move_to_end(words)
-            return arm
-
-    def keep(self, words: bytes, arm: Arm) -> Arm:
-        """Keep an arm; return the one that was quicker, if there is one."""
-        with self._lock:
-            arm = self._arms.setdefault(words, arm)
-            if len(self._arms) > self._most:
-                self._arms.popitem(last=False)
-            return arm
-
-
-_known_arms = _KnownArms(WHOLE_ARMS_KEPT)
+_known_arms: KeptByWords[Arm] = KeptByWords(WHOLE_ARMS_KEPT)
 
 
 def _in_the_same_words(said: object, check: ModelWrapValidatorHandler[Arm]) -> Arm:
