@@ -4,7 +4,9 @@ Left out: when they are compiled (at the first call; the service sees to it ahea
 """
 
 import hashlib
+import inspect
 import pickle
+import re
 from collections.abc import Callable
 from contextlib import suppress
 from functools import cache
@@ -65,24 +67,46 @@ def _made(function: Function, fastmath: set[str] | bool) -> Function:
     return made  # type: ignore[no-any-return]
 
 
+_IMPORTED = re.compile(rb"^from (kinematics[\w.]*) import", re.MULTILINE)
+_HOME = Path(__file__).parents[2]
+
+
 @cache
-def _sources() -> str:
-    """Return a digest of all kernels' texts."""
-    texts = (path.read_bytes() for path in sorted(Path(__file__).parent.glob("*.py")))
-    return hashlib.sha256(b"\0".join(texts)).hexdigest()
+def _text(path: Path) -> tuple[bytes, tuple[Path, ...]]:
+    """Return the text of a module and the files of what it imports from the core."""
+    text = path.read_bytes()
+    names = (match.decode().replace(".", "/") for match in _IMPORTED.findall(text))
+    files = (_HOME / f"{name}.py" for name in names)
+    return text, tuple(file for file in files if file.is_file())
+
+
+@cache
+def _sources(path: Path) -> str:
+    """Return a digest of the texts that machine code of a module is made from."""
+    texts: dict[Path, bytes] = {}
+    waiting = [path]
+    while waiting:
+        at = waiting.pop()
+        if at not in texts:
+            texts[at], imported = _text(at)
+            waiting.extend(imported)
+    return hashlib.sha256(b"\0".join(texts[at] for at in sorted(texts))).hexdigest()
 
 
 class _CacheIfPossible(FunctionCache):
     """Numba's cache, for which a full disk or a torn file is a reason to compile, not to fail.
 
     Constants and functions of one module are compiled into others. Numba looks at the age of the
-    function's own file alone; here what is kept is good for the same text of all kernels.
+    function's own file alone; here what is kept is good for the same text of that file and of all
+    that it imports from the core.
     """
 
     def __init__(self, function: Callable[..., Any]) -> None:
         super().__init__(function)  # type: ignore[no-untyped-call]
         file: Any = self._cache_file
-        file._source_stamp = (file._source_stamp, _sources())
+        source = Path(inspect.getfile(function))
+        stamp = _sources(source) if source.is_relative_to(_HOME) else ""
+        file._source_stamp = (file._source_stamp, stamp)
 
     def has_any(self) -> bool:
         """Return whether there is machine code of this text, for some processor."""

@@ -91,7 +91,7 @@ CORE_IMPORTS = {
     *("difflib", "numbers", "re", "typing", "weakref"),
     # What a cache of machine code that cannot be read or written fails with, and what its code
     # was made from.
-    *("contextlib", "pickle", "pathlib"),
+    *("contextlib", "inspect", "pickle", "pathlib"),
     # Which part warm_up is to compile when it is run as a command.
     "sys",
     # What keeps the threads that share the arrays of one posture_reader out of each other's way.
