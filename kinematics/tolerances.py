@@ -229,3 +229,71 @@ rounding leaves some 1e-10 of it."""
 SUSPECTS_ALIKE = 1e-6
 """Relative difference of two relations' statistics within which neither is the more likely wrong:
 in a single loop all are the same, but for rounding and the bend of large residuals."""
+
+# --- reach -----------------------------------------------------------------------------------
+TARGET_POSITION = 1e-5
+"""Metres (0.01 mm) by which an arm with fewer than six joints may miss a target that states no
+tolerance of its own: what two decimals of a millimetre leave; fixed by the wire's contract."""
+
+TARGET_ANGLE = 1.7453292519943296e-4
+"""Radians (0.01 deg), likewise: what two decimals of a degree leave."""
+
+EXACT_REACH = 1e-9
+"""Share of the length, and radians, within which six joints and more are on their target; fixed by
+the wire's contract."""
+
+TRAVEL_EDGE = 1e-7
+"""Radians or metres by which a joint value may exceed its limit and be put onto it, if the tool is
+then still on the target: a stretched arm's joint values are good to the root of the rounding."""
+
+PASSIVE_FITS = 1e-7
+"""Radians or metres by which a row without a joint value may be off the motion its couplings give
+it: far above the rounding of solutions, far below what whole turns through a ratio make."""
+
+MOST_TURNS = 256
+"""Postures of one solution that are looked at: six joints of two turns each have 64."""
+
+BOUND_ROUNDING = 1e-9
+"""Share of the arm's length by which a target must exceed a bound: a target that is exactly as
+far away as the links reach is theirs, and what solvers accept is within 1e-9 as well."""
+
+BRANCH_LEVEL = 1e-9
+"""Sign of a feature, over the length, that is told as the first of its words: where two ways meet
+rounding must not choose."""
+
+BRANCH_SETTLED = 1e-6
+"""The same in the posture that settles which side of an arm is which: tables are typed."""
+
+LOST_RANK = 1e-6
+"""Smallest singular value, lengths over the arm's, of solutions that may be points of a continuum,
+and beside which a no is not proved: joint values are good to some 1e-10 there, tens of times less
+than the tolerance of poses leaves open."""
+
+NEARLY_ALIGNED = 1e-2
+"""The same of five joints with the missing one put in: a typed target is off by some 1e-4 rad,
+which an axis that is in line but for a hundredth meets by turning through a degree and more."""
+
+WORTH_COMPROMISING = 100.0
+"""Tolerances by which a solution of few joints may miss and still be led to where it misses least:
+what a hundredfold magnification leaves of an error, more of it being told by NEARLY_ALIGNED."""
+
+SAME_COMPROMISE = 1e-6
+"""Radians, or metres, within which two postures that miss a target least are one: steps downhill
+end within the root of the rounding of what is left."""
+
+FAMILY_MEMBER = 1e-6
+"""Radians, or metres, by which a posture may differ from a family in the joints that this holds
+still and be one of its points: near singular places joint values are good to some 1e-8."""
+
+NEARLY_REACHED = 10.0
+"""Tolerances by which an arm of few joints may fall short at some stage and still be tried for a
+pose within tolerance: shortfalls of one stage are not yet errors of the pose."""
+
+MOST_FOLLOWED = 200
+"""Targets of one question whose families are followed: some 5 to 20 ms each, seconds in all."""
+
+MOST_LISTED = 64
+"""Postures of one target that are listed, best first: nobody chooses among more."""
+
+LARGEST_CONE = 3.141592653589793
+"""Radians: a cone of half a turn to each side holds every direction."""

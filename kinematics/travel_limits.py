@@ -18,7 +18,7 @@ from kinematics.table import FloatArray, Travel
 
 
 @dataclass(frozen=True)
-class _Limit:
+class Limit:
     """A bounded linear form of the joint values: ``weights . q + constant`` within ``travel``."""
 
     travel: Travel
@@ -33,10 +33,10 @@ class _Limit:
 
 
 @dataclass(frozen=True)
-class _Limits:
+class Limits:
     """All limits of an arm, one under the other."""
 
-    each: tuple[_Limit, ...]
+    each: tuple[Limit, ...]
     weights: FloatArray
     constants: FloatArray
     lower: FloatArray
@@ -111,7 +111,7 @@ class TravelRun:
     """
 
     def __init__(self, arm: Arm, joint_values: FloatArray) -> None:
-        limits, count = _limits_of(arm), len(joint_values)
+        limits, count = limits_of(arm), len(joint_values)
         self.margin, self.outside = np.empty(count), np.empty(count, dtype=np.bool_)
         self._of_kernel = (
             joint_values,
@@ -146,7 +146,7 @@ def limits_exceeded(
     >>> limits_exceeded(arm, np.array([[0.5], [1.5], [2.5]]))
     (array([False,  True, False]), array([False, False,  True]))
     """
-    limits = _limits_of(arm)
+    limits = limits_of(arm)
     outside = limits.room(joint_values) < 0.0
     none = np.zeros((*outside.shape[:-1], 1), dtype=bool)
     outside_graver = np.concatenate([outside, none], axis=-1)[..., limits.graver]
@@ -169,12 +169,33 @@ def travel_findings(arm: Arm, joint_values: FloatArray) -> tuple[Finding, ...]:
     >>> travel_findings(arm, np.array([0.6]))[0].text()
     'joint 1 is at 0.6 m, beyond its travel limit 0.5 m'
     """
+    (found,) = each_travel_findings(arm, joint_values[None])
+    return found
+
+
+def each_travel_findings(arm: Arm, joint_values: FloatArray) -> list[tuple[Finding, ...]]:
+    """Return what ``travel_findings`` tells of each of many postures (count, joints).
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.PRISMATIC, 0.0, 0.0, 0.0, 0.0, travel=Travel(0.0, 0.5))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> [len(found) for found in each_travel_findings(arm, np.array([[0.6], [0.5]]))]
+    [1, 0]
+    """
+    limits = limits_of(arm)
+    values = joint_values @ limits.weights.T + limits.constants
+    return [_findings(limits, row) for row in values.tolist()]
+
+
+def _findings(limits: Limits, values: list[float]) -> tuple[Finding, ...]:
+    """Return the findings about what is bounded, at its values in the order of ``limits``."""
     found: list[Finding] = []
     beyond: set[str] = set()
-    for limit in _limits_of(arm).each:
-        value = float(joint_values @ limit.weights + limit.constant)
-        bound = limit.travel.lower if value < limit.travel.lower else limit.travel.upper
-        if limit.travel.lower <= value <= limit.travel.upper or limit.subject in beyond:
+    for limit, value in zip(limits.each, values, strict=True):
+        lower, upper = limit.travel.lower, limit.travel.upper
+        if lower <= value <= upper or limit.subject in beyond:
             continue
         reason = f" ({limit.reason})" if limit.reason else ""
         kind = "working travel" if limit.working else "travel"
@@ -185,7 +206,7 @@ def travel_findings(arm: Arm, joint_values: FloatArray) -> tuple[Finding, ...]:
                 say=f"{limit.subject} is at {{measure}}, beyond its {kind} limit "
                 f"{{threshold}}{reason.replace('{', '{{').replace('}', '}}')}",
                 measure=value,
-                threshold=bound,
+                threshold=lower if value < lower else upper,
                 unit=limit.unit,
                 joint=limit.joint,
                 row=limit.row,
@@ -195,21 +216,29 @@ def travel_findings(arm: Arm, joint_values: FloatArray) -> tuple[Finding, ...]:
     return tuple(found)
 
 
-_kept: WeakKeyDictionary[Arm, _Limits] = WeakKeyDictionary()
+_kept: WeakKeyDictionary[Arm, Limits] = WeakKeyDictionary()
 """What was found of an arm, as long as somebody has the arm."""
 
 
-def _limits_of(arm: Arm) -> _Limits:
+def limits_of(arm: Arm) -> Limits:
+    """Return all limits of an arm, travel before working travel; kept as long as the arm is.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, Table
+    >>> limits_of(Arm("empty", Table(Convention.STANDARD, ()))).each
+    ()
+    """
     limits = _kept.get(arm)
     if limits is None:
         limits = _kept[arm] = _in_the_form_of_kernels(arm)
     return limits
 
 
-def _in_the_form_of_kernels(arm: Arm) -> _Limits:
+def _in_the_form_of_kernels(arm: Arm) -> Limits:
     each = tuple(_listed(arm))
     travel = {limit.subject: place for place, limit in enumerate(each) if not limit.working}
-    return _Limits(
+    return Limits(
         each=each,
         weights=np.array([limit.weights for limit in each]).reshape(len(each), arm.joint_count),
         constants=np.array([limit.constant for limit in each]),
@@ -223,9 +252,9 @@ def _in_the_form_of_kernels(arm: Arm) -> _Limits:
     )
 
 
-def _listed(arm: Arm) -> list[_Limit]:
+def _listed(arm: Arm) -> list[Limit]:
     """List the limits of the arm, travel before working travel so that the graver one is told."""
-    limits: list[_Limit] = []
+    limits: list[Limit] = []
     driven = arm.drive_map.driven
     for index, row in enumerate(arm.table.rows):
         if row.passive:
@@ -239,7 +268,7 @@ def _listed(arm: Arm) -> list[_Limit]:
             if travel is not None:
                 reason = row.working_reason if working else ""
                 limits.append(
-                    _Limit(
+                    Limit(
                         travel,
                         weights,
                         constant,
@@ -258,5 +287,5 @@ def _listed(arm: Arm) -> list[_Limit]:
         unit = arm.table.rows[next(iter(combined.ratios)) - 1].unit
         terms = " + ".join(f"{ratio:g} x row {row}" for row, ratio in combined.ratios.items())
         subject = f"combined travel {number} ({terms})"
-        limits.append(_Limit(combined.travel, weights, 0.0, unit, subject, None, None, False))
+        limits.append(Limit(combined.travel, weights, 0.0, unit, subject, None, None, False))
     return limits

@@ -1,0 +1,219 @@
+"""Solutions by search: damped least squares from many starts, for whatever has no closed form.
+
+Idea: descend from postures spread evenly over travel, the ones that already come near the target
+first, until a start ends on it. It works for any arm, with couplings, travel and combined travel
+built in, because all it asks of an arm is where a posture brings the tool and how that changes.
+What it finds is checked; what it does not find is *not found*, and nothing is proved.
+
+Source: multiple starts with damped least squares: Wampler 1986, Nakamura and Hanafusa 1986; the
+descent and the starts have theirs in descent.py and starts.py.
+
+Not covered: completeness. A solution with a small basin may be missed, and so may a short piece of
+travel. Arms that cannot meet a target exactly (fewer than six joints) are brought to the target's
+point, the orientation as near as that leaves.
+"""
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.arm import Arm
+from kinematics.inverse.attempts import Effort, Starts, search
+from kinematics.inverse.descent import DIRECTION, POSE, POSITION
+from kinematics.inverse.desk import Room
+from kinematics.inverse.found import SEARCH, TRAVEL, Found
+from kinematics.inverse.landing import gaps_to, land_all
+from kinematics.inverse.rooms import lines_of, no_bounds, room_of, slopes_of, start_box
+from kinematics.inverse.screws import screws_of
+from kinematics.inverse.starts import scrambled_halton
+from kinematics.inverse.tolerances import (
+    SEARCH_ACCEPTS,
+    SEARCH_ACCEPTS_FEW,
+    SEARCH_STARTS,
+    SEARCH_STEPS,
+    SEARCH_TURN_SHARE,
+)
+from kinematics.kernels.compiler import for_kernel
+from kinematics.table import FloatArray
+from kinematics.tolerances import GENERIC_RANK
+from kinematics.travel_limits import limits_of, travel_margin
+
+TASKS = {"pose": POSE, "position": POSITION, "position+direction": DIRECTION}
+"""What of a target counts: all of it; its point; its point and where tool z points."""
+
+_POSTURES = 512
+"""Starts laid out for an arm: so many that one in a dozen has the target's orientation to some
+60 deg, and few enough that looking through them costs less than a step."""
+_WITHOUT_TRAVEL = 20
+"""Starts for a target not found within travel, to tell whether travel is what keeps it."""
+_RANK_POSTURES = 4
+_SEED = 1960
+
+
+@dataclass(frozen=True)
+class SearchGeometry:
+    """The structure a search rests on: none."""
+
+    say: str = "no structure of the arm is used: damped least squares from many starts"
+
+
+class Search:
+    """A solver for any arm and task that finds what it can within travel.
+
+    Parameters
+    ----------
+    tool_in_flange : (4, 4), metres.
+    task : a name of ``TASKS``.
+    wanted : solutions a target at most; 1 stops each target at its first.
+    starts : most starts a target.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = (Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0),) * 2
+    >>> solver = Search(Arm("planar", Table(Convention.STANDARD, rows)), np.eye(4), "position", 2)
+    >>> target = np.eye(4)[None]
+    >>> target[0, :2, 3] = 0.4
+    >>> np.abs(solver.solve(target).motions[:, 1].round(9) + 0.0)
+    array([1.57079633, 1.57079633])
+    """
+
+    proof = "search"
+    geometry = SearchGeometry()
+
+    def __init__(
+        self,
+        arm: Arm,
+        tool_in_flange: FloatArray,
+        task: str = "pose",
+        wanted: int = 1,
+        starts: int = SEARCH_STARTS,
+    ) -> None:
+        self.arm, self.task = arm, TASKS[task]
+        self.screws = screws_of(arm, tool_in_flange)
+        self.lines = lines_of(self.screws, arm)
+        relaxed = self._rank() < {POSE: 6, POSITION: 3, DIRECTION: 5}[self.task]
+        self._effort = Effort(
+            starts=starts,
+            steps=SEARCH_STEPS,
+            wanted=wanted,
+            accepted=SEARCH_ACCEPTS_FEW if relaxed else SEARCH_ACCEPTS,
+            share=SEARCH_TURN_SHARE if relaxed else 1.0,
+        )
+
+    @cached_property
+    def scale(self) -> FloatArray:
+        """What joint values are divided by, (joints,): 1 for angles, the arm's length else."""
+        return np.where(self.arm.revolute_joints, 1.0, self.screws.length)
+
+    def _rank(self) -> int:
+        """Return how many of the task's rows the arm can move at once, as a rule."""
+        room, rank = no_bounds(self.arm), 0
+        postures = scrambled_halton(_RANK_POSTURES, self.arm.joint_count, _SEED)
+        for q in 2.0 * np.pi * postures:
+            values = np.linalg.svd(slopes_of(self.lines, room, self.task, q), compute_uv=False)
+            rank = max(rank, int((values > GENERIC_RANK * values.max(initial=0.0)).sum()))
+        return rank
+
+    @cached_property
+    def _within(self) -> Starts:
+        return self._started(room_of(self.arm, self.scale))
+
+    @cached_property
+    def _anywhere(self) -> Starts:
+        return self._started(no_bounds(self.arm))
+
+    def solve(self, targets: FloatArray) -> Found:
+        """Return what is found for targets (m, 4, 4), the tool in base, metres.
+
+        Solutions are within travel. For a target without one the stage is ``travel`` where it was
+        met beyond travel, at ``nearest``, and the shortfall is the share of travel lacking there;
+        else ``search``, and the shortfall is the gap left, a share of the length or rad.
+        """
+        scaled = for_kernel(self.screws.scaled(targets))
+        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        stage = np.where(met.many > 0, 0, SEARCH)
+        shortfall = np.where(met.many > 0, 0.0, np.sqrt(met.gap))
+        nearest = np.where(met.many[:, None] > 0, 0.0, met.nearest)
+        missing = np.flatnonzero(met.many == 0)
+        if len(missing) and self._bounded:
+            effort = self._effort._replace(wanted=1, starts=_WITHOUT_TRAVEL)
+            beyond = search(self.lines, self._anywhere, self.task, effort, scaled[missing])
+            outside = beyond.many > 0
+            reached = missing[outside]
+            nearest[reached] = beyond.joint_values[outside, 0]
+            stage[reached] = TRAVEL
+            lacking = travel_margin(self.arm, nearest[reached] * self.scale)
+            shortfall[reached] = np.maximum(-lacking, 0.0)
+        place = np.arange(self._effort.wanted)[None, :] < met.many[:, None]
+        target = np.nonzero(place)[0]
+        values = met.joint_values[place]
+        position_error, angle_error = self._errors(values, scaled, target)
+        return Found(
+            motions=self._motions(values),
+            target=target,
+            position_error=position_error,
+            angle_error=angle_error,
+            open=np.ones(len(scaled), np.bool_),
+            stage=stage.astype(np.int64),
+            shortfall=shortfall,
+            nearest=self._motions(nearest),
+        )
+
+    def nearest(self, targets: FloatArray) -> FloatArray:
+        """Return row motions (m, rows) within travel that bring the tool nearest to targets."""
+        scaled = for_kernel(self.screws.scaled(targets))
+        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        return self._motions(met.nearest)
+
+    def starts_used(self, targets: FloatArray) -> FloatArray:
+        """Return how many starts within travel each target took, (m,)."""
+        scaled = for_kernel(self.screws.scaled(targets))
+        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        return met.used.astype(np.float64)
+
+    @cached_property
+    def _bounded(self) -> bool:
+        return bool((~limits_of(self.arm).working).any())
+
+    def _started(self, room: Room) -> Starts:
+        """Return where to move, the starts in it and the poses they bring the tool to."""
+        lower, upper = start_box(self.arm, room)
+        count = max(_POSTURES, self._effort.starts)
+        cube = scrambled_halton(4 * count, self.arm.joint_count, _SEED)
+        starts = lower + cube * (upper - lower)
+        sums = starts @ room.weights.T
+        fits = ((sums >= room.least) & (sums <= room.most)).all(axis=1)
+        # Those within the bounds of sums first; where these are narrow, others fill up.
+        order = np.argsort(~fits, kind="stable")[:count]
+        starts = np.ascontiguousarray(starts[order])
+        poses = np.empty((count, 4, 4))
+        lines = self.lines
+        motions = np.ascontiguousarray(starts @ lines.drive.T)
+        land_all(lines.axis, lines.point, lines.prismatic, lines.tool_at_zero, motions, poses)
+        return Starts(room, starts, poses)
+
+    def _motions(self, values: FloatArray) -> FloatArray:
+        """Return scaled joint values (k, joints) as row motions, rad in (-pi, pi] and metres."""
+        moved = values @ self.lines.drive.T
+        turned = moved - 2.0 * np.pi * np.ceil((moved - np.pi) / (2.0 * np.pi))
+        return np.where(self.screws.prismatic, moved * self.screws.length, turned)
+
+    def _errors(
+        self, values: FloatArray, scaled: FloatArray, target: NDArray[np.intp]
+    ) -> tuple[FloatArray, FloatArray]:
+        lines = self.lines
+        poses = np.empty((len(values), 4, 4))
+        motions = np.ascontiguousarray(values @ lines.drive.T)
+        land_all(lines.axis, lines.point, lines.prismatic, lines.tool_at_zero, motions, poses)
+        gaps = np.empty((len(values), 2))
+        gaps_to(poses, scaled, target.astype(np.float64), gaps)
+        if self.task == POSITION:
+            gaps[:, 1] = 0.0
+        elif self.task == DIRECTION:
+            wanted = scaled[target, :3, 2]
+            across = np.linalg.norm(np.cross(poses[:, :3, 2], wanted), axis=1)
+            gaps[:, 1] = np.arctan2(across, (poses[:, :3, 2] * wanted).sum(axis=1))
+        return gaps[:, 0] * self.screws.length, gaps[:, 1]

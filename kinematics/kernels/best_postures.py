@@ -1,0 +1,78 @@
+"""The postures of each target in order, best first, and no more of them than are to be listed.
+
+Postures within travel come alone where there are any. Ranks are compared in steps, so that what
+differs by rounding keeps the order in which it was found, whichever machine computed it.
+
+Left out: what postures are ranked by (kinematics/reach), and where they come from (whole_turns.py).
+"""
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.kernels.compiler import compiled_exactly
+from kinematics.kernels.whole_turns import INSIDE, ROUNDED
+from kinematics.number_checks import FloatArray
+
+IntArray = NDArray[np.int64]
+
+
+@compiled_exactly
+def best_first(
+    targets: int,
+    target: NDArray[np.intp],
+    source: IntArray,
+    flags: IntArray,
+    primary: FloatArray,
+    secondary: FloatArray,
+    most: int,
+) -> tuple[NDArray[np.intp], IntArray, NDArray[np.bool_], bool]:
+    """Return the order of each target's postures, best first: those within travel, if any are.
+
+    Parameters
+    ----------
+    target : (k,), ascending, of each wanted motion; source, flags : (p,), as ``postures_of`` gives.
+    primary, secondary : (p,), larger is better; what is equal keeps its order.
+    most : postures of one target that are listed.
+
+    Returns
+    -------
+    offsets (targets + 1,) into the order; the order, indices of postures; which targets have any
+    within travel, (targets,); and whether all have.
+
+    Examples
+    --------
+    >>> flags, rank = np.array([0, 1, 1]), np.array([0.5, 0.1, 0.2])
+    >>> best_first(1, np.array([0]), np.zeros(3, np.int64), flags, rank, rank, 9)[1]
+    array([2, 1])
+    """
+    count = len(source)
+    offsets, order = np.zeros(targets + 1, np.intp), np.empty(count, np.int64)
+    reached, all_reached = np.zeros(targets, np.bool_), True
+    filled, at = 0, 0
+    for m in range(targets):
+        first, inside, start = filled, False, at
+        while at < count and target[source[at]] == m:
+            inside |= (flags[at] & INSIDE) != 0
+            at += 1
+        for posture in range(start, at):
+            if inside and not flags[posture] & INSIDE:
+                continue
+            place = filled
+            while place > first and _better(posture, order[place - 1], primary, secondary):
+                if place - first < most:
+                    order[place] = order[place - 1]
+                place -= 1
+            if place - first < most:
+                order[place] = posture
+                filled = min(filled + 1, first + most)
+        offsets[m + 1], reached[m] = filled, inside
+        all_reached &= inside
+    return offsets, order[:filled], reached, all_reached
+
+
+@compiled_exactly
+def _better(one: int, other: int, primary: FloatArray, secondary: FloatArray) -> bool:
+    first, second = np.round(primary[one] * ROUNDED), np.round(primary[other] * ROUNDED)
+    if first == second:
+        first, second = np.round(secondary[one] * ROUNDED), np.round(secondary[other] * ROUNDED)
+    return bool(first > second)
