@@ -71,10 +71,25 @@ def _relations() -> None:
     assert len(graph.closures[0]) == 1
 
 
+# What is imported below is as much as all the rest, and only wanted where reach is asked about.
+def _closed_forms() -> None:
+    from kinematics.reach.first_checks import check_closed_forms
+
+    check_closed_forms()
+
+
+def _searches() -> None:
+    from kinematics.reach.first_checks import check_searches
+
+    check_searches()
+
+
 _PARTS: Mapping[str, Callable[[], None]] = {
     "poses": _poses,
     "judgements": _judgements,
     "relations": _relations,
+    "closed-forms": _closed_forms,
+    "searches": _searches,
 }
 POSTURES = ("poses", "judgements")
 """The parts that questions about postures need; they take about as long."""
@@ -82,8 +97,11 @@ POSTURES = ("poses", "judgements")
 RELATIONS = ("relations",)
 """The parts that questions about rotations and frames need beside those."""
 
+REACH = ("closed-forms", "searches")
+"""The parts that questions about reach need beside those; they take the longest."""
 
-def warm_up(parts: Sequence[str] = (*POSTURES, *RELATIONS)) -> None:
+
+def warm_up(parts: Sequence[str] = (*POSTURES, *RELATIONS, *REACH)) -> None:
     """Compile, or load from the cache, the kernels of some parts; some seconds when cold.
 
     Examples
@@ -103,13 +121,29 @@ def to_be_compiled(parts: Sequence[str]) -> list[str]:
     >>> to_be_compiled(POSTURES)
     []
     """
-    # One that each part ends with, so that a part which was cut short counts as missing.
-    last: dict[str, Callable[..., object]] = {
-        "poses": travel_left,
-        "judgements": judge_postures,
-        "relations": loops_walked,
-    }
-    return [part for part in parts if is_kept(last[part]) is False]
+    return [part for part in parts if is_kept(_LAST[part]()) is False]
+
+
+def _last_of_closed_forms() -> Callable[..., object]:
+    from kinematics.reach.first_checks import LAST_OF_CLOSED_FORMS
+
+    return LAST_OF_CLOSED_FORMS
+
+
+def _last_of_searches() -> Callable[..., object]:
+    from kinematics.reach.first_checks import LAST_OF_SEARCHES
+
+    return LAST_OF_SEARCHES
+
+
+_LAST: Mapping[str, Callable[[], Callable[..., object]]] = {
+    "poses": lambda: travel_left,
+    "judgements": lambda: judge_postures,
+    "relations": lambda: loops_walked,
+    "closed-forms": _last_of_closed_forms,
+    "searches": _last_of_searches,
+}
+"""A kernel that each part ends with, so that a part which was cut short counts as missing."""
 
 
 def _arm() -> Arm:

@@ -1,0 +1,299 @@
+"""What one method's solutions make of targets: postures, verdicts, and what proves them.
+
+Solutions become ranked postures; a target with one within travel is reachable, and they are its
+witnesses. A no is proved where the links are too short for anybody, or where a closed form found
+nothing and met no free joint. Where it met one, families are followed and a search looks once
+more; what is then still missing is "not found".
+
+Source: none. Not covered: elimination and branch and bound, which prove more; targets that leave
+a turn open (spins.py).
+"""
+
+from dataclasses import replace
+from functools import cached_property
+from typing import NamedTuple, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.inverse.drive import drive_of
+from kinematics.inverse.found import Found, none_found
+from kinematics.inverse.lost_rank import LostRank
+from kinematics.inverse.measured import POSE
+from kinematics.inverse.several import joined, picked
+from kinematics.inverse.solve import method_of
+from kinematics.reach.at_limits import with_ends_of_travel
+from kinematics.reach.bounds import FREE, Bounds
+from kinematics.reach.family_members import FamiliesOf, with_witnesses
+from kinematics.reach.near_enough import NearEnough
+from kinematics.reach.reasons import Told
+from kinematics.reach.targets import (
+    BOUND,
+    CLOSED_FORM,
+    NOT_FOUND,
+    OUTSIDE_TRAVEL,
+    SEARCH,
+    UNREACHABLE,
+    Checks,
+    TakesLonger,
+    Targets,
+)
+from kinematics.reach.verdicts import Ranked, Ranking
+from kinematics.table import FloatArray
+from kinematics.tolerances import MOST_LISTED
+
+
+class Asked(NamedTuple):
+    """What is asked beside the targets: the best posture alone, and near which joint values.
+
+    ``at_once`` asks to give up, by TakesLonger, before anything that takes milliseconds.
+    """
+
+    best_only: bool = False
+    near: FloatArray | None = None
+    at_once: bool = False
+
+    def go_on(self) -> None:
+        """Give up if what comes next is not done at once.
+
+        Raises
+        ------
+        TakesLonger
+        """
+        if self.at_once:
+            raise TakesLonger
+
+
+class Basis(NamedTuple):
+    """What answers rest on: an index into PROOFS, what a no is worth at best, and a sentence."""
+
+    proof: int
+    say: str
+
+
+class Way(Protocol):
+    """Answers targets of one freedom."""
+
+    @property
+    def basis(self) -> Basis: ...
+
+    @property
+    def seconds(self) -> float:
+        """About how long a target takes."""
+
+    def answer(self, targets: Targets, asked: Asked) -> Checks: ...
+
+
+_CLOSED_SECONDS, _SHORT_SEARCH_SECONDS, _SEARCH_SECONDS = 3e-5, 2e-3, 3e-3
+"""About what a target takes by a closed form, and by a search where one target in ten is not found:
+those that are take 0.3 ms, the others 15 ms and more."""
+
+
+class Answerer:
+    """Answers targets of one task (inverse/measured.py) for one arm with one tool.
+
+    Attributes
+    ----------
+    ranking, method : what ranks, and what solves.
+    """
+
+    def __init__(self, ranking: Ranking, task: str) -> None:
+        self.ranking = ranking
+        self.method = method_of(ranking.arm, ranking.tool_in_flange, task)
+        self._near_enough = NearEnough(ranking, self.method)
+        six = ranking.screws.rows == 6 == ranking.arm.joint_count
+        self._lost_rank = LostRank(ranking.screws) if six else None
+
+    @cached_property
+    def bounds(self) -> Bounds:
+        """What proves a no without solving."""
+        return Bounds(self.ranking.screws, self.method.task == POSE)
+
+    @property
+    def basis(self) -> Basis:
+        """What answers rest on."""
+        return Basis(CLOSED_FORM if self.method.complete else SEARCH, self.method.say)
+
+    @property
+    def seconds(self) -> float:
+        """About how long a target takes."""
+        if self._near_enough.searches:
+            return _SHORT_SEARCH_SECONDS + _CLOSED_SECONDS
+        return _CLOSED_SECONDS if self.method.complete else _SEARCH_SECONDS
+
+    def answer(self, targets: Targets, asked: Asked) -> Checks:
+        """Return verdicts and solutions of targets (m)."""
+        rest = self._rest(asked.near)
+        everything = self._solved(targets, rest)
+        found = self._near_enough.of(everything, targets, rest)
+        everything = replace(everything, open=found.open)
+        families: FamiliesOf = {}
+        is_open = found.open if self.method.complete else np.ones(len(targets), np.bool_)
+        if self.method.closed:
+            suspects = self._suspects(found)
+            if suspects is not None:
+                asked.go_on()
+                is_open = is_open.copy()
+                is_open[found.target[suspects]] = True
+                poses = targets.tool_in_base
+                found, families = with_witnesses(self.method, found, poses, suspects)
+        ranked = self._ranked(found, targets, asked)
+        if self._near_enough.searches and not ranked.all_inside:
+            asked.go_on()
+            wanted = ~ranked.inside & (self._held(targets) == FREE)
+            found = self._near_enough.elsewhere(found, targets, wanted)
+            ranked = self._ranked(found, targets, asked)
+        if not ranked.all_inside:
+            at_ends = with_ends_of_travel(self.ranking, self.method, found, targets, ranked)
+            if at_ends is not None:
+                found = at_ends
+                ranked = self._ranked(found, targets, asked)
+        if self.method.closed and not ranked.all_inside:
+            left = np.flatnonzero(~ranked.inside & is_open)
+            if len(left):
+                asked.go_on()
+                more = self.method.search.solve(targets.tool_in_base[left])
+                accepted = picked(more, self.ranking.accepted(more, targets.only(left)))
+                found, everything = joined(found, accepted, left), joined(everything, more, left)
+                ranked = self._ranked(found, targets, asked)
+        return self._told(targets, everything, found, ranked, rest, families)
+
+    def scores(self, targets: Targets, asked: Asked) -> FloatArray:
+        """Return how good the best posture of each target is, (m,).
+
+        Not negative within travel: the margin (1 without travel), or the nearness to joint values
+        asked for, 0 to 1. Negative beyond travel; minus infinity where there is no posture.
+        """
+        rest = self._rest(asked.near)
+        found = self._near_enough.of(self._solved(targets, rest), targets, rest)
+        ranked = self._ranked(found, targets, asked._replace(best_only=True))
+        scores = np.full(len(targets), -np.inf)
+        some = ranked.offsets[1:] > ranked.offsets[:-1]
+        # One posture of each such target, in their order.
+        scores[some] = np.minimum(ranked.margin, 1.0)
+        if asked.near is not None:
+            far = self.ranking.distance(ranked.joint_values, asked.near)
+            inside = ranked.inside[some]
+            scores[some] = np.where(inside, 1.0 / (1.0 + far), scores[some])
+        return scores
+
+    def _solved(self, targets: Targets, rest: FloatArray) -> Found:
+        """Return all solutions; a search is spared targets that no links reach."""
+        poses = targets.tool_in_base
+        if self.method.closed:
+            return self.method.solve(poses, rest)
+        free = np.flatnonzero(self._held(targets) == FREE)
+        none = none_found(len(targets), self.ranking.screws.rows)
+        return joined(none, self.method.solve(poses[free], rest), free)
+
+    def _held(self, targets: Targets) -> NDArray[np.int64]:
+        """Hold targets against the bounds, with the tolerance that few joints are given, (m,)."""
+        tolerance: FloatArray | float = 0.0
+        if not self.ranking.exact:
+            aside = float(np.linalg.norm(self.bounds.aim))
+            tolerance = targets.position_tolerance + targets.angle_tolerance * aside
+        return self.bounds.hold(targets.tool_in_base, tolerance).outcome
+
+    def _ranked(self, found: Found, targets: Targets, asked: Asked) -> Ranked:
+        idle = self.method.idle
+        return self.ranking.rank(
+            found,
+            targets,
+            asked.near,
+            1 if asked.best_only else MOST_LISTED,
+            idle if idle.any() else None,
+            self.method.task == POSE,
+        )
+
+    def _rest(self, near: FloatArray | None) -> FloatArray:
+        """Return values for joints that do not matter: in the middle of travel, or near."""
+        drive = drive_of(self.ranking.arm)
+        return drive.middle_of_travel if near is None else np.clip(near, *drive.box)
+
+    def _suspects(self, found: Found) -> NDArray[np.bool_] | None:
+        """Return which solutions may be points of a continuum, (k,), or None where none may.
+
+        With six joints those whose Jacobian lacks rank; with fewer those of targets that are open.
+        """
+        if self._lost_rank is not None:
+            return self._lost_rank.of(found.motions)
+        of_open: NDArray[np.bool_] = found.open[found.target]
+        return of_open if of_open.any() else None
+
+    def _told(
+        self,
+        targets: Targets,
+        everything: Found,
+        found: Found,
+        ranked: Ranked,
+        rest: FloatArray,
+        families: FamiliesOf,
+    ) -> Checks:
+        some = ranked.offsets[1:] > ranked.offsets[:-1]
+        verdict, proof = self._verdicts(targets, everything, ranked, some)
+        told = Told(
+            self.ranking, self.method, self.bounds, targets, everything, ranked, verdict, proof,
+            rest, families,
+        )  # fmt: skip
+        offsets = ranked.offsets
+        kept: slice | NDArray[np.bool_] = slice(None)
+        if not ranked.all_inside:
+            offsets, kept = _listed(ranked.offsets, some & (verdict <= OUTSIDE_TRAVEL))
+        solution = ranked.solution[kept]
+        branch = self.ranking.branches.of(found.motions, found.target)
+        return Checks(
+            verdict,
+            proof,
+            offsets,
+            _how_many(ranked, verdict),
+            ranked.joint_values[kept],
+            ranked.margin[kept],
+            ranked.outside_working[kept],
+            found.position_error[solution],
+            found.angle_error[solution],
+            branch[solution],
+            self.ranking.branches.sentences,
+            told,
+        )
+
+    def _verdicts(
+        self, targets: Targets, found: Found, ranked: Ranked, some: NDArray[np.bool_]
+    ) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+        """Return verdict and proof of each target, (m,)."""
+        count = len(some)
+        verdict, proof = np.zeros(count, np.int64), np.zeros(count, np.int64)
+        if ranked.all_inside:
+            return verdict, proof
+        closed = ~found.open if self.method.complete else np.zeros(count, np.bool_)
+        missing = ~ranked.inside
+        # Where not every whole turn was looked at, one that was not may be within bounds of sums.
+        closed[ranked.target[ranked.seen < 0]] = False
+        verdict[missing] = np.where(some, OUTSIDE_TRAVEL, UNREACHABLE)[missing]
+        proof[missing] = CLOSED_FORM
+        verdict[missing & ~closed], proof[missing & ~closed] = NOT_FOUND, SEARCH
+        none = np.flatnonzero(missing & ~some)
+        if len(none):
+            bound = none[self._held(targets.only(none)) != FREE]
+            verdict[bound], proof[bound] = UNREACHABLE, BOUND
+        return verdict, proof
+
+
+def _how_many(ranked: Ranked, verdict: NDArray[np.int64]) -> NDArray[np.int64]:
+    """Return how many postures get to each target, listed or not."""
+    if ranked.all_listed:
+        return ranked.offsets[1:] - ranked.offsets[:-1]
+    seen = np.where(ranked.seen < 0, -ranked.seen - 1.0, ranked.seen)
+    inside = np.bincount(ranked.target, seen, len(verdict)).astype(np.int64)
+    if ranked.all_inside:
+        return inside
+    beyond = np.where(verdict == OUTSIDE_TRAVEL, np.diff(ranked.offsets), 0)
+    return np.where(ranked.inside, inside, beyond)
+
+
+def _listed(
+    offsets: NDArray[np.intp], told: NDArray[np.bool_]
+) -> tuple[NDArray[np.intp], NDArray[np.bool_]]:
+    """Return offsets and postures of the targets whose postures are told."""
+    counts = np.diff(offsets)
+    fewer = np.concatenate([[0], np.cumsum(np.where(told, counts, 0))]).astype(np.intp)
+    return fewer, np.repeat(told, counts)
