@@ -27,6 +27,7 @@ from service.routes import (
     guesses,
     health,
     poses,
+    reach,
     relation,
     rotations,
     tables,
@@ -39,6 +40,7 @@ from service.wire.arms import read_arm
 ROUTERS: tuple[APIRouter, ...] = (
     controller.router,
     poses.router,
+    reach.router,
     tables.router,
     rotations.router,
     guesses.router,

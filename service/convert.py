@@ -19,6 +19,9 @@ from kinematics.table import FloatArray
 ARMS_KEPT = 512
 """Arms, by the units of their joints, whose scales are kept, some 500 bytes each."""
 
+THRESHOLDS_KEPT = 1024
+"""Limits of travel and the like, as they were typed, some 100 bytes each."""
+
 _METRES = {"mm": (1.0, 1000.0), "m": (1.0, 1.0), "in": (0.0254, 1.0)}
 """Each length unit in metres, as a numerator and a denominator: 400 mm divided by 1000 is the
 double nearest to 0.4 m, which 400 times 0.001 need not be. The inch is exactly 25.4 mm
@@ -146,6 +149,13 @@ def joint_values_out(arm: Arm, units: Units, values: FloatArray) -> FloatArray:
     return np.where(arm.revolute_joints, units.angle_out(values), units.length_out(values))
 
 
+def joint_row_out(arm: Arm, units: Units, values: Sequence[float]) -> list[float]:
+    """Return the values of one posture, a plain number for each joint, in the user's units."""
+    return [
+        units.value_out(value, unit) for value, unit in zip(values, arm.joint_units, strict=True)
+    ]
+
+
 def twists_in(units: Units, twists: FloatArray) -> FloatArray:
     """Return twists (..., 6) in m/s and rad/s."""
     return np.concatenate(
@@ -200,9 +210,17 @@ def values_out(units: Units, form: str, values: FloatArray) -> FloatArray:
 
 def finding_out(units: Units, finding: Finding) -> dict[str, object]:
     """Return a finding as answered, its sentence and numbers in the user's units."""
+    return _finding_at(units, finding, units.shortest_out(finding.measure, finding.unit))
+
+
+def computed_finding_out(units: Units, finding: Finding) -> dict[str, object]:
+    """Return a finding about what was computed and not typed: all digits of its measure count."""
+    return _finding_at(units, finding, units.value_out(finding.measure, finding.unit))
+
+
+def _finding_at(units: Units, finding: Finding, measure: float) -> dict[str, object]:
     unit = units.unit_out(finding.unit)
-    measure = units.shortest_out(finding.measure, finding.unit)
-    threshold = units.shortest_out(finding.threshold, finding.unit)
+    threshold = _threshold_out(units, finding.threshold, finding.unit)
     shown = f" {unit}" if unit else ""
     answer: dict[str, object] = {
         "code": finding.code,
@@ -222,6 +240,12 @@ def finding_out(units: Units, finding: Finding) -> dict[str, object]:
     if finding.row is not None:
         answer["row"] = finding.row
     return answer
+
+
+@lru_cache(maxsize=THRESHOLDS_KEPT)
+def _threshold_out(units: Units, threshold: float, unit: str) -> float:
+    """Return a threshold as its owner typed it; few are met again and again."""
+    return units.shortest_out(threshold, unit)
 
 
 def _is_angular(form: str) -> bool:

@@ -2,7 +2,8 @@
 
 On a machine that has never run them they are compiled, which takes seconds. Two processes do it at
 once and leave what they made in the cache; this one loads it, and answers meanwhile what needs no
-kernels. Left out: which requests need them (routes/direct.py).
+kernels. Those for reach come last, and are loaded when somebody first asks: they are many, and who
+never asks need not hold them. Left out: which requests need them (routes/direct.py).
 """
 
 import asyncio
@@ -15,7 +16,7 @@ from collections.abc import Sequence
 from contextlib import suppress
 from time import monotonic
 
-from kinematics.warm_up import POSTURES, RELATIONS, to_be_compiled, warm_up
+from kinematics.warm_up import POSTURES, REACH, RELATIONS, to_be_compiled, warm_up
 
 _LOG = logging.getLogger(__name__)
 
@@ -30,16 +31,25 @@ class Kernels:
     """Some of the kernels: whether they are ready, and a way to wait for it.
 
     Ready from the beginning, so that an app without a server answers; ``prepare`` takes it back.
+
+    Attributes
+    ----------
+    parts : of ``warm_up``.
+    wanted : whether to load them: set from the beginning, or by who first waits.
     """
 
-    def __init__(self, parts: Sequence[str]) -> None:
+    def __init__(self, parts: Sequence[str], *, when_wanted: bool = False) -> None:
         self.parts = parts
         self.are_ready = True
+        self.wanted = threading.Event()
+        if not when_wanted:
+            self.wanted.set()
         self._event = asyncio.Event()
 
     async def wait(self) -> None:
         """Return as soon as they are ready."""
         if not self.are_ready:
+            self.wanted.set()
             await self._event.wait()
 
     def are_ready_now(self, loop: asyncio.AbstractEventLoop) -> None:
@@ -50,17 +60,19 @@ class Kernels:
 
 
 class Readiness:
-    """The kernels of one service: those for postures first, then those for rotations and frames."""
+    """The kernels of one service: for postures first, then for rotations and frames, then reach."""
 
     def __init__(self) -> None:
         self.postures, self.relations = Kernels(POSTURES), Kernels(RELATIONS)
+        self.reach = Kernels(REACH, when_wanted=True)
         self._compiling: list[subprocess.Popen[bytes]] = []
         self._stopped = False
         self._lock = threading.Lock()
 
     def prepare(self) -> None:
         """Begin to get the kernels ready, in a daemon thread: a stop does not wait for it."""
-        self.postures.are_ready = self.relations.are_ready = False
+        for kernels in (self.postures, self.relations, self.reach):
+            kernels.are_ready = False
         loop = asyncio.get_running_loop()
         threading.Thread(target=self._prepare, args=(loop,), daemon=True).start()
 
@@ -78,9 +90,16 @@ class Readiness:
         told = threading.Timer(_LONG_S, print, (_COMPILING,), {"flush": True})
         told.daemon = True
         told.start()
-        for kernels in (self.postures, self.relations):
+        compiled = False
+        for kernels in (self.postures, self.relations, self.reach):
             try:
-                self._compile_beside(to_be_compiled(kernels.parts))
+                missing = to_be_compiled(kernels.parts)
+                compiled = compiled or bool(missing)
+                self._compile_beside(missing)
+                told.cancel()
+                if kernels is self.reach and compiled:
+                    print(f"  compiled in {monotonic() - started:.1f} s", flush=True)
+                kernels.wanted.wait()
                 if self._stopped:
                     return
                 warm_up(kernels.parts)
@@ -93,8 +112,6 @@ class Readiness:
             finally:
                 told.cancel()
                 kernels.are_ready_now(loop)
-        if monotonic() - started > _LONG_S:
-            print(f"  compiled in {monotonic() - started:.1f} s", flush=True)
 
     def _compile_beside(self, parts: Sequence[str]) -> None:
         for part in parts:

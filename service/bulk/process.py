@@ -21,7 +21,7 @@ from service.bulk.reading import Key
 from service.bulk.rendering import Outline, Piece, Stamp, WorkedOut
 from service.errors import NotAvailable
 from service.operations.arms import Arms
-from service.operations.questions import named_cell, stored_arm
+from service.operations.meant_arms import named_cell, stored_arm
 from service.problems import Problem
 from service.storage.ports import Revision
 from service.wire.arms import ReadArm

@@ -12,8 +12,7 @@ import numpy as np
 from kinematics.errors import KinematicsError, WrongJointCount
 from kinematics.table import FloatArray
 from service.convert import joint_values_in, twists_in
-from service.details import Detail
-from service.errors import ServiceError, UnknownArm, UnknownRevision, UnusableValue
+from service.errors import UnknownArm, UnknownRevision, UnusableValue
 from service.operations.arms import Arms
 from service.operations.jacobians import Wanted
 from service.operations.joint_rows import (
@@ -27,6 +26,7 @@ from service.operations.joint_rows import (
 from service.operations.joint_table import JointTable
 from service.operations.many import Many, ManyJacobians, ManyPoses, Rows
 from service.operations.questions import Question, question_of
+from service.operations.refused_query import in_query
 from service.operations.single import question_asked
 from service.wire.arms import ReadArm
 from service.wire.csv_rows import CsvRows, WrongColumnCount, read_csv
@@ -124,7 +124,7 @@ def many_of_table(
         singularity = singularity_for(wanted, table_singularity(parameters), location="query")
         question = question_asked(arms, asked, moving=key == "jacobians")
     except KinematicsError as error:
-        raise _in_query(error) from None
+        raise in_query(error) from None
     except (UnknownArm, UnknownRevision) as error:
         error.status, error.location = 422, "query"
         raise
@@ -186,9 +186,3 @@ def _refuse_nested(asked: PosesRequest, wanted: Format) -> None:
                 where=(field,),
                 way_out="ask for format=json",
             )
-
-
-def _in_query(error: KinematicsError) -> ServiceError:
-    """Return the refusal of the core as one of the query that holds what it is about."""
-    detail = Detail(error.code, error.say, error.where, "query", error.value, error.way_out)
-    return ServiceError(error.say, errors=[detail], status=422)

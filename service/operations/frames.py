@@ -20,7 +20,7 @@ from service.operations.cells import Cells
 from service.operations.frame_estimates import estimate_answer
 from service.operations.frame_network import Missing, network_of
 from service.operations.joint_rows import read_joint_rows
-from service.operations.questions import MeantArm, meant_arm
+from service.operations.meant_arms import MeantArm, meant_arm
 from service.operations.stored import StoredDocument
 from service.wire.arms import ReadArm
 from service.wire.cells import ReadCell

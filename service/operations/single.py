@@ -15,10 +15,10 @@ from service.errors import DigestDiffers, ServiceError, UnknownRevision
 from service.operations.arms import Arms, StoredArm
 from service.operations.jacobians import Wanted, jacobian_items
 from service.operations.joint_rows import JointRows, read_joint_row
+from service.operations.meant_arms import MeantArm
 from service.operations.poses import Answered, pose_item
 from service.operations.questions import (
     PREPARED_KEPT,
-    MeantArm,
     MeantTool,
     Question,
     meant_frame,

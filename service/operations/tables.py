@@ -13,7 +13,7 @@ from kinematics.table import Convention, Table
 from kinematics.table_conversion import converted
 from service.convert import finding_out
 from service.operations.arms import Arms
-from service.operations.questions import meant_arm
+from service.operations.meant_arms import meant_arm
 from service.wire import models
 from service.wire.arms import ReadArm, arm_document
 

@@ -18,7 +18,7 @@ from service.readiness import Kernels
 class DirectRoute(APIRoute):
     """Hands the request straight to the handler; refusals are the app's to answer, as ever."""
 
-    kernels: ClassVar[Literal["postures", "relations"] | None] = None
+    kernels: ClassVar[Literal["postures", "relations", "reach"] | None] = None
     """The kernels the handler calls; it is not called before they are ready."""
 
     async def handle(self, scope: Scope, receive: Receive, send: Send) -> None:
@@ -44,3 +44,9 @@ class RelationRoute(DirectRoute):
     """A direct route that answers about rotations and frames."""
 
     kernels = "relations"
+
+
+class ReachRoute(DirectRoute):
+    """A direct route that answers whether targets can be reached."""
+
+    kernels = "reach"

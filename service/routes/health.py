@@ -65,14 +65,18 @@ async def livez(request: Request) -> Response:
     methods=["GET", "HEAD"],
     openapi_extra=documented(
         "Ready",
-        "The database answers too, and the kernels are compiled.",
+        "The database answers too, and the kernels are compiled. Those for reach are loaded by "
+        "the first question about it, which waits.",
         answer=_STATE,
         statuses=[422, 503],
         examples="readyz",
     ),
 )
 async def readyz(request: Request) -> Response:
-    """Answer 503 while the database does not answer, or kernels are still being compiled."""
+    """Answer 503 while the database does not answer, or kernels are still being compiled.
+
+    Not those for reach, which nobody may ever ask for.
+    """
     known_parameters(request, ())
     if not request.app.state.readiness.relations.are_ready:
         raise NotAvailable("kernels are being compiled", headers={"Retry-After": "2"})

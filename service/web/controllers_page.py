@@ -9,10 +9,11 @@ from html import escape
 from service.cautions import CAUTIONS
 from service.problems import ANSWERS, KINDS
 from service.web.examples import examples_of, folder
-from service.wire import rotation_flat
+from service.wire import reach_flat, rotation_flat
 from service.wire.controller import MOST_SCALE
 from service.wire.fixed_text import NUMBER_WIDTH, WIDTHS, places
 from service.wire.flat import FLAGS
+from service.wire.reach_lines import joint_keys
 
 CLIENTS = {
     "armspan_pose.st": "controller",
@@ -40,6 +41,14 @@ _MEANINGS = {
     "revision": "revision of the stored arm",
     "digest": "changes whenever the arm's table or setup does; send it as expect",
 }
+_OF_REACH = {
+    "ok": "1: the joint values can be used; 0: a no or a refusal, there are none",
+    "verdict": "reachable, outside-travel, unreachable, not-found; blank in a refusal",
+    "solutions": "how many there are; this is the best of them",
+    "q1": "joint values in row order, a field for each driven row",
+    "margin": "smallest share of travel left at these joint values; 9.9999 without limits",
+    "state": "of these joint values: regular, near, singular",
+}
 EXAMPLE_JOINTS = {"lean": 20, "dip": 30}
 """Of the arm with a linkage: axis 2 as shown, and axis 3 as shown, degrees."""
 
@@ -56,12 +65,17 @@ def controllers_html() -> bytes:
     query = "&".join(f"{name}={value}" for name, value in case.query.items())
     turn = examples_of("rotation")["txt"]
     turning = "&".join(f"{name}={value}" for name, value in turn.query.items())
+    there = examples_of("reach")["txt"]
+    going = "&".join(f"{name}={value}" for name, value in there.query.items())
     lean, dip = EXAMPLE_JOINTS["lean"], EXAMPLE_JOINTS["dip"]
     return _PAGE.format(
         question=escape(f"GET /v1/arms/{case.request['path']['arm']}/pose?{query}"),
         line=escape(case.answer.rstrip("\r\n")),
         turning=escape(f"GET /v1/rotations?{turning}"),
         turned=escape(turn.answer.rstrip("\r\n")),
+        going=escape(f"GET /v1/arms/{there.request['path']['arm']}/reach?{going}"),
+        gone=escape(there.answer.rstrip("\r\n")),
+        reach_places=_reach_places(),
         form_width=rotation_flat.WIDTHS["form"],
         units_width=rotation_flat.WIDTHS["units"],
         places=_places(),
@@ -85,6 +99,21 @@ def _places() -> str:
         meaning = _MEANINGS.get(key, meaning)  # y and z, r2 and r3 are as the first of them
         rows.append(
             f'<tr id="place-{key}"><td>{key}</td><td>{first}</td><td>{width}</td>'
+            f"<td>{escape(meaning)}</td></tr>"
+        )
+    return "\n".join(rows)
+
+
+def _reach_places() -> str:
+    """Return the places of a line about an arm of six joints, where they are not a pose's."""
+    keys = (*reach_flat.BEGIN, *joint_keys(6), *reach_flat.END)
+    rows = []
+    meaning = ""
+    for key, (first, width) in places(keys, reach_flat.WIDTHS).items():
+        # q2 to q6 are as q1.
+        meaning = meaning if key.startswith("q") and key != "q1" else _OF_REACH.get(key, "as above")
+        rows.append(
+            f'<tr id="reach-place-{key}"><td>{key}</td><td>{first}</td><td>{width}</td>'
             f"<td>{escape(meaning)}</td></tr>"
         )
     return "\n".join(rows)
@@ -139,6 +168,22 @@ characters for each joint.</p>
 <code>/v1/arms/housing-loader/relation?of=gripper&amp;in=fixture-a&amp;q=...</code>; there
 <code>tool_no</code> and <code>frame_no</code> are the numbers of <code>of</code> and
 <code>in</code>, and <code>state</code> is none.</p>
+<h2 id="reach">Can it get there, and how</h2>
+<pre>{going}
+{gone}</pre>
+<p>A target by <code>x y z</code> and <code>r1 r2 r3</code> in <code>frame</code>, the base if none
+is said; the angles are of the <code>form</code>, xyz-fixed if none is said. Without
+<code>r1 r2 r3</code> the orientation is free; <code>freedom=spin</code> frees the turn about tool
+z, <code>cone=30</code> its direction too, by so many degrees. With several solutions the one
+farthest from its travel limits is told, or with <code>near=</code> and joint values the nearest to
+them. Places for six joints; each joint more or less moves what follows by 13 characters:</p>
+<table>
+<tr><th>field</th><th>first character</th><th>characters</th><th>meaning</th></tr>
+{reach_places}
+</table>
+<p>A target that cannot be reached is an answer with status 200: <code>ok</code> is 0,
+<code>code</code> 200, 201 or 202, every joint value -999999.9999. Reachable means geometry only.
+Joint values from here are proposals.</p>
 <h2 id="orientation">An orientation in another form</h2>
 <pre>{turning}
 {turned}</pre>

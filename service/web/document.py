@@ -158,7 +158,8 @@ def openapi_document(routes: Iterable[APIRoute], *, version: str) -> Schema:
         "info": {
             "title": "Armspan",
             "version": version,
-            "description": f"Where the tool of a serial arm is. {NOT_A_SAFETY_FUNCTION}",
+            "description": "Where the tool of a serial arm is, and whether it can get there. "
+            + NOT_A_SAFETY_FUNCTION,
             "license": {"name": "Apache-2.0", "identifier": "Apache-2.0"},
         },
         "paths": paths,

@@ -89,7 +89,7 @@ def read_csv(
         named = _named(next(reader, []), joints, letter)
         found = CsvRows(np.empty((0, joints)), names=[] if named else None)
         parts: list[FloatArray] = []
-        for rows, lines in _blocks(reader, joints + named):
+        for rows, lines in blocks(reader, joints + named):
             between()
             if found.names is not None:
                 found.names += [row[joints] for row in rows]
@@ -116,7 +116,7 @@ def _named(header: Sequence[str], joints: int, letter: str) -> bool:
     if list(header[:given]) == wanted:
         return named
     if given != joints:
-        raise _wrong_width(given, joints, 1, way_out)
+        raise wrong_width(given, joints, 1, way_out)
     wrong = next(place for place, name in enumerate(header) if name != wanted[place])
     raise UnusableValue(
         f"column {wrong + 1} is not {wanted[wrong]}",
@@ -126,7 +126,7 @@ def _named(header: Sequence[str], joints: int, letter: str) -> bool:
     )
 
 
-def _blocks(reader: "csv._reader", width: int) -> Iterator[tuple[list[list[str]], list[int]]]:  # type: ignore[name-defined]
+def blocks(reader: "csv._reader", width: int) -> Iterator[tuple[list[list[str]], list[int]]]:  # type: ignore[name-defined]
     """Give rows a block at a time, with the lines they begin in; all are ``width`` wide."""
     rows: list[list[str]] = []
     lines: list[int] = []
@@ -134,10 +134,10 @@ def _blocks(reader: "csv._reader", width: int) -> Iterator[tuple[list[list[str]]
     for row in reader:
         if len(row) != width:
             if row:
-                raise _wrong_width(len(row), width, line, "give every line the header's columns")
+                raise wrong_width(len(row), width, line, "give every line the header's columns")
             blank = blank or line
         elif blank:
-            raise _wrong_width(0, width, blank, "leave out blank lines")
+            raise wrong_width(0, width, blank, "leave out blank lines")
         else:
             rows.append(row)
             lines.append(line)
@@ -152,7 +152,7 @@ def _values(
     rows: Sequence[Sequence[str]], lines: Sequence[int], joints: int, letter: str, found: CsvRows
 ) -> FloatArray:
     cells = chain.from_iterable(row[:joints] for row in rows)
-    values = _all_at_once(",".join(cells).encode(), len(rows) * joints)
+    values = all_at_once(",".join(cells).encode(), len(rows) * joints)
     if values is None:
         first = len(found.lines)
         values = np.full((len(rows), joints), np.nan)
@@ -168,7 +168,7 @@ def _values(
     return values.reshape(len(rows), joints)
 
 
-def _all_at_once(text: bytes, count: int) -> FloatArray | None:
+def all_at_once(text: bytes, count: int) -> FloatArray | None:
     """Return the numbers of a text in which all are written as JSON has it, else None."""
     if text.translate(None, _OF_NUMBERS):
         return None
@@ -179,7 +179,7 @@ def _all_at_once(text: bytes, count: int) -> FloatArray | None:
     return np.array(numbers, dtype=np.float64) if len(numbers) == count else None
 
 
-def _wrong_width(given: int, wanted: int, line: int, way_out: str) -> WrongColumnCount:
+def wrong_width(given: int, wanted: int, line: int, way_out: str) -> WrongColumnCount:
     return WrongColumnCount(
         f"line {line} has {given} columns where {wanted} are needed",
         where=(line,),

@@ -88,8 +88,17 @@ def beside_body(
     return found
 
 
-def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -> Format:
+def answer_format(
+    parameters: Mapping[str, str],
+    accept: str,
+    default: Format,
+    offered: tuple[Format, ...] = FORMATS,
+) -> Format:
     """Return the format of the answer: the query's, else the best accepted, else ``default``.
+
+    Parameters
+    ----------
+    offered : what the address answers in.
 
     Raises
     ------
@@ -105,8 +114,8 @@ def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -
     text = parameters.get("format")
     if text is None:
         best = _best_kept if len(accept) <= _LONGEST_KEPT else _best_accepted
-        return best(accept, default)
-    for name in FORMATS:
+        return best(accept, default, offered)
+    for name in offered:
         if text == name:
             return name
     raise UnusableValue(
@@ -114,7 +123,7 @@ def answer_format(parameters: Mapping[str, str], accept: str, default: Format) -
         where=("format",),
         location="query",
         value=text,
-        way_out=f"one of: {', '.join(FORMATS)}",
+        way_out=f"one of: {', '.join(offered)}",
     )
 
 
@@ -206,8 +215,8 @@ def form_for(wanted: Format, said: str | None, *, key: str, location: Location) 
     return said or QUATERNION
 
 
-def _best_accepted(accept: str, default: Format) -> Format:
-    weights = {name: _weight(accept, name) for name in (default, *FORMATS)}
+def _best_accepted(accept: str, default: Format, offered: tuple[Format, ...]) -> Format:
+    weights = {name: _weight(accept, name) for name in (default, *offered)}
     return max(weights, key=lambda name: weights[name])
 
 

@@ -5,7 +5,7 @@ Left out: which parameters an address has; its handler says so.
 
 import math
 import re
-from collections.abc import Collection, Iterable
+from collections.abc import Collection, Iterable, Sequence
 from urllib.parse import parse_qsl
 
 from starlette.requests import Request
@@ -133,6 +133,21 @@ def numbers(text: str, name: str) -> list[float]:
         if all(map(math.isfinite, values)):
             return values
     return [number(part, name) for part in parts]
+
+
+def plain_numbers(texts: Sequence[str]) -> list[float] | None:
+    """Return the numbers that several parameters say; None if one of them is to be looked at.
+
+    Examples
+    --------
+    >>> plain_numbers(["1.5E+01", "007"]), plain_numbers([" 3.0", "1"]), plain_numbers(["1,2", "3"])
+    ([15.0, 7.0], None, None)
+    """
+    joined = ",".join(texts)
+    if joined.count(",") != len(texts) - 1 or not _NUMBERS.fullmatch(joined):
+        return None
+    values = list(map(float, texts))
+    return values if all(map(math.isfinite, values)) else None
 
 
 def whole_number(text: str, name: str) -> int:

@@ -137,9 +137,10 @@ async def test_every_code_is_documented(document: Document, client: httpx.AsyncC
 async def test_examples_are_there_and_fit_their_schemas(document: Document) -> None:
     count = 0
     for path, method, operation in operations_of(document):
-        computes = path.endswith(("/pose", "/jacobian", "/relation"))
+        computes = path.endswith(("/pose", "/jacobian", "/relation", "/reach"))
         computes |= path.startswith("/v1/rotations")
         asked_by_body = ("/v1/poses", "/v1/jacobians", "/v1/tables/conversions", "/v1/frames")
+        computes |= path == "/v1/reach/checks"
         computes |= method == "post" and path in asked_by_body
         if computes and method != "head":
             assert any(content.get("examples") for content in contents_of(operation)), path
@@ -164,7 +165,7 @@ async def test_an_example_that_does_not_fit_is_seen(document: Document) -> None:
 
 async def test_who_may_call_is_said(document: Document) -> None:
     for path, method, operation in operations_of(document):
-        small = path.endswith(("/pose", "/jacobian", "/relation")) or path == "/v1/ping"
+        small = path.endswith(("/pose", "/jacobian", "/relation", "/reach")) or path == "/v1/ping"
         small |= path == "/v1/rotations" and method in ("get", "head")
         assert operation["x-for-controllers"] is small, path
 
@@ -179,6 +180,7 @@ async def test_a_flat_refusal_is_documented(document: Document) -> None:
         "/v1/arms/{arm}/pose": ("400", "404", "409", "422", "503"),
         "/v1/arms/{arm}/jacobian": ("400", "404", "409", "422", "503"),
         "/v1/arms/{arm}/relation": ("400", "404", "409", "422", "503"),
+        "/v1/arms/{arm}/reach": ("400", "404", "409", "422", "503"),
         "/v1/rotations": ("400", "422", "503"),
     }.items():
         answers = document["paths"][path]["get"]["responses"]

@@ -26,6 +26,8 @@ pytestmark = pytest.mark.anyio
 COUNTS = {
     "frames": 5,
     "relation": 5,
+    "reach": 9,
+    "reach-checks": 9,
     "jacobian": 4,
     "jacobians": 4,
     "pose": 10,

@@ -12,9 +12,9 @@ from kinematics.errors import KinematicsError, ToolNotSaid, UnknownFrame, Unknow
 from service.convert import UNITS, joint_values_in
 from service.errors import ServiceError, UnknownArm, UnknownRevision
 from service.operations.arms import Arms
+from service.operations.meant_arms import meant_arm
 from service.operations.poses import pose_item
 from service.operations.questions import (
-    meant_arm,
     meant_frame,
     meant_tool,
     meant_units,

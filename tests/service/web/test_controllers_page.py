@@ -14,8 +14,10 @@ from service.problems import ANSWERS, KINDS
 from service.settings import Settings
 from service.web.controllers_page import CLIENTS, EXAMPLE_JOINTS, client_text
 from service.web.examples import examples_of
+from service.wire import reach_flat
 from service.wire.fixed_text import WIDTHS, places
 from service.wire.flat import FLAGS
+from service.wire.reach_lines import joint_keys
 
 pytestmark = pytest.mark.anyio
 PAGE = "/docs/controllers"
@@ -119,3 +121,31 @@ async def test_the_numbers_of_the_example_are_the_arm_s(client: httpx.AsyncClien
     assert fore == pytest.approx(told["elevation"])
     # The forearm keeps its direction while the upper arm moves.
     assert (await elevations(lean + 15, dip))[1] == pytest.approx(told["elevation"])
+
+
+# --- reach -----------------------------------------------------------------------------------
+
+
+async def test_every_field_of_a_reach_line_has_its_place(client: httpx.AsyncClient) -> None:
+    text = (await client.get(PAGE)).text
+    keys = (*reach_flat.BEGIN, *joint_keys(6), *reach_flat.END)
+    found = rows(text, "reach-place")
+    assert [name for name, _ in found] == list(keys)
+    line = examples_of("reach")["txt"].answer
+    for name, (key, first, width, meaning) in found:
+        assert (key, (int(first), int(width))) == (name, places(keys, reach_flat.WIDTHS)[name])
+        assert line[int(first) + int(width) - 1] in ";\r"
+        assert len(meaning) >= 8
+    assert line.rstrip("\r\n") in text
+    # One joint more or less moves what follows by as much as the page says.
+    seven = places((*reach_flat.BEGIN, *joint_keys(7), *reach_flat.END), reach_flat.WIDTHS)
+    six = places(keys, reach_flat.WIDTHS)
+    assert seven["margin"].first - six["margin"].first == 13
+    assert "moves what follows by 13 characters" in text.replace("\n", " ")
+
+
+async def test_the_target_shown_is_answered_as_shown(client: httpx.AsyncClient) -> None:
+    text = (await client.get(PAGE)).text.replace("&amp;", "&")
+    ((address, line),) = re.findall(r'<h2 id="reach">.*?<pre>GET (\S+)\n(.*?)</pre>', text, re.S)
+    answer = (await client.get(address)).text.rstrip("\r\n")
+    assert (answer[:12], answer[48:]) == (line[:12], line[48:])

@@ -78,7 +78,7 @@ async def test_every_refusal_is_a_problem(client: httpx.AsyncClient) -> None:
         if status >= "400"
     ]
     assert len(refusals) >= 20
-    asked_flat = ("pose", "jacobian", "relation", "rotation")
+    asked_flat = ("pose", "jacobian", "relation", "reach", "rotation")
     flat = {f"{method}-{what}" for method in ("get", "head") for what in asked_flat}
     for response, operation, status in refusals:
         media = ["application/problem+json"]

@@ -1,0 +1,309 @@
+"""Verdicts, reasons and solutions as they are answered, in the user's units and frame.
+
+All solutions of a batch of targets are judged together; words are made one target at a time. Left
+out: asking for them (reach.py).
+"""
+
+from collections.abc import Sequence
+from dataclasses import replace
+from functools import cached_property
+from itertools import pairwise
+from math import isfinite
+
+import numpy as np
+
+from kinematics.findings import FINE, OUTSIDE_TRAVEL, Finding
+from kinematics.jacobian import motion_of
+from kinematics.kernels.judgement import SMALLEST
+from kinematics.reach.targets import (
+    CODES,
+    PROOFS,
+    VERDICTS,
+    Checks,
+    Family,
+    Reason,
+)
+from kinematics.reach.targets import (
+    OUTSIDE_TRAVEL as OUTSIDE,
+)
+from kinematics.singularity import STATES
+from kinematics.table import FloatArray
+from kinematics.transforms import in_frame
+from kinematics.travel_limits import each_travel_findings, limits_exceeded
+from service.convert import (
+    Units,
+    computed_finding_out,
+    finding_out,
+    joint_row_out,
+    joint_values_out,
+)
+from service.operations.questions import Question
+from service.operations.singularities import Judged, judged, judged_reading
+from service.wire.poses import pose_answer
+
+NO_STATE = "none"
+
+
+class ToldChecks:
+    """What was found for some targets, to be told.
+
+    Attributes
+    ----------
+    judged : the solutions' singularity; None where there are none.
+    beyond : which solutions are beyond a travel or working travel limit.
+    ranks : for each target, indices into all solutions, the best first.
+
+    With ``best_only`` one solution is told of each target, but all that exceed travel; with
+    ``first_alone`` the first of one target, which takes less.
+    """
+
+    def __init__(
+        self,
+        question: Question,
+        checks: Checks,
+        judged: Judged | None,
+        beyond: Sequence[bool],
+        *,
+        best_only: bool = False,
+        by_singularity: bool = False,
+        first_alone: bool = False,
+    ) -> None:
+        self.question, self.checks = question, checks
+        self.judged, self.beyond = judged, beyond
+        self._best_only, self._first_alone = best_only, first_alone
+        spans = [range(*span) for span in pairwise(checks.offsets.tolist())]
+        self.ranks: Sequence[Sequence[int]] = (
+            [self._ranked(span) for span in spans] if by_singularity else spans
+        )
+
+    def _ranked(self, solutions: range) -> Sequence[int]:
+        """Return solutions, the farthest from singular first."""
+        if self.judged is None:
+            return solutions
+        readings = self.judged.readings
+        return sorted(solutions, key=lambda solution: -readings[solution][SMALLEST])
+
+    def told_ranks(self, index: int) -> Sequence[int]:
+        """Return the solutions of one target that are to be told."""
+        ranks = self.ranks[index]
+        best_only = self._best_only and self.checks.verdict[index] != OUTSIDE
+        return ranks[:1] if best_only or self._first_alone else ranks
+
+    @cached_property
+    def joints(self) -> list[list[float]]:
+        """Joint values of all solutions, in the user's units."""
+        question, checks = self.question, self.checks
+        if self._first_alone:
+            return [joint_row_out(question.arm, question.units, checks.joint_values[0].tolist())]
+        values: list[list[float]] = joint_values_out(
+            question.arm, question.units, checks.joint_values
+        ).tolist()
+        return values
+
+    @cached_property
+    def errors(self) -> tuple[list[float], list[float]]:
+        """Position and angle errors of all solutions, in the user's units."""
+        units, checks = self.question.units, self.checks
+        if self._first_alone:
+            return (
+                [units.value_out(float(checks.position_error[0]), "m")],
+                [units.value_out(float(checks.angle_error[0]), "rad")],
+            )
+        return (
+            units.length_out(checks.position_error).tolist(),
+            units.angle_out(checks.angle_error).tolist(),
+        )
+
+    @cached_property
+    def _limits(self) -> Sequence[tuple[Finding, ...]]:
+        """The findings about limits that each solution exceeds."""
+        return each_travel_findings(self.question.arm, self.checks.joint_values)
+
+    def found(self, index: int) -> int:
+        """Return how many solutions were found for a target, told or not."""
+        return int(self.checks.found[index])
+
+    def state(self, solution: int) -> str:
+        """Return whether a solution is regular, near or singular."""
+        return NO_STATE if self.judged is None else STATES[self.judged.states[solution]]
+
+    def branch(self, solution: int) -> str:
+        """Return a solution's branch in words; empty where the arm is of no class with names."""
+        place = int(self.checks.branch[solution])
+        return "" if place < 0 else self.checks.branches[place]
+
+    def solution(self, solution: int) -> dict[str, object]:
+        """Return one solution as answered."""
+        margin = float(self.checks.margin[solution])
+        singularity: dict[str, object] | None = None
+        said: tuple[Finding, ...] = ()
+        if self.judged is not None:
+            turned = self.question.base_in_frame[:3, :3]
+            singularity, said = self.judged.told(solution, turned)
+        findings: list[dict[str, object]] = []
+        if self.beyond[solution]:
+            beyond = self._limits[solution]
+            findings = [beyond_out(self.question.units, finding) for finding in beyond]
+        findings += [computed_finding_out(self.question.units, finding) for finding in said]
+        return {
+            "joints": self.joints[solution],
+            "margin": margin if isfinite(margin) else None,
+            "branch": self.branch(solution),
+            "singularity": singularity,
+            "position_error": self.errors[0][solution],
+            "angle_error": self.errors[1][solution],
+            "findings": findings,
+        }
+
+    def codes(self, solution: int) -> frozenset[int]:
+        """Return the codes of what is to be known of one solution, without the words."""
+        found: set[int] = set()
+        if self.judged is not None:
+            found.add(self.judged.states[solution])
+            if self.judged.space.watched_position_rank:
+                said = self.judged.told(solution, self.question.base_in_frame[:3, :3])[1]
+                found |= {finding.code for finding in said}
+        if self.beyond[solution]:
+            found |= {finding.code for finding in self._limits[solution]}
+        return frozenset(found - {FINE})
+
+    def item(self, index: int, *, form: str, repaired: Sequence[Finding]) -> dict[str, object]:
+        """Return what is answered to one target, all but its name."""
+        checks, units = self.checks, self.question.units
+        told = [self.solution(rank) for rank in self.told_ranks(index)]
+        found, findings = self.found(index), list(repaired)
+        if found > len(told) and not (self._best_only or self._first_alone):
+            # Of the best alone nobody expects that there are no others.
+            findings += checks.findings_of(index)
+        verdict = int(checks.verdict[index])
+        code = CODES[verdict]
+        if not code:
+            of_best = told[0]["findings"] if told else []
+            assert isinstance(of_best, list)
+            codes = [finding.code for finding in findings]
+            code = max([*codes, *(finding["code"] for finding in of_best)], default=0)
+        return {
+            "ok": not CODES[verdict],
+            "code": code,
+            "verdict": VERDICTS[verdict],
+            "proof": PROOFS[int(checks.proof[index])],
+            "reason": reason_out(self.question, checks.reason_of(index), form),
+            "solutions": told,
+            "families": [family_out(self.question, family) for family in checks.families_of(index)],
+            "found": found,
+            "findings": [finding_out(units, finding) for finding in findings],
+        }
+
+
+def told_together(
+    question: Question, checks: Checks, *, best_only: bool, by_singularity: bool
+) -> ToldChecks:
+    """Return what was found with all solutions that may be told judged in one batch."""
+    if best_only and not by_singularity:
+        checks = _best_alone(checks)
+    joint_values = checks.joint_values
+    if not len(joint_values):
+        return ToldChecks(question, checks, None, [])
+    motion = motion_of(question.arm, joint_values, question.tool.tool_in_flange)
+    working, travel = limits_exceeded(question.arm, joint_values)
+    return ToldChecks(
+        question,
+        checks,
+        judged(question, joint_values, motion),
+        (working | travel).tolist(),
+        best_only=best_only,
+        by_singularity=by_singularity,
+    )
+
+
+def _best_alone(checks: Checks) -> Checks:
+    """Return the same with one solution for each target, but all of those that exceed travel."""
+    counts = np.diff(checks.offsets)
+    kept = np.where(checks.verdict == OUTSIDE, counts, np.minimum(counts, 1))
+    rank = np.arange(len(checks.joint_values)) - np.repeat(checks.offsets[:-1], counts)
+    told = rank < np.repeat(kept, counts)
+    return replace(
+        checks,
+        offsets=np.concatenate([[0], np.cumsum(kept)]),
+        **{name: getattr(checks, name)[told] for name in _OF_SOLUTIONS},
+    )
+
+
+_OF_SOLUTIONS = (
+    *("joint_values", "margin", "outside_working", "position_error", "angle_error", "branch"),
+)
+
+
+def told_best(question: Question, checks: Checks) -> ToldChecks:
+    """Return what was found for one target, of which the best solution alone can be told."""
+    if not len(checks.joint_values):
+        return ToldChecks(question, checks, None, [])
+    joint_values = checks.joint_values[0].tolist()
+    read = question.reader.read(joint_values)
+    found = judged_reading(question, joint_values, read)
+    return ToldChecks(question, checks, found, [read.outside], first_alone=True)
+
+
+def beyond_out(units: Units, finding: Finding) -> dict[str, object]:
+    """Return a finding about a limit as answered, and by how much travel is exceeded."""
+    told = computed_finding_out(units, finding)
+    if finding.code == OUTSIDE_TRAVEL:
+        told["excess"] = units.value_out(abs(finding.measure - finding.threshold), finding.unit)
+    return told
+
+
+def reason_say(units: Units, reason: Reason) -> str:
+    """Return the sentence of a reason in the user's units."""
+    return reason.say.format(
+        **{
+            name: f"{units.value_out(value, reason.unit):.6g} {units.unit_out(reason.unit)}"
+            for name, value in (
+                ("shortfall", reason.shortfall),
+                ("measure", reason.measure),
+                ("threshold", reason.threshold),
+            )
+        }
+    )
+
+
+def reason_out(question: Question, reason: Reason | None, form: str) -> dict[str, object] | None:
+    """Return a reason as answered; the nearest pose in the frame asked for."""
+    if reason is None:
+        return None
+    units, nearest = question.units, reason.nearest
+    return {
+        "code": reason.code,
+        "say": reason_say(units, reason),
+        "stage": reason.stage,
+        "shortfall": units.value_out(reason.shortfall, reason.unit),
+        "unit": units.unit_out(reason.unit),
+        "nearest": None
+        if nearest is None
+        else pose_answer(in_frame(question.base_in_frame, nearest), form, units),
+    }
+
+
+def family_out(question: Question, family: Family) -> dict[str, object]:
+    """Return a family as answered."""
+    units = question.units
+    answer: dict[str, object] = {
+        "free_joints": list(family.free_joints),
+        "interval": [
+            [units.value_out(bound, family.unit) for bound in bounds] for bounds in family.interval
+        ],
+        "unit": units.unit_out(family.unit),
+        "witness": {"joints": _joints_out(question, family.witness)},
+    }
+    if family.relation is not None:
+        constant = f"{units.value_out(family.measure, family.unit):.6g}"
+        answer["relation"] = family.relation.format(
+            measure=f"{constant} {units.unit_out(family.unit)}"
+        )
+    return answer
+
+
+def _joints_out(question: Question, witness: FloatArray) -> list[float]:
+    values: list[float] = joint_values_out(
+        question.arm, question.units, np.asarray(witness)
+    ).tolist()
+    return values

@@ -1,0 +1,103 @@
+"""Answers about many targets as CSV (RFC 4180): the flat keys and what a planner sorts by.
+
+One line for each target with its best solution, or one for each solution. Left out: part locations
+that come in (reach_csv.py), the answer about one target (reach_flat.py).
+"""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from kinematics.table import FloatArray
+from service.wire.csv_rows import NAME
+from service.wire.csv_text import FIRST, REFUSALS_FROM, line_begins, number_texts, quoted
+from service.wire.flat import NO_LIMITS_MARGIN, NO_NUMBER
+
+AFTER_STAMP = ("verdict", "solutions")
+AFTER_JOINTS = ("margin", "state", "units", "revision", "digest")
+BESIDE = ("solution", "proof", "branch", "position_error", "angle_error", "reason", NAME)
+"""What a line has beside the keys of a flat answer: ``solution`` counts those of one target."""
+
+_END = "\r\n"
+
+
+@dataclass(frozen=True)
+class ReachColumns:
+    """What lines say, an entry for each line.
+
+    Attributes
+    ----------
+    codes : (lines,); applying : for each code that is no refusal, where it applies, (lines,).
+    verdicts, proofs, branches, reasons, states, names : texts, empty where there is nothing.
+    counts, ranks : solutions of the target, and which of them a line tells, from 1; 0 for none.
+    joints : (lines, joints), in the user's units; NaN where there is no solution to be used.
+    margins : (lines,), infinite without travel limits; errors : (lines, 2), position and angle.
+    """
+
+    codes: NDArray[np.int64]
+    applying: Mapping[int, NDArray[np.bool_]]
+    verdicts: Sequence[str]
+    counts: Sequence[int]
+    joints: FloatArray
+    margins: FloatArray
+    states: Sequence[str]
+    ranks: Sequence[int]
+    proofs: Sequence[str]
+    branches: Sequence[str]
+    errors: FloatArray
+    reasons: Sequence[str]
+    names: Sequence[str]
+
+
+@dataclass(frozen=True)
+class SameInAll:
+    """What is the same in all lines."""
+
+    seq: int
+    tag: int
+    t_ms: int
+    units: str
+    revision: int
+    digest: str
+
+
+def joint_keys(joints: int) -> tuple[str, ...]:
+    """Return the keys of joint values, ``q1`` ... ``qn``."""
+    return tuple(f"q{joint}" for joint in range(1, joints + 1))
+
+
+def reach_head(joints: int) -> bytes:
+    """Return the first line.
+
+    Examples
+    --------
+    >>> reach_head(1)[:58]
+    b'ok,code,flags,seq,tag,t_ms,verdict,solutions,q1,margin,sta'
+    """
+    keys = (*FIRST, *AFTER_STAMP, *joint_keys(joints), *AFTER_JOINTS, *BESIDE)
+    return (",".join(keys) + _END).encode("ascii")
+
+
+def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
+    """Return the lines."""
+    if not len(columns.codes):
+        return b""
+    begins = line_begins(columns.codes, columns.applying, (same.seq, same.tag, same.t_ms))
+    none = columns.codes >= REFUSALS_FROM
+    margins = np.where(np.isinf(columns.margins), NO_LIMITS_MARGIN, columns.margins)
+    numbers = np.column_stack([columns.joints, margins])
+    joints = number_texts(np.where(none[:, None], NO_NUMBER, numbers))
+    errors = number_texts(np.where(none[:, None], NO_NUMBER, columns.errors))
+    tail = f"{same.units},{same.revision},{same.digest}"
+    told = zip(
+        begins, columns.verdicts, columns.counts, joints, columns.states, columns.ranks,
+        columns.proofs, columns.branches, errors, columns.reasons, columns.names, strict=True,
+    )  # fmt: skip
+    lines = [
+        f"{begin},{verdict},{count},{values},{state},{tail},{rank},{proof},{quoted(branch)},"
+        f"{error},{quoted(reason)},{quoted(name)}"
+        for begin, verdict, count, values, state, rank, proof, branch, error, reason, name in told
+    ]
+    return (_END.join(lines) + _END).encode("utf-8")
