@@ -41,6 +41,9 @@ LAYERS = (
         "kernels.angles",
         "kernels.travel",
         "kernels.judgement",
+        "kernels.whole_turns",
+        "kernels.best_postures",
+        "kernels.branch_signs",
         "kernels.rotation_matrices",
         "kernels.frame_graph",
         "kernels.frame_poses",
@@ -81,6 +84,59 @@ LAYERS = (
         "lost_motion",
         "joint_speeds",
     ),
+    # Joint motions for a place or pose: lines in space and three joints of them.
+    (
+        "inverse",
+        "inverse.tolerances",
+        "inverse.entries",
+        "inverse.screws",
+        "inverse.geometry",
+        "inverse.trig_roots",
+        "inverse.regional_pairs",
+        "inverse.regional_rows",
+        "inverse.regional_equations",
+        "inverse.regional_closing",
+        "inverse.regional_slides",
+        "inverse.regional",
+        "inverse.regional_nearest",
+        "inverse.regional_places",
+    ),
+    # Six joints with a special triple: taken apart, closed, brought onto their targets.
+    ("inverse.found", "inverse.landing", "inverse.polish", "inverse.twins"),
+    ("inverse.regional_arm",),
+    # Downhill to a target, and where to begin.
+    ("inverse.desk", "inverse.descent", "inverse.starts"),
+    (
+        "inverse.triple",
+        "inverse.peel",
+        "inverse.outer_answers",
+        "inverse.closing",
+        "inverse.solution_table",
+        "inverse.special_triple",
+    ),
+    # Whatever has no closed form: many starts. Arms that turn about one direction.
+    ("inverse.attempts",),
+    ("inverse.rooms", "inverse.iterative"),
+    ("inverse.planar", "inverse.level_wrist", "inverse.four_axes_postures", "inverse.settling"),
+    ("inverse.four_axes_arms", "inverse.four_axes"),
+    # Joint motions that leave the tool where it is.
+    ("inverse.continuation", "inverse.self_motions"),
+    ("inverse.families",),
+    # Which method answers for which arm, and joint values from motions.
+    ("inverse.drive", "inverse.lost_rank", "inverse.measured", "inverse.several"),
+    ("inverse.compromises",),
+    ("inverse.missing_joint",),
+    ("inverse.solve",),
+    # Verdicts on targets: what is asked and answered, the parts of an arm, and how they are made.
+    ("reach", "reach.targets", "reach.arm_parts", "reach.aligned_joints"),
+    ("reach.branches", "reach.bounds", "reach.family_members"),
+    ("reach.verdicts",),
+    ("reach.near_enough", "reach.at_limits"),
+    ("reach.reasons",),
+    ("reach.answers",),
+    ("reach.spins",),
+    ("reach.cones",),
+    ("reach.checks", "reach.first_checks"),
     ("posture_reader", "warm_up"),
 )
 
@@ -88,6 +144,7 @@ LAYERS = (
 CORE_IMPORTS = {
     *("numpy", "scipy", "numba"),
     *("collections", "dataclasses", "enum", "functools", "hashlib", "itertools", "json", "math"),
+    "cmath",
     *("difflib", "numbers", "re", "typing", "weakref"),
     # What a cache of machine code that cannot be read or written fails with, and what its code
     # was made from.

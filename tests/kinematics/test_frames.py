@@ -17,7 +17,7 @@ from kinematics.kernels.given_poses import write_poses
 from kinematics.orientation_forms import values_of
 from kinematics.pose_batches import poses_as_given
 from kinematics.transforms import pose
-from kinematics.warm_up import warm_up
+from kinematics.warm_up import RELATIONS, warm_up
 from tests.kinematics.networks import random_network
 
 UP = pose(np.eye(3), [0.0, 0.0, 1.0])
@@ -163,7 +163,7 @@ def test_what_follows_from_names_is_kept_of_few_relations() -> None:
 
 def test_kernels_are_compiled_once_and_ahead() -> None:
     """Nothing is compiled anew, which takes seconds, whatever network or form comes first."""
-    warm_up()
+    warm_up(RELATIONS)
     kernels: tuple[Any, ...] = (close_loops, shortest_ways, poses_along, loops_walked, write_poses)
     before = [len(kernel.signatures) for kernel in kernels]
     for form in ("quaternion-xyzw", "rotation-vector", "zyz-current"):
