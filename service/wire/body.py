@@ -10,6 +10,7 @@ from collections.abc import Sequence
 from time import monotonic
 from typing import Any
 
+import orjson
 from starlette.requests import ClientDisconnect, Request
 
 from service.errors import DuplicateKey, RequestTimeout, TooLarge, Unparseable, WrongMediaType
@@ -22,6 +23,9 @@ keys. Documents have some kilobytes; what may be longer has ways of its own (bul
 # A body may take its stall limit and then as long as a slow plant link needs: whoever sends one
 # byte at a time would otherwise hold a connection for days.
 _SLOWEST_BYTES_PER_S = 16 * 1024
+# Of an integer that does not fit 64 bits, some 19 digits, the quick parser makes a double.
+_ZEROS_FOR_DIGITS = bytes.maketrans(b"123456789", b"0" * 9)
+_LONG = b"0" * 19
 # An escaped half of a surrogate pair; alone it is no character and cannot be printed again.
 _SURROGATE = re.compile(rb"\\u[dD][89a-fA-F]")
 
@@ -106,6 +110,9 @@ def parse_json(raw: bytes) -> object:
     """
     if not raw:
         raise Unparseable("the body is empty", way_out="send a JSON object")
+    plain = _plain_document(raw)
+    if plain is not None:
+        return plain
     text = _text(raw)
     try:
         return _decoded(raw, text, _STRICT)
@@ -125,6 +132,22 @@ def parse_json(raw: bytes) -> object:
         raise DuplicateKey(
             f'the key "{key}" stands twice in one object', where=where, way_out="leave one of them"
         ) from None
+
+
+def _plain_document(raw: bytes) -> object:
+    """Return what ``raw`` says if it is plainly right, and None where that takes a closer look.
+
+    The quick parser keeps the last of two equal keys. Then fewer texts come out than went in.
+    """
+    # An escaped quote would be counted like one that ends a text.
+    if b"\\" in raw or _LONG in raw.translate(_ZEROS_FOR_DIGITS):
+        return None
+    try:
+        document = orjson.loads(raw)
+    except orjson.JSONDecodeError:
+        return None
+    is_whole = raw.count(b'"') == orjson.dumps(document).count(b'"')
+    return document if is_whole else None
 
 
 class _Twice(Exception):
