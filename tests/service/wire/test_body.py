@@ -9,6 +9,8 @@ from collections.abc import AsyncIterator
 import httpx
 import pytest
 from fastapi import FastAPI
+from hypothesis import given
+from hypothesis import strategies as st
 from starlette.requests import ClientDisconnect, Request
 
 from service.errors import DuplicateKey, RequestTimeout, ServiceError, TooLarge, Unparseable
@@ -145,6 +147,43 @@ def test_a_key_that_stands_twice(raw: bytes, where: tuple[str | int, ...]) -> No
     with pytest.raises(DuplicateKey) as caught:
         parse_json(raw)
     assert caught.value.where == where
+
+
+LEAVES = st.none() | st.booleans() | st.integers() | st.floats(allow_nan=False) | st.text()
+DOCUMENTS = st.recursive(
+    LEAVES, lambda inner: st.lists(inner) | st.dictionaries(st.text(), inner), max_leaves=20
+)
+
+
+@given(DOCUMENTS, st.booleans(), st.sampled_from([None, 1]))
+def test_any_document_is_read_as_the_standard_library_reads_it(
+    document: object, ascii_only: bool, indent: int | None
+) -> None:
+    text = json.dumps(document, ensure_ascii=ascii_only, indent=indent)
+    try:
+        raw = text.encode()
+    except UnicodeEncodeError:  # half of a surrogate pair
+        raw = json.dumps(document).encode()
+        with pytest.raises(Unparseable):
+            parse_json(raw)
+        return
+    # As text: 1, 1.0 and true are equal, and so are 0.0 and -0.0.
+    assert repr(parse_json(raw)) == repr(json.loads(raw))
+
+
+@given(st.dictionaries(st.text(), DOCUMENTS, min_size=1), DOCUMENTS, st.data())
+def test_any_key_that_stands_twice_is_found(
+    document: dict[str, object], again: object, data: st.DataObject
+) -> None:
+    twice = data.draw(st.sampled_from(sorted(document)))
+    parts = [*document.items(), (twice, again)]
+    raw = ",".join(f"{json.dumps(key)}:{json.dumps(value)}" for key, value in parts)
+    with pytest.raises((DuplicateKey, Unparseable)) as caught:
+        parse_json(f'[{{"b": {{{raw}}}}}]'.encode())
+    if isinstance(caught.value, DuplicateKey):
+        assert caught.value.where == (0, "b", twice)
+    else:
+        assert "surrogate" in str(caught.value)
 
 
 async def test_refusals_of_bodies_over_http(client: httpx.AsyncClient) -> None:
