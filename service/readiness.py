@@ -14,17 +14,25 @@ import sys
 import threading
 from collections.abc import Sequence
 from contextlib import suppress
+from pathlib import Path
 from time import monotonic
 
+from kinematics import warm_up as warm_up_module
 from kinematics.warm_up import POSTURES, REACH, RELATIONS, to_be_compiled, warm_up
 
 _LOG = logging.getLogger(__name__)
+
+_HOME = Path(warm_up_module.__file__).parents[1]
+"""The folder that this process has its own kernels from."""
 
 _LONG_S = 1.0
 _LONGEST_S = 120.0
 """Then this process compiles for itself, whatever keeps the other one."""
 
-_COMPILING = "  compiling for this machine, some seconds; the first questions wait for it"
+_COMPILING = (
+    "  compiling for this machine, once: poses in some seconds, reach in some tens of seconds;\n"
+    "  questions wait for it"
+)
 
 
 class Kernels:
@@ -121,6 +129,9 @@ class Readiness:
                 # What goes wrong there goes wrong here again, and is told here.
                 beside = subprocess.Popen(
                     [sys.executable, "-m", "kinematics.warm_up", part],
+                    # Of packages of one name the one in the folder it starts in would win: inside
+                    # a clone, the clone's, for a service that is installed elsewhere.
+                    cwd=_HOME,
                     stdin=subprocess.DEVNULL,
                     stdout=subprocess.DEVNULL,
                     stderr=subprocess.DEVNULL,

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.inverse.descent import descend_all
-from kinematics.inverse.desk import Lines, Room, desk_for, widened
+from kinematics.inverse.descent_arrays import Lines, Room, desk_for, widened
 from kinematics.inverse.starts import nearest_starts
 from kinematics.number_checks import FloatArray
 

@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.inverse.descent import damped_step, gap_at, normal_equations, slopes_at
-from kinematics.inverse.desk import Desk, Lines, Room
+from kinematics.inverse.descent_arrays import Desk, Lines, Room
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray
 

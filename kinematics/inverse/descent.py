@@ -18,7 +18,7 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.desk import Desk, Lines, Room
+from kinematics.inverse.descent_arrays import Desk, Lines, Room
 from kinematics.inverse.landing import columns_of, gap_to, land
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray

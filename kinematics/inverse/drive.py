@@ -22,6 +22,9 @@ from kinematics.table import FloatArray
 from kinematics.tolerances import MOST_TURNS, PASSIVE_FITS, TRAVEL_EDGE
 from kinematics.travel_limits import Limit, limits_of
 
+_LAST_BITS = 4
+"""Units in the last place that turning radians into degrees and back may change."""
+
 __all__ = ["CLIPPED", "INSIDE", "WORKING", "Drive", "Postures", "drive_of"]
 
 
@@ -99,7 +102,11 @@ class Drive:
         )
         self.box = box
         self.middle_of_travel = _middle(box)
-        self._box = (box, np.array([travel is not None for travel in travels], dtype=np.bool_))
+        # Onto a limit, or hardly inside: in degrees and back it must not be beyond.
+        rounded = np.isfinite(box) & (box != 0.0)
+        inside = np.spacing(np.abs(box), where=rounded, out=np.zeros_like(box))
+        ends = box + _LAST_BITS * inside * np.array([[1.0], [-1.0]])
+        self._ends = (ends, np.array([travel is not None for travel in travels], dtype=np.bool_))
 
     def postures(
         self,
@@ -123,9 +130,9 @@ class Drive:
         drive, passive, limits = self._of_kernel
         if still is not None:
             drive = (drive[0], drive[1], drive[2] & ~still)
-        box = (*self._box, edge)
+        ends = (*self._ends, edge)
         return Postures(
-            *postures_of(motions, drive, passive, limits, box, self._row_box, middle, MOST_TURNS)
+            *postures_of(motions, drive, passive, limits, ends, self._row_box, middle, MOST_TURNS)
         )
 
 

@@ -21,9 +21,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import Arm
-from kinematics.inverse.desk import FAR
+from kinematics.inverse.descent_arms import room_of
+from kinematics.inverse.descent_arrays import FAR
 from kinematics.inverse.iterative import TASKS
-from kinematics.inverse.rooms import room_of
 from kinematics.inverse.self_motions import Curve, SelfMotions
 from kinematics.inverse.tolerances import FAMILY_RELATION, FAMILY_TRAVEL
 from kinematics.table import FloatArray

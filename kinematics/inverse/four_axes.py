@@ -18,7 +18,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import Arm
-from kinematics.inverse.desk import desk_for
+from kinematics.inverse.descent_arms import lines_of, no_bounds
+from kinematics.inverse.descent_arrays import desk_for
 from kinematics.inverse.found import NO_STAGE, POSITION, REACH_ACROSS, TILT, Found
 from kinematics.inverse.four_axes_arms import (
     FourAxesGeometry,
@@ -36,7 +37,6 @@ from kinematics.inverse.four_axes_postures import (
 )
 from kinematics.inverse.level_wrist import MOST_LEVEL
 from kinematics.inverse.planar import ROUNDING
-from kinematics.inverse.rooms import lines_of, no_bounds
 from kinematics.inverse.screws import Screws, screws_of
 from kinematics.inverse.settling import SETTLED, WORTH_TELLING, Settled, settle, settled_on_table
 from kinematics.inverse.tolerances import EDGE_OF_ROUNDED, FOLD_OF_ROUNDED, TILT_TOLD

@@ -15,7 +15,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.desk import Lines
+from kinematics.inverse.descent_arrays import Lines
 from kinematics.inverse.level_wrist import MOST_LEVEL, level_postures
 from kinematics.inverse.planar import MOST, ComplexArray, three_joints
 from kinematics.kernels.compiler import compiled

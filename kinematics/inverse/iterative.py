@@ -17,15 +17,15 @@ from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
-from numpy.typing import NDArray
 
 from kinematics.arm import Arm
 from kinematics.inverse.attempts import Effort, Starts, search
 from kinematics.inverse.descent import DIRECTION, POSE, POSITION
-from kinematics.inverse.desk import Room
+from kinematics.inverse.descent_arms import lines_of, no_bounds, room_of, slopes_of, start_box
+from kinematics.inverse.descent_arrays import Room
 from kinematics.inverse.found import SEARCH, TRAVEL, Found
-from kinematics.inverse.landing import gaps_to, land_all
-from kinematics.inverse.rooms import lines_of, no_bounds, room_of, slopes_of, start_box
+from kinematics.inverse.landing import land_all
+from kinematics.inverse.measured import errors_of, wrapped
 from kinematics.inverse.screws import screws_of
 from kinematics.inverse.starts import scrambled_halton
 from kinematics.inverse.tolerances import (
@@ -91,7 +91,7 @@ class Search:
         wanted: int = 1,
         starts: int = SEARCH_STARTS,
     ) -> None:
-        self.arm, self.task = arm, TASKS[task]
+        self.arm, self.task, self._asked = arm, TASKS[task], task
         self.screws = screws_of(arm, tool_in_flange)
         self.lines = lines_of(self.screws, arm)
         relaxed = self._rank() < {POSE: 6, POSITION: 3, DIRECTION: 5}[self.task]
@@ -149,10 +149,10 @@ class Search:
             shortfall[reached] = np.maximum(-lacking, 0.0)
         place = np.arange(self._effort.wanted)[None, :] < met.many[:, None]
         target = np.nonzero(place)[0]
-        values = met.joint_values[place]
-        position_error, angle_error = self._errors(values, scaled, target)
+        motions = self._motions(met.joint_values[place])
+        position_error, angle_error = errors_of(self.screws, motions, targets, target, self._asked)
         return Found(
-            motions=self._motions(values),
+            motions=motions,
             target=target,
             position_error=position_error,
             angle_error=angle_error,
@@ -198,22 +198,5 @@ class Search:
     def _motions(self, values: FloatArray) -> FloatArray:
         """Return scaled joint values (k, joints) as row motions, rad in (-pi, pi] and metres."""
         moved = values @ self.lines.drive.T
-        turned = moved - 2.0 * np.pi * np.ceil((moved - np.pi) / (2.0 * np.pi))
-        return np.where(self.screws.prismatic, moved * self.screws.length, turned)
-
-    def _errors(
-        self, values: FloatArray, scaled: FloatArray, target: NDArray[np.intp]
-    ) -> tuple[FloatArray, FloatArray]:
-        lines = self.lines
-        poses = np.empty((len(values), 4, 4))
-        motions = np.ascontiguousarray(values @ lines.drive.T)
-        land_all(lines.axis, lines.point, lines.prismatic, lines.tool_at_zero, motions, poses)
-        gaps = np.empty((len(values), 2))
-        gaps_to(poses, scaled, target.astype(np.float64), gaps)
-        if self.task == POSITION:
-            gaps[:, 1] = 0.0
-        elif self.task == DIRECTION:
-            wanted = scaled[target, :3, 2]
-            across = np.linalg.norm(np.cross(poses[:, :3, 2], wanted), axis=1)
-            gaps[:, 1] = np.arctan2(across, (poses[:, :3, 2] * wanted).sum(axis=1))
-        return gaps[:, 0] * self.screws.length, gaps[:, 1]
+        prismatic = self.screws.prismatic
+        return wrapped(np.where(prismatic, moved * self.screws.length, moved), prismatic)

@@ -18,7 +18,7 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.entries import X, Y, Z
+from kinematics.inverse.kernel_numbers import X, Y, Z
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray
 

@@ -17,7 +17,7 @@ import math
 
 import numpy as np
 
-from kinematics.inverse.entries import NONE
+from kinematics.inverse.kernel_numbers import NONE
 from kinematics.inverse.regional_closing import (
     NO_TERM,
     close,

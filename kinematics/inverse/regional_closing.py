@@ -12,7 +12,7 @@ Not covered: finding c (regional.py).
 
 import math
 
-from kinematics.inverse.entries import entries
+from kinematics.inverse.kernel_numbers import entries
 from kinematics.inverse.regional_equations import (
     BESIDE,
     V1,

@@ -13,7 +13,7 @@ Not covered: two slides as the pair, and planes moved by a slide (regional_slide
 
 import math
 
-from kinematics.inverse.entries import entries
+from kinematics.inverse.kernel_numbers import entries
 from kinematics.inverse.regional_pairs import (
     ACROSS,
     ALONG,

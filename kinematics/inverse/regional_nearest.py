@@ -13,7 +13,7 @@ import math
 
 import numpy as np
 
-from kinematics.inverse.entries import NO
+from kinematics.inverse.kernel_numbers import NO
 from kinematics.inverse.regional_pairs import Flags
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray

@@ -15,7 +15,7 @@ import math
 
 import numpy as np
 
-from kinematics.inverse.entries import entries
+from kinematics.inverse.kernel_numbers import entries
 from kinematics.inverse.tolerances import AXES_WELL_APART, EXACT_AXES
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray

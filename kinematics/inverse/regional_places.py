@@ -15,7 +15,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.entries import NO
+from kinematics.inverse.kernel_numbers import NO
 from kinematics.inverse.regional import regional
 from kinematics.inverse.regional_nearest import carry, downhill
 from kinematics.inverse.regional_pairs import Flags

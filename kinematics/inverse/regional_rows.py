@@ -9,7 +9,7 @@ Source: none; a layout. Not covered: how many there really are; a full list take
 
 import math
 
-from kinematics.inverse.entries import entries
+from kinematics.inverse.kernel_numbers import entries
 from kinematics.inverse.tolerances import FREE_JOINT, MAYBE_FREE
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray

@@ -15,7 +15,7 @@ import math
 
 import numpy as np
 
-from kinematics.inverse.entries import NONE
+from kinematics.inverse.kernel_numbers import NONE
 from kinematics.inverse.regional_pairs import ACROSS, ALONG, E2, HA, HB, Flags, dot_at
 from kinematics.inverse.regional_rows import (
     C_FREE,

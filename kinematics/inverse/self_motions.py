@@ -22,8 +22,8 @@ from numpy.typing import NDArray
 from kinematics.arm import Arm
 from kinematics.inverse.continuation import CLOSED, corrected, follow
 from kinematics.inverse.descent import gap_at
-from kinematics.inverse.desk import desk_for
-from kinematics.inverse.rooms import lines_of, no_bounds, slopes_of
+from kinematics.inverse.descent_arms import lines_of, no_bounds, slopes_of
+from kinematics.inverse.descent_arrays import desk_for
 from kinematics.inverse.screws import screws_of
 from kinematics.inverse.tolerances import (
     FAMILY_MEETS,

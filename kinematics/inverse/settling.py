@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.inverse.descent import ABOUT, descend_all
-from kinematics.inverse.desk import Desk, Lines, Room, desk_for
+from kinematics.inverse.descent_arrays import Desk, Lines, Room, desk_for
 from kinematics.inverse.landing import gap_to, land
 from kinematics.inverse.planar import ROUNDING
 from kinematics.kernels.compiler import compiled

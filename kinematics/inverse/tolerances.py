@@ -5,8 +5,8 @@ Lengths are shares of the arm's length, angles radians.
 
 # --- search ----------------------------------------------------------------------------------
 SEARCH_ACCEPTS = 1e-9
-"""Gap, a share of the length or rad, within which a search is on its target: what the wire's
-contract calls exact. Regular solutions end at some 1e-14, singular ones some digits before."""
+"""Gap, a share of the length or rad, within which a search is on its target: what is promised of
+exact solutions. Regular ones end at some 1e-14, singular ones some digits before."""
 
 SEARCH_ACCEPTS_FEW = 2e-4
 """The same for an arm that cannot meet all of a target: a little over the usual tolerance of an
@@ -118,7 +118,7 @@ NO_HOPE = 1e-6
 posture that is nearest, not to one that is there."""
 
 ACCEPTED = 1e-9
-"""Gap up to which motions are a solution: what the wire's contract calls exact."""
+"""Gap up to which motions are a solution: what is promised of exact ones."""
 
 MOST_IDLE = 3
 """Steps that hardly better what is a solution already: it may be nearest, not there."""

@@ -15,7 +15,7 @@ import math
 
 import numpy as np
 
-from kinematics.inverse.entries import NONE, entries
+from kinematics.inverse.kernel_numbers import NONE, entries
 from kinematics.kernels.compiler import compiled
 from kinematics.number_checks import FloatArray
 

@@ -93,6 +93,10 @@ def _sources(path: Path) -> str:
     return hashlib.sha256(b"\0".join(texts[at] for at in sorted(texts))).hexdigest()
 
 
+_UNREADABLE = (OSError, EOFError, pickle.UnpicklingError, ImportError, AttributeError)
+"""What reading a cache fails with: a full disk, a torn file, types of a module that is no more."""
+
+
 class _CacheIfPossible(FunctionCache):
     """Numba's cache, for which a full disk or a torn file is a reason to compile, not to fail.
 
@@ -113,17 +117,20 @@ class _CacheIfPossible(FunctionCache):
         file: Any = self._cache_file
         try:
             return bool(file._load_index())
-        except (OSError, EOFError, pickle.UnpicklingError):
+        except _UNREADABLE:
             return False
 
     def save_overload(self, sig: object, data: object) -> None:
-        with suppress(OSError):
+        with suppress(*_UNREADABLE):
             super().save_overload(sig, data)  # type: ignore[no-untyped-call]
 
     def load_overload(self, sig: object, target_context: object) -> object:
         try:
             return super().load_overload(sig, target_context)  # type: ignore[no-untyped-call]
-        except (OSError, EOFError, pickle.UnpicklingError):
+        except _UNREADABLE:
+            # So that what is compiled instead can be kept.
+            with suppress(OSError):
+                self.flush()  # type: ignore[no-untyped-call]
             return None
 
 

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 from kinematics.inverse.drive import drive_of
 from kinematics.inverse.found import Found, none_found
 from kinematics.inverse.lost_rank import LostRank
-from kinematics.inverse.measured import POSE
+from kinematics.inverse.measured import POSE, POSITION
 from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import method_of
 from kinematics.reach.at_limits import with_ends_of_travel
@@ -84,7 +84,7 @@ class Way(Protocol):
     def answer(self, targets: Targets, asked: Asked) -> Checks: ...
 
 
-_CLOSED_SECONDS, _SHORT_SEARCH_SECONDS, _SEARCH_SECONDS = 3e-5, 2e-3, 3e-3
+_CLOSED_SECONDS, _SHORT_SEARCH_SECONDS, _SEARCH_SECONDS = 3e-5, 2e-3, 6e-3
 """About what a target takes by a closed form, and by a search where one target in ten is not found:
 those that are take 0.3 ms, the others 15 ms and more."""
 
@@ -101,7 +101,7 @@ class Answerer:
         self.ranking = ranking
         self.method = method_of(ranking.arm, ranking.tool_in_flange, task)
         self._near_enough = NearEnough(ranking, self.method)
-        six = ranking.screws.rows == 6 == ranking.arm.joint_count
+        six = ranking.screws.rows == 6 == ranking.arm.joint_count and task != POSITION
         self._lost_rank = LostRank(ranking.screws) if six else None
 
     @cached_property
@@ -138,16 +138,16 @@ class Answerer:
                 poses = targets.tool_in_base
                 found, families = with_witnesses(self.method, found, poses, suspects)
         ranked = self._ranked(found, targets, asked)
-        if self._near_enough.searches and not ranked.all_inside:
-            asked.go_on()
-            wanted = ~ranked.inside & (self._held(targets) == FREE)
-            found = self._near_enough.elsewhere(found, targets, wanted)
-            ranked = self._ranked(found, targets, asked)
         if not ranked.all_inside:
             at_ends = with_ends_of_travel(self.ranking, self.method, found, targets, ranked)
             if at_ends is not None:
                 found = at_ends
                 ranked = self._ranked(found, targets, asked)
+        if self._near_enough.searches and not ranked.all_inside:
+            asked.go_on()
+            wanted = ~ranked.inside & (self._held(targets) == FREE)
+            found = self._near_enough.elsewhere(found, targets, wanted)
+            ranked = self._ranked(found, targets, asked)
         if self.method.closed and not ranked.all_inside:
             left = np.flatnonzero(~ranked.inside & is_open)
             if len(left):
@@ -241,6 +241,9 @@ class Answerer:
             offsets, kept = _listed(ranked.offsets, some & (verdict <= OUTSIDE_TRAVEL))
         solution = ranked.solution[kept]
         branch = self.ranking.branches.of(found.motions, found.target)
+        position_error, angle_error = found.position_error[solution], found.angle_error[solution]
+        if ranked.errors is not None:
+            position_error, angle_error = ranked.errors[kept].T
         return Checks(
             verdict,
             proof,
@@ -249,8 +252,8 @@ class Answerer:
             ranked.joint_values[kept],
             ranked.margin[kept],
             ranked.outside_working[kept],
-            found.position_error[solution],
-            found.angle_error[solution],
+            position_error,
+            angle_error,
             branch[solution],
             self.ranking.branches.sentences,
             told,

@@ -19,6 +19,7 @@ from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import Method
 from kinematics.reach.targets import Targets
 from kinematics.reach.verdicts import Ranked, Ranking
+from kinematics.travel_limits import travel_margin
 
 
 def with_ends_of_travel(
@@ -47,5 +48,7 @@ def with_ends_of_travel(
         angle_error=angle,
         open=found.open,
     )
-    near = picked(tried, ranking.accepted(tried, targets))
+    moved = (at_ends != postures.joint_values).any(axis=1)
+    within = moved & (travel_margin(ranking.arm, at_ends) >= 0.0)
+    near = picked(tried, within & ranking.accepted(tried, targets))
     return joined(found, near, np.arange(count)) if len(near.target) else None

@@ -45,7 +45,7 @@ from kinematics.reach.targets import (
 )
 from kinematics.reach.verdicts import Ranked, Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import MOST_FOLLOWED
+from kinematics.tolerances import MOST_SPARE_FOLLOWED
 from kinematics.travel_limits import limits_of
 
 _SAID = {
@@ -67,10 +67,10 @@ _SAID = {
 _NOT_FOLLOWED = Finding(
     FINE,
     "families-not-followed",
-    "some postures are points of a family that was not followed, as only {threshold} targets of a "
-    "question are: ask for this one alone",
+    "some postures are points of a family, which was not followed, as that takes long for many "
+    "targets: ask for this one alone",
     0.0,
-    float(MOST_FOLLOWED),
+    0.0,
 )
 
 
@@ -121,7 +121,9 @@ class Told:
         if self.method.idle.any():
             values = self.ranked.joint_values[first:last]
             return tuple(turned_freely(self.ranking.arm, self.method.idle, one) for one in values)
-        if not self.method.complete and spare_joints(self.method):
+        if self._has_spare_joints:
+            if index >= MOST_SPARE_FOLLOWED:
+                return ()
             best = self.ranked.joint_values[first : first + 1]
             return families_told(self.method, self.targets.tool_in_base[index], best)
         return self.families_found.get(index, ())
@@ -130,7 +132,8 @@ class Told:
         """Return what else is to be known: postures that are not listed."""
         if self.verdict[index] != REACHABLE:
             return ()
-        told = () if self.families_found.get(index) != () else (_NOT_FOLLOWED,)
+        left = index >= MOST_SPARE_FOLLOWED if self._has_spare_joints else False
+        told = (_NOT_FOLLOWED,) if left or self.families_found.get(index) == () else ()
         first, last = self.ranked.offsets[index : index + 2]
         seen = self.ranked.seen[self.ranked.target == index]
         count, listed = float(np.where(seen < 0, -seen - 1, seen).sum()), float(last - first)
@@ -139,6 +142,12 @@ class Told:
         more = "" if (seen >= 0).all() else "at least "
         say = f"{more}{{measure}} postures within travel get there, the best {{threshold}} are told"
         return (*told, Finding(FINE, "more-postures", say, count, listed))
+
+    @property
+    def _has_spare_joints(self) -> bool:
+        """Whether every posture is a point of families."""
+        method = self.method
+        return not method.complete and not method.idle.any() and spare_joints(method) > 0
 
     # --- reasons -----------------------------------------------------------------------------
 

@@ -37,6 +37,8 @@ class Ranked(NamedTuple):
     ----------
     joint_values : (p, joints); margin : (p,); outside_working : (p,).
     solution : (p,), index of the solution found.
+    errors : (p, 2), metres and rad; None where they are those of the solutions, as none was put
+        onto a limit.
     target : (k,), of each solution.
     inside : (m,), whether the target's postures are within travel; if not, none is.
     all_inside : whether every target's are; all_listed : and no posture is left out.
@@ -49,6 +51,7 @@ class Ranked(NamedTuple):
     margin: FloatArray
     outside_working: NDArray[np.bool_]
     solution: NDArray[np.int64]
+    errors: FloatArray | None
     target: NDArray[np.intp]
     inside: NDArray[np.bool_]
     all_inside: bool
@@ -84,7 +87,7 @@ class Ranking:
             close: NDArray[np.bool_] = found.position_error <= EXACT_REACH * self.screws.length
             return close & (found.angle_error <= EXACT_REACH)
         errors = np.stack([found.position_error, found.angle_error], axis=1)
-        near: NDArray[np.bool_] = (errors <= self.allowed(targets)[found.target]).all(axis=1)
+        near: NDArray[np.bool_] = np.all(errors <= self.allowed(targets)[found.target], axis=1)
         return near
 
     def allowed(self, targets: Targets) -> FloatArray:
@@ -118,8 +121,10 @@ class Ranking:
         """
         postures = self._drive.postures(found.motions, near, still=still)
         values, flags, margin = postures.joint_values, postures.flags, postures.margin
+        errors = None
         if postures.any_clipped:
-            self._hold_clipped(postures, found, targets, angles_count)
+            errors = np.stack([found.position_error, found.angle_error], 1)[postures.source]
+            self._hold_clipped(postures, found, targets, errors, angles_count)
         if near is not None:
             primary, secondary = -self.distance(values, near), margin
         else:
@@ -133,6 +138,7 @@ class Ranking:
             margin[order],
             flags[order] & WORKING != 0,
             postures.source[order],
+            None if errors is None else errors[order],
             found.target,
             inside,
             all_inside,
@@ -147,24 +153,32 @@ class Ranking:
         return furthest
 
     def _hold_clipped(
-        self, postures: Postures, found: Found, targets: Targets, angles_count: bool
+        self,
+        postures: Postures,
+        found: Found,
+        targets: Targets,
+        errors: FloatArray,
+        angles_count: bool,
     ) -> None:
         """Hold postures that were put onto a limit against their target once more.
 
-        Those that left it are beyond travel, by less than the edge.
+        Those that left it are beyond travel, by less than the edge. ``errors`` (p, 2) of the others
+        are overwritten.
         """
         at = np.flatnonzero(postures.flags & CLIPPED)
         target = found.target[postures.source[at]]
         poses = tool_in_base(self.arm, postures.joint_values[at], self.tool_in_flange)
         gaps = np.empty((len(at), 2))
         gaps_to(poses, targets.tool_in_base, target.astype(np.float64), gaps)
-        position, angle = targets.position_tolerance[target], targets.angle_tolerance[target]
+        position, angle = self.allowed(targets)[target].T
         if self.exact:
             position = np.full(len(at), EXACT_REACH * self.screws.length)
             angle = np.full(len(at), EXACT_REACH)
         off = gaps[:, 0] > position
         if angles_count:
             off |= gaps[:, 1] > angle
+            errors[at, 1] = gaps[:, 1]
+        errors[at, 0] = gaps[:, 0]
         postures.flags[at[off]] = 0
         postures.margin[at[off]] = -TRAVEL_EDGE
 

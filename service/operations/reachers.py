@@ -16,8 +16,11 @@ from service.errors import UnusableValue
 if TYPE_CHECKING:
     from kinematics.reach.checks import Reacher
 
-_kept: WeakValueDictionary[tuple[str, bytes, bytes], "Reacher"] = WeakValueDictionary()
-"""By the digest of the table, where the base stands, and the tool's numbers."""
+_Key = tuple[str, bytes, float | None, bytes]
+
+_kept: WeakValueDictionary[_Key, "Reacher"] = WeakValueDictionary()
+"""By the digest of the table, where the base stands, the length that singular values are told by,
+and the tool's numbers: what else an arm has changes no answer."""
 
 _QUICK_S = 3e-4
 """A few hundred microseconds of arithmetic hold up nobody."""
@@ -39,18 +42,20 @@ def reacher_of(arm: Arm, table_digest: str, tool_in_flange: FloatArray) -> "Reac
     # Imported when first wanted: its modules and kernels are as many as all others together.
     from kinematics.reach.checks import Reacher
 
-    key = table_digest, arm.base_in_world.tobytes(), tool_in_flange.tobytes()
+    key = (
+        *(table_digest, arm.base_in_world.tobytes(), arm.characteristic_length),
+        tool_in_flange.tobytes(),
+    )
     known = _kept.get(key)
     return _kept.setdefault(key, Reacher(arm, tool_in_flange)) if known is None else known
 
 
 def is_quick(reacher: "Reacher", freedom: int) -> bool:
-    """Return whether one target takes less than to hand it to a thread would cost others."""
-    known = _quick.setdefault(reacher, {})
-    if freedom not in known:
-        one = Targets.of([Target(np.eye(4), freedom)])
-        known[freedom] = reacher.estimated_seconds(one) <= _QUICK_S
-    return known[freedom]
+    """Return whether one target takes less than to hand it to a thread would cost others.
+
+    Not before ``method_of`` has been asked: to find out takes milliseconds, and holds others up.
+    """
+    return _quick.get(reacher, {}).get(freedom, False)
 
 
 def method_of(reacher: "Reacher", targets: Targets) -> dict[str, object]:
@@ -63,6 +68,10 @@ def method_of(reacher: "Reacher", targets: Targets) -> dict[str, object]:
     known, freedoms = _methods.setdefault(reacher, {}), frozenset(targets.freedom.tolist())
     if freedoms not in known:
         methods = reacher.methods(targets)
+        quick = _quick.setdefault(reacher, {})
+        for freedom in freedoms:
+            one = Targets.of([Target(np.eye(4), freedom)])
+            quick[freedom] = reacher.estimated_seconds(one) <= _QUICK_S
         proofs = {PROOFS[method.proof] for method in methods}
         if PROOFS[SEARCH] in proofs:
             _refuse_unbounded(reacher.arm)
@@ -80,7 +89,6 @@ def _refuse_unbounded(arm: Arm) -> None:
             raise UnusableValue(
                 f"row {index + 1} slides without bounds, so there is no end to a search",
                 where=("arm",),
-                value=arm.name,
                 way_out=f"give row {index + 1} a travel",
                 status=422,
             )

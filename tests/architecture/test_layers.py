@@ -88,7 +88,7 @@ LAYERS = (
     (
         "inverse",
         "inverse.tolerances",
-        "inverse.entries",
+        "inverse.kernel_numbers",
         "inverse.screws",
         "inverse.geometry",
         "inverse.trig_roots",
@@ -102,10 +102,10 @@ LAYERS = (
         "inverse.regional_places",
     ),
     # Six joints with a special triple: taken apart, closed, brought onto their targets.
-    ("inverse.found", "inverse.landing", "inverse.polish", "inverse.twins"),
+    ("inverse.found", "inverse.landing", "inverse.measured", "inverse.polish", "inverse.twins"),
     ("inverse.regional_arm",),
     # Downhill to a target, and where to begin.
-    ("inverse.desk", "inverse.descent", "inverse.starts"),
+    ("inverse.descent_arrays", "inverse.descent", "inverse.starts"),
     (
         "inverse.triple",
         "inverse.peel",
@@ -116,14 +116,14 @@ LAYERS = (
     ),
     # Whatever has no closed form: many starts. Arms that turn about one direction.
     ("inverse.attempts",),
-    ("inverse.rooms", "inverse.iterative"),
+    ("inverse.descent_arms", "inverse.iterative"),
     ("inverse.planar", "inverse.level_wrist", "inverse.four_axes_postures", "inverse.settling"),
     ("inverse.four_axes_arms", "inverse.four_axes"),
     # Joint motions that leave the tool where it is.
     ("inverse.continuation", "inverse.self_motions"),
     ("inverse.families",),
     # Which method answers for which arm, and joint values from motions.
-    ("inverse.drive", "inverse.lost_rank", "inverse.measured", "inverse.several"),
+    ("inverse.drive", "inverse.lost_rank", "inverse.several"),
     ("inverse.compromises",),
     ("inverse.missing_joint",),
     ("inverse.solve",),

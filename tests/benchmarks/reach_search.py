@@ -18,12 +18,12 @@ from scipy.optimize import least_squares
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
 from kinematics.inverse.descent import POSE, gap_at
-from kinematics.inverse.desk import desk_for
+from kinematics.inverse.descent_arms import room_of, slopes_of, start_box
+from kinematics.inverse.descent_arrays import desk_for
 from kinematics.inverse.families import families_of
 from kinematics.inverse.found import Solver
 from kinematics.inverse.four_axes import four_axes_of
 from kinematics.inverse.iterative import Search
-from kinematics.inverse.rooms import room_of, slopes_of, start_box
 from kinematics.table import Convention, FloatArray, JointKind, Row, Table, Travel
 from kinematics.travel_limits import travel_margin
 from service import demo

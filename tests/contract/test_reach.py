@@ -1,7 +1,7 @@
 """Whether arms get to targets, over HTTP: every yes lands, every no says why, tables as bodies.
 
 The referee is the forward chain, asked for the poses of what is answered. Left out: bad input
-(test_bad_reach) and the single question (test_reach_query).
+(test_bad_reach) and the single question (test_reach_single).
 """
 
 import asyncio

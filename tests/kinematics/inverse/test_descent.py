@@ -5,8 +5,8 @@ import pytest
 from scipy.optimize import least_squares
 
 from kinematics.inverse.descent import DIRECTION, POSE, descend, gap_at, slopes_at
-from kinematics.inverse.desk import desk_for
-from kinematics.inverse.rooms import lines_of, no_bounds, room_of
+from kinematics.inverse.descent_arms import lines_of, no_bounds, room_of
+from kinematics.inverse.descent_arrays import desk_for
 from kinematics.inverse.screws import screws_of
 from tests.kinematics.example_arms import (
     AT_FLANGE,

@@ -4,7 +4,7 @@ import numpy as np
 
 from kinematics.inverse.drive import Drive, drive_of
 from kinematics.table import Coupling, Travel
-from kinematics.travel_limits import travel_margin
+from kinematics.travel_limits import beyond_travel, travel_margin
 from tests.kinematics.example_arms import arm_of, prismatic, random_arm, revolute
 from tests.kinematics.inverse.seeds import fresh
 
@@ -45,3 +45,16 @@ def test_margins_are_those_of_travel() -> None:
     arm = arm_of(*rows)
     postures = drive_of(arm).postures(fresh().uniform(-3.0, 3.0, size=(50, 2)))
     np.testing.assert_allclose(postures.margin, travel_margin(arm, postures.joint_values))
+
+
+def test_a_posture_at_a_limit_is_within_travel_after_degrees_and_back() -> None:
+    limits = np.radians(np.arange(-359.0, 360.0, 7.0))
+    for limit in limits.tolist():
+        arm = arm_of(revolute(a=0.4, travel=Travel(min(limit, 0.0), max(limit, 0.0))))
+        # As a closed form gives it, wrapped, and a rounding beyond.
+        motion = (limit + np.pi) % (2 * np.pi) - np.pi + np.sign(limit) * 1e-15
+        postures = Drive(arm).postures(np.array([[motion]]))
+        at = np.abs(postures.joint_values - limit).argmin()
+        back = np.radians(np.degrees(postures.joint_values[at]))
+        assert abs(back[0] - limit) < 1e-14
+        assert not beyond_travel(arm, back)

@@ -7,10 +7,10 @@ import pytest
 
 from kinematics.arm import Arm, CombinedTravel
 from kinematics.chain import tool_in_base
+from kinematics.inverse.descent_arms import room_of, start_box
 from kinematics.inverse.drive import INSIDE, Drive
 from kinematics.inverse.found import SEARCH, TRAVEL, Found
 from kinematics.inverse.iterative import Search
-from kinematics.inverse.rooms import room_of, start_box
 from kinematics.inverse.screws import screws_of
 from kinematics.rotations import rotation_about
 from kinematics.table import Travel

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from kinematics.inverse.entries import NONE
+from kinematics.inverse.kernel_numbers import NONE
 from kinematics.inverse.regional_closing import (
     NO_TERM,
     close,

@@ -29,9 +29,19 @@ def torn_file(*_: object, **__: object) -> object:
     raise EOFError("Ran out of input")
 
 
+def module_gone(*_: object, **__: object) -> object:
+    # An earlier state of the package had it.
+    raise ModuleNotFoundError("No module named 'kinematics.kernels.of_yesterday'")
+
+
 @pytest.mark.parametrize(
     ("method", "failing"),
-    [("__init__", no_place), ("save_overload", full_disk), ("load_overload", torn_file)],
+    [
+        ("__init__", no_place),
+        ("save_overload", full_disk),
+        ("load_overload", torn_file),
+        ("load_overload", module_gone),
+    ],
 )
 def test_a_cache_that_cannot_be_used_is_done_without(
     monkeypatch: pytest.MonkeyPatch, method: str, failing: Callable[..., object]

@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from kinematics.arm import CombinedTravel
 from kinematics.chain import tool_in_base
 from kinematics.reach.checks import Reacher
 from kinematics.reach.targets import NONE, OUTSIDE_TRAVEL, REACHABLE, Target, Targets
@@ -44,6 +45,15 @@ def test_an_arm_at_a_limit_is_at_the_pose_it_shows() -> None:
     assert shift.max() <= 1e-5
     assert checks.angle_error.max() <= np.radians(0.01)
     assert np.abs(checks.joint_values[:, 1]).max() <= ELBOW.upper
+
+
+def test_what_another_limit_forbids_is_told_once() -> None:
+    combined = CombinedTravel({1: 1.0, 2: 1.0}, Travel(-1.0, 1.0))
+    arm = arm_of(*ARM.table.rows, combined_travel=(combined,))
+    (pose,) = tool_in_base(arm, np.array([[2.2, 0.4, 0.1, 0.0]]), AT_FLANGE)
+    checks = Reacher(arm, AT_FLANGE).check(Targets.of([Target(pose, NONE)]))
+    assert checks.verdict.tolist() == [OUTSIDE_TRAVEL]
+    assert len(checks.joint_values) == 2
 
 
 @pytest.mark.parametrize(("beyond", "verdict"), [(1e-5, REACHABLE), (1e-3, OUTSIDE_TRAVEL)])

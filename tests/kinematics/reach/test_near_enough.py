@@ -37,9 +37,12 @@ def assert_reached(arm: Arm, tool: np.ndarray, targets: Targets, checks: Checks)
 
 
 def within(random: np.random.Generator, arm: Arm, count: int) -> np.ndarray:
-    """Return postures that a typed pose does not push beyond travel."""
-    postures = postures_within_travel(random, arm, 2 * count)
-    return postures[travel_margin(arm, postures) > 1e-3][:count]
+    """Return postures that a typed pose does not push beyond travel.
+
+    Near a fold 0.005 mm turn a joint by a degree.
+    """
+    postures = postures_within_travel(random, arm, 3 * count)
+    return postures[travel_margin(arm, postures) > 0.02][:count]
 
 
 @pytest.mark.parametrize(

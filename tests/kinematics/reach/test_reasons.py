@@ -11,6 +11,7 @@ from kinematics.reach.targets import (
     NONE,
     NOT_FOUND,
     ORIENTATION,
+    REACHABLE,
     UNREACHABLE,
     VERDICTS,
     Reason,
@@ -18,6 +19,7 @@ from kinematics.reach.targets import (
     Targets,
 )
 from kinematics.rotations import rotation_about
+from kinematics.tolerances import MOST_SPARE_FOLLOWED
 from tests.kinematics.example_arms import (
     AT_FLANGE,
     PLANAR,
@@ -120,3 +122,14 @@ def test_a_search_that_finds_nothing_says_how_near_it_came() -> None:
         assert reason.shortfall > 0.0
     else:
         assert checks.verdict[0] == UNREACHABLE
+
+
+def test_families_of_arms_with_joints_to_spare_are_followed_for_a_few_targets() -> None:
+    arm, count = arm_of(*SEVEN), MOST_SPARE_FOLLOWED + 1
+    (pose,) = tool_in_base(arm, np.full((1, 7), 0.4), AT_FLANGE)
+    checks = Reacher(arm, AT_FLANGE).check(Targets.of([Target(pose, NONE)] * count))
+    assert checks.verdict.tolist() == [REACHABLE] * count
+    assert all(checks.families_of(index) for index in range(MOST_SPARE_FOLLOWED))
+    assert checks.families_of(count - 1) == ()
+    names = [{finding.name for finding in checks.findings_of(index)} for index in range(count)]
+    assert ["families-not-followed" in some for some in names] == [False] * (count - 1) + [True]

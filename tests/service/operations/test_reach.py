@@ -232,6 +232,7 @@ def test_what_answers_rest_on_is_said_once_for_each_freedom(arms: Arms[ReadArm])
         question.arm, question.meant.read.digests.table_digest, question.tool.tool_in_flange
     )
     targets = Targets.of([Target(np.eye(4), NONE), Target(np.eye(4), ORIENTATION)])
+    assert not is_quick(found, NONE), "nobody has looked how targets are answered"
     told = method_of(found, targets)
     assert told["proof"] == "closed-form"
     assert told["say"]

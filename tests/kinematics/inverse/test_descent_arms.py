@@ -5,8 +5,8 @@ import pytest
 
 from kinematics.arm import CombinedTravel
 from kinematics.inverse.descent import POSE, gap_at
-from kinematics.inverse.desk import desk_for
-from kinematics.inverse.rooms import lines_of, room_of, start_box
+from kinematics.inverse.descent_arms import lines_of, room_of, start_box
+from kinematics.inverse.descent_arrays import desk_for
 from kinematics.inverse.screws import screws_of
 from kinematics.table import Travel
 from tests.kinematics.example_arms import (

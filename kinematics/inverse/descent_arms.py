@@ -11,7 +11,7 @@ import numpy as np
 
 from kinematics.arm import Arm
 from kinematics.inverse.descent import gap_at, slopes_at
-from kinematics.inverse.desk import FAR, Lines, Room, desk_for
+from kinematics.inverse.descent_arrays import FAR, Lines, Room, desk_for
 from kinematics.inverse.screws import Screws
 from kinematics.kernels.compiler import for_kernel
 from kinematics.table import FloatArray

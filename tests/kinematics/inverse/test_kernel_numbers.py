@@ -2,7 +2,7 @@
 
 from numba import njit
 
-from kinematics.inverse.entries import NONE, entries
+from kinematics.inverse.kernel_numbers import NONE, entries
 
 ONE, TWO = entries(1, 3)
 

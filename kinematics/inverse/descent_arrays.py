@@ -3,7 +3,7 @@
 Idea: compiled code takes arrays, and takes them best when somebody else has asked for the memory.
 So the arm, its bounds and every array in between stand in named tuples, made in Python.
 
-Source: none; a layout. Not covered: how they are made from an arm (kinematics/inverse/rooms.py).
+Source: none; a layout. Not covered: how they are made from an arm (descent_arms.py).
 """
 
 from typing import NamedTuple
