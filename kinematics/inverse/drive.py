@@ -58,6 +58,7 @@ class Drive:
     box : (2, joints), least and largest joint values that are listed; infinite for slides without
         travel. spans : (joints,), how wide it is, 1 where it is infinite.
     middle_of_travel : (joints,), 0 without travel.
+    endless : (joints,), joints that turn their own row alone, as often as they like.
 
     Examples
     --------
@@ -101,12 +102,16 @@ class Drive:
             ),
         )
         self.box = box
+        alone = np.count_nonzero(arm.drive_map.matrix, axis=0) == 1
+        alone &= np.count_nonzero(self._square, axis=1) == 1
+        bounded = np.array([travel is not None for travel in travels], dtype=np.bool_)
+        self.endless = turning & ~bounded & alone & ~(limits.weights != 0.0).any(axis=0)
         self.middle_of_travel = _middle(box)
         # Onto a limit, or hardly inside: in degrees and back it must not be beyond.
         rounded = np.isfinite(box) & (box != 0.0)
         inside = np.spacing(np.abs(box), where=rounded, out=np.zeros_like(box))
         ends = box + _LAST_BITS * inside * np.array([[1.0], [-1.0]])
-        self._ends = (ends, np.array([travel is not None for travel in travels], dtype=np.bool_))
+        self._ends = (ends, bounded)
 
     def postures(
         self,

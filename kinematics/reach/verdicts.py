@@ -126,6 +126,9 @@ class Ranking:
             errors = np.stack([found.position_error, found.angle_error], 1)[postures.source]
             self._hold_clipped(postures, found, targets, errors, angles_count)
         if near is not None:
+            # Of the turns that nothing bounds, those nearest to it.
+            turns = np.round((near - values) / (2.0 * np.pi))
+            values += 2.0 * np.pi * np.where(self._drive.endless, turns, 0.0)
             primary, secondary = -self.distance(values, near), margin
         else:
             primary, secondary = margin, self._smallest(values, margin)

@@ -43,6 +43,8 @@ from tests.kinematics.example_arms import (
 from tests.kinematics.inverse.seeds import fresh
 from tests.kinematics.reach.arm_classes import CLASSES, postures_within_travel, targets_at
 
+NOT_FOLLOWED = "families-not-followed"
+
 
 def limited(*travels: tuple[float, float] | None) -> Arm:
     """Return two links, 0.42 m and 0.31 m, with travel."""
@@ -103,7 +105,9 @@ def test_freedoms_are_answered_in_the_order_of_the_targets() -> None:
         assert together.found[index] == alone.found[0]
         reasons = together.reason_of(index), alone.reason_of(0)
         assert [r and r.code for r in reasons] in ([None, None], ["beyond-the-links"] * 2)
-        assert together.findings_of(index) == alone.findings_of(0)
+        # Of many targets of an arm with joints to spare not all families are followed.
+        told = [finding for finding in together.findings_of(index) if finding.name != NOT_FOLLOWED]
+        assert tuple(told) == alone.findings_of(0)
 
 
 def test_the_best_has_most_travel_left() -> None:
@@ -261,3 +265,12 @@ def test_what_takes_milliseconds_is_given_up_by_who_asks_at_once() -> None:
     with pytest.raises(TakesLonger):
         equal.check(on_axis, at_once=True)
     assert equal.check(on_axis).families_of(0)[0].free_joints == (1,)
+
+
+def test_joints_that_turn_without_bounds_stay_in_the_turn_they_are_near() -> None:
+    arm = arm_of(revolute(a=0.1), revolute(a=0.1, travel=Travel(-6.0, 6.0)))
+    near = np.radians([725.0, -270.0])
+    checks = Reacher(arm, AT_FLANGE).check(Targets.of([place(0.1, 0.1)]), near=near)
+    # Elbow 90 deg: (0, 90), or -270 of it, and (90, -90); the first is two turns on already.
+    np.testing.assert_allclose(np.degrees(checks.joint_values[0]), [720.0, -270.0], atol=1e-9)
+    assert (np.abs(checks.joint_values[:, 0] - near[0]) <= np.pi).all()
