@@ -27,6 +27,7 @@ def joined(found: Found, more: Found, which: NDArray[np.intp]) -> Found:
 
     Examples
     --------
+    >>> from kinematics.inverse.found import none_found
     >>> both = joined(none_found(2, 6), none_found(1, 6), np.array([1]))
     >>> len(both.open), len(both.motions)
     (2, 0)
@@ -54,6 +55,7 @@ def picked(found: Found, kept: NDArray[np.bool_]) -> Found:
 
     Examples
     --------
+    >>> from kinematics.inverse.found import none_found
     >>> len(picked(none_found(2, 6), np.empty(0, np.bool_)).motions)
     0
     """

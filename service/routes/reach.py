@@ -14,6 +14,7 @@ from starlette.responses import Response
 from kinematics.reach.targets import TakesLonger
 from service.bulk.answering import Bulk
 from service.bulk.reach_checks import answer_checks
+from service.errors import ServiceError
 from service.operations.arms import Arms
 from service.operations.reach_single import answers_at_once, reach_question_asked, single_reach
 from service.operations.single import joint_count
@@ -98,7 +99,13 @@ async def reach(request: Request) -> Response:
 
 
 async def _reach(asked: Asked) -> Content:
-    target = reach_asked(asked.request.path_params["arm"], asked.said)
+    name = asked.request.path_params["arm"]
+    try:
+        target = reach_asked(name, asked.said)
+    except ServiceError:
+        # Of an arm that is not there nothing else need be right.
+        await run_in_threadpool(asked.request.app.state.arms.get, name)
+        raise
     answer = await _one_target(asked.request, target, nested=asked.wanted == "json")
     scale = target.single.scale
     if asked.wanted == "json":

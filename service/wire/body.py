@@ -146,9 +146,9 @@ def _plain_document(raw: bytes) -> object:
         return None
     try:
         document = orjson.loads(raw)
-    except orjson.JSONDecodeError:
-        return None
-    is_whole = raw.count(b'"') == orjson.dumps(document).count(b'"')
+        is_whole = raw.count(b'"') == orjson.dumps(document).count(b'"')
+    except (orjson.JSONDecodeError, orjson.JSONEncodeError):
+        return None  # the latter of what is nested more deeply than it prints
     return document if is_whole else None
 
 

@@ -126,6 +126,12 @@ def test_what_cannot_be_read(raw: bytes, say: str) -> None:
     assert caught.value.code == "unparseable"
 
 
+@pytest.mark.parametrize("depth", [200, 300, 500])
+def test_what_is_nested_within_reason_is_read(depth: int) -> None:
+    raw = b"[" * depth + b"]" * depth
+    assert parse_json(raw) == json.loads(raw)
+
+
 def test_numbers_beyond_doubles_pass_to_the_check_of_the_field() -> None:
     assert parse_json(b"[1e999, -Infinity]") == [math.inf, -math.inf]
     assert math.isnan(parse_json(b"NaN"))  # type: ignore[arg-type]
