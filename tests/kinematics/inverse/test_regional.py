@@ -25,6 +25,7 @@ from tests.kinematics.inverse.regional_cases import (
     polished,
     square_to,
 )
+from tests.kinematics.inverse.seeds import fresh
 
 FEW = 200
 TURNS = (False, False, False)
@@ -32,13 +33,6 @@ POINTS = list(itertools.product([False, True], repeat=3))
 PLANES = [slides for slides in POINTS if sum(slides) < 2]
 PAIRS = ("", "parallel", "meet", "square")
 NEAR = 1e-5
-
-
-def fresh() -> np.random.Generator:
-    """Return numbers nobody has seen, and print how to see them again."""
-    seed = np.random.SeedSequence().entropy
-    print(f"seed {seed}")
-    return np.random.default_rng(seed)
 
 
 def can_be_answered(slides: tuple[bool, ...], special: str, is_plane: bool) -> bool:
@@ -241,7 +235,8 @@ def test_what_lies_on_an_axis_is_answered_or_said_to_be_open(
             assert (answers.rows[:, 3] == joint).any()
         if off > 1e-6:
             assert not open_.any()
-            assert (apart(cases, answers) < NEAR).all()
+            # Answers are polished to 1e-9, and so little a turn of what is 1e-4 off its axis moves.
+            assert (apart(cases, answers) < 1e-9 / off * 10.0).all()
 
 
 def test_a_free_joint_is_sampled_all_around() -> None:

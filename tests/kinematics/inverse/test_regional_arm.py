@@ -18,6 +18,7 @@ from tests.kinematics.example_arms import (
     random_pose,
     revolute,
 )
+from tests.kinematics.inverse.seeds import fresh
 
 QUARTER = np.pi / 2
 
@@ -70,9 +71,7 @@ def test_two_links_and_a_place_off_their_plane() -> None:
 
 @pytest.mark.parametrize("kinds", ["RRR", "RRP", "RPR", "PRR", "RPP", "PRP", "PPR", "PPP"])
 def test_three_joints_are_led_back(kinds: str) -> None:
-    seed = np.random.SeedSequence().entropy
-    print(f"seed {seed}")
-    random = np.random.default_rng(seed)
+    random = fresh()
     for _ in range(12):
         # Axes well out of parallel: nearly parallel slides go hundreds of metres for a millimetre.
         rows = tuple(
@@ -103,9 +102,7 @@ def test_three_joints_are_led_back(kinds: str) -> None:
 
 @pytest.mark.parametrize("count", [1, 2])
 def test_one_and_two_joints_are_led_back(count: int) -> None:
-    seed = np.random.SeedSequence().entropy
-    print(f"seed {seed}")
-    random = np.random.default_rng(seed)
+    random = fresh()
     solved = 0
     for _ in range(25):
         arm, tool = random_arm(random, count, prismatic_share=0.4), random_pose(random)

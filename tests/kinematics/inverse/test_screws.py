@@ -16,6 +16,7 @@ from tests.kinematics.example_arms import (
     random_pose,
     revolute,
 )
+from tests.kinematics.inverse.seeds import fresh
 
 
 def of_motions(screws: Screws, motions: np.ndarray) -> np.ndarray:
@@ -39,7 +40,7 @@ def of_motions(screws: Screws, motions: np.ndarray) -> np.ndarray:
 @pytest.mark.parametrize("count", [1, 3, 6, 8])
 def test_product_of_exponentials_is_the_chain(count: int) -> None:
     seed = np.random.SeedSequence().entropy
-    random = np.random.default_rng(seed)
+    random = fresh()
     for _ in range(8):
         arm = random_arm(random, count, coupled=True, passive=count // 3)
         tool = random_pose(random)

@@ -18,6 +18,7 @@ from kinematics.inverse.trig_roots import (
     linear_roots,
     roots_of_squares,
 )
+from tests.kinematics.inverse.seeds import fresh
 
 FEW = 3000
 NO_SLACK = 1e-15
@@ -48,7 +49,7 @@ def drawn(random: np.random.Generator) -> np.ndarray:
 
 def test_all_roots_are_those_of_the_polynomial() -> None:
     seed = np.random.SeedSequence().entropy
-    random = np.random.default_rng(seed)
+    random = fresh()
     counts = np.zeros(5, int)
     for _ in range(FEW):
         squares = drawn(random)
