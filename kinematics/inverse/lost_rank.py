@@ -43,7 +43,7 @@ class LostRank:
     def of(self, motions: FloatArray) -> NDArray[np.bool_] | None:
         """Return which motions (k, 6), rad and metres, have lost rank, (k,); None for none."""
         at_least, jacobians = np.empty(len(motions)), np.empty((len(motions), 6, 6))
-        least = _bound_smallest(*self._of_kernel, motions * self._scale, jacobians, at_least)
+        least = bound_smallest(*self._of_kernel, motions * self._scale, jacobians, at_least)
         if least >= self._within:
             return None
         lost: NDArray[np.bool_] = at_least < self._within
@@ -52,7 +52,7 @@ class LostRank:
 
 
 @compiled
-def _bound_smallest(
+def bound_smallest(
     axis: FloatArray,
     point: FloatArray,
     prismatic: NDArray[np.bool_],

@@ -26,6 +26,7 @@ from kinematics.reach.at_limits import with_ends_of_travel
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.family_members import FamiliesOf, with_witnesses
 from kinematics.reach.near_enough import NearEnough
+from kinematics.reach.one_target import one_target_of
 from kinematics.reach.reasons import Told
 from kinematics.reach.targets import (
     BOUND,
@@ -95,6 +96,7 @@ class Answerer:
     Attributes
     ----------
     ranking, method : what ranks, and what solves.
+    one_target : what answers for one pose at once, None where nothing does.
     """
 
     def __init__(self, ranking: Ranking, task: str) -> None:
@@ -102,6 +104,7 @@ class Answerer:
         self.method = method_of(ranking.arm, ranking.tool_in_flange, task)
         self._near_enough = NearEnough(ranking, self.method)
         six = ranking.screws.rows == 6 == ranking.arm.joint_count and task != POSITION
+        self.one_target = None if task == POSITION else one_target_of(ranking, self.method.solver)
         self._lost_rank = LostRank(ranking.screws) if six else None
 
     @cached_property

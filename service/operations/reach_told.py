@@ -145,15 +145,14 @@ class ToldChecks:
             beyond = self._limits[solution]
             findings = [beyond_out(self.question.units, finding) for finding in beyond]
         findings += [computed_finding_out(self.question.units, finding) for finding in said]
-        return {
-            "joints": self.joints[solution],
-            "margin": margin if isfinite(margin) else None,
-            "branch": self.branch(solution),
-            "singularity": singularity,
-            "position_error": self.errors[0][solution],
-            "angle_error": self.errors[1][solution],
-            "findings": findings,
-        }
+        return solution_out(
+            self.joints[solution],
+            margin,
+            self.branch(solution),
+            singularity,
+            (self.errors[0][solution], self.errors[1][solution]),
+            findings,
+        )
 
     def codes(self, solution: int) -> frozenset[int]:
         """Return the codes of what is to be known of one solution, without the words."""
@@ -193,6 +192,26 @@ class ToldChecks:
             "found": found,
             "findings": [finding_out(units, finding) for finding in findings],
         }
+
+
+def solution_out(
+    joints: list[float],
+    margin: float,
+    branch: str,
+    singularity: dict[str, object] | None,
+    errors: tuple[float, float],
+    findings: list[dict[str, object]],
+) -> dict[str, object]:
+    """Return one solution as answered; joint values and errors in the user's units already."""
+    return {
+        "joints": joints,
+        "margin": margin if isfinite(margin) else None,
+        "branch": branch,
+        "singularity": singularity,
+        "position_error": errors[0],
+        "angle_error": errors[1],
+        "findings": findings,
+    }
 
 
 def told_together(

@@ -123,7 +123,7 @@ LAYERS = (
     ("inverse.continuation", "inverse.self_motions"),
     ("inverse.families",),
     # Which method answers for which arm, and joint values from motions.
-    ("inverse.drive", "inverse.lost_rank", "inverse.several"),
+    ("inverse.drive", "inverse.lost_rank", "inverse.several", "inverse.at_once"),
     ("inverse.compromises",),
     ("inverse.missing_joint",),
     ("inverse.solve",),
@@ -132,7 +132,7 @@ LAYERS = (
     ("reach.branches", "reach.bounds", "reach.family_members"),
     ("reach.verdicts",),
     ("reach.near_enough", "reach.at_limits"),
-    ("reach.reasons",),
+    ("reach.reasons", "reach.one_target"),
     ("reach.answers",),
     ("reach.spins",),
     ("reach.cones",),
