@@ -300,3 +300,23 @@ MOST_LISTED = 64
 
 LARGEST_CONE = 3.141592653589793
 """Radians: a cone of half a turn to each side holds every direction."""
+
+FEWEST_SAMPLES_KEPT = 1.0 / 1024.0
+"""Share of the postures drawn in the box around travel that keep to combined travel: below it a
+million samples take minutes, and the limits are most often typed wrong."""
+
+SAMPLES_JUDGED = 16384
+"""Samples whose nearness to singular postures is judged: a share is then told to half a percent,
+in some 50 ms; evenly spread, they err less than so many drawn by chance."""
+
+AREA_AGREES = 1e-12
+"""Share of an area by which two halves of a strip may differ from the whole: what rounding leaves
+of a dozen terms; some hundred strips then stay within 1e-9."""
+
+MOST_AREA_HALVINGS = 24
+"""Of a strip in which two boundary curves cross: what is left of it then is 1e-7 of its height,
+and its share of the area less than 1e-13."""
+
+IN_ONE_PLANE = 1e-9
+"""Share of an arm's length by which its point may leave a plane, or a joint move it, and not count:
+what the rounding of twenty rows leaves, a hundredfold; typed tables leave more, or none."""

@@ -56,6 +56,8 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument("--body-timeout-s", help="seconds a request may stall (20)")
     serve.add_argument("--connections", help="connections served at once (512)")
     serve.add_argument("--log-level", help="critical, error, warning, info or debug (warning)")
+    serve.add_argument("--cluster", help="scheduler for surveys, tcp://... (own processes)")
+    serve.add_argument("--survey-workers", help="processes for surveys (one per processor)")
     on_database = [serve]
     for kind in ("arm", "cell"):
         stored = commands.add_parser(f"{kind}s", help=f"stored {kind}s", allow_abbrev=False)

@@ -28,24 +28,30 @@ from service.routes import (
     health,
     poses,
     reach,
+    reach_regions,
     relation,
     rotations,
+    surveys,
     tables,
 )
 from service.settings import Settings
 from service.storage.opening import open_storage
+from service.surveys.desk import Surveys
+from service.surveys.pool import pool_of
 from service.web import pages
 from service.wire.arms import read_arm
 
 ROUTERS: tuple[APIRouter, ...] = (
     controller.router,
     reach.router,
+    reach_regions.router,
     poses.router,
     tables.router,
     rotations.router,
     guesses.router,
     frames.router,
     relation.router,
+    surveys.router,
     arms.router,
     cells.router,
     health.router,
@@ -59,7 +65,7 @@ def create_app(settings: Settings) -> FastAPI:
     ``app.state`` holds ``settings``, ``sequence`` (counts answers), ``started``, ``metrics``,
     ``readiness`` (of the kernels),
     ``crowded`` (replaced by a server that knows its connections) and, within the lifespan,
-    ``arms``, ``cells``, ``bulk``, ``storage``, ``opened`` and ``notices``.
+    ``arms``, ``cells``, ``surveys``, ``bulk``, ``storage``, ``opened`` and ``notices``.
     """
     app = FastAPI(
         title="Armspan",
@@ -89,7 +95,7 @@ def create_app(settings: Settings) -> FastAPI:
 async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
     settings: Settings = app.state.settings
     opened = open_storage(settings)
-    bulk = Bulk()
+    bulk, taken_in = Bulk(), None
     try:
         app.state.bulk = bulk
         app.state.opened = opened
@@ -102,7 +108,13 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
                 demo.seed(app.state.cells, app.state.arms)
             except ServiceError as error:
                 app.state.notices.append(f"no demonstration cell: {error.say}")
+        pool = pool_of(settings.cluster, settings.survey_workers)
+        taken_in = Surveys(opened.surveys, app.state.arms, pool, pages.version_here())
+        app.state.surveys = taken_in
+        taken_in.go_on()
         yield
     finally:
+        if taken_in is not None:
+            taken_in.stop()
         bulk.stop()
         opened.close()

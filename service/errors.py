@@ -8,6 +8,7 @@ ServiceError
 |  |- WrongMediaType
 |  '- RequestTimeout         the body stalled
 |- UnknownArm                neither an arm nor a cell of that name; a body may say 422
+|- UnknownSurvey
 |- StateDiffers
 |  |- UnknownRevision
 |  |- DigestDiffers          the arm is not the one that was expected
@@ -19,6 +20,7 @@ ServiceError
 |  '- MissingField
 |- TooLarge                  a body; a count says 422
 |- NotAvailable              a feature not in this version says 422
+|  |- NotFinished            a survey that is still queued or running, or has no result
 |  |- StorageUnavailable     for now; asking again may help
 |  '- StorageUnusable        asking again will not help
 |- NotInTheInterface
@@ -119,6 +121,12 @@ class UnknownArm(ServiceError):
     code = "unknown-arm"
 
 
+class UnknownSurvey(ServiceError):
+    """No survey of this id."""
+
+    code = "unknown-survey"
+
+
 class StateDiffers(ServiceError):
     """What is stored is not what the request supposes; raise one of the classes below it."""
 
@@ -183,6 +191,12 @@ class NotAvailable(ServiceError):
     """Not now (503), or not in this version (``status=422``)."""
 
     code = "not-available"
+
+
+class NotFinished(NotAvailable):
+    """The survey is queued or running, or ended without a result."""
+
+    code = "not-finished"
 
 
 class StorageUnavailable(NotAvailable):

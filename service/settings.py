@@ -31,6 +31,8 @@ class Settings:
     body_timeout_s : seconds a body may stall.
     connections : connections and requests served at once; more are answered 503.
     log_level : one of LOG_LEVELS.
+    cluster : address of a scheduler that surveys are worked on by; empty: processes of our own.
+    survey_workers : processes for surveys; 0: one for each processor.
 
     Examples
     --------
@@ -49,6 +51,8 @@ class Settings:
     body_timeout_s: float = 20.0
     connections: int = 512
     log_level: str = "warning"
+    cluster: str = ""
+    survey_workers: int = 0
 
     @classmethod
     def from_environment(
@@ -147,4 +151,6 @@ _READERS: Mapping[str, Any] = {
     "body_timeout_s": _seconds,
     "connections": _whole(1, 100_000),
     "log_level": _log_level,
+    "cluster": str,
+    "survey_workers": _whole(0, 1024),
 }

@@ -22,6 +22,7 @@ from service.storage.layouts import LAYOUTS, lay_out, layout_of
 from service.storage.server_lock import ServerLock
 from service.storage.sql import SqlStorage, reason_of, sqlite_error_name, writing
 from service.storage.state import FileState
+from service.storage.surveys import SqlSurveys
 
 _LOG = logging.getLogger(__name__)
 
@@ -43,6 +44,7 @@ class OpenStorage:
 
     arms: SqlStorage
     cells: SqlStorage
+    surveys: SqlSurveys
     description: str
     writable: bool
     notices: list[str] = field(default_factory=list)
@@ -50,6 +52,7 @@ class OpenStorage:
 
     def close(self) -> None:
         """Close all connections and let another server process open the database."""
+        self.surveys.close()
         for closing in self._closings:
             closing()
 
@@ -120,7 +123,7 @@ def _open_server(url: sa.URL) -> OpenStorage:
     except BaseException:
         engine.dispose()
         raise
-    return OpenStorage(*_both(engine), shown, True, [], (engine.dispose,))
+    return OpenStorage(*_stores(engine), shown, True, [], (engine.dispose,))
 
 
 def _lay_out(engine: sa.Engine, shown: str) -> None:
@@ -165,7 +168,7 @@ def _open_file(path: Path, serving: bool) -> OpenStorage:
         return _open_unwritable(path, reason_of(error), is_empty)
     state = FileState(engine)
     return OpenStorage(
-        *_both(engine, state=state),
+        *_stores(engine, state=state),
         str(path),
         True,
         [],
@@ -242,10 +245,10 @@ def _open_unwritable(path: Path, reason: str, is_empty: bool) -> OpenStorage:
             engine.dispose()
             raise unusable(path, f"it must be brought to a newer layout, and {reason}")
         state = FileState(engine)
-        both = _both(engine, refuses_writes=why, takes_seeds=False, state=state)
+        stores = _stores(engine, refuses_writes=why, takes_seeds=False, state=state)
         notice = f"{why}: stored arms can be used, nothing can be stored"
         closings = (state.close, engine.dispose)
-        return OpenStorage(*both, f"{path} (read only)", False, [notice], closings)
+        return OpenStorage(*stores, f"{path} (read only)", False, [notice], closings)
     raise unusable(path, "it can be neither written nor read")
 
 
@@ -253,10 +256,11 @@ def _open_memory(why: str) -> OpenStorage:
     engine = in_memory()
     with writing(engine) as connection:
         lay_out(connection)
-    both = _both(engine, refuses_writes=why)
+    stores = _stores(engine, refuses_writes=why)
     notice = f"{why}: nothing can be stored" if why else "arms are kept until the service stops"
-    return OpenStorage(*both, "memory", not why, [notice], (engine.dispose,))
+    return OpenStorage(*stores, "memory", not why, [notice], (engine.dispose,))
 
 
-def _both(engine: sa.Engine, **how: Any) -> tuple[SqlStorage, SqlStorage]:
-    return SqlStorage(engine, "arm", **how), SqlStorage(engine, "cell", **how)
+def _stores(engine: sa.Engine, **how: Any) -> tuple[SqlStorage, SqlStorage, SqlSurveys]:
+    surveys = SqlSurveys(engine, refuses_writes=how.get("refuses_writes", ""))
+    return SqlStorage(engine, "arm", **how), SqlStorage(engine, "cell", **how), surveys

@@ -1,13 +1,13 @@
 """What the service asks of a store: revisions that never change, and a head for each name.
 
 There is one such store for each kind of document, arms and cells; an arm may name a cell, and then
-stands in one revision of it.
+stands in one revision of it. Surveys have a store of their own: what is asked, and its pieces.
 
 Left out: how they are kept (``sql.py``), where (``opening.py``), and what a document means.
 """
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
 from datetime import datetime
 from enum import Enum
 from typing import Any, Literal, NamedTuple, Protocol
@@ -179,3 +179,109 @@ class Storage(Protocol):
 
     def ping(self) -> None:
         """Return when the store answers a question."""
+
+
+QUEUED, RUNNING, SUCCEEDED, FAILED, CANCELLED = SURVEY_STATES = (
+    *("queued", "running", "succeeded", "failed", "cancelled"),
+)
+OPEN_STATES = (QUEUED, RUNNING)
+
+
+@dataclass(frozen=True, slots=True)
+class Survey:
+    """A piece of long work: what was asked, how far it is, what was counted on the way.
+
+    ``request`` is as on the wire but for what its pieces hold, ``about`` what the result is of;
+    ``reason`` says why it failed. Ids sort by the time of their making.
+    """
+
+    id: str
+    kind: str
+    title: str
+    request: Document
+    about: Document
+    total: int
+    created_at: datetime
+    state: str = QUEUED
+    done: int = 0
+    counts: Mapping[str, int] = field(default_factory=dict)
+    reason: str = ""
+    started_at: datetime | None = None
+    finished_at: datetime | None = None
+
+
+class GivenPiece(NamedTuple):
+    """Part of what a survey is to work through: ``size`` of its ``total``."""
+
+    number: int
+    size: int
+    given: bytes
+
+
+class MadePiece(NamedTuple):
+    """What became of a piece, and what was counted in it."""
+
+    number: int
+    made: bytes
+    counts: Mapping[str, int]
+
+
+class KeyUsed(Exception):
+    """The sender's key came before, with a request of this digest, and made this survey."""
+
+    def __init__(self, survey: Survey, digest: str) -> None:
+        super().__init__("the key was used before")
+        self.survey, self.digest = survey, digest
+
+
+class SurveyStorage(Protocol):
+    """Surveys and their pieces. What is raised, and by whom it is called, is as in ``Storage``."""
+
+    def add(
+        self, survey: Survey, pieces: Iterable[GivenPiece], *, key: str | None, digest: str
+    ) -> None:
+        """Store a survey with all its pieces, in one step.
+
+        Raises
+        ------
+        KeyUsed : one was stored with this key before.
+        """
+
+    def get(self, survey: str) -> Survey | None:
+        """Return one survey."""
+
+    def page(self, before: str, limit: int) -> Sequence[Survey]:
+        """Return up to ``limit`` surveys, the newest first, those older than ``before`` if said."""
+
+    def next_open(self) -> Survey | None:
+        """Return the oldest one that is queued or running."""
+
+    def count_open(self) -> int:
+        """Return how many are queued or running."""
+
+    def begin(self, survey: str, at: datetime) -> bool:
+        """Let a queued one run; return whether it runs."""
+
+    def left(self, survey: str, after: int, limit: int) -> Sequence[GivenPiece]:
+        """Return pieces numbered above ``after`` that are not made yet."""
+
+    def keep(self, survey: str, made: Sequence[MadePiece]) -> bool:
+        """Keep what was made, in one step, unless it was before; return whether it still runs."""
+
+    def end(self, survey: str, state: str, at: datetime, reason: str = "") -> bool:
+        """Bring an open one to its last state; return whether it was open."""
+
+    def made(self, survey: str, number: int) -> bytes:
+        """Return what became of a piece."""
+
+    def given(self, survey: str, number: int) -> bytes:
+        """Return what a piece was given."""
+
+    def sizes(self, survey: str) -> Sequence[int]:
+        """Return the sizes of all pieces, by number."""
+
+    def remove(self, survey: str) -> None:
+        """Remove a survey and its pieces."""
+
+    def may_lead(self) -> bool:
+        """Return whether this process is the one to run surveys; asking makes it, if none is."""

@@ -1,4 +1,4 @@
-"""The two tables behind the stores: every revision ever written, and one head for each name.
+"""The tables behind the stores: revisions and one head for each name; surveys and their pieces.
 
 Left out: how a database gets them (``migrations``); a test holds both to the same columns.
 """
@@ -48,4 +48,37 @@ HEADS = sa.Table(
         [f"document_revisions.{column}" for column in ("kind", "name", "revision")],
         name="document_heads_revision",
     ),
+)
+
+SURVEYS = sa.Table(
+    "surveys",
+    METADATA,
+    sa.Column("id", NAME, primary_key=True),
+    sa.Column("kind", sa.String(32), nullable=False),
+    sa.Column("title", sa.Text, nullable=False),
+    sa.Column("state", sa.String(12), nullable=False, index=True),
+    # JSON as text: what was asked but for its pieces, what the result is about, what was found.
+    sa.Column("request", sa.Text, nullable=False),
+    sa.Column("about", sa.Text, nullable=False),
+    sa.Column("counts", sa.Text, nullable=False),
+    sa.Column("total", sa.BigInteger, nullable=False),
+    sa.Column("done", sa.BigInteger, nullable=False),
+    sa.Column("reason", sa.Text, nullable=False),
+    # SHA-256 of the sender's key and of the request that came with it.
+    sa.Column("sent_key", sa.String(64), unique=True),
+    sa.Column("sent_digest", sa.String(64)),
+    sa.Column("created_at_ms", sa.BigInteger, nullable=False),
+    sa.Column("started_at_ms", sa.BigInteger),
+    sa.Column("finished_at_ms", sa.BigInteger),
+)
+
+SURVEY_PIECES = sa.Table(
+    "survey_pieces",
+    METADATA,
+    sa.Column("survey", NAME, sa.ForeignKey("surveys.id", ondelete="CASCADE"), primary_key=True),
+    sa.Column("number", sa.Integer, primary_key=True, autoincrement=False),
+    sa.Column("size", sa.Integer, nullable=False),
+    sa.Column("given", sa.LargeBinary, nullable=False),
+    # Empty until the piece is done; then it is never written again.
+    sa.Column("made", sa.LargeBinary),
 )

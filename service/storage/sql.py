@@ -166,7 +166,7 @@ class SqlStorage:
             with self._engine.connect() as connection:
                 yield connection
         except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise _unavailable(error, f"{self._kind}s cannot be read") from error
+            raise unavailable(error, f"{self._kind}s cannot be read") from error
 
     @contextmanager
     def _writing(self, seed: bool) -> Iterator[sa.Connection]:
@@ -181,7 +181,7 @@ class SqlStorage:
         except sa.exc.IntegrityError:
             raise
         except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise _unavailable(error, f"{self._kind}s cannot be stored") from error
+            raise unavailable(error, f"{self._kind}s cannot be stored") from error
 
 
 @contextmanager
@@ -211,7 +211,8 @@ def reason_of(error: BaseException) -> str:
     return "the database does not answer"
 
 
-def _unavailable(error: Exception, what: str) -> StorageUnavailable:
+def unavailable(error: Exception, what: str) -> StorageUnavailable:
+    """Return the refusal of what the database failed at, and tell the log its own words."""
     reason = reason_of(error)
     _LOG.error("%s: %s (%s)", what, reason, getattr(error, "orig", error))
     return StorageUnavailable(f"{what} now: {reason}", way_out="try again when this is mended")

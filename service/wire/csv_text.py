@@ -151,5 +151,16 @@ def number_texts(numbers: FloatArray) -> list[str]:
     return printed[2:-2].decode("ascii").split("],[")
 
 
+def plain_lines(numbers: FloatArray) -> bytes:
+    """Return a line for each row of a table that holds numbers alone, (count, columns).
+
+    Examples
+    --------
+    >>> plain_lines(np.array([[1.0, 0.5]]))
+    b'1.0,0.5\\r\\n'
+    """
+    return (_END.join(number_texts(numbers)) + _END).encode("ascii")
+
+
 def quoted(name: str) -> str:
     return '"' + name.replace('"', '""') + '"' if _NEEDS_QUOTES.search(name) else name

@@ -26,6 +26,11 @@ SCALE_SCHEMA: Mapping[str, object] = {"type": "integer", "minimum": 1, "maximum"
 FORMAT_OF_TABLES = parameter(
     "format", "Format of the answer; that of the body if left out.", one_of(*formats.FORMATS)
 )
+FORMAT_OF_ANSWERS = parameter(
+    "format",
+    "Format of the answer; that of Accept, or JSON, if left out.",
+    one_of(*formats.FORMATS),
+)
 
 QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
     parameter("q", "Joint values in row order, with commas.", _TEXT, example="0,-90,90,0,45,0"),

@@ -137,6 +137,13 @@ LAYERS = (
     ("reach.spins",),
     ("reach.cones",),
     ("reach.checks", "reach.first_checks"),
+    # What an arm can reach at all: samples, and the curves around it.
+    ("reach.travel_region",),
+    ("reach.samples",),
+    ("reach.sample_summary",),
+    ("envelope", "envelope.pair_region"),
+    ("envelope.measures",),
+    ("envelope.section",),
     ("posture_reader", "warm_up"),
 )
 

@@ -52,7 +52,7 @@ PATHS = sorted({path for _, path in CALLS})
 
 
 def filled(path: str, arm: str = ARM["name"]) -> str:  # type: ignore[assignment]
-    names = {"arm": arm, "cell": CELL["name"], "n": "1", "name": "pages.css"}
+    names = {"arm": arm, "cell": CELL["name"], "n": "1", "name": "pages.css", "survey": "0" * 20}
     return path.format(**names)
 
 

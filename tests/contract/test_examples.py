@@ -28,6 +28,7 @@ COUNTS = {
     "relation": 5,
     "reach": 9,
     "reach-checks": 9,
+    "reach-samples": 3,
     "jacobian": 4,
     "jacobians": 4,
     "pose": 10,
@@ -41,14 +42,30 @@ COUNTS = {
     **dict.fromkeys(("arm-revisions", "arm-revision", "ping", "livez", "readyz"), 1),
     **dict.fromkeys(("cells", "cells-create", "cell", "cell-replace"), 1),
     **dict.fromkeys(("cell-revisions", "cell-revision"), 1),
+    **dict.fromkeys(("surveys", "surveys-create"), 1),
 }
-WITHOUT = {("DELETE", "/v1/arms/{arm}"), ("DELETE", "/v1/cells/{cell}"), ("GET", "/metrics")}
+_SURVEY = "/v1/surveys/{survey}"
+WITHOUT = {
+    *(("DELETE", "/v1/arms/{arm}"), ("DELETE", "/v1/cells/{cell}"), ("GET", "/metrics")),
+    *(("GET", _SURVEY), ("DELETE", _SURVEY), ("POST", f"{_SURVEY}/cancel")),
+    *(("GET", f"{_SURVEY}/{part}") for part in ("progress", "result", "report")),
+}
 """Neither a body asked nor a settled answer: nothing to show."""
 
 CLOSE = 1e-9
 """Relative and absolute: far above rounding, far below any digit a user reads."""
 
-OF_THE_MOMENT = {"seq": 1, "t_ms": 1, "created_at": "2026-12-01T06:00:00.000Z"}
+OF_THE_MOMENT = {
+    "seq": 1,
+    "t_ms": 1,
+    "created_at": "2026-12-01T06:00:00.000Z",
+    "id": "01a23542df1518952a22",
+    "software": "0.1.0",
+    "links": {
+        part: f"/v1/surveys/01a23542df1518952a22/{part}"
+        for part in ("progress", "result", "report", "cancel")
+    },
+}
 """What no two answers share, and what an example shows in its place."""
 NUMBER = re.compile(r"[-+]?\d+(?:\.\d+)?(?:e[-+]?\d+)?")
 CASES = [(name, case) for name in sorted(COUNTS) for case in examples_of(name)]
@@ -75,7 +92,7 @@ async def answer_to(client: httpx.AsyncClient, route: APIRoute, request: Any) ->
         response = await client.put(path, json=request, headers={"If-None-Match": "*"})
     else:
         response = await client.post(route.path, json=request)
-    assert response.status_code in (200, 201), response.text
+    assert response.status_code in (200, 201, 202), response.text
     if response.headers["content-type"].startswith("application/json"):
         return response.json()
     return without_the_moment(response.text)

@@ -25,6 +25,7 @@ CONTRACT = {
     "wrong-joint-count": (101, 422),
     "not-finite": (102, 422),
     "unknown-arm": (103, 404),
+    "unknown-survey": (103, 404),
     "unknown-tool": (104, 422),
     "unknown-frame": (104, 422),
     "unusable-value": (105, 422),
@@ -40,6 +41,7 @@ CONTRACT = {
     "precondition-required": (107, 428),
     "too-large": (108, 413),
     "not-available": (109, 503),
+    "not-finished": (109, 409),
     "internal": (109, 500),
     "unknown-field": (110, 422),
     "unknown-path": (110, 404),
@@ -161,7 +163,7 @@ def test_every_row_but_internal_has_a_class() -> None:
 def test_the_tree_is_drawn_as_it_is() -> None:
     drawn = re.findall(r"[|']- (\w+)", errors.__doc__ or "")
     made = {kind.__name__ for kind in below(ServiceError) if kind.__module__ == errors.__name__}
-    assert len(drawn) == len(set(drawn)) == 24
+    assert len(drawn) == len(set(drawn)) == 26
     assert set(drawn) == made
 
 

@@ -16,6 +16,8 @@ SAMPLES = {
     "body_timeout_s": ("0.5", 0.5),
     "connections": ("7", 7),
     "log_level": ("DEBUG", "debug"),
+    "cluster": ("tcp://10.0.0.7:8786", "tcp://10.0.0.7:8786"),
+    "survey_workers": ("3", 3),
 }
 
 

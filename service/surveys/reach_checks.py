@@ -1,0 +1,207 @@
+"""Large reach checks: the question of ``/v1/reach/checks`` with up to a million targets.
+
+Idea: targets are kept as they came, some hundred in a piece, and read where they are worked on;
+what is kept of them are the columns that the CSV answer tells. Up to 10 000 are read before the
+survey is accepted, so that mistakes are refused at once; of more, the others are refused one by
+one in the result. Left out: how results are told (reach_results.py).
+"""
+
+import zlib
+from dataclasses import replace
+from typing import Any, NamedTuple, cast
+
+import numpy as np
+
+from kinematics.table import FloatArray
+from service.details import Detail
+from service.errors import DigestDiffers, ServiceError, TooLarge, UnusableValue
+from service.operations.arms import Arms, StoredArm
+from service.operations.meant_arms import meant_arm
+from service.operations.questions import Question
+from service.operations.reach import ManyTargets, Wanted, reach_question, wanted_solutions
+from service.operations.reach_columns import columns_of
+from service.problems import KINDS
+from service.storage.ports import Document, GivenPiece, MadePiece, Revision, Survey, SurveyStorage
+from service.surveys.kinds import Accepted, Report, Told, cut, piece_size
+from service.surveys.reach_pieces import LEVEL, given_rows, rows_of, table_pieces, table_rows
+from service.surveys.reach_report import report_of
+from service.surveys.reach_results import columns_bytes, counts_of, told_results
+from service.wire.arms import ReadArm, read_arm
+from service.wire.cells import CellAt, no_cell
+from service.wire.formats import FORMATS, Format
+from service.wire.reach_gathered import FIELD, ReadTargets, refuse_same_names
+from service.wire.reach_request import MOST_TARGETS as READ_AT_ONCE
+from service.wire.reach_request import ReachRequest
+from service.wire.reach_targets import read_targets
+
+MOST_TARGETS = 1_000_000
+
+
+class Setup(NamedTuple):
+    """What a process needs beside the targets: the request, and the stored arm with its cell."""
+
+    request: Document
+    record: Revision | None
+    cell: CellAt | None
+
+
+class Prepared(NamedTuple):
+    """What targets are answered with."""
+
+    question: Question
+    wanted: Wanted
+
+
+class ReachChecks:
+    """Whether, and how, an arm gets to each of many targets."""
+
+    name = "reach-checks"
+    formats = FORMATS
+
+    def accept(
+        self, arms: Arms[ReadArm], request: Document, table: FloatArray | None = None
+    ) -> Accepted:
+        """See ``Kind.accept``; a table has a target in each row (reach_pieces.py)."""
+        if table is None:
+            rows = _listed(request.get(FIELD))
+            count = len(rows)
+        else:
+            rows, count = table_rows(table[:READ_AT_ONCE]), len(table)
+            request = {**request, FIELD: []}
+        _refuse_count(count)
+        asked = ReachRequest.model_validate(request)
+        prepared = _prepared(arms, asked)
+        question = prepared.question
+        first = read_targets(rows[:READ_AT_ONCE], question.units)
+        many = ManyTargets(question, first, prepared.wanted)
+        about = {**many.head, "solutions": asked.solutions, "joints": question.arm.joint_count}
+        each = question.reacher.estimated_seconds(many.targets) / len(many.targets)
+        revision = question.meant.revision
+        pinned = {"name": question.arm.name, "revision": revision}
+        kept = {key: value for key, value in request.items() if key != FIELD}
+        if revision is not None:
+            kept["arm"] = pinned
+        size = piece_size(each)
+        pieces = cut(rows, size, given_rows) if table is None else table_pieces(table, size)
+        return Accepted(kept, about, count, pieces)
+
+    def setup(self, arms: Arms[ReadArm], survey: Survey) -> Setup:
+        """See ``Kind.setup``."""
+        asked = ReachRequest.model_validate({**survey.request, FIELD: []})
+        meant = meant_arm(arms, asked.arm)
+        if meant.identity() != survey.about["arm"]:
+            raise DigestDiffers("the arm, or the cell it stands in, has changed since it was asked")
+        if meant.revision is None:
+            cell = meant.read.document.get("cell")
+            return Setup(survey.request, None, arms.newest_cell(cell) if cell else None)
+        record = arms.get(meant.arm.name, meant.revision).record
+        return Setup(survey.request, record, arms.cell_of(record))
+
+    def prepare(self, setup: Setup) -> Prepared:
+        """See ``Kind.prepare``."""
+        asked = ReachRequest.model_validate({**setup.request, FIELD: []})
+        return _prepared(cast(Arms[ReadArm], _OneArm(setup.record, setup.cell)), asked)
+
+    def make(self, prepared: Prepared, piece: GivenPiece) -> MadePiece:
+        """See ``Kind.make``."""
+        rows = rows_of(piece.given)
+        read = _read(rows, prepared.question)
+        columns = columns_of(ManyTargets(prepared.question, read, prepared.wanted), 0, len(rows))
+        made = zlib.compress(columns_bytes(columns), LEVEL)
+        return MadePiece(piece.number, made, counts_of(columns))
+
+    def told(self, survey: Survey, wanted: Format) -> Told:
+        """See ``Kind.told``."""
+        return told_results(survey, wanted)
+
+    def reported(self, survey: Survey, store: SurveyStorage) -> Report:
+        """See ``Kind.reported``."""
+        return report_of(survey, store)
+
+
+class _OneArm:
+    """Stands in for the store: whatever is asked for, it is this arm, and this cell."""
+
+    def __init__(self, record: Revision | None, cell: CellAt | None) -> None:
+        self._record, self._cell = record, cell
+
+    def get(self, name: str, revision: int | None = None) -> StoredArm[ReadArm]:
+        """Return the arm that was sent along."""
+        assert self._record is not None
+        cell = self._cell
+        read = read_arm(self._record.document, no_cell if cell is None else lambda _: cell)
+        return StoredArm(self._record, read)
+
+    def newest_cell(self, name: str) -> CellAt:
+        """Return the cell that was sent along."""
+        assert self._cell is not None
+        return self._cell
+
+
+def _prepared(arms: Arms[ReadArm], asked: ReachRequest) -> Prepared:
+    question = reach_question(arms, asked)
+    return Prepared(question, wanted_solutions(question, asked.solutions, asked.order, asked.near))
+
+
+def _listed(given: object) -> list[Any]:
+    if not isinstance(given, list):
+        raise UnusableValue(
+            "targets must be a list" if given is not None else "there are no targets",
+            where=(FIELD,),
+            value=given,
+            way_out='give a list: [{"name": "part-1", "position": [...]}]',
+        )
+    names = [row.get("name") if isinstance(row, dict) else None for row in given]
+    refuse_same_names(
+        [name if isinstance(name, str) else None for name in names],
+        lambda place: (FIELD, place, "name"),
+    )
+    return given
+
+
+def _refuse_count(count: int) -> None:
+    if not count:
+        raise UnusableValue("there are no targets", where=(FIELD,), value=0, way_out="give one")
+    if count > MOST_TARGETS:
+        raise TooLarge(
+            f"more than {MOST_TARGETS} targets in one survey",
+            where=(FIELD,),
+            value=count,
+            way_out="ask in several surveys",
+            status=422,
+        )
+
+
+def _read(rows: list[Any], question: Question) -> ReadTargets:
+    """Return targets read; those that spoil the reading of all are refused alone."""
+    try:
+        return read_targets(rows, question.units)
+    except ServiceError:
+        parts = [_read_alone(row, question) for row in rows]
+    usable = [place for place, part in enumerate(parts) if isinstance(part, ReadTargets)]
+    read = [part for part in parts if isinstance(part, ReadTargets)]
+    names = [row.get("name") if isinstance(row, dict) else None for row in rows]
+
+    def joined(field: str, shape: tuple[int, ...] = (0,), dtype: Any = float) -> Any:
+        return np.concatenate([np.empty(shape, dtype), *(getattr(part, field) for part in read)])
+
+    return ReadTargets(
+        names=[name if isinstance(name, str) else None for name in names],
+        places=np.array(usable, dtype=np.intp),
+        tool_in_frame=joined("tool_in_frame", (0, 4, 4)),
+        freedom=joined("freedom", dtype=np.int64),
+        cone=joined("cone"),
+        position_tolerance=joined("position_tolerance"),
+        angle_tolerance=joined("angle_tolerance"),
+        forms=[part.forms[0] for part in read],
+        repaired={at: part.repaired[0] for at, part in enumerate(read) if 0 in part.repaired},
+        refused={at: part for at, part in enumerate(parts) if isinstance(part, Detail)},
+    )
+
+
+def _read_alone(row: object, question: Question) -> ReadTargets | Detail:
+    try:
+        return read_targets([row], question.units)
+    except ServiceError as error:
+        worst = max(error.details(), key=lambda detail: KINDS[detail.code].number)
+        return replace(worst, where=worst.where[2:])

@@ -1,0 +1,269 @@
+"""Works through surveys, the oldest first, in a thread that hands pieces to a pool.
+
+Idea: what is to be done stands in the store, and only there: the thread asks for the oldest open
+survey and its unmade pieces, keeps some chunks of them in hand, and writes each chunk that comes
+back in one step with the count of what is done. So a start after a kill goes on where the store
+is, and a worker that dies costs the chunks in hand. How many pieces make a chunk follows from how
+long the last ones took; the bits of a piece do not depend on it.
+
+Left out: what a piece is (kinds.py), where it is made (pool.py).
+"""
+
+import logging
+import threading
+from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, Executor, Future, wait
+from contextlib import suppress
+from dataclasses import replace
+from datetime import datetime
+from time import monotonic
+from typing import Any
+
+from kinematics.errors import KinematicsError
+from service.errors import NotAvailable, ServiceError, StorageUnavailable
+from service.operations.arms import Arms
+from service.operations.stored import utc_now
+from service.storage.ports import (
+    FAILED,
+    OPEN_STATES,
+    SUCCEEDED,
+    GivenPiece,
+    MadePiece,
+    Survey,
+    SurveyStorage,
+)
+from service.surveys import worker
+from service.surveys.pool import Pool
+from service.surveys.progress import Pace
+from service.surveys.registry import SURVEY_KINDS
+from service.wire.arms import ReadArm
+
+_LOG = logging.getLogger(__name__)
+
+CHUNK_S = 0.4
+"""Of work in a chunk: its way to the process and into the store takes a hundredth of that."""
+
+MOST_IN_CHUNK = 64
+_AHEAD = 2
+"""Chunks in hand for each process, so that none waits for the store."""
+
+_LOOK_S = 0.1
+"""How often a cancelled survey or a stop is looked for."""
+
+_LOOK_ELSEWHERE_S = 2.0
+"""How often surveys that other server processes took in are looked for, and a store that failed."""
+
+_IDLE_S = 60.0
+"""Then the processes end, and give their memory back."""
+
+MOST_DEATHS = 3
+"""Of workers in a row, with nothing made between: then it is the survey that kills them."""
+
+_Made = tuple[list[MadePiece], float]
+
+
+class _Over(Exception):
+    """The survey in hand is not to be gone on with: cancelled, removed, or the service stops."""
+
+
+class Runner:
+    """The thread of one service; it begins with the first ``wake``."""
+
+    def __init__(
+        self,
+        store: SurveyStorage,
+        arms: Arms[ReadArm],
+        pool: Pool,
+        *,
+        now: Callable[[], datetime] = utc_now,
+    ) -> None:
+        self._store, self._arms, self._pool, self._now = store, arms, pool, now
+        self._thread: threading.Thread | None = None
+        self._wanted, self._stopping = threading.Event(), threading.Event()
+        self._lock = threading.Lock()
+        self._cancelled: set[str] = set()
+        self._unwritten: dict[str, str] = {}
+        self._pace: Pace | None = None
+
+    def wake(self) -> None:
+        """Look into the store: there is something to do."""
+        self._wanted.set()
+        with self._lock:
+            if self._thread is None and not self._stopping.is_set():
+                self._thread = threading.Thread(target=self._work, name="surveys", daemon=True)
+                self._thread.start()
+
+    def let_go(self, survey: str) -> None:
+        """Stop working on a survey that has been cancelled in the store."""
+        self._cancelled.add(survey)
+
+    def stop(self) -> None:
+        """End all work at once; what is open stays open."""
+        self._stopping.set()
+        self._wanted.set()
+        self._pool.stop()
+        if self._thread is not None:
+            self._thread.join(1.0)
+
+    def seen(self, survey: Survey) -> Survey:
+        """Return a survey as it is, also where its end could not be written yet."""
+        if survey.id in self._unwritten and survey.state in OPEN_STATES:
+            return replace(survey, state=FAILED, reason=self._unwritten[survey.id])
+        return survey
+
+    def remaining_s(self, survey: Survey) -> float | None:
+        """Return how long it still takes at the pace of now; None where nobody can tell."""
+        pace = self._pace
+        if pace is None or pace.survey != survey.id or survey.state not in OPEN_STATES:
+            return None
+        return pace.remaining_s(survey.total)
+
+    def _work(self) -> None:
+        idle_since = monotonic()
+        while not self._stopping.is_set():
+            self._wanted.clear()
+            survey = None
+            with suppress(StorageUnavailable):
+                self._write_what_was_not()
+                if self._store.may_lead():
+                    survey = self._store.next_open()
+            if survey is not None and survey.id not in self._unwritten:
+                self._run(survey)
+                idle_since = monotonic()
+                continue
+            self._wanted.wait(_LOOK_ELSEWHERE_S)
+            if monotonic() - idle_since > _IDLE_S:
+                self._pool.stop()
+
+    def _run(self, survey: Survey) -> None:
+        try:
+            with suppress(_Over):
+                if self._store.begin(survey.id, self._now()):
+                    self._make_all(survey)
+                    self._store.end(survey.id, SUCCEEDED, self._now())
+        except (ServiceError, KinematicsError) as error:
+            self._fail(survey.id, f"{error.say}; {error.way_out}" if error.way_out else error.say)
+        except Exception:
+            _LOG.exception("survey %s failed", survey.id)
+            self._fail(survey.id, "the service failed at it; its log tells more")
+        finally:
+            self._cancelled.discard(survey.id)
+            self._pace = None
+
+    def _fail(self, survey: str, reason: str) -> None:
+        _LOG.error("survey %s failed: %s", survey, reason)
+        self._unwritten[survey] = reason
+        with suppress(StorageUnavailable):
+            self._write_what_was_not()
+
+    def _write_what_was_not(self) -> None:
+        """Write the ends that a full disk kept from being written."""
+        for survey, reason in list(self._unwritten.items()):
+            self._store.end(survey, FAILED, self._now(), reason)
+            del self._unwritten[survey]
+
+    def _make_all(self, survey: Survey) -> None:
+        setup = SURVEY_KINDS[survey.kind].setup(self._arms, survey)
+        executor = self._pool.executor()
+        pace = self._pace = Pace(survey.id, survey.done)
+        chunks = _Chunks(self._store, survey.id)
+        in_hand: dict[Future[_Made], Sequence[GivenPiece]] = {}
+        deaths = 0
+        try:
+            while True:
+                try:
+                    self._hand_out(executor, survey, setup, chunks, in_hand)
+                    if not in_hand:
+                        return
+                    for future in wait(in_hand, _LOOK_S, FIRST_COMPLETED).done:
+                        made, seconds = future.result()
+                        pieces = in_hand.pop(future)
+                        if not self._store.keep(survey.id, made):
+                            raise _Over
+                        deaths = 0
+                        chunks.took(seconds, len(pieces))
+                        pace.went_on(sum(piece.size for piece in pieces))
+                except BrokenExecutor:
+                    deaths += 1
+                    executor = self._anew(chunks, in_hand, deaths)
+                self._go_on(survey.id)
+        finally:
+            self._drop(in_hand)
+
+    def _hand_out(
+        self,
+        executor: Executor,
+        survey: Survey,
+        setup: Any,
+        chunks: "_Chunks",
+        in_hand: dict[Future[_Made], Sequence[GivenPiece]],
+    ) -> None:
+        while len(in_hand) < _AHEAD * self._pool.width and (pieces := chunks.next()):
+            try:
+                future = executor.submit(worker.make, survey.kind, survey.id, setup, pieces)
+            except BrokenExecutor:
+                chunks.back(pieces)
+                raise
+            in_hand[future] = pieces
+
+    def _anew(
+        self,
+        chunks: "_Chunks",
+        in_hand: dict[Future[_Made], Sequence[GivenPiece]],
+        deaths: int,
+    ) -> Executor:
+        """Return processes in place of those that died, with what they had in hand to do again."""
+        if self._stopping.is_set():
+            raise _Over
+        if deaths > MOST_DEATHS:
+            raise NotAvailable(f"the processes that worked on it ended {deaths} times")
+        _LOG.warning("a survey worker ended; its chunks are made again")
+        for pieces in in_hand.values():
+            chunks.back(pieces)
+        in_hand.clear()
+        self._pool.stop()
+        return self._pool.executor()
+
+    def _go_on(self, survey: str) -> None:
+        if self._stopping.is_set() or survey in self._cancelled:
+            raise _Over
+
+    def _drop(self, in_hand: dict[Future[_Made], Sequence[GivenPiece]]) -> None:
+        """Take back what has not begun; do not wait long for what has."""
+        for future in in_hand:
+            future.cancel()
+        begun = [future for future in in_hand if not future.cancelled()]
+        if begun and not self._stopping.is_set() and wait(begun, 2 * CHUNK_S).not_done:
+            self._pool.stop()
+
+
+class _Chunks:
+    """Unmade pieces of a survey, some at a time, in order; those given back come first."""
+
+    def __init__(self, store: SurveyStorage, survey: str) -> None:
+        self._pieces = self._stored(store, survey)
+        self._again: list[Sequence[GivenPiece]] = []
+        self._length = 1
+
+    def next(self) -> Sequence[GivenPiece]:
+        """Return the next chunk; nothing when all pieces are made or in hand."""
+        if self._again:
+            return self._again.pop(0)
+        return [piece for _, piece in zip(range(self._length), self._pieces, strict=False)]
+
+    def back(self, pieces: Sequence[GivenPiece]) -> None:
+        """Take a chunk back that nobody has made."""
+        self._again.append(pieces)
+
+    def took(self, seconds: float, pieces: int) -> None:
+        """Learn how long a chunk took."""
+        fitting = int(CHUNK_S * pieces / max(seconds, 1e-6))
+        # At most twice as many as before: the first chunk also waits for the process to be ready.
+        self._length = max(1, min(fitting, 2 * self._length, MOST_IN_CHUNK))
+
+    @staticmethod
+    def _stored(store: SurveyStorage, survey: str) -> Iterator[GivenPiece]:
+        after = -1
+        while pieces := store.left(survey, after, MOST_IN_CHUNK):
+            yield from pieces
+            after = pieces[-1].number

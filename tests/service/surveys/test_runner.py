@@ -1,0 +1,254 @@
+"""The thread that works through surveys: what it hands out, what it does when workers die or fail.
+
+Pieces are made in threads of the test here; processes and kills are met in tests/contract.
+"""
+
+import threading
+import time
+from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import BrokenExecutor, Executor, Future, ThreadPoolExecutor
+from dataclasses import replace
+from datetime import UTC, datetime
+from typing import Any
+
+import pytest
+
+from service.errors import NotAvailable, StorageUnavailable
+from service.settings import Settings
+from service.storage.opening import OpenStorage, open_storage
+from service.storage.ports import GivenPiece, MadePiece, Survey
+from service.surveys import registry, runner, worker
+from service.surveys.runner import MOST_DEATHS, Runner
+
+AT = datetime(2026, 3, 4, 5, 6, 7, tzinfo=UTC)
+ONE = Survey("a1", "echo", "", {}, {}, 60, AT)
+PIECES = [GivenPiece(number, 3, bytes([number])) for number in range(20)]
+
+
+class Echo:
+    """A kind whose pieces are made at once, unless the test says otherwise."""
+
+    name = "echo"
+    formats = ("json",)
+
+    def __init__(self) -> None:
+        self.made: list[int] = []
+        self.meanwhile: Callable[[int], None] = lambda number: None
+
+    def setup(self, arms: object, survey: Survey) -> object:
+        return survey.about
+
+    def prepare(self, setup: object) -> object:
+        return setup
+
+    def make(self, prepared: object, piece: GivenPiece) -> MadePiece:
+        self.meanwhile(piece.number)
+        self.made.append(piece.number)
+        return MadePiece(piece.number, piece.given * 2, {"seen": piece.size})
+
+
+class DyingExecutor(Executor):
+    """Every task finds its process dead."""
+
+    def submit(self, *_: Any, **__: Any) -> Future[Any]:
+        future: Future[Any] = Future()
+        future.set_exception(BrokenExecutor("killed"))
+        return future
+
+
+class ThreadsPool:
+    """Makes pieces in two threads, after so many executors whose processes die."""
+
+    width = 2
+
+    def __init__(self) -> None:
+        self.deaths = self.started = 0
+        self.refuses: NotAvailable | None = None
+        self._threads = ThreadPoolExecutor(2)
+
+    def executor(self) -> Executor:
+        self.started += 1
+        if self.refuses is not None:
+            raise self.refuses
+        return DyingExecutor() if self.started <= self.deaths else self._threads
+
+    def stop(self) -> None:
+        """Leave the threads: what they do ends of itself."""
+
+
+class Bench:
+    """A store in memory, a kind, a pool and the thread under test."""
+
+    def __init__(self, opened: OpenStorage, kind: Echo) -> None:
+        self.store, self.kind, self.pool = opened.surveys, kind, ThreadsPool()
+        self.runner = Runner(self.store, None, self.pool)  # type: ignore[arg-type]
+
+    def add(self, name: str = "a1") -> None:
+        self.store.add(replace(ONE, id=name), PIECES, key=None, digest="")
+
+    def get(self, name: str = "a1") -> Survey:
+        found = self.store.get(name)
+        assert found is not None
+        return self.runner.seen(found)
+
+    def over(self, name: str = "a1") -> Survey:
+        deadline = time.monotonic() + 20
+        while self.get(name).state in ("queued", "running"):
+            assert time.monotonic() < deadline, self.get(name)
+            time.sleep(0.01)
+        return self.get(name)
+
+
+@pytest.fixture
+def bench(monkeypatch: pytest.MonkeyPatch) -> Iterator[Bench]:
+    kind = Echo()
+    for module in (runner, worker, registry):
+        monkeypatch.setattr(module, "SURVEY_KINDS", {"echo": kind})
+    opened = open_storage(Settings(database=":memory:"))
+    made = Bench(opened, kind)
+    yield made
+    kind.meanwhile = lambda number: None
+    made.runner.stop()
+    opened.close()
+
+
+def made_of(bench: Bench, name: str = "a1") -> Sequence[bytes]:
+    return [bench.store.made(name, piece.number) for piece in PIECES]
+
+
+def test_all_pieces_are_made_once_and_kept(bench: Bench) -> None:
+    bench.add()
+    bench.runner.wake()
+    found = bench.over()
+    assert (found.state, found.done, found.counts) == ("succeeded", 60, {"seen": 60})
+    assert made_of(bench) == [piece.given * 2 for piece in PIECES]
+    assert sorted(bench.kind.made) == list(range(20))
+    assert found.started_at is not None
+    assert found.finished_at is not None
+
+
+def test_the_oldest_comes_first(bench: Bench) -> None:
+    for name in ("c3", "a1", "b2"):
+        bench.add(name)
+    bench.runner.wake()
+    ends = [bench.over(name).finished_at for name in ("a1", "b2", "c3")]
+    assert ends == sorted(ends)  # type: ignore[type-var]
+
+
+def test_what_is_made_already_is_not_made_again(bench: Bench) -> None:
+    bench.add()
+    bench.store.begin("a1", AT)
+    bench.store.keep("a1", [MadePiece(4, b"before", {"seen": 3})])
+    bench.runner.wake()
+    assert bench.over().done == 60
+    assert bench.store.made("a1", 4) == b"before"
+    assert sorted(bench.kind.made) == [n for n in range(20) if n != 4]
+
+
+def test_dead_workers_cost_their_chunks_alone(bench: Bench) -> None:
+    bench.pool.deaths = MOST_DEATHS
+    bench.add()
+    bench.runner.wake()
+    assert bench.over().state == "succeeded"
+    assert bench.pool.started == MOST_DEATHS + 1
+    assert sorted(bench.kind.made) == list(range(20))
+
+
+def test_a_survey_that_kills_every_worker_fails_and_the_next_one_runs(bench: Bench) -> None:
+    bench.pool.deaths = MOST_DEATHS + 1
+    bench.add()
+    bench.add("b2")
+    bench.runner.wake()
+    found = bench.over()
+    assert (found.state, found.done) == ("failed", 0)
+    assert "ended 4 times" in found.reason
+    assert bench.over("b2").state == "succeeded"
+
+
+def test_where_there_are_no_workers_the_survey_says_so(bench: Bench) -> None:
+    bench.pool.refuses = NotAvailable("the cluster does not answer", way_out="start it")
+    bench.add()
+    bench.runner.wake()
+    assert bench.over().reason == "the cluster does not answer; start it"
+
+
+def test_a_fault_in_a_piece_fails_the_survey_without_its_text(bench: Bench) -> None:
+    def fault(number: int) -> None:
+        raise ZeroDivisionError("secret")
+
+    bench.kind.meanwhile = fault
+    bench.add()
+    bench.runner.wake()
+    found = bench.over()
+    assert found.state == "failed"
+    assert "secret" not in found.reason
+
+
+def test_a_cancelled_one_is_let_go_of(bench: Bench) -> None:
+    begun, go_on = threading.Event(), threading.Event()
+
+    def meanwhile(number: int) -> None:
+        begun.set()
+        go_on.wait(5)
+
+    bench.kind.meanwhile = meanwhile
+    bench.add()
+    bench.add("b2")
+    bench.runner.wake()
+    assert begun.wait(5)
+    assert bench.store.end("a1", "cancelled", AT)
+    bench.runner.let_go("a1")
+    go_on.set()
+    assert bench.over("b2").state == "succeeded"
+    assert (bench.get().state, bench.get().done) == ("cancelled", 0)
+
+
+def test_an_end_that_cannot_be_written_is_told_and_written_later(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    full = threading.Event()
+    full.set()
+    keep, end = bench.store.keep, bench.store.end
+
+    def refusing(name: str, call: Callable[..., bool]) -> Callable[..., bool]:
+        def refuse(*given: Any) -> bool:
+            if full.is_set():
+                raise StorageUnavailable("the disk is full")
+            return call(*given)
+
+        return refuse
+
+    monkeypatch.setattr(bench.store, "keep", refusing("keep", keep))
+    monkeypatch.setattr(bench.store, "end", refusing("end", end))
+    bench.add()
+    bench.runner.wake()
+    assert bench.over().reason == "the disk is full"
+    stored = bench.store.get("a1")
+    assert stored is not None
+    assert stored.state == "running"
+    full.clear()
+    bench.add("b2")
+    bench.runner.wake()
+    assert bench.over("b2").state == "succeeded"
+    stored = bench.store.get("a1")
+    assert stored is not None
+    assert (stored.state, stored.reason) == ("failed", "the disk is full")
+
+
+def test_a_stop_leaves_open_what_is_open(bench: Bench) -> None:
+    begun = threading.Event()
+
+    def meanwhile(number: int) -> None:
+        begun.set()
+        time.sleep(0.05)
+
+    bench.kind.meanwhile = meanwhile
+    bench.add()
+    bench.runner.wake()
+    assert begun.wait(5)
+    bench.runner.stop()
+    stored = bench.store.get("a1")
+    assert stored is not None
+    assert stored.state == "running"
+    bench.runner.wake()
+    assert bench.store.get("a1") == stored
