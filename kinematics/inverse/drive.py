@@ -119,6 +119,7 @@ class Drive:
         near: FloatArray | None = None,
         edge: float = TRAVEL_EDGE,
         still: NDArray[np.bool_] | None = None,
+        most: int = MOST_TURNS,
     ) -> Postures:
         """Return the joint values within travel that move the rows by ``motions`` (k, rows).
 
@@ -130,6 +131,7 @@ class Drive:
         near : (joints,), look nearest these joint values first, where not all can be looked at.
         edge : rad or m; a joint value that exceeds its limit by no more is put onto it (CLIPPED).
         still : (joints,), joints whose values are taken as they are, without whole turns.
+        most : postures of one motion that are looked at.
         """
         middle = self._middle if near is None else self._square @ near
         drive, passive, limits = self._of_kernel
@@ -137,7 +139,7 @@ class Drive:
             drive = (drive[0], drive[1], drive[2] & ~still)
         ends = (*self._ends, edge)
         return Postures(
-            *postures_of(motions, drive, passive, limits, ends, self._row_box, middle, MOST_TURNS)
+            *postures_of(motions, drive, passive, limits, ends, self._row_box, middle, most)
         )
 
 

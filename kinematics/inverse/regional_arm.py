@@ -45,6 +45,7 @@ class RegionalArm:
     ----------
     screws : the arm. ways : how to ask. geometry : in words.
     normal : (3,), of the plane that the point stays in; zeros where it leaves every plane.
+    slack : share of the length by which motions may miss a place and still be told.
     """
 
     screws: Screws
@@ -52,6 +53,7 @@ class RegionalArm:
     geometry: RegionalGeometry
     normal: FloatArray
     proof: str = "closed-form"
+    slack: float = SEARCH_ACCEPTS
 
     def solve(self, targets: FloatArray) -> Found:
         """Return all motions for targets (m, 4, 4), of which the last column alone is read.
@@ -60,7 +62,7 @@ class RegionalArm:
         the length, with their errors.
         """
         places = self._places(targets)
-        motions, of, errors, flags = self._all(places, SEARCH_ACCEPTS)
+        motions, of, errors, flags = self._all(places, self.slack)
         left = np.flatnonzero(np.bincount(of, minlength=len(places)) == 0)
         if len(left):
             more, more_of, more_errors, _ = self._all(places[left], SEARCH_RELAXED)
@@ -157,7 +159,15 @@ def regional_arm_of(arm: Arm, tool_in_flange: FloatArray) -> RegionalArm | None:
            [  0.,  90.]])
     """
     screws = screws_of(arm, tool_in_flange)
-    if not 1 <= screws.rows <= 3 or arm.joint_count < screws.rows:
+    return None if arm.joint_count < screws.rows else regional_of(screws)
+
+
+def regional_of(screws: Screws) -> RegionalArm | None:
+    """Return the solver for the place of the tool's point of rows that move on their own.
+
+    None where there are not one to three, or not each moves the point its own way.
+    """
+    if not 1 <= screws.rows <= 3:
         return None
     slides, axes, points, tip = _with_idle_joints(screws)
     columns = _columns(slides, axes, points, tip)
