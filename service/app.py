@@ -39,8 +39,8 @@ from service.wire.arms import read_arm
 
 ROUTERS: tuple[APIRouter, ...] = (
     controller.router,
-    poses.router,
     reach.router,
+    poses.router,
     tables.router,
     rotations.router,
     guesses.router,

@@ -9,7 +9,7 @@ Source: none; counting. Not covered: more than ``MOST_TURNS`` postures of one so
 at are nearest the middle of travel, or nearest joint values that are given.
 """
 
-from typing import NamedTuple
+from typing import Any, NamedTuple
 from weakref import WeakKeyDictionary
 
 import numpy as np
@@ -133,14 +133,21 @@ class Drive:
         still : (joints,), joints whose values are taken as they are, without whole turns.
         most : postures of one motion that are looked at.
         """
+        return Postures(*postures_of(motions, *self.for_kernel(near, edge, still, most)))
+
+    def for_kernel(
+        self,
+        near: FloatArray | None = None,
+        edge: float = TRAVEL_EDGE,
+        still: NDArray[np.bool_] | None = None,
+        most: int = MOST_TURNS,
+    ) -> tuple[Any, ...]:
+        """Return what ``postures_of`` takes beside motions; parameters as in ``postures``."""
         middle = self._middle if near is None else self._square @ near
         drive, passive, limits = self._of_kernel
         if still is not None:
             drive = (drive[0], drive[1], drive[2] & ~still)
-        ends = (*self._ends, edge)
-        return Postures(
-            *postures_of(motions, drive, passive, limits, ends, self._row_box, middle, most)
-        )
+        return drive, passive, limits, (*self._ends, edge), self._row_box, middle, most
 
 
 def _alone(limit: Limit) -> int:

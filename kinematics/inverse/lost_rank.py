@@ -48,7 +48,7 @@ class LostRank:
         """Return which motions (k, 6), rad and metres, have lost rank, (k,); None for none."""
         at_least, jacobians = np.empty(len(motions)), np.empty((len(motions), 6, 6))
         moved = motions * self._scale
-        least = _bound_smallest(*self._of_kernel, moved, self._within, jacobians, at_least)
+        least = bound_smallest(*self._of_kernel, moved, self._within, jacobians, at_least)
         if least >= self._within:
             return None
         lost: NDArray[np.bool_] = at_least < self._within
@@ -57,7 +57,7 @@ class LostRank:
 
 
 @compiled
-def _bound_smallest(
+def bound_smallest(
     axis: FloatArray,
     point: FloatArray,
     prismatic: NDArray[np.bool_],

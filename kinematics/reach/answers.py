@@ -28,6 +28,7 @@ from kinematics.reach.family_members import FamiliesOf, with_witnesses
 from kinematics.reach.last_proof import LastProof, Proofs
 from kinematics.reach.listing import how_many, listed
 from kinematics.reach.near_enough import NearEnough
+from kinematics.reach.one_target import one_target_of
 from kinematics.reach.reasons import Told
 from kinematics.reach.targets import (
     BOUND,
@@ -100,6 +101,7 @@ class Answerer:
     Attributes
     ----------
     ranking, method : what ranks, and what solves.
+    one_target : what answers for one pose at once, None where nothing does.
     """
 
     def __init__(self, ranking: Ranking, task: str) -> None:
@@ -108,6 +110,7 @@ class Answerer:
         self._proof = PROOFS.index(self.method.solver.proof)
         self._near_enough = NearEnough(ranking, self.method)
         six = ranking.screws.rows == 6 == ranking.arm.joint_count and task != POSITION
+        self.one_target = None if task == POSITION else one_target_of(ranking, self.method.solver)
         self._lost_rank = LostRank(ranking.screws) if six else None
         self._last_proof = LastProof(ranking, self.method)
 

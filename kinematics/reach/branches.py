@@ -10,6 +10,7 @@ Source: none, plain geometry. Not covered: which features an arm has (arm_parts.
 """
 
 from itertools import product
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -66,6 +67,11 @@ class Branches:
         signs = self._signs(motions)
         branch_codes(signs, self._turned, BRANCH_LEVEL, target, len(_NUMBERS), codes)
         return codes
+
+    def for_kernel(self) -> tuple[Any, ...]:
+        """Return what ``branch_signs`` and ``branch_codes`` take beside motions over the length."""
+        parts = (*self._lines, self._places, self._features)
+        return (*parts, self._turned, BRANCH_LEVEL, len(_NUMBERS))
 
     def _signs(self, motions: FloatArray) -> FloatArray:
         signs = np.empty((len(motions), len(self._features)))

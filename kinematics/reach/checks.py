@@ -22,6 +22,7 @@ from kinematics.inverse.measured import DIRECTION, POSE, POSITION
 from kinematics.kernels.compiler import for_kernel
 from kinematics.reach.answers import Answerer, Asked, Basis, Way
 from kinematics.reach.cones import cone_of
+from kinematics.reach.one_target import OneTarget
 from kinematics.reach.spins import spin_of
 from kinematics.reach.targets import (
     CONE,
@@ -104,6 +105,11 @@ class Reacher:
             which = np.flatnonzero(targets.freedom == freedom)
             parts.append((which, self._of_freedom(freedom, targets.only(which), asked)))
         return _put_together(parts)
+
+    @cached_property
+    def one_target(self) -> OneTarget | None:
+        """What answers for one pose at once where that is plain; None for most arms."""
+        return self._answerer(POSE).one_target
 
     def methods(self, targets: Targets) -> tuple[Basis, ...]:
         """Return what answers to targets rest on, one for each freedom that occurs."""

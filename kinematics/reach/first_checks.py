@@ -118,6 +118,8 @@ def _check(asked: tuple[_Asked, ...]) -> None:
         for freedom in freedoms:
             targets = Targets.of([Target(near, freedom), Target(beyond, freedom)])
             for nearest in (None, joints[0]):
+                if reacher.one_target is not None:
+                    reacher.one_target.best(flange, near[None], nearest, named=True)
                 checks = reacher.check(targets, near=nearest)
                 for index in range(len(checks)):
                     checks.reason_of(index)

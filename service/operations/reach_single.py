@@ -10,7 +10,16 @@ import numpy as np
 
 from kinematics.errors import OutOfRange
 from kinematics.pose_batches import poses_as_given
-from kinematics.reach.targets import CODES, CONE, FREEDOMS, VERDICTS, TakesLonger, Targets
+from kinematics.reach.targets import (
+    CODES,
+    CONE,
+    FREEDOMS,
+    NONE,
+    VERDICTS,
+    TakesLonger,
+    Target,
+    Targets,
+)
 from kinematics.table import FloatArray
 from kinematics.tolerances import TARGET_ANGLE, TARGET_POSITION
 from kinematics.transforms import in_frame
@@ -20,6 +29,7 @@ from service.operations.approached import approach_asked, approached_checks
 from service.operations.arms import Arms
 from service.operations.joint_rows import read_joint_row
 from service.operations.questions import Question
+from service.operations.reach_plain import plain_answer
 from service.operations.reach_told import NO_STATE, told_best
 from service.operations.reachers import is_quick, method_of
 from service.operations.single import question_asked
@@ -31,6 +41,7 @@ from service.wire.reach_targets import cone_in
 _USUAL_POSITION, _USUAL_ANGLE = np.array([TARGET_POSITION]), np.array([TARGET_ANGLE])
 _FREEDOM = [np.array([freedom]) for freedom in range(len(FREEDOMS))]
 _NO_CONE = np.zeros(1)
+_POSE = Targets.of([Target(np.eye(4))])
 _NO_CODES: frozenset[int] = frozenset()
 _NO_TURN = [0.0, 0.0, 0.0]
 
@@ -68,15 +79,20 @@ def single_reach(
     ServiceError, KinematicsError : the target cannot be used, or the arm cannot be asked so.
     TakesLonger : it was given up.
     """
-    reacher = question.reacher
+    reacher, tool_in_frame = question.reacher, _tool_in_frame(question, asked)
+    near = None if asked.near is None else _near(question, asked.near.values)
+    if asked.freedom == NONE and asked.approach is None and reacher.one_target is not None:
+        best = reacher.one_target.best(question.frame_in_base, tool_in_frame, near, named=nested)
+        plain = best and plain_answer(question, best, method_of(reacher, _POSE), nested=nested)
+        if plain is not None:
+            return plain
     targets = Targets(
-        in_frame(question.frame_in_base, _tool_in_frame(question, asked)),
+        in_frame(question.frame_in_base, tool_in_frame),
         _FREEDOM[asked.freedom],
         _cone(question, asked),
         _USUAL_POSITION,
         _USUAL_ANGLE,
     )
-    near = None if asked.near is None else _near(question, asked.near.values)
     method = method_of(reacher, targets)
     checks = reacher.check(targets, near=near, at_once=at_once)
     approached = None

@@ -167,16 +167,15 @@ class ToldChecks:
             findings = [beyond_out(self.question.units, finding) for finding in beyond]
         findings += [computed_finding_out(self.question.units, finding) for finding in said]
         way = self._way(solution)
-        return {
-            "joints": self.joints[solution],
-            "margin": margin if isfinite(margin) else None,
-            "branch": self.branch(solution),
-            "singularity": singularity,
-            "position_error": self.errors[0][solution],
-            "angle_error": self.errors[1][solution],
-            "findings": findings,
-            **({} if way is None else {"approach": approach_out(self.question, way)}),
-        }
+        told = solution_out(
+            self.joints[solution],
+            margin,
+            self.branch(solution),
+            singularity,
+            (self.errors[0][solution], self.errors[1][solution]),
+            findings,
+        )
+        return told if way is None else {**told, "approach": approach_out(self.question, way)}
 
     def codes(self, solution: int) -> frozenset[int]:
         """Return the codes of what is to be known of one solution, without the words."""
@@ -237,6 +236,26 @@ class ToldChecks:
             return approach_say(self.question.units, broken, int(self.checks.verdict[index]))
         reason = self.checks.reason_of(index)
         return "" if reason is None else reason_say(self.question.units, reason)
+
+
+def solution_out(
+    joints: list[float],
+    margin: float,
+    branch: str,
+    singularity: dict[str, object] | None,
+    errors: tuple[float, float],
+    findings: list[dict[str, object]],
+) -> dict[str, object]:
+    """Return one solution as answered; joint values and errors in the user's units already."""
+    return {
+        "joints": joints,
+        "margin": margin if isfinite(margin) else None,
+        "branch": branch,
+        "singularity": singularity,
+        "position_error": errors[0],
+        "angle_error": errors[1],
+        "findings": findings,
+    }
 
 
 def told_together(

@@ -57,8 +57,12 @@ def plain_items(form: str, positions: FloatArray, orientations: FloatArray) -> b
     inner = len(opened) + 1
     values = json_bytes(orientations)[inner:-inner].split(between)
     places = json_bytes(positions)[2:-2].split(b"],[")
-    items = [place + middle + value for place, value in zip(places, values, strict=True)]
-    return begin + (end + b"," + begin).join(items) + end
+    # All parts joined at once: to put each item together first would copy every byte twice.
+    parts = [middle] * (4 * len(places))
+    parts[0::4], parts[2::4] = places, values
+    parts[3::4] = [end + b"," + begin] * len(places)
+    parts[-1] = end
+    return begin + b"".join(parts)
 
 
 def json_answer(
@@ -92,7 +96,7 @@ class PartsAnswer(Response):
 
     def __init__(
         self,
-        parts: Sequence[bytes],
+        parts: Sequence[bytes | memoryview],
         *,
         media_type: str,
         headers: Mapping[str, str] | None = None,

@@ -134,7 +134,7 @@ LAYERS = (
     ("inverse.continuation", "inverse.self_motions"),
     ("inverse.families",),
     # Which method answers for which arm, and joint values from motions.
-    ("inverse.drive", "inverse.lost_rank", "inverse.several"),
+    ("inverse.drive", "inverse.lost_rank", "inverse.several", "inverse.at_once"),
     # One joint held at many values, the other six solved; cones met by search.
     ("inverse.held_values", "inverse.locked", "inverse.redundant_paths", "inverse.cone_search"),
     ("inverse.held_joint", "inverse.redundant_stretches"),
@@ -150,7 +150,7 @@ LAYERS = (
     ("reach.redundant_families",),
     ("reach.verdicts",),
     ("reach.near_enough", "reach.at_limits", "reach.last_proof", "reach.listing", "reach.misses"),
-    ("reach.reasons",),
+    ("reach.reasons", "reach.one_target"),
     ("reach.answers",),
     ("reach.spins",),
     ("reach.cones",),

@@ -559,7 +559,7 @@ def test_a_controller_is_answered_meanwhile(launch: Callable[..., Any], kind: st
     }[kind]()
     path = "/v1/poses" if kind == JSON else f"{Q}&singularity=false"
     statuses: list[int] = []
-    times: list[float] = []
+    answered = 0
 
     def ask() -> None:
         headers = {"content-type": kind}
@@ -573,15 +573,13 @@ def test_a_controller_is_answered_meanwhile(launch: Callable[..., Any], kind: st
         asking = threading.Thread(target=ask)
         asking.start()
         while asking.is_alive():
-            started = time.monotonic()
             assert client.get(url).status_code == 200
-            times.append(time.monotonic() - started)
+            answered += 1
             time.sleep(0.005)
         asking.join()
     assert statuses == [200, 200]
-    assert len(times) >= 5
-    # Generous: a busy machine must not fail it; the benchmark holds the figures.
-    assert max(times) < 1.0
+    # How long each of them takes is held by the benchmark.
+    assert answered >= 5
 
 
 @pytest.mark.parametrize("kind", [CSV, JSON])

@@ -91,10 +91,8 @@ def test_old_clients_get_a_length_and_a_close(server: Any) -> None:
 
 def test_a_body_that_stops_half_way_is_told_so(launch: Launch) -> None:
     server = launch("--body-timeout-s", "0.3")
-    started = time.monotonic()
     with connected(server.port, HEAD + b'Content-Length: 100\r\n\r\n{"name":') as client:
         answer = everything(client)
-    assert 0.2 < time.monotonic() - started < 3.0
     assert answer.startswith(b"HTTP/1.1 408 ")
     assert b"connection: close" in answer.lower()
     problem = problem_in(answer)
@@ -140,11 +138,9 @@ def test_100_mb_in_chunks_are_refused(server: Any) -> None:
 
 def test_a_polite_sender_is_refused_before_it_sends(server: Any) -> None:
     asked = HEAD + b"Content-Length: 100000000\r\nExpect: 100-continue\r\n\r\n"
-    started = time.monotonic()
     with connected(server.port, asked) as client:
         answer = everything(client)
     assert answer.startswith(b"HTTP/1.1 413 ")
-    assert time.monotonic() - started < 2.0
 
 
 def test_a_polite_sender_is_let_through(server: Any) -> None:

@@ -3,7 +3,6 @@
 import asyncio
 import json
 import math
-import time
 from collections.abc import AsyncIterator
 
 import httpx
@@ -86,10 +85,8 @@ async def test_chunks_are_counted() -> None:
 
 
 async def test_a_stalled_body_times_out() -> None:
-    started = time.monotonic()
     with pytest.raises(RequestTimeout, match="after 1 bytes"):
         await read_json(incoming(b"[", 5.0, b"]", b"", body_timeout_s=0.05))
-    assert time.monotonic() - started < 1.0
 
 
 async def test_a_body_that_drips_times_out() -> None:
