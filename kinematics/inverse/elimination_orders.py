@@ -114,9 +114,9 @@ class Order:
         order, tops = np.empty((m, RIGHT), np.int64), np.empty((m, RIGHT, RIGHT + LEFT))
         kept, spans = np.empty((m, KEPT, LEFT + FADING)), np.empty(m)
         eliminate_sides(
-            *(self.matrices, self.start, self.still_left, self.still_right, self.fading),
-            *(self.slot, np.ascontiguousarray(about), order, tops, kept, spans),
-        )
+            self.matrices, self.start, self.still_left, self.still_right, self.fading,
+            self.slot, np.ascontiguousarray(about), order, tops, kept, spans,
+        )  # fmt: skip
         powers, companions = np.empty((m, KEPT, LEFT)), np.empty((m, ROOTS, ROOTS))
         health, leftover = np.empty(m), np.empty(m)
         write_companions(self.slides, self.still, kept, powers, companions, health, leftover)
@@ -124,9 +124,9 @@ class Order:
         third, of, apart = _thirds(companions, health)
         motions = np.empty((len(of), 6))
         write_postures(
-            *(self.screws.axis, self.screws.prismatic, self.positions, self.signs),
-            *(np.ascontiguousarray(moves), powers, tops, order, third, of, motions),
-        )
+            self.screws.axis, self.screws.prismatic, self.positions, self.signs,
+            np.ascontiguousarray(moves), powers, tops, order, third, of, motions,
+        )  # fmt: skip
         return Candidates(motions, of, apart, np.minimum(health, spans))
 
 
@@ -134,7 +134,8 @@ def _thirds(
     companions: FloatArray, health: FloatArray
 ) -> tuple[FloatArray, NDArray[np.int64], FloatArray]:
     """Return the third joint's values, their targets, and how far they are from being real."""
-    sound = np.isfinite(companions).all(axis=(1, 2))
+    finite = np.isfinite(companions).reshape(len(companions), -1)
+    sound: NDArray[np.bool_] = np.all(finite, axis=1)
     companions[~sound], health[~sound] = 0.0, 0.0
     tangents = np.linalg.eigvals(companions)
     real, imaginary = tangents.real, np.abs(tangents.imag)

@@ -47,7 +47,7 @@ def to_tangents(slides: NDArray[np.bool_], kept: FloatArray, powers: FloatArray)
     >>> kept[0, 1] = 1.0
     >>> to_tangents(np.zeros(6, bool), kept, powers)
     >>> powers[0, :9].astype(int).tolist()
-    [1, 0, -1, 1, 0, -1, 1, 0, -1]
+    [1, 0, -1, 0, 0, 0, 1, 0, -1]
     """
     for row in range(KEPT):
         for column in range(LEFT):

@@ -2,7 +2,8 @@
 
 A closed form where three neighbouring axes meet or run parallel, or three rows slide; for two
 slides and for axes in no special place an elimination, whose no holds as far as floating point; for
-tables that are nearly special, if only by typed decimals, both. None where the arm is of no such kind: it is searched for.
+tables that are nearly special, if only by typed decimals, both. None where the arm is of no such
+kind: it is searched for.
 
 Source: none; an order. Not covered: other numbers of joints (solve.py).
 """
@@ -34,4 +35,3 @@ def six_joints_of(screws: Screws) -> Solver | None:
     if special is None or exact is None or exact.proof == "closed-form":
         return exact or special
     return MeasuredTable(screws, special, exact)
-

@@ -33,6 +33,7 @@ from kinematics.inverse.tolerances import EXACT_AXES
 from kinematics.inverse.upright_spins import upright_spins_of
 from kinematics.table import FloatArray, Table
 from kinematics.transforms import inverse
+from kinematics.travel_limits import limits_of
 
 
 @dataclass(frozen=True, eq=False)
@@ -131,7 +132,10 @@ def method_of(arm: Arm, tool_in_flange: FloatArray, task: str = POSE) -> Method:
         solver = upright_spins_of(arm, tool_in_flange, screws_of(arm, tool_in_flange))
     solver = solver or _closed_form(arm, tool_in_flange, task)
     if isinstance(solver, FourAxes) and task == POSITION:
-        return Method(arm, tool_in_flange, task, solver, _last_turn(arm))
+        idle = _last_turn(arm)
+        if idle.any():
+            return Method(arm, tool_in_flange, task, solver, idle)
+        solver = None
     if solver is None and task == DIRECTION and _turns_tool_z(arm, screws_of(arm, tool_in_flange)):
         posed = _closed_form(arm, tool_in_flange, POSE)
         if posed is not None:
@@ -166,10 +170,25 @@ def _closed_form(arm: Arm, tool_in_flange: FloatArray, task: str) -> Solver | No
 
 
 def _last_turn(arm: Arm) -> NDArray[np.bool_]:
-    """Return which joint turns last, (joints,), if it moves its own row alone."""
+    """Return which joint turns last, (joints,), if neither rows nor limits tie it to others."""
     turning = [row for row in arm.drive_map.driven if arm.table.rows[row].is_revolute]
-    alone = np.count_nonzero(arm.drive_map.matrix[turning[-1]]) == 1
+    alone = bool(turning) and _alone(arm, turning[-1])
     return np.array([alone and row == turning[-1] for row in arm.drive_map.driven])
+
+
+def _alone(arm: Arm, row: int) -> bool:
+    """Tell whether a row and its joint have nothing to do with others: by couplings, or by bounds.
+
+    A joint that does not matter is put anywhere within its travel; it must not be what brings
+    another row, or a sum of joint values, within bounds.
+    """
+    if row not in arm.drive_map.driven:
+        return False
+    joint, matrix = arm.drive_map.driven.index(row), arm.drive_map.matrix
+    bounds = limits_of(arm)
+    of_it = bounds.weights[~bounds.working & (bounds.weights[:, joint] != 0.0)]
+    lonely = np.count_nonzero(matrix[row]) == 1 and np.count_nonzero(matrix[:, joint]) == 1
+    return bool(lonely and np.count_nonzero(of_it) == len(of_it))
 
 
 def _turns_tool_z(arm: Arm, screws: Screws) -> bool:
@@ -184,13 +203,11 @@ def _turns_tool_z(arm: Arm, screws: Screws) -> bool:
 
 def _rows_that_matter(arm: Arm, screws: Screws) -> int:
     """Return how many rows carry the tool's point: what turns about it after them does not."""
-    rows, matrix = screws.rows, arm.drive_map.matrix
+    rows = screws.rows
     while rows and not screws.prismatic[rows - 1]:
         row = rows - 1
         away = np.cross(screws.tool_at_zero[:3, 3] - screws.point[row], screws.axis[row])
-        alone = np.count_nonzero(matrix[row]) == 1 and row in arm.drive_map.driven
-        alone = alone and np.count_nonzero(matrix[:, arm.drive_map.driven.index(row)]) == 1
-        if not alone or np.linalg.norm(away) > EXACT_AXES:
+        if not _alone(arm, row) or np.linalg.norm(away) > EXACT_AXES:
             break
         rows -= 1
     return rows

@@ -28,8 +28,8 @@ CODES = (0, 201, 200, 202)
 
 WITNESS, BOUND, CLOSED_FORM, ELIMINATION, BRANCH_AND_BOUND, SEARCH = range(6)
 PROOFS = ("witness", "bound", "closed-form", "elimination", "branch-and-bound", "search")
-"""What a verdict rests on: joint values; links too short for anybody; all solutions in closed form,
-or all roots of an elimination, in floating point; boxes that all miss; nothing, where one looked."""
+"""What a verdict rests on: joint values; links too short for anybody; all solutions in closed
+form, or all roots of an elimination, in floating point; boxes that all miss; nothing found."""
 
 
 class Target(NamedTuple):
