@@ -134,7 +134,7 @@ def _thirds(
     companions: FloatArray, health: FloatArray
 ) -> tuple[FloatArray, NDArray[np.int64], FloatArray]:
     """Return the third joint's values, their targets, and how far they are from being real."""
-    finite = np.isfinite(companions).reshape(len(companions), -1)
+    finite = np.isfinite(companions).reshape(len(companions), ROOTS * ROOTS)
     sound: NDArray[np.bool_] = np.all(finite, axis=1)
     companions[~sound], health[~sound] = 0.0, 0.0
     tangents = np.linalg.eigvals(companions)

@@ -117,6 +117,8 @@ class RegionalArm:
 
     def _nearest(self, places: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return motions (m, 3) and the miss they leave (m,), over the length."""
+        if self.screws.rows == 1:
+            return self._nearest_of_one(places[:, :3])
         ways = self.ways
         motions, misses = np.zeros((len(places), 3)), np.zeros(len(places))
         for index, place in enumerate(places):
@@ -124,6 +126,21 @@ class RegionalArm:
                 ways.slides, ways.axes, ways.points, False, ways.tip, place, motions[index]
             )
         return motions, misses
+
+    def _nearest_of_one(self, places: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Return the same of a single joint, however far its slide has to go."""
+        axis, point, tip = self.screws.axis[0], self.screws.point[0], self.ways.tip[:3]
+        motions = np.zeros((len(places), 3))
+        if self.screws.prismatic[0]:
+            motions[:, 0] = (places - tip) @ axis
+            at = tip + motions[:, :1] * axis
+        else:
+            own, asked = tip - point, places - point
+            across = np.cross(axis, own)
+            motions[:, 0] = np.arctan2(asked @ across, -(asked @ np.cross(axis, across)))
+            sine, less = np.sin(motions[:, :1]), 1.0 - np.cos(motions[:, :1])
+            at = tip + sine * across + less * np.cross(axis, across)
+        return motions, np.linalg.norm(places - at, axis=1)
 
     def _of_a_no(
         self, places: FloatArray, none: NDArray[np.bool_]

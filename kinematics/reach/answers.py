@@ -24,6 +24,7 @@ from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import method_of
 from kinematics.reach.at_limits import with_ends_of_travel
 from kinematics.reach.bounds import FREE, Bounds
+from kinematics.reach.durations import seconds_of
 from kinematics.reach.family_members import FamiliesOf, with_witnesses
 from kinematics.reach.last_proof import LastProof, Proofs
 from kinematics.reach.listing import how_many, listed
@@ -33,7 +34,6 @@ from kinematics.reach.reasons import Told
 from kinematics.reach.targets import (
     BOUND,
     BRANCH_AND_BOUND,
-    ELIMINATION,
     NOT_FOUND,
     OUTSIDE_TRAVEL,
     PROOFS,
@@ -89,12 +89,6 @@ class Way(Protocol):
     def answer(self, targets: Targets, asked: Asked) -> Checks: ...
 
 
-_CLOSED_SECONDS, _ELIMINATION_SECONDS = 3e-5, 2.5e-4
-_SHORT_SEARCH_SECONDS, _SEARCH_SECONDS = 2e-3, 6e-3
-"""About what a target takes by a closed form, by an elimination, and by a search where one target
-in ten is not found: those that are take 0.3 ms, the others 15 ms and more."""
-
-
 class Answerer:
     """Answers targets of one task (inverse/measured.py) for one arm with one tool.
 
@@ -127,11 +121,7 @@ class Answerer:
     @property
     def seconds(self) -> float:
         """About how long a target takes."""
-        if self._near_enough.searches:
-            return _SHORT_SEARCH_SECONDS + _CLOSED_SECONDS
-        if not self.method.complete:
-            return _SEARCH_SECONDS
-        return _ELIMINATION_SECONDS if self._proof == ELIMINATION else _CLOSED_SECONDS
+        return seconds_of(self._proof, self.method.complete, self._near_enough.searches)
 
     def answer(self, targets: Targets, asked: Asked) -> Checks:
         """Return verdicts and solutions of targets (m)."""

@@ -8,7 +8,6 @@ from collections.abc import Sequence
 from dataclasses import replace
 from functools import cached_property
 from itertools import compress, pairwise
-from math import isfinite
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -40,6 +39,7 @@ from service.operations.courses_told import approach_out, approach_reason_out, a
 from service.operations.questions import Question
 from service.operations.reasons_told import family_out, reason_out, reason_say
 from service.operations.singularities import Judged, judged, judged_reading
+from service.operations.solution_told import solution_out
 
 if TYPE_CHECKING:
     # Its kernels are loaded with all others for reach, when first wanted.
@@ -236,26 +236,6 @@ class ToldChecks:
             return approach_say(self.question.units, broken, int(self.checks.verdict[index]))
         reason = self.checks.reason_of(index)
         return "" if reason is None else reason_say(self.question.units, reason)
-
-
-def solution_out(
-    joints: list[float],
-    margin: float,
-    branch: str,
-    singularity: dict[str, object] | None,
-    errors: tuple[float, float],
-    findings: list[dict[str, object]],
-) -> dict[str, object]:
-    """Return one solution as answered; joint values and errors in the user's units already."""
-    return {
-        "joints": joints,
-        "margin": margin if isfinite(margin) else None,
-        "branch": branch,
-        "singularity": singularity,
-        "position_error": errors[0],
-        "angle_error": errors[1],
-        "findings": findings,
-    }
 
 
 def told_together(

@@ -146,7 +146,7 @@ LAYERS = (
     ("inverse.solve",),
     # Verdicts on targets: what is asked and answered, the parts of an arm, and how they are made.
     ("reach", "reach.targets", "reach.arm_parts", "reach.aligned_joints"),
-    ("reach.branches", "reach.bounds", "reach.family_members"),
+    ("reach.branches", "reach.bounds", "reach.durations", "reach.family_members"),
     ("reach.redundant_families",),
     ("reach.verdicts",),
     ("reach.near_enough", "reach.at_limits", "reach.last_proof", "reach.listing", "reach.misses"),
