@@ -43,6 +43,9 @@ from kinematics.inverse.tolerances import (
 from kinematics.number_checks import FloatArray
 from kinematics.transforms import inverse
 
+FURTHEST = 1e100
+"""Tangent of a half angle beyond which it is a right angle, whatever more."""
+
 
 class Candidates(NamedTuple):
     """Motions that may be solutions, from the eigenvalues of one order.
@@ -137,8 +140,11 @@ def _thirds(
     finite = np.isfinite(companions).reshape(len(companions), ROOTS * ROOTS)
     sound: NDArray[np.bool_] = np.all(finite, axis=1)
     companions[~sound], health[~sound] = 0.0, 0.0
-    tangents = np.linalg.eigvals(companions)
-    real, imaginary = tangents.real, np.abs(tangents.imag)
+    tangents = _eigenvalues(companions, sound)
+    health[~sound] = 0.0
+    # Half a turn from where x is 0 it is infinite: a huge number says so, its square still is one.
+    real = np.clip(tangents.real, -FURTHEST, FURTHEST)
+    imaginary = np.minimum(np.abs(tangents.imag), FURTHEST)
     square = real * real
     # x = tan(psi / 2) with a complex angle psi: its imaginary part says how far from real it is.
     with np.errstate(divide="ignore"):
@@ -148,6 +154,20 @@ def _thirds(
     x, y = real[of, which], imaginary[of, which]
     angle = np.arctan2(2.0 * x, 1.0 - x * x - y * y)
     return ANGLE_AT_ZERO + angle, of.astype(np.int64), apart[of, which]
+
+
+def _eigenvalues(companions: FloatArray, sound: NDArray[np.bool_]) -> NDArray[np.complex128]:
+    """Return the eigenvalues (m, 16); ``sound`` becomes False where the iteration fails."""
+    try:
+        return np.linalg.eigvals(companions).astype(np.complex128)
+    except np.linalg.LinAlgError:
+        values = np.zeros((len(companions), ROOTS), np.complex128)
+        for b, companion in enumerate(companions):
+            try:
+                values[b] = np.linalg.eigvals(companion)
+            except np.linalg.LinAlgError:
+                sound[b] = False
+        return values
 
 
 def order_of(screws: Screws, shift: int, reverse: bool, still: int = 0) -> Order | None:

@@ -74,3 +74,33 @@ def test_a_slide_is_neither_read_off_nor_dropped(place: int) -> None:
     assert len(there) == 8
     for order in there:
         assert place not in (order.positions[2], order.positions[5])
+
+
+def test_where_eigenvalues_fail_or_overflow_the_other_targets_are_answered(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    rng = fresh()
+    order = order_of(screws_of(FAMILIES["general"](rng), np.eye(4)), 0, False)
+    assert order is not None
+    targets, plain = targets_of(order, rng, 3), np.linalg.eigvals
+    known = order.candidates(targets)
+
+    def failing(matrices: np.ndarray) -> np.ndarray:
+        if len(matrices) == 3:
+            raise np.linalg.LinAlgError
+        values = plain(matrices)
+        failing.calls += 1
+        if failing.calls == 2:
+            raise np.linalg.LinAlgError
+        return np.where(failing.calls == 3, 1e200, values)
+
+    failing.calls = 0
+    monkeypatch.setattr(np.linalg, "eigvals", failing)
+    tried = order.candidates(targets)
+    assert tried.health[0] == known.health[0]
+    assert tried.health[1] == 0.0
+    np.testing.assert_allclose(tried.motions[tried.of == 0], known.motions[known.of == 0])
+    assert not (tried.of == 1).any()
+    # Infinite tangents, all of them real: half a turn from where they are 0.
+    assert (tried.of == 2).sum() == ROOTS
+    assert np.isfinite(tried.motions).all()
