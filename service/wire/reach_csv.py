@@ -240,7 +240,7 @@ def _approach(said: str) -> Approach | None:
     distance = number(said, APPROACH)
     if not distance > 0:
         raise UnusableValue(
-            "an approach of no length leads nowhere",
+            "an approach needs a length",
             where=(APPROACH,),
             value=said,
             way_out="give a length above 0, or leave the cell empty",

@@ -197,14 +197,15 @@ def _approach(parameters: Mapping[str, str], scale: int | None) -> Approach | No
         raise _unusable(
             "approach",
             parameters["approach"],
-            "an approach of no length leads nowhere",
+            "an approach needs a length",
             "give a length above 0, or leave approach out",
         )
     said = parameters.get("along", TOOL_Z)
     if said == TOOL_Z:
         return Approach(distance=distance)
-    along = [scaled_number(text, "along", scale) for text in said.split(",")]
-    if len(along) != 3 or not any(along):
+    texts = said.split(",")
+    along = [scaled_number(text, "along", scale) for text in texts] if len(texts) == 3 else []
+    if not any(along):
         raise _unusable(
             "along", said, "this is no direction", "give three numbers: along=0,0,-1, or tool-z"
         )

@@ -87,7 +87,7 @@ def test_the_same_words_about_another_target_are_the_same_question() -> None:
         ({**POSE, "along": "0,0,1"}, "missing-field", "approach"),
         ({**POSE, "approach": "5", "along": "0,0"}, "unusable-value", "along"),
         ({**POSE, "approach": "5", "along": "0,0,0"}, "unusable-value", "along"),
-        ({**POSE, "approach": "5", "along": "tool-x"}, "unparseable", "along"),
+        ({**POSE, "approach": "5", "along": "tool-x"}, "unusable-value", "along"),
     ],
 )
 def test_what_is_refused(said: dict[str, str], code: str, where: str) -> None:
