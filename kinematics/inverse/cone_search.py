@@ -69,6 +69,7 @@ def towards(direction: FloatArray, axis: FloatArray, cone: FloatArray) -> FloatA
     least = axis[np.arange(len(axis)), np.abs(axis).argmin(axis=1)]
     other = -least[:, None] * axis
     other[np.arange(len(axis)), np.abs(axis).argmin(axis=1)] += 1.0
+    # Where the two are that close, rounding would choose the way.
     across = np.where(size[:, None] > 1e-12, across, other)
     across /= np.linalg.norm(across, axis=1)[:, None]
     nearest: FloatArray = np.cos(angle)[:, None] * axis + np.sin(angle)[:, None] * across

@@ -96,13 +96,6 @@ class Elimination:
         scaled = np.ascontiguousarray(self.screws.scaled(targets))
         return in_metres(self.screws, nearest_motions(self.screws, scaled))
 
-    def counts_by_order(self, targets: FloatArray) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
-        """Return how many solutions each of the two orders finds alone, (m,) each."""
-        scaled = np.ascontiguousarray(self.screws.scaled(targets))
-        orders = (self.first, self.second or self.first)
-        one, other = (_landed(self.screws, o.candidates(scaled), scaled) for o in orders)
-        return one.counts(), other.counts()
-
     def _solved(self, scaled: FloatArray) -> Found:
         candidates = self.first.candidates(scaled)
         landed = _landed(self.screws, candidates, scaled)

@@ -32,7 +32,8 @@ from kinematics.transforms import inverse
 ROWS = 6
 
 _FLAT = 1e-12
-"""Determinant of the directions of slides below which the equations are left unsolved."""
+"""Determinant of the directions of slides below which the equations are left unsolved: rounding of
+directions alone makes as much of three that lie in one plane."""
 
 
 @dataclass(frozen=True)

@@ -10,7 +10,6 @@ Source: none. Not covered: targets that leave a turn open (spins.py).
 
 from dataclasses import replace
 from functools import cached_property
-from typing import NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -40,53 +39,12 @@ from kinematics.reach.targets import (
     SEARCH,
     UNREACHABLE,
     Checks,
-    TakesLonger,
     Targets,
 )
 from kinematics.reach.verdicts import Ranked, Ranking
+from kinematics.reach.ways import Asked, Basis
 from kinematics.table import FloatArray
 from kinematics.tolerances import MOST_LISTED
-
-
-class Asked(NamedTuple):
-    """What is asked beside the targets: the best posture alone, and near which joint values.
-
-    ``at_once`` asks to give up, by TakesLonger, before anything that takes milliseconds.
-    """
-
-    best_only: bool = False
-    near: FloatArray | None = None
-    at_once: bool = False
-
-    def go_on(self) -> None:
-        """Give up if what comes next is not done at once.
-
-        Raises
-        ------
-        TakesLonger
-        """
-        if self.at_once:
-            raise TakesLonger
-
-
-class Basis(NamedTuple):
-    """What answers rest on: an index into PROOFS, what a no is worth at best, and a sentence."""
-
-    proof: int
-    say: str
-
-
-class Way(Protocol):
-    """Answers targets of one freedom."""
-
-    @property
-    def basis(self) -> Basis: ...
-
-    @property
-    def seconds(self) -> float:
-        """About how long a target takes."""
-
-    def answer(self, targets: Targets, asked: Asked) -> Checks: ...
 
 
 class Answerer:

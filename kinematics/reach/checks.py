@@ -20,7 +20,7 @@ from kinematics.errors import KinematicsError
 from kinematics.findings import Finding
 from kinematics.inverse.measured import DIRECTION, POSE, POSITION
 from kinematics.kernels.compiler import for_kernel
-from kinematics.reach.answers import Answerer, Asked, Basis, Way
+from kinematics.reach.answers import Answerer
 from kinematics.reach.cones import cone_of
 from kinematics.reach.one_target import OneTarget
 from kinematics.reach.spins import spin_of
@@ -36,6 +36,7 @@ from kinematics.reach.targets import (
     Targets,
 )
 from kinematics.reach.verdicts import Ranking
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 
 

@@ -23,7 +23,7 @@ from kinematics.findings import FINE, Finding
 from kinematics.inverse.cone_search import ConeSearch
 from kinematics.inverse.iterative import Search
 from kinematics.inverse.measured import POSITION
-from kinematics.reach.answers import Answerer, Asked, Basis, Way
+from kinematics.reach.answers import Answerer
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.spins import spun
 from kinematics.reach.targets import (
@@ -38,6 +38,7 @@ from kinematics.reach.targets import (
     Targets,
     Words,
 )
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 
 DIRECTIONS, TURNS = 60, 12

@@ -20,7 +20,7 @@ from kinematics.chain import tool_in_base
 from kinematics.findings import FINE, Finding
 from kinematics.inverse.drive import drive_of
 from kinematics.inverse.four_axes import FourAxes
-from kinematics.reach.answers import Answerer, Asked, Basis, Way
+from kinematics.reach.answers import Answerer
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.targets import (
     BOUND,
@@ -34,6 +34,7 @@ from kinematics.reach.targets import (
     Targets,
     Words,
 )
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 from kinematics.tolerances import EXACT_REACH
 

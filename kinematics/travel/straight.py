@@ -43,6 +43,7 @@ from kinematics.travel.trails import STALLS, WHOLE, Trail
 from kinematics.travel_limits import limits_of
 
 _HAIR = 1e-12
+"""Share of a line between two postures that are the same one: nobody sees it, doubles do."""
 _PIECES = 10
 """Places at which a piece of the line is looked at to locate what happens in it."""
 _DOUBTS = 8

@@ -6,10 +6,9 @@ Left out: which thread makes a piece, and sending them.
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import ClassVar, NamedTuple
+from typing import ClassVar
 
-from kinematics.reach.targets import VERDICTS
-from service.bulk.reach_rendering import REFUSED
+from service.bulk.reach_rendering import REFUSED, Piece, nested
 from service.bulk.rendering import Stamp, WorkedOut
 from service.operations.travels import ManyTravels
 from service.wire import csv_text
@@ -18,13 +17,6 @@ from service.wire.formats import JSON, Format
 from service.wire.reach_lines import SameInAll
 from service.wire.travel_lines import travel_head, travel_lines
 from service.wire.travel_reading import FIELD
-
-
-class TravelPiece(NamedTuple):
-    """Some travels' part of an answer, and how many of them there are of each verdict."""
-
-    content: bytes
-    verdicts: Mapping[str, int]
 
 
 @dataclass(frozen=True)
@@ -36,13 +28,13 @@ class TravelRendering:
 
     media_type: ClassVar[str]
 
-    def piece(self, begin: int, end: int) -> TravelPiece:
+    def piece(self, begin: int, end: int) -> Piece:
         """Return the part of travels ``begin`` ... ``end``."""
         items = self.many.items(begin, end)
         verdicts = Counter(str(item["verdict"] or REFUSED) for item in items)
-        return TravelPiece(self._content(items), verdicts)
+        return Piece(self._content(items), verdicts)
 
-    def answer(self, pieces: Sequence[TravelPiece]) -> WorkedOut:
+    def answer(self, pieces: Sequence[Piece]) -> WorkedOut:
         """Return the whole answer."""
         raise NotImplementedError
 
@@ -58,16 +50,9 @@ class JsonTravels(TravelRendering):
     def _content(self, items: Sequence[Mapping[str, object]]) -> bytes:
         return json_bytes(items)[1:-1]
 
-    def answer(self, pieces: Sequence[TravelPiece]) -> WorkedOut:
+    def answer(self, pieces: Sequence[Piece]) -> WorkedOut:
         """Return head, items, and the summary."""
-        found = sum((Counter(piece.verdicts) for piece in pieces), Counter[str]())
-        summary = {FIELD: self.many.count}
-        summary |= {verdict.replace("-", "_"): found[verdict] for verdict in (*VERDICTS, REFUSED)}
-        parts = [json_bytes(self.many.head)[:-1] + b',"travels":[']
-        for place, piece in enumerate(pieces):
-            parts += [b",", piece.content] if place else [piece.content]
-        parts.append(b'],"summary":' + json_bytes(summary) + b"}")
-        return WorkedOut(self.media_type, parts, found[REFUSED])
+        return nested(self.many.head, FIELD, {FIELD: self.many.count}, pieces)
 
 
 class CsvTravels(TravelRendering):
@@ -85,7 +70,7 @@ class CsvTravels(TravelRendering):
         )
         return travel_lines(items, question.arm.joint_count, same)
 
-    def answer(self, pieces: Sequence[TravelPiece]) -> WorkedOut:
+    def answer(self, pieces: Sequence[Piece]) -> WorkedOut:
         """Return the line of keys, then all lines."""
         head = travel_head(self.many.question.arm.joint_count)
         refused = sum(piece.verdicts.get(REFUSED, 0) for piece in pieces)

@@ -11,8 +11,9 @@ from starlette.responses import Response
 from service.bulk.answering import Bulk, answer_of
 from service.bulk.limited import Limited
 from service.bulk.reach_checks import FORMATS
+from service.bulk.reach_rendering import Piece
 from service.bulk.rendering import Stamp
-from service.bulk.travel_rendering import RENDERINGS, TravelPiece, TravelRendering
+from service.bulk.travel_rendering import RENDERINGS, TravelRendering
 from service.operations.travels import travels_of_body
 from service.wire.body import parse_json, read_bytes
 from service.wire.controller import wanted_tag
@@ -41,7 +42,7 @@ async def answer_travels(request: Request) -> Response:
     bulk: Bulk = request.app.state.bulk
     arms = request.app.state.arms
 
-    def begun() -> tuple[TravelRendering, list[TravelPiece] | None]:
+    def begun() -> tuple[TravelRendering, list[Piece] | None]:
         body = parse_json(raw)
         request.state.json_body = body
         many = travels_of_body(arms, body)

@@ -81,11 +81,9 @@ def single_reach(
     """
     reacher, tool_in_frame = question.reacher, _tool_in_frame(question, asked)
     near = None if asked.near is None else _near(question, asked.near.values)
-    if asked.freedom == NONE and asked.approach is None and reacher.one_target is not None:
-        best = reacher.one_target.best(question.frame_in_base, tool_in_frame, near, named=nested)
-        plain = best and plain_answer(question, best, method_of(reacher, _POSE), nested=nested)
-        if plain is not None:
-            return plain
+    plain = _plainly(question, asked, tool_in_frame, near, nested=nested)
+    if plain is not None:
+        return plain
     targets = Targets(
         in_frame(question.frame_in_base, tool_in_frame),
         _FREEDOM[asked.freedom],
@@ -122,6 +120,22 @@ def single_reach(
         state=state,
         codes=codes,
     )
+
+
+def _plainly(
+    question: Question,
+    asked: ReachAsked,
+    tool_in_frame: FloatArray,
+    near: FloatArray | None,
+    *,
+    nested: bool,
+) -> ReachAnswer | None:
+    """Return the answer where nothing is to be said but the best posture, else None."""
+    reacher = question.reacher
+    if asked.freedom != NONE or asked.approach is not None or reacher.one_target is None:
+        return None
+    best = reacher.one_target.best(question.frame_in_base, tool_in_frame, near, named=nested)
+    return best and plain_answer(question, best, method_of(reacher, _POSE), nested=nested)
 
 
 def _tool_in_frame(question: Question, asked: ReachAsked) -> FloatArray:

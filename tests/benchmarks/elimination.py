@@ -16,7 +16,12 @@ import numpy as np
 from kinematics.inverse.elimination import Elimination, elimination_of
 from kinematics.inverse.screws import screws_of
 from kinematics.table import FloatArray
-from tests.kinematics.inverse.general_arms import FAMILIES, SIXTEEN, sliding
+from tests.kinematics.inverse.general_arms import (
+    FAMILIES,
+    SIXTEEN,
+    counts_by_order,
+    sliding,
+)
 from tests.kinematics.inverse.triple_arms import Draw, random_motions
 from tests.kinematics.inverse.triple_sets import jacobians_at, tools_at
 
@@ -29,11 +34,12 @@ REGULAR = 1e-6
 
 HEAD = (
     f"{'':32s} {'arms':>5s} {'none':>5s} {'targets':>8s} {'each':>6s} {'missed':>7s} {'below':>6s}"
-    f" {'closed':>7s} {'open':>6s} {'agree':>9s} {'worst':>8s} {'us':>7s}"
+    f" {'closed':>7s} {'open':>6s} {'agree':>9s} {'of':>8s} {'worst':>8s} {'us':>7s}"
 )
 """none: arms without a sound order. missed: generating motions not found again, of these below:
 with a smallest singular value below 1e-6. closed: targets told as having no solution, which all
-have. agree: share of targets of which both orders alone find as many solutions."""
+have. agree: share of targets of which both orders alone find as many solutions; of: how many
+targets belong to arms that have two sound orders."""
 
 
 def missing(
@@ -53,7 +59,7 @@ def missing(
 
 def measure(name: str, draw: Draw, random: np.random.Generator, arms: int, count: int) -> None:
     """Print a line for so many targets of each of so many arms."""
-    none = targets_in_all = solutions = missed = below = closed = opened = agreed = 0
+    none = targets_in_all = solutions = missed = below = closed = opened = agreed = twice = 0
     worst = seconds = 0.0
     for _ in range(arms):
         arm = draw(random)
@@ -67,8 +73,10 @@ def measure(name: str, draw: Draw, random: np.random.Generator, arms: int, count
         solver.solve(targets)
         seconds += time.process_time() - begin
         lost, counts, is_open, errors = missing(solver, motions, targets)
-        one, other = solver.counts_by_order(targets)
-        agreed += int((one == other).sum())
+        counted = counts_by_order(solver, targets)
+        if len(counted) == 2:
+            twice += count
+            agreed += int((counted[0] == counted[1]).sum())
         targets_in_all += count
         solutions += int(counts.sum())
         missed += len(lost)
@@ -81,7 +89,7 @@ def measure(name: str, draw: Draw, random: np.random.Generator, arms: int, count
     total = max(targets_in_all, 1)
     print(
         f"{name:32s} {arms:5d} {none:5d} {targets_in_all:8d} {solutions / total:6.2f} {missed:7d}"
-        f" {below:6d} {closed:7d} {opened:6d} {agreed / total:9.5f} {worst:8.1e}"
+        f" {below:6d} {closed:7d} {opened:6d} {agreed / max(twice, 1):9.5f} {twice:8d} {worst:8.1e}"
         f" {1e6 * seconds / total:7.1f}",
         flush=True,
     )

@@ -6,6 +6,8 @@ Drawn anew each time, as in triple_arms.py; a name says what is special about pa
 import numpy as np
 
 from kinematics.arm import Arm
+from kinematics.inverse.candidates import land_candidates
+from kinematics.inverse.elimination import Elimination
 from tests.kinematics.inverse.triple_arms import Draw, arm_of
 
 _QUARTER = np.pi / 2
@@ -83,3 +85,15 @@ _SIXTEEN[2, 2] = 0.2
 SIXTEEN = arm_of(_SIXTEEN)
 """An arm with up to 16 solutions: after Manseur and Doty, A robot manipulator with 16 real inverse
 kinematic solution sets, 1989, recalled from memory."""
+
+
+def counts_by_order(solver: Elimination, targets: np.ndarray) -> list[np.ndarray]:
+    """Return how many solutions each of the orders it has finds alone, one or two of (m,)."""
+    screws = solver.screws
+    scaled = np.ascontiguousarray(screws.scaled(targets))
+    counts = []
+    for order in (solver.first, solver.second):
+        if order is not None:
+            tried = order.candidates(scaled)
+            counts.append(land_candidates(screws, scaled, tried.motions, tried.of).counts())
+    return counts

@@ -12,7 +12,7 @@ from kinematics.inverse.found import Found, none_found
 from kinematics.inverse.measured import POSE, POSITION
 from kinematics.inverse.solve import Method
 from kinematics.reach import last_proof
-from kinematics.reach.answers import Answerer, Asked
+from kinematics.reach.answers import Answerer
 from kinematics.reach.targets import (
     BOUND,
     BRANCH_AND_BOUND,
@@ -30,6 +30,7 @@ from kinematics.reach.targets import (
     Targets,
 )
 from kinematics.reach.verdicts import Ranking
+from kinematics.reach.ways import Asked
 from kinematics.table import Travel
 from kinematics.tolerances import TARGET_POSITION
 from tests.kinematics.example_arms import AT_FLANGE, PLANAR, SIX, arm_of, revolute
