@@ -322,7 +322,7 @@ def test_targets_at_the_edges(schema: Any) -> None:
     hold()
     assert set(statuses) <= {200, 422}
     # Most arms drawn are refused; what else is wrong with targets is met with drawn requests.
-    assert statuses.count(200) >= 3
+    assert statuses.count(200) >= 10
 
 
 @st.composite
@@ -372,7 +372,7 @@ def test_travels_at_the_edges(schema: Any) -> None:
 
     hold()
     assert set(statuses) <= {200, 422}
-    assert statuses.count(200) >= 3
+    assert statuses.count(200) >= 10
 
 
 def test_conversions_at_the_edges(schema: Any) -> None:
