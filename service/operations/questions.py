@@ -25,9 +25,8 @@ from service.wire.arms import ReadArm
 from service.wire.poses import read_pose
 
 if TYPE_CHECKING:
-    from kinematics.travel.courses import Courses
-
     from kinematics.reach.checks import Reacher
+    from kinematics.travel.courses import Courses
 
 # One entry per arm, tool and task in use, some 5 kB each; 0.4 MB where reach has been searched.
 PREPARED_KEPT = 512
