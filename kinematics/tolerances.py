@@ -274,8 +274,13 @@ NEARLY_ALIGNED = 1e-2
 which an axis that is in line but for a hundredth meets by turning through a degree and more."""
 
 WORTH_COMPROMISING = 100.0
+"""Tolerances by which a solution of five joints may miss, where it is in line with the missing one,
+for a no not to be proved: what a hundredfold magnification leaves of an error."""
+
+WORTH_LEADING = 1000.0
 """Tolerances by which a solution of few joints may miss and still be led to where it misses least:
-what a hundredfold magnification leaves of an error, more of it being told by NEARLY_ALIGNED."""
+beside a fold what is typed moves it a hundred times as far and more, and leading it takes
+microseconds."""
 
 SAME_COMPROMISE = 1e-6
 """Radians, or metres, within which two postures that miss a target least are one: steps downhill
@@ -295,6 +300,13 @@ MOST_FOLLOWED = 200
 MOST_SPARE_FOLLOWED = 1
 """The same for arms with joints to spare, whose every posture is of families: some 50 ms each."""
 
+MOST_SPANNED = 50
+"""The same for arms of which one joint is held at many values: some 10 ms each, half a second."""
+
+AXES_WELL_ASLANT = 0.01
+"""Sine between tool z and the axes of an arm that cannot tilt from which on a target has one turn
+about tool z alone: below it the tolerance of an angle leaves some degrees of that turn open."""
+
 MOST_LISTED = 64
 """Postures of one target that are listed, best first: nobody chooses among more."""
 
@@ -308,15 +320,3 @@ million samples take minutes, and the limits are most often typed wrong."""
 SAMPLES_JUDGED = 16384
 """Samples whose nearness to singular postures is judged: a share is then told to half a percent,
 in some 50 ms; evenly spread, they err less than so many drawn by chance."""
-
-AREA_AGREES = 1e-12
-"""Share of an area by which two halves of a strip may differ from the whole: what rounding leaves
-of a dozen terms; some hundred strips then stay within 1e-9."""
-
-MOST_AREA_HALVINGS = 24
-"""Of a strip in which two boundary curves cross: what is left of it then is 1e-7 of its height,
-and its share of the area less than 1e-13."""
-
-IN_ONE_PLANE = 1e-9
-"""Share of an arm's length by which its point may leave a plane, or a joint move it, and not count:
-what the rounding of twenty rows leaves, a hundredfold; typed tables leave more, or none."""

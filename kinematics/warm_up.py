@@ -84,12 +84,19 @@ def _searches() -> None:
     check_searches()
 
 
+def _courses() -> None:
+    from kinematics.travel.first_courses import follow_first_courses
+
+    follow_first_courses()
+
+
 _PARTS: Mapping[str, Callable[[], None]] = {
     "poses": _poses,
     "judgements": _judgements,
     "relations": _relations,
     "closed-forms": _closed_forms,
     "searches": _searches,
+    "courses": _courses,
 }
 POSTURES = ("poses", "judgements")
 """The parts that questions about postures need; they take about as long."""
@@ -97,7 +104,7 @@ POSTURES = ("poses", "judgements")
 RELATIONS = ("relations",)
 """The parts that questions about rotations and frames need beside those."""
 
-REACH = ("closed-forms", "searches")
+REACH = ("closed-forms", "searches", "courses")
 """The parts that questions about reach need beside those; they take the longest."""
 
 
@@ -136,12 +143,19 @@ def _last_of_searches() -> Callable[..., object]:
     return LAST_OF_SEARCHES
 
 
+def _last_of_courses() -> Callable[..., object]:
+    from kinematics.travel.first_courses import LAST_OF_COURSES
+
+    return LAST_OF_COURSES
+
+
 _LAST: Mapping[str, Callable[[], Callable[..., object]]] = {
     "poses": lambda: travel_left,
     "judgements": lambda: judge_postures,
     "relations": lambda: loops_walked,
     "closed-forms": _last_of_closed_forms,
     "searches": _last_of_searches,
+    "courses": _last_of_courses,
 }
 """A kernel that each part ends with, so that a part which was cut short counts as missing."""
 

@@ -18,8 +18,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.envelope.pair_region import PairRegion
+from kinematics.envelope.tolerances import AREA_AGREES, MOST_AREA_HALVINGS
 from kinematics.number_checks import FloatArray
-from kinematics.tolerances import AREA_AGREES, MOST_AREA_HALVINGS
 
 _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(12)
 

@@ -17,12 +17,12 @@ import numpy as np
 from kinematics.arm import Arm
 from kinematics.envelope.measures import Measure, area_of, swept_volume_of
 from kinematics.envelope.pair_region import PairRegion, clipped
+from kinematics.envelope.tolerances import IN_ONE_PLANE
 from kinematics.jacobian import motion_of
 from kinematics.reach.sample_summary import first_axis
 from kinematics.reach.travel_region import travel_region
 from kinematics.table import FloatArray
 from kinematics.task_space import sample_postures
-from kinematics.tolerances import IN_ONE_PLANE
 
 
 @dataclass(frozen=True)

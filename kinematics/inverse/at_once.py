@@ -177,6 +177,6 @@ def _solutions(
                 gaps[solutions, i] = tried_gaps[row, i]
             solutions += 1
     jacobians, at_least = np.empty((solutions, 6, 6)), np.empty(solutions)
-    if bound_smallest(*lines, motions[:solutions], jacobians, at_least) < within:
+    if bound_smallest(*lines, motions[:solutions], within, jacobians, at_least) < within:
         return 0
     return solutions

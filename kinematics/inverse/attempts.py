@@ -104,7 +104,7 @@ def search(lines: Lines, starts: Starts, task: int, effort: Effort, targets: Flo
         patience = PATIENCE if attempt < PATIENT_STARTS else 1
         if bounded and attempt % WITHIN_FIRST:
             downhill(anywhere, 1.0, waiting, q, patience)
-            q = _brought_home(room, q)
+            q = brought_home(room, q)
         squared = downhill(room, 1.0, waiting, q, patience)
         _keep(met, downhill, room, waiting, q, squared)
         waiting = waiting[met.many[waiting] < effort.wanted]
@@ -157,7 +157,7 @@ def _keep(
     met.many[of[new]] += 1
 
 
-def _brought_home(room: Room, q: FloatArray) -> FloatArray:
+def brought_home(room: Room, q: FloatArray) -> FloatArray:
     """Return joint values in their travel: moved by whole turns where these do, else to its end."""
     off = q - 0.5 * (room.lower + room.upper)
     whole = 2.0 * np.pi * np.rint(off / (2.0 * np.pi))

@@ -1,42 +1,62 @@
 """Postures of an arm of few joints that miss a target least, place and turn held together.
 
 Idea: few joints meet a typed pose only nearly. A closed form meets the place exactly and leaves all
-of the error to the turn, where a little off both would do. From its posture damped least squares go
+of the error to the turn, where a little off both would do. From its posture the descent goes
 downhill on shift and turn together, each over what it may be off by. Within both tolerances every
 weighted mean of the squares is at most 1: where the least one is above it, no posture thereabouts
 is within them; else more heed is given to what is too far off, until one or the other is shown.
 
-Source: Gauss-Newton steps; Levenberg (1944) and Marquardt (1963) for the damping, recalled; weak
-duality for the proof.
+Source: that of the descent (descent.py); weak duality for the proof.
 Not covered: postures far from all that are given.
 """
 
 from dataclasses import replace
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
+from kinematics.inverse.descent import descend
+from kinematics.inverse.descent_arrays import FAR, Desk, Lines, Room, desk_for
 from kinematics.inverse.found import Found
-from kinematics.inverse.landing import gap_to, jacobians_at, land_all
-from kinematics.inverse.measured import DIRECTION, POSITION, errors_of, wrapped
+from kinematics.inverse.iterative import TASKS
+from kinematics.inverse.measured import errors_of, wrapped
 from kinematics.inverse.screws import Screws
 from kinematics.inverse.several import picked
-from kinematics.kernels.compiler import for_kernel
+from kinematics.kernels.compiler import compiled, for_kernel
 from kinematics.table import FloatArray
 from kinematics.tolerances import SAME_COMPROMISE
 
-_STEPS = 12
+_NO_TURN = np.array([0.0, 0.0, 1.0])
+_STEPS = 15
+"""Steps downhill: from a posture a degree or less away some four do."""
 _ROUNDS, _LESS_HEED = 6, 0.125
 """How often weights are changed, and by how much the weight of what is near enough is lowered."""
-_LEAST_DAMPING, _LESS, _MORE = 1e-12, 0.1, 10.0
-"""Damping over the largest entry of the normal equations: at the least, after a step downhill, and
-after one that led up and was not taken."""
+
+
+class Driven(NamedTuple):
+    """How joint values move rows: ``matrix`` (rows, joints), as ``DriveMap.matrix``, and which
+    ``rows`` (joints,) have a value of their own."""
+
+    matrix: FloatArray
+    rows: NDArray[np.intp]
+
+
+def each_row(rows: int) -> Driven:
+    """Return that each of so many rows has its own joint value.
+
+    Examples
+    --------
+    >>> each_row(2).rows
+    array([0, 1])
+    """
+    return Driven(np.eye(rows), np.arange(rows))
 
 
 def compromised(
     found: Found,
     screws: Screws,
-    drive: FloatArray,
+    drive: Driven,
     targets: FloatArray,
     tolerances: FloatArray,
     task: str,
@@ -47,7 +67,7 @@ def compromised(
 
     Parameters
     ----------
-    drive : (rows, joints), row motions per joint value; targets : (m, 4, 4), the tool in base.
+    targets : (m, 4, 4), the tool in base, metres.
     tolerances : (m, 2), metres and rad; task : as in measured.py.
     """
     of, each = found.target, tolerances[found.target]
@@ -94,19 +114,17 @@ def each_once(found: Found, prismatic: NDArray[np.bool_]) -> Found:
     array([[3.]])
     """
     kept = np.ones(len(found.target), np.bool_)
-    for this in range(1, len(kept)):
-        that = this - 1
-        while that >= 0 and found.target[that] == found.target[this]:
-            apart = wrapped(found.motions[[this]] - found.motions[[that]], prismatic)
-            if kept[that] and np.abs(apart).max() < SAME_COMPROMISE:
-                kept[this] = False
-            that -= 1
+    for lag in range(1, int(found.count_per_target().max(initial=1))):
+        apart = wrapped(found.motions[lag:] - found.motions[:-lag], prismatic)
+        same = (np.abs(apart) < SAME_COMPROMISE).all(axis=1)
+        same &= found.target[lag:] == found.target[:-lag]
+        kept[lag:] &= ~(same & kept[:-lag])
     return picked(found, kept)
 
 
 def compromises(
     screws: Screws,
-    drive: FloatArray,
+    drive: Driven,
     motions: FloatArray,
     targets: FloatArray,
     tolerances: FloatArray,
@@ -116,7 +134,6 @@ def compromises(
 
     Parameters
     ----------
-    drive : (rows, joints), row motions per joint value, as ``DriveMap.matrix``.
     targets : (k, 4, 4), the tool in base, metres, of each motion; task : as in measured.py.
     tolerances : (k, 2), metres and rad, that the errors are divided by.
 
@@ -126,75 +143,51 @@ def compromises(
     >>> screws.tool_at_zero[0, 3] = 1.0
     >>> turned, target = np.zeros((1, 1)), np.eye(4)[None]
     >>> target[0, :2, 3] = np.cos(0.3), np.sin(0.3)
-    >>> one = np.eye(1)
+    >>> one = each_row(1)
     >>> compromises(screws, one, turned, target, np.array([[1.0, 1e-3]]), "pose").round(6)
     array([[0.]])
     >>> compromises(screws, one, turned, target, np.array([[1.0, 1e3]]), "pose").round(6)
     array([[0.3]])
     """
     scale = np.where(screws.prismatic, screws.length, 1.0)
-    share = tolerances / np.array([screws.length, 1.0])
-    moving = drive / scale[:, None]
-    moving = moving / np.linalg.norm(moving, axis=0)
-    goals, now = for_kernel(screws.scaled(targets)), for_kernel(motions / scale)
-    errors = _errors(screws, now, goals, share, task)
-    squares, damping = (errors**2).sum(axis=1), np.full(len(now), _LEAST_DAMPING)
-    for _ in range(_STEPS):
-        slopes = _slopes(screws, now, goals, share, task) @ moving
-        normal = slopes.transpose(0, 2, 1) @ slopes
-        size = np.abs(normal).max(axis=(1, 2), initial=0.0)
-        normal += (damping * size)[:, None, None] * np.eye(moving.shape[1])
-        downhill = (slopes.transpose(0, 2, 1) @ errors[:, :, None])[:, :, 0]
-        there = now + (np.linalg.pinv(normal) @ downhill[:, :, None])[:, :, 0] @ moving.T
-        errors_there = _errors(screws, there, goals, share, task)
-        squares_there = (errors_there**2).sum(axis=1)
-        better = squares_there < squares
-        now, errors = _where(better, there, now), _where(better, errors_there, errors)
-        squares = np.where(better, squares_there, squares)
-        damping = np.maximum(damping * np.where(better, _LESS, _MORE), _LEAST_DAMPING)
-        if not better.any() and (damping > 1.0).all():
-            break
-    found: FloatArray = now * scale
+    moving = drive.matrix / scale[:, None]
+    moving = for_kernel(moving / np.abs(moving).max(axis=0))
+    lines = Lines(
+        for_kernel(screws.axis),
+        for_kernel(screws.point),
+        screws.prismatic,
+        for_kernel(screws.tool_at_zero),
+        moving,
+        _NO_TURN,
+    )
+    joints = moving.shape[1]
+    far, none = np.full(joints, FAR), np.empty(0)
+    room = Room(-far, far, np.empty((0, joints)), none, none, np.zeros(joints, np.bool_))
+    values = np.linalg.solve(moving[drive.rows], (motions / scale)[:, drive.rows].T).T
+    q = np.array(values, dtype=np.float64, order="C")
+    shares = tolerances[:, 0] / screws.length / tolerances[:, 1]
+    desk, goals = desk_for(screws.rows, joints, 0), for_kernel(screws.scaled(targets))
+    descend_each(lines, room, desk, TASKS[task], shares, goals, q, _STEPS)
+    found: FloatArray = (q @ moving.T) * scale
     return found
 
 
-def _where(better: NDArray[np.bool_], this: FloatArray, that: FloatArray) -> FloatArray:
-    return np.ascontiguousarray(np.where(better[:, None], this, that))
+@compiled
+def descend_each(
+    lines: Lines,
+    room: Room,
+    desk: Desk,
+    task: int,
+    shares: FloatArray,
+    goals: FloatArray,
+    q: FloatArray,
+    most: int,
+) -> None:
+    """Bring joint values (k, joints) downhill in place, each to its own goal (k, 4, 4).
 
-
-def _lines(screws: Screws) -> tuple[FloatArray, FloatArray, NDArray[np.bool_], FloatArray]:
-    lines = for_kernel(screws.axis), for_kernel(screws.point)
-    return *lines, screws.prismatic, for_kernel(screws.tool_at_zero)
-
-
-def _errors(
-    screws: Screws, motions: FloatArray, goals: FloatArray, share: FloatArray, task: str
-) -> FloatArray:
-    """Return shift and turn to the goals over what they may be, (k, 6)."""
-    poses, gaps = np.empty((len(motions), 4, 4)), np.empty((len(motions), 6))
-    land_all(*_lines(screws), motions, poses)
-    for pose, goal, gap in zip(poses, goals, gaps, strict=True):
-        gap_to(pose, goal, gap)
-    return _weighed(gaps[:, :, None], goals, share, task)[:, :, 0]
-
-
-def _slopes(
-    screws: Screws, motions: FloatArray, goals: FloatArray, share: FloatArray, task: str
-) -> FloatArray:
-    """Return how shift and turn change with the motions, (k, 6, rows)."""
-    slopes = np.empty((len(motions), 6, screws.rows))
-    jacobians_at(*_lines(screws), motions, slopes)
-    return _weighed(slopes, goals, share, task)
-
-
-def _weighed(columns: FloatArray, goals: FloatArray, share: FloatArray, task: str) -> FloatArray:
-    """Return columns (k, 6, n) over what may be missed by; what the task leaves free is 0."""
-    if task == POSITION:
-        columns[:, 3:] = 0.0
-    elif task == DIRECTION:
-        about = goals[:, :3, 2]
-        free = np.einsum("ki,kin->kn", about, columns[:, 3:])
-        columns[:, 3:] -= about[:, :, None] * free[:, None, :]
-    columns[:, :3] /= share[:, :1, None]
-    columns[:, 3:] /= share[:, 1:, None]
-    return columns
+    Parameters
+    ----------
+    shares : (k,), weight of turns beside lengths.
+    """
+    for k in range(q.shape[0]):
+        descend(lines, room, desk, task, shares[k], goals[k], q[k], most, 1)

@@ -76,7 +76,9 @@ def room_of(arm: Arm, scale: FloatArray) -> Room:
     alone = (weights != 0.0).sum(axis=1) == 1
     for form in np.flatnonzero(alone):
         joint = int(np.argmax(weights[form] != 0.0))
-        ends = np.sort(np.array([least[form], most[form]]) / weights[form, joint])
+        # A ratio of 1e-300 puts the ends beyond all doubles, where they bound nothing.
+        with np.errstate(over="ignore"):
+            ends = np.sort(np.array([least[form], most[form]]) / weights[form, joint])
         lower[joint], upper[joint] = max(lower[joint], ends[0]), min(upper[joint], ends[1])
     sums = weights[~alone]
     # Lengths of 1, so that an excess weighs about as a gap of the tool.

@@ -119,6 +119,7 @@ class Drive:
         near: FloatArray | None = None,
         edge: float = TRAVEL_EDGE,
         still: NDArray[np.bool_] | None = None,
+        most: int = MOST_TURNS,
     ) -> Postures:
         """Return the joint values within travel that move the rows by ``motions`` (k, rows).
 
@@ -130,21 +131,23 @@ class Drive:
         near : (joints,), look nearest these joint values first, where not all can be looked at.
         edge : rad or m; a joint value that exceeds its limit by no more is put onto it (CLIPPED).
         still : (joints,), joints whose values are taken as they are, without whole turns.
+        most : postures of one motion that are looked at.
         """
-        return Postures(*postures_of(motions, *self.for_kernel(near, edge, still)))
+        return Postures(*postures_of(motions, *self.for_kernel(near, edge, still, most)))
 
     def for_kernel(
         self,
         near: FloatArray | None = None,
         edge: float = TRAVEL_EDGE,
         still: NDArray[np.bool_] | None = None,
+        most: int = MOST_TURNS,
     ) -> tuple[Any, ...]:
         """Return what ``postures_of`` takes beside motions; parameters as in ``postures``."""
         middle = self._middle if near is None else self._square @ near
         drive, passive, limits = self._of_kernel
         if still is not None:
             drive = (drive[0], drive[1], drive[2] & ~still)
-        return drive, passive, limits, (*self._ends, edge), self._row_box, middle, MOST_TURNS
+        return drive, passive, limits, (*self._ends, edge), self._row_box, middle, most
 
 
 def _alone(limit: Limit) -> int:

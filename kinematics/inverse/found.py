@@ -109,7 +109,7 @@ class Solver(Protocol):
 
     Attributes
     ----------
-    proof : "closed-form" or "search", what a no of it rests on.
+    proof : "closed-form", "elimination" or "search", what a no of it rests on.
     geometry : the structure of the arm it uses.
     """
 

@@ -69,6 +69,11 @@ class Search:
     wanted : solutions a target at most; 1 stops each target at its first.
     starts : most starts a target.
 
+    Attributes
+    ----------
+    rank : how many of the task's rows the arm can move at once, as a rule.
+    relaxed : whether these are too few to meet the task exactly.
+
     Examples
     --------
     >>> from kinematics.table import Convention, JointKind, Row, Table
@@ -94,13 +99,14 @@ class Search:
         self.arm, self.task, self._asked = arm, TASKS[task], task
         self.screws = screws_of(arm, tool_in_flange)
         self.lines = lines_of(self.screws, arm)
-        relaxed = self._rank() < {POSE: 6, POSITION: 3, DIRECTION: 5}[self.task]
+        self.rank = self._rank()
+        self.relaxed = self.rank < {POSE: 6, POSITION: 3, DIRECTION: 5}[self.task]
         self._effort = Effort(
             starts=starts,
             steps=SEARCH_STEPS,
             wanted=wanted,
-            accepted=SEARCH_ACCEPTS_FEW if relaxed else SEARCH_ACCEPTS,
-            share=SEARCH_TURN_SHARE if relaxed else 1.0,
+            accepted=SEARCH_ACCEPTS_FEW if self.relaxed else SEARCH_ACCEPTS,
+            share=SEARCH_TURN_SHARE if self.relaxed else 1.0,
         )
 
     @cached_property
@@ -118,7 +124,8 @@ class Search:
         return rank
 
     @cached_property
-    def _within(self) -> Starts:
+    def within(self) -> Starts:
+        """Where starts within travel are, and what they lead to."""
         return self._started(room_of(self.arm, self.scale))
 
     @cached_property
@@ -133,7 +140,7 @@ class Search:
         else ``search``, and the shortfall is the gap left, a share of the length or rad.
         """
         scaled = for_kernel(self.screws.scaled(targets))
-        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        met = search(self.lines, self.within, self.task, self._effort, scaled)
         stage = np.where(met.many > 0, 0, SEARCH)
         shortfall = np.where(met.many > 0, 0.0, np.sqrt(met.gap))
         nearest = np.where(met.many[:, None] > 0, 0.0, met.nearest)
@@ -165,13 +172,13 @@ class Search:
     def nearest(self, targets: FloatArray) -> FloatArray:
         """Return row motions (m, rows) within travel that bring the tool nearest to targets."""
         scaled = for_kernel(self.screws.scaled(targets))
-        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        met = search(self.lines, self.within, self.task, self._effort, scaled)
         return self._motions(met.nearest)
 
     def starts_used(self, targets: FloatArray) -> FloatArray:
         """Return how many starts within travel each target took, (m,)."""
         scaled = for_kernel(self.screws.scaled(targets))
-        met = search(self.lines, self._within, self.task, self._effort, scaled)
+        met = search(self.lines, self.within, self.task, self._effort, scaled)
         return met.used.astype(np.float64)
 
     @cached_property

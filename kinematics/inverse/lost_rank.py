@@ -2,13 +2,17 @@
 
 Such a solution may be a point of a continuum (two axes in line), or a place where two ways meet; a
 closed form returns some point of it and cannot tell. Most solutions are nowhere near: the smallest
-singular value is at least the determinant over what the five others can be together at most, and
-only where that is small are singular values worked out.
+singular value is at least the determinant over what the five others can be together at most; where
+that is small, at least one over the root of the sum of the inverse's squares; and only where that
+is small too are singular values worked out.
 
 Source: none; the determinant is the product of the singular values, their squares' sum that of all
-squared entries, and a product of given sum is largest where all are the same.
+squared entries, and a product of given sum is largest where all are the same. Of the inverse, whose
+singular values are one over them, the sum is at least the largest square.
 Not covered: what the lost motion is (families.py).
 """
+
+import math
 
 import numpy as np
 from numpy.typing import NDArray
@@ -43,7 +47,8 @@ class LostRank:
     def of(self, motions: FloatArray) -> NDArray[np.bool_] | None:
         """Return which motions (k, 6), rad and metres, have lost rank, (k,); None for none."""
         at_least, jacobians = np.empty(len(motions)), np.empty((len(motions), 6, 6))
-        least = bound_smallest(*self._of_kernel, motions * self._scale, jacobians, at_least)
+        moved = motions * self._scale
+        least = bound_smallest(*self._of_kernel, moved, self._within, jacobians, at_least)
         if least >= self._within:
             return None
         lost: NDArray[np.bool_] = at_least < self._within
@@ -58,16 +63,17 @@ def bound_smallest(
     prismatic: NDArray[np.bool_],
     tool_at_zero: FloatArray,
     motions: FloatArray,
+    within: float,
     jacobians: FloatArray,
     at_least: FloatArray,
 ) -> float:
     """Write Jacobians (k, 6, 6) of motions (k, 6), and what their singular values exceed, (k,).
 
-    Returns the least of it, 1 for no motions.
+    Returns the least of it, 1 for no motions. What is below ``within`` is looked at more closely.
     """
     least = 1.0
     axis_now, point_now, pose = np.empty((6, 3)), np.empty((6, 3)), np.empty((4, 4))
-    work = np.empty((6, 6))
+    work, both = np.empty((6, 6)), np.empty((6, 12))
     for b in range(len(motions)):
         land(axis, point, prismatic, tool_at_zero, motions[b], axis_now, point_now, pose)
         columns_of(axis_now, point_now, prismatic, pose, jacobians[b])
@@ -77,8 +83,47 @@ def bound_smallest(
                 work[i, j] = jacobians[b, i, j]
                 squares += work[i, j] * work[i, j]
         at_least[b] = _size_of_determinant(work) / (squares / 5.0) ** 2.5
+        if at_least[b] < within:
+            at_least[b] = max(at_least[b], _bound_by_inverse(jacobians[b], both))
         least = min(least, at_least[b])
     return least
+
+
+@compiled
+def _bound_by_inverse(jacobian: FloatArray, both: FloatArray) -> float:
+    """Return what the smallest singular value exceeds, by the inverse; ``both`` (6, 12) is work.
+
+    Examples
+    --------
+    >>> round(_bound_by_inverse(np.diag([1.0, 1, 1, 1, 1, 0.01]), np.empty((6, 12))), 6)
+    0.009998
+    """
+    for i in range(6):
+        for j in range(6):
+            both[i, j] = jacobian[i, j]
+            both[i, 6 + j] = 1.0 if i == j else 0.0
+    for column in range(6):
+        pivot = column
+        for row in range(column + 1, 6):
+            if abs(both[row, column]) > abs(both[pivot, column]):
+                pivot = row
+        largest = both[pivot, column]
+        if largest == 0.0:
+            return 0.0
+        for j in range(column, 12):
+            value = both[pivot, j]
+            both[pivot, j] = both[column, j]
+            both[column, j] = value / largest
+        for row in range(6):
+            share = both[row, column]
+            if row != column and share != 0.0:
+                for j in range(column, 12):
+                    both[row, j] -= share * both[column, j]
+    squares = 0.0
+    for i in range(6):
+        for j in range(6, 12):
+            squares += both[i, j] * both[i, j]
+    return 1.0 / math.sqrt(squares)
 
 
 @compiled

@@ -19,7 +19,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.compromises import compromises, each_once
+from kinematics.inverse.compromises import compromises, each_once, each_row
 from kinematics.inverse.found import Found, Geometry, Solver
 from kinematics.inverse.landing import columns_of, jacobians_at, land
 from kinematics.inverse.lost_rank import LostRank
@@ -32,6 +32,7 @@ from kinematics.tolerances import (
     GENERIC_RANK,
     LOST_RANK,
     NEARLY_ALIGNED,
+    NEARLY_REACHED,
     TARGET_ANGLE,
     TARGET_POSITION,
     WORTH_COMPROMISING,
@@ -146,14 +147,15 @@ class FiveJoints:
         missed = np.flatnonzero(aligned & (found.angle_error > TARGET_ANGLE))
         if not len(missed):
             return found
-        wanted, motions = targets[found.target[missed]], found.motions.copy()
-        motions[missed], lost = self._with_missing_at_zero(of_six.motions[missed], wanted)
-        found = self._measured(found, motions, targets)
-        off, is_open = found.angle_error, found.open.copy()
-        is_open[found.target[missed[lost | (off[missed] < WORTH_COMPROMISING * TARGET_ANGLE)]]] = (
-            True
-        )
-        is_open[found.target[off <= TARGET_ANGLE]] = False
+        of, motions = found.target[missed], found.motions.copy()
+        led, lost = self._with_missing_at_zero(of_six.motions[missed], targets[of])
+        off = errors_of(self.screws, led, targets, of, self.task)[1]
+        near = off < WORTH_COMPROMISING * TARGET_ANGLE
+        # What is led nowhere near stays where place and tool z are met, and the spin is off.
+        motions[missed[near]] = led[near]
+        found, is_open = self._measured(found, motions, targets), found.open.copy()
+        is_open[of[lost | near]] = True
+        is_open[found.target[found.angle_error <= TARGET_ANGLE]] = False
         return each_once(replace(found, open=is_open | of_six.open), self.screws.prismatic)
 
     def _measured(self, found: Found, motions: FloatArray, targets: FloatArray) -> Found:
@@ -179,14 +181,23 @@ class FiveJoints:
         tool_at_zero = for_kernel(self.whole.tool_at_zero)
         jacobians_at(*lines, tool_at_zero, for_kernel(motions / scale), jacobians)
         _, values, right = np.linalg.svd(jacobians)
-        still = right[:, -1]
+        still, smallest = right[:, -1], values[:, -1]
         share, turned = still[:, self.place], motions[:, self.place]
-        # Where the missing joint has no part in that motion, there is nothing to be gained.
-        far = np.where(np.abs(share) > GENERIC_RANK, -turned / share, 0.0)
-        there = np.delete(motions + far[:, None] * still * scale, self.place, axis=1)
-        tolerances = np.tile([TARGET_POSITION, TARGET_ANGLE], (len(motions), 1))
-        there = compromises(self.screws, np.eye(5), there, targets, tolerances, self.task)
-        return wrapped(there, self.screws.prismatic), values[:, -1] < LOST_RANK
+        # Where the missing joint has no part in that motion, there is nothing to be gained; nor
+        # where it turns further than what a target is off by makes it turn.
+        worth = np.abs(share) > GENERIC_RANK
+        worth &= np.abs(turned) * smallest < NEARLY_REACHED * TARGET_ANGLE
+        far = -turned[worth] / share[worth]
+        there = motions.copy()
+        there[worth] += far[:, None] * still[worth] * scale
+        there = np.delete(there, self.place, axis=1)
+        tolerances = np.tile([TARGET_POSITION, TARGET_ANGLE], (len(far), 1))
+        every_row = each_row(self.screws.rows)
+        led = compromises(
+            self.screws, every_row, there[worth], targets[worth], tolerances, self.task
+        )
+        there[worth] = wrapped(led, self.screws.prismatic)
+        return there, smallest < LOST_RANK
 
     def nearest(self, targets: FloatArray) -> FloatArray:
         """Return row motions (m, 5) near the target, the sixth joint let go."""

@@ -45,6 +45,7 @@ class RegionalArm:
     ----------
     screws : the arm. ways : how to ask. geometry : in words.
     normal : (3,), of the plane that the point stays in; zeros where it leaves every plane.
+    slack : share of the length by which motions may miss a place and still be told.
     """
 
     screws: Screws
@@ -52,6 +53,7 @@ class RegionalArm:
     geometry: RegionalGeometry
     normal: FloatArray
     proof: str = "closed-form"
+    slack: float = SEARCH_ACCEPTS
 
     def solve(self, targets: FloatArray) -> Found:
         """Return all motions for targets (m, 4, 4), of which the last column alone is read.
@@ -60,7 +62,7 @@ class RegionalArm:
         the length, with their errors.
         """
         places = self._places(targets)
-        motions, of, errors, flags = self._all(places, SEARCH_ACCEPTS)
+        motions, of, errors, flags = self._all(places, self.slack)
         left = np.flatnonzero(np.bincount(of, minlength=len(places)) == 0)
         if len(left):
             more, more_of, more_errors, _ = self._all(places[left], SEARCH_RELAXED)
@@ -115,6 +117,8 @@ class RegionalArm:
 
     def _nearest(self, places: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return motions (m, 3) and the miss they leave (m,), over the length."""
+        if self.screws.rows == 1:
+            return self._nearest_of_one(places[:, :3])
         ways = self.ways
         motions, misses = np.zeros((len(places), 3)), np.zeros(len(places))
         for index, place in enumerate(places):
@@ -122,6 +126,21 @@ class RegionalArm:
                 ways.slides, ways.axes, ways.points, False, ways.tip, place, motions[index]
             )
         return motions, misses
+
+    def _nearest_of_one(self, places: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Return the same of a single joint, however far its slide has to go."""
+        axis, point, tip = self.screws.axis[0], self.screws.point[0], self.ways.tip[:3]
+        motions = np.zeros((len(places), 3))
+        if self.screws.prismatic[0]:
+            motions[:, 0] = (places - tip) @ axis
+            at = tip + motions[:, :1] * axis
+        else:
+            own, asked = tip - point, places - point
+            across = np.cross(axis, own)
+            motions[:, 0] = np.arctan2(asked @ across, -(asked @ np.cross(axis, across)))
+            sine, less = np.sin(motions[:, :1]), 1.0 - np.cos(motions[:, :1])
+            at = tip + sine * across + less * np.cross(axis, across)
+        return motions, np.linalg.norm(places - at, axis=1)
 
     def _of_a_no(
         self, places: FloatArray, none: NDArray[np.bool_]
@@ -157,7 +176,15 @@ def regional_arm_of(arm: Arm, tool_in_flange: FloatArray) -> RegionalArm | None:
            [  0.,  90.]])
     """
     screws = screws_of(arm, tool_in_flange)
-    if not 1 <= screws.rows <= 3 or arm.joint_count < screws.rows:
+    return None if arm.joint_count < screws.rows else regional_of(screws)
+
+
+def regional_of(screws: Screws) -> RegionalArm | None:
+    """Return the solver for the place of the tool's point of rows that move on their own.
+
+    None where there are not one to three, or not each moves the point its own way.
+    """
+    if not 1 <= screws.rows <= 3:
         return None
     slides, axes, points, tip = _with_idle_joints(screws)
     columns = _columns(slides, axes, points, tip)

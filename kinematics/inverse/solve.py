@@ -1,12 +1,12 @@
 """Which method answers for which arm and task, and what its no is worth.
 
-Closed forms first, for they find every solution and their no is a proof: up to three joints for a
-place, axes of one direction, three neighbouring axes that meet or run parallel. Last joints that
-leave the tool's point where it is are left out of a place, and an arm of five joints is given a
-sixth that it does not have (missing_joint.py). Whatever remains is searched for, and so is what a
-closed form leaves open.
+Closed forms and eliminations first, for they find every solution and their no is a proof: up to
+three joints for a place, axes of one direction, six joints (six_joints.py). Last joints that leave
+the tool's point where it is are left out of a place; fewer than six joints meet what they can
+(few_joints.py), of seven one is held still (redundant.py). Whatever remains is searched for, and so
+is what those leave open.
 
-Source: none; an order. Not covered: closed forms for six joints without such axes, and for more.
+Source: none; an order. Not covered: closed forms for more than seven joints.
 """
 
 from dataclasses import dataclass, replace
@@ -16,19 +16,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.arm import Arm
+from kinematics.inverse.few_joints import MOST as FEW
+from kinematics.inverse.few_joints import few_joints_of
 from kinematics.inverse.found import Found, Solver
 from kinematics.inverse.four_axes import FourAxes, four_axes_of
 from kinematics.inverse.geometry import Regime
+from kinematics.inverse.held_values import refuse_unbounded_slides
 from kinematics.inverse.iterative import Search
+from kinematics.inverse.locked import SIX
 from kinematics.inverse.measured import DIRECTION, POSE, POSITION, Measured
-from kinematics.inverse.missing_joint import FiveJoints, with_missing_joint
-from kinematics.inverse.regional_arm import regional_arm_of
+from kinematics.inverse.redundant import Redundant, redundant_of
 from kinematics.inverse.screws import Screws, screws_of
 from kinematics.inverse.several import Several
-from kinematics.inverse.special_triple import special_triple_of
+from kinematics.inverse.six_joints import six_joints_of
 from kinematics.inverse.tolerances import EXACT_AXES
+from kinematics.inverse.upright_spins import upright_spins_of
 from kinematics.table import FloatArray, Table
 from kinematics.transforms import inverse
+from kinematics.travel_limits import limits_of
 
 
 @dataclass(frozen=True, eq=False)
@@ -51,8 +56,8 @@ class Method:
 
     @cached_property
     def closed(self) -> bool:
-        """Whether solutions come from a closed form."""
-        return self.solver.proof == "closed-form"
+        """Whether solutions come from a closed form or an elimination, which find all of them."""
+        return self.solver.proof != "search"
 
     @cached_property
     def complete(self) -> bool:
@@ -72,11 +77,14 @@ class Method:
         """Looks once more for what a closed form leaves open."""
         return Search(self.arm, self.tool_in_flange, self.task)
 
-    def solve(self, targets: FloatArray, rest: FloatArray) -> Found:
+    def solve(self, targets: FloatArray, rest: FloatArray, near: FloatArray | None = None) -> Found:
         """Return what is found for targets (m, 4, 4), the tool in base, metres.
 
-        ``rest`` (joints,): values for joints that do not matter.
+        ``rest`` (joints,): values for joints that do not matter; ``near`` (joints,): of joints to
+        spare those postures are wanted that are nearest to it.
         """
+        if near is not None and isinstance(self.solver, Redundant):
+            return self.solver.solve(targets, near)
         found = self.solver.solve(targets)
         if not self.idle.any():
             return found
@@ -104,6 +112,10 @@ class Method:
 def method_of(arm: Arm, tool_in_flange: FloatArray, task: str = POSE) -> Method:
     """Return how targets of a task are answered; some milliseconds, to be kept by whoever asks.
 
+    Raises
+    ------
+    KinematicsError : an arm of more than six joints has a slide without travel.
+
     Examples
     --------
     >>> from kinematics.table import Convention, JointKind, Row
@@ -112,10 +124,18 @@ def method_of(arm: Arm, tool_in_flange: FloatArray, task: str = POSE) -> Method:
     >>> method_of(arm, np.eye(4)).say
     'axes 1, 2 and 4 are parallel and row 3 slides along them: closed form across the axes'
     """
+    if arm.joint_count > SIX:
+        refuse_unbounded_slides(arm)
     none_idle = np.zeros(arm.joint_count, np.bool_)
-    solver = _closed_form(arm, tool_in_flange, task)
+    solver: Solver | None = None
+    if task == DIRECTION:
+        solver = upright_spins_of(arm, tool_in_flange, screws_of(arm, tool_in_flange))
+    solver = solver or _closed_form(arm, tool_in_flange, task)
     if isinstance(solver, FourAxes) and task == POSITION:
-        return Method(arm, tool_in_flange, task, solver, _last_turn(arm))
+        idle = _last_turn(arm)
+        if idle.any():
+            return Method(arm, tool_in_flange, task, solver, idle)
+        solver = None
     if solver is None and task == DIRECTION and _turns_tool_z(arm, screws_of(arm, tool_in_flange)):
         posed = _closed_form(arm, tool_in_flange, POSE)
         if posed is not None:
@@ -128,6 +148,8 @@ def method_of(arm: Arm, tool_in_flange: FloatArray, task: str = POSE) -> Method:
             if solver is not None:
                 idle = np.array([row >= rows for row in arm.drive_map.driven])
                 return Method(arm, tool_in_flange, task, solver, idle)
+    if solver is None and task == POSE:
+        solver = redundant_of(arm, tool_in_flange)
     if solver is None:
         solver = Several(arm, tool_in_flange, task)
     return Method(arm, tool_in_flange, task, solver, none_idle)
@@ -142,23 +164,31 @@ def _closed_form(arm: Arm, tool_in_flange: FloatArray, task: str) -> Solver | No
             return of_one_direction
     if joints < screws.rows:
         return None
-    if joints <= 3:
-        regional = regional_arm_of(arm, tool_in_flange)
-        return None if regional is None else Measured(regional, screws, task)
-    if joints == 5 and task != POSITION:
-        extended = with_missing_joint(screws)
-        inner = None if extended is None else special_triple_of(extended[0])
-        if extended is None or inner is None or (task == DIRECTION and extended[1] != 5):
-            return None
-        return FiveJoints(inner, extended[0], extended[1], screws, task)
-    return special_triple_of(screws) if joints == 6 and task == POSE else None
+    if joints <= FEW:
+        return few_joints_of(arm, screws, tool_in_flange, task)
+    return six_joints_of(screws) if joints == SIX and task == POSE else None
 
 
 def _last_turn(arm: Arm) -> NDArray[np.bool_]:
-    """Return which joint turns last, (joints,), if it moves its own row alone."""
+    """Return which joint turns last, (joints,), if neither rows nor limits tie it to others."""
     turning = [row for row in arm.drive_map.driven if arm.table.rows[row].is_revolute]
-    alone = np.count_nonzero(arm.drive_map.matrix[turning[-1]]) == 1
+    alone = bool(turning) and _alone(arm, turning[-1])
     return np.array([alone and row == turning[-1] for row in arm.drive_map.driven])
+
+
+def _alone(arm: Arm, row: int) -> bool:
+    """Tell whether a row and its joint have nothing to do with others: by couplings, or by bounds.
+
+    A joint that does not matter is put anywhere within its travel; it must not be what brings
+    another row, or a sum of joint values, within bounds.
+    """
+    if row not in arm.drive_map.driven:
+        return False
+    joint, matrix = arm.drive_map.driven.index(row), arm.drive_map.matrix
+    bounds = limits_of(arm)
+    of_it = bounds.weights[~bounds.working & (bounds.weights[:, joint] != 0.0)]
+    lonely = np.count_nonzero(matrix[row]) == 1 and np.count_nonzero(matrix[:, joint]) == 1
+    return bool(lonely and np.count_nonzero(of_it) == len(of_it))
 
 
 def _turns_tool_z(arm: Arm, screws: Screws) -> bool:
@@ -173,13 +203,11 @@ def _turns_tool_z(arm: Arm, screws: Screws) -> bool:
 
 def _rows_that_matter(arm: Arm, screws: Screws) -> int:
     """Return how many rows carry the tool's point: what turns about it after them does not."""
-    rows, matrix = screws.rows, arm.drive_map.matrix
+    rows = screws.rows
     while rows and not screws.prismatic[rows - 1]:
         row = rows - 1
         away = np.cross(screws.tool_at_zero[:3, 3] - screws.point[row], screws.axis[row])
-        alone = np.count_nonzero(matrix[row]) == 1 and row in arm.drive_map.driven
-        alone = alone and np.count_nonzero(matrix[:, arm.drive_map.driven.index(row)]) == 1
-        if not alone or np.linalg.norm(away) > EXACT_AXES:
+        if not _alone(arm, row) or np.linalg.norm(away) > EXACT_AXES:
             break
         rows -= 1
     return rows

@@ -66,10 +66,13 @@ def nearest_starts(poses: FloatArray, targets: FloatArray, task: int, few: int) 
     of_starts = (poses[:, :3, first:] * weight).reshape(len(poses), 3 * (4 - first))
     of_targets = (targets[:, :3, first:] * weight).reshape(len(targets), 3 * (4 - first))
     picked = np.empty((len(targets), few), np.intp)
-    own = (of_starts * of_starts).sum(axis=1)
+    # Of an arm of next to no length a slide may lead 1e160 lengths away: any start is as good.
+    with np.errstate(over="ignore", invalid="ignore"):
+        own = (of_starts * of_starts).sum(axis=1)
     for begin in range(0, len(targets), _PIECE):
         # Of |s - t|^2 = |s|^2 - 2 s t + |t|^2 the last is the same for all starts.
-        squares = own - 2.0 * (of_targets[begin : begin + _PIECE] @ of_starts.T)
+        with np.errstate(over="ignore", invalid="ignore"):
+            squares = own - 2.0 * (of_targets[begin : begin + _PIECE] @ of_starts.T)
         nearest = np.argpartition(squares, min(few, len(poses) - 1), axis=1)[:, :few]
         order = np.argsort(np.take_along_axis(squares, nearest, axis=1), axis=1)
         picked[begin : begin + _PIECE] = np.take_along_axis(nearest, order, axis=1)

@@ -172,3 +172,106 @@ had a solution and found none the shortfall was up to 8, once 67."""
 BESIDE_FOLD = 10.0
 """Smallest singular value, over the root of the slack, up to which a solution may have a twin that
 the exact arm nearby has not."""
+
+# --- two slides ----------------------------------------------------------------------------------
+NEAR_CIRCLE = 0.1
+"""How far from real a turn may be and still be tried: what is no root does not land, and a double
+root that rounding has split lies some 1e-7, three roots in one some 1e-5, off."""
+
+DOUBTFUL_ROOT = 1e-3
+"""The same, within which one that does not land leaves a no open."""
+
+NEARLY_CLOSES = 1e-2
+"""Squared sine by which a triangle of directions may fail to close and still be tried: beside a
+root that is off by as much as one that is doubtful, it closes to much less."""
+
+FURTHEST_SLIDE, SLIDE_AT_HAND = 1e4, 100.0
+"""Lengths of the arm that a slide may have to go, since slides that are nearly parallel lead
+anywhere: beyond the first nothing is looked for, and within the second a root that is lost leaves a
+no open."""
+
+HARDLY_TURNS = 3e-3
+"""Squared sine between directions below which roots beside it are doubtful however far from real:
+six in a heap were seen to lie some 1e-2 off."""
+
+IN_LINE = 1e-10
+"""Squared sine between the axes that a target may turn into line, below which half of the digits
+are lost and a no is not proved."""
+
+VANISHES = 1e-8
+"""Share of its usual size below which an equation may be no equation at all."""
+
+# --- branch and bound ------------------------------------------------------------------------
+BOX_BUDGET = 1_000_000
+"""Boxes that are looked at for one target: about a second."""
+
+BOX_BUDGET_OF_MANY = 250_000
+"""The same for all targets of a question with more than one that is left: a quarter of a second."""
+
+BOXES_TO_CONFIRM = 50_000
+"""The same for a target that a complete method refuses to few joints: what it may have lost to
+typed digits is met within some hundred, or with five joints some ten thousand."""
+
+BOX_ROUNDING = 1e-12
+"""Share of the length, or radians, that a box must miss its target by beyond what is worked out: a
+thousand times what rounding leaves of a chain."""
+
+WIDEST_TURN = 1.5
+"""Radians that the tool may turn in a box for its turn to be looked at by its Jacobian: a little
+less than half pi, up to which balls of rotations are convex."""
+
+RING_COARSER = 10.0
+"""Times the tolerance of a place by which that of where a ring is cut may be wider, as a turn moves
+what is far from the tool: what is exact stays so, what is typed does not."""
+
+LARGEST_LEAF, SMALLEST_LEAF = 0.03, 1e-8
+"""Radians, or shares of the length, that a tool moves in a box from whose middle it is led downhill
+to the target: as soon as that mostly arrives, a tenth the next time, and no more where doubles no
+longer tell boxes apart."""
+
+# --- elimination ---------------------------------------------------------------------------------
+ELIMINATION_ANGLE = 0.1
+"""Radians that an eigenvalue's angle may be off the real axis and still be tried: a double root
+splits by the root of rounding over what was divided by; what was no root is polished away."""
+
+ELIMINATION_STILL = 1e-9
+"""Share of the third joint in an equation that counts as without it: above rounding, below what
+polishing cannot mend."""
+
+# --- joints to spare ---------------------------------------------------------------------------
+HELD_STEP = 0.034906585039886591
+"""Radians (2 deg) between the values that a joint to spare is held at: elbows and wrists pass a
+stretch of travel narrower than that within a stretch the search finds, or nobody can use."""
+
+HELD_SHARES = 120
+"""Steps that the travel of a slide is divided into: 50 mm of a track of 6 m."""
+
+SAME_PATH = 0.5
+"""Radians, or shares of the length, by which a joint may change between neighbouring held values
+and still be on one path: fourteen times as fast as the joint held, beside a singular posture."""
+
+EDGES_MEET = 1e-6
+"""Radians, or metres, between edges of stretches that may be one: halving leaves a thousandth."""
+
+POSTURES_MEET = 1e-2
+"""Radians, or shares of the length, between postures at such edges that are one: ways part by the
+root of the distance from where they merge, some 1e-4 here, times what an arm bends it by."""
+
+# --- cones -------------------------------------------------------------------------------------
+WITHIN_CONE = 0.999
+"""Share of a cone that tool z is led to: what ends at the edge of it is within it for certain."""
+
+ELIMINATION_SOUND = 1e-7
+"""What was divided by, over the largest, below which an order of the joints, or a target, is not
+relied on: eigenvalues keep half of their digits down to it. Dependent equations leave 1e-14."""
+
+ELIMINATION_REAL = 1e-7
+"""Radians off the real axis up to which an eigenvalue is counted as a real one. A double root
+splits by more, and is counted by asking a second order."""
+
+ELIMINATION_UNSURE = 1e-3
+"""Radians off the real axis up to which an eigenvalue that led to no solution leaves a no open."""
+
+BESIDE_A_FOLD = 1e-2
+"""Smallest singular value of a solution up to which the other one of its pair is looked for where
+solutions are odd in number."""

@@ -3,91 +3,48 @@
 Solutions become ranked postures; a target with one within travel is reachable, and they are its
 witnesses. A no is proved where the links are too short for anybody, or where a closed form found
 nothing and met no free joint. Where it met one, families are followed and a search looks once
-more; what is then still missing is "not found".
+more; what is then still missing is cut into boxes (last_proof.py), or "not found".
 
-Source: none. Not covered: elimination and branch and bound, which prove more; targets that leave
-a turn open (spins.py).
+Source: none. Not covered: targets that leave a turn open (spins.py).
 """
 
 from dataclasses import replace
 from functools import cached_property
-from typing import NamedTuple, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.inverse.drive import drive_of
 from kinematics.inverse.found import Found, none_found
+from kinematics.inverse.four_axes import FourAxes
 from kinematics.inverse.lost_rank import LostRank
 from kinematics.inverse.measured import POSE, POSITION
 from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import method_of
 from kinematics.reach.at_limits import with_ends_of_travel
 from kinematics.reach.bounds import FREE, Bounds
+from kinematics.reach.durations import seconds_of
 from kinematics.reach.family_members import FamiliesOf, with_witnesses
+from kinematics.reach.last_proof import LastProof, Proofs
+from kinematics.reach.listing import how_many, listed
 from kinematics.reach.near_enough import NearEnough
 from kinematics.reach.one_target import one_target_of
 from kinematics.reach.reasons import Told
 from kinematics.reach.targets import (
     BOUND,
-    CLOSED_FORM,
+    BRANCH_AND_BOUND,
     NOT_FOUND,
     OUTSIDE_TRAVEL,
+    PROOFS,
     SEARCH,
     UNREACHABLE,
     Checks,
-    TakesLonger,
     Targets,
 )
 from kinematics.reach.verdicts import Ranked, Ranking
+from kinematics.reach.ways import Asked, Basis
 from kinematics.table import FloatArray
 from kinematics.tolerances import MOST_LISTED
-
-
-class Asked(NamedTuple):
-    """What is asked beside the targets: the best posture alone, and near which joint values.
-
-    ``at_once`` asks to give up, by TakesLonger, before anything that takes milliseconds.
-    """
-
-    best_only: bool = False
-    near: FloatArray | None = None
-    at_once: bool = False
-
-    def go_on(self) -> None:
-        """Give up if what comes next is not done at once.
-
-        Raises
-        ------
-        TakesLonger
-        """
-        if self.at_once:
-            raise TakesLonger
-
-
-class Basis(NamedTuple):
-    """What answers rest on: an index into PROOFS, what a no is worth at best, and a sentence."""
-
-    proof: int
-    say: str
-
-
-class Way(Protocol):
-    """Answers targets of one freedom."""
-
-    @property
-    def basis(self) -> Basis: ...
-
-    @property
-    def seconds(self) -> float:
-        """About how long a target takes."""
-
-    def answer(self, targets: Targets, asked: Asked) -> Checks: ...
-
-
-_CLOSED_SECONDS, _SHORT_SEARCH_SECONDS, _SEARCH_SECONDS = 3e-5, 2e-3, 6e-3
-"""About what a target takes by a closed form, and by a search where one target in ten is not found:
-those that are take 0.3 ms, the others 15 ms and more."""
 
 
 class Answerer:
@@ -102,10 +59,12 @@ class Answerer:
     def __init__(self, ranking: Ranking, task: str) -> None:
         self.ranking = ranking
         self.method = method_of(ranking.arm, ranking.tool_in_flange, task)
+        self._proof = PROOFS.index(self.method.solver.proof)
         self._near_enough = NearEnough(ranking, self.method)
         six = ranking.screws.rows == 6 == ranking.arm.joint_count and task != POSITION
         self.one_target = None if task == POSITION else one_target_of(ranking, self.method.solver)
         self._lost_rank = LostRank(ranking.screws) if six else None
+        self._last_proof = LastProof(ranking, self.method)
 
     @cached_property
     def bounds(self) -> Bounds:
@@ -115,19 +74,17 @@ class Answerer:
     @property
     def basis(self) -> Basis:
         """What answers rest on."""
-        return Basis(CLOSED_FORM if self.method.complete else SEARCH, self.method.say)
+        return Basis(self._proof if self.method.complete else SEARCH, self.method.say)
 
     @property
     def seconds(self) -> float:
         """About how long a target takes."""
-        if self._near_enough.searches:
-            return _SHORT_SEARCH_SECONDS + _CLOSED_SECONDS
-        return _CLOSED_SECONDS if self.method.complete else _SEARCH_SECONDS
+        return seconds_of(self._proof, self.method.complete, self._near_enough.searches)
 
     def answer(self, targets: Targets, asked: Asked) -> Checks:
         """Return verdicts and solutions of targets (m)."""
         rest = self._rest(asked.near)
-        everything = self._solved(targets, rest)
+        everything = self._solved(targets, rest, asked.near)
         found = self._near_enough.of(everything, targets, rest)
         everything = replace(everything, open=found.open)
         families: FamiliesOf = {}
@@ -159,7 +116,37 @@ class Answerer:
                 accepted = picked(more, self.ranking.accepted(more, targets.only(left)))
                 found, everything = joined(found, accepted, left), joined(everything, more, left)
                 ranked = self._ranked(found, targets, asked)
-        return self._told(targets, everything, found, ranked, rest, families)
+        proofs = self._by_boxes(targets, everything, ranked, is_open, asked)
+        if proofs is not None and len(proofs.met.target):
+            found, everything = proofs.added_to(found), proofs.added_to(everything)
+            ranked = self._ranked(found, targets, asked)
+        return self._told(targets, everything, found, ranked, rest, families, proofs)
+
+    def _by_boxes(
+        self,
+        targets: Targets,
+        known: Found,
+        ranked: Ranked,
+        is_open: NDArray[np.bool_],
+        asked: Asked,
+    ) -> Proofs | None:
+        """Cut travel into boxes for targets of which nothing within travel is known, nor a proof.
+
+        Few joints are held to a tolerance in place and turn, which a closed form knows nothing of:
+        they are asked about whatever it says.
+        """
+        if ranked.all_inside:
+            return None
+        tolerated = not self.ranking.exact and self.method.task != POSITION
+        tolerated = tolerated and not isinstance(self.method.solver, FourAxes)
+        refused = ~is_open
+        refused[ranked.target[ranked.seen < 0]] = False  # not every whole turn was looked at
+        doubted = ~ranked.inside & (tolerated | ~refused)
+        left = np.flatnonzero(doubted & (self._held(targets) == FREE))
+        if not len(left):
+            return None
+        asked.go_on()
+        return self._last_proof.of(targets, left, known, refused)
 
     def scores(self, targets: Targets, asked: Asked) -> FloatArray:
         """Return how good the best posture of each target is, (m,).
@@ -168,7 +155,7 @@ class Answerer:
         asked for, 0 to 1. Negative beyond travel; minus infinity where there is no posture.
         """
         rest = self._rest(asked.near)
-        found = self._near_enough.of(self._solved(targets, rest), targets, rest)
+        found = self._near_enough.of(self._solved(targets, rest, asked.near), targets, rest)
         ranked = self._ranked(found, targets, asked._replace(best_only=True))
         scores = np.full(len(targets), -np.inf)
         some = ranked.offsets[1:] > ranked.offsets[:-1]
@@ -180,14 +167,14 @@ class Answerer:
             scores[some] = np.where(inside, 1.0 / (1.0 + far), scores[some])
         return scores
 
-    def _solved(self, targets: Targets, rest: FloatArray) -> Found:
+    def _solved(self, targets: Targets, rest: FloatArray, near: FloatArray | None) -> Found:
         """Return all solutions; a search is spared targets that no links reach."""
         poses = targets.tool_in_base
         if self.method.closed:
             return self.method.solve(poses, rest)
         free = np.flatnonzero(self._held(targets) == FREE)
         none = none_found(len(targets), self.ranking.screws.rows)
-        return joined(none, self.method.solve(poses[free], rest), free)
+        return joined(none, self.method.solve(poses[free], rest, near), free)
 
     def _held(self, targets: Targets) -> NDArray[np.int64]:
         """Hold targets against the bounds, with the tolerance that few joints are given, (m,)."""
@@ -231,17 +218,18 @@ class Answerer:
         ranked: Ranked,
         rest: FloatArray,
         families: FamiliesOf,
+        proofs: Proofs | None,
     ) -> Checks:
         some = ranked.offsets[1:] > ranked.offsets[:-1]
-        verdict, proof = self._verdicts(targets, everything, ranked, some)
+        verdict, proof = self._verdicts(targets, everything, ranked, some, proofs)
         told = Told(
             self.ranking, self.method, self.bounds, targets, everything, ranked, verdict, proof,
-            rest, families,
+            rest, families, proofs,
         )  # fmt: skip
         offsets = ranked.offsets
         kept: slice | NDArray[np.bool_] = slice(None)
         if not ranked.all_inside:
-            offsets, kept = _listed(ranked.offsets, some & (verdict <= OUTSIDE_TRAVEL))
+            offsets, kept = listed(ranked.offsets, some & (verdict <= OUTSIDE_TRAVEL))
         solution = ranked.solution[kept]
         branch = self.ranking.branches.of(found.motions, found.target)
         position_error, angle_error = found.position_error[solution], found.angle_error[solution]
@@ -251,7 +239,7 @@ class Answerer:
             verdict,
             proof,
             offsets,
-            _how_many(ranked, verdict),
+            how_many(ranked, verdict),
             ranked.joint_values[kept],
             ranked.margin[kept],
             ranked.outside_working[kept],
@@ -263,7 +251,12 @@ class Answerer:
         )
 
     def _verdicts(
-        self, targets: Targets, found: Found, ranked: Ranked, some: NDArray[np.bool_]
+        self,
+        targets: Targets,
+        found: Found,
+        ranked: Ranked,
+        some: NDArray[np.bool_],
+        proofs: Proofs | None,
     ) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
         """Return verdict and proof of each target, (m,)."""
         count = len(some)
@@ -275,31 +268,14 @@ class Answerer:
         # Where not every whole turn was looked at, one that was not may be within bounds of sums.
         closed[ranked.target[ranked.seen < 0]] = False
         verdict[missing] = np.where(some, OUTSIDE_TRAVEL, UNREACHABLE)[missing]
-        proof[missing] = CLOSED_FORM
+        proof[missing] = self._proof
         verdict[missing & ~closed], proof[missing & ~closed] = NOT_FOUND, SEARCH
+        if proofs is not None:
+            by_boxes = proofs.proved & (verdict == NOT_FOUND)
+            verdict[by_boxes] = np.where(some, OUTSIDE_TRAVEL, UNREACHABLE)[by_boxes]
+            proof[by_boxes] = BRANCH_AND_BOUND
         none = np.flatnonzero(missing & ~some)
         if len(none):
             bound = none[self._held(targets.only(none)) != FREE]
             verdict[bound], proof[bound] = UNREACHABLE, BOUND
         return verdict, proof
-
-
-def _how_many(ranked: Ranked, verdict: NDArray[np.int64]) -> NDArray[np.int64]:
-    """Return how many postures get to each target, listed or not."""
-    if ranked.all_listed:
-        return ranked.offsets[1:] - ranked.offsets[:-1]
-    seen = np.where(ranked.seen < 0, -ranked.seen - 1.0, ranked.seen)
-    inside = np.bincount(ranked.target, seen, len(verdict)).astype(np.int64)
-    if ranked.all_inside:
-        return inside
-    beyond = np.where(verdict == OUTSIDE_TRAVEL, np.diff(ranked.offsets), 0)
-    return np.where(ranked.inside, inside, beyond)
-
-
-def _listed(
-    offsets: NDArray[np.intp], told: NDArray[np.bool_]
-) -> tuple[NDArray[np.intp], NDArray[np.bool_]]:
-    """Return offsets and postures of the targets whose postures are told."""
-    counts = np.diff(offsets)
-    fewer = np.concatenate([[0], np.cumsum(np.where(told, counts, 0))]).astype(np.intp)
-    return fewer, np.repeat(told, counts)

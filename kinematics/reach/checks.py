@@ -20,10 +20,10 @@ from kinematics.errors import KinematicsError
 from kinematics.findings import Finding
 from kinematics.inverse.measured import DIRECTION, POSE, POSITION
 from kinematics.kernels.compiler import for_kernel
-from kinematics.reach.answers import Answerer, Asked, Basis, Way
+from kinematics.reach.answers import Answerer
 from kinematics.reach.cones import cone_of
 from kinematics.reach.one_target import OneTarget
-from kinematics.reach.spins import SpinScan
+from kinematics.reach.spins import spin_of
 from kinematics.reach.targets import (
     CONE,
     FREEDOMS,
@@ -36,6 +36,7 @@ from kinematics.reach.targets import (
     Targets,
 )
 from kinematics.reach.verdicts import Ranking
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 
 
@@ -135,10 +136,8 @@ class Reacher:
     @cached_property
     def _way_of_spin(self) -> Way:
         """A closed form that leaves the turn free, a ring of poses, or a search."""
-        free = self._answerer(DIRECTION)
-        if free.method.complete or not self._answerer(POSE).method.complete:
-            return free
-        return SpinScan(self._answerer(POSE), free)
+        free, poses = self._answerer(DIRECTION), self._answerer(POSE)
+        return spin_of(poses, free)
 
     @cached_property
     def _way_of_cone(self) -> Way:

@@ -1,24 +1,29 @@
 """Targets that leave tool z within a cone, and the turn about it open.
 
-Directions are spread evenly over the cone, the asked one first, as a golden spiral on the cap; each
-is a target of its own. With six joints the turns about each are tried too, coarsely, for a cone
-that is open at all is rarely open by a little; with five the turn is free in closed form. What
-carries the tool's point alone gets there in some postures only, and those that point within the
-cone are picked. A no is "not found", unless every posture was held against the cone or the links
-are too short.
+Where there is a closed form, directions are spread evenly over the cone, the asked one first, as a
+golden spiral on the cap, and each is a target of its own, with a few turns about it. What that
+leaves, and arms without a closed form for poses, are searched for: each start is led to the
+direction in the cone that is nearest to where it points (inverse/cone_search.py), and all postures
+at the pose met are the answer. What carries the tool's point alone gets there in some
+postures only, and those that point within the cone are picked. A no is "not found", unless every
+posture was held against the cone or the links are too short.
 
 Source: the golden spiral: Gonzalez, Measurement of areas on a sphere using Fibonacci and
-latitude-longitude lattices, 2010, recalled.
+latitude-longitude lattices, 2010, recalled; the search has its own.
 Not covered: the shape of what is open within the cone.
 """
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.findings import FINE, Finding
-from kinematics.reach.answers import Answerer, Asked, Basis, Way
+from kinematics.inverse.cone_search import ConeSearch
+from kinematics.inverse.iterative import Search
+from kinematics.inverse.measured import POSITION
+from kinematics.reach.answers import Answerer
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.spins import spun
 from kinematics.reach.targets import (
@@ -33,12 +38,20 @@ from kinematics.reach.targets import (
     Targets,
     Words,
 )
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 
 DIRECTIONS, TURNS = 60, 12
 """Directions within a cone, and turns about each of them, that are tried."""
 
 _TOGETHER = 8
+
+_TRIED_SECONDS, _SEARCHED_SECONDS = 1.5e-5, 6e-3
+"""About what a pose that is tried takes, and a search where one target in ten is not found."""
+
+
+_NONE = np.empty(0, np.intp)
+_CLOSED = "closed-form"
 
 
 def directions_in(cone: float, count: int = DIRECTIONS) -> FloatArray:
@@ -69,37 +82,56 @@ def directions_in(cone: float, count: int = DIRECTIONS) -> FloatArray:
 
 
 class ConeScan:
-    """Answers targets with tool z in a cone by trying directions, and turns about each.
+    """Answers targets with tool z in a cone by trying directions, and by a search for the others.
 
     Parameters
     ----------
-    ways : answers targets of one direction; of one pose, if ``turns`` is more than 1.
+    ways : answers targets of one direction, or of one pose.
+    scans : whether directions, and turns about them, are tried before the search.
     """
 
-    def __init__(self, ways: Answerer, turns: int) -> None:
-        self._ways, self._turns = ways, turns
+    def __init__(self, ways: Answerer, scans: bool) -> None:
+        self._ways, self._scans = ways, scans
         self._bounds = Bounds(ways.ranking.screws)
 
     @property
     def basis(self) -> Basis:
         """What answers rest on."""
-        about = f" and {self._turns} turns about each" if self._turns > 1 else ""
-        say = f"{DIRECTIONS} directions{about}, each: {self._ways.method.say}"
-        return Basis(SEARCH, say)
+        tried = (
+            f"{DIRECTIONS} directions and {TURNS} turns about each, then " if self._scans else ""
+        )
+        say = f"{tried}a search led to the nearest direction in the cone; at the best of them: "
+        return Basis(SEARCH, say + self._ways.method.say)
 
     @property
     def seconds(self) -> float:
         """About how long a target takes."""
-        return DIRECTIONS * self._turns * self._ways.seconds
+        tried = DIRECTIONS * TURNS * _TRIED_SECONDS if self._scans else 0.0
+        return tried + _SEARCHED_SECONDS + self._ways.seconds
+
+    @cached_property
+    def _search(self) -> ConeSearch:
+        ranking = self._ways.ranking
+        return ConeSearch(ranking.arm, ranking.tool_in_flange)
 
     def answer(self, targets: Targets, asked: Asked) -> Checks:
         """Return verdicts and solutions of targets (m): all postures at the best pose tried."""
         held = self._bounds.hold(targets.tool_in_base).outcome != FREE
         poses, left = targets.tool_in_base.copy(), targets.cone.copy()
-        scanned = np.flatnonzero(~held)
+        missing = ~held
+        scanned = np.flatnonzero(missing) if self._scans else _NONE
         for begin in range(0, len(scanned), _TOGETHER):
             some = scanned[begin : begin + _TOGETHER]
-            poses[some], left[some] = self._best(targets.only(some), asked)
+            poses[some], left[some], score = self._best(targets.only(some), asked)
+            missing[some] = score < 0.0
+        searched = np.flatnonzero(missing)
+        if len(searched):
+            asked.go_on()
+            met = self._search.solve(targets.tool_in_base[searched], targets.cone[searched])
+            found = searched[met.met]
+            poses[found] = met.tool_in_base[met.met]
+            off = _angle_from_z(_turns_between(targets.tool_in_base[found], poses[found]))
+            left[found] = np.maximum(targets.cone[found] - off, 0.0)
         wide = targets.angle_tolerance + left
         checks = self._ways.answer(
             replace(targets, tool_in_base=poses, angle_tolerance=wide), asked
@@ -109,18 +141,19 @@ class ConeScan:
         no = verdict != REACHABLE
         verdict[no], proof[no] = NOT_FOUND, SEARCH
         verdict[no & held], proof[no & held] = UNREACHABLE, BOUND
-        words = _ConeWords(checks.words, verdict, held, targets, poses)
+        words = _ConeWords(checks.words, verdict, held, targets, poses, self._scans)
         return checks.with_verdicts(verdict, proof, words)
 
-    def _best(self, targets: Targets, asked: Asked) -> tuple[FloatArray, FloatArray]:
-        """Return the best of the poses tried for each target (m, 4, 4), and what is left (m,).
+    def _best(self, targets: Targets, asked: Asked) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Return the best of the poses tried for each target (m, 4, 4), and its score (m,).
 
-        An arm of few joints may miss a direction by what is left of the cone beside it.
+        In between what is left of the cone beside it, (m,): an arm of few joints may miss a
+        direction by that.
         """
-        count, each = len(targets), DIRECTIONS * self._turns
-        around = np.linspace(0.0, 2.0 * np.pi, self._turns, endpoint=False)
-        tried = np.empty((count, DIRECTIONS, self._turns, 4, 4))
-        left = np.empty((count, DIRECTIONS, self._turns))
+        count, each = len(targets), DIRECTIONS * TURNS
+        around = np.linspace(0.0, 2.0 * np.pi, TURNS, endpoint=False)
+        tried = np.empty((count, DIRECTIONS, TURNS, 4, 4))
+        left = np.empty((count, DIRECTIONS, TURNS))
         for index in range(count):
             cone, pose = float(targets.cone[index]), targets.tool_in_base[index]
             turns = directions_in(cone)
@@ -133,7 +166,13 @@ class ConeScan:
         many = replace(many, tool_in_base=tried.reshape(-1, 4, 4), angle_tolerance=wide)
         scores = self._ways.scores(many, asked).reshape(count, each)
         best = np.arange(count), np.argmax(scores, axis=1)
-        return tried.reshape(count, each, 4, 4)[best], left.reshape(count, each)[best]
+        return tried.reshape(count, each, 4, 4)[best], left.reshape(count, each)[best], scores[best]
+
+
+def _turns_between(one: FloatArray, other: FloatArray) -> FloatArray:
+    """Return the turns (k, 3, 3) from poses (k, 4, 4) to others, in the axes of the first."""
+    turns: FloatArray = np.swapaxes(one[:, :3, :3], 1, 2) @ other[:, :3, :3]
+    return turns
 
 
 def _angle_from_z(turns: FloatArray) -> FloatArray:
@@ -175,14 +214,22 @@ class WithinCone:
         return _beyond_the_cone(self._way.answer(wide, asked), targets.cone)
 
 
+def _few_ways_to_a_place(free: Answerer) -> bool:
+    """Tell whether the tool's point gets to a place in so many postures only, none beside them."""
+    method = free.method
+    moving = method.arm.joint_count - np.count_nonzero(method.idle)
+    return Search(method.arm, method.tool_in_flange, POSITION).rank == int(moving)
+
+
 def cone_of(poses: Answerer, free: Answerer, spins: Way) -> Way:
     """Return what answers targets with a cone, for an arm that answers poses and directions so."""
     joints = poses.ranking.arm.joint_count
-    if joints < 5 and poses.method.complete:
+    if free.method.complete and _few_ways_to_a_place(free):
         return WithinCone(spins)
-    if free.method.complete or not poses.method.complete:
-        return ConeScan(free, 1)
-    return ConeScan(poses, TURNS)
+    if joints > 5 and poses.method.solver.proof == _CLOSED:
+        return ConeScan(poses, True)
+    exact = poses.method.complete and (joints > 5 or not free.method.complete)
+    return ConeScan(poses if exact else free, False)
 
 
 @dataclass(frozen=True, eq=False)
@@ -194,12 +241,14 @@ class _ConeWords:
     held: NDArray[np.bool_]
     targets: Targets
     poses: FloatArray
+    scanned: bool
 
     def reason(self, index: int) -> Reason | None:
         reason = self.at_best.reason(index)
         if reason is None or self.held[index]:
             return reason
-        say = f"no direction within the cone was found, of {DIRECTIONS} tried; at the best of them "
+        tried = f"of {DIRECTIONS} tried and by search" if self.scanned else "by search"
+        say = f"no direction within the cone was found, {tried}; at the best of them "
         return replace(reason, code="not-found", say=say + reason.say)
 
     def families(self, index: int) -> tuple[Family, ...]:

@@ -2,7 +2,7 @@
 
 For whoever wants them compiled ahead of the first question (kinematics/warm_up.py), in two parts
 that take about as long. The arms are the smallest that lead each way: two structures of six axes,
-three joints that turn and slide, four axes, a level wrist; and one of no structure. Left out: the
+three joints that turn and slide, four axes, a level wrist; and two of no structure. Left out: the
 answers.
 """
 
@@ -65,8 +65,12 @@ _CLOSED_FORMS: tuple[_Asked, ...] = (
     ((*(_row(_SLIDE, 0.0, alpha, 0.0) for alpha in (_QUARTER, _QUARTER, 0.0)),), (ORIENTATION,)),
     (_FOUR_AXES, (NONE,)),
     (_LEVEL_WRIST, (NONE,)),
+    ((_row(_SLIDE, 0.0, _QUARTER, 0.0), *_SHOULDER, *_WRIST), (NONE,)),
 )
-_SEARCHES: tuple[_Asked, ...] = ((_NO_STRUCTURE, (ORIENTATION, NONE)),)
+_SEARCHES: tuple[_Asked, ...] = (
+    (_NO_STRUCTURE, (ORIENTATION, NONE)),
+    (_NO_STRUCTURE[:6], (NONE,)),
+)
 
 LAST_OF_CLOSED_FORMS, LAST_OF_SEARCHES = palletiser, follow
 """A kernel that each of the two ends with."""
@@ -89,7 +93,17 @@ def check_searches() -> None:
     --------
     >>> check_searches()
     """
+    _check_boxes()
     _check(_SEARCHES)
+
+
+def _check_boxes() -> None:
+    """Ask four joints for a pose that they have but for a turn, which boxes prove."""
+    arm, flange = Arm("first", Table(Convention.STANDARD, _NO_STRUCTURE[:4])), np.eye(4)
+    turned = tool_in_base(arm, np.full(4, 0.3), flange)
+    turned[:3, 1:3] *= -1.0
+    checks = Reacher(arm, flange).check(Targets.of([Target(turned)]))
+    checks.reason_of(0)
 
 
 def _check(asked: tuple[_Asked, ...]) -> None:

@@ -14,7 +14,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from kinematics.inverse.compromises import compromised
+from kinematics.inverse.compromises import Driven, compromised
 from kinematics.inverse.found import Found, none_found
 from kinematics.inverse.iterative import Search
 from kinematics.inverse.measured import errors_of, wrapped
@@ -23,7 +23,7 @@ from kinematics.inverse.solve import Method
 from kinematics.reach.targets import Targets
 from kinematics.reach.verdicts import Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import NEARLY_REACHED, WORTH_COMPROMISING
+from kinematics.tolerances import NEARLY_REACHED, WORTH_LEADING
 
 _SEVERAL, _SHORT = 4, 16
 """Postures that a short search looks for, and its starts."""
@@ -52,7 +52,7 @@ class NearEnough:
         if not self.method.closed or (accepted.all() and near.count_per_target().all()):
             return near
         errors = np.stack([found.position_error, found.angle_error], axis=1)
-        small = errors <= WORTH_COMPROMISING * self.ranking.allowed(targets)[found.target]
+        small = errors <= WORTH_LEADING * self.ranking.allowed(targets)[found.target]
         tried = picked(found, small.all(axis=1) & ~accepted)
         return self._led(near, self._with_efforts(tried, found, targets, rest), targets)
 
@@ -86,7 +86,8 @@ class NearEnough:
         """
         if not len(tried.target):
             return near
-        drive, screws = self.ranking.arm.drive_map.matrix, self.ranking.screws
+        of_arm, screws = self.ranking.arm.drive_map, self.ranking.screws
+        drive = Driven(of_arm.matrix, np.array(of_arm.driven, np.intp))
         poses, tolerances = targets.tool_in_base, self.ranking.allowed(targets)
         tried = compromised(tried, screws, drive, poses, tolerances, self.method.task)
         accepted = picked(tried, self.ranking.accepted(tried, targets))

@@ -7,14 +7,14 @@ comes with the pose that is nearest to it. All of it is worked out for whoever r
 Source: none. Not covered: the verdict itself (checks.py) and other languages than English.
 """
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.chain import tool_in_base
 from kinematics.findings import FINE, Finding
-from kinematics.inverse.drive import drive_of
 from kinematics.inverse.found import (
     HEIGHT,
     MEETING_POINT,
@@ -30,12 +30,19 @@ from kinematics.inverse.found import (
     Found,
 )
 from kinematics.inverse.found import POSITION as PLACE
+from kinematics.inverse.measured import POSITION as PLACE_ALONE
 from kinematics.inverse.measured import errors_of
+from kinematics.inverse.redundant import Redundant
 from kinematics.inverse.solve import Method
 from kinematics.reach.bounds import BEYOND, Bounds
 from kinematics.reach.family_members import families_told, spare_joints, turned_freely
+from kinematics.reach.last_proof import Proofs
+from kinematics.reach.misses import Misses, postures_of
+from kinematics.reach.redundant_families import resolution_of, spare_families
 from kinematics.reach.targets import (
     BOUND,
+    BRANCH_AND_BOUND,
+    NOT_FOUND,
     OUTSIDE_TRAVEL,
     REACHABLE,
     UNREACHABLE,
@@ -45,7 +52,7 @@ from kinematics.reach.targets import (
 )
 from kinematics.reach.verdicts import Ranked, Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import MOST_SPARE_FOLLOWED
+from kinematics.tolerances import MOST_SPANNED, MOST_SPARE_FOLLOWED
 from kinematics.travel_limits import limits_of
 
 _SAID = {
@@ -63,6 +70,12 @@ _SAID = {
     TILT: "the place can be reached with the tool tilted {shortfall} off",
 }
 
+_BY_BOXES = (
+    "numerically proved: travel was cut into boxes of joint values, and none of {} meets the target"
+)
+_TOO_FEW_BOXES = (
+    "nothing is proved: {} boxes of joint values were looked at, which did not settle it"
+)
 
 _NOT_FOLLOWED = Finding(
     FINE,
@@ -95,11 +108,20 @@ class Told:
     proof: NDArray[np.int64]
     rest: FloatArray
     families_found: dict[int, tuple[Family, ...]] = field(default_factory=dict)
+    proofs: Proofs | None = None
 
     def reason(self, index: int) -> Reason | None:
         """Return why a target cannot be reached as asked; None where it can."""
         if self.verdict[index] == REACHABLE:
             return None
+        reason, boxes = self._why(index), 0 if self.proofs is None else self.proofs.boxes[index]
+        if self.proof[index] == BRANCH_AND_BOUND:
+            return replace(reason, say=f"{reason.say}; {_BY_BOXES.format(boxes)}")
+        if boxes and self.verdict[index] == NOT_FOUND:
+            return replace(reason, say=f"{reason.say}; {_TOO_FEW_BOXES.format(boxes)}")
+        return reason
+
+    def _why(self, index: int) -> Reason:
         if self.proof[index] == BOUND:
             return self._beyond_bounds(index)
         first, last = self.ranked.offsets[index : index + 2]
@@ -107,7 +129,7 @@ class Told:
             return self._beyond_travel(index, self.ranked.joint_values[first])
         missed = np.flatnonzero(self.found.target == index)
         if len(missed):
-            return self._missed(index, missed)
+            return self._misses.reason(self._misses.of(index, self.found.motions[missed]), index)
         return self._at_stage(index)
 
     def families(self, index: int) -> tuple[Family, ...]:
@@ -121,6 +143,11 @@ class Told:
         if self.method.idle.any():
             values = self.ranked.joint_values[first:last]
             return tuple(turned_freely(self.ranking.arm, self.method.idle, one) for one in values)
+        if isinstance(self.method.solver, Redundant):
+            target, best = self.targets.tool_in_base[index], self.ranked.joint_values[first]
+            if index >= MOST_SPANNED:
+                return ()
+            return spare_families(self.method, self.method.solver, target, best)
         if self._has_spare_joints:
             if index >= MOST_SPARE_FOLLOWED:
                 return ()
@@ -132,8 +159,9 @@ class Told:
         """Return what else is to be known: postures that are not listed."""
         if self.verdict[index] != REACHABLE:
             return ()
-        left = index >= MOST_SPARE_FOLLOWED if self._has_spare_joints else False
-        told = (_NOT_FOLLOWED,) if left or self.families_found.get(index) == () else ()
+        told = (_NOT_FOLLOWED,) if self._not_followed(index) else ()
+        if isinstance(self.method.solver, Redundant):
+            told = (resolution_of(self.method.solver), *told)
         first, last = self.ranked.offsets[index : index + 2]
         seen = self.ranked.seen[self.ranked.target == index]
         count, listed = float(np.where(seen < 0, -seen - 1, seen).sum()), float(last - first)
@@ -142,6 +170,14 @@ class Told:
         more = "" if (seen >= 0).all() else "at least "
         say = f"{more}{{measure}} postures within travel get there, the best {{threshold}} are told"
         return (*told, Finding(FINE, "more-postures", say, count, listed))
+
+    def _not_followed(self, index: int) -> bool:
+        """Whether a target's families are left out, as following them takes long."""
+        if isinstance(self.method.solver, Redundant):
+            return index >= MOST_SPANNED
+        if self._has_spare_joints:
+            return index >= MOST_SPARE_FOLLOWED
+        return self.families_found.get(index) == ()
 
     @property
     def _has_spare_joints(self) -> bool:
@@ -194,39 +230,23 @@ class Told:
             self._pose_of(self._within_travel(values)),
         )
 
-    def _missed(self, index: int, missed: NDArray[np.intp]) -> Reason:
-        """Tell by how much the best solution misses a target of an arm with few joints."""
-        found, targets = self.found, self.targets
-        position = found.position_error[missed] / targets.position_tolerance[index]
-        angle = found.angle_error[missed] / targets.angle_tolerance[index]
-        best = int(np.argmin(np.maximum(position, angle)))
-        solution = missed[best]
-        turned = bool(angle[best] >= position[best])
-        off = found.angle_error[solution] if turned else found.position_error[solution]
-        say = (
-            "the place can be reached with the tool turned {shortfall} off"
-            if turned
-            else "the tool gets within {shortfall} of the place"
-        )
-        return Reason(
-            "orientation-off" if turned else "position-off",
-            f"{say}, more than the tolerance of {{threshold}}",
-            "orientation" if turned else "position",
-            float(off),
-            "rad" if turned else "m",
-            float(off),
-            float((targets.angle_tolerance if turned else targets.position_tolerance)[index]),
-            self._pose_of_motions(found.motions[solution]),
-        )
+    @cached_property
+    def _misses(self) -> Misses:
+        return Misses(self.ranking, self.targets, self.method.task)
 
     def _at_stage(self, index: int) -> Reason:
-        stage = int(self.found.stage[index])
+        stage, nearest = int(self.found.stage[index]), self._nearest_motions(index)
+        few = not self.ranking.exact and self.method.task != PLACE_ALONE
+        if few and stage != TRAVEL:
+            miss = self._misses.of(index, nearest[None])
+            # What cannot be met at some stage says more, unless the place can be met for itself.
+            if miss.place_met or stage not in _SAID:
+                return self._misses.reason(miss, index)
         if stage in _SAID:
             return self._short(index, stage)
-        nearest = self._nearest_motions(index)
         if stage == TRAVEL:
-            beyond = drive_of(self.ranking.arm).postures(nearest[None])
-            return self._beyond_travel(index, beyond.joint_values[0])
+            beyond = postures_of(self.ranking.arm, nearest[None])
+            return self._beyond_travel(index, beyond[0])
         target = self.targets.tool_in_base[index : index + 1]
         one = np.zeros(1, np.intp)
         gaps = errors_of(self.ranking.screws, nearest[None], target, one, self.method.task)

@@ -19,7 +19,8 @@ from numpy.typing import NDArray
 from kinematics.chain import tool_in_base
 from kinematics.findings import FINE, Finding
 from kinematics.inverse.drive import drive_of
-from kinematics.reach.answers import Answerer, Asked, Basis
+from kinematics.inverse.four_axes import FourAxes
+from kinematics.reach.answers import Answerer
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.targets import (
     BOUND,
@@ -33,6 +34,7 @@ from kinematics.reach.targets import (
     Targets,
     Words,
 )
+from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
 from kinematics.tolerances import EXACT_REACH
 
@@ -128,6 +130,20 @@ class SpinScan:
         turns = best.copy()
         turns[at] = np.arctan2(across[:, 1, 0], across[:, 0, 0])
         return turns
+
+
+def spin_of(poses: Answerer, free: Answerer) -> Way:
+    """Return what answers targets with the turn about tool z open, for an arm that answers so.
+
+    A ring is tried where it costs little and where turns can be had: few joints without a closed
+    form for the turn left free have one turn at most, which no ring meets.
+    """
+    method = poses.method
+    cheap = method.complete and method.solver.proof == "closed-form"
+    turns = method.arm.joint_count >= 6 or isinstance(method.solver, FourAxes)
+    if free.method.complete or not (cheap and turns):
+        return free
+    return SpinScan(poses, free)
 
 
 class _Scan:

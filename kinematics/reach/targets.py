@@ -26,8 +26,10 @@ VERDICTS = ("reachable", "outside-travel", "unreachable", "not-found")
 CODES = (0, 201, 200, 202)
 """Of the wire's code table, by verdict."""
 
-WITNESS, BOUND, CLOSED_FORM, SEARCH = range(4)
-PROOFS = ("witness", "bound", "closed-form", "search")
+WITNESS, BOUND, CLOSED_FORM, ELIMINATION, BRANCH_AND_BOUND, SEARCH = range(6)
+PROOFS = ("witness", "bound", "closed-form", "elimination", "branch-and-bound", "search")
+"""What a verdict rests on: joint values; links too short for anybody; all solutions in closed
+form, or all roots of an elimination, in floating point; boxes that all miss; nothing found."""
 
 
 class Target(NamedTuple):

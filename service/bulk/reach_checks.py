@@ -3,16 +3,16 @@
 Left out: the address (routes/reach.py).
 """
 
-from time import perf_counter, time_ns
+from time import time_ns
 
 from starlette.requests import Request
 from starlette.responses import Response
 
 from service.bulk.answering import Bulk, answer_of
+from service.bulk.limited import Limited
 from service.bulk.reach_reading import targets_of_body, targets_of_table
 from service.bulk.reach_rendering import RENDERINGS, Piece, ReachRendering
 from service.bulk.rendering import Stamp
-from service.errors import TooLarge
 from service.wire.body import media_type_of, parse_json, read_bytes
 from service.wire.controller import wanted_tag
 from service.wire.csv_rows import MEDIA_TYPE as CSV
@@ -26,12 +26,7 @@ MOST_BYTES = 8_000_000
 
 FORMATS: tuple[Format, ...] = ("json", "csv")
 
-LONGEST_S = 20.0
-"""Of work on one request, whatever was estimated: near singular postures whole families are
-followed, which takes a hundred times as long as to find one solution."""
-
-_MOST_OF_PIECE_S = 3.0
-"""What one piece counts of that: the first may have waited until kernels were compiled."""
+_WHY = "as targets do that are searched for in vain or lie at singular postures"
 
 
 async def answer_checks(request: Request) -> Response:
@@ -69,35 +64,6 @@ async def answer_checks(request: Request) -> Response:
 
     made, pieces = await bulk.threads.run(begun)
     if pieces is None:
-        work = _Limited(made)
+        work = Limited(made.piece, FIELD, made.count, _WHY)
         pieces = await bulk.threads.pieces(work.piece, made.count, made.many.size)
     return answer_of(made.answer(pieces))
-
-
-class _Limited:
-    """Makes pieces of an answer as long as they do not take too long together."""
-
-    def __init__(self, rendering: ReachRendering) -> None:
-        self._rendering = rendering
-        self._taken_s: list[float] = []
-
-    def piece(self, begin: int, end: int) -> Piece:
-        """Return a piece.
-
-        Raises
-        ------
-        TooLarge : those before have taken all the time there is.
-        """
-        if sum(self._taken_s) > LONGEST_S:
-            raise TooLarge(
-                f"this takes more than {LONGEST_S:.0f} s of work, as targets do that are searched "
-                "for in vain or lie at singular postures",
-                where=(FIELD,),
-                value=self._rendering.count,
-                way_out=f"send fewer than {max(begin, 1)} of these targets at a time",
-                status=422,
-            )
-        started = perf_counter()
-        made = self._rendering.piece(begin, end)
-        self._taken_s.append(min(perf_counter() - started, _MOST_OF_PIECE_S))
-        return made

@@ -21,10 +21,26 @@ REFUSED = "refused"
 
 
 class Piece(NamedTuple):
-    """Some targets' part of an answer, and how many of them there are of each verdict."""
+    """Some items' part of an answer, and how many of them there are of each verdict."""
 
     content: bytes
     verdicts: Mapping[str, int]
+
+
+def nested(
+    head: Mapping[str, object], field: str, counted: dict[str, int], pieces: Sequence[Piece]
+) -> WorkedOut:
+    """Return head, the items of all pieces under ``field``, and a summary of their verdicts.
+
+    ``counted`` begins the summary: how many items there are.
+    """
+    found = sum((Counter(piece.verdicts) for piece in pieces), Counter[str]())
+    verdicts = {verdict.replace("-", "_"): found[verdict] for verdict in (*VERDICTS, REFUSED)}
+    parts = [json_bytes(head)[:-1] + f',"{field}":['.encode("ascii")]
+    for place, piece in enumerate(pieces):
+        parts += [b",", piece.content] if place else [piece.content]
+    parts.append(b'],"summary":' + json_bytes(counted | verdicts) + b"}")
+    return WorkedOut(JSON, parts, found[REFUSED])
 
 
 @dataclass(frozen=True)
@@ -63,14 +79,7 @@ class JsonRendering(ReachRendering):
 
     def answer(self, pieces: Sequence[Piece]) -> WorkedOut:
         """Return head, items, and the summary."""
-        found = sum((Counter(piece.verdicts) for piece in pieces), Counter[str]())
-        summary = {"targets": self.count}
-        summary |= {verdict.replace("-", "_"): found[verdict] for verdict in (*VERDICTS, REFUSED)}
-        parts = [json_bytes(self.many.head)[:-1] + b',"results":[']
-        for place, piece in enumerate(pieces):
-            parts += [b",", piece.content] if place else [piece.content]
-        parts.append(b'],"summary":' + json_bytes(summary) + b"}")
-        return WorkedOut(self.media_type, parts, found[REFUSED])
+        return nested(self.many.head, "results", {"targets": self.count}, pieces)
 
 
 class CsvRendering(ReachRendering):

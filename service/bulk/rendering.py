@@ -32,7 +32,7 @@ class Stamp(NamedTuple):
 class Piece(NamedTuple):
     """Some vectors' part of an answer; ``refused`` counts for the header of NPY and CSV."""
 
-    content: bytes
+    content: bytes | memoryview
     refused: int
 
 
@@ -55,7 +55,7 @@ class Outline:
 
     def answer(self, pieces: Sequence[Piece]) -> "WorkedOut":
         """Return the answer whose pieces are there."""
-        parts = [self.head]
+        parts: list[bytes | memoryview] = [self.head]
         for place, piece in enumerate(pieces):
             parts += [self.joint, piece.content] if place and self.joint else [piece.content]
         parts.append(self.tail)
@@ -66,7 +66,7 @@ class WorkedOut(NamedTuple):
     """An answer but for its sending."""
 
     media_type: str
-    parts: list[bytes]
+    parts: Sequence[bytes | memoryview]
     refused: int
 
 

@@ -75,7 +75,7 @@ def _table(bulk: Bulk, many: ManySamples, wanted: Format) -> Response:
         else (",".join(columns) + "\r\n").encode("ascii")
     )
 
-    def piece(begin: int, end: int) -> bytes:
+    def piece(begin: int, end: int) -> bytes | memoryview:
         numbers = many.numbers(begin, end)
         return npy.npy_bytes(numbers) if is_npy else csv_text.plain_lines(numbers)
 

@@ -31,7 +31,7 @@ class StreamedAnswer(Response):
         self,
         threads: Threads,
         head: bytes,
-        piece: Callable[[int, int], bytes],
+        piece: Callable[[int, int], bytes | memoryview],
         count: int,
         size: int,
         *,
@@ -52,7 +52,7 @@ class StreamedAnswer(Response):
         start = {"status": self.status_code, "headers": self.raw_headers}
         await send({"type": "http.response.start", **start})
         await send({"type": "http.response.body", "body": self._head, "more_body": True})
-        ahead: deque[asyncio.Task[bytes]] = deque()
+        ahead: deque[asyncio.Task[bytes | memoryview]] = deque()
         try:
             for begin in self._begins:
                 work = partial(self._piece, begin, min(begin + self._size, self._count))
@@ -67,5 +67,5 @@ class StreamedAnswer(Response):
         await send({"type": "http.response.body", "body": b"", "more_body": False})
 
 
-async def _send_part(send: Send, part: bytes) -> None:
+async def _send_part(send: Send, part: bytes | memoryview) -> None:
     await send({"type": "http.response.body", "body": part, "more_body": True})

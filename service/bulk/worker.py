@@ -167,7 +167,9 @@ def begin_conversions(raw: bytes, wanted: Format, stamp: Stamp) -> Problem | Out
 
 def piece(first: int, last: int) -> Piece:
     """Return the part of the answer for vectors ``first`` ... ``last``."""
-    return cast(InPieces, _kept["rendering"]).piece(first, last)
+    made = cast(InPieces, _kept["rendering"]).piece(first, last)
+    # A view of an array cannot leave the process.
+    return made._replace(content=bytes(made.content))
 
 
 def forget() -> None:

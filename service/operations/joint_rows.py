@@ -4,7 +4,7 @@ One bad vector never fails the others; a request in which none can be used is re
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import chain
 
 import numpy as np
@@ -16,7 +16,7 @@ from kinematics.errors import KinematicsError, NotFinite, OutOfRange, WrongJoint
 from kinematics.table import FloatArray
 from kinematics.tolerances import LARGEST_MAGNITUDE
 from service.convert import Units, joint_row_in, joint_values_in
-from service.details import Detail, as_given
+from service.details import Detail, Location, as_given
 from service.errors import ServiceError, TooLarge, UnusableValue
 
 MOST_VECTORS = 200_000
@@ -136,6 +136,29 @@ def read_joint_row(arm: Arm, units: Units, values: list[float]) -> list[float]:
         read_joint_rows(arm, units, [values], singularity=True)
         raise AssertionError("a joint vector is good alone and bad among others")
     return row
+
+
+def read_joint_row_at(
+    arm: Arm,
+    units: Units,
+    given: Sequence[object],
+    where: tuple[str | int, ...],
+    location: Location = "body",
+) -> FloatArray:
+    """Return one joint vector that stands at ``where`` in a request, (joints,) in SI.
+
+    Raises
+    ------
+    ServiceError : it cannot be used; ``where`` leads to the value.
+    """
+    try:
+        return np.array(read_joint_row(arm, units, list(given)))  # type: ignore[arg-type]
+    except ServiceError as error:
+        error.errors = tuple(
+            replace(detail, where=(*where, *detail.where[2:]), location=location)
+            for detail in error.errors
+        )
+        raise
 
 
 def _of_good_numbers(arm: Arm, units: Units, row: object) -> list[float] | None:

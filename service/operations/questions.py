@@ -26,6 +26,7 @@ from service.wire.poses import read_pose
 
 if TYPE_CHECKING:
     from kinematics.reach.checks import Reacher
+    from kinematics.travel.courses import Courses
 
 # One entry per arm, tool and task in use, some 5 kB each; 0.4 MB where reach has been searched.
 PREPARED_KEPT = 512
@@ -89,6 +90,14 @@ class Question:
         """What tells whether targets can be reached."""
         digest = self.meant.read.digests.table_digest
         return reacher_of(self.arm, digest, self.tool.tool_in_flange)
+
+    @cached_property
+    def courses(self) -> "Courses":
+        """What follows courses of the arm."""
+        # Imported when first wanted, like what tells of targets.
+        from kinematics.travel.courses import Courses
+
+        return Courses(self.reacher)
 
     @cached_property
     def head(self) -> Mapping[str, object]:

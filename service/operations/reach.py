@@ -5,7 +5,7 @@ told of each (reach_told.py), and in which thread a piece is worked on (bulk).
 """
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
@@ -15,12 +15,13 @@ from kinematics.reach.targets import Targets
 from kinematics.table import FloatArray
 from kinematics.transforms import in_frame
 from service.details import Detail, Location
-from service.errors import MissingField, ServiceError, TooLarge
+from service.errors import MissingField, TooLarge
+from service.operations.approached import approach_seconds, approached_checks
 from service.operations.arms import Arms
-from service.operations.joint_rows import read_joint_row
+from service.operations.joint_rows import read_joint_row_at
 from service.operations.questions import Question, question_of
 from service.operations.reach_told import ToldChecks, told_together
-from service.operations.reachers import method_of
+from service.operations.reachers import about_the_arm, method_of
 from service.problems import KINDS
 from service.wire.arms import ReadArm
 from service.wire.models import PosesRequest
@@ -73,23 +74,41 @@ class ManyTargets:
         """What stands at the head of the answer."""
         return {**self.question.head, "method": method_of(self.question.reacher, self.targets)}
 
+    @cached_property
+    def _seconds(self) -> float:
+        """About how long all answers take."""
+        with about_the_arm():
+            seconds = self.question.reacher.estimated_seconds(self.targets)
+        approaches = len(self.read.approaches)
+        return seconds + approaches * approach_seconds(self.question) if approaches else seconds
+
     @property
     def size(self) -> int:
         """Targets in a piece."""
-        each = self.question.reacher.estimated_seconds(self.targets) / max(len(self.targets), 1)
+        each = self._seconds / max(len(self.targets), 1)
         return int(min(max(_PIECE_S / max(each, 1e-6), 1), _LARGEST_PIECE))
 
     def told(self, begin: int, end: int) -> tuple[range, ToldChecks]:
         """Return which of the usable targets are among ``begin`` ... ``end``, and what they are."""
         first, last = np.searchsorted(self.read.places, (begin, end)).tolist()
-        checks = self.question.reacher.check(
-            self.targets.only(np.arange(first, last)), near=self.wanted.near
+        targets = self.targets.only(np.arange(first, last))
+        checks = self.question.reacher.check(targets, near=self.wanted.near)
+        by_singularity = self.wanted.order == SINGULARITY
+        approaches = {
+            number - first: self.read.approaches[number]
+            for number in range(first, last)
+            if number in self.read.approaches
+        }
+        every_way = by_singularity or not self.wanted.best_only
+        approached = approached_checks(
+            self.question, checks, targets, approaches, every_way=every_way
         )
         return range(first, last), told_together(
             self.question,
-            checks,
+            checks if approached is None else approached.checks,
             best_only=self.wanted.best_only,
-            by_singularity=self.wanted.order == SINGULARITY,
+            by_singularity=by_singularity,
+            approached=approached,
         )
 
     def items(self, begin: int, end: int) -> list[dict[str, object]]:
@@ -121,7 +140,7 @@ class ManyTargets:
         ------
         TooLarge
         """
-        seconds = self.question.reacher.estimated_seconds(self.targets)
+        seconds = self._seconds
         if seconds <= LONGEST_S:
             return
         most = max(int(len(self.targets) * LONGEST_S / seconds), 1)
@@ -172,16 +191,9 @@ def wanted_solutions(
         )
     if near is None:
         return Wanted(solutions == BEST, order)
-    try:
-        joint_values = read_joint_row(question.arm, question.units, list(near))  # type: ignore[arg-type]
-    except ServiceError as error:
-        error.errors = tuple(
-            replace(detail, where=("near", *detail.where[2:]), location=location)
-            for detail in error.errors
-        )
-        raise
+    joint_values = read_joint_row_at(question.arm, question.units, near, ("near",), location)
     is_near = order in (None, NEARNESS)
-    return Wanted(solutions == BEST, order, np.array(joint_values) if is_near else None)
+    return Wanted(solutions == BEST, order, joint_values if is_near else None)
 
 
 def _refused(detail: Detail) -> dict[str, object]:

@@ -9,7 +9,7 @@ import numpy as np
 
 from kinematics.reach.targets import CODES, PROOFS, REACHABLE, VERDICTS
 from service.operations.reach import ManyTargets
-from service.operations.reach_told import ToldChecks, reason_say
+from service.operations.reach_told import ToldChecks
 from service.problems import KINDS
 from service.wire.reach_lines import ReachColumns
 
@@ -51,9 +51,9 @@ def _lines_of(
     checks, count = told.checks, told.found(index)
     verdict = int(checks.verdict[index])
     same = (VERDICTS[verdict], count)
-    proof, reason = PROOFS[int(checks.proof[index])], checks.reason_of(index)
+    proof = PROOFS[int(checks.proof[index])]
     if verdict != REACHABLE:
-        say = "" if reason is None else reason_say(told.question.units, reason)
+        say = told.reason_say(index)
         return [_Line(name, CODES[verdict], frozenset(), *same, 0, proof, say)]
     of_target = frozenset(finding.code for finding in many.repaired(number))
     lines = []

@@ -11,8 +11,8 @@ from kinematics.reach.targets import PROOFS, REACHABLE, VERDICTS, WITNESS
 from kinematics.singularity import REGULAR, STATES
 from service.convert import finding_out, joint_row_out
 from service.operations.questions import Question
-from service.operations.reach_told import solution_out
 from service.operations.singularities import Judged, judged_reading
+from service.operations.solution_told import solution_out
 from service.wire.reach_flat import ReachAnswer
 
 

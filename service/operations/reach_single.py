@@ -25,6 +25,7 @@ from kinematics.tolerances import TARGET_ANGLE, TARGET_POSITION
 from kinematics.transforms import in_frame
 from service.convert import orientation_in
 from service.errors import ServiceError
+from service.operations.approached import approach_asked, approached_checks
 from service.operations.arms import Arms
 from service.operations.joint_rows import read_joint_row
 from service.operations.questions import Question
@@ -57,6 +58,8 @@ def reach_question_asked(arms: Arms[ReadArm], asked: ReachAsked) -> Question:
 
 def answers_at_once(question: Question, asked: ReachAsked) -> bool:
     """Return whether the answer takes so little time that nobody is held up by it."""
+    if asked.approach is not None:
+        return False
     # The first question looks at the arm's geometry, which takes longer than any target.
     return "reacher" in vars(question) and is_quick(question.reacher, asked.freedom)
 
@@ -78,11 +81,9 @@ def single_reach(
     """
     reacher, tool_in_frame = question.reacher, _tool_in_frame(question, asked)
     near = None if asked.near is None else _near(question, asked.near.values)
-    if asked.freedom == NONE and reacher.one_target is not None:
-        best = reacher.one_target.best(question.frame_in_base, tool_in_frame, near, named=nested)
-        plain = best and plain_answer(question, best, method_of(reacher, _POSE), nested=nested)
-        if plain is not None:
-            return plain
+    plain = _plainly(question, asked, tool_in_frame, near, nested=nested)
+    if plain is not None:
+        return plain
     targets = Targets(
         in_frame(question.frame_in_base, tool_in_frame),
         _FREEDOM[asked.freedom],
@@ -92,7 +93,12 @@ def single_reach(
     )
     method = method_of(reacher, targets)
     checks = reacher.check(targets, near=near, at_once=at_once)
-    told, verdict = told_best(question, checks), int(checks.verdict[0])
+    approached = None
+    if asked.approach is not None:
+        approaches = {0: approach_asked(question, asked.approach)}
+        approached = approached_checks(question, checks, targets, approaches, every_way=False)
+        checks = checks if approached is None else approached.checks
+    told, verdict = told_best(question, checks, approached), int(checks.verdict[0])
     if nested and at_once and CODES[verdict]:
         raise TakesLonger  # to find the nearest pose there is
     item = told.item(0, form=question.form, repaired=question.repaired) if nested else None
@@ -114,6 +120,22 @@ def single_reach(
         state=state,
         codes=codes,
     )
+
+
+def _plainly(
+    question: Question,
+    asked: ReachAsked,
+    tool_in_frame: FloatArray,
+    near: FloatArray | None,
+    *,
+    nested: bool,
+) -> ReachAnswer | None:
+    """Return the answer where nothing is to be said but the best posture, else None."""
+    reacher = question.reacher
+    if asked.freedom != NONE or asked.approach is not None or reacher.one_target is None:
+        return None
+    best = reacher.one_target.best(question.frame_in_base, tool_in_frame, near, named=nested)
+    return best and plain_answer(question, best, method_of(reacher, _POSE), nested=nested)
 
 
 def _tool_in_frame(question: Question, asked: ReachAsked) -> FloatArray:

@@ -7,10 +7,11 @@ out: asking for them (reach.py).
 from collections.abc import Sequence
 from dataclasses import replace
 from functools import cached_property
-from itertools import pairwise
-from math import isfinite
+from itertools import compress, pairwise
+from typing import TYPE_CHECKING
 
 import numpy as np
+from numpy.typing import NDArray
 
 from kinematics.findings import FINE, OUTSIDE_TRAVEL, Finding
 from kinematics.jacobian import motion_of
@@ -20,15 +21,12 @@ from kinematics.reach.targets import (
     PROOFS,
     VERDICTS,
     Checks,
-    Family,
-    Reason,
 )
 from kinematics.reach.targets import (
     OUTSIDE_TRAVEL as OUTSIDE,
 )
 from kinematics.singularity import STATES
-from kinematics.table import FloatArray
-from kinematics.transforms import in_frame
+from kinematics.travel.moves import Way
 from kinematics.travel_limits import each_travel_findings, limits_exceeded
 from service.convert import (
     Units,
@@ -37,11 +35,19 @@ from service.convert import (
     joint_row_out,
     joint_values_out,
 )
+from service.operations.courses_told import approach_out, approach_reason_out, approach_say
 from service.operations.questions import Question
+from service.operations.reasons_told import family_out, reason_out, reason_say
 from service.operations.singularities import Judged, judged, judged_reading
-from service.wire.poses import pose_answer
+from service.operations.solution_told import solution_out
+
+if TYPE_CHECKING:
+    # Its kernels are loaded with all others for reach, when first wanted.
+    from kinematics.travel.approaches import Approached
 
 NO_STATE = "none"
+_MORE_POSTURES = "more-postures"
+"""The finding that some postures are not listed."""
 
 
 class ToldChecks:
@@ -67,9 +73,11 @@ class ToldChecks:
         best_only: bool = False,
         by_singularity: bool = False,
         first_alone: bool = False,
+        approached: "Approached | None" = None,
     ) -> None:
         self.question, self.checks = question, checks
         self.judged, self.beyond = judged, beyond
+        self._approached = approached
         self._best_only, self._first_alone = best_only, first_alone
         spans = [range(*span) for span in pairwise(checks.offsets.tolist())]
         self.ranks: Sequence[Sequence[int]] = (
@@ -77,11 +85,24 @@ class ToldChecks:
         )
 
     def _ranked(self, solutions: range) -> Sequence[int]:
-        """Return solutions, the farthest from singular first."""
+        """Return solutions, those with a whole approach first, the farthest from singular first."""
         if self.judged is None:
             return solutions
         readings = self.judged.readings
-        return sorted(solutions, key=lambda solution: -readings[solution][SMALLEST])
+
+        def worse(solution: int) -> tuple[bool, float]:
+            way = self._way(solution)
+            return (way is not None and not way.done, -float(readings[solution][SMALLEST]))
+
+        return sorted(solutions, key=worse)
+
+    def _way(self, solution: int) -> Way | None:
+        """Return the way back along the approach to a solution, where it was followed."""
+        return None if self._approached is None else self._approached.ways[solution]
+
+    def broken(self, index: int) -> Way | None:
+        """Return the longest way back from a target that the tool cannot come to as asked."""
+        return None if self._approached is None else self._approached.broken.get(index)
 
     def told_ranks(self, index: int) -> Sequence[int]:
         """Return the solutions of one target that are to be told."""
@@ -145,7 +166,8 @@ class ToldChecks:
             beyond = self._limits[solution]
             findings = [beyond_out(self.question.units, finding) for finding in beyond]
         findings += [computed_finding_out(self.question.units, finding) for finding in said]
-        return solution_out(
+        way = self._way(solution)
+        told = solution_out(
             self.joints[solution],
             margin,
             self.branch(solution),
@@ -153,6 +175,7 @@ class ToldChecks:
             (self.errors[0][solution], self.errors[1][solution]),
             findings,
         )
+        return told if way is None else {**told, "approach": approach_out(self.question, way)}
 
     def codes(self, solution: int) -> frozenset[int]:
         """Return the codes of what is to be known of one solution, without the words."""
@@ -164,65 +187,77 @@ class ToldChecks:
                 found |= {finding.code for finding in said}
         if self.beyond[solution]:
             found |= {finding.code for finding in self._limits[solution]}
-        return frozenset(found - {FINE})
+        return frozenset(found.union(self._codes_on_the_way(solution)) - {FINE})
+
+    def _codes_on_the_way(self, solution: int) -> list[int]:
+        way = self._way(solution)
+        return [] if way is None else [one.code for leg in way.legs for one in leg.findings]
 
     def item(self, index: int, *, form: str, repaired: Sequence[Finding]) -> dict[str, object]:
         """Return what is answered to one target, all but its name."""
         checks, units = self.checks, self.question.units
         told = [self.solution(rank) for rank in self.told_ranks(index)]
         found, findings = self.found(index), list(repaired)
-        if found > len(told) and not (self._best_only or self._first_alone):
-            # Of the best alone nobody expects that there are no others.
-            findings += checks.findings_of(index)
+        # Of the best alone nobody expects that there are no others.
+        untold = _MORE_POSTURES if self._best_only or self._first_alone else None
+        findings += [each for each in checks.findings_of(index) if each.name != untold]
         verdict = int(checks.verdict[index])
         code = CODES[verdict]
         if not code:
             of_best = told[0]["findings"] if told else []
             assert isinstance(of_best, list)
             codes = [finding.code for finding in findings]
+            codes += self._codes_on_the_way(self.ranks[index][0]) if told else []
             code = max([*codes, *(finding["code"] for finding in of_best)], default=0)
         return {
             "ok": not CODES[verdict],
             "code": code,
             "verdict": VERDICTS[verdict],
             "proof": PROOFS[int(checks.proof[index])],
-            "reason": reason_out(self.question, checks.reason_of(index), form),
+            "reason": self.reason(index, form),
             "solutions": told,
             "families": [family_out(self.question, family) for family in checks.families_of(index)],
             "found": found,
             "findings": [finding_out(units, finding) for finding in findings],
         }
 
+    def reason(self, index: int, form: str) -> dict[str, object] | None:
+        """Return why a target cannot be reached as asked, as answered; None where it can."""
+        broken = self.broken(index)
+        if broken is not None:
+            verdict = int(self.checks.verdict[index])
+            return approach_reason_out(self.question, broken, verdict, form)
+        return reason_out(self.question, self.checks.reason_of(index), form)
 
-def solution_out(
-    joints: list[float],
-    margin: float,
-    branch: str,
-    singularity: dict[str, object] | None,
-    errors: tuple[float, float],
-    findings: list[dict[str, object]],
-) -> dict[str, object]:
-    """Return one solution as answered; joint values and errors in the user's units already."""
-    return {
-        "joints": joints,
-        "margin": margin if isfinite(margin) else None,
-        "branch": branch,
-        "singularity": singularity,
-        "position_error": errors[0],
-        "angle_error": errors[1],
-        "findings": findings,
-    }
+    def reason_say(self, index: int) -> str:
+        """Return the same in one sentence, empty where it can."""
+        broken = self.broken(index)
+        if broken is not None:
+            return approach_say(self.question.units, broken, int(self.checks.verdict[index]))
+        reason = self.checks.reason_of(index)
+        return "" if reason is None else reason_say(self.question.units, reason)
 
 
 def told_together(
-    question: Question, checks: Checks, *, best_only: bool, by_singularity: bool
+    question: Question,
+    checks: Checks,
+    *,
+    best_only: bool,
+    by_singularity: bool,
+    approached: "Approached | None" = None,
 ) -> ToldChecks:
-    """Return what was found with all solutions that may be told judged in one batch."""
+    """Return what was found with all solutions that may be told judged in one batch.
+
+    ``approached`` : the same checks with approaches, where there are some.
+    """
     if best_only and not by_singularity:
-        checks = _best_alone(checks)
+        kept = _best_alone(checks)
+        checks = _only(checks, kept)
+        if approached is not None:
+            approached = replace(approached, ways=tuple(compress(approached.ways, kept)))
     joint_values = checks.joint_values
     if not len(joint_values):
-        return ToldChecks(question, checks, None, [])
+        return ToldChecks(question, checks, None, [], approached=approached)
     motion = motion_of(question.arm, joint_values, question.tool.tool_in_flange)
     working, travel = limits_exceeded(question.arm, joint_values)
     return ToldChecks(
@@ -232,19 +267,26 @@ def told_together(
         (working | travel).tolist(),
         best_only=best_only,
         by_singularity=by_singularity,
+        approached=approached,
     )
 
 
-def _best_alone(checks: Checks) -> Checks:
-    """Return the same with one solution for each target, but all of those that exceed travel."""
+def _best_alone(checks: Checks) -> NDArray[np.bool_]:
+    """Return which solutions are told: one for each target, but all of those that exceed travel."""
     counts = np.diff(checks.offsets)
     kept = np.where(checks.verdict == OUTSIDE, counts, np.minimum(counts, 1))
     rank = np.arange(len(checks.joint_values)) - np.repeat(checks.offsets[:-1], counts)
-    told = rank < np.repeat(kept, counts)
+    told: NDArray[np.bool_] = rank < np.repeat(kept, counts)
+    return told
+
+
+def _only(checks: Checks, kept: NDArray[np.bool_]) -> Checks:
+    """Return the same with some of the solutions alone."""
+    before = np.concatenate([[0], np.cumsum(kept)])
     return replace(
         checks,
-        offsets=np.concatenate([[0], np.cumsum(kept)]),
-        **{name: getattr(checks, name)[told] for name in _OF_SOLUTIONS},
+        offsets=before[checks.offsets],
+        **{name: getattr(checks, name)[kept] for name in _OF_SOLUTIONS},
     )
 
 
@@ -253,14 +295,18 @@ _OF_SOLUTIONS = (
 )
 
 
-def told_best(question: Question, checks: Checks) -> ToldChecks:
+def told_best(
+    question: Question, checks: Checks, approached: "Approached | None" = None
+) -> ToldChecks:
     """Return what was found for one target, of which the best solution alone can be told."""
     if not len(checks.joint_values):
-        return ToldChecks(question, checks, None, [])
+        return ToldChecks(question, checks, None, [], approached=approached)
     joint_values = checks.joint_values[0].tolist()
     read = question.reader.read(joint_values)
     found = judged_reading(question, joint_values, read)
-    return ToldChecks(question, checks, found, [read.outside], first_alone=True)
+    return ToldChecks(
+        question, checks, found, [read.outside], first_alone=True, approached=approached
+    )
 
 
 def beyond_out(units: Units, finding: Finding) -> dict[str, object]:
@@ -269,60 +315,3 @@ def beyond_out(units: Units, finding: Finding) -> dict[str, object]:
     if finding.code == OUTSIDE_TRAVEL:
         told["excess"] = units.value_out(abs(finding.measure - finding.threshold), finding.unit)
     return told
-
-
-def reason_say(units: Units, reason: Reason) -> str:
-    """Return the sentence of a reason in the user's units."""
-    return reason.say.format(
-        **{
-            name: f"{units.value_out(value, reason.unit):.6g} {units.unit_out(reason.unit)}"
-            for name, value in (
-                ("shortfall", reason.shortfall),
-                ("measure", reason.measure),
-                ("threshold", reason.threshold),
-            )
-        }
-    )
-
-
-def reason_out(question: Question, reason: Reason | None, form: str) -> dict[str, object] | None:
-    """Return a reason as answered; the nearest pose in the frame asked for."""
-    if reason is None:
-        return None
-    units, nearest = question.units, reason.nearest
-    return {
-        "code": reason.code,
-        "say": reason_say(units, reason),
-        "stage": reason.stage,
-        "shortfall": units.value_out(reason.shortfall, reason.unit),
-        "unit": units.unit_out(reason.unit),
-        "nearest": None
-        if nearest is None
-        else pose_answer(in_frame(question.base_in_frame, nearest), form, units),
-    }
-
-
-def family_out(question: Question, family: Family) -> dict[str, object]:
-    """Return a family as answered."""
-    units = question.units
-    answer: dict[str, object] = {
-        "free_joints": list(family.free_joints),
-        "interval": [
-            [units.value_out(bound, family.unit) for bound in bounds] for bounds in family.interval
-        ],
-        "unit": units.unit_out(family.unit),
-        "witness": {"joints": _joints_out(question, family.witness)},
-    }
-    if family.relation is not None:
-        constant = f"{units.value_out(family.measure, family.unit):.6g}"
-        answer["relation"] = family.relation.format(
-            measure=f"{constant} {units.unit_out(family.unit)}"
-        )
-    return answer
-
-
-def _joints_out(question: Question, witness: FloatArray) -> list[float]:
-    values: list[float] = joint_values_out(
-        question.arm, question.units, np.asarray(witness)
-    ).tolist()
-    return values

@@ -3,12 +3,15 @@
 To look at an arm's geometry takes longer than to answer for a target. Left out: the answering.
 """
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import TYPE_CHECKING
 from weakref import WeakKeyDictionary, WeakValueDictionary
 
 import numpy as np
 
 from kinematics.arm import Arm
+from kinematics.errors import KinematicsError
 from kinematics.reach.targets import PROOFS, SEARCH, Target, Targets
 from kinematics.table import FloatArray
 from service.errors import UnusableValue
@@ -67,7 +70,8 @@ def method_of(reacher: "Reacher", targets: Targets) -> dict[str, object]:
     """
     known, freedoms = _methods.setdefault(reacher, {}), frozenset(targets.freedom.tolist())
     if freedoms not in known:
-        methods = reacher.methods(targets)
+        with about_the_arm():
+            methods = reacher.methods(targets)
         quick = _quick.setdefault(reacher, {})
         for freedom in freedoms:
             one = Targets.of([Target(np.eye(4), freedom)])
@@ -80,6 +84,22 @@ def method_of(reacher: "Reacher", targets: Targets) -> dict[str, object]:
             "say": "; ".join(dict.fromkeys(method.say for method in methods)),
         }
     return known[freedoms]
+
+
+@contextmanager
+def about_the_arm() -> Iterator[None]:
+    """Let what is wrong with a row of the arm lead to the arm, which may be a mere name.
+
+    Raises
+    ------
+    KinematicsError : whatever was raised.
+    """
+    try:
+        yield
+    except KinematicsError as error:
+        if error.where[:1] == ("rows",):
+            error.where = ("arm",)
+        raise
 
 
 def _refuse_unbounded(arm: Arm) -> None:

@@ -195,6 +195,7 @@ def _read(rows: list[Any], question: Question) -> ReadTargets:
         angle_tolerance=joined("angle_tolerance"),
         forms=[part.forms[0] for part in read],
         repaired={at: part.repaired[0] for at, part in enumerate(read) if 0 in part.repaired},
+        approaches={at: part.approaches[0] for at, part in enumerate(read) if 0 in part.approaches},
         refused={at: part for at, part in enumerate(parts) if isinstance(part, Detail)},
     )
 

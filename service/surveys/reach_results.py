@@ -118,7 +118,7 @@ def _doubles(_: int, columns: ReachColumns) -> bytes:
         *(np.array(column, dtype=float) for column in (columns.counts, columns.ranks)),
     ]
     table = np.column_stack([*told, columns.joints, columns.margins, columns.errors])
-    return npy.npy_bytes(table)
+    return npy.npy_bytes(table).tobytes()
 
 
 def _same(survey: Survey) -> SameInAll:

@@ -176,7 +176,9 @@ is said; the angles are of the <code>form</code>, xyz-fixed if none is said. Wit
 <code>r1 r2 r3</code> the orientation is free; <code>freedom=spin</code> frees the turn about tool
 z, <code>cone=30</code> its direction too, by so many degrees. With several solutions the one
 farthest from its travel limits is told, or with <code>near=</code> and joint values the nearest to
-them. Places for six joints; each joint more or less moves what follows by 13 characters:</p>
+them. With <code>approach=60</code> only what the tool can also come straight to counts, from so far
+back along its z, or along <code>along=0,0,-1</code> in the frame. Places for six joints; each joint
+more or less moves what follows by 13 characters:</p>
 <table>
 <tr><th>field</th><th>first character</th><th>characters</th><th>meaning</th></tr>
 {reach_places}

@@ -96,7 +96,7 @@ class PartsAnswer(Response):
 
     def __init__(
         self,
-        parts: Sequence[bytes],
+        parts: Sequence[bytes | memoryview],
         *,
         media_type: str,
         headers: Mapping[str, str] | None = None,

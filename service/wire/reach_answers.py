@@ -17,6 +17,7 @@ from service.wire.answer_models import (
 )
 from service.wire.controller_answers import InlineRefusal
 from service.wire.models import UnitsName
+from service.wire.travel_answers import AnsweredApproach
 
 
 class Reason(Open):
@@ -39,7 +40,8 @@ class SolutionFinding(Finding):
 class Solution(Open):
     """Joint values that bring the tool to the target, and how well.
 
-    `margin` is the smallest share of travel left, null without travel limits.
+    `margin` is the smallest share of travel left, null without travel limits. `approach` stands
+    where one was asked for and looked at: beyond the first that succeeds with `solutions` `all`.
     """
 
     joints: list[float]
@@ -49,6 +51,7 @@ class Solution(Open):
     position_error: float
     angle_error: float
     findings: list[SolutionFinding]
+    approach: AnsweredApproach | None = None
 
 
 class Witness(Open):

@@ -1,9 +1,10 @@
 """Part locations as CSV (RFC 4180): a header, then one line for each target.
 
 Columns are told by the header, in any order: ``x y z``, and if wanted ``name``, ``r1 r2 r3``
-(angles of the form asked for) and ``freedom`` (``none``, ``spin``, ``orientation``, ``cone:30``).
-Lines whose ``r1 r2 r3`` are empty are positions. A line of another width refuses all; a cell that
-cannot be used spoils its own line only. Left out: JSON (reach_targets.py), lines of answers
+(angles of the form asked for), ``freedom`` (``none``, ``spin``, ``orientation``, ``cone:30``) and
+``approach`` (how far back along tool z the tool is to come straight from). Lines whose
+``r1 r2 r3`` are empty are positions. A line of another width refuses all; a cell that cannot be
+used spoils its own line only. Left out: JSON (reach_targets.py), lines of answers
 (reach_lines.py).
 """
 
@@ -16,7 +17,6 @@ from typing import Any
 import numpy as np
 
 from kinematics.errors import KinematicsError
-from kinematics.findings import Finding
 from kinematics.known_names import way_out_of_unknown
 from kinematics.pose_batches import poses_as_given
 from kinematics.reach.targets import NONE, ORIENTATION
@@ -30,18 +30,28 @@ from service.wire.query import number
 from service.wire.reach_gathered import (
     FREEDOM_WORDS,
     Gathered,
+    Left,
+    OneTarget,
     ReadTargets,
     refuse_same_names,
     refuse_too_many,
 )
-from service.wire.reach_request import LONGEST_NAME, MOST_TARGETS, Cone, ReachTarget
-from service.wire.reach_targets import Left, one_target
+from service.wire.reach_request import (
+    LONGEST_NAME,
+    MOST_TARGETS,
+    Approach,
+    Cone,
+    ReachTarget,
+)
+from service.wire.reach_targets import one_target
 
 POSITION = ("x", "y", "z")
 ANGLES = ("r1", "r2", "r3")
-FREEDOM = "freedom"
-COLUMNS = (NAME, *POSITION, *ANGLES, FREEDOM)
+FREEDOM, APPROACH = "freedom", "approach"
+COLUMNS = (NAME, *POSITION, *ANGLES, FREEDOM, APPROACH)
 _CONE = "cone:"
+_COLUMN_OF = {"position": POSITION[0], "cone": FREEDOM, "distance": APPROACH}
+"""Where what a body says in a field of its own stands in a table."""
 
 
 @dataclass(frozen=True)
@@ -93,12 +103,16 @@ def read_part_locations(
         usual = Left(NONE if plain.shape[1] > len(POSITION) else ORIENTATION)
         for place in range(count):
             gathered.leave(place, *usual)
-        careful = [place for place in range(count) if lines.cell(FREEDOM, place)]
+        careful = [
+            place
+            for place in range(count)
+            if lines.cell(FREEDOM, place) or lines.cell(APPROACH, place)
+        ]
     else:
         careful = list(range(count))
     for place in careful:
         try:
-            gathered.take(place, *_one(lines, place, form, units))
+            gathered.take(place, _one(lines, place, form, units))
         except (ServiceError, KinematicsError) as error:
             gathered.refused[place] = _at_column(error, lines.numbers[place])
     return gathered.read(names)
@@ -158,8 +172,8 @@ def _check_header(header: Sequence[str]) -> None:
             raise MissingField(
                 f'the column "{name}" is missing',
                 where=(1,),
-                way_out=f"begin with the line {','.join(COLUMNS)}; name, freedom, and r1 r2 r3 "
-                "together, may be left out",
+                way_out=f"begin with the line {','.join(COLUMNS)}; name, freedom, approach, and "
+                "r1 r2 r3 together, may be left out",
             )
 
 
@@ -205,18 +219,33 @@ def _poses_of(
     )
 
 
-def _one(
-    lines: _Lines, place: int, form: str, units: Units
-) -> tuple[FloatArray, str, Left, tuple[Finding, ...]]:
+def _one(lines: _Lines, place: int, form: str, units: Units) -> OneTarget:
     """Return one target; ``where`` of what is wrong with it ends with a column, or nearly."""
     position = [number(lines.cell(name, place), name) for name in POSITION]
     angles = [lines.cell(name, place) for name in ANGLES]
-    freedom = _freedom(lines.cell(FREEDOM, place))
+    left_open: dict[str, Any] = {
+        "freedom": _freedom(lines.cell(FREEDOM, place)),
+        "approach": _approach(lines.cell(APPROACH, place)),
+    }
     if not any(angles):
-        return one_target(ReachTarget(position=position, freedom=freedom), units)
+        return one_target(ReachTarget(position=position, **left_open), units)
     values = [number(text, name) for text, name in zip(angles, ANGLES, strict=True)]
     given = Pose(position=position, orientation=Orientation(form=form, values=values))
-    return one_target(ReachTarget(pose=given, freedom=freedom), units)
+    return one_target(ReachTarget(pose=given, **left_open), units)
+
+
+def _approach(said: str) -> Approach | None:
+    if not said:
+        return None
+    distance = number(said, APPROACH)
+    if not distance > 0:
+        raise UnusableValue(
+            "an approach needs a length",
+            where=(APPROACH,),
+            value=said,
+            way_out="give a length above 0, or leave the cell empty",
+        )
+    return Approach(distance=distance)
 
 
 def _freedom(said: str) -> Any:
@@ -245,5 +274,7 @@ def _at_column(error: ServiceError | KinematicsError, line: int) -> Detail:
     if isinstance(column, int):
         column = (ANGLES if "values" in detail.where else POSITION)[column]
     elif column not in COLUMNS:
-        column = {"position": POSITION[0], "cone": FREEDOM}.get(column, ANGLES[0])
+        column = {"position": POSITION[0], "cone": FREEDOM, "distance": APPROACH}.get(
+            column, ANGLES[0]
+        )
     return replace(detail, where=(line, column), location="body")

@@ -6,6 +6,7 @@ Left out: reading them (reach_targets.py, reach_csv.py).
 from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import NamedTuple, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,17 +15,38 @@ from kinematics.findings import Finding
 from kinematics.reach.targets import CONE, FREEDOMS
 from kinematics.table import FloatArray
 from kinematics.tolerances import TARGET_ANGLE, TARGET_POSITION
+from kinematics.travel.moves import Approach
 from service.details import Detail
 from service.errors import ServiceError, TooLarge, UnusableValue
 from service.wire.poses import Where
 from service.wire.reach_request import MOST_TARGETS
 
+Noted = TypeVar("Noted")
 FIELD = "targets"
 USUAL_FORM = "quaternion-wxyz"
 FREEDOM_WORDS: Mapping[str, int] = {
     word: number for number, word in enumerate(FREEDOMS) if number != CONE
 }
 """Freedoms that are said in one word."""
+
+
+class Left(NamedTuple):
+    """What a target leaves open, and how far off an arm may be; SI."""
+
+    freedom: int
+    cone: float = 0.0
+    position_tolerance: float = TARGET_POSITION
+    angle_tolerance: float = TARGET_ANGLE
+
+
+class OneTarget(NamedTuple):
+    """One target: tool in frame (4, 4), the form it came in, what is open, what was repaired."""
+
+    tool_in_frame: FloatArray
+    form: str
+    left: Left
+    repaired: tuple[Finding, ...] = ()
+    approach: Approach | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -39,6 +61,7 @@ class ReadTargets:
     freedom, cone, position_tolerance, angle_tolerance : (usable,), as in ``Targets``.
     forms : of the orientations as they came, (usable,).
     repaired : what was mended, by index among the usable.
+    approaches : their directions in the frame, by index among the usable.
     refused : what is wrong with each of the others, by index in the request.
     """
 
@@ -51,6 +74,7 @@ class ReadTargets:
     angle_tolerance: FloatArray
     forms: Sequence[str]
     repaired: Mapping[int, tuple[Finding, ...]]
+    approaches: Mapping[int, Approach]
     refused: Mapping[int, Detail]
 
     @property
@@ -74,6 +98,7 @@ class Gathered:
         self._numbers = np.tile([0.0, TARGET_POSITION, TARGET_ANGLE], (count, 1))
         self._forms = [USUAL_FORM] * count
         self._repaired: dict[int, tuple[Finding, ...]] = {}
+        self._approaches: dict[int, Approach] = {}
 
     def leave(self, place: int, freedom: int, cone: float, position: float, angle: float) -> None:
         """Note what one target leaves open, and its tolerances."""
@@ -86,19 +111,14 @@ class Gathered:
         for place in places:
             self._forms[place] = form
 
-    def take(
-        self,
-        place: int,
-        tool_in_frame: FloatArray,
-        form: str,
-        left: tuple[int, float, float, float],
-        repaired: tuple[Finding, ...],
-    ) -> None:
+    def take(self, place: int, target: OneTarget) -> None:
         """Note all of one target."""
-        self.leave(place, *left)
-        self.place([place], tool_in_frame[None], form)
-        if repaired:
-            self._repaired[place] = repaired
+        self.leave(place, *target.left)
+        self.place([place], target.tool_in_frame[None], target.form)
+        if target.repaired:
+            self._repaired[place] = target.repaired
+        if target.approach is not None:
+            self._approaches[place] = target.approach
 
     def read(self, names: Sequence[str | None]) -> ReadTargets:
         """Return what has been gathered.
@@ -123,13 +143,14 @@ class Gathered:
             position_tolerance=position,
             angle_tolerance=angle,
             forms=[self._forms[place] for place in usable],
-            repaired={
-                index: self._repaired[place]
-                for index, place in enumerate(usable)
-                if place in self._repaired
-            },
+            repaired=_by_index(self._repaired, usable),
+            approaches=_by_index(self._approaches, usable),
             refused=self.refused,
         )
+
+
+def _by_index(noted: Mapping[int, Noted], usable: Sequence[int]) -> dict[int, Noted]:
+    return {index: noted[place] for index, place in enumerate(usable) if place in noted}
 
 
 def refuse_too_many(count: int) -> None:

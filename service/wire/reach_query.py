@@ -12,6 +12,7 @@ from kinematics.reach.targets import CONE, FREEDOMS, NONE, ORIENTATION
 from service.errors import MissingField, UnusableValue
 from service.web.document import parameter
 from service.wire import controller
+from service.wire.approaches import TOOL_Z
 from service.wire.controller import FLAT_FORM, scaled_number, single_question
 from service.wire.query import plain_numbers
 from service.wire.question_parameters import (
@@ -19,13 +20,14 @@ from service.wire.question_parameters import (
     QUESTION_PARAMETERS,
     one_of,
 )
+from service.wire.reach_request import Approach
 from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleQuestion
 
 POSITION = ("x", "y", "z")
 ANGLES = ("r1", "r2", "r3")
 _NUMBERS = (*POSITION, *ANGLES)
 _OF_POSES = frozenset({"q", *(f"q{joint}" for joint in range(1, 33))})
-_OF_TARGETS = frozenset({*_NUMBERS, "freedom", "cone", "near"})
+_OF_TARGETS = frozenset({*_NUMBERS, "freedom", "cone", "near", "approach", "along"})
 PARAMETERS = (controller.PARAMETERS - _OF_POSES) | _OF_TARGETS
 TABLE_PARAMETERS = frozenset(
     {
@@ -64,6 +66,17 @@ REACH_PARAMETERS: tuple[dict[str, Any], ...] = (
     parameter(
         "cone", "Half-angle of a cone that tool z may leave its direction by, spin free.", _NUMBER
     ),
+    parameter(
+        "approach",
+        "How far back along `along` the tool is to come straight to the target from; a target "
+        "that it cannot come to so is a no.",
+        _NUMBER,
+    ),
+    parameter(
+        "along",
+        "Direction of the approach: `tool-z`, or three numbers with commas, in the frame.",
+        _TEXT,
+    ),
     _NEAR,
     *(known for name, known in _SHARED.items() if name in PARAMETERS),
 )
@@ -82,6 +95,12 @@ TABLE_QUERY_PARAMETERS: tuple[dict[str, Any], ...] = (
 """Beside a table of part locations; a JSON body says all but ``format`` and ``tag`` itself."""
 
 
+TRAVEL_PARAMETERS = tuple(
+    known for known in TABLE_QUERY_PARAMETERS if known["name"] in BODY_PARAMETERS
+)
+"""Beside a body about travels, which says all else itself."""
+
+
 @dataclass(frozen=True)
 class ReachAsked:
     """What a controller asks: whether, and with which joint values, the tool gets to a target.
@@ -91,7 +110,7 @@ class ReachAsked:
     single : all but the target.
     position, angles : three numbers each, divided by the scale; no angles for a mere position.
     freedom : one of the numbers of ``FREEDOMS``; cone : half-angle as it was given.
-    near : joint values, or None.
+    near : joint values, or None. approach : what is to be come along, or None.
     """
 
     single: SingleQuestion
@@ -100,6 +119,7 @@ class ReachAsked:
     freedom: int
     cone: float
     near: JointsAsked | None
+    approach: Approach | None = None
 
 
 def reach_asked(arm: str, parameters: Mapping[str, str]) -> ReachAsked:
@@ -126,7 +146,8 @@ def reach_asked(arm: str, parameters: Mapping[str, str]) -> ReachAsked:
         values = [scaled_number(text, "near", scale) for text in texts]
         near = JointsAsked(values, ["near"] * len(values))
     freedom, cone = _freedom(parameters, ORIENTATION if angles is None else NONE, scale)
-    return ReachAsked(single, position, angles, freedom, cone, near)
+    approach = _approach(parameters, scale)
+    return ReachAsked(single, position, angles, freedom, cone, near, approach)
 
 
 def _numbers_of(
@@ -164,6 +185,31 @@ def _freedom(parameters: Mapping[str, str], usual: int, scale: int | None) -> tu
             "cone", cone, f"freedom={said} leaves no cone", "leave cone out, or say freedom=cone"
         )
     return freedom, 0.0
+
+
+def _approach(parameters: Mapping[str, str], scale: int | None) -> Approach | None:
+    if "approach" not in parameters:
+        if "along" in parameters:
+            raise _missing("approach", "say how far back along it: approach=100")
+        return None
+    distance = scaled_number(parameters["approach"], "approach", scale)
+    if not distance > 0:
+        raise _unusable(
+            "approach",
+            parameters["approach"],
+            "an approach needs a length",
+            "give a length above 0, or leave approach out",
+        )
+    said = parameters.get("along", TOOL_Z)
+    if said == TOOL_Z:
+        return Approach(distance=distance)
+    texts = said.split(",")
+    along = [scaled_number(text, "along", scale) for text in texts] if len(texts) == 3 else []
+    if not any(along):
+        raise _unusable(
+            "along", said, "this is no direction", "give three numbers: along=0,0,-1, or tool-z"
+        )
+    return Approach(distance=distance, along=along)
 
 
 def _missing(name: str, way_out: str) -> MissingField:

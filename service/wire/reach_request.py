@@ -42,11 +42,44 @@ Freedom = Annotated[
 ]
 
 
+def _along_kind(value: object) -> str:
+    return "list" if isinstance(value, list) else "str"
+
+
+Along = Annotated[
+    Annotated[Literal["tool-z"], Tag("str")] | Annotated[Triple, Tag("list")],
+    Discriminator(_along_kind),
+    Field(description="z of the tool as it stands at the target, or a direction in the frame"),
+]
+
+
+class Approach(Strict):
+    """The tool starts `distance` back along a direction and comes straight to the target.
+
+    `speed` is the tool point's, a length a second: with it joint speeds are told.
+    """
+
+    distance: Positive
+    along: Along = "tool-z"
+    speed: Positive | None = None
+
+
+class Retract(Strict):
+    """The tool goes straight away from the target until it is `distance` back along a direction.
+
+    That of the approach if not said, `tool-z` where there is none.
+    """
+
+    distance: Positive
+    along: Along | None = None
+    speed: Positive | None = None
+
+
 class ReachTarget(Strict):
     """A place for the tool: a pose, or a position whose orientation is free.
 
     `freedom` says what a pose leaves open: `none`, `spin` (the turn about tool z), `orientation`,
-    or a cone. `approach` is not in this version.
+    or a cone. With an `approach` a posture counts that the tool can also come straight to.
     """
 
     name: Annotated[str, Field(max_length=LONGEST_NAME)] | None = None
@@ -54,7 +87,7 @@ class ReachTarget(Strict):
     position: Triple | None = None
     freedom: Freedom | None = None
     tolerance: Tolerance | None = None
-    approach: Annotated[Any, Field(description="not available in this version")] = None
+    approach: Approach | None = None
 
 
 class ReachRequest(Strict):

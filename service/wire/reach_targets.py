@@ -5,25 +5,21 @@ twice, is a mistake of the whole request. Left out: CSV (reach_csv.py), and what
 """
 
 from collections.abc import Sequence
-from dataclasses import replace
 from math import isfinite
 from typing import Any, NamedTuple
 
 import numpy as np
-from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError
-from kinematics.findings import Finding
 from kinematics.pose_batches import poses_as_given
 from kinematics.reach.targets import CONE, NONE, ORIENTATION
 from kinematics.table import FloatArray
 from kinematics.tolerances import LARGEST_CONE, LARGEST_MAGNITUDE, TARGET_ANGLE, TARGET_POSITION
 from kinematics.transforms import checked_position, pose
 from service.convert import Units
-from service.details import Detail, as_given
-from service.errors import MissingField, NotAvailable, ServiceError, UnknownField, UnusableValue
-from service.problems import KINDS
-from service.validation import details_of
+from service.errors import MissingField, ServiceError, UnusableValue
+from service.wire.approaches import read_approach
+from service.wire.one_by_one import read_one_by_one
 from service.wire.plain_relations import WHOLE, OfOneForm, numbers_of, orientations_in
 from service.wire.poses import read_pose
 from service.wire.reach_gathered import (
@@ -31,6 +27,8 @@ from service.wire.reach_gathered import (
     FREEDOM_WORDS,
     USUAL_FORM,
     Gathered,
+    Left,
+    OneTarget,
     ReadTargets,
     refuse_same_names,
     refuse_too_many,
@@ -41,15 +39,6 @@ _PLACE = "place"
 """In place of a form, for a target that is a position and no pose."""
 
 _FIELDS = frozenset({"name", "pose", "position", "freedom", "tolerance"})
-
-
-class Left(NamedTuple):
-    """What a target leaves open, and how far off an arm may be; SI."""
-
-    freedom: int
-    cone: float = 0.0
-    position_tolerance: float = TARGET_POSITION
-    angle_tolerance: float = TARGET_ANGLE
 
 
 class _Plain(NamedTuple):
@@ -68,7 +57,6 @@ def read_targets(given: object, units: Units) -> ReadTargets:
     ------
     UnusableValue, TooLarge : no list, none in it or too many, a name twice.
     UnknownField : one of them has a field that is not known.
-    NotAvailable : one of them asks for what is not in this version.
     ServiceError : none of them can be used.
     """
     rows = _listed(given)
@@ -170,50 +158,23 @@ def _poses_of(form: str, group: OfOneForm, units: Units) -> FloatArray | None:
 
 def _read_odd(rows: Sequence[object], odd: Sequence[int], units: Units, gathered: Gathered) -> None:
     """Read what is odd one by one, with care for what is wrong with each."""
-    unknown: list[Detail] = []
-    body = {FIELD: rows}
-    for place in odd:
-        details: Sequence[Detail]
-        try:
-            target = ReachTarget.model_validate(rows[place])
-            gathered.take(place, *one_target(target, units))
-            continue
-        except ValidationError as error:
-            details = details_of(error, body=rows[place])
-        except NotAvailable as error:
-            error.where = (FIELD, place, *error.where)
-            raise
-        except ServiceError as error:
-            details = error.details()
-        except KinematicsError as error:
-            at = (error.code, error.say, error.where, "body", error.value, error.way_out)
-            details = [Detail(*at)]  # type: ignore[arg-type]
-        details = [replace(detail, where=(FIELD, place, *detail.where)) for detail in details]
-        unknown += [detail for detail in details if detail.code == UnknownField.code]
-        worst = max(details, key=lambda detail: KINDS[detail.code].number)
-        gathered.refused[place] = as_given(worst, body)
-    if unknown:
-        raise UnknownField(unknown[0].say, errors=unknown)
+
+    def read(row: object) -> OneTarget:
+        return one_target(ReachTarget.model_validate(row), units)
+
+    found, refused = read_one_by_one(FIELD, rows, odd, read)
+    for place, target in found.items():
+        gathered.take(place, target)
+    gathered.refused.update(refused)
 
 
-def one_target(
-    target: ReachTarget, units: Units
-) -> tuple[FloatArray, str, Left, tuple[Finding, ...]]:
-    """Return tool in frame (4, 4), the form it came in, what it leaves open, what was repaired.
+def one_target(target: ReachTarget, units: Units) -> OneTarget:
+    """Return what one target says.
 
     Raises
     ------
-    NotAvailable : an approach.
     ServiceError, KinematicsError : it cannot be used; ``where`` is relative to the target.
     """
-    if target.approach is not None:
-        raise NotAvailable(
-            "approaches are not in this version",
-            where=("approach",),
-            value=target.approach,
-            way_out="leave it out; ask for the start of the approach as a target of its own",
-            status=422,
-        )
     if (target.pose is None) == (target.position is None):
         both = target.pose is not None
         refusal, say = (
@@ -224,16 +185,19 @@ def one_target(
         way_out = "give one of them: a pose, or a position whose orientation is free"
         raise refusal(say, where=("position",) if both else ("pose",), way_out=way_out)
     left = _left_of(target, units)
+    said = target.approach
+    approach = None if said is None else read_approach(said, units, ("approach",))
     if target.position is not None:
         try:
             position = checked_position(units.length_in(np.array(target.position)).tolist())
         except KinematicsError as error:
             raise error.below("position") from None
-        return pose(np.eye(3), position), USUAL_FORM, left, ()
+        return OneTarget(pose(np.eye(3), position), USUAL_FORM, left, (), approach)
     assert target.pose is not None
     tool_in_frame, repaired = read_pose(target.pose, units, ("pose",))
     orientation = target.pose.orientation
-    return tool_in_frame, orientation.form if orientation else USUAL_FORM, left, repaired
+    form = orientation.form if orientation else USUAL_FORM
+    return OneTarget(tool_in_frame, form, left, repaired, approach)
 
 
 def _left_of(target: ReachTarget, units: Units) -> Left:

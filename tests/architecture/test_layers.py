@@ -104,6 +104,11 @@ LAYERS = (
     # Six joints with a special triple: taken apart, closed, brought onto their targets.
     ("inverse.found", "inverse.landing", "inverse.measured", "inverse.polish", "inverse.twins"),
     ("inverse.regional_arm",),
+    # Small matrices in compiled code, lines as fifteen numbers, six equations in three joints.
+    ("inverse.small_matrices", "inverse.line_forms"),
+    ("inverse.elimination_sides", "inverse.elimination_companion"),
+    ("inverse.elimination_pencil", "inverse.elimination_postures"),
+    ("inverse.elimination_orders",),
     # Downhill to a target, and where to begin.
     ("inverse.descent_arrays", "inverse.descent", "inverse.starts"),
     (
@@ -114,9 +119,15 @@ LAYERS = (
         "inverse.solution_table",
         "inverse.special_triple",
     ),
+    # Six joints of which some slide, and tables that are nearly special.
+    ("inverse.candidates", "inverse.slide_rings", "inverse.slide_equation"),
+    ("inverse.elimination", "inverse.two_slides", "inverse.three_slides"),
+    ("inverse.measured_tables", "inverse.six_joints"),
     # Whatever has no closed form: many starts. Arms that turn about one direction.
     ("inverse.attempts",),
     ("inverse.descent_arms", "inverse.iterative"),
+    # Boxes of joint values that miss a target.
+    ("inverse.box_tests", "inverse.boxes", "inverse.cut_chain", "inverse.branch_and_bound"),
     ("inverse.planar", "inverse.level_wrist", "inverse.four_axes_postures", "inverse.settling"),
     ("inverse.four_axes_arms", "inverse.four_axes"),
     # Joint motions that leave the tool where it is.
@@ -124,14 +135,21 @@ LAYERS = (
     ("inverse.families",),
     # Which method answers for which arm, and joint values from motions.
     ("inverse.drive", "inverse.lost_rank", "inverse.several", "inverse.at_once"),
+    # One joint held at many values, the other six solved; cones met by search.
+    ("inverse.held_values", "inverse.locked", "inverse.redundant_paths", "inverse.cone_search"),
+    ("inverse.held_joint", "inverse.redundant_stretches"),
+    ("inverse.redundant",),
+    ("inverse.redundant_spans", "inverse.upright_spins"),
     ("inverse.compromises",),
-    ("inverse.missing_joint",),
+    ("inverse.missing_joint", "inverse.last_turn"),
+    ("inverse.few_joints",),
     ("inverse.solve",),
     # Verdicts on targets: what is asked and answered, the parts of an arm, and how they are made.
-    ("reach", "reach.targets", "reach.arm_parts", "reach.aligned_joints"),
-    ("reach.branches", "reach.bounds", "reach.family_members"),
+    ("reach", "reach.targets", "reach.arm_parts", "reach.aligned_joints", "reach.ways"),
+    ("reach.branches", "reach.bounds", "reach.durations", "reach.family_members"),
+    ("reach.redundant_families",),
     ("reach.verdicts",),
-    ("reach.near_enough", "reach.at_limits"),
+    ("reach.near_enough", "reach.at_limits", "reach.last_proof", "reach.listing", "reach.misses"),
     ("reach.reasons", "reach.one_target"),
     ("reach.answers",),
     ("reach.spins",),
@@ -141,9 +159,20 @@ LAYERS = (
     ("reach.travel_region",),
     ("reach.samples",),
     ("reach.sample_summary",),
-    ("envelope", "envelope.pair_region"),
+    ("envelope", "envelope.tolerances"),
+    ("envelope.pair_region",),
     ("envelope.measures",),
     ("envelope.section",),
+    # Moves from place to place: the question and answer, lines and postures held against them, one
+    # leg followed, what is told of it, whole courses.
+    ("travel", "travel.above_zero", "travel.tolerances", "travel.moves", "travel.small_systems"),
+    ("travel.lines", "travel.on_line", "travel.folds"),
+    ("travel.tracking",),
+    ("travel.extremes", "travel.trails"),
+    ("travel.arm_on_lines",),
+    ("travel.straight", "travel.in_joints", "travel.told_legs", "travel.breaks"),
+    ("travel.courses",),
+    ("travel.approaches", "travel.first_courses"),
     ("posture_reader", "warm_up"),
 )
 

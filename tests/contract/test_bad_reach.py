@@ -8,7 +8,7 @@ from typing import Any
 import httpx
 import pytest
 
-from service.bulk import reach_checks
+from service.bulk import limited
 from service.settings import Settings
 from tests.contract.refusals import AT_ORIGIN, arm, only_entry, refusal, sent
 
@@ -64,8 +64,20 @@ BODIES: list[tuple[dict[str, Any], str, str]] = [
     (asked(targets=[{"name": "a", **HERE}, {"name": "a", **HERE}]),
      "unusable-value", "/targets/1/name"),
     (asked(targets=[HERE, {**HERE, "colour": "red"}]), "unknown-field", "/targets/1/colour"),
-    (asked(targets=[{**POSE, "approach": {"distance": 9, "along": "tool-z"}}]),
-     "not-available", "/targets/0/approach"),
+    (asked(targets=[{**POSE, "approach": {"distance": 0, "along": "tool-z"}}]),
+     "unusable-value", "/targets/0/approach/distance"),
+    (asked(targets=[{**POSE, "approach": {"distance": 9, "along": [0, 0, 0]}}]),
+     "unusable-value", "/targets/0/approach/along"),
+    (asked(targets=[{**POSE, "approach": {"distance": 9, "along": "tool-x"}}]),
+     "unusable-value", "/targets/0/approach/along"),
+    (asked(targets=[{**POSE, "approach": {"distance": 9, "speed": 0}}]),
+     "unusable-value", "/targets/0/approach/speed"),
+    (asked(targets=[{**POSE, "approach": {"distance": 1e300}}]),
+     "unusable-value", "/targets/0/approach/distance"),
+    (asked(targets=[{**POSE, "approach": {"along": "tool-z"}}]),
+     "missing-field", "/targets/0/approach/distance"),
+    (asked(targets=[{**POSE, "approach": {"distance": 9, "dwell": 1}}]),
+     "unknown-field", "/targets/0/approach/dwell"),
     (asked(targets=[HERE] * 10_001), "too-large", "/targets"),
     (asked(arm=arm(rows=[])), "unusable-value", "/arm"),
 ]  # fmt: skip
@@ -151,7 +163,7 @@ async def test_work_that_was_not_foreseen_ends(
 ) -> None:
     body = asked(targets=[HERE] * 100)
     assert (await sent(client, CHECKS, body)).status_code == 200
-    monkeypatch.setattr(reach_checks, "LONGEST_S", 0.0)
+    monkeypatch.setattr(limited, "LONGEST_S", 0.0)
     entry = only_entry(await sent(client, CHECKS, body), "too-large", 422)
     assert entry["pointer"] == "/targets"
     assert "fewer than" in entry["way_out"]
@@ -195,6 +207,10 @@ REACH = "/v1/arms/housing-loader/reach"
         ("x=1&y=2&z=3&q=1", "unknown-field", "/q"),
         ("x=1&y=2&z=3&x=1", "unusable-value", "/x"),
         ("x=1&y=2&z=3&solutions=all", "unknown-field", "/solutions"),
+        ("x=1&y=2&z=3&approach=0", "unusable-value", "/approach"),
+        ("x=1&y=2&z=3&approach=1e300", "unusable-value", "/approach"),
+        ("x=1&y=2&z=3&along=0,0,1", "missing-field", "/approach"),
+        ("x=1&y=2&z=3&approach=9&along=0,0,0", "unusable-value", "/along"),
     ],
 )
 async def test_a_bad_query(client: httpx.AsyncClient, query: str, code: str, pointer: str) -> None:

@@ -140,7 +140,7 @@ async def test_examples_are_there_and_fit_their_schemas(document: Document) -> N
         computes = path.endswith(("/pose", "/jacobian", "/relation", "/reach"))
         computes |= path.startswith("/v1/rotations")
         asked_by_body = ("/v1/poses", "/v1/jacobians", "/v1/tables/conversions", "/v1/frames")
-        computes |= path == "/v1/reach/checks"
+        computes |= path in ("/v1/reach/checks", "/v1/reach/travels")
         computes |= method == "post" and path in asked_by_body
         if computes and method != "head":
             assert any(content.get("examples") for content in contents_of(operation)), path

@@ -26,8 +26,9 @@ pytestmark = pytest.mark.anyio
 COUNTS = {
     "frames": 5,
     "relation": 5,
-    "reach": 9,
-    "reach-checks": 9,
+    "reach": 11,
+    "reach-checks": 10,
+    "reach-travels": 6,
     "reach-samples": 3,
     "jacobian": 4,
     "jacobians": 4,

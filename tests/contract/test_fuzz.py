@@ -143,8 +143,8 @@ DRAWN = [
 
 
 def test_what_can_be_asked_wrongly_is_all_here(schema: Any) -> None:
-    assert len(OPERATIONS) == 48
-    assert len(WRONGLY_ASKED) == 32
+    assert len(OPERATIONS) == 49
+    assert len(WRONGLY_ASKED) == 33
     for method, path in OPERATIONS:
         operation = schema[path][method]
         assert bool(operation.query or operation.body) == ((method, path) in WRONGLY_ASKED)
@@ -275,12 +275,18 @@ def test_postures_at_the_edges(schema: Any, path: str) -> None:
     assert statuses.count(200) >= EXAMPLES
 
 
+LENGTHS = st.sampled_from([1e-3, 1, 50, 1e4, 1e9])
+APPROACHES = st.fixed_dictionaries(
+    {"distance": LENGTHS},
+    optional={"along": st.one_of(st.just("tool-z"), vectors(3)), "speed": LENGTHS},
+)
 TARGETS = st.one_of(
     st.fixed_dictionaries(
         {"pose": POSES},
         optional={
             "freedom": st.sampled_from(["none", "spin", "orientation", {"cone": 20}]),
             "tolerance": st.fixed_dictionaries({}, optional={"position": st.just(0.5)}),
+            "approach": APPROACHES,
         },
     ),
     st.fixed_dictionaries({"position": vectors(3, BEYOND)}),
@@ -307,7 +313,7 @@ def test_targets_at_the_edges(schema: Any) -> None:
     statuses: list[int] = []
 
     @seed(20260104)
-    @examples(6 * EXAMPLES)
+    @examples(8 * EXAMPLES)
     @given(body=reaches())
     def hold(body: dict[str, Any]) -> None:
         case = operation.Case(body=body, media_type="application/json")
@@ -316,6 +322,56 @@ def test_targets_at_the_edges(schema: Any) -> None:
     hold()
     assert set(statuses) <= {200, 422}
     # Most arms drawn are refused; what else is wrong with targets is met with drawn requests.
+    assert statuses.count(200) >= 10
+
+
+@st.composite
+def ways(draw: st.DrawFn) -> dict[str, Any]:
+    """Draw a question about travels that is right in shape and count, with values at the edges."""
+    arm = draw(ARMS)
+    count = sum(not row.get("passive", False) for row in arm["rows"])
+    at = st.fixed_dictionaries({"joints": vectors(count, BEYOND)})
+    # Joint values first: most poses drawn are out of reach, and a travel then has no way.
+    places = st.one_of(at, at, st.fixed_dictionaries({"pose": POSES}))
+    leg = st.fixed_dictionaries(
+        {"end": places},
+        optional={
+            "move": st.sampled_from(["straight", "joints"]),
+            "speed": LENGTHS,
+            "turn_speed": LENGTHS,
+        },
+    )
+    travel = st.one_of(
+        st.fixed_dictionaries({"start": at, "legs": st.lists(leg, min_size=1, max_size=3)}),
+        st.fixed_dictionaries(
+            {"target": st.fixed_dictionaries({"pose": POSES}), "approach": APPROACHES},
+            optional={"retract": APPROACHES},
+        ),
+    )
+    optional: dict[str, st.SearchStrategy[Any]] = {
+        "frame": st.sampled_from(["base", "world", *arm.get("frames", ())]),
+        "units": UNITS,
+        "solutions": st.sampled_from(["best", "all"]),
+        "points": st.sampled_from([1, 2, 5]),
+        "near": vectors(count),
+    }
+    asked = draw(st.fixed_dictionaries({}, optional=optional))
+    return {"arm": arm, "travels": draw(st.lists(travel, min_size=1, max_size=2)), **asked}
+
+
+def test_travels_at_the_edges(schema: Any) -> None:
+    operation = schema["/v1/reach/travels"]["POST"]
+    statuses: list[int] = []
+
+    @seed(20260105)
+    @examples(8 * EXAMPLES)
+    @given(body=ways())
+    def hold(body: dict[str, Any]) -> None:
+        case = operation.Case(body=body, media_type="application/json")
+        statuses.append(held(case).status_code)
+
+    hold()
+    assert set(statuses) <= {200, 422}
     assert statuses.count(200) >= 10
 
 

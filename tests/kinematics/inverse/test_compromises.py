@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 from scipy.optimize import least_squares
 
-from kinematics.inverse.compromises import compromised, compromises
+from kinematics.inverse.compromises import compromised, compromises, each_row
 from kinematics.inverse.found import Found, none_found
 from kinematics.inverse.landing import land_all
 from kinematics.inverse.measured import POSE, errors_of
@@ -46,7 +46,7 @@ def test_they_miss_no_more_than_what_scipy_finds() -> None:
     targets = np.array([off_by(random, pose, 0.5) for pose in poses_of(screws, motions)])
     begun = motions + random.normal(scale=1e-3, size=motions.shape)
     each = np.tile(TOLERANCES, (20, 1))
-    led = compromises(screws, np.eye(5), begun, targets, each, POSE)
+    led = compromises(screws, each_row(5), begun, targets, each, POSE)
     for posture, target, start in zip(led, targets, begun, strict=True):
 
         def misses(q: np.ndarray, target: np.ndarray = target) -> np.ndarray:
@@ -72,7 +72,7 @@ def test_what_is_off_by_less_than_tolerance_is_found_and_once() -> None:
         position_error=np.ones(3),
         angle_error=np.ones(3),
     )
-    led = compromised(found, screws, np.eye(5), target, TOLERANCES[None], POSE)
+    led = compromised(found, screws, each_row(5), target, TOLERANCES[None], POSE)
     assert len(led.motions) == 1
     assert led.position_error[0] < TOLERANCES[0]
     assert led.angle_error[0] < TOLERANCES[1]

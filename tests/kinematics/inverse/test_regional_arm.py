@@ -172,3 +172,18 @@ def test_no_targets() -> None:
     found = solver_of(*PLANAR).solve(np.empty((0, 4, 4)))
     assert found.motions.shape == (0, 2)
     assert len(found.open) == 0
+
+
+def test_one_joint_gets_to_its_places_however_far_it_slides() -> None:
+    """A slide of metres under a tool of a millimetre: thousands of times the arm's length."""
+    random = fresh()
+    tool = np.eye(4)
+    tool[0, 3] = 1e-3
+    for row in (prismatic(alpha=0.7), revolute(alpha=0.7, a=0.4)):
+        arm = arm_of(row, convention="modified" if row.joint == "prismatic" else "standard")
+        solver = regional_arm_of(arm, tool)
+        assert solver is not None
+        values = random.uniform(-3.0, 3.0, size=(20, 1))
+        found = solver.solve(tool_in_base(arm, values, tool))
+        assert found.target.tolist() == list(range(20))
+        np.testing.assert_allclose(found.motions, values, atol=1e-12)

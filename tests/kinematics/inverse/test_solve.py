@@ -5,10 +5,11 @@ from itertools import pairwise
 import numpy as np
 import pytest
 
+from kinematics.arm import CombinedTravel
 from kinematics.chain import tool_in_base
 from kinematics.inverse.measured import DIRECTION, POSE, POSITION
 from kinematics.inverse.solve import method_of
-from kinematics.table import Coupling
+from kinematics.table import Coupling, Travel
 from tests.kinematics.example_arms import (
     AT_FLANGE,
     FIVE,
@@ -44,22 +45,24 @@ def test_every_class_has_a_closed_form_that_meets_its_own_poses(name: str) -> No
     assert (found.count_per_target() > 0).all()
 
 
-def test_what_has_no_structure_is_searched_for() -> None:
+def test_six_joints_without_structure_are_left_to_an_elimination() -> None:
     arm = random_arm(fresh(), 6, prismatic_share=0.0)
     method = method_of(arm, AT_FLANGE)
-    assert not method.complete
-    assert "least squares" in method.say
+    assert method.complete
+    assert method.solver.proof == "elimination"
+    assert method_of(arm, AT_FLANGE, POSITION).solver.proof == "search"
     assert not method_of(arm_of(*SEVEN), AT_FLANGE).complete
 
 
-def test_axes_that_nearly_meet_prove_nothing() -> None:
-    """A measured wrist, 50 um and 0.1 mrad off: solutions in closed form, and no proof of a no."""
+def test_axes_that_nearly_meet_are_solved_as_measured_too() -> None:
+    """A measured wrist, 50 um and 0.1 mrad off: what a closed form may lose, an elimination has."""
     rows = list(SIX)
     rows[4] = revolute(alpha=np.pi / 2 + 1e-4, a=5e-5, d=2e-5)
     method = method_of(arm_of(*rows), AT_FLANGE)
-    assert method.closed
-    assert not method.complete
-    assert method_of(arm_of(*SIX), AT_FLANGE).complete
+    assert method.complete
+    assert method.solver.proof == "elimination"
+    assert "as measured" in method.say
+    assert method_of(arm_of(*SIX), AT_FLANGE).solver.proof == "closed-form"
 
 
 def test_last_joints_about_the_tool_point_are_left_out_of_a_place() -> None:
@@ -124,3 +127,17 @@ def test_order_of_targets_does_not_matter() -> None:
     for index, (first, last) in enumerate(pairwise(np.searchsorted(together.target, range(11)))):
         alone = method.solve(targets[index : index + 1], rest(6))
         np.testing.assert_allclose(alone.motions, together.motions[first:last], atol=1e-9)
+
+
+def test_a_joint_whose_sum_with_others_is_bounded_is_not_left_out() -> None:
+    """Put anywhere within its own travel it would bring the sum out of bounds."""
+    sum_of = (CombinedTravel({1: 1.0, 6: 1.0}, Travel(-0.5, 0.5)),)
+    assert not method_of(arm_of(*SIX, combined_travel=sum_of), AT_FLANGE, DIRECTION).idle.any()
+    rows = (*SHOULDER_AND_ELBOW[:2], revolute(a=0.37, alpha=np.pi / 2), *WRIST[:2], revolute())
+    of_place = method_of(arm_of(*rows, combined_travel=sum_of), AT_FLANGE, POSITION)
+    assert not of_place.idle[[0, 5]].any()
+    of_three = (CombinedTravel({1: 1.0, 4: 1.0}, Travel(-0.5, 0.5)),)
+    selective = (*SELECTIVE[:3], revolute())
+    flat = arm_of(*selective, combined_travel=of_three)
+    assert method_of(arm_of(*selective), AT_FLANGE, POSITION).idle.tolist() == [False] * 3 + [True]
+    assert not method_of(flat, AT_FLANGE, POSITION).idle.any()

@@ -1,10 +1,11 @@
-"""Random arms of each class that has a closed form, with travel; every number made up.
+"""Random arms of each class that no search is needed for, with travel; every number made up.
 
 Joints turn within 1 to 3.5 rad to either side, slides run within a metre; tools stand anywhere, but
 for arms that could not then meet their own poses.
 """
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 
@@ -98,6 +99,26 @@ def _level(random: np.random.Generator) -> Made:
     return arm_of(*rows[:3], passive, rows[4]), random_pose(random), NONE
 
 
+def _any_place(kinds: str) -> Callable[[np.random.Generator], Made]:
+    """Six joints whose axes are in no special place."""
+
+    def made(random: np.random.Generator) -> Made:
+        return arm_of(*(_row(random, kind) for kind in kinds)), random_pose(random), NONE
+
+    return made
+
+
+def _as_measured(random: np.random.Generator) -> Made:
+    """The arm of most plants with each number of its table off by up to a thousandth."""
+    arm, tool, freedom = _upright_wrist(random)
+    off = random.uniform(-1e-3, 1e-3, size=(6, 3))
+    rows = (
+        replace(row, a=row.a + a, alpha=row.alpha + alpha, d=row.d + d)
+        for row, (a, alpha, d) in zip(arm.table.rows, off.tolist(), strict=True)
+    )
+    return arm_of(*rows), tool, freedom
+
+
 def _place(kinds: str) -> Callable[[np.random.Generator], Made]:
     """Up to three joints that bring a point to its place."""
 
@@ -140,6 +161,10 @@ CLASSES: dict[str, Callable[[np.random.Generator], Made]] = {
     "4, 5 and 6 parallel": _six(rows={3: {"alpha": np.pi}, 4: {"alpha": 0.0}}),
     **{f"{kinds} and wrist": _slides_with_wrist(kinds) for kinds in ("PPP", "RRP", "PRR", "RPR")},
     **{kinds: _selective(kinds) for kinds in ("RRPR", "PRRR", "RRRP", "RPRR")},
+    **{
+        f"{kinds} anywhere": _any_place(kinds) for kinds in ("RRRRRR", "RRPRRR", "PRRPRR", "PRPRPR")
+    },
+    "as measured": _as_measured,
     "level wrist": _level,
     **{f"place by {kinds}": _place(kinds) for kinds in ("RRR", "RRP", "RPR", "PRR", "RPP", "PPR")},
     "place by PPP": _place("PPP"),

@@ -11,10 +11,13 @@ from kinematics.inverse.found import POSITION as PLACE
 from kinematics.inverse.found import Found, none_found
 from kinematics.inverse.measured import POSE, POSITION
 from kinematics.inverse.solve import Method
-from kinematics.reach.answers import Answerer, Asked
+from kinematics.reach import last_proof
+from kinematics.reach.answers import Answerer
 from kinematics.reach.targets import (
     BOUND,
+    BRANCH_AND_BOUND,
     CLOSED_FORM,
+    ELIMINATION,
     NOT_FOUND,
     ORIENTATION,
     OUTSIDE_TRAVEL,
@@ -27,7 +30,9 @@ from kinematics.reach.targets import (
     Targets,
 )
 from kinematics.reach.verdicts import Ranking
+from kinematics.reach.ways import Asked
 from kinematics.table import Travel
+from kinematics.tolerances import TARGET_POSITION
 from tests.kinematics.example_arms import AT_FLANGE, PLANAR, SIX, arm_of, revolute
 from tests.kinematics.inverse.seeds import fresh
 
@@ -116,10 +121,30 @@ def test_where_a_joint_was_free_a_search_looks_once_more() -> None:
     np.testing.assert_allclose(shown, [[0.4, 0.3]], atol=1e-8)
 
 
-@pytest.mark.parametrize("motions", [NONE_AT_ALL, np.array([[-2.0, 1.0]])], ids=["none", "beyond"])
-def test_a_no_is_never_proved_where_a_joint_was_free(motions: np.ndarray) -> None:
-    """Behind the arm: within its links, beyond its travel."""
-    checks = answered(Fake(motions, is_open=True), (-0.5, -0.2))
+WHATEVER = pytest.mark.parametrize(
+    "motions", [NONE_AT_ALL, np.array([[-2.0, 1.0]])], ids=["none", "beyond"]
+)
+BEHIND = (-0.5, -0.2)
+"""A place within the links of the arm, and beyond its travel."""
+
+
+@WHATEVER
+def test_a_no_where_a_joint_was_free_is_proved_by_boxes(motions: np.ndarray) -> None:
+    """By the search it is known how the arm would get there, beyond its travel."""
+    checks = answered(Fake(motions, is_open=True), BEHIND)
+    assert told(checks) == (OUTSIDE_TRAVEL, BRANCH_AND_BOUND)
+    assert len(checks.joint_values) >= 1
+    reason = checks.reason_of(0)
+    assert reason is not None
+    assert reason.code == "outside-travel"
+
+
+@WHATEVER
+def test_a_no_is_not_proved_by_too_few_boxes(
+    motions: np.ndarray, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(last_proof, "BOX_BUDGET", 0)
+    checks = answered(Fake(motions, is_open=True), BEHIND)
     assert told(checks) == (NOT_FOUND, SEARCH)
     assert not len(checks.joint_values)
     assert checks.found.tolist() == [0]
@@ -128,11 +153,18 @@ def test_a_no_is_never_proved_where_a_joint_was_free(motions: np.ndarray) -> Non
     assert reason.code == "found-outside-travel"
 
 
-@pytest.mark.parametrize("motions", [NONE_AT_ALL, np.array([[-2.0, 1.0]])], ids=["none", "beyond"])
-def test_a_search_proves_nothing(motions: np.ndarray) -> None:
-    checks = answered(Fake(motions, proof="search"))
-    assert told(checks) == (NOT_FOUND, SEARCH)
-    assert not len(checks.joint_values)
+@WHATEVER
+def test_a_search_proves_nothing_but_boxes_do(motions: np.ndarray) -> None:
+    checks = answered(Fake(motions, proof="search"), BEHIND)
+    verdict = OUTSIDE_TRAVEL if len(motions) else UNREACHABLE
+    assert told(checks) == (verdict, BRANCH_AND_BOUND)
+
+
+def test_boxes_find_what_a_search_overlooks() -> None:
+    checks = answered(Fake(NONE_AT_ALL, proof="search"))
+    assert told(checks) == (REACHABLE, WITNESS)
+    shown = tool_in_base(ARM, checks.joint_values, AT_FLANGE)[:, :2, 3]
+    assert np.abs(shown - [[0.4, 0.3]]).max() < TARGET_POSITION
 
 
 def test_a_search_is_spared_what_no_links_reach() -> None:
@@ -186,10 +218,10 @@ def test_an_arm_whose_wrist_nearly_meets_is_searched_for_what_is_missing() -> No
     beyond[:, :3, :3] = beyond[:, :3, :3] @ np.diag([1.0, -1.0, -1.0])
     checks = answerer.answer(Targets.of([Target(pose) for pose in (*poses, *beyond)]), Asked())
     assert (checks.verdict[:100] == REACHABLE).sum() >= 98
-    assert set(checks.proof.tolist()) <= {WITNESS, SEARCH, BOUND}
+    assert set(checks.proof.tolist()) <= {WITNESS, SEARCH, ELIMINATION, BRANCH_AND_BOUND, BOUND}
 
 
-def test_whole_turns_not_looked_at_leave_a_no_open() -> None:
+def test_whole_turns_not_looked_at_leave_a_no_to_boxes(monkeypatch: pytest.MonkeyPatch) -> None:
     """Two joints of 300 turns whose sum has a narrow travel, far from the middle."""
     wide = Travel(-1000.0, 1000.0)
     arm = arm_of(
@@ -200,5 +232,7 @@ def test_whole_turns_not_looked_at_leave_a_no_open() -> None:
     pose = np.eye(4)
     pose[:2, 3] = 0.4, 0.3
     answerer = Answerer(Ranking(arm, AT_FLANGE), POSITION)
-    checks = answerer.answer(Targets.of([Target(pose, ORIENTATION)]), Asked())
-    assert told(checks)[0] != OUTSIDE_TRAVEL
+    targets = Targets.of([Target(pose, ORIENTATION)])
+    assert told(answerer.answer(targets, Asked())) == (OUTSIDE_TRAVEL, BRANCH_AND_BOUND)
+    monkeypatch.setattr(last_proof, "BOX_BUDGET", 0)
+    assert told(answerer.answer(targets, Asked()))[0] != OUTSIDE_TRAVEL

@@ -15,6 +15,7 @@ from tests.kinematics.inverse.seeds import fresh
 from tests.kinematics.reach.arm_classes import CLASSES, postures_within_travel, targets_at
 
 FEW = 60
+NOT_SPECIAL = {name for name in CLASSES if name.endswith(("anywhere", "measured"))}
 
 
 @pytest.mark.parametrize("name", sorted(CLASSES))
@@ -28,7 +29,7 @@ def test_it_is_the_best_posture_of_the_usual_way(name: str, by_nearness: bool) -
         postures = postures_within_travel(random, arm, FEW)
         targets = targets_at(arm, tool, freedom, postures)
         if reacher.one_target is None:
-            assert arm.joint_count < 6
+            assert arm.joint_count < 6 or name in NOT_SPECIAL
             continue
         base_in_frame = random_pose(random)
         near = postures[0] if by_nearness else None
@@ -47,7 +48,7 @@ def test_it_is_the_best_posture_of_the_usual_way(name: str, by_nearness: bool) -
             assert best.branch == usual.branches[usual.branch[first]]
             assert best.position_error < 1e-9 * reacher.answerer_of(0).ranking.screws.length
             assert best.angle_error < 1e-9
-    if arm.joint_count == 6:
+    if arm.joint_count == 6 and name not in NOT_SPECIAL:
         assert told > FEW  # of random postures few are near a fold or a limit
 
 

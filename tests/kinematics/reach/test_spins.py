@@ -5,10 +5,10 @@ import pytest
 
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
-from kinematics.reach.answers import Asked
 from kinematics.reach.checks import Reacher
 from kinematics.reach.spins import RING, spun
 from kinematics.reach.targets import NOT_FOUND, REACHABLE, SPIN, Targets
+from kinematics.reach.ways import Asked
 from kinematics.rotations import rotation_about
 from tests.kinematics.example_arms import AT_FLANGE, FIVE, SIX, arm_of
 from tests.kinematics.inverse.seeds import fresh

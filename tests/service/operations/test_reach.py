@@ -32,8 +32,9 @@ from service.errors import ServiceError, TooLarge
 from service.operations.arms import Arms
 from service.operations.reach import ManyTargets, Wanted, reach_question, wanted_solutions
 from service.operations.reach_columns import columns_of
-from service.operations.reach_told import family_out, reason_out, told_together
+from service.operations.reach_told import told_together
 from service.operations.reachers import is_quick, method_of, reacher_of
+from service.operations.reasons_told import family_out, reason_out
 from service.wire.arms import ReadArm
 from service.wire.reach_request import ReachRequest
 from service.wire.reach_targets import read_targets

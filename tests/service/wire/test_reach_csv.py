@@ -67,6 +67,15 @@ BAD = [
 ]
 
 
+def test_each_line_may_have_an_approach() -> None:
+    found = read("x,y,z,r1,r2,r3,approach\n1,2,3,0,0,0,\n1,2,3,0,0,0,50\n1,2,3,0,0,0,0\n")
+    assert found.places.tolist() == [0, 1]
+    assert {index: one.distance for index, one in found.approaches.items()} == {1: 0.05}
+    assert (found.refused[2].code, found.refused[2].where) == ("unusable-value", (4, "approach"))
+    (far,) = read("x,y,z,approach\n1,2,3,4\n1,2,3,1e300\n").refused.values()
+    assert far.where == (3, "approach")
+
+
 @pytest.mark.parametrize(("line", "code", "column"), BAD)
 def test_one_bad_line_spoils_no_other(line: str, code: str, column: str) -> None:
     found = read(f"x,y,z,r1,r2,r3,freedom\n1,2,3,0,0,0,\n{line}\n4,5,6,0,0,0,spin\n")

@@ -81,6 +81,13 @@ def test_the_same_words_about_another_target_are_the_same_question() -> None:
         ({**PLACE, "cone": "30"}, "unusable-value", "cone"),
         ({**POSE, "near": "1,x"}, "unparseable", "near"),
         ({**POSE, "near": ""}, "unparseable", "near"),
+        ({**POSE, "approach": "0"}, "unusable-value", "approach"),
+        ({**POSE, "approach": "-5"}, "unusable-value", "approach"),
+        ({**POSE, "approach": "x"}, "unparseable", "approach"),
+        ({**POSE, "along": "0,0,1"}, "missing-field", "approach"),
+        ({**POSE, "approach": "5", "along": "0,0"}, "unusable-value", "along"),
+        ({**POSE, "approach": "5", "along": "0,0,0"}, "unusable-value", "along"),
+        ({**POSE, "approach": "5", "along": "tool-x"}, "unusable-value", "along"),
     ],
 )
 def test_what_is_refused(said: dict[str, str], code: str, where: str) -> None:
@@ -89,6 +96,18 @@ def test_what_is_refused(said: dict[str, str], code: str, where: str) -> None:
     detail = caught.value.details()[0]
     assert (detail.code, detail.where, detail.location) == (code, (where,), "query")
     assert detail.way_out
+
+
+def test_an_approach_is_along_tool_z_unless_said() -> None:
+    assert asked(**POSE).approach is None
+    usual = asked(**POSE, approach="50").approach
+    assert usual is not None
+    assert (usual.distance, usual.along) == (50, "tool-z")
+    assert asked(**POSE, approach="50", along="tool-z").approach == usual
+    whole = dict.fromkeys(POSE, "1000")
+    down = asked(**whole, approach="500", along="0,0,-10", scale="10").approach
+    assert down is not None
+    assert (down.distance, down.along) == (50, [0, 0, -1])
 
 
 @pytest.mark.parametrize("form", ["quaternion-wxyz", "rotation-vector", "matrix"])

@@ -8,7 +8,6 @@ import pytest
 from kinematics.reach.targets import CONE, NONE, ORIENTATION, SPIN
 from service.convert import UNITS
 from service.errors import (
-    NotAvailable,
     ServiceError,
     TooLarge,
     UnknownField,
@@ -155,7 +154,26 @@ def test_what_refuses_all() -> None:
     with pytest.raises(UnusableValue, match="'a' stands twice") as caught:
         read({"name": "a", "pose": POSE}, {"pose": POSE}, {"name": "a"})
     assert caught.value.where == ("targets", 2, "name")
-    with pytest.raises(NotAvailable, match="approaches") as missing:
-        read({"pose": POSE}, {"pose": POSE, "approach": {"distance": 50, "along": "tool-z"}})
-    assert (missing.value.where, missing.value.status) == (("targets", 1, "approach"), 422)
     assert read(*[{"position": [0, 0, 0]}] * 10_000).count == 10_000
+
+
+def test_approaches_are_noted_for_the_targets_that_have_one() -> None:
+    found = read(
+        {"pose": POSE},
+        {"pose": POSE, "approach": {"distance": 50, "along": "tool-z"}},
+        {"pose": POSE, "approach": {"distance": 0}},
+        {"position": [1, 2, 3], "approach": {"distance": 20, "along": [0, 3, 4], "speed": 250}},
+    )
+    assert found.places.tolist() == [0, 1, 3]
+    assert sorted(found.approaches) == [1, 2]
+    assert (found.approaches[1].distance, found.approaches[1].along) == (0.05, None)
+    one = found.approaches[2]
+    assert (one.distance, one.speed) == (0.02, 0.25)
+    np.testing.assert_allclose(one.along, [0, 0.6, 0.8])
+    refused = found.refused[2]
+    assert (refused.code, refused.where, refused.value) == (
+        "unusable-value",
+        ("targets", 2, "approach", "distance"),
+        0,
+    )
+    assert refused.way_out == "give more than 0.0"
