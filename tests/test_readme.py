@@ -160,7 +160,12 @@ def test_every_setting_is_there_with_its_default() -> None:
             for line in README.splitlines()
             if line.startswith("|") and f"`{ENVIRONMENT_PREFIX}{field.name.upper()}`" in line
         ]
-        default = {"database": "the user data folder", "demo": "no", "body_timeout_s": "20"}
+        default = {
+            "database": "the user data folder",
+            "demo": "no",
+            "body_timeout_s": "20",
+            "cluster": "none",
+        }
         assert default.get(field.name, str(field.default)) in row
 
 
