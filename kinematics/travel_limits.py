@@ -72,6 +72,29 @@ def travel_margin(arm: Arm, joint_values: FloatArray) -> FloatArray:
     return margin_and_outside(arm, joint_values)[0]
 
 
+def working_margin(arm: Arm, joint_values: FloatArray) -> FloatArray:
+    """Return the smallest share of working travel left, negative outside; (...,).
+
+    Infinite where no working travel is said. Travel itself does not count.
+
+    Parameters
+    ----------
+    joint_values : (..., joints), radians or metres.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, working_travel=Travel(-1.0, 1.0))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> working_margin(arm, np.array([[0.5], [2.0]]))
+    array([ 0.25, -0.5 ])
+    """
+    limits = limits_of(arm)
+    room = limits.room(joint_values)[..., limits.working]
+    least: FloatArray = room.min(axis=-1, initial=np.inf)
+    return least
+
+
 def beyond_travel(arm: Arm, joint_values: FloatArray) -> NDArray[np.bool_]:
     """Return which postures exceed a travel or working travel limit, (...,).
 

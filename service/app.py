@@ -14,21 +14,33 @@ from service import demo
 from service.bulk.answering import Bulk
 from service.envelope import Envelope
 from service.errors import ServiceError
+from service.event_streams import EventStreams
+from service.events.watching import watched_events
+from service.live.channels import Channels
+from service.live.tending import live_arms
 from service.metrics import Metrics
 from service.operations.arms import Arms
 from service.operations.cells import Cells
 from service.readiness import Readiness
+from service.records.desk import Records
 from service.refusals import add_refusals
 from service.routes import (
     arms,
     cells,
     controller,
+    events,
     frames,
     guesses,
     health,
+    joints,
+    joints_socket,
+    live,
+    live_history,
+    live_streams,
     poses,
     reach,
     reach_regions,
+    records,
     relation,
     rotations,
     surveys,
@@ -52,6 +64,12 @@ ROUTERS: tuple[APIRouter, ...] = (
     frames.router,
     relation.router,
     surveys.router,
+    joints.router,
+    live.router,
+    live_streams.router,
+    live_history.router,
+    records.router,
+    events.router,
     arms.router,
     cells.router,
     health.router,
@@ -64,8 +82,10 @@ def create_app(settings: Settings) -> FastAPI:
 
     ``app.state`` holds ``settings``, ``sequence`` (counts answers), ``started``, ``metrics``,
     ``readiness`` (of the kernels),
-    ``crowded`` (replaced by a server that knows its connections) and, within the lifespan,
-    ``arms``, ``cells``, ``surveys``, ``bulk``, ``storage``, ``opened`` and ``notices``.
+    ``crowded`` (replaced by a server that knows its connections), ``streams`` of events and,
+    within the lifespan, ``live`` arms and the ``channels`` that tell of them,
+    ``arms``, ``cells``, ``surveys``, ``records``, ``events``, ``bulk``,
+    ``storage``, ``opened``, ``notices``.
     """
     app = FastAPI(
         title="Armspan",
@@ -81,9 +101,11 @@ def create_app(settings: Settings) -> FastAPI:
     app.state.metrics = Metrics()
     app.state.readiness = Readiness()
     app.state.crowded = lambda: False
+    app.state.streams = EventStreams()
     for router in ROUTERS:
         # Moved, not included: one list to match against, to document, to tell methods from.
         app.router.routes.extend(router.routes)
+    app.router.routes.extend(joints_socket.routes)
     add_refusals(app)
     app.add_middleware(
         Envelope, metrics=app.state.metrics, crowded=lambda: bool(app.state.crowded())
@@ -111,9 +133,14 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
         pool = pool_of(settings.cluster, settings.survey_workers)
         taken_in = Surveys(opened.surveys, app.state.arms, pool, pages.version_here())
         app.state.surveys = taken_in
+        app.state.records = Records(opened.records, app.state.arms, pages.version_here())
         taken_in.go_on()
-        yield
+        async with live_arms(app.state.arms) as live_ones:
+            app.state.live, app.state.channels = live_ones, Channels(live_ones)
+            with watched_events(live_ones, opened.events, settings) as app.state.events:
+                yield
     finally:
+        app.state.streams.stop()
         if taken_in is not None:
             taken_in.stop()
         bulk.stop()

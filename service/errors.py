@@ -9,6 +9,7 @@ ServiceError
 |  '- RequestTimeout         the body stalled
 |- UnknownArm                neither an arm nor a cell of that name; a body may say 422
 |- UnknownSurvey
+|- UnknownRecord
 |- StateDiffers
 |  |- UnknownRevision
 |  |- DigestDiffers          the arm is not the one that was expected
@@ -21,6 +22,7 @@ ServiceError
 |- TooLarge                  a body; a count says 422
 |- NotAvailable              a feature not in this version says 422
 |  |- NotFinished            a survey that is still queued or running, or has no result
+|  |- NoLivePose             no joint values have come, or none near the time asked for
 |  |- StorageUnavailable     for now; asking again may help
 |  '- StorageUnusable        asking again will not help
 |- NotInTheInterface
@@ -127,6 +129,12 @@ class UnknownSurvey(ServiceError):
     code = "unknown-survey"
 
 
+class UnknownRecord(ServiceError):
+    """No record of this id."""
+
+    code = "unknown-record"
+
+
 class StateDiffers(ServiceError):
     """What is stored is not what the request supposes; raise one of the classes below it."""
 
@@ -197,6 +205,12 @@ class NotFinished(NotAvailable):
     """The survey is queued or running, or ended without a result."""
 
     code = "not-finished"
+
+
+class NoLivePose(NotAvailable):
+    """No joint values have come of the arm, or none close enough to the time asked for."""
+
+    code = "no-live-pose"
 
 
 class StorageUnavailable(NotAvailable):

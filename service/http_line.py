@@ -3,6 +3,8 @@
 Left out: everything it can read, which the app answers.
 """
 
+import asyncio
+
 import h11
 from uvicorn.protocols.http.h11_impl import H11Protocol
 
@@ -15,7 +17,16 @@ _CAN_ANSWER = (h11.IDLE, h11.SEND_RESPONSE)
 
 
 class FixedLengthH11(H11Protocol):
-    """The server's protocol; it would send chunks to a client whose request it cannot read."""
+    """The server's protocol; it would send chunks to a client whose request it cannot read.
+
+    Handlers find the connection itself as ``state.connection``: a stream of events has to cut one
+    that takes nothing any more.
+    """
+
+    def connection_made(self, transport: asyncio.Transport) -> None:  # type: ignore[override]
+        """Begin as the base does, and keep the connection for handlers."""
+        super().connection_made(transport)
+        self.app_state = {**self.app_state, "connection": transport}
 
     def send_400_response(self, msg: str) -> None:
         """Send the problem document and close; ``msg`` says nothing that helps."""

@@ -9,18 +9,23 @@ import os
 import signal
 import socket
 import sys
-from collections.abc import Callable
+from collections.abc import AsyncIterator, Callable
+from contextlib import asynccontextmanager
 from types import FrameType
 
 import uvicorn
 from fastapi import FastAPI
 
+from service import demo
 from service.app import create_app
 from service.cautions import NOT_A_SAFETY_FUNCTION
 from service.errors import StorageUnavailable, StorageUnusable
 from service.http_line import FixedLengthH11
 from service.readiness import Readiness
+from service.routes.joints_socket import MOST_MESSAGE_BYTES
 from service.settings import Settings, unknown_variables
+from service.simulation.moving_cell import MovingCell
+from service.socket_line import RefusingSockets
 from service.web.pages import version_here
 
 _KEEP_ALIVE_S = 65
@@ -31,16 +36,26 @@ _EVERYWHERE = ("0.0.0.0", "::")
 
 
 class _Server(uvicorn.Server):
-    """A server that tells when it listens."""
+    """A server that tells when it listens, and when it is told to end."""
 
-    def __init__(self, config: uvicorn.Config, on_listening: Callable[[], None]) -> None:
+    def __init__(
+        self,
+        config: uvicorn.Config,
+        on_listening: Callable[[], None],
+        on_exit: Callable[[], object],
+    ) -> None:
         super().__init__(config)
-        self._on_listening = on_listening
+        self._on_listening, self._on_exit = on_listening, on_exit
 
     async def startup(self, sockets: list[socket.socket] | None = None) -> None:
         """Start as the base does, then tell."""
         await super().startup(sockets)
         self._on_listening()
+
+    def handle_exit(self, sig: int, frame: FrameType | None) -> None:
+        """End as the base does; streams do so at once, before it looks for what is still open."""
+        super().handle_exit(sig, frame)
+        self._on_exit()
 
 
 def run(settings: Settings) -> int:
@@ -72,7 +87,10 @@ async def _serve(app: FastAPI, listener: socket.socket, settings: Settings) -> N
         app,
         # The faster parser sends chunks to HTTP/1.0 clients and refuses bare line feeds.
         http=FixedLengthH11,
-        ws="none",
+        ws=RefusingSockets,
+        ws_max_size=MOST_MESSAGE_BYTES,
+        # Joint values are short; what is packed could be any size once it is unpacked.
+        ws_per_message_deflate=False,
         # Run below instead, so that a store that cannot be opened is one line, no traceback.
         lifespan="off",
         log_config=None,
@@ -84,15 +102,33 @@ async def _serve(app: FastAPI, listener: socket.socket, settings: Settings) -> N
         # Up to `connections` we answer ourselves, in our own form; this is the hard stop.
         limit_concurrency=2 * settings.connections,
     )
-    server = _Server(config, lambda: print(_start_text(app, listener), flush=True))
+    loop, streams = asyncio.get_running_loop(), app.state.streams
+    server = _Server(
+        config,
+        lambda: print(_start_text(app, listener), flush=True),
+        lambda: loop.call_soon_threadsafe(streams.stop),
+    )
     readiness: Readiness = app.state.readiness
     readiness.prepare()
     app.state.crowded = lambda: len(server.server_state.connections) > settings.connections
     try:
-        async with app.router.lifespan_context(app):
+        async with app.router.lifespan_context(app), _demonstration(app):
             await server.serve([listener])
     finally:
         readiness.stop()
+
+
+@asynccontextmanager
+async def _demonstration(app: FastAPI) -> AsyncIterator[None]:
+    """Have the demonstration cell move, if that is wanted."""
+    state = app.state
+    if not state.settings.demo:
+        yield
+        return
+    names = [document["name"] for document in demo.documents()]
+    cell = MovingCell(names, state.arms, state.live, state.events.is_looked_at)
+    async with cell.moving(state.readiness.postures):
+        yield
 
 
 def _bound(host: str, port: int) -> socket.socket:

@@ -44,6 +44,9 @@ _WAYS_OUT = {
     "string_too_long": "give at most {max_length} characters",
     "string_pattern_mismatch": "give a text that matches {pattern}",
     "int_from_float": "give a whole number",
+    "not_printable": "leave out line breaks and control characters",
+    "not_exact": "give it as a text, in quotes",
+    "not_plain": "give what is nested as fields of its own",
 }
 # A bulk body can be wrong at a hundred thousand places; twenty are shown.
 _MOST_READ = 1000

@@ -50,19 +50,20 @@ class TravelRegion:
         return np.asarray(inside.all(axis=-1))
 
 
-_kept: dict[bool, WeakKeyDictionary[Arm, TravelRegion]] = {
-    False: WeakKeyDictionary(),
-    True: WeakKeyDictionary(),
+_kept: dict[tuple[bool, bool], WeakKeyDictionary[Arm, TravelRegion]] = {
+    (working, tight): WeakKeyDictionary() for working in (False, True) for tight in (False, True)
 }
 """What was found of an arm, within travel and within working travel, as long as it is there."""
 
 
-def travel_region(arm: Arm, *, working: bool = False) -> TravelRegion:
+def travel_region(arm: Arm, *, working: bool = False, tight: bool = True) -> TravelRegion:
     """Return the joint values an arm may take.
 
     Parameters
     ----------
     working : whether working travel bounds too.
+    tight : whether the box is to be the smallest; else it is that of the limits of single joints,
+        for which no linear program is solved, and which may hold nothing that all cuts allow.
 
     Raises
     ------
@@ -81,13 +82,14 @@ def travel_region(arm: Arm, *, working: bool = False) -> TravelRegion:
     >>> travel_region(arm).upper
     array([1.5, 1.5])
     """
-    region = _kept[working].get(arm)
+    kept = _kept[working, tight]
+    region = kept.get(arm)
     if region is None:
-        region = _kept[working][arm] = _region(arm, working=working)
+        region = kept[arm] = _region(arm, working=working, tight=tight)
     return region
 
 
-def _region(arm: Arm, *, working: bool) -> TravelRegion:
+def _region(arm: Arm, *, working: bool, tight: bool) -> TravelRegion:
     if not arm.joint_count:
         raise KinematicsError(
             "the arm has no joints, and so no reach",
@@ -110,7 +112,7 @@ def _region(arm: Arm, *, working: bool) -> TravelRegion:
     constants = np.array([limit.constant for limit in cuts])
     cut_lower = np.array([limit.travel.lower for limit in cuts]) - constants
     cut_upper = np.array([limit.travel.upper for limit in cuts]) - constants
-    if cuts:
+    if cuts and tight:
         lower, upper = _tightened(lower, upper, weights, cut_lower, cut_upper)
     elif (lower > upper).any():
         raise _nothing_left()

@@ -9,7 +9,8 @@ from functools import lru_cache
 from kinematics.arm import Arm
 from kinematics.errors import KinematicsError
 from kinematics.findings import Finding
-from service.errors import ServiceError
+from service.details import Location
+from service.errors import ServiceError, UnknownArm
 from service.operations.arms import Arms, StoredArm
 from service.wire import models
 from service.wire.arms import ReadArm, read_arm_model
@@ -125,4 +126,19 @@ def stored_arm(arms: Arms[ReadArm], asked: str | models.ArmRevision) -> StoredAr
             error.where = ("arm",) if isinstance(asked, str) else ("arm", "name")
             if error.code == "unknown-revision":
                 error.where = ("arm", "revision")
+        raise
+
+
+def check_was_stored(arms: Arms[ReadArm], name: str, location: Location) -> None:
+    """Refuse the name of an arm that is not stored and never was; its traces stay when it goes.
+
+    Raises
+    ------
+    UnknownArm : with status 422 where the address itself exists.
+    """
+    try:
+        arms.revisions_page(name, 0, 1)
+    except UnknownArm as error:
+        if location != "path":
+            error.location, error.status = location, 422
         raise

@@ -35,7 +35,12 @@ _LONGEST_NUMBER = 3
 def single_pose(arms: Arms[ReadArm], asked: SingleQuestion, joints: JointsAsked) -> SingleAnswer:
     """Return the tool pose of one posture."""
     question = question_asked(arms, asked, moving=False)
-    return _answer(question, pose_item(question, joint_row(question, joints)))
+    return posture_answer(question, joint_row(question, joints))
+
+
+def posture_answer(question: Question, joint_values: Sequence[float]) -> SingleAnswer:
+    """Return the tool pose at joint values in SI."""
+    return _answer(question, pose_item(question, joint_values))
 
 
 def single_jacobian(
@@ -67,6 +72,18 @@ def question_asked(arms: Arms[ReadArm], asked: SingleQuestion, *, moving: bool) 
     except UnknownRevision as error:
         error.where, error.location = ("revision",), "query"
         raise
+    return question_about(stored, asked, moving=moving)
+
+
+def question_about(
+    stored: StoredArm[ReadArm], asked: SingleQuestion, *, moving: bool = False
+) -> Question:
+    """Return what is asked of a stored arm that is looked up already.
+
+    Raises
+    ------
+    ServiceError, KinematicsError : what ``asked`` says cannot be used.
+    """
     about = _question_kept if asked.is_kept else _question_about
     return about(stored, asked, moving)
 

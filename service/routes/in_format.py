@@ -3,7 +3,7 @@
 Left out: what an address answers and how it says no; its handlers bring both.
 """
 
-from collections.abc import Awaitable, Callable, Collection, Mapping
+from collections.abc import Awaitable, Callable, Collection, Mapping, Sequence
 from time import time_ns
 from typing import NamedTuple
 
@@ -38,7 +38,11 @@ Refusal = Callable[[Asked, Problem], Awaitable[Content]]
 
 
 async def answered_in_format(
-    request: Request, known: Collection[str], answer: Answer, refusal: Refusal
+    request: Request,
+    known: Collection[str],
+    answer: Answer,
+    refusal: Refusal,
+    in_body: Sequence[tuple[str, str]] = (),
 ) -> Response:
     """Return what ``answer`` says, or a refusal in the same format.
 
@@ -47,6 +51,7 @@ async def answered_in_format(
     known : names of the query's parameters.
     answer : called once the query has no other names, and each of its own once.
     refusal : what says no where the answer would be flat, CSV or text.
+    in_body : names and texts of a form that came as the body; they count as the query's.
 
     Raises
     ------
@@ -54,7 +59,7 @@ async def answered_in_format(
         as at every other address.
     """
     # Read by hand before anything is refused, so that a refusal comes in the format asked for.
-    pairs = query_pairs(request)
+    pairs = [*query_pairs(request), *in_body]
     said = dict(pairs)
     given = said.get("format")
     wanted: Format = given if given in FORMATS else "json"

@@ -12,11 +12,12 @@ from starlette.responses import Response
 
 from service.bulk.answering import SHORT_BYTES, Bulk
 from service.bulk.streaming import StreamedAnswer
-from service.bulk.survey_progress import ProgressStream
-from service.errors import UnusableValue
+from service.bulk.survey_progress import watch
+from service.event_streams import EventStream
 from service.routes.direct import DirectRoute, ReachRoute
+from service.sorted_ids import ID
 from service.storage.ports import Survey
-from service.surveys.desk import ID, Surveys
+from service.surveys.desk import Surveys
 from service.surveys.registry import SURVEY_KINDS
 from service.web import survey_report as survey_report_page
 from service.web.document import documented, parameter
@@ -28,6 +29,7 @@ from service.wire.formats import JSON, answer_format
 from service.wire.npy import read_npy
 from service.wire.query import known_parameters
 from service.wire.question_parameters import FORMAT_OF_ANSWERS
+from service.wire.senders_key import senders_key
 from service.wire.surveys import (
     TABLE_PARAMETERS,
     SurveyAnswer,
@@ -46,8 +48,6 @@ taking_in = APIRouter(route_class=ReachRoute)
 
 _NO_STORE = {"cache-control": "no-store"}
 _READ = ["GET", "HEAD"]
-_KEY = "idempotency-key"
-_LONGEST_KEY = 200
 _BESIDE_TABLE = tuple(
     parameter(name, f"{says} Beside a table.") for name, says in TABLE_PARAMETERS.items()
 )
@@ -93,7 +93,7 @@ async def create_survey(request: Request) -> Response:
     """Take a survey in."""
     is_table = media_type_of(request) == npy.MEDIA_TYPE
     parameters = known_parameters(request, TABLE_PARAMETERS if is_table else ())
-    key = _key(request)
+    key = senders_key(request)
     raw = await read_bytes(request, JSON, npy.MEDIA_TYPE)
     bulk, surveys = _bulk(request), _surveys(request)
     table = read_npy(raw) if is_table else None
@@ -205,7 +205,7 @@ async def survey_progress(request: Request) -> Response:
     known_parameters(request, ())
     taken_in, name = _surveys(request), request.path_params["survey"]
     await run_in_threadpool(taken_in.get, name)
-    return ProgressStream(taken_in, name)
+    return EventStream(request.app.state.streams, partial(watch, taken_in, name))
 
 
 @router.get(
@@ -287,19 +287,6 @@ def _surveys(request: Request) -> Surveys:
 def _bulk(request: Request) -> Bulk:
     found: Bulk = request.app.state.bulk
     return found
-
-
-def _key(request: Request) -> str | None:
-    key = request.headers.get(_KEY)
-    if key is None or (0 < len(key) <= _LONGEST_KEY and key.isprintable()):
-        return key
-    raise UnusableValue(
-        f"the key must be 1 to {_LONGEST_KEY} printable characters",
-        where=(_KEY,),
-        location="header",
-        value=key,
-        way_out="send a random one, such as a UUID",
-    )
 
 
 router.routes.extend(taking_in.routes)

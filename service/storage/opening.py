@@ -10,15 +10,17 @@ import time
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any, Protocol
+from typing import Any, NamedTuple, Protocol
 
 import platformdirs
 import sqlalchemy as sa
 
 from service.errors import StorageUnusable
 from service.storage.engines import BUSY_TIMEOUT_S, by_url, in_memory, on_file
+from service.storage.events import SqlEvents
 from service.storage.inspection import APPLICATION_ID, inspect, unusable
 from service.storage.layouts import LAYOUTS, lay_out, layout_of
+from service.storage.records import SqlRecords
 from service.storage.server_lock import ServerLock
 from service.storage.sql import SqlStorage, reason_of, sqlite_error_name, writing
 from service.storage.state import FileState
@@ -45,6 +47,8 @@ class OpenStorage:
     arms: SqlStorage
     cells: SqlStorage
     surveys: SqlSurveys
+    records: SqlRecords
+    events: SqlEvents
     description: str
     writable: bool
     notices: list[str] = field(default_factory=list)
@@ -53,6 +57,7 @@ class OpenStorage:
     def close(self) -> None:
         """Close all connections and let another server process open the database."""
         self.surveys.close()
+        self.events.close()
         for closing in self._closings:
             closing()
 
@@ -261,6 +266,22 @@ def _open_memory(why: str) -> OpenStorage:
     return OpenStorage(*stores, "memory", not why, [notice], (engine.dispose,))
 
 
-def _stores(engine: sa.Engine, **how: Any) -> tuple[SqlStorage, SqlStorage, SqlSurveys]:
-    surveys = SqlSurveys(engine, refuses_writes=how.get("refuses_writes", ""))
-    return SqlStorage(engine, "arm", **how), SqlStorage(engine, "cell", **how), surveys
+class _Stores(NamedTuple):
+    arms: SqlStorage
+    cells: SqlStorage
+    surveys: SqlSurveys
+    records: SqlRecords
+    events: SqlEvents
+
+
+def _stores(engine: sa.Engine, **how: Any) -> _Stores:
+    refuses_writes = how.get("refuses_writes", "")
+    # What the service itself notes may stand in memory where users' arms may not.
+    refuses_events = "" if how.get("takes_seeds", True) else refuses_writes
+    return _Stores(
+        SqlStorage(engine, "arm", **how),
+        SqlStorage(engine, "cell", **how),
+        SqlSurveys(engine, refuses_writes=refuses_writes),
+        SqlRecords(engine, refuses_writes=refuses_writes),
+        SqlEvents(engine, refuses_writes=refuses_events),
+    )

@@ -1,4 +1,4 @@
-"""The tables behind the stores: revisions and one head for each name; surveys and their pieces.
+"""The tables behind the stores: revisions and heads; surveys and their pieces; records; events.
 
 Left out: how a database gets them (``migrations``); a test holds both to the same columns.
 """
@@ -81,4 +81,43 @@ SURVEY_PIECES = sa.Table(
     sa.Column("given", sa.LargeBinary, nullable=False),
     # Empty until the piece is done; then it is never written again.
     sa.Column("made", sa.LargeBinary),
+)
+
+RECORDS = sa.Table(
+    "records",
+    METADATA,
+    sa.Column("id", NAME, primary_key=True),
+    sa.Column("arm", NAME, nullable=False),
+    sa.Column("serial", sa.Text, index=True),
+    sa.Column("tag", sa.BigInteger),
+    sa.Column("quality", sa.String(12), nullable=False),
+    sa.Column("sampled_at_ms", sa.BigInteger, nullable=False, index=True),
+    sa.Column("joint_count", sa.Integer, nullable=False),
+    sa.Column("orientation_count", sa.Integer, nullable=False),
+    # JSON as text: the record as it was answered, to the last digit.
+    sa.Column("document", sa.Text, nullable=False),
+    # SHA-256 of the sender's key and of the request that came with it.
+    sa.Column("sent_key", sa.String(64), unique=True),
+    sa.Column("sent_digest", sa.String(64)),
+    sa.Index("ix_records_arm_id", "arm", "id"),
+)
+
+EVENTS = sa.Table(
+    "events",
+    METADATA,
+    sa.Column("id", NAME, primary_key=True),
+    # Counts every writing of an event, its beginning and its end: what a reader has seen up to.
+    sa.Column("change", sa.BigInteger, nullable=False, unique=True),
+    sa.Column("arm", NAME, nullable=False),
+    sa.Column("kind", sa.String(32), nullable=False),
+    sa.Column("state", sa.String(12), nullable=False, index=True),
+    sa.Column("began_at_ms", sa.BigInteger, nullable=False),
+    sa.Column("seen_at_ms", sa.BigInteger, nullable=False),
+    sa.Column("ended_at_ms", sa.BigInteger),
+    sa.Column("simulated", sa.Boolean, nullable=False),
+    # JSON as text: peak, thresholds, what else belongs to the kind.
+    sa.Column("document", sa.Text, nullable=False),
+    # Which process watches, so that another can tell that it does no more.
+    sa.Column("watcher", sa.BigInteger, nullable=False),
+    sa.Index("ix_events_arm_change", "arm", "change"),
 )

@@ -7,15 +7,13 @@ process that is killed loses no more than it had in hand. Left out: who works on
 import json
 import threading
 from collections import Counter
-from collections.abc import Iterable, Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Iterable, Sequence
 from datetime import datetime
 from itertools import islice
 from typing import Any
 
 import sqlalchemy as sa
 
-from service.errors import StorageUnavailable
 from service.storage.ports import (
     OPEN_STATES,
     QUEUED,
@@ -27,9 +25,8 @@ from service.storage.ports import (
 )
 from service.storage.rows import milliseconds, moment
 from service.storage.schema import SURVEY_PIECES, SURVEYS
-from service.storage.sql import unavailable, writing
+from service.storage.store import SqlStore
 
-_WHAT = "surveys"
 _WRITTEN_AT_ONCE = 500
 """Pieces of a new survey: some ten megabytes at most."""
 
@@ -52,16 +49,11 @@ _KEEP = (
 )
 
 
-class SqlSurveys:
-    """``SurveyStorage`` over an engine whose database has the present layout.
-
-    Parameters
-    ----------
-    refuses_writes : why nothing can be written, or "" when it can.
-    """
+class SqlSurveys(SqlStore):
+    """``SurveyStorage`` over an engine whose database has the present layout."""
 
     def __init__(self, engine: sa.Engine, *, refuses_writes: str = "") -> None:
-        self._engine, self._refuses_writes = engine, refuses_writes
+        super().__init__(engine, "surveys", refuses_writes=refuses_writes)
         self._lead: sa.Connection | None = None
         self._lock = threading.Lock()
 
@@ -210,29 +202,6 @@ class SqlSurveys:
         this = (SURVEY_PIECES.c.survey == survey, SURVEY_PIECES.c.number == number)
         with self._asking() as connection:
             return bytes(connection.execute(sa.select(column).where(*this)).scalar_one())
-
-    @contextmanager
-    def _asking(self) -> Iterator[sa.Connection]:
-        try:
-            with self._engine.connect() as connection:
-                yield connection
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{_WHAT} cannot be read") from error
-
-    @contextmanager
-    def _writing(self) -> Iterator[sa.Connection]:
-        if self._refuses_writes:
-            raise StorageUnavailable(
-                f"nothing can be stored: {self._refuses_writes}",
-                way_out="start the service with a database it can write to",
-            )
-        try:
-            with writing(self._engine) as connection:
-                yield connection
-        except sa.exc.IntegrityError:
-            raise
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{_WHAT} cannot be stored") from error
 
 
 def _locked(connection: sa.Connection, survey: str) -> Any:

@@ -4,8 +4,6 @@ Left out: addresses and formats (routes, wire), and the work (runner.py).
 """
 
 import hashlib
-import re
-import secrets
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from datetime import datetime
@@ -16,9 +14,10 @@ from pydantic import ValidationError
 from kinematics.errors import KinematicsError
 from kinematics.table import FloatArray
 from service.details import Detail
-from service.errors import NotAvailable, NotFinished, ServiceError, UnknownSurvey, UnusableValue
+from service.errors import NotAvailable, NotFinished, ServiceError, UnknownSurvey
 from service.operations.arms import Arms
 from service.operations.stored import utc_now
+from service.sorted_ids import ID, new_id
 from service.storage.ports import (
     CANCELLED,
     OPEN_STATES,
@@ -34,9 +33,9 @@ from service.surveys.registry import SURVEY_KINDS
 from service.surveys.runner import Runner
 from service.validation import details_of
 from service.wire.arms import ReadArm
+from service.wire.senders_key import kept_key, other_request
 from service.wire.surveys import SurveyRequest
 
-ID = re.compile(r"[0-9a-f]{20}", re.ASCII)
 MOST_OPEN = 10_000
 """Surveys that wait: more are the mistake of a program that asks in a circle."""
 
@@ -90,7 +89,6 @@ class Surveys:
         NotAvailable : too many are waiting.
         ServiceError, KinematicsError : the request is refused.
         """
-        hashed = None if key is None else hashlib.sha256(key.encode()).hexdigest()
         if self.store.count_open() >= MOST_OPEN:
             raise NotAvailable(
                 f"{MOST_OPEN} surveys are waiting",
@@ -100,7 +98,7 @@ class Surveys:
         accepted = self._accepted(asked, table)
         at = self._now()
         survey = Survey(
-            id=_new_id(at),
+            id=new_id(at),
             kind=asked.kind,
             title=asked.title or "",
             request=accepted.request,
@@ -110,17 +108,11 @@ class Surveys:
         )
         digest = hashlib.sha256(raw).hexdigest()
         try:
-            self.store.add(survey, accepted.pieces, key=hashed, digest=digest)
+            self.store.add(survey, accepted.pieces, key=kept_key(key), digest=digest)
         except KeyUsed as used:
             if used.digest == digest:
                 return self.runner.seen(used.survey), False
-            raise UnusableValue(
-                "this key came with another request before",
-                where=("idempotency-key",),
-                location="header",
-                value=key,
-                way_out="send a key of its own with each request",
-            ) from None
+            raise other_request(key) from None
         self.runner.wake()
         return survey, True
 
@@ -225,11 +217,6 @@ class Surveys:
 
 def _below(details: Sequence[Detail]) -> tuple[Detail, ...]:
     return tuple(replace(detail, where=(_FIELD, *detail.where)) for detail in details)
-
-
-def _new_id(at: datetime) -> str:
-    """Return an id that sorts by time: 12 hex digits of milliseconds, 8 by chance."""
-    return f"{round(at.timestamp() * 1000):012x}{secrets.token_hex(4)}"
 
 
 def _as_kept(about: Document) -> Document:

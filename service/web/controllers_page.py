@@ -9,6 +9,7 @@ from html import escape
 from service.cautions import CAUTIONS
 from service.problems import ANSWERS, KINDS
 from service.web.examples import examples_of, folder
+from service.web.live_lines import live_section
 from service.wire import reach_flat, rotation_flat
 from service.wire.controller import MOST_SCALE
 from service.wire.fixed_text import NUMBER_WIDTH, WIDTHS, places
@@ -76,6 +77,7 @@ def controllers_html() -> bytes:
         going=escape(f"GET /v1/arms/{there.request['path']['arm']}/reach?{going}"),
         gone=escape(there.answer.rstrip("\r\n")),
         reach_places=_reach_places(),
+        live=live_section(),
         form_width=rotation_flat.WIDTHS["form"],
         units_width=rotation_flat.WIDTHS["units"],
         places=_places(),
@@ -186,6 +188,7 @@ more or less moves what follows by 13 characters:</p>
 <p>A target that cannot be reached is an answer with status 200: <code>ok</code> is 0,
 <code>code</code> 200, 201 or 202, every joint value -999999.9999. Reachable means geometry only.
 Joint values from here are proposals.</p>
+{live}
 <h2 id="orientation">An orientation in another form</h2>
 <pre>{turning}
 {turned}</pre>

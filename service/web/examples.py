@@ -5,7 +5,7 @@ Left out: whether an answer is right; the tests hold that.
 
 import json
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -20,11 +20,15 @@ class Example:
     title : one line for people.
     request : the body; of a question by query string ``{"path": {...}, "query": {...}}``.
     answer : the body of the answer.
+    path : what stands in the address for its parameters, where the request is a body.
+    sent : joint values that the arm of the request was sent before; None: none.
     """
 
     title: str
     request: Any
     answer: Any
+    path: Mapping[str, str] = field(default_factory=dict)
+    sent: Mapping[str, Any] | None = None
 
     @property
     def query(self) -> Mapping[str, Any]:

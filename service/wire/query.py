@@ -8,7 +8,7 @@ import re
 from collections.abc import Collection, Iterable, Sequence
 from urllib.parse import parse_qsl
 
-from starlette.requests import Request
+from starlette.requests import HTTPConnection, Request
 
 from kinematics.known_names import way_out_of_unknown
 from service.details import Detail
@@ -47,7 +47,7 @@ def known_parameters(
     return known_ones(query_pairs(request), allowed, offered=offered)
 
 
-def query_pairs(request: Request) -> list[tuple[str, str]]:
+def query_pairs(request: HTTPConnection) -> list[tuple[str, str]]:
     """Return names and texts of the query in its order, decoded as forms are (WHATWG URL, 5.1)."""
     raw: bytes = request.scope["query_string"]
     if b"%" in raw or b"+" in raw:

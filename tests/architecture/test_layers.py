@@ -70,6 +70,7 @@ LAYERS = (
     ("constant_offsets", "next_readout", "readouts", "orientation_guesses"),
     ("table", "drive_map", "in_cell", "arm", "cell"),
     ("chain", "travel_limits", "digests", "table_conversion"),
+    ("motion_profiles",),
     ("connections",),
     ("arm_relations", "frames"),
     ("frame_residuals",),
@@ -157,6 +158,7 @@ LAYERS = (
     ("reach.checks", "reach.first_checks"),
     # What an arm can reach at all: samples, and the curves around it.
     ("reach.travel_region",),
+    ("wandering",),
     ("reach.samples",),
     ("reach.sample_summary",),
     ("envelope", "envelope.tolerances"),
@@ -173,7 +175,7 @@ LAYERS = (
     ("travel.straight", "travel.in_joints", "travel.told_legs", "travel.breaks"),
     ("travel.courses",),
     ("travel.approaches", "travel.first_courses"),
-    ("posture_reader", "warm_up"),
+    ("posture_reader", "sampled_motion", "warm_up"),
 )
 
 # The core computes: with numpy, scipy and the compiler, and with nothing that reaches outside.
@@ -254,6 +256,7 @@ FORBIDDEN = {
     "service.wire": ("fastapi", "sqlalchemy", "service.routes", "service.operations"),
     "service.routes": ("sqlalchemy", "sqlite3", "alembic"),
     "service.convert": (*WEB, "pydantic", "service"),
+    "service.live": (*WEB, "pydantic", "sqlalchemy", "sqlite3", "service.routes"),
     "service.web": ("sqlalchemy", "kinematics", "service.operations", "service.routes"),
 }
 

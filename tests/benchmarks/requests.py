@@ -39,6 +39,7 @@ from pydantic import BaseModel
 from service import server
 from service.envelope import Envelope
 from service.metrics import Metrics
+from service.event_streams import EventStreams
 from service.readiness import Readiness
 from service.settings import Settings
 
@@ -48,7 +49,7 @@ class Hello(BaseModel):
 def create_app(settings):
     app = FastAPI(redirect_slashes=False)
     app.state.sequence = itertools.count(1)
-    app.state.readiness = Readiness()
+    app.state.readiness, app.state.streams = Readiness(), EventStreams()
 
     @app.get("/", response_model=Hello)
     async def hello():

@@ -19,7 +19,7 @@ from fastapi.routing import APIRoute
 from service.app import create_app
 from service.settings import Settings
 from service.web.document import KEY
-from service.web.examples import examples_of, folder
+from service.web.examples import Example, examples_of, folder
 
 pytestmark = pytest.mark.anyio
 
@@ -44,12 +44,21 @@ COUNTS = {
     **dict.fromkeys(("cells", "cells-create", "cell", "cell-replace"), 1),
     **dict.fromkeys(("cell-revisions", "cell-revision"), 1),
     **dict.fromkeys(("surveys", "surveys-create"), 1),
+    "records": 1,
+    "arm-records": 1,
+    "records-create": 2,
+    "events": 1,
+    "joints": 2,
+    "live": 2,
 }
 _SURVEY = "/v1/surveys/{survey}"
 WITHOUT = {
     *(("DELETE", "/v1/arms/{arm}"), ("DELETE", "/v1/cells/{cell}"), ("GET", "/metrics")),
     *(("GET", _SURVEY), ("DELETE", _SURVEY), ("POST", f"{_SURVEY}/cancel")),
     *(("GET", f"{_SURVEY}/{part}") for part in ("progress", "result", "report")),
+    *(("GET", f"/v1/live{part}") for part in ("", "/stream")),
+    *(("GET", f"/v1/arms/{{arm}}/live/{part}") for part in ("stream", "history")),
+    *(("GET", "/v1/records/{record}"), ("GET", "/v1/arms/{arm}/records/{record}")),
 }
 """Neither a body asked nor a settled answer: nothing to show."""
 
@@ -59,7 +68,13 @@ CLOSE = 1e-9
 OF_THE_MOMENT = {
     "seq": 1,
     "t_ms": 1,
-    "created_at": "2026-12-01T06:00:00.000Z",
+    **dict.fromkeys(
+        ("created_at", "sampled_at", "received_at", "computed_at", "happened_at"),
+        "2026-12-01T06:00:00.000Z",
+    ),
+    "age_ms": 12,
+    "change": 1796198400123,
+    "counts": {"good": 1},
     "id": "01a23542df1518952a22",
     "software": "0.1.0",
     "links": {
@@ -83,16 +98,21 @@ def routes_of(app: FastAPI) -> dict[str, APIRoute]:
     return found
 
 
-async def answer_to(client: httpx.AsyncClient, route: APIRoute, request: Any) -> Any:
+async def answer_to(client: httpx.AsyncClient, route: APIRoute, example: Example) -> Any:
     """Ask what an example asks and return the answer's body; it must not be refused."""
+    request, path = example.request, example.path
+    if example.sent is not None:
+        arm = request["path"]["arm"]
+        assert (await client.put(f"/v1/arms/{arm}/joints", json=example.sent)).is_success
     if "GET" in (route.methods or ()):
-        path = route.path.format(**request["path"])
-        response = await client.get(path, params=request["query"])
-    elif "PUT" in (route.methods or ()):
-        path = route.path.format(arm=request["name"], cell=request["name"])
-        response = await client.put(path, json=request, headers={"If-None-Match": "*"})
+        address = route.path.format(**request["path"])
+        response = await client.get(address, params=request["query"])
+    elif "PUT" in (route.methods or ()) and not path:
+        address = route.path.format(arm=request["name"], cell=request["name"])
+        response = await client.put(address, json=request, headers={"If-None-Match": "*"})
     else:
-        response = await client.post(route.path, json=request)
+        method = min(route.methods or {"POST"})
+        response = await client.request(method, route.path.format(**path), json=request)
     assert response.status_code in (200, 201, 202), response.text
     if response.headers["content-type"].startswith("application/json"):
         return response.json()
@@ -155,7 +175,7 @@ async def test_the_example_answers_what_it_says(
     app: FastAPI, client: httpx.AsyncClient, name: str, case: str
 ) -> None:
     example = examples_of(name)[case]
-    got = await answer_to(client, routes_of(app)[name], example.request)
+    got = await answer_to(client, routes_of(app)[name], example)
     assert list(differences(example.answer, got)) == []
 
 
@@ -246,7 +266,8 @@ async def write_answers() -> None:
         for path in sorted((folder() / name).glob("*.json")):
             async with demonstration() as (app, client):
                 case = json.loads(path.read_text(encoding="utf-8"))
-                answer = await answer_to(client, routes_of(app)[name], case["request"])
+                asked = examples_of(name)[path.stem]
+                answer = await answer_to(client, routes_of(app)[name], asked)
                 case["answer"] = settled(answer)
                 path.write_text(json.dumps(case, indent=1, ensure_ascii=False) + "\n", "utf-8")
                 print(f"{name}/{path.name}")

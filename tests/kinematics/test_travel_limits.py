@@ -6,7 +6,12 @@ import pytest
 from kinematics.arm import CombinedTravel
 from kinematics.findings import OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL
 from kinematics.table import Coupling, Travel
-from kinematics.travel_limits import beyond_travel, travel_findings, travel_margin
+from kinematics.travel_limits import (
+    beyond_travel,
+    travel_findings,
+    travel_margin,
+    working_margin,
+)
 from tests.kinematics.example_arms import PLANAR, arm_of, prismatic, revolute
 
 DRESSED = revolute(
@@ -37,6 +42,21 @@ def test_without_limits_the_margin_is_infinite() -> None:
     assert np.isinf(travel_margin(arm_of(*PLANAR), np.zeros(2)))
     assert np.isinf(travel_margin(arm_of(), np.zeros(0)))
     assert travel_findings(arm_of(*PLANAR), np.full(2, 1e9)) == ()
+
+
+@pytest.mark.parametrize(
+    ("value", "margin"), [(0.25, 0.5), (1.0, 0.2), (-1.0, 0.0), (1.5, 0.0), (4.0, -1.0)]
+)
+def test_working_margin_is_the_share_of_working_travel_left(value: float, margin: float) -> None:
+    assert float(working_margin(arm_of(DRESSED), np.array([value]))) == margin
+    # Travel itself does not count, nor does a joint without working travel.
+    with_lift = working_margin(arm_of(LIFT, DRESSED), np.array([[9.0, value], [0.0, value]]))
+    assert with_lift.tolist() == [margin, margin]
+
+
+def test_without_working_travel_its_margin_is_infinite() -> None:
+    assert np.isinf(working_margin(arm_of(LIFT), np.array([9.0])))
+    assert np.isinf(working_margin(arm_of(), np.zeros(0)))
 
 
 def test_findings_name_joint_value_limit_and_reason() -> None:

@@ -26,6 +26,7 @@ CONTRACT = {
     "not-finite": (102, 422),
     "unknown-arm": (103, 404),
     "unknown-survey": (103, 404),
+    "unknown-record": (103, 404),
     "unknown-tool": (104, 422),
     "unknown-frame": (104, 422),
     "unusable-value": (105, 422),
@@ -42,6 +43,7 @@ CONTRACT = {
     "too-large": (108, 413),
     "not-available": (109, 503),
     "not-finished": (109, 409),
+    "no-live-pose": (109, 409),
     "internal": (109, 500),
     "unknown-field": (110, 422),
     "unknown-path": (110, 404),
@@ -163,7 +165,7 @@ def test_every_row_but_internal_has_a_class() -> None:
 def test_the_tree_is_drawn_as_it_is() -> None:
     drawn = re.findall(r"[|']- (\w+)", errors.__doc__ or "")
     made = {kind.__name__ for kind in below(ServiceError) if kind.__module__ == errors.__name__}
-    assert len(drawn) == len(set(drawn)) == 26
+    assert len(drawn) == len(set(drawn)) == 28
     assert set(drawn) == made
 
 

@@ -38,3 +38,13 @@ def test_a_slide_may_be_bounded_by_a_sum_alone() -> None:
     arm = arm_of(*rows, combined_travel=(CombinedTravel({1: 1.0, 2: 1.0}, Travel(0.0, 2.0)),))
     np.testing.assert_allclose(travel_region(arm).lower, [0.0, -1.0], atol=1e-12)
     np.testing.assert_allclose(travel_region(arm).upper, [1.0, 2.0], atol=1e-12)
+
+
+def test_a_box_that_need_not_be_tight_is_that_of_single_joints() -> None:
+    rows = (revolute(travel=Travel(-2.0, 2.0)),) * 2
+    arm = arm_of(*rows, combined_travel=(CombinedTravel({1: 1.0, 2: 1.0}, Travel(1.0, 9.0)),))
+    loose, tight = travel_region(arm, tight=False), travel_region(arm)
+    np.testing.assert_allclose([loose.lower, loose.upper], [[-2.0] * 2, [2.0] * 2])
+    np.testing.assert_allclose([tight.lower, tight.upper], [[-1.0] * 2, [2.0] * 2], atol=1e-12)
+    drawn = np.array([[0.4, 0.5], [0.6, 0.5]])
+    assert loose.holds(drawn).tolist() == tight.holds(drawn).tolist() == [False, True]

@@ -128,7 +128,7 @@ def test_a_second_opening_changes_nothing(database: str) -> None:
     try:
         assert opened.arms.count() == 2
         with opened.arms._engine.connect() as connection:
-            assert layouts.layout_of(connection) == migrate.known_layouts()[0] == "0003"
+            assert layouts.layout_of(connection) == migrate.known_layouts()[0] == "0004"
     finally:
         opened.close()
 

@@ -78,8 +78,9 @@ async def test_every_refusal_is_a_problem(client: httpx.AsyncClient) -> None:
         if status >= "400"
     ]
     assert len(refusals) >= 20
-    asked_flat = ("pose", "jacobian", "relation", "reach", "rotation")
+    asked_flat = ("pose", "jacobian", "relation", "reach", "rotation", "live")
     flat = {f"{method}-{what}" for method in ("get", "head") for what in asked_flat}
+    flat |= {"put-joints", "post-joints"}
     for response, operation, status in refusals:
         media = ["application/problem+json"]
         if operation in flat and status != "500":

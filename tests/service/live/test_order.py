@@ -1,0 +1,40 @@
+"""Counts and times of one source, in every combination."""
+
+import pytest
+
+from service.live.order import Order
+
+SEEN: list[tuple[list[tuple[int | None, float | None]], str]] = [
+    ([(1, 1.0), (2, 2.0)], ""),
+    ([(1, 1.0), (1, 1.0)], "repeated"),
+    ([(2, 2.0), (1, 1.0)], "out-of-order"),
+    # The count wins over a clock that was set back a little.
+    ([(1, 2.0), (2, 1.5)], ""),
+    # Counted anew, and its clock says so.
+    ([(65_535, 1.0), (0, 2.0)], ""),
+    ([(5, 1.0), (5, 2.0)], ""),
+    # Without times, or without counts.
+    ([(5, None), (5, None)], "repeated"),
+    ([(5, None), (4, None)], "out-of-order"),
+    ([(None, 1.0), (None, 1.0)], "repeated"),
+    ([(None, 2.0), (None, 1.0)], "out-of-order"),
+    ([(None, None), (None, None)], ""),
+    # One of them says what the other does not.
+    ([(5, None), (None, 1.0)], ""),
+    ([(None, 1.0), (5, 0.5)], "out-of-order"),
+    # Stragglers that do not rise are no count begun anew.
+    ([(9, None), (3, None), (2, None), (1, None), (4, None)], "out-of-order"),
+]
+
+
+@pytest.mark.parametrize(("seen", "told"), SEEN)
+def test_the_last_of_them(seen: list[tuple[int | None, float | None]], told: str) -> None:
+    order = Order()
+    assert [order.dropped(*one) for one in seen][-1] == told
+
+
+def test_what_is_forgotten_is_no_measure() -> None:
+    order = Order()
+    order.dropped(100, 100.0)
+    order.forget()
+    assert order.dropped(1, 1.0) == ""
