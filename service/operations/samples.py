@@ -149,8 +149,14 @@ class ManySamples:
         }
 
 
-def samples_asked(arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format) -> ManySamples:
+def samples_asked(
+    arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format, most: int = MOST_SAMPLES
+) -> ManySamples:
     """Return the samples that a body asks for, in the format the answer will have.
+
+    Parameters
+    ----------
+    most : samples of a table.
 
     Raises
     ------
@@ -170,7 +176,7 @@ def samples_asked(arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format) ->
             value=False,
             way_out="let one of them be true, or ask for format=json, which has the summary",
         )
-    _refuse_too_many(asked.count, MOST_LISTED if lists_any and not is_table else MOST_SAMPLES)
+    _refuse_too_many(asked.count, MOST_LISTED if lists_any and not is_table else most)
     working = asked.within == WORKING_TRAVEL
     samples = JointSamples(question.arm, asked.count, asked.seed, working=working)
     return ManySamples(question, samples, asked)

@@ -274,6 +274,9 @@ class SurveyStorage(Protocol):
     def made(self, survey: str, number: int) -> bytes:
         """Return what became of a piece."""
 
+    def beginnings(self, survey: str, length: int) -> Sequence[bytes]:
+        """Return the first bytes of what became of each piece, by number."""
+
     def given(self, survey: str, number: int) -> bytes:
         """Return what a piece was given."""
 

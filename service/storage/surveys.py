@@ -167,6 +167,14 @@ class SqlSurveys:
         """See ``SurveyStorage.made``."""
         return self._of_piece(SURVEY_PIECES.c.made, survey, number)
 
+    def beginnings(self, survey: str, length: int) -> Sequence[bytes]:
+        """See ``SurveyStorage.beginnings``."""
+        begin = sa.func.substr(SURVEY_PIECES.c.made, 1, length, type_=sa.LargeBinary)
+        asked = sa.select(begin).where(SURVEY_PIECES.c.survey == survey)
+        with self._asking() as connection:
+            rows = connection.execute(asked.order_by(SURVEY_PIECES.c.number)).scalars()
+            return [bytes(row) for row in rows]
+
     def given(self, survey: str, number: int) -> bytes:
         """See ``SurveyStorage.given``."""
         return self._of_piece(SURVEY_PIECES.c.given, survey, number)

@@ -70,6 +70,15 @@ def test_what_is_made_is_kept_once_and_counted_once(store: SurveyStorage) -> Non
     assert list(store.left("a1", -1, 10)) == [PIECES[2]]
 
 
+def test_the_first_bytes_of_what_was_made(store: SurveyStorage) -> None:
+    add(store)
+    store.begin("a1", AT)
+    long = bytes(range(256)) * 40
+    store.keep("a1", [MadePiece(2, long, {}), MadePiece(0, b"\x00x", {}), MadePiece(1, long, {})])
+    assert store.beginnings("a1", 300) == [b"\x00x", long[:300], long[:300]]
+    assert store.beginnings("a2", 300) == []
+
+
 def test_a_state_that_is_the_last_stays(store: SurveyStorage) -> None:
     add(store)
     assert not store.keep("a1", [made(0)])  # nobody has begun
