@@ -57,6 +57,12 @@ class Units:
         lengths: FloatArray = np.multiply(metres, denominator) / numerator
         return lengths
 
+    def power_out(self, value: float, power: int) -> float:
+        """Return an area (``power`` 2) or a volume (3) in the user's unit of length."""
+        for _ in range(power):
+            value = float(self.length_out(value))
+        return value
+
     def angle_in(self, value: float | FloatArray) -> FloatArray:
         """Return radians."""
         radians: FloatArray = np.deg2rad(value) if self.angle == "deg" else np.multiply(value, 1.0)

@@ -43,7 +43,8 @@ COUNTS = {
     **dict.fromkeys(("arm-revisions", "arm-revision", "ping", "livez", "readyz"), 1),
     **dict.fromkeys(("cells", "cells-create", "cell", "cell-replace"), 1),
     **dict.fromkeys(("cell-revisions", "cell-revision"), 1),
-    **dict.fromkeys(("surveys", "surveys-create"), 1),
+    "surveys": 1,
+    "surveys-create": 3,
 }
 _SURVEY = "/v1/surveys/{survey}"
 WITHOUT = {
