@@ -3,6 +3,8 @@
 Left out: everything it can read, which the app answers.
 """
 
+from typing import Any
+
 import h11
 from uvicorn.protocols.http.h11_impl import H11Protocol
 
@@ -14,8 +16,23 @@ from service.wire.answers import json_bytes
 _CAN_ANSWER = (h11.IDLE, h11.SEND_RESPONSE)
 
 
+class _Uncopied(h11.Connection):
+    """A connection that passes bodies on as they are; they would be copied once more."""
+
+    def send(self, event: h11.Event) -> bytes | None:  # type: ignore[override]
+        """Return what is to be sent for an event, None where the connection is to be closed."""
+        parts = self.send_with_data_passthrough(event)
+        if parts is None:
+            return None
+        return parts[0] if len(parts) == 1 else b"".join(parts)
+
+
 class FixedLengthH11(H11Protocol):
     """The server's protocol; it would send chunks to a client whose request it cannot read."""
+
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self.conn = _Uncopied(h11.SERVER)
 
     def send_400_response(self, msg: str) -> None:
         """Send the problem document and close; ``msg`` says nothing that helps."""

@@ -176,6 +176,7 @@ NUMBERS = st.one_of(
 )
 BEYOND = st.one_of(NUMBERS, st.sampled_from([1e12, -1e154, 1e308]))
 UNITS = st.sampled_from(["mm-deg", "m-rad", "in-deg"])
+Bodies = st.SearchStrategy[dict[str, Any]]
 FORMS = {"quaternion-wxyz": 4, "zyx-current": 3, "rotation-vector": 3, "xyx-fixed": 3}
 
 
@@ -308,23 +309,6 @@ def reaches(draw: st.DrawFn) -> dict[str, Any]:
     return {"arm": arm, "targets": draw(st.lists(TARGETS, min_size=1, max_size=3)), **asked}
 
 
-def test_targets_at_the_edges(schema: Any) -> None:
-    operation = schema["/v1/reach/checks"]["POST"]
-    statuses: list[int] = []
-
-    @seed(20260104)
-    @examples(8 * EXAMPLES)
-    @given(body=reaches())
-    def hold(body: dict[str, Any]) -> None:
-        case = operation.Case(body=body, media_type="application/json")
-        statuses.append(held(case).status_code)
-
-    hold()
-    assert set(statuses) <= {200, 422}
-    # Most arms drawn are refused; what else is wrong with targets is met with drawn requests.
-    assert statuses.count(200) >= 10
-
-
 @st.composite
 def ways(draw: st.DrawFn) -> dict[str, Any]:
     """Draw a question about travels that is right in shape and count, with values at the edges."""
@@ -359,19 +343,25 @@ def ways(draw: st.DrawFn) -> dict[str, Any]:
     return {"arm": arm, "travels": draw(st.lists(travel, min_size=1, max_size=2)), **asked}
 
 
-def test_travels_at_the_edges(schema: Any) -> None:
-    operation = schema["/v1/reach/travels"]["POST"]
+@pytest.mark.parametrize(
+    ("path", "bodies", "drawn"),
+    [("/v1/reach/checks", reaches(), 20260104), ("/v1/reach/travels", ways(), 20260105)],
+    ids=["targets", "travels"],
+)
+def test_reach_at_the_edges(schema: Any, path: str, bodies: Bodies, drawn: int) -> None:
+    operation = schema[path]["POST"]
     statuses: list[int] = []
 
-    @seed(20260105)
+    @seed(drawn)
     @examples(8 * EXAMPLES)
-    @given(body=ways())
+    @given(body=bodies)
     def hold(body: dict[str, Any]) -> None:
         case = operation.Case(body=body, media_type="application/json")
         statuses.append(held(case).status_code)
 
     hold()
     assert set(statuses) <= {200, 422}
+    # Most arms drawn are refused; what else is wrong is met with drawn requests.
     assert statuses.count(200) >= 10
 
 
