@@ -40,6 +40,19 @@ def crossings_of(
     inside, outside : (count, 2), places.
     of_inside : (count, joints), postures that reach the ones; toward_outside : that came near the
         others.
+
+    Examples
+    --------
+    Two slides of 1 m, on the way from within to beyond.
+
+    >>> from kinematics.envelope.descents import InView
+    >>> from kinematics.reach.travel_region import TravelRegion
+    >>> one = np.ones((1, 2, 2)) * np.eye(2)
+    >>> box = TravelRegion(np.zeros(2), np.ones(2), np.empty((0, 2)), np.empty(0), np.empty(0))
+    >>> slides = InView(lambda q: (q, np.repeat(one, len(q), 0)), box, np.ones(2), 1e-9)
+    >>> start = np.array([[0.5, 0.5]])
+    >>> crossings_of(slides, start, start + [[1.0, 0.0]], start, start).places.round(2)
+    array([[1. , 0.5]])
     """
     low, high, joint_values = inside.copy(), outside.copy(), of_inside.copy()
     for _ in range(CROSSING_HALVINGS):
@@ -54,7 +67,21 @@ def crossings_of(
 def reach_either(
     seeker: Seeker, places: FloatArray, starts: FloatArray, others: FloatArray
 ) -> tuple[FloatArray, NDArray[np.bool_]]:
-    """Return postures (count, joints) found from either start, and whether they reach places."""
+    """Return postures (count, joints) found from either start, and whether they reach places.
+
+    Examples
+    --------
+    A table of two slides of 1 m.
+
+    >>> from kinematics.envelope.descents import InView
+    >>> from kinematics.reach.travel_region import TravelRegion
+    >>> one = np.ones((1, 2, 2)) * np.eye(2)
+    >>> box = TravelRegion(np.zeros(2), np.ones(2), np.empty((0, 2)), np.empty(0), np.empty(0))
+    >>> slides = InView(lambda q: (q, np.repeat(one, len(q), 0)), box, np.ones(2), 1e-9)
+    >>> start = np.array([[0.5, 0.5]])
+    >>> reach_either(slides, np.array([[0.2, 1.0]]), start, start)[1]
+    array([ True])
+    """
     found = seeker.to(places, starts)
     reached = np.asarray(found.off <= seeker.near)
     joint_values = found.joint_values

@@ -14,7 +14,7 @@ import numpy as np
 from kinematics.envelope.descents import Seeker
 from kinematics.envelope.grid_reach import Grid, Samples, fill, shifted
 from kinematics.envelope.measures import Measure
-from kinematics.envelope.tolerances import DRAWN_BOUND
+from kinematics.envelope.tolerances import DRAWN_BOUND, MOST_CUBES, SHORT_OF
 
 
 def drawn_volume(seeker: Seeker, samples: Samples, count: int) -> Measure:
@@ -40,7 +40,12 @@ def drawn_volume(seeker: Seeker, samples: Samples, count: int) -> Measure:
     True
     """
     least, most = samples.places.min(axis=0), samples.places.max(axis=0)
-    step = float((most - least).prod() / count) ** (1.0 / 3.0)
+    sides = most - least
+    step = max(float(sides.prod() / count) ** (1.0 / 3.0), float(sides.max()) / MOST_CUBES)
+    if sides.min() < 2.0 * step:
+        # Too thin for cubes: something between nothing and a box that samples fall short of.
+        half = 0.5 * float((SHORT_OF * sides).prod())
+        return Measure(half, half)
     margin = 2
     while True:
         shape = tuple((np.ceil((most - least) / step).astype(int) + 2 * margin).tolist())

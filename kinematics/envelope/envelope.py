@@ -13,6 +13,7 @@ from kinematics.arm import Arm
 from kinematics.envelope.known_structures import Views, level, slides, upright
 from kinematics.envelope.pair_of_arm import point_motion
 from kinematics.envelope.plan_axes import PlanAxes, plan_axes
+from kinematics.envelope.sampled_views import Fineness
 from kinematics.envelope.search import Search, search_of
 from kinematics.envelope.searched import searched
 from kinematics.envelope.section import turn_of, turns_alone
@@ -25,6 +26,7 @@ from kinematics.envelope.shapes import (
     Extreme,
     Turn,
 )
+from kinematics.envelope.tolerances import MOST_CELLS
 from kinematics.envelope.wrist import wrist_in_flange
 from kinematics.number_checks import FloatArray
 from kinematics.reach.sample_summary import FirstAxis, first_axis
@@ -37,6 +39,7 @@ def envelope_of(
     working: bool = False,
     point: str = TOOL,
     resolution: float | None = None,
+    most_cells: int = MOST_CELLS,
 ) -> Envelope:
     """Return how far an arm reaches within its travel.
 
@@ -45,8 +48,9 @@ def envelope_of(
     tool_in_flange : (4, 4); its axes do not matter.
     working : whether working travel bounds it too.
     point : TOOL, or WRIST for where the axes of the wrist meet.
-    resolution : m, of views that are sampled; left out, a 128th of what is reached. Exact views
+    resolution : m, of views that are sampled; left out, a 64th of what is reached. Exact views
         have none.
+    most_cells : along what is reached: a finer resolution is refused (``UnfitResolution``).
 
     Raises
     ------
@@ -67,20 +71,21 @@ def envelope_of(
     if point == WRIST:
         tool_in_flange = wrist_in_flange(arm)
     search = search_of(arm, tool_in_flange, working=working)
+    fineness = Fineness(resolution, most_cells)
     axis = first_axis(arm)
     axes = plan_axes(arm, axis)
     motion = point_motion(arm, tool_in_flange, working=working)
     if axis is None:
         extremes = search.extremes(("x", "y", "z"), search.along(np.eye(3))[0])
-        views = slides(motion, axes) or searched(search, None, axes, None, extremes, resolution)
+        views = slides(motion, axes) or searched(search, None, axes, None, extremes, fineness)
         turn = None
     else:
         extremes = search.extremes(COORDINATES[SECTION], search.about(axis)[0])
         angle = turn_of(motion) if turns_alone(motion) else None
         views = (
             upright(motion, axis, axes, search)
-            or level(motion, axis, axes, search, extremes, resolution)
-            or searched(search, axis, axes, angle, extremes, resolution)
+            or level(motion, axis, axes, search, extremes, fineness)
+            or searched(search, axis, axes, angle, extremes, fineness)
         )
         turn = _turn(search, axes, angle, extremes[1])
     return Envelope(

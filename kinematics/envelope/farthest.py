@@ -49,6 +49,22 @@ def extremes_of(
     position_of : the point in the base.
     joint_values : (count, joints), postures to start from, spread over travel.
     length : m, of the arm: a twentieth of it is looked beyond the best of the postures.
+
+    Examples
+    --------
+    Two slides of 1 m.
+
+    >>> from kinematics.envelope.descents import InView
+    >>> from kinematics.reach.travel_region import TravelRegion
+    >>> one = np.ones((1, 2, 2)) * np.eye(2)
+    >>> box = TravelRegion(np.zeros(2), np.ones(2), np.empty((0, 2)), np.empty(0), np.empty(0))
+    >>> slides = InView(lambda q: (q, np.repeat(one, len(q), 0)), box, np.ones(2), 0.0)
+    >>> space = lambda q: (np.pad(q, ((0, 0), (0, 1))), np.repeat(one, len(q), 0))
+    >>> found = extremes_of(
+    ...     Measured(("x", "y"), slides.view), space, box, np.ones(2), np.full((1, 2), 0.5), 1.0
+    ... )
+    >>> [(one.measure, one.greatest, round(one.value, 9)) for one in found]
+    [('x', False, 0.0), ('x', True, 1.0), ('y', False, 0.0), ('y', True, 1.0)]
     """
     places = measured.view(joint_values)[0]
     count = min(EXTREME_STARTS, len(joint_values))

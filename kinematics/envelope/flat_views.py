@@ -24,6 +24,19 @@ def flat_view(search: Search, view: PointView, kind: str, directions: FloatArray
     Parameters
     ----------
     view : of two coordinates; directions : (2, 3), theirs in the base.
+
+    Examples
+    --------
+    A link that turns once: a circle, there and back.
+
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.envelope.search import search_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> arm = Arm("one", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 0.4, 0, 0, 0),)))
+    >>> search, plan = search_of(arm, np.eye(4)), np.eye(3)[:2]
+    >>> view = flat_view(search, search.along(plan)[0], "plan", plan)
+    >>> view.area.value, view.box.round(9).tolist()
+    (0.0, [[-0.4, -0.4], [0.4, 0.4]])
     """
     rank = search.rank(view)
     if rank == 2:

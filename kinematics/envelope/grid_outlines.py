@@ -46,6 +46,23 @@ def outlines_of_grid(grid: Grid, seeker: Seeker, shown: FloatArray) -> Outlines:
     Parameters
     ----------
     shown : (count, 2), places known to be reached, whether the grid shows them or not.
+
+    Examples
+    --------
+    A table of two slides of 1 m.
+
+    >>> from kinematics.envelope.descents import InView
+    >>> from kinematics.reach.travel_region import TravelRegion
+    >>> one = np.ones((1, 2, 2)) * np.eye(2)
+    >>> box = TravelRegion(np.zeros(2), np.ones(2), np.empty((0, 2)), np.empty(0), np.empty(0))
+    >>> slides = InView(lambda q: (q, np.repeat(one, len(q), 0)), box, np.ones(2), 1e-9)
+    >>> from kinematics.envelope.grid_reach import Samples, fill
+    >>> grid = Grid(np.array([-0.5, -0.5]), 0.3, (7, 7), 2)
+    >>> inside = np.array([[0.4, 0.4]])
+    >>> fill(grid, slides, Samples(inside, inside))
+    >>> found = outlines_of_grid(grid, slides, inside)
+    >>> bool(abs(found.area.value - 1.0) < found.area.error_bound), len(found.curves)
+    (True, 1)
     """
     edges = _edges_of(grid.reached)
     found = _on_boundary(grid, seeker, edges)

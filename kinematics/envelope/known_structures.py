@@ -19,7 +19,7 @@ from kinematics.envelope.measures import Measure
 from kinematics.envelope.pair_of_arm import PointMotion, pair_region_of
 from kinematics.envelope.pair_views import plan_of_pair, section_view, swept_plan
 from kinematics.envelope.plan_axes import PlanAxes
-from kinematics.envelope.sampled_views import sampled_view
+from kinematics.envelope.sampled_views import Fineness, sampled_view
 from kinematics.envelope.search import Search
 from kinematics.envelope.section import section_from, turn_of, turns_alone
 from kinematics.envelope.shapes import PLAN, SECTION, SIDE, Curve, Extreme, View
@@ -38,7 +38,25 @@ class Views(NamedTuple):
 
 
 def upright(motion: PointMotion, axis: FirstAxis, axes: PlanAxes, search: Search) -> Views | None:
-    """Return the envelope of two joints that keep the point in a plane along axis 1."""
+    """Return the envelope of two joints that keep the point in a plane along axis 1.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> from kinematics.envelope.plan_axes import plan_axes
+    >>> from kinematics.envelope.search import search_of
+    >>> from kinematics.reach.sample_summary import first_axis
+    >>> axis = first_axis(arm)
+    >>> axes, search = plan_axes(arm, axis), search_of(arm, np.eye(4))
+    >>> from kinematics.envelope.pair_of_arm import point_motion
+    >>> motion = point_motion(arm, np.eye(4))
+    >>> round(upright(motion, axis, axes, search).volume.value / np.pi, 9)
+    0.672
+    """
     section = section_from(motion, axis)
     if section is None:
         return None
@@ -65,13 +83,35 @@ def level(
     axes: PlanAxes,
     search: Search,
     extremes: tuple[Extreme, ...],
-    resolution: float | None,
+    fineness: Fineness,
 ) -> Views | None:
     """Return the envelope of joints that move level, and others up and down.
 
     Parameters
     ----------
     extremes : of radius and height, least before greatest.
+    fineness : of a plan that is sampled.
+
+    Examples
+    --------
+    Two links of 0.5 and 0.3 m that turn level.
+
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("flat", Table(Convention.STANDARD, tuple(rows)))
+    >>> from kinematics.envelope.plan_axes import plan_axes
+    >>> from kinematics.envelope.search import search_of
+    >>> from kinematics.reach.sample_summary import first_axis
+    >>> axis = first_axis(arm)
+    >>> axes, search = plan_axes(arm, axis), search_of(arm, np.eye(4))
+    >>> from kinematics.envelope.pair_of_arm import point_motion
+    >>> motion = point_motion(arm, np.eye(4))
+    >>> extremes = search.extremes(("radius", "height"), search.about(axis)[0])
+    >>> views = level(motion, axis, axes, search, extremes, Fineness())
+    >>> round(views.plan.area.value / np.pi, 9), views.section.flat
+    (0.6, True)
     """
     across, lifts = motion.movers(axes.directions), motion.movers(axis.direction[None])
     if not turns_alone(motion) or set(across) & set(lifts) or not motion.apart(across):
@@ -95,7 +135,7 @@ def level(
         plan = plan_of_pair(region, axes.directions)
     if plan is None:
         samples = search.samples(view)
-        plan = sampled_view(seeker, samples, PLAN, axes.directions, resolution).view
+        plan = sampled_view(seeker, samples, PLAN, axes.directions, fineness).view
     volume = Measure(
         plan.area.value * stroke,
         plan.area.error_bound * stroke + (1e-3 * slack * plan.area.value if stroke else 0.0),
@@ -104,7 +144,22 @@ def level(
 
 
 def slides(motion: PointMotion, axes: PlanAxes) -> Views | None:
-    """Return the envelope of slides alone."""
+    """Return the envelope of slides alone.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.envelope.plan_axes import plan_axes
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> rows = [Row(JointKind.PRISMATIC, 0.0, turned, 0.0, 0.0, travel=Travel(0.0, 2.0))
+    ...         for turned in (np.pi / 2, 0.0)]
+    >>> arm = Arm("cross", Table(Convention.STANDARD, tuple(rows)))
+    >>> from kinematics.envelope.pair_of_arm import point_motion
+    >>> motion = point_motion(arm, np.eye(4))
+    >>> views = slides(motion, plan_axes(arm, None))
+    >>> round(views.section.area.value, 9), views.plan.area.value, views.volume.value
+    (0.0, 0.0, 0.0)
+    """
     movers = motion.movers(np.eye(3))
     fixed = np.ptp(motion.linear, axis=0).max(initial=0.0) <= motion.off
     tied = motion.limits.weights[:, list(movers)].any()

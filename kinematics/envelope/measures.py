@@ -86,6 +86,16 @@ def folded_area_of(region: PairRegion, aside: float) -> Measure:
     Parameters
     ----------
     aside : distance of the plane of the region from the line ``x = 0`` it is turned about.
+
+    Examples
+    --------
+    A box of 3 m by 1 m in a plane that passes the axis by 4 m: radii from 4 to 5.
+
+    >>> still = np.broadcast_to(np.eye(2), (1, 2, 2))
+    >>> box = np.array([[0.0, 0.0], [3.0, 0.0], [3.0, 1.0], [0.0, 1.0]])
+    >>> region = PairRegion(lambda q: (q, np.repeat(still, len(q), 0)), box, np.array([0.0, 1.0]))
+    >>> round(folded_area_of(region, 4.0).value, 12)
+    1.0
     """
 
     def of_lines(heights: FloatArray) -> FloatArray:
@@ -103,6 +113,11 @@ def both_sides(places: FloatArray, inside: NDArray[np.bool_]) -> tuple[FloatArra
 
     Those behind the line are told as those before it; what is none begins and ends at 0. Sorted
     by their beginnings.
+
+    Examples
+    --------
+    >>> both_sides(np.array([[-2.0, 1.0]]), np.array([[True, False]]))
+    (array([[0., 0.]]), array([[1., 2.]]))
     """
     begin, end = _sides(places, inside)
     order = np.argsort(begin, axis=1, kind="stable")

@@ -131,6 +131,18 @@ def pair_region_of(
     ----------
     directions : (2, 3), unit vectors in the base, across each other; origin : (3,), counted from.
     held : joints that do not count and stay where the first posture of the motion has them.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> motion = point_motion(arm, np.eye(4))
+    >>> held = motion.at(motion.postures * [0.0, 1.0, 1.0])
+    >>> region = pair_region_of(held, np.eye(3)[[0, 2]], np.zeros(3), held=(0,))
+    >>> region.extent().round(9)
+    array([-0.8,  0.8])
     """
     pair = tuple(joint for joint in motion.movers(directions) if joint not in held)
     if len(pair) != 2 or not motion.apart(pair):

@@ -66,18 +66,11 @@ class Stretches:
 
     def measured(self, primitive: Callable[[FloatArray], FloatArray]) -> FloatArray:
         """Return the integral of a density over the reached stretches, (lines,)."""
-        return np.asarray(sum_of_steps(self.places, self.counts > 0, primitive), dtype=np.float64)
-
-
-def sum_of_steps(
-    places: FloatArray, inside: NDArray[np.bool_], primitive: Callable[[FloatArray], FloatArray]
-) -> FloatArray:
-    """Return the sum over stretches of the primitive at their ends, (lines,)."""
-    finite = np.where(np.isfinite(places), places, 0.0)
-    values = primitive(finite)
-    steps = np.where(inside[:, :-1], values[:, 1:] - values[:, :-1], 0.0)
-    total: FloatArray = steps.sum(axis=1)
-    return total
+        values = primitive(np.where(np.isfinite(self.places), self.places, 0.0))
+        inside = self.counts[:, :-1] > 0
+        steps = np.where(inside, values[:, 1:] - values[:, :-1], 0.0)
+        total: FloatArray = steps.sum(axis=1)
+        return total
 
 
 class PairRegion:

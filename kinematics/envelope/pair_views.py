@@ -20,7 +20,21 @@ from kinematics.number_checks import FloatArray
 
 
 def section_view(section: Section, axis_direction: FloatArray) -> View:
-    """Return the section of radius and height."""
+    """Return the section of radius and height.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> from kinematics.envelope.section import section_of
+    >>> section = section_of(arm, np.eye(4))
+    >>> view = section_view(section, np.array([0.0, 0.0, 1.0]))
+    >>> view.box.round(3).tolist(), round(view.area.value / np.pi, 9)
+    ([[0.0, -0.8], [0.8, 0.8]], 0.3)
+    """
     region = section.region
     size = _size(region)
 
@@ -40,6 +54,14 @@ def plan_of_pair(region: PairRegion, directions: FloatArray) -> View:
     Parameters
     ----------
     directions : (2, 3), of its coordinates in the base.
+
+    Examples
+    --------
+    >>> still = np.broadcast_to(np.eye(2), (1, 2, 2))
+    >>> box = np.array([[0.0, 0.0], [3.0, 0.0], [3.0, 1.0], [0.0, 1.0]])
+    >>> region = PairRegion(lambda q: (q, np.repeat(still, len(q), 0)), box, np.array([0.0, 1.0]))
+    >>> plan_of_pair(region, np.eye(3)[:2]).box.round(9).tolist()
+    [[0.0, 0.0], [3.0, 1.0]]
     """
     size = _size(region)
     curves = outlines_of(plain_lines(region, size), region.corners, CHORD * size)
@@ -47,7 +69,16 @@ def plan_of_pair(region: PairRegion, directions: FloatArray) -> View:
 
 
 def plain_lines(region: PairRegion, size: float) -> LevelLines:
-    """Return the stretches of a region as level lines have them."""
+    """Return the stretches of a region as level lines have them.
+
+    Examples
+    --------
+    >>> still = np.broadcast_to(np.eye(2), (1, 2, 2))
+    >>> box = np.array([[0.0, 0.0], [3.0, 0.0], [3.0, 1.0], [0.0, 1.0]])
+    >>> region = PairRegion(lambda q: (q, np.repeat(still, len(q), 0)), box, np.array([0.0, 1.0]))
+    >>> plain_lines(region, 3.0)(np.array([0.5]))
+    [array([[0., 3.]])]
+    """
 
     def lines(heights: FloatArray) -> list[Ends]:
         stretches = region.stretches(heights)
@@ -66,6 +97,19 @@ def swept_plan(section: Section, lower: float, axes: PlanAxes) -> PairRegion:
     Parameters
     ----------
     lower : rad, of joint 1, where its turn begins.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> from kinematics.envelope.section import section_of
+    >>> section = section_of(arm, np.eye(4))
+    >>> axes = PlanAxes(np.eye(3)[:2], np.zeros(2), 1.0)
+    >>> swept_plan(section, 0.0, axes).extent().round(9)
+    array([-0.8,  0.8])
     """
     least, most = section.region.extent()
     outward, sideways = axes.directions @ section.outward, axes.directions @ section.sideways

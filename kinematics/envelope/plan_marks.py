@@ -11,7 +11,17 @@ from kinematics.number_checks import FloatArray
 
 
 def plan_centre(envelope: Envelope) -> FloatArray:
-    """Return where axis 1 stands in the plan, (2,), m; the base's origin without one."""
+    """Return where axis 1 stands in the plan, (2,), m; the base's origin without one.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.envelope.envelope import envelope_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.REVOLUTE, 0.3, 0.0, 0.0, 0.0)
+    >>> plan_centre(envelope_of(Arm("one", Table(Convention.MODIFIED, (row,))), np.eye(4)))
+    array([0.3, 0. ])
+    """
     if envelope.axis is None:
         return np.zeros(2)
     centre: FloatArray = envelope.plan.directions @ envelope.axis.point
@@ -19,7 +29,18 @@ def plan_centre(envelope: Envelope) -> FloatArray:
 
 
 def place_in_section(envelope: Envelope, extreme: Extreme) -> FloatArray:
-    """Return where an extreme is reached, (2,), m, in the section; in the side view without one."""
+    """Return where an extreme is reached, (2,), m, in the section; in the side view without one.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.envelope.envelope import envelope_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.1, 0.0)
+    >>> envelope = envelope_of(Arm("one", Table(Convention.STANDARD, (row,))), np.eye(4))
+    >>> place_in_section(envelope, envelope.extremes[0]).round(9)
+    array([0.4, 0.1])
+    """
     if envelope.axis is None:
         return extreme.position[[0, 2]]
     return envelope.axis.radius_and_height(extreme.position)

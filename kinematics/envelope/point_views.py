@@ -46,6 +46,14 @@ def about(arm: Arm, tool_in_flange: FloatArray, axis: FirstAxis) -> PointView:
 
     On the axis itself the radius grows whichever way the point moves; it is told along one of
     them.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> arm = Arm("one", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 0.5, 0, 0.2, 0),)))
+    >>> axis = FirstAxis(np.zeros(3), np.array([0.0, 0.0, 1.0]))
+    >>> about(arm, np.eye(4), axis)(np.array([[0.7]]))[0].round(12)
+    array([[0.5, 0.2]])
     """
 
     def view(joint_values: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -63,7 +71,14 @@ def about(arm: Arm, tool_in_flange: FloatArray, axis: FirstAxis) -> PointView:
 
 
 def only(view: PointView, coordinate: int) -> PointView:
-    """Return one coordinate of a view as a view of its own."""
+    """Return one coordinate of a view as a view of its own.
+
+    Examples
+    --------
+    >>> view = lambda q: (q, np.ones((1, 2, 2)))
+    >>> only(view, 1)(np.array([[3.0, 4.0]]))[0]
+    array([[4.]])
+    """
 
     def alone(joint_values: FloatArray) -> tuple[FloatArray, FloatArray]:
         places, jacobians = view(joint_values)

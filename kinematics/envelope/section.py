@@ -101,12 +101,31 @@ def section_of(arm: Arm, tool_in_flange: FloatArray, *, working: bool = False) -
 
 
 def turn_of(motion: PointMotion) -> float:
-    """Return the bearings joint 1 can turn to, rad, at most a whole turn."""
+    """Return the bearings joint 1 can turn to, rad, at most a whole turn.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, travel=Travel(-1.0, 1.5))
+    >>> turn_of(point_motion(Arm("one", Table(Convention.STANDARD, (row,))), np.eye(4)))
+    2.5
+    """
     return min(float(motion.limits.upper[0] - motion.limits.lower[0]), 2.0 * np.pi)
 
 
 def section_from(motion: PointMotion, axis: FirstAxis) -> Section | None:
-    """Return what ``section_of`` does of a motion already looked at."""
+    """Return what ``section_of`` does of a motion already looked at.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> axis = FirstAxis(np.zeros(3), np.array([0.0, 0.0, 1.0]))
+    >>> section_from(point_motion(arm, np.eye(4)), axis).aside
+    0.0
+    """
     if not turns_alone(motion) or 0 not in motion.movers(np.eye(3)):
         return None
     # With joint 1 at 0 throughout, what moves is what the others do.

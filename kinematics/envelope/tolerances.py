@@ -102,6 +102,9 @@ MOST_CELLS = 2048
 """Steps of a grid along what is reached: with the first an answer takes a second and an area is
 told within half a hundredth, with the second it takes minutes."""
 
+FEWEST_CELLS = 4
+"""The same: with fewer the grid says nothing of a shape."""
+
 PLACES_DRAWN = 4000
 """In the box around what is reached: a volume is told within two to eight hundredths, in half a
 second."""
@@ -112,3 +115,10 @@ leave it."""
 
 EXTREME_STEPS = 60
 """Of a search for an extreme: where it is flat, half as many leave 1e-7 of the length."""
+
+MOST_CUBES = 256
+"""Along what is reached, in which places are drawn: what is thinner is told as a box."""
+
+SHORT_OF = 1.25
+"""Of the box around sampled postures, what surely holds all that is reached: each side falls short
+by some hundredths."""

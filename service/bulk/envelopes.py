@@ -16,7 +16,7 @@ from service.bulk.answering import Bulk
 from service.cautions import CAUTIONS
 from service.drawings.envelope_sheet import envelope_sheet
 from service.drawings.envelope_words import SheetLabels
-from service.operations.envelopes import EnvelopeQuestion, envelope_question
+from service.operations.envelopes import AT_ONCE, EnvelopeQuestion, envelope_question
 from service.wire.answers import json_answer
 from service.wire.body import read_json
 from service.wire.envelopes import EnvelopeRequest, Within
@@ -40,7 +40,7 @@ async def answer_envelope(request: Request) -> Response:
     arms = request.app.state.arms
 
     def begun() -> EnvelopeQuestion:
-        return envelope_question(arms, EnvelopeRequest.model_validate(body))
+        return envelope_question(arms, EnvelopeRequest.model_validate(body), AT_ONCE)
 
     asked = await bulk.threads.run(begun)
     each = [bulk.threads.run(partial(asked.found, within)) for within in asked.within]
@@ -61,7 +61,7 @@ def labels_of(asked: EnvelopeQuestion) -> SheetLabels:
     read, shown = question.meant.read, question.tool.shown
     return SheetLabels(
         arm=question.arm.name,
-        title="",
+        title=str(read.document.get("title") or ""),
         revision="-" if question.meant.revision is None else str(question.meant.revision),
         digest=read.digests.digest,
         tool=shown if isinstance(shown, str) else "given in the question",

@@ -88,9 +88,13 @@ class _Layout:
 def _laid_out(
     envelopes: Sequence[Envelope], numbers: Numbers, turns: Sequence[TurnTold], room: Box
 ) -> _Layout:
-    """Return the views at the largest scale that has room, the smallest there is failing that."""
-    spans = [view.box[1] - view.box[0] for one in envelopes for view in (one.section, one.plan)]
-    size = max(float(span.max()) for span in spans)
+    """Return the views at the largest scale that has room."""
+    # How large it all is with its zeros: a point that never moves may be far from the base.
+    metres = [
+        figure_of_section(envelopes, 1.0, numbers).inner,
+        figure_of_plan(envelopes, 1.0, numbers, ()).inner,
+    ]
+    size = max(max(box.right - box.left, box.bottom - box.top) for box in metres)
     for scale in SCALES if size > 0.0 else (ACTUAL_SIZE,):
         if size * scale.mm_per_metre > room.right - room.left:
             continue

@@ -71,7 +71,7 @@ def rows_of(
     envelopes: Sequence[Envelope], labels: SheetLabels, units: Units, scale: str
 ) -> list[list[Field]]:
     """Return the fields of the title block, row by row."""
-    point = "tool point" if envelopes[0].point == TOOL else "where the axes of the wrist meet"
+    point = "tool point" if envelopes[0].point == TOOL else "centre of the wrist"
     rows = [
         [
             Field("arm", labels.arm, 0.36, NORMAL),

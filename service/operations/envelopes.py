@@ -10,12 +10,13 @@ from functools import cached_property
 from kinematics.arm import BASE
 from kinematics.envelope.envelope import envelope_of
 from kinematics.envelope.measures import Measure
+from kinematics.envelope.sampled_views import UnfitResolution
 from kinematics.envelope.shapes import COORDINATES, Envelope, Extreme, Turn, View
-from kinematics.errors import KinematicsError
+from kinematics.envelope.tolerances import MOST_CELLS
 from kinematics.travel_limits import limits_of
 from service.cautions import NOT_A_SAFETY_FUNCTION
 from service.convert import Units, joint_row_out
-from service.errors import UnusableValue
+from service.errors import ServiceError, TooLarge, UnusableValue
 from service.operations.arms import Arms
 from service.operations.questions import Question, question_of
 from service.wire.arms import ReadArm
@@ -24,17 +25,29 @@ from service.wire.models import PosesRequest
 
 TRAVEL: Within = "travel"
 WORKING: Within = "working-travel"
+AT_ONCE = 256
+"""Cells along what is reached of an answer at once: some seconds. Surveys may take more."""
+
+_TOLD = 1.006
+"""More than three digits can be off."""
+
 _ANY_FORM = "quaternion-wxyz"
 """No orientation is told."""
 
 
 @dataclass(frozen=True, eq=False)
 class EnvelopeQuestion:
-    """An arm with a tool, which of its points, and how fine; ``resolution`` in m."""
+    """An arm with a tool, which of its points, and how fine.
+
+    Attributes
+    ----------
+    resolution : m; most_cells : along what is reached, how fine it may be at most.
+    """
 
     question: Question
     asked: EnvelopeRequest
     resolution: float | None
+    most_cells: int = MOST_CELLS
 
     @cached_property
     def within(self) -> tuple[Within, ...]:
@@ -53,7 +66,8 @@ class EnvelopeQuestion:
 
         Raises
         ------
-        KinematicsError : the arm, its point or the resolution cannot be used.
+        KinematicsError, UnusableValue : the arm, its point or the resolution cannot be used.
+        TooLarge : the resolution is for a survey.
         """
         question = self.question
         try:
@@ -63,12 +77,34 @@ class EnvelopeQuestion:
                 working=within == WORKING,
                 point=self.asked.point,
                 resolution=self.resolution,
+                most_cells=self.most_cells,
             )
-        except KinematicsError as error:
-            if error.where == ("resolution",):
-                # As it was typed, not in metres.
-                error.value = self.asked.resolution
-            raise
+        except UnfitResolution as error:
+            raise self._unfit(error) from None
+
+    def _unfit(self, error: UnfitResolution) -> ServiceError:
+        """Return the refusal in the user's unit, with what a survey may ask for."""
+        assert self.resolution is not None
+        assert self.asked.resolution is not None
+        length, given = self.question.units.length, self.asked.resolution
+        # Told with three digits, and to be fit all the same.
+        fit = (error.least * _TOLD, error.most / _TOLD)
+        least, most = (self.question.units.value_out(metres, "m") for metres in fit)
+        if self.resolution < error.least and self.most_cells < MOST_CELLS:
+            return TooLarge(
+                f"places {given:g} {length} apart are too many for an answer at once",
+                where=("resolution",),
+                value=given,
+                way_out=f"ask for {least:.3g} {length} or more, or post a survey of kind envelope "
+                "to /v1/surveys",
+                status=422,
+            )
+        return UnusableValue(
+            f"a resolution of {given:g} {length} does not fit this reach",
+            where=("resolution",),
+            value=given,
+            way_out=f"ask for {least:.3g} to {most:.3g} {length}, or leave it out",
+        )
 
     def answer(self, found: Mapping[Within, Envelope]) -> dict[str, object]:
         """Return what is answered, from what was found within each."""
@@ -117,8 +153,14 @@ class EnvelopeQuestion:
         }
 
 
-def envelope_question(arms: Arms[ReadArm], asked: EnvelopeRequest) -> EnvelopeQuestion:
+def envelope_question(
+    arms: Arms[ReadArm], asked: EnvelopeRequest, most_cells: int = MOST_CELLS
+) -> EnvelopeQuestion:
     """Return the question a body asks.
+
+    Parameters
+    ----------
+    most_cells : along what is reached; AT_ONCE where somebody waits for the answer.
 
     Raises
     ------
@@ -130,15 +172,16 @@ def envelope_question(arms: Arms[ReadArm], asked: EnvelopeRequest) -> EnvelopeQu
     question = question_of(arms, about, _ANY_FORM)
     resolution = asked.resolution
     if resolution is None:
-        return EnvelopeQuestion(question, asked, None)
-    if not 0.0 < resolution < float("inf"):
+        return EnvelopeQuestion(question, asked, None, most_cells)
+    if resolution <= 0.0:
         raise UnusableValue(
             f"a resolution of {resolution:g} cannot be used",
             where=("resolution",),
             value=resolution,
             way_out="give a length above 0, or leave it out",
         )
-    return EnvelopeQuestion(question, asked, question.units.value_in(resolution, "m"))
+    metres = question.units.value_in(resolution, "m")
+    return EnvelopeQuestion(question, asked, metres, most_cells)
 
 
 def view_out(units: Units, view: View) -> dict[str, object]:

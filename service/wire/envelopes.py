@@ -6,7 +6,7 @@ Left out: how the envelope is found (the core) and drawn (drawings).
 from typing import Literal
 
 from service.wire.answer_models import ArmIdentity, Open
-from service.wire.models import AnyArm, AnyTool, Strict, UnitsName
+from service.wire.models import AnyArm, AnyTool, Number, Strict, UnitsName
 
 PointName = Literal["tool", "wrist"]
 Within = Literal["travel", "working-travel"]
@@ -25,7 +25,7 @@ class EnvelopeRequest(Strict):
     tool: AnyTool | None = None
     point: PointName = "tool"
     within: Within | None = None
-    resolution: float | None = None
+    resolution: Number | None = None
     units: UnitsName | None = None
 
 

@@ -30,6 +30,7 @@ COUNTS = {
     "reach-checks": 10,
     "reach-travels": 6,
     "reach-samples": 3,
+    "reach-envelope": 2,
     "jacobian": 4,
     "jacobians": 4,
     "pose": 10,

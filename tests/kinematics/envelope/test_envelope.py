@@ -10,6 +10,7 @@ from kinematics.envelope.envelope import envelope_of
 from kinematics.envelope.known_structures import Views
 from kinematics.envelope.pair_of_arm import point_motion
 from kinematics.envelope.plan_axes import plan_axes
+from kinematics.envelope.sampled_views import Fineness
 from kinematics.envelope.search import search_of
 from kinematics.envelope.searched import searched
 from kinematics.envelope.section import turn_of, turns_alone
@@ -69,7 +70,7 @@ def by_search(arm: Arm, tool: np.ndarray, resolution: float | None = None) -> Vi
         names, view = ("radius", "height"), search.about(axis)[0]
         angle = turn_of(motion) if turns_alone(motion) else None
     extremes = search.extremes(names, view)
-    return searched(search, axis, plan_axes(arm, axis), angle, extremes, resolution)
+    return searched(search, axis, plan_axes(arm, axis), angle, extremes, Fineness(resolution))
 
 
 def random_upright(random: np.random.Generator) -> Arm:
@@ -248,6 +249,26 @@ def test_what_has_no_size_says_so(case: str) -> None:
         assert np.isfinite(view.box).all()
     assert envelope.volume == (0.0, 0.0)
     assert any("has no size" in note for note in envelope.notes)
+
+
+@pytest.mark.parametrize("lean", [1e-6, 1e-4, 1e-2])
+def test_what_is_thinner_than_the_grid_is_boxed(lean: float) -> None:
+    """Three links that a typed angle tilts out of one plane, by up to 0.5 m times the angle."""
+    links = [revolute(a=length, travel=Travel(-2.0, 2.0)) for length in (0.3, 0.2)]
+    first = revolute(a=0.4, alpha=lean, travel=Travel(-2.0, 2.0))
+    arm = arm_of(first, *links)
+    envelope = envelope_of(arm, AT_FLANGE)
+    area, volume = envelope.section.area, envelope.volume
+    assert area.value - area.error_bound <= 0.9 * lean
+    assert area.value + area.error_bound >= 0.2 * lean
+    assert 0.0 < area.value < 2.0 * lean
+    assert volume.value <= 4.0 * lean
+    places = tool_positions(JointSamples(arm, 300, 9), AT_FLANGE, 0, 300)
+    assert envelope.axis is not None
+    seen = envelope.axis.radius_and_height(places)
+    box, slack = envelope.section.box, 1e-3 * lean
+    assert (box[0] - slack <= seen).all()
+    assert (seen <= box[1] + slack).all()
 
 
 def test_a_line_section_still_sweeps_a_plan() -> None:

@@ -32,11 +32,12 @@ def _row(
     working: tuple[float, float] | None = None,
 ) -> Row:
     joint = JointKind.REVOLUTE if kind == "turn" else JointKind.PRISMATIC
-    both = {
-        "travel": None if travel is None else Travel(*travel),
-        "working_travel": None if working is None else Travel(*working),
-    }
-    return Row(joint, *dh, **both)
+    return Row(
+        joint,
+        *dh,
+        travel=None if travel is None else Travel(*travel),
+        working_travel=None if working is None else Travel(*working),
+    )
 
 
 def _scaled(size: float) -> tuple[Row, ...]:
@@ -53,6 +54,7 @@ ROWS: Mapping[str, tuple[Row, ...]] = {
     "metre": _scaled(1.0),
     "hundred metres": _scaled(100.0),
     "point": (_row("turn", (0.0, 0.0, 0.0, 0.0)),),
+    "point far up": (_row("turn", (0.0, 0.0, 0.5, 0.0)),),
     "circle": (_row("turn", (0.4, 0.0, 0.0, 0.0), (-1.0, 2.0)),),
     "slide": (_row("slide", (0.0, 0.0, 0.0, 0.0), (0.1, 0.9)),),
     "level": (
