@@ -71,7 +71,8 @@ class View:
     area : of all that is reached, each place counted once; m^2, with how far off it may be.
     resolution : m, distance of the places asked for one by one: what is narrower may be missed;
         None where the curves are exact.
-    chord : m, how far a curve may be from the straight line between two of its points.
+    chord : m, how far a curve may be from the straight line between two of its points; of one that
+        is sampled only where it is smooth: a corner may be cut off by the resolution.
     directions : (2, 3), in the base, of the two coordinates; of the radius of a section that which
         it has where joint 1 is at 0.
     """

@@ -4,7 +4,6 @@ Left out: the address (routes/reach_regions.py), what the numbers are (operation
 (drawings).
 """
 
-import asyncio
 from collections.abc import Mapping
 from functools import partial
 
@@ -24,6 +23,9 @@ from service.wire.formats import SVG, Format, answer_format, beside_body
 
 _PARAMETERS = frozenset({"format"})
 FORMATS: tuple[Format, ...] = ("json", "svg")
+_MOST_WAITING = 8
+"""Envelopes, in hand and waiting, before the next is asked to come again: some ten seconds of them
+as usual, a minute of the finest."""
 
 
 async def answer_envelope(request: Request) -> Response:
@@ -43,8 +45,11 @@ async def answer_envelope(request: Request) -> Response:
         return envelope_question(arms, EnvelopeRequest.model_validate(body), AT_ONCE)
 
     asked = await bulk.threads.run(begun)
-    each = [bulk.threads.run(partial(asked.found, within)) for within in asked.within]
-    found = dict(zip(asked.within, await asyncio.gather(*each), strict=True))
+    # Apart from all that is done in pieces, which would wait behind it for seconds.
+    found = {
+        within: await bulk.estimates.run(partial(asked.found, within), most=_MOST_WAITING)
+        for within in asked.within
+    }
     if wanted == "svg":
         return Response(await bulk.threads.run(partial(drawn, asked, found)), media_type=SVG)
     return json_answer(await bulk.threads.run(partial(asked.answer, found)))

@@ -11,8 +11,10 @@ from kinematics.arm import BASE
 from kinematics.envelope.envelope import envelope_of
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.sampled_views import UnfitResolution
-from kinematics.envelope.shapes import COORDINATES, Envelope, Extreme, Turn, View
+from kinematics.envelope.shapes import COORDINATES, WRIST, Envelope, Extreme, Turn, View
 from kinematics.envelope.tolerances import MOST_CELLS
+from kinematics.envelope.wrist import wrist_in_flange
+from kinematics.reach.travel_region import travel_region
 from kinematics.travel_limits import limits_of
 from service.cautions import NOT_A_SAFETY_FUNCTION
 from service.convert import Units, joint_row_out
@@ -164,12 +166,16 @@ def envelope_question(
 
     Raises
     ------
-    ServiceError, KinematicsError : arm, tool or resolution cannot be used.
+    ServiceError, KinematicsError : arm, tool, point or resolution cannot be used.
     """
     about = PosesRequest.model_construct(
         arm=asked.arm, joints=[], tool=asked.tool, frame=BASE, units=asked.units
     )
     question = question_of(arms, about, _ANY_FORM)
+    # What is refused for the arm is refused here, and not by a survey that was taken in.
+    if asked.point == WRIST:
+        wrist_in_flange(question.arm)
+    travel_region(question.arm, working=asked.within == WORKING)
     resolution = asked.resolution
     if resolution is None:
         return EnvelopeQuestion(question, asked, None, most_cells)

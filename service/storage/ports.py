@@ -247,6 +247,9 @@ class SurveyStorage(Protocol):
         KeyUsed : one was stored with this key before.
         """
 
+    def sent(self, key: str) -> tuple[Survey, str] | None:
+        """Return the survey stored with a sender's key, and the digest of what came with it."""
+
     def get(self, survey: str) -> Survey | None:
         """Return one survey."""
 

@@ -48,5 +48,8 @@ def rows_of(given: bytes) -> list[Any]:
     table = table_of(given)
     if table is not None:
         return table_rows(table)
-    rows: list[Any] = orjson.loads(given)
+    try:
+        rows: list[Any] = orjson.loads(given)
+    except orjson.JSONDecodeError:
+        rows = json.loads(given)  # an integer beyond all doubles
     return rows

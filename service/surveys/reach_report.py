@@ -26,6 +26,10 @@ MOST_TIGHT, MOST_WITHOUT, MOST_DRAWN = 40, 400, 4000
 """Lines of two lists, a page and some ten; and marks that a drawing can show."""
 
 _LONGEST_NAME = 40
+_FARTHEST = 1e12
+"""In whatever unit: targets farther off, or that are no numbers, are refused, and would leave a
+drawing of all no scale."""
+
 _BORDERS = (0.0, 0.02, 0.05, 0.1, 0.2, 0.5)
 """Of margins: the smallest share of travel left."""
 
@@ -110,9 +114,25 @@ def _listed_of(listed: int, there: int) -> str:
 def _verdicts(summary: Mapping[str, int]) -> Sequence[tuple[str, int, str]]:
     whole = max(summary["targets"], 1)
     return [
-        (verdict.replace("_", " "), number, f"{100 * number / whole:.1f} %")
+        (verdict.replace("_", " "), number, _share(number, whole))
         for verdict, number in summary.items()
     ]
+
+
+def _share(number: int, whole: int) -> str:
+    """Return a share in per cent, which is 0 or 100 only where it is none or all.
+
+    Examples
+    --------
+    >>> _share(1, 3), _share(0, 7), _share(1, 100_000), _share(99_998, 100_000), _share(7, 7)
+    ('33.3 %', '0.0 %', '< 0.1 %', '> 99.9 %', '100.0 %')
+    """
+    if number == 0 or number == whole:
+        return f"{100 * number / whole:.1f} %"
+    tenths = 1000 * number / whole
+    if tenths < 0.5:
+        return "< 0.1 %"
+    return "> 99.9 %" if tenths >= 999.5 else f"{tenths / 10:.1f} %"
 
 
 def _margins_of(columns: ReachColumns, firsts: Sequence[int]) -> list[float]:
@@ -195,6 +215,6 @@ def _place_of(row: Any) -> tuple[float, float, float] | None:
         elif isinstance(given, dict):
             given = given["position"]
         x, y, z = (float(number) for number in given)
-    except (TypeError, ValueError, KeyError, IndexError):
+    except (TypeError, ValueError, KeyError, IndexError, OverflowError):
         return None
-    return x, y, z
+    return (x, y, z) if all(abs(number) <= _FARTHEST for number in (x, y, z)) else None

@@ -34,6 +34,9 @@ _TICKS = 8
 _LONE = 100.0
 """Of the drawing of a single place, mm."""
 
+_LEAST = 1e-9
+"""Of a span, in any unit: places nearer to each other are drawn as one."""
+
 
 class _View(NamedTuple):
     """One view: what is across and upward, and the scale, mm of paper for a unit."""
@@ -59,7 +62,7 @@ def two_views(
     reduction = _reduction(x, (y, z), _MILLIMETRES[length])
     scale = _MILLIMETRES[length] / reduction
     widest = max(high - low for low, high in (x, y, z))
-    step = _step(widest or _LONE / _MILLIMETRES[length])
+    step = _step(widest if widest > _LEAST else _LONE / _MILLIMETRES[length])
     x, y, z = (_widened(span, step) for span in (x, y, z))
     front = _View(f"from the front: x across, z upward ({length})", x, z, scale)
     above = _View(f"from above: x across, y upward ({length})", x, y, scale)
@@ -143,7 +146,7 @@ def _reduction(
     """
     wide = (across[1] - across[0]) * 1.1 / _WIDE
     high = max(high - low for low, high in upward) * 1.1 / _HIGH
-    needed = max(wide, high) * millimetres or 1.0
+    needed = max(wide, high) * millimetres if max(wide, high) > _LEAST / _WIDE else 1.0
     power = 10.0 ** floor(log10(needed))
     return next(power * each for each in _SCALES if power * each >= needed * (1 - 1e-9))
 

@@ -30,9 +30,13 @@ table.said td{overflow-wrap:anywhere}table.said th{width:42mm;font-weight:normal
 td.n{text-align:right;font-variant-numeric:tabular-nums}p.note{font-size:8.5pt}
 .cautions{border:.5mm solid #000;padding:2mm 3mm;font-size:8.5pt;break-inside:avoid}
 .cautions p{margin:.6mm 0}figcaption{font-size:8.5pt}
-figure{margin:0;break-inside:avoid}figure svg{display:block;max-width:100%;margin:0 auto}
+figure{margin:0;break-inside:avoid}
+figure svg{display:block;max-width:100%;height:auto;margin:0 auto}
 figure svg.mark{display:inline;width:3.2mm;height:3.2mm;vertical-align:-.5mm}
-@media print{body{max-width:none}figure.sheet{position:relative;height:243mm;break-before:page}
+@media screen{body{padding:4mm}}
+@media screen and (max-width:186mm){table.list{display:block;overflow-x:auto}}
+@media print{body{max-width:none;padding-right:.5mm}
+figure.sheet{position:relative;height:243mm;break-before:page}
 figure.sheet svg{position:absolute;top:0;left:4mm;width:236mm;height:auto;max-width:none;
 transform-origin:0 0;transform:translate(0,236mm) rotate(-90deg)}
 figure.sheet figcaption{position:absolute;bottom:0}}"""
@@ -71,7 +75,8 @@ def report_html(
     head = f"{survey['kind'].replace('-', ' ')}, arm {arm['name']}"
     finished = f"Finished {_moment(survey['finished_at'])} UTC."
     parts = [
-        f'<!doctype html><html lang="en"><meta charset="utf-8"><title>{escape(name)}</title>',
+        '<!doctype html><html lang="en"><meta charset="utf-8">',
+        f'<meta name="viewport" content="width=device-width"><title>{escape(name)}</title>',
         f"<style>{_STYLE}</style><h1>{escape(name)}</h1>",
         f'<p class="sub">Survey report: {escape(head)}. {finished}</p>',
         _said([*asked, *_survey_lines(survey)]),

@@ -54,7 +54,8 @@ class EnvelopeView(Open):
     A `section` has radius and height about axis 1, a `plan` the x and y of the base, or what
     `directions` (in the base) says; an arm whose first joint slides has a `side` view instead of
     the section. `resolution` is null where the curves are exact; else what is narrower may be
-    missed. `chord` is how far a curve may be from the straight line between two of its points.
+    missed. `chord` is how far a curve may be from the straight line between two of its points; of
+    one that is sampled only where it is smooth: a corner may be cut off by the resolution.
     """
 
     kind: Literal["section", "side", "plan"]

@@ -362,7 +362,7 @@ def test_reach_at_the_edges(schema: Any, path: str, bodies: Bodies, drawn: int) 
     hold()
     assert set(statuses) <= {200, 422}
     # Most arms drawn are refused; what else is wrong is met with drawn requests.
-    assert statuses.count(200) >= 10
+    assert statuses.count(200) >= 5
 
 
 @st.composite

@@ -301,8 +301,11 @@ def test_an_arm_that_was_removed_meanwhile(served: httpx.Client) -> None:
     front = asked(served, question(2000))
     body = question(20)
     body["request"]["arm"] = "spare-loader"
-    survey = asked(served, body)
+    key = {"Idempotency-Key": "spare"}
+    survey = asked(served, body, **key)
     assert served.delete("/v1/arms/spare-loader", headers={"If-Match": "*"}).status_code == 204
+    assert asked(served, body, **key) == survey
+    assert served.post("/v1/surveys", json=body).status_code == 422
     assert until(served, survey, is_over)["state"] == "succeeded"
     assert until(served, front, is_over)["state"] == "succeeded"
 
@@ -448,6 +451,9 @@ def test_a_cluster_that_does_not_answer_fails_the_survey(launch: Launch) -> None
         found = until(client, asked(client, question(3)), is_over)
         assert found["state"] == "failed"
         assert "cluster" in found["reason"]
+        refused = client.get(f"/v1/surveys/{found['id']}/result")
+        assert (refused.status_code, refused.headers.get("retry-after")) == (409, None)
+        assert found["reason"] in refused.json()["detail"]
         assert client.get("/v1/ping").status_code == 200
     process.terminate()
 

@@ -27,6 +27,7 @@ from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import SUCCEEDED, Head, Survey, SurveyStorage
 from service.surveys import envelopes, reach_checks, samples
 from service.surveys.kinds import Kind, Report
+from service.surveys.reach_pieces import given_rows, rows_of
 from service.surveys.registry import SURVEY_KINDS
 from service.wire.arms import ReadArm, read_arm
 from service.wire.envelopes import EnvelopeRequest
@@ -36,6 +37,7 @@ from service.wire.samples import SamplesRequest
 
 AT = datetime(2026, 3, 4, 5, 6, 7, tzinfo=UTC)
 ROW = {"joint": "revolute", "a": 400, "alpha": 0, "d": 0, "theta": 0, "travel": [-170, 170]}
+SLIDE = {"joint": "prismatic", "a": 0, "alpha": 0, "d": 0, "theta": 0}
 ARM = {
     "name": "two-turns",
     "convention": "standard",
@@ -207,9 +209,14 @@ def test_what_was_asked_means_the_same_after_the_arm_changed(
         ("samples", {"count": 10**9}, ("count",)),
         ("samples", {"count": 10**30}, ("count",)),
         ("samples", {"count": 5, "seed": -1}, ("seed",)),
+        ("samples", {"count": 5, "seed": 10**30}, ("seed",)),
+        ("samples", {"count": 5, "form": "roll-pitch"}, ("form",)),
         ("samples", {"count": 5, "positions": False}, ("positions",)),
         ("envelope", {"resolution": 0}, ("resolution",)),
         ("envelope", {"resolution": -3}, ("resolution",)),
+        ("envelope", {"point": "wrist"}, ("point",)),
+        ("envelope", {"arm": {**ARM, "rows": []}}, ("arm", "rows")),
+        ("envelope", {"arm": {**ARM, "rows": [SLIDE]}}, ("arm", "rows", 0, "travel")),
     ],
 )
 def test_what_cannot_be_surveyed_is_refused_at_once(
@@ -245,3 +252,8 @@ def test_reports_say_what_was_found(opened: OpenStorage, arms: Arms[ReadArm]) ->
     assert len(report.points) == 3000
     assert [line[0] for line in report.tables[0].lines] == ["x", "y", "z", "radius", "height"]
     assert "3000 of 5000" in report.said
+
+
+def test_targets_come_back_from_their_piece_whatever_numbers_they_hold() -> None:
+    rows = [{"position": [10**400, 0, 1]}, {"name": 10**20, "position": [0.1, -0.0, 2]}]
+    assert rows_of(given_rows(rows)) == rows

@@ -51,6 +51,20 @@ def test_nothing_in_names_is_markup_and_nothing_is_outside() -> None:
         assert digest in page
 
 
+def test_on_a_phone_it_has_a_margin_and_drawings_no_blank_space() -> None:
+    page = report_html(SURVEY, ARM, [], [], POINTS, [], "").decode()
+    style = page.partition("<style>")[2].partition("</style>")[0]
+    assert '<meta name="viewport" content="width=device-width">' in page
+    assert "@media screen{body{padding:" in style
+    # What is wider than the screen moves by itself, not the page with it.
+    assert "table.list{display:block;overflow-x:auto}" in style
+    # Or printers cut the right-hand lines of tables off.
+    assert "padding-right:" in style.partition("@media print")[2]
+    (drawings,) = re.findall(r"figure svg\{([^}]*)\}", style.partition("@media print")[0])
+    # Narrower than it is on paper, a drawing keeps its shape only where its height follows.
+    assert {"max-width:100%", "height:auto"} <= set(drawings.split(";"))
+
+
 def test_views_are_to_the_scale_they_say() -> None:
     figure = two_views(POINTS, "mm", "base")
     (ratio,) = re.findall(r"Scale 1:(\d+)", figure)
@@ -79,3 +93,10 @@ def test_any_spread_fits_on_a_page(spread: float, length: str) -> None:
 def _mark(view: str, mark: str) -> tuple[float, float]:
     ((x, y),) = re.findall(rf"M([-\d.]+) ([-\d.]+){re.escape(mark)}", view)
     return float(x), float(y)
+
+
+@pytest.mark.parametrize("apart", [0.0, 5e-324, 1e-12, 1e-6, 1e12])
+def test_places_however_near_or_far_are_drawn(apart: float) -> None:
+    figure = two_views([((0.0, 0.0, 0.0), "reachable"), ((apart,) * 3, "refused")], "in", "base")
+    assert figure.count("<path") >= 4
+    assert "nan" not in figure
