@@ -59,7 +59,8 @@ class CheckedRotations:
     rotation : (count, 3, 3); no rotation at all (the identity) where it could not be used.
     usable, repaired : (count,).
     size : (count,), what usable and repaired were judged by: the norm of a quaternion, the length
-        of a rotation vector, the defect of a matrix; 0 for angle triples.
+        of a rotation vector, the defect of a matrix; 0 for angle triples, and for rotation vectors
+        none of which needs judging.
     """
 
     form: str
@@ -159,7 +160,7 @@ def checked_rotations(form: str, values: FloatArray) -> CheckedRotations:
             rotation = np.array(rotation)
             rotation[repaired] = nearest_rotation(rotation[repaired])
         return CheckedRotations(form, values, rotation, usable, repaired, size)
-    if form not in ORDERS:
+    if form not in ORDERS and not (form == "rotation-vector" and _all_short(values)):
         size = lengths(values)
         if form == "rotation-vector":
             usable &= size <= LARGEST_MAGNITUDE
@@ -170,13 +171,14 @@ def checked_rotations(form: str, values: FloatArray) -> CheckedRotations:
     return CheckedRotations(form, values, rotation, usable, repaired, size)
 
 
-def told_rotations(form: str, rotation: FloatArray) -> ToldRotations:
+def told_rotations(form: str, rotation: FloatArray, *, in_place: bool = False) -> ToldRotations:
     """Return rotations in a form, and for which of them its angles are not unique.
 
     Parameters
     ----------
     form : one of FORMS.
     rotation : (count, 3, 3).
+    in_place : whether matrices may become the values where they stand.
 
     Returns
     -------
@@ -196,7 +198,11 @@ def told_rotations(form: str, rotation: FloatArray) -> ToldRotations:
     >>> told.near_lock.tolist(), told.lock(0).measure
     ([True], 0.0)
     """
-    values, distance = values_of(form, rotation), distance_from_lock(form, rotation)
+    if form == "matrix" and in_place:
+        values = np.add(rotation, 0.0, out=rotation)  # never -0.0, as values_of has it
+    else:
+        values = values_of(form, rotation)
+    distance = distance_from_lock(form, rotation)
     near_lock = distance <= LOCK_NOTICE
     is_sum = sum_is_determined(ORDERS[form], rotation) if near_lock.any() else near_lock
     return ToldRotations(form, values, near_lock, distance, is_sum)
@@ -215,13 +221,23 @@ def _rotations(form: str, values: FloatArray) -> FloatArray:
 def _within_range(form: str, values: FloatArray) -> BoolArray:
     """Which rows hold numbers of a usable size alone."""
     axes = tuple(range(-len(shape_of(form)), 0))
-    with np.errstate(invalid="ignore"):  # signalling NaNs
-        within = np.abs(values) <= LARGEST_MAGNITUDE
     # Most often there is nothing to find, and to look at all at once is much faster.
     usable: BoolArray = np.ones(len(values), dtype=bool)
-    if not within.all():
-        usable &= within.all(axis=axes)
+    if not _all_within(values, LARGEST_MAGNITUDE):
+        with np.errstate(invalid="ignore"):  # signalling NaNs
+            usable &= (np.abs(values) <= LARGEST_MAGNITUDE).all(axis=axes)
     return usable
+
+
+def _all_within(values: FloatArray, most: float) -> bool:
+    """Whether all numbers are within ``most`` of 0, and none is NaN."""
+    with np.errstate(invalid="ignore"):  # signalling NaNs
+        return bool(-most <= values.min(initial=0.0) and values.max(initial=0.0) <= most)
+
+
+def _all_short(vectors: FloatArray) -> bool:
+    """Whether no vector can be too long: three components of half the limit make 0.87 of it."""
+    return _all_within(vectors, 0.5 * LARGEST_MAGNITUDE)
 
 
 def _filled(form: str, values: FloatArray, usable: BoolArray) -> FloatArray:

@@ -51,7 +51,14 @@ def product_of(left: FloatArray, right: FloatArray) -> FloatArray:
 
 
 def turn_maps() -> tuple[IntArray, IntArray, IntArray]:
-    """Axes, places and signs of every map of three turns, left to right: (576, 3) each."""
+    """Return axes, places and signs of every map of three turns, left to right: (576, 3) each.
+
+    Examples
+    --------
+    >>> axes, places, signs = turn_maps()
+    >>> axes.shape, sorted(places[-1].tolist())
+    ((576, 3), [0, 1, 2])
+    """
     grid = np.indices((len(AXES), len(PLACES[3]), len(SIGNS))).reshape(3, -1)
     return AXES[grid[0]], PLACES[3][grid[1]], SIGNS[grid[2]]
 

@@ -4,6 +4,7 @@ Left out: everything it can read, which the app answers.
 """
 
 import asyncio
+from typing import Any
 
 import h11
 from uvicorn.protocols.http.h11_impl import H11Protocol
@@ -14,6 +15,17 @@ from service.problems import MEDIA_TYPE, problem_of
 from service.wire.answers import json_bytes
 
 _CAN_ANSWER = (h11.IDLE, h11.SEND_RESPONSE)
+
+
+class _Uncopied(h11.Connection):
+    """A connection that passes bodies on as they are; they would be copied once more."""
+
+    def send(self, event: h11.Event) -> bytes | None:  # type: ignore[override]
+        """Return what is to be sent for an event, None where the connection is to be closed."""
+        parts = self.send_with_data_passthrough(event)
+        if parts is None:
+            return None
+        return parts[0] if len(parts) == 1 else b"".join(parts)
 
 
 class FixedLengthH11(H11Protocol):
@@ -27,6 +39,10 @@ class FixedLengthH11(H11Protocol):
         """Begin as the base does, and keep the connection for handlers."""
         super().connection_made(transport)
         self.app_state = {**self.app_state, "connection": transport}
+
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self.conn = _Uncopied(h11.SERVER)
 
     def send_400_response(self, msg: str) -> None:
         """Send the problem document and close; ``msg`` says nothing that helps."""

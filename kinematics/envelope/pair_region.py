@@ -26,6 +26,9 @@ from kinematics.number_checks import FloatArray
 PlaneMap = Callable[[FloatArray], tuple[FloatArray, FloatArray]]
 """Places (count, 2) and Jacobians (count, 2, 2) for postures (count, 2)."""
 
+Slope = Callable[[FloatArray], FloatArray]
+"""How something changes along an edge, at shares of it."""
+
 _LOOKS = 257
 """Looks along an edge for where it turns back: a joint of one turn is looked at every 1.4 deg."""
 
@@ -63,18 +66,11 @@ class Stretches:
 
     def measured(self, primitive: Callable[[FloatArray], FloatArray]) -> FloatArray:
         """Return the integral of a density over the reached stretches, (lines,)."""
-        return np.asarray(sum_of_steps(self.places, self.counts > 0, primitive), dtype=np.float64)
-
-
-def sum_of_steps(
-    places: FloatArray, inside: NDArray[np.bool_], primitive: Callable[[FloatArray], FloatArray]
-) -> FloatArray:
-    """Return the sum over stretches of the primitive at their ends, (lines,)."""
-    finite = np.where(np.isfinite(places), places, 0.0)
-    values = primitive(finite)
-    steps = np.where(inside[:, :-1], values[:, 1:] - values[:, :-1], 0.0)
-    total: FloatArray = steps.sum(axis=1)
-    return total
+        values = primitive(np.where(np.isfinite(self.places), self.places, 0.0))
+        inside = self.counts[:, :-1] > 0
+        steps = np.where(inside, values[:, 1:] - values[:, :-1], 0.0)
+        total: FloatArray = steps.sum(axis=1)
+        return total
 
 
 class PairRegion:
@@ -142,6 +138,25 @@ class PairRegion:
         found = np.take_along_axis(found, order, axis=1)
         counts = np.cumsum(np.take_along_axis(changes, order, axis=1), axis=1)
         return Stretches(found, counts)
+
+    def extent(self) -> FloatArray:
+        """Return the least and the greatest first coordinate that is reached, (2,).
+
+        Within a part the map is one to one near every posture, so both are on images of edges.
+        """
+        found = []
+        for part, _ in self.parts:
+            for begin, along in _edges(part):
+
+                def slope(
+                    shares: FloatArray, begin: FloatArray = begin, along: FloatArray = along
+                ) -> FloatArray:
+                    jacobians = self.place_of(begin + shares[:, None] * along)[1]
+                    return np.asarray(jacobians[:, 0, :] @ along)
+
+                found.append(self.place_of(begin + _stops(slope)[:, None] * along)[0][:, 0])
+        places = np.concatenate(found)
+        return np.array([places.min(), places.max()])
 
     def _crossing(self, pieces: NDArray[np.intp], heights: FloatArray) -> FloatArray:
         """Return the postures on pieces at which the heights are met, (count, 2)."""
@@ -223,25 +238,31 @@ def clipped(polygon: FloatArray, weights: FloatArray, most: float) -> FloatArray
 def _pieces(place_of: PlaneMap, parts: Sequence[tuple[FloatArray, float]]) -> list[Piece]:
     pieces: list[Piece] = []
     for part, sign in parts:
-        for begin, end in zip(part, np.roll(part, -1, 0), strict=True):
-            along = end - begin
-            if not along.any():
-                continue
+        for begin, along in _edges(part):
             inward = np.array([-along[1], along[0]])
-            stops = _turning_back(place_of, begin, along)
+            stops = _stops(_slope_of_height(place_of, begin, along))
             for first, last in pairwise(stops):
                 pieces.append(Piece(begin + first * along, begin + last * along, inward, sign))
     return pieces
 
 
-def _turning_back(place_of: PlaneMap, begin: FloatArray, along: FloatArray) -> FloatArray:
-    """Return the shares of an edge between which the height only rises or only falls."""
+def _edges(part: FloatArray) -> list[tuple[FloatArray, FloatArray]]:
+    """Return where the edges of a polygon begin, and how they go on."""
+    steps = np.roll(part, -1, 0) - part
+    return [(begin, along) for begin, along in zip(part, steps, strict=True) if along.any()]
 
+
+def _slope_of_height(place_of: PlaneMap, begin: FloatArray, along: FloatArray) -> Slope:
     def slope(shares: FloatArray) -> FloatArray:
         jacobians = place_of(begin + shares[:, None] * along)[1]
         found: FloatArray = jacobians[:, 1, :] @ along
         return found
 
+    return slope
+
+
+def _stops(slope: Slope) -> FloatArray:
+    """Return the shares of an edge between which something only rises or only falls."""
     shares = np.linspace(0.0, 1.0, _LOOKS)
     slopes = slope(shares)
     places = np.nonzero(slopes[:-1] * slopes[1:] < 0.0)[0]
@@ -250,4 +271,6 @@ def _turning_back(place_of: PlaneMap, begin: FloatArray, along: FloatArray) -> F
         middle = 0.5 * (low + high)
         same = slope(middle) * slopes[places] > 0.0
         low, high = np.where(same, middle, low), np.where(same, high, middle)
-    return np.array([0.0, *(0.5 * (low + high)), 1.0])
+    # Symmetric arms turn back exactly where it is looked.
+    still = shares[1:-1][(slopes[1:-1] == 0.0) & slopes.any()]
+    return np.array([0.0, *np.sort(np.concatenate([0.5 * (low + high), still])), 1.0])

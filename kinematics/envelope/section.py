@@ -1,13 +1,12 @@
 """The section of an arm's reach through axis 1, where two joints alone make it.
 
 Idea: an arm that turns about axis 1 reaches the same at every bearing, so its reach is a section of
-radius and height, turned. Where the tool point is moved by two more joints only, and they keep it
-in one plane through axis 1, that section is the region of a pair and exact. Which joints move the
-point, and whether it stays in the plane, is asked of the chain at generic postures rather than read
-from the table, so that couplings, linkages and constant links need no case of their own.
+radius and height, turned. Where the point is moved by two more joints only, and they keep it in one
+plane along axis 1, that section is the region of a pair and exact. A plane that passes axis 1 at a
+distance makes every radius the hypotenuse over that distance.
 
 Source: regional structure of arms (Milenkovic and Huang 1983). Not covered: tools set off from the
-wrist, lateral offsets, arms whose row 1 slides or has other joints coupled to it.
+wrist, arms whose row 1 slides or has other joints coupled to it.
 """
 
 from dataclasses import dataclass
@@ -15,49 +14,66 @@ from dataclasses import dataclass
 import numpy as np
 
 from kinematics.arm import Arm
-from kinematics.envelope.measures import Measure, area_of, swept_volume_of
-from kinematics.envelope.pair_region import PairRegion, clipped
-from kinematics.envelope.tolerances import IN_ONE_PLANE
-from kinematics.jacobian import motion_of
-from kinematics.reach.sample_summary import first_axis
-from kinematics.reach.travel_region import travel_region
+from kinematics.envelope.measures import Measure, folded_area_of, swept_volume_of
+from kinematics.envelope.pair_of_arm import PointMotion, pair_region_of, point_motion
+from kinematics.envelope.pair_region import PairRegion
+from kinematics.reach.sample_summary import FirstAxis, first_axis
 from kinematics.table import FloatArray
-from kinematics.task_space import sample_postures
 
 
 @dataclass(frozen=True)
 class Section:
-    """Radius (negative behind axis 1) and height that two joints bring the tool point to.
+    """Distance (negative behind axis 1) and height that two joints bring the point to.
 
     Attributes
     ----------
-    joints : indices of those two; turn : of axis 1, rad, at most a whole one.
+    region : in the plane that the two joints keep the point in; axis 1 at its place 0.
+    aside : distance of that plane from axis 1, m, at least 0.
+    outward : (3,), direction of the plane's first coordinate in the base at joint 1 = 0.
+    sideways : (3,), direction from axis 1 to the plane, of length ``aside``.
+    turn : of axis 1, rad, at most a whole one.
     """
 
     region: PairRegion
-    joints: tuple[int, int]
+    aside: float
+    outward: FloatArray
+    sideways: FloatArray
     turn: float
 
     @property
     def area(self) -> Measure:
-        """Area of the section on both sides of axis 1, each place counted once."""
-        return area_of(self.region)
+        """Area of the radii and heights reached, each place counted once."""
+        return folded_area_of(self.region, self.aside)
 
     @property
     def volume(self) -> Measure | None:
-        """Volume reached; None where axis 1 turns less than once and the arm reaches behind it."""
-        if self.turn < 2.0 * np.pi and self._reaches_behind:
+        """Volume reached, each place counted once; None where only ``swept`` bounds it.
+
+        That is where the plane passes axis 1 at a distance, the pair reaches behind it, and the
+        turn is no whole one: then the same place reached from before and from behind is not half a
+        turn apart.
+        """
+        if self.aside and self.turn < 2.0 * np.pi and self.reaches_behind:
             return None
         return swept_volume_of(self.region, self.turn)
 
     @property
-    def _reaches_behind(self) -> bool:
-        postures = np.concatenate([part for part, _ in self.region.parts])
+    def swept(self) -> tuple[Measure, Measure]:
+        """Volumes that every place takes up at least and at most: over the turn, a whole turn."""
+        whole = swept_volume_of(self.region, 2.0 * np.pi)
+        share = self.turn / (2.0 * np.pi)
+        return Measure(whole.value * share, whole.error_bound * share), whole
+
+    @property
+    def reaches_behind(self) -> bool:
+        """Whether the pair reaches both sides of axis 1."""
         corners = self.region.corners
         heights = np.linspace(corners[0], corners[-1], 513)[1:-1]
         places = self.region.stretches(heights).places
+        postures = np.concatenate([part for part, _ in self.region.parts])
         ends = np.append(self.region.place_of(postures)[0][:, 0], places[np.isfinite(places)])
-        return bool(ends.min() < 0.0 < ends.max())
+        size = np.abs(ends).max()
+        return bool(ends.min() < -1e-12 * size and ends.max() > 1e-12 * size)
 
 
 def section_of(arm: Arm, tool_in_flange: FloatArray, *, working: bool = False) -> Section | None:
@@ -78,60 +94,82 @@ def section_of(arm: Arm, tool_in_flange: FloatArray, *, working: bool = False) -
     >>> round(section.volume.value, 9)
     2.749128144
     """
-    limits = travel_region(arm, working=working)
     axis = first_axis(arm)
-    samples = sample_postures(arm, 1.0)
-    linear = motion_of(arm, samples, tool_in_flange).of_joints[:, :3]
-    length = float(np.abs(linear).max(initial=0.0))
-    moving = np.nonzero(np.abs(linear).max(axis=(0, 1)) > IN_ONE_PLANE * length)[0].tolist()
-    alone = np.count_nonzero(arm.drive_map.matrix[:, 0]) == 1 if arm.joint_count else False
-    if axis is None or len(moving) != 3 or moving[0] != 0 or not alone:
+    if axis is None:
         return None
-    pair = (moving[1], moving[2])
-    if any(
-        cut[0] or np.count_nonzero(cut[list(pair)]) < np.count_nonzero(cut)
-        for cut in limits.weights
-    ):
-        return None
-    start = np.zeros(arm.joint_count)
-    frame = _plane_of(arm, tool_in_flange, samples[:, pair], pair, IN_ONE_PLANE * length)
-    if frame is None:
-        return None
-    origin, outward = axis.point, frame
-
-    def place_of(postures: FloatArray) -> tuple[FloatArray, FloatArray]:
-        joint_values = np.tile(start, (len(postures), 1))
-        joint_values[:, pair] = postures
-        motion = motion_of(arm, joint_values, tool_in_flange)
-        both = np.stack([outward, axis.direction])
-        places = motion.tool_in_base[:, :3, 3] @ both.T
-        places[:, 0] -= origin @ outward
-        return places, both @ motion.of_joints[:, :3, pair]
-
-    low, high = limits.lower[list(pair)], limits.upper[list(pair)]
-    polygon = np.array([[low[0], low[1]], [high[0], low[1]], [high[0], high[1]], [low[0], high[1]]])
-    for cut, least, most in zip(limits.weights, limits.cut_lower, limits.cut_upper, strict=True):
-        polygon = clipped(clipped(polygon, cut[list(pair)], most), -cut[list(pair)], -least)
-    row = arm.drive_map.driven[pair[1]]
-    turn = min(float(limits.upper[0] - limits.lower[0]), 2.0 * np.pi)
-    level = arm.drive_map.matrix[row][list(pair)]
-    return Section(PairRegion(place_of, polygon, level), pair, turn)
+    return section_from(point_motion(arm, tool_in_flange, working=working), axis)
 
 
-def _plane_of(
-    arm: Arm, tool_in_flange: FloatArray, postures: FloatArray, pair: tuple[int, int], off: float
-) -> FloatArray | None:
-    """Return the direction (3,) away from axis 1 in which the point moves; None if not in one."""
-    axis = first_axis(arm)
-    assert axis is not None
-    joint_values = np.zeros((len(postures), arm.joint_count))
-    joint_values[:, pair] = postures
-    arms = motion_of(arm, joint_values, tool_in_flange).tool_in_base[:, :3, 3] - axis.point
-    arms -= (arms @ axis.direction)[:, None] * axis.direction
-    outward = arms[np.argmax((arms * arms).sum(axis=1))]
-    size = float(np.sqrt(outward @ outward))
-    if size <= off:
+def turn_of(motion: PointMotion) -> float:
+    """Return the bearings joint 1 can turn to, rad, at most a whole turn.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, travel=Travel(-1.0, 1.5))
+    >>> turn_of(point_motion(Arm("one", Table(Convention.STANDARD, (row,))), np.eye(4)))
+    2.5
+    """
+    return min(float(motion.limits.upper[0] - motion.limits.lower[0]), 2.0 * np.pi)
+
+
+def section_from(motion: PointMotion, axis: FirstAxis) -> Section | None:
+    """Return what ``section_of`` does of a motion already looked at.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, *row, 0.0, 0.0) for row in
+    ...         ((0.0, np.pi / 2), (0.5, 0.0), (0.3, 0.0))]
+    >>> arm = Arm("upright", Table(Convention.STANDARD, tuple(rows)))
+    >>> axis = FirstAxis(np.zeros(3), np.array([0.0, 0.0, 1.0]))
+    >>> section_from(point_motion(arm, np.eye(4)), axis).aside
+    0.0
+    """
+    if not turns_alone(motion) or 0 not in motion.movers(np.eye(3)):
         return None
-    outward = outward / size
-    aside = arms - (arms @ outward)[:, None] * outward
-    return None if np.abs(aside).max() > off else outward
+    # With joint 1 at 0 throughout, what moves is what the others do.
+    joint_values = motion.postures.copy()
+    joint_values[:, 0] = 0.0
+    held = motion.at(joint_values)
+    linear = held.linear[:, :, 1:]
+    up = axis.direction
+    level = linear - up[:, None] * (up @ linear)[:, None, :]
+    columns = np.moveaxis(level, 1, 2).reshape(-1, 3)
+    longest = columns[np.argmax((columns * columns).sum(axis=1))] if len(columns) else np.zeros(3)
+    size = float(np.sqrt(longest @ longest))
+    if size <= motion.off:
+        return None
+    outward = longest / size
+    sideways = np.cross(up, outward)
+    arms = held.places - axis.point
+    aside = arms @ sideways
+    if np.ptp(aside) > motion.off or np.abs(sideways @ linear).max() > motion.off:
+        return None
+    if (arms @ outward).sum() < 0.0:
+        outward = -outward  # the way most of the places are
+    away = float(aside.mean())
+    away = 0.0 if abs(away) <= motion.off else away
+    foot = axis.point - (axis.point @ up) * up  # heights count from the base's origin
+    region = pair_region_of(held, np.stack([outward, up]), foot, held=(0,))
+    if region is None:
+        return None
+    return Section(region, abs(away), outward, away * sideways, turn_of(motion))
+
+
+def turns_alone(motion: PointMotion) -> bool:
+    """Whether joint 1 turns row 1 and nothing else, bounded by its own travel alone.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, Coupling, JointKind, Row, Table
+    >>> first = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0)
+    >>> second = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, couplings=(Coupling(1, 0.5),))
+    >>> coupled = Arm("coupled", Table(Convention.STANDARD, (first, second)))
+    >>> turns_alone(point_motion(coupled, np.eye(4)))
+    False
+    """
+    rows = motion.arm.drive_map.matrix
+    turns = motion.arm.table.rows[0].is_revolute and not motion.arm.table.rows[0].passive
+    alone = np.count_nonzero(rows[:, 0]) == 1 and np.count_nonzero(rows[0]) == 1
+    return bool(turns and alone and motion.apart((0,)))

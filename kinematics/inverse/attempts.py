@@ -158,7 +158,17 @@ def _keep(
 
 
 def brought_home(room: Room, q: FloatArray) -> FloatArray:
-    """Return joint values in their travel: moved by whole turns where these do, else to its end."""
+    """Return joint values in their travel: moved by whole turns where these do, else to its end.
+
+    Examples
+    --------
+    A turn of 4 rad within 3 either side, and a slide of 4 within as much:
+
+    >>> three, none = np.full(2, 3.0), np.empty(0)
+    >>> room = Room(-three, three, np.empty((0, 2)), none, none, np.array([True, False]))
+    >>> brought_home(room, np.array([4.0, 4.0])).round(3)
+    array([-2.283,  3.   ])
+    """
     off = q - 0.5 * (room.lower + room.upper)
     whole = 2.0 * np.pi * np.rint(off / (2.0 * np.pi))
     moved = q - np.where(room.turning, whole, 0.0)

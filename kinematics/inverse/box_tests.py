@@ -32,6 +32,9 @@ from kinematics.number_checks import FloatArray
 
 _SWEEPS = 12
 """Times each joint is moved to where it leaves least, before a box is given up as undecided."""
+_STRAIGHT = 1e-6
+"""Radians up to which an arc is as long as its chord: the difference, angle^2 / 24, is below
+rounding, and none has to be divided by none."""
 
 
 @compiled
@@ -177,7 +180,7 @@ def stretch_of(angle: float) -> float:
     >>> stretch_of(1e-9), round(stretch_of(1.5), 3)
     (1.0, 1.1)
     """
-    return 0.5 * angle / math.sin(0.5 * angle) if angle > 1e-6 else 1.0
+    return 0.5 * angle / math.sin(0.5 * angle) if angle > _STRAIGHT else 1.0
 
 
 @compiled

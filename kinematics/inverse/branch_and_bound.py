@@ -42,6 +42,9 @@ _HALVINGS = 32
 _LEAF_SHRINKS = 0.1
 """What a leaf's size is taken times after one from which the target was not met."""
 _ONE = np.zeros(1, np.int64)
+_TINY = 1e-300
+"""Radians that a tolerance of none is taken for, so that lengths can be divided by it: the share is
+then some 1e290, and the turn alone counts."""
 
 
 class Outcome(NamedTuple):
@@ -163,7 +166,7 @@ class BranchAndBound:
         room = self._room
         desk = desk_for(self.screws.rows, self.arm.joint_count, len(room.least))
         # Turns count beside lengths as they are tolerated: then the larger excess is let down.
-        share = float(tolerance[0] / self.screws.length / max(tolerance[1], 1e-300))
+        share = float(tolerance[0] / self.screws.length / max(tolerance[1], _TINY))
         for weight in (1.0, share):
             q, squared = middle[None].copy(), np.empty(1)
             descend_all(

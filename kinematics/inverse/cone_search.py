@@ -30,14 +30,17 @@ from kinematics.inverse.tolerances import (
     SEARCH_TURN_SHARE,
     WITHIN_CONE,
 )
+from kinematics.kernels.best_postures import preferred
 from kinematics.kernels.compiler import for_kernel
 from kinematics.table import FloatArray
-from kinematics.travel_limits import travel_margin
+from kinematics.travel_limits import margin_and_outside
 
 _AT_LEAST = 6
 """Starts made even if the first one gets there: the next may leave more of travel."""
 _ROUNDS = 8
 """Directions that each start is led to, one after the other."""
+_SAME_LINE = 1e-12
+"""Sine of an angle between directions below which rounding would choose the way across."""
 
 
 class MetCones(NamedTuple):
@@ -69,8 +72,7 @@ def towards(direction: FloatArray, axis: FloatArray, cone: FloatArray) -> FloatA
     least = axis[np.arange(len(axis)), np.abs(axis).argmin(axis=1)]
     other = -least[:, None] * axis
     other[np.arange(len(axis)), np.abs(axis).argmin(axis=1)] += 1.0
-    # Where the two are that close, rounding would choose the way.
-    across = np.where(size[:, None] > 1e-12, across, other)
+    across = np.where(size[:, None] > _SAME_LINE, across, other)
     across /= np.linalg.norm(across, axis=1)[:, None]
     nearest: FloatArray = np.cos(angle)[:, None] * axis + np.sin(angle)[:, None] * across
     return nearest
@@ -93,7 +95,7 @@ class ConeSearch:
         best = MetCones(
             np.zeros((count, self._arm.joint_count)), targets.copy(), np.zeros(count, np.bool_)
         )
-        margins = np.full(count, -np.inf)
+        scores = np.full(count, -np.inf)
         near = nearest_starts(self._starts.poses, scaled, DIRECTION, _AT_LEAST)
         for attempt in range(min(SEARCH_STARTS, len(self._starts.postures))):
             waiting = np.flatnonzero(~best.met) if attempt >= _AT_LEAST else np.arange(count)
@@ -104,10 +106,10 @@ class ConeSearch:
             )
             q, poses, met = self._led(self._starts.postures[first], scaled[waiting], cones[waiting])
             values = q * self._scale
-            margin = np.minimum(travel_margin(self._arm, values), 1.0)
-            better = met & (margin >= 0.0) & (margin > margins[waiting])
+            score = preferred(*margin_and_outside(self._arm, values))
+            better = met & (score >= 0.0) & (score > scores[waiting])
             which = waiting[better]
-            margins[which], best.met[which] = margin[better], True
+            scores[which], best.met[which] = score[better], True
             best.joint_values[which] = values[better]
             best.tool_in_base[which, :3, :3] = poses[better, :3, :3]
         return best

@@ -95,8 +95,18 @@ def room_of(arm: Arm, scale: FloatArray) -> Room:
 
 
 def start_box(arm: Arm, room: Room) -> tuple[FloatArray, FloatArray]:
-    """Return the box, (joints,) twice, that starts are spread over: travel, or a whole turn, or
-    the arm's length both ways for a slide without travel."""
+    """Return the box, (joints,) twice, that starts are spread over.
+
+    Travel, or a whole turn, or the arm's length both ways for a slide without travel.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = tuple(Row(kind, 0.4, 0.0, 0.0, 0.0) for kind in JointKind)
+    >>> arm = Arm("two", Table(Convention.STANDARD, rows))
+    >>> start_box(arm, no_bounds(arm))[1].round(3)
+    array([3.142, 1.   ])
+    """
     half = np.where(arm.revolute_joints, np.pi, 1.0)
     lower = np.where(room.lower > -FAR, room.lower, -half)
     upper = np.where(room.upper < FAR, room.upper, half)
@@ -106,6 +116,14 @@ def start_box(arm: Arm, room: Room) -> tuple[FloatArray, FloatArray]:
 
 
 def no_bounds(arm: Arm) -> Room:
-    """Return room for any joint values."""
+    """Return room for any joint values.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> arm = Arm("one", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 0.4, 0, 0, 0),)))
+    >>> no_bounds(arm).lower < -1e6
+    array([ True])
+    """
     far, none = np.full(arm.joint_count, FAR), np.empty(0)
     return Room(-far, far, np.empty((0, arm.joint_count)), none, none, arm.revolute_joints)

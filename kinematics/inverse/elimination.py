@@ -52,6 +52,10 @@ FOUND_AGAIN = 1e-6
 
 _SEED = 20_261_203
 
+_NO_HEALTH = 1e-30
+"""Health of an order at a target where it breaks down: one such of ``SAMPLES`` lowers the mean of
+the logarithms by four decades, and two rule the order out."""
+
 
 @dataclass(frozen=True)
 class EliminationGeometry:
@@ -175,7 +179,7 @@ def _by_health(screws: Screws, targets: FloatArray) -> list[Order]:
                 if order is None:
                     break
                 health = order.candidates(targets).health
-                score = float(np.exp(np.log(np.maximum(health, 1e-30)).mean()))
+                score = float(np.exp(np.log(np.maximum(health, _NO_HEALTH)).mean()))
                 if score > ELIMINATION_SOUND:
                     rated.append((score, order))
                     break

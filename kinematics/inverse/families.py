@@ -26,8 +26,9 @@ from kinematics.inverse.descent_arrays import FAR
 from kinematics.inverse.iterative import TASKS
 from kinematics.inverse.self_motions import Curve, SelfMotions
 from kinematics.inverse.tolerances import FAMILY_RELATION, FAMILY_TRAVEL
+from kinematics.kernels.best_postures import preferred
 from kinematics.table import FloatArray
-from kinematics.travel_limits import travel_margin
+from kinematics.travel_limits import margin_and_outside
 
 Stretch = list[float]
 
@@ -255,15 +256,16 @@ class _Stretches:
 
     def _witness(self, curve: Curve, points: FloatArray) -> FloatArray:
         """Return the posture with the best margin among points within travel, or the first one."""
-        margins = travel_margin(self._arm, points * self._motions.scale)
+        scale = self._motions.scale
+        margins, outside = margin_and_outside(self._arm, points * scale)
         if not np.isfinite(margins).any():
             posture: FloatArray = curve.points[curve.start]
             return posture
 
-        def margin(q: FloatArray) -> float:
-            return float(travel_margin(self._arm, q * self._motions.scale))
+        def score(q: FloatArray) -> float:
+            return float(preferred(*margin_and_outside(self._arm, q * scale)))
 
-        return self._best(curve, points, margin, int(np.argmax(margins)))
+        return self._best(curve, points, score, int(np.argmax(preferred(margins, outside))))
 
     def _relation(self, curve: Curve) -> Relation | None:
         """Return what stays the same where two joints move in proportion."""

@@ -134,7 +134,14 @@ class Solver(Protocol):
 
 
 def none_found(targets: int, rows: int) -> Found:
-    """Return a result without solutions, every no of it proved and without a stage."""
+    """Return a result without solutions, every no of it proved and without a stage.
+
+    Examples
+    --------
+    >>> found = none_found(2, 6)
+    >>> found.motions.shape, found.open
+    ((0, 6), array([False, False]))
+    """
     return Found(
         motions=np.empty((0, rows)),
         target=np.empty(0, np.intp),

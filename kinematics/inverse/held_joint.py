@@ -18,10 +18,11 @@ from kinematics.inverse.held_values import held_values
 from kinematics.inverse.locked import SIX, Locked
 from kinematics.inverse.polish import polish
 from kinematics.inverse.tolerances import ACCEPTED, SAME_PATH
+from kinematics.kernels.best_postures import preferred
 from kinematics.kernels.compiler import for_kernel
 from kinematics.table import FloatArray
 from kinematics.tolerances import MOST_TURNS
-from kinematics.travel_limits import limits_of, travel_margin
+from kinematics.travel_limits import beyond_travel, limits_of, travel_margin
 
 _STEPS, _WORTH = 12, 1.0
 """Steps onto a target at another held value, two as a rule, a dozen where ways merge; and the gap,
@@ -93,12 +94,13 @@ class HeldJoint:
     def scored(self, values: FloatArray, margin: FloatArray, near: FloatArray | None) -> FloatArray:
         """Return what is best is highest, for postures (..., joints) and their margins (...,).
 
-        The margin, or within travel the nearness to ``near`` (joints,) instead, 0 to 1.
+        The margin, or within travel the nearness to ``near`` (joints,) instead, 0 to 1, as
+        ``preferred`` counts them.
         """
-        if near is None:
-            return np.minimum(margin, 1.0)
-        far: FloatArray = (np.abs(values - near) / self.drive.spans).max(axis=-1)
-        return np.where(margin >= 0.0, 1.0 / (1.0 + far), margin)
+        if near is not None:
+            far = (np.abs(values - near) / self.drive.spans).max(axis=-1)
+            margin = np.where(margin >= 0.0, 1.0 / (1.0 + far), margin)
+        return preferred(margin, beyond_travel(self.arm, values))
 
     def brought(
         self, values: FloatArray, targets: FloatArray, held: FloatArray | None = None

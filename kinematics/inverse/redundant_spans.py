@@ -105,10 +105,11 @@ def _best(
     values = np.where(beyond[:, None], nodes.joint_values[at], values)
     score = np.where(beyond, nodes.score[at], score)
     for side in range(2):
-        at_end = joint.margins(ends.postures[:, side])
-        better = at_end > score
-        values = np.where(better[:, None], ends.postures[:, side], values)
-        score = np.maximum(score, at_end)
+        edge = ends.postures[:, side]
+        at_edge = joint.scored(edge, joint.margins(edge), None)
+        better = at_edge > score
+        values = np.where(better[:, None], edge, values)
+        score = np.maximum(score, at_edge)
     return values, score
 
 

@@ -68,7 +68,31 @@ class Best(NamedTuple):
 
 
 def nodes_of(joint: HeldJoint, targets: FloatArray, near: FloatArray | None) -> Nodes:
-    """Return the postures of targets (m, 4, 4), the tool in base, metres, at all held values."""
+    """Return the postures of targets (m, 4, 4), the tool in base, metres, at all held values.
+
+    Parameters
+    ----------
+    near : (joints,), what is nearest to it scores highest, instead of what has the most margin.
+
+    Examples
+    --------
+    A slide along the line of a wrist's shoulder: two links of 0.5 m reach 1 m to either side.
+
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.chain import tool_in_base
+    >>> from kinematics.inverse.redundant import redundant_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> slide = Row(JointKind.PRISMATIC, 0.0, np.pi / 2, 0.0, 0.0, travel=Travel(-3.0, 3.0))
+    >>> numbers = ((0, 1.5708, 0), (0.5, 0, 0), (0, 1.5708, 0), (0, -1.5708, 0.5), (0, 1.5708, 0))
+    >>> rows = [Row(JointKind.REVOLUTE, a, alpha, d, 0.0) for a, alpha, d in (*numbers, (0, 0, 0))]
+    >>> arm = Arm("on a slide", Table(Convention.STANDARD, (slide, *rows)))
+    >>> joint = redundant_of(arm, np.eye(4)).joint
+    >>> posture = np.array([0.4, 0.0, 0.7, 0.2, 0.3, 0.5, 0.1])
+    >>> targets = tool_in_base(arm, posture, np.eye(4))[None]
+    >>> nodes = nodes_of(joint, targets, None)
+    >>> bool(np.ptp(nodes.joint_values[:, 0]) < 2.0)
+    True
+    """
     before, after = joint.carried
     carried = (before @ targets[:, None] @ after).reshape(-1, 4, 4)
     inner = joint.locked.solve(carried)
@@ -80,7 +104,26 @@ def nodes_of(joint: HeldJoint, targets: FloatArray, near: FloatArray | None) -> 
 
 
 def stretches_of(joint: HeldJoint, nodes: Nodes) -> Stretches:
-    """Return the stretches of nodes within travel; of targets without any, of all nodes."""
+    """Return the stretches of nodes within travel; of targets without any, of all nodes.
+
+    Examples
+    --------
+    The slide of ``nodes_of``: one stretch for each way that shoulder, elbow and wrist can stand.
+
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.chain import tool_in_base
+    >>> from kinematics.inverse.redundant import redundant_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> slide = Row(JointKind.PRISMATIC, 0.0, np.pi / 2, 0.0, 0.0, travel=Travel(-3.0, 3.0))
+    >>> numbers = ((0, 1.5708, 0), (0.5, 0, 0), (0, 1.5708, 0), (0, -1.5708, 0.5), (0, 1.5708, 0))
+    >>> rows = [Row(JointKind.REVOLUTE, a, alpha, d, 0.0) for a, alpha, d in (*numbers, (0, 0, 0))]
+    >>> arm = Arm("on a slide", Table(Convention.STANDARD, (slide, *rows)))
+    >>> joint = redundant_of(arm, np.eye(4)).joint
+    >>> posture = np.array([0.4, 0.0, 0.7, 0.2, 0.3, 0.5, 0.1])
+    >>> targets = tool_in_base(arm, posture, np.eye(4))[None]
+    >>> len(stretches_of(joint, nodes_of(joint, targets, None)).ends)
+    8
+    """
     count, each = len(nodes.score), len(joint.values)
     targets = (len(nodes.offsets) - 1) // each
     of = np.repeat(np.arange(targets), np.diff(nodes.offsets[::each]))
@@ -101,7 +144,27 @@ def stretches_of(joint: HeldJoint, nodes: Nodes) -> Stretches:
 def best_of(
     joint: HeldJoint, stretches: Stretches, targets: FloatArray, near: FloatArray | None
 ) -> Best:
-    """Return the best posture of each stretch of targets (m, 4, 4), between held values too."""
+    """Return the best posture of each stretch of targets (m, 4, 4), between held values too.
+
+    Examples
+    --------
+    A shorter slide that alone has travel: held in the middle it leaves half of that, the most.
+
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.chain import tool_in_base
+    >>> from kinematics.inverse.redundant import redundant_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> slide = Row(JointKind.PRISMATIC, 0.0, np.pi / 2, 0.0, 0.0, travel=Travel(0.0, 1.0))
+    >>> numbers = ((0, 1.5708, 0), (0.5, 0, 0), (0, 1.5708, 0), (0, -1.5708, 0.5), (0, 1.5708, 0))
+    >>> rows = [Row(JointKind.REVOLUTE, a, alpha, d, 0.0) for a, alpha, d in (*numbers, (0, 0, 0))]
+    >>> arm = Arm("on a slide", Table(Convention.STANDARD, (slide, *rows)))
+    >>> joint = redundant_of(arm, np.eye(4)).joint
+    >>> posture = np.array([0.4, 0.0, 0.7, 0.2, 0.3, 0.5, 0.1])
+    >>> targets = tool_in_base(arm, posture, np.eye(4))[None]
+    >>> best = best_of(joint, stretches_of(joint, nodes_of(joint, targets, None)), targets, None)
+    >>> float(best.joint_values[best.score.argmax(), 0].round(6))
+    0.5
+    """
     nodes, at = stretches.nodes, stretches.ends[:, BEST]
     best = Best(nodes.joint_values[at].copy(), nodes.score[at].copy(), nodes.inside[at].copy())
     first, last = at == stretches.ends[:, FIRST], at == stretches.ends[:, LAST]

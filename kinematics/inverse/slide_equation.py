@@ -80,7 +80,22 @@ class Placed(NamedTuple):
 
 
 def closure_of(ring: Ring, lines: Lines) -> Closure:
-    """Return what must close for the lines of a ring."""
+    """Return what must close for the lines of a ring.
+
+    Examples
+    --------
+    Turns about z, x, x, y, both slides along y; the target turns nothing, so axis d stays at right
+    angles to axis a:
+
+    >>> from kinematics.inverse.screws import Screws
+    >>> from kinematics.inverse.slide_rings import lines_around, rings_of
+    >>> slides = np.array([False, True, False, True, False, False])
+    >>> screws = Screws(np.eye(3)[[2, 1, 0, 1, 0, 1]], np.zeros((6, 3)), slides, np.eye(4), 1.0)
+    >>> ring = rings_of(slides)[0]
+    >>> closure = closure_of(ring, lines_around(ring, screws, np.eye(4)[None]))
+    >>> ring.rows, float(closure.along[0, 0, 0]), closure.aim[0, 0, 0]
+    ((0, 1, 2, 3, 4, 5), 0.0, array([0., 1., 0.]))
+    """
     axes = tuple(lines.axis[:, None, None, place] for place in ring.turning)
     points = tuple(lines.point[:, None, None, place] for place in ring.turning)
     slides = tuple(lines.axis[:, None, None, place] for place in ring.sliding)
@@ -101,6 +116,21 @@ def other_turn(
     ----------
     scan_last : whether the turn that is scanned is c, else b.
     cosine, sine : (m or 1, s, 1), of the scanned turn.
+
+    Examples
+    --------
+    The arm of ``closure_of``: b and c turn about one line, and what is left is sin(t + u) = 0.
+
+    >>> from kinematics.inverse.screws import Screws
+    >>> from kinematics.inverse.slide_rings import lines_around, rings_of
+    >>> slides = np.array([False, True, False, True, False, False])
+    >>> screws = Screws(np.eye(3)[[2, 1, 0, 1, 0, 1]], np.zeros((6, 3)), slides, np.eye(4), 1.0)
+    >>> ring = rings_of(slides)[0]
+    >>> closure = closure_of(ring, lines_around(ring, screws, np.eye(4)[None]))
+    >>> t = np.array([[[0.3]]])
+    >>> a, b, c = other_turn(closure, False, np.cos(t), np.sin(t))
+    >>> bool(np.isclose(a, np.sin(t))), bool(np.isclose(b, np.cos(t))), float(c[0, 0, 0])
+    (True, True, 0.0)
     """
     first, second, third, fourth = closure.axes
     if scan_last:
@@ -121,6 +151,21 @@ def placed(
     """Return how a closure stands where b and c have turned; cosine and sine of each, broadcast.
 
     They may be complex, as long as each pair is of one angle.
+
+    Examples
+    --------
+    The arm of ``closure_of``, as it stands at zero: nothing is missing, and a is not turned.
+
+    >>> from kinematics.inverse.screws import Screws
+    >>> from kinematics.inverse.slide_rings import lines_around, rings_of
+    >>> slides = np.array([False, True, False, True, False, False])
+    >>> screws = Screws(np.eye(3)[[2, 1, 0, 1, 0, 1]], np.zeros((6, 3)), slides, np.eye(4), 1.0)
+    >>> ring = rings_of(slides)[0]
+    >>> closure = closure_of(ring, lines_around(ring, screws, np.eye(4)[None]))
+    >>> zero = np.ones((1, 1, 1)), np.zeros((1, 1, 1))
+    >>> stands = placed(ring, closure, zero, zero)
+    >>> float(np.abs(stands.gap).max()), float(stands.cosine[0, 0, 0])
+    (0.0, 1.0)
     """
     first, axis_b, axis_c, fourth = closure.axes
     points = closure.points
@@ -160,7 +205,21 @@ def answers_of(
 
 
 def roots_of(ring: Ring, closure: Closure, scan_last: bool) -> tuple[ComplexArray, FloatArray]:
-    """Return all roots exp(i t), complex ones too, (m, 2 N), and the polynomial's size, (m,)."""
+    """Return all roots exp(i t), complex ones too, (m, 2 N), and the polynomial's size, (m,).
+
+    Examples
+    --------
+    The second slide turns with b but not with c: degree 6.
+
+    >>> from kinematics.inverse.screws import Screws
+    >>> from kinematics.inverse.slide_rings import lines_around, rings_of
+    >>> slides = np.array([False, True, False, True, False, False])
+    >>> screws = Screws(np.eye(3)[[2, 1, 0, 1, 0, 1]], np.zeros((6, 3)), slides, np.eye(4), 1.0)
+    >>> ring = rings_of(slides)[0]
+    >>> closure = closure_of(ring, lines_around(ring, screws, np.eye(4)[None]))
+    >>> roots_of(ring, closure, False)[0].shape
+    (1, 12)
+    """
     degree, power = _degrees(ring, scan_last)
     count = 2 * degree + 1
     turns = _BEGIN + 2.0 * np.pi / count * np.arange(count)

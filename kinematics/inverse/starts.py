@@ -19,6 +19,8 @@ _PRIMES = (2, 3, 5, 7, 11, 13, 17, 19, 23, 29, 31, 37, 41, 43, 47, 53)
 _MORE_PRIMES = (59, 61, 67, 71, 73, 79, 83, 89, 97, 101, 103, 107, 109, 113, 127, 131)
 
 
+_LAST_DIGIT = 1e-15
+"""Places of digits smaller than that move no point of the cube: doubles hold no more of them."""
 _PIECE = 1024
 """Targets held against all starts at a time: some MiB."""
 
@@ -39,7 +41,7 @@ def scrambled_halton(count: int, dimensions: int, seed: int) -> FloatArray:
     for dimension, prime in enumerate((*_PRIMES, *_MORE_PRIMES)[:dimensions]):
         left, place = np.arange(count), 1.0 / prime
         # Digits beyond those of the count are permuted too: they move a point within its cell.
-        while place > 1e-15:
+        while place > _LAST_DIGIT:
             points[:, dimension] += random.permutation(prime)[left % prime] * place
             left, place = left // prime, place / prime
     return points

@@ -1,6 +1,6 @@
 """The postures of each target in order, best first, and no more of them than are to be listed.
 
-Postures within travel come alone where there are any. Ranks are compared in steps, so that what
+Postures within travel come alone where there are any. Ranks are given in steps, so that what
 differs by rounding keeps the order in which it was found, whichever machine computed it.
 
 Left out: what postures are ranked by (kinematics/reach), and where they come from (whole_turns.py).
@@ -14,6 +14,39 @@ from kinematics.kernels.whole_turns import INSIDE, ROUNDED
 from kinematics.number_checks import FloatArray
 
 IntArray = NDArray[np.int64]
+
+
+def in_steps(score: FloatArray) -> FloatArray:
+    """Return scores (...,) rounded to whole steps, larger is better.
+
+    Examples
+    --------
+    >>> one, other = in_steps(np.array([0.25, 0.25 - 1e-13]))
+    >>> bool(one == other)
+    True
+    """
+    steps: FloatArray = np.round(score * ROUNDED)
+    return steps / ROUNDED
+
+
+def preferred(score: FloatArray, outside_working: NDArray[np.bool_]) -> FloatArray:
+    """Return scores (...,) in steps, and half a step more for postures within working travel.
+
+    Many postures share a margin, where one joint bounds them all: working travel tells them apart.
+
+    Parameters
+    ----------
+    score : (...,), margin or nearness; infinite, counted as 1, where nothing bounds the arm.
+    outside_working : (...,).
+
+    Examples
+    --------
+    >>> outside, within = preferred(np.array([0.25, 0.25 - 1e-13]), np.array([True, False]))
+    >>> float(outside), bool(within > outside)
+    (0.25, True)
+    """
+    steps: FloatArray = np.round(np.minimum(score, 1.0) * ROUNDED)
+    return (steps + np.where(outside_working, 0.0, 0.5)) / ROUNDED
 
 
 @compiled_exactly
@@ -31,7 +64,7 @@ def best_first(
     Parameters
     ----------
     target : (k,), ascending, of each wanted motion; source, flags : (p,), as ``postures_of`` gives.
-    primary, secondary : (p,), larger is better; what is equal keeps its order.
+    primary, secondary : (p,), in steps, larger is better; what is equal keeps its order.
     most : postures of one target that are listed.
 
     Returns
@@ -72,7 +105,6 @@ def best_first(
 
 @compiled_exactly
 def _better(one: int, other: int, primary: FloatArray, secondary: FloatArray) -> bool:
-    first, second = np.round(primary[one] * ROUNDED), np.round(primary[other] * ROUNDED)
-    if first == second:
-        first, second = np.round(secondary[one] * ROUNDED), np.round(secondary[other] * ROUNDED)
-    return bool(first > second)
+    if primary[one] == primary[other]:
+        return bool(secondary[one] > secondary[other])
+    return bool(primary[one] > primary[other])

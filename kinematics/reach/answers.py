@@ -21,6 +21,7 @@ from kinematics.inverse.lost_rank import LostRank
 from kinematics.inverse.measured import POSE, POSITION
 from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import method_of
+from kinematics.kernels.best_postures import preferred
 from kinematics.reach.at_limits import with_ends_of_travel
 from kinematics.reach.bounds import FREE, Bounds
 from kinematics.reach.durations import seconds_of
@@ -152,7 +153,8 @@ class Answerer:
         """Return how good the best posture of each target is, (m,).
 
         Not negative within travel: the margin (1 without travel), or the nearness to joint values
-        asked for, 0 to 1. Negative beyond travel; minus infinity where there is no posture.
+        asked for, 0 to 1, as ``preferred`` counts. Negative beyond travel; minus infinity where
+        there is no posture.
         """
         rest = self._rest(asked.near)
         found = self._near_enough.of(self._solved(targets, rest, asked.near), targets, rest)
@@ -160,11 +162,11 @@ class Answerer:
         scores = np.full(len(targets), -np.inf)
         some = ranked.offsets[1:] > ranked.offsets[:-1]
         # One posture of each such target, in their order.
-        scores[some] = np.minimum(ranked.margin, 1.0)
+        good = ranked.margin
         if asked.near is not None:
             far = self.ranking.distance(ranked.joint_values, asked.near)
-            inside = ranked.inside[some]
-            scores[some] = np.where(inside, 1.0 / (1.0 + far), scores[some])
+            good = np.where(ranked.inside[some], 1.0 / (1.0 + far), good)
+        scores[some] = preferred(good, ranked.outside_working)
         return scores
 
     def _solved(self, targets: Targets, rest: FloatArray, near: FloatArray | None) -> Found:

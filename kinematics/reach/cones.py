@@ -25,7 +25,7 @@ from kinematics.inverse.iterative import Search
 from kinematics.inverse.measured import POSITION
 from kinematics.reach.answers import Answerer
 from kinematics.reach.bounds import FREE, Bounds
-from kinematics.reach.spins import spun
+from kinematics.reach.spins import smallest_first, spun
 from kinematics.reach.targets import (
     BOUND,
     NOT_FOUND,
@@ -148,10 +148,10 @@ class ConeScan:
         """Return the best of the poses tried for each target (m, 4, 4), and its score (m,).
 
         In between what is left of the cone beside it, (m,): an arm of few joints may miss a
-        direction by that.
+        direction by that. Of equals the first direction stays, and the smallest turn.
         """
         count, each = len(targets), DIRECTIONS * TURNS
-        around = np.linspace(0.0, 2.0 * np.pi, TURNS, endpoint=False)
+        around = (2.0 * np.pi / TURNS * smallest_first(TURNS)).astype(np.float64)
         tried = np.empty((count, DIRECTIONS, TURNS, 4, 4))
         left = np.empty((count, DIRECTIONS, TURNS))
         for index in range(count):

@@ -108,6 +108,15 @@ def turned_freely(arm: Arm, idle: NDArray[np.bool_], values: FloatArray) -> Fami
     """Return the family of a posture (joints,) whose ``idle`` joints do not matter.
 
     The interval is the travel of the first of them, or a whole turn.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, travel=Travel(-1.0, 2.0))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> family = turned_freely(arm, np.array([True]), np.zeros(1))
+    >>> family.free_joints, family.interval
+    ((1,), ((-1.0, 2.0),))
     """
     free = np.flatnonzero(idle)
     low, high = drive_of(arm).box[:, free[0]].tolist()
@@ -116,7 +125,16 @@ def turned_freely(arm: Arm, idle: NDArray[np.bool_], values: FloatArray) -> Fami
 
 
 def spare_joints(method: Method) -> int:
-    """Return how many more joints an arm has than its task asks for."""
+    """Return how many more joints an arm has than its task asks for.
+
+    Examples
+    --------
+    >>> from kinematics.inverse.solve import method_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = (Row(JointKind.REVOLUTE, 0.4, 0.3, 0.1, 0.0),) * 4
+    >>> spare_joints(method_of(Arm("four", Table(Convention.STANDARD, rows)), np.eye(4), POSITION))
+    1
+    """
     return max(0, method.arm.joint_count - {POSE: 6, POSITION: 3, DIRECTION: 5}[method.task])
 
 

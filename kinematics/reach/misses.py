@@ -104,6 +104,21 @@ def least_miss(
 
     The place comes first, then the least turn; of a pose, with tool z where it should point if that
     costs no more than ``_WORTH_AIMING`` times that turn.
+
+    Examples
+    --------
+    Two links turned by 1.3 and -1 rad are to have the tool there, but not turned:
+
+    >>> from kinematics.reach.targets import Target
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> arm = Arm("two", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 1.0, 0, 0, 0),) * 2))
+    >>> turned = np.array([1.3, -1.0])
+    >>> pose = tool_in_base(arm, turned, np.eye(4))
+    >>> pose[:3, :3] = np.eye(3)
+    >>> targets = Targets.of([Target(pose)])
+    >>> miss = least_miss(Ranking(arm, np.eye(4)), targets, 0, turned[None], POSE)
+    >>> miss.place_met, round(miss.angle, 3)
+    (True, 0.3)
     """
     least = _least(ranking, targets, index, motions, task, task)
     if task == POSE and least.place_met:
@@ -144,6 +159,14 @@ def postures_of(arm: Arm, motions: FloatArray) -> FloatArray:
     """Return joint values (p, joints) of row motions (k, rows), at least one for all of them.
 
     Rows without a joint value need not move as wanted where no posture has them so.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table, Travel
+    >>> row = Row(JointKind.REVOLUTE, 0.4, 0.0, 0.0, 0.0, direction=-1, travel=Travel(-4.0, 4.0))
+    >>> arm = Arm("one", Table(Convention.STANDARD, (row,)))
+    >>> postures_of(arm, np.array([[3.0]])).round(3).ravel()
+    array([ 3.283, -3.   ])
     """
     values: FloatArray = drive_of(arm).postures(motions).joint_values
     if len(values):

@@ -128,6 +128,12 @@ def summary_of(
     ----------
     positions : in the base.
     base_in_frame : (4, 4), of the frame whose x, y and z are told; the base where left out.
+
+    Examples
+    --------
+    >>> found = summary_of(np.array([[1.0, 0, 0], [3.0, 0, 0]]), None, begin=10)
+    >>> found.greatest[0], found.greatest_at[0]
+    (np.float64(3.0), np.int64(11))
     """
     shown = positions
     if base_in_frame is not None:
@@ -146,7 +152,16 @@ def summary_of(
 def states_of(
     samples: JointSamples, space: TaskSpace, tool_in_flange: FloatArray, begin: int, end: int
 ) -> tuple[int, int]:
-    """Return how many of samples ``begin`` ... ``end`` are near singular, and how many singular."""
+    """Return how many of samples ``begin`` ... ``end`` are near singular, and how many singular.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> from kinematics.task_space import task_space
+    >>> arm = Arm("one", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 0.4, 0, 0, 0),)))
+    >>> states_of(JointSamples(arm, 8, seed=1), task_space(arm, np.eye(4)), np.eye(4), 0, 8)
+    (0, 0)
+    """
     near = singular = 0
     for first in range(begin, end, BLOCK):
         joint_values = samples.piece(first, min(first + BLOCK, end))

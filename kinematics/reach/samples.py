@@ -31,6 +31,10 @@ _BITS = 30
 MOST_SAMPLES = 2**_BITS
 """The sequence repeats then."""
 
+MOST_SEED = 2**53 - 1
+"""The largest whole number that every reader of a request and its answer holds exactly (RFC 8259,
+section 6)."""
+
 _WholeNumbers = NDArray[np.uint32]
 
 
@@ -40,7 +44,7 @@ class JointSamples:
     Parameters
     ----------
     count : how many, at least 1.
-    seed : whole number from 0; another one gives postures as evenly spread elsewhere.
+    seed : whole number, 0 to MOST_SEED; another one gives postures as evenly spread elsewhere.
     working : whether to stay within working travel too.
 
     Raises
@@ -65,12 +69,12 @@ class JointSamples:
                 value=count,
                 way_out=f"ask for 1 to {MOST_SAMPLES}",
             )
-        if seed < 0:
+        if not 0 <= seed <= MOST_SEED:
             raise KinematicsError(
-                "a seed is a whole number from 0",
+                f"a seed is a whole number from 0 to {MOST_SEED}",
                 where=("seed",),
                 value=seed,
-                way_out="give 0 or more, the same for the same samples",
+                way_out="give one of these, the same for the same samples",
             )
         self.arm, self.count, self.seed = arm, count, seed
         self.region = travel_region(arm, working=working)

@@ -50,6 +50,18 @@ _TOGETHER = 64
 """Targets scanned together: some thousand poses, whose arrays stay in the cache."""
 
 
+def smallest_first(count: int) -> NDArray[np.intp]:
+    """Return the places in a ring of so many turns, the turn by nothing first, then to both sides.
+
+    Examples
+    --------
+    >>> smallest_first(5).tolist()
+    [0, 1, 4, 2, 3]
+    """
+    places = np.arange(count)
+    return np.argsort(np.minimum(places, count - places), kind="stable")
+
+
 def spun(tool_in_base: FloatArray, angle: FloatArray) -> FloatArray:
     """Return poses (..., 4, 4) with the tool turned about its z axis by angles (...).
 
@@ -157,8 +169,9 @@ class _Scan:
         count = len(self._targets)
         ring = np.arange(RING) * _STEP
         scores = self._scores(np.broadcast_to(ring, (count, RING)))
-        # The turn asked for comes first, and wins where nothing tells turns apart.
-        at = np.argmax(scores, axis=1)
+        # The smallest turn wins where nothing tells turns apart.
+        order = smallest_first(RING)
+        at = order[np.argmax(scores[:, order], axis=1)]
         best, score = ring[at], scores[np.arange(count), at]
         width = _STEP
         for _ in range(_ROUNDS):

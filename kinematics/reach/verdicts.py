@@ -21,7 +21,7 @@ from kinematics.inverse.found import Found
 from kinematics.inverse.landing import gaps_to
 from kinematics.inverse.screws import screws_of
 from kinematics.jacobian import motion_of
-from kinematics.kernels.best_postures import best_first
+from kinematics.kernels.best_postures import best_first, in_steps, preferred
 from kinematics.kernels.decomposition import decompose
 from kinematics.reach.branches import Branches
 from kinematics.reach.targets import Targets
@@ -113,14 +113,16 @@ class Ranking:
 
         Parameters
         ----------
-        near : (joints,), rank by nearness to it, in shares of travel; by margin else, and where
-            that is infinite by the smallest singular value.
+        near : (joints,), rank by nearness to it, in shares of travel; by margin else. What is equal
+            (to a step, ``ROUNDED``) is ranked by the margin, then those within working travel come
+            first, then by the smallest singular value where nothing bounds the arm.
         most : how many are listed of one target.
         still : (joints,), joints that are not turned by whole turns.
         angles_count : whether a posture put onto a limit must keep the target's orientation.
         """
         postures = self._drive.postures(found.motions, near, still=still)
         values, flags, margin = postures.joint_values, postures.flags, postures.margin
+        outside_working = flags & WORKING != 0
         errors = None
         if postures.any_clipped:
             errors = np.stack([found.position_error, found.angle_error], 1)[postures.source]
@@ -129,9 +131,11 @@ class Ranking:
             # Of the turns that nothing bounds, those nearest to it.
             turns = np.round((near - values) / (2.0 * np.pi))
             values += 2.0 * np.pi * np.where(self._drive.endless, turns, 0.0)
-            primary, secondary = -self.distance(values, near), margin
+            primary = in_steps(-self.distance(values, near))
+            secondary = preferred(margin, outside_working)
         else:
-            primary, secondary = margin, self._smallest(values, margin)
+            primary = preferred(margin, outside_working)
+            secondary = self._smallest(values, margin)
         offsets, order, inside, all_inside = best_first(
             len(targets), found.target, postures.source, flags, primary, secondary, most
         )
@@ -139,7 +143,7 @@ class Ranking:
             offsets,
             values[order],
             margin[order],
-            flags[order] & WORKING != 0,
+            outside_working[order],
             postures.source[order],
             None if errors is None else errors[order],
             found.target,
@@ -186,7 +190,10 @@ class Ranking:
         postures.margin[at[off]] = -TRAVEL_EDGE
 
     def _smallest(self, values: FloatArray, margin: FloatArray) -> FloatArray:
-        """Return the smallest singular value of postures that no travel ranks, (p,)."""
+        """Return the smallest singular value, in steps, of postures no travel ranks, (p,).
+
+        Of others the margin, which says no more than it did.
+        """
         if not len(margin) or np.isfinite(margin[0]) or self._space is None:
             return margin
         space, joints = self._space, values.shape[1]
@@ -195,7 +202,7 @@ class Ranking:
         of_joints = motion_of(self.arm, values, self.tool_in_flange).of_joints
         no_left, no_right = np.empty((0, rows, min(rows, joints))), np.empty((0, joints, joints))
         decompose(of_joints, space.row_map, space.joint_scale, no_left, smallest, no_right)
-        return smallest[:, rank - 1] if rank else margin
+        return in_steps(smallest[:, rank - 1]) if rank else margin
 
     @cached_property
     def _space(self) -> TaskSpace | None:

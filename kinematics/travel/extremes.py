@@ -51,6 +51,20 @@ def least_room(
     ----------
     count : postures of the track. smallest : (2,), written: share of travel, share of the line.
     of : (1,), written: which limit; -1 where there is none.
+
+    Examples
+    --------
+    A joint that starts at 0 with rate 1 and comes back to it reaches 0.25 half way, within 1:
+
+    >>> from kinematics.travel.tracking import room_for
+    >>> one = np.ones(1)
+    >>> bounds = Bounds(np.ones((1, 1)), 0 * one, -one, one, np.array([False]))
+    >>> track = room_for(2, 1)
+    >>> track.shares[:], track.values[:], track.rates[:, 0] = (0.0, 1.0), 0.0, (1.0, -1.0)
+    >>> smallest, of = np.empty(2), np.empty(1, np.int64)
+    >>> least_room(bounds, track, 2, smallest, of)
+    >>> smallest, of
+    (array([0.375, 0.5  ]), array([0]))
     """
     smallest[0], smallest[1], of[0] = _VAST, 0.0, -1
     turns, ends = np.empty(4), np.empty(4)
@@ -76,6 +90,17 @@ def first_beyond(bounds: Bounds, track: Track, count: int, edge: float, found: F
     Parameters
     ----------
     found : (2,), written: shares of the line between which the first is; the same at the start.
+
+    Examples
+    --------
+    >>> from kinematics.travel.tracking import room_for
+    >>> one = np.ones(1)
+    >>> bounds = Bounds(np.ones((1, 1)), 0 * one, -one, 0.2 * one, np.array([False]))
+    >>> track = room_for(2, 1)
+    >>> track.shares[:], track.values[:], track.rates[:, 0] = (0.0, 1.0), 0.0, (1.0, -1.0)
+    >>> found = np.empty(2)
+    >>> first_beyond(bounds, track, 2, 0.0, found), found
+    (True, array([0. , 0.5]))
     """
     turns, ends = np.empty(4), np.empty(4)
     beyond = False
@@ -150,7 +175,19 @@ def _extremes(
 
 @compiled
 def largest_rates(track: Track, count: int, largest: FloatArray, where: FloatArray) -> None:
-    """Write the largest absolute rate of each joint (joints,), and the share of the line there."""
+    """Write the largest absolute rate of each joint (joints,), and the share of the line there.
+
+    Examples
+    --------
+    From rest to rest over 1, a cubic is fastest half way: 1.5.
+
+    >>> from kinematics.travel.tracking import room_for
+    >>> track, largest, where = room_for(2, 1), np.empty(1), np.empty(1)
+    >>> track.shares[:], track.values[:, 0], track.rates[:] = (0.0, 1.0), (0.0, 1.0), 0.0
+    >>> largest_rates(track, 2, largest, where)
+    >>> largest, where
+    (array([1.5]), array([0.5]))
+    """
     for joint in range(largest.shape[0]):
         largest[joint], where[joint] = abs(track.rates[0, joint]), track.shares[0]
         for at in range(count - 1):

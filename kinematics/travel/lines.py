@@ -61,7 +61,15 @@ class StraightLine:
 
 
 def line_between(start: FloatArray, end: FloatArray) -> StraightLine:
-    """Return the line from pose to pose, (4, 4) each, tool in base, metres."""
+    """Return the line from pose to pose, (4, 4) each, tool in base, metres.
+
+    Examples
+    --------
+    >>> quarter = np.array([[1.0, 0, 0, 2], [0, 0, -1, 0], [0, 1, 0, 0], [0, 0, 0, 1]])
+    >>> line = line_between(np.eye(4), quarter)
+    >>> line.shift, line.turn.round(6)
+    (array([2., 0., 0.]), array([1.570796, 0.      , 0.      ]))
+    """
     turn = rotation_vector_of(end[:3, :3] @ start[:3, :3].T)
     # Products of rotations leave 1e-16 of a turn where there is none.
     if np.linalg.norm(turn) < SHORT_VECTOR:

@@ -299,7 +299,13 @@ def in_base(approach: Approach, frame_in_base: FloatArray) -> Approach:
 
 
 def back_along(target: Target, approach: Approach, where: str) -> Target:
-    """Return the target moved back along an approach."""
+    """Return the target moved back along an approach.
+
+    Examples
+    --------
+    >>> back_along(Target(np.eye(4)), Approach(0.2), "approach").tool_in_base[:3, 3]
+    array([ 0. ,  0. , -0.2])
+    """
     pose = np.array(target.tool_in_base, dtype=np.float64)
     along = pose[:3, 2] if approach.along is None else np.asarray(approach.along, np.float64)
     length = float(np.linalg.norm(along))

@@ -22,6 +22,9 @@ PARAMETERS = frozenset({"format"})
 _ITEMS, _LINES, _BARE = 2048, 4096, 16384
 """Samples in a piece of JSON, CSV and NPY: some milliseconds."""
 
+_MOST_WAITING = 8
+"""Of those that take seconds, in hand and waiting, before the next is asked to come again."""
+
 _TABLES = {
     "npy": (npy.MEDIA_TYPE, _BARE),
     "csv": (csv_text.MEDIA_TYPE, _LINES),
@@ -45,6 +48,11 @@ async def answer_samples(request: Request) -> Response:
         return samples_asked(arms, SamplesRequest.model_validate(body), wanted)
 
     many = await bulk.threads.run(begun)
+    if not many.samples.region.is_box:
+        # Limits that leave too little to draw from are found by drawing, for seconds where it is
+        # nearly too little, and nothing can be refused any more once a table is being sent.
+        first = partial(many.samples.piece, 0, 1)
+        await bulk.estimates.run(first, most=_MOST_WAITING)
     if wanted != "json":
         return _table(bulk, many, wanted)
     summaries = await bulk.threads.pieces(many.summary_piece, many.count, _BARE)

@@ -8,12 +8,15 @@ import asyncio
 import threading
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
+from time import perf_counter
 from typing import TypeVar
 
 from service.errors import NotAvailable
 
 Result = TypeVar("Result")
 THREADS = 2
+TURN_S = 0.005
+"""As long as the interpreter lets a thread work before another may."""
 
 
 class Threads:
@@ -63,20 +66,30 @@ class Threads:
     ) -> list[Result]:
         """Return what ``work(begin, end)`` returns for each piece of ``count``, in order.
 
-        No more pieces are waiting than there are threads, so that requests take turns.
+        A thread gives way to other requests after each turn of some milliseconds. The first turn
+        is one thread's alone: what ends in it would take longer by two that wait for each other.
         """
         loop = asyncio.get_running_loop()
         begins = range(0, count, size)
-        left = iter(enumerate(begins))
+        left = iter(begins)
         results: dict[int, Result] = {}
 
-        async def take_turns() -> None:
-            for place, begin in left:
-                end = min(begin + size, count)
-                results[place] = await loop.run_in_executor(self._pool, work, begin, end)
+        def turn() -> bool:
+            """Make pieces for a while; return whether there may be more."""
+            until = perf_counter() + TURN_S
+            for begin in left:
+                results[begin] = work(begin, min(begin + size, count))
+                if perf_counter() > until:
+                    return True
+            return False
 
-        await asyncio.gather(*(take_turns() for _ in range(min(self._count, len(begins)))))
-        return [results[place] for place in range(len(begins))]
+        async def take_turns() -> None:
+            while await loop.run_in_executor(self._pool, turn):
+                pass
+
+        if count and await loop.run_in_executor(self._pool, turn):
+            await asyncio.gather(*(take_turns() for _ in range(self._count)))
+        return [results[begin] for begin in begins]
 
     def stop(self) -> None:
         """Drop what waits and let the threads end."""

@@ -102,7 +102,8 @@ class Conversions:
     def piece(self, begin: int, end: int) -> Piece:
         """Return orientations ``begin`` ... ``end``."""
         checked = self._checked(begin, end)
-        told = told_rotations(self.to, checked.rotation)
+        # Only matrices stand where they came, in the body of the request.
+        told = told_rotations(self.to, checked.rotation, in_place=self.form != "matrix")
         values = values_out(self.units, self.to, told.values).reshape(len(told.values), -1)
         if not checked.usable.all():
             values = np.where(checked.usable[:, None], values, np.nan)

@@ -20,7 +20,8 @@ from service.operations.approached import approach_seconds, approached_checks
 from service.operations.arms import Arms
 from service.operations.joint_rows import read_joint_row_at
 from service.operations.questions import Question, question_of
-from service.operations.reach_told import ToldChecks, told_together
+from service.operations.reach_judged import told_together
+from service.operations.reach_told import ToldChecks
 from service.operations.reachers import about_the_arm, method_of
 from service.problems import KINDS
 from service.wire.arms import ReadArm
@@ -75,7 +76,7 @@ class ManyTargets:
         return {**self.question.head, "method": method_of(self.question.reacher, self.targets)}
 
     @cached_property
-    def _seconds(self) -> float:
+    def seconds(self) -> float:
         """About how long all answers take."""
         with about_the_arm():
             seconds = self.question.reacher.estimated_seconds(self.targets)
@@ -85,7 +86,7 @@ class ManyTargets:
     @property
     def size(self) -> int:
         """Targets in a piece."""
-        each = self._seconds / max(len(self.targets), 1)
+        each = self.seconds / max(len(self.targets), 1)
         return int(min(max(_PIECE_S / max(each, 1e-6), 1), _LARGEST_PIECE))
 
     def told(self, begin: int, end: int) -> tuple[range, ToldChecks]:
@@ -140,7 +141,7 @@ class ManyTargets:
         ------
         TooLarge
         """
-        seconds = self._seconds
+        seconds = self.seconds
         if seconds <= LONGEST_S:
             return
         most = max(int(len(self.targets) * LONGEST_S / seconds), 1)

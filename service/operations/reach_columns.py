@@ -3,93 +3,161 @@
 Left out: printing them (wire/reach_lines.py).
 """
 
+from itertools import chain
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
+from kinematics.findings import FINE, OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL
 from kinematics.reach.targets import CODES, PROOFS, REACHABLE, VERDICTS
+from kinematics.singularity import STATES
+from kinematics.travel_limits import limits_exceeded
 from service.operations.reach import ManyTargets
-from service.operations.reach_told import ToldChecks
+from service.operations.reach_told import NO_STATE, ToldChecks
 from service.problems import KINDS
-from service.wire.reach_lines import ReachColumns
+from service.wire.reach_lines import ReachColumns, Texts
+
+_CODES = np.array(CODES)
+_REFUSED = -1
+"""In place of a target's index, for a line about one that could not be used."""
 
 
-class _Line(NamedTuple):
-    """One line; ``solution`` is the one it tells, if any."""
+class _Lines(NamedTuple):
+    """Which target each line is about, and which of its solutions it tells.
 
-    name: str
-    code: int
-    codes: frozenset[int] = frozenset()
-    verdict: str = ""
-    solutions: int = 0
-    rank: int = 0
-    proof: str = ""
-    reason: str = ""
-    solution: int | None = None
+    Attributes
+    ----------
+    places : (lines,), of the target in the request.
+    targets : index among those answered, or _REFUSED.
+    ranks : from 1; 0 where no solution is told.
+    solutions : index into all solutions, -1 where none is told.
+    """
+
+    places: NDArray[np.intp]
+    targets: NDArray[np.intp]
+    ranks: NDArray[np.int64]
+    solutions: NDArray[np.intp]
 
 
 def columns_of(many: ManyTargets, begin: int, end: int) -> ReachColumns:
     """Return what the lines of targets ``begin`` ... ``end`` say."""
     span, told = many.told(begin, end)
-    lines: list[_Line] = []
-    number = span.start
-    for place in range(begin, end):
-        name = many.read.names[place] or ""
-        if place in many.read.refused:
-            detail = many.read.refused[place]
-            lines.append(_Line(name, KINDS[detail.code].number, reason=detail.say))
-            continue
-        lines += _lines_of(many, told, number, number - span.start, name)
-        number += 1
-    return _columns(told, lines)
-
-
-def _lines_of(
-    many: ManyTargets, told: ToldChecks, number: int, index: int, name: str
-) -> list[_Line]:
-    """Return the lines of one target, the ``number``-th usable one, ``index``-th of this piece."""
-    checks, count = told.checks, told.found(index)
-    verdict = int(checks.verdict[index])
-    same = (VERDICTS[verdict], count)
-    proof = PROOFS[int(checks.proof[index])]
-    if verdict != REACHABLE:
-        say = told.reason_say(index)
-        return [_Line(name, CODES[verdict], frozenset(), *same, 0, proof, say)]
-    of_target = frozenset(finding.code for finding in many.repaired(number))
-    lines = []
-    for rank, solution in enumerate(told.told_ranks(index), start=1):
-        codes = of_target | told.codes(solution)
-        code = max(codes, default=0)
-        lines.append(_Line(name, code, codes, *same, rank, proof, "", solution))
-    return lines
-
-
-def _columns(told: ToldChecks, lines: list[_Line]) -> ReachColumns:
+    lines = _lines_of(many, span, told, range(begin, end))
     checks, question = told.checks, told.question
-    joints = np.full((len(lines), question.arm.joint_count), np.nan)
-    margins, errors = np.full(len(lines), np.nan), np.full((len(lines), 2), np.nan)
-    with_one = [place for place, line in enumerate(lines) if line.solution is not None]
-    solutions = [line.solution for line in lines if line.solution is not None]
-    if solutions:
-        joints[with_one] = np.array(told.joints)[solutions]
-        margins[with_one] = checks.margin[solutions]
-        errors[with_one] = np.array(told.errors)[:, solutions].T
-    applying = {
-        code: np.array([code in line.codes for line in lines])
-        for code in sorted(set[int]().union(*(line.codes for line in lines)))
-    }
-    return ReachColumns(
-        codes=np.array([line.code for line in lines], dtype=np.int64),
-        applying=applying,
-        verdicts=[line.verdict for line in lines],
-        counts=[line.solutions for line in lines],
-        joints=joints,
-        margins=margins,
-        states=["" if s is None else told.state(s) for s in (line.solution for line in lines)],
-        ranks=[line.rank for line in lines],
-        proofs=[line.proof for line in lines],
-        branches=["" if s is None else told.branch(s) for s in (line.solution for line in lines)],
-        errors=errors,
-        reasons=[line.reason for line in lines],
-        names=[line.name for line in lines],
+    # Of a line without a target or a solution the last entry is told: an empty one.
+    verdicts, proofs = (
+        np.append(each, -1)[lines.targets] for each in (checks.verdict, checks.proof)
     )
+    codes, applying = _codes_of(many, span, told, lines)
+    margins, branches = (
+        np.append(each, empty)[lines.solutions]
+        for each, empty in ((checks.margin, np.nan), (checks.branch, -1))
+    )
+    joints = told.joints_out()
+    nowhere = np.full((1, question.arm.joint_count), np.nan)
+    return ReachColumns(
+        codes=codes,
+        applying=applying,
+        verdicts=Texts(VERDICTS, verdicts),
+        counts=np.append(checks.found, 0)[lines.targets],
+        joints=np.concatenate([joints, nowhere])[lines.solutions],
+        margins=margins,
+        states=_states_of(told, lines.solutions),
+        ranks=lines.ranks,
+        proofs=Texts(PROOFS, proofs),
+        branches=Texts(checks.branches, branches),
+        errors=np.concatenate([told.errors_out(), np.full((1, 2), np.nan)])[lines.solutions],
+        reasons=_reasons_of(many, told, lines),
+        names={
+            line: name
+            for line, place in enumerate(lines.places.tolist())
+            if (name := many.read.names[place])
+        },
+    )
+
+
+def _lines_of(many: ManyTargets, span: range, told: ToldChecks, asked: range) -> _Lines:
+    checks = told.checks
+    reached = checks.verdict == REACHABLE
+    listed = told.told_counts()
+    counts = np.where(reached, listed, 1)
+    targets = np.repeat(np.arange(len(counts)), counts)
+    within = np.arange(len(targets)) - np.repeat(np.cumsum(counts) - counts, counts)
+    in_order = np.fromiter(chain.from_iterable(told.ranks), np.intp, len(checks.margin))
+    first = checks.offsets[:-1][targets] + within
+    tells = reached[targets]
+    solutions = np.full(len(targets), -1)
+    solutions[tells] = in_order[first[tells]]
+    lines = _Lines(
+        many.read.places[span.start : span.stop][targets],
+        targets,
+        np.where(tells, within + 1, 0),
+        solutions,
+    )
+    refused = [place for place in many.read.refused if place in asked]
+    if not refused:
+        return lines
+    places = np.concatenate([lines.places, refused])
+    order = np.argsort(places, kind="stable")
+
+    def among(each: NDArray[np.int64], empty: int) -> NDArray[np.int64]:
+        return np.concatenate([each, np.full(len(refused), empty)])[order]
+
+    return _Lines(
+        places[order],
+        among(lines.targets, _REFUSED),
+        among(lines.ranks, 0),
+        among(lines.solutions, -1),
+    )
+
+
+def _codes_of(
+    many: ManyTargets, span: range, told: ToldChecks, lines: _Lines
+) -> tuple[NDArray[np.int64], dict[int, NDArray[np.bool_]]]:
+    """Return the code of each line, and where each code that is no refusal applies."""
+    applying: dict[int, NDArray[np.bool_]] = {}
+
+    def note(code: int, where: NDArray[np.bool_]) -> None:
+        if code != FINE and where.any():
+            applying[code] = where | applying.get(code, False)
+
+    tells = lines.solutions >= 0
+    if told.judged is not None:
+        states = np.append(told.judged.states, FINE)[lines.solutions]
+        for code in range(1, len(STATES)):
+            note(code, states == code)
+    exceeded = limits_exceeded(told.question.arm, told.checks.joint_values)
+    for code, beyond in zip((OUTSIDE_WORKING_TRAVEL, OUTSIDE_TRAVEL), exceeded, strict=True):
+        note(code, np.append(beyond, False)[lines.solutions])
+    for solution in told.with_more_codes():
+        for code in told.codes(solution):
+            note(code, lines.solutions == solution)
+    for finding in many.question.repaired:
+        note(finding.code, tells)
+    for number, findings in many.read.repaired.items():
+        for finding in findings if number in span else ():
+            note(finding.code, tells & (lines.targets == number - span.start))
+    codes = np.append(_CODES[told.checks.verdict], 0)[lines.targets]
+    for code, where in applying.items():
+        codes = np.where(where, np.maximum(codes, code), codes)
+    for line in np.flatnonzero(lines.targets == _REFUSED).tolist():
+        codes[line] = KINDS[many.read.refused[int(lines.places[line])].code].number
+    return codes, dict(sorted(applying.items()))
+
+
+def _states_of(told: ToldChecks, solutions: NDArray[np.intp]) -> Texts:
+    if told.judged is None:
+        return Texts((NO_STATE,), np.where(solutions < 0, -1, 0))
+    return Texts(STATES, np.append(told.judged.states, -1)[solutions])
+
+
+def _reasons_of(many: ManyTargets, told: ToldChecks, lines: _Lines) -> dict[int, str]:
+    reasons = {}
+    for line in np.flatnonzero(lines.ranks == 0).tolist():
+        index = int(lines.targets[line])
+        if index == _REFUSED:
+            reasons[line] = many.read.refused[int(lines.places[line])].say
+        else:
+            reasons[line] = told.reason_say(index)
+    return reasons

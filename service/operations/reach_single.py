@@ -29,8 +29,9 @@ from service.operations.approached import approach_asked, approached_checks
 from service.operations.arms import Arms
 from service.operations.joint_rows import read_joint_row
 from service.operations.questions import Question
+from service.operations.reach_judged import told_best
 from service.operations.reach_plain import plain_answer
-from service.operations.reach_told import NO_STATE, told_best
+from service.operations.reach_told import NO_STATE
 from service.operations.reachers import is_quick, method_of
 from service.operations.single import question_asked
 from service.wire.arms import ReadArm

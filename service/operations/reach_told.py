@@ -1,20 +1,18 @@
 """Verdicts, reasons and solutions as they are answered, in the user's units and frame.
 
-All solutions of a batch of targets are judged together; words are made one target at a time. Left
-out: asking for them (reach.py).
+Words are made one target at a time. Left out: asking for solutions (reach.py), and judging them
+(reach_judged.py).
 """
 
 from collections.abc import Sequence
-from dataclasses import replace
 from functools import cached_property
-from itertools import compress, pairwise
+from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from kinematics.findings import FINE, OUTSIDE_TRAVEL, Finding
-from kinematics.jacobian import motion_of
 from kinematics.kernels.judgement import SMALLEST
 from kinematics.reach.targets import (
     CODES,
@@ -26,8 +24,9 @@ from kinematics.reach.targets import (
     OUTSIDE_TRAVEL as OUTSIDE,
 )
 from kinematics.singularity import STATES
+from kinematics.table import FloatArray
 from kinematics.travel.moves import Way
-from kinematics.travel_limits import each_travel_findings, limits_exceeded
+from kinematics.travel_limits import each_travel_findings
 from service.convert import (
     Units,
     computed_finding_out,
@@ -38,7 +37,7 @@ from service.convert import (
 from service.operations.courses_told import approach_out, approach_reason_out, approach_say
 from service.operations.questions import Question
 from service.operations.reasons_told import family_out, reason_out, reason_say
-from service.operations.singularities import Judged, judged, judged_reading
+from service.operations.singularities import Judged
 from service.operations.solution_told import solution_out
 
 if TYPE_CHECKING:
@@ -110,15 +109,32 @@ class ToldChecks:
         best_only = self._best_only and self.checks.verdict[index] != OUTSIDE
         return ranks[:1] if best_only or self._first_alone else ranks
 
+    def told_counts(self) -> NDArray[np.intp]:
+        """Return how many solutions ``told_ranks`` tells of each target."""
+        counts = np.diff(self.checks.offsets)
+        if not (self._best_only or self._first_alone):
+            return counts
+        alone = self._first_alone | (self.checks.verdict != OUTSIDE)
+        return np.where(alone, np.minimum(counts, 1), counts)
+
+    def joints_out(self) -> FloatArray:
+        """Return joint values of all solutions, in the user's units, (solutions, joints)."""
+        question = self.question
+        return joint_values_out(question.arm, question.units, self.checks.joint_values)
+
+    def errors_out(self) -> FloatArray:
+        """Return position and angle errors of all solutions, in the user's units."""
+        units, checks = self.question.units, self.checks
+        both = units.length_out(checks.position_error), units.angle_out(checks.angle_error)
+        return np.column_stack(both)
+
     @cached_property
     def joints(self) -> list[list[float]]:
         """Joint values of all solutions, in the user's units."""
         question, checks = self.question, self.checks
         if self._first_alone:
             return [joint_row_out(question.arm, question.units, checks.joint_values[0].tolist())]
-        values: list[list[float]] = joint_values_out(
-            question.arm, question.units, checks.joint_values
-        ).tolist()
+        values: list[list[float]] = self.joints_out().tolist()
         return values
 
     @cached_property
@@ -176,6 +192,13 @@ class ToldChecks:
             findings,
         )
         return told if way is None else {**told, "approach": approach_out(self.question, way)}
+
+    def with_more_codes(self) -> Sequence[int]:
+        """Return the solutions that may have codes beside those of their states and limits."""
+        count = len(self.checks.margin)
+        if self.judged is not None and self.judged.space.watched_position_rank:
+            return range(count)
+        return [] if self._approached is None else [n for n in range(count) if self._way(n)]
 
     def codes(self, solution: int) -> frozenset[int]:
         """Return the codes of what is to be known of one solution, without the words."""
@@ -236,77 +259,6 @@ class ToldChecks:
             return approach_say(self.question.units, broken, int(self.checks.verdict[index]))
         reason = self.checks.reason_of(index)
         return "" if reason is None else reason_say(self.question.units, reason)
-
-
-def told_together(
-    question: Question,
-    checks: Checks,
-    *,
-    best_only: bool,
-    by_singularity: bool,
-    approached: "Approached | None" = None,
-) -> ToldChecks:
-    """Return what was found with all solutions that may be told judged in one batch.
-
-    ``approached`` : the same checks with approaches, where there are some.
-    """
-    if best_only and not by_singularity:
-        kept = _best_alone(checks)
-        checks = _only(checks, kept)
-        if approached is not None:
-            approached = replace(approached, ways=tuple(compress(approached.ways, kept)))
-    joint_values = checks.joint_values
-    if not len(joint_values):
-        return ToldChecks(question, checks, None, [], approached=approached)
-    motion = motion_of(question.arm, joint_values, question.tool.tool_in_flange)
-    working, travel = limits_exceeded(question.arm, joint_values)
-    return ToldChecks(
-        question,
-        checks,
-        judged(question, joint_values, motion),
-        (working | travel).tolist(),
-        best_only=best_only,
-        by_singularity=by_singularity,
-        approached=approached,
-    )
-
-
-def _best_alone(checks: Checks) -> NDArray[np.bool_]:
-    """Return which solutions are told: one for each target, but all of those that exceed travel."""
-    counts = np.diff(checks.offsets)
-    kept = np.where(checks.verdict == OUTSIDE, counts, np.minimum(counts, 1))
-    rank = np.arange(len(checks.joint_values)) - np.repeat(checks.offsets[:-1], counts)
-    told: NDArray[np.bool_] = rank < np.repeat(kept, counts)
-    return told
-
-
-def _only(checks: Checks, kept: NDArray[np.bool_]) -> Checks:
-    """Return the same with some of the solutions alone."""
-    before = np.concatenate([[0], np.cumsum(kept)])
-    return replace(
-        checks,
-        offsets=before[checks.offsets],
-        **{name: getattr(checks, name)[kept] for name in _OF_SOLUTIONS},
-    )
-
-
-_OF_SOLUTIONS = (
-    *("joint_values", "margin", "outside_working", "position_error", "angle_error", "branch"),
-)
-
-
-def told_best(
-    question: Question, checks: Checks, approached: "Approached | None" = None
-) -> ToldChecks:
-    """Return what was found for one target, of which the best solution alone can be told."""
-    if not len(checks.joint_values):
-        return ToldChecks(question, checks, None, [], approached=approached)
-    joint_values = checks.joint_values[0].tolist()
-    read = question.reader.read(joint_values)
-    found = judged_reading(question, joint_values, read)
-    return ToldChecks(
-        question, checks, found, [read.outside], first_alone=True, approached=approached
-    )
 
 
 def beyond_out(units: Units, finding: Finding) -> dict[str, object]:

@@ -9,6 +9,7 @@ from functools import cached_property
 
 import numpy as np
 
+from kinematics.orientation_forms import shape_of
 from kinematics.reach.sample_summary import (
     MEASURES,
     FirstAxis,
@@ -149,14 +150,21 @@ class ManySamples:
         }
 
 
-def samples_asked(arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format) -> ManySamples:
+def samples_asked(
+    arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format, most: int = MOST_SAMPLES
+) -> ManySamples:
     """Return the samples that a body asks for, in the format the answer will have.
+
+    Parameters
+    ----------
+    most : samples of a table.
 
     Raises
     ------
     ServiceError, KinematicsError : arm, tool, frame, form, count or travel cannot be used.
     """
     form = form_for(wanted, asked.form, key="poses", location="body")
+    shape_of(form)  # refused also where no orientation is told
     about = PosesRequest.model_construct(
         arm=asked.arm, joints=[], tool=asked.tool, frame=asked.frame, units=asked.units
     )
@@ -170,15 +178,22 @@ def samples_asked(arms: Arms[ReadArm], asked: SamplesRequest, wanted: Format) ->
             value=False,
             way_out="let one of them be true, or ask for format=json, which has the summary",
         )
-    _refuse_too_many(asked.count, MOST_LISTED if lists_any and not is_table else MOST_SAMPLES)
+    _checked_count(asked.count, MOST_LISTED if lists_any and not is_table else most)
     working = asked.within == WORKING_TRAVEL
     samples = JointSamples(question.arm, asked.count, asked.seed, working=working)
     return ManySamples(question, samples, asked)
 
 
-def _refuse_too_many(count: int, most: int) -> None:
-    if count <= most:
+def _checked_count(count: int, most: int) -> None:
+    if 1 <= count <= most:
         return
+    if count < 1:
+        raise UnusableValue(
+            f"{count} samples cannot be drawn",
+            where=("count",),
+            value=count,
+            way_out=f"ask for 1 to {most}",
+        )
     more = (
         f"; up to {MOST_SAMPLES} as format=npy or csv, or with positions false"
         if most < MOST_SAMPLES

@@ -25,10 +25,10 @@ from service.web.schemas import BYTES
 from service.wire import csv_rows, npy, paging
 from service.wire.answers import json_answer
 from service.wire.body import media_type_of, parse_json, read_bytes
-from service.wire.formats import JSON, answer_format
+from service.wire.formats import JSON, SVG, answer_format
 from service.wire.npy import read_npy
 from service.wire.query import known_parameters
-from service.wire.question_parameters import FORMAT_OF_ANSWERS
+from service.wire.question_parameters import one_of
 from service.wire.senders_key import senders_key
 from service.wire.surveys import (
     TABLE_PARAMETERS,
@@ -51,6 +51,7 @@ _READ = ["GET", "HEAD"]
 _BESIDE_TABLE = tuple(
     parameter(name, f"{says} Beside a table.") for name, says in TABLE_PARAMETERS.items()
 )
+_FORMATS = one_of(*{name: True for kind in SURVEY_KINDS.values() for name in kind.formats})
 _ONE = (
     parameter(
         "survey",
@@ -212,15 +213,20 @@ async def survey_progress(request: Request) -> Response:
     "/v1/surveys/{survey}/result",
     openapi_extra=documented(
         "Result of a survey",
-        "As JSON, as CSV (the lines of `/v1/reach/checks`), or as NPY: a row of doubles for each "
-        "line of the CSV, `code`, `verdict` (0 reachable, 1 outside travel, 2 unreachable, 3 not "
-        "found, -1 refused), `solutions`, `solution`, `q1..qn`, `margin`, `position_error`, "
-        "`angle_error`; its columns are in `X-Columns`. Before the survey has succeeded: 409, with "
-        "`Retry-After` where that will help.",
+        "Of targets as JSON, as CSV (the lines of `/v1/reach/checks`), or as NPY: a row of doubles "
+        "for each line of the CSV, `code`, `verdict` (0 reachable, 1 outside travel, 2 "
+        "unreachable, 3 not found, -1 refused), `solutions`, `solution`, `q1..qn`, `margin`, "
+        "`position_error`, `angle_error`; its columns are in `X-Columns`. Of samples in the same "
+        "formats, as `/v1/reach/samples` tells them; of an envelope as JSON, or as a drawing "
+        "(`format=svg`). Before the survey has succeeded: 409, with `Retry-After` where that will "
+        "help.",
         answer=SurveyResult,
-        parameters=(*_ONE, FORMAT_OF_ANSWERS),
+        parameters=(
+            *_ONE,
+            parameter("format", "Format of the result, if not as Accept says.", _FORMATS),
+        ),
         statuses=(404, 409),
-        answer_media=(JSON, csv_rows.MEDIA_TYPE, npy.MEDIA_TYPE),
+        answer_media=(JSON, csv_rows.MEDIA_TYPE, npy.MEDIA_TYPE, SVG),
         headers={"X-Columns": "Names of the columns of an NPY answer."},
     ),
 )
@@ -231,7 +237,7 @@ async def survey_result(request: Request) -> Response:
     found = await run_in_threadpool(taken_in.finished, name)
     kind = SURVEY_KINDS[found.kind]
     wanted = answer_format(parameters, request.headers.get("accept", ""), "json", kind.formats)
-    told = kind.told(found, wanted)
+    told = await run_in_threadpool(kind.told, found, wanted, taken_in.store)
     pieces = len(await run_in_threadpool(taken_in.store.sizes, name))
 
     def part(number: int, _end: int) -> bytes:
@@ -272,7 +278,8 @@ def _page(surveys: Surveys, name: str) -> bytes:
     points = [(point.position, point.verdict) for point in report.points]
     shown = {**_answer(surveys, found), "about": found.about}
     arm = surveys.arm_of(found)
-    return survey_report_page.report_html(shown, arm, report.tables, points, report.said)
+    told = (report.asked, report.tables, points, report.drawings, report.said)
+    return survey_report_page.report_html(shown, arm, *told)
 
 
 def _answer(surveys: Surveys, survey: Survey) -> dict[str, object]:

@@ -247,6 +247,9 @@ class SurveyStorage(Protocol):
         KeyUsed : one was stored with this key before.
         """
 
+    def sent(self, key: str) -> tuple[Survey, str] | None:
+        """Return the survey stored with a sender's key, and the digest of what came with it."""
+
     def get(self, survey: str) -> Survey | None:
         """Return one survey."""
 
@@ -273,6 +276,9 @@ class SurveyStorage(Protocol):
 
     def made(self, survey: str, number: int) -> bytes:
         """Return what became of a piece."""
+
+    def beginnings(self, survey: str, length: int) -> Sequence[bytes]:
+        """Return the first bytes of what became of each piece, by number."""
 
     def given(self, survey: str, number: int) -> bytes:
         """Return what a piece was given."""

@@ -14,6 +14,7 @@ from typing import Any
 
 import sqlalchemy as sa
 
+from service.errors import StorageUnavailable, UnknownSurvey
 from service.storage.ports import (
     OPEN_STATES,
     QUEUED,
@@ -25,6 +26,7 @@ from service.storage.ports import (
 )
 from service.storage.rows import milliseconds, moment
 from service.storage.schema import SURVEY_PIECES, SURVEYS
+from service.storage.sql import unavailable
 from service.storage.store import SqlStore
 
 _WRITTEN_AT_ONCE = 500
@@ -72,10 +74,19 @@ class SqlSurveys(SqlStore):
                 ]:
                     connection.execute(SURVEY_PIECES.insert(), rows)
         except sa.exc.IntegrityError:
-            with self._asking() as connection:
-                same_key = sa.select(SURVEYS).where(SURVEYS.c.sent_key == key)
-                row = connection.execute(same_key).one()
-            raise KeyUsed(_survey_from(row), row.sent_digest) from None
+            used = self.sent(key) if key else None
+            if used is None:  # removed meanwhile
+                raise StorageUnavailable(
+                    "another request was stored at the same moment", way_out="send it again"
+                ) from None
+            raise KeyUsed(*used) from None
+
+    def sent(self, key: str) -> tuple[Survey, str] | None:
+        """See ``SurveyStorage.sent``."""
+        with self._asking() as connection:
+            asked = sa.select(SURVEYS).where(SURVEYS.c.sent_key == key)
+            row = connection.execute(asked).first()
+        return None if row is None else (_survey_from(row), row.sent_digest)
 
     def get(self, survey: str) -> Survey | None:
         """See ``SurveyStorage.get``."""
@@ -159,6 +170,14 @@ class SqlSurveys(SqlStore):
         """See ``SurveyStorage.made``."""
         return self._of_piece(SURVEY_PIECES.c.made, survey, number)
 
+    def beginnings(self, survey: str, length: int) -> Sequence[bytes]:
+        """See ``SurveyStorage.beginnings``."""
+        begin = sa.func.substr(SURVEY_PIECES.c.made, 1, length, type_=sa.LargeBinary)
+        asked = sa.select(begin).where(SURVEY_PIECES.c.survey == survey)
+        with self._asking() as connection:
+            rows = connection.execute(asked.order_by(SURVEY_PIECES.c.number)).scalars()
+            return [bytes(row) for row in rows]
+
     def given(self, survey: str, number: int) -> bytes:
         """See ``SurveyStorage.given``."""
         return self._of_piece(SURVEY_PIECES.c.given, survey, number)
@@ -182,12 +201,15 @@ class SqlSurveys(SqlStore):
         with self._lock:
             if self._lead is not None:
                 return True
-            connection = self._engine.connect().execution_options(isolation_level="AUTOCOMMIT")
-            if connection.execute(sa.select(sa.func.pg_try_advisory_lock(_LEADER))).scalar():
-                # Held for as long as the connection is: a process that dies gives it back.
-                self._lead = connection
-                return True
-            connection.close()
+            try:
+                connection = self._engine.connect().execution_options(isolation_level="AUTOCOMMIT")
+                if connection.execute(sa.select(sa.func.pg_try_advisory_lock(_LEADER))).scalar():
+                    # Held for as long as the connection is: a process that dies gives it back.
+                    self._lead = connection
+                    return True
+                connection.close()
+            except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
+                raise unavailable(error, f"{self._what} cannot be read") from error
             return False
 
     def close(self) -> None:
@@ -201,7 +223,16 @@ class SqlSurveys(SqlStore):
     def _of_piece(self, column: sa.Column[Any], survey: str, number: int) -> bytes:
         this = (SURVEY_PIECES.c.survey == survey, SURVEY_PIECES.c.number == number)
         with self._asking() as connection:
-            return bytes(connection.execute(sa.select(column).where(*this)).scalar_one())
+            found = connection.execute(sa.select(column).where(*this)).scalar_one_or_none()
+        if found is None:  # somebody removed it while another reads it
+            raise UnknownSurvey(
+                f"there is no survey {survey!r} any more",
+                where=("survey",),
+                location="path",
+                value=survey,
+                way_out="GET /v1/surveys lists them",
+            )
+        return bytes(found)
 
 
 def _locked(connection: sa.Connection, survey: str) -> Any:
@@ -219,7 +250,8 @@ def _row_of(survey: Survey) -> dict[str, Any]:
     return {
         "id": survey.id,
         "kind": survey.kind,
-        "title": survey.title,
+        # As JSON, because PostgreSQL takes no text with a NUL in it.
+        "title": json.dumps(survey.title),
         "state": survey.state,
         "request": json.dumps(survey.request, allow_nan=False),
         "about": json.dumps(survey.about, allow_nan=False),
@@ -236,7 +268,7 @@ def _survey_from(row: sa.Row[Any]) -> Survey:
     return Survey(
         id=row.id,
         kind=row.kind,
-        title=row.title,
+        title=json.loads(row.title),
         state=row.state,
         request=json.loads(row.request),
         about=json.loads(row.about),

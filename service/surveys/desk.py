@@ -89,6 +89,11 @@ class Surveys:
         NotAvailable : too many are waiting.
         ServiceError, KinematicsError : the request is refused.
         """
+        hashed = kept_key(key)
+        digest = hashlib.sha256(raw).hexdigest()
+        # Before all else: the same again is answered also when by now it would be refused.
+        if hashed is not None and (before := self.store.sent(hashed)) is not None:
+            return self._sent_before(*before, digest, key), False
         if self.store.count_open() >= MOST_OPEN:
             raise NotAvailable(
                 f"{MOST_OPEN} surveys are waiting",
@@ -106,15 +111,18 @@ class Surveys:
             total=accepted.total,
             created_at=at,
         )
-        digest = hashlib.sha256(raw).hexdigest()
         try:
-            self.store.add(survey, accepted.pieces, key=kept_key(key), digest=digest)
+            self.store.add(survey, accepted.pieces, key=hashed, digest=digest)
         except KeyUsed as used:
-            if used.digest == digest:
-                return self.runner.seen(used.survey), False
-            raise other_request(key) from None
+            return self._sent_before(used.survey, used.digest, digest, key), False
         self.runner.wake()
         return survey, True
+
+    def _sent_before(self, survey: Survey, its: str, digest: str, key: str | None) -> Survey:
+        """Return the survey that a key gave before, if the same request came with it."""
+        if its == digest:
+            return self.runner.seen(survey)
+        raise other_request(key)
 
     def _accepted(self, asked: SurveyRequest, table: FloatArray | None) -> Accepted:
         """Return what a kind makes of its request, whose refusals point below ``request``."""
@@ -206,13 +214,21 @@ class Surveys:
         left = self.runner.remaining_s(found) or 2.0
         retry = {"Retry-After": str(round(min(max(left, _SOON_S), _LATEST_S)))} if again else {}
         raise NotFinished(
-            f"the survey is {found.state}" + ("" if again else " and has no result"),
+            _without_result(found),
             where=("survey",),
             location="path",
             value=survey,
             way_out="ask again later" if again else "ask for it anew",
             headers=retry,
         )
+
+
+def _without_result(survey: Survey) -> str:
+    if survey.state in OPEN_STATES:
+        return f"the survey is {survey.state}"
+    if not survey.reason:
+        return f"the survey is {survey.state} and has no result"
+    return f"the survey has no result, it {survey.state}: {survey.reason}"
 
 
 def _below(details: Sequence[Detail]) -> tuple[Detail, ...]:

@@ -18,7 +18,7 @@ from service.wire.formats import Format
 PIECE_S = 0.1
 """Of estimated work in a piece: what a killed worker loses, and a cancelled survey still does."""
 
-LARGEST_PIECE = 128
+LARGEST_PIECE = 2048
 """Of what should be quick: a target at a singular posture takes a hundred times as long."""
 
 
@@ -57,19 +57,32 @@ class Point:
     verdict: str
 
 
+class ReportTable(NamedTuple):
+    """A table on paper; a whole number in it stands to the right."""
+
+    title: str
+    head: Sequence[str]
+    lines: Sequence[Sequence[object]]
+    said: str = ""
+
+
 @dataclass(frozen=True)
 class Report:
     """What is put on paper of a result, in words and numbers of the user's units.
 
     Attributes
     ----------
-    tables : title, head and lines of each.
+    asked : what was asked beside arm, tool and frame: name and value.
+    tables : in their order.
     points : drawn in two views; none for a kind that has none.
-    said : what is to be known of both, such as that not all is drawn.
+    drawings : whole drawings, as SVG, each with the words below it.
+    said : what is to be known of all, such as that not all is drawn.
     """
 
-    tables: Sequence[tuple[str, Sequence[str], Sequence[Sequence[object]]]]
+    asked: Sequence[tuple[str, object]]
+    tables: Sequence[ReportTable]
     points: Sequence[Point] = ()
+    drawings: Sequence[tuple[str, str]] = ()
     said: str = ""
 
 
@@ -103,7 +116,7 @@ class Kind(Protocol):
     def make(self, prepared: Any, piece: GivenPiece) -> MadePiece:
         """Make one piece."""
 
-    def told(self, survey: Survey, wanted: Format) -> Told:
+    def told(self, survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
         """Return how the result of a survey that succeeded is told."""
 
     def reported(self, survey: Survey, store: SurveyStorage) -> Report:
@@ -116,7 +129,7 @@ def piece_size(seconds_each: float) -> int:
     Examples
     --------
     >>> piece_size(1e-6), piece_size(0.01), piece_size(7.0)
-    (128, 10, 1)
+    (2048, 10, 1)
     """
     return int(min(max(PIECE_S / max(seconds_each, 1e-9), 1), LARGEST_PIECE))
 

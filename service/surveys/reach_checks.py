@@ -6,7 +6,6 @@ survey is accepted, so that mistakes are refused at once; of more, the others ar
 one in the result. Left out: how results are told (reach_results.py).
 """
 
-import zlib
 from dataclasses import replace
 from typing import Any, NamedTuple, cast
 
@@ -14,35 +13,33 @@ import numpy as np
 
 from kinematics.table import FloatArray
 from service.details import Detail
-from service.errors import DigestDiffers, ServiceError, TooLarge, UnusableValue
-from service.operations.arms import Arms, StoredArm
-from service.operations.meant_arms import meant_arm
+from service.errors import ServiceError, TooLarge, UnusableValue
+from service.operations.arms import Arms
 from service.operations.questions import Question
 from service.operations.reach import ManyTargets, Wanted, reach_question, wanted_solutions
 from service.operations.reach_columns import columns_of
 from service.problems import KINDS
-from service.storage.ports import Document, GivenPiece, MadePiece, Revision, Survey, SurveyStorage
+from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.surveys.kinds import Accepted, Report, Told, cut, piece_size
-from service.surveys.reach_pieces import LEVEL, given_rows, rows_of, table_pieces, table_rows
+from service.surveys.pinned import OneArm, Setup, pinned, setup_of
+from service.surveys.reach_kept import columns_bytes, counts_of
+from service.surveys.reach_pieces import (
+    given_rows,
+    rows_of,
+    table_of,
+    table_pieces,
+)
 from service.surveys.reach_report import report_of
-from service.surveys.reach_results import columns_bytes, counts_of, told_results
-from service.wire.arms import ReadArm, read_arm
-from service.wire.cells import CellAt, no_cell
+from service.surveys.reach_results import told_results
+from service.wire.arms import ReadArm
 from service.wire.formats import FORMATS, Format
 from service.wire.reach_gathered import FIELD, ReadTargets, refuse_same_names
 from service.wire.reach_request import MOST_TARGETS as READ_AT_ONCE
 from service.wire.reach_request import ReachRequest
+from service.wire.reach_table import table_rows, table_targets
 from service.wire.reach_targets import read_targets
 
 MOST_TARGETS = 1_000_000
-
-
-class Setup(NamedTuple):
-    """What a process needs beside the targets: the request, and the stored arm with its cell."""
-
-    request: Document
-    record: Revision | None
-    cell: CellAt | None
 
 
 class Prepared(NamedTuple):
@@ -75,12 +72,9 @@ class ReachChecks:
         first = read_targets(rows[:READ_AT_ONCE], question.units)
         many = ManyTargets(question, first, prepared.wanted)
         about = {**many.head, "solutions": asked.solutions, "joints": question.arm.joint_count}
-        each = question.reacher.estimated_seconds(many.targets) / len(many.targets)
-        revision = question.meant.revision
-        pinned = {"name": question.arm.name, "revision": revision}
-        kept = {key: value for key, value in request.items() if key != FIELD}
-        if revision is not None:
-            kept["arm"] = pinned
+        each = many.seconds / max(len(many.targets), 1)
+        without = {key: value for key, value in request.items() if key != FIELD}
+        kept = pinned(without, question.meant)
         size = piece_size(each)
         pieces = cut(rows, size, given_rows) if table is None else table_pieces(table, size)
         return Accepted(kept, about, count, pieces)
@@ -88,54 +82,30 @@ class ReachChecks:
     def setup(self, arms: Arms[ReadArm], survey: Survey) -> Setup:
         """See ``Kind.setup``."""
         asked = ReachRequest.model_validate({**survey.request, FIELD: []})
-        meant = meant_arm(arms, asked.arm)
-        if meant.identity() != survey.about["arm"]:
-            raise DigestDiffers("the arm, or the cell it stands in, has changed since it was asked")
-        if meant.revision is None:
-            cell = meant.read.document.get("cell")
-            return Setup(survey.request, None, arms.newest_cell(cell) if cell else None)
-        record = arms.get(meant.arm.name, meant.revision).record
-        return Setup(survey.request, record, arms.cell_of(record))
+        return setup_of(arms, survey, asked.arm)
 
     def prepare(self, setup: Setup) -> Prepared:
         """See ``Kind.prepare``."""
         asked = ReachRequest.model_validate({**setup.request, FIELD: []})
-        return _prepared(cast(Arms[ReadArm], _OneArm(setup.record, setup.cell)), asked)
+        return _prepared(cast(Arms[ReadArm], OneArm(setup)), asked)
 
     def make(self, prepared: Prepared, piece: GivenPiece) -> MadePiece:
         """See ``Kind.make``."""
-        rows = rows_of(piece.given)
-        read = _read(rows, prepared.question)
-        columns = columns_of(ManyTargets(prepared.question, read, prepared.wanted), 0, len(rows))
-        made = zlib.compress(columns_bytes(columns), LEVEL)
-        return MadePiece(piece.number, made, counts_of(columns))
+        question = prepared.question
+        table = table_of(piece.given)
+        read = None if table is None else table_targets(table, question.units)
+        if read is None:
+            read = _read(rows_of(piece.given), question)
+        columns = columns_of(ManyTargets(question, read, prepared.wanted), 0, read.count)
+        return MadePiece(piece.number, columns_bytes(columns), counts_of(columns))
 
-    def told(self, survey: Survey, wanted: Format) -> Told:
+    def told(self, survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
         """See ``Kind.told``."""
         return told_results(survey, wanted)
 
     def reported(self, survey: Survey, store: SurveyStorage) -> Report:
         """See ``Kind.reported``."""
         return report_of(survey, store)
-
-
-class _OneArm:
-    """Stands in for the store: whatever is asked for, it is this arm, and this cell."""
-
-    def __init__(self, record: Revision | None, cell: CellAt | None) -> None:
-        self._record, self._cell = record, cell
-
-    def get(self, name: str, revision: int | None = None) -> StoredArm[ReadArm]:
-        """Return the arm that was sent along."""
-        assert self._record is not None
-        cell = self._cell
-        read = read_arm(self._record.document, no_cell if cell is None else lambda _: cell)
-        return StoredArm(self._record, read)
-
-    def newest_cell(self, name: str) -> CellAt:
-        """Return the cell that was sent along."""
-        assert self._cell is not None
-        return self._cell
 
 
 def _prepared(arms: Arms[ReadArm], asked: ReachRequest) -> Prepared:

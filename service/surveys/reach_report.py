@@ -4,8 +4,7 @@ Idea: counts are of all targets; lists and drawings are of as many as a page can
 some ten thousand, and say so. Left out: the page (web/survey_report.py).
 """
 
-import zlib
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from itertools import pairwise
 from math import isinf
 from typing import Any
@@ -13,59 +12,127 @@ from typing import Any
 import numpy as np
 
 from service.storage.ports import Survey, SurveyStorage
-from service.surveys.kinds import Point, Report
+from service.surveys.kinds import Point, Report, ReportTable
+from service.surveys.reach_kept import columns_from
 from service.surveys.reach_pieces import rows_of
-from service.surveys.reach_results import columns_from, summary_of
+from service.surveys.reach_results import summary_of
 from service.wire.csv_text import REFUSALS_FROM
 from service.wire.reach_lines import ReachColumns
 
-MOST_LOOKED_AT = 200
+MOST_LOOKED_AT = 100
 """Pieces: some seconds of reading."""
 
-MOST_LISTED, MOST_DRAWN = 40, 4000
+MOST_TIGHT, MOST_WITHOUT, MOST_DRAWN = 40, 400, 4000
+"""Lines of two lists, a page and some ten; and marks that a drawing can show."""
+
+_LONGEST_NAME = 40
+_FARTHEST = 1e12
+"""In whatever unit: targets farther off, or that are no numbers, are refused, and would leave a
+drawing of all no scale."""
+
 _BORDERS = (0.0, 0.02, 0.05, 0.1, 0.2, 0.5)
 """Of margins: the smallest share of travel left."""
+
+
+class _Seen:
+    """What pieces tell, as far as a page shows it."""
+
+    def __init__(self) -> None:
+        self.margins: list[float] = []
+        self.tight: list[tuple[float, str, str]] = []
+        self.without: list[tuple[str, str, str]] = []
+        self.points: list[Point] = []
+        self._targets = 0
+
+    def add(self, made: bytes, given: bytes) -> None:
+        """Add the next piece."""
+        columns = columns_from(made)
+        firsts = np.flatnonzero(columns.ranks <= 1).tolist()
+        names = _names_of(columns, firsts, self._targets)
+        self._targets += len(firsts)
+        self.margins += _margins_of(columns, firsts)
+        self.tight = sorted(self.tight + _tight_of(columns, firsts, names))[:MOST_TIGHT]
+        self.without = (self.without + _without_of(columns, firsts, names))[:MOST_WITHOUT]
+        if len(self.points) < MOST_DRAWN:
+            verdicts = columns.verdicts.told()
+            for row, line in zip(rows_of(given), firsts, strict=True):
+                place = _place_of(row)
+                if place is not None:
+                    self.points.append(Point(place, verdicts[line] or "refused"))
+            del self.points[MOST_DRAWN:]
 
 
 def report_of(survey: Survey, store: SurveyStorage) -> Report:
     """Return the tables and points of a survey that succeeded."""
     summary = summary_of(survey)
     count = len(store.sizes(survey.id))
-    joints = int(survey.about["joints"])
-    margins: list[float] = []
-    tight: list[tuple[float, str, str]] = []
-    without: list[tuple[str, str, str]] = []
-    points: list[Point] = []
+    seen = _Seen()
     looked_at = min(count, MOST_LOOKED_AT)
     for number in range(looked_at):
-        columns = columns_from(zlib.decompress(store.made(survey.id, number)), joints)
-        rows = rows_of(store.given(survey.id, number))
-        firsts = [line for line, rank in enumerate(columns.ranks) if rank <= 1]
-        margins += _margins_of(columns, firsts)
-        tight = sorted(tight + _tight_of(columns, firsts))[:MOST_LISTED]
-        without = (without + _without_of(columns, firsts))[:MOST_LISTED]
-        for row, line in zip(rows, firsts, strict=True):
-            place = _place_of(row)
-            if place is not None and len(points) < MOST_DRAWN:
-                points.append(Point(place, columns.verdicts[line] or "refused"))
-    verdicts = [(verdict.replace("_", " "), number) for verdict, number in summary.items()]
-    tables: list[tuple[str, Sequence[str], Sequence[Sequence[object]]]] = [
-        (
-            "Verdicts",
-            ("verdict", "targets"),
-            verdicts,
-        ),
-        ("Travel left at the best posture", ("share of travel", "targets"), _bins(margins)),
-        ("Least travel left", ("target", "margin", "branch"), [_tight_line(one) for one in tight]),
-        ("Not reached", ("target", "verdict", "why"), without),
-    ]
+        seen.add(store.made(survey.id, number), store.given(survey.id, number))
     said = (
-        f"Margins, lists and drawings are of the first {looked_at} of {count} pieces; "
-        if (looked_at < count)
+        f"Margins, lists and drawings are of the first {looked_at} of {count} pieces. "
+        if looked_at < count
         else ""
     )
-    said += f"at most {MOST_LISTED} lines are listed and {MOST_DRAWN} targets drawn."
-    return Report(tables, points, said)
+    if len(seen.points) == MOST_DRAWN:
+        said += f"The first {MOST_DRAWN} targets are drawn."
+    asked = [("targets", survey.total), ("of these reachable", summary["reachable"])]
+    return Report(asked, _tables(summary, seen), seen.points, said=said)
+
+
+def _tables(summary: Mapping[str, int], seen: _Seen) -> Sequence[ReportTable]:
+    reached = summary["reachable"]
+    return [
+        ReportTable("Verdicts", ("verdict", "targets", "share"), _verdicts(summary)),
+        ReportTable(
+            "Travel left at the best posture",
+            ("share of travel", "targets"),
+            _bins(seen.margins),
+            "The smallest share of travel that is left at any joint: 0 at a limit, 0.5 in the "
+            "middle of all.",
+        ),
+        ReportTable(
+            "Least travel left",
+            ("target", "margin", "branch"),
+            [_tight_line(one) for one in seen.tight],
+            _listed_of(len(seen.tight), reached),
+        ),
+        ReportTable(
+            "Not reached",
+            ("target", "verdict", "why"),
+            seen.without,
+            _listed_of(len(seen.without), summary["targets"] - reached),
+        ),
+    ]
+
+
+def _listed_of(listed: int, there: int) -> str:
+    return f"{listed} of {there} are listed." if listed < there else ""
+
+
+def _verdicts(summary: Mapping[str, int]) -> Sequence[tuple[str, int, str]]:
+    whole = max(summary["targets"], 1)
+    return [
+        (verdict.replace("_", " "), number, _share(number, whole))
+        for verdict, number in summary.items()
+    ]
+
+
+def _share(number: int, whole: int) -> str:
+    """Return a share in per cent, which is 0 or 100 only where it is none or all.
+
+    Examples
+    --------
+    >>> _share(1, 3), _share(0, 7), _share(1, 100_000), _share(99_998, 100_000), _share(7, 7)
+    ('33.3 %', '0.0 %', '< 0.1 %', '> 99.9 %', '100.0 %')
+    """
+    if number == 0 or number == whole:
+        return f"{100 * number / whole:.1f} %"
+    tenths = 1000 * number / whole
+    if tenths < 0.5:
+        return "< 0.1 %"
+    return "> 99.9 %" if tenths >= 999.5 else f"{tenths / 10:.1f} %"
 
 
 def _margins_of(columns: ReachColumns, firsts: Sequence[int]) -> list[float]:
@@ -74,20 +141,49 @@ def _margins_of(columns: ReachColumns, firsts: Sequence[int]) -> list[float]:
     return found
 
 
-def _tight_of(columns: ReachColumns, firsts: Sequence[int]) -> list[tuple[float, str, str]]:
+def _names_of(columns: ReachColumns, firsts: Sequence[int], before: int) -> Mapping[int, str]:
+    """Return what targets are called, by line; those without a name by their number from 1."""
+    return {
+        line: shortened(columns.names.get(line, f"no. {number}"))
+        for number, line in enumerate(firsts, start=before + 1)
+    }
+
+
+def shortened(name: str) -> str:
+    """Return a name that fits into a column of a page.
+
+    Examples
+    --------
+    >>> shortened("lug-1"), len(shortened("x" * 200))
+    ('lug-1', 40)
+    """
+    return name if len(name) <= _LONGEST_NAME else name[: _LONGEST_NAME - 1] + "…"
+
+
+def _tight_of(
+    columns: ReachColumns, firsts: Sequence[int], names: Mapping[int, str]
+) -> list[tuple[float, str, str]]:
+    branches = columns.branches.told()
     return [
-        (float(columns.margins[line]), columns.names[line] or "-", columns.branches[line])
+        (float(columns.margins[line]), names[line], branches[line])
         for line in firsts
         if columns.codes[line] < REFUSALS_FROM and np.isfinite(columns.margins[line])
     ]
 
 
-def _without_of(columns: ReachColumns, firsts: Sequence[int]) -> list[tuple[str, str, str]]:
+def _without_of(
+    columns: ReachColumns, firsts: Sequence[int], names: Mapping[int, str]
+) -> list[tuple[str, str, str]]:
+    verdicts = columns.verdicts.told()
     return [
-        (columns.names[line] or "-", columns.verdicts[line] or "refused", columns.reasons[line])
+        (names[line], _spaced(verdicts[line] or "refused"), columns.reasons.get(line, ""))
         for line in firsts
         if columns.codes[line] >= REFUSALS_FROM
     ]
+
+
+def _spaced(verdict: str) -> str:
+    return verdict.replace("-", " ")
 
 
 def _tight_line(one: tuple[float, str, str]) -> tuple[str, str, str]:
@@ -119,6 +215,6 @@ def _place_of(row: Any) -> tuple[float, float, float] | None:
         elif isinstance(given, dict):
             given = given["position"]
         x, y, z = (float(number) for number in given)
-    except (TypeError, ValueError, KeyError, IndexError):
+    except (TypeError, ValueError, KeyError, IndexError, OverflowError):
         return None
-    return x, y, z
+    return (x, y, z) if all(abs(number) <= _FARTHEST for number in (x, y, z)) else None

@@ -1,74 +1,23 @@
-"""What a survey of targets found: kept as columns, told as JSON, CSV or a table of doubles.
+"""What a survey of targets found: told as JSON, CSV or a table of doubles.
 
-Columns are kept as JSON, whose shortest doubles come back to the last bit, and are told piece by
-piece, so that a million targets never stand in memory. Left out: making them (reach_checks.py).
+Columns are told piece by piece, so that a million targets never stand in memory. Left out: making
+them (reach_checks.py), and how they are kept (reach_kept.py).
 """
 
-import zlib
-from collections import Counter
-from collections.abc import Callable, Mapping
-from dataclasses import fields, replace
-from functools import partial
-from typing import Any
+from collections.abc import Callable
+from typing import Any, NamedTuple
 
 import numpy as np
-import orjson
 
 from kinematics.reach.targets import VERDICTS
-from kinematics.table import FloatArray
 from service.storage.ports import Survey
 from service.surveys.kinds import Told
+from service.surveys.reach_kept import LINES, REFUSED, columns_from
 from service.wire import csv_text, npy
 from service.wire.answers import json_bytes
 from service.wire.csv_text import REFUSALS_FROM
 from service.wire.formats import JSON, Format
 from service.wire.reach_lines import ReachColumns, SameInAll, joint_keys, reach_head, reach_lines
-
-REFUSED, LINES = "refused", "lines"
-_NUMBERS = {"codes": np.int64, "joints": np.float64, "margins": np.float64, "errors": np.float64}
-_OF_VERDICT = {verdict: number for number, verdict in enumerate(VERDICTS)}
-
-
-def columns_bytes(columns: ReachColumns) -> bytes:
-    """Return columns as they are kept."""
-    document = {field.name: getattr(columns, field.name) for field in fields(columns)}
-    document["applying"] = {str(code): where for code, where in columns.applying.items()}
-    # JSON has no infinity, which is the margin without travel limits.
-    document["unlimited"] = np.isposinf(columns.margins)
-    return orjson.dumps(document, option=orjson.OPT_SERIALIZE_NUMPY)
-
-
-def columns_from(kept: bytes, joints: int) -> ReachColumns:
-    """Return the columns that were kept.
-
-    Examples
-    --------
-    >>> numbers = np.array([0.1, -0.0, np.inf])
-    >>> joints, codes, no = numbers[:, None], np.zeros(3, dtype=np.int64), [""] * 3
-    >>> errors = np.zeros((3, 2))
-    >>> columns = ReachColumns(
-    ...     codes, {}, no, [1] * 3, joints, numbers, no, [1] * 3, no, no, errors, no, no
-    ... )
-    >>> columns_from(columns_bytes(columns), 1).margins
-    array([ 0.1, -0. ,  inf])
-    """
-    document: dict[str, Any] = orjson.loads(kept)
-    unlimited = np.array(document.pop("unlimited"), dtype=np.bool_)
-    numbers = {name: np.array(document[name], dtype) for name, dtype in _NUMBERS.items()}
-    numbers["margins"][unlimited] = np.inf
-    shape = (len(unlimited), joints)
-    columns = ReachColumns(**{**document, **numbers, "joints": numbers["joints"].reshape(shape)})
-    applying = {int(code): np.array(where, np.bool_) for code, where in columns.applying.items()}
-    return replace(columns, applying=applying)
-
-
-def counts_of(columns: ReachColumns) -> Mapping[str, int]:
-    """Return how many targets there are of each verdict, and how many lines tell them."""
-    counts = Counter[str]({LINES: len(columns.verdicts)})
-    for verdict, rank in zip(columns.verdicts, columns.ranks, strict=True):
-        if rank <= 1:
-            counts[verdict or REFUSED] += 1
-    return counts
 
 
 def summary_of(survey: Survey) -> dict[str, int]:
@@ -82,7 +31,7 @@ def told_results(survey: Survey, wanted: Format) -> Told:
     joints = int(survey.about["joints"])
 
     def of_columns(tell: Callable[[int, ReachColumns], bytes]) -> Callable[[int, bytes], bytes]:
-        return lambda number, made: tell(number, columns_from(zlib.decompress(made), joints))
+        return lambda number, made: tell(number, columns_from(made))
 
     if wanted == "csv":
         same = _same(survey)
@@ -96,7 +45,7 @@ def told_results(survey: Survey, wanted: Format) -> Told:
     about = {"survey": survey.id, **survey.about}
     head = json_bytes(about)[:-1] + b',"results":['
     tail = b'],"summary":' + json_bytes(summary_of(survey)) + b"}"
-    return Told(JSON, head, of_columns(partial(_items)), tail)
+    return Told(JSON, head, of_columns(_items), tail)
 
 
 def columns_told(joints: int) -> tuple[str, ...]:
@@ -112,13 +61,9 @@ def columns_told(joints: int) -> tuple[str, ...]:
 
 
 def _doubles(_: int, columns: ReachColumns) -> bytes:
-    verdicts = [_OF_VERDICT.get(verdict, -1) for verdict in columns.verdicts]
-    told: list[FloatArray] = [
-        *(np.array(column, dtype=float) for column in (columns.codes, verdicts)),
-        *(np.array(column, dtype=float) for column in (columns.counts, columns.ranks)),
-    ]
-    table = np.column_stack([*told, columns.joints, columns.margins, columns.errors])
-    return npy.npy_bytes(table).tobytes()
+    told = columns.codes, columns.verdicts.which, columns.counts, columns.ranks
+    numbers = columns.joints, columns.margins, columns.errors
+    return npy.npy_bytes(np.column_stack([*told, *numbers])).tobytes()
 
 
 def _same(survey: Survey) -> SameInAll:
@@ -129,37 +74,46 @@ def _same(survey: Survey) -> SameInAll:
 
 
 def _items(number: int, columns: ReachColumns) -> bytes:
+    texts = _Spelled(*(getattr(columns, name).told() for name in _Spelled._fields))
     items: list[dict[str, Any]] = []
-    for line, rank in enumerate(columns.ranks):
+    for line, rank in enumerate(columns.ranks.tolist()):
         if rank <= 1:
-            items.append(_item(columns, line))
+            items.append(_item(columns, texts, line))
         if rank:
-            items[-1]["solutions"].append(_solution(columns, line))
+            items[-1]["solutions"].append(_solution(columns, texts, line))
     return (b"," if number else b"") + json_bytes(items)[1:-1]
 
 
-def _item(columns: ReachColumns, line: int) -> dict[str, Any]:
-    code, verdict = int(columns.codes[line]), columns.verdicts[line]
-    reason = columns.reasons[line]
+class _Spelled(NamedTuple):
+    """Texts of all lines."""
+
+    verdicts: list[str]
+    proofs: list[str]
+    branches: list[str]
+    states: list[str]
+
+
+def _item(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:
+    code, reason = int(columns.codes[line]), columns.reasons.get(line)
     return {
-        "name": columns.names[line] or None,
+        "name": columns.names.get(line),
         "ok": code < REFUSALS_FROM,
         "code": code,
-        "verdict": verdict or None,
-        "proof": columns.proofs[line] or None,
+        "verdict": texts.verdicts[line] or None,
+        "proof": texts.proofs[line] or None,
         "reason": {"say": reason} if reason else None,
-        "found": columns.counts[line],
+        "found": int(columns.counts[line]),
         "solutions": [],
     }
 
 
-def _solution(columns: ReachColumns, line: int) -> dict[str, Any]:
+def _solution(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:
     margin, (position, angle) = float(columns.margins[line]), columns.errors[line].tolist()
     return {
         "joints": columns.joints[line].tolist(),
         "margin": margin if np.isfinite(margin) else None,
-        "branch": columns.branches[line],
-        "state": columns.states[line],
+        "branch": texts.branches[line],
+        "state": texts.states[line],
         "position_error": position,
         "angle_error": angle,
     }

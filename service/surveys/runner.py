@@ -107,8 +107,9 @@ class Runner:
 
     def seen(self, survey: Survey) -> Survey:
         """Return a survey as it is, also where its end could not be written yet."""
-        if survey.id in self._unwritten and survey.state in OPEN_STATES:
-            return replace(survey, state=FAILED, reason=self._unwritten[survey.id])
+        reason = self._unwritten.get(survey.id)
+        if reason is not None and survey.state in OPEN_STATES:
+            return replace(survey, state=FAILED, reason=reason)
         return survey
 
     def remaining_s(self, survey: Survey) -> float | None:
@@ -122,20 +123,32 @@ class Runner:
         idle_since = monotonic()
         while not self._stopping.is_set():
             self._wanted.clear()
-            survey = None
-            with suppress(StorageUnavailable):
-                self._write_what_was_not()
-                if self._store.may_lead():
-                    survey = self._store.next_open()
+            try:
+                survey = self._next()
+                if survey is not None:
+                    self._run(survey)
+                    idle_since = monotonic()
+                    continue
+                self._wanted.wait(_LOOK_ELSEWHERE_S)
+                if monotonic() - idle_since > _IDLE_S:
+                    self._pool.stop()
+            except Exception:  # without this thread no survey would ever go on
+                _LOG.exception("surveys are looked for again in %g s", _LOOK_ELSEWHERE_S)
+                self._stopping.wait(_LOOK_ELSEWHERE_S)
+
+    def _next(self) -> Survey | None:
+        """Return the oldest survey to work on, None where there is none or the store fails."""
+        with suppress(StorageUnavailable):
+            self._write_what_was_not()
+            survey = self._store.next_open() if self._store.may_lead() else None
             if survey is not None and survey.id not in self._unwritten:
-                self._run(survey)
-                idle_since = monotonic()
-                continue
-            self._wanted.wait(_LOOK_ELSEWHERE_S)
-            if monotonic() - idle_since > _IDLE_S:
-                self._pool.stop()
+                return survey
+        return None
 
     def _run(self, survey: Survey) -> None:
+        # Whatever was cancelled up to here does not begin; only what is cancelled from now on
+        # has to be let go of.
+        self._cancelled.clear()
         try:
             with suppress(_Over):
                 if self._store.begin(survey.id, self._now()):
@@ -144,10 +157,12 @@ class Runner:
         except (ServiceError, KinematicsError) as error:
             self._fail(survey.id, f"{error.say}; {error.way_out}" if error.way_out else error.say)
         except Exception:
-            _LOG.exception("survey %s failed", survey.id)
-            self._fail(survey.id, "the service failed at it; its log tells more")
+            # A stop takes the processes away, maybe just as a chunk is handed to them: that is
+            # no failure, and what is open stays open.
+            if not self._stopping.is_set():
+                _LOG.exception("survey %s failed", survey.id)
+                self._fail(survey.id, "the service failed at it; its log tells more")
         finally:
-            self._cancelled.discard(survey.id)
             self._pace = None
 
     def _fail(self, survey: str, reason: str) -> None:

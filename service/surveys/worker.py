@@ -4,6 +4,7 @@ A process prepares a survey once, for whatever pieces of it come. Left out: the 
 (pool.py), and which piece goes where (runner.py).
 """
 
+import gc
 import os
 import signal
 import threading
@@ -30,6 +31,9 @@ def start() -> None:
         os.nice(NICENESS)
     with suppress(AttributeError, OSError):  # of Linux: gives way at once, not at the next turn
         os.sched_setscheduler(0, os.SCHED_IDLE, os.sched_param(0))
+    # Collected between chunks instead: amid the many small lists that targets are read from,
+    # looking for cycles takes ten times as long as reading them.
+    gc.disable()
     threading.Thread(target=_end_with_parent, daemon=True).start()
 
 
@@ -49,7 +53,11 @@ def make(
     if ours != survey:
         prepared = maker.prepare(setup)
         _prepared = (survey, prepared)
-    return [maker.make(prepared, piece) for piece in pieces], perf_counter() - started
+        gc.collect()
+        gc.freeze()  # all that stays is not looked at again
+    made = [maker.make(prepared, piece) for piece in pieces]
+    gc.collect()
+    return made, perf_counter() - started
 
 
 def _end_with_parent() -> None:

@@ -118,7 +118,7 @@ class PartsAnswer(Response):
         )
         for part in self._parts:
             for begin in range(0, len(part), _PART_BYTES):
-                body = part[begin : begin + _PART_BYTES]
+                body = memoryview(part)[begin : begin + _PART_BYTES]
                 await send({"type": "http.response.body", "body": body, "more_body": True})
         await send({"type": "http.response.body", "body": b"", "more_body": False})
 

@@ -11,7 +11,6 @@ import numpy as np
 
 from kinematics.arm import (
     Arm,
-    CombinedTravel,
     NamedFrame,
     SingularityThresholds,
     Tool,
@@ -20,12 +19,19 @@ from kinematics.cell import Seen
 from kinematics.digests import Digests, digests_of
 from kinematics.findings import Finding
 from kinematics.in_cell import InCell
-from kinematics.table import Convention, Coupling, FloatArray, JointKind, Row, Table, Travel
+from kinematics.table import Convention, FloatArray, Table
 from kinematics.tolerances import MOST_PLACED, MOST_ROWS, SINGULAR
 from service.convert import UNITS, Units
 from service.errors import TooLarge, UnusableValue
 from service.storage.ports import CellRevision
 from service.wire import models
+from service.wire.arm_rows import (
+    combined_document,
+    read_combined,
+    read_row,
+    read_uncertainty,
+    row_document,
+)
 from service.wire.cells import RESERVED, CellAt, CellOf, no_cell, reserved_name
 from service.wire.poses import pose_answer, read_pose
 
@@ -72,7 +78,7 @@ def read_arm_model(given: models.Arm, cell_of: CellOf = no_cell) -> ReadArm:
         found.extend(findings)
         return x_in_y
 
-    rows = tuple(_row(row, given.rows, units, index) for index, row in enumerate(given.rows))
+    rows = tuple(read_row(row, given.rows, units) for row in given.rows)
     tools = {
         name: Tool(placed(tool, "tools", name), tool.number) for name, tool in given.tools.items()
     }
@@ -93,7 +99,7 @@ def read_arm_model(given: models.Arm, cell_of: CellOf = no_cell) -> ReadArm:
         default_tool=given.default_tool,
         frames=frames | seen.frames,
         combined_travel=tuple(
-            _combined(combined, rows, units) for combined in given.combined_travel
+            read_combined(combined, rows, units) for combined in given.combined_travel
         ),
         thresholds=SingularityThresholds(
             thresholds.near,
@@ -102,7 +108,7 @@ def read_arm_model(given: models.Arm, cell_of: CellOf = no_cell) -> ReadArm:
         characteristic_length=None
         if given.characteristic_length is None
         else float(units.length_in(given.characteristic_length)),
-        joint_uncertainty=_joint_uncertainty(given.joint_uncertainty, rows, units),
+        joint_uncertainty=read_uncertainty(given.joint_uncertainty, rows, units),
         cell=cell,
     )
     document = given.model_dump(mode="json", by_alias=True, exclude_unset=True)
@@ -115,16 +121,12 @@ def arm_document(arm: Arm, units: Units, texts: Mapping[str, Any]) -> dict[str, 
         "name": arm.name,
         "convention": arm.table.convention.value,
         "units": units.name,
-        "rows": [_row_document(row, arm.table.rows, units) for row in arm.table.rows],
+        "rows": [row_document(row, arm.table.rows, units) for row in arm.table.rows],
         **texts,
     }
     if arm.combined_travel:
         document["combined_travel"] = [
-            {
-                "ratios": {str(row): ratio for row, ratio in combined.ratios.items()},
-                "travel": _bounds_out(combined.travel, _unit_of(combined.ratios, arm), units),
-            }
-            for combined in arm.combined_travel
+            combined_document(combined, arm.table.rows, units) for combined in arm.combined_travel
         ]
     document |= _setup_document(arm, units)
     if arm.joint_uncertainty:
@@ -216,109 +218,6 @@ def _seen_cell(
         unseen=seen.unseen,
         way_out=_MOVING.format(arm=given.name),
     )
-
-
-def _row(row: models.Row, rows: list[models.Row], units: Units, index: int) -> Row:
-    unit = _si_unit(row.joint)
-    return Row(
-        joint=JointKind(row.joint),
-        a=float(units.length_in(row.a)),
-        alpha=float(units.angle_in(row.alpha)),
-        d=float(units.length_in(row.d)),
-        theta=float(units.angle_in(row.theta)),
-        direction=row.direction,
-        travel=_bounds_in(row.travel, unit, units),
-        working_travel=_bounds_in(row.working_travel, unit, units),
-        working_reason=row.working_reason or "",
-        top_speed=None if row.top_speed is None else units.value_in(row.top_speed, unit),
-        couplings=tuple(
-            Coupling(
-                coupling.axis,
-                coupling.ratio * _ratio_scale(row.joint, rows, coupling.axis, units),
-            )
-            for coupling in row.couplings
-        ),
-        passive=row.passive,
-    )
-
-
-def _row_document(row: Row, rows: tuple[Row, ...], units: Units) -> dict[str, Any]:
-    document: dict[str, Any] = {
-        "joint": row.joint.value,
-        "a": units.shortest_out(row.a, "m"),
-        "alpha": units.shortest_out(row.alpha, "rad"),
-        "d": units.shortest_out(row.d, "m"),
-        "theta": units.shortest_out(row.theta, "rad"),
-    }
-    if row.direction != 1:
-        document["direction"] = row.direction
-    if row.travel is not None:
-        document["travel"] = _bounds_out(row.travel, row.unit, units)
-    if row.working_travel is not None:
-        document["working_travel"] = _bounds_out(row.working_travel, row.unit, units)
-    if row.working_reason:
-        document["working_reason"] = row.working_reason
-    if row.top_speed is not None:
-        document["top_speed"] = units.shortest_out(row.top_speed, row.unit)
-    if row.couplings:
-        document["couplings"] = [
-            {
-                "axis": coupling.axis,
-                "ratio": units.value_out(coupling.ratio, row.unit)
-                / units.value_out(1.0, rows[coupling.axis - 1].unit),
-            }
-            for coupling in row.couplings
-        ]
-    if row.passive:
-        document["passive"] = True
-    return document
-
-
-def _combined(given: models.CombinedTravel, rows: tuple[Row, ...], units: Units) -> CombinedTravel:
-    ratios = {int(number): ratio for number, ratio in given.ratios.items()}
-    first = next(iter(ratios), 0)
-    unit = rows[first - 1].unit if 1 <= first <= len(rows) else "rad"
-    travel = Travel(*(units.value_in(bound, unit) for bound in given.travel))
-    return CombinedTravel(ratios, travel)
-
-
-def _ratio_scale(joint: str, rows: list[models.Row], axis: int, units: Units) -> float:
-    """Return SI per SI for a ratio given in this row's unit per the other's; 1 for like kinds."""
-    other = rows[axis - 1].joint if 1 <= axis <= len(rows) else joint
-    if other == joint:
-        return 1.0
-    return units.value_in(1.0, _si_unit(joint)) / units.value_in(1.0, _si_unit(other))
-
-
-def _si_unit(joint: str) -> str:
-    return "rad" if joint == "revolute" else "m"
-
-
-def _joint_uncertainty(
-    given: list[float], rows: tuple[Row, ...], units: Units
-) -> tuple[float, ...]:
-    driven = _driven_units(rows)
-    read = [units.value_in(value, unit) for value, unit in zip(given, driven, strict=False)]
-    return (*read, *given[len(driven) :])
-
-
-def _driven_units(rows: tuple[Row, ...]) -> list[str]:
-    return [row.unit for row in rows if not row.passive]
-
-
-def _unit_of(ratios: Mapping[int, float], arm: Arm) -> str:
-    return arm.table.rows[next(iter(ratios)) - 1].unit
-
-
-def _bounds_in(bounds: list[float] | None, unit: str, units: Units) -> Travel | None:
-    if bounds is None:
-        return None
-    lower, upper = (units.value_in(bound, unit) for bound in bounds)
-    return Travel(lower, upper)
-
-
-def _bounds_out(bounds: Travel, unit: str, units: Units) -> list[float]:
-    return [units.shortest_out(bound, unit) for bound in bounds]
 
 
 def _numbered(number: int | None) -> dict[str, int]:

@@ -17,15 +17,18 @@ from service.wire.controller import FLAT_FORM, single_question
 from service.wire.query import known_parameters
 from service.wire.single import TOOL_PARAMETERS, SingleQuestion
 
-Format = Literal["json", "npy", "csv"]
+Format = Literal["json", "npy", "csv", "svg"]
 FORMATS: tuple[Format, ...] = ("json", "npy", "csv")
+"""Of tables of numbers."""
 JSON = "application/json"
+SVG = "image/svg+xml"
 BODY_TYPES: Mapping[str, Format] = {
     JSON: "json",
     npy.MEDIA_TYPE: "npy",
     "application/octet-stream": "npy",
     csv_rows.MEDIA_TYPE: "csv",
 }
+_ANSWER_TYPES: Mapping[str, Format] = {**BODY_TYPES, SVG: "svg"}
 QUATERNION = "quaternion-wxyz"
 TABLE_PARAMETERS = frozenset(
     {
@@ -225,7 +228,7 @@ _best_kept = lru_cache(maxsize=64)(_best_accepted)
 
 def _weight(accept: str, name: Format) -> float:
     """Return the weight an ``Accept`` header gives a format; the most specific entry counts."""
-    types = [media for media, kind in BODY_TYPES.items() if kind == name]
+    types = [media for media, kind in _ANSWER_TYPES.items() if kind == name]
     best: tuple[int, float] = (-1, 0.0)
     for entry in accept.split(","):
         media, *parameters = (part.strip().lower() for part in entry.split(";"))

@@ -37,7 +37,7 @@ def page_size(parameters: Mapping[str, str]) -> int:
         where=("page_size",),
         location="query",
         value=size,
-        way_out=f"leave it out for {DEFAULT_SIZE}",
+        way_out=f"give 1 to {LARGEST_SIZE}, or leave it out",
     )
 
 

@@ -6,6 +6,7 @@ that come in (reach_csv.py), the answer about one target (reach_flat.py).
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,14 +24,32 @@ BESIDE = ("solution", "proof", "branch", "position_error", "angle_error", "reaso
 _END = "\r\n"
 
 
-@dataclass(frozen=True)
+class Texts(NamedTuple):
+    """A column of few different texts: the texts, and which of them each line has, -1 for none."""
+
+    words: Sequence[str]
+    which: NDArray[np.intp]
+
+    def told(self) -> list[str]:
+        """Return the text of each line, empty where there is none.
+
+        Examples
+        --------
+        >>> Texts(("near", "far"), np.array([1, -1, 0])).told()
+        ['far', '', 'near']
+        """
+        told: list[str] = np.array([*self.words, ""], dtype=object)[self.which].tolist()
+        return told
+
+
+@dataclass(frozen=True, eq=False)
 class ReachColumns:
     """What lines say, an entry for each line.
 
     Attributes
     ----------
     codes : (lines,); applying : for each code that is no refusal, where it applies, (lines,).
-    verdicts, proofs, branches, reasons, states, names : texts, empty where there is nothing.
+    verdicts, proofs, branches, states : texts. reasons, names : the text of a line that has one.
     counts, ranks : solutions of the target, and which of them a line tells, from 1; 0 for none.
     joints : (lines, joints), in the user's units; NaN where there is no solution to be used.
     margins : (lines,), infinite without travel limits; errors : (lines, 2), position and angle.
@@ -38,17 +57,17 @@ class ReachColumns:
 
     codes: NDArray[np.int64]
     applying: Mapping[int, NDArray[np.bool_]]
-    verdicts: Sequence[str]
-    counts: Sequence[int]
+    verdicts: Texts
+    counts: NDArray[np.int64]
     joints: FloatArray
     margins: FloatArray
-    states: Sequence[str]
-    ranks: Sequence[int]
-    proofs: Sequence[str]
-    branches: Sequence[str]
+    states: Texts
+    ranks: NDArray[np.int64]
+    proofs: Texts
+    branches: Texts
     errors: FloatArray
-    reasons: Sequence[str]
-    names: Sequence[str]
+    reasons: Mapping[int, str]
+    names: Mapping[int, str]
 
 
 @dataclass(frozen=True)
@@ -91,9 +110,14 @@ def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
     joints = number_texts(np.where(none[:, None], NO_NUMBER, numbers))
     errors = number_texts(np.where(none[:, None], NO_NUMBER, columns.errors))
     tail = f"{same.units},{same.revision},{same.digest}"
+    reasons, names = (
+        [noted.get(line, "") for line in range(len(none))]
+        for noted in (columns.reasons, columns.names)
+    )
     told = zip(
-        begins, columns.verdicts, columns.counts, joints, columns.states, columns.ranks,
-        columns.proofs, columns.branches, errors, columns.reasons, columns.names, strict=True,
+        begins, columns.verdicts.told(), columns.counts.tolist(), joints, columns.states.told(),
+        columns.ranks.tolist(), columns.proofs.told(), columns.branches.told(), errors, reasons,
+        names, strict=True,
     )  # fmt: skip
     lines = [
         f"{begin},{verdict},{count},{values},{state},{tail},{rank},{proof},{quoted(branch)},"

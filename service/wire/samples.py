@@ -8,6 +8,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field
 
+from kinematics.reach.samples import MOST_SEED
 from service.wire.answer_models import ArmIdentity, Open
 from service.wire.models import AnyArm, AnyTool, FormName, Strict, UnitsName
 
@@ -30,7 +31,11 @@ class SamplesRequest(Strict):
     arm: AnyArm
     count: Annotated[int, Field(json_schema_extra={"minimum": 1, "maximum": MOST_SAMPLES})]
     seed: Annotated[
-        int, Field(json_schema_extra={"minimum": 0}, description="another one, other samples")
+        int,
+        Field(
+            json_schema_extra={"minimum": 0, "maximum": MOST_SEED},
+            description="another one, other samples",
+        ),
     ] = 1
     within: Literal["travel", "working-travel"] = "travel"
     positions: bool = True
@@ -42,7 +47,7 @@ class SamplesRequest(Strict):
     units: UnitsName | None = None
 
 
-class Extreme(Open):
+class FarthestSample(Open):
     """The sample that gets farthest one way: value, its number from 0, its joint values."""
 
     value: float
@@ -53,8 +58,8 @@ class Extreme(Open):
 class BothWays(Open):
     """The least and the greatest of one measure."""
 
-    least: Extreme
-    greatest: Extreme
+    least: FarthestSample
+    greatest: FarthestSample
 
 
 class Extremes(Open):

@@ -6,13 +6,15 @@ Left out: what is asked and found in each kind (service/surveys), and its result
 from collections.abc import Mapping, Sequence
 from typing import Annotated, Any, Literal
 
-from pydantic import Field
+from pydantic import Field, RootModel
 
 from service.errors import MissingField
 from service.storage.ports import Survey
 from service.wire.answer_models import ArmIdentity, Open
+from service.wire.envelopes import EnvelopeAnswer
 from service.wire.models import Strict, UnitsName
 from service.wire.query import whole_number
+from service.wire.samples import SamplesAnswer
 from service.wire.stored import time_of
 
 LONGEST_TITLE = 200
@@ -21,10 +23,12 @@ LONGEST_TITLE = 200
 class SurveyRequest(Strict):
     """Long work of a kind; `request` is what the address of that kind takes, with more in it.
 
-    `reach-checks`: as `/v1/reach/checks`, with up to 1 000 000 targets.
+    `reach-checks`: as `/v1/reach/checks`, with up to 1 000 000 targets. `samples`: as
+    `/v1/reach/samples`, with up to 10 000 000 samples; orientations are quaternions.
+    `envelope`: as `/v1/reach/envelope`, as fine as time allows.
     """
 
-    kind: Literal["reach-checks"]
+    kind: Literal["reach-checks", "samples", "envelope"]
     title: Annotated[str, Field(max_length=LONGEST_TITLE)] | None = None
     request: dict[str, Any]
 
@@ -81,7 +85,7 @@ class ResultItem(Open):
     solutions: list[dict[str, Any]]
 
 
-class SurveyResult(Open):
+class TargetsResult(Open):
     """What a survey of targets found, in the order asked."""
 
     survey: str
@@ -92,6 +96,24 @@ class SurveyResult(Open):
     method: dict[str, str]
     results: list[ResultItem]
     summary: dict[str, int]
+
+
+class SamplesResult(SamplesAnswer):
+    """What a survey of samples found."""
+
+    survey: str
+    software: str
+
+
+class EnvelopeResult(EnvelopeAnswer):
+    """What a survey of an envelope found."""
+
+    survey: str
+    software: str
+
+
+class SurveyResult(RootModel[TargetsResult | SamplesResult | EnvelopeResult]):
+    """What a survey found, by its kind."""
 
 
 TABLE_PARAMETERS = {

@@ -2,84 +2,181 @@
 
     python -m tests.benchmarks.surveys [targets] [seed]
 
-Asked: 0.9 of the solver's rate on a core, 1.8 times on two, and a GET pose whose p99 is at most
-1.5 times that without a survey. The solver is asked in this process, with the same targets in the
-same pieces; the survey is timed from its beginning to its end, with its processes started before.
-Least of three. What a survey by one process falls short of "read, solved, told" is the queue: pool,
-store, and the first chunks, which are small.
+Asked: 0.9 of the solver's rate on a core, 1.8 times on two, at most 5 ms of queue for a chunk, and
+a GET pose whose p99 is at most 1.5 times that without a survey. The solver is asked in this process
+with the same targets in the same pieces, for what a survey tells: verdict and best posture, and its
+singularity; its rate for verdict and posture alone is printed beside. Targets come as a table (NPY)
+and as JSON, which workers still have to read. A survey is timed from its beginning to its end, with
+its processes started before; the queue is by how much a chunk takes longer than the work on it. Two
+bare processes that solve show what the machine has to give. Least of three.
 """
 
+import gc
+import io
 import json
 import os
 import subprocess
 import sys
 import tempfile
 import time
+from concurrent.futures import Executor, Future, ProcessPoolExecutor
+from contextlib import closing
 from datetime import datetime
+from functools import partial
 from http.client import HTTPConnection
+from multiprocessing import get_context
 from pathlib import Path
-from typing import Any
+from typing import Any, NamedTuple, cast
 
 import numpy as np
+from numpy.typing import NDArray
+from scipy.spatial.transform import Rotation
 
 from kinematics.chain import tool_in_base
+from kinematics.jacobian import motion_of
 from kinematics.reach.checks import Reacher
 from kinematics.reach.targets import Target, Targets
+from kinematics.singularity import judge
+from kinematics.task_space import task_space
+from service.operations.arms import Arms
+from service.operations.cells import Cells
+from service.settings import Settings
+from service.storage.opening import open_storage
 from service.storage.ports import GivenPiece
+from service.surveys.desk import Surveys
 from service.surveys.kinds import LARGEST_PIECE
+from service.surveys.pool import OwnProcesses
 from service.surveys.reach_checks import ReachChecks, Setup
 from service.wire.arms import read_arm
+from service.wire.surveys import SurveyRequest
 from tests.conftest import ROOT
 
 REPEATS = 3
 ARM = json.loads((ROOT / "service/demo/arms/housing-loader.json").read_text("utf-8"))
 ARM = {key: value for key, value in ARM.items() if key not in ("cell", "frames")}
+NPY = "application/x-npy"
 
 
-def question(count: int, seed: int) -> tuple[dict[str, Any], Targets]:
-    """Return a body and the same targets for the solver: poses that postures within travel have."""
+class Asked(NamedTuple):
+    """The same targets as a body, as a table, and for the solver."""
+
+    body: dict[str, Any]
+    table: NDArray[np.float64]
+    targets: Targets
+
+
+def question(count: int, seed: int) -> Asked:
+    """Return poses that postures within travel have."""
     arm = read_arm(ARM).arm
     random = np.random.default_rng(seed)
     low, high = np.array([row.travel for row in arm.table.rows]).T
     joints = random.uniform(low, high, (count, len(low)))
     poses = tool_in_base(arm, joints, np.eye(4))
-    rows = []
-    for pose in poses:
-        metres = pose.copy()
-        metres[:3, 3] *= 1000.0
-        rows.append({"pose": {"matrix": metres.tolist()}})
+    turns = Rotation.from_matrix(poses[:, :3, :3]).as_quat(scalar_first=True)
+    table = np.column_stack([poses[:, :3, 3] * 1000.0, turns])
+    form = "quaternion-wxyz"
+    rows = [
+        {"pose": {"position": row[:3], "orientation": {"form": form, "values": row[3:]}}}
+        for row in table.tolist()
+    ]
     request = {"arm": ARM, "tool": "flange", "targets": rows}
-    body = {"kind": "reach-checks", "request": request}
-    return body, Targets.of([Target(pose) for pose in poses])
+    targets = Targets.of([Target(pose) for pose in poses])
+    return Asked({"kind": "reach-checks", "request": request}, table, targets)
 
 
-def solver_rate(targets: Targets) -> float:
-    """Return targets a second of the solver alone, in pieces of a survey."""
-    reacher = Reacher(read_arm(ARM).arm, np.eye(4))
+def solver_seconds(targets: Targets, *, judged: bool) -> float:
+    """Return how long the solver takes alone, in the pieces of a survey."""
+    arm = read_arm(ARM).arm
+    reacher, space = Reacher(arm, np.eye(4)), task_space(arm, np.eye(4))
     reacher.check(targets.only(np.arange(10)))
     best = np.inf
     for _ in range(REPEATS):
         begin = time.perf_counter()
         for first in range(0, len(targets), LARGEST_PIECE):
             last = min(first + LARGEST_PIECE, len(targets))
-            reacher.check(targets.only(np.arange(first, last)), best_only=True)
+            checks = reacher.check(targets.only(np.arange(first, last)), best_only=True)
+            if judged:
+                judge(arm, space, motion_of(arm, checks.joint_values, np.eye(4)))
         best = min(best, time.perf_counter() - begin)
-    return len(targets) / best
+    return best
 
 
-def piece_rate(body: dict[str, Any]) -> float:
-    """Return targets a second of reading, solving and telling, in this process."""
-    kind, request = ReachChecks(), body["request"]
-    accepted = kind.accept(None, request)  # type: ignore[arg-type]
+def bare_rate(count: int, seed: int) -> float:
+    """Return targets a second of two processes that solve and judge, and do nothing else."""
+    with ProcessPoolExecutor(2, get_context("spawn")) as pool:
+        ends = [pool.submit(_bare, count, seed + number) for number in range(2)]
+        return sum(count / end.result() for end in ends)
+
+
+def _bare(count: int, seed: int) -> float:
+    return solver_seconds(question(count, seed).targets, judged=True)
+
+
+def pieces_seconds(asked: Asked, *, table: bool) -> float:
+    """Return how long reading, solving and telling take, in this process."""
+    kind, request = ReachChecks(), asked.body["request"]
+    accepted = kind.accept(None, request, asked.table if table else None)  # type: ignore[arg-type]
     prepared = kind.prepare(Setup(accepted.request, None, None))
     pieces: list[GivenPiece] = list(accepted.pieces)
     best = np.inf
+    gc.disable()  # as in the processes of surveys
     for _ in range(REPEATS):
         begin = time.perf_counter()
         for piece in pieces:
             kind.make(prepared, piece)
         best = min(best, time.perf_counter() - begin)
-    return accepted.total / best
+    gc.enable()
+    return best
+
+
+class Watched(OwnProcesses):
+    """One process, of which it is noted how long each chunk took it."""
+
+    def __init__(self) -> None:
+        super().__init__(1)
+        self.seconds: list[float] = []
+
+    def executor(self) -> Executor:
+        """Return what takes pieces."""
+        return cast(Executor, _Noting(super().executor(), self.seconds))
+
+
+class _Noting:
+    """An executor whose answers are noted."""
+
+    def __init__(self, executor: Executor, seconds: list[float]) -> None:
+        self._executor, self._seconds = executor, seconds
+
+    def submit(self, *asked: Any) -> Future[Any]:
+        future = self._executor.submit(*asked)
+        future.add_done_callback(lambda done: self._seconds.append(done.result()[1]))
+        return future
+
+
+def queue_ms(asked: Asked, folder: Path) -> float:
+    """Return by how many milliseconds a chunk takes longer than its work in its process."""
+    with closing(open_storage(Settings(database=str(folder / "queue.db")))) as opened:
+        arms = Arms(opened.arms, read_arm, Cells(opened.cells, opened.arms, read_arm))
+        pool = Watched()
+        surveys = Surveys(opened.surveys, arms, pool, "0")
+        try:
+            taken = [_per_chunk(surveys, asked, pool) for _ in range(REPEATS)]
+        finally:
+            surveys.stop()
+    return 1e3 * min(taken)
+
+
+def _per_chunk(surveys: Surveys, asked: Asked, pool: Watched) -> float:
+    request = {**asked.body["request"], "targets": []}
+    wanted = SurveyRequest(kind="reach-checks", request=request)
+    pool.seconds.clear()
+    survey, _ = surveys.create(wanted, None, b"", asked.table)
+    while not (found := surveys.get(survey.id)).finished_at:
+        time.sleep(0.05)
+    assert found.state == "succeeded", found.reason
+    assert found.started_at
+    taken = (found.finished_at - found.started_at).total_seconds()
+    return (taken - sum(pool.seconds)) / len(pool.seconds)
 
 
 class Served:
@@ -105,18 +202,26 @@ class Served:
         assert self._process.stdout is not None
         self.port = int(self._process.stdout.readline().rsplit(":", 1)[1])
 
-    def ask(self, method: str, path: str, body: object = None) -> Any:
+    def ask(self, method: str, path: str, raw: bytes | None = None, kind: str = "") -> Any:
         """Return an answer's JSON."""
         connection = HTTPConnection("127.0.0.1", self.port, timeout=300)
-        raw = None if body is None else json.dumps(body).encode()
-        connection.request(method, path, raw, {"Content-Type": "application/json"})
+        connection.request(method, path, raw, {"Content-Type": kind})
         answer = json.loads(connection.getresponse().read())
         connection.close()
         return answer
 
-    def taken_in(self, body: object) -> str:
-        """Return the id of a survey that has been taken in."""
-        found: str = self.ask("POST", "/v1/surveys", body)["id"]
+    def of_body(self, asked: Asked) -> str:
+        """Return the id of a survey whose targets came as JSON."""
+        raw = json.dumps(asked.body).encode()
+        found: str = self.ask("POST", "/v1/surveys", raw, "application/json")["id"]
+        return found
+
+    def of_table(self, asked: Asked) -> str:
+        """Return the id of a survey whose targets came as a table."""
+        file = io.BytesIO()
+        np.save(file, asked.table)
+        path = "/v1/surveys?kind=reach-checks&arm=housing-loader&tool=flange&frame=base"
+        found: str = self.ask("POST", path, file.getvalue(), NPY)["id"]
         return found
 
     def seconds(self, survey: str) -> float:
@@ -149,36 +254,58 @@ class Served:
         self._process.wait(10)
 
 
+def rates(served: Served, asked: Asked) -> dict[str, float]:
+    """Return targets a second of surveys of a table, and of a body."""
+    ways = {"table": partial(served.of_table, asked), "JSON": partial(served.of_body, asked)}
+    for way in ways.values():
+        served.seconds(way())
+    return {
+        name: len(asked.table) / min(served.seconds(way()) for _ in range(REPEATS))
+        for name, way in ways.items()
+    }
+
+
+def meanwhile(served: Served, asked: Asked, rate: float) -> str:
+    """Return what a GET pose takes with and without a survey."""
+    idle, busy = np.inf, np.inf
+    for _ in range(REPEATS):
+        idle = min(idle, served.p99(2.0))
+        survey = served.of_table(asked)
+        busy = min(busy, served.p99(max(len(asked.table) / rate * 0.8, 0.5)))
+        served.seconds(survey)
+    ratio = f"{busy / idle:.2f} times (asked: 1.5)"
+    return f"GET pose p99 {idle:.2f} ms idle, {busy:.2f} ms meanwhile, {ratio}"
+
+
 def main() -> None:
     """Print everything."""
-    count = int(sys.argv[1]) if len(sys.argv) > 1 else 20_000
+    count = int(sys.argv[1]) if len(sys.argv) > 1 else 40_000
     seed = int(sys.argv[2]) if len(sys.argv) > 2 else int.from_bytes(os.urandom(4), "big")
     print(f"{count} targets, seed {seed}, {os.cpu_count()} processors")
-    body, targets = question(count, seed)
-    alone, pieces = solver_rate(targets), piece_rate(body)
-    print(f"solver alone         {alone:10.0f} targets/s")
-    print(f"read, solved, told   {pieces:10.0f} targets/s, {pieces / alone:.2f} of it")
-    rates = {}
+    asked = question(count, seed)
+    alone, whole = (solver_seconds(asked.targets, judged=judged) for judged in (False, True))
+    print(f"solver alone, verdict and posture {count / alone:8.0f} targets/s")
+    print(f"the same and its singularity      {count / whole:8.0f} targets/s")
+    for name in ("table", "JSON"):
+        each = pieces_seconds(asked, table=name == "table")
+        print(f"{name}: read, solved, told {count / each:8.0f} targets/s, {whole / each:.2f} of it")
+    bare = bare_rate(count, seed)
+    print(f"two bare processes {bare:.0f} targets/s, {bare * whole / count:.2f} times one")
+    found = {}
     with tempfile.TemporaryDirectory() as folder:
+        print(f"queue {queue_ms(asked, Path(folder)):.1f} ms a chunk (asked: 5)")
         for workers in (1, 2):
             served = Served(workers, Path(folder))
-            served.seconds(served.taken_in(body))
-            rates[workers] = count / min(
-                served.seconds(served.taken_in(body)) for _ in range(REPEATS)
-            )
-            said = f"{rates[workers] / alone:.2f} of the solver (asked: 0.9 a core)"
-            print(f"survey, {workers} process(es) {rates[workers]:10.0f} targets/s, {said}")
+            found[workers] = rates(served, asked)
+            for name, rate in found[workers].items():
+                share = rate * whole / count / workers
+                said = f"{share:.2f} of the solver's rate a core (asked: 0.9)"
+                print(f"survey of {name}, {workers} process(es) {rate:8.0f} targets/s, {said}")
             if workers == 2:
-                idle = min(served.p99(2.0) for _ in range(REPEATS))
-                busy = []
-                for _ in range(REPEATS):
-                    survey = served.taken_in(body)
-                    busy.append(served.p99(max(count / rates[2] * 0.8, 0.5)))
-                    served.seconds(survey)
-                said = f"{min(busy) / idle:.2f} times (asked: 1.5)"
-                print(f"GET pose p99 {idle:.2f} ms idle, {min(busy):.2f} ms meanwhile, {said}")
+                print(meanwhile(served, asked, found[2]["table"]))
             served.stop()
-    print(f"two processes {rates[2] / rates[1]:.2f} times one (asked: 1.8)")
+    told = ", ".join(f"{found[2][name] / found[1][name]:.2f} ({name})" for name in found[1])
+    print(f"two processes: {told} times one (asked: 1.8)")
 
 
 if __name__ == "__main__":

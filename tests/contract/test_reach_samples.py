@@ -56,7 +56,12 @@ GOOD: dict[str, Any] = {"arm": "wash-arm", "count": 10}
         ({"count": 10**9}, "?format=npy", "too-large", "/count"),
         ({"count": 100_001}, "", "too-large", "/count"),
         ({"count": 1.5}, "", "unusable-value", "/count"),
+        ({"count": 10**30}, "", "too-large", "/count"),
         ({"seed": -1}, "", "unusable-value", "/seed"),
+        ({"seed": 10**400}, "?format=npy", "unusable-value", "/seed"),
+        ({"seed": 2**53}, "", "unusable-value", "/seed"),
+        ({"seed": 10**30}, "?format=csv", "unusable-value", "/seed"),
+        ({"form": "roll-pitch"}, "", "unusable-value", "/form"),
         ({"arm": "no-such-arm"}, "", "unknown-arm", "/arm"),
         ({"within": "limits"}, "", "unusable-value", "/within"),
         ({"number": 3}, "", "unknown-field", "/number"),
@@ -69,3 +74,21 @@ async def test_what_cannot_be_asked(
 ) -> None:
     answer = await sent(client, SAMPLES + query, {**GOOD, **change})
     assert refusal(answer, code, 422)["errors"][0]["pointer"] == pointer
+
+
+async def test_the_way_out_of_no_samples_is_one(client: httpx.AsyncClient) -> None:
+    for query, most in (("", 100_000), ("?format=npy", 1_000_000)):
+        answer = await sent(client, SAMPLES + query, {**GOOD, "count": 0})
+        (error,) = refusal(answer, "unusable-value", 422)["errors"]
+        assert error["way_out"] == f"ask for 1 to {most}"
+
+
+async def test_limits_that_leave_too_little_are_refused_before_a_table_begins(
+    client: httpx.AsyncClient,
+) -> None:
+    row = {"joint": "revolute", "a": 300, "alpha": 0, "d": 0, "theta": 0, "travel": [-170, 170]}
+    arm = {"name": "thin", "convention": "standard", "units": "mm-deg", "rows": [row, row, row]}
+    arm["combined_travel"] = [{"ratios": {"1": 1, "2": 1, "3": 0.5}, "travel": [0, 0.05]}]
+    for query in ("", "?format=npy", "?format=csv"):
+        answer = await sent(client, SAMPLES + query, {"arm": arm, "count": 5000})
+        assert refusal(answer, "unusable-value", 422)["errors"][0]["pointer"].startswith("/arm")

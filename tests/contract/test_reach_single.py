@@ -184,3 +184,21 @@ async def test_eight_joints_and_long_names_stay_within_a_controller_s_bounds(
         assert len(answer.content) <= most
         if wanted == "json":
             json.loads(answer.content)
+
+
+async def test_postures_that_share_a_margin_are_told_apart_by_working_travel(
+    client: httpx.AsyncClient,
+) -> None:
+    """Joint 3 bounds them all, and turns of tool z differ in joint 6: once, rounding chose."""
+    values = [712.525435609931, -800.341534580998, 782.762797135667]
+    angles = [-4.401419781777521, 14.497137674246577, -133.48716767328108]
+    named = zip(("x", "y", "z", "r1", "r2", "r3"), [*values, *angles], strict=True)
+    query = "&".join(f"{key}={value!r}" for key, value in named)
+    single = (await client.get(f"{REACH}?{query}&cone=20")).json()["results"][0]
+    orientation = {"form": "xyz-fixed", "values": angles}
+    target = {"pose": {"position": values, "orientation": orientation}, "freedom": {"cone": 20}}
+    body = {"arm": "housing-loader", "targets": [target, target]}
+    many = (await client.post("/v1/reach/checks", json=body)).json()["results"]
+    joints = [result["solutions"][0]["joints"] for result in (single, *many)]
+    assert [result["code"] for result in (single, *many)] == [0, 0, 0]
+    np.testing.assert_allclose(joints, [joints[0]] * 3, atol=1e-6)

@@ -106,6 +106,7 @@ def served(launch: Launch) -> Iterator[httpx.Client]:
         told = client.post("/v1/poses", json=asked).json()["poses"]
         _in_reach[:] = [{key: pose[key] for key in ("position", "orientation")} for pose in told]
         yield client
+    process.terminate()
 
 
 @pytest.fixture(scope="module")
@@ -161,10 +162,13 @@ def test_the_report_is_one_page_with_nothing_outside(served: httpx.Client, finis
         assert escape(text) in page
     counts = served.get(f"/v1/surveys/{finished}/result").json()["summary"]
     for verdict, count in counts.items():
-        cells = f'<td>{verdict.replace("_", " ")}</td><td class="n">{count}</td>'
+        cells = f'<td>{verdict.replace("_", " ")}</td><td class="n">{count}</td><td>'
         assert cells in page
     # Each target that can be drawn has its mark in both views.
-    assert page.count("<g transform") == 2 * 299
+    marks = "m-.8 0a", "m-.8-.8h", "m-.9-.9l", "m0-1.1l", "m-.9 0h"
+    assert sum(len(re.findall(rf"M[-.0-9]+ [-.0-9]+{mark}", page)) for mark in marks) == (
+        2 * 299 + sum(f"M0 0{mark}" in page for mark in marks)  # the legend
+    )
     (style,) = re.findall("<style>(.*?)</style>", page, re.DOTALL)
     hashed = base64.b64encode(hashlib.sha256(style.encode()).digest()).decode()
     assert f"style-src 'sha256-{hashed}'" in response.headers["content-security-policy"]
@@ -195,6 +199,46 @@ def test_a_table_of_targets_is_the_same_as_a_body(served: httpx.Client) -> None:
     np.save(file, np.zeros((2, 5)))
     wrong = served.post("/v1/surveys", params=query, content=file.getvalue(), headers=head)
     assert (wrong.status_code, wrong.json()["code"]) == (422, "unusable-value")
+
+
+def test_samples_are_those_of_reach_samples(served: httpx.Client) -> None:
+    request = {"arm": "housing-loader", "count": 40_000, "seed": 3, "joints": True}
+    survey = asked(served, {"kind": "samples", "request": request})
+    found = until(served, survey, is_over)
+    assert (found["state"], found["done"], found["counts"]["judged"]) == (
+        "succeeded",
+        40_000,
+        16384,
+    )
+    for wanted in ("npy", "csv", "json"):
+        at_once = served.post("/v1/reach/samples", params={"format": wanted}, json=request)
+        if wanted != "json":
+            assert result(served, survey, wanted) == at_once.content
+            continue
+        told, expected = json.loads(result(served, survey, "json")), at_once.json()
+        assert {key: told[key] for key in expected if key != "form"} == {
+            key: value for key, value in expected.items() if key != "form"
+        }
+    page = served.get(f"/v1/surveys/{survey}/report").text
+    assert "How far the tool gets" in page
+    wrong = served.get(f"/v1/surveys/{survey}/result?format=svg")
+    assert (wrong.status_code, wrong.json()["errors"][0]["pointer"]) == (422, "/format")
+
+
+def test_an_envelope_is_that_of_reach_envelope(served: httpx.Client) -> None:
+    request = {"arm": "housing-loader", "point": "wrist", "within": "working-travel"}
+    survey = asked(served, {"kind": "envelope", "title": "for the layout", "request": request})
+    found = until(served, survey, is_over)
+    assert (found["state"], found["done"], found["total"]) == ("succeeded", 1, 1)
+    told = served.get(f"/v1/surveys/{survey}/result").json()
+    expected = served.post("/v1/reach/envelope", json=request).json()
+    assert {key: told[key] for key in expected} == expected
+    drawing = served.get(f"/v1/surveys/{survey}/result?format=svg")
+    assert drawing.headers["content-type"].startswith("image/svg+xml")
+    page = served.get(f"/v1/surveys/{survey}/report").text
+    assert "Areas and volume" in page
+    assert "<?xml" not in page
+    assert "style=" not in page
 
 
 def test_it_keeps_request_arm_and_version(served: httpx.Client, finished: str) -> None:
@@ -229,7 +273,7 @@ def test_the_same_key_gives_the_same_survey(served: httpx.Client) -> None:
 
 
 def test_cancelled_within_a_second_and_twice(served: httpx.Client) -> None:
-    survey = asked(served, question(50_000))
+    survey = asked(served, question(20_000))
     behind = asked(served, question(5))
     until(served, survey, lambda found: found["done"] > 0)
     early = served.get(f"/v1/surveys/{survey}/result")
@@ -257,8 +301,11 @@ def test_an_arm_that_was_removed_meanwhile(served: httpx.Client) -> None:
     front = asked(served, question(2000))
     body = question(20)
     body["request"]["arm"] = "spare-loader"
-    survey = asked(served, body)
+    key = {"Idempotency-Key": "spare"}
+    survey = asked(served, body, **key)
     assert served.delete("/v1/arms/spare-loader", headers={"If-Match": "*"}).status_code == 204
+    assert asked(served, body, **key) == survey
+    assert served.post("/v1/surveys", json=body).status_code == 422
     assert until(served, survey, is_over)["state"] == "succeeded"
     assert until(served, front, is_over)["state"] == "succeeded"
 
@@ -305,6 +352,26 @@ def test_what_cannot_be_used_is_refused_where_it_stands(
     assert refused.json()["errors"][0]["pointer"].startswith(pointer), refused.text
 
 
+@pytest.mark.parametrize(
+    ("kind", "request_", "pointer"),
+    [
+        ("samples", {"count": 0}, "/request/count"),
+        ("samples", {"count": 10**9}, "/request/count"),
+        ("samples", {"count": 9, "targets": []}, "/request/targets"),
+        ("samples", {}, "/request"),
+        ("envelope", {"resolution": 0}, "/request/resolution"),
+        ("envelope", {"point": "elbow"}, "/request/point"),
+    ],
+)
+def test_other_kinds_are_refused_where_it_stands(
+    served: httpx.Client, kind: str, request_: dict[str, Any], pointer: str
+) -> None:
+    body = {"kind": kind, "request": {"arm": "housing-loader", **request_}}
+    refused = served.post("/v1/surveys", json=body)
+    assert refused.status_code == 422, refused.text
+    assert refused.json()["errors"][0]["pointer"].startswith(pointer), refused.text
+
+
 def test_unknown_ids_and_keys_are_refused(served: httpx.Client) -> None:
     for name in ("0" * 20, "x", "%00"):
         for method, end in (("GET", ""), ("GET", "/result"), ("POST", "/cancel"), ("DELETE", "")):
@@ -325,30 +392,21 @@ def children_of(process: int) -> list[int]:
     return sorted({c for c in found if b"spawn_main" in Path(f"/proc/{c}/cmdline").read_bytes()})
 
 
-@pytest.mark.usefixtures("served")
-def test_a_killed_worker_costs_its_chunk(launch: Launch, tmp_path: Path) -> None:
-    process = launch("--demo", "--survey-workers", "2", database=str(tmp_path / "arms.db"))
+def test_kills_of_a_worker_and_of_the_service_cost_chunks_and_no_bits(
+    served: httpx.Client, launch: Launch, tmp_path: Path
+) -> None:
+    body = question(12_000)
+    database = str(tmp_path / "arms.db")
+    process = launch("--demo", "--survey-workers", "2", database=database)
     with httpx.Client(base_url=process.url, timeout=PATIENCE_S) as client:
-        before = asked(client, question(8000))
-        until(client, before, is_over)
-        survey = asked(client, question(8000))
+        survey = asked(client, body)
         until(client, survey, lambda found: found["done"] > 0)
         workers = children_of(process.process.pid)
         assert workers
         os.kill(workers[0], signal.SIGKILL)
-        assert not is_over(client.get(f"/v1/surveys/{survey}").json())
-        assert until(client, survey, is_over)["state"] == "succeeded"
-        assert results(client, survey) == results(client, before)
-    process.terminate()
-
-
-@pytest.mark.usefixtures("served")
-def test_a_killed_service_goes_on_with_the_same_bits(launch: Launch, tmp_path: Path) -> None:
-    database = str(tmp_path / "arms.db")
-    process = launch("--demo", "--survey-workers", "2", database=database)
-    with httpx.Client(base_url=process.url, timeout=PATIENCE_S) as client:
-        survey = asked(client, question(12_000))
-        done = until(client, survey, lambda found: found["done"] > 1000)["done"]
+        before = client.get(f"/v1/surveys/{survey}").json()
+        assert not is_over(before)
+        done = until(client, survey, lambda found: found["done"] > before["done"])["done"]
         assert done < 12_000
         process.process.kill()
         process.process.wait(10)
@@ -358,10 +416,10 @@ def test_a_killed_service_goes_on_with_the_same_bits(launch: Launch, tmp_path: P
         assert first["done"] >= done
         assert first["state"] in ("running", "succeeded")
         assert until(client, survey, is_over)["state"] == "succeeded"
-        # The same once more, without a kill, by one process instead of two.
-        other = asked(client, question(12_000))
-        until(client, other, is_over)
-        assert results(client, survey) == results(client, other)
+        # The same once more, without a kill, by two processes instead of one.
+        other = asked(served, body)
+        until(served, other, is_over)
+        assert results(client, survey) == results(served, other)
     assert again.terminate() < 3
 
 
@@ -386,19 +444,6 @@ def test_a_full_disk_fails_the_survey_and_not_the_service(
     process.terminate()
 
 
-def test_a_thousand_wait_their_turn(served: httpx.Client) -> None:
-    body = question(1)
-    # The front one keeps the others waiting; a thousand that are worked off take a minute.
-    front = asked(served, question(50_000))
-    made = [asked(served, body) for _ in range(1000)]
-    waiting = [served.get(f"/v1/surveys/{survey}").json()["state"] for survey in made[-3:]]
-    assert set(waiting) <= {"queued", "running", "succeeded"}
-    for survey in (front, *made[5:]):
-        assert served.post(f"/v1/surveys/{survey}/cancel").status_code == 200
-    for survey in made[:5]:
-        assert until(served, survey, is_over)["state"] == "succeeded"
-
-
 @pytest.mark.usefixtures("served")
 def test_a_cluster_that_does_not_answer_fails_the_survey(launch: Launch) -> None:
     process = launch("--demo", "--cluster", "tcp://127.0.0.1:9")
@@ -406,6 +451,9 @@ def test_a_cluster_that_does_not_answer_fails_the_survey(launch: Launch) -> None
         found = until(client, asked(client, question(3)), is_over)
         assert found["state"] == "failed"
         assert "cluster" in found["reason"]
+        refused = client.get(f"/v1/surveys/{found['id']}/result")
+        assert (refused.status_code, refused.headers.get("retry-after")) == (409, None)
+        assert found["reason"] in refused.json()["detail"]
         assert client.get("/v1/ping").status_code == 200
     process.terminate()
 
@@ -453,3 +501,18 @@ def test_a_cluster_makes_the_same_bits(served: httpx.Client, launch: Launch, clu
         until(served, here, is_over)
         assert results(client, there) == results(served, here)
     process.terminate()
+
+
+def test_a_thousand_wait_their_turn(served: httpx.Client) -> None:
+    """The last of all: what still waits then ends with the service."""
+    body = question(1)
+    # The front one keeps the others waiting; a thousand that are worked off take a minute.
+    samples = {"arm": "housing-loader", "count": 5_000_000}
+    front = asked(served, {"kind": "samples", "request": samples})
+    made = [asked(served, body) for _ in range(1000)]
+    waiting = [served.get(f"/v1/surveys/{survey}").json()["state"] for survey in made[-3:]]
+    assert set(waiting) <= {"queued", "running", "succeeded"}
+    assert served.post(f"/v1/surveys/{front}/cancel").status_code == 200
+    for survey in made[:5]:
+        assert until(served, survey, is_over)["state"] == "succeeded"
+    assert served.get("/v1/ping").status_code == 200

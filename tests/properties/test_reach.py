@@ -4,6 +4,8 @@ Random arms of each class with fresh seeds, printed; drawn arms with couplings, 
 degenerate geometry that a plant's table may hold.
 """
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import HealthCheck, assume, given, settings
@@ -15,14 +17,17 @@ from kinematics.errors import KinematicsError
 from kinematics.inverse.measured import POSE, POSITION, errors_of
 from kinematics.reach.checks import Reacher
 from kinematics.reach.targets import (
+    CONE,
     NONE,
     ORIENTATION,
     OUTSIDE_TRAVEL,
     REACHABLE,
+    SPIN,
     UNREACHABLE,
     Checks,
     Targets,
 )
+from kinematics.table import Travel
 from kinematics.tolerances import EXACT_REACH, TARGET_ANGLE, TARGET_POSITION
 from kinematics.travel_limits import travel_margin
 from tests.kinematics.example_arms import AT_FLANGE
@@ -142,3 +147,35 @@ def test_no_arm_whatever_is_told_that_it_cannot_be_where_it_is(
     assert_lands(reacher, targets, checks)
     shown = tool_in_base(arm, checks.joint_values, AT_FLANGE)
     assert np.isfinite(shown).all()
+
+
+@pytest.mark.parametrize("freedom", [NONE, SPIN, CONE])
+def test_the_last_digit_of_a_question_decides_nothing(freedom: int) -> None:
+    """Postures that share a margin are told apart by working travel, not by rounding."""
+    random = fresh()
+    arm, _, _ = CLASSES["upright arm with wrist"](random)
+    # The outer axes bound the margin, and turns of tool z, and of wrists twice around, share it.
+    wide = {"travel": Travel(-7.0, 7.0), "working_travel": Travel(-2.0, 2.0)}
+    rows = [*arm.table.rows[:3], *(replace(row, **wide) for row in arm.table.rows[3:])]
+    arm = Arm("worked", replace(arm.table, rows=tuple(rows)))
+    targets = targets_at(arm, AT_FLANGE, freedom, postures_within_travel(random, arm, 20))
+    targets.cone[:] = 0.3
+    reacher = Reacher(arm, AT_FLANGE)
+    told = reacher.check(targets, best_only=True)
+    for _ in range(3):
+        beside = targets.tool_in_base.copy()
+        beside[:, :3, 3] += 1e-12 * random.uniform(-1.0, 1.0, size=(20, 3))
+        again = reacher.check(replace(targets, tool_in_base=beside), best_only=True)
+        np.testing.assert_array_equal(again.verdict, told.verdict)
+        np.testing.assert_array_equal(again.outside_working, told.outside_working)
+        np.testing.assert_allclose(again.joint_values, told.joint_values, atol=1e-6)
+    alone = [reacher.check(targets.only(np.array([i])), best_only=True) for i in range(20)]
+    np.testing.assert_array_equal(
+        [one.outside_working[0] for one in alone], told.outside_working.tolist()
+    )
+    if freedom == NONE:
+        every = reacher.check(targets)
+        of = np.repeat(np.arange(20), np.diff(every.offsets))
+        as_good = ~every.outside_working & (every.margin > told.margin[of] - 1e-10)
+        assert not told.outside_working[of[as_good]].any()
+        assert as_good.any()

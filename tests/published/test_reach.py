@@ -1,4 +1,4 @@
-"""The 27 cases of data/reach.json: solutions, verdicts and reasons; what must wait, and why.
+"""The 27 cases of data/reach.json: solutions, verdicts and reasons; areas: test_envelope.py.
 
 Targets of planar cases leave z free: their arms stay in the plane z = 0, and are asked there.
 """
@@ -32,10 +32,8 @@ from tests.published.cases import Case, assert_within, cases_of
 
 CASES = cases_of("reach")
 
-WAITING = {
-    f"rch-{number}": "areas and volumes come with samples and envelope" for number in range(19, 27)
-}
-"""Cases that nothing answers yet, with the reason."""
+WAITING = {f"rch-{number}": "areas and volumes: test_envelope.py" for number in range(19, 27)}
+"""Cases that are asked elsewhere, and where."""
 
 ASKED = [name for name in CASES if name not in WAITING]
 

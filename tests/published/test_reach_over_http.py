@@ -1,6 +1,6 @@
 """The cases of reach that can be answered, over HTTP: in a body, as a table, and by query string.
 
-Left out: the same cases through the Python API, and those that must wait (test_reach).
+Left out: the same cases through the Python API, and areas and volumes (test_envelope).
 """
 
 import csv

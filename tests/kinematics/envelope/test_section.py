@@ -6,7 +6,7 @@ import pytest
 from kinematics.envelope.section import section_of
 from kinematics.reach.sample_summary import first_axis
 from kinematics.reach.samples import JointSamples, tool_positions
-from kinematics.table import Travel
+from kinematics.table import Coupling, Travel
 from tests.kinematics.example_arms import arm_of, prismatic, revolute
 
 HALF = np.pi / 2
@@ -75,9 +75,32 @@ def test_samples_lie_within_the_section() -> None:
         assert any(inside)
 
 
-def test_what_two_joints_do_not_make_has_no_such_section() -> None:
+def test_a_plane_beside_the_axis_makes_radii_hypotenuses() -> None:
+    """The same volume as without the distance: where it is greater, the section is narrower."""
     aside = arm_of(revolute(alpha=HALF), revolute(a=0.5, d=0.1), revolute(a=0.37))
-    assert section_of(aside, np.eye(4)) is None
+    section = section_of(aside, np.eye(4))
+    assert section is not None
+    assert abs(section.aside - 0.1) < 1e-15
+    assert section.volume is not None
+    assert abs(section.volume.value - PUBLISHED["rch-26"][1]) <= 1e-9
+    # Half a ring with each place moved out: the integral of x / sqrt(x^2 + 0.01) over it.
+    x = (np.arange(4000) + 0.5) / 4000 * 0.87
+    inner = np.sqrt(np.maximum(0.13**2 - x**2, 0.0))
+    tall = 2.0 * (np.sqrt(0.87**2 - x**2) - inner)
+    expected = (x / np.hypot(x, 0.1) * tall).sum() * 0.87 / 4000
+    assert abs(section.area.value - expected) < 1e-4
+
+
+def test_what_more_joints_make_has_no_such_section() -> None:
     tool = np.eye(4)
     tool[0, 3] = 0.1
     assert section_of(arm_of(*[revolute(a=0.3, alpha=0.4)] * 4), tool) is None
+    bent = arm_of(revolute(alpha=HALF), revolute(a=0.5, alpha=0.3), revolute(a=0.37))
+    assert section_of(bent, np.eye(4)) is None
+
+
+def test_a_linkage_that_folds_off_level_lines_is_no_pair() -> None:
+    """A third link turned by half of the first joint: its folds are no level lines."""
+    third = revolute(a=0.3, passive=True, couplings=(Coupling(2, 0.5),))
+    arm = arm_of(revolute(alpha=HALF), revolute(a=0.5), revolute(a=0.37), third)
+    assert section_of(arm, np.eye(4)) is None

@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from kinematics.kernels.best_postures import best_first
+from kinematics.kernels.best_postures import best_first, in_steps, preferred
 from kinematics.kernels.whole_turns import INSIDE
 
 
@@ -35,8 +35,26 @@ def test_postures_beyond_travel_are_left_out_beside_others() -> None:
 
 
 def test_what_differs_by_rounding_keeps_its_order() -> None:
-    assert order([0, 0], [1, 1], [0.3, 0.3 + 1e-12], [0.5, 0.5 + 1e-12])[1] == [0, 1]
-    assert order([0, 0], [1, 1], [0.3, 0.3 + 1e-12], [0.5, 0.6])[1] == [1, 0]
+    first = in_steps(np.array([0.3, 0.3 + 1e-12])).tolist()
+    assert order([0, 0], [1, 1], first, in_steps(np.array([0.5, 0.5 + 1e-12])).tolist())[1] == [
+        0,
+        1,
+    ]
+    assert order([0, 0], [1, 1], first, [0.5, 0.6])[1] == [1, 0]
+
+
+def test_of_equal_margins_those_within_working_travel_come_first() -> None:
+    margins = np.array([0.3 + 1e-12, 0.3, 0.3 + 1e-12, 0.3 + 2e-9])
+    told = preferred(margins, np.array([True, False, False, True]))
+    assert order([0] * 4, [1] * 4, told.tolist(), [0.0] * 4)[1] == [3, 1, 2, 0]
+    endless = preferred(np.full(2, np.inf), np.array([True, False]))
+    assert order([0, 0], [1, 1], endless.tolist(), [0.9, 0.1])[1] == [1, 0]
+
+
+def test_what_is_beyond_travel_stays_so() -> None:
+    """Half a step for working travel does not bring the least that counts as beyond back within."""
+    assert preferred(np.array([-1e-9]), np.array([False]))[0] < 0.0
+    assert preferred(np.array([0.0]), np.array([True]))[0] >= 0.0
 
 
 def test_infinite_margins_are_ranked_by_the_second() -> None:

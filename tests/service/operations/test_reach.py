@@ -32,7 +32,7 @@ from service.errors import ServiceError, TooLarge
 from service.operations.arms import Arms
 from service.operations.reach import ManyTargets, Wanted, reach_question, wanted_solutions
 from service.operations.reach_columns import columns_of
-from service.operations.reach_told import told_together
+from service.operations.reach_judged import told_together
 from service.operations.reachers import is_quick, method_of, reacher_of
 from service.operations.reasons_told import family_out, reason_out
 from service.wire.arms import ReadArm
@@ -187,7 +187,7 @@ def test_codes_of_a_no(arms: Arms[ReadArm], verdict: int, code: int) -> None:
 def test_lines_for_targets_or_for_solutions(arms: Arms[ReadArm]) -> None:
     targets = [PLACES[0], {"name": "bad"}, PLACES[1]]
     best = columns_of(many(arms, Made(), targets), 0, 3)
-    assert best.names == ["p-0", "bad", "p-1"]
+    assert best.names == {0: "p-0", 1: "bad", 2: "p-1"}
     assert best.codes.tolist() == [0, 105, 0]
     assert (list(best.ranks), list(best.counts)) == ([1, 0, 1], [3, 0, 3])
     every = columns_of(many(arms, Made(), targets, solutions="all"), 0, 3)

@@ -8,7 +8,7 @@ from typing import Any
 
 import pytest
 
-from service.errors import StorageUnavailable
+from service.errors import StorageUnavailable, UnknownSurvey
 from service.settings import Settings
 from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import (
@@ -70,6 +70,15 @@ def test_what_is_made_is_kept_once_and_counted_once(store: SurveyStorage) -> Non
     assert list(store.left("a1", -1, 10)) == [PIECES[2]]
 
 
+def test_the_first_bytes_of_what_was_made(store: SurveyStorage) -> None:
+    add(store)
+    store.begin("a1", AT)
+    long = bytes(range(256)) * 40
+    store.keep("a1", [MadePiece(2, long, {}), MadePiece(0, b"\x00x", {}), MadePiece(1, long, {})])
+    assert store.beginnings("a1", 300) == [b"\x00x", long[:300], long[:300]]
+    assert store.beginnings("a2", 300) == []
+
+
 def test_a_state_that_is_the_last_stays(store: SurveyStorage) -> None:
     add(store)
     assert not store.keep("a1", [made(0)])  # nobody has begun
@@ -118,6 +127,8 @@ def test_a_key_makes_one_survey(store: SurveyStorage) -> None:
         add(store, "b2", "key", "another")
     assert (caught.value.survey, caught.value.digest) == (ONE, "one body")
     assert store.get("b2") is None
+    assert store.sent("key") == (ONE, "one body")
+    assert store.sent("other key") is None
     add(store, "b2", "other key")
     add(store, "c3")
     add(store, "d4")
@@ -143,6 +154,8 @@ def test_what_is_removed_is_gone(store: SurveyStorage) -> None:
     store.remove("a1")
     store.remove("a1")
     assert store.get("a1") is None
+    with pytest.raises(UnknownSurvey):
+        store.made("a1", 0)
     assert list(store.sizes("a1")) == []
     assert list(store.sizes("b2")) == [3, 3, 1]
     add(store, "c3", "key")  # a key lasts as long as its survey
@@ -192,3 +205,9 @@ def test_a_full_disk_is_told_and_undoes_the_step(small_disk: SmallDisk) -> None:
     assert store.keep("a1", [made(0, seen=1)])
     assert get(store).done == 3
     opened.close()
+
+
+def test_a_title_may_hold_any_character(store: SurveyStorage) -> None:
+    titled = replace(ONE, title="zero \0 and \u00df")
+    store.add(titled, [], key=None, digest="")
+    assert store.get(ONE.id) == titled

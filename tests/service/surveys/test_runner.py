@@ -252,3 +252,39 @@ def test_a_stop_leaves_open_what_is_open(bench: Bench) -> None:
     assert stored.state == "running"
     bench.runner.wake()
     assert bench.store.get("a1") == stored
+
+
+def test_a_look_into_the_store_that_fails_is_not_the_last(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    looks = []
+
+    def may_lead() -> bool:
+        looks.append(1)
+        if len(looks) == 1:
+            raise RuntimeError("the store is gone")
+        return True
+
+    monkeypatch.setattr(runner, "_LOOK_ELSEWHERE_S", 0.01)
+    monkeypatch.setattr(bench.store, "may_lead", may_lead)
+    bench.add()
+    bench.runner.wake()
+    assert bench.over().state == "succeeded"
+    assert len(looks) > 1
+
+
+def test_processes_that_a_stop_takes_away_are_no_failure(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    class Gone(ThreadPoolExecutor):
+        def submit(self, *_: Any, **__: Any) -> Any:
+            bench.runner._stopping.set()
+            raise RuntimeError("cannot schedule new futures after shutdown")
+
+    monkeypatch.setattr(bench.pool, "executor", Gone)
+    bench.add()
+    bench.runner.wake()
+    assert bench.runner._thread is not None
+    bench.runner._thread.join(5)
+    assert not bench.runner._thread.is_alive()
+    assert bench.get().state == "running"

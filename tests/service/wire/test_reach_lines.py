@@ -6,7 +6,14 @@ import io
 import numpy as np
 
 from service.wire.reach_flat import BEGIN, END
-from service.wire.reach_lines import ReachColumns, SameInAll, joint_keys, reach_head, reach_lines
+from service.wire.reach_lines import (
+    ReachColumns,
+    SameInAll,
+    Texts,
+    joint_keys,
+    reach_head,
+    reach_lines,
+)
 
 SAME = SameInAll(7, 5, 1_796_145_917_630, "mm-deg", 3, "e994bb33")
 
@@ -15,17 +22,17 @@ def columns() -> ReachColumns:
     return ReachColumns(
         codes=np.array([3, 200, 105]),
         applying={1: np.array([True, False, False]), 3: np.array([True, False, False])},
-        verdicts=["reachable", "unreachable", ""],
-        counts=[2, 0, 0],
+        verdicts=Texts(("reachable", "unreachable"), np.array([0, 1, -1])),
+        counts=np.array([2, 0, 0]),
         joints=np.array([[1.5, -0.0], [np.nan, np.nan], [np.nan, np.nan]]),
         margins=np.array([np.inf, np.nan, np.nan]),
-        states=["near", "", ""],
-        ranks=[1, 0, 0],
-        proofs=["witness", "bound", ""],
-        branches=["wrist ahead of axis 1, elbow above", "", ""],
+        states=Texts(("near",), np.array([0, -1, -1])),
+        ranks=np.array([1, 0, 0]),
+        proofs=Texts(("witness", "bound"), np.array([0, 1, -1])),
+        branches=Texts(("wrist ahead of axis 1, elbow above",), np.array([0, -1, -1])),
         errors=np.array([[1e-9, 0.0], [np.nan, np.nan], [np.nan, np.nan]]),
-        reasons=["", "31 mm too far", '"x" must be a number'],
-        names=["lug-1", "lug, second", 'the "third"'],
+        reasons={1: "31 mm too far", 2: '"x" must be a number'},
+        names={0: "lug-1", 1: "lug, second", 2: 'the "third"'},
     )
 
 
@@ -55,9 +62,10 @@ def test_lines_can_be_read_back() -> None:
 
 
 def test_none_are_none() -> None:
-    nothing = np.empty(0)
+    numbers, whole = np.empty(0), np.empty(0, dtype=np.int64)
+    texts = Texts((), whole)
     empty = ReachColumns(
-        np.empty(0, dtype=np.int64), {}, [], [], np.empty((0, 2)), nothing, [], [], [], [],
-        np.empty((0, 2)), [], [],
+        whole, {}, texts, whole, np.empty((0, 2)), numbers, texts, whole, texts, texts,
+        np.empty((0, 2)), {}, {},
     )  # fmt: skip
     assert reach_lines(empty, SAME) == b""

@@ -1,0 +1,47 @@
+"""Numbers as a drawing writes them: enough figures, no idle ones, bounds never told too small."""
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from kinematics.envelope.measures import Measure
+from service.convert import UNITS
+from service.drawings.numbers import length_words, measure_words
+from tests.service.drawings.sheets import envelopes
+
+MM = UNITS["mm-deg"]
+
+
+@pytest.mark.parametrize(
+    ("name", "metres", "words"),
+    [
+        ("metre", 0.5207, "520.7"),
+        ("metre", 1.0, "1000"),
+        ("metre", -0.00004, "0"),
+        ("millimetre", 0.5207e-3, "0.5207"),
+        ("hundred metres", 52.0712, "52071"),
+    ],
+)
+def test_lengths_have_the_figures_that_the_size_asks_for(
+    name: str, metres: float, words: str
+) -> None:
+    assert length_words(envelopes(name), MM)(metres) == words
+
+
+def test_lengths_are_in_the_unit_asked_for() -> None:
+    assert length_words(envelopes("metre"), UNITS["in-deg"])(0.0254) == "1"
+    assert length_words(envelopes("metre"), UNITS["m-rad"])(0.0254) == "0.0254"
+
+
+@given(st.floats(1e-3, 1e5), st.floats(0.0, 0.3))
+def test_a_bound_is_never_told_smaller_than_it_is(value: float, share: float) -> None:
+    words = measure_words(Measure(value, share * value), 2, UNITS["m-rad"])
+    told, _, _, bound = words.split()
+    # What rounding takes from the value is within half of its last figure.
+    assert abs(float(told) - value) <= 0.5 * float(bound) + 1e-9
+    assert float(bound) >= share * value * (1.0 - 1e-9)
+
+
+def test_small_areas_are_told_in_millimetres() -> None:
+    assert measure_words(Measure(2.5e-6, 0.0), 2, MM).startswith("2.5 mm\u00b2")
+    assert measure_words(Measure(0.0, 0.0), 3, MM) == "0"

@@ -1,0 +1,259 @@
+"""Kinds of surveys: the same bits however work is cut and in whatever order it is made.
+
+Pieces are made here one after the other; the thread and processes that do it otherwise are met in
+test_runner.py and tests/contract.
+"""
+
+import io
+import random
+from collections.abc import Iterator, Sequence
+from contextlib import closing
+from dataclasses import replace
+from datetime import UTC, datetime
+from typing import Any
+
+import numpy as np
+import orjson
+import pytest
+
+from kinematics.errors import KinematicsError
+from service.errors import ServiceError, UnusableValue
+from service.operations.arms import Arms
+from service.operations.envelopes import envelope_question
+from service.operations.reach import ManyTargets
+from service.operations.samples import samples_asked
+from service.settings import Settings
+from service.storage.opening import OpenStorage, open_storage
+from service.storage.ports import SUCCEEDED, Head, Survey, SurveyStorage
+from service.surveys import envelopes, reach_checks, samples
+from service.surveys.kinds import Kind, Report
+from service.surveys.reach_pieces import given_rows, rows_of
+from service.surveys.registry import SURVEY_KINDS
+from service.wire.arms import ReadArm, read_arm
+from service.wire.envelopes import EnvelopeRequest
+from service.wire.reach_request import ReachRequest
+from service.wire.reach_targets import read_targets
+from service.wire.samples import SamplesRequest
+
+AT = datetime(2026, 3, 4, 5, 6, 7, tzinfo=UTC)
+ROW = {"joint": "revolute", "a": 400, "alpha": 0, "d": 0, "theta": 0, "travel": [-170, 170]}
+SLIDE = {"joint": "prismatic", "a": 0, "alpha": 0, "d": 0, "theta": 0}
+ARM = {
+    "name": "two-turns",
+    "convention": "standard",
+    "units": "mm-deg",
+    "rows": [{**ROW, "working_travel": [-90, 90]}, {**ROW, "a": 300}],
+}
+
+
+@pytest.fixture
+def opened() -> Iterator[OpenStorage]:
+    with closing(open_storage(Settings(database=":memory:"))) as storage:
+        yield storage
+
+
+@pytest.fixture
+def arms(opened: OpenStorage) -> Arms[ReadArm]:
+    stored = Arms(opened.arms, read_arm)
+    stored.create(ARM)
+    return stored
+
+
+def made(
+    store: SurveyStorage,
+    arms: Arms[ReadArm],
+    kind: Kind,
+    request: dict[str, Any],
+    seed: int | None = None,
+) -> Survey:
+    """Make all pieces of a survey, in an order that a seed gives, and return it as it then is."""
+    accepted = kind.accept(arms, request)
+    about = orjson.loads(
+        orjson.dumps({**accepted.about, "software": "1"}, option=orjson.OPT_SERIALIZE_NUMPY)
+    )
+    name = f"{seed or 0:020x}"
+    survey = Survey(name, kind.name, "", accepted.request, about, accepted.total, AT)
+    pieces = list(accepted.pieces)
+    assert sum(piece.size for piece in pieces) == accepted.total
+    store.add(survey, pieces, key=None, digest="")
+    prepared = kind.prepare(kind.setup(arms, survey))
+    if seed is not None:
+        random.Random(seed).shuffle(pieces)
+    store.begin(name, AT)
+    for piece in pieces:
+        store.keep(name, [kind.make(prepared, piece)])
+    store.end(name, SUCCEEDED, AT)
+    found = store.get(name)
+    assert found is not None
+    return found
+
+
+def told(store: SurveyStorage, survey: Survey, wanted: Any) -> bytes:
+    answer = SURVEY_KINDS[survey.kind].told(survey, wanted, store)
+    pieces = range(len(store.sizes(survey.id)))
+    parts = [answer.part(number, store.made(survey.id, number)) for number in pieces]
+    return b"".join([answer.head, *parts, answer.tail])
+
+
+def of_no_survey(document: bytes) -> dict[str, Any]:
+    read: dict[str, Any] = orjson.loads(document)
+    return {key: value for key, value in read.items() if key not in ("survey", "software")}
+
+
+SAMPLES = {"arm": "two-turns", "count": 20_000, "seed": 5, "orientations": True, "joints": True}
+
+
+@pytest.mark.parametrize("size", [777, 4096, 30_000])
+def test_samples_are_the_same_however_they_are_cut(
+    opened: OpenStorage, arms: Arms[ReadArm], size: int, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    store, kind = opened.surveys, samples.Samples()
+    many = samples_asked(arms, SamplesRequest.model_validate(SAMPLES), "npy")
+    monkeypatch.setattr(samples, "_PIECE", size)
+    survey = made(store, arms, kind, SAMPLES, seed=size)
+    table = np.load(io.BytesIO(told(store, survey, "npy")))
+    assert np.array_equal(table, many.numbers(0, many.count))
+    lines = told(store, survey, "csv").decode().split("\r\n")
+    assert lines[0] == "x,y,z,qw,qx,qy,qz,q1,q2"
+    assert [[float(cell) for cell in line.split(",")] for line in lines[1:-1]] == table.tolist()
+    answer = of_no_survey(told(store, survey, "json"))
+    assert answer["samples"] == many.items(0, many.count)
+    summary = orjson.loads(
+        orjson.dumps(
+            many.summary([many.summary_piece(0, many.count)]), option=orjson.OPT_SERIALIZE_NUMPY
+        )
+    )
+    assert answer["summary"] == summary
+    assert answer["seed"] == 5
+
+
+def test_of_equal_samples_the_first_is_the_farthest(
+    opened: OpenStorage, arms: Arms[ReadArm], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    # A region of no size: whatever the joints do, the tool stays where it is.
+    still = {**ARM, "rows": [{**ROW, "a": 0}] * 2}
+    monkeypatch.setattr(samples, "_PIECE", 10)
+    asked = {"arm": still, "count": 35, "joints": True}
+    survey = made(opened.surveys, arms, samples.Samples(), asked, seed=3)
+    answer = of_no_survey(told(opened.surveys, survey, "json"))
+    for measure in ("x", "y", "radius"):
+        ways = answer["summary"]["extremes"][measure]
+        assert ways["least"] == ways["greatest"]
+        assert ways["least"]["sample"] == 0
+        assert ways["least"]["joints"] == answer["samples"][0]["joints"]
+
+
+TARGETS = [
+    {"name": "near", "position": [500, 200, 0]},
+    {"name": "far", "position": [900, 0, 0]},
+    {"position": [300, -400, 0], "approach": 40},
+    {"name": "<b>&", "position": [650, 0, 0], "approach": 200},
+]
+
+
+def test_approaches_count_as_in_reach_checks(opened: OpenStorage, arms: Arms[ReadArm]) -> None:
+    request = {"arm": "two-turns", "targets": TARGETS}
+    survey = made(opened.surveys, arms, reach_checks.ReachChecks(), request)
+    prepared = reach_checks._prepared(arms, ReachRequest.model_validate(request))
+    many = ManyTargets(
+        prepared.question, read_targets(TARGETS, prepared.question.units), prepared.wanted
+    )
+    results = of_no_survey(told(opened.surveys, survey, "json"))["results"]
+    items: Any = many.items(0, len(TARGETS))
+    assert [one["verdict"] for one in results] == [one["verdict"] for one in items]
+    assert [one["found"] for one in results] == [one["found"] for one in items]
+    # Without approaches more is reached: they were looked at.
+    without = [{**row, "approach": None} for row in TARGETS]
+    plain = made(
+        opened.surveys, arms, reach_checks.ReachChecks(), {**request, "targets": without}, seed=1
+    )
+    assert [one["found"] for one in results] != [
+        one["found"] for one in of_no_survey(told(opened.surveys, plain, "json"))["results"]
+    ]
+
+
+@pytest.mark.parametrize("seed", [1, 2])
+def test_an_envelope_is_that_of_the_answer(
+    opened: OpenStorage, arms: Arms[ReadArm], seed: int
+) -> None:
+    request = {"arm": "two-turns"}
+    survey = made(opened.surveys, arms, envelopes.Envelopes(), request, seed=seed)
+    assert survey.total == 2
+    asked = envelope_question(arms, EnvelopeRequest.model_validate(request))
+    whole = asked.answer({within: asked.found(within) for within in asked.within})
+    expected = orjson.loads(orjson.dumps(whole, option=orjson.OPT_SERIALIZE_NUMPY))
+    assert of_no_survey(told(opened.surveys, survey, "json")) == expected
+    drawing = told(opened.surveys, survey, "svg")
+    assert drawing == envelopes.sheet_of(survey, envelopes._kept(survey, opened.surveys))
+    assert b"<svg" in drawing[:200]
+
+
+def test_what_was_asked_means_the_same_after_the_arm_changed(
+    opened: OpenStorage, arms: Arms[ReadArm]
+) -> None:
+    first = made(opened.surveys, arms, samples.Samples(), {"arm": "two-turns", "count": 50})
+    assert first.request["arm"] == {"name": "two-turns", "revision": 1}
+    arms.replace("two-turns", {**ARM, "rows": [dict(ROW), {**ROW, "a": 250}]}, Head.ANY)
+    again = made(opened.surveys, arms, samples.Samples(), first.request, seed=7)
+    assert told(opened.surveys, again, "npy") == told(opened.surveys, first, "npy")
+    newest = made(
+        opened.surveys, arms, samples.Samples(), {"arm": "two-turns", "count": 50}, seed=8
+    )
+    assert told(opened.surveys, newest, "npy") != told(opened.surveys, first, "npy")
+
+
+@pytest.mark.parametrize(
+    ("kind", "request_", "where"),
+    [
+        ("samples", {"count": 0}, ("count",)),
+        ("samples", {"count": 10**9}, ("count",)),
+        ("samples", {"count": 10**30}, ("count",)),
+        ("samples", {"count": 5, "seed": -1}, ("seed",)),
+        ("samples", {"count": 5, "seed": 10**30}, ("seed",)),
+        ("samples", {"count": 5, "form": "roll-pitch"}, ("form",)),
+        ("samples", {"count": 5, "positions": False}, ("positions",)),
+        ("envelope", {"resolution": 0}, ("resolution",)),
+        ("envelope", {"resolution": -3}, ("resolution",)),
+        ("envelope", {"point": "wrist"}, ("point",)),
+        ("envelope", {"arm": {**ARM, "rows": []}}, ("arm", "rows")),
+        ("envelope", {"arm": {**ARM, "rows": [SLIDE]}}, ("arm", "rows", 0, "travel")),
+    ],
+)
+def test_what_cannot_be_surveyed_is_refused_at_once(
+    arms: Arms[ReadArm], kind: str, request_: dict[str, Any], where: Sequence[str]
+) -> None:
+    with pytest.raises((ServiceError, KinematicsError)) as refused:
+        SURVEY_KINDS[kind].accept(arms, {"arm": "two-turns", **request_})
+    assert tuple(refused.value.where) == tuple(where)
+    assert refused.value.way_out
+
+
+@pytest.mark.parametrize("kind", ["samples", "envelope"])
+def test_a_table_is_for_targets(arms: Arms[ReadArm], kind: str) -> None:
+    with pytest.raises(UnusableValue, match="table"):
+        SURVEY_KINDS[kind].accept(arms, {"arm": "two-turns"}, np.zeros((2, 3)))
+
+
+def test_reports_say_what_was_found(opened: OpenStorage, arms: Arms[ReadArm]) -> None:
+    store = opened.surveys
+    checks = made(store, arms, reach_checks.ReachChecks(), {"arm": "two-turns", "targets": TARGETS})
+    report: Report = SURVEY_KINDS["reach-checks"].reported(checks, store)
+    verdicts, _, tight, without = report.tables
+    assert ("targets", 4, "100.0 %") in verdicts.lines
+    assert {line[0] for line in tight.lines} | {line[0] for line in without.lines} == {
+        *("near", "far", "no. 3", "<b>&")
+    }
+    assert [point.position for point in report.points] == [
+        tuple(map(float, row["position"]))  # type: ignore[call-overload]
+        for row in TARGETS
+    ]
+    drawn = made(store, arms, samples.Samples(), {"arm": "two-turns", "count": 5000}, seed=2)
+    report = SURVEY_KINDS["samples"].reported(replace(drawn, title="x"), store)
+    assert len(report.points) == 3000
+    assert [line[0] for line in report.tables[0].lines] == ["x", "y", "z", "radius", "height"]
+    assert "3000 of 5000" in report.said
+
+
+def test_targets_come_back_from_their_piece_whatever_numbers_they_hold() -> None:
+    rows = [{"position": [10**400, 0, 1]}, {"name": 10**20, "position": [0.1, -0.0, 2]}]
+    assert rows_of(given_rows(rows)) == rows
