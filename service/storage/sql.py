@@ -6,7 +6,7 @@ asked (``statements.py``).
 
 import logging
 from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+from contextlib import AbstractContextManager, contextmanager
 from typing import Any
 
 import sqlalchemy as sa
@@ -160,28 +160,54 @@ class SqlStorage:
             rows = connection.execute(question, {"kind": self._kind, **bounds})
             return [revision_from(row) for row in rows]
 
-    @contextmanager
-    def _asking(self) -> Iterator[sa.Connection]:
-        try:
-            with self._engine.connect() as connection:
-                yield connection
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{self._kind}s cannot be read") from error
+    def _asking(self) -> AbstractContextManager[sa.Connection]:
+        return asking(self._engine, f"{self._kind}s")
 
-    @contextmanager
-    def _writing(self, seed: bool) -> Iterator[sa.Connection]:
-        if self._refuses_writes and not (seed and self._takes_seeds):
-            raise StorageUnavailable(
-                f"nothing can be stored: {self._refuses_writes}",
-                way_out="start the service with a database it can write to",
-            )
-        try:
-            with writing(self._engine) as connection:
-                yield connection
-        except sa.exc.IntegrityError:
-            raise
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{self._kind}s cannot be stored") from error
+    def _writing(self, seed: bool) -> AbstractContextManager[sa.Connection]:
+        refused = "" if seed and self._takes_seeds else self._refuses_writes
+        return storing(self._engine, f"{self._kind}s", refused)
+
+
+@contextmanager
+def asking(engine: sa.Engine, what: str) -> Iterator[sa.Connection]:
+    """Hold a connection that reads ``what``.
+
+    Raises
+    ------
+    StorageUnavailable : the database fails.
+    """
+    try:
+        with engine.connect() as connection:
+            yield connection
+    except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
+        raise unavailable(error, f"{what} cannot be read") from error
+
+
+@contextmanager
+def storing(engine: sa.Engine, what: str, refused: str) -> Iterator[sa.Connection]:
+    """Hold a transaction that writes ``what``.
+
+    Parameters
+    ----------
+    refused : why nothing may be written, or "".
+
+    Raises
+    ------
+    StorageUnavailable : it is refused, or the database fails.
+    sqlalchemy.exc.IntegrityError : as it came: callers know what it means.
+    """
+    if refused:
+        raise StorageUnavailable(
+            f"nothing can be stored: {refused}",
+            way_out="start the service with a database it can write to",
+        )
+    try:
+        with writing(engine) as connection:
+            yield connection
+    except sa.exc.IntegrityError:
+        raise
+    except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
+        raise unavailable(error, f"{what} cannot be stored") from error
 
 
 @contextmanager

@@ -7,8 +7,8 @@ process that is killed loses no more than it had in hand. Left out: who works on
 import json
 import threading
 from collections import Counter
-from collections.abc import Iterable, Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Iterable, Sequence
+from contextlib import AbstractContextManager
 from datetime import datetime
 from itertools import islice
 from typing import Any
@@ -27,7 +27,7 @@ from service.storage.ports import (
 )
 from service.storage.rows import milliseconds, moment
 from service.storage.schema import SURVEY_PIECES, SURVEYS
-from service.storage.sql import unavailable, writing
+from service.storage.sql import asking, storing, unavailable
 
 _WHAT = "surveys"
 _WRITTEN_AT_ONCE = 500
@@ -240,28 +240,11 @@ class SqlSurveys:
             )
         return bytes(found)
 
-    @contextmanager
-    def _asking(self) -> Iterator[sa.Connection]:
-        try:
-            with self._engine.connect() as connection:
-                yield connection
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{_WHAT} cannot be read") from error
+    def _asking(self) -> AbstractContextManager[sa.Connection]:
+        return asking(self._engine, _WHAT)
 
-    @contextmanager
-    def _writing(self) -> Iterator[sa.Connection]:
-        if self._refuses_writes:
-            raise StorageUnavailable(
-                f"nothing can be stored: {self._refuses_writes}",
-                way_out="start the service with a database it can write to",
-            )
-        try:
-            with writing(self._engine) as connection:
-                yield connection
-        except sa.exc.IntegrityError:
-            raise
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{_WHAT} cannot be stored") from error
+    def _writing(self) -> AbstractContextManager[sa.Connection]:
+        return storing(self._engine, _WHAT, self._refuses_writes)
 
 
 def _locked(connection: sa.Connection, survey: str) -> Any:
