@@ -22,8 +22,9 @@ from service.storage.inspection import APPLICATION_ID, inspect, unusable
 from service.storage.layouts import LAYOUTS, lay_out, layout_of
 from service.storage.records import SqlRecords
 from service.storage.server_lock import ServerLock
-from service.storage.sql import SqlStorage, reason_of, sqlite_error_name, writing
+from service.storage.sql import SqlStorage
 from service.storage.state import FileState
+from service.storage.store import reason_of, sqlite_error_name, writing
 from service.storage.surveys import SqlSurveys
 
 _LOG = logging.getLogger(__name__)

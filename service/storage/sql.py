@@ -1,17 +1,15 @@
 """The stores in SQL, one code for SQLite and PostgreSQL.
 
-Left out: opening, migrating and closing the database (``opening.py``), and the questions it is
-asked (``statements.py``).
+Left out: opening, migrating and closing the database (``opening.py``), the questions it is asked
+(``statements.py``), and how stores ask and write (``store.py``).
 """
 
-import logging
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Callable, Sequence
+from contextlib import AbstractContextManager
 from typing import Any
 
 import sqlalchemy as sa
 
-from service.errors import StorageUnavailable
 from service.storage import statements
 from service.storage.ports import (
     CellInUse,
@@ -27,19 +25,7 @@ from service.storage.ports import (
 )
 from service.storage.rows import milliseconds, revision_from, revision_of, row_of
 from service.storage.schema import HEADS, REVISIONS
-
-_LOG = logging.getLogger(__name__)
-
-_REASONS = {
-    "SQLITE_FULL": "the disk is full",
-    "SQLITE_READONLY": "the database is read-only",
-    "SQLITE_BUSY": "another process holds the database",
-    "SQLITE_LOCKED": "another process holds the database",
-    "SQLITE_CANTOPEN": "the database file cannot be opened",
-    "SQLITE_IOERR": "the disk is full or reports an error",
-    "SQLITE_CORRUPT": "the database file is damaged",
-    "SQLITE_NOTADB": "the database file is damaged",
-}
+from service.storage.store import asking, storing
 
 
 class SqlStorage:
@@ -160,62 +146,12 @@ class SqlStorage:
             rows = connection.execute(question, {"kind": self._kind, **bounds})
             return [revision_from(row) for row in rows]
 
-    @contextmanager
-    def _asking(self) -> Iterator[sa.Connection]:
-        try:
-            with self._engine.connect() as connection:
-                yield connection
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{self._kind}s cannot be read") from error
+    def _asking(self) -> AbstractContextManager[sa.Connection]:
+        return asking(self._engine, f"{self._kind}s")
 
-    @contextmanager
-    def _writing(self, seed: bool) -> Iterator[sa.Connection]:
-        if self._refuses_writes and not (seed and self._takes_seeds):
-            raise StorageUnavailable(
-                f"nothing can be stored: {self._refuses_writes}",
-                way_out="start the service with a database it can write to",
-            )
-        try:
-            with writing(self._engine) as connection:
-                yield connection
-        except sa.exc.IntegrityError:
-            raise
-        except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
-            raise unavailable(error, f"{self._kind}s cannot be stored") from error
-
-
-@contextmanager
-def writing(engine: sa.Engine) -> Iterator[sa.Connection]:
-    """Hold a transaction that may write: committed at the end, undone by any exception."""
-    with engine.connect().execution_options(writes=True) as connection, connection.begin():
-        yield connection
-
-
-def sqlite_error_name(error: BaseException) -> str:
-    """Return SQLite's name for an error, e.g. ``SQLITE_FULL``, or "" for any other database's."""
-    return str(getattr(getattr(error, "orig", error), "sqlite_errorname", ""))
-
-
-def reason_of(error: BaseException) -> str:
-    """Return why a database failed, in words for a user, without SQL or addresses.
-
-    Examples
-    --------
-    >>> reason_of(sa.exc.OperationalError("SELECT 1", {}, Exception("host 10.0.0.7 is down")))
-    'the database does not answer'
-    """
-    name = sqlite_error_name(error)
-    for prefix, reason in _REASONS.items():
-        if name.startswith(prefix):
-            return reason
-    return "the database does not answer"
-
-
-def unavailable(error: Exception, what: str) -> StorageUnavailable:
-    """Return the refusal of what the database failed at, and tell the log its own words."""
-    reason = reason_of(error)
-    _LOG.error("%s: %s (%s)", what, reason, getattr(error, "orig", error))
-    return StorageUnavailable(f"{what} now: {reason}", way_out="try again when this is mended")
+    def _writing(self, seed: bool) -> AbstractContextManager[sa.Connection]:
+        refused = "" if seed and self._takes_seeds else self._refuses_writes
+        return storing(self._engine, f"{self._kind}s", refused)
 
 
 def _head(connection: sa.Connection, kind: Kind, name: str) -> Revision | None:

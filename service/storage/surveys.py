@@ -26,8 +26,7 @@ from service.storage.ports import (
 )
 from service.storage.rows import milliseconds, moment
 from service.storage.schema import SURVEY_PIECES, SURVEYS
-from service.storage.sql import unavailable
-from service.storage.store import SqlStore
+from service.storage.store import SqlStore, unavailable
 
 _WRITTEN_AT_ONCE = 500
 """Pieces of a new survey: some ten megabytes at most."""

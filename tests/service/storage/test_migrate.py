@@ -14,7 +14,7 @@ from service.storage.engines import in_memory
 from service.storage.layouts import LAYOUTS, lay_out, layout_of
 from service.storage.migrate import known_layouts, migrate
 from service.storage.schema import HEADS, METADATA, REVISIONS
-from service.storage.sql import writing
+from service.storage.store import writing
 
 
 def test_the_steps_lead_to_the_tables_of_the_schema() -> None:
@@ -46,7 +46,7 @@ def test_the_layouts_are_those_that_the_steps_lead_through() -> None:
 def test_a_new_database_needs_no_steps() -> None:
     script = (
         "import sys; from service.storage.engines import in_memory;"
-        "from service.storage.layouts import lay_out; from service.storage.sql import writing\n"
+        "from service.storage.layouts import lay_out; from service.storage.store import writing\n"
         "with writing(in_memory()) as connection: lay_out(connection); lay_out(connection)\n"
         "assert 'alembic' not in sys.modules"
     )

@@ -25,7 +25,7 @@ from service.storage.engines import on_file
 from service.storage.inspection import APPLICATION_ID
 from service.storage.opening import open_storage
 from service.storage.ports import Head
-from service.storage.sql import writing
+from service.storage.store import writing
 from service.wire.arms import read_arm
 from tests.service.storage.conftest import POSTGRES, wipe
 
