@@ -9,6 +9,7 @@ Left out: what is told (channels of live poses, progress of surveys).
 import asyncio
 import socket
 from collections.abc import Callable, Sequence
+from contextlib import suppress
 from time import monotonic
 from typing import Any
 
@@ -71,16 +72,27 @@ class EventStreams:
                 headers={"Retry-After": "10"},
             )
 
-    async def wait(self, slot: Slot, most_s: float) -> bool:
-        """Wait for something in a slot; False where nothing came in time, or the service stops."""
+    async def wait(self, slot: Slot, most_s: float, receive: Receive) -> bool:
+        """Wait for something in a slot.
+
+        Parameters
+        ----------
+        receive : of the request: who has left is not waited for, and gives its room to others.
+
+        Returns
+        -------
+        False where nothing came in time, the asker left or the service stops.
+        """
         self.check_room()
         self.waiting.add(slot)
+        gone = asyncio.ensure_future(_gone(receive, slot))
         try:
             async with asyncio.timeout(0.0 if self._stopped else most_s):
                 return await slot.filled()
         except TimeoutError:
             return False
         finally:
+            gone.cancel()
             self.waiting.discard(slot)
 
     def stop(self) -> None:
@@ -136,15 +148,17 @@ class EventStream(Response):
             _keep_little(self._connection)
         self._streams.add(self)
         gone = asyncio.ensure_future(_gone(receive, self.slot))
-        leave = self._attach(self.slot)
+        leave: Callable[[], None] | None = None
         try:
+            leave = self._attach(self.slot)
             await send({"type": "http.response.start", "status": 200, "headers": self.raw_headers})
             await self._send(send, b"retry: %d\n\n" % _RETRY_MS)
             while await self.slot.filled() and not gone.done():
                 await self._rest()
                 await self._send(send, self.slot.taken())
         finally:
-            leave()
+            if leave is not None:
+                leave()
             gone.cancel()
             self._streams.open.discard(self)
         await send({"type": "http.response.body", "body": b"", "more_body": False})
@@ -213,7 +227,9 @@ def _keep_little(connection: Any) -> None:
     connection.set_write_buffer_limits(high=_BUFFER_BYTES)
     network = connection.get_extra_info("socket")
     if network is not None:
-        network.setsockopt(socket.SOL_SOCKET, socket.SO_SNDBUF, _BUFFER_BYTES)
+        # Who has left already has no socket any more; the stream ends by itself.
+        with suppress(OSError):
+            network.setsockopt(socket.SOL_SOCKET, socket.SO_SNDBUF, _BUFFER_BYTES)
 
 
 async def _gone(receive: Receive, slot: Slot) -> None:

@@ -48,6 +48,9 @@ _WAYS_OUT = {
     "not_exact": "give it as a text, in quotes",
     "not_plain": "give what is nested as fields of its own",
 }
+_OBJECT = "must be an object"
+# What is said in place of pydantic's words, which name a class of this program.
+_SAYS = {"dict_type": _OBJECT, "model_type": _OBJECT, "model_attributes_type": _OBJECT}
 # A bulk body can be wrong at a hundred thousand places; twenty are shown.
 _MOST_READ = 1000
 # Names pydantic puts into a path for a member of a union, where no body is there to tell.
@@ -92,7 +95,8 @@ def _detail(title: str, error: Mapping[str, Any], location: Location, body: obje
         say = f'"{name}" is missing'
         choice = _choice(title, error["loc"])
         return Detail(code, say, where, location, None, f'add "{name}"{choice}')
-    say, way_out = _sentence(error["msg"]), _way_out(kind, error.get("ctx") or {})
+    say = _SAYS.get(kind) or _sentence(error["msg"])
+    way_out = _way_out(kind, error.get("ctx") or {})
     return Detail(code, say, where, location, error["input"], way_out)
 
 

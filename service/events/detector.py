@@ -87,6 +87,10 @@ class Detector:
         else:
             self._end(happening, at_s)
 
+    def doubted(self, at_s: float) -> None:
+        """Take in that a value came that could not be relied on: it is no silence."""
+        self._end_silence(at_s)
+
     def silent(self, at_s: float, since_s: float) -> None:
         """Take in that values have stopped; the last was heard at ``since_s``."""
         self._fresh, self._silent_since = 0, since_s

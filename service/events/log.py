@@ -105,6 +105,8 @@ class EventLog:
         except StorageUnavailable:
             with self._lock:
                 self._waiting = {**events, **self._waiting}
+                while len(self._waiting) > MOST_WAITING:
+                    self._lose_one()
             return False
         except Exception:
             # A thread that ends would leave all later events unwritten.
@@ -123,9 +125,13 @@ class EventLog:
         self._since_trim += count
         if self._since_trim < _TRIM_EVERY and monotonic() - self._trimmed_at < _TRIM_EVERY_S:
             return
-        with suppress(StorageUnavailable):
+        try:
             self._store.trim(self._most, self._now() - self._kept_for)
             self._trimmed_at, self._since_trim = monotonic(), 0
+        except StorageUnavailable:
+            pass  # next time
+        except Exception:
+            _LOG.exception("events could not be trimmed")
 
     def _lose_one(self) -> None:
         over = (key for key, event in self._waiting.items() if event.state != OPEN)

@@ -96,6 +96,8 @@ class _WatchedArm:
             if standing.at_s - self._measured_s >= _EVERY_S:
                 self._measured_s = standing.at_s
                 self._measure(standing, sample.joints)
+        elif notice.kind == "uncertain":
+            self._detector.doubted(standing.at_s)
 
     def leave(self) -> None:
         """Watch no more."""

@@ -17,6 +17,9 @@ KEPT_S = 600.0
 _FINEST_S = 0.0199
 """A little less than the 0.02 s meant, as clocks are not that even."""
 
+WIDEST_S = 0.05
+"""What comes without a pause is kept at least so close, also where 50 Hz are no multiple of it."""
+
 _MOST_ROWS = 30_000
 _FIRST_ROWS = 512
 _BESIDE = 3

@@ -56,7 +56,7 @@ _RATES_FROM = 64
 apart an encoder's last digit would be all."""
 
 _SAY = {
-    STALE: "no joint values for {:.3g} s",
+    STALE: "joint values have stopped: no new ones came for {:.3g} s",
     OUTSIDE_TRAVEL: "the last joint values are outside travel",
     JUMP: "joint {} moved faster than its top speed",
     NOT_FINITE: "the last joint values are not all finite numbers",
@@ -90,6 +90,7 @@ class LiveArm:
     period, history, counts : of its input; ``counts`` says how many samples were taken (``good``),
         doubted and dropped, by reason.
     looked_at_s : when somebody last asked how it stands, by the steady clock.
+    heard_s : when something new came last.
     """
 
     def __init__(
@@ -110,21 +111,28 @@ class LiveArm:
         self.standing = Standing(self.name, stored, None, "bad", STALE, "", 0, at_s, at_ms)
 
     def hear(self, sample: Sample) -> None:
-        """Note an arrival, before it is taken in: of samples that came together, the newest."""
+        """Note who sends, before it is taken in: of samples that came together, the newest."""
         if sample.simulated and self._is_real:
             return
         if not sample.simulated and not self._is_real:
             self._only_real()
         source = self._source(sample.source, sample.received_s)
-        self.heard_s = sample.received_s
-        self.period.arrived(sample.received_s, sample.period_s)
         if sample.sampled_ms is None or not isfinite(sample.sampled_ms):
             return
         times_set = source.clock.times_set
         source.clock.heard(sample.received_s, sample.sampled_ms / 1000.0, self._wall_difference())
         if source.clock.times_set > times_set:
             # Its clock was set and is believed now: its times begin anew.
-            source.order.forget()
+            source.order.begin_anew()
+            self._recent.clear()
+
+    def came(self, sample: Sample) -> None:
+        """Note that something new came: what comes twice or late does not show that an arm lives.
+
+        A gateway whose controller has stopped may well repeat its last values for ever.
+        """
+        self.heard_s = sample.received_s
+        self.period.arrived(sample.received_s, sample.period_s)
 
     def take(self, sample: Sample) -> Taken:
         """Weigh a sample that was heard and, if it is good, let it stand."""
@@ -156,7 +164,7 @@ class LiveArm:
             return False
         for source in self._sources.values():
             # Whoever begins again may count anew.
-            source.order.forget()
+            source.order.begin_anew()
         self._recent.clear()
         self._stand("bad", STALE, _SAY[STALE].format(since))
         return True
@@ -164,7 +172,8 @@ class LiveArm:
     def revised(self, stored: StoredArm[ReadArm]) -> bool:
         """Take the arm as it is stored now; return whether it is another revision."""
         before = self.standing.stored
-        if stored is before:
+        if stored is before or stored.record.revision < before.record.revision:
+            # An older one was looked up before the newest was stored, and took longer.
             return False
         same = stored.record.revision == before.record.revision
         self.standing = replace(self.standing, stored=stored)
@@ -221,6 +230,7 @@ class LiveArm:
     def _only_real(self) -> None:
         """Forget what was simulated: a real input has come, and stays."""
         self._is_real = True
+        self.counts.clear()
         if self.standing.sample is not None:
             self._sources.clear()
             self._recent.clear()

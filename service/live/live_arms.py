@@ -6,17 +6,23 @@ once. Left out: poses, and the addresses.
 
 import logging
 from collections.abc import Callable, Iterable
+from functools import partial
 from typing import Protocol
 
 from service.live.clocks import Clock
 from service.live.live_arm import LiveArm
-from service.live.samples import STALE, SUPERSEDED, Kind, Notice, Sample, Standing, Taken
+from service.live.samples import STALE, Kind, Notice, Sample, Standing, Taken
 from service.operations.arms import StoredArm
 from service.wire.arms import ReadArm
 
 _LOG = logging.getLogger(__name__)
 _SOONER_S = 0.001
 """A timer that is to go off sooner than it was set by less than this stays as it is."""
+
+_HELD_UP_S = 0.01
+_TO_READ_S = 0.02
+"""A timer that goes off so late was held up, and with it all that came: what is there already is
+read before an input is called silent."""
 
 
 class Timer(Protocol):
@@ -76,14 +82,16 @@ class LiveArms:
 
         Only what the last of them made of it is told to followers: newest wins.
         """
-        arm = self.of(stored)
-        given, before = list(samples), arm.standing
+        given = list(samples)
         if not given:
             return []
+        arm = self.of(stored)
+        before = arm.standing
         arm.hear(given[-1])
         taken = [arm.take(sample) for sample in given]
-        if all(one.dropped == SUPERSEDED for one in taken):
+        if all(one.dropped for one in taken):
             return taken
+        arm.came(given[-1])
         self._watch_for_silence(arm)
         if arm.standing is not before:
             self._tell("good" if arm.standing.quality == "good" else "uncertain", arm)
@@ -99,6 +107,15 @@ class LiveArms:
             self._tell("revision", arm)
         return arm
 
+    def newer(self, stored: StoredArm[ReadArm]) -> StoredArm[ReadArm]:
+        """Return the newer of a stored arm and what is known of it here.
+
+        Who looked it up may have waited for that, and have the revision before.
+        """
+        arm = self._arms.get(stored.read.arm.name)
+        known = stored if arm is None else arm.standing.stored
+        return max(stored, known, key=lambda one: one.record.revision)
+
     def forget(self, name: str) -> None:
         """Forget an arm that is stored no more."""
         arm = self._arms.pop(name, None)
@@ -107,6 +124,8 @@ class LiveArms:
         timer = self._timers.pop(name, None)
         if timer is not None:
             timer[1].cancel()
+        # Who knows what all arms were like knows no more what they are like now.
+        self._next_change()
         for follower in (*self._followers.get(name, ()), *self._followers_of_all):
             follower(name, None)
         for observer in self.observers:
@@ -172,17 +191,19 @@ class LiveArms:
             waiting[1].cancel()
         self._set_timer(arm.name, due, now)
 
-    def _set_timer(self, name: str, due: float, now: float) -> None:
-        timer = self._later(max(due - now, _SOONER_S), lambda: self._perhaps_silent(name))
-        self._timers[name] = (due, timer)
+    def _set_timer(self, name: str, due: float, now: float, *, again: bool = False) -> None:
+        look = partial(self._perhaps_silent, name, due, again)
+        self._timers[name] = (due, self._later(max(due - now, _SOONER_S), look))
 
-    def _perhaps_silent(self, name: str) -> None:
+    def _perhaps_silent(self, name: str, due: float, again: bool) -> None:
         self._timers.pop(name, None)
         arm = self._arms.get(name)
         if arm is None:
             return
         now = self.clock.steady_s()
-        if arm.became_stale(now):
+        if now - due > _HELD_UP_S and not again:
+            self._set_timer(name, now + _TO_READ_S, now, again=True)
+        elif arm.became_stale(now):
             self._tell("stale", arm)
         elif arm.standing.reason != STALE:
             self._set_timer(name, arm.heard_s + arm.period.stale_after_s, now)

@@ -28,12 +28,16 @@ class Order:
         self._sequence: int | None = None
         self._sampled_s: float | None = None
         self._lower: list[float] = []
+        self._is_anew = False
 
     def dropped(self, sequence: int | None, sampled_s: float | None) -> str:
         """Return why a sample is left out, "" where it is newer; it then is the newest."""
         why = self._why(sequence, sampled_s)
         if why:
             return why
+        if self._is_anew:
+            self._sequence = self._sampled_s = None
+            self._is_anew = False
         self._lower.clear()
         if sequence is not None:
             self._sequence = sequence
@@ -41,12 +45,18 @@ class Order:
             self._sampled_s = sampled_s
         return ""
 
-    def forget(self) -> None:
-        """Take what comes next as the newest: the input had stopped, or its clock was set."""
-        self._sequence = self._sampled_s = None
-        self._lower.clear()
+    def begin_anew(self) -> None:
+        """Take what comes next as the newest: the input had stopped, or its clock was set.
+
+        The same once more as before is still no news.
+        """
+        self._is_anew = True
 
     def _why(self, sequence: int | None, sampled_s: float | None) -> str:
+        if self._is_anew:
+            said = (sequence, sampled_s)
+            same = said != (None, None) and said == (self._sequence, self._sampled_s)
+            return REPEATED if same else ""
         before = self._sampled_s
         later = None if sampled_s is None or before is None else sampled_s - before
         if sequence is None or self._sequence is None:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from kinematics.sampled_motion import joint_rates, posture_between
 from service.errors import NoLivePose
 from service.live.clocks import Clock, wall_at
-from service.live.history import KEPT_S, Kept
+from service.live.history import KEPT_S, WIDEST_S, Kept
 from service.live.live_arm import LiveArm
 from service.live.samples import Quality, Sample
 
@@ -94,12 +94,13 @@ def seen_at(live: LiveArm, at_ms: float, clock: Clock) -> Seen:
         raise _no_samples(live, at_ms, age_s)
     before, after = found
     gap_s = after.happened_s - before.happened_s
-    if gap_s > live.period.stale_after_s:
+    bridged_s = max(live.period.stale_after_s, WIDEST_S)
+    if gap_s > bridged_s:
         raise _refusal(
             live,
             at_ms,
             f"the samples around that time are {gap_s:.3g} s apart",
-            f"at most {live.period.stale_after_s:.3g} s, three periods of the input, are bridged",
+            f"at most {bridged_s:.3g} s, three periods of the input, are bridged",
         )
     joints, rates = _between(before, after, now_s - age_s)
     return Seen(
@@ -133,7 +134,7 @@ def _no_samples(live: LiveArm, at_ms: float, age_s: float) -> NoLivePose:
     if age_s < 0.0:
         return _refusal(live, at_ms, "that time is still to come", "ask for one that is past")
     if age_s > KEPT_S:
-        say = f"that is {age_s:.0f} s ago"
+        say = f"that is {age_s:.6g} s ago"
         return _refusal(live, at_ms, say, f"the last {KEPT_S:.0f} s are kept")
     say = "there is no sample on one side of that time"
     return _refusal(live, at_ms, say, "/live/history lists the samples")

@@ -51,3 +51,6 @@ async def _tend(live: LiveArms, arms: Arms[ReadArm]) -> None:
             except ServiceError as error:
                 # The store is away for now; what stands, stands.
                 _LOG.info("live arms are not looked up: %s", error.say)
+            except Exception:
+                # A task that ends would leave all arms at the revisions they have.
+                _LOG.exception("%s could not be looked up", name)

@@ -39,7 +39,7 @@ class Track(NamedTuple):
 def kept_samples(
     live: LiveArm, clock: Clock, from_ms: float, to_ms: float, every_ms: float, limit: int
 ) -> FloatArray:
-    """Return the newest ``limit`` samples of a while, at least ``every_ms`` apart.
+    """Return the newest ``limit`` samples of a while, the last in each step of ``every_ms``.
 
     Returns
     -------
@@ -51,7 +51,8 @@ def kept_samples(
     found[:, 0] = wall_ms + (found[:, 0] - steady_s) * 1000.0
     if every_ms > 0.0 and len(found):
         # The last of each step of time, so that the newest is always among them.
-        steps = np.floor((found[-1, 0] - found[:, 0]) / every_ms)
+        # Times are told in whole milliseconds: shorter steps than that are none.
+        steps = np.floor((found[-1, 0] - found[:, 0]) / max(every_ms, 1.0))
         found = found[np.append(steps[1:] != steps[:-1], True)]
     return found[-limit:]
 

@@ -26,6 +26,7 @@ from service.wire.joint_samples import (
     JOINTS_PARAMETERS,
     JOINTS_SHOWN,
     JointsRequest,
+    joints_request,
     request_of_parameters,
     samples_of,
 )
@@ -97,14 +98,15 @@ class _Taking:
         """Take it in and return what became of it."""
         request = asked.request
         stored = await stored_arm(request.app.state.arms, request.path_params["arm"])
+        live: LiveArms = request.app.state.live
+        stored = live.newer(stored)
         _check_expected(stored, asked.said.get("expect"))
         if self._raw:
             request.state.json_body = parse_json(self._raw)
-            given = JointsRequest.model_validate(request.state.json_body)
+            given = joints_request(request.state.json_body)
         else:
             given = request_of_parameters(asked.said)
         sender = request.client.host if request.client is not None else "unknown"
-        live: LiveArms = request.app.state.live
         read = stored.read
         taken = live.feed(stored, samples_of(given, read.arm, read.units, sender, live.clock))
         if not taken:

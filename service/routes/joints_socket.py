@@ -14,7 +14,7 @@ from time import time_ns
 
 from pydantic import ValidationError
 from starlette.routing import WebSocketRoute
-from starlette.websockets import WebSocket, WebSocketDisconnect, WebSocketState
+from starlette.websockets import WebSocket, WebSocketDisconnect
 
 from kinematics.errors import KinematicsError
 from service.envelope import new_request_id
@@ -27,7 +27,7 @@ from service.slots import Slot
 from service.wire.answers import json_bytes, json_problem
 from service.wire.arms import ReadArm
 from service.wire.body import parse_json
-from service.wire.joint_samples import JointsRequest, samples_of
+from service.wire.joint_samples import JointsRequest, joints_request, samples_of
 from service.wire.joints_answers import counts_of, input_of
 from service.wire.origins import refuse_foreign
 from service.wire.query import known_ones, query_pairs
@@ -147,7 +147,7 @@ class _Session:
         body: object = ...
         try:
             body = parse_json(raw)
-            asked = JointsRequest.model_validate(body)
+            asked = joints_request(body)
             read = self._stored.read
             samples = samples_of(asked, read.arm, read.units, self._sender, self._live.clock)
         except (ServiceError, KinematicsError, ValidationError) as error:
@@ -181,10 +181,12 @@ class _Session:
 
     async def _close(self, code: int, reason: str) -> None:
         self._say.end()
-        if self._problem is not None and self._socket.application_state is WebSocketState.CONNECTED:
-            # Why, at length; there is no room for it in the reason.
-            await self._socket.send_text(self._told().decode())
-        await self._socket.close(code, reason)
+        # The sender may have gone by itself.
+        with suppress(WebSocketDisconnect, RuntimeError):
+            if self._problem is not None:
+                # Why, at length; there is no room for it in the reason.
+                await self._socket.send_text(self._told().decode())
+            await self._socket.close(code, reason)
 
 
 def _check_room() -> None:

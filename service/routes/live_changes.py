@@ -52,6 +52,6 @@ async def wait_for_change(
     slot = Slot()
     leave = arms.follow(name, lambda changed, _: slot.put(changed, bytes))
     try:
-        await streams.wait(slot, most_s)
+        await streams.wait(slot, most_s, request.receive)
     finally:
         leave()

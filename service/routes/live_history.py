@@ -49,6 +49,7 @@ _SHORT = 500
         answer_media=(JSON, csv_text.MEDIA_TYPE),
         parameters=HISTORY_SHOWN,
         statuses=(404, 409, 503),
+        examples="live-history",
     ),
 )
 async def live_history(request: Request) -> Response:
@@ -57,8 +58,8 @@ async def live_history(request: Request) -> Response:
     said = known_parameters(request, PARAMETERS_OF_HISTORY)
     stored = await stored_arm(request.app.state.arms, name)
     asked = history_question(name, said)
-    question = question_about(stored, asked.pose)
     arms: LiveArms = request.app.state.live
+    question = question_about(arms.newer(stored), asked.pose)
     live = live_arm(arms, name)
     arms.of(stored)
     kept = kept_samples(live, arms.clock, asked.from_ms, asked.to_ms, asked.every_ms, asked.limit)

@@ -57,6 +57,10 @@ _STREAM = (
     "by themselves. The data is the answer of `/v1/arms/{arm}/live` in the same words, nested or "
     "with `format=flat` on one level."
 )
+_OF_ALL = (
+    " Of each arm the newest wins for itself, and `rate` is that of each; on one level its name "
+    "stands last, as `arm`."
+)
 
 
 @router.get(
@@ -85,7 +89,7 @@ async def live_stream(request: Request) -> Response:
     "/v1/live/stream",
     openapi_extra=documented(
         "Watch the live poses of all arms",
-        f"{_STREAM} Of each arm the newest wins for itself.",
+        _STREAM + _OF_ALL,
         answer={"type": "string"},
         parameters=(*ALL_STREAM_SHOWN, _LAST_EVENT),
         statuses=(503,),
@@ -109,6 +113,7 @@ async def live_stream_of_all(request: Request) -> Response:
         parameters=(*ALL_SHOWN, KNOWN),
         statuses=(304, 503),
         headers=TAG_MEANS,
+        examples="live-of-all",
     ),
 )
 async def live_of_all(request: Request) -> Response:
@@ -132,18 +137,22 @@ def _stream(request: Request, name: str | None, asked: StreamQuestion) -> Respon
     state = request.app.state
     channels: Channels = state.channels
     after = last_event_id(request.scope["headers"]) if asked.after is None else asked.after
-    render = partial(_rendered, asked.pose, asked.wanted, state.live.clock)
+    render = partial(_rendered, asked.pose, asked.wanted, state.live.clock, name is None)
     attach = partial(channels.attach, name, (asked.pose, asked.wanted), render, after)
     return EventStream(state.streams, attach, gap_s=asked.gap_s)
 
 
-def _rendered(asked: SingleQuestion, wanted: Format, clock: Clock, live: LiveArm) -> bytes:
+def _rendered(
+    asked: SingleQuestion, wanted: Format, clock: Clock, of_all: bool, live: LiveArm
+) -> bytes:
     """Return the event that tells how an arm stands."""
     change = live.standing.change
     stamp: Stamp = {"seq": change, "tag": 0, "t_ms": round(clock.wall_ms())}
     try:
         if wanted == "flat":
-            told = live_told.content(live_answer(live, asked, clock), asked, wanted, stamp).body
+            # Of all arms together, each event says whose it is.
+            whose = live.name if of_all else None
+            told = live_told.flat_event(live_answer(live, asked, clock), asked, stamp, whose)
             return event("pose", change, told)
     except (ServiceError, KinematicsError):
         pass  # told nested below

@@ -204,8 +204,8 @@ async def _listed(request: Request, arm: str | None) -> Response:
 
 async def _exported(request: Request, which: Filter) -> Response:
     kept = _records(request)
-    widths = await run_in_threadpool(kept.widths, which)
-    page = partial(_lines, kept, which, widths)
+    newest, widths = await run_in_threadpool(_bounds, kept, which)
+    page = partial(_lines, kept, which, newest, widths)
     # Whoever asks for the head alone gets no lines read for it.
     first = Part(b"", None) if request.method == "HEAD" else await run_in_threadpool(page, "")
     whole = Part(lines_head(widths) + first.content, first.last)
@@ -213,8 +213,18 @@ async def _exported(request: Request, which: Filter) -> Response:
     return PagedAnswer(whole, page, media_type=MEDIA_TYPE, headers=_NO_CACHE | name)
 
 
-def _lines(kept: Records, which: Filter, widths: Widths, after: str) -> Part:
-    found = kept.oldest(which, after, _PAGE_OF_LINES)
+def _bounds(kept: Records, which: Filter) -> tuple[str, Widths]:
+    """Return the newest record's id and how many columns all up to it take.
+
+    One that is kept while lines are read may have more joints than there are columns.
+    """
+    newest, _ = kept.page(which, "", 1)
+    return newest[0].id if newest else "", kept.widths(which)
+
+
+def _lines(kept: Records, which: Filter, newest: str, widths: Widths, after: str) -> Part:
+    read = kept.oldest(which, after, _PAGE_OF_LINES)
+    found = [record for record in read if record.id <= newest]
     last = found[-1].id if len(found) == _PAGE_OF_LINES else None
     return Part(lines_of(_documents(found), widths), last)
 

@@ -107,7 +107,7 @@ class _Sender:
     ) -> None:
         self._client, self._read, self._asked, self._out = client, read, asked, out
         self._name = read.arm.name
-        self._begun_s = time.monotonic()
+        self._begun_s, self._begun_ms = time.monotonic(), time.time_ns() / 1e6
         self._count = 0
         # Numbers go on where those of an earlier simulation cannot have been.
         self._first = time.time_ns() // 1_000_000
@@ -143,7 +143,8 @@ class _Sender:
             samples.append(
                 {
                     "joints": [round(value, _DECIMALS[units.name]) for value in joints],
-                    "sampled_ms": time.time_ns() / 1e6,
+                    # When it was meant for, however late this process woke up: speeds are right.
+                    "sampled_ms": round(self._begun_ms + 1000.0 * at_s, 3),
                     "sequence": self._first + self._count,
                 }
             )

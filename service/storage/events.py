@@ -15,7 +15,7 @@ import sqlalchemy as sa
 from service.events.ports import OPEN, UNKNOWN, Event, Which
 from service.storage.rows import milliseconds, moment
 from service.storage.schema import EVENTS
-from service.storage.store import SqlStore
+from service.storage.store import SqlStore, unavailable
 
 _COLUMNS = EVENTS.c
 _LOCK = int.from_bytes(b"Even", "big")
@@ -44,9 +44,10 @@ class SqlEvents(SqlStore):
         """See ``EventStorage.watch``."""
         self.close()
         if self._on_server:
-            # Held for as long as the connection is: a process that dies gives it back.
-            self._alive = self._engine.connect().execution_options(isolation_level="AUTOCOMMIT")
-            self._alive.execute(sa.select(sa.func.pg_advisory_lock(_LOCK, watcher)))
+            try:
+                self._live_as(watcher)
+            except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
+                raise unavailable(error, "events cannot be stored") from error
         with self._writing() as connection:
             self._take_turn(connection)
             asked = sa.select(_COLUMNS.id, _COLUMNS.watcher).where(_COLUMNS.state == OPEN)
@@ -123,6 +124,11 @@ class SqlEvents(SqlStore):
     @property
     def _on_server(self) -> bool:
         return self._engine.dialect.name == "postgresql"
+
+    def _live_as(self, watcher: int) -> None:
+        """Hold a lock for as long as a connection is there: a process that dies gives it back."""
+        self._alive = self._engine.connect().execution_options(isolation_level="AUTOCOMMIT")
+        self._alive.execute(sa.select(sa.func.pg_advisory_lock(_LOCK, watcher)))
 
     def _take_turn(self, connection: sa.Connection) -> None:
         # A file has one writer at a time anyway.

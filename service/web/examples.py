@@ -20,8 +20,9 @@ class Example:
     title : one line for people.
     request : the body; of a question by query string ``{"path": {...}, "query": {...}}``.
     answer : the body of the answer.
-    path : what stands in the address for its parameters, where the request is a body.
-    sent : joint values that the arm of the request was sent before; None: none.
+    path : what stands in the address for its parameters, where the request is a body; the arm that
+        was sent values, where the address names none.
+    sent : joint values that the arm was sent before; None: none.
     """
 
     title: str

@@ -95,21 +95,22 @@ def event_question(parameters: Mapping[str, str]) -> EventQuestion:
 
 def event_list_answer(events: Sequence[Event], after: int, more: bool) -> dict[str, object]:
     """Return events as listed."""
-    return {"events": [_told(event) for event in events], "after": after, "more": more}
+    return {"events": [event_told(one) for one in events], "after": after, "more": more}
 
 
-def _told(event: Event) -> dict[str, object]:
+def event_told(one: Event) -> dict[str, object]:
+    """Return one event."""
     return {
-        "id": event.id,
-        "change": event.change,
-        "arm": event.arm,
-        "kind": event.kind,
-        "state": event.state,
-        "began_at": time_of(event.began_at),
-        "seen_at": time_of(event.seen_at),
-        "ended_at": None if event.ended_at is None else time_of(event.ended_at),
-        "simulated": event.simulated,
-        **event.document,
+        "id": one.id,
+        "change": one.change,
+        "arm": one.arm,
+        "kind": one.kind,
+        "state": one.state,
+        "began_at": time_of(one.began_at),
+        "seen_at": time_of(one.seen_at),
+        "ended_at": None if one.ended_at is None else time_of(one.ended_at),
+        "simulated": one.simulated,
+        **one.document,
     }
 
 

@@ -67,7 +67,9 @@ class JointsRequest(JointSample):
     source: Text | None = Field(None, description="Who sends; the sender's address if left out.")
     simulated: bool = False
     period_ms: Annotated[float, Field(gt=0.0, le=_LONGEST_PERIOD_MS)] | None = Field(
-        None, description="How often values will come; found from what comes if left out."
+        None,
+        description="How often values will come: after three times as long without one the input "
+        "is stale. Found from what comes if left out, and 50 ms at least then.",
     )
 
 
@@ -81,6 +83,26 @@ JOINTS_PARAMETERS = frozenset(
     }
 )
 BESIDE_JSON = frozenset({"format", "errors", "expect", "tag"})
+
+
+def joints_request(body: object) -> JointsRequest:
+    """Return what a JSON body says.
+
+    Raises
+    ------
+    TooLarge : more samples than one message may have; before any of them is looked at.
+    ValidationError : it is no such request.
+    """
+    samples = body.get("samples") if isinstance(body, dict) else None
+    if isinstance(samples, list) and len(samples) > MOST_TOGETHER:
+        raise TooLarge(
+            f"{len(samples)} samples in one message",
+            where=("samples",),
+            value=len(samples),
+            way_out=f"send at most {MOST_TOGETHER}",
+            status=422,
+        )
+    return JointsRequest.model_validate(body)
 
 
 def samples_of(
@@ -108,14 +130,6 @@ def samples_of(
                 way_out="leave one of them out",
             )
         given = [(("samples", index), one) for index, one in enumerate(asked.samples)]
-    if len(given) > MOST_TOGETHER:
-        raise TooLarge(
-            f"{len(given)} samples in one message",
-            where=("samples",),
-            value=len(given),
-            way_out=f"send at most {MOST_TOGETHER}",
-            status=422,
-        )
     received_s, received_ms = clock.steady_s(), clock.wall_ms()
     return [
         Sample(

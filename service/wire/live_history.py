@@ -36,7 +36,8 @@ HISTORY_SHOWN: tuple[dict[str, Any], ...] = (
     parameter("to", _TIME + "now if left out."),
     parameter(
         "every_ms",
-        "Least time from one sample to the next.",
+        "One sample of each step of so many milliseconds, the last in it, counted back from the "
+        "newest.",
         {"type": "number", "minimum": 0, "maximum": KEPT_S * 1000.0},
     ),
     parameter(

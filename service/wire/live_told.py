@@ -84,6 +84,14 @@ def content(answer: LiveAnswer, asked: SingleQuestion, wanted: Format, stamp: St
     return on_one_level(one_level(answer, asked, stamp), wanted, asked.scale, WIDTHS)
 
 
+def flat_event(answer: LiveAnswer, asked: SingleQuestion, stamp: Stamp, arm: str | None) -> bytes:
+    """Return a live pose on one level as an event's data, with the arm's name if there is one."""
+    told = one_level(answer, asked, stamp)
+    if arm is not None:
+        told["arm"] = arm
+    return on_one_level(told, "flat", asked.scale).body
+
+
 def nested_refusal(
     problem: Problem, arm: Mapping[str, object], standing: Standing
 ) -> dict[str, object]:
@@ -93,6 +101,7 @@ def nested_refusal(
         "code": problem.number,
         "quality": standing.quality,
         "reason": standing.reason,
+        "say": standing.say,
         "change": standing.change,
         "arm": arm,
         "problem": problem.errors[0].problem_of_item(),

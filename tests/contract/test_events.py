@@ -12,8 +12,10 @@ from fastapi import FastAPI
 
 from service.live.samples import Sample
 from service.settings import Settings
+from service.slots import Slot
 from tests.conftest import ServerProcess
 from tests.contract.refusals import refusal
+from tests.contract.test_live_streams import ask, reading
 
 pytestmark = pytest.mark.anyio
 
@@ -178,6 +180,78 @@ async def test_who_waits_is_answered_when_the_service_stops(
     app.state.streams.stop()
     answer = await asyncio.wait_for(waiting, 5)
     assert answer.json()["events"] == []
+
+
+async def test_a_stream_tells_each_change_once_and_goes_on_where_it_was(
+    launch: Launch,
+) -> None:
+    server = launch("--demo")
+    port = server.port
+
+    def fed(elbow: float, sequence: int) -> None:
+        body = {"joints": [0, -90, 90, 0, elbow, 0], "sequence": sequence, "period_ms": 600_000}
+        status, told = ask(port, "PUT", f"/v1/arms/{LOADER}/joints", body)
+        assert (status, told["accepted"]) == (200, True)
+        time.sleep(0.4)
+
+    with reading(port, f"/v1/events/stream?arm={LOADER}&kind=singular") as reader:
+        assert reader.status == 200
+        assert reader.chunk() == b"retry: 2000\n\n"
+        events = reader.events()
+        fed(20, 1)
+        fed(0, 2)
+        begun = next(events)
+        assert (begun["event"], begun["data"]["kind"]) == ("change", "singular")
+        assert (begun["id"], begun["data"]["state"]) == (str(begun["data"]["change"]), "open")
+    fed(20, 3)
+    fed(0, 4)
+    # Left meanwhile: what was missed comes first, in order; the header counts before `after`.
+    path = f"/v1/events/stream?kind=singular&after={begun['id']}"
+    with reading(port, path) as reader:
+        events = reader.events()
+        missed = [next(events)["data"] for _ in range(2)]
+        assert [one["state"] for one in missed] == ["ended", "open"]
+        assert missed[0]["id"] == begun["data"]["id"]
+    with reading(port, path, Last_Event_ID=str(missed[0]["change"])) as reader:
+        assert next(reader.events())["data"] == missed[1]
+    with reading(port, "/v1/events/stream?kind=singular", Last_Event_ID="999999") as reader:
+        # Of another database: all of this one is new.
+        assert next(reader.events())["data"]["change"] == missed[0]["change"]
+        assert server.terminate() < 2.0
+    assert server.errors.read_text("utf-8") == ""
+
+
+@pytest.mark.parametrize(
+    ("query", "code"),
+    [
+        ("after=999999", "unusable-value"),
+        ("wait=1", "unknown-field"),
+        ("page_size=1", "unknown-field"),
+        ("kind=late", "unusable-value"),
+        ("arm=nobody", "unknown-arm"),
+    ],
+)
+async def test_a_stream_that_cannot_be_is_refused(
+    client: httpx.AsyncClient, query: str, code: str
+) -> None:
+    refusal(await client.get(f"/v1/events/stream?{query}"), code, 422 if "arm" in query else None)
+
+
+async def test_who_has_left_is_not_waited_for(app: FastAPI, client: httpx.AsyncClient) -> None:
+    """Else some hundred who are impatient would keep all others out."""
+    server = app.state.streams
+    left = asyncio.Event()
+
+    async def receive() -> dict[str, Any]:
+        await left.wait()
+        return {"type": "http.disconnect"}
+
+    waiting = asyncio.create_task(server.wait(Slot(), 60.0, receive))
+    await asyncio.sleep(0.01)
+    assert len(server.waiting) == 1
+    left.set()
+    assert await asyncio.wait_for(waiting, 5) is False
+    assert len(server.waiting) == 0
 
 
 async def test_a_removed_arm_leaves_its_events_and_none_open(

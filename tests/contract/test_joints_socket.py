@@ -2,6 +2,8 @@
 
 import asyncio
 import json
+from collections.abc import Callable
+from contextlib import suppress
 from typing import Any
 
 import pytest
@@ -36,6 +38,22 @@ async def closed(socket: ClientConnection) -> tuple[int, str]:
         frame = ended.rcvd
     assert frame is not None
     return frame.code, frame.reason
+
+
+async def test_rubbish_from_who_has_left_is_no_failure(
+    launch: Callable[..., ServerProcess],
+) -> None:
+    server = launch()
+    with_arm(server, "gone")
+    for number in range(10):
+        async with connect(address(server, "gone")) as socket:
+            for _ in range(40):
+                with suppress(ConnectionClosed):
+                    await socket.send("{rubbish")
+            if number % 2:
+                socket.transport.abort()
+    server.terminate()
+    assert server.errors.read_text("utf-8") == ""
 
 
 async def test_values_stand_and_are_told_of_in_few_words(server: ServerProcess) -> None:

@@ -209,6 +209,13 @@ async def test_bad_bodies_say_where(
     assert (await two.get(LIVE)).status_code == 409
 
 
+async def test_too_many_together_are_not_looked_at(two: httpx.AsyncClient) -> None:
+    """A refusal of each would take a tenth of a second, and be longer than the message."""
+    answer = await two.put(JOINTS, json={"samples": [{"joints": "rubbish"}] * 1001})
+    told = assert_refusal(answer, "too-large")
+    assert (answer.status_code, told["errors"][0]["pointer"]) == (422, "/samples")
+
+
 async def test_other_refusals(two: httpx.AsyncClient) -> None:
     assert_refusal(await two.put("/v1/arms/none/joints", json={"joints": [1, 2]}), "unknown-arm")
     answer = await two.put(JOINTS, params={"expect": "00000000"}, json={"joints": [1, 2]})
@@ -395,6 +402,8 @@ async def test_history_in_columns_and_lines(two: httpx.AsyncClient) -> None:
     assert set(found["sequence"]) >= {94}
     empty = await two.get(f"{LIVE}/history", params={"to": "0", "format": "csv"})
     assert empty.text.count("\r\n") == 1
+    finest = (await two.get(f"{LIVE}/history", params={"every_ms": "1e-320"})).json()
+    assert finest["sequence"] == list(range(100))
     for bad in ({"limit": "0"}, {"every_ms": "-1"}, {"format": "txt"}, {"from": "x"}):
         assert (await two.get(f"{LIVE}/history", params=bad)).status_code in (400, 422)
     quaternion = {"format": "csv", "form": "quaternion-wxyz"}
@@ -434,10 +443,13 @@ async def test_a_new_revision_moves_the_pose(two: httpx.AsyncClient) -> None:
 async def test_an_arm_that_is_removed(two: httpx.AsyncClient, app: FastAPI) -> None:
     await put(two, 0, 0)
     tag = (await two.get("/v1/arms/two")).headers["etag"]
+    known = (await two.get("/v1/live")).headers["etag"]
     await two.delete("/v1/arms/two", headers={"if-match": tag})
     assert_refusal(await two.get(LIVE), "unknown-arm")
     await asyncio.sleep(0.7)
     assert app.state.live.names() == []
+    none = await two.get("/v1/live", headers={"if-none-match": known})
+    assert (none.status_code, none.json()) == (200, {"arms": []})
 
 
 async def test_an_arm_without_joints(client: httpx.AsyncClient) -> None:

@@ -167,6 +167,13 @@ def test_all_arms_in_one_stream(server: ServerProcess) -> None:
         told = [next(events) for _ in range(2)]
         assert [one["data"]["arm"]["name"] for one in told] == ["all-a", "all-b"]
         assert [int(one["id"]) for one in told] == changes
+    with reading(port, f"/v1/live/stream?after={before}&format=flat") as reader:
+        events = reader.events()
+        flat = {data["arm"]: data for data in (next(events)["data"] for _ in range(2))}
+        assert flat.keys() == {"all-a", "all-b"}
+        assert [flat[name]["seq"] for name in ("all-a", "all-b")] == changes
+    with reading(port, "/v1/arms/all-a/live/stream?format=flat") as reader:
+        assert "arm" not in next(reader.events())["data"]
 
 
 def test_what_cannot_be_told_is_refused_before_or_is_an_event(server: ServerProcess) -> None:

@@ -14,8 +14,10 @@ import pytest
 from fastapi import FastAPI
 
 from service.app import create_app
+from service.errors import NoLivePose
 from service.live.samples import Sample
 from service.settings import Settings
+from service.wire.records import RecordRequest
 from tests.conftest import ServerProcess
 from tests.contract.refusals import refusal, sent
 
@@ -183,6 +185,27 @@ async def test_a_long_table_is_sent_in_parts_and_whole(client: httpx.AsyncClient
     lines = answer.text.split("\r\n")
     assert [line[:20] for line in lines[1:-2]] == [f"{number:020x}" for number in range(1200)]
     assert lines[-2].startswith(first["id"])
+
+
+async def test_a_table_has_no_line_wider_than_its_head(
+    client: httpx.AsyncClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Another is kept while the table is read: an arm of more joints than all before."""
+    await kept(client, "/v1/arms/pallet-stacker/records", joints=[0] * 4, form="xyz-fixed")
+    desk = client._transport.app.state.records  # type: ignore[attr-defined]
+    oldest, more = desk.oldest, []
+
+    def read_late(*which: Any) -> Any:
+        question = RecordRequest.model_validate({"joints": POSTURE, "tool": "flange"})
+        missing = NoLivePose("not asked for")
+        more.append(desk.create("housing-loader", question, missing, None, b""))
+        return oldest(*which)
+
+    monkeypatch.setattr(desk, "oldest", read_late)
+    lines = (await client.get("/v1/records?format=csv")).text.split("\r\n")
+    assert more
+    assert len(lines) == 3
+    assert "q5" not in lines[0]
 
 
 @pytest.mark.parametrize(

@@ -142,6 +142,23 @@ async def test_a_service_that_is_away_for_a_while_is_asked_again(
     assert 10 < int(last.split()[1]) < 20
 
 
+async def test_times_are_those_it_moves_by_however_late_it_wakes(app: FastAPI) -> None:
+    """With times of its own waking, an arm would seem to move faster than it can."""
+    times: list[float] = []
+
+    class HeldUp(Answers):
+        async def handle_async_request(self, request: httpx.Request) -> httpx.Response:
+            if request.method == "PUT":
+                times.extend(one["sampled_ms"] for one in json.loads(request.content)["samples"])
+                time.sleep(0.03)
+            return await super().handle_async_request(request)
+
+    asked = Simulation(HERE, arms=("wash-arm",), rate_hz=50.0, duration_s=0.4)
+    assert await simulate(asked, io.StringIO(), transport=HeldUp(app)) == 0
+    since = [one - times[0] for one in times]
+    assert since == pytest.approx([20.0 * number for number in range(20)], abs=0.01)
+
+
 @pytest.mark.parametrize("answer", [httpx.Response(403, text="no"), httpx.Response(403, json=[1])])
 async def test_something_else_than_this_service_ends_it(
     app: FastAPI, answer: httpx.Response

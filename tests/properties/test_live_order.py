@@ -65,6 +65,7 @@ def test_what_stands_was_accepted_last_and_time_goes_forward(arrivals: list[Any]
             assert taken.dropped == "superseded"
         if not one["simulated"] and not real:
             real, accepted = True, []
+            counts.clear()
         counts["good" if taken.accepted else taken.dropped or taken.doubted] += 1
         assert taken.dropped in ("", *DROPS)
         assert taken.doubted in ("", *REASONS)

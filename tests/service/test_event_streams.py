@@ -1,18 +1,24 @@
 """Event streams without a network: what is held, who is cut off, how many there are."""
 
 import asyncio
+import socket
 from collections.abc import AsyncIterator, Callable
-from contextlib import asynccontextmanager
+from contextlib import asynccontextmanager, suppress
 from typing import Any
 
 import pytest
+import uvicorn
 
 from service import event_streams
 from service.errors import NotAvailable
 from service.event_streams import EventStream, EventStreams, event, last_event_id
+from service.http_line import FixedLengthH11
 from service.slots import Slot
 
 pytestmark = pytest.mark.anyio
+
+
+_ASKING = b"GET / HTTP/1.1\r\nHost: x\r\n\r\n"
 
 
 class Connection:
@@ -83,6 +89,40 @@ async def stream(
     await asyncio.wait_for(running, 5)
     assert source.slots == []
     assert answer not in streams.open
+
+
+@asynccontextmanager
+async def served(app: Any) -> AsyncIterator[int]:
+    """Serve an app on a free port, on this loop and as the service does."""
+    config = uvicorn.Config(app, http=FixedLengthH11, lifespan="off", log_config=None)
+    server = uvicorn.Server(config)
+    listener = socket.create_server(("127.0.0.1", 0))
+    serving = asyncio.create_task(server.serve([listener]))
+    yield listener.getsockname()[1]
+    server.should_exit = True
+    await asyncio.wait_for(serving, 10)
+
+
+async def until(enough: Callable[[], bool]) -> None:
+    async with asyncio.timeout(10):
+        while not enough():
+            await asyncio.sleep(0.005)
+
+
+def rest_of(lazy: socket.socket) -> int:
+    """Return how many bytes can still be read of a socket until its end."""
+    lazy.settimeout(5)
+    count = 0
+    with suppress(ConnectionError):
+        while content := lazy.recv(65536):
+            count += len(content)
+    return count
+
+
+async def stays() -> dict[str, Any]:
+    """Receive nothing: the asker waits for its answer."""
+    await asyncio.Event().wait()
+    raise AssertionError
 
 
 async def settled() -> None:
@@ -161,13 +201,76 @@ async def test_who_takes_nothing_is_cut_off_and_a_quiet_one_kept_alive() -> None
         reader.left.set()
 
 
+async def test_a_socket_that_is_read_no_more_is_cut_and_costs_others_nothing(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Over the network as it is: its buffers fill, and only then nothing is taken any more."""
+    monkeypatch.setattr(event_streams, "_BLOCKED_S", 0.5)
+    monkeypatch.setattr(event_streams, "_SWEEP_S", 0.05)
+    streams, source = EventStreams(), Source()
+
+    async def app(scope: Any, receive: Any, send: Any) -> None:
+        await EventStream(streams, source)(scope, receive, send)
+
+    async with served(app) as port:
+        with socket.socket() as lazy:
+            # Before it is connected: what the other side may send is agreed on then.
+            lazy.setsockopt(socket.SOL_SOCKET, socket.SO_RCVBUF, 4096)
+            lazy.setblocking(False)
+            await asyncio.get_running_loop().sock_connect(lazy, ("127.0.0.1", port))
+            lazy.sendall(_ASKING)
+            reader, writer = await asyncio.open_connection("127.0.0.1", port)
+            writer.write(_ASKING)
+            await until(lambda: len(streams.open) == 2)
+            (mine,) = [one for one in source.slots if one is not source.slots[0]]
+            for number in range(1000):
+                source.tell(b"event: %d\n%b\n\n" % (number, b"x" * 8000))
+                await asyncio.wait_for(reader.readuntil(b"event: %d\n" % number), 5)
+                if len(streams.open) == 1:
+                    break
+                await asyncio.sleep(0.01)
+            # Cut after it had taken nothing for a while; a few events had found room on the way.
+            assert number < 999
+            assert source.slots == [mine]
+            # What it had yet to read is little, and then comes the end.
+            held = await asyncio.get_running_loop().run_in_executor(None, rest_of, lazy)
+            assert held < 4 * event_streams._BUFFER_BYTES
+            writer.close()
+
+
+async def test_a_reader_who_left_before_it_began_is_no_failure() -> None:
+    class Closed(Connection):
+        def get_extra_info(self, name: str) -> Any:
+            return closed
+
+    closed = socket.socket()
+    closed.close()
+    streams, source = EventStreams(), Source()
+    reader = Reader()
+    reader.connection = Closed()
+    reader.left.set()
+    scope = {"type": "http", "state": {"connection": reader.connection}}
+    await asyncio.wait_for(EventStream(streams, source)(scope, reader.receive, reader.send), 5)
+    assert streams.open == set()
+
+
+async def test_a_source_that_fails_leaves_no_stream() -> None:
+    def fail(slot: Slot) -> Callable[[], None]:
+        raise RuntimeError
+
+    streams, reader = EventStreams(), Reader()
+    with pytest.raises(RuntimeError):
+        await EventStream(streams, fail)({"type": "http"}, reader.receive, reader.send)
+    assert streams.open == set()
+
+
 async def test_a_stop_ends_all_of_them_the_full_ones_too() -> None:
     streams, source = EventStreams(), Source()
     async with stream(streams, source) as (reader, _), stream(streams, source) as (full, _):
         full.connection.free.clear()
         source.tell(b"x")
         await asyncio.sleep(0.02)
-        waiting = asyncio.create_task(streams.wait(Slot(), 20.0))
+        waiting = asyncio.create_task(streams.wait(Slot(), 20.0, stays))
         await settled()
         streams.stop()
         assert await waiting is False
@@ -176,14 +279,14 @@ async def test_a_stop_ends_all_of_them_the_full_ones_too() -> None:
     async with stream(streams, source) as (late, _):
         pass
     assert late.is_over
-    assert await streams.wait(Slot(), 20.0) is False
+    assert await streams.wait(Slot(), 20.0, stays) is False
 
 
 async def test_waiting_for_a_change() -> None:
     streams, slot = EventStreams(), Slot()
-    assert await streams.wait(slot, 0.01) is False
+    assert await streams.wait(slot, 0.01, stays) is False
     slot.put("", bytes)
-    assert await streams.wait(slot, 20.0) is True
+    assert await streams.wait(slot, 20.0, stays) is True
     assert streams.waiting == set()
 
 

@@ -129,6 +129,29 @@ def test_a_bounded_number_waits(log: EventLog, store: Store, monkeypatch: Any) -
     assert kept == ["open", *map(str, range(91, 100))]
 
 
+def test_a_bounded_number_waits_also_while_it_is_tried_again(
+    log: EventLog, store: Store, monkeypatch: Any
+) -> None:
+    monkeypatch.setattr(log_module, "MOST_WAITING", 10)
+    store.is_away = True
+    for number in range(100):
+        log.put(event(str(number), ENDED))
+        time.sleep(0.003)
+    log.stop()
+    assert len(log._waiting) <= 10
+    assert "99" in log._waiting
+
+
+def test_a_trim_that_fails_ends_no_thread(log: EventLog, store: Store, monkeypatch: Any) -> None:
+    def fail(most: int, before: datetime) -> int:
+        raise RuntimeError("nobody foresaw this")
+
+    monkeypatch.setattr(store, "trim", fail)
+    for name in ("a", "b"):
+        log.put(event(name))
+        until(lambda name=name: any(one[-1].id == name for one in store.writings))
+
+
 def test_a_failure_nobody_foresaw_ends_no_thread(log: EventLog, store: Store) -> None:
     store.fails = True
     log.put(event("a"))

@@ -74,6 +74,15 @@ def test_who_knows_the_newest_is_told_the_next() -> None:
     assert slot.is_filled
 
 
+def test_who_knows_what_never_was_is_told_how_it_stands() -> None:
+    """Numbers of a former process may be higher: its clock was set, or it was fed for long."""
+    bench, told = Bench(), Told()
+    channels = Channels(bench.arms)
+    change = bench.feed(0, 0).standing.change
+    slot, _ = listening(channels, "two", "a", told, change + 1)
+    assert slot.taken() == b"%d;" % change
+
+
 def test_of_all_arms_the_newest_of_each() -> None:
     bench, told = Bench(), Told()
     channels = Channels(bench.arms)

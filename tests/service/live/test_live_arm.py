@@ -148,8 +148,43 @@ def test_silence_is_told_after_three_periods(bench: Bench) -> None:
     assert seen == ["stale"]
     assert bench.live.standing.sample.sequence == 4
     assert bench.live.age_s(bench.clock.steady) == pytest.approx(10.31)
+    assert bench.live.standing.say == "joint values have stopped: no new ones came for 0.3 s"
     bench.feed(0, 0, sequence=5)
     assert bench.live.standing.quality == "good"
+
+
+@pytest.mark.parametrize("has_times", [True, False])
+def test_an_input_that_repeats_its_last_value_has_stopped(bench: Bench, has_times: bool) -> None:
+    """A gateway goes on asking a controller that shows the same for ever."""
+    for number in range(5):
+        bench.clock.go_on(0.1)
+        last = {"sequence": number, "sampled_ms": bench.clock.wall if has_times else None}
+        bench.feed(number, 0, **last)
+    told: list[str] = []
+    bench.arms.observers.append(lambda notice: told.append(notice.standing.reason))
+    for _ in range(100):
+        bench.clock.go_on(0.1)
+        taken = bench.feed(4, 0, **last)
+        # After ten seconds its time alone is doubted.
+        assert (taken.dropped, taken.doubted) in (("repeated", ""), ("", "time-too-old"))
+    assert told[0] == "stale"
+    assert "" not in told
+    assert bench.live.standing.quality != "good"
+    # A new value makes it good at once.
+    assert bench.feed(5, 0, sequence=5).accepted
+
+
+def test_what_comes_twice_each_time_is_no_faster_input(bench: Bench) -> None:
+    """Two network cards, or a sender that asks again too soon."""
+    told: list[str] = []
+    bench.arms.observers.append(lambda notice: told.append(notice.kind))
+    for number in range(20):
+        for _ in range(2):
+            bench.feed(0, 0, sequence=number)
+            bench.clock.go_on(0.001)
+        bench.clock.go_on(0.098)
+    assert set(told) == {"good"}
+    assert bench.live.period.seconds == pytest.approx(0.1)
 
 
 def test_a_source_that_becomes_slower_is_stale_a_few_times_and_then_not(bench: Bench) -> None:
@@ -165,6 +200,35 @@ def test_a_source_that_becomes_slower_is_stale_a_few_times_and_then_not(bench: B
         bench.clock.go_on(1.0)
     assert 1 <= len(stale) <= 5
     assert bench.live.period.seconds == pytest.approx(1.0)
+
+
+def test_a_service_that_was_held_up_reads_what_is_there_first(bench: Bench) -> None:
+    """Timers are late then, and what came is still to be read."""
+    for number in range(9):
+        bench.feed(number / 100, 0)
+        bench.clock.go_on(0.01)
+    told: list[str] = []
+    bench.arms.observers.append(lambda notice: told.append(notice.kind))
+    bench.clock.steady += 0.2
+    bench.clock.go_on(0.001)
+    bench.feed(0.1, 0)
+    bench.clock.go_on(0.045)
+    assert told == ["good"]
+    # Once: who is held up again and again still tells of silence.
+    for _ in range(2):
+        bench.clock.steady += 0.2
+        bench.clock.go_on(0.001)
+    assert told == ["good", "stale"]
+
+
+def test_who_says_a_hundred_a_second_is_silent_after_three(bench: Bench) -> None:
+    for number in range(9):
+        bench.feed(number / 100, 0, period_s=0.01)
+        bench.clock.go_on(0.01)
+    bench.clock.go_on(0.019)
+    assert bench.live.standing.quality == "good"
+    bench.clock.go_on(0.002)
+    assert bench.live.standing.reason == "stale"
 
 
 def test_a_declared_period_counts(bench: Bench) -> None:
@@ -280,6 +344,7 @@ def test_a_real_input_ends_a_simulated_one_for_good(bench: Bench) -> None:
     assert bench.live.standing.sample.simulated
     assert bench.feed(90, 0, sequence=1).accepted  # no jump: nothing moved there
     assert not bench.live.standing.sample.simulated
+    assert bench.live.counts == {"good": 1}  # of the real ones alone
     bench.clock.go_on(60.0)
     assert bench.feed(0, 0, simulated=True, source="simulation").dropped == "superseded"
     assert bench.live.standing.reason == "stale"
@@ -302,6 +367,39 @@ def test_a_new_revision_is_told_and_judges_what_comes(bench: Bench) -> None:
     assert bench.feed(100, 0).doubted == "outside-travel"
     assert kinds == ["good", "revision", "uncertain"]
     assert bench.live.standing.stored.record.revision == 2
+
+
+def test_a_revision_that_was_looked_up_too_early_changes_nothing(bench: Bench) -> None:
+    before = bench.stored
+    bench.feed(100, 0)
+    bench.stored = stored({**ARM, "rows": ARM["rows"][:1]}, revision=2)
+    bench.feed(100)
+    change = bench.arms.change
+    assert bench.arms.newer(before) is bench.arms.newer(bench.stored) is bench.stored
+    bench.arms.of(before)
+    assert (bench.arms.change, bench.live.standing.stored) == (change, bench.stored)
+    unknown = stored({**ARM, "name": "other"})
+    assert bench.arms.newer(unknown) is unknown
+
+
+def test_nothing_makes_no_live_arm_and_one_less_is_a_change(bench: Bench) -> None:
+    assert bench.arms.feed(bench.stored, []) == []
+    assert bench.arms.names() == []
+    bench.feed(0, 0)
+    change = bench.arms.change
+    bench.arms.forget("two")
+    assert bench.arms.change > change
+
+
+def test_a_clock_that_is_set_shows_no_speed(bench: Bench) -> None:
+    for number in range(30):
+        bench.clock.go_on(0.1)
+        ahead = 3_600_000.0 if number >= 10 else 0.0
+        bench.feed(number, 0, sampled_ms=bench.clock.wall + ahead)
+        rates = bench.live.rates()
+        assert rates is None or rates[0] == pytest.approx(0.1745, rel=0.01)
+    assert bench.live.standing.quality == "good"
+    assert rates is not None
 
 
 def test_another_count_of_joints_forgets_what_came(bench: Bench) -> None:

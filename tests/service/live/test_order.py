@@ -33,8 +33,30 @@ def test_the_last_of_them(seen: list[tuple[int | None, float | None]], told: str
     assert [order.dropped(*one) for one in seen][-1] == told
 
 
-def test_what_is_forgotten_is_no_measure() -> None:
+@pytest.mark.parametrize("first", [(1, 1.0), (100, 1.0), (1, 100.0), (None, None)])
+def test_what_begins_anew_is_newer_than_all_before(
+    first: tuple[int | None, float | None],
+) -> None:
     order = Order()
     order.dropped(100, 100.0)
-    order.forget()
-    assert order.dropped(1, 1.0) == ""
+    order.begin_anew()
+    assert order.dropped(*first) == ""
+
+
+@pytest.mark.parametrize("said", [(7, None), (7, 1.5), (None, 1.5)])
+def test_the_same_once_more_begins_nothing(said: tuple[int | None, float | None]) -> None:
+    order = Order()
+    order.dropped(*said)
+    order.begin_anew()
+    assert [order.dropped(*said) for _ in range(3)] == ["repeated"] * 3
+    assert order.dropped(3, 0.5) == ""
+    # From there on it is an order as any.
+    assert order.dropped(3, 0.5) == "repeated"
+    assert order.dropped(2, 0.25) == "out-of-order"
+
+
+def test_who_says_neither_count_nor_time_may_repeat_himself() -> None:
+    order = Order()
+    order.dropped(None, None)
+    order.begin_anew()
+    assert order.dropped(None, None) == ""

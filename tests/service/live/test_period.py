@@ -35,5 +35,9 @@ def test_what_is_declared_counts_as_long_as_it_is() -> None:
     period = period_of(*[0.1] * 9)
     period.arrived(100.0, 5.0)
     assert (period.seconds, period.stale_after_s) == (5.0, 15.0)
+    period.arrived(100.0, 0.01)
+    assert period.stale_after_s == pytest.approx(0.03)
+    period.arrived(100.0, 0.001)
+    assert period.stale_after_s == 0.01
     period.arrived(100.1)
     assert period.seconds == pytest.approx(0.1)
