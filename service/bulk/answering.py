@@ -11,10 +11,9 @@ from starlette.requests import Request
 from starlette.responses import Response
 
 from service.bulk.process import WorkerProcess
-from service.bulk.reading import Key, many_of_body, many_of_table, model_of
+from service.bulk.reading import Key, bare_poses_of, many_of_body, many_of_table, model_of
 from service.bulk.rendering import RENDERINGS, InPieces, Rendering, Stamp, WorkedOut
 from service.bulk.threads import Threads
-from service.bulk.worker import BodyRead
 from service.problems import Problem
 from service.wire.answers import FreshAnswer, PartsAnswer, json_problem
 from service.wire.body import media_type_of, parse_json, read_bytes
@@ -33,7 +32,7 @@ SHORT_BYTES = 64 * 1024
 _TINY_BYTES, _FEW = 4096, 4
 # So few that to copy them into one costs less than to send them one by one.
 _FEW_PARTS = 4
-# Parsing holds the interpreter: beyond this size for longer than others should wait.
+# Parsing as a whole holds the interpreter: beyond this size for longer than others should wait.
 LONG_BYTES = 2_000_000
 
 
@@ -75,15 +74,15 @@ async def answer_many(request: Request, key: Key) -> Response:
         many = await bulk.threads.run(read)
         return await in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
     if len(raw) > LONG_BYTES:
+        bare = await bulk.threads.run(partial(bare_poses_of, raw, key, wanted))
+        if bare is not None:
+            request.state.json_body = bare.document
+            read = partial(many_of_body, arms, key, bare.asked, wanted, bare.table)
+            many = await bulk.threads.run(read)
+            return await in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
         worked_out = await bulk.worker.answer(arms, raw, key, wanted, stamp)
         if isinstance(worked_out, Problem):
             return json_problem(worked_out, request.state.request_id)
-        if isinstance(worked_out, BodyRead):
-            request.state.json_body = worked_out.document
-            asked = model_of(key, worked_out.document)
-            read = partial(many_of_body, arms, key, asked, wanted, worked_out.table)
-            many = await bulk.threads.run(read)
-            return await in_pieces(bulk.threads, RENDERINGS[wanted](many, stamp))
         return answer_of(worked_out)
     return await _of_body(request, raw, key, wanted, stamp)
 

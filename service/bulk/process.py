@@ -29,7 +29,7 @@ from service.wire.cells import CellAt
 from service.wire.formats import Format
 
 Result = TypeVar("Result")
-Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem | worker.BodyRead]]
+Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem]]
 
 
 class WorkerProcess:
@@ -42,8 +42,8 @@ class WorkerProcess:
 
     async def answer(
         self, arms: Arms[ReadArm], raw: bytes, key: Key, wanted: Format, stamp: Stamp
-    ) -> WorkedOut | Problem | worker.BodyRead:
-        """Return the answer to a JSON body, or why it is refused, or the body read.
+    ) -> WorkedOut | Problem:
+        """Return the answer to a JSON body, or why it is refused.
 
         Raises
         ------
@@ -63,11 +63,9 @@ class WorkerProcess:
         async def begun(pool: ProcessPoolExecutor) -> Outline | Problem:
             return await _asked(pool, worker.begin_conversions, raw, wanted, stamp)
 
-        answer = await self._in_turn(begun)
-        assert not isinstance(answer, worker.BodyRead)
-        return answer
+        return await self._in_turn(begun)
 
-    async def _in_turn(self, begin: Begin) -> WorkedOut | Problem | worker.BodyRead:
+    async def _in_turn(self, begin: Begin) -> WorkedOut | Problem:
         async with self._turn:
             try:
                 return await self._answer(begin)
@@ -87,7 +85,7 @@ class WorkerProcess:
             self._process.kill()
         self._pool = self._process = None
 
-    async def _answer(self, begin: Begin) -> WorkedOut | Problem | worker.BodyRead:
+    async def _answer(self, begin: Begin) -> WorkedOut | Problem:
         pool = self._started()
         try:
             begun = await begin(pool)
@@ -125,7 +123,7 @@ async def _begun(
     wanted: Format,
     stamp: Stamp,
     pool: ProcessPoolExecutor,
-) -> Outline | Problem | worker.BodyRead:
+) -> Outline | Problem:
     """Have a body about postures read, and the stored arm and cell that it names."""
     begun = await _asked(pool, worker.begin, raw, key, wanted, stamp)
     if isinstance(begun, worker.ArmWanted):

@@ -5,9 +5,10 @@ Left out: answering.
 
 from collections.abc import Callable, Mapping
 from functools import partial
-from typing import Literal
+from typing import Any, Literal, NamedTuple
 
 import numpy as np
+from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError, WrongJointCount
 from kinematics.table import FloatArray
@@ -37,6 +38,7 @@ from service.wire.formats import (
     table_question,
     table_singularity,
 )
+from service.wire.large_json import cut_apart
 from service.wire.models import JacobiansRequest, PosesRequest
 from service.wire.npy import read_npy
 from service.wire.poses import checked_form
@@ -54,6 +56,34 @@ def model_of(key: Key, body: object) -> PosesRequest:
     pydantic.ValidationError
     """
     return (PosesRequest if key == "poses" else JacobiansRequest).model_validate(body)
+
+
+class BarePoses(NamedTuple):
+    """A JSON body that asks for poses and no more: itself without its joint vectors, and these."""
+
+    document: dict[str, Any]
+    asked: PosesRequest
+    table: FloatArray
+
+
+def bare_poses_of(raw: bytes, key: Key, wanted: Format) -> BarePoses | None:
+    """Return a long body whose answer is made of arrays; None if it is odd, or asks for more.
+
+    Reading the table is the long part. It is read in pieces of less than a millisecond, each
+    forgotten before the next, so it need not leave the process: to be sent to another one and back
+    would take longer.
+    """
+    cut = cut_apart(raw) if key == "poses" else None
+    if cut is None:
+        return None
+    try:
+        asked = PosesRequest.model_validate(cut.document)
+    except ValidationError:  # to be told where the whole is read
+        return None
+    if asked.links or (asked.singularity and wanted != "npy"):
+        return None
+    table = cut.table()
+    return None if table is None else BarePoses(cut.document, asked, table)
 
 
 def many_of_body(

@@ -16,7 +16,6 @@ from typing import Any, cast
 from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError
-from kinematics.table import FloatArray
 from service.bulk import conversion_rendering
 from service.bulk.conversion_reading import VALUES, conversions_of_body
 from service.bulk.reading import Key, many_of_body, model_of
@@ -40,17 +39,6 @@ class ArmWanted:
 
     name: str | ArmRevision | None
     cell: str | None = None
-
-
-@dataclass(frozen=True)
-class BodyRead:
-    """A body whose parsing was the long part of it: its joint vectors apart from all else.
-
-    The answer is made of arrays in pieces of a millisecond; to hand it over would take longer.
-    """
-
-    document: object
-    table: FloatArray
 
 
 @dataclass(frozen=True)
@@ -118,9 +106,7 @@ def identity() -> int:
     return os.getpid()
 
 
-def begin(
-    raw: bytes, key: Key, wanted: Format, stamp: Stamp
-) -> Problem | ArmWanted | BodyRead | Outline:
+def begin(raw: bytes, key: Key, wanted: Format, stamp: Stamp) -> Problem | ArmWanted | Outline:
     """Parse a body; the first step, and the only one where the rest is quick work."""
     forget()
     body: object = ...
@@ -128,9 +114,6 @@ def begin(
         large = parse_large_json(raw)
         body = large.document
         asked = model_of(key, body)
-        judged = asked.singularity and wanted != "npy"
-        if large.table is not None and key == "poses" and not judged and not asked.links:
-            return BodyRead(large.document, large.table)
         _kept["begun"] = _Begun(key, wanted, stamp, large, asked)
         if isinstance(asked.arm, str | ArmRevision):
             return ArmWanted(asked.arm)

@@ -13,7 +13,13 @@ from kinematics.frames import FrameGraph, Ways
 from kinematics.table import FloatArray
 from kinematics.tolerances import LOCK_NOTICE, LOOP_CLOSED
 from kinematics.travel_limits import travel_findings
-from service.convert import UNITS, Units, finding_out, pose_orientations_out
+from service.convert import (
+    UNITS,
+    Units,
+    computed_finding_out,
+    finding_out,
+    pose_orientations_out,
+)
 from service.errors import MissingField, ServiceError, UnusableValue
 from service.operations.arms import Arms
 from service.operations.cells import Cells
@@ -149,7 +155,7 @@ def loops_answer(
         "off by {measure}"
     )
     finding = Finding(FINE, "loops-open", say, float(measure[worst]), LOOP_CLOSED, unit)
-    return answers, [finding_out(units, finding)]
+    return answers, [computed_finding_out(units, finding)]
 
 
 def _meant(arms: Arms[ReadArm], entry: ArmAt, number: int) -> MeantArm:

@@ -4,6 +4,7 @@ Left out: what is answered (operations).
 """
 
 from fastapi import APIRouter
+from pydantic import ValidationError
 from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
@@ -53,26 +54,40 @@ async def frames(request: Request) -> Response:
     """Answer relations between frames."""
     known_parameters(request, ())
     raw = await read_bytes(request, JSON, most=_MOST_BYTES)
-    arms, cells = request.app.state.arms, request.app.state.cells
+    if len(raw) <= SHORT_BYTES:
+        body = FramesBody(raw)
+        # What looks at nothing far away is answered sooner than a thread would begin.
+        if _is_quick(request, body):
+            return _answered(request, body)
+        return await run_in_threadpool(_answered, request, body)
     bulk: Bulk = request.app.state.bulk
 
     def answer() -> Response:
-        body = FramesBody(raw)
-        try:
-            return json_answer(frames_answer(arms, cells, body, bulk.threads.refuse_if_stopping))
-        except Exception:
-            request.state.json_body = body.document
-            raise
+        return _answered(request, FramesBody(raw))
 
     # With an escape in it, it may be called by any name.
-    may_estimate = b"\\" in raw or b'"estimate"' in raw
-    if len(raw) > SHORT_BYTES:
-        if may_estimate:
-            return await bulk.estimates.run(answer, most=_MOST_ESTIMATES)
-        return await bulk.threads.run(answer)
-    # What is short and looks at nothing far away is answered sooner than a thread would begin.
-    at_once = arms.answers_at_once and cells.answers_at_once
-    names_stored = b'"arms"' in raw or b'"cell"' in raw
-    if may_estimate or (names_stored and not at_once):
-        return await run_in_threadpool(answer)
-    return answer()
+    if b"\\" in raw or b'"estimate"' in raw:
+        return await bulk.estimates.run(answer, most=_MOST_ESTIMATES)
+    return await bulk.threads.run(answer)
+
+
+def _is_quick(request: Request, body: FramesBody) -> bool:
+    try:
+        asked = body.asked
+    except ValidationError:  # which is told where the answer would be
+        return True
+    if asked.estimate:
+        return False
+    arms, cells = request.app.state.arms, request.app.state.cells
+    names_stored = bool(asked.arms) or asked.cell is not None
+    return not names_stored or (arms.answers_at_once and cells.answers_at_once)
+
+
+def _answered(request: Request, body: FramesBody) -> Response:
+    state = request.app.state
+    try:
+        between = state.bulk.threads.refuse_if_stopping
+        return json_answer(frames_answer(state.arms, state.cells, body, between))
+    except Exception:
+        request.state.json_body = body.document
+        raise

@@ -10,6 +10,7 @@ from contextlib import suppress
 from dataclasses import dataclass
 from itertools import chain
 from math import prod
+from typing import Any
 
 import numpy as np
 import orjson
@@ -37,6 +38,20 @@ class LargeBody:
     table: FloatArray | None
 
 
+@dataclass(frozen=True)
+class CutBody:
+    """``document`` but for its table, which stands in ``raw`` from ``begin`` to ``end``."""
+
+    document: dict[str, Any]
+    raw: bytes
+    begin: int
+    end: int
+
+    def table(self, deepest: int = 2) -> FloatArray | None:
+        """Return the table; None if there is more in it than numbers, or rows differ."""
+        return _array(self.raw, self.begin, self.end, deepest)
+
+
 def parse_large_json(raw: bytes, field: str = JOINTS, deepest: int = 2) -> LargeBody:
     """Return what ``raw`` says, as ``parse_json`` does, the long table as an array if possible.
 
@@ -55,16 +70,35 @@ def parse_large_json(raw: bytes, field: str = JOINTS, deepest: int = 2) -> Large
     >>> body.document, body.table.tolist()
     ({'arm': 'x', 'joints': []}, [[1.0, 2.0], [3.0, 4.5]])
     """
+    cut = cut_apart(raw, field)
+    table = None if cut is None else cut.table(deepest)
+    if cut is None or table is None:
+        return LargeBody(parse_json(raw), None)
+    return LargeBody(cut.document, table)
+
+
+def cut_apart(raw: bytes, field: str = JOINTS) -> CutBody | None:
+    """Return ``raw`` with the rest parsed and the table not yet; None if it cannot be so cut.
+
+    Raises
+    ------
+    DuplicateKey : in the rest.
+
+    Examples
+    --------
+    >>> cut_apart(b'{"arm": "x", "joints": [[1, 2]]}').document
+    {'arm': 'x', 'joints': []}
+    """
     span = _span(raw, field)
-    table = None if span is None else _array(raw, *span, deepest)
-    if span is not None and table is not None:
-        # What is wrong with the rest is told by its place in the whole.
-        with suppress(Unparseable):
-            document = parse_json(raw[: span[0]] + _MARK + raw[span[1] :])
-            # Elsewhere it would be in the middle of a text, or the field of something else.
-            if isinstance(document, dict) and document.get(field) == _MARKED:
-                return LargeBody(document | {field: []}, table)
-    return LargeBody(parse_json(raw), None)
+    if span is None:
+        return None
+    # What is wrong with the rest is told by its place in the whole.
+    with suppress(Unparseable):
+        document = parse_json(raw[: span[0]] + _MARK + raw[span[1] :])
+        # Elsewhere it would be in the middle of a text, or the field of something else.
+        if isinstance(document, dict) and document.get(field) == _MARKED:
+            return CutBody(document | {field: []}, raw, *span)
+    return None
 
 
 def _span(raw: bytes, field: str) -> tuple[int, int] | None:

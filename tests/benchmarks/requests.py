@@ -48,6 +48,7 @@ class Hello(BaseModel):
 
 def create_app(settings):
     app = FastAPI(redirect_slashes=False)
+    app.state.settings = settings
     app.state.sequence = itertools.count(1)
     app.state.readiness, app.state.streams = Readiness(), EventStreams()
 
