@@ -26,7 +26,7 @@ from service.routes.joints_socket import MOST_MESSAGE_BYTES
 from service.settings import Settings, unknown_variables
 from service.simulation.moving_cell import MovingCell
 from service.socket_line import RefusingSockets
-from service.web.pages import version_here
+from service.web.page_answers import version_here
 
 _KEEP_ALIVE_S = 65
 # A stop is to be over within a second: requests still open after this are answered 503.
