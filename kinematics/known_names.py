@@ -25,8 +25,23 @@ def nearest(name: str, known: Iterable[str]) -> str | None:
     >>> nearest("jonits", ["arm", "joints"]), nearest("zzz", ["arm"])
     ('joints', None)
     """
-    close = difflib.get_close_matches(name[:100], list(known), n=1, cutoff=0.6)
+    close = alike(name, known, 1)
     return close[0] if close else None
+
+
+def alike(name: str, known: Iterable[str], most: int) -> list[str]:
+    """Return up to ``most`` known names that are like ``name``, the most like first.
+
+    Source
+    ------
+    As of ``nearest``.
+
+    Examples
+    --------
+    >>> alike("wash-arn", ["press", "wash-gantry", "wash-arm"], 3)
+    ['wash-arm', 'wash-gantry']
+    """
+    return difflib.get_close_matches(name[:100], list(known), n=most, cutoff=0.6)
 
 
 def way_out_of_unknown(name: str, known: Iterable[str]) -> str:

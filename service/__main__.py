@@ -123,6 +123,9 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument("--survey-workers", help="processes for surveys (one per processor)")
     serve.add_argument("--events-kept", help="events of arms that are kept (100000)")
     serve.add_argument("--events-days", help="days for which they are kept (365)")
+    serve.add_argument(
+        "--frame-ancestors", help="origins whose pages may show ours in a frame (none)"
+    )
     _add_simulate(commands)
     on_database = [serve]
     for kind in ("arm", "cell"):

@@ -50,7 +50,8 @@ from service.settings import Settings
 from service.storage.opening import open_storage
 from service.surveys.desk import Surveys
 from service.surveys.pool import pool_of
-from service.web import pages
+from service.web import pages, screens
+from service.web.page_answers import version_here
 from service.wire.arms import read_arm
 
 ROUTERS: tuple[APIRouter, ...] = (
@@ -74,6 +75,7 @@ ROUTERS: tuple[APIRouter, ...] = (
     cells.router,
     health.router,
     pages.router,
+    screens.router,
 )
 
 
@@ -131,9 +133,9 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
             except ServiceError as error:
                 app.state.notices.append(f"no demonstration cell: {error.say}")
         pool = pool_of(settings.cluster, settings.survey_workers)
-        taken_in = Surveys(opened.surveys, app.state.arms, pool, pages.version_here())
+        taken_in = Surveys(opened.surveys, app.state.arms, pool, version_here())
         app.state.surveys = taken_in
-        app.state.records = Records(opened.records, app.state.arms, pages.version_here())
+        app.state.records = Records(opened.records, app.state.arms, version_here())
         taken_in.go_on()
         async with live_arms(app.state.arms) as live_ones:
             app.state.live, app.state.channels = live_ones, Channels(live_ones)

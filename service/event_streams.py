@@ -26,8 +26,9 @@ MOST_STREAMS = 400
 """Of all kinds together; below the connections that are served at once, so that others get in."""
 
 _RETRY_MS = 2000
-_ALIVE_S = 15.0
-"""Proxies drop connections on which nothing comes for half a minute."""
+_ALIVE_S = 5.0
+"""A screen that hears nothing for twice as long says so: it must not show what may be over. Proxies
+drop connections on which nothing comes for half a minute."""
 
 _BLOCKED_S = 10.0
 """Who takes nothing for so long has left without a word; its connection is cut."""
@@ -138,7 +139,7 @@ class EventStream(Response):
         self._streams, self._attach = streams, attach
         self._gap_s = max(gap_s, _LEAST_GAP_S)
         self._connection: Any = None
-        self._sent_at = float("-inf")
+        self._sent_at = self._told_at = float("-inf")
         self._is_sending = False
 
     async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
@@ -156,6 +157,7 @@ class EventStream(Response):
             while await self.slot.filled() and not gone.done():
                 await self._rest()
                 await self._send(send, self.slot.taken())
+                self._told_at = self._sent_at
         finally:
             if leave is not None:
                 leave()
@@ -178,11 +180,11 @@ class EventStream(Response):
             self._cut()
 
     async def _rest(self) -> None:
-        """Wait until enough time has passed since the last sending."""
-        left = self._sent_at + self._gap_s - monotonic()
+        """Wait until enough time has passed since the last event; the first comes at once."""
+        left = self._told_at + self._gap_s - monotonic()
         while left > 0.0 and not self.slot.ended:
             await asyncio.sleep(min(left, _SWEEP_S / 4))
-            left = self._sent_at + self._gap_s - monotonic()
+            left = self._told_at + self._gap_s - monotonic()
 
     async def _send(self, send: Send, body: bytes) -> None:
         self._sent_at, self._is_sending = monotonic(), True

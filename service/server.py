@@ -27,7 +27,7 @@ from service.routes.joints_socket import MOST_MESSAGE_BYTES
 from service.settings import Settings, unknown_variables
 from service.simulation.moving_cell import MovingCell
 from service.socket_line import RefusingSockets
-from service.web.pages import version_here
+from service.web.page_answers import version_here
 
 _SEARCHES_AFTER = (5000, 20, 20)
 """So many new objects before the youngest are searched for garbage, so many searches before older

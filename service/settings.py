@@ -4,6 +4,7 @@ Left out: what is fixed by the contract, and opening anything.
 """
 
 import os
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from typing import Any
@@ -35,6 +36,8 @@ class Settings:
     survey_workers : processes for surveys; 0: one for each processor.
     events_kept : events of arms that are kept; the oldest that are over go first.
     events_days : days for which they are kept.
+    frame_ancestors : origins whose pages may show ours in a frame, a panel's for example; blanks or
+        commas between them, ``self`` is the service's own. Empty: nobody may.
 
     Examples
     --------
@@ -57,6 +60,7 @@ class Settings:
     survey_workers: int = 0
     events_kept: int = 100_000
     events_days: int = 365
+    frame_ancestors: str = ""
 
     @classmethod
     def from_environment(
@@ -146,6 +150,20 @@ def _log_level(text: str) -> str:
     return text.lower()
 
 
+def _origins(text: str) -> str:
+    """Return origins as Content-Security-Policy has them (CSP 3, 6.4.2)."""
+    found = ["'self'" if one in ("self", "'self'") else one for one in re.split(r"[\s,]+", text)]
+    for one in found:
+        if one and one != "'self'" and not _ORIGIN.fullmatch(one):
+            raise ValueError("no list of origins, such as http://panel-7:8080 https://hmi.plant")
+    return " ".join(filter(None, found))
+
+
+_ORIGIN = re.compile(
+    r"https?://[A-Za-z0-9*.\-]+(?::(?:[0-9]{1,5}|\*))?|https?://\[[0-9a-fA-F:]+\](?::[0-9]{1,5})?"
+)
+
+
 _READERS: Mapping[str, Any] = {
     "host": _host,
     "port": _whole(0, 65535),
@@ -159,4 +177,5 @@ _READERS: Mapping[str, Any] = {
     "survey_workers": _whole(0, 1024),
     "events_kept": _whole(1, 10_000_000),
     "events_days": _whole(1, 36_500),
+    "frame_ancestors": _origins,
 }

@@ -165,6 +165,7 @@ def test_every_setting_is_there_with_its_default() -> None:
             "demo": "no",
             "body_timeout_s": "20",
             "cluster": "none",
+            "frame_ancestors": "none",
         }
         assert default.get(field.name, str(field.default)) in row
 

@@ -28,7 +28,7 @@ def live_answer(live: LiveArm, asked: SingleQuestion, clock: Clock) -> LiveAnswe
     ServiceError, KinematicsError : what is asked cannot be answered.
     """
     question = question_about(live.standing.stored, asked)
-    return _told(question, seen_now(live, clock))
+    return _told(asked, question, seen_now(live, clock))
 
 
 def past_answer(live: LiveArm, asked: SingleQuestion, at_ms: float, clock: Clock) -> LiveAnswer:
@@ -40,7 +40,7 @@ def past_answer(live: LiveArm, asked: SingleQuestion, at_ms: float, clock: Clock
     ServiceError, KinematicsError : what is asked cannot be answered.
     """
     question = question_about(live.standing.stored, asked)
-    return _told(question, seen_at(live, at_ms, clock))
+    return _told(asked, question, seen_at(live, at_ms, clock))
 
 
 def live_arm(arms: LiveArms, name: str) -> LiveArm:
@@ -62,8 +62,8 @@ def live_arm(arms: LiveArms, name: str) -> LiveArm:
     return found
 
 
-def _told(question: Question, seen: Seen) -> LiveAnswer:
-    single = posture_answer(question, seen.joints)
+def _told(asked: SingleQuestion, question: Question, seen: Seen) -> LiveAnswer:
+    single = posture_answer(question, seen.joints, asked)
     codes = set(single.codes)
     if seen.reason == STALE:
         codes.add(_STALE)

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 from kinematics.arm import BASE, FLANGE, Arm
 from kinematics.errors import UnknownFrame
 from kinematics.findings import Finding
+from kinematics.nearest_frame import FramePlaces
 from kinematics.posture_reader import PostureReader
 from kinematics.singular_kinds import Anatomy, anatomy_of
 from kinematics.table import FloatArray
@@ -84,6 +85,11 @@ class Question:
     def frame_in_base(self) -> FloatArray:
         """The pose of that frame in the base, (4, 4)."""
         return inverse(self.base_in_frame)
+
+    @cached_property
+    def frame_places(self) -> FramePlaces:
+        """What tells which named frame a point is nearest to."""
+        return FramePlaces(self.arm)
 
     @cached_property
     def reacher(self) -> "Reacher":

@@ -12,6 +12,7 @@ from kinematics.errors import KinematicsError
 from kinematics.task_space import rows_of
 from service.convert import Units
 from service.errors import DigestDiffers, ServiceError, UnknownRevision
+from service.operations import nearest_told, outlines
 from service.operations.arms import Arms, StoredArm
 from service.operations.jacobians import Wanted, jacobian_items
 from service.operations.joint_rows import JointRows, read_joint_row
@@ -35,12 +36,23 @@ _LONGEST_NUMBER = 3
 def single_pose(arms: Arms[ReadArm], asked: SingleQuestion, joints: JointsAsked) -> SingleAnswer:
     """Return the tool pose of one posture."""
     question = question_asked(arms, asked, moving=False)
-    return posture_answer(question, joint_row(question, joints))
+    return posture_answer(question, joint_row(question, joints), asked)
 
 
-def posture_answer(question: Question, joint_values: Sequence[float]) -> SingleAnswer:
-    """Return the tool pose at joint values in SI."""
-    return _answer(question, pose_item(question, joint_values))
+def posture_answer(
+    question: Question, joint_values: Sequence[float], asked: SingleQuestion
+) -> SingleAnswer:
+    """Return the tool pose at joint values in SI, with what else of it is ``asked``.
+
+    That is what a drawing needs, and the named frame nearest to the tool.
+    """
+    answered = pose_item(question, joint_values)
+    item = answered.items[0]
+    if asked.outline:
+        item[outlines.KEY] = outlines.outline_told(question, joint_values)
+    if asked.nearest:
+        item[nearest_told.KEY] = nearest_told.nearest_told(question, item)
+    return _answer(question, answered)
 
 
 def single_jacobian(

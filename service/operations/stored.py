@@ -11,6 +11,7 @@ from datetime import UTC, datetime
 from functools import lru_cache
 from typing import Any, ClassVar, Generic, Protocol, TypeVar
 
+from kinematics.known_names import alike
 from service.operations import stored_refusals
 from service.operations.heads import Heads
 from service.operations.stored_refusals import version_of
@@ -30,6 +31,8 @@ from service.storage.ports import (
 # Names and numbers outside these are in no store, and some databases choke on them.
 NAME = re.compile(r"[a-z0-9][a-z0-9-]{0,47}", re.ASCII)
 _LARGEST_REVISION = 2**31 - 1
+# Of so many names those most like another are sought: some milliseconds.
+_MOST_COMPARED = 1000
 # Each time somebody else has written a cell or an arm of it in the milliseconds between.
 _MOST_TRIES = 20
 
@@ -158,6 +161,11 @@ class Stored(ABC, Generic[Read]):
         if number is None:
             raise stored_refusals.unknown(self.kind, name)
         return self._read_revision(name, number)
+
+    def names_like(self, name: str, most: int = 3) -> list[str]:
+        """Return the names most like one that is not there, the most like first."""
+        known = [record.name for record in self.storage.heads("", _MOST_COMPARED)]
+        return alike(name, known, most)
 
     def create(
         self, document: object, *, author: str = "", reason: str = "", seed: bool = False

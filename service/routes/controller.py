@@ -20,14 +20,19 @@ from service.wire import one_answer
 from service.wire.arms import ReadArm
 from service.wire.controller import (
     JACOBIAN_PARAMETERS,
-    PARAMETERS,
+    POSE_PARAMETERS,
     joints_asked,
     single_question,
     wanted_row,
 )
 from service.wire.controller_answers import FlatJacobian, FlatPose, JacobianReply, PoseReply
 from service.wire.one_answer import Content
-from service.wire.question_parameters import JACOBIAN_QUESTION_PARAMETERS, QUESTION_PARAMETERS
+from service.wire.question_parameters import (
+    JACOBIAN_QUESTION_PARAMETERS,
+    NEAREST,
+    OUTLINE,
+    QUESTION_PARAMETERS,
+)
 from service.wire.single import JointsAsked, SingleAnswer, SingleQuestion
 
 router = APIRouter(route_class=PostureRoute)
@@ -46,7 +51,7 @@ Ask = Callable[[Arms[ReadArm], SingleQuestion, JointsAsked], SingleAnswer]
         answer=PoseReply,
         answer_media=MEDIA_TYPES,
         flat_refusal=FlatPose,
-        parameters=QUESTION_PARAMETERS,
+        parameters=(*QUESTION_PARAMETERS, OUTLINE, NEAREST),
         statuses=(404, 409, 503),
         controller=True,
         examples="pose",
@@ -54,7 +59,7 @@ Ask = Callable[[Arms[ReadArm], SingleQuestion, JointsAsked], SingleAnswer]
 )
 async def pose(request: Request) -> Response:
     """Answer the tool pose of one posture."""
-    return await answered_in_format(request, PARAMETERS, _pose, refused_pose)
+    return await answered_in_format(request, POSE_PARAMETERS, _pose, refused_pose)
 
 
 @router.api_route(

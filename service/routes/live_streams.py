@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from functools import partial
 
 from fastapi import APIRouter
+from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
@@ -108,7 +109,8 @@ async def live_stream_of_all(request: Request) -> Response:
     openapi_extra=documented(
         "Live poses of all arms",
         "Each arm of which joint values came, as `/v1/arms/{arm}/live` tells it, by name. One that "
-        "cannot be told says why and does not fail the others.",
+        "cannot be told says why and does not fail the others. `arms_without_values` counts the "
+        "stored arms of which none came yet; `/v1/arms` lists all.",
         answer=LiveList,
         parameters=(*ALL_SHOWN, KNOWN),
         statuses=(304, 503),
@@ -130,7 +132,11 @@ async def live_of_all(request: Request) -> Response:
     for one in live:
         arms.look_at(one.name)
     listed = [_told(asked.pose, arms.clock, one, {}) for one in live]
-    return json_answer({"arms": listed}, headers=NOT_STORED | tag_of(arms.change))
+    # Of another process' arms nothing comes here, and what it removed may still be listed.
+    stored = await run_in_threadpool(request.app.state.arms.storage.count)
+    without = max(stored - len(listed), 0)
+    answer = {"arms": listed, "arms_without_values": without}
+    return json_answer(answer, headers=NOT_STORED | tag_of(arms.change))
 
 
 def _stream(request: Request, name: str | None, asked: StreamQuestion) -> Response:

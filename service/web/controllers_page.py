@@ -6,10 +6,10 @@ All numbers on it come from the code that answers; left out: the addresses for o
 from functools import cache
 from html import escape
 
-from service.cautions import CAUTIONS
 from service.problems import ANSWERS, KINDS
 from service.web.examples import examples_of, folder
 from service.web.live_lines import live_section
+from service.web.page_frames import framed
 from service.wire import reach_flat, rotation_flat
 from service.wire.controller import MOST_SCALE
 from service.wire.fixed_text import NUMBER_WIDTH, WIDTHS, places
@@ -69,7 +69,7 @@ def controllers_html() -> bytes:
     there = examples_of("reach")["txt"]
     going = "&".join(f"{name}={value}" for name, value in there.query.items())
     lean, dip = EXAMPLE_JOINTS["lean"], EXAMPLE_JOINTS["dip"]
-    return _PAGE.format(
+    page = _PAGE.format(
         question=escape(f"GET /v1/arms/{case.request['path']['arm']}/pose?{query}"),
         line=escape(case.answer.rstrip("\r\n")),
         turning=escape(f"GET /v1/rotations?{turning}"),
@@ -90,8 +90,8 @@ def controllers_html() -> bytes:
         variable_2=90 - lean,
         variable_3=-90 - dip + lean,
         elevation=-dip,
-        cautions="".join(f"<li>{escape(line)}</li>" for line in CAUTIONS),
-    ).encode()
+    )
+    return framed(page, "/docs/controllers", {})
 
 
 def _places() -> str:
@@ -139,17 +139,22 @@ def _flags() -> str:
 
 
 _PAGE = """<!doctype html>
-<html lang="en">
+<html lang="en" data-page="docs">
 <head>
 <meta charset="utf-8">
 <meta name="viewport" content="width=device-width, initial-scale=1">
 <link rel="icon" href="/docs/files/icon.svg">
-<title>Armspan: for controllers</title>
-<link rel="stylesheet" href="/docs/files/pages.css">
+<title>{{{{shell.name}}}}: {{{{shell.controllers}}}}</title>
+<link rel="stylesheet" href="/pages/pages.css">
+<script src="/pages/theme.js"></script>
+{{{{preload}}}}
+<script type="module" src="/pages/plain.js"></script>
 </head>
 <body>
+{{{{header}}}}
+<main id="content" class="words" tabindex="-1">
 <h1>For controllers</h1>
-<p><a href="/docs">Addresses</a> · <a href="/docs/problems">Codes and problems</a> · clients:
+<p>Clients to take along:
 <a href="/docs/files/armspan_pose.st">armspan_pose.st</a> (IEC 61131-3 Structured Text),
 <a href="/docs/files/read_pose.py">read_pose.py</a>, <a href="/docs/files/pose.sh">pose.sh</a></p>
 <h2>One question, one line</h2>
@@ -252,7 +257,8 @@ sum,
 <b id="elevation">{elevation}</b> deg: {dip} deg below level. With axis 3 left alone and axis 2
 moved, the sum stays: that is the check to make at the arm. If the sum moves with axis 2, the
 controller shows axis 3 against the upper arm, and there is no coupling.</p>
-<footer><ul>{cautions}</ul></footer>
+</main>
+{{{{footer}}}}
 </body>
 </html>
 """

@@ -1,13 +1,13 @@
-"""The pages for people: the addresses, and the codes; all files come from this process.
+"""The documentation as pages: the addresses, and the codes; all files come from this process.
 
-Left out: the OpenAPI document itself (``document.py``).
+Left out: the OpenAPI document itself (document.py), the frames (page_frames.py), the pages on
+screens (screens.py).
 """
 
-import hashlib
+from collections.abc import Callable
 from functools import cache
 from html import escape
 from importlib import resources
-from importlib.metadata import PackageNotFoundError, version
 
 import orjson
 from fastapi import APIRouter
@@ -15,12 +15,13 @@ from fastapi.routing import APIRoute
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.cautions import CAUTIONS
 from service.errors import UnknownPath
 from service.problems import ANSWERS, KINDS
 from service.web.controllers_page import CLIENTS, client_text, controllers_html
 from service.web.document import openapi_document
-from service.wire.preconditions import entity_tag, if_none_match
+from service.web.page_answers import page_answer, version_here
+from service.web.page_frames import framed
+from service.web.screens import page_policy
 from service.wire.query import known_parameters
 
 router = APIRouter(include_in_schema=False)
@@ -32,13 +33,8 @@ _FILES = {
     "swagger-ui-bundle.js": (_SCRIPTS, "text/javascript"),
     "swagger-ui.css": (_SCRIPTS, "text/css"),
     "docs.js": (_OURS, "text/javascript"),
-    "pages.css": (_OURS, "text/css"),
+    "docs.css": (_OURS, "text/css"),
     "icon.svg": (_OURS, "image/svg+xml"),
-}
-# The style sheet carries its icons as data addresses; nothing else needs more than 'self'.
-_DOCS_POLICY = {
-    "Content-Security-Policy": "default-src 'self'; img-src 'self' data:; base-uri 'none'; "
-    "form-action 'self'; frame-ancestors 'self'"
 }
 
 
@@ -46,21 +42,21 @@ _DOCS_POLICY = {
 async def docs_page(request: Request) -> Response:
     """Answer the page that lists all addresses."""
     known_parameters(request, ())
-    return _answer(request, _docs_html(), "text/html", _DOCS_POLICY)
+    return _shown(request, _docs_html)
 
 
 @router.api_route("/docs/problems", methods=_READ)
 async def problems_page(request: Request) -> Response:
     """Answer the page of all codes."""
     known_parameters(request, ())
-    return _answer(request, _problems_html(), "text/html")
+    return _shown(request, _problems_html)
 
 
 @router.api_route("/docs/controllers", methods=_READ)
 async def controllers_page(request: Request) -> Response:
     """Answer the page for who programs a controller."""
     known_parameters(request, ())
-    return _answer(request, controllers_html(), "text/html")
+    return _shown(request, controllers_html)
 
 
 @router.api_route("/docs/files/{name}", methods=_READ)
@@ -69,11 +65,11 @@ async def page_file(request: Request) -> Response:
     known_parameters(request, ())
     name = request.path_params["name"]
     if name in CLIENTS:
-        return _answer(request, client_text(name), "text/plain")
+        return page_answer(request, client_text(name), "text/plain")
     if name not in _FILES:
         raise UnknownPath("no such file", location="path", value=name)
     package, media_type = _FILES[name]
-    return _answer(request, _file(package, name), media_type)
+    return page_answer(request, _file(package, name), media_type)
 
 
 @router.api_route("/openapi.json", methods=_READ)
@@ -84,31 +80,12 @@ async def openapi_json(request: Request) -> Response:
     if not hasattr(state, "openapi_json"):
         routes = [route for route in request.app.router.routes if isinstance(route, APIRoute)]
         state.openapi_json = orjson.dumps(openapi_document(routes, version=version_here()))
-    return _answer(request, state.openapi_json, "application/json")
+    return page_answer(request, state.openapi_json, "application/json")
 
 
-def version_here() -> str:
-    """Return the version of the installed distribution, or ``0+source`` in a checkout."""
-    try:
-        return version("armspan")
-    except PackageNotFoundError:
-        return "0+source"
-
-
-def _answer(
-    request: Request, content: bytes, media_type: str, headers: dict[str, str] | None = None
-) -> Response:
-    version = _digest(content)
-    kept = {"ETag": entity_tag(version), "Cache-Control": "no-cache", **(headers or {})}
-    known = if_none_match(request)
-    if known == "*" or version in (known or ()):
-        return Response(status_code=304, headers=kept)
-    return Response(content, media_type=media_type, headers=kept)
-
-
-@cache
-def _digest(content: bytes) -> str:
-    return hashlib.sha256(content).hexdigest()[:16]
+def _shown(request: Request, page: Callable[[], bytes]) -> Response:
+    policy = page_policy(request.app.state.settings.frame_ancestors)
+    return page_answer(request, page(), "text/html", policy)
 
 
 @cache
@@ -118,8 +95,7 @@ def _file(package: str, name: str) -> bytes:
 
 @cache
 def _docs_html() -> bytes:
-    page = _file(_OURS, "docs.html").decode("utf-8")
-    return page.replace("{cautions}", _cautions()).encode("utf-8")
+    return framed(_file(_OURS, "docs.html").decode("utf-8"), "/docs", {})
 
 
 @cache
@@ -133,41 +109,9 @@ def _problems_html() -> bytes:
         f'<tr id="code-{number}"><td>{number}</td><td>{escape(meaning)}</td></tr>'
         for number, meaning in ANSWERS.items()
     )
-    return _PROBLEMS.format(refusals=refusals, answers=answers, cautions=_cautions()).encode()
+    tables = {"refusals": refusals, "answers": answers}
+    return framed(_file(_OURS, "problems.html").decode("utf-8"), "/docs/problems", tables)
 
 
 def _listed(statuses: tuple[int, ...]) -> str:
     return ", ".join(map(str, statuses))
-
-
-def _cautions() -> str:
-    return "".join(f"<li>{escape(line)}</li>" for line in CAUTIONS)
-
-
-_PROBLEMS = """<!doctype html>
-<html lang="en">
-<head>
-<meta charset="utf-8">
-<meta name="viewport" content="width=device-width, initial-scale=1">
-<link rel="icon" href="/docs/files/icon.svg">
-<title>Armspan: codes and problems</title>
-<link rel="stylesheet" href="/docs/files/pages.css">
-</head>
-<body>
-<h1>Codes and problems</h1>
-<p>Texts may change, codes never do. With several codes the highest wins.
-<a href="/docs">Addresses</a> · <a href="/docs/controllers">For controllers</a></p>
-<h2>Refusals</h2>
-<table>
-<tr><th>code</th><th>number</th><th>status</th><th>meaning</th></tr>
-{refusals}
-</table>
-<h2>Codes of answers</h2>
-<table>
-<tr><th>number</th><th>meaning</th></tr>
-{answers}
-</table>
-<footer><ul>{cautions}</ul></footer>
-</body>
-</html>
-"""

@@ -3,9 +3,9 @@
 Left out: what is asked with (models.py), and answers of one posture, stored arms and problems.
 """
 
-from typing import Any, Literal
+from typing import Annotated, Any, Literal
 
-from pydantic import BaseModel, ConfigDict
+from pydantic import BaseModel, ConfigDict, Field
 
 from service.wire.models import Arm, UnitsName
 
@@ -92,6 +92,50 @@ class ItemProblem(Open):
     way_out: str
 
 
+class OutlineAxis(Open):
+    """One row's axis: the line comes to it at `from` and leaves it at `to`."""
+
+    row: int
+    joint: int | None
+    slides: bool
+    from_: Annotated[list[float], Field(alias="from")]
+    to: list[float]
+    direction: list[float]
+
+
+class TravelUsed(Open):
+    """How much of a travel is used; `share` is 0 at its lower stop and 1 at its upper."""
+
+    of: str
+    joint: int | None
+    row: int | None
+    value: float
+    unit: str
+    travel: list[float] | None
+    working_travel: list[float] | None
+    share: float | None
+
+
+class Outline(Open):
+    """What a drawing of the arm needs, in the frame and units asked for; matrices are 4 x 4."""
+
+    axes: list[OutlineAxis]
+    line: list[list[float]]
+    base: list[list[float]]
+    flange: list[list[float]]
+    tool: list[list[float]]
+    travel: list[TravelUsed]
+
+
+class Nearest(Open):
+    """The named frame nearest to the tool point, which is at `position` in it."""
+
+    frame: str
+    distance: float
+    position: list[float]
+    say: str
+
+
 class PoseItem(Open):
     """The tool pose of one joint vector."""
 
@@ -102,6 +146,8 @@ class PoseItem(Open):
     findings: list[Finding]
     singularity: Singularity | None = None
     links: list[AnsweredPose] | None = None
+    outline: Outline | None = None
+    nearest: Nearest | None = None
     problem: ItemProblem | None = None
 
 

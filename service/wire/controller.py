@@ -15,7 +15,7 @@ from service.convert import UNITS
 from service.errors import FormNotFlat, MissingField, UnusableValue
 from service.wire import models
 from service.wire.poses import checked_form
-from service.wire.query import number, numbers, whole_number
+from service.wire.query import number, numbers, switch, whole_number
 from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleQuestion
 
 Format = Literal["json", "flat", "txt", "csv"]
@@ -43,6 +43,7 @@ PARAMETERS = frozenset(
         "scale",
     }
 )
+POSE_PARAMETERS = PARAMETERS | {"outline", "nearest"}
 JACOBIAN_PARAMETERS = PARAMETERS | {"row"}
 _VARYING = frozenset({"q", *_JOINT_PARAMETERS, "of", "in", "format", "tag", "errors", "row"})
 """What differs from one question to the next, or is read beside the question."""
@@ -260,6 +261,8 @@ def _question(arm: str, said: tuple[tuple[str, str], ...], answer_format: Format
         expect=parameters.get("expect"),
         task=_task(parameters.get("task")),
         scale=scale,
+        outline=_beside(parameters, "outline", answer_format),
+        nearest=_beside(parameters, "nearest", answer_format),
     )
 
 
@@ -286,6 +289,21 @@ def _inline_tool(parameters: Mapping[str, str], form: str, scale: int | None) ->
             form=form if form in TRIPLES else FLAT_FORM, values=values[3:]
         ),
     )
+
+
+def _beside(parameters: Mapping[str, str], name: str, answer_format: Format) -> bool:
+    """Return whether something is wanted beside the pose, for which only JSON has a place."""
+    text = parameters.get(name)
+    wanted = switch(text, name)
+    if wanted and answer_format != "json":
+        raise UnusableValue(
+            f"an answer with format={answer_format} has no place for {name}",
+            where=(name,),
+            location="query",
+            value=text,
+            way_out="ask for format=json",
+        )
+    return wanted
 
 
 def _task(text: str | None) -> str | list[str] | None:

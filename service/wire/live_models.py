@@ -74,6 +74,10 @@ class LiveReply(RootModel[LivePose | FlatLive | InlineRefusal]):
 
 
 class LiveList(Open):
-    """All arms of which values came, each as `/v1/arms/{arm}/live` tells it, or refused."""
+    """All arms of which values came, each as `/v1/arms/{arm}/live` tells it, or refused.
+
+    `arms_without_values` counts the stored arms of which none came.
+    """
 
     arms: list[Any]
+    arms_without_values: int

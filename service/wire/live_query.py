@@ -11,7 +11,7 @@ from service.errors import UnusableValue
 from service.web.document import parameter
 from service.wire.controller import PARAMETERS, Format, single_question, wanted_format
 from service.wire.query import number, whole_number
-from service.wire.question_parameters import QUESTION_PARAMETERS, one_of
+from service.wire.question_parameters import NEAREST, OUTLINE, QUESTION_PARAMETERS, one_of
 from service.wire.single import SingleQuestion
 from service.wire.times import time_in
 
@@ -22,13 +22,13 @@ MOST_RATE_HZ = 200.0
 _NOT_OF_A_POSE = frozenset({"q", *(f"q{joint}" for joint in range(1, 33)), "revision"})
 _OF_THE_MOMENT = frozenset({"at", "wait", "after", "rate", "limit", "seconds"})
 _POSE = PARAMETERS - _NOT_OF_A_POSE
-PARAMETERS_OF_LIVE = _POSE | {"at", "wait", "after"}
-_OF_ANY = frozenset({"tool", "frame", "form", "units", "scale"})
+PARAMETERS_OF_LIVE = _POSE | {"at", "wait", "after", "outline", "nearest"}
+_OF_ANY = frozenset({"tool", "frame", "form", "units", "scale", "nearest"})
 PARAMETERS_OF_ALL = _OF_ANY | {"wait", "after"}
 PARAMETERS_OF_ALL_STREAM = _OF_ANY | {"format", "rate", "after"}
-PARAMETERS_OF_STREAM = (_POSE - {"tag", "errors"}) | {"rate", "after"}
+PARAMETERS_OF_STREAM = (_POSE - {"tag", "errors"}) | {"rate", "after", "outline", "nearest"}
 
-_SHOWN = tuple(known for known in QUESTION_PARAMETERS if known["name"] in _POSE)
+_SHOWN = (*(known for known in QUESTION_PARAMETERS if known["name"] in _POSE), OUTLINE, NEAREST)
 _AFTER = parameter(
     "after",
     "Number of a change (`change`) that is known already, where `If-None-Match` or "

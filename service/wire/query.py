@@ -181,6 +181,34 @@ def whole_number(text: str, name: str) -> int:
     return -value if mended.startswith("-") else value
 
 
+_SWITCH = {"1": True, "true": True, "0": False, "false": False}
+
+
+def switch(text: str | None, name: str) -> bool:
+    """Return whether a parameter says yes; one that is left out says no.
+
+    Raises
+    ------
+    UnusableValue : neither yes nor no.
+
+    Examples
+    --------
+    >>> switch("1", "outline"), switch("false", "outline"), switch(None, "outline")
+    (True, False, False)
+    """
+    if text is None:
+        return False
+    if text not in _SWITCH:
+        raise UnusableValue(
+            f"{name}={text} is neither 1 nor 0",
+            where=(name,),
+            location="query",
+            value=text,
+            way_out=f"{name}=1, or leave it out",
+        )
+    return _SWITCH[text]
+
+
 def _mended(text: str) -> str:
     if text.startswith(" "):
         text = "+" + text[1:]

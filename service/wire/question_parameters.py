@@ -64,6 +64,20 @@ QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
     ERRORS,
 )
 
+OUTLINE = parameter(
+    "outline",
+    "1: what a drawing needs comes as `outline`: axes, the line from base to tool, both ends as "
+    "matrices, and the travel used; for format=json alone.",
+    one_of("1", "0"),
+)
+
+NEAREST = parameter(
+    "nearest",
+    "1: the named frame nearest to the tool point comes as `nearest`, with the distance, the tool "
+    "point in it and a sentence; null where the arm names none; for format=json alone.",
+    one_of("1", "0"),
+)
+
 JACOBIAN_QUESTION_PARAMETERS: tuple[dict[str, Any], ...] = (
     *QUESTION_PARAMETERS,
     parameter(

@@ -32,6 +32,8 @@ class SingleQuestion:
     expect: str | None = None
     task: str | list[str] | None = None
     scale: int | None = None
+    outline: bool = False
+    nearest: bool = False
     is_kept: bool = True
 
 

@@ -85,7 +85,7 @@ def test_every_operation_is_shown(page: Any) -> None:
 
 def test_the_cautions_stand_below(page: Any) -> None:
     _, shown, _, _ = page
-    assert "Not a safety function" in shown.split("<footer>")[1]
+    assert "Not a safety function" in shown.split("<footer ")[1]
 
 
 def test_no_other_host_is_asked(page: Any) -> None:

@@ -23,7 +23,10 @@ Document = dict[str, Any]
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 ASKING = {"get", "post", "put", "delete", "head"}
 # For people, and the document itself: their addresses are not part of the interface.
-PAGES = {"/docs", "/docs/controllers", "/docs/problems", "/docs/files/{name}", "/openapi.json"}
+PAGES = {
+    *("/docs", "/docs/controllers", "/docs/problems", "/docs/files/{name}", "/openapi.json"),
+    *("/", "/arms/{arm}", "/arms/{arm}/reach", "/pages/{name}"),
+}
 
 
 @pytest.fixture

@@ -33,7 +33,7 @@ COUNTS = {
     "reach-envelope": 2,
     "jacobian": 4,
     "jacobians": 4,
-    "pose": 10,
+    "pose": 11,
     "poses": 8,
     "rotations-guesses": 5,
     "rotation": 6,
@@ -51,7 +51,7 @@ COUNTS = {
     "records-create": 2,
     "events": 1,
     "joints": 2,
-    "live": 2,
+    "live": 3,
     "live-of-all": 1,
     "live-history": 1,
 }

@@ -411,7 +411,7 @@ async def test_history_in_columns_and_lines(two: httpx.AsyncClient) -> None:
 
 
 async def test_all_arms(two: httpx.AsyncClient) -> None:
-    assert (await two.get("/v1/live")).json() == {"arms": []}
+    assert (await two.get("/v1/live")).json() == {"arms": [], "arms_without_values": 1}
     tools = {
         "pen": {"position": [0, 0, 10], "orientation": {"form": "xyz-fixed", "values": [0] * 3}}
     }

@@ -176,7 +176,8 @@ async def test_a_gap_between_events() -> None:
         while len(reader.sent) < 3:
             source.tell(b"%d" % len(reader.sent))
             await asyncio.sleep(0.005)
-        assert loop.time() - begun >= 0.3
+        # The first comes at once, the second after the gap.
+        assert loop.time() - begun >= 0.19
         reader.left.set()
 
 
@@ -184,7 +185,7 @@ async def test_who_takes_nothing_is_cut_off_and_a_quiet_one_kept_alive() -> None
     now = 0.0
     streams, source = EventStreams(lambda: now), Source()
     async with stream(streams, source) as (reader, answer):
-        now = answer._sent_at + 14.0
+        now = answer._sent_at + 4.0
         answer.look_after(now)
         await asyncio.sleep(0.02)
         assert len(reader.sent) == 1

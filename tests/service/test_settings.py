@@ -20,6 +20,7 @@ SAMPLES = {
     "survey_workers": ("3", 3),
     "events_kept": ("5000", 5000),
     "events_days": ("30", 30),
+    "frame_ancestors": ("self, https://hmi.plant:8443", "'self' https://hmi.plant:8443"),
 }
 
 
@@ -58,6 +59,10 @@ def test_an_option_wins_over_a_variable() -> None:
         ("port", "tcp://10.0.0.1:8017"),
         ("host", ""),
         ("host", "http://here"),
+        ("frame_ancestors", "panel-7"),
+        ("frame_ancestors", "*"),
+        ("frame_ancestors", "http://panel-7; script-src *"),
+        ("frame_ancestors", "http://panel-7/page"),
         ("demo", "maybe"),
         ("body_limit", "0"),
         ("body_timeout_s", "nan"),

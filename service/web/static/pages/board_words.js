@@ -1,0 +1,79 @@
+// What a card says, from one answer about a live pose: its state, its figures, its one sentence.
+// Plain functions of what was told and when; left out: elements, and whatever is not on the card.
+import { length, unitsOf } from "./numbers.js";
+import { say, WORDS } from "./words.js";
+
+const AXES = ["x", "y", "z"];
+// Beyond its own three periods, after which the service calls a value stale, so much grace in ms.
+const GRACE_MS = 2000;
+const LONGEST_PERIOD_MS = 10000;
+const MOVES_FROM = { mm: 1, m: 0.001, in: 0.04 };
+
+/**
+ * @typedef {{state: "good"|"uncertain"|"stale"|"bad"|"none", word: string, note: string,
+ *            axes: string[], near: string, mark: string, sentence: string, simulated: boolean,
+ *            tool: string, frame: string, unit: string, ageMs: number|null}} Said
+ */
+
+/**
+ * Return what a card says.
+ * @param {any} told the answer about the arm, null where none came
+ * @param {number} sinceMs how long ago the answer came
+ * @param {string} gone why nothing can be live now ("" where it can)
+ * @returns {Said}
+ */
+export function saidOf(told, sinceMs, gone) {
+  const said = { state: "none", word: "", note: "", axes: [], near: "", mark: "", sentence: "" };
+  Object.assign(said, { simulated: Boolean(told?.simulated), tool: "", frame: "", unit: "", ageMs: null });
+  if (!told) return Object.assign(said, gone ? { state: "stale", word: WORDS.board.stale, sentence: gone } : nothing());
+  if (!told.ok) return Object.assign(said, refused(told, gone));
+  const pose = told.poses[0];
+  said.ageMs = told.age_ms + sinceMs;
+  said.tool = typeof told.tool === "string" ? told.tool : WORDS.board.given_tool;
+  said.frame = told.frame;
+  said.unit = unitsOf(told.units).length;
+  const unheard = sinceMs > 3 * Math.min(told.input?.period_ms ?? LONGEST_PERIOD_MS, LONGEST_PERIOD_MS) + GRACE_MS && isPrompt(told);
+  if (gone || told.quality === "bad" || unheard) {
+    const why = gone || (told.quality === "bad" ? why_bad(told) : WORDS.board.unheard);
+    return Object.assign(said, { state: "stale", word: WORDS.board.stale, sentence: why, mark: "✕" });
+  }
+  said.axes = AXES.map((_, index) => length(pose.position[index], told.units));
+  said.near = pose.nearest?.say ?? "";
+  if (told.quality === "uncertain") {
+    return Object.assign(said, { state: "uncertain", word: WORDS.board.uncertain, sentence: told.say });
+  }
+  return Object.assign(said, { state: "good" }, matters(pose, told));
+}
+
+/** Periods of an hour and the like are no promise to hear anything soon. */
+const isPrompt = (told) => (told.input?.period_ms ?? 0) <= LONGEST_PERIOD_MS;
+
+const nothing = () => ({ word: WORDS.board.never });
+
+const why_bad = (told) => (told.reason === "stale" ? WORDS.board.silent : told.say);
+
+function refused(told, gone) {
+  if (told.reason === "stale" && told.problem?.code === "no-live-pose") return nothing();
+  const sentence = gone || told.problem?.say || told.say || "";
+  return { state: "bad", word: WORDS.board.no_pose, sentence, mark: "✕" };
+}
+
+/** Return the one thing that matters most about a pose that can be relied on. */
+function matters(pose, told) {
+  const finding = pose.findings.reduce((most, one) => (one.code > (most?.code ?? 0) && one.code <= 4 ? one : most), null);
+  if (finding?.code >= 3) {
+    const key = finding.code === 4 ? "outside" : "outside_work";
+    const who = finding.joint ? say(WORDS.board.joint, { joint: finding.joint }) : WORDS.board.joints_together;
+    return { mark: finding.code === 4 ? "▲" : "△", sentence: say(WORDS.board[key], { who }) };
+  }
+  if (finding) {
+    const { kinds, joints } = pose.singularity;
+    const values = { kinds: kinds.join(", "), joints: joints.join(", ") };
+    const key = finding.code === 2 ? "singular" : "near";
+    const text = WORDS.board[kinds.length && joints.length ? key : `${key}_plain`];
+    return { mark: finding.code === 2 ? "◆" : "◇", sentence: say(text, values) };
+  }
+  const speed = told.speeds?.tool_speed;
+  if (speed === undefined) return {};
+  return { sentence: speed < MOVES_FROM[unitsOf(told.units).length] ? WORDS.board.rests : WORDS.board.moves };
+}

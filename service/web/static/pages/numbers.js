@@ -1,0 +1,64 @@
+// Numbers as people read them: so many digits per unit, a true minus sign, never a minus before zero.
+// Left out: changing units, which the service does.
+import { WORDS } from "./words.js";
+
+const MINUS = "\u2212";
+/** Decimals of a value in each unit: what a machine of this kind can show, not what a double holds. */
+export const DECIMALS = { mm: 1, m: 4, in: 3, deg: 2, rad: 4 };
+
+/**
+ * Return a number with fixed decimals, a dash for what is none.
+ * @param {number|null|undefined} value
+ * @param {number} decimals
+ * @returns {string}
+ */
+export function number(value, decimals) {
+  if (value === null || value === undefined || !Number.isFinite(value)) return WORDS.shell.none;
+  const text = Math.abs(value).toFixed(decimals);
+  return value < 0 && Number(text) !== 0 ? MINUS + text : text;
+}
+
+/**
+ * Return the unit of lengths and the unit of angles that "mm-deg" names.
+ * @param {string} units
+ * @returns {{length: string, angle: string}}
+ */
+export function unitsOf(units) {
+  const [length, angle] = units.split("-");
+  return { length, angle };
+}
+
+/** Return a length in the decimals of its unit. @param {number|null} value @param {string} units */
+export const length = (value, units) => number(value, DECIMALS[unitsOf(units).length] ?? 3);
+
+/** Return an angle in the decimals of its unit. @param {number|null} value @param {string} units */
+export const angle = (value, units) => number(value, DECIMALS[unitsOf(units).angle] ?? 4);
+
+/**
+ * Return an age in words short enough for a card: "0.1 s", "14 s", "3 min".
+ * @param {number} ms
+ * @returns {string}
+ */
+export function age(ms) {
+  const s = Math.max(ms, 0) / 1000;
+  if (s < 9.95) return `${s.toFixed(1)} ${WORDS.shell.s}`;
+  if (s < 120) return `${Math.floor(s + 0.05)} ${WORDS.shell.s}`;
+  if (s < 7200) return `${Math.floor(s / 60)} ${WORDS.shell.min}`;
+  if (s < 172800) return `${Math.floor(s / 3600)} ${WORDS.shell.h}`;
+  return `${Math.floor(s / 86400)} ${WORDS.shell.d}`;
+}
+
+/** Return hours and minutes of the day, "10:42". @param {Date} time */
+export function clock(time) {
+  return `${String(time.getHours()).padStart(2, "0")}:${String(time.getMinutes()).padStart(2, "0")}`;
+}
+
+/**
+ * Return the number a person typed, with a decimal comma or point and any minus; NaN if it is none.
+ * @param {string} text
+ * @returns {number}
+ */
+export function typed(text) {
+  const plain = text.trim().replace(/[\u2212\u2013]/g, "-").replace(",", ".");
+  return /^[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d+)?$/i.test(plain) ? Number(plain) : NaN;
+}

@@ -1,0 +1,71 @@
+// From a list that was read to what is asked of the interface; names of orientation forms.
+// Idea: what a line says wins over what is said for all lines. Left out: asking, and answers.
+
+const THREE = ["xyx", "xyz", "xzx", "xzy", "yxy", "yxz", "yzx", "yzy", "zxy", "zxz", "zyx", "zyz"];
+
+/** Orientation forms a table can carry, the usual one first. */
+export const FORMS = [
+  ...["xyz", ...THREE.filter((one) => one !== "xyz")].map((one) => `${one}-fixed`),
+  ...THREE.map((one) => `${one}-current`),
+  "rotation-vector", "quaternion-wxyz", "quaternion-xyzw",
+];
+
+/** Numbers of an orientation form. @param {string} form */
+export const turnsOf = (form) => (form.startsWith("quaternion") ? 4 : 3);
+
+/** Directions an approach may come along, as the page names them: those of the interface. */
+export const ALONG = {
+  "tool-z": "tool-z", "-z": [0, 0, -1], z: [0, 0, 1], x: [1, 0, 0], "-x": [-1, 0, 0],
+  y: [0, 1, 0], "-y": [0, -1, 0],
+};
+
+/**
+ * Return the targets of a list. Names that stand twice get the number of their line, for the
+ * interface wants each of its own.
+ * @param {import("./reach_reading.js").Place[]} places
+ * @param {{form: string, freedom: string, approach: number, along: string}} question
+ */
+export function targetsOf(places, question) {
+  const seen = new Set();
+  return places.map((place) => {
+    const target = placeOf(place, question);
+    const distance = place.approach ?? question.approach;
+    if (distance > 0) target.approach = { distance, along: ALONG[question.along] };
+    if (place.name === null) return target;
+    let name = place.name;
+    while (seen.has(name)) name = `${name.slice(0, 180)} (${place.line})`;
+    seen.add(name);
+    return { name, ...target };
+  });
+}
+
+function placeOf({ position, turns, freedom }, question) {
+  if (!turns) return freedom ? { position, freedom } : { position };
+  const left = freedom ?? freedomSaid(question.freedom);
+  const pose = { position, orientation: { form: question.form, values: turns } };
+  return left ? { pose, freedom: left } : { pose };
+}
+
+/** A freedom as the page keeps it: "", "spin", "orientation" or "cone:30". */
+function freedomSaid(said) {
+  const cone = /^cone:(.+)$/.exec(said);
+  return cone ? { cone: Number(cone[1]) } : said;
+}
+
+/** Return the body of a check. @param {"best" | "all"} solutions @param {object[]} targets */
+export function checkBody(arm, question, targets, solutions) {
+  const body = { arm, targets, solutions, frame: question.frame, units: question.units };
+  if (question.tool) body.tool = question.tool;
+  if (question.order === "singularity") body.order = "singularity";
+  return body;
+}
+
+/** Return what a refused question says of single targets: a map from place in the list to words. */
+export function refusedTargets(problem) {
+  const found = new Map();
+  for (const error of problem.errors ?? []) {
+    const match = /^\/targets\/(\d+)/.exec(error.pointer ?? "");
+    if (match) found.set(Number(match[1]), [error.say, error.way_out].filter(Boolean).join("; "));
+  }
+  return found;
+}

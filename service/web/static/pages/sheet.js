@@ -1,0 +1,270 @@
+// The sheet of one arm: what is asked, of whom, and when; live, or by joint values typed or nudged.
+// Idea: one answer of the interface at a time is shown everywhere; what the viewer chose stands in the
+// address and in every question. Left out: drawing (sheet_views.js) and writing (other sheet modules).
+import { ask, follow } from "./ask.js";
+import { choose, chosen, withQuery } from "./address.js";
+import { el, fill, setText } from "./elements.js";
+import { typed, unitsOf } from "./numbers.js";
+import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
+import { readings, sentences, showState, texts } from "./sheet_numbers.js";
+import { showRevisions, showTable } from "./sheet_table.js";
+import { travelTable } from "./sheet_travel.js";
+import { views } from "./sheet_views.js";
+import { say, WORDS } from "./words.js";
+
+const RATE = 10;
+const PATH_S = 30;
+const MOST_PATH = 600;
+const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
+const SETTLED_MS = 250;
+const NEVER_MS = 400; // The stream begins with how the arm stands, if anything ever came of it.
+const UNITS = ["mm-deg", "m-rad", "in-deg"];
+const AXES = ["x", "y", "z"];
+const place = (id) => document.getElementById(id);
+const arm = decodeURIComponent(location.pathname.split("/")[2]);
+const path = `/v1/arms/${encodeURIComponent(arm)}`;
+
+const state = {
+  said: chosen({ tool: "", frame: "", form: "xyz-fixed", units: "", q: "" }),
+  stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [], stop: () => {}, asking: null, settle: 0, text: 0,
+};
+const shown = {};
+
+async function start() {
+  begin();
+  for (const name of ["elevation", "plan", "free"]) shown[name] = document.querySelector(`[data-view=${name}]`);
+  shown.views = views({ elevation: shown.elevation, plan: shown.plan, free: shown.free }, (scale) => setText(place("scale"), scale));
+  shown.travel = travelTable(place("travel"), byHand);
+  shown.readings = readings(place("readings"));
+  shown.texts = texts(place("text-blocks"));
+  onTheme(() => shown.views.retint());
+  state.isLive = !state.said.q;
+  const asked = [ask(path), isUpright()];
+  const stored = await asked[0];
+  if (!stored.ok) return refused(stored.problem);
+  state.stored = stored.data;
+  await fillChoices(asked[1]);
+  fitModes();
+  await anew();
+  showTable(place("table"), state.stored);
+  showRevisions(place("revisions"), path);
+  setInterval(tick, 250);
+  place("texts").addEventListener("toggle", writeTexts);
+}
+
+/** The choices of the title block; what is not said takes what the arm says, and a z that is upright. */
+async function fillChoices(upright) {
+  const { arm: told, units } = state.stored, { said } = state;
+  const tools = Object.keys(told.tools ?? {});
+  said.units ||= units;
+  said.tool ||= told.default_tool ?? tools[0] ?? "flange";
+  const cell = told.cell ? await ask(`/v1/cells/${encodeURIComponent(told.cell)}`) : null;
+  shown.frameNames = [...new Set([...Object.keys(told.frames ?? {}), ...Object.keys(cell?.data?.cell?.frames ?? {})])];
+  if (!said.frame) said.frame = (await upright) ? "base" : "world";
+  const triples = [["xyz", "zyx", "xzy", "yxz", "yzx", "zxy"], ["zyz", "zxz", "xyx", "xzx", "yxy", "yzy"]].flat();
+  const forms = ["fixed", "current"].flatMap((about) => triples.map((one) => `${one}-${about}`));
+  fillSelect("tool", [...tools, "flange"]);
+  fillSelect("frame", ["base", "world", ...shown.frameNames]);
+  fillSelect("form", [...forms, "quaternion-wxyz", "quaternion-xyzw", "rotation-vector", "matrix"]);
+  fillSelect("units", UNITS);
+  setText(place("arm-title"), told.title ?? "");
+}
+
+function fillSelect(name, options) {
+  const select = place(name), now = state.said[name];
+  fill(select, [...new Set([...options, now])].map((one) => el("option", { value: one, selected: one === now }, one)));
+  select.addEventListener("change", () => {
+    state.said[name] = select.value;
+    choose({ [name]: select.value });
+    if (name === "units" && !state.isLive) state.said.q = "";
+    anew();
+  });
+}
+
+async function isUpright() {
+  const found = await frames(["base"], "world");
+  return !found.length || found[0].matrix[2][2] > 0.7;
+}
+
+/** Return poses of frames of this arm in one of them, as the interface tells them. */
+async function frames(names, within) {
+  const known = (name) => (name === "world" ? name : `${arm}.${name}`);
+  const body = { arms: [{ arm }], find: names.map((name) => ({ of: known(name), in: known(within) })), form: "matrix", units: state.said.units || undefined };
+  const { ok, data, problem } = await ask("/v1/frames", { method: "POST", body });
+  if (!ok) {
+    // One that moves with another arm has no place here; the others have.
+    const wrong = Number(problem.errors?.[0]?.pointer?.split("/")[2]);
+    return Number.isInteger(wrong) && names.length > 1 ? frames(names.filter((_, i) => i !== wrong), within) : [];
+  }
+  return data.answers.map(({ pose }, i) => ({ name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
+}
+
+const question = () => {
+  const { tool, frame, form, units } = state.said;
+  return { tool, frame, form, units };
+};
+
+/** Ask everything again, in the words that are chosen now. */
+async function anew() {
+  state.stop();
+  state.trail = [];
+  shown.views.forget();
+  const asked = question(), others = ["base", "world", ...shown.frameNames].filter((name) => name !== asked.frame);
+  frames(others, asked.frame).then((found) => {
+    state.frames = found;
+    draw();
+  });
+  state.heard = false;
+  state.stop = follow(withQuery(`${path}/live/stream`, { ...asked, outline: 1, rate: RATE }), {
+    event: heard, gone, refused,
+    back() {
+      back();
+      setTimeout(() => state.heard || !state.isLive || withoutLive(), NEVER_MS);
+    },
+  });
+  if (!state.isLive) askByHand();
+}
+
+function heard(name, data) {
+  const answer = JSON.parse(data);
+  if (!state.heard) askPath();
+  state.heard = true;
+  if (answer.poses) {
+    state.trail.push(answer.poses[0].position);
+    if (state.trail.length > MOST_PATH) state.trail.shift();
+  }
+  if (!state.isLive && !state.waits) return;
+  if (state.waits) toLive();
+  if (name === "pose") take(answer);
+  else refused({ detail: answer.problem.say, errors: [answer.problem] });
+}
+
+/** Ask where the tool was before this page listened. */
+async function askPath() {
+  const asked = { ...question(), form: null, every_ms: 100, limit: 10 * PATH_S };
+  const { ok, data } = await ask(withQuery(`${path}/live/history`, asked));
+  if (ok) state.trail = [...data.positions, ...state.trail];
+  draw();
+}
+
+/** Nothing ever came of this arm: show it as it can stand, until something comes. */
+async function withoutLive() {
+  state.waits = true;
+  setMode(false);
+  const rows = state.stored.arm.rows.filter((row) => !row.passive);
+  state.said.q = rows.map(({ travel: [low, high] = [0, 0] }) => Math.min(Math.max(0, low), high)).join();
+  await askByHand();
+}
+
+function byHand(values) {
+  state.waits = false;
+  setMode(false);
+  state.said.q = values.map((text) => String(typed(text))).join();
+  const wrong = values.findIndex((text) => !Number.isFinite(typed(text)));
+  shown.travel.wrong(wrong);
+  if (wrong >= 0) return setText(place("problem"), say(WORDS.sheet.no_number, { joint: wrong + 1 }));
+  choose({ q: state.said.q });
+  askByHand();
+}
+
+async function askByHand() {
+  state.asking?.abort();
+  state.asking = new AbortController();
+  const asked = { q: state.said.q, ...question(), outline: 1 };
+  if (!state.said.q && state.answer?.joints) asked.q = state.answer.joints.join();
+  const { ok, data, problem } = await ask(withQuery(`${path}/pose`, asked), { signal: state.asking.signal });
+  if (ok) take(data);
+  else if (problem.code === "no-answer") gone();
+  else if (problem.code !== "aborted") refused(problem);
+}
+
+/** Show one answer everywhere. */
+function take(answer, heardAt = performance.now()) {
+  const item = answer.poses[0];
+  state.answer = answer;
+  state.heardAt = heardAt;
+  setText(place("problem"), "");
+  const isRelied = quality() !== "bad";
+  shown.readings.show(answer, isRelied);
+  fill(place("says"), (isRelied ? sentences(answer) : [answer.say].filter(Boolean)).map((one) => el("li", {}, one)));
+  shown.travel.show(item.outline.travel, !state.isLive, isRelied);
+  setText(place("revision"), answer.arm.revision);
+  setText(place("digest"), answer.arm.digest);
+  draw();
+  tick();
+  ready();
+  clearTimeout(state.settle);
+  state.settle = setTimeout(() => state.isLive || writeTexts(), SETTLED_MS);
+}
+
+function draw() {
+  const { answer, said } = state;
+  if (!answer) return;
+  const { outline, singularity } = answer.poses[0];
+  const size = Math.max(...AXES.map((_, i) => Math.max(...outline.line.map((p) => p[i])) - Math.min(...outline.line.map((p) => p[i]))));
+  const isNear = ({ matrix }) => outline.line.some((point) => Math.hypot(...AXES.map((_, i) => point[i] - matrix[i][3])) < NEAR_SHARE * size);
+  shown.views.show({
+    arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "", frameName: answer.frame,
+    frames: state.frames.filter((frame) => frame.name !== "base" && isNear(frame)), path: state.trail, balloons: true,
+    struck: quality() === "bad" ? wordOf(quality()) : "",
+    kind: quality() === "good" || quality() === "typed" ? "thick" : "heavyDashed",
+    unit: unitsOf(answer.units).length, units: said.units,
+  });
+}
+
+const quality = () => (!state.isLive ? "typed" : isGone() ? "bad" : state.answer.quality);
+
+const wordOf = (now) => WORDS.sheet[`state_${state.isLive && isGone() ? "gone" : state.isLive ? state.answer.reason : ""}`] ?? WORDS.sheet[`state_${now}`] ?? now;
+
+/** What changes by itself: ages, and whether anything can be relied on. */
+function tick() {
+  const { answer } = state;
+  if (!answer) return;
+  const now = quality(), waited = performance.now() - state.heardAt;
+  const ageMs = state.isLive ? answer.age_ms + waited : null;
+  showState(place("state"), { state: now, word: wordOf(now), ageMs, simulated: state.isLive && answer.simulated });
+  for (const one of document.querySelectorAll("[data-relied]")) one.dataset.relied = now;
+  const was = state.shown;
+  state.shown = now;
+  if (now !== was) take(answer, state.heardAt);
+  if (state.isLive && performance.now() - state.text > 1000) writeTexts();
+}
+
+function writeTexts() {
+  if (!place("texts").open || !state.answer) return;
+  state.text = performance.now();
+  const asked = question();
+  if (state.isLive) shown.texts.show(`${path}/live`, asked);
+  else shown.texts.show(`${path}/pose`, { q: state.said.q, ...asked });
+}
+
+function fitModes() {
+  setMode(state.isLive);
+  place("mode-live").addEventListener("change", () => {
+    toLive();
+    anew();
+  });
+  place("mode-hand").addEventListener("change", () => byHand(state.answer.poses[0].outline.travel.filter((one) => one.joint !== null).map((one) => String(one.value))));
+}
+
+function toLive() {
+  state.waits = false;
+  setMode(true);
+  state.said.q = "";
+  choose({ q: null });
+}
+
+function setMode(isLive) {
+  state.isLive = isLive;
+  place("mode-live").checked = isLive;
+  place("mode-hand").checked = !isLive;
+  setText(place("mode-says"), state.waits ? WORDS.sheet.never : isLive ? "" : WORDS.sheet.by_hand_says);
+}
+
+function refused(problem) {
+  const ways = (problem.errors ?? []).map((one) => one.way_out).filter(Boolean);
+  setText(place("problem"), [problem.detail, ...ways].join(". "));
+  ready();
+}
+
+start();

@@ -1,0 +1,208 @@
+// The three views of a sheet: elevation, plan below it (first angle), and one that can be turned.
+// Idea: elevation and plan share scale and middle, so places stand below each other; the scale stays
+// while the arm moves and changes only when something would leave the paper.
+// Left out: what is drawn of an arm (arm_drawing.js), and where its numbers come from (sheet.js).
+import { boxOf, drawArm, thicknessOf } from "./arm_drawing.js";
+import { choose, chosen } from "./address.js";
+import { setAttribute } from "./elements.js";
+import { firstAngle, scaleBar, triad, labelsOn } from "./marks.js";
+import { length, number } from "./numbers.js";
+import { pen } from "./pen.js";
+import { column, fitted, holds, MM_IN, placed, roundLength, shadow, view } from "./projection.js";
+import { say, WORDS } from "./words.js";
+
+const MARGIN = { x: 44, y: 26, right: 52, bottom: 52 };
+const TOLD_MS = 5000; // A screen reader is not told more often.
+const ORIGIN = [0, 0, 0];
+const DEGREE = Math.PI / 180;
+const FIRST_TURN = "-32,22";
+
+/**
+ * Return what shows scenes on three canvases.
+ * @param {{elevation: HTMLCanvasElement, plan: HTMLCanvasElement, free: HTMLCanvasElement}} canvases
+ * @param {(scale: string) => void} onScale
+ */
+export function views(canvases, onScale) {
+  const pens = Object.fromEntries(Object.entries(canvases).map(([name, one]) => [name, pen(one)]));
+  const [yaw, pitch] = chosen({ turn: FIRST_TURN }).turn.split(",").map(Number);
+  const state = { pens, onScale, scene: null, box: null, yaw: yaw || 0, pitch: pitch || 0, told: 0, dirty: new Set() };
+  const repaint = (...names) => request(state, names.length ? names : Object.keys(pens));
+  fitTurning(state, canvases.free, repaint);
+  new ResizeObserver(() => repaint()).observe(canvases.elevation);
+  return {
+    show(scene) {
+      state.scene = scene;
+      repaint();
+    },
+    forget: () => (state.box = state.freeBox = null),
+    retint() {
+      for (const one of Object.values(pens)) one.tint();
+      repaint();
+    },
+    repaint,
+  };
+}
+
+function request(state, names) {
+  if (!state.dirty.size) requestAnimationFrame(() => paint(state));
+  for (const name of names) state.dirty.add(name);
+}
+
+function paint(state) {
+  const { scene, dirty, pens } = state;
+  const names = new Set(dirty);
+  dirty.clear();
+  if (!scene) return;
+  for (const name of names) pens[name].begin();
+  holdBox(state);
+  if (names.has("elevation") || names.has("plan")) paintFixed(state);
+  if (names.has("free")) paintFree(state);
+  tell(state);
+}
+
+/** Keep the box while all has room in it; else take one with room to spare. */
+function holdBox(state) {
+  const { scene } = state, foot = column(scene.outline.base, 3);
+  const held = (box, others) => (box && holds(box, boxOf(scene, 0, others)) ? box : boxOf(scene, 0.05, others));
+  state.freeBox = held(state.freeBox, [[foot[0], foot[1], floorOf(scene)]]);
+  const box = held(state.box, [ORIGIN]);
+  if (box === state.box) return;
+  state.box = box;
+  // The heights of elevation and plan follow what they have to show, so that the scale can be large.
+  const [, y, z] = state.box[1].map((high, i) => high - state.box[0][i]);
+  const share = Math.min(Math.max(z / (y + z), 0.36), 0.64);
+  state.pens.plan.canvas.closest(".fixed").style.gridTemplateRows = `minmax(0, ${share}fr) minmax(0, ${1 - share}fr)`;
+}
+
+/** The height of the floor: the world's, or that of the arm's foot. */
+const floorOf = (scene) => (scene.frameName === "world" ? 0 : scene.outline.base[2][3]);
+
+function roomOf(one) {
+  const [width, height] = one.size();
+  return { x: MARGIN.x, y: MARGIN.y, width: width - MARGIN.x - MARGIN.right, height: height - MARGIN.y - MARGIN.bottom };
+}
+
+function paintFixed(state) {
+  const { pens, scene, box } = state, mm = MM_IN[scene.unit];
+  const looked = { elevation: view("elevation"), plan: view("plan") };
+  const first = Object.entries(looked).map(([name, one]) => fitted(one, box, roomOf(pens[name]), mm));
+  const scale = first[0].px < first[1].px ? first[0].scale : first[1].scale;
+  let size;
+  for (const [name, one] of Object.entries(looked)) {
+    const put = fitted(one, box, roomOf(pens[name]), mm, scale);
+    corner(pens[name], one, scene);
+    size ??= thicknessOf(put, scene.outline);
+    drawn(pens[name], scene, () => {
+      const keep = scene.struck ? [] : dimensions(pens[name], put, scene, name, box);
+      drawArm(pens[name], put, scene, { size, keep });
+    });
+  }
+  const [, height] = pens.plan.size();
+  scaleBar(pens.plan, MARGIN.x + 90, height - 12, scale.px, scene.unit);
+  firstAngle(pens.plan, pens.plan.size()[0] - 56, height - 17, 8);
+  state.onScale(scale.words);
+}
+
+/** Which way the axes of the frame point that all is told in: in the corner, clear of the arm. */
+function corner(one, looked, scene) {
+  const at = placed(looked, 1, ORIGIN, 26, one.size()[1] - 40);
+  triad(one, at, [[1, 0, 0, 0], [0, 1, 0, 0], [0, 0, 1, 0]], 24, labelsOn(one));
+  one.letters(scene.frameName, 12, one.size()[1] - 12, { px: 11, colour: "quiet" });
+}
+
+/** Draw; what cannot be relied on is faint under a word that can be read across the hall. */
+function drawn(one, scene, draw) {
+  one.context.globalAlpha = scene.struck ? 0.5 : 1;
+  draw();
+  one.context.globalAlpha = 1;
+  if (!scene.struck) return;
+  const [width, height] = one.size(), px = Math.min(64, width / 8);
+  one.letters(scene.struck.toUpperCase(), width / 2, height / 2, { px, weight: 700, align: "center" });
+}
+
+function dimensions(one, put, scene, name, box) {
+  const tool = column(scene.outline.tool, 3), [width, height] = one.size();
+  const [from, to, low, high] = [ORIGIN, tool, ...box].map(put);
+  const x = Math.min(high[0] + 28, width - 12), y = Math.min(low[1] + 26, height - 12);
+  const written = (i) => length(tool[i], scene.units);
+  if (name === "plan") return [one.dimension(from, to, { x }, written(1))];
+  return [one.dimension(from, to, { y }, written(0)), one.dimension(from, to, { x }, written(2))];
+}
+
+function paintFree(state) {
+  const { pens, scene, freeBox: box } = state, one = pens.free, room = roomOf(one);
+  const looked = view("free", state.yaw * DEGREE, state.pitch * DEGREE);
+  const sides = box[1].map((high, i) => high - box[0][i]);
+  const across = Math.hypot(sides[0], sides[1]);
+  const high = sides[2] * looked.up[2] + across * Math.abs(looked.toward[2]);
+  const px = Math.min(room.width / across, room.height / high);
+  const middle = box[0].map((low, i) => (low + box[1][i]) / 2);
+  const put = placed(looked, px, middle, room.x + room.width / 2, room.y + room.height / 2 + 8);
+  drawn(one, scene, () => {
+    floor(one, put, scene, box);
+    drawArm(one, put, scene);
+  });
+  corner(one, looked, scene);
+  const words = say(WORDS.sheet.turned, { yaw: number(state.yaw, 0), pitch: number(state.pitch, 0) });
+  one.letters(words, one.size()[0] - 12, one.size()[1] - 12, { px: 11, colour: "quiet", align: "right" });
+}
+
+/** The floor through the arm's foot with a grid of round lengths, the arm's trace and a plumb line. */
+function floor(one, put, scene, [low, high]) {
+  const z = floorOf(scene), step = roundLength(0.35 * Math.max(high[0] - low[0], high[1] - low[1]), 1);
+  const ends = [0, 1].map((i) => [Math.floor(low[i] / step) * step, Math.ceil(high[i] / step) * step]);
+  for (let x = ends[0][0]; x <= ends[0][1] + step / 2; x += step) one.line([put([x, ends[1][0], z]), put([x, ends[1][1], z])], "faint");
+  for (let y = ends[1][0]; y <= ends[1][1] + step / 2; y += step) one.line([put([ends[0][0], y, z]), put([ends[0][1], y, z])], "faint");
+  one.line(scene.outline.line.map(([x, y]) => put([x, y, z])), "dashed");
+  const tool = column(scene.outline.tool, 3);
+  one.line([put(tool), put([tool[0], tool[1], z])], "chain");
+  const corner = put([ends[0][1], ends[1][0], z]);
+  one.letters(say(WORDS.sheet.grid, { length: step, unit: scene.unit }), corner[0], corner[1] + 12, { px: 10, align: "center", colour: "quiet" });
+}
+
+function fitTurning(state, canvas, repaint) {
+  let held = null;
+  const turn = (yaw, pitch) => {
+    state.yaw = ((((yaw + 180) % 360) + 360) % 360) - 180;
+    state.pitch = Math.min(Math.max(pitch, -20), 89);
+    repaint("free");
+  };
+  const keep = () => {
+    const text = `${Math.round(state.yaw)},${Math.round(state.pitch)}`;
+    choose({ turn: text === FIRST_TURN ? null : text });
+  };
+  canvas.addEventListener("pointerdown", (event) => {
+    held = { x: event.clientX, y: event.clientY, yaw: state.yaw, pitch: state.pitch };
+    canvas.setPointerCapture?.(event.pointerId);
+  });
+  canvas.addEventListener("pointermove", (event) => {
+    if (held) turn(held.yaw - (event.clientX - held.x) * 0.5, held.pitch + (event.clientY - held.y) * 0.4);
+  });
+  for (const name of ["pointerup", "pointercancel"]) {
+    canvas.addEventListener(name, () => {
+      if (held) keep();
+      held = null;
+    });
+  }
+  canvas.addEventListener("keydown", (event) => {
+    const step = event.shiftKey ? 15 : 5;
+    const by = { ArrowLeft: [step, 0], ArrowRight: [-step, 0], ArrowUp: [0, step], ArrowDown: [0, -step] }[event.key];
+    if (by) turn(state.yaw + by[0], state.pitch + by[1]);
+    else if (event.key === "Home") turn(...FIRST_TURN.split(",").map(Number));
+    else return;
+    event.preventDefault();
+    keep();
+  });
+}
+
+function tell(state) {
+  const now = performance.now();
+  if (state.told && now - state.told < TOLD_MS) return;
+  state.told = now;
+  const { scene } = state, tool = column(scene.outline.tool, 3);
+  const place = ["x", "y", "z"].map((axis, i) => `${axis} ${length(tool[i], scene.units)}`).join(", ");
+  for (const [name, one] of Object.entries(state.pens)) {
+    const words = say(WORDS.sheet[`${name}_told`], { arm: scene.arm, frame: scene.frameName, tool: scene.toolName, place: `${place} ${scene.unit}` });
+    setAttribute(one.canvas, "aria-label", words);
+  }
+}

@@ -1,0 +1,163 @@
+"""The board: a card for each arm at its place, and no state that could be taken for another.
+
+Left out: looks in both themes and at all widths (test_every_page.py).
+"""
+
+import time
+
+import httpx
+import pytest
+
+from tests.browser.chromium import Look, Screen
+from tests.browser.hall import HALL, UPRIGHT, feed
+from tests.browser.test_every_page import READY
+from tests.conftest import ServerProcess
+
+CARD = "document.querySelector('[data-arm=\"{}\"]')"
+ALL_THERE = f"document.querySelectorAll('[data-arm]').length === {len(HALL)}"
+WRITTEN = """
+window.written = [];
+const cardOf = (node) => (node.closest ? node : node.parentElement)?.closest("[data-arm]");
+new MutationObserver((all) => all.forEach((one) =>
+  window.written.push(cardOf(one.target)?.dataset.arm))).observe(document.querySelector("main"),
+  { subtree: true, childList: true, characterData: true, attributes: true });
+"""
+STATES = {
+    "regular": "good",
+    "near": "good",
+    "singular": "good",
+    "off-work": "good",
+    "beyond": "uncertain",
+    "leapt": "uncertain",
+    "drives-silent": "uncertain",
+    "simulated": "good",
+    "stale": "stale",
+    "never": "none",
+}
+
+
+@pytest.fixture
+def board(screen: Screen, hall: ServerProcess) -> Screen:
+    """The board of the hall, on a large screen."""
+    screen.open(f"{hall.url}/", Look(1920, 1080), ready=READY)
+    screen.until(ALL_THERE)
+    return screen
+
+
+def card_text(screen: Screen, arm: str) -> str:
+    text: str = screen.run(f"return {CARD.format(arm)}.innerText")
+    return text
+
+
+def test_every_arm_has_its_place_by_name(board: Screen) -> None:
+    names = board.run(
+        "return [...document.querySelectorAll('[data-arm]')].map((one) => one.dataset.arm)"
+    )
+    assert names == sorted(HALL)
+
+
+def test_each_state_is_told_by_a_word_and_by_its_frame(board: Screen) -> None:
+    looks: dict[str, set[str]] = {}
+    for arm, state in STATES.items():
+        assert board.run(f"return {CARD.format(arm)}.dataset.state") == state
+        frame = f"getComputedStyle({CARD.format(arm)}).borderTopStyle"
+        looks.setdefault(state, set()).add(board.run(f"return {frame}"))
+    assert all(len(styles) == 1 for styles in looks.values())
+    assert looks["good"] == {"solid"}
+    assert looks["uncertain"] == {"dashed"}
+    assert looks["stale"] not in ({"solid"}, {"dashed"})
+
+
+def test_a_stale_card_shows_no_number_that_could_be_live(board: Screen) -> None:
+    text = card_text(board, "stale")
+    assert "STALE" in text.upper()
+    position = httpx.get(f"{_url(board)}/v1/arms/stale/live").json()["poses"][0]["position"]
+    assert not [x for x in position if f"{abs(x):.1f}" in text or f"{abs(x):.0f}." in text]
+    live = card_text(board, "regular")
+    assert "STALE" not in live.upper()
+    assert [x for x in position if f"{abs(x):.1f}" in live]
+
+
+def test_the_word_stale_is_read_from_afar(board: Screen) -> None:
+    size = board.run(
+        f"const all = [...{CARD.format('stale')}.querySelectorAll('*')].filter((one) =>"
+        " one.checkVisibility() && /^stale$/i.test(one.textContent.trim()));"
+        " return Math.max(...all.map((one) => parseFloat(getComputedStyle(one).fontSize)))"
+    )
+    assert size >= 28
+
+
+@pytest.mark.parametrize(
+    ("arm", "said"),
+    [
+        ("near", "singular"),
+        ("singular", "singular"),
+        ("off-work", "working travel"),
+        ("beyond", "travel limit"),
+        ("leapt", "faster than its top speed"),
+        ("drives-silent", "finite"),
+    ],
+)
+def test_one_sentence_says_what_matters(board: Screen, arm: str, said: str) -> None:
+    assert said in card_text(board, arm).lower()
+    assert said not in card_text(board, "regular").lower()
+
+
+def test_simulated_and_never_are_said_in_words(board: Screen) -> None:
+    assert "SIMULATED" in card_text(board, "simulated")
+    assert "SIMULATED" not in card_text(board, "regular")
+    assert not any(letter.isdigit() for letter in card_text(board, "never"))
+
+
+def test_the_nearest_named_frame_is_that_of_the_interface(board: Screen) -> None:
+    told = httpx.get(f"{_url(board)}/v1/arms/regular/live?nearest=1").json()
+    nearest = (told["poses"][0].get("nearest") or told.get("nearest"))["frame"]
+    assert nearest in card_text(board, "regular")
+
+
+def test_hostile_words_stay_words(board: Screen) -> None:
+    assert board.run("return document.title") != "taken"
+    inside = "querySelectorAll('script, img, iframe, svg[onload]').length"
+    assert board.run(f"return {CARD.format('hostile')}.{inside}") == 0
+    # No address with x, which an image of the title would ask for.
+    assert not [one for one in board.requests() if one.endswith("/x")]
+
+
+def test_numbers_can_be_read_from_five_metres(board: Screen) -> None:
+    """The largest figures of a card are at least 4 % of the width of the screen."""
+    sizes = board.run(
+        f"return [...{CARD.format('regular')}.querySelectorAll('*')].filter((one) =>"
+        " /^[\\s\\u2212\\d.,]+$/.test(one.textContent) && one.textContent.trim())"
+        ".map((one) => parseFloat(getComputedStyle(one).fontSize))"
+    )
+    assert max(sizes) >= 0.04 * 1920
+
+
+def test_a_card_leads_to_its_sheet_by_keyboard(board: Screen) -> None:
+    board.run(f"{CARD.format('near')}.querySelector('a').focus()")
+    board.press("Enter")
+    board.until(f"location.pathname === '/arms/near' && {READY}")
+
+
+def test_what_changes_is_written_and_what_does_not_is_left(
+    screen: Screen, hall: ServerProcess
+) -> None:
+    screen.open(f"{hall.url}/", Look(1280, 800), ready=READY)
+    screen.until(ALL_THERE)
+    screen.run(WRITTEN)
+    before = card_text(screen, "regular")
+    with httpx.Client(base_url=hall.url) as client:
+        feed(client, "regular", [UPRIGHT[0] + 5.0, *UPRIGHT[1:]])
+    screen.until("window.written.includes('regular')")
+    time.sleep(0.3)
+    assert card_text(screen, "regular") != before
+    written = set(screen.run("return window.written"))
+    with httpx.Client(base_url=hall.url) as client:
+        feed(client, "regular", UPRIGHT)
+    # Ages go on by themselves; a card whose numbers stand says nothing else anew.
+    assert "never" not in written
+
+
+def _url(screen: Screen) -> str:
+    url: str = screen.run("return location.origin")
+    return url

@@ -1,0 +1,82 @@
+"""The pages on screens: their status, policy and names; what they show is asked in a browser."""
+
+import httpx
+import pytest
+from fastapi import FastAPI
+
+from service.app import create_app
+from service.settings import Settings
+
+pytestmark = pytest.mark.anyio
+
+ROW = {"joint": "revolute", "a": 100, "alpha": 0, "d": 0, "theta": 0}
+ARM = {"name": "press-arm", "convention": "standard", "units": "mm-deg", "rows": [ROW]}
+
+
+@pytest.fixture
+async def stored(client: httpx.AsyncClient) -> httpx.AsyncClient:
+    assert (await client.post("/v1/arms", json=ARM)).status_code == 201
+    return client
+
+
+@pytest.mark.parametrize("path", ["/", "/arms/press-arm", "/arms/press-arm/reach"])
+async def test_pages(stored: httpx.AsyncClient, path: str) -> None:
+    answer = await stored.get(path, params={"frame": "world", "anything": "may be theirs"})
+    assert answer.status_code == 200
+    assert answer.headers["content-type"] == "text/html; charset=utf-8"
+    policy = answer.headers["content-security-policy"]
+    assert policy.startswith("default-src 'none'; script-src 'self'; style-src 'self'; ")
+    assert "frame-ancestors 'none'" in policy
+    assert "unsafe" not in policy
+    head = await stored.head(path)
+    assert head.status_code == 200
+    assert "data-bare" not in answer.text
+    assert "<html data-bare " in (await stored.get(f"{path}?bare")).text
+
+
+@pytest.mark.parametrize("page", ["", "/reach"])
+@pytest.mark.parametrize(
+    ("name", "like"), [("pres-arm", "press-arm"), ("PRESS-ARM", None), ("zzz", None)]
+)
+async def test_a_wrong_name_is_a_page(
+    stored: httpx.AsyncClient, name: str, like: str | None, page: str
+) -> None:
+    answer = await stored.get(f"/arms/{name}{page}")
+    assert answer.status_code == 404
+    assert answer.headers["content-type"] == "text/html; charset=utf-8"
+    assert name in answer.text
+    assert ('<a href="/arms/press-arm">' in answer.text) == (like is not None)
+
+
+async def test_a_wrong_name_is_never_markup(stored: httpx.AsyncClient) -> None:
+    answer = await stored.get("/arms/%3Cimg src=x onerror=alert(1)%3E%7B%7Bshell.name%7D%7D")
+    assert answer.status_code == 404
+    assert "&lt;img src=x onerror=alert(1)&gt;{{shell.name}}" in answer.text
+    assert "<img" not in answer.text
+    long = await stored.get(f"/arms/{'z' * 4000}")
+    assert long.status_code == 404
+    assert len(long.content) < 5000
+
+
+@pytest.mark.parametrize("name", ["board.html", "__init__.py", "..%2fdocs.js", "nothing.js", "x"])
+async def test_no_other_file_is_given_out(client: httpx.AsyncClient, name: str) -> None:
+    assert (await client.get(f"/pages/{name}")).status_code == 404
+
+
+async def test_parts_take_no_parameters(client: httpx.AsyncClient) -> None:
+    assert (await client.get("/pages/pages.css")).status_code == 200
+    assert (await client.get("/pages/pages.css?x=1")).status_code == 422
+
+
+@pytest.fixture
+def framed_app() -> FastAPI:
+    return create_app(Settings(database=":memory:", frame_ancestors="'self' https://hmi.plant"))
+
+
+async def test_the_operator_says_who_may_frame_the_pages(framed_app: FastAPI) -> None:
+    async with framed_app.router.lifespan_context(framed_app):
+        transport = httpx.ASGITransport(framed_app)
+        async with httpx.AsyncClient(transport=transport, base_url="http://armspan.test") as asking:
+            for path in ("/", "/docs", "/docs/problems", "/docs/controllers", "/arms/none"):
+                policy = (await asking.get(path)).headers["content-security-policy"]
+                assert policy.endswith("frame-ancestors 'self' https://hmi.plant")
