@@ -22,8 +22,8 @@ KinematicsError
 '- ToolNotSaid           an arm with several tools and no default
 """
 
-from collections.abc import Sequence
-from typing import ClassVar
+from collections.abc import Callable, Mapping, Sequence
+from typing import Any, ClassVar
 
 
 class KinematicsError(ValueError):
@@ -69,6 +69,18 @@ class KinematicsError(ValueError):
         """
         self.where = (*prefix, *self.where)
         return self
+
+    def __reduce__(self) -> tuple[Callable[..., "KinematicsError"], tuple[Any, ...]]:
+        """Let it come from another process as it was, whatever its kind is made from."""
+        return _as_it_was, (type(self), self.args, self.__dict__)
+
+
+def _as_it_was(
+    kind: type[KinematicsError], args: tuple[object, ...], state: Mapping[str, object]
+) -> KinematicsError:
+    error = kind.__new__(kind, *args)
+    error.__dict__.update(state)
+    return error
 
 
 class InvalidArm(KinematicsError):

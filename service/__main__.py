@@ -121,6 +121,7 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument("--log-level", help="critical, error, warning, info or debug (warning)")
     serve.add_argument("--cluster", help="scheduler for surveys, tcp://... (own processes)")
     serve.add_argument("--survey-workers", help="processes for surveys (one per processor)")
+    serve.add_argument("--surveys-days", help="keep surveys that are over for so long (for ever)")
     serve.add_argument("--events-kept", help="events of arms that are kept (100000)")
     serve.add_argument("--events-days", help="days for which they are kept (365)")
     serve.add_argument(

@@ -133,7 +133,8 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
             except ServiceError as error:
                 app.state.notices.append(f"no demonstration cell: {error.say}")
         pool = pool_of(settings.cluster, settings.survey_workers)
-        taken_in = Surveys(opened.surveys, app.state.arms, pool, version_here())
+        kept_for = settings.surveys_days
+        taken_in = Surveys(opened.surveys, app.state.arms, pool, version_here(), days=kept_for)
         app.state.surveys = taken_in
         app.state.records = Records(opened.records, app.state.arms, version_here())
         taken_in.go_on()

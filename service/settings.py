@@ -34,6 +34,7 @@ class Settings:
     log_level : one of LOG_LEVELS.
     cluster : address of a scheduler that surveys are worked on by; empty: processes of our own.
     survey_workers : processes for surveys; 0: one for each processor.
+    surveys_days : days for which surveys that are over are kept; 0: until they are removed.
     events_kept : events of arms that are kept; the oldest that are over go first.
     events_days : days for which they are kept.
     frame_ancestors : origins whose pages may show ours in a frame, a panel's for example; blanks or
@@ -58,6 +59,7 @@ class Settings:
     log_level: str = "warning"
     cluster: str = ""
     survey_workers: int = 0
+    surveys_days: int = 0
     events_kept: int = 100_000
     events_days: int = 365
     frame_ancestors: str = ""
@@ -175,6 +177,7 @@ _READERS: Mapping[str, Any] = {
     "log_level": _log_level,
     "cluster": str,
     "survey_workers": _whole(0, 1024),
+    "surveys_days": _whole(0, 36_500),
     "events_kept": _whole(1, 10_000_000),
     "events_days": _whole(1, 36_500),
     "frame_ancestors": _origins,

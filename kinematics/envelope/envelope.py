@@ -10,26 +10,16 @@ Source: as the modules that answer. Not covered: collisions, orientations at the
 import numpy as np
 
 from kinematics.arm import Arm
-from kinematics.envelope.known_structures import Views, level, slides, upright
-from kinematics.envelope.pair_of_arm import point_motion
-from kinematics.envelope.plan_axes import PlanAxes, plan_axes
+from kinematics.envelope.inquiry import Inquiry, inquiry_of
+from kinematics.envelope.known_structures import slides, upright
+from kinematics.envelope.level import level
 from kinematics.envelope.sampled_views import Fineness
-from kinematics.envelope.search import Search, search_of
 from kinematics.envelope.searched import searched
-from kinematics.envelope.section import turn_of, turns_alone
-from kinematics.envelope.shapes import (
-    COORDINATES,
-    SECTION,
-    TOOL,
-    WRIST,
-    Envelope,
-    Extreme,
-    Turn,
-)
+from kinematics.envelope.shapes import TOOL, WRIST, Envelope, Extreme, Turn, Views
 from kinematics.envelope.tolerances import MOST_CELLS
 from kinematics.envelope.wrist import wrist_in_flange
 from kinematics.number_checks import FloatArray
-from kinematics.reach.sample_summary import FirstAxis, first_axis
+from kinematics.reach.sample_summary import FirstAxis
 
 
 def envelope_of(
@@ -70,49 +60,37 @@ def envelope_of(
     """
     if point == WRIST:
         tool_in_flange = wrist_in_flange(arm)
-    search = search_of(arm, tool_in_flange, working=working)
     fineness = Fineness(resolution, most_cells)
-    axis = first_axis(arm)
-    axes = plan_axes(arm, axis)
-    motion = point_motion(arm, tool_in_flange, working=working)
-    if axis is None:
-        extremes = search.extremes(("x", "y", "z"), search.along(np.eye(3))[0])
-        views = slides(motion, axes) or searched(search, None, axes, None, extremes, fineness)
-        turn = None
-    else:
-        extremes = search.extremes(COORDINATES[SECTION], search.about(axis)[0])
-        angle = turn_of(motion) if turns_alone(motion) else None
-        views = (
-            upright(motion, axis, axes, search)
-            or level(motion, axis, axes, search, extremes, fineness)
-            or searched(search, axis, axes, angle, extremes, fineness)
-        )
-        turn = _turn(search, axes, angle, extremes[1])
+    inquiry = inquiry_of(arm, tool_in_flange, working=working, fineness=fineness)
+    views = (slides if inquiry.axis is None else upright)(inquiry)
+    views = views or level(inquiry) or searched(inquiry)
+    turn = _turn(inquiry, views.extremes[1])
     return Envelope(
         point=point,
         point_in_flange=tool_in_flange[:3, 3].copy(),
         working=working,
-        axis=axis,
+        axis=inquiry.axis,
         turn=turn,
         section=views.section,
         plan=views.plan,
         volume=views.volume,
         same_at_every_bearing=views.same_at_every_bearing,
-        extremes=extremes,
-        notes=_notes(views, axis, turn),
+        extremes=views.extremes,
+        notes=_notes(views, inquiry.axis, turn),
     )
 
 
-def _turn(search: Search, axes: PlanAxes, angle: float | None, farthest: Extreme) -> Turn | None:
+def _turn(inquiry: Inquiry, farthest: Extreme) -> Turn | None:
     """Return how far axis 1 turns; None where other joints turn with it.
 
     Parameters
     ----------
     farthest : the arm faces the bearing at which it reaches farthest.
     """
+    angle, limits, axes = inquiry.turn, inquiry.search.limits, inquiry.axes
     if angle is None:
         return None
-    lower, upper = float(search.limits.lower[0]), float(search.limits.upper[0])
+    lower, upper = float(limits.lower[0]), float(limits.upper[0])
     if angle >= 2.0 * np.pi:
         return Turn(lower, upper, angle, None, None)
     x, y = (axes.directions @ farthest.position - axes.centre).tolist()

@@ -11,6 +11,8 @@ covered: reach narrower than the grid, and proof of a no.
 """
 
 from dataclasses import dataclass, field
+from functools import cached_property
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,6 +35,22 @@ class Samples:
     joint_values: FloatArray
     places: FloatArray
 
+    @cached_property
+    def tree(self) -> Any:
+        """What tells the nearest of the places."""
+        # Imported where it is needed: it takes as long as all else of the core.
+        from scipy.spatial import cKDTree
+
+        return cKDTree(self.places)
+
+    def with_those_of(self, grid: "Grid") -> "Samples":
+        """Return these and the places that a grid reaches, with its postures."""
+        index = np.argwhere(grid.reached)
+        return Samples(
+            np.concatenate([self.joint_values, grid.joint_values[tuple(index.T)]]),
+            np.concatenate([self.places, grid.places(index)]),
+        )
+
 
 @dataclass
 class Grid:
@@ -40,10 +58,12 @@ class Grid:
 
     Attributes
     ----------
-    origin : (coordinates,), of the first place; step : m; shape : places along each coordinate.
+    origin : (coordinates,), of the first place of the whole grid; step : m.
+    shape : places along each coordinate; first : the index in the whole grid of the first of them.
     shifts : by how much each place is off the grid, (*shape, coordinates), in steps; None for none.
     reached : (*shape,); joint_values : (*shape, joints), of those reached the posture that gets
         there, of the others the one that came nearest; off : (*shape,), m, how near.
+    settled : (*shape,), places that are asked no more.
     """
 
     origin: FloatArray
@@ -51,21 +71,26 @@ class Grid:
     shape: tuple[int, ...]
     joints: int
     shifts: FloatArray | None = None
+    first: tuple[int, ...] = ()
     reached: NDArray[np.bool_] = field(init=False)
     joint_values: FloatArray = field(init=False)
     off: FloatArray = field(init=False)
+    settled: NDArray[np.bool_] = field(init=False)
 
     def __post_init__(self) -> None:
+        self.first = self.first or (0,) * len(self.shape)
+        self.settled = np.zeros(self.shape, dtype=bool)
         self.reached = np.zeros(self.shape, dtype=bool)
         self.joint_values = np.zeros((*self.shape, self.joints))
         self.off = np.full(self.shape, np.inf)
 
     def places(self, index: Index) -> FloatArray:
         """Return the coordinates of grid places, (count, coordinates)."""
-        shares = index.astype(np.float64)
+        shares = (index + np.array(self.first)).astype(np.float64)
         if self.shifts is not None:
             shares += self.shifts[tuple(index.T)]
-        return self.origin + self.step * shares
+        places: FloatArray = self.origin + self.step * shares
+        return places
 
     def search(self, seeker: Seeker, index: Index, starts: FloatArray) -> NDArray[np.bool_]:
         """Search places from one start each and keep what is better; return which are reached."""
@@ -82,8 +107,13 @@ class Grid:
         return reached
 
 
-def fill(grid: Grid, seeker: Seeker, samples: Samples) -> None:
+def fill(grid: Grid, seeker: Seeker, samples: Samples, within: float | None = None) -> None:
     """Find out which places of a grid are reached.
+
+    Parameters
+    ----------
+    within : m, how far from a sample places are asked that no neighbour leads to; left out, two
+        steps.
 
     Examples
     --------
@@ -99,19 +129,16 @@ def fill(grid: Grid, seeker: Seeker, samples: Samples) -> None:
     >>> int(grid.reached.sum())
     9
     """
-    # Imported where it is needed: it takes as long as all else of the core.
-    from scipy.spatial import cKDTree
-
-    tree = cKDTree(samples.places)
+    tree = samples.tree
 
     def nearest(index: Index, rank: int) -> FloatArray:
         _, found = tree.query(grid.places(index), k=[rank + 1])
         starts: FloatArray = samples.joint_values[found[:, 0]]
         return starts
 
-    index = np.stack(np.unravel_index(np.arange(grid.reached.size), grid.shape), axis=1)
+    index = np.argwhere(~grid.settled)
     away, _ = tree.query(grid.places(index), k=1)
-    index = index[away <= 2.0 * grid.step]
+    index = index[away <= (2.0 * grid.step if within is None else within)]
     ranks = [rank for rank in (0, *NEAREST_TRIED) if rank < len(samples.places)]
     for rank in ranks:
         index = index[~grid.reached[tuple(index.T)]]
@@ -126,7 +153,7 @@ def fill(grid: Grid, seeker: Seeker, samples: Samples) -> None:
     while again:
         again = False
         for number, rank in enumerate(ranks):
-            index = np.argwhere(_beside(grid.reached, ways) & ~asked[..., number])
+            index = np.argwhere(_beside(grid.reached, ways) & ~asked[..., number] & ~grid.settled)
             if len(index):
                 asked[(*index.T, number)] = True
                 again |= bool(grid.search(seeker, index, nearest(index, rank)).any())
@@ -150,7 +177,7 @@ def _spread(grid: Grid, seeker: Seeker, ways: Index, tried: NDArray[np.bool_]) -
         spread = False
         for number, way in enumerate(ways):
             from_there = shifted(grid.reached, way)
-            index = np.argwhere(from_there & ~grid.reached & ~tried[..., number])
+            index = np.argwhere(from_there & ~grid.reached & ~tried[..., number] & ~grid.settled)
             if len(index):
                 tried[(*index.T, number)] = True
                 grid.search(seeker, index, grid.joint_values[tuple((index + way).T)])

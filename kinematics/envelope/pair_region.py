@@ -140,23 +140,27 @@ class PairRegion:
         return Stretches(found, counts)
 
     def extent(self) -> FloatArray:
-        """Return the least and the greatest first coordinate that is reached, (2,).
+        """Return the least and the greatest first coordinate that is reached, (2,)."""
+        places: FloatArray = self.place_of(self.ends()[0])[0][:, 0]
+        return places
 
-        Within a part the map is one to one near every posture, so both are on images of edges.
+    def ends(self) -> FloatArray:
+        """Return the postures of the least and the greatest of both coordinates, (2, 2, 2).
+
+        Within a part the map is one to one near every posture, so all are on images of edges.
         """
         found = []
-        for part, _ in self.parts:
-            for begin, along in _edges(part):
-
-                def slope(
-                    shares: FloatArray, begin: FloatArray = begin, along: FloatArray = along
-                ) -> FloatArray:
-                    jacobians = self.place_of(begin + shares[:, None] * along)[1]
-                    return np.asarray(jacobians[:, 0, :] @ along)
-
-                found.append(self.place_of(begin + _stops(slope)[:, None] * along)[0][:, 0])
-        places = np.concatenate(found)
-        return np.array([places.min(), places.max()])
+        for coordinate in (0, 1):
+            postures = np.concatenate(
+                [
+                    begin + _stops(_slope(self.place_of, begin, along, coordinate))[:, None] * along
+                    for part, _ in self.parts
+                    for begin, along in _edges(part)
+                ]
+            )
+            values = self.place_of(postures)[0][:, coordinate]
+            found.append(postures[[int(values.argmin()), int(values.argmax())]])
+        return np.stack(found)
 
     def _crossing(self, pieces: NDArray[np.intp], heights: FloatArray) -> FloatArray:
         """Return the postures on pieces at which the heights are met, (count, 2)."""
@@ -240,7 +244,7 @@ def _pieces(place_of: PlaneMap, parts: Sequence[tuple[FloatArray, float]]) -> li
     for part, sign in parts:
         for begin, along in _edges(part):
             inward = np.array([-along[1], along[0]])
-            stops = _stops(_slope_of_height(place_of, begin, along))
+            stops = _stops(_slope(place_of, begin, along, 1))
             for first, last in pairwise(stops):
                 pieces.append(Piece(begin + first * along, begin + last * along, inward, sign))
     return pieces
@@ -252,10 +256,12 @@ def _edges(part: FloatArray) -> list[tuple[FloatArray, FloatArray]]:
     return [(begin, along) for begin, along in zip(part, steps, strict=True) if along.any()]
 
 
-def _slope_of_height(place_of: PlaneMap, begin: FloatArray, along: FloatArray) -> Slope:
+def _slope(place_of: PlaneMap, begin: FloatArray, along: FloatArray, coordinate: int) -> Slope:
+    """Return how a coordinate changes along an edge."""
+
     def slope(shares: FloatArray) -> FloatArray:
         jacobians = place_of(begin + shares[:, None] * along)[1]
-        found: FloatArray = jacobians[:, 1, :] @ along
+        found: FloatArray = jacobians[:, coordinate, :] @ along
         return found
 
     return slope

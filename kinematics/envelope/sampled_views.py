@@ -6,17 +6,19 @@ is, the grid is laid wider. Everything else is in the modules used.
 Source: as those. Not covered: reach narrower than the resolution.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from kinematics.envelope.descents import Seeker
-from kinematics.envelope.grid_outlines import outlines_of_grid
+from kinematics.envelope.grid_chords import Chords, chords_of
+from kinematics.envelope.grid_outlines import joined_outlines
 from kinematics.envelope.grid_reach import Grid, Samples, fill
 from kinematics.envelope.measures import Measure
-from kinematics.envelope.plan_axes import PlanAxes
-from kinematics.envelope.shapes import PLAN, SECTION, Curve, View
-from kinematics.envelope.tolerances import CHORD, DEFAULT_CELLS, FEWEST_CELLS, MOST_CELLS, SHORT_OF
+from kinematics.envelope.shapes import SECTION, Curve, View
+from kinematics.envelope.tolerances import DEFAULT_CELLS, FEWEST_CELLS, MOST_CELLS, SHORT_OF
 from kinematics.errors import KinematicsError
 from kinematics.number_checks import FloatArray
 
@@ -81,16 +83,24 @@ class SampledView:
     moment: Measure
 
 
-def sampled_view(
-    seeker: Seeker, samples: Samples, kind: str, directions: FloatArray, fineness: Fineness
-) -> SampledView:
-    """Return a view of what is reached, by a grid.
+class AskedView:
+    """A view that is found by a grid, in pieces that do not depend on each other.
+
+    Idea: a grid of the usual fineness is filled first, whole; it is the answer where no finer one
+    is asked for. Otherwise what it reaches leads to the places of the finer grid, which is cut into
+    stripes of columns. The columns that two stripes share are asked alone, so that both find the
+    same of them, and then what lies between.
 
     Parameters
     ----------
     seeker, samples : in the view.
     directions : (2, 3), of its coordinates in the base.
     fineness : of the grid.
+
+    Attributes
+    ----------
+    step : m, of the grid asked for; pieces : how many stripes it has; places : of the grid, in all,
+        as far as samples tell.
 
     Raises
     ------
@@ -101,44 +111,110 @@ def sampled_view(
     A table of two slides of 1 m, from above.
 
     >>> from kinematics.envelope.descents import InView
+    >>> from kinematics.envelope.shapes import PLAN
     >>> from kinematics.reach.travel_region import TravelRegion
     >>> one = np.ones((1, 2, 2)) * np.eye(2)
     >>> box = TravelRegion(np.zeros(2), np.ones(2), np.empty((0, 2)), np.empty(0), np.empty(0))
     >>> slides = InView(lambda q: (q, np.repeat(one, len(q), 0)), box, np.ones(2), 1e-9)
     >>> corners = np.array([[0.0, 0.0], [1.0, 1.0]])
-    >>> found = sampled_view(slides, Samples(corners, corners), PLAN, np.eye(3)[:2], Fineness(0.2))
-    >>> round(found.view.area.value, 1), found.view.exact
-    (1.0, False)
+    >>> asked = AskedView(slides, Samples(corners, corners), PLAN, np.eye(3)[:2], Fineness(0.2))
+    >>> found = asked.told([asked.piece(number) for number in range(asked.pieces)])
+    >>> asked.pieces, round(found.view.area.value, 1), found.view.exact
+    (1, 1.0, False)
     """
-    least, most = samples.places.min(axis=0), samples.places.max(axis=0)
-    size = float((most - least).max())
-    step = fineness.step(size)
-    margin = 2
-    while True:
-        origin = least - margin * step
-        if kind == SECTION:
-            origin[0] = 0.0  # axis 1: nothing is beyond it
-        shape = tuple((np.ceil((most - origin) / step).astype(int) + margin).tolist())
-        grid = Grid(origin, step, shape, samples.joint_values.shape[1])
-        fill(grid, seeker, samples)
-        rim = grid.reached.copy()
-        rim[0 if kind == SECTION else 1 : -1, 1:-1] = False
-        if not rim.any():
-            break
-        margin *= 2  # samples fell that short of the extremes
-    found = outlines_of_grid(grid, seeker, samples.places)
-    if not found.curves:
-        return _box_around(least, most, kind, directions, step)
-    # Bent chords are two to a step: a curve of the reach's own size is this far from them.
-    chord = step * step / (8.0 * size)
-    view = View(kind, found.curves, found.area, step, chord, directions)
-    return SampledView(view, found.moment)
+
+    def __init__(
+        self,
+        seeker: Seeker,
+        samples: Samples,
+        kind: str,
+        directions: FloatArray,
+        fineness: Fineness,
+    ) -> None:
+        self._seeker, self._samples = seeker, samples
+        self._kind, self._directions = kind, directions
+        self._least, self._most = samples.places.min(axis=0), samples.places.max(axis=0)
+        self._size = float((self._most - self._least).max())
+        self.step = fineness.step(self._size)
+        self._first_step = max(self.step, self._size / DEFAULT_CELLS)
+        across, along = (np.ceil((self._most - self._least) / self.step) + 2.0).tolist()
+        finer = self.step < self._first_step
+        self.pieces = int(np.ceil(across / _STRIPE)) if finer else 1
+        self.places = int(across * along)
+
+    @cached_property
+    def _first(self) -> Grid:
+        """The grid of the usual fineness, filled; its rim is not reached."""
+        step, margin = self._first_step, 2
+        while True:
+            origin = self._least - margin * step
+            if self._kind == SECTION:
+                origin[0] = 0.0  # axis 1: nothing is beyond it
+            shape = tuple((np.ceil((self._most - origin) / step).astype(int) + margin).tolist())
+            grid = Grid(origin, step, shape, self._samples.joint_values.shape[1])
+            fill(grid, self._seeker, self._samples)
+            rim = grid.reached.copy()
+            rim[0 if self._kind == SECTION else 1 : -1, 1:-1] = False
+            if not rim.any():
+                return grid
+            margin *= 2  # samples fell that short of the extremes
+
+    @cached_property
+    def _shape(self) -> tuple[int, ...]:
+        """Places of the whole grid along both coordinates, with the same ends as the first one."""
+        first = self._first
+        if self.pieces == 1:
+            return first.shape
+        ends = first.step / self.step * (np.array(first.shape) - 1)
+        return tuple((np.ceil(ends).astype(int) + 1).tolist())
+
+    @cached_property
+    def _seeds(self) -> Samples:
+        return self._samples.with_those_of(self._first)
+
+    def piece(self, number: int) -> Chords:
+        """Return the chords of a stripe; they do not depend on any other."""
+        seeker, shown = self._seeker, self._samples.places
+        if self.pieces == 1:
+            return chords_of(self._first, seeker, shown)
+        columns, rows = self._shape
+        begin, end = (part * (columns - 1) // self.pieces for part in (number, number + 1))
+        stripe = self._part(begin, end - begin + 1, rows)
+        for side in (0, end - begin):
+            column = self._part(begin + side, 1, rows)
+            fill(column, seeker, self._seeds, self._first_step)
+            stripe.reached[side], stripe.off[side] = column.reached[0], column.off[0]
+            stripe.joint_values[side], stripe.settled[side] = column.joint_values[0], True
+        fill(stripe, seeker, self._seeds, self._first_step)
+        return chords_of(stripe, seeker, shown, (begin == 0, end == columns - 1))
+
+    def _part(self, first: int, columns: int, rows: int) -> Grid:
+        joints = self._samples.joint_values.shape[1]
+        return Grid(self._first.origin, self.step, (columns, rows), joints, first=(first, 0))
+
+    def told(self, pieces: Sequence[Chords]) -> SampledView:
+        """Return the view that all pieces make, in their order."""
+        found = joined_outlines(pieces, self.step, self._shape)
+        if not found.curves:
+            return self.unasked()
+        # Bent chords are two to a step: a curve of the reach's own size is this far from them.
+        chord = self.step * self.step / (8.0 * self._size)
+        view = View(self._kind, found.curves, found.area, self.step, chord, self._directions)
+        return SampledView(view, found.moment)
+
+    def unasked(self) -> SampledView:
+        """Return what is known without asking: a box that holds it, half of it reached."""
+        return _box_around(self._least, self._most, self._kind, self._directions, self.step)
+
+
+_STRIPE = 32
+"""Steps of a grid in a stripe: of a fine grid a second's work."""
 
 
 def _box_around(
     least: FloatArray, most: FloatArray, kind: str, directions: FloatArray, step: float
 ) -> SampledView:
-    """Return the view of what is too thin for the grid: a box that holds it, half of it reached."""
+    """Return the view of a box around samples; of what is too thin for a grid that is all."""
     sides = SHORT_OF * (most - least)
     low = 0.5 * (least + most) - 0.5 * sides
     if kind == SECTION:
@@ -148,34 +224,3 @@ def _box_around(
     view = View(kind, (Curve(corners, outer=True),), Measure(half, half), step, step, directions)
     farthest = float(np.abs(corners[:, 0]).max())
     return SampledView(view, Measure(half * farthest, half * farthest))
-
-
-def ring_view(
-    axes: PlanAxes, radii: tuple[float, float], slack: float, resolution: float | None
-) -> View:
-    """Return the plan of what turns a whole turn about axis 1: a disc, a ring, or a circle.
-
-    Parameters
-    ----------
-    radii : the least and the greatest, m, each within ``slack``.
-    resolution : m, of the search for them.
-
-    Examples
-    --------
-    >>> axes = PlanAxes(np.eye(3)[:2], np.zeros(2), 1.0)
-    >>> ring = ring_view(axes, (1.0, 2.0), 1e-9, None)
-    >>> round(ring.area.value / np.pi, 9), [curve.outer for curve in ring.curves]
-    (3.0, [True, False])
-    """
-    least, most = radii
-    least = 0.0 if least <= slack else least
-    count = int(np.ceil(np.pi / np.arccos(1.0 - CHORD)))
-    turns = np.linspace(0.0, 2.0 * np.pi, count, endpoint=False)
-    circle = np.stack([np.cos(turns), np.sin(turns)], axis=1)
-    curves = [Curve(axes.centre + most * circle, outer=True)]
-    area = Measure(0.0, 0.0)
-    if most - least > slack:
-        area = Measure(np.pi * (most**2 - least**2), 2.0 * np.pi * (most + least) * slack)
-        if least:
-            curves.append(Curve(axes.centre + least * circle[::-1], outer=False))
-    return View(PLAN, tuple(curves), area, resolution, CHORD * most, axes.directions)

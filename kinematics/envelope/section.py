@@ -20,6 +20,9 @@ from kinematics.envelope.pair_region import PairRegion
 from kinematics.reach.sample_summary import FirstAxis, first_axis
 from kinematics.table import FloatArray
 
+_HALVINGS = 56
+"""Of a way between two postures: down to the last bit of a double."""
+
 
 @dataclass(frozen=True)
 class Section:
@@ -31,7 +34,7 @@ class Section:
     aside : distance of that plane from axis 1, m, at least 0.
     outward : (3,), direction of the plane's first coordinate in the base at joint 1 = 0.
     sideways : (3,), direction from axis 1 to the plane, of length ``aside``.
-    turn : of axis 1, rad, at most a whole one.
+    turn : of axis 1, rad, at most a whole one; pair : the two joints.
     """
 
     region: PairRegion
@@ -39,6 +42,7 @@ class Section:
     outward: FloatArray
     sideways: FloatArray
     turn: float
+    pair: tuple[int, ...]
 
     @property
     def area(self) -> Measure:
@@ -63,6 +67,26 @@ class Section:
         whole = swept_volume_of(self.region, 2.0 * np.pi)
         share = self.turn / (2.0 * np.pi)
         return Measure(whole.value * share, whole.error_bound * share), whole
+
+    def extreme_postures(self) -> FloatArray:
+        """Return postures of the pair of the least and the greatest radius and height, (4, 2)."""
+        (behind, before), (lowest, highest) = self.region.ends()
+        (left, right), _ = self.region.place_of(np.stack([behind, before]))[0].T
+        farthest = before if right >= -left else behind
+        nearest = behind if right >= -left else before
+        if left < 0.0 < right:
+            nearest = self._on_axis(behind, before)
+        return np.stack([nearest, farthest, lowest, highest])
+
+    def _on_axis(self, behind: FloatArray, before: FloatArray) -> FloatArray:
+        """Return the posture on the way between two at which the pair passes axis 1."""
+        for _ in range(_HALVINGS):
+            middle = 0.5 * (behind + before)
+            if self.region.place_of(middle[None])[0][0, 0] < 0.0:
+                behind = middle
+            else:
+                before = middle
+        return 0.5 * (behind + before)
 
     @property
     def reaches_behind(self) -> bool:
@@ -154,7 +178,8 @@ def section_from(motion: PointMotion, axis: FirstAxis) -> Section | None:
     region = pair_region_of(held, np.stack([outward, up]), foot, held=(0,))
     if region is None:
         return None
-    return Section(region, abs(away), outward, away * sideways, turn_of(motion))
+    pair = tuple(joint for joint in held.movers(np.stack([outward, up])) if joint)
+    return Section(region, abs(away), outward, away * sideways, turn_of(motion), pair)
 
 
 def turns_alone(motion: PointMotion) -> bool:

@@ -11,6 +11,7 @@ found (envelope.py).
 """
 
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -70,7 +71,8 @@ class View:
         curve that runs along it and back, or a single point.
     area : of all that is reached, each place counted once; m^2, with how far off it may be.
     resolution : m, distance of the places asked for one by one: what is narrower may be missed;
-        None where the curves are exact.
+        of a ring, and of a rectangle, by how much a radius may be off. None where the curves are
+        exact.
     chord : m, how far a curve may be from the straight line between two of its points; of one that
         is sampled only where it is smooth: a corner may be cut off by the resolution.
     directions : (2, 3), in the base, of the two coordinates; of the radius of a section that which
@@ -119,6 +121,22 @@ class Extreme:
     value: float
     joint_values: FloatArray
     position: FloatArray
+
+
+class Views(NamedTuple):
+    """What one way to find an envelope tells.
+
+    Attributes
+    ----------
+    section : or the side view; extremes : of each measure, the least before the greatest.
+    same_at_every_bearing : as of ``Envelope``.
+    """
+
+    section: View
+    plan: View
+    volume: Measure
+    same_at_every_bearing: bool
+    extremes: tuple[Extreme, ...]
 
 
 @dataclass(frozen=True)

@@ -58,6 +58,7 @@ def best_first(
     primary: FloatArray,
     secondary: FloatArray,
     most: int,
+    beyond: int,
 ) -> tuple[NDArray[np.intp], IntArray, NDArray[np.bool_], bool]:
     """Return the order of each target's postures, best first: those within travel, if any are.
 
@@ -65,7 +66,7 @@ def best_first(
     ----------
     target : (k,), ascending, of each wanted motion; source, flags : (p,), as ``postures_of`` gives.
     primary, secondary : (p,), in steps, larger is better; what is equal keeps its order.
-    most : postures of one target that are listed.
+    most, beyond : postures that are listed of a target with some within travel, and with none.
 
     Returns
     -------
@@ -75,7 +76,7 @@ def best_first(
     Examples
     --------
     >>> flags, rank = np.array([0, 1, 1]), np.array([0.5, 0.1, 0.2])
-    >>> best_first(1, np.array([0]), np.zeros(3, np.int64), flags, rank, rank, 9)[1]
+    >>> best_first(1, np.array([0]), np.zeros(3, np.int64), flags, rank, rank, 9, 9)[1]
     array([2, 1])
     """
     count = len(source)
@@ -87,17 +88,18 @@ def best_first(
         while at < count and target[source[at]] == m:
             inside |= (flags[at] & INSIDE) != 0
             at += 1
+        listed = most if inside else beyond
         for posture in range(start, at):
             if inside and not flags[posture] & INSIDE:
                 continue
             place = filled
             while place > first and _better(posture, order[place - 1], primary, secondary):
-                if place - first < most:
+                if place - first < listed:
                     order[place] = order[place - 1]
                 place -= 1
-            if place - first < most:
+            if place - first < listed:
                 order[place] = posture
-                filled = min(filled + 1, first + most)
+                filled = min(filled + 1, first + listed)
         offsets[m + 1], reached[m] = filled, inside
         all_reached &= inside
     return offsets, order[:filled], reached, all_reached

@@ -158,7 +158,7 @@ class Answerer:
         """
         rest = self._rest(asked.near)
         found = self._near_enough.of(self._solved(targets, rest, asked.near), targets, rest)
-        ranked = self._ranked(found, targets, asked._replace(best_only=True))
+        ranked = self._ranked(found, targets, asked._replace(best_only=True), beyond=1)
         scores = np.full(len(targets), -np.inf)
         some = ranked.offsets[1:] > ranked.offsets[:-1]
         # One posture of each such target, in their order.
@@ -186,13 +186,16 @@ class Answerer:
             tolerance = targets.position_tolerance + targets.angle_tolerance * aside
         return self.bounds.hold(targets.tool_in_base, tolerance).outcome
 
-    def _ranked(self, found: Found, targets: Targets, asked: Asked) -> Ranked:
+    def _ranked(
+        self, found: Found, targets: Targets, asked: Asked, beyond: int = MOST_LISTED
+    ) -> Ranked:
         idle = self.method.idle
         return self.ranking.rank(
             found,
             targets,
             asked.near,
             1 if asked.best_only else MOST_LISTED,
+            beyond,
             idle if idle.any() else None,
             self.method.task == POSE,
         )

@@ -80,7 +80,7 @@ class Bounds:
         self.axis = turning[0] + 1 if turning else 0
         if not turning or (slides and slides[-1] > turning[0]):
             return
-        points = _shortest(screws.axis[turning], screws.point[turning], goal)
+        points = shortest_way(screws.axis[turning], screws.point[turning], goal)
         lengths = np.linalg.norm(np.diff(points, axis=0), axis=1) * screws.length
         self._first = points[0] * screws.length
         self.furthest = float(lengths.sum())
@@ -109,11 +109,26 @@ class Bounds:
         return float(np.linalg.norm(places[0] - places[1]))
 
 
-def _shortest(axis: FloatArray, point: FloatArray, goal: FloatArray) -> FloatArray:
+def shortest_way(axis: FloatArray, point: FloatArray, goal: FloatArray) -> FloatArray:
     """Return a point on each line (n, 3), and the goal after them, so that the way is short.
 
     Light reflects off a line where the way between two points is shortest: the place along it
     divides that between their feet as their distances from it.
+
+    Parameters
+    ----------
+    axis, point : (n, 3), unit directions of the lines, and any points on them; goal : (3,).
+
+    Examples
+    --------
+    Across from the one line to the other, and on to the goal.
+
+    >>> lines = np.array([[0.0, 0.0, 1.0], [0.0, 0.0, 1.0]])
+    >>> points = shortest_way(lines, np.array([[0.0, 0.0, 7.0], [3.0, 0.0, 5.0]]), np.zeros(3))
+    >>> points.round(6) + 0.0
+    array([[0., 0., 0.],
+           [3., 0., 0.],
+           [0., 0., 0.]])
     """
     places = np.vstack([point, goal])
     for _ in range(_SWEEPS):

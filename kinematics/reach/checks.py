@@ -89,7 +89,7 @@ class Reacher:
 
         Parameters
         ----------
-        best_only : tell the best posture of each target alone.
+        best_only : tell the best posture alone of each target within travel.
         near : (joints,), rank postures by nearness to these joint values instead of by margin.
         at_once : give up rather than take milliseconds, as singular targets do.
 

@@ -106,6 +106,7 @@ class Ranking:
         targets: Targets,
         near: FloatArray | None = None,
         most: int = MOST_LISTED,
+        beyond: int = MOST_LISTED,
         still: NDArray[np.bool_] | None = None,
         angles_count: bool = True,
     ) -> Ranked:
@@ -116,7 +117,7 @@ class Ranking:
         near : (joints,), rank by nearness to it, in shares of travel; by margin else. What is equal
             (to a step, ``ROUNDED``) is ranked by the margin, then those within working travel come
             first, then by the smallest singular value where nothing bounds the arm.
-        most : how many are listed of one target.
+        most, beyond : how many are listed of a target with some within travel, and with none.
         still : (joints,), joints that are not turned by whole turns.
         angles_count : whether a posture put onto a limit must keep the target's orientation.
         """
@@ -137,7 +138,7 @@ class Ranking:
             primary = preferred(margin, outside_working)
             secondary = self._smallest(values, margin)
         offsets, order, inside, all_inside = best_first(
-            len(targets), found.target, postures.source, flags, primary, secondary, most
+            len(targets), found.target, postures.source, flags, primary, secondary, most, beyond
         )
         return Ranked(
             offsets,

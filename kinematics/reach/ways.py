@@ -12,7 +12,8 @@ from kinematics.table import FloatArray
 class Asked(NamedTuple):
     """What is asked beside the targets: the best posture alone, and near which joint values.
 
-    ``at_once`` asks to give up, by TakesLonger, before anything that takes milliseconds.
+    Of a target beyond travel all postures are told. ``at_once`` asks to give up, by TakesLonger,
+    before anything that takes milliseconds.
     """
 
     best_only: bool = False

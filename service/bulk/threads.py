@@ -73,22 +73,31 @@ class Threads:
         begins = range(0, count, size)
         left = iter(begins)
         results: dict[int, Result] = {}
+        failed = threading.Event()
 
         def turn() -> bool:
             """Make pieces for a while; return whether there may be more."""
             until = perf_counter() + TURN_S
-            for begin in left:
+            for begin in () if failed.is_set() else left:
                 results[begin] = work(begin, min(begin + size, count))
                 if perf_counter() > until:
                     return True
             return False
 
         async def take_turns() -> None:
-            while await loop.run_in_executor(self._pool, turn):
-                pass
+            try:
+                while await loop.run_in_executor(self._pool, turn):
+                    pass
+            except BaseException:
+                failed.set()
+                raise
 
         if count and await loop.run_in_executor(self._pool, turn):
-            await asyncio.gather(*(take_turns() for _ in range(self._count)))
+            takers = [take_turns() for _ in range(self._count)]
+            # Nobody is told of a failure while another thread is still at work on the same.
+            for end in await asyncio.gather(*takers, return_exceptions=True):
+                if end is not None:
+                    raise end
         return [results[begin] for begin in begins]
 
     def stop(self) -> None:

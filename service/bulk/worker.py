@@ -20,11 +20,13 @@ from service.bulk import conversion_rendering
 from service.bulk.conversion_reading import VALUES, conversions_of_body
 from service.bulk.reading import Key, many_of_body, model_of
 from service.bulk.rendering import RENDERINGS, InPieces, Outline, Piece, Stamp
+from service.bulk.target_rows import RowsRead, pieces_of, rows_of_body
+from service.convert import Units
 from service.details import as_given, shown
 from service.errors import ServiceError
 from service.operations.arms import Arms, StoredArm
 from service.problems import Problem, problem_of
-from service.storage.ports import Revision
+from service.storage.ports import GivenPiece, Revision
 from service.wire.arms import ReadArm, read_arm
 from service.wire.cells import CellAt, no_cell
 from service.wire.formats import Format
@@ -101,11 +103,6 @@ def start() -> None:
     gc.freeze()
 
 
-def identity() -> int:
-    """Return the number of the process."""
-    return os.getpid()
-
-
 def begin(raw: bytes, key: Key, wanted: Format, stamp: Stamp) -> Problem | ArmWanted | Outline:
     """Parse a body; the first step, and the only one where the rest is quick work."""
     forget()
@@ -146,6 +143,26 @@ def begin_conversions(raw: bytes, wanted: Format, stamp: Stamp) -> Problem | Out
         return rendering.outline()
     except (ServiceError, KinematicsError, ValidationError) as error:
         return _refusal(error, body)
+
+
+def take(part: bytes) -> None:
+    """Take a part of a body whose targets are wanted; the first steps."""
+    _kept.setdefault("parts", []).append(part)
+
+
+def begin_targets(form: str | None) -> Problem | RowsRead:
+    """Parse the body that was taken, of CSV with angles of a form; the pieces come next."""
+    raw = b"".join(_kept.pop("parts", ()))
+    try:
+        read, _kept["rows"] = rows_of_body(raw, form)
+    except ServiceError as error:
+        return _refusal(error, ...)
+    return read
+
+
+def target_pieces(begin: int, end: int, size: int, units: Units) -> list[GivenPiece]:
+    """Return some of the pieces of ``size`` that the targets are cut into."""
+    return pieces_of(_kept["rows"], begin, end, size, units)
 
 
 def piece(first: int, last: int) -> Piece:

@@ -89,18 +89,23 @@ class ManyTargets:
         each = self.seconds / max(len(self.targets), 1)
         return int(min(max(_PIECE_S / max(each, 1e-6), 1), _LARGEST_PIECE))
 
-    def told(self, begin: int, end: int) -> tuple[range, ToldChecks]:
-        """Return which of the usable targets are among ``begin`` ... ``end``, and what they are."""
+    def told(self, begin: int, end: int, *, families: bool = True) -> tuple[range, ToldChecks]:
+        """Return which of the usable targets are among ``begin`` ... ``end``, and what they are.
+
+        ``families`` : whether those of postures that are not told are wanted.
+        """
         first, last = np.searchsorted(self.read.places, (begin, end)).tolist()
         targets = self.targets.only(np.arange(first, last))
-        checks = self.question.reacher.check(targets, near=self.wanted.near)
-        by_singularity = self.wanted.order == SINGULARITY
         approaches = {
             number - first: self.read.approaches[number]
             for number in range(first, last)
             if number in self.read.approaches
         }
+        by_singularity = self.wanted.order == SINGULARITY
         every_way = by_singularity or not self.wanted.best_only
+        # Ranking the best alone takes less, where no other is looked at.
+        best_only = not (every_way or approaches or families)
+        checks = self.question.reacher.check(targets, best_only=best_only, near=self.wanted.near)
         approached = approached_checks(
             self.question, checks, targets, approaches, every_way=every_way
         )

@@ -3,6 +3,7 @@
 Left out: printing them (wire/reach_lines.py).
 """
 
+from dataclasses import replace
 from itertools import chain
 from typing import NamedTuple
 
@@ -12,10 +13,10 @@ from numpy.typing import NDArray
 from kinematics.findings import FINE, OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL
 from kinematics.reach.targets import CODES, PROOFS, REACHABLE, VERDICTS
 from kinematics.singularity import STATES
-from kinematics.travel_limits import limits_exceeded
 from service.operations.reach import ManyTargets
 from service.operations.reach_told import NO_STATE, ToldChecks
 from service.problems import KINDS
+from service.wire.reach_gathered import FIELD
 from service.wire.reach_lines import ReachColumns, Texts
 
 _CODES = np.array(CODES)
@@ -40,9 +41,14 @@ class _Lines(NamedTuple):
     solutions: NDArray[np.intp]
 
 
-def columns_of(many: ManyTargets, begin: int, end: int) -> ReachColumns:
-    """Return what the lines of targets ``begin`` ... ``end`` say."""
-    span, told = many.told(begin, end)
+def columns_of(
+    many: ManyTargets, begin: int, end: int, *, whole_reasons: bool = False
+) -> ReachColumns:
+    """Return what the lines of targets ``begin`` ... ``end`` say.
+
+    ``whole_reasons`` : whether all that JSON tells of reasons is wanted, beside their sentences.
+    """
+    span, told = many.told(begin, end, families=False)
     lines = _lines_of(many, span, told, range(begin, end))
     checks, question = told.checks, told.question
     # Of a line without a target or a solution the last entry is told: an empty one.
@@ -69,11 +75,8 @@ def columns_of(many: ManyTargets, begin: int, end: int) -> ReachColumns:
         branches=Texts(checks.branches, branches),
         errors=np.concatenate([told.errors_out(), np.full((1, 2), np.nan)])[lines.solutions],
         reasons=_reasons_of(many, told, lines),
-        names={
-            line: name
-            for line, place in enumerate(lines.places.tolist())
-            if (name := many.read.names[place])
-        },
+        names=_names_of(many, lines),
+        why=_why(many, told, lines, span.start) if whole_reasons else {},
     )
 
 
@@ -124,11 +127,11 @@ def _codes_of(
 
     tells = lines.solutions >= 0
     if told.judged is not None:
-        states = np.append(told.judged.states, FINE)[lines.solutions]
+        states = np.append(told.judged.column_of_states(), FINE)[lines.solutions]
         for code in range(1, len(STATES)):
             note(code, states == code)
-    exceeded = limits_exceeded(told.question.arm, told.checks.joint_values)
-    for code, beyond in zip((OUTSIDE_WORKING_TRAVEL, OUTSIDE_TRAVEL), exceeded, strict=True):
+    codes_beyond = (OUTSIDE_WORKING_TRAVEL, OUTSIDE_TRAVEL)
+    for code, beyond in zip(codes_beyond, told.exceeded, strict=True):
         note(code, np.append(beyond, False)[lines.solutions])
     for solution in told.with_more_codes():
         for code in told.codes(solution):
@@ -149,7 +152,34 @@ def _codes_of(
 def _states_of(told: ToldChecks, solutions: NDArray[np.intp]) -> Texts:
     if told.judged is None:
         return Texts((NO_STATE,), np.where(solutions < 0, -1, 0))
-    return Texts(STATES, np.append(told.judged.states, -1)[solutions])
+    return Texts(STATES, np.append(told.judged.column_of_states(), -1)[solutions])
+
+
+def _names_of(many: ManyTargets, lines: _Lines) -> dict[int, str]:
+    names = many.read.names
+    if not any(names):
+        return {}
+    places = enumerate(lines.places.tolist())
+    return {line: name for line, place in places if (name := names[place])}
+
+
+def _why(
+    many: ManyTargets, told: ToldChecks, lines: _Lines, first: int
+) -> dict[int, dict[str, object]]:
+    """Return reasons as JSON tells them, and problems, whose pointers lead into their target.
+
+    ``first`` : of the usable targets, that is answered first.
+    """
+    why: dict[int, dict[str, object]] = {}
+    for line in np.flatnonzero(lines.ranks == 0).tolist():
+        index = int(lines.targets[line])
+        if index == _REFUSED:
+            detail = many.read.refused[int(lines.places[line])]
+            inside = detail.where[2:] if detail.where[:1] == (FIELD,) else detail.where
+            why[line] = replace(detail, where=inside).problem_of_item()
+        else:
+            why[line] = told.reason(index, many.read.forms[first + index]) or {}
+    return why
 
 
 def _reasons_of(many: ManyTargets, told: ToldChecks, lines: _Lines) -> dict[int, str]:

@@ -14,7 +14,7 @@ from kinematics.jacobian import motion_of
 from kinematics.reach.targets import OUTSIDE_TRAVEL, Checks
 from kinematics.travel_limits import limits_exceeded
 from service.operations.questions import Question
-from service.operations.reach_told import ToldChecks
+from service.operations.reach_told import Exceeded, ToldChecks
 from service.operations.singularities import judged, judged_reading
 
 if TYPE_CHECKING:
@@ -36,19 +36,19 @@ def told_together(
     """
     if best_only and not by_singularity:
         kept = _best_alone(checks)
-        checks = _only(checks, kept)
-        if approached is not None:
-            approached = replace(approached, ways=tuple(compress(approached.ways, kept)))
+        if not kept.all():
+            checks = _only(checks, kept)
+            if approached is not None:
+                approached = replace(approached, ways=tuple(compress(approached.ways, kept)))
     joint_values = checks.joint_values
     if not len(joint_values):
-        return ToldChecks(question, checks, None, [], approached=approached)
+        return ToldChecks(question, checks, None, _NO_LIMIT, approached=approached)
     motion = motion_of(question.arm, joint_values, question.tool.tool_in_flange)
-    working, travel = limits_exceeded(question.arm, joint_values)
     return ToldChecks(
         question,
         checks,
         judged(question, joint_values, motion),
-        (working | travel).tolist(),
+        limits_exceeded(question.arm, joint_values),
         best_only=best_only,
         by_singularity=by_singularity,
         approached=approached,
@@ -74,6 +74,7 @@ def _only(checks: Checks, kept: NDArray[np.bool_]) -> Checks:
     )
 
 
+_NO_LIMIT: Exceeded = (np.zeros(0, np.bool_), np.zeros(0, np.bool_))
 _OF_SOLUTIONS = (
     *("joint_values", "margin", "outside_working", "position_error", "angle_error", "branch"),
 )
@@ -84,10 +85,9 @@ def told_best(
 ) -> ToldChecks:
     """Return what was found for one target, of which the best solution alone can be told."""
     if not len(checks.joint_values):
-        return ToldChecks(question, checks, None, [], approached=approached)
+        return ToldChecks(question, checks, None, _NO_LIMIT, approached=approached)
     joint_values = checks.joint_values[0].tolist()
     read = question.reader.read(joint_values)
     found = judged_reading(question, joint_values, read)
-    return ToldChecks(
-        question, checks, found, [read.outside], first_alone=True, approached=approached
-    )
+    exceeded = np.array([read.outside]), np.array([read.outside])
+    return ToldChecks(question, checks, found, exceeded, first_alone=True, approached=approached)

@@ -25,7 +25,7 @@ def plain_answer(
     """
     reading = question.reader.read(best.joint_values)
     judged = judged_reading(question, best.joint_values, reading)
-    if judged is None or judged.states[0] != REGULAR or judged.space.watched_position_rank:
+    if judged is None or judged.plain.states[0] != REGULAR or judged.space.watched_position_rank:
         return None
     if reading.outside:
         return None

@@ -44,6 +44,9 @@ if TYPE_CHECKING:
     # Its kernels are loaded with all others for reach, when first wanted.
     from kinematics.travel.approaches import Approached
 
+Exceeded = tuple[NDArray[np.bool_], NDArray[np.bool_]]
+"""As ``limits_exceeded`` tells it, (solutions,) each."""
+
 NO_STATE = "none"
 _MORE_POSTURES = "more-postures"
 """The finding that some postures are not listed."""
@@ -55,7 +58,7 @@ class ToldChecks:
     Attributes
     ----------
     judged : the solutions' singularity; None where there are none.
-    beyond : which solutions are beyond a travel or working travel limit.
+    exceeded : which solutions are beyond a working travel, and which beyond a travel limit.
     ranks : for each target, indices into all solutions, the best first.
 
     With ``best_only`` one solution is told of each target, but all that exceed travel; with
@@ -67,7 +70,7 @@ class ToldChecks:
         question: Question,
         checks: Checks,
         judged: Judged | None,
-        beyond: Sequence[bool],
+        exceeded: Exceeded,
         *,
         best_only: bool = False,
         by_singularity: bool = False,
@@ -75,7 +78,7 @@ class ToldChecks:
         approached: "Approached | None" = None,
     ) -> None:
         self.question, self.checks = question, checks
-        self.judged, self.beyond = judged, beyond
+        self.judged, self.exceeded = judged, exceeded
         self._approached = approached
         self._best_only, self._first_alone = best_only, first_alone
         spans = [range(*span) for span in pairwise(checks.offsets.tolist())]
@@ -87,7 +90,7 @@ class ToldChecks:
         """Return solutions, those with a whole approach first, the farthest from singular first."""
         if self.judged is None:
             return solutions
-        readings = self.judged.readings
+        readings = self.judged.plain.readings
 
         def worse(solution: int) -> tuple[bool, float]:
             way = self._way(solution)
@@ -152,6 +155,13 @@ class ToldChecks:
         )
 
     @cached_property
+    def _beyond(self) -> list[bool]:
+        """Which solutions exceed a limit of either kind."""
+        working, travel = self.exceeded
+        beyond: list[bool] = (working | travel).tolist()
+        return beyond
+
+    @cached_property
     def _limits(self) -> Sequence[tuple[Finding, ...]]:
         """The findings about limits that each solution exceeds."""
         return each_travel_findings(self.question.arm, self.checks.joint_values)
@@ -162,7 +172,7 @@ class ToldChecks:
 
     def state(self, solution: int) -> str:
         """Return whether a solution is regular, near or singular."""
-        return NO_STATE if self.judged is None else STATES[self.judged.states[solution]]
+        return NO_STATE if self.judged is None else STATES[self.judged.plain.states[solution]]
 
     def branch(self, solution: int) -> str:
         """Return a solution's branch in words; empty where the arm is of no class with names."""
@@ -178,7 +188,7 @@ class ToldChecks:
             turned = self.question.base_in_frame[:3, :3]
             singularity, said = self.judged.told(solution, turned)
         findings: list[dict[str, object]] = []
-        if self.beyond[solution]:
+        if self._beyond[solution]:
             beyond = self._limits[solution]
             findings = [beyond_out(self.question.units, finding) for finding in beyond]
         findings += [computed_finding_out(self.question.units, finding) for finding in said]
@@ -204,11 +214,11 @@ class ToldChecks:
         """Return the codes of what is to be known of one solution, without the words."""
         found: set[int] = set()
         if self.judged is not None:
-            found.add(self.judged.states[solution])
+            found.add(self.judged.plain.states[solution])
             if self.judged.space.watched_position_rank:
                 said = self.judged.told(solution, self.question.base_in_frame[:3, :3])[1]
                 found |= {finding.code for finding in said}
-        if self.beyond[solution]:
+        if self._beyond[solution]:
             found |= {finding.code for finding in self._limits[solution]}
         return frozenset(found.union(self._codes_on_the_way(solution)) - {FINE})
 

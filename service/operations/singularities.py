@@ -5,6 +5,7 @@ from math import isfinite
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from kinematics.findings import Finding
 from kinematics.jacobian import Motion, motion_of
@@ -18,29 +19,55 @@ from kinematics.task_space import TaskSpace
 from service.operations.questions import Question
 
 
-class Judged(NamedTuple):
-    """Postures judged together, told one at a time.
+class _Plain(NamedTuple):
+    """States, readings and steps as in ``Judgement``, as plain numbers, one for each posture."""
 
-    Attributes
-    ----------
-    joint_values : (count, joints).
-    states, readings, steps : as in ``Judgement``, as plain numbers, one for each posture.
-    known : what ``whole`` returns, if it has been worked out.
-    """
-
-    question: Question
-    space: TaskSpace
-    anatomy: Anatomy
-    joint_values: Sequence[Sequence[float]] | FloatArray
     states: list[int]
     readings: list[list[float]]
     steps: list[list[float]]
-    known: tuple[Motion, Judgement] | None = None
+
+
+class Judged:
+    """Postures judged together, told one at a time.
+
+    Parameters
+    ----------
+    joint_values : (count, joints).
+    plain, known : what was found, of which one may be left to be worked out from the other.
+    """
+
+    def __init__(
+        self,
+        question: Question,
+        space: TaskSpace,
+        anatomy: Anatomy,
+        joint_values: Sequence[Sequence[float]] | FloatArray,
+        plain: _Plain | None,
+        known: tuple[Motion, Judgement] | None = None,
+    ) -> None:
+        self.question, self.space, self.anatomy = question, space, anatomy
+        self.joint_values = joint_values
+        self._plain, self._known = plain, known
+
+    @property
+    def plain(self) -> _Plain:
+        """States, readings and steps; of a column of states nobody needs the others so."""
+        if self._plain is None:
+            found = self.whole()[1]
+            lists = found.state.tolist(), found.readings.tolist(), found.step.tolist()
+            self._plain = _Plain(*lists)
+        return self._plain
+
+    def column_of_states(self) -> NDArray[np.int64]:
+        """Return 0 regular, 1 near, 2 singular of each posture, (count,)."""
+        if self._known is not None:
+            return self._known[1].state
+        return np.array(self.plain.states)
 
     def whole(self) -> tuple[Motion, Judgement]:
         """Return motion and judgement of all postures."""
-        if self.known is not None:
-            return self.known
+        if self._known is not None:
+            return self._known
         question = self.question
         values = np.asarray(self.joint_values)
         motion = motion_of(question.arm, values, question.tool.tool_in_flange)
@@ -50,9 +77,10 @@ class Judged(NamedTuple):
         self, index: int, base_in_frame: FloatArray
     ) -> tuple[dict[str, object], tuple[Finding, ...]]:
         """Return one posture's singularity as answered, and its findings."""
-        readings, step = self.readings[index], self.steps[index]
+        states, every_reading, steps = self.plain
+        readings, step = every_reading[index], steps[index]
         # Of a regular posture there is nothing to say in words, unless it is watched for more.
-        if self.states[index] == REGULAR and not self.space.watched_position_rank:
+        if states[index] == REGULAR and not self.space.watched_position_rank:
             travel, speed = travel_and_speed(self.question.arm, readings, step)
             return self._answer(readings, travel, speed), ()
         motion, judgement = self.whole()
@@ -121,15 +149,7 @@ def judged(question: Question, joint_values: FloatArray, motion: Motion) -> Judg
     if question.prepared is None:
         return None
     judgement = judge(question.arm, question.prepared[0], motion)
-    return Judged(
-        question,
-        *question.prepared,
-        joint_values,
-        judgement.state.tolist(),
-        judgement.readings.tolist(),
-        judgement.step.tolist(),
-        (motion, judgement),
-    )
+    return Judged(question, *question.prepared, joint_values, None, (motion, judgement))
 
 
 def judged_reading(
@@ -139,5 +159,5 @@ def judged_reading(
     if question.prepared is None or reading.state is None:
         return None
     space, anatomy = question.prepared
-    states, readings, steps = [reading.state], [reading.readings], [reading.step]
-    return Judged(question, space, anatomy, [joint_values], states, readings, steps)
+    plain = _Plain([reading.state], [reading.readings], [reading.step])
+    return Judged(question, space, anatomy, [joint_values], plain)

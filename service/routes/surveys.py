@@ -10,10 +10,12 @@ from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.bulk.answering import SHORT_BYTES, Bulk
+from service.bulk.answering import Bulk
 from service.bulk.streaming import StreamedAnswer
 from service.bulk.survey_progress import watch
+from service.bulk.survey_targets import survey_of_request
 from service.event_streams import EventStream
+from service.problems import Problem
 from service.routes.direct import DirectRoute, ReachRoute
 from service.sorted_ids import ID
 from service.storage.ports import Survey
@@ -23,21 +25,17 @@ from service.web import survey_report as survey_report_page
 from service.web.document import documented, parameter
 from service.web.schemas import BYTES
 from service.wire import csv_rows, npy, paging
-from service.wire.answers import json_answer
-from service.wire.body import media_type_of, parse_json, read_bytes
+from service.wire.answers import json_answer, json_problem
 from service.wire.formats import JSON, SVG, answer_format
-from service.wire.npy import read_npy
 from service.wire.query import known_parameters
 from service.wire.question_parameters import one_of
-from service.wire.senders_key import senders_key
 from service.wire.surveys import (
-    TABLE_PARAMETERS,
+    CSV_PARAMETERS,
     SurveyAnswer,
     SurveyDetails,
     SurveyListAnswer,
     SurveyRequest,
     SurveyResult,
-    request_beside_table,
     survey_answer,
     survey_list_answer,
 )
@@ -49,7 +47,7 @@ taking_in = APIRouter(route_class=ReachRoute)
 _NO_STORE = {"cache-control": "no-store"}
 _READ = ["GET", "HEAD"]
 _BESIDE_TABLE = tuple(
-    parameter(name, f"{says} Beside a table.") for name, says in TABLE_PARAMETERS.items()
+    parameter(name, f"{says} Beside a table.") for name, says in CSV_PARAMETERS.items()
 )
 _FORMATS = one_of(*{name: True for kind in SURVEY_KINDS.values() for name in kind.formats})
 _ONE = (
@@ -78,12 +76,13 @@ _PAGES = (
         "the last bit. The arm is that of the moment, whatever becomes of it. Of more than 10 000 "
         "targets the first 10 000 are looked at before the answer; what is wrong with others is "
         "told in the result. Targets may also come as NPY, rows of `x y z` or `x y z` and the "
-        "quaternion `w x y z`, with all else in the query. The same `Idempotency-Key` with the "
+        "quaternion `w x y z`, or as CSV (the part locations of `/v1/reach/checks`), with all else "
+        "in the query. The same `Idempotency-Key` with the "
         "same body gives the survey that was taken in first.",
         request=SurveyRequest,
         answer=SurveyAnswer,
         parameters=(_SENDERS_KEY, *_BESIDE_TABLE),
-        other_requests={npy.MEDIA_TYPE: BYTES},
+        other_requests={npy.MEDIA_TYPE: BYTES, csv_rows.MEDIA_TYPE: {"type": "string"}},
         statuses=(409, 503),
         success=202,
         headers={"Location": "Address of the survey."},
@@ -92,23 +91,11 @@ _PAGES = (
 )
 async def create_survey(request: Request) -> Response:
     """Take a survey in."""
-    is_table = media_type_of(request) == npy.MEDIA_TYPE
-    parameters = known_parameters(request, TABLE_PARAMETERS if is_table else ())
-    key = senders_key(request)
-    raw = await read_bytes(request, JSON, npy.MEDIA_TYPE)
-    bulk, surveys = _bulk(request), _surveys(request)
-    table = read_npy(raw) if is_table else None
-    if is_table:
-        asked = request_beside_table(parameters)
-        raw += request.url.query.encode()
-    else:
-        read = partial(parse_json, raw)
-        body = await bulk.threads.run(read) if len(raw) > SHORT_BYTES else read()
-        request.state.json_body = body
-        asked = SurveyRequest.model_validate(body)
-    survey, _ = await bulk.threads.run(partial(surveys.create, asked, key, raw, table))
+    survey = await survey_of_request(request)
+    if isinstance(survey, Problem):
+        return json_problem(survey, request.state.request_id)
     headers = _NO_STORE | {"location": f"/v1/surveys/{survey.id}"}
-    return json_answer(_answer(surveys, survey), 202, headers)
+    return json_answer(_answer(_surveys(request), survey), 202, headers)
 
 
 @router.api_route(

@@ -289,5 +289,8 @@ class SurveyStorage(Protocol):
     def remove(self, survey: str) -> None:
         """Remove a survey and its pieces."""
 
+    def over_before(self, at: datetime, limit: int) -> Sequence[str]:
+        """Return the ids of surveys that were over before a moment, the oldest first."""
+
     def may_lead(self) -> bool:
         """Return whether this process is the one to run surveys; asking makes it, if none is."""

@@ -193,13 +193,21 @@ class SqlSurveys(SqlStore):
             connection.execute(SURVEY_PIECES.delete().where(SURVEY_PIECES.c.survey == survey))
             connection.execute(SURVEYS.delete().where(SURVEYS.c.id == survey))
 
+    def over_before(self, at: datetime, limit: int) -> Sequence[str]:
+        """See ``SurveyStorage.over_before``."""
+        over = SURVEYS.c.state.not_in(OPEN_STATES), SURVEYS.c.finished_at_ms < milliseconds(at)
+        asked = sa.select(SURVEYS.c.id).where(*over).order_by(SURVEYS.c.id).limit(limit)
+        with self._asking() as connection:
+            return list(connection.execute(asked).scalars())
+
     def may_lead(self) -> bool:
         """See ``SurveyStorage.may_lead``."""
         if self._engine.dialect.name != "postgresql":
             return True  # a file is one server's alone
         with self._lock:
-            if self._lead is not None:
+            if self._lead is not None and self._still_leads(self._lead):
                 return True
+            self._lead = None
             try:
                 connection = self._engine.connect().execution_options(isolation_level="AUTOCOMMIT")
                 if connection.execute(sa.select(sa.func.pg_try_advisory_lock(_LEADER))).scalar():
@@ -209,6 +217,20 @@ class SqlSurveys(SqlStore):
                 connection.close()
             except (sa.exc.DBAPIError, sa.exc.TimeoutError) as error:
                 raise unavailable(error, f"{self._what} cannot be read") from error
+            return False
+
+    @staticmethod
+    def _still_leads(connection: sa.Connection) -> bool:
+        """Return whether a connection holds the lock: a server that was restarted took it back."""
+        held = sa.text(
+            "SELECT EXISTS (SELECT FROM pg_locks WHERE locktype = 'advisory' AND granted"
+            " AND pid = pg_backend_pid() AND (classid::bigint << 32) + objid::bigint = :lock)"
+        )
+        try:
+            return bool(connection.execute(held, {"lock": _LEADER}).scalar())
+        except sa.exc.DBAPIError:
+            connection.invalidate()
+            connection.close()
             return False
 
     def close(self) -> None:

@@ -12,7 +12,6 @@ import orjson
 from pydantic import ValidationError
 
 from kinematics.errors import KinematicsError
-from kinematics.table import FloatArray
 from service.details import Detail
 from service.errors import NotAvailable, NotFinished, ServiceError, UnknownSurvey
 from service.operations.arms import Arms
@@ -27,7 +26,7 @@ from service.storage.ports import (
     Survey,
     SurveyStorage,
 )
-from service.surveys.kinds import Accepted
+from service.surveys.kinds import Accepted, SentTargets
 from service.surveys.pool import Pool
 from service.surveys.registry import SURVEY_KINDS
 from service.surveys.runner import Runner
@@ -54,14 +53,15 @@ class Surveys:
         version: str,
         *,
         now: Callable[[], datetime] = utc_now,
+        days: int = 0,
     ) -> None:
-        self.store = store
-        self.runner = Runner(store, arms, pool, now=now)
+        self.store, self._days = store, days
+        self.runner = Runner(store, arms, pool, now=now, days=days)
         self._arms, self._version, self._now = arms, version, now
 
     def go_on(self) -> None:
-        """Go on with what a former process left open."""
-        if self.store.count_open():
+        """Go on with what a former process left open, and with removing what is old."""
+        if self._days or self.store.count_open():
             self.runner.wake()
 
     def stop(self) -> None:
@@ -73,7 +73,7 @@ class Surveys:
         asked: SurveyRequest,
         key: str | None,
         raw: bytes,
-        table: FloatArray | None = None,
+        sent: SentTargets | None = None,
     ) -> tuple[Survey, bool]:
         """Take a survey in, and return it and whether it is new.
 
@@ -81,7 +81,7 @@ class Surveys:
         ----------
         key, raw : what the sender calls this request, and its bytes: the same again give the
             survey that the first gave.
-        table : what came as NPY beside what the query asks.
+        sent : targets that came beside what is asked.
 
         Raises
         ------
@@ -100,7 +100,7 @@ class Surveys:
                 way_out="cancel some, or ask again later",
                 headers={"Retry-After": str(_LATEST_S)},
             )
-        accepted = self._accepted(asked, table)
+        accepted = self._accepted(asked, sent)
         at = self._now()
         survey = Survey(
             id=new_id(at),
@@ -124,10 +124,10 @@ class Surveys:
             return self.runner.seen(survey)
         raise other_request(key)
 
-    def _accepted(self, asked: SurveyRequest, table: FloatArray | None) -> Accepted:
+    def _accepted(self, asked: SurveyRequest, sent: SentTargets | None) -> Accepted:
         """Return what a kind makes of its request, whose refusals point below ``request``."""
         try:
-            return SURVEY_KINDS[asked.kind].accept(self._arms, asked.request, table)
+            return SURVEY_KINDS[asked.kind].accept(self._arms, asked.request, sent)
         except KinematicsError as error:
             raise error.below(_FIELD) from None
         except ValidationError as error:

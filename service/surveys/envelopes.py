@@ -9,7 +9,6 @@ from typing import cast
 
 import orjson
 
-from kinematics.table import FloatArray
 from service.cautions import CAUTIONS
 from service.convert import UNITS
 from service.drawings.envelope_sheet import envelope_sheet
@@ -20,7 +19,7 @@ from service.operations.envelopes import EnvelopeQuestion, envelope_question
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.surveys.envelope_kept import envelope_document, envelope_from
 from service.surveys.envelope_report import report_of
-from service.surveys.kinds import Accepted, Report, Told
+from service.surveys.kinds import Accepted, Report, SentTargets, Told
 from service.surveys.pinned import OneArm, Setup, pinned, setup_of
 from service.wire.answers import json_bytes
 from service.wire.arms import ReadArm
@@ -38,10 +37,10 @@ class Envelopes:
     formats: tuple[Format, ...] = ("json", "svg")
 
     def accept(
-        self, arms: Arms[ReadArm], request: Document, table: FloatArray | None = None
+        self, arms: Arms[ReadArm], request: Document, sent: SentTargets | None = None
     ) -> Accepted:
         """See ``Kind.accept``."""
-        if table is not None:
+        if sent is not None:
             raise UnusableValue(
                 "an envelope is not asked for by a table",
                 way_out='send JSON: {"kind": "envelope"}',

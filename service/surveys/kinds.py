@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, NamedTuple, Protocol
 
-from kinematics.table import FloatArray
+from service.convert import Units
 from service.operations.arms import Arms
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.wire.arms import ReadArm
@@ -86,6 +86,20 @@ class Report:
     said: str = ""
 
 
+class SentTargets(Protocol):
+    """Targets that are there, wherever that is."""
+
+    @property
+    def count(self) -> int:
+        """How many there are."""
+
+    def first(self, most: int) -> Sequence[Any]:
+        """Return the first of them as a body has them."""
+
+    def pieces(self, size: int, units: Units) -> Iterable[GivenPiece]:
+        """Return all of them, cut into pieces."""
+
+
 class Kind(Protocol):
     """One kind of survey; plug another in by adding it to ``registry.py``."""
 
@@ -93,13 +107,13 @@ class Kind(Protocol):
     formats: tuple[Format, ...]
 
     def accept(
-        self, arms: Arms[ReadArm], request: Document, table: FloatArray | None = None
+        self, arms: Arms[ReadArm], request: Document, sent: SentTargets | None = None
     ) -> Accepted:
         """Check a request and cut it into pieces; ``where`` of refusals is below ``request``.
 
         Parameters
         ----------
-        table : what came as NPY, (rows, columns), for a kind that takes tables.
+        sent : targets that came beside the request, for a kind that takes some.
         """
 
     def setup(self, arms: Arms[ReadArm], survey: Survey) -> Any:

@@ -4,14 +4,12 @@ Processes are spawned at the first need, replaced together when one dies, and en
 been nothing to do for a while. Left out: what they are given (runner.py).
 """
 
-import multiprocessing
 import os
 from concurrent.futures import Executor, ProcessPoolExecutor
-from contextlib import suppress
-from multiprocessing.process import BaseProcess
 from typing import Any, Protocol
 
 from service.errors import NotAvailable
+from service.own_processes import NotingContext
 from service.surveys import worker
 
 ANSWERS_WITHIN_S = 3
@@ -42,30 +40,22 @@ class OwnProcesses:
     def __init__(self, count: int = 0) -> None:
         self.width = count or os.cpu_count() or 1
         self._pool: ProcessPoolExecutor | None = None
-        self._processes: list[BaseProcess] = []
+        self._own = NotingContext()
 
     def executor(self) -> Executor:
         """See ``Pool.executor``."""
         if self._pool is None:
-            before = set(multiprocessing.active_children())
-            self._pool = ProcessPoolExecutor(
-                self.width, multiprocessing.get_context("spawn"), initializer=worker.start
-            )
-            # One process is made for each task that finds none idle, and there is no other way
-            # to reach them than to look who has come.
+            self._pool = ProcessPoolExecutor(self.width, self._own, initializer=worker.start)
+            # One process is made for each task that finds none idle.
             for _ in range(self.width):
                 self._pool.submit(worker.identity)
-            self._processes = list(set(multiprocessing.active_children()) - before)
         return self._pool
 
     def stop(self) -> None:
         """See ``Pool.stop``."""
         if self._pool is not None:
-            self._pool.shutdown(wait=False, cancel_futures=True)
-        for process in self._processes:
-            with suppress(ValueError):  # it is over, and cleared away
-                process.kill()
-        self._pool, self._processes = None, []
+            self._own.end(self._pool)
+        self._pool = None
 
 
 class Cluster:

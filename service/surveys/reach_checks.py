@@ -11,7 +11,6 @@ from typing import Any, NamedTuple, cast
 
 import numpy as np
 
-from kinematics.table import FloatArray
 from service.details import Detail
 from service.errors import ServiceError, TooLarge, UnusableValue
 from service.operations.arms import Arms
@@ -20,26 +19,19 @@ from service.operations.reach import ManyTargets, Wanted, reach_question, wanted
 from service.operations.reach_columns import columns_of
 from service.problems import KINDS
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
-from service.surveys.kinds import Accepted, Report, Told, cut, piece_size
+from service.surveys.kinds import Accepted, Report, SentTargets, Told, piece_size
 from service.surveys.pinned import OneArm, Setup, pinned, setup_of
 from service.surveys.reach_kept import columns_bytes, counts_of
-from service.surveys.reach_pieces import (
-    given_rows,
-    rows_of,
-    table_of,
-    table_pieces,
-)
+from service.surveys.reach_pieces import quickly_read, rows_of
 from service.surveys.reach_report import report_of
 from service.surveys.reach_results import told_results
+from service.surveys.targets_sent import MOST_TARGETS, Rows, listed_targets
 from service.wire.arms import ReadArm
 from service.wire.formats import FORMATS, Format
-from service.wire.reach_gathered import FIELD, ReadTargets, refuse_same_names
+from service.wire.reach_gathered import FIELD, ReadTargets
 from service.wire.reach_request import MOST_TARGETS as READ_AT_ONCE
 from service.wire.reach_request import ReachRequest
-from service.wire.reach_table import table_rows, table_targets
 from service.wire.reach_targets import read_targets
-
-MOST_TARGETS = 1_000_000
 
 
 class Prepared(NamedTuple):
@@ -56,28 +48,23 @@ class ReachChecks:
     formats = FORMATS
 
     def accept(
-        self, arms: Arms[ReadArm], request: Document, table: FloatArray | None = None
+        self, arms: Arms[ReadArm], request: Document, sent: SentTargets | None = None
     ) -> Accepted:
-        """See ``Kind.accept``; a table has a target in each row (reach_pieces.py)."""
-        if table is None:
-            rows = _listed(request.get(FIELD))
-            count = len(rows)
-        else:
-            rows, count = table_rows(table[:READ_AT_ONCE]), len(table)
-            request = {**request, FIELD: []}
-        _refuse_count(count)
+        """See ``Kind.accept``."""
+        sent = sent or Rows(listed_targets(request.get(FIELD)))
+        first = sent.first(READ_AT_ONCE)
+        request = {**request, FIELD: []}
+        _refuse_count(sent.count)
         asked = ReachRequest.model_validate(request)
         prepared = _prepared(arms, asked)
         question = prepared.question
-        first = read_targets(rows[:READ_AT_ONCE], question.units)
-        many = ManyTargets(question, first, prepared.wanted)
+        many = ManyTargets(question, read_targets(first, question.units), prepared.wanted)
         about = {**many.head, "solutions": asked.solutions, "joints": question.arm.joint_count}
         each = many.seconds / max(len(many.targets), 1)
         without = {key: value for key, value in request.items() if key != FIELD}
         kept = pinned(without, question.meant)
-        size = piece_size(each)
-        pieces = cut(rows, size, given_rows) if table is None else table_pieces(table, size)
-        return Accepted(kept, about, count, pieces)
+        pieces = sent.pieces(piece_size(each), question.units)
+        return Accepted(kept, about, sent.count, pieces)
 
     def setup(self, arms: Arms[ReadArm], survey: Survey) -> Setup:
         """See ``Kind.setup``."""
@@ -92,11 +79,11 @@ class ReachChecks:
     def make(self, prepared: Prepared, piece: GivenPiece) -> MadePiece:
         """See ``Kind.make``."""
         question = prepared.question
-        table = table_of(piece.given)
-        read = None if table is None else table_targets(table, question.units)
+        read = quickly_read(piece.given, question.units)
         if read is None:
             read = _read(rows_of(piece.given), question)
-        columns = columns_of(ManyTargets(question, read, prepared.wanted), 0, read.count)
+        many = ManyTargets(question, read, prepared.wanted)
+        columns = columns_of(many, 0, read.count, whole_reasons=True)
         return MadePiece(piece.number, columns_bytes(columns), counts_of(columns))
 
     def told(self, survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
@@ -111,22 +98,6 @@ class ReachChecks:
 def _prepared(arms: Arms[ReadArm], asked: ReachRequest) -> Prepared:
     question = reach_question(arms, asked)
     return Prepared(question, wanted_solutions(question, asked.solutions, asked.order, asked.near))
-
-
-def _listed(given: object) -> list[Any]:
-    if not isinstance(given, list):
-        raise UnusableValue(
-            "targets must be a list" if given is not None else "there are no targets",
-            where=(FIELD,),
-            value=given,
-            way_out='give a list: [{"name": "part-1", "position": [...]}]',
-        )
-    names = [row.get("name") if isinstance(row, dict) else None for row in given]
-    refuse_same_names(
-        [name if isinstance(name, str) else None for name in names],
-        lambda place: (FIELD, place, "name"),
-    )
-    return given
 
 
 def _refuse_count(count: int) -> None:

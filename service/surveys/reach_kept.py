@@ -34,8 +34,9 @@ def columns_bytes(columns: ReachColumns) -> bytes:
         "words": {name: text.words for name, text in texts.items()},
         "reasons": list(columns.reasons.items()),
         "names": list(columns.names.items()),
+        "why": list(columns.why.items()),
     }
-    told = orjson.dumps(head)
+    told = orjson.dumps(head, option=orjson.OPT_SERIALIZE_NUMPY)
     told += b" " * (-len(told) % _HEAD)
     arrays = [
         *(np.ascontiguousarray(getattr(columns, name), kind) for name, kind in _NUMBERS.items()),
@@ -83,6 +84,7 @@ def columns_from(kept: bytes) -> ReachColumns:
         applying={code: array("?") for code in head["applying"]},
         reasons=dict(head["reasons"]),
         names=dict(head["names"]),
+        why=dict(head.get("why", ())),  # what was kept before has none
     )
 
 

@@ -95,16 +95,19 @@ class _Spelled(NamedTuple):
 
 def _item(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:
     code, reason = int(columns.codes[line]), columns.reasons.get(line)
-    return {
+    verdict, why = texts.verdicts[line] or None, columns.why.get(line) or {}
+    said = {"say": reason} if reason else None
+    item: dict[str, Any] = {
         "name": columns.names.get(line),
         "ok": code < REFUSALS_FROM,
         "code": code,
-        "verdict": texts.verdicts[line] or None,
+        "verdict": verdict,
         "proof": texts.proofs[line] or None,
-        "reason": {"say": reason} if reason else None,
+        "reason": why if why and verdict else said,
         "found": int(columns.counts[line]),
         "solutions": [],
     }
+    return item if verdict or not why else {**item, "problem": why}
 
 
 def _solution(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:

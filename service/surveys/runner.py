@@ -36,16 +36,20 @@ from service.surveys import worker
 from service.surveys.pool import Pool
 from service.surveys.progress import Pace
 from service.surveys.registry import SURVEY_KINDS
+from service.surveys.retention import Retention
 from service.wire.arms import ReadArm
 
 _LOG = logging.getLogger(__name__)
 
-CHUNK_S = 0.4
+CHUNK_S = 0.2
 """Of work in a chunk: its way to the process and into the store takes a hundredth of that."""
 
 MOST_IN_CHUNK = 64
 _AHEAD = 2
 """Chunks in hand for each process, so that none waits for the store."""
+
+_ENDS_WITHIN_S = 0.7
+"""A chunk of a cancelled survey, else its process is ended."""
 
 _LOOK_S = 0.1
 """How often a cancelled survey or a stop is looked for."""
@@ -76,8 +80,10 @@ class Runner:
         pool: Pool,
         *,
         now: Callable[[], datetime] = utc_now,
+        days: int = 0,
     ) -> None:
         self._store, self._arms, self._pool, self._now = store, arms, pool, now
+        self._retention = Retention(store, days, now)
         self._thread: threading.Thread | None = None
         self._wanted, self._stopping = threading.Event(), threading.Event()
         self._lock = threading.Lock()
@@ -140,7 +146,10 @@ class Runner:
         """Return the oldest survey to work on, None where there is none or the store fails."""
         with suppress(StorageUnavailable):
             self._write_what_was_not()
-            survey = self._store.next_open() if self._store.may_lead() else None
+            if not self._store.may_lead():
+                return None
+            self._retention.tidy()
+            survey = self._store.next_open()
             if survey is not None and survey.id not in self._unwritten:
                 return survey
         return None
@@ -248,7 +257,7 @@ class Runner:
         for future in in_hand:
             future.cancel()
         begun = [future for future in in_hand if not future.cancelled()]
-        if begun and not self._stopping.is_set() and wait(begun, 2 * CHUNK_S).not_done:
+        if begun and not self._stopping.is_set() and wait(begun, _ENDS_WITHIN_S).not_done:
             self._pool.stop()
 
 

@@ -8,12 +8,11 @@ stands how far the samples of the piece get. Left out: telling it (sample_result
 from collections.abc import Iterable
 from typing import cast
 
-from kinematics.table import FloatArray
 from service.errors import UnusableValue
 from service.operations.arms import Arms
 from service.operations.samples import ManySamples, samples_asked
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
-from service.surveys.kinds import Accepted, Report, Told
+from service.surveys.kinds import Accepted, Report, SentTargets, Told
 from service.surveys.pinned import OneArm, Setup, pinned, setup_of
 from service.surveys.sample_extremes import extremes_bytes
 from service.surveys.sample_report import report_of
@@ -40,10 +39,10 @@ class Samples:
     formats = FORMATS
 
     def accept(
-        self, arms: Arms[ReadArm], request: Document, table: FloatArray | None = None
+        self, arms: Arms[ReadArm], request: Document, sent: SentTargets | None = None
     ) -> Accepted:
         """See ``Kind.accept``."""
-        if table is not None:
+        if sent is not None:
             raise UnusableValue(
                 "samples are not asked for by a table", way_out='send JSON: {"kind": "samples"}'
             )

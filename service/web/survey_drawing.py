@@ -10,7 +10,7 @@ drawings of their own.
 
 from collections.abc import Sequence
 from html import escape
-from math import ceil, floor, log10
+from math import ceil, floor, log10, sqrt
 from typing import NamedTuple
 
 _MARKS = {
@@ -22,6 +22,10 @@ _MARKS = {
     "refused": "m-.9 0h1.8",
 }
 """In the order they are drawn, mm."""
+
+_CROWDED, _SMALLEST, _SMALLEST_NOT_REACHED = 400, 0.4, 0.7
+"""Places that marks of full size show apart; and how much smaller marks get where there are more,
+whose paper is shared out: those of what is not reached, few among many, stay nearly as they are."""
 
 _STROKES = {"sample": 0.3, "reachable": 0.13}
 _STROKE = 0.3
@@ -108,10 +112,27 @@ def _marks(view: _View, places: Sequence[tuple[float, float, str]]) -> str:
     for verdict, mark in _MARKS.items():
         at = [view.at(x, y) for x, y, found in places if found == verdict]
         if at:
-            path = "".join(f"M{x:.2f} {y:.2f}{mark}" for x, y in at)
+            size = _size(verdict, len(places))
+            path = "".join(f"M{x / size:.2f} {y / size:.2f}{mark}" for x, y in at)
             stroke = _STROKES.get(verdict, _STROKE)
-            drawn += f'<path d="{path}" stroke="#000" stroke-width="{stroke:g}"/>'
+            scaled = "" if size == 1.0 else f' transform="scale({size:g})"'
+            drawn += f'<path{scaled} d="{path}" stroke="#000" stroke-width="{stroke:g}"/>'
     return drawn
+
+
+def _size(verdict: str, places: int) -> float:
+    """Return the size of a mark among so many.
+
+    Examples
+    --------
+    >>> _size("reachable", 400), _size("reachable", 1600), _size("unreachable", 4000)
+    (1.0, 0.5, 0.7)
+    """
+    if verdict == "sample":
+        return 1.0
+    least = _SMALLEST if verdict == "reachable" else _SMALLEST_NOT_REACHED
+    shared = sqrt(_CROWDED / max(places, _CROWDED))
+    return max(round(shared, 2), least)
 
 
 def _legend(there: set[str]) -> str:

@@ -49,13 +49,13 @@ POSITION = ("x", "y", "z")
 ANGLES = ("r1", "r2", "r3")
 FREEDOM, APPROACH = "freedom", "approach"
 COLUMNS = (NAME, *POSITION, *ANGLES, FREEDOM, APPROACH)
-_CONE = "cone:"
+CONE_WORD = "cone:"
 _COLUMN_OF = {"position": POSITION[0], "cone": FREEDOM, "distance": APPROACH}
 """Where what a body says in a field of its own stands in a table."""
 
 
 @dataclass(frozen=True)
-class _Lines:
+class Lines:
     """The lines of a table, by column, and the number of the line each begins in."""
 
     columns: Mapping[str, Sequence[str]]
@@ -91,12 +91,12 @@ def read_part_locations(
     >>> read.names, read.tool_in_frame[0, :3, 3].tolist(), read.refused[1].where
     (['lug-1', 'lug-2'], [0.0, 0.25, 1.0], (3, 'y'))
     """
-    lines = _lines_of(raw, between)
+    lines = lines_of(raw, between)
     count = len(lines.numbers)
     refuse_too_many(count)
-    names = _names_of(lines)
+    names = names_of(lines)
     gathered = Gathered(count)
-    plain = _plain_places(lines)
+    plain = plain_places(lines)
     poses = None if plain is None else _poses_of(lines, plain, form, units)
     if plain is not None and poses is not None:
         gathered.place(range(count), poses, form)
@@ -118,7 +118,13 @@ def read_part_locations(
     return gathered.read(names)
 
 
-def _lines_of(raw: bytes, between: Callable[[], None]) -> _Lines:
+def lines_of(raw: bytes, between: Callable[[], None], most: int = MOST_TARGETS) -> Lines:
+    """Return the lines of a table, of which more than ``most`` are not read to the end.
+
+    Raises
+    ------
+    Unparseable, UnknownField, MissingField, UnusableValue : as of ``read_part_locations``.
+    """
     if not raw:
         way_out = f"send a header {','.join(COLUMNS)} and lines below it"
         raise Unparseable("the body is empty", way_out=way_out)
@@ -133,7 +139,7 @@ def _lines_of(raw: bytes, between: Callable[[], None]) -> _Lines:
             between()
             rows += found
             numbers += begins
-            if len(rows) > MOST_TARGETS:
+            if len(rows) > most:
                 break
     except WrongColumnCount as error:
         # Its code is one of joint values.
@@ -147,7 +153,7 @@ def _lines_of(raw: bytes, between: Callable[[], None]) -> _Lines:
         say = f"not CSV at line {reader.line_num}: {error}"
         raise Unparseable(say, where=(reader.line_num,), way_out="mend this line") from None
     cells = zip(*rows, strict=True) if rows else ([] for _ in header)
-    return _Lines({name: list(column) for name, column in zip(header, cells, strict=True)}, numbers)
+    return Lines({name: list(column) for name, column in zip(header, cells, strict=True)}, numbers)
 
 
 def _check_header(header: Sequence[str]) -> None:
@@ -177,7 +183,13 @@ def _check_header(header: Sequence[str]) -> None:
             )
 
 
-def _names_of(lines: _Lines) -> list[str | None]:
+def names_of(lines: Lines) -> list[str | None]:
+    """Return what targets are called.
+
+    Raises
+    ------
+    UnusableValue : a name is too long, or stands twice.
+    """
     names: list[str | None] = [None] * len(lines.numbers)
     if NAME in lines.columns:
         names = [name or None for name in lines.columns[NAME]]
@@ -193,7 +205,7 @@ def _names_of(lines: _Lines) -> list[str | None]:
     return names
 
 
-def _plain_places(lines: _Lines) -> FloatArray | None:
+def plain_places(lines: Lines) -> FloatArray | None:
     """Return all numbers, (count, 3 or 6), where each cell holds a plain one; else None."""
     wanted = [name for name in (*POSITION, *ANGLES) if name in lines.columns]
     cells = [cell for name in wanted for cell in lines.columns[name]]
@@ -207,7 +219,7 @@ def _plain_places(lines: _Lines) -> FloatArray | None:
 
 
 def _poses_of(
-    lines: _Lines,
+    lines: Lines,
     numbers: FloatArray,
     form: str,
     units: Units,
@@ -219,7 +231,7 @@ def _poses_of(
     )
 
 
-def _one(lines: _Lines, place: int, form: str, units: Units) -> OneTarget:
+def _one(lines: Lines, place: int, form: str, units: Units) -> OneTarget:
     """Return one target; ``where`` of what is wrong with it ends with a column, or nearly."""
     position = [number(lines.cell(name, place), name) for name in POSITION]
     angles = [lines.cell(name, place) for name in ANGLES]
@@ -250,9 +262,9 @@ def _approach(said: str) -> Approach | None:
 
 def _freedom(said: str) -> Any:
     """Return what a cell says as a body would say it."""
-    if said.startswith(_CONE):
+    if said.startswith(CONE_WORD):
         # Whether it can be used is for the target to tell.
-        return Cone.model_construct(cone=number(said.removeprefix(_CONE), FREEDOM))
+        return Cone.model_construct(cone=number(said.removeprefix(CONE_WORD), FREEDOM))
     if said and said not in FREEDOM_WORDS:
         raise UnusableValue(
             f"there is no freedom {said[:60]!r}",

@@ -5,7 +5,7 @@ that come in (reach_csv.py), the answer about one target (reach_flat.py).
 """
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import NamedTuple
 
 import numpy as np
@@ -52,6 +52,7 @@ class ReachColumns:
     verdicts, proofs, branches, states : texts. reasons, names : the text of a line that has one.
     counts, ranks : solutions of the target, and which of them a line tells, from 1; 0 for none.
     joints : (lines, joints), in the user's units; NaN where there is no solution to be used.
+    why : of a line with a reason, all that JSON tells of it, where that was asked for.
     margins : (lines,), infinite without travel limits; errors : (lines, 2), position and angle.
     """
 
@@ -68,6 +69,7 @@ class ReachColumns:
     errors: FloatArray
     reasons: Mapping[int, str]
     names: Mapping[int, str]
+    why: Mapping[int, Mapping[str, object]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)

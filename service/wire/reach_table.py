@@ -7,13 +7,11 @@ from typing import Any
 
 import numpy as np
 
-from kinematics.pose_batches import poses_as_given
-from kinematics.reach.targets import NONE, ORIENTATION
 from kinematics.table import FloatArray
 from service.convert import Units
 from service.errors import UnusableValue
-from service.wire.plain_relations import orientations_in
-from service.wire.reach_gathered import USUAL_FORM, Left, ReadTargets
+from service.wire.reach_alike import PLACE, AlikeTargets, read_alike
+from service.wire.reach_gathered import USUAL_FORM, ReadTargets
 
 PLACES, POSES = 3, 7
 """Columns of a table of places, and of one of poses."""
@@ -56,25 +54,8 @@ def table_targets(table: FloatArray, units: Units) -> ReadTargets | None:
     >>> table_targets(np.array([[1.0, 2.0, 3.0]]), UNITS["m-rad"]).tool_in_frame[0, :3, 3]
     array([1., 2., 3.])
     """
-    count, columns = table.shape
+    columns = table.shape[1]
     if columns not in (PLACES, POSES) or not np.isfinite(table).all():
         return None
-    values = table[:, PLACES:] if columns == POSES else np.tile([1.0, 0.0, 0.0, 0.0], (count, 1))
-    given = orientations_in(USUAL_FORM, values, table[:, :PLACES], units)
-    poses = None if given is None else poses_as_given(*given)
-    if poses is None:
-        return None
-    left = Left(NONE if columns == POSES else ORIENTATION)
-    return ReadTargets(
-        names=[None] * count,
-        places=np.arange(count),
-        tool_in_frame=poses,
-        freedom=np.full(count, left.freedom),
-        cone=np.full(count, left.cone),
-        position_tolerance=np.full(count, left.position_tolerance),
-        angle_tolerance=np.full(count, left.angle_tolerance),
-        forms=[USUAL_FORM] * count,
-        repaired={},
-        approaches={},
-        refused={},
-    )
+    form = USUAL_FORM if columns == POSES else PLACE
+    return read_alike(AlikeTargets(form, table[:, PLACES:], table[:, :PLACES]), units)

@@ -11,6 +11,7 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from kinematics.errors import KinematicsError
+from kinematics.orientation_forms import FORMS
 from kinematics.pose_batches import poses_as_given
 from kinematics.reach.targets import CONE, NONE, ORIENTATION
 from kinematics.table import FloatArray
@@ -22,6 +23,7 @@ from service.wire.approaches import read_approach
 from service.wire.one_by_one import read_one_by_one
 from service.wire.plain_relations import WHOLE, OfOneForm, numbers_of, orientations_in
 from service.wire.poses import read_pose
+from service.wire.reach_alike import PLACE, alike_targets, read_alike
 from service.wire.reach_gathered import (
     FIELD,
     FREEDOM_WORDS,
@@ -34,9 +36,6 @@ from service.wire.reach_gathered import (
     refuse_too_many,
 )
 from service.wire.reach_request import LONGEST_NAME, Cone, ReachTarget
-
-_PLACE = "place"
-"""In place of a form, for a target that is a position and no pose."""
 
 _FIELDS = frozenset({"name", "pose", "position", "freedom", "tolerance"})
 
@@ -60,6 +59,11 @@ def read_targets(given: object, units: Units) -> ReadTargets:
     ServiceError : none of them can be used.
     """
     rows = _listed(given)
+    alike = alike_targets(rows)
+    read = None if alike is None else read_alike(alike, units)
+    if read is not None:
+        refuse_same_names(read.names, _place_of_name)
+        return read
     gathered, odd, names = Gathered(len(rows)), list[int](), list[str | None]()
     by_form: dict[str, OfOneForm] = {}
     for place, item in enumerate(rows):
@@ -74,15 +78,19 @@ def read_targets(given: object, units: Units) -> ReadTargets:
         group.values.append(plain.values)
         group.positions.append(plain.position)
         gathered.leave(place, *plain.left)
-    refuse_same_names(names, lambda place: (FIELD, place, "name"))
+    refuse_same_names(names, _place_of_name)
     for form, group in by_form.items():
         poses = _poses_of(form, group, units)
         if poses is None:
             odd += group.places
         else:
-            gathered.place(group.places, poses, USUAL_FORM if form in (_PLACE, WHOLE) else form)
+            gathered.place(group.places, poses, USUAL_FORM if form in (PLACE, WHOLE) else form)
     _read_odd(rows, sorted(odd), units, gathered)
     return gathered.read(names)
+
+
+def _place_of_name(place: int) -> tuple[str, int, str]:
+    return FIELD, place, "name"
 
 
 def _listed(given: object) -> list[Any]:
@@ -110,7 +118,7 @@ def _plain(item: object, units: Units) -> _Plain | None:
         return None
     if is_place:
         free = left.freedom == ORIENTATION
-        return _Plain(_PLACE, None, item["position"], left) if free else None
+        return _Plain(PLACE, None, item["position"], left) if free else None
     if type(given) is not dict:
         return None
     if len(given) == 1:
@@ -119,7 +127,9 @@ def _plain(item: object, units: Units) -> _Plain | None:
     if len(given) != 2 or type(orientation) is not dict or len(orientation) != 2:
         return None
     form = orientation.get("form")
-    if type(form) is not str or "values" not in orientation or "position" not in given:
+    if type(form) is not str or form not in FORMS:
+        return None
+    if "values" not in orientation or "position" not in given:
         return None
     return _Plain(form, orientation["values"], given["position"], left)
 
@@ -147,7 +157,7 @@ def _plain_left(item: dict[str, Any], units: Units, freedom: int) -> Left | None
 
 def _poses_of(form: str, group: OfOneForm, units: Units) -> FloatArray | None:
     """Return poses (count, 4, 4) that can be taken as they are; None if one cannot."""
-    if form == _PLACE:
+    if form == PLACE:
         # As poses that are not turned; only their positions will be read.
         straight = [[0.0, 0.0, 0.0]] * len(group.places)
         form, group = "xyz-fixed", OfOneForm(group.places, straight, group.positions)

@@ -12,7 +12,9 @@ from service.errors import MissingField
 from service.storage.ports import Survey
 from service.wire.answer_models import ArmIdentity, Open
 from service.wire.envelopes import EnvelopeAnswer
+from service.wire.formats import form_for
 from service.wire.models import Strict, UnitsName
+from service.wire.poses import checked_form
 from service.wire.query import whole_number
 from service.wire.samples import SamplesAnswer
 from service.wire.stored import time_of
@@ -73,14 +75,18 @@ class SurveyListAnswer(Open):
 
 
 class ResultItem(Open):
-    """One target: verdict, what it rests on, and solutions, the best first."""
+    """One target: verdict, what it rests on, and solutions, the best first.
+
+    `reason` as in reach checks. A target that could not be used has a `problem`, whose `pointer`
+    leads into the target, and `reason` with its sentence.
+    """
 
     name: str | None
     ok: bool
     code: int
     verdict: str | None
     proof: str | None
-    reason: dict[str, str] | None
+    reason: dict[str, Any] | None
     found: int
     solutions: list[dict[str, Any]]
 
@@ -127,7 +133,8 @@ TABLE_PARAMETERS = {
     "solutions": "`best` or `all`.",
     "order": "Which solution comes first.",
 }
-_OUTSIDE = ("kind", "title", "arm", "revision")
+CSV_PARAMETERS = {**TABLE_PARAMETERS, "form": "What r1 r2 r3 of CSV mean: an angle triple."}
+_OUTSIDE = ("form", "kind", "title", "arm", "revision")
 
 
 def request_beside_table(parameters: Mapping[str, str]) -> SurveyRequest:
@@ -154,6 +161,17 @@ def request_beside_table(parameters: Mapping[str, str]) -> SurveyRequest:
             "request": {**request, "arm": arm},
         }
     )
+
+
+def angles_of_csv(parameters: Mapping[str, str]) -> str:
+    """Return what the angles of part locations mean: what those of a flat answer do.
+
+    Raises
+    ------
+    FormNotFlat : no angle triple.
+    """
+    form = form_for("csv", parameters.get("form"), key="poses", location="query")
+    return checked_form(form)
 
 
 def survey_answer(survey: Survey, remaining_s: float | None) -> dict[str, object]:

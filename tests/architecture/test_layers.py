@@ -164,16 +164,18 @@ LAYERS = (
     ("reach.sample_summary",),
     # What is reached at all: exact regions of two joints, searches of any, what both are told as.
     ("envelope", "envelope.tolerances"),
-    ("envelope.pair_region",),
+    ("envelope.pair_region", "envelope.level_links"),
     ("envelope.measures",),
     ("envelope.shapes", "envelope.plan_axes", "envelope.point_views", "envelope.wrist"),
     ("envelope.plan_marks",),
     ("envelope.pair_of_arm", "envelope.outlines", "envelope.descents"),
     ("envelope.section", "envelope.crossings", "envelope.grid_reach", "envelope.farthest"),
-    ("envelope.pair_views", "envelope.grid_outlines", "envelope.draws", "envelope.search"),
+    ("envelope.proved_radii",),
+    ("envelope.pair_views", "envelope.grid_chords", "envelope.draws", "envelope.search"),
+    ("envelope.ring", "envelope.grid_outlines"),
     ("envelope.sampled_views", "envelope.flat_views"),
-    ("envelope.known_structures",),
-    ("envelope.searched",),
+    ("envelope.inquiry",),
+    ("envelope.known_structures", "envelope.level", "envelope.searched"),
     ("envelope.envelope",),
     # Moves from place to place: the question and answer, lines and postures held against them, one
     # leg followed, what is told of it, whole courses.

@@ -130,6 +130,18 @@ def test_the_result_is_that_of_reach_checks(served: httpx.Client, finished: str)
         assert [ours[key] for key in same] == [theirs[key] for key in same]
         # Beyond travel the CSV, and so a survey, counts solutions and does not list them.
         listed = theirs["solutions"] if theirs["ok"] else []
+        if theirs["verdict"] is None:
+            assert ours["problem"]["say"] == theirs["problem"]["say"] == ours["reason"]["say"]
+            assert theirs["problem"]["pointer"].endswith(ours["problem"]["pointer"])
+        else:
+            assert "problem" not in ours
+            assert (ours["reason"] is None) == (theirs["reason"] is None)
+        if ours["verdict"] and theirs["reason"]:
+            same = ("code", "say", "stage", "unit")
+            assert [ours["reason"][key] for key in same] == [theirs["reason"][key] for key in same]
+            assert np.isclose(ours["reason"]["shortfall"], theirs["reason"]["shortfall"])
+            nearest = [set(each["reason"]["nearest"] or ()) for each in (ours, theirs)]
+            assert nearest[0] == nearest[1]
         for one, other in zip(ours["solutions"], listed, strict=True):
             assert one["branch"] == other["branch"]
             assert np.allclose(one["joints"], other["joints"], rtol=0, atol=1e-9)
@@ -199,6 +211,82 @@ def test_a_table_of_targets_is_the_same_as_a_body(served: httpx.Client) -> None:
     np.save(file, np.zeros((2, 5)))
     wrong = served.post("/v1/surveys", params=query, content=file.getvalue(), headers=head)
     assert (wrong.status_code, wrong.json()["code"]) == (422, "unusable-value")
+
+
+def test_csv_of_targets_is_the_same_as_a_body(served: httpx.Client) -> None:
+    lines = ["name,x,y,z,r1,r2,r3,freedom,approach"]
+    rows: list[dict[str, Any]] = []
+    for place, pose in enumerate(_in_reach[:120]):
+        x, y, z = pose["position"]
+        name = f"lug-{place}" if place % 2 else ""
+        row: dict[str, Any] = {"name": name} if name else {}
+        orientation = {"form": "zyx-current", "values": [place, 0.5, -place]}
+        if place % 5:
+            row["pose"] = {"position": [x, y, z], "orientation": orientation}
+            angles = f"{place},0.5,{-place}"
+        else:
+            row["position"], angles = [x, y, z], ",,"
+        freedom = "spin" if place % 7 == 1 and place % 5 else ""
+        back = "25" if place % 11 == 1 and place % 5 else ""
+        row |= {"freedom": freedom} if freedom else {}
+        row |= {"approach": {"distance": 25}} if back else {}
+        rows.append(row)
+        lines.append(f"{name},{x!r},{y!r},{z!r},{angles},{freedom},{back}")
+    rows.append({"position": ["high", 0, 0]})
+    lines.append(",high,0,0,,,,,")
+    body = question(1)
+    body["request"]["targets"] = rows
+    query = {
+        "kind": "reach-checks",
+        "arm": "housing-loader",
+        "tool": "flange",
+        "form": "zyx-current",
+    }
+    head = {"Content-Type": "text/csv"}
+    sent = {"params": query, "headers": head}
+    response = served.post("/v1/surveys", content="\r\n".join(lines), **sent)  # type: ignore[arg-type]
+    assert response.status_code == 202, response.text
+    ids = [response.json()["id"], asked(served, body)]
+    for survey in ids:
+        assert until(served, survey, is_over)["state"] == "succeeded"
+    assert results(served, ids[0]) == results(served, ids[1])
+    for wrong, code in (("x,y\n1,2", "missing-field"), ("x,y,z\n1,2", "unusable-value")):
+        answer = served.post("/v1/surveys", content=wrong, **sent)  # type: ignore[arg-type]
+        assert (answer.status_code, answer.json()["code"]) == (422, code)
+
+
+def test_long_bodies_are_read_elsewhere_and_mean_the_same(served: httpx.Client) -> None:
+    """Bodies of some megabytes, by way of the process that reads them, and the same in short."""
+    many = [{**row, "name": f"row {n}"} for n, row in enumerate(targets(1400) * 10)]
+    body = question(1)
+    body["request"]["targets"] = many
+    raw = json.dumps(body)
+    assert len(raw) > 2_000_000
+    head = {"Content-Type": "application/json"}
+    found = served.post("/v1/surveys", content=raw, headers=head)
+    assert found.status_code == 202, found.text
+    assert found.json()["total"] == len(many)
+    survey = found.json()["id"]
+    body["request"]["targets"] = many[:4000]
+    short = asked(served, body)
+    for one in (survey, short):
+        assert until(served, one, is_over)["state"] == "succeeded"
+    long_told, told = (served.get(f"/v1/surveys/{one}/result").json() for one in (survey, short))
+    # The last piece of the short one is not the same piece.
+    assert long_told["results"][:2000] == told["results"][:2000]
+    assert [row["name"] for row in long_told["results"]] == [row["name"] for row in many]
+    body["request"]["targets"] = [*many, many[7]]
+    for wrong, code, pointer in (
+        (json.dumps(body), "unusable-value", f"/request/targets/{len(many)}/name"),
+        (raw[:-3], "unparseable", None),
+        (raw.replace("reach-checks", "samples", 1), "unknown-field", "/request/targets"),
+        (raw.replace("position", "positron", 1), "unknown-field", None),
+    ):
+        answer = served.post("/v1/surveys", content=wrong, headers=head)
+        assert answer.status_code in (400, 422), answer.text
+        assert answer.json()["code"] == code
+        if pointer:
+            assert answer.json()["errors"][0]["pointer"] == pointer
 
 
 def test_samples_are_those_of_reach_samples(served: httpx.Client) -> None:

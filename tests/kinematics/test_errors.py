@@ -2,6 +2,7 @@
 
 import ast
 import inspect
+import pickle
 import re
 from collections.abc import Iterator
 from pathlib import Path
@@ -9,6 +10,7 @@ from pathlib import Path
 import pytest
 
 from kinematics import errors
+from kinematics.envelope.sampled_views import UnfitResolution
 from kinematics.errors import InvalidArm, KinematicsError, NotRigid
 
 # Class and kebab code, from the table of codes on the wire.
@@ -98,3 +100,19 @@ def test_below_puts_keys_in_front_and_keeps_the_error() -> None:
 def test_not_rigid_states_the_defect() -> None:
     error = NotRigid("no", defect=0.1, where=(3,), value=[0], way_out="mend it")
     assert (error.defect, error.where, error.value, error.way_out) == (0.1, (3,), [0], "mend it")
+
+
+@pytest.mark.parametrize(
+    "error",
+    [
+        InvalidArm("travel is reversed", where=("rows", 0), value=[5, -5], way_out="turn it round"),
+        NotRigid("no rotation", defect=0.25, where=("pose",), way_out="give one"),
+        UnfitResolution(0.5, 0.001, 0.1),
+    ],
+    ids=lambda error: type(error).__name__,
+)
+def test_it_comes_from_another_process_as_it_was(error: KinematicsError) -> None:
+    back = pickle.loads(pickle.dumps(error.below("arm")))
+    assert type(back) is type(error)
+    assert (str(back), back.args) == (str(error), error.args)
+    assert vars(back) == vars(error)

@@ -18,6 +18,7 @@ SAMPLES = {
     "log_level": ("DEBUG", "debug"),
     "cluster": ("tcp://10.0.0.7:8786", "tcp://10.0.0.7:8786"),
     "survey_workers": ("3", 3),
+    "surveys_days": ("90", 90),
     "events_kept": ("5000", 5000),
     "events_days": ("30", 30),
     "frame_ancestors": ("self, https://hmi.plant:8443", "'self' https://hmi.plant:8443"),

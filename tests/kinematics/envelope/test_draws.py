@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from kinematics.arm import Arm, CombinedTravel
-from kinematics.envelope.draws import between, drawn_volume
+from kinematics.envelope.draws import AskedVolume, between
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.search import search_of
 from kinematics.table import Travel
@@ -44,7 +44,8 @@ def test_volumes_are_within_their_bounds(case: str, count: int) -> None:
 def drawn(arm: Arm, count: int) -> Measure:
     search = search_of(arm, AT_FLANGE)
     view, seeker = search.along(np.eye(3))
-    return drawn_volume(seeker, search.samples(view), count)
+    asked = AskedVolume(seeker, search.samples(view), count)
+    return asked.told([asked.piece(number) for number in range(asked.pieces)])
 
 
 def test_more_places_tell_more_and_the_same_each_time() -> None:

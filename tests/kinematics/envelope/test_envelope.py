@@ -7,14 +7,10 @@ from scipy.optimize import least_squares
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
 from kinematics.envelope.envelope import envelope_of
-from kinematics.envelope.known_structures import Views
-from kinematics.envelope.pair_of_arm import point_motion
-from kinematics.envelope.plan_axes import plan_axes
+from kinematics.envelope.inquiry import inquiry_of
 from kinematics.envelope.sampled_views import Fineness
-from kinematics.envelope.search import search_of
 from kinematics.envelope.searched import searched
-from kinematics.envelope.section import turn_of, turns_alone
-from kinematics.envelope.shapes import SIDE, WRIST, View
+from kinematics.envelope.shapes import SIDE, WRIST, View, Views
 from kinematics.errors import KinematicsError
 from kinematics.reach.sample_summary import first_axis
 from kinematics.reach.samples import JointSamples, tool_positions
@@ -64,13 +60,7 @@ def away(view: View, places: np.ndarray) -> np.ndarray:
 
 def by_search(arm: Arm, tool: np.ndarray, resolution: float | None = None) -> Views:
     """Return the envelope by the way that knows no structure."""
-    search, axis, motion = search_of(arm, tool), first_axis(arm), point_motion(arm, tool)
-    angle, names, view = None, ("x", "y", "z"), search.along(np.eye(3))[0]
-    if axis is not None:
-        names, view = ("radius", "height"), search.about(axis)[0]
-        angle = turn_of(motion) if turns_alone(motion) else None
-    extremes = search.extremes(names, view)
-    return searched(search, axis, plan_axes(arm, axis), angle, extremes, Fineness(resolution))
+    return searched(inquiry_of(arm, tool, fineness=Fineness(resolution)))
 
 
 def random_upright(random: np.random.Generator) -> Arm:

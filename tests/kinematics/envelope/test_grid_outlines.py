@@ -65,3 +65,25 @@ def test_corners_and_what_is_thinner_than_the_grid(sides: tuple[float, float]) -
     """A box of slides, off the grid; a thin one may be missed, and the bound says so."""
     found = drawn(slides, box_of([0.013, 0.027], [0.013 + sides[0], 0.027 + sides[1]]), 0.1)
     assert abs(found.area.value - sides[0] * sides[1]) <= found.area.error_bound
+
+
+def test_the_left_half_is_as_good_as_the_right() -> None:
+    """A ring about the origin: chords beyond it are bent too, and their bound is as true."""
+
+    def about_zero(q: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        places, jacobians = polar(q)
+        return places - 2.0, jacobians
+
+    limits = box_of([-np.pi, 0.3], [np.pi, 1.0])
+    seeker = InView(about_zero, limits, np.ones(2), 1e-10)
+    joint_values = np.random.default_rng(6).uniform(limits.lower, limits.upper, (4000, 2))
+    samples = Samples(joint_values, seeker.view(joint_values)[0])
+    grid = Grid(np.array([-1.5, -1.5]), 0.11, (28, 28), 2)
+    fill(grid, seeker, samples)
+    found = outlines_of_grid(grid, seeker, samples.places)
+    expected = np.pi * (1.0 - 0.09)
+    assert abs(found.area.value - expected) <= min(found.area.error_bound, 1e-3)
+    for curve, radius in zip(found.curves, (1.0, 0.3), strict=True):
+        off = np.abs(np.hypot(*curve.points.T) - radius)
+        left = curve.points[:, 0] < 0.0
+        assert np.median(off[left]) < 2.0 * np.median(off[~left]) + 1e-9

@@ -7,7 +7,12 @@ from kinematics.kernels.whole_turns import INSIDE
 
 
 def order(
-    target: list[int], flags: list[int], primary: list[float], secondary: list[float], most: int = 9
+    target: list[int],
+    flags: list[int],
+    primary: list[float],
+    secondary: list[float],
+    most: int = 9,
+    beyond: int = 9,
 ) -> tuple[list[int], list[int]]:
     source = np.arange(len(flags))
     offsets, found, reached, all_reached = best_first(
@@ -18,6 +23,7 @@ def order(
         np.array(primary),
         np.array(secondary),
         most,
+        beyond,
     )
     within = {t for t, bits in zip(target, flags, strict=True) if bits & INSIDE}
     assert np.flatnonzero(reached).tolist() == sorted(within)
@@ -66,3 +72,11 @@ def test_no_more_are_kept_than_are_listed() -> None:
     ranks = random.uniform(size=50)
     found = order([0] * 50, [1] * 50, ranks.tolist(), [0.0] * 50, most=7)[1]
     assert found == np.argsort(-ranks)[:7].tolist()
+
+
+def test_of_targets_beyond_travel_others_may_be_listed() -> None:
+    flags, ranks = [INSIDE, INSIDE, 0, 0, 0], [0.1, 0.2, -0.3, -0.1, -0.2]
+    of_all = order([0, 0, 1, 1, 1], flags, ranks, [0.0] * 5, most=1)
+    assert of_all == ([0, 1, 4], [1, 3, 4, 2])
+    of_best = order([0, 0, 1, 1, 1], flags, ranks, [0.0] * 5, most=2, beyond=1)
+    assert of_best == ([0, 2, 3], [1, 0, 3])

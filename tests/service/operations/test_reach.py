@@ -57,7 +57,7 @@ class Made:
     def estimated_seconds(self, targets: Targets) -> float:
         return self.seconds * len(targets)
 
-    def check(self, targets: Targets, *, near: Any = None) -> Checks:
+    def check(self, targets: Targets, *, best_only: bool = False, near: Any = None) -> Checks:
         self.asked.append((len(targets), near))
         count = len(targets)
         told = {REACHABLE: FOUND, OUTSIDE_TRAVEL: [[3.0, 0.2], [0.2, 3.1]]}

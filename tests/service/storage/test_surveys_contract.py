@@ -1,12 +1,14 @@
 """What a store promises of surveys, held on every database (see test_storage_contract)."""
 
+import time
 from collections.abc import Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import replace
-from datetime import UTC, datetime
+from datetime import UTC, datetime, timedelta
 from typing import Any
 
 import pytest
+import sqlalchemy as sa
 
 from service.errors import StorageUnavailable, UnknownSurvey
 from service.settings import Settings
@@ -164,6 +166,20 @@ def test_what_is_removed_is_gone(store: SurveyStorage) -> None:
     assert not store.keep("a1", [])
 
 
+def test_what_was_over_before_a_moment(store: SurveyStorage) -> None:
+    for number, (name, state) in enumerate(
+        [("a1", SUCCEEDED), ("a2", CANCELLED), ("a3", FAILED), ("a4", "")]
+    ):
+        add(store, name)
+        store.begin(name, AT)
+        if state:
+            store.end(name, state, AT + timedelta(days=number))
+    assert store.over_before(AT, 9) == []
+    assert store.over_before(AT + timedelta(days=1, seconds=1), 9) == ["a1", "a2"]
+    assert store.over_before(AT + timedelta(days=99), 9) == ["a1", "a2", "a3"]
+    assert store.over_before(AT + timedelta(days=99), 2) == ["a1", "a2"]
+
+
 def test_writers_at_once_lose_no_count(store: SurveyStorage) -> None:
     pieces = [GivenPiece(number, 2, b"") for number in range(40)]
     store.add(replace(ONE, total=80), pieces, key=None, digest="")
@@ -188,6 +204,15 @@ def test_one_process_leads(opened: OpenStorage, request: pytest.FixtureRequest) 
         assert not other.surveys.may_lead()
         opened.surveys.close()
         assert other.surveys.may_lead()
+        # The database server is started anew: whoever led finds out when it is asked again.
+        with other.surveys._engine.begin() as connection:
+            leader = other.surveys._lead.connection.info.backend_pid  # type: ignore[union-attr]
+            connection.execute(sa.text("SELECT pg_terminate_backend(:pid)"), {"pid": leader})
+        deadline = time.monotonic() + 5
+        while not opened.surveys.may_lead():
+            assert time.monotonic() < deadline
+            time.sleep(0.01)
+        assert not other.surveys.may_lead()
     finally:
         other.close()
 

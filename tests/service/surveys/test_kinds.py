@@ -17,6 +17,7 @@ import orjson
 import pytest
 
 from kinematics.errors import KinematicsError
+from service.convert import UNITS
 from service.errors import ServiceError, UnusableValue
 from service.operations.arms import Arms
 from service.operations.envelopes import envelope_question
@@ -256,4 +257,4 @@ def test_reports_say_what_was_found(opened: OpenStorage, arms: Arms[ReadArm]) ->
 
 def test_targets_come_back_from_their_piece_whatever_numbers_they_hold() -> None:
     rows = [{"position": [10**400, 0, 1]}, {"name": 10**20, "position": [0.1, -0.0, 2]}]
-    assert rows_of(given_rows(rows)) == rows
+    assert rows_of(given_rows(rows, UNITS["mm-deg"])) == rows

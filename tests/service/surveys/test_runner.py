@@ -8,7 +8,7 @@ import time
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import BrokenExecutor, Executor, Future, ThreadPoolExecutor
 from dataclasses import replace
-from datetime import UTC, datetime
+from datetime import UTC, datetime, timedelta
 from typing import Any
 
 import pytest
@@ -288,3 +288,24 @@ def test_processes_that_a_stop_takes_away_are_no_failure(
     bench.runner._thread.join(5)
     assert not bench.runner._thread.is_alive()
     assert bench.get().state == "running"
+
+
+def test_what_is_over_is_kept_for_as_many_days_as_said(bench: Bench) -> None:
+    for name in ("a1", "b2", "c3"):
+        bench.add(name)
+    bench.store.begin("a1", AT)
+    bench.store.end("a1", "succeeded", AT)
+    bench.store.end("b2", "cancelled", AT + timedelta(days=5))
+    for days, left in ((0, ["c3", "b2", "a1"]), (7, ["c3", "b2"])):
+        cared_for = Runner(
+            bench.store,
+            None,  # type: ignore[arg-type]
+            bench.pool,
+            now=lambda: AT + timedelta(days=8),
+            days=days,
+        )
+        cared_for.wake()
+        while (found := bench.store.get("c3")) is None or found.state != "succeeded":
+            time.sleep(0.01)
+        cared_for.stop()
+        assert [survey.id for survey in bench.store.page("", 9)] == left

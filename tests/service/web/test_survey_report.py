@@ -3,6 +3,7 @@
 import re
 from typing import Any
 
+import numpy as np
 import pytest
 
 from service.web.survey_drawing import two_views
@@ -93,6 +94,23 @@ def test_any_spread_fits_on_a_page(spread: float, length: str) -> None:
 def _mark(view: str, mark: str) -> tuple[float, float]:
     ((x, y),) = re.findall(rf"M([-\d.]+) ([-\d.]+){re.escape(mark)}", view)
     return float(x), float(y)
+
+
+def test_of_many_places_marks_are_smaller_and_where_they_were() -> None:
+    """A thousand places on a grid and one that is not reached, beside few of the same spread."""
+    span = np.linspace(-700.0, 700.0, 63)
+    grid = [((float(x), float(y), 0.0), "reachable") for x in span for y in span]
+    corners = [grid[0], grid[62], grid[-63], grid[-1], ((1.0, 2.0, 3.0), "unreachable")]
+    few, many = (two_views(points, "mm", "base") for points in (corners, [*corners, *grid]))
+    for verdict, size in ((r"m-.8 0a", 0.4), (r"m-.9-.9l", 0.7)):
+        place = rf"M([-.0-9]+) ([-.0-9]+){re.escape(verdict)}"
+        expected = np.array(re.findall(place, few.split("<figcaption>")[0]), float)
+        (above, below) = re.findall(rf'<path transform="scale\({size}\)" d="(.*?)"', many)
+        found = np.concatenate([np.array(re.findall(place, d), float) for d in (above, below)])
+        shown = {tuple(np.round(at, 1)) for at in found * size}
+        assert all(min(np.hypot(*(at - np.array(one))) for one in shown) < 0.1 for at in expected)
+        assert len(found) == (2 * (len(grid) + 4) if size == 0.4 else 2)
+    assert "transform" not in few
 
 
 @pytest.mark.parametrize("apart", [0.0, 5e-324, 1e-12, 1e-6, 1e12])
