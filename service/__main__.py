@@ -96,15 +96,10 @@ def _add_simulate(commands: Any) -> None:
     )
 
 
-def _parser() -> argparse.ArgumentParser:
-    parser = argparse.ArgumentParser(
-        prog="armspan",
-        description="Where the tool of a serial arm is. Every option of what works on the "
-        "database is also a variable, such as ARMSPAN_PORT; the option wins.",
-        allow_abbrev=False,
+def _add_serve(commands: Any) -> argparse.ArgumentParser:
+    serve: argparse.ArgumentParser = commands.add_parser(
+        "serve", help="serve over HTTP", allow_abbrev=False
     )
-    commands = parser.add_subparsers(required=True, metavar="COMMAND")
-    serve = commands.add_parser("serve", help="serve over HTTP", allow_abbrev=False)
     serve.set_defaults(command="serve")
     # Settings read and check the texts, so that options and variables are read alike.
     serve.add_argument("--host", help="address to listen on (127.0.0.1)")
@@ -127,8 +122,19 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument(
         "--frame-ancestors", help="origins whose pages may show ours in a frame (none)"
     )
+    return serve
+
+
+def _parser() -> argparse.ArgumentParser:
+    parser = argparse.ArgumentParser(
+        prog="armspan",
+        description="Where the tool of a serial arm is. Every option of what works on the "
+        "database is also a variable, such as ARMSPAN_PORT; the option wins.",
+        allow_abbrev=False,
+    )
+    commands = parser.add_subparsers(required=True, metavar="COMMAND")
+    on_database = [_add_serve(commands)]
     _add_simulate(commands)
-    on_database = [serve]
     for kind in ("arm", "cell"):
         stored = commands.add_parser(f"{kind}s", help=f"stored {kind}s", allow_abbrev=False)
         actions = stored.add_subparsers(required=True, metavar="ACTION")

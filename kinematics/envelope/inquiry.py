@@ -54,7 +54,17 @@ Finds = Callable[[str, Asked], Any]
 
 
 def at_once(_name: str, asked: Asked) -> Any:
-    """Find all pieces here and now."""
+    """Find all pieces here and now.
+
+    Examples
+    --------
+    >>> class Sum:
+    ...     pieces, places = 3, 0
+    ...     piece = staticmethod(lambda number: number + 1)
+    ...     told = staticmethod(sum)
+    >>> at_once("sum", Sum())
+    6
+    """
     return asked.told([asked.piece(number) for number in range(asked.pieces)])
 
 

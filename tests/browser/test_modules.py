@@ -139,7 +139,7 @@ def test_typed_numbers(ask: Callable[..., Any], text: str, value: float | None) 
 
 @pytest.mark.parametrize(
     ("ms", "shown"),
-    [(-5, "0.0 s"), (90, "0.1 s"), (9_960, "9 s"), (14_200, "14 s"), (180_000, "3 min")],
+    [(-5, "0.0 s"), (90, "0.1 s"), (9_960, "10 s"), (14_200, "14 s"), (180_000, "3 min")],
 )
 def test_ages(ask: Callable[..., Any], ms: float, shown: str) -> None:
     assert ask("numbers.js", "return all.age(values[0])", ms) == shown
