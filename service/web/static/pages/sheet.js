@@ -28,7 +28,7 @@ const state = {
   said: chosen({ tool: "", frame: "", form: "xyz-fixed", units: "", q: "" }),
   stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [], stop: () => {}, asking: null, settle: 0, text: 0,
 };
-const shown = {};
+const shown = { arms: new Set() };
 
 async function start() {
   begin();
@@ -59,12 +59,14 @@ async function fillChoices(upright) {
   said.units ||= units;
   said.tool ||= told.default_tool ?? tools[0] ?? "flange";
   const cell = told.cell ? await ask(`/v1/cells/${encodeURIComponent(told.cell)}`) : null;
-  shown.frameNames = [...new Set([...Object.keys(told.frames ?? {}), ...Object.keys(cell?.data?.cell?.frames ?? {})])];
+  const shared = cell?.data?.cell?.frames ?? {};
+  const own = Object.keys(told.frames ?? {}), all = Object.keys(shared);
+  shown.drawn = ["base", "world", ...new Set([...own, ...all.filter((name) => isFixed(name, shared))])];
   if (!said.frame) said.frame = (await upright) ? "base" : "world";
   const triples = [["xyz", "zyx", "xzy", "yxz", "yzx", "zxy"], ["zyz", "zxz", "xyx", "xzx", "yxy", "yzy"]].flat();
   const forms = ["fixed", "current"].flatMap((about) => triples.map((one) => `${one}-${about}`));
   fillSelect("tool", [...tools, "flange"]);
-  fillSelect("frame", ["base", "world", ...shown.frameNames]);
+  fillSelect("frame", ["base", "world", ...own, ...all]);
   fillSelect("form", [...forms, "quaternion-wxyz", "quaternion-xyzw", "rotation-vector", "matrix"]);
   fillSelect("units", UNITS);
   setText(place("arm-title"), told.title ?? "");
@@ -81,6 +83,15 @@ function fillSelect(name, options) {
   });
 }
 
+/** Say whether a frame of the cell hangs on the world or a base; one on a flange moves, and has no place here. */
+function isFixed(name, shared) {
+  let under = name;
+  while (shared[under]) under = shared[under].in;
+  const [of, part] = under.split(".");
+  if (part === "base" && of !== arm) shown.arms.add(of);
+  return under === "world" || part === "base";
+}
+
 async function isUpright() {
   const found = await frames(["base"], "world");
   return !found.length || found[0].matrix[2][2] > 0.7;
@@ -89,13 +100,9 @@ async function isUpright() {
 /** Return poses of frames of this arm in one of them, as the interface tells them. */
 async function frames(names, within) {
   const known = (name) => (name === "world" ? name : `${arm}.${name}`);
-  const body = { arms: [{ arm }], find: names.map((name) => ({ of: known(name), in: known(within) })), form: "matrix", units: state.said.units || undefined };
-  const { ok, data, problem } = await ask("/v1/frames", { method: "POST", body });
-  if (!ok) {
-    // One that moves with another arm has no place here; the others have.
-    const wrong = Number(problem.errors?.[0]?.pointer?.split("/")[2]);
-    return Number.isInteger(wrong) && names.length > 1 ? frames(names.filter((_, i) => i !== wrong), within) : [];
-  }
+  const body = { arms: [arm, ...shown.arms].map((one) => ({ arm: one })), find: names.map((name) => ({ of: known(name), in: known(within) })), form: "matrix", units: state.said.units || undefined };
+  const { ok, data } = await ask("/v1/frames", { method: "POST", body });
+  if (!ok) return [];
   return data.answers.map(({ pose }, i) => ({ name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
 }
 
@@ -109,7 +116,7 @@ async function anew() {
   state.stop();
   state.trail = [];
   shown.views.forget();
-  const asked = question(), others = ["base", "world", ...shown.frameNames].filter((name) => name !== asked.frame);
+  const asked = question(), others = shown.drawn.filter((name) => name !== asked.frame);
   frames(others, asked.frame).then((found) => {
     state.frames = found;
     draw();
