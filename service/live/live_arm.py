@@ -56,7 +56,7 @@ _RATES_FROM = 64
 apart an encoder's last digit would be all."""
 
 _SAY = {
-    STALE: "joint values have stopped: no new ones came for {:.3g} s",
+    STALE: "joint values have stopped: stale after {:.3g} s without any",
     OUTSIDE_TRAVEL: "the last joint values are outside travel",
     JUMP: "joint {} moved faster than its top speed",
     NOT_FINITE: "the last joint values are not all finite numbers",
@@ -166,7 +166,7 @@ class LiveArm:
             # Whoever begins again may count anew.
             source.order.begin_anew()
         self._recent.clear()
-        self._stand("bad", STALE, _SAY[STALE].format(since))
+        self._stand("bad", STALE, _SAY[STALE].format(self.period.stale_after_s))
         return True
 
     def revised(self, stored: StoredArm[ReadArm]) -> bool:

@@ -148,7 +148,7 @@ def test_silence_is_told_after_three_periods(bench: Bench) -> None:
     assert seen == ["stale"]
     assert bench.live.standing.sample.sequence == 4
     assert bench.live.age_s(bench.clock.steady) == pytest.approx(10.31)
-    assert bench.live.standing.say == "joint values have stopped: no new ones came for 0.3 s"
+    assert bench.live.standing.say == "joint values have stopped: stale after 0.3 s without any"
     bench.feed(0, 0, sequence=5)
     assert bench.live.standing.quality == "good"
 
