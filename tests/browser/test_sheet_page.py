@@ -1,0 +1,86 @@
+"""The sheet of an arm as who commissions it uses it: by hand, turned, other words, texts, table.
+
+Numbers are those the interface gives. Left out: looks (test_every_page.py), live states (board).
+"""
+
+import httpx
+import pytest
+
+from tests.browser.chromium import Look, Screen
+from tests.browser.test_every_page import READY
+from tests.conftest import ServerProcess
+
+ARM = "housing-loader"
+JOINTS = [25, -70, 95, 30, -40, 15]
+PICTURE = "return document.querySelector('canvas[data-view={}]').toDataURL()"
+
+
+@pytest.fixture
+def sheet(screen: Screen, demo: ServerProcess) -> Screen:
+    """The sheet at joint values that were typed: nothing moves."""
+    q = ",".join(map(str, JOINTS))
+    address = f"{demo.url}/arms/{ARM}?q={q}&tool=gripper&frame=base&form=xyz-fixed&units=mm-deg"
+    screen.open(address, Look(1280, 800), ready=READY)
+    return screen
+
+
+def readings(sheet: Screen) -> list[float]:
+    text = sheet.run("return document.getElementById('readings').innerText")
+    words = text.replace("\u2212", "-").split()
+    return [float(word) for word in words if word.lstrip("-").replace(".", "", 1).isdigit()]
+
+
+def asked(server: ServerProcess, **said: object) -> list[float]:
+    query = {"q": ",".join(map(str, JOINTS)), "tool": "gripper", "form": "xyz-fixed", **said}
+    told = httpx.get(f"{server.url}/v1/arms/{ARM}/pose", params=query).json()["poses"][0]
+    return [*told["position"], *told["orientation"]["values"]]
+
+
+def test_typed_joint_values_show_the_pose_of_the_interface(
+    sheet: Screen, demo: ServerProcess
+) -> None:
+    # As printed: a tenth of a millimetre, a hundredth of a degree.
+    assert readings(sheet) == pytest.approx(asked(demo), abs=0.0501)
+
+
+def test_a_nudge_moves_one_joint_by_a_step(sheet: Screen, demo: ServerProcess) -> None:
+    sheet.run("document.querySelectorAll('#travel button')[1].click()")
+    sheet.until("new URLSearchParams(location.search).get('q')?.startsWith('26,')")
+    expected = asked(demo, q=",".join(map(str, [26, *JOINTS[1:]])))
+    shown = f"{expected[1]:.1f}".replace("-", "\u2212")
+    sheet.until(f"document.getElementById('readings').innerText.includes('{shown}')")
+    assert readings(sheet) == pytest.approx(expected, abs=0.0501)
+
+
+def test_the_free_view_turns_by_arrow_keys_and_the_others_stay(sheet: Screen) -> None:
+    free, plan = sheet.run(PICTURE.format("free")), sheet.run(PICTURE.format("plan"))
+    sheet.run("document.querySelector('canvas[data-view=free]').focus()")
+    sheet.press("ArrowRight", "ArrowRight")
+    sheet.run("return new Promise((done) => requestAnimationFrame(() => setTimeout(done)))")
+    assert sheet.run(PICTURE.format("free")) != free
+    assert sheet.run(PICTURE.format("plan")) == plan
+
+
+def test_what_is_chosen_stands_in_the_address(sheet: Screen, demo: ServerProcess) -> None:
+    sheet.run(
+        "const one = document.getElementById('frame'); one.value = 'fixture-a';"
+        "one.dispatchEvent(new Event('change', { bubbles: true }))"
+    )
+    sheet.until("new URLSearchParams(location.search).get('frame') === 'fixture-a'")
+    expected = asked(demo, frame="fixture-a")
+    shown = f"{expected[0]:.1f}".replace("-", "\u2212")
+    sheet.until(f"document.getElementById('readings').innerText.includes('{shown}')")
+    assert readings(sheet) == pytest.approx(expected, abs=0.0501)
+
+
+def test_the_texts_name_the_address_to_ask(sheet: Screen) -> None:
+    sheet.run("document.getElementById('texts').open = true")
+    # Addresses stand at once, the texts when they were answered.
+    for part in (f"/v1/arms/{ARM}/pose?", "e994bb33"):
+        sheet.until(f"document.getElementById('text-blocks').innerText.includes('{part}')")
+
+
+def test_the_table_is_that_of_the_stored_arm(sheet: Screen, demo: ServerProcess) -> None:
+    rows = httpx.get(f"{demo.url}/v1/arms/{ARM}").json()["arm"]["rows"]
+    told = sheet.run("return document.querySelectorAll('#table tbody tr').length")
+    assert told == len(rows)
