@@ -76,7 +76,7 @@ CELLS: dict[str, tuple[Body, str, str, Any, str, str]] = {
         "/frames/" + "a" * 300, "a" * 197 + "...", "match", "0,47"),
     "a reserved name": (cell(frames={"flange": AT_ORIGIN}), "unusable-value", "/frames/flange",
         "flange", "reserved", "link-0 ... link-32"),
-    "frames as a list": (cell(frames=[]), "unusable-value", "/frames", [], "dictionary", ""),
+    "frames as a list": (cell(frames=[]), "unusable-value", "/frames", [], "an object", ""),
     "an unknown field of a frame": (frame(parent="world"), "unknown-field", "/frames/pin/parent",
         "world", "parent", "in"),
     "a number below 1": (frame(number=0), "unusable-value", "/frames/pin/number", 0, "greater",
