@@ -33,7 +33,7 @@ COUNTS = {
     "reach-envelope": 2,
     "jacobian": 4,
     "jacobians": 4,
-    "pose": 11,
+    "pose": 12,
     "poses": 8,
     "rotations-guesses": 5,
     "rotation": 6,

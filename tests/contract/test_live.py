@@ -449,7 +449,7 @@ async def test_an_arm_that_is_removed(two: httpx.AsyncClient, app: FastAPI) -> N
     await asyncio.sleep(0.7)
     assert app.state.live.names() == []
     none = await two.get("/v1/live", headers={"if-none-match": known})
-    assert (none.status_code, none.json()) == (200, {"arms": []})
+    assert (none.status_code, none.json()) == (200, {"arms": [], "arms_without_values": 0})
 
 
 async def test_an_arm_without_joints(client: httpx.AsyncClient) -> None:
