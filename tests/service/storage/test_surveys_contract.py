@@ -206,7 +206,8 @@ def test_one_process_leads(opened: OpenStorage, request: pytest.FixtureRequest) 
         assert other.surveys.may_lead()
         # The database server is started anew: whoever led finds out when it is asked again.
         with other.surveys._engine.begin() as connection:
-            leader = other.surveys._lead.connection.info.backend_pid  # type: ignore[union-attr]
+            lead: Any = other.surveys._lead
+            leader = lead.connection.dbapi_connection.info.backend_pid
             connection.execute(sa.text("SELECT pg_terminate_backend(:pid)"), {"pid": leader})
         deadline = time.monotonic() + 5
         while not opened.surveys.may_lead():
