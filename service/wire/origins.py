@@ -26,11 +26,11 @@ def refuse_foreign(headers: Headers) -> None:
     if origin is None or _host(origin) == headers.get("host", "").lower():
         return
     raise UnusableValue(
-        "joint values do not come from a page of another site",
+        "nothing is taken from a page of another site",
         where=("origin",),
         location="header",
         value=origin,
-        way_out="send them from a program, or as JSON by PUT from a page of this service",
+        way_out="send it from a program, or from a page of this service",
     )
 
 

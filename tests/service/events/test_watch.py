@@ -86,6 +86,17 @@ def test_silence_begins_by_the_clock_and_ends_with_values() -> None:
     assert bench.told[1].document["peak"] == pytest.approx(10.1, abs=0.02)
 
 
+def test_an_input_that_is_doubted_is_not_silent() -> None:
+    bench = Watched()
+    bench.feed_all(INSIDE, INSIDE)
+    bench.clock.go_on(200.0)
+    assert bench.words() == ["open stale"]
+    for _ in range(3):
+        assert bench.feed(171.0, 0.0, period_s=60.0).doubted
+        bench.clock.go_on(0.1)
+    assert bench.words() == ["open stale", "ended stale"]
+
+
 def test_another_source_and_another_revision() -> None:
     bench = Watched()
     bench.feed_all(INSIDE, source="plc")

@@ -157,7 +157,10 @@ function floor(one, put, scene, [low, high]) {
   const tool = column(scene.outline.tool, 3);
   one.line([put(tool), put([tool[0], tool[1], z])], "chain");
   const corner = put([ends[0][1], ends[1][0], z]);
-  one.letters(say(WORDS.sheet.grid, { length: step, unit: scene.unit }), corner[0], corner[1] + 12, { px: 10, align: "center", colour: "quiet" });
+  const words = say(WORDS.sheet.grid, { length: step, unit: scene.unit }), [width, height] = one.size();
+  // Wherever the corner lies, the words stay whole on the paper.
+  const half = one.widthOf(words, 10) / 2 + 4, within = (at, least, most) => Math.min(Math.max(at, least), most);
+  one.letters(words, within(corner[0], half, width - half), within(corner[1] + 12, 10, height - 26), { px: 10, align: "center", colour: "quiet" });
 }
 
 function fitTurning(state, canvas, repaint) {
