@@ -80,6 +80,7 @@ function keys() {
 
 /** List or question changed: read anew, forget what was answered, ask if it is short. */
 function asked() {
+  page.isSent = false;
   page.control?.abort();
   clearTimeout(page.timer);
   const question = page.question();
@@ -203,7 +204,8 @@ async function drawNow() {
   const isStill = () => page.rows[page.at] === row && page.solution === solution;
   const approach = solution?.approach, before = approach?.start?.joints ?? approach?.breaks?.joints;
   const [outline, start, put] = await Promise.all([
-    solution ? page.postures.outline(solution.joints, question) : page.rows.length ? null : page.postures.live(question),
+    // Without a solution no arm is drawn: one as it stood once could be taken for where it is.
+    solution ? page.postures.outline(solution.joints, question) : null,
     before ? page.postures.outline(before, question) : null,
     page.postures.frameInBase(question),
   ]);
@@ -266,15 +268,15 @@ async function results() {
 async function report() {
   const body = checkBody(page.name, page.question(), targets(), "best");
   delete body.solutions;
+  page.isSent = true;
   const title = say(words.survey.title, { arm: page.name, count: counted(page.read.places.length) });
   const answer = await page.survey.begin(body, title);
   if (!answer.ok) place("reading").append(el("p", { class: "refused" }, refusal(answer.problem)));
 }
 
-/** The result of a survey: beside the list it came from, or alone where that is not there. */
+/** The result of a survey: beside the list it came from while that stands unchanged, or else alone. */
 function surveyFound(survey, found) {
-  const rows = page.rows.filter((row) => row.place);
-  if (rows.length === found.length) return answered({ results: found });
+  if (page.isSent) return answered({ results: found });
   page.rows = found.map((result, i) => ({ place: null, line: i + 1, result }));
   page.table.show(page.rows, survey.units);
 }

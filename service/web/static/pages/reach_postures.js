@@ -30,10 +30,6 @@ export function postures(name) {
       const told = await get("/pose", { q: joints.join(","), tool, units, frame: "base", outline: 1, form: "matrix" });
       return told?.poses[0].outline ?? null;
     },
-    async live({ tool, units }) {
-      const answer = await ask(withQuery(`${path}/live`, { tool, units, frame: "base", outline: 1, form: "matrix" }));
-      return answer.data?.poses?.[0]?.outline ?? null;
-    },
     envelope({ tool, units }) {
       const body = { arm: name, units, ...(tool ? { tool } : {}) };
       return once(`envelope ${tool} ${units}`, () => ask("/v1/reach/envelope", { method: "POST", body }));
