@@ -74,6 +74,9 @@ KINDS: Mapping[str, Kind] = {
 }
 
 # Codes that items and flat answers carry and that are no refusals.
+STALE_CODE, SIMULATED_CODE = 7, 8
+"""Of live poses; the codes below come from what is computed (kinematics/findings.py)."""
+
 ANSWERS: Mapping[int, str] = {
     0: "fine",
     1: "near singular",
@@ -82,8 +85,8 @@ ANSWERS: Mapping[int, str] = {
     4: "outside travel",
     5: "angles not unique",
     6: "input repaired",
-    7: "stale",
-    8: "simulated",
+    STALE_CODE: "stale",
+    SIMULATED_CODE: "simulated",
     200: "unreachable",
     201: "outside travel (reach)",
     202: "not found",

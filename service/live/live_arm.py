@@ -4,7 +4,8 @@ Idea: each sample is weighed before it stands. Older and repeated ones are dropp
 this table could do, or what a clock cannot have shown, makes the quality uncertain and leaves the
 last good posture where it is. An input that stops is told by a timer. Nothing here asks which time
 it is of the wall: order and ages are those of the steady clock.
-Left out: observers and timers (live_arms.py), poses (service/operations/live.py).
+Left out: whether the arm can be where a sample says (weighing.py), observers and timers
+(live_arms.py), poses (service/operations/live.py).
 """
 
 from collections import Counter, deque
@@ -12,12 +13,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 from math import isfinite
 
-import numpy as np
-
-from kinematics.findings import OUTSIDE_TRAVEL as OUTSIDE_TRAVEL_CODE
-from kinematics.sampled_motion import joint_rates, joint_too_fast
-from kinematics.travel_limits import TravelRun, travel_findings
-from service.convert import finding_out
+from kinematics.sampled_motion import joint_rates
 from service.live.clocks import Clock
 from service.live.history import History
 from service.live.order import Order
@@ -25,9 +21,7 @@ from service.live.period import Period
 from service.live.samples import (
     IN_FUTURE,
     JOINTS_CHANGED,
-    JUMP,
     NOT_FINITE,
-    OUTSIDE_TRAVEL,
     STALE,
     SUPERSEDED,
     TOO_OLD,
@@ -37,6 +31,7 @@ from service.live.samples import (
     Taken,
 )
 from service.live.source_clock import SourceClock
+from service.live.weighing import Weighing, elapsed_s
 from service.operations.arms import StoredArm
 from service.wire.arms import ReadArm
 
@@ -46,10 +41,6 @@ _MOST_SOURCES = 8
 _TAKING_TURNS_S = 5.0
 """Sources that sent something within this time are at it together."""
 
-_UNEVEN_S = 0.05
-"""By so much more than two samples say may lie between them: times in whole milliseconds, tasks of
-a controller that begin late, values that come together."""
-
 _RATES_OVER_S = 0.1
 _RATES_FROM = 64
 """Rates are the slope over this time, of so many samples at most: of two samples a millisecond
@@ -57,8 +48,6 @@ apart an encoder's last digit would be all."""
 
 _SAY = {
     STALE: "joint values have stopped: stale after {:.3g} s without any",
-    OUTSIDE_TRAVEL: "the last joint values are outside travel",
-    JUMP: "joint {} moved faster than its top speed",
     NOT_FINITE: "the last joint values are not all finite numbers",
     IN_FUTURE: "the last joint values are from the future by the clock of their source",
     TOO_OLD: "the last joint values are old by the clock of their source, or it was set",
@@ -106,7 +95,7 @@ class LiveArm:
         self._sources: dict[str, Source] = {}
         self._recent: deque[Sample] = deque(maxlen=_RATES_FROM)
         self._is_real = False
-        self._weigh_by(stored)
+        self._weighing = Weighing(stored.read)
         at_s, at_ms = clock.steady_s(), clock.wall_ms()
         self.standing = Standing(self.name, stored, None, "bad", STALE, "", 0, at_s, at_ms)
 
@@ -146,7 +135,7 @@ class LiveArm:
         dropped = source.order.dropped(sample.sequence, sampled_s)
         if dropped:
             return self._dropped(dropped)
-        why, say = self._doubted_as_posture(sample)
+        why, say = self._weighing.doubt(self.standing.sample, sample)
         if why:
             return self._doubted(why, say)
         if sampled_s is not None:
@@ -179,7 +168,7 @@ class LiveArm:
         self.standing = replace(self.standing, stored=stored)
         if same:
             return False
-        self._weigh_by(stored)
+        self._weighing = Weighing(stored.read)
         joints = stored.read.arm.joint_count
         if joints != self.history.joints:
             # Nothing that came before is a posture of this arm.
@@ -207,7 +196,7 @@ class LiveArm:
                 break
             if sample is not last:
                 first = sample
-        elapsed = _elapsed_s(first, last)
+        elapsed = elapsed_s(first, last)
         return joint_rates(first.joints, last.joints, elapsed) if elapsed > 0.0 else None
 
     def offset_ms(self) -> float | None:
@@ -261,39 +250,6 @@ class LiveArm:
         """Return our steady clock minus our wall clock, seconds."""
         return self._clock.steady_s() - self._clock.wall_ms() / 1000.0
 
-    def _doubted_as_posture(self, sample: Sample) -> tuple[str, str]:
-        """Return why the arm cannot be there, and the sentence; empty where it can."""
-        self._joints[0] = sample.joints
-        self._travel()
-        if self._travel.margin[0] < 0.0:
-            return OUTSIDE_TRAVEL, self._say_outside(sample)
-        before = self.standing.sample
-        if before is not None:
-            # Whichever is longer: a source may send late what it measured in time.
-            arrived = sample.received_s - before.received_s
-            elapsed = max(_elapsed_s(before, sample), arrived, 0.0) + _UNEVEN_S
-            arm = self.standing.stored.read.arm
-            joint = joint_too_fast(arm, before.joints, sample.joints, elapsed)
-            if joint is not None:
-                return JUMP, _SAY[JUMP].format(joint)
-        return "", ""
-
-    def _say_outside(self, sample: Sample) -> str:
-        """Return which joint is beyond which limit, in the arm's own units."""
-        read = self.standing.stored.read
-        found = travel_findings(read.arm, np.array(sample.joints))
-        # Of a sum of joints, rounding may say otherwise than the kernel.
-        outside = [one for one in found if one.code == OUTSIDE_TRAVEL_CODE]
-        if not outside:
-            return _SAY[OUTSIDE_TRAVEL]
-        return str(finding_out(read.units, outside[0])["say"])
-
-    def _weigh_by(self, stored: StoredArm[ReadArm]) -> None:
-        """Lay out what travel is judged by."""
-        arm = stored.read.arm
-        self._joints = np.empty((1, arm.joint_count))
-        self._travel = TravelRun(arm, self._joints)
-
     def _stand(self, quality: Quality, reason: str, say: str, sample: Sample | None = None) -> None:
         self.standing = Standing(
             self.name,
@@ -315,10 +271,3 @@ class LiveArm:
     def _dropped(self, why: str) -> Taken:
         self.counts[why] += 1
         return Taken(self.standing, dropped=why)
-
-
-def _elapsed_s(first: Sample, second: Sample) -> float:
-    """Return the seconds between two samples: by the source's clock where it says both times."""
-    if first.source == second.source and None not in (first.sampled_ms, second.sampled_ms):
-        return (second.sampled_ms - first.sampled_ms) / 1000.0  # type: ignore[operator]
-    return second.received_s - first.received_s

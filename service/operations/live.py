@@ -13,10 +13,9 @@ from service.live.samples import STALE
 from service.live.seen import Seen, seen_at, seen_now
 from service.operations.questions import Question
 from service.operations.single import posture_answer, question_about
+from service.problems import SIMULATED_CODE, STALE_CODE
 from service.wire.live_told import LiveAnswer
 from service.wire.single import SingleAnswer, SingleQuestion
-
-_STALE, _SIMULATED = 7, 8
 
 
 def live_answer(live: LiveArm, asked: SingleQuestion, clock: Clock) -> LiveAnswer:
@@ -66,9 +65,9 @@ def _told(asked: SingleQuestion, question: Question, seen: Seen) -> LiveAnswer:
     single = posture_answer(question, seen.joints, asked)
     codes = set(single.codes)
     if seen.reason == STALE:
-        codes.add(_STALE)
+        codes.add(STALE_CODE)
     if seen.simulated:
-        codes.add(_SIMULATED)
+        codes.add(SIMULATED_CODE)
     item = single.item | {"code": max(codes, default=0)}
     answer = SingleAnswer(
         single.head,

@@ -11,9 +11,8 @@ from service.errors import NoLivePose
 from service.live.live_arms import LiveArms
 from service.live.samples import STALE
 from service.live.seen import seen_now
+from service.problems import SIMULATED_CODE, STALE_CODE
 from service.wire.records import Quality
-
-_STALE, _SIMULATED = 7, 8
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,7 +49,7 @@ def measured_live(arms: LiveArms, name: str) -> Measured:
             where=("joints",),
             way_out=f"give joints, or have them sent to /v1/arms/{name}/joints",
         )
-    applying = {_STALE: seen.reason == STALE, _SIMULATED: seen.simulated}
+    applying = {STALE_CODE: seen.reason == STALE, SIMULATED_CODE: seen.simulated}
     return Measured(
         joints=seen.joints,
         source="live",

@@ -141,12 +141,9 @@ def _flags() -> str:
 _PAGE = """<!doctype html>
 <html lang="en" data-page="docs">
 <head>
-<meta charset="utf-8">
-<meta name="viewport" content="width=device-width, initial-scale=1">
-<link rel="icon" href="/docs/files/icon.svg">
+{{{{head}}}}
 <title>{{{{shell.name}}}}: {{{{shell.controllers}}}}</title>
 <link rel="stylesheet" href="/pages/pages.css">
-<script src="/pages/theme.js"></script>
 {{{{preload}}}}
 <script type="module" src="/pages/plain.js"></script>
 </head>

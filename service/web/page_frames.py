@@ -52,14 +52,14 @@ def framed(template: str, path: str, values: Mapping[str, str], *, bare: bool = 
 
     Parameters
     ----------
-    template : with places ``{{...}}``: ``section.key`` of the words, ``header``, ``footer``,
-        ``preload``, or one of ``values``.
+    template : with places ``{{...}}``: ``section.key`` of the words, ``head`` (what all pages
+        begin with), ``header``, ``footer``, ``preload``, or one of ``values``.
     path : of the page itself.
     values : HTML, escaped where it is text.
     bare : whether only the content is shown.
     """
     text = template
-    for part in ("header", "footer"):
+    for part in ("head", "header", "footer"):
         text = text.replace("{{" + part + "}}", files()[f"{part}.html"].decode("utf-8").strip())
     known = {
         "cautions": "".join(f"<li>{escape(line)}</li>" for line in CAUTIONS),

@@ -21,7 +21,7 @@ from service.web.document import parameter
 from service.wire.controller import joints_asked, wanted_scale, wanted_tag, wanted_units
 from service.wire.live_query import moment_in, unix_ms
 from service.wire.models import Strict, UnitsName
-from service.wire.query import number, whole_number
+from service.wire.query import number, unusable, whole_number
 from service.wire.question_parameters import QUESTION_PARAMETERS, one_of
 from service.wire.times import time_in
 
@@ -211,7 +211,9 @@ def request_of_parameters(said: Mapping[str, str]) -> JointsRequest:
         given["sampled_ms"] = moment_in(said["sampled_at"], "sampled_at")
     if "sampled_ms" in said:
         if "sampled_at" in said:
-            raise _unusable("sampled_ms", said, "say the time once: sampled_at or sampled_ms")
+            raise unusable(
+                "sampled_ms", said["sampled_ms"], "say the time once: sampled_at or sampled_ms"
+            )
         given["sampled_ms"] = number(said["sampled_ms"], "sampled_ms")
     if "sequence" in said:
         given["sequence"] = whole_number(said["sequence"], "sequence")
@@ -219,7 +221,7 @@ def request_of_parameters(said: Mapping[str, str]) -> JointsRequest:
         given["period_ms"] = number(said["period_ms"], "period_ms")
     if "simulated" in said:
         if said["simulated"] not in ("0", "1"):
-            raise _unusable("simulated", said, "simulated=1 or simulated=0")
+            raise unusable("simulated", said["simulated"], "simulated=1 or simulated=0")
         given["simulated"] = said["simulated"] == "1"
     if "source" in said:
         given["source"] = said["source"]
@@ -242,16 +244,6 @@ def _without_failed(said: Mapping[str, str]) -> tuple[dict[str, str], list[int]]
             found[name] = "0"
             failed.append(place)
     return found, failed
-
-
-def _unusable(name: str, said: Mapping[str, str], way_out: str) -> UnusableValue:
-    return UnusableValue(
-        f"{name}={said[name]} cannot be used",
-        where=(name,),
-        location="query",
-        value=said[name],
-        way_out=way_out,
-    )
 
 
 JOINTS_SHOWN: tuple[dict[str, Any], ...] = (

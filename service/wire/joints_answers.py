@@ -8,9 +8,10 @@ from typing import Literal
 
 from pydantic import RootModel
 
+from kinematics.findings import OUTSIDE_TRAVEL as OUTSIDE_TRAVEL_CODE
 from service.live.live_arm import LiveArm
 from service.live.samples import OUTSIDE_TRAVEL, STALE, Taken
-from service.problems import Problem
+from service.problems import SIMULATED_CODE, STALE_CODE, Problem
 from service.wire import fixed_text
 from service.wire.answer_models import ArmIdentity, Open
 from service.wire.answers import json_bytes
@@ -25,8 +26,7 @@ WIDTHS: Mapping[str, int] = {
     "quality": 9,
     "reason": 14,
 }
-_CODES = {OUTSIDE_TRAVEL: 4, STALE: 7}
-_SIMULATED = 8
+_CODES = {OUTSIDE_TRAVEL: OUTSIDE_TRAVEL_CODE, STALE: STALE_CODE}
 
 
 class JointsTaken(Open):
@@ -85,7 +85,7 @@ def taken_answer(
     reason = last.dropped or standing.reason
     codes = {_CODES.get(standing.reason, 0)}
     if standing.sample is not None and standing.sample.simulated:
-        codes.add(_SIMULATED)
+        codes.add(SIMULATED_CODE)
     code = max(codes)
     if wanted == "json":
         return Content(

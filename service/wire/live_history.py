@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from kinematics.orientation_forms import TRIPLES
 from kinematics.table import FloatArray
-from service.errors import FormNotFlat, UnusableValue
+from service.errors import FormNotFlat
 from service.live.history import KEPT_S
 from service.web.document import parameter
 from service.wire.answer_models import ArmIdentity, Open
@@ -20,7 +20,7 @@ from service.wire.controller import FLAT_FORM, Format, single_question, wanted_f
 from service.wire.flat import POSE_KEYS
 from service.wire.live_query import LIVE_SHOWN, moment_in
 from service.wire.models import UnitsName
-from service.wire.query import number, whole_number
+from service.wire.query import number, unusable, whole_number
 from service.wire.question_parameters import one_of
 from service.wire.single import SingleQuestion
 
@@ -87,7 +87,7 @@ def history_question(arm: str, said: Mapping[str, str]) -> HistoryQuestion:
     """
     wanted = wanted_format(said)
     if wanted not in ("json", "csv"):
-        raise _unusable("format", said, "format=json or format=csv")
+        raise unusable("format", said["format"], "format=json or format=csv")
     pose = single_question(arm, {key: said[key] for key in _POSE & said.keys()}, wanted)
     if wanted == "csv" and pose.form not in TRIPLES:
         raise FormNotFlat(
@@ -99,10 +99,12 @@ def history_question(arm: str, said: Mapping[str, str]) -> HistoryQuestion:
         )
     every_ms = number(said["every_ms"], "every_ms") if "every_ms" in said else 0.0
     if not 0.0 <= every_ms <= KEPT_S * 1000.0:
-        raise _unusable("every_ms", said, f"give milliseconds from 0 to {KEPT_S * 1000.0:.0f}")
+        raise unusable(
+            "every_ms", said["every_ms"], f"give milliseconds from 0 to {KEPT_S * 1000.0:.0f}"
+        )
     limit = whole_number(said["limit"], "limit") if "limit" in said else _USUAL_SAMPLES
     if not 1 <= limit <= MOST_SAMPLES:
-        raise _unusable("limit", said, f"give a whole number from 1 to {MOST_SAMPLES}")
+        raise unusable("limit", said["limit"], f"give a whole number from 1 to {MOST_SAMPLES}")
     from_ms, to_ms = (
         moment_in(said[name], name) if name in said else open_end
         for name, open_end in (("from", float("-inf")), ("to", float("inf")))
@@ -153,13 +155,3 @@ def lines(
     shown = (json_bytes(part)[2:-2].split(b"],[") for part in (whole, real))
     told = b"\r\n".join([first + b"," + second for first, second in zip(*shown, strict=True)])
     return head.encode("ascii") + b"\r\n" + told + b"\r\n"
-
-
-def _unusable(name: str, said: Mapping[str, str], way_out: str) -> UnusableValue:
-    return UnusableValue(
-        f"{name}={said[name]} cannot be used",
-        where=(name,),
-        location="query",
-        value=said[name],
-        way_out=way_out,
-    )

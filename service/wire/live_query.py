@@ -10,7 +10,7 @@ from typing import Any, NamedTuple
 from service.errors import UnusableValue
 from service.web.document import parameter
 from service.wire.controller import PARAMETERS, Format, single_question, wanted_format
-from service.wire.query import number, whole_number
+from service.wire.query import number, unusable, whole_number
 from service.wire.question_parameters import NEAREST, OUTLINE, QUESTION_PARAMETERS, one_of
 from service.wire.single import SingleQuestion
 from service.wire.times import time_in
@@ -97,7 +97,7 @@ def live_question(arm: str, said: Mapping[str, str], wanted: Format) -> LiveQues
     ServiceError, KinematicsError : a parameter that cannot be used.
     """
     pose = single_question(arm, _of_pose(said), wanted)
-    at_ms = _moment(said["at"]) if "at" in said else None
+    at_ms = moment_in(said["at"], "at") if "at" in said else None
     wait_s = None if "wait" not in said else _within(said["wait"], "wait", LONGEST_WAIT_S)
     if at_ms is not None and (wait_s is not None or "after" in said):
         raise UnusableValue(
@@ -154,13 +154,7 @@ def _within(text: str, name: str, most: float) -> float:
     value = number(text, name)
     if 0.0 < value <= most:
         return value
-    raise UnusableValue(
-        f"{name}={text} cannot be used",
-        where=(name,),
-        location="query",
-        value=text,
-        way_out=f"give a number above 0 and up to {most:g}",
-    )
+    raise unusable(name, text, f"give a number above 0 and up to {most:g}")
 
 
 def moment_in(text: str, name: str) -> float:
@@ -183,7 +177,3 @@ def moment_in(text: str, name: str) -> float:
 def unix_ms(at: datetime) -> float:
     """Return Unix milliseconds of a UTC time."""
     return (at - datetime(1970, 1, 1, tzinfo=UTC)).total_seconds() * 1000.0
-
-
-def _moment(text: str) -> float:
-    return moment_in(text, "at")

@@ -181,6 +181,23 @@ def whole_number(text: str, name: str) -> int:
     return -value if mended.startswith("-") else value
 
 
+def unusable(name: str, text: str, way_out: str) -> UnusableValue:
+    """Return the refusal of a parameter whose text can be read and not be used.
+
+    Examples
+    --------
+    >>> unusable("rate", "-1", "give a number above 0").say
+    'rate=-1 cannot be used'
+    """
+    return UnusableValue(
+        f"{name}={text} cannot be used",
+        where=(name,),
+        location="query",
+        value=text,
+        way_out=way_out,
+    )
+
+
 _SWITCH = {"1": True, "true": True, "0": False, "false": False}
 
 

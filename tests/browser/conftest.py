@@ -12,30 +12,41 @@ from tests.browser.hall import fill
 from tests.conftest import ServerProcess
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture(scope="package")
 def screen(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Screen]:
-    """The one tab of a browser that all tests of a run share."""
+    """The one tab of a browser that all tests of pages share."""
     if MISSING:
         pytest.skip(MISSING)
     with browsing(tmp_path_factory.mktemp("browser")) as opened:
         yield opened
 
 
-@pytest.fixture(scope="session")
-def demo(launch: Callable[..., ServerProcess]) -> ServerProcess:
+@pytest.fixture(scope="package")
+def demo(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
     """The demonstration, which moves while it is looked at."""
-    return launch("--demo")
+    server = launch("--demo")
+    yield server
+    _end(server)
 
 
-@pytest.fixture(scope="session")
-def hall(launch: Callable[..., ServerProcess]) -> ServerProcess:
+@pytest.fixture(scope="package")
+def hall(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
     """A server with one arm in each state a page can meet; nothing moves."""
     server = launch()
     fill(server.url)
-    return server
+    yield server
+    _end(server)
 
 
-@pytest.fixture(scope="session")
-def empty(launch: Callable[..., ServerProcess]) -> ServerProcess:
+@pytest.fixture(scope="package")
+def empty(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
     """A server where no arm is stored."""
-    return launch()
+    server = launch()
+    yield server
+    _end(server)
+
+
+def _end(server: ServerProcess) -> None:
+    """End a server with the tests of pages: all other tests would run beside it."""
+    server.process.kill()
+    server.process.wait(10)

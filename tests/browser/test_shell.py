@@ -5,7 +5,7 @@ Left out: what a page shows of an arm (the modules named after the pages).
 
 import re
 import socket
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 
 import httpx
 import pytest
@@ -60,14 +60,6 @@ def test_cautions_and_version_stand_on_each_page(
     assert "Not a safety function" in text, "one caution stays, however small the frame"
     assert "Local codes" not in text
     assert not screen.run("return document.querySelector('nav')?.checkVisibility() ?? false")
-
-
-@pytest.fixture
-def framed(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
-    server = launch("--frame-ancestors", "http://127.0.0.1:*")
-    fill(server.url)
-    yield server
-    server.terminate()
 
 
 def test_a_wrong_name_shows_the_nearest(screen: Screen, hall: ServerProcess) -> None:

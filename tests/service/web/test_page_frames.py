@@ -9,7 +9,18 @@ from service.web.page_frames import files, framed, said, words
 
 FRAMES = sorted(name for name in files() if name.endswith(".html"))
 PLACE = re.compile(r"\{\{([a-z_.]+)\}\}")
-GIVEN = {"header", "footer", "preload", "cautions", "caution", "version", "arm", "said", "like"}
+GIVEN = {
+    "head",
+    "header",
+    "footer",
+    "preload",
+    "cautions",
+    "caution",
+    "version",
+    "arm",
+    "said",
+    "like",
+}
 
 
 def test_the_words_are_sections_of_texts() -> None:

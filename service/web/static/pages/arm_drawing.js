@@ -21,7 +21,7 @@ import { bodiesOf } from "./solids.js";
  */
 
 /** Return every place a scene takes, to be fitted on the paper. @param {Scene} scene */
-export function placesOf(scene) {
+function placesOf(scene) {
   const places = [...scene.outline.line];
   for (const ghost of scene.ghosts ?? []) places.push(...ghost.line);
   for (const frame of scene.frames ?? []) places.push(column(frame.matrix, 3));

@@ -44,15 +44,15 @@ function block(tool, frame, old) {
 function write(parts, said) {
   const hasPose = said.axes.length > 0;
   setAttribute(parts.element, "data-state", said.state);
-  parts.figures.hidden = !hasPose;
-  parts.instead.hidden = hasPose;
+  setAttribute(parts.figures, "hidden", hasPose ? null : "");
+  setAttribute(parts.instead, "hidden", hasPose ? "" : null);
   parts.axes.forEach(({ value, unit }, index) => {
     setText(value, said.axes[index] ?? "");
     setText(unit, said.unit);
   });
   setAttribute(parts.figures, "data-long", said.axes.some((text) => text.length > LONG) ? "" : null);
   setText(parts.simulated, said.simulated ? WORDS.board.simulated : "");
-  parts.simulated.hidden = !said.simulated;
+  setAttribute(parts.simulated, "hidden", said.simulated ? null : "");
   setText(parts.near, said.near);
   const flag = hasPose && said.word ? `${said.word} ` : said.mark && `${said.mark} `;
   setText(parts.mark, flag);

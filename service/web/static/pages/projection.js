@@ -4,7 +4,7 @@
 // Left out: perspective, in which nothing could be measured.
 
 /** Pixels of CSS for a millimetre of paper. */
-export const PX_PER_MM = 96 / 25.4;
+const PX_PER_MM = 96 / 25.4;
 
 /** Millimetres in a unit of length of the interface. */
 export const MM_IN = { mm: 1, m: 1000, in: 25.4 };
@@ -77,7 +77,7 @@ export const holds = (outer, inner) =>
   inner[0].every((one, i) => one >= outer[0][i]) && inner[1].every((one, i) => one <= outer[1][i]);
 
 /** Return how far a box of the arm reaches on the paper: left, right, bottom, top. */
-export function shadow(looked, [low, high]) {
+function shadow(looked, [low, high]) {
   const reach = (direction) => {
     let least = 0, most = 0;
     direction.forEach((part, i) => {

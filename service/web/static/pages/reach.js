@@ -5,7 +5,7 @@
 import { choose, chosen } from "./address.js";
 import { ask } from "./ask.js";
 import { el, fill, setText } from "./elements.js";
-import { length, number } from "./numbers.js";
+import { number } from "./numbers.js";
 import { checkBody, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
 import { reachDrawing } from "./reach_drawing.js";
 import { download, fileKey, listInput } from "./reach_input.js";

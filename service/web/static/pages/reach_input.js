@@ -2,7 +2,7 @@
 // Idea: whatever it was, it becomes text in the one field, where it can be seen and mended.
 // Left out: reading the text (reach_reading.js).
 
-import { el, fill } from "./elements.js";
+import { el } from "./elements.js";
 import { WORDS } from "./words.js";
 
 const MOST_BYTES = 64 * 1024 * 1024;

@@ -6,7 +6,7 @@
  */
 
 /** Most places of one list; the service takes no more. */
-export const MOST_PLACES = 1000000;
+const MOST_PLACES = 1000000;
 const LONGEST_NAME = 200;
 const SAMPLE = 200;                       // lines looked at to find the separator
 const POSITION = ['x', 'y', 'z'];
@@ -217,7 +217,7 @@ function isNumeric(column) {
 }
 
 /** A number as written with a decimal mark, groups of three allowed; NaN where it is none. */
-export function numberOf(cell, decimal) {
+function numberOf(cell, decimal) {
   if (cell.length > 40) return NaN;
   const bare = cell.replace(SPACES, ' ').trim();
   const match = /^(.*?)(e[+-]?\d{1,3})?$/i.exec(bare);

@@ -3,7 +3,7 @@
 // Left out: what the result looks like (reach_list.js) and the report, which the service makes.
 
 import { ask, follow } from "./ask.js";
-import { el, fill, setText } from "./elements.js";
+import { el } from "./elements.js";
 import { back, gone } from "./shell.js";
 import { say, WORDS } from "./words.js";
 

@@ -11,7 +11,7 @@ const SINGULAR = 2; // Codes 1 and 2 say near and singular; the sentence on it s
 const PRIMES = ["", "′", "″"];
 
 /** Return the names of an orientation's numbers, as the trade writes them: z, y′, x″. */
-export function namesOf(form) {
+function namesOf(form) {
   const triple = TRIPLE.exec(form);
   if (triple) return [...triple[1]].map((axis, i) => axis + (triple[2] === "current" ? PRIMES[i] : ""));
   return { "quaternion-wxyz": ["w", "x", "y", "z"], "quaternion-xyzw": ["x", "y", "z", "w"], "rotation-vector": ["x", "y", "z"] }[form] ?? [];

@@ -68,7 +68,7 @@ async function compare(place, path, { was, is }) {
  * Return what differs between two documents: path in words, value before, value after.
  * @param {any} was @param {any} is @returns {string[][]}
  */
-export function differences(was, is, where = []) {
+function differences(was, is, where = []) {
   const isTree = (one) => one !== null && typeof one === "object" && !(Array.isArray(one) && one.every((part) => typeof part !== "object"));
   if (!isTree(was) || !isTree(is)) {
     const [one, other] = [was, is].map((value) => (value === undefined ? WORDS.sheet.absent : Array.isArray(value) ? value.map(cell).join(", ") : String(cell(value))));

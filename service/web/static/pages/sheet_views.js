@@ -8,7 +8,7 @@ import { setAttribute } from "./elements.js";
 import { firstAngle, scaleBar, triad, labelsOn } from "./marks.js";
 import { length, number } from "./numbers.js";
 import { pen } from "./pen.js";
-import { column, fitted, holds, MM_IN, placed, roundLength, shadow, view } from "./projection.js";
+import { column, fitted, holds, MM_IN, placed, roundLength, view } from "./projection.js";
 import { say, WORDS } from "./words.js";
 
 const MARGIN = { x: 44, y: 26, right: 52, bottom: 52 };

@@ -48,9 +48,6 @@ export function back() {
 /** Return whether the server is gone. */
 export const isGone = () => goneSince !== null;
 
-/** Return whether only the content is shown, within the frame of a panel. */
-export const isBare = () => document.documentElement.hasAttribute("data-bare");
-
 /**
  * Call a function whenever the paper changes, by choice or with the screen.
  * @param {() => void} callback

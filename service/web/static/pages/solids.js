@@ -22,7 +22,7 @@ const onPaper = ({ view }, direction) =>
  * A drum about an axis; `r` and half its length `h` in pixels, with its centre lines.
  * @returns {Body}
  */
-export function drum(put, centre, axis, r, h, kind = "thick", bore = 0.45) {
+function drum(put, centre, axis, r, h, kind = "thick", bore = 0.45) {
   const [x, y, depth] = put(centre);
   let [ax, ay, az] = onPaper(put, axis);
   if (az < 0) [ax, ay, az] = [-ax, -ay, -az];
@@ -83,7 +83,7 @@ export function block(put, centre, w, across, halves, kind = "thick") {
 }
 
 /** A direction across another: as upright as it can be. */
-export function acrossOf(direction) {
+function acrossOf(direction) {
   const up = Math.abs(direction[2]) < 0.9 ? [0, 0, 1] : [1, 0, 0];
   return unit(cross(direction, up));
 }

@@ -90,7 +90,6 @@ export const WORDS = {
     "title": "Sheet",
     "elevation": "Elevation",
     "plan": "Plan",
-    "axes_of": "{axes} of {frame}",
     "free": "Free view",
     "numbers": "Tool",
     "joints": "Joints",
