@@ -16,6 +16,7 @@ import httpx
 import pytest
 from fastapi import FastAPI
 
+from kinematics.warm_up import POSTURES, REACH, RELATIONS, to_be_compiled
 from service.app import create_app
 from service.settings import Settings
 
@@ -83,9 +84,21 @@ class ServerProcess:
         return time.monotonic() - started
 
 
+def _compile_once() -> None:
+    """Leave the kernels where all servers find them: those that start together would each do it."""
+    parts = to_be_compiled([*POSTURES, *RELATIONS, *REACH])
+    beside = [
+        subprocess.Popen([sys.executable, "-m", "kinematics.warm_up", part], cwd=ROOT)
+        for part in parts
+    ]
+    for process in beside:
+        assert process.wait() == 0
+
+
 @pytest.fixture(scope="session")
 def launch(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Callable[..., ServerProcess]]:
     """Start servers with further options; all that still run are ended afterwards."""
+    _compile_once()
     started: list[subprocess.Popen[str]] = []
 
     def start(*options: str, database: str = ":memory:") -> ServerProcess:

@@ -61,9 +61,9 @@ class AskedVolume:
         self._first_step = max(self.step, self._step(PLACES_DRAWN))
         self._thin = bool(self._sides.min() < 2.0 * self.step)
         shape = np.ceil(self._sides / self.step) + 2.0
-        finer = self.step < self._first_step and not self._thin
+        self._is_finer = self.step < self._first_step and not self._thin
         slabs = np.ceil(shape.prod() / _SLAB)
-        self.pieces = int(min(slabs, shape[0])) if finer else 1
+        self.pieces = int(min(slabs, shape[0])) if self._is_finer else 1
         self.places = int(shape.prod())
 
     def _step(self, count: int) -> float:
@@ -94,7 +94,7 @@ class AskedVolume:
         if self._thin:
             return np.zeros((0, 0, 0), dtype=bool)
         first = self._first
-        if self.pieces == 1:
+        if not self._is_finer:
             return first.reached
         planes, *others = (
             np.ceil(first.step / self.step * np.array(first.shape)).astype(int).tolist()

@@ -138,8 +138,8 @@ class AskedView:
         self.step = fineness.step(self._size)
         self._first_step = max(self.step, self._size / DEFAULT_CELLS)
         across, along = (np.ceil((self._most - self._least) / self.step) + 2.0).tolist()
-        finer = self.step < self._first_step
-        self.pieces = int(np.ceil(across / _STRIPE)) if finer else 1
+        self._is_finer = self.step < self._first_step
+        self.pieces = int(np.ceil(across / _STRIPE)) if self._is_finer else 1
         self.places = int(across * along)
 
     @cached_property
@@ -163,7 +163,7 @@ class AskedView:
     def _shape(self) -> tuple[int, ...]:
         """Places of the whole grid along both coordinates, with the same ends as the first one."""
         first = self._first
-        if self.pieces == 1:
+        if not self._is_finer:
             return first.shape
         ends = first.step / self.step * (np.array(first.shape) - 1)
         return tuple((np.ceil(ends).astype(int) + 1).tolist())
@@ -175,7 +175,7 @@ class AskedView:
     def piece(self, number: int) -> Chords:
         """Return the chords of a stripe; they do not depend on any other."""
         seeker, shown = self._seeker, self._samples.places
-        if self.pieces == 1:
+        if not self._is_finer:
             return chords_of(self._first, seeker, shown)
         columns, rows = self._shape
         begin, end = (part * (columns - 1) // self.pieces for part in (number, number + 1))

@@ -35,6 +35,7 @@ Begin = Callable[[ProcessPoolExecutor], Awaitable[Outline | Problem]]
 
 
 _PART_BYTES = 4 * 2**20
+"""Of a body on its way to the process: copied in some milliseconds, while others wait."""
 _ROWS_AT_ONCE = 32 * 1024
 """Of targets that come back in one step, some two megabytes."""
 

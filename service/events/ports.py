@@ -20,8 +20,8 @@ class Event:
     ``seen_at`` is when it was last seen to be so, as far as that was written; ``ended_at`` is None
     while it is open, and for ever where the watching stopped before the event did (``unknown``).
     ``document`` holds peak, thresholds and what else belongs to its kind; ``simulated`` says that
-    no arm stood there. ``change`` counts the
-    writings of all events: this one's last. Times are UTC, in whole milliseconds.
+    no arm stood there. ``change`` counts the writings of all events: this one's last. Times are
+    UTC, in whole milliseconds.
     """
 
     id: str

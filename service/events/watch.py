@@ -5,7 +5,7 @@ writes nothing itself. Left out: when an event begins and ends (detector.py), an
 """
 
 from collections.abc import Callable
-from datetime import UTC, datetime
+from datetime import datetime
 from functools import partial
 from typing import Any
 
@@ -27,6 +27,7 @@ from service.operations.single import question_about
 from service.sorted_ids import new_id
 from service.wire.arms import ReadArm
 from service.wire.single import SingleQuestion
+from service.wire.times import utc_at
 
 _EVERY_S = 0.019
 """A little less than the 0.02 s meant, as clocks are not that even."""
@@ -119,7 +120,7 @@ class _WatchedArm:
     def _changed(self, happening: Happening) -> None:
         if happening.kind not in self._begun:
             began_ms = wall_at(self._clock, happening.began_s)
-            self._begun[happening.kind] = (new_id(_utc(began_ms)), began_ms)
+            self._begun[happening.kind] = (new_id(utc_at(began_ms)), began_ms)
         state = OPEN if happening.ended_s is None else ENDED
         self._put(self._event(happening, state))
         if state == ENDED:
@@ -134,7 +135,7 @@ class _WatchedArm:
             arm=self._name,
             kind=happening.kind,
             state=state,
-            began_at=_utc(began_ms),
+            began_at=utc_at(began_ms),
             seen_at=later(happening.seen_s),
             ended_at=None if happening.ended_s is None else later(happening.ended_s),
             document=self._told(happening),
@@ -171,8 +172,4 @@ def _thresholds(stored: StoredArm[ReadArm], question: Question | None) -> dict[K
 
 
 def _later(began_ms: float, began_s: float, at_s: float) -> datetime:
-    return _utc(began_ms + (at_s - began_s) * 1000.0)
-
-
-def _utc(unix_ms: float) -> datetime:
-    return datetime.fromtimestamp(unix_ms / 1000.0, UTC)
+    return utc_at(began_ms + (at_s - began_s) * 1000.0)

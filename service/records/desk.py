@@ -10,6 +10,7 @@ from datetime import datetime, timedelta
 from math import isfinite
 from typing import Any
 
+from kinematics.findings import OUTSIDE_TRAVEL
 from service.errors import (
     DigestDiffers,
     NoLivePose,
@@ -39,7 +40,6 @@ _AHEAD = timedelta(days=1)
 """How far a sender's clock may be ahead of ours; more is a wrong date, and would be kept for years.
 What is long past may well be handed in late."""
 
-_OUTSIDE_TRAVEL = 4
 
 Live = Measured | NoLivePose
 
@@ -153,7 +153,7 @@ class Records:
         findings = item["findings"]
         codes = measured.codes | {finding["code"] for finding in findings}
         quality, reason = measured.quality, measured.reason
-        if quality == "good" and _OUTSIDE_TRAVEL in codes:
+        if quality == "good" and OUTSIDE_TRAVEL in codes:
             quality, reason = "uncertain", "outside-travel"
         computed = self._now()
         document = {

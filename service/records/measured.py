@@ -4,7 +4,7 @@ Left out: the pose they make.
 """
 
 from dataclasses import dataclass
-from datetime import UTC, datetime
+from datetime import datetime
 from typing import Literal
 
 from service.errors import NoLivePose
@@ -13,6 +13,7 @@ from service.live.samples import STALE
 from service.live.seen import seen_now
 from service.problems import SIMULATED_CODE, STALE_CODE
 from service.wire.records import Quality
+from service.wire.times import utc_at
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,11 +56,7 @@ def measured_live(arms: LiveArms, name: str) -> Measured:
         source="live",
         quality=seen.quality,
         reason=seen.reason or None,
-        sampled_at=_utc(seen.happened_ms),
-        received_at=_utc(seen.sample.received_ms),
+        sampled_at=utc_at(seen.happened_ms),
+        received_at=utc_at(seen.sample.received_ms),
         codes=frozenset(code for code, applies in applying.items() if applies),
     )
-
-
-def _utc(unix_ms: float) -> datetime:
-    return datetime.fromtimestamp(unix_ms / 1000.0, UTC)

@@ -14,11 +14,11 @@ from typing import TextIO
 import httpx
 
 from kinematics.errors import KinematicsError
-from kinematics.wandering import Wandering
+from kinematics.wandering import SHARE_OF_TOP_SPEED, Wandering
 from service.convert import joint_row_out
 from service.errors import ServiceError, UnusableValue
 from service.live.samples import SUPERSEDED
-from service.simulation.motion import SOURCE, wandering_of
+from service.simulation.motion import SOURCE, USUAL_SEED, wandering_of
 from service.wire.arms import ReadArm, read_arm
 
 MOST_HZ = 10_000.0
@@ -50,8 +50,8 @@ class Simulation:
     url: str
     arms: tuple[str, ...] = ()
     rate_hz: float = 20.0
-    seed: int = 1
-    speed: float = 0.5
+    seed: int = USUAL_SEED
+    speed: float = SHARE_OF_TOP_SPEED
     duration_s: float = math.inf
 
 

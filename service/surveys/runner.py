@@ -42,14 +42,14 @@ from service.wire.arms import ReadArm
 _LOG = logging.getLogger(__name__)
 
 CHUNK_S = 0.2
-"""Of work in a chunk: its way to the process and into the store takes a hundredth of that."""
+"""Of work in a chunk: its way to the process and into the store takes a fiftieth of that."""
 
 MOST_IN_CHUNK = 64
 _AHEAD = 2
 """Chunks in hand for each process, so that none waits for the store."""
 
 _ENDS_WITHIN_S = 0.7
-"""A chunk of a cancelled survey, else its process is ended."""
+"""A chunk of a cancelled survey, else its process is ended: a cancel takes a second at most."""
 
 _LOOK_S = 0.1
 """How often a cancelled survey or a stop is looked for."""

@@ -3,7 +3,6 @@
 Left out: what becomes of them (service/live), and sockets.
 """
 
-import re
 from collections.abc import Mapping
 from typing import Annotated, Any
 
@@ -21,7 +20,7 @@ from service.web.document import parameter
 from service.wire.controller import joints_asked, wanted_scale, wanted_tag, wanted_units
 from service.wire.live_query import moment_in, unix_ms
 from service.wire.models import Strict, UnitsName
-from service.wire.query import number, unusable, whole_number
+from service.wire.query import NOT_FINITE, number, unusable, whole_number
 from service.wire.question_parameters import QUESTION_PARAMETERS, one_of
 from service.wire.times import time_in
 
@@ -34,8 +33,8 @@ _LARGEST_WHOLE = 10**15
 _FIRST_MS, _LAST_MS = -62_135_596_800_000.0, 253_402_300_799_000.0
 """The years 1 to 9999: times of clocks that were never set are in them, RFC 3339 has no others."""
 
-_FAILED = re.compile(r"[+-]?(nan|inf|infinity|1\.#\w+)", re.ASCII | re.IGNORECASE)
 _LONGEST_PERIOD_MS = 3_600_000.0
+"""An hour: who sends less often is asked for no pose that is live."""
 
 Text = Annotated[str, StringConstraints(min_length=1, max_length=48, pattern=r"^[!-~]+$")]
 Whole = Annotated[int, Field(ge=-_LARGEST_WHOLE, le=_LARGEST_WHOLE)]
@@ -234,13 +233,13 @@ def _without_failed(said: Mapping[str, str]) -> tuple[dict[str, str], list[int]]
     found, failed = dict(said), []
     if "q" in said:
         parts = said["q"].split(",")
-        failed = [place for place, part in enumerate(parts) if _FAILED.fullmatch(part)]
+        failed = [place for place, part in enumerate(parts) if NOT_FINITE.fullmatch(part)]
         for place in failed:
             parts[place] = "0"
         found["q"] = ",".join(parts)
     for place in range(MOST_ROWS):
         name = f"q{place + 1}"
-        if name in said and _FAILED.fullmatch(said[name]):
+        if name in said and NOT_FINITE.fullmatch(said[name]):
             found[name] = "0"
             failed.append(place)
     return found, failed

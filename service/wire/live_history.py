@@ -25,6 +25,7 @@ from service.wire.question_parameters import one_of
 from service.wire.single import SingleQuestion
 
 MOST_SAMPLES = 30_000
+"""All of ten minutes: fifty a second are kept."""
 _USUAL_SAMPLES = 1000
 _POSE = frozenset({"tool", "frame", "form", "units", "tx", "ty", "tz", "tr1", "tr2", "tr3"})
 PARAMETERS_OF_HISTORY = _POSE | {"from", "to", "every_ms", "limit", "format"}

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from datetime import UTC, datetime
 from typing import Any, NamedTuple
 
+from kinematics.tolerances import MOST_ROWS
 from service.errors import UnusableValue
 from service.web.document import parameter
 from service.wire.controller import PARAMETERS, Format, single_question, wanted_format
@@ -19,7 +20,7 @@ LONGEST_WAIT_S = 30.0
 """Proxies and controllers give up on an answer that takes much longer."""
 
 MOST_RATE_HZ = 200.0
-_NOT_OF_A_POSE = frozenset({"q", *(f"q{joint}" for joint in range(1, 33)), "revision"})
+_NOT_OF_A_POSE = frozenset({"q", *(f"q{joint}" for joint in range(1, MOST_ROWS + 1)), "revision"})
 _OF_THE_MOMENT = frozenset({"at", "wait", "after", "rate", "limit", "seconds"})
 _POSE = PARAMETERS - _NOT_OF_A_POSE
 PARAMETERS_OF_LIVE = _POSE | {"at", "wait", "after", "outline", "nearest"}

@@ -17,7 +17,8 @@ from service.errors import ServiceError, UnknownField, Unparseable, UnusableValu
 # As controllers print them: 1.5E+01, +3.0, 007, .5, 5. - and "nan", so that it is refused by name.
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?", re.ASCII)
 _NUMBERS = re.compile(rf"{_NUMBER.pattern}(,{_NUMBER.pattern})*", re.ASCII)
-_NOT_FINITE = re.compile(r"[+-]?(nan|inf|infinity|1\.#\w+)", re.ASCII | re.IGNORECASE)
+NOT_FINITE = re.compile(r"[+-]?(nan|inf|infinity|1\.#\w+)", re.ASCII | re.IGNORECASE)
+"""As programs print what is no number."""
 _DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+", re.ASCII)
 _WHOLE = re.compile(r"[+-]?\d+", re.ASCII)
 # Beyond 64 bits no field of an answer could give it back.
@@ -102,7 +103,7 @@ def number(text: str, name: str) -> float:
         value = float(mended)
         if math.isfinite(value):
             return value
-    elif not _NOT_FINITE.fullmatch(mended):
+    elif not NOT_FINITE.fullmatch(mended):
         raise _no_number(text, name)
     raise NotFiniteParameter(
         f'"{name}" must be a finite number',

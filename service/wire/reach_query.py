@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from kinematics.reach.targets import CONE, FREEDOMS, NONE, ORIENTATION
+from kinematics.tolerances import MOST_ROWS
 from service.errors import MissingField, UnusableValue
 from service.web.document import parameter
 from service.wire import controller
@@ -26,7 +27,7 @@ from service.wire.single import TOOL_PARAMETERS, JointsAsked, SingleQuestion
 POSITION = ("x", "y", "z")
 ANGLES = ("r1", "r2", "r3")
 _NUMBERS = (*POSITION, *ANGLES)
-_OF_POSES = frozenset({"q", *(f"q{joint}" for joint in range(1, 33))})
+_OF_POSES = frozenset({"q", *(f"q{joint}" for joint in range(1, MOST_ROWS + 1))})
 _OF_TARGETS = frozenset({*_NUMBERS, "freedom", "cone", "near", "approach", "along"})
 PARAMETERS = (controller.PARAMETERS - _OF_POSES) | _OF_TARGETS
 TABLE_PARAMETERS = frozenset(

@@ -41,3 +41,14 @@ def time_in(text: str, where: tuple[str | int, ...], location: Location = "body"
         value=text,
         way_out="write it like 2026-12-01T06:00:00.000Z",
     )
+
+
+def utc_at(unix_ms: float) -> datetime:
+    """Return the UTC time of Unix milliseconds.
+
+    Examples
+    --------
+    >>> utc_at(1796104800250.0).isoformat()
+    '2026-12-01T06:00:00.250000+00:00'
+    """
+    return datetime.fromtimestamp(unix_ms / 1000.0, UTC)

@@ -12,41 +12,37 @@ from tests.browser.hall import fill
 from tests.conftest import ServerProcess
 
 
-@pytest.fixture(scope="package")
-def screen(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Screen]:
-    """The one tab of a browser that all tests of pages share."""
+@pytest.fixture(scope="session")
+def tab(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Screen]:
+    """The one tab of a browser that all tests of a run share."""
     if MISSING:
         pytest.skip(MISSING)
     with browsing(tmp_path_factory.mktemp("browser")) as opened:
         yield opened
 
 
-@pytest.fixture(scope="package")
-def demo(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
+@pytest.fixture
+def screen(tab: Screen) -> Iterator[Screen]:
+    """The tab, left empty afterwards: a page that stays open would go on asking."""
+    yield tab
+    tab.forget()
+
+
+@pytest.fixture(scope="session")
+def demo(launch: Callable[..., ServerProcess]) -> ServerProcess:
     """The demonstration, which moves while it is looked at."""
-    server = launch("--demo")
-    yield server
-    _end(server)
+    return launch("--demo")
 
 
-@pytest.fixture(scope="package")
-def hall(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
+@pytest.fixture(scope="session")
+def hall(launch: Callable[..., ServerProcess]) -> ServerProcess:
     """A server with one arm in each state a page can meet; nothing moves."""
     server = launch()
     fill(server.url)
-    yield server
-    _end(server)
+    return server
 
 
-@pytest.fixture(scope="package")
-def empty(launch: Callable[..., ServerProcess]) -> Iterator[ServerProcess]:
+@pytest.fixture(scope="session")
+def empty(launch: Callable[..., ServerProcess]) -> ServerProcess:
     """A server where no arm is stored."""
-    server = launch()
-    yield server
-    _end(server)
-
-
-def _end(server: ServerProcess) -> None:
-    """End a server with the tests of pages: all other tests would run beside it."""
-    server.process.kill()
-    server.process.wait(10)
+    return launch()

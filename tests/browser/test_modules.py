@@ -20,18 +20,18 @@ import(file).then((all) => { %s })
 
 
 @pytest.fixture(scope="module")
-def ask(screen: Screen, demo: ServerProcess) -> Iterator[Callable[..., Any]]:
+def ask(tab: Screen, demo: ServerProcess) -> Iterator[Callable[..., Any]]:
     """Run the body of a function with all that a module exports, and return what it returns."""
     # A page of the same host that asks for nothing of itself.
-    screen.open(f"{demo.url}/livez")
+    tab.open(f"{demo.url}/livez")
 
     def run(file: str, body: str, *values: Any) -> Any:
-        told = screen.driver.execute_async_script(ASK % body, f"/pages/{file}", values)
+        told = tab.driver.execute_async_script(ASK % body, f"/pages/{file}", values)
         assert "error" not in told, told
         return told["value"]
 
     yield run
-    screen.forget()
+    tab.forget()
 
 
 @pytest.mark.parametrize(

@@ -34,7 +34,7 @@ KNOWN = {
 
 
 @pytest.mark.parametrize("case", KNOWN)
-@pytest.mark.parametrize("count", [1000, 4000])
+@pytest.mark.parametrize("count", [1000, 4000, 6000, 30_000])  # two usual ones, one slab, several
 def test_volumes_are_within_their_bounds(case: str, count: int) -> None:
     arm, expected = KNOWN[case]
     found = drawn(arm, count)
