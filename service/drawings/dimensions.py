@@ -197,9 +197,13 @@ def in_lanes(
     >>> [lane.at for lane in in_lanes(both, 10.0, (-30.0, 40.0), (), upright=False)]
     [17.0, 17.0]
     """
-    side = _Side(edge, span, taken, upright)
     shortest_first = sorted(dimensions, key=lambda one: abs(one.end - one.begin))
-    return min(map(side.in_order, permutations(shortest_first)), key=side.awkward)
+    while True:
+        side = _Side(edge, span, taken, upright)
+        lanes = min(map(side.in_order, permutations(shortest_first)), key=side.awkward)
+        if not any(map(side.meets, lanes)):
+            return lanes
+        edge += LANE  # what is taken ends somewhere: far enough out there is room
 
 
 def _middles(dimension: Dimension) -> list[float]:

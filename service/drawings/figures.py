@@ -150,17 +150,17 @@ class Figure:
 
 
 def _letter(paper: Paper, tip: tuple[float, float], way: tuple[float, float], letter: str) -> None:
-    """Write the letter of a direction beside the head of its arrow, off boundaries if it can be."""
+    """Write the letter of a direction beside the head of its arrow, off words and boundaries."""
     x, y = tip
     beside = [(x + 0.6, y - 0.8), (x + 0.6, y + 2.4), (x - 2.4, y - 0.8), (x + 3.0, y - 0.8)]
     if not way[0]:
         beside = [(x + 0.9, y + 1.0), (x - 2.2, y + 1.0), (x + 0.9, y - 1.2), (x + 0.9, y + 3.5)]
-    for at in beside:
-        if paper.is_clear(words_box(at, letter, SMALL, "start")):
-            break
-    else:
-        at = beside[0]
-    paper.write(at, letter, SMALL)
+
+    def awkward(at: Sequence[float]) -> tuple[bool, bool]:
+        box = words_box(at, letter, SMALL, "start")
+        return not paper.is_free(box), not paper.is_clear(box)
+
+    paper.write(min(beside, key=awkward), letter, SMALL)
 
 
 def _cutting_plane(paper: Paper, left: float, right: float, y: float) -> None:

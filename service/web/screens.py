@@ -28,7 +28,7 @@ _BARE = "bare"
 _PAGES_KEPT = 256
 
 
-def page_policy(frame_ancestors: str, *, others: str = "default-src 'none'") -> dict[str, str]:
+def page_policy(frame_ancestors: str) -> dict[str, str]:
     """Return the header that says what a page may do, and in whose frames it may be shown.
 
     Parameters
@@ -41,7 +41,7 @@ def page_policy(frame_ancestors: str, *, others: str = "default-src 'none'") -> 
     "frame-ancestors 'none'"
     """
     rules = (
-        f"{others}; script-src 'self'; style-src 'self'; img-src 'self' data: blob:; "
+        "default-src 'none'; script-src 'self'; style-src 'self'; img-src 'self' data: blob:; "
         "connect-src 'self'; base-uri 'none'; form-action 'self'; "
         f"frame-ancestors {frame_ancestors or _NOBODY}"
     )

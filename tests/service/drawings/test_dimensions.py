@@ -36,6 +36,14 @@ def test_room_that_is_taken_is_left() -> None:
     assert not other[0].box.meets(taken)
 
 
+def test_where_all_near_room_is_taken_lanes_lie_further_out() -> None:
+    taken = [Box(-25.0, -200.0, 0.0, 200.0)]
+    lanes = in_lanes(lengths_told(2.0, 9.0, -3.0), 3.0, (-3.0, 9.0), taken, upright=True)
+    assert len(lanes) == 3
+    assert not any(lane.box.meets(taken[0]) for lane in lanes)
+    assert min(lane.at for lane in lanes) < 25.0 + LANE + FIRST_LANE
+
+
 def test_upright_lanes_lie_to_the_left() -> None:
     (lane,) = in_lanes(lengths_told(40.0), 10.0, (0.0, 40.0), (), upright=True)
     box = lane.box

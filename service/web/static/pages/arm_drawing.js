@@ -14,7 +14,6 @@ import { bodiesOf } from "./solids.js";
  * @property {{name: string, matrix: number[][]}[]} [frames] in the frame of the outline
  * @property {number[][]} [path] places where the tool was
  * @property {object} [singularity] as told beside the pose
- * @property {object[]} [ghosts] outlines drawn thinly: other solutions
  * @property {"thick" | "heavyDashed"} [kind] of the arm's edges
  * @property {string} [struck] a word: the arm is drawn as a dashed line alone
  * @property {boolean} [balloons] number the joints
@@ -23,7 +22,6 @@ import { bodiesOf } from "./solids.js";
 /** Return every place a scene takes, to be fitted on the paper. @param {Scene} scene */
 function placesOf(scene) {
   const places = [...scene.outline.line];
-  for (const ghost of scene.ghosts ?? []) places.push(...ghost.line);
   for (const frame of scene.frames ?? []) places.push(column(frame.matrix, 3));
   return places.concat(scene.path ?? []);
 }
@@ -53,7 +51,6 @@ export function drawArm(pen, put, scene, how = {}) {
   const size = how.size ?? thicknessOf(put, outline);
   const labels = labelsOn(pen);
   ground(pen, put, outline.base, size);
-  for (const ghost of scene.ghosts ?? []) pen.line(ghost.line.map(put), "dashed");
   if (scene.path?.length > 1) pen.line(scene.path.map(put), "path");
   labels.keepLine(outline.line.map(put), size);
   for (const frame of scene.frames ?? []) {

@@ -7,7 +7,7 @@ import { ask, follow } from "./ask.js";
 import { saidOf } from "./board_words.js";
 import { card } from "./card.js";
 import { el, fill, setText } from "./elements.js";
-import { clock } from "./numbers.js";
+import { clock, UNITS } from "./numbers.js";
 import { back, begin, gone, ready } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
@@ -169,7 +169,7 @@ function fitChoices() {
     const box = el("select", { onchange: () => chose(name, box.value) }, known.map(([value, text]) => el("option", { value, selected: value === choice[name] }, text)));
     return el("label", {}, label, box);
   };
-  const units = ["mm-deg", "m-rad", "in-deg"].map((name) => [name, name]);
+  const units = UNITS.map((name) => [name, name]);
   const columns = ["1", "2", "3", "4", "5", "6", "8", "10"].map((n) => [n, n]);
   fill(
     document.getElementById("choices"),

@@ -34,7 +34,7 @@ export function saidOf(told, sinceMs, gone) {
   said.unit = unitsOf(told.units).length;
   const unheard = sinceMs > 3 * Math.min(told.input?.period_ms ?? LONGEST_PERIOD_MS, LONGEST_PERIOD_MS) + GRACE_MS && isPrompt(told);
   if (gone || told.quality === "bad" || unheard) {
-    const why = gone || (told.quality === "bad" ? why_bad(told) : WORDS.board.unheard);
+    const why = gone || (told.quality === "bad" ? whyBad(told) : WORDS.board.unheard);
     return Object.assign(said, { state: "stale", word: WORDS.board.stale, sentence: why, mark: "✕" });
   }
   said.axes = AXES.map((_, index) => length(pose.position[index], told.units));
@@ -50,7 +50,7 @@ const isPrompt = (told) => (told.input?.period_ms ?? 0) <= LONGEST_PERIOD_MS;
 
 const nothing = () => ({ word: WORDS.board.never });
 
-const why_bad = (told) => (told.reason === "stale" ? WORDS.board.silent : told.say);
+const whyBad = (told) => (told.reason === "stale" ? WORDS.board.silent : told.say);
 
 function refused(told, gone) {
   if (told.reason === "stale" && told.problem?.code === "no-live-pose") return nothing();

@@ -3,7 +3,7 @@
 // that points at the viewer by a dot in a circle, away by a cross; labels look for a free place.
 // Left out: bodies (solids.js).
 
-import { column, dot, moved, roundLength } from "./projection.js";
+import { column, cross, dot, moved, roundLength, unit } from "./projection.js";
 
 const LINE_OF = { x: "long", y: "dashDot", z: "medium" };
 
@@ -76,8 +76,7 @@ function turnArrow(pen, put, place, axis, length, kind) {
   const { view, px } = put;
   const helper = Math.abs(axis[2]) < 0.8 ? [0, 0, 1] : [1, 0, 0];
   const u = unitAcross(axis, helper);
-  const v = [axis[1] * u[2] - axis[2] * u[1], axis[2] * u[0] - axis[0] * u[2],
-    axis[0] * u[1] - axis[1] * u[0]];
+  const v = cross(axis, u);
   const r = length / px, points = [];
   for (let step = 0; step <= 40; step++) {
     const angle = (-150 + step * 7.5) * (Math.PI / 180);
@@ -92,12 +91,7 @@ function turnArrow(pen, put, place, axis, length, kind) {
   }
 }
 
-function unitAcross(axis, helper) {
-  const along = dot(axis, helper);
-  const out = helper.map((one, i) => one - along * axis[i]);
-  const size = Math.hypot(...out);
-  return out.map((one) => one / size);
-}
+const unitAcross = (axis, helper) => unit(moved(helper, axis, -dot(axis, helper)));
 
 /** Draw the ground under a foot: a line with hatching below, where it is seen from the side. */
 export function ground(pen, put, base, size) {

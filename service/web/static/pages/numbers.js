@@ -18,6 +18,9 @@ export function number(value, decimals) {
   return value < 0 && Number(text) !== 0 ? MINUS + text : text;
 }
 
+/** The choices of units that all pages give. */
+export const UNITS = ["mm-deg", "m-rad", "in-deg"];
+
 /**
  * Return the unit of lengths and the unit of angles that "mm-deg" names.
  * @param {string} units

@@ -6,6 +6,7 @@ import { choose, chosen } from "./address.js";
 import { ask } from "./ask.js";
 import { el, fill, setText } from "./elements.js";
 import { number } from "./numbers.js";
+import { column } from "./projection.js";
 import { checkBody, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
 import { reachDrawing } from "./reach_drawing.js";
 import { download, fileKey, listInput } from "./reach_input.js";
@@ -20,6 +21,7 @@ import { say, WORDS } from "./words.js";
 
 const AT_ONCE = 500;        // Longer lists wait for a key.
 const MOST_AT_ONCE = 10000; // What one question may hold.
+const MOST_DRAWN = 5000;    // More places would cover the paper, and each other.
 const PAUSE_MS = 350;       // After the last key, so that half a number is not asked.
 const AGAIN_MS = 3000;
 const words = WORDS.reach;
@@ -58,13 +60,15 @@ function fit(cellFrames) {
   const parts = { field: place("list"), zone: place("asked"), kept: `armspan-reach-${page.name}` };
   page.input = listInput(parts, asked, (text) => fill(place("reading"), el("p", { class: "refused" }, text)));
   keys();
-  for (const [event, isWhole] of [["beforeprint", true], ["afterprint", false]]) addEventListener(event, () => page.table.whole(isWhole));
+  for (const [event, isWhole] of [["beforeprint", true], ["afterprint", false]]) addEventListener(event, () =>
+    page.table.whole(isWhole));
 }
 
 function about() {
   const { name, revision, arm } = page.arm;
   const link = el("a", { href: `/arms/${encodeURIComponent(name)}` }, words.sheet);
-  fill(place("about"), arm.title ?? "", arm.title ? " · " : "", say(words.revision, { revision, status: arm.status ?? "" }), " · ", link);
+  fill(place("about"), arm.title ?? "", arm.title ? " · " : "",
+    say(words.revision, { revision, status: arm.status ?? "" }), " · ", link);
 }
 
 function keys() {
@@ -110,11 +114,14 @@ function told(more) {
   if (places.length || faults.length) {
     const columns = how.columns.filter(Boolean).join(" ");
     lines.push(el("p", {}, say(words.read, {
-      count: counted(places.length), columns, separator: words.separators[how.separator], decimal: words.decimals[how.decimal],
+      count: counted(places.length), columns, separator: words.separators[how.separator],
+      decimal: words.decimals[how.decimal],
     }), how.left.length ? say(words.left_out, { columns: how.left.join(", ") }) : ""));
   } else lines.push(el("p", { class: "quiet" }, words.empty));
-  if (how.doubt && how.decimal === "comma") lines.push(el("p", { class: "refused" }, say(words.doubt, { cell: how.doubt })));
-  if (faults.length) lines.push(el("p", { class: "refused" }, say(words.unread, { count: counted(faults.length) }), " ", faultWords(faults[0])));
+  if (how.doubt && how.decimal === "comma") lines.push(
+    el("p", { class: "refused" }, say(words.doubt, { cell: how.doubt })));
+  if (faults.length) lines.push(el("p", { class: "refused" },
+    say(words.unread, { count: counted(faults.length) }), " ", faultWords(faults[0])));
   if (more) lines.push(el("p", {}, more));
   fill(place("reading"), lines);
 }
@@ -151,14 +158,16 @@ async function check() {
   redraw();
 }
 
-const refusal = (problem) => [problem.detail, ...problem.errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; ");
+const refusal = (problem) =>
+  [problem.detail, ...problem.errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; ");
 
 function answered({ results: found, method }) {
   page.method = method?.say ?? "";
   const rows = page.rows.filter((row) => row.place);
   found.forEach((result, i) => {
     rows[i].result = result;
-    if (result.verdict === null || result.verdict === undefined) rows[i].refused = result.reason?.say ?? result.say ?? refusal({ detail: "", errors: [], ...result });
+    if (result.verdict === null || result.verdict === undefined) rows[i].refused =
+      result.reason?.say ?? result.say ?? refusal({ detail: "", errors: [], ...result });
   });
   redraw();
 }
@@ -190,7 +199,8 @@ async function chosenPlace(at) {
 
 function look(row, waits) {
   const name = row.place.name ?? say(words.list.line, { line: row.place.line });
-  page.target({ arm: page.arm, row, name, question: page.question(), method: row.method ?? page.method, waits: waits && !row.isWhole });
+  const method = row.method ?? page.method;
+  page.target({ arm: page.arm, row, name, question: page.question(), method, waits: waits && !row.isWhole });
 }
 
 function stepped(solution) {
@@ -218,12 +228,11 @@ async function drawNow() {
 
 function pictureOf({ row, outline, before, put, question, approach }) {
   const at = (one) => ({ at: put(one.place.position), verdict: verdictOf(one) });
-  const near = row?.result?.reason?.nearest;
-  const toolAt = (one) => [0, 1, 2].map((i) => one.tool[i][3]);
-  const reason = row?.result?.reason;
+  const reason = row?.result?.reason, near = reason?.nearest;
+  const toolAt = (one) => column(one.tool, 3);
   return {
     envelope: page.envelope ?? null, outline, before, units: question.units, toolName: question.tool,
-    places: put ? page.rows.filter((one) => one.place && one !== row).slice(0, 5000).map(at) : [],
+    places: put ? page.rows.filter((one) => one.place && one !== row).slice(0, MOST_DRAWN).map(at) : [],
     chosen: put && row?.place ? { ...at(row), name: row.place.name ?? String(page.at + 1) } : null,
     way: outline && before ? { from: toolAt(before), to: toolAt(outline), isBroken: !approach.ok } : null,
     nearest: put && near ? put(near.position) : null,
@@ -235,9 +244,13 @@ function draw(picture) {
   page.envelope = picture.envelope;
   page.draw(picture);
   const { frame, tool, units } = page.question(), { name, revision, digest } = page.arm;
-  const lines = { arm: name, revision: `${revision} (${digest})`, tool, frame, units, scale: place("drawing").dataset.scale ?? "" };
-  fill(place("block"), Object.entries(lines).map(([key, value]) => el("tr", {}, el("th", { scope: "row" }, words.block_lines[key]), el("td", {}, value))));
-  const verdict = picture.chosen ? say(words.drawn, { name: picture.chosen.name, verdict: words.verdicts[picture.chosen.verdict] ?? "" }) : words.drawn_none;
+  const lines = {
+    arm: name, revision: `${revision} (${digest})`, tool, frame, units, scale: place("drawing").dataset.scale ?? "" };
+  fill(place("block"), Object.entries(lines).map(([key, value]) =>
+    el("tr", {}, el("th", { scope: "row" }, words.block_lines[key]), el("td", {}, value))));
+  const verdict = picture.chosen
+    ? say(words.drawn, { name: picture.chosen.name, verdict: words.verdicts[picture.chosen.verdict] ?? "" })
+    : words.drawn_none;
   place("drawing").setAttribute("aria-label", verdict);
   setText(place("legend"), picture.envelope ? words.legend : words.envelope_waits);
   ready();
@@ -249,13 +262,16 @@ async function presentPlace() {
   const asked = new URLSearchParams({ frame, units, form, ...(tool ? { tool } : {}) });
   const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}/live?${asked}`);
   const pose = answer.data?.poses?.[0];
-  if (!answer.ok || !pose?.position) return fill(place("reading"), el("p", { class: "refused" }, answer.problem?.detail ?? words.input.no_live));
+  if (!answer.ok || !pose?.position) return fill(place("reading"),
+    el("p", { class: "refused" }, answer.problem?.detail ?? words.input.no_live));
   const field = place("list"), decimal = page.read.how.decimal === "comma" ? "," : ".";
   const sign = { tab: "\t", semicolon: ";", blank: " " }[page.read.how.separator] ?? ",";
   const columns = page.read.how.columns?.length ? page.read.how.columns : null;
-  const values = [...pose.position, ...pose.orientation.values.flat()].map((value) => String(Number(value.toFixed(4))).replace(".", decimal));
+  const values = [...pose.position, ...pose.orientation.values.flat()].map((value) =>
+    String(Number(value.toFixed(4))).replace(".", decimal));
   const line = columns && !columns.includes("name") ? values : [`now-${page.rows.length + 1}`, ...values];
-  page.input(`${field.value}${field.value && !field.value.endsWith("\n") ? "\n" : ""}${line.join(columns ? sign : ", ")}\n`);
+  page.input(
+    `${field.value}${field.value && !field.value.endsWith("\n") ? "\n" : ""}${line.join(columns ? sign : ", ")}\n`);
 }
 
 async function results() {

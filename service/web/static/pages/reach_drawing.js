@@ -5,8 +5,9 @@
 
 import { drawArm } from "./arm_drawing.js";
 import { scaleBar } from "./marks.js";
+import { unitsOf } from "./numbers.js";
 import { pen } from "./pen.js";
-import { cross, dot, MM_IN, moved, placed, scaleWithRoom, unit } from "./projection.js";
+import { column, cross, dot, MM_IN, moved, placed, scaleWithRoom, unit } from "./projection.js";
 import { SIGNS } from "./reach_list.js";
 import { onTheme } from "./shell.js";
 import { say, WORDS } from "./words.js";
@@ -14,6 +15,7 @@ import { say, WORDS } from "./words.js";
 const MARGIN = 14, TITLE = 26, GAP = 34;
 const FOOT = 34;            // Scale bar below the views.
 const STACKED = 620;        // Narrower paper has the views one above the other.
+const ENOUGH = 100;         // Places tell the paper's room where nothing else does.
 const FAR = 0.6;            // Places farther off the envelope than this share of it stand at the edge.
 
 /**
@@ -57,23 +59,25 @@ function draw({ pen: drawn, picture, canvas }) {
     const [w, h] = [size.wide * scale.px, size.high * scale.px];
     const left = isStacked ? (width - w) / 2 : x + free;
     const put = placed(view, scale.px, [0, 0, 0], left - size.left * scale.px, y + size.top * scale.px);
-    one(drawn, put, view, picture, { left, top: y, right: left + w, bottom: y + h });
+    paintView(drawn, put, view, picture, { left, top: y, right: left + w, bottom: y + h });
     if (isStacked) y += h + TITLE + GAP / 2;
     else x = left + w + GAP - free;
   });
-  const unitName = picture.units.split("-")[0];
+  const unitName = unitsOf(picture.units).length;
   scaleBar(drawn, MARGIN + 6, height - 12, scale.px, unitName, Math.min(width / 3, 200));
-  drawn.letters(say(WORDS.reach.drawing.scale, { scale: scale.words }), width - MARGIN, height - 12, { align: "right", px: 12 });
+  drawn.letters(say(WORDS.reach.drawing.scale, { scale: scale.words }), width - MARGIN, height - 12,
+    { align: "right", px: 12 });
   canvas.dataset.scale = scale.words;
 }
 
 function scaleFor(sizes, width, height, isStacked, units) {
   const [a, b] = sizes;
-  const room = { x: 0, y: 0, width: width - 2 * MARGIN - (isStacked ? 0 : GAP), height: height - 2 * MARGIN - FOOT - TITLE };
+  const room = {
+    x: 0, y: 0, width: width - 2 * MARGIN - (isStacked ? 0 : GAP), height: height - 2 * MARGIN - FOOT - TITLE };
   if (isStacked) room.height -= TITLE + GAP / 2;
   const wide = isStacked ? Math.max(a.wide, b.wide) : a.wide + b.wide;
   const high = isStacked ? a.high + b.high : Math.max(a.high, b.high);
-  return scaleWithRoom(wide, high, room, MM_IN[units.split("-")[0]]);
+  return scaleWithRoom(wide, high, room, MM_IN[unitsOf(units).length]);
 }
 
 /** The two ways of looking: along the normal of the section's plane, and from above. */
@@ -86,7 +90,7 @@ function viewsOf({ envelope, chosen, outline }) {
   if (!axis || (reach && reach.section.kind !== "section")) {
     return [{ kind: "side", across: first, up: second, toward: cross(first, second) }, plan];
   }
-  const tool = outline ? [0, 1, 2].map((i) => outline.tool[i][3]) : null;
+  const tool = outline ? column(outline.tool, 3) : null;
   const across = bearing(axis, chosen?.at ?? tool) ?? first;
   const section = { kind: "section", across, up: axis.direction, toward: cross(across, axis.direction), axis };
   return [section, { ...plan, axis, cut: across }];
@@ -121,7 +125,7 @@ function curves(view, reach) {
 function extent(view, { envelope, outline, before, places, chosen }) {
   const firm = curves(view, envelope?.travel ?? envelope?.working_travel).flatMap((curve) => curve.points);
   for (const one of [outline, before]) firm.push(...(one?.line ?? []));
-  if (!firm.length) firm.push([0, 0, 0], ...places.slice(0, 100).map((place) => place.at));
+  if (!firm.length) firm.push([0, 0, 0], ...places.slice(0, ENOUGH).map((place) => place.at));
   const flat = (point) => [dot(view.across, point), dot(view.up, point)];
   const box = boxed(firm.map(flat));
   const most = FAR * Math.max(box.right - box.left, box.top - box.bottom);
@@ -142,16 +146,18 @@ function boxed(flat) {
   return box;
 }
 
-function one(drawn, put, view, picture, frame) {
+function paintView(drawn, put, view, picture, frame) {
   const { envelope, outline, before, places, chosen, toolName } = picture;
   const words = WORDS.reach.drawing;
   drawn.letters(words[view.kind], frame.left, frame.top - TITLE / 2, { px: 13, weight: 600 });
   region(drawn, put, curves(view, envelope?.travel ?? envelope?.working_travel), "medium");
-  if (envelope?.travel) for (const { points } of curves(view, envelope.working_travel)) drawn.closed(points.map(put), "dashed");
+  if (envelope?.travel) for (const { points } of curves(view, envelope.working_travel)) drawn.closed(
+    points.map(put), "dashed");
   if (view.axis) axisLine(drawn, put, view, frame);
   for (const { at, verdict } of places) mark(drawn, put(shown(view, at)), verdict, 12, frame);
   if (before) drawn.line(before.line.map(put), "dashed");
-  if (outline) drawArm(drawn, put, { outline, toolName: view.kind === "plan" ? "" : toolName }, { size: thickness(put, outline), axes: 20 });
+  if (outline) drawArm(drawn, put, { outline, toolName: view.kind === "plan" ? "" : toolName },
+    { size: thickness(put, outline), axes: 20 });
   way(drawn, put, picture);
   if (chosen) chosenPlace(drawn, put, view, picture, frame);
 }
@@ -159,7 +165,8 @@ function one(drawn, put, view, picture, frame) {
 /** Bars as thick as the drawing bears: a small arm stays thin. */
 function thickness(put, { line }) {
   const points = line.map(put);
-  const long = points.slice(1).reduce((sum, point, i) => sum + Math.hypot(point[0] - points[i][0], point[1] - points[i][1]), 0);
+  const long = points.slice(1).reduce((sum, point, i) =>
+    sum + Math.hypot(point[0] - points[i][0], point[1] - points[i][1]), 0);
   return Math.min(Math.max(long * 0.018, 2.5), 9);
 }
 

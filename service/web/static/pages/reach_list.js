@@ -3,7 +3,7 @@
 // told by a mark, a word and a sentence. Left out: asking, and all about the chosen place.
 
 import { el, fill, setAttribute, svg } from "./elements.js";
-import { length, number } from "./numbers.js";
+import { length, number, unitsOf } from "./numbers.js";
 import { counted } from "./reach_survey.js";
 import { say, WORDS } from "./words.js";
 
@@ -66,7 +66,7 @@ function draw(table) {
   );
 }
 
-const placeHead = ({ units }) => say(WORDS.reach.list.place, { unit: units.split("-")[0] });
+const placeHead = ({ units }) => say(WORDS.reach.list.place, { unit: unitsOf(units).length });
 
 function sifted({ rows, sift }) {
   const all = rows.map((row, at) => at);
@@ -78,7 +78,7 @@ function counts(table) {
   for (const row of table.rows) found.set(verdictOf(row), (found.get(verdictOf(row)) ?? 0) + 1);
   const names = ["reachable", "outside-travel", "unreachable", "not-found", "refused", "unread", "open"];
   const key = (sift, count) => el("button", {
-    type: "button", class: "count", "aria-pressed": String(table.sift === sift),
+    type: "button", "aria-pressed": String(table.sift === sift),
     onclick() {
       Object.assign(table, { sift, page: 0 });
       draw(table);
@@ -93,7 +93,9 @@ function counts(table) {
 /** The sign of a verdict. @param {string} verdict */
 export function sign(verdict) {
   const path = SIGNS[verdict];
-  return path ? svg("svg", { viewBox: "0 0 20 20", class: "sign", "aria-hidden": "true" }, svg("path", { d: path })) : null;
+  return path
+    ? svg("svg", { viewBox: "0 0 20 20", class: "sign", "aria-hidden": "true" }, svg("path", { d: path }))
+    : null;
 }
 
 function line(table, at) {
@@ -104,14 +106,18 @@ function line(table, at) {
   const label = place?.name ?? say(WORDS.reach.list.line, { line: place?.line ?? row.line });
   const key = el("button", {
     type: "button", class: "choice", dataset: { at }, "aria-pressed": String(at === table.at),
-    "aria-label": say(WORDS.reach.list.show, { number: at + 1, name: label }), tabindex: at === focusable(table) ? 0 : -1,
+    "aria-label": say(WORDS.reach.list.show, { number: at + 1, name: label }),
+    tabindex: at === focusable(table) ? 0 : -1,
     onclick: () => choose(table, at),
   }, label);
-  return el("tr", { class: `is-${verdict}`, dataset: { at }, onclick: () => choose(table, at), "aria-current": at === table.at ? "true" : null },
+  return el("tr", {
+    class: `is-${verdict}`, dataset: { at }, onclick: () => choose(table, at),
+    "aria-current": at === table.at ? "true" : null },
     el("td", { class: "number" }, at + 1),
     el("th", { scope: "row" }, key),
     el("td", { class: "place figures" }, place ? place.position.map((one) => length(one, units)).join("  ") : ""),
-    el("td", { class: "verdict" }, sign(verdict), el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict), " ", el("span", {}, said(row))),
+    el("td", { class: "verdict" }, sign(verdict), el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict), " ",
+      el("span", {}, said(row))),
     el("td", { class: "travel_left figures" }, margin === undefined ? "" : percent(margin)));
 }
 
@@ -171,6 +177,7 @@ function pages(table, first, count) {
   }, text);
   const last = Math.min(first + PAGE, count);
   return el("p", { class: "keys" }, turn(-1, words.before, first === 0),
-    el("span", { class: "figures" }, say(words.part, { first: counted(first + 1), last: counted(last), count: counted(count) })),
+    el("span", { class: "figures" },
+      say(words.part, { first: counted(first + 1), last: counted(last), count: counted(count) })),
     turn(1, words.after, last === count));
 }

@@ -3,7 +3,7 @@
 
 import { choose, chosen } from "./address.js";
 import { el, fill } from "./elements.js";
-import { typed } from "./numbers.js";
+import { typed, UNITS } from "./numbers.js";
 import { ALONG, FORMS } from "./reach_asking.js";
 import { say, WORDS } from "./words.js";
 
@@ -11,7 +11,6 @@ const DEFAULTS = {
   tool: "", frame: "base", form: "xyz-fixed", units: "", freedom: "", approach: "", along: "tool-z",
   order: "margin", decimal: "auto",
 };
-const UNITS = ["mm-deg", "m-rad", "in-deg"];
 
 /**
  * Fit the choices into a place of the page; returns what tells them.

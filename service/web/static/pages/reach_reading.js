@@ -34,7 +34,8 @@ export function readPlaces(text, { turns = 3, decimal = 'auto' } = {}) {
   const found = columnsOf(rows, turns, separator, decimal);
   const data = found.header ? rows.slice(1) : rows;
   const mark = decimalOf(data, found.columns, separator, decimal);
-  const how = { separator, decimal: mark.decimal, columns: found.columns, header: found.header, left: found.left, doubt: mark.doubt };
+  const { columns, header, left } = found;
+  const how = { separator, decimal: mark.decimal, columns, header, left, doubt: mark.doubt };
   if (found.fault) return { places: [], faults: [found.fault], how };
   const places = [];
   const faults = [];
@@ -62,13 +63,15 @@ export function blankTable(turns) {
 
 /** The separator of a table: a tab or semicolon wherever there is one, else comma or blanks by where commas stand. */
 function separatorOf(text) {
-  const lines = text.split('\n', SAMPLE).map((line) => line.replace(/"[^"]*"/g, '').trim()).filter((line) => line && line[0] !== '#');
+  const lines = text.split('\n', SAMPLE).map((line) => line.replace(/"[^"]*"/g, '').trim())
+    .filter((line) => line && line[0] !== '#');
   if (lines.some((line) => line.includes('\t'))) return 'tab';
   if (lines.some((line) => line.includes(';'))) return 'semicolon';
   const commas = lines.filter((line) => line.includes(','));
   if (!commas.length) return 'blank';
   // Commas that all stand between digits, in lines that blanks cut into three numbers and more, are decimal ones.
-  const decimals = commas.every((line) => line.split(/\s+/).length >= 3 && !/(^|[^\d])[,]|,([^\d]|$)|\d,\d+,\d/.test(line));
+  const decimals = commas.every((line) =>
+    line.split(/\s+/).length >= 3 && !/(^|[^\d])[,]|,([^\d]|$)|\d,\d+,\d/.test(line));
   return decimals ? 'blank' : 'comma';
 }
 
@@ -128,10 +131,11 @@ function columnsOf(rows, turns, separator, decimal) {
   const none = { columns: [], header: false, left: [] };
   if (!first) return none;
   const names = first.cells.map(columnName);
-  if (!first.cells.some(isNumberLike) && names.some((name) => POSITION.includes(name))) return byHead(first, names, turns);
+  if (!first.cells.some(isNumberLike) && names.some((name) => POSITION.includes(name))) return byHead(
+    first, names, turns);
   const rest = rows.map((row) => trimmed(row.cells));
   const named = rest.some((cells) => cells[0] && !isNumberLike(cells[0]));
-  const widest = Math.max(...counted(rest));
+  const widest = rest.reduce((most, cells) => Math.max(most, cells.length), 0);
   const behind = widest - 3 - (named ? 1 : 0);
   if (behind < 0) return { ...none, fault: { line: first.line, code: 'no-columns', text: first.cells.join(' ') } };
   // One number more than a place or a pose needs is a running number in front.
@@ -143,12 +147,6 @@ function columnsOf(rows, turns, separator, decimal) {
   columns.push(...['freedom', 'approach'].slice(0, more));
   if (more > 2) return { ...none, fault: { line: first.line, code: 'columns', cell: String(widest) } };
   return { columns, header: false, left: [] };
-}
-
-function* counted(rows) {
-  let widest = 0;
-  for (const cells of rows) widest = Math.max(widest, cells.length);
-  yield widest;
 }
 
 function byHead(first, names, turns) {

@@ -17,11 +17,10 @@ const MOST_SHOWN = 20000;
  * @param {{changed: (id: string | null) => void, found: (survey: object, results: object[]) => void}} told
  */
 export function surveyDesk(place, told) {
-  const desk = { place, told, stop: null, said: 0 };
+  const desk = { place, told, stop: null };
   return {
     begin: (body, title) => begin(desk, body, title),
     watch: (id) => watch(desk, id),
-    leave: () => leave(desk),
   };
 }
 
@@ -83,7 +82,8 @@ function show(parts, { state, done, total, remaining_s: left }) {
   parts.bar.max = Math.max(total, 1);
   parts.bar.value = done;
   const time = left === null ? "" : say(words.left, { time: duration(left) });
-  parts.line.textContent = say(words.line, { state: words.states[state] ?? state, done: counted(done), total: counted(total) }) + time;
+  parts.line.textContent = say(words.line, {
+    state: words.states[state] ?? state, done: counted(done), total: counted(total) }) + time;
   // A screen reader is told at each quarter, not at each event.
   const quarter = Math.floor((4 * done) / Math.max(total, 1));
   if (quarter !== parts.quarter) parts.spoken.textContent = parts.line.textContent;
@@ -94,7 +94,8 @@ async function ended(desk, id) {
   const { ok, data: survey, problem } = await ask(`/v1/surveys/${id}`);
   const words = WORDS.reach.survey;
   if (!ok) return desk.place.replaceChildren(el("p", {}, problem.detail));
-  const line = say(words.over[survey.state] ?? survey.state, { total: counted(survey.total), reason: survey.reason ?? "" });
+  const line = say(words.over[survey.state] ?? survey.state, {
+    total: counted(survey.total), reason: survey.reason ?? "" });
   const parts = [el("h2", {}, survey.title ?? words.head), el("p", { role: "status" }, line)];
   if (survey.state === "succeeded") parts.push(links(survey.links));
   const leaves = el("button", { type: "button" }, words.leave);

@@ -4,7 +4,7 @@
 
 import { withQuery } from "./address.js";
 import { el, fill } from "./elements.js";
-import { angle, length, number } from "./numbers.js";
+import { angle, length, number, unitsOf } from "./numbers.js";
 import { percent, said, sign, verdictOf } from "./reach_list.js";
 import { say, WORDS } from "./words.js";
 
@@ -36,8 +36,10 @@ function draw(desk) {
   const solutions = row.result?.solutions ?? [];
   fill(desk.place,
     el("h2", {}, sign(verdict), ` ${name}`),
-    el("p", { class: "verdict" }, el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict), said(row) ? `: ${said(row)}` : ""),
-    row.result?.proof ? el("p", { class: "quiet" }, say(words.rests, { proof: words.proofs[row.result.proof] ?? row.result.proof, method: shown.method })) : null,
+    el("p", { class: "verdict" }, el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict),
+      said(row) ? `: ${said(row)}` : ""),
+    row.result?.proof ? el("p", { class: "quiet" }, say(words.rests, {
+      proof: words.proofs[row.result.proof] ?? row.result.proof, method: shown.method })) : null,
     nearestOf(shown), ...familiesOf(shown),
     solutions.length ? stepping(desk, solutions) : null,
     el("div", { class: "solution" }),
@@ -49,8 +51,11 @@ function draw(desk) {
 function nearestOf({ row, question }) {
   const near = row.result?.reason?.nearest;
   if (!near) return null;
-  const values = [near.position.map((one) => length(one, question.units)), near.orientation.values.flat().map((one) => angle(one, question.units))];
-  return el("p", {}, WORDS.reach.target.nearest, " ", el("span", { class: "figures" }, values.flat().join("  ")), ` (${near.orientation.form})`);
+  const values = [
+    near.position.map((one) => length(one, question.units)),
+    near.orientation.values.flat().map((one) => angle(one, question.units))];
+  return el("p", {}, WORDS.reach.target.nearest, " ", el("span", { class: "figures" }, values.flat().join("  ")),
+    ` (${near.orientation.form})`);
 }
 
 function familiesOf({ row }) {
@@ -62,7 +67,9 @@ function familiesOf({ row }) {
 
 function stepping(desk, solutions) {
   const words = WORDS.reach.target;
-  const key = (by, text) => el("button", { type: "button", "aria-label": by < 0 ? words.before : words.after, disabled: solutions.length < 2, onclick: () => step(desk, by) }, text);
+  const key = (by, text) => el("button", {
+    type: "button", "aria-label": by < 0 ? words.before : words.after, disabled: solutions.length < 2,
+    onclick: () => step(desk, by) }, text);
   return el("div", { class: "stepping keys", role: "group", "aria-label": words.step },
     key(-1, "\u25c0"), el("output", { "aria-live": "polite" }), key(1, "\u25b6"));
 }
@@ -91,15 +98,18 @@ function solutionLines({ arm, question, name }, solution) {
   const rows = arm.arm.rows.filter((row) => !row.passive);
   const kinds = rows.map((row) => (row.joint === "prismatic" ? length : angle));
   const q = solution.joints.join(",");
-  const sheet = withQuery(`/arms/${encodeURIComponent(arm.name)}`, { q, tool: question.tool, frame: question.frame, units });
+  const sheet = withQuery(`/arms/${encodeURIComponent(arm.name)}`, {
+    q, tool: question.tool, frame: question.frame, units });
   const { singularity } = solution, state = singularity?.state ?? solution.state;
   return [
     el("table", { class: "joints" }, el("caption", { class: "unseen" }, say(words.joints, { name })),
       el("tr", {}, solution.joints.map((value, i) => el("th", { scope: "col" }, i + 1))),
       el("tr", {}, solution.joints.map((value, i) => el("td", { class: "figures" }, kinds[i](value, units))))),
     el("p", {}, say(words.margin, { margin: percent(solution.margin) }), solution.branch ? `; ${solution.branch}` : ""),
-    state ? el("p", {}, say(words.states[state] ?? state, { kinds: singularity?.kinds?.join(", ") ?? "" }), (singularity?.lost_motion ?? []).map((lost) => `; ${lost.say}`)) : null,
-    ...(solution.findings ?? []).filter((finding) => finding.name !== "near-singular").map((finding) => el("p", {}, finding.say)),
+    state ? el("p", {}, say(words.states[state] ?? state, { kinds: singularity?.kinds?.join(", ") ?? "" }),
+      (singularity?.lost_motion ?? []).map((lost) => `; ${lost.say}`)) : null,
+    ...(solution.findings ?? []).filter((finding) => finding.name !== "near-singular")
+      .map((finding) => el("p", {}, finding.say)),
     approachLine(solution.approach, units),
     el("p", { class: "keys" }, copyKey(q), el("a", { href: sheet }, words.sheet)),
   ];
@@ -110,7 +120,8 @@ function approachLine(approach, units) {
   const words = WORDS.reach.target;
   if (!approach.ok) return el("p", {}, el("b", {}, words.approach), " ", approach.breaks?.say ?? words.breaks);
   return el("p", {}, el("b", {}, words.approach), " ", say(words.comes, {
-    length: length(approach.length, units), unit: units.split("-")[0], margin: percent(approach.margin?.value ?? null),
+    length: length(approach.length, units), unit: unitsOf(units).length,
+    margin: percent(approach.margin?.value ?? null),
   }));
 }
 

@@ -4,7 +4,7 @@
 import { ask, follow } from "./ask.js";
 import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
-import { typed, unitsOf } from "./numbers.js";
+import { typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
 import { readings, sentences, showState, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
@@ -12,13 +12,13 @@ import { travelTable } from "./sheet_travel.js";
 import { views } from "./sheet_views.js";
 import { say, WORDS } from "./words.js";
 
-const RATE = 10;
-const PATH_S = 30;
-const MOST_PATH = 600;
+const RATE = 10; // a second: what an eye follows
+const PATH_S = 30; // of the path before the page listened
+const MOST_PATH = 600; // places: a minute at that rate
+const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
 const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
 const SETTLED_MS = 250;
 const NEVER_MS = 400; // The stream begins with how the arm stands, if anything ever came of it.
-const UNITS = ["mm-deg", "m-rad", "in-deg"];
 const AXES = ["x", "y", "z"];
 const place = (id) => document.getElementById(id);
 const arm = decodeURIComponent(location.pathname.split("/")[2]);
@@ -26,14 +26,16 @@ const path = `/v1/arms/${encodeURIComponent(arm)}`;
 
 const state = {
   said: chosen({ tool: "", frame: "", form: "xyz-fixed", units: "", q: "" }),
-  stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [], stop: () => {}, asking: null, settle: 0, text: 0,
+  stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [],
+  stop: () => {}, asking: null, settle: 0, text: 0,
 };
 const shown = { arms: new Set() };
 
 async function start() {
   begin();
   for (const name of ["elevation", "plan", "free"]) shown[name] = document.querySelector(`[data-view=${name}]`);
-  shown.views = views({ elevation: shown.elevation, plan: shown.plan, free: shown.free }, (scale) => setText(place("scale"), scale));
+  shown.views = views({ elevation: shown.elevation, plan: shown.plan, free: shown.free },
+    (scale) => setText(place("scale"), scale));
   shown.travel = travelTable(place("travel"), byHand);
   shown.readings = readings(place("readings"));
   shown.texts = texts(place("text-blocks"));
@@ -94,16 +96,20 @@ function isFixed(name, shared) {
 
 async function isUpright() {
   const found = await frames(["base"], "world");
-  return !found.length || found[0].matrix[2][2] > 0.7;
+  return !found.length || found[0].matrix[2][2] > UPRIGHT;
 }
 
 /** Return poses of frames of this arm in one of them, as the interface tells them. */
 async function frames(names, within) {
   const known = (name) => (name === "world" ? name : `${arm}.${name}`);
-  const body = { arms: [arm, ...shown.arms].map((one) => ({ arm: one })), find: names.map((name) => ({ of: known(name), in: known(within) })), form: "matrix", units: state.said.units || undefined };
+  const body = {
+    arms: [arm, ...shown.arms].map((one) => ({ arm: one })),
+    find: names.map((name) => ({ of: known(name), in: known(within) })),
+    form: "matrix", units: state.said.units || undefined };
   const { ok, data } = await ask("/v1/frames", { method: "POST", body });
   if (!ok) return [];
-  return data.answers.map(({ pose }, i) => ({ name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
+  return data.answers.map(({ pose }, i) => ({
+    name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
 }
 
 const question = () => {
@@ -208,8 +214,10 @@ function draw() {
   const { answer, said } = state;
   if (!answer) return;
   const { outline, singularity } = answer.poses[0];
-  const size = Math.max(...AXES.map((_, i) => Math.max(...outline.line.map((p) => p[i])) - Math.min(...outline.line.map((p) => p[i]))));
-  const isNear = ({ matrix }) => outline.line.some((point) => Math.hypot(...AXES.map((_, i) => point[i] - matrix[i][3])) < NEAR_SHARE * size);
+  const size = Math.max(...AXES.map((_, i) =>
+    Math.max(...outline.line.map((p) => p[i])) - Math.min(...outline.line.map((p) => p[i]))));
+  const isNear = ({ matrix }) => outline.line.some((point) =>
+    Math.hypot(...AXES.map((_, i) => point[i] - matrix[i][3])) < NEAR_SHARE * size);
   shown.views.show({
     arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "", frameName: answer.frame,
     frames: state.frames.filter((frame) => frame.name !== "base" && isNear(frame)), path: state.trail, balloons: true,
@@ -221,7 +229,9 @@ function draw() {
 
 const quality = () => (!state.isLive ? "typed" : isGone() ? "bad" : state.answer.quality);
 
-const wordOf = (now) => WORDS.sheet[`state_${state.isLive && isGone() ? "gone" : state.isLive ? state.answer.reason : ""}`] ?? WORDS.sheet[`state_${now}`] ?? now;
+const wordOf = (now) =>
+  WORDS.sheet[`state_${state.isLive && isGone() ? "gone" : state.isLive ? state.answer.reason : ""}`]
+  ?? WORDS.sheet[`state_${now}`] ?? now;
 
 /** What changes by itself: ages, and whether anything can be relied on. */
 function tick() {
@@ -251,7 +261,8 @@ function fitModes() {
     toLive();
     anew();
   });
-  place("mode-hand").addEventListener("change", () => byHand(state.answer.poses[0].outline.travel.filter((one) => one.joint !== null).map((one) => String(one.value))));
+  place("mode-hand").addEventListener("change", () => byHand(
+    state.answer.poses[0].outline.travel.filter((one) => one.joint !== null).map((one) => String(one.value))));
 }
 
 function toLive() {

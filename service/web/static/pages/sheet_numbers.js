@@ -3,7 +3,7 @@
 import { ask } from "./ask.js";
 import { withQuery } from "./address.js";
 import { el, fill, setAttribute, setText } from "./elements.js";
-import { age, angle, length, number } from "./numbers.js";
+import { age, angle, length, number, unitsOf } from "./numbers.js";
 import { say, WORDS } from "./words.js";
 
 const TRIPLE = /^([xyz]{3})-(fixed|current)$/;
@@ -14,7 +14,9 @@ const PRIMES = ["", "′", "″"];
 function namesOf(form) {
   const triple = TRIPLE.exec(form);
   if (triple) return [...triple[1]].map((axis, i) => axis + (triple[2] === "current" ? PRIMES[i] : ""));
-  return { "quaternion-wxyz": ["w", "x", "y", "z"], "quaternion-xyzw": ["x", "y", "z", "w"], "rotation-vector": ["x", "y", "z"] }[form] ?? [];
+  return {
+    "quaternion-wxyz": ["w", "x", "y", "z"], "quaternion-xyzw": ["x", "y", "z", "w"],
+    "rotation-vector": ["x", "y", "z"] }[form] ?? [];
 }
 
 /** Return what shows the numbers of an answer in a place of the page. */
@@ -27,17 +29,19 @@ function showNumbers(state, answer, isRelied) {
   const { position, orientation } = answer.poses[0], { units } = answer;
   const isAngle = TRIPLE.test(orientation.form) || orientation.form === "rotation-vector";
   const turn = (value) => (isAngle ? angle(value, units) : number(value, 5));
-  const [lengthUnit, angleUnit] = units.split("-");
+  const { length: lengthUnit, angle: angleUnit } = unitsOf(units);
   const key = `${orientation.form} ${units}`;
   if (key !== state.key) {
     state.key = key;
     state.cells = [...position, ...orientation.values.flat()].map(() => el("output", {}));
     const names = namesOf(orientation.form), turns = state.cells.slice(3);
-    const row = (name, cell, unit) => el("div", {}, el("span", { class: "of" }, name), cell, el("span", { class: "unit" }, unit));
+    const row = (name, cell, unit) =>
+      el("div", {}, el("span", { class: "of" }, name), cell, el("span", { class: "unit" }, unit));
     fill(state.place,
       el("div", { class: "position" }, ["x", "y", "z"].map((axis, i) => row(axis, state.cells[i], lengthUnit))),
       names.length
-        ? el("div", { class: "orientation" }, names.map((name, i) => row(isAngle ? say(WORDS.sheet.about, { axis: name }) : name, turns[i], isAngle ? angleUnit : "")))
+        ? el("div", { class: "orientation" }, names.map((name, i) =>
+          row(isAngle ? say(WORDS.sheet.about, { axis: name }) : name, turns[i], isAngle ? angleUnit : "")))
         : el("div", { class: "orientation matrix" }, turns));
   }
   const written = [...position.map((value) => length(value, units)), ...orientation.values.flat().map(turn)];
@@ -55,10 +59,13 @@ export function sentences(answer) {
   if (!singularity) return [answer.say, ...said].filter(Boolean);
   const lost = singularity.lost_motion.map((one) => one.say);
   const { condition_number: condition, travel_to: to } = singularity;
-  const values = { state: WORDS.sheet[singularity.state], condition: condition === null ? "∞" : number(condition, 1) };
-  const near = to ? say(WORDS.sheet.travel_to, { joint: to.joint, value: number(Math.abs(to.value), 1), unit: to.unit }) : "";
-  const near_said = `${say(WORDS.sheet.singularity, values)} ${near}`;
-  return [answer.say, ...said.slice(0, graver.length), near_said, ...lost, ...said.slice(graver.length)].filter(Boolean);
+  const values = {
+    state: WORDS.sheet[singularity.state], condition: condition === null ? "∞" : number(condition, 1) };
+  const near = to
+    ? say(WORDS.sheet.travel_to, { joint: to.joint, value: number(Math.abs(to.value), 1), unit: to.unit }) : "";
+  const nearSaid = `${say(WORDS.sheet.singularity, values)} ${near}`;
+  return [answer.say, ...said.slice(0, graver.length), nearSaid, ...lost, ...said.slice(graver.length)]
+    .filter(Boolean);
 }
 
 /** Say how far an answer can be relied on: the state's word, age, and whether anything stands there. */
@@ -66,7 +73,8 @@ export function showState(place, { state, word, ageMs, simulated }) {
   setAttribute(place, "data-state", state);
   const parts = place.querySelectorAll("span");
   setText(parts[0], word);
-  setText(parts[1], ageMs === null ? "" : say(state === "bad" ? WORDS.sheet.last : WORDS.sheet.age, { age: age(ageMs) }));
+  setText(parts[1], ageMs === null ? ""
+    : say(state === "bad" ? WORDS.sheet.last : WORDS.sheet.age, { age: age(ageMs) }));
   setText(parts[2], simulated ? WORDS.sheet.simulated : "");
 }
 
@@ -76,10 +84,13 @@ export function showState(place, { state, word, ageMs, simulated }) {
  */
 export function texts(place) {
   const said = el("p", { class: "unseen", role: "status" });
-  const shown = Object.fromEntries(["address", "line", "json"].map((name) => [name, el("pre", { tabindex: "0", "aria-label": WORDS.sheet[name] })]));
+  const shown = Object.fromEntries(["address", "line", "json"].map((name) =>
+    [name, el("pre", { tabindex: "0", "aria-label": WORDS.sheet[name] })]));
   fill(place, Object.entries(shown).map(([name, text]) =>
     el("div", { class: "text" }, el("h3", {}, WORDS.sheet[name]),
-      el("button", { type: "button", "aria-label": say(WORDS.sheet.copy_of, { what: WORDS.sheet[name] }), onclick: (event) => copied(event.target, text, said) }, WORDS.sheet.copy), text)), said);
+      el("button", {
+        type: "button", "aria-label": say(WORDS.sheet.copy_of, { what: WORDS.sheet[name] }),
+        onclick: (event) => copied(event.target, text, said) }, WORDS.sheet.copy), text)), said);
   return { show: (path, parameters) => showTexts(shown, path, parameters) };
 }
 

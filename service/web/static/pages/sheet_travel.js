@@ -12,14 +12,16 @@ const STEPS = ["0.01", "0.1", "1", "10", "100"];
  * @param {HTMLElement} place @param {(values: string[]) => void} onValues what was typed or nudged
  */
 export function travelTable(place, onValues) {
-  const step = el("select", { id: "step" }, STEPS.map((one) => el("option", { value: one, selected: one === "1" }, one)));
+  const step = el("select", { id: "step" },
+    STEPS.map((one) => el("option", { value: one, selected: one === "1" }, one)));
   const body = el("tbody"), state = { rows: [], key: "", byHand: false, onValues, step, body };
   fill(place,
     el("p", { class: "step" }, el("label", { for: "step" }, WORDS.sheet.step), step),
-    el("table", { class: "travel" }, el("caption", { class: "unseen" }, WORDS.sheet.travel), el("thead", {}, el("tr", {}, WORDS.sheet.travel_columns.map((one) => el("th", { scope: "col" }, one)))), body));
+    el("table", { class: "travel" }, el("caption", { class: "unseen" }, WORDS.sheet.travel),
+      el("thead", {}, el("tr", {}, WORDS.sheet.travel_columns.map((one) => el("th", { scope: "col" }, one)))),
+      body));
   return {
     show: (travel, byHand, isRelied) => show(state, travel, byHand, isRelied),
-    values: () => valuesOf(state),
     wrong: (index) => state.rows.filter((row) => row.joint !== null).forEach((row, i) =>
       setAttribute(row.field, "aria-invalid", i === index ? "true" : null)),
   };
@@ -48,7 +50,8 @@ function rowOf(state, one) {
     row.field.value = String(Number((now + by * Number(state.step.value)).toFixed(9))).replace("-", "−");
     changed();
   };
-  row.field = el("input", { inputmode: "decimal", autocomplete: "off", "aria-label": `${name}, ${one.unit}`, disabled: one.joint === null,
+  row.field = el("input", {
+    inputmode: "decimal", autocomplete: "off", "aria-label": `${name}, ${one.unit}`, disabled: one.joint === null,
     oninput: changed,
     onkeydown(event) {
       const by = { ArrowUp: 1, ArrowDown: -1 }[event.key];
@@ -56,7 +59,8 @@ function rowOf(state, one) {
       event.preventDefault();
       nudge(by * (event.shiftKey ? 10 : 1));
     } });
-  const press = (by, sign) => el("button", { type: "button", "aria-label": say(WORDS.sheet[sign], { name }), onclick: () => nudge(by) }, by < 0 ? "−" : "+");
+  const press = (by, sign) => el("button", {
+    type: "button", "aria-label": say(WORDS.sheet[sign], { name }), onclick: () => nudge(by) }, by < 0 ? "−" : "+");
   row.decimals = DECIMALS[one.unit] ?? 3;
   row.element = el("tr", {},
     el("th", { scope: "row" }, one.joint === null ? one.of : el("span", { class: "balloon" }, one.joint)),
@@ -79,7 +83,8 @@ function update(row, one, byHand, isRelied) {
 function scaleOf() {
   const at = (share) => `${(4 + 92 * Math.min(Math.max(share, -0.03), 1.03)).toFixed(2)}%`;
   const working = svg("line", { class: "working", y1: "45%", y2: "45%" });
-  const mark = svg("svg", { y: "45%", overflow: "visible" }, svg("path", { class: "mark", d: "M0 -2 L-5 -12 L5 -12 Z" }));
+  const mark = svg("svg", { y: "45%", overflow: "visible" },
+    svg("path", { class: "mark", d: "M0 -2 L-5 -12 L5 -12 Z" }));
   const zero = svg("line", { class: "zero", y1: "33%", y2: "57%" });
   const ends = [svg("text", { x: "4%", y: "100%" }), svg("text", { x: "96%", y: "100%", "text-anchor": "end" })];
   const ruled = svg("g", {},

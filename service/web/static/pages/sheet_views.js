@@ -39,7 +39,6 @@ export function views(canvases, onScale) {
       for (const one of Object.values(pens)) one.tint();
       repaint();
     },
-    repaint,
   };
 }
 
@@ -71,7 +70,8 @@ function holdBox(state) {
   // The heights of elevation and plan follow what they have to show, so that the scale can be large.
   const [, y, z] = state.box[1].map((high, i) => high - state.box[0][i]);
   const share = Math.min(Math.max(z / (y + z), 0.36), 0.64);
-  state.pens.plan.canvas.closest(".fixed").style.gridTemplateRows = `minmax(0, ${share}fr) minmax(0, ${1 - share}fr)`;
+  state.pens.plan.canvas.closest(".fixed").style.gridTemplateRows =
+    `minmax(0, ${share}fr) minmax(0, ${1 - share}fr)`;
 }
 
 /** The height of the floor: the world's, or that of the arm's foot. */
@@ -79,7 +79,8 @@ const floorOf = (scene) => (scene.frameName === "world" ? 0 : scene.outline.base
 
 function roomOf(one) {
   const [width, height] = one.size();
-  return { x: MARGIN.x, y: MARGIN.y, width: width - MARGIN.x - MARGIN.right, height: height - MARGIN.y - MARGIN.bottom };
+  const { x, y, right, bottom } = MARGIN;
+  return { x, y, width: width - x - right, height: height - y - bottom };
 }
 
 function paintFixed(state) {
@@ -151,16 +152,20 @@ function paintFree(state) {
 function floor(one, put, scene, [low, high]) {
   const z = floorOf(scene), step = roundLength(0.35 * Math.max(high[0] - low[0], high[1] - low[1]), 1);
   const ends = [0, 1].map((i) => [Math.floor(low[i] / step) * step, Math.ceil(high[i] / step) * step]);
-  for (let x = ends[0][0]; x <= ends[0][1] + step / 2; x += step) one.line([put([x, ends[1][0], z]), put([x, ends[1][1], z])], "faint");
-  for (let y = ends[1][0]; y <= ends[1][1] + step / 2; y += step) one.line([put([ends[0][0], y, z]), put([ends[0][1], y, z])], "faint");
+  for (let x = ends[0][0]; x <= ends[0][1] + step / 2; x += step) one.line(
+    [put([x, ends[1][0], z]), put([x, ends[1][1], z])], "faint");
+  for (let y = ends[1][0]; y <= ends[1][1] + step / 2; y += step) one.line(
+    [put([ends[0][0], y, z]), put([ends[0][1], y, z])], "faint");
   one.line(scene.outline.line.map(([x, y]) => put([x, y, z])), "dashed");
   const tool = column(scene.outline.tool, 3);
   one.line([put(tool), put([tool[0], tool[1], z])], "chain");
   const corner = put([ends[0][1], ends[1][0], z]);
   const words = say(WORDS.sheet.grid, { length: step, unit: scene.unit }), [width, height] = one.size();
   // Wherever the corner lies, the words stay whole on the paper.
-  const half = one.widthOf(words, 10) / 2 + 4, within = (at, least, most) => Math.min(Math.max(at, least), most);
-  one.letters(words, within(corner[0], half, width - half), within(corner[1] + 12, 10, height - 26), { px: 10, align: "center", colour: "quiet" });
+  const half = one.widthOf(words, 10) / 2 + 4, within = (at, least, most) =>
+    Math.min(Math.max(at, least), most);
+  one.letters(words, within(corner[0], half, width - half), within(corner[1] + 12, 10, height - 26),
+    { px: 10, align: "center", colour: "quiet" });
 }
 
 function fitTurning(state, canvas, repaint) {
@@ -205,7 +210,8 @@ function tell(state) {
   const { scene } = state, tool = column(scene.outline.tool, 3);
   const place = ["x", "y", "z"].map((axis, i) => `${axis} ${length(tool[i], scene.units)}`).join(", ");
   for (const [name, one] of Object.entries(state.pens)) {
-    const words = say(WORDS.sheet[`${name}_told`], { arm: scene.arm, frame: scene.frameName, tool: scene.toolName, place: `${place} ${scene.unit}` });
+    const words = say(WORDS.sheet[`${name}_told`], {
+      arm: scene.arm, frame: scene.frameName, tool: scene.toolName, place: `${place} ${scene.unit}` });
     setAttribute(one.canvas, "aria-label", words);
   }
 }

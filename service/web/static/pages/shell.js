@@ -57,9 +57,6 @@ export function onTheme(callback) {
   matchMedia("(prefers-color-scheme: dark)").addEventListener("change", callback);
 }
 
-/** Return whether things should move as little as they can. */
-export const isStill = () => matchMedia("(prefers-reduced-motion: reduce)").matches;
-
 function told(text) {
   const line = document.getElementById("connection");
   if (line) setText(line, text);

@@ -8,7 +8,7 @@ import { cross, dot, moved, unit } from "./projection.js";
 /** @typedef {{near: number, draw: (pen: object) => void}} Body */
 
 /** A bar along a line of the arm; `r` in pixels. @returns {Body} */
-export function bar(put, line, r, kind = "thick") {
+function bar(put, line, r, kind = "thick") {
   const points = line.map(put);
   const near = points.reduce((sum, point) => sum + point[2], 0) / points.length;
   return { near, draw: (pen) => pen.tube(points, r, kind) };
@@ -63,7 +63,7 @@ function centreLines(pen, near, far, [ax, ay, az, flat], r) {
  * A block about a place, its edges along `w` and two directions across it; halves in pixels.
  * @returns {Body}
  */
-export function block(put, centre, w, across, halves, kind = "thick") {
+function block(put, centre, w, across, halves, kind = "thick") {
   const [hu, hv, hw] = halves.map((half) => half / put.px);
   const v = unit(cross(w, across)), u = unit(cross(v, w));
   const faces = [[u, hu, v, hv, w, hw], [v, hv, w, hw, u, hu], [w, hw, u, hu, v, hv]];

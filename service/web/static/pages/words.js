@@ -37,7 +37,6 @@ export const WORDS = {
     "nothing_like_it": "No name of a stored arm is like it.",
     "to_board": "All arms",
     "none": "–",
-    "ms": "ms",
     "s": "s",
     "min": "min",
     "h": "h",
