@@ -1,4 +1,4 @@
-"""Letters of directions: beside their arrows, off words whatever else, off boundaries if possible."""
+"""Letters of directions stand beside their arrows, on no words, on no boundary if that can be."""
 
 import numpy as np
 import pytest
