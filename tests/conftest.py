@@ -11,9 +11,11 @@ import time
 from collections.abc import AsyncIterator, Callable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 import httpx
 import pytest
+import sqlalchemy as sa
 from fastapi import FastAPI
 
 from kinematics.warm_up import POSTURES, REACH, RELATIONS, to_be_compiled
@@ -21,6 +23,53 @@ from service.app import create_app
 from service.settings import Settings
 
 ROOT = Path(__file__).resolve().parents[1]
+POSTGRES = "ARMSPAN_TEST_POSTGRES"
+MOST_AT_ONCE = 4
+"""Each has servers, and one of them a browser: more would be short of memory before of time."""
+
+
+# --- tests side by side (``pytest -n auto``) ---------------------------------------------------
+
+
+def pytest_configure(config: pytest.Config) -> None:
+    """Give one that runs beside others a database of its own: tests wipe it."""
+    me, url = os.environ.get("PYTEST_XDIST_WORKER"), os.environ.get(POSTGRES)
+    if me and url:
+        os.environ[POSTGRES] = _database_beside(sa.make_url(url), me)
+
+
+def _database_beside(given: sa.URL, suffix: str) -> str:
+    own = given.set(database=f"{given.database}_{suffix}")
+    engine = sa.create_engine(given.set(drivername="postgresql+psycopg"))
+    with engine.connect().execution_options(isolation_level="AUTOCOMMIT") as connection:
+        known = sa.text("SELECT 1 FROM pg_database WHERE datname = :name")
+        if not connection.execute(known, {"name": own.database}).scalar():
+            connection.exec_driver_sql(f'CREATE DATABASE "{own.database}"')
+    engine.dispose()
+    return own.render_as_string(hide_password=False)
+
+
+@pytest.hookimpl(optionalhook=True)
+def pytest_xdist_setupnodes() -> None:
+    """Compile before they start, or each of them would."""
+    _compile_once()
+
+
+@pytest.hookimpl(optionalhook=True)
+def pytest_xdist_auto_num_workers() -> int:
+    """Return how many ``-n auto`` means."""
+    return min(os.cpu_count() or 1, MOST_AT_ONCE)
+
+
+@pytest.hookimpl(optionalhook=True)
+def pytest_xdist_make_scheduler(config: pytest.Config, log: Any) -> Any:
+    """Keep the tests of a file together, since they share servers and compiled code."""
+    from xdist.scheduler import LoadFileScheduling
+
+    return LoadFileScheduling(config, log)
+
+
+# --- the service -------------------------------------------------------------------------------
 
 
 @pytest.fixture(scope="session")

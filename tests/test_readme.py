@@ -28,7 +28,7 @@ INSTALL = "python3 -m venv .venv && .venv/bin/pip install -q ."
 SERVE = f"    {INSTALL} && .venv/bin/armspan serve --demo"
 TEST = (
     "    python3 -m venv .venv && .venv/bin/pip install -q -e '.[test]' "
-    "&& .venv/bin/python -m pytest"
+    "&& .venv/bin/python -m pytest -n auto"
 )
 OUR_ADDRESS = "http://127.0.0.1:8017"
 CUT = "..."

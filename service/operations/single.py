@@ -102,7 +102,7 @@ def question_about(
 
 def _question_about(stored: StoredArm[ReadArm], asked: SingleQuestion, moving: bool) -> Question:
     meant = MeantArm(stored.read, stored.record.revision)
-    _check_expected(asked, meant.read.digests.digest)
+    check_expected(meant.read.digests.digest, asked.expect)
     _check_task(asked)
     arm, units = meant.arm, meant_units(meant, asked.units)
     tool = _meant_tool(arm, units, asked)
@@ -174,13 +174,19 @@ def _check_task(asked: SingleQuestion) -> None:
         raise
 
 
-def _check_expected(asked: SingleQuestion, digest: str) -> None:
-    if asked.expect is not None and asked.expect != digest:
+def check_expected(digest: str, expected: str | None) -> None:
+    """Refuse an arm that is not the one a question expects.
+
+    Raises
+    ------
+    DigestDiffers : it has another digest.
+    """
+    if expected is not None and expected != digest:
         raise DigestDiffers(
-            f"the arm's digest is {digest}, not {asked.expect}",
+            f"the arm's digest is {digest}, not {expected}",
             where=("expect",),
             location="query",
-            value=asked.expect,
+            value=expected,
             way_out="read the arm anew and check what was changed",
         )
 

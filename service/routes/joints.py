@@ -10,10 +10,11 @@ from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
-from service.errors import DigestDiffers, Unparseable, UnusableValue
+from service.errors import Unparseable, UnusableValue
 from service.live.live_arms import LiveArms
 from service.operations.arms import Arms, StoredArm
 from service.operations.meant_arms import MeantArm
+from service.operations.single import check_expected
 from service.problems import Problem
 from service.routes.direct import PostureRoute
 from service.routes.in_format import MEDIA_TYPES, Asked, answered_in_format
@@ -100,7 +101,7 @@ class _Taking:
         stored = await stored_arm(request.app.state.arms, request.path_params["arm"])
         live: LiveArms = request.app.state.live
         stored = live.newer(stored)
-        _check_expected(stored, asked.said.get("expect"))
+        check_expected(stored.read.digests.digest, asked.said.get("expect"))
         if self._raw:
             request.state.json_body = parse_json(self._raw)
             given = joints_request(request.state.json_body)
@@ -139,18 +140,6 @@ def identity_of(stored: StoredArm[ReadArm]) -> dict[str, object]:
 
 async def _refused(asked: Asked, problem: Problem) -> Content:
     return refused_joints(problem, asked.wanted, asked.stamp)
-
-
-def _check_expected(stored: StoredArm[ReadArm], expected: str | None) -> None:
-    digest = stored.read.digests.digest
-    if expected is not None and expected != digest:
-        raise DigestDiffers(
-            f"the arm's digest is {digest}, not {expected}",
-            where=("expect",),
-            location="query",
-            value=expected,
-            way_out="read the arm anew and check what was changed",
-        )
 
 
 def _form(raw: bytes) -> list[tuple[str, str]]:

@@ -50,7 +50,9 @@ router = APIRouter(route_class=PostureRoute)
 _ANY = "any"
 """Stands for the arm's name in a question that is asked of every arm."""
 
-_LAST_EVENT = parameter("Last-Event-ID", "`id` of the last event that was read.", where="header")
+_LAST_EVENT = parameter(
+    "Last-Event-ID", "`id` of the last that was read; it counts before `after`.", where="header"
+)
 _STREAM = (
     "Server-sent events named `pose`, one for each change, the newest alone for a reader that is "
     "slow or asks for fewer by `rate`; `id` is `change`. What cannot be told is an event "
@@ -142,7 +144,8 @@ async def live_of_all(request: Request) -> Response:
 def _stream(request: Request, name: str | None, asked: StreamQuestion) -> Response:
     state = request.app.state
     channels: Channels = state.channels
-    after = last_event_id(request.scope["headers"]) if asked.after is None else asked.after
+    # A browser that comes back asks the same address as at first, and says there what it has read.
+    after = last_event_id(request.scope["headers"]) or asked.after or 0
     render = partial(_rendered, asked.pose, asked.wanted, state.live.clock, name is None)
     attach = partial(channels.attach, name, (asked.pose, asked.wanted), render, after)
     return EventStream(state.streams, attach, gap_s=asked.gap_s)

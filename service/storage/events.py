@@ -7,6 +7,7 @@ Left out: what happened, and when it is written.
 
 import json
 from collections.abc import Sequence
+from contextlib import suppress
 from datetime import datetime
 from typing import Any
 
@@ -117,6 +118,9 @@ class SqlEvents(SqlStore):
     def close(self) -> None:
         """Let other processes tell that this one watches no more."""
         if self._alive is not None:
+            # A connection's end is noticed a little later: who starts just then would still see it.
+            with suppress(sa.exc.DBAPIError):
+                self._alive.execute(sa.select(sa.func.pg_advisory_unlock_all()))
             self._alive.invalidate()
             self._alive.close()
             self._alive = None

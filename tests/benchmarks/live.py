@@ -1,6 +1,6 @@
 """Live poses from input to screen: how late, and whether anything older ever follows the newest.
 
-    python -m tests.benchmarks.live [seconds]
+    python -m tests.benchmarks.live
 
 Asked, on two cores, one server process, client on the other core: one arm at 100 Hz to 200
 subscribers, and 50 arms at 20 Hz to 4 each, with p99 from input to screen below 50 ms and nothing
@@ -27,7 +27,7 @@ from websockets.asyncio.client import connect
 ROOT = Path(__file__).resolve().parents[2]
 SEQUENCE = re.compile(rb'"sequence":(\d+)')
 IDENTITY = re.compile(rb"^id: (\d+)", re.MULTILINE)
-SECONDS = float(sys.argv[1]) if len(sys.argv) > 1 else 10.0
+SECONDS = 10.0
 ARM = json.loads((ROOT / "service/demo/arms/housing-loader.json").read_text("utf-8"))
 ARM = {key: value for key, value in ARM.items() if key not in ("cell", "frames")}
 POSTURE = (25.0, -70.0, 95.0, 30.0, -40.0, 15.0)

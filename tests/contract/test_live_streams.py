@@ -138,6 +138,11 @@ def test_going_on_after_an_event(server: ServerProcess) -> None:
     with reading(port, f"/v1/arms/known/live/stream?after={newer}") as reader:
         newest = put(port, "known", 2, 0)
         assert next(reader.events())["id"] == str(newest)
+    # Who comes back asks the address of the beginning once more.
+    again = f"/v1/arms/known/live/stream?after={change}"
+    with reading(port, again, Last_Event_ID=str(newest)) as reader:
+        last = put(port, "known", 3, 0)
+        assert next(reader.events())["id"] == str(last)
 
 
 def test_the_newest_wins_for_a_reader_who_wants_few(server: ServerProcess) -> None:

@@ -19,9 +19,9 @@ from scipy.spatial.transform import Rotation
 
 from service.app import create_app
 from service.settings import Settings
-from tests.conftest import ServerProcess
+from tests.conftest import POSTGRES, ServerProcess
 from tests.contract.refusals import only_entry
-from tests.service.storage.conftest import POSTGRES, wipe
+from tests.service.storage.conftest import wipe
 
 pytestmark = pytest.mark.anyio
 

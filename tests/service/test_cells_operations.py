@@ -25,7 +25,8 @@ from service.settings import Settings
 from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import CellMoved, Head
 from service.wire.arms import ReadArm, read_arm
-from tests.service.storage.conftest import POSTGRES, wipe
+from tests.conftest import POSTGRES
+from tests.service.storage.conftest import wipe
 
 NOON = datetime(2026, 3, 4, 12, 0, 0, 5_000, tzinfo=UTC)
 STRAIGHT = {"form": "xyz-fixed", "values": [0, 0, 0]}

@@ -16,8 +16,8 @@ from service.storage.layouts import LAYOUTS, layout_of
 from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import Draft
 from service.storage.schema import METADATA
+from tests.conftest import POSTGRES
 
-POSTGRES = "ARMSPAN_TEST_POSTGRES"
 Drafts = Callable[..., Draft]
 
 

@@ -27,7 +27,8 @@ from service.storage.opening import open_storage
 from service.storage.ports import Head
 from service.storage.store import writing
 from service.wire.arms import read_arm
-from tests.service.storage.conftest import POSTGRES, wipe
+from tests.conftest import POSTGRES
+from tests.service.storage.conftest import wipe
 
 WRITTEN = json.loads((Path(__file__).parent / "data" / "layout_0001.json").read_text("utf-8"))
 
