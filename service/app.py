@@ -139,7 +139,8 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
         app.state.records = Records(opened.records, app.state.arms, version_here())
         taken_in.go_on()
         async with live_arms(app.state.arms) as live_ones:
-            app.state.live, app.state.channels = live_ones, Channels(live_ones)
+            app.state.live = live_ones
+            app.state.channels = Channels(live_ones, live_streams.removed)
             with watched_events(live_ones, opened.events, settings) as app.state.events:
                 yield
     finally:

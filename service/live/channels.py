@@ -14,6 +14,8 @@ from service.live.samples import Standing
 from service.slots import Slot
 
 Render = Callable[[LiveArm], bytes]
+Removed = Callable[[str, int], bytes]
+"""Tells that an arm of a name is there no more, and the number of that change."""
 
 _MADE_FOR_S = 0.05
 """So long an event is told to others as it is: the age in it would be wrong by more."""
@@ -26,10 +28,11 @@ class Channel:
     ----------
     name : of the arm; None for all.
     render : makes the event of an arm as it stands.
+    removed : makes that of one that is there no more, for who follows all.
     """
 
-    def __init__(self, arms: LiveArms, name: str | None, render: Render) -> None:
-        self._arms, self._name, self._render = arms, name, render
+    def __init__(self, arms: LiveArms, name: str | None, render: Render, removed: Removed) -> None:
+        self._arms, self._name, self._render, self._removed = arms, name, render, removed
         self._slots: list[Slot] = []
         self._made: dict[str, tuple[int, float, bytes]] = {}
         self._events: dict[str, Callable[[], bytes]] = {}
@@ -59,8 +62,9 @@ class Channel:
         if standing is None:
             self._made.pop(name, None)
             self._events.pop(name, None)
-            for slot in self._slots if self._name is not None else ():
-                slot.end()
+            gone = partial(self._removed, name, self._arms.change)
+            for slot in self._slots:
+                slot.put(name, gone) if self._name is None else slot.end()
             return
         event = self._event_of(name)
         for slot in self._slots:
@@ -86,8 +90,8 @@ class Channel:
 class Channels:
     """The channels that somebody listens to, by what was asked for."""
 
-    def __init__(self, arms: LiveArms) -> None:
-        self._arms = arms
+    def __init__(self, arms: LiveArms, removed: Removed) -> None:
+        self._arms, self._removed = arms, removed
         self._open: dict[Hashable, Channel] = {}
 
     def __len__(self) -> int:
@@ -101,7 +105,7 @@ class Channels:
         key = (name, choice)
         channel = self._open.get(key)
         if channel is None:
-            channel = self._open[key] = Channel(self._arms, name, render)
+            channel = self._open[key] = Channel(self._arms, name, render, self._removed)
         channel.listen(slot, after)
 
         def leave() -> None:

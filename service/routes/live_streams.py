@@ -62,7 +62,8 @@ _STREAM = (
 )
 _OF_ALL = (
     " Of each arm the newest wins for itself, and `rate` is that of each; on one level its name "
-    "stands last, as `arm`."
+    "stands last, as `arm`. One that is no longer stored is told once, as an event `removed` with "
+    "its name as `arm`."
 )
 
 
@@ -149,6 +150,11 @@ def _stream(request: Request, name: str | None, asked: StreamQuestion) -> Respon
     render = partial(_rendered, asked.pose, asked.wanted, state.live.clock, name is None)
     attach = partial(channels.attach, name, (asked.pose, asked.wanted), render, after)
     return EventStream(state.streams, attach, gap_s=asked.gap_s)
+
+
+def removed(name: str, change: int) -> bytes:
+    """Return the event that tells of an arm that is stored no more."""
+    return event("removed", change, json_bytes({"arm": name}))
 
 
 def _rendered(

@@ -50,5 +50,10 @@ def test_new_arms_come_last_and_removed_ones_leave_a_gap(
         client.put("/v1/arms/a-arm/joints", json=body).raise_for_status()
         screen.until("document.querySelectorAll('#cards > li').length === 3")
         assert screen.run(PLACES) == ["-", "d-arm", "a-arm"]
+        # Of an arm that told where it is, its end is told too.
+        client.delete("/v1/arms/a-arm", headers={"if-match": "*"}).raise_for_status()
+        screen.until("!document.querySelector('[data-arm=a-arm]')")
+        assert screen.run(PLACES) == ["-", "d-arm", "-"]
+        client.post("/v1/arms", json={**PATTERN, "name": "a-arm"}).raise_for_status()
     screen.open(f"{server.url}/", Look(1280, 800), ready=READY)
     assert screen.run(PLACES) == ["a-arm", "d-arm"]

@@ -83,6 +83,13 @@ def put(port: int, arm: str, *joints: float, **more: Any) -> int:
     return change
 
 
+def remove(port: int, arm: str) -> None:
+    connection = HTTPConnection("127.0.0.1", port, timeout=10)
+    connection.request("DELETE", f"/v1/arms/{arm}", headers={"if-match": "*"})
+    assert connection.getresponse().status == 204
+    connection.close()
+
+
 def with_arm(server: ServerProcess, name: str) -> int:
     """Have an arm stored and return the port."""
     status, told = ask(server.port, "POST", "/v1/arms", {**ARM, "name": name})
@@ -172,6 +179,13 @@ def test_all_arms_in_one_stream(server: ServerProcess) -> None:
         told = [next(events) for _ in range(2)]
         assert [one["data"]["arm"]["name"] for one in told] == ["all-a", "all-b"]
         assert [int(one["id"]) for one in told] == changes
+        with_arm(server, "all-c")
+        newest = put(port, "all-c", 0, 0)
+        assert int(next(events)["id"]) == newest
+        remove(port, "all-c")
+        last = next(events)
+        assert (last["event"], last["data"]) == ("removed", {"arm": "all-c"})
+        assert int(last["id"]) > newest
     with reading(port, f"/v1/live/stream?after={before}&format=flat") as reader:
         events = reader.events()
         flat = {data["arm"]: data for data in (next(events)["data"] for _ in range(2))}

@@ -19,6 +19,10 @@ class Told:
         return b"%d;" % live.standing.change
 
 
+def gone(name: str, change: int) -> bytes:
+    return b"%b gone %d;" % (name.encode(), change)
+
+
 def listening(
     channels: Channels, name: str | None, choice: object, told: Told, after: int = 0
 ) -> tuple[Slot, Callable[[], None]]:
@@ -28,7 +32,7 @@ def listening(
 
 def test_made_once_for_all_who_ask_alike() -> None:
     bench, told, other = Bench(), Told(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     bench.feed(0, 0)
     alike = [listening(channels, "two", "a", told) for _ in range(200)]
     slot, leave = listening(channels, "two", "b", other)
@@ -50,7 +54,7 @@ def test_made_once_for_all_who_ask_alike() -> None:
 
 def test_an_event_told_later_is_made_anew_for_its_age() -> None:
     bench, told = Bench(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     bench.feed(0, 0, period_s=100.0)
     first, _ = listening(channels, "two", "a", told)
     late, _ = listening(channels, "two", "a", told)
@@ -66,7 +70,7 @@ def test_an_event_told_later_is_made_anew_for_its_age() -> None:
 
 def test_who_knows_the_newest_is_told_the_next() -> None:
     bench, told = Bench(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     change = bench.feed(0, 0).standing.change
     slot, _ = listening(channels, "two", "a", told, change)
     assert not slot.is_filled
@@ -77,7 +81,7 @@ def test_who_knows_the_newest_is_told_the_next() -> None:
 def test_who_knows_what_never_was_is_told_how_it_stands() -> None:
     """Numbers of a former process may be higher: its clock was set, or it was fed for long."""
     bench, told = Bench(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     change = bench.feed(0, 0).standing.change
     slot, _ = listening(channels, "two", "a", told, change + 1)
     assert slot.taken() == b"%d;" % change
@@ -85,21 +89,26 @@ def test_who_knows_what_never_was_is_told_how_it_stands() -> None:
 
 def test_of_all_arms_the_newest_of_each() -> None:
     bench, told = Bench(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     slot, leave = listening(channels, None, "a", told)
     for number in range(5):
         bench.feed(number / 10, 0)
     assert slot.taken().count(b";") == 1
+    bench.feed(0, 0)
+    bench.arms.forget("two")
+    assert slot.taken() == b"two gone %d;" % bench.arms.change
+    bench.arms.forget("two")
+    assert not slot.is_filled
     bench.arms.forget("two")
     bench.feed(0, 0)
-    assert slot.is_filled
+    assert slot.taken() == b"%d;" % bench.arms.change
     assert not slot.ended
     leave()
 
 
 def test_an_arm_that_is_gone_ends_its_streams() -> None:
     bench, told = Bench(), Told()
-    channels = Channels(bench.arms)
+    channels = Channels(bench.arms, gone)
     bench.feed(0, 0)
     slot, leave = listening(channels, "two", "a", told)
     bench.arms.forget("two")

@@ -86,7 +86,7 @@ function listen() {
   link.stop();
   const path = withQuery("/v1/live/stream", { nearest: 1, rate: 1000 / GAP_MS, frame: choice.frame, units: choice.units });
   const stop = follow(path, {
-    event: (_, data) => take(JSON.parse(data)),
+    event: (name, data) => (name === "removed" ? list() : take(JSON.parse(data))),
     gone: (since) => {
       link.goneSince = since;
       gone(since);
