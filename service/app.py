@@ -132,7 +132,8 @@ async def _lifespan(app: FastAPI) -> AsyncIterator[None]:
                 demo.seed(app.state.cells, app.state.arms)
             except ServiceError as error:
                 app.state.notices.append(f"no demonstration cell: {error.say}")
-        pool = pool_of(settings.cluster, settings.survey_workers)
+        is_busy = app.state.metrics.is_asked
+        pool = pool_of(settings.cluster, settings.survey_workers, is_busy)
         kept_for = settings.surveys_days
         taken_in = Surveys(opened.surveys, app.state.arms, pool, version_here(), days=kept_for)
         app.state.surveys = taken_in

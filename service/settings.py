@@ -33,7 +33,8 @@ class Settings:
     connections : connections and requests served at once; more are answered 503.
     log_level : one of LOG_LEVELS.
     cluster : address of a scheduler that surveys are worked on by; empty: processes of our own.
-    survey_workers : processes for surveys; 0: one for each processor.
+    survey_workers : processes for surveys; 0: one for each processor. One of several rests while
+        other questions come.
     surveys_days : days for which surveys that are over are kept; 0: until they are removed.
     events_kept : events of arms that are kept; the oldest that are over go first.
     events_days : days for which they are kept.

@@ -5,6 +5,7 @@ been nothing to do for a while. Left out: what they are given (runner.py).
 """
 
 import os
+from collections.abc import Callable
 from concurrent.futures import Executor, ProcessPoolExecutor
 from typing import Any, Protocol
 
@@ -13,6 +14,9 @@ from service.own_processes import NotingContext
 from service.surveys import worker
 
 ANSWERS_WITHIN_S = 3
+
+_AHEAD = 2
+"""Chunks in hand for each process, so that none waits for the store."""
 
 
 class Pool(Protocol):
@@ -27,29 +31,42 @@ class Pool(Protocol):
         """
 
     @property
-    def width(self) -> int:
-        """How many are worked on at once."""
+    def room(self) -> int:
+        """How many chunks it is to have in hand now."""
 
     def stop(self) -> None:
         """End all work at once; the next ``executor`` starts anew."""
 
 
 class OwnProcesses:
-    """Processes of this machine, so many; 0: one for each processor."""
+    """Processes of this machine.
 
-    def __init__(self, count: int = 0) -> None:
-        self.width = count or os.cpu_count() or 1
+    Parameters
+    ----------
+    count : how many; 0: one for each processor.
+    is_busy : whether this machine is asked for more than surveys just now. Then one of several
+        processes rests: low priority gives the others' processor away at once, but not its caches.
+    """
+
+    def __init__(self, count: int = 0, is_busy: Callable[[], bool] = lambda: False) -> None:
+        self._count, self._is_busy = count or os.cpu_count() or 1, is_busy
         self._pool: ProcessPoolExecutor | None = None
         self._own = NotingContext()
 
     def executor(self) -> Executor:
         """See ``Pool.executor``."""
         if self._pool is None:
-            self._pool = ProcessPoolExecutor(self.width, self._own, initializer=worker.start)
+            self._pool = ProcessPoolExecutor(self._count, self._own, initializer=worker.start)
             # One process is made for each task that finds none idle.
-            for _ in range(self.width):
+            for _ in range(self._count):
                 self._pool.submit(worker.identity)
         return self._pool
+
+    @property
+    def room(self) -> int:
+        """See ``Pool.room``."""
+        # None ahead: the process that is to rest would take it.
+        return self._count - 1 if self._count > 1 and self._is_busy() else _AHEAD * self._count
 
     def stop(self) -> None:
         """See ``Pool.stop``."""
@@ -64,7 +81,7 @@ class Cluster:
     def __init__(self, address: str) -> None:
         self._address = address
         self._client: Any = None
-        self.width = 1
+        self.room = _AHEAD
 
     def executor(self) -> Executor:
         """See ``Pool.executor``."""
@@ -78,7 +95,7 @@ class Cluster:
         try:
             if self._client is None:
                 self._client = Client(self._address, timeout=ANSWERS_WITHIN_S)
-            self.width = max(sum(self._client.nthreads().values()), 1)
+            self.room = _AHEAD * max(sum(self._client.nthreads().values()), 1)
             executor: Executor = self._client.get_executor(pure=False)
             return executor
         except (OSError, ValueError) as error:
@@ -95,6 +112,6 @@ class Cluster:
         self._client = None
 
 
-def pool_of(cluster: str, processes: int) -> Pool:
+def pool_of(cluster: str, processes: int, is_busy: Callable[[], bool]) -> Pool:
     """Return the cluster at an address, or where there is none so many processes of our own."""
-    return Cluster(cluster) if cluster else OwnProcesses(processes)
+    return Cluster(cluster) if cluster else OwnProcesses(processes, is_busy)

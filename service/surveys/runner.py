@@ -45,9 +45,6 @@ CHUNK_S = 0.2
 """Of work in a chunk: its way to the process and into the store takes a fiftieth of that."""
 
 MOST_IN_CHUNK = 64
-_AHEAD = 2
-"""Chunks in hand for each process, so that none waits for the store."""
-
 _ENDS_WITHIN_S = 0.7
 """A chunk of a cancelled survey, else its process is ended: a cancel takes a second at most."""
 
@@ -222,7 +219,7 @@ class Runner:
         chunks: "_Chunks",
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
     ) -> None:
-        while len(in_hand) < _AHEAD * self._pool.width and (pieces := chunks.next()):
+        while len(in_hand) < self._pool.room and (pieces := chunks.next()):
             try:
                 future = executor.submit(worker.make, survey.kind, survey.id, setup, pieces)
             except BrokenExecutor:

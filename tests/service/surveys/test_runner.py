@@ -59,7 +59,7 @@ class DyingExecutor(Executor):
 class ThreadsPool:
     """Makes pieces in two threads, after so many executors whose processes die."""
 
-    width = 2
+    room = 4
 
     def __init__(self) -> None:
         self.deaths = self.started = 0
