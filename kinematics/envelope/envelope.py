@@ -10,7 +10,7 @@ Source: as the modules that answer. Not covered: collisions, orientations at the
 import numpy as np
 
 from kinematics.arm import Arm
-from kinematics.envelope.inquiry import Inquiry, inquiry_of
+from kinematics.envelope.inquiry import Finds, Inquiry, at_once, inquiry_of
 from kinematics.envelope.known_structures import slides, upright
 from kinematics.envelope.level import level
 from kinematics.envelope.sampled_views import Fineness
@@ -30,6 +30,7 @@ def envelope_of(
     point: str = TOOL,
     resolution: float | None = None,
     most_cells: int = MOST_CELLS,
+    finds: Finds = at_once,
 ) -> Envelope:
     """Return how far an arm reaches within its travel.
 
@@ -41,6 +42,7 @@ def envelope_of(
     resolution : m, of views that are sampled; left out, a 64th of what is reached. Exact views
         have none.
     most_cells : along what is reached: a finer resolution is refused (``UnfitResolution``).
+    finds : what finds that which is asked for on the way.
 
     Raises
     ------
@@ -61,7 +63,7 @@ def envelope_of(
     if point == WRIST:
         tool_in_flange = wrist_in_flange(arm)
     fineness = Fineness(resolution, most_cells)
-    inquiry = inquiry_of(arm, tool_in_flange, working=working, fineness=fineness)
+    inquiry = inquiry_of(arm, tool_in_flange, working=working, fineness=fineness, finds=finds)
     views = (slides if inquiry.axis is None else upright)(inquiry)
     views = views or level(inquiry) or searched(inquiry)
     turn = _turn(inquiry, views.extremes[1])

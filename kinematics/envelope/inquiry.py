@@ -17,15 +17,17 @@ from kinematics.envelope.draws import AskedVolume
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.pair_of_arm import PointMotion, point_motion
 from kinematics.envelope.plan_axes import PlanAxes, plan_axes
+from kinematics.envelope.proved_radii import AskedRadii, ProvedRadii
 from kinematics.envelope.sampled_views import AskedView, Fineness, SampledView
-from kinematics.envelope.search import Search, search_of
+from kinematics.envelope.search import AskedExtremes, Search, search_of
 from kinematics.envelope.section import turn_of, turns_alone
 from kinematics.envelope.shapes import COORDINATES, SECTION, Extreme
+from kinematics.envelope.tolerances import SAME_PLACE
 from kinematics.number_checks import FloatArray
 from kinematics.reach.sample_summary import FirstAxis, first_axis
 
-VOLUME = "volume"
-"""What a volume that is drawn is called beside the kinds of views."""
+VOLUME, EXTREMES, RADII = "volume", "extremes", "radii"
+"""What else is asked is called beside the kinds of views."""
 
 
 class Asked(Protocol):
@@ -33,7 +35,8 @@ class Asked(Protocol):
 
     Attributes
     ----------
-    pieces : how many; places : asked for in all of them, about.
+    pieces : how many, none of what follows from what was found before; places : asked for in all
+        of them, about.
     """
 
     pieces: int
@@ -50,7 +53,8 @@ class Asked(Protocol):
 
 
 Finds = Callable[[str, Asked], Any]
-"""Finds what is asked, by its name."""
+"""Finds what is asked, by its name; each is asked once at most, in an order that does not depend on
+what is found."""
 
 
 def at_once(_name: str, asked: Asked) -> Any:
@@ -109,7 +113,7 @@ class Inquiry:
         return found
 
     def drawn(self, count: int) -> Measure:
-        """Return the volume, of so many places drawn."""
+        """Return the volume, of so many places drawn: a number known before anything is found."""
         space, seeker = self.search.along(np.eye(3))
         found: Measure = self.finds(VOLUME, AskedVolume(seeker, self.search.samples(space), count))
         return found
@@ -129,9 +133,20 @@ class Inquiry:
     @cached_property
     def searched_extremes(self) -> tuple[Extreme, ...]:
         """Least and greatest of each measure, by search."""
-        if self.axis is None:
-            return self.search.extremes(("x", "y", "z"), self.search.along(np.eye(3))[0])
-        return self.search.extremes(COORDINATES[SECTION], self.search.about(self.axis)[0])
+        names: tuple[str, ...] = ("x", "y", "z")
+        view = self.search.along(np.eye(3))[0]
+        if self.axis is not None:
+            names, view = COORDINATES[SECTION], self.search.about(self.axis)[0]
+        found: tuple[Extreme, ...] = self.finds(EXTREMES, AskedExtremes(self.search, names, view))
+        return found
+
+    def proved_radii(self, reached: tuple[float, float]) -> ProvedRadii:
+        """Return what is proved of the least and the greatest radius that are reached."""
+        assert self.axis is not None
+        slack = SAME_PLACE * self.search.length
+        asked = AskedRadii(self.motion, self.axis, reached, slack)
+        found: ProvedRadii = self.finds(RADII, asked)
+        return found
 
     def extremes_at(self, postures: FloatArray) -> tuple[Extreme, ...]:
         """Return extremes of radius and height from postures (4, joints) that are known to be them.

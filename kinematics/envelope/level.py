@@ -24,7 +24,7 @@ from kinematics.envelope.level_links import MOST_LINKS, LevelLinks
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.pair_of_arm import pair_region_of
 from kinematics.envelope.pair_views import plan_of_pair
-from kinematics.envelope.proved_radii import ProvedRadii, proved_radii
+from kinematics.envelope.proved_radii import ProvedRadii
 from kinematics.envelope.ring import ring_view
 from kinematics.envelope.shapes import PLAN, SECTION, Curve, Extreme, View, Views
 from kinematics.envelope.tolerances import LINKS_ROUNDING, SAME_PLACE
@@ -116,18 +116,16 @@ def _radii(
     ----------
     across : joints that move the point level; heights : (2, joints), lowest and highest posture.
     """
-    motion, slack = inquiry.motion, SAME_PLACE * inquiry.search.length
     postures = _nearest_and_farthest(inquiry, across)
     if postures is not None:
         extremes = inquiry.extremes_at(np.concatenate([postures, heights]))
         near, far, off = extremes[0].value, extremes[1].value, _rounding(inquiry)
         return ProvedRadii(near, far, max(near - off, 0.0), far + off), extremes
-    assert inquiry.axis is not None
     found = inquiry.searched_extremes[:2]
     searched = np.stack([one.joint_values for one in found])
     extremes = inquiry.extremes_at(np.concatenate([searched, heights]))
     reached = extremes[0].value, extremes[1].value
-    return proved_radii(motion, inquiry.axis, reached, slack), extremes
+    return inquiry.proved_radii(reached), extremes
 
 
 def _nearest_and_farthest(inquiry: Inquiry, across: tuple[int, ...]) -> FloatArray | None:

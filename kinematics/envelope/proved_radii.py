@@ -11,6 +11,7 @@ of a point by joints s <= r is no longer than its distance from axis r (1 for a 
 slides); best first as in Land and Doig 1960. Not covered: rounding, some 1e-15 of the arm.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -62,6 +63,41 @@ class ProvedRadii:
         0.25
         """
         return None if self.gap <= slack * (1.0 + _ROUNDING) else self.gap
+
+
+class AskedRadii:
+    """The proof of radii that are reached: it follows from these alone, and has no pieces.
+
+    Examples
+    --------
+    >>> from kinematics.arm import Arm
+    >>> from kinematics.envelope.inquiry import inquiry_of
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> rows = [Row(JointKind.REVOLUTE, a, 0.0, 0.0, 0.0) for a in (0.5, 0.3)]
+    >>> inquiry = inquiry_of(Arm("flat", Table(Convention.STANDARD, tuple(rows))), np.eye(4))
+    >>> asked = AskedRadii(inquiry.motion, inquiry.axis, (0.2, 0.8), 1e-9)
+    >>> asked.told([]).gap < 1e-9, asked.unasked().gap
+    (True, 0.0)
+    """
+
+    pieces, places = 0, 0
+
+    def __init__(
+        self, motion: PointMotion, axis: FirstAxis, reached: tuple[float, float], slack: float
+    ) -> None:
+        self._motion, self._axis, self._reached, self._slack = motion, axis, reached, slack
+
+    def piece(self, number: int) -> None:
+        """There is none."""
+        raise IndexError(number)
+
+    def told(self, _pieces: Sequence[None]) -> ProvedRadii:
+        """Return what is proved of the radii reached."""
+        return proved_radii(self._motion, self._axis, self._reached, self._slack)
+
+    def unasked(self) -> ProvedRadii:
+        """Return the radii as if they were proved."""
+        return ProvedRadii(*self._reached, *self._reached)
 
 
 def proved_radii(

@@ -7,8 +7,9 @@ Source: as those. Not covered: reach narrower than the resolution.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
+from typing import NamedTuple
 
 import numpy as np
 
@@ -77,10 +78,22 @@ class Fineness:
 
 @dataclass(frozen=True)
 class SampledView:
-    """A view, and the integral of its first coordinate over what is reached, m^3."""
+    """A view, and the integral of its first coordinate over what is reached, m^3.
+
+    ``finer`` is how many steps of its grid are one of the usual grid, at least 1: it is known
+    before anything is found.
+    """
 
     view: View
     moment: Measure
+    finer: float = 1.0
+
+
+class Stripe(NamedTuple):
+    """What a piece of a view tells: its chords, and the places of the whole grid, both ways."""
+
+    chords: Chords
+    shape: tuple[int, ...]
 
 
 class AskedView:
@@ -99,8 +112,8 @@ class AskedView:
 
     Attributes
     ----------
-    step : m, of the grid asked for; pieces : how many stripes it has; places : of the grid, in all,
-        as far as samples tell.
+    size : m, of what is reached, as far as samples tell; step : m, of the grid asked for.
+    pieces : how many stripes it has; places : of the grid, in all, as far as samples tell.
 
     Raises
     ------
@@ -134,9 +147,10 @@ class AskedView:
         self._seeker, self._samples = seeker, samples
         self._kind, self._directions = kind, directions
         self._least, self._most = samples.places.min(axis=0), samples.places.max(axis=0)
-        self._size = float((self._most - self._least).max())
-        self.step = fineness.step(self._size)
-        self._first_step = max(self.step, self._size / DEFAULT_CELLS)
+        self.size = float((self._most - self._least).max())
+        self.step = fineness.step(self.size)
+        self._first_step = max(self.step, self.size / DEFAULT_CELLS)
+        self._finer = max(self.size / DEFAULT_CELLS / self.step, 1.0)
         across, along = (np.ceil((self._most - self._least) / self.step) + 2.0).tolist()
         self._is_finer = self.step < self._first_step
         self.pieces = int(np.ceil(across / _STRIPE)) if self._is_finer else 1
@@ -172,11 +186,11 @@ class AskedView:
     def _seeds(self) -> Samples:
         return self._samples.with_those_of(self._first)
 
-    def piece(self, number: int) -> Chords:
+    def piece(self, number: int) -> Stripe:
         """Return the chords of a stripe; they do not depend on any other."""
         seeker, shown = self._seeker, self._samples.places
         if not self._is_finer:
-            return chords_of(self._first, seeker, shown)
+            return Stripe(chords_of(self._first, seeker, shown), self._shape)
         columns, rows = self._shape
         begin, end = (part * (columns - 1) // self.pieces for part in (number, number + 1))
         stripe = self._part(begin, end - begin + 1, rows)
@@ -186,25 +200,28 @@ class AskedView:
             stripe.reached[side], stripe.off[side] = column.reached[0], column.off[0]
             stripe.joint_values[side], stripe.settled[side] = column.joint_values[0], True
         fill(stripe, seeker, self._seeds, self._first_step)
-        return chords_of(stripe, seeker, shown, (begin == 0, end == columns - 1))
+        chords = chords_of(stripe, seeker, shown, (begin == 0, end == columns - 1))
+        return Stripe(chords, self._shape)
 
     def _part(self, first: int, columns: int, rows: int) -> Grid:
         joints = self._samples.joint_values.shape[1]
         return Grid(self._first.origin, self.step, (columns, rows), joints, first=(first, 0))
 
-    def told(self, pieces: Sequence[Chords]) -> SampledView:
+    def told(self, pieces: Sequence[Stripe]) -> SampledView:
         """Return the view that all pieces make, in their order."""
-        found = joined_outlines(pieces, self.step, self._shape)
+        chords = [one.chords for one in pieces]
+        found = joined_outlines(chords, self.step, pieces[0].shape)
         if not found.curves:
             return self.unasked()
         # Bent chords are two to a step: a curve of the reach's own size is this far from them.
-        chord = self.step * self.step / (8.0 * self._size)
+        chord = self.step * self.step / (8.0 * self.size)
         view = View(self._kind, found.curves, found.area, self.step, chord, self._directions)
-        return SampledView(view, found.moment)
+        return SampledView(view, found.moment, self._finer)
 
     def unasked(self) -> SampledView:
         """Return what is known without asking: a box that holds it, half of it reached."""
-        return _box_around(self._least, self._most, self._kind, self._directions, self.step)
+        box = _box_around(self._least, self._most, self._kind, self._directions, self.step)
+        return replace(box, finer=self._finer)
 
 
 _STRIPE = 32

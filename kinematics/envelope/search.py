@@ -7,6 +7,7 @@ of turning ones in radians: both then move the point about as far.
 Source: as samples.py and descents.py. Not covered: what is asked (sampled_views.py, draws.py).
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -77,6 +78,22 @@ class Search:
         )
         return tuple(replace(one, joint_values=self._in_travel(one.joint_values)) for one in found)
 
+    def sampled_extremes(self, names: tuple[str, ...], view: PointView) -> tuple[Extreme, ...]:
+        """Return what the postures alone tell of them, which falls short."""
+        places, positions = view(self.joint_values)[0], self.samples(self.along(np.eye(3))[0])
+        best = [(int(c.argmin()), int(c.argmax())) for c in places.T]
+        return tuple(
+            Extreme(
+                name,
+                greatest,
+                float(places[ends[greatest], row]),
+                self.joint_values[ends[greatest]],
+                positions.places[ends[greatest]],
+            )
+            for row, (name, ends) in enumerate(zip(names, best, strict=True))
+            for greatest in (False, True)
+        )
+
     def _in_travel(self, joint_values: FloatArray) -> FloatArray:
         """Return a posture with whole turns taken off that lead out of travel."""
         beyond = np.isinf(self.free.lower)
@@ -124,3 +141,36 @@ def search_of(arm: Arm, tool_in_flange: FloatArray, *, working: bool = False) ->
         scales=scales,
         joint_values=samples.piece(0, POSTURES),
     )
+
+
+class AskedExtremes:
+    """The least and the greatest of each coordinate of a view, in a piece.
+
+    Examples
+    --------
+    >>> from kinematics.table import Convention, JointKind, Row, Table
+    >>> arm = Arm("one", Table(Convention.STANDARD, (Row(JointKind.REVOLUTE, 0.4, 0, 0, 0),)))
+    >>> search = search_of(arm, np.eye(4))
+    >>> asked = AskedExtremes(search, ("x",), search.along(np.eye(3)[:1])[0])
+    >>> [round(one.value, 9) for one in asked.told([asked.piece(0)])]
+    [-0.4, 0.4]
+    >>> [round(one.value, 3) for one in asked.unasked()]
+    [-0.4, 0.4]
+    """
+
+    pieces, places = 1, 0
+
+    def __init__(self, search: Search, names: tuple[str, ...], view: PointView) -> None:
+        self._search, self._names, self._view = search, names, view
+
+    def piece(self, _number: int) -> tuple[Extreme, ...]:
+        """Return all of them."""
+        return self._search.extremes(self._names, self._view)
+
+    def told(self, pieces: Sequence[tuple[Extreme, ...]]) -> tuple[Extreme, ...]:
+        """Return what the piece tells."""
+        return pieces[0]
+
+    def unasked(self) -> tuple[Extreme, ...]:
+        """Return what sampled postures tell."""
+        return self._search.sampled_extremes(self._names, self._view)

@@ -16,11 +16,10 @@ from kinematics.envelope.draws import between
 from kinematics.envelope.flat_views import flat_view
 from kinematics.envelope.inquiry import Inquiry
 from kinematics.envelope.measures import Measure
-from kinematics.envelope.proved_radii import proved_radii
 from kinematics.envelope.ring import ring_view
 from kinematics.envelope.sampled_views import SampledView
 from kinematics.envelope.shapes import PLAN, SECTION, SIDE, View, Views
-from kinematics.envelope.tolerances import DEFAULT_CELLS, PLACES_DRAWN, SAME_PLACE
+from kinematics.envelope.tolerances import PLACES_DRAWN, SAME_PLACE
 
 
 def searched(inquiry: Inquiry) -> Views:
@@ -48,10 +47,9 @@ def searched(inquiry: Inquiry) -> Views:
 def _plan(inquiry: Inquiry) -> View:
     search, axes = inquiry.search, inquiry.axes
     if inquiry.turns_whole:
-        assert inquiry.axis is not None
         near, far = inquiry.searched_extremes[:2]
-        slack, reached = SAME_PLACE * search.length, (near.value, far.value)
-        return ring_view(axes, proved_radii(inquiry.motion, inquiry.axis, reached, slack), slack)
+        radii = inquiry.proved_radii((near.value, far.value))
+        return ring_view(axes, radii, SAME_PLACE * search.length)
     flat = flat_view(search, search.along(axes.directions)[0], PLAN, axes.directions)
     if flat is not None:
         return flat
@@ -80,17 +78,9 @@ def _volume(inquiry: Inquiry, section: SampledView) -> Measure:
     moment, whole = section.moment, 2.0 * np.pi
     if turn is not None and turn >= whole:
         return Measure(whole * moment.value, whole * moment.error_bound)
-    drawn = inquiry.drawn(_places_drawn(section.view))
+    # More with a finer grid, in about the time that it takes.
+    drawn = inquiry.drawn(int(PLACES_DRAWN * section.finer**1.5))
     if turn is None:
         return drawn
     least = turn * (moment.value - moment.error_bound)
     return between(drawn, least, whole * (moment.value + moment.error_bound))
-
-
-def _places_drawn(view: View) -> int:
-    """Return how many places to draw: more with a finer grid, in about the time that it takes."""
-    if view.resolution is None:
-        return PLACES_DRAWN
-    size = float(np.ptp(view.box, axis=0).max())
-    finer = max(size / DEFAULT_CELLS / view.resolution, 1.0)
-    return int(PLACES_DRAWN * finer**1.5)

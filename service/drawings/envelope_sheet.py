@@ -1,14 +1,16 @@
 """The envelope of an arm on a sheet of A4: section and plan to scale, dimensions, title block.
 
 Idea: the largest scale of ISO 5455 at which both views have room is taken, the views above one
-another as first-angle projection has them, or the section beside the plan, which its cutting plane
-allows anywhere (ISO 128-3), where that gives a larger scale. Left out: how envelopes are found.
+another as first-angle projection has them, or the section beside the plan where that gives a larger
+scale. A section may stand anywhere, for its cutting plane names it; the plan beside it stands where
+first-angle projection has a view from the left, and so a reference arrow and its letter tell from
+where it is seen (ISO 128-3). Left out: how envelopes are found.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
-from kinematics.envelope.shapes import SECTION, SIDE, Envelope
+from kinematics.envelope.shapes import SIDE, Envelope
 from service.convert import Units
 from service.drawings.boxes import Box
 from service.drawings.envelope_words import (
@@ -41,6 +43,9 @@ FRAME = Box(20.0, 10.0, 287.0, 200.0)
 
 _CLEAR, _APART = 2.0, 6.0
 """From the frame to the views, and between them, mm."""
+
+_ARROW = "B"
+"""The letter of the reference arrow: A is that of the cutting plane."""
 
 _MOST_LINES = 13
 """Of sentences beside the title block: more are in the answer as JSON."""
@@ -102,6 +107,8 @@ def _laid_out(
         plan = figure_of_plan(envelopes, scale.mm_per_metre, numbers, turns)
         layout = _above(section, plan, scale, room)
         if layout is None:
+            section = figure_of_section(envelopes, scale.mm_per_metre, numbers, _ARROW)
+            plan = figure_of_plan(envelopes, scale.mm_per_metre, numbers, turns, _ARROW)
             layout = _beside(section, plan, scale, room)
         if layout is not None:
             return layout
@@ -125,13 +132,7 @@ def _above(section: Figure, plan: Figure, scale: Scale, room: Box) -> _Layout | 
 
 
 def _beside(section: Figure, plan: Figure, scale: Scale, room: Box) -> _Layout | None:
-    """Return the section left of the plan; None where there is no room.
-
-    Where it is no section but a view, an arrow tells from where the other is seen.
-    """
-    if section.kind != SECTION:
-        section = replace(section, arrow="B")
-        plan = replace(plan, titles=("VIEW B", "from above, x and y of the base"))
+    """Return the section left of the plan; None where there is no room."""
     boxes = (section.box, plan.box)
     widths = [box.right - box.left for box in boxes]
     heights = [box.bottom - box.top for box in boxes]

@@ -15,6 +15,7 @@ from service.drawings.boxes import Box
 from service.drawings.dimensions import Dimension, in_lanes
 from service.drawings.figures import (
     ARROW,
+    AXIS,
     BESIDE_WORDS,
     BEYOND,
     BOLD,
@@ -36,9 +37,14 @@ _TITLE = 7.5
 
 
 def figure_of_section(
-    envelopes: Sequence[Envelope], mm_per_metre: float, numbers: Numbers
+    envelopes: Sequence[Envelope], mm_per_metre: float, numbers: Numbers, arrow: str = ""
 ) -> Figure:
-    """Return the section through axis 1, or the view from the front of an arm without one."""
+    """Return the section through axis 1, or the view from the front of an arm without one.
+
+    Parameters
+    ----------
+    arrow : the letter of an arrow from above, for a plan that stands beside it.
+    """
     views = [envelope.section for envelope in envelopes]
     kind = views[0].kind
     outlines = _outlines(envelopes, views, np.zeros(2), mm_per_metre)
@@ -48,9 +54,25 @@ def figure_of_section(
         if kind == SIDE
         else ("SECTION A\u2013A", "radius about axis 1, height from the base")
     )
-    return _figure(
+    laid = _figure(
         kind, titles, outlines, envelopes, (across, upright), mm_per_metre, numbers, (0.0, 0.0)
     )
+    return _with_arrow(laid, arrow) if arrow else laid
+
+
+def _with_arrow(figure: Figure, letter: str) -> Figure:
+    """Return a figure with an arrow from above, and room for it."""
+    inner, right = figure.inner, 1.5 + width_of(letter, NORMAL)
+    # The word of the axis, or the upward direction of the base where that is higher, stay free.
+    taken = (-1.0, BESIDE_WORDS + width_of(AXIS, SMALL))
+    if figure.kind != SECTION:
+        low = figure.base[1] - ARROW - 3.0
+        taken = (figure.base[0] - 3.0, figure.base[0] + ARROW + 4.0) if low < inner.top else (0, 0)
+    middle = 0.5 * (inner.left + inner.right)
+    if taken[0] - right < middle < taken[1] + 1.0:
+        middle = taken[1] + 1.0
+    box = Box(middle - 1.0, figure.box.top, middle + right, figure.box.bottom)
+    return replace(figure, arrow=letter, arrow_at=middle, box=figure.box.joined(box))
 
 
 def figure_of_plan(
@@ -58,15 +80,16 @@ def figure_of_plan(
     mm_per_metre: float,
     numbers: Numbers,
     turns: Sequence[TurnTold],
+    arrow: str = "",
 ) -> Figure:
-    """Return the view from above."""
+    """Return the view from above; ``arrow`` is the letter of the arrow that tells so."""
     first = envelopes[0]
     centre = plan_centre(first)
     outlines = _outlines(envelopes, [one.plan for one in envelopes], centre, mm_per_metre)
     right, up = (-centre * mm_per_metre).tolist()
     upright = "y" if first.axis is None else ""
     seen = "x and y of the base" if first.axis is None else "along axis 1"
-    titles = ("VIEW FROM ABOVE", seen)
+    titles = (f"VIEW {arrow}", f"from above, {seen}") if arrow else ("VIEW FROM ABOVE", seen)
     laid = _figure(
         first.plan.kind,
         titles,
@@ -121,10 +144,11 @@ def _figure(
             box = box.joined(Box(inner.left - CUT, 0.0, inner.right + CUT, CUT + 3.0))
     for lane in lanes:
         box = box.joined(lane.box)
-    corner = Box(box.left, box.top, box.left + BOLD * width_of(titles[0], NORMAL), box.top + _TITLE)
+    widths = BOLD * width_of(titles[0], NORMAL), width_of(titles[1], SMALL)
+    corner = Box(box.left, box.top, box.left + max(widths), box.top + _TITLE)
     in_corner = kind != SECTION and axis and _is_free(corner, outlines)
     if not in_corner:
-        wide = corner.right - corner.left + 2.0 + width_of(titles[1], SMALL)
+        wide = widths[0] + 2.0 + widths[1]
         box = Box(box.left, box.top - _TITLE, max(box.right, box.left + wide), box.bottom)
     return Figure(kind, titles, outlines, lanes, inner, box, base, axis, in_corner)
 

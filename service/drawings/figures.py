@@ -34,6 +34,7 @@ BOLD = 1.12
 ARROW = 8.0
 """Length of the directions of the base, mm."""
 
+AXIS = "axis 1"
 BESIDE_WORDS = 1.2
 _SPECK = 0.7
 """Width of what is drawn of a region that has no size on paper, mm."""
@@ -63,7 +64,8 @@ class Figure:
     kind : of the view; box : all the room it takes; inner : what is reached, and its zero.
     base : where the base's origin is; axis : whether axis 1 stands at the zero; turns : of it.
     in_corner : whether the titles stand in the corner that a round view leaves free; arrow : the
-        letter of an arrow from above, where the view from there does not stand below.
+        letter of an arrow from above, where the view from there does not stand below; arrow_at :
+        where it is, mm right of the zero.
     """
 
     kind: str
@@ -76,6 +78,7 @@ class Figure:
     axis: bool
     in_corner: bool
     arrow: str = ""
+    arrow_at: float = 0.0
     turns: Sequence[TurnTold] = ()
 
     def draw(self, paper: Paper, x: float, y: float, letters: tuple[str, str]) -> None:
@@ -101,11 +104,11 @@ class Figure:
             paper.boundary(pieces, line, f"{self.kind} {outline.about}")
         self._draw_title(paper, x + self.box.left, y + self.box.top)
         if self.arrow:
-            middle = x + 0.5 * (self.inner.left + self.inner.right)
-            tip = (middle, y + self.inner.top - 1.2)
-            paper.line([(middle, tip[1] - 6.0), tip], Line.NARROW)
+            tip = (x + self.arrow_at, y + self.inner.top - 1.2)
+            shaft = [(tip[0], tip[1] - 6.0), tip]
+            paper.line(shaft, Line.NARROW, f"arrow {self.arrow}")
             paper.head(tip, (0.0, 1.0))
-            paper.write((middle + 1.5, tip[1] - 3.0), self.arrow, NORMAL)
+            paper.write((tip[0] + 1.5, tip[1] - 3.0), self.arrow, NORMAL)
         if self.kind == SECTION:
             self._draw_axis(paper, x, y)
         else:
@@ -126,7 +129,7 @@ class Figure:
         inner = self.inner
         paper.line([(x, y + inner.top - BEYOND), (x, y + inner.bottom + BEYOND)], Line.CHAIN)
         at = (x + BESIDE_WORDS, y + inner.top - BEYOND + SMALL)
-        paper.write(at, "axis 1", SMALL)
+        paper.write(at, AXIS, SMALL)
         paper.line([(x, y), (x + inner.right + BEYOND, y)], Line.NARROW)
         paper.write((x - BESIDE_WORDS, y - BESIDE_WORDS), "0", SMALL, "end")
 

@@ -6,6 +6,8 @@ zero (ISO 129-1); areas and volumes have as many as their bound leaves. Left out
 
 from collections.abc import Callable, Sequence
 
+import numpy as np
+
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.shapes import Envelope
 from service.convert import Units
@@ -40,15 +42,18 @@ def angle_words(radians: float, units: Units) -> str:
 
 
 def measure_words(measure: Measure, power: int, units: Units) -> str:
-    """Return an area (``power`` 2) or a volume (3) with its bound.
+    """Return an area (``power`` 2) or a volume (3) with its bound, both to the same digit.
 
-    Millimetres are told in metres where they would be too many.
+    Millimetres are told in metres where they would be too many. What rounding takes off the value
+    is in the bound, which is rounded upward.
 
     Examples
     --------
     >>> from service.convert import UNITS
     >>> measure_words(Measure(2.74912, 0.0004), 3, UNITS["mm-deg"])
-    '2.7491 m\u00b3 \u00b1 0.0004'
+    '2.7491 m\u00b3 \u00b1 0.0005'
+    >>> measure_words(Measure(6.299, 0.02), 2, UNITS["m-rad"])
+    '6.30 m\u00b2 \u00b1 0.03'
     """
     length, value, bound = units.length, measure.value, measure.error_bound
     if length == "mm" and value >= _IN_METRES:
@@ -57,16 +62,35 @@ def measure_words(measure: Measure, power: int, units: Units) -> str:
         for _ in range(power):
             value, bound = units.value_out(value, "m"), units.value_out(bound, "m")
     mark = {2: "\u00b2", 3: "\u00b3"}[power]
-    bound = max(bound, 1e-4 * value)
     if value == 0.0:
         return "0"
-    if value >= _MOST_WRITTEN_OUT or value < _LEAST_WRITTEN_OUT:
-        return f"{value:.4g} {length}{mark} \u00b1 {bound:.1g}"
-    decimals = _decimals(bound)
-    step = 10.0**-decimals
-    upward = step * -(-bound // step)
-    return f"{_plain(value, decimals)} {length}{mark} \u00b1 {_plain(upward, decimals)}"
+    written_out = _LEAST_WRITTEN_OUT <= value < _MOST_WRITTEN_OUT
+    digit = int(np.floor(np.log10(max(bound, _FINEST * value)) + _JUST))
+    digit = max(min(digit, 0), -_MOST_DECIMALS) if written_out else digit
+    told, off = _in_steps(value, bound, digit)
+    if off == 10 and (digit < 0 or not written_out):
+        digit += 1
+        told, off = _in_steps(value, bound, digit)
+    if written_out:
+        numbers = [f"{count * 10.0**digit:.{-digit}f}" for count in (told, off)]
+    else:
+        numbers = [f"{count * 10.0**digit:.{len(str(count)) - 1}e}" for count in (told, off)]
+    return f"{numbers[0]} {length}{mark} \u00b1 {numbers[1]}"
 
+
+def _in_steps(value: float, bound: float, digit: int) -> tuple[int, int]:
+    """Return a value, and by how much it may be off as it is told, in whole steps of a digit."""
+    step = 10.0**digit
+    told = round(value / step)
+    off = max(bound + abs(told * step - value), _FINEST * value)
+    return told, int(np.ceil(off / step - _JUST))
+
+
+_FINEST = 1e-4
+"""Share of an area or a volume that is told, however well it is known."""
+
+_JUST = 1e-9
+"""Of a digit: what rounding may add to a bound that is just so much."""
 
 _IN_METRES = 1e-3
 """Square or cubic metres: less is told in millimetres."""

@@ -3,12 +3,14 @@
 Left out: who works on it (bulk), and how it is drawn (drawings).
 """
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import cached_property
+from typing import TypeVar
 
 from kinematics.arm import BASE
 from kinematics.envelope.envelope import envelope_of
+from kinematics.envelope.in_parts import EnvelopeInParts
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.sampled_views import UnfitResolution
 from kinematics.envelope.shapes import COORDINATES, WRIST, Envelope, Extreme, Turn, View
@@ -29,6 +31,8 @@ TRAVEL: Within = "travel"
 WORKING: Within = "working-travel"
 AT_ONCE = 256
 """Cells along what is reached of an answer at once: some seconds. Surveys may take more."""
+
+_Found = TypeVar("_Found")
 
 _TOLD = 1.006
 """More than three digits can be off."""
@@ -69,44 +73,52 @@ class EnvelopeQuestion:
         Raises
         ------
         KinematicsError, UnusableValue : the arm, its point or the resolution cannot be used.
-        TooLarge : the resolution is for a survey.
+        TooLarge : the resolution is for a survey, or for nobody.
         """
-        question = self.question
-        try:
-            return envelope_of(
-                question.arm,
-                question.tool.tool_in_flange,
-                working=within == WORKING,
-                point=self.asked.point,
-                resolution=self.resolution,
-                most_cells=self.most_cells,
-            )
-        except UnfitResolution as error:
-            raise self._unfit(error) from None
+        return self._by(envelope_of, within)
 
-    def _unfit(self, error: UnfitResolution) -> ServiceError:
-        """Return the refusal in the user's unit, with what a survey may ask for."""
+    def in_parts(self, within: Within) -> EnvelopeInParts:
+        """Return one envelope to be found in parts; what ``found`` refuses is refused here."""
+        return self._by(EnvelopeInParts, within)
+
+    def _by(self, way: Callable[..., _Found], within: Within) -> _Found:
+        try:
+            return self._at(way, within, self.resolution)
+        except UnfitResolution:
+            raise self._unfit() from None
+
+    def _at(self, way: Callable[..., _Found], within: Within, resolution: float | None) -> _Found:
+        return way(
+            self.question.arm,
+            self.question.tool.tool_in_flange,
+            working=within == WORKING,
+            point=self.asked.point,
+            resolution=resolution,
+            most_cells=self.most_cells,
+        )
+
+    def _unfit(self) -> ServiceError:
+        """Return the refusal in the user's unit, with what fits all that is asked."""
         assert self.resolution is not None
         assert self.asked.resolution is not None
-        length, given = self.question.units.length, self.asked.resolution
+        units, given = self.question.units, self.asked.resolution
+        length, where = units.length, ("resolution",)
+        parts = (self._at(EnvelopeInParts, within, None) for within in self.within)
+        finest, coarsest = zip(*(one.fitting for one in parts), strict=True)
+        least, most = max(finest), min(coarsest)
         # Told with three digits, and to be fit all the same.
-        fit = (error.least * _TOLD, error.most / _TOLD)
-        least, most = (self.question.units.value_out(metres, "m") for metres in fit)
-        if self.resolution < error.least and self.most_cells < MOST_CELLS:
-            return TooLarge(
-                f"places {given:g} {length} apart are too many for an answer at once",
-                where=("resolution",),
-                value=given,
-                way_out=f"ask for {least:.3g} {length} or more, or post a survey of kind envelope "
-                "to /v1/surveys",
-                status=422,
-            )
-        return UnusableValue(
-            f"a resolution of {given:g} {length} does not fit this reach",
-            where=("resolution",),
-            value=given,
-            way_out=f"ask for {least:.3g} to {most:.3g} {length}, or leave it out",
-        )
+        fine = f"{units.value_out(least * _TOLD, 'm'):.3g} {length}"
+        coarse = f"{units.value_out(most / _TOLD, 'm'):.3g} {length}"
+        out = f"ask for {fine} to {coarse}, or leave it out" if least < most else "leave it out"
+        if self.resolution >= least:
+            say = f"a resolution of {given:g} {length} does not fit this reach"
+            return UnusableValue(say, where=where, value=given, way_out=out)
+        whose = "a survey" if self.most_cells == MOST_CELLS else "an answer at once"
+        # As fine as a survey may be, which has more time.
+        if self.resolution >= least * self.most_cells / MOST_CELLS:
+            out = f"ask for {fine} or more, or post a survey of kind envelope to /v1/surveys"
+        say = f"places {given:g} {length} apart are too many for {whose}"
+        return TooLarge(say, where=where, value=given, way_out=out, status=422)
 
     def answer(self, found: Mapping[Within, Envelope]) -> dict[str, object]:
         """Return what is answered, from what was found within each."""

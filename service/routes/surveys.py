@@ -204,9 +204,16 @@ async def survey_progress(request: Request) -> Response:
         "for each line of the CSV, `code`, `verdict` (0 reachable, 1 outside travel, 2 "
         "unreachable, 3 not found, -1 refused), `solutions`, `solution`, `q1..qn`, `margin`, "
         "`position_error`, `angle_error`; its columns are in `X-Columns`. Of samples in the same "
-        "formats, as `/v1/reach/samples` tells them; of an envelope as JSON, or as a drawing "
-        "(`format=svg`). Before the survey has succeeded: 409, with `Retry-After` where that will "
-        "help.",
+        "formats, as `/v1/reach/samples` tells them. Of an envelope as JSON or as a drawing "
+        "(`format=svg`), as `/v1/reach/envelope` tells them, to the last bit; and its boundaries "
+        "as CSV, a line for each point of a curve: `within` (travel, working-travel), `view` "
+        "(section, side, plan), `curve` (counted from 1 in its view, as in JSON), `boundary` "
+        "(outer, inner), and two coordinates, whose unit is in the head line (`radius_or_x_mm`, "
+        "`height_or_y_mm`): radius and height of a section, x and z of a side view, x and y of a "
+        "plan. As NPY the same columns, a row of doubles for each line: `within` 0 travel, 1 "
+        "working travel; `view` 0 section, 1 side, 2 plan; `boundary` 1 outer, 0 inner. Areas and "
+        "volume with their bounds are in the JSON, on the drawing and in the report. Before the "
+        "survey has succeeded: 409, with `Retry-After` where that will help.",
         answer=SurveyResult,
         parameters=(
             *_ONE,
@@ -215,6 +222,7 @@ async def survey_progress(request: Request) -> Response:
         statuses=(404, 409),
         answer_media=(JSON, csv_rows.MEDIA_TYPE, npy.MEDIA_TYPE, SVG),
         headers={"X-Columns": "Names of the columns of an NPY answer."},
+        examples="survey-result",
     ),
 )
 async def survey_result(request: Request) -> Response:
@@ -225,13 +233,16 @@ async def survey_result(request: Request) -> Response:
     kind = SURVEY_KINDS[found.kind]
     wanted = answer_format(parameters, request.headers.get("accept", ""), "json", kind.formats)
     told = await run_in_threadpool(kind.told, found, wanted, taken_in.store)
+    headers = {**_NO_STORE, **told.headers}
+    tell = told.part
+    if tell is None:
+        return Response(told.head + told.tail, headers=headers, media_type=told.media_type)
     pieces = len(await run_in_threadpool(taken_in.store.sizes, name))
 
     def part(number: int, _end: int) -> bytes:
-        made = told.part(number, taken_in.store.made(name, number))
+        made = tell(number, taken_in.store.made(name, number))
         return made + told.tail if number == pieces - 1 else made
 
-    headers = {**_NO_STORE, **told.headers}
     threads = _bulk(request).threads
     return StreamedAnswer(
         threads, told.head, part, pieces, 1, media_type=told.media_type, headers=headers

@@ -49,7 +49,7 @@ def envelope_from(kept: Document) -> Envelope:
         plan=_view(kept["plan"]),
         volume=Measure(*kept["volume"]),
         same_at_every_bearing=kept["same_at_every_bearing"],
-        extremes=tuple(map(_extreme, kept["extremes"])),
+        extremes=tuple(map(extreme_from, kept["extremes"])),
         notes=tuple(kept["notes"]),
     )
 
@@ -65,6 +65,7 @@ def _view(kept: Document) -> View:
     )
 
 
-def _extreme(kept: Document) -> Extreme:
+def extreme_from(kept: Document) -> Extreme:
+    """Return an extreme that was kept, and came back as JSON."""
     arrays = {key: np.array(kept[key]) for key in ("joint_values", "position")}
     return Extreme(**{**kept, **arrays})

@@ -6,13 +6,18 @@ Left out: the page (web/survey_report.py).
 from collections.abc import Sequence
 from typing import Any
 
+from kinematics.envelope.shapes import Envelope
+from service.convert import UNITS, Units
+from service.drawings.numbers import measure_words
 from service.storage.ports import Document, Survey
 from service.surveys.kinds import Report, ReportTable
 
 _REACHES = {"travel": "travel", "working_travel": "working travel"}
 
 
-def report_of(survey: Survey, answer: Document, sheet: str) -> Report:
+def report_of(
+    survey: Survey, answer: Document, envelopes: Sequence[Envelope], sheet: str
+) -> Report:
     """Return the tables and the drawing of an envelope that was found."""
     about = survey.about
     length, angle = about["units"].split("-")
@@ -21,8 +26,8 @@ def report_of(survey: Survey, answer: Document, sheet: str) -> Report:
     tables = [
         ReportTable(
             "Areas and volume",
-            ("within", "of", "value", "off by at most", "found"),
-            [line for say, reach in told.items() for line in _sizes(say, reach)],
+            ("within", "of", "area or volume", "found"),
+            [line for one in envelopes for line in _sizes(_say(one), one, UNITS[about["units"]])],
         ),
         ReportTable(
             "How far the point gets",
@@ -40,31 +45,16 @@ def report_of(survey: Survey, answer: Document, sheet: str) -> Report:
     return Report(asked, tables, drawings=[(sheet, below)], said=" ".join(sorted(notes)))
 
 
-def _sizes(say: str, reach: Document) -> Sequence[Sequence[object]]:
-    found = "exact" if reach["exact"] else "sampled"
-    sizes = [(reach[view]["kind"], reach[view]["area"]) for view in ("section", "plan")]
-    return [
-        (
-            say,
-            of,
-            _size(size["value"], size["unit"]),
-            _size(size["error_bound"], size["unit"]),
-            found,
-        )
-        for of, size in (*sizes, ("volume", reach["volume"]))
-    ]
+def _sizes(say: str, found: Envelope, units: Units) -> Sequence[Sequence[object]]:
+    how = "exact" if found.exact else "sampled"
+    views = found.section, found.plan
+    sizes = [(view.kind, measure_words(view.area, 2, units)) for view in views]
+    sizes.append(("volume", measure_words(found.volume, 3, units)))
+    return [(say, of, size, how) for of, size in sizes]
 
 
-def _size(value: float, unit: str) -> str:
-    """Return an area or a volume as it is read, in groups of three digits.
-
-    Examples
-    --------
-    >>> _size(922021.4, "mm^2").split(), _size(0.25, "m^3")
-    (['922', '021', 'mm²'], '0.25 m³')
-    """
-    shown = f"{value:,.0f}".replace(",", "\N{NO-BREAK SPACE}") if value >= 1e4 else f"{value:.4g}"
-    return f"{shown} {unit.replace('^2', '²').replace('^3', '³')}"
+def _say(envelope: Envelope) -> str:
+    return _REACHES["working_travel" if envelope.working else "travel"]
 
 
 def _extreme(say: str, one: dict[str, Any]) -> Sequence[object]:

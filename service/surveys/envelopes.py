@@ -1,14 +1,19 @@
 """Envelopes at a fine resolution: what ``/v1/reach/envelope`` tells, given the time it takes.
 
-Idea: a piece is the envelope within travel, or that within working travel; each is kept as it was
-found, so that the answer and the drawing are made from it whenever they are asked for. Left out:
-the report (envelope_report.py).
+Idea: what has to be sampled is found in pieces of about a second, each a stripe of a view or a slab
+of space; the last piece puts all of them together, and the others are not looked at any more. It is
+kept as it was found, so that the answer and the drawing are made from it whenever they are asked
+for. The envelope is that of the answer at once, to the last bit. Left out: how it comes in parts
+(the core), tables (envelope_tables.py), the report (envelope_report.py).
 """
 
-from typing import cast
+from collections.abc import Iterator, Sequence
+from functools import cache
+from typing import NamedTuple, cast
 
 import orjson
 
+from kinematics.envelope.shapes import Envelope
 from service.cautions import CAUTIONS
 from service.convert import UNITS
 from service.drawings.envelope_sheet import envelope_sheet
@@ -18,7 +23,16 @@ from service.operations.arms import Arms
 from service.operations.envelopes import EnvelopeQuestion, envelope_question
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.surveys.envelope_kept import envelope_document, envelope_from
+from service.surveys.envelope_parts import (
+    Named,
+    Part,
+    named,
+    names_of,
+    part_document,
+    part_from,
+)
 from service.surveys.envelope_report import report_of
+from service.surveys.envelope_tables import told_as_csv, told_as_npy
 from service.surveys.kinds import Accepted, Report, SentTargets, Told
 from service.surveys.pinned import OneArm, Setup, pinned, setup_of
 from service.wire.answers import json_bytes
@@ -34,12 +48,12 @@ class Envelopes:
     """How far an arm reaches at all: section, plan and volume."""
 
     name = "envelope"
-    formats: tuple[Format, ...] = ("json", "svg")
+    formats: tuple[Format, ...] = ("json", "csv", "npy", "svg")
 
     def accept(
         self, arms: Arms[ReadArm], request: Document, sent: SentTargets | None = None
     ) -> Accepted:
-        """See ``Kind.accept``."""
+        """See ``Kind.accept``; the last piece is the whole."""
         if sent is not None:
             raise UnusableValue(
                 "an envelope is not asked for by a table",
@@ -54,58 +68,84 @@ class Envelopes:
             "within": asked.within,
             "convention": question.arm.table.convention.value,
         }
-        pieces = [
-            GivenPiece(number, 1, within.encode("ascii"))
-            for number, within in enumerate(asked.within)
-        ]
+        given = [*(one.given for one in Prepared(asked).names()), _WHOLE]
+        pieces = [GivenPiece(number, 1, name) for number, name in enumerate(given)]
         return Accepted(pinned(request, question.meant), about, len(pieces), pieces)
 
     def setup(self, arms: Arms[ReadArm], survey: Survey) -> Setup:
         """See ``Kind.setup``."""
         return setup_of(arms, survey, EnvelopeRequest.model_validate(survey.request).arm)
 
-    def prepare(self, setup: Setup) -> EnvelopeQuestion:
+    def prepare(self, setup: Setup) -> "Prepared":
         """See ``Kind.prepare``."""
         asked = EnvelopeRequest.model_validate(setup.request)
-        return envelope_question(cast(Arms[ReadArm], OneArm(setup)), asked)
+        return Prepared(envelope_question(cast(Arms[ReadArm], OneArm(setup)), asked))
 
-    def make(self, prepared: EnvelopeQuestion, piece: GivenPiece) -> MadePiece:
+    def make(self, prepared: "Prepared", piece: GivenPiece) -> MadePiece:
         """See ``Kind.make``."""
-        within = cast(Within, piece.given.decode("ascii"))
-        found = prepared.found(within)
-        kept = {"answer": prepared.answer({within: found}), "found": envelope_document(found)}
-        return MadePiece(piece.number, json_bytes(kept), {})
+        within, name, number = named(piece.given)
+        part = prepared.parts(within).piece(name, number)
+        return MadePiece(piece.number, json_bytes(part_document(part)), {})
+
+    def gather(self, prepared: "Prepared", piece: GivenPiece, made: Sequence[bytes]) -> MadePiece:
+        """See ``Gathers.gather``."""
+        asked = prepared.asked
+        found: dict[Within, dict[str, list[Part]]] = {within: {} for within in asked.within}
+        for one, kept in zip(prepared.names(), made, strict=True):
+            found[one.within].setdefault(one.name, []).append(part_from(orjson.loads(kept)))
+        whole = {within: prepared.parts(within).told(of) for within, of in found.items()}
+        kept_whole = {
+            "answer": asked.answer(whole),
+            "found": [envelope_document(one) for one in whole.values()],
+        }
+        return MadePiece(piece.number, json_bytes(kept_whole), {})
 
     def told(self, survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
-        """See ``Kind.told``; all of it stands at the head, for the drawing shows both."""
+        """See ``Kind.told``; all of it stands at the head, for it is in the last piece."""
         kept = _kept(survey, store)
         if wanted == "svg":
-            return Told(SVG, sheet_of(survey, kept), _nothing)
-        answer = {"survey": survey.id, **answer_of(kept), "software": survey.about["software"]}
-        return Told(JSON, json_bytes(answer), _nothing)
+            return Told(SVG, sheet_of(survey, kept))
+        if wanted in ("csv", "npy"):
+            tell = told_as_csv if wanted == "csv" else told_as_npy
+            return tell(kept.answer, UNITS[survey.about["units"]].length)
+        answer = {"survey": survey.id, **kept.answer, "software": survey.about["software"]}
+        return Told(JSON, json_bytes(answer))
 
     def reported(self, survey: Survey, store: SurveyStorage) -> Report:
         """See ``Kind.reported``."""
         kept = _kept(survey, store)
         # A page of HTML takes the drawing itself, without the head of a file.
         drawing = "<svg" + sheet_of(survey, kept).decode().partition("<svg")[2]
-        return report_of(survey, answer_of(kept), drawing)
+        return report_of(survey, *kept, drawing)
 
 
-def answer_of(kept: list[Document]) -> Document:
-    """Return the answer of all pieces; what a piece has not made is null in its own."""
-    answer: Document = {}
-    for one in kept:
-        for key, value in one["answer"].items():
-            if value is not None or key not in answer:
-                answer[key] = value
-    return answer
+_WHOLE = b"whole"
+"""Given to the last piece."""
 
 
-def sheet_of(survey: Survey, kept: list[Document]) -> bytes:
+class Prepared:
+    """An envelope that is asked for, in parts; each travel is looked at when it is first needed."""
+
+    def __init__(self, asked: EnvelopeQuestion) -> None:
+        self.asked = asked
+        self.parts = cache(asked.in_parts)
+
+    def names(self) -> Iterator[Named]:
+        """Yield the pieces of all that is asked, in their order."""
+        for within in self.asked.within:
+            yield from names_of(within, self.parts(within))
+
+
+class Kept(NamedTuple):
+    """What a survey found: the answer, and the envelopes that it tells of."""
+
+    answer: Document
+    envelopes: Sequence[Envelope]
+
+
+def sheet_of(survey: Survey, kept: Kept) -> bytes:
     """Return the drawing, working travel in that of travel."""
-    envelopes = [envelope_from(one["found"]) for one in kept]
-    return envelope_sheet(envelopes, _labels(survey), UNITS[survey.about["units"]])
+    return envelope_sheet(kept.envelopes, _labels(survey), UNITS[survey.about["units"]])
 
 
 def _labels(survey: Survey) -> SheetLabels:
@@ -122,9 +162,15 @@ def _labels(survey: Survey) -> SheetLabels:
     )
 
 
-def _kept(survey: Survey, store: SurveyStorage) -> list[Document]:
-    return [orjson.loads(store.made(survey.id, number)) for number in range(survey.total)]
-
-
-def _nothing(_number: int, _made: bytes) -> bytes:
-    return b""
+def _kept(survey: Survey, store: SurveyStorage) -> Kept:
+    last = orjson.loads(store.made(survey.id, survey.total - 1))
+    if isinstance(last["found"], list):
+        return Kept(last["answer"], [envelope_from(one) for one in last["found"]])
+    # What was kept before has a piece for each travel, which is null in the other's answer.
+    pieces = [orjson.loads(store.made(survey.id, number)) for number in range(survey.total)]
+    answer: Document = {}
+    for one in pieces:
+        for key, value in one["answer"].items():
+            if value is not None or key not in answer:
+                answer[key] = value
+    return Kept(answer, [envelope_from(one["found"]) for one in pieces])

@@ -1,13 +1,14 @@
 """What a kind of survey is: one class that accepts a request, makes its pieces, tells the result.
 
 A survey is cut into pieces when it is accepted, once and for all: each is worked on alone, so that
-its bits depend on nothing but itself, in whatever order, process or company it is made. Left out:
+its bits depend on nothing but itself, in whatever order, process or company it is made; but for the
+last one of a kind that gathers (``Gathers``), which is put together of all others. Left out:
 who makes pieces (runner.py) and keeps them (storage).
 """
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Any, NamedTuple, Protocol
+from typing import Any, NamedTuple, Protocol, runtime_checkable
 
 from service.convert import Units
 from service.operations.arms import Arms
@@ -40,11 +41,14 @@ class Accepted(NamedTuple):
 
 @dataclass(frozen=True)
 class Told:
-    """A result in one format: what stands before, between and behind its parts, one for a piece."""
+    """A result in one format: what stands before, between and behind its parts, one for a piece.
+
+    Without ``part`` all of it stands at the head.
+    """
 
     media_type: str
     head: bytes
-    part: Callable[[int, bytes], bytes]
+    part: Callable[[int, bytes], bytes] | None = None
     tail: bytes = b""
     headers: Mapping[str, str] = field(default_factory=dict)
 
@@ -135,6 +139,19 @@ class Kind(Protocol):
 
     def reported(self, survey: Survey, store: SurveyStorage) -> Report:
         """Return what is put on paper of it."""
+
+
+@runtime_checkable
+class Gathers(Protocol):
+    """A kind whose last piece is put together of all others, when they are there."""
+
+    def gather(self, prepared: Any, piece: GivenPiece, made: Sequence[bytes]) -> MadePiece:
+        """Make the last piece.
+
+        Parameters
+        ----------
+        made : what became of the others, by number.
+        """
 
 
 def piece_size(seconds_each: float) -> int:

@@ -4,7 +4,8 @@ Idea: what is to be done stands in the store, and only there: the thread asks fo
 survey and its unmade pieces, keeps some chunks of them in hand, and writes each chunk that comes
 back in one step with the count of what is done. So a start after a kill goes on where the store
 is, and a worker that dies costs the chunks in hand. How many pieces make a chunk follows from how
-long the last ones took; the bits of a piece do not depend on it.
+long the last ones took; the bits of a piece do not depend on it. Of a kind that gathers the last
+piece is handed out when all others are in the store.
 
 Left out: what a piece is (kinds.py), where it is made (pool.py).
 """
@@ -33,6 +34,7 @@ from service.storage.ports import (
     SurveyStorage,
 )
 from service.surveys import worker
+from service.surveys.kinds import Gathers
 from service.surveys.pool import Pool
 from service.surveys.progress import Pace
 from service.surveys.registry import SURVEY_KINDS
@@ -187,7 +189,8 @@ class Runner:
         setup = SURVEY_KINDS[survey.kind].setup(self._arms, survey)
         executor = self._pool.executor()
         pace = self._pace = Pace(survey.id, survey.done)
-        chunks = _Chunks(self._store, survey.id)
+        gathers = isinstance(SURVEY_KINDS[survey.kind], Gathers)
+        chunks = _Chunks(self._store, survey.id, gathers=gathers)
         in_hand: dict[Future[_Made], Sequence[GivenPiece]] = {}
         deaths = 0
         try:
@@ -219,9 +222,10 @@ class Runner:
         chunks: "_Chunks",
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
     ) -> None:
-        while len(in_hand) < self._pool.room and (pieces := chunks.next()):
+        while len(in_hand) < self._pool.room and (pieces := chunks.next(not in_hand)):
+            given = survey.kind, survey.id, setup, pieces, chunks.others(pieces)
             try:
-                future = executor.submit(worker.make, survey.kind, survey.id, setup, pieces)
+                future = executor.submit(worker.make, *given)
             except BrokenExecutor:
                 chunks.back(pieces)
                 raise
@@ -259,18 +263,36 @@ class Runner:
 
 
 class _Chunks:
-    """Unmade pieces of a survey, some at a time, in order; those given back come first."""
+    """Unmade pieces of a survey, some at a time, in order; those given back come first.
 
-    def __init__(self, store: SurveyStorage, survey: str) -> None:
-        self._pieces = self._stored(store, survey)
+    Parameters
+    ----------
+    gathers : whether the last piece is put together of all others.
+    """
+
+    def __init__(self, store: SurveyStorage, survey: str, *, gathers: bool) -> None:
+        self._store, self._survey = store, survey
+        self._last = len(store.sizes(survey)) - 1 if gathers else None
+        self._pieces = self._stored()
+        self._whole: Sequence[GivenPiece] = ()
         self._again: list[Sequence[GivenPiece]] = []
         self._length = 1
 
-    def next(self) -> Sequence[GivenPiece]:
-        """Return the next chunk; nothing when all pieces are made or in hand."""
+    def next(self, none_in_hand: bool) -> Sequence[GivenPiece]:
+        """Return the next chunk; nothing when all pieces are made, or have to wait."""
         if self._again:
             return self._again.pop(0)
-        return [piece for _, piece in zip(range(self._length), self._pieces, strict=False)]
+        chunk = [piece for _, piece in zip(range(self._length), self._pieces, strict=False)]
+        if chunk or not none_in_hand:
+            return chunk
+        whole, self._whole = self._whole, ()
+        return whole
+
+    def others(self, pieces: Sequence[GivenPiece]) -> Sequence[bytes] | None:
+        """Return what became of all other pieces, for the one that is put together of them."""
+        if self._last is None or pieces[0].number != self._last:
+            return None
+        return [self._store.made(self._survey, number) for number in range(self._last)]
 
     def back(self, pieces: Sequence[GivenPiece]) -> None:
         """Take a chunk back that nobody has made."""
@@ -282,9 +304,13 @@ class _Chunks:
         # At most twice as many as before: the first chunk also waits for the process to be ready.
         self._length = max(1, min(fitting, 2 * self._length, MOST_IN_CHUNK))
 
-    @staticmethod
-    def _stored(store: SurveyStorage, survey: str) -> Iterator[GivenPiece]:
+    def _stored(self) -> Iterator[GivenPiece]:
+        """Yield unmade pieces, and keep back the one that has to wait for all others."""
         after = -1
-        while pieces := store.left(survey, after, MOST_IN_CHUNK):
-            yield from pieces
+        while pieces := self._store.left(self._survey, after, MOST_IN_CHUNK):
+            for piece in pieces:
+                if piece.number == self._last:
+                    self._whole = (piece,)
+                else:
+                    yield piece
             after = pieces[-1].number

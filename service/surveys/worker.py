@@ -15,6 +15,7 @@ from time import perf_counter
 from typing import Any
 
 from service.storage.ports import GivenPiece, MadePiece
+from service.surveys.kinds import Gathers
 from service.surveys.registry import SURVEY_KINDS
 
 NICENESS = 15
@@ -43,9 +44,18 @@ def identity() -> int:
 
 
 def make(
-    kind: str, survey: str, setup: Any, pieces: Sequence[GivenPiece]
+    kind: str,
+    survey: str,
+    setup: Any,
+    pieces: Sequence[GivenPiece],
+    others: Sequence[bytes] | None = None,
 ) -> tuple[list[MadePiece], float]:
-    """Return pieces made, and the seconds it took."""
+    """Return pieces made, and the seconds it took.
+
+    Parameters
+    ----------
+    others : what became of all other pieces, for one that is put together of them.
+    """
     global _prepared
     started = perf_counter()
     maker = SURVEY_KINDS[kind]
@@ -55,7 +65,11 @@ def make(
         _prepared = (survey, prepared)
         gc.collect()
         gc.freeze()  # all that stays is not looked at again
-    made = [maker.make(prepared, piece) for piece in pieces]
+    if others is None:
+        made = [maker.make(prepared, piece) for piece in pieces]
+    else:
+        assert isinstance(maker, Gathers)
+        made = [maker.gather(prepared, piece, others) for piece in pieces]
     gc.collect()
     return made, perf_counter() - started
 

@@ -23,6 +23,7 @@ class Example:
     path : what stands in the address for its parameters, where the request is a body; the arm that
         was sent values, where the address names none.
     sent : joint values that the arm was sent before; None: none.
+    survey : what was asked of the survey that is meant, which has succeeded; None: none.
     """
 
     title: str
@@ -30,6 +31,7 @@ class Example:
     answer: Any
     path: Mapping[str, str] = field(default_factory=dict)
     sent: Mapping[str, Any] | None = None
+    survey: Mapping[str, Any] | None = None
 
     @property
     def query(self) -> Mapping[str, Any]:

@@ -39,8 +39,9 @@ class SurveyAnswer(Open):
     """A survey: how far it is, what it is of, where its parts are.
 
     `state`: `queued`, `running`, `succeeded`, `failed` (with `reason`) or `cancelled`. `done` of
-    `total` never goes back; `remaining_s` is null where nobody can tell. `counts` is what was found
-    so far.
+    `total` never goes back: targets, samples, or pieces of an envelope, of about a second each, of
+    which the last puts all together; `remaining_s` is null where nobody can tell. `counts` is what
+    was found so far.
     """
 
     id: str

@@ -177,6 +177,7 @@ LAYERS = (
     ("envelope.inquiry",),
     ("envelope.known_structures", "envelope.level", "envelope.searched"),
     ("envelope.envelope",),
+    ("envelope.in_parts",),
     # Moves from place to place: the question and answer, lines and postures held against them, one
     # leg followed, what is told of it, whole courses.
     ("travel", "travel.above_zero", "travel.tolerances", "travel.moves", "travel.small_systems"),

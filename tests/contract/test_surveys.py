@@ -321,8 +321,17 @@ def test_an_envelope_is_that_of_reach_envelope(served: httpx.Client) -> None:
     told = served.get(f"/v1/surveys/{survey}/result").json()
     expected = served.post("/v1/reach/envelope", json=request).json()
     assert {key: told[key] for key in expected} == expected
-    drawing = served.get(f"/v1/surveys/{survey}/result?format=svg")
+    address = f"/v1/surveys/{survey}/result"
+    drawing = served.get(address, params={"format": "svg"})
     assert drawing.headers["content-type"].startswith("image/svg+xml")
+    rows = served.get(address, headers={"Accept": "text/csv"}).text.splitlines()
+    assert rows[0] == "within,view,curve,boundary,radius_or_x_mm,height_or_y_mm"
+    table = served.get(address, headers={"Accept": "application/x-npy"})
+    assert table.headers["x-columns"] == rows[0]
+    shape = np.load(io.BytesIO(table.content)).shape
+    points = [curve["points"] for curve in told["working_travel"]["section"]["curves"]]
+    points += [curve["points"] for curve in told["working_travel"]["plan"]["curves"]]
+    assert shape == (len(rows) - 1, 6) == (sum(map(len, points)), 6)
     page = served.get(f"/v1/surveys/{survey}/report").text
     assert "Areas and volume" in page
     assert "<?xml" not in page
@@ -448,6 +457,7 @@ def test_what_cannot_be_used_is_refused_where_it_stands(
         ("samples", {"count": 9, "targets": []}, "/request/targets"),
         ("samples", {}, "/request"),
         ("envelope", {"resolution": 0}, "/request/resolution"),
+        ("envelope", {"tool": "gripper", "resolution": 1e-6}, "/request/resolution"),
         ("envelope", {"point": "elbow"}, "/request/point"),
     ],
 )
@@ -509,6 +519,31 @@ def test_kills_of_a_worker_and_of_the_service_cost_chunks_and_no_bits(
         until(served, other, is_over)
         assert results(client, survey) == results(served, other)
     assert again.terminate() < 3
+
+
+def test_kills_cost_an_envelope_pieces_and_no_bits(launch: Launch, tmp_path: Path) -> None:
+    request = {"arm": "wash-arm", "within": "travel", "resolution": 9}
+    database = str(tmp_path / "arms.db")
+    process = launch("--demo", "--survey-workers", "2", database=database)
+    with httpx.Client(base_url=process.url, timeout=PATIENCE_S) as client:
+        survey = asked(client, {"kind": "envelope", "request": request})
+        total = until(client, survey, lambda found: found["done"] > 0)["total"]
+        os.kill(children_of(process.process.pid)[0], signal.SIGKILL)
+        before = client.get(f"/v1/surveys/{survey}").json()
+        assert not is_over(before)
+        done = until(client, survey, lambda found: found["done"] > before["done"])["done"]
+        process.process.kill()
+        process.process.wait(10)
+    again = launch("--demo", "--survey-workers", "1", database=database)
+    with httpx.Client(base_url=again.url, timeout=PATIENCE_S) as client:
+        first = client.get(f"/v1/surveys/{survey}").json()
+        assert done <= first["done"] <= total
+        found = until(client, survey, is_over)
+        assert (found["state"], found["done"], found["total"]) == ("succeeded", total, total)
+        told = client.get(f"/v1/surveys/{survey}/result").json()
+        expected = client.post("/v1/reach/envelope", json=request).json()
+        assert {key: told[key] for key in expected} == expected
+    again.terminate()
 
 
 @pytest.mark.usefixtures("served")
@@ -588,6 +623,12 @@ def test_a_cluster_makes_the_same_bits(served: httpx.Client, launch: Launch, clu
         here = asked(served, question(2000))
         until(served, here, is_over)
         assert results(client, there) == results(served, here)
+        request = {"arm": "wash-arm", "within": "travel", "resolution": 15}
+        there = asked(client, {"kind": "envelope", "request": request})
+        assert until(client, there, is_over)["total"] > 4
+        told = client.get(f"/v1/surveys/{there}/result").json()
+        expected = served.post("/v1/reach/envelope", json=request).json()
+        assert {key: told[key] for key in expected} == expected
     process.terminate()
 
 

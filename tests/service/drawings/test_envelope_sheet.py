@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.shapes import SECTION, SIDE, Curve, Envelope, Extreme, Turn, View
+from kinematics.number_checks import FloatArray
 from kinematics.reach.sample_summary import FirstAxis
 from service.convert import UNITS
 from service.drawings.envelope_sheet import envelope_sheet
@@ -19,6 +20,7 @@ from tests.service.drawings.sheets import (
     LABELS,
     ROWS,
     SVG,
+    Words,
     drawn,
     envelopes,
     mm_per_metre,
@@ -144,6 +146,39 @@ def test_views_above_one_another_share_their_zero() -> None:
     assert front[:, 1].max() < above[:, 1].min()
 
 
+@pytest.mark.parametrize("name", ROWS)
+def test_a_plan_beside_the_section_has_the_letter_of_an_arrow(name: str) -> None:
+    svg = sheet(envelopes(name))
+    said = [words.said for words in words_of(svg)]
+    arrows = [one for one in svg.iter(f"{SVG}path") if one.get("data-about") == "arrow B"]
+    front = np.concatenate([drawn_points(svg, kind) for kind in ("section", "side")])
+    plan = drawn_points(svg, "plan")
+    if "VIEW FROM ABOVE" in said:  # below: first-angle projection says it
+        assert not arrows
+        assert "B" not in said
+        assert not len(front) or not len(plan) or front[:, 1].max() <= plan[:, 1].min()
+        return
+    assert (said.count("VIEW B"), said.count("B")) == (1, 1)
+    assert any(words.startswith("from above, ") for words in said)
+    (shaft,) = (points_of(arrow.attrib["d"]) for arrow in arrows)
+    assert front[:, 1].min() > shaft[:, 1].max()
+    assert front[:, 0].min() - 15.0 < shaft[0, 0] < front[:, 0].max() + 15.0
+    assert shaft[0, 0] < plan[:, 0].min()
+    assert_nothing_is_written_over(svg, shaft)
+
+
+def drawn_points(svg: ElementTree.Element, kind: str) -> FloatArray:
+    """Return the points of the lines of a view, (count, 2)."""
+    paths = [one for one in svg.iter(f"{SVG}path") if one.get("data-about") == f"{kind} travel"]
+    return np.concatenate([np.empty((0, 2)), *(points_of(path.attrib["d"]) for path in paths)])
+
+
+def assert_nothing_is_written_over(svg: ElementTree.Element, shaft: FloatArray) -> None:
+    (left, top), (right, bottom) = shaft.min(axis=0), shaft.max(axis=0)
+    arrow = Words("", (left - 0.5, top, right + 0.5, bottom))
+    assert not [words for words in words_of(svg) if words.meets(arrow)]
+
+
 def test_hostile_names_are_words() -> None:
     labels = SheetLabels(
         HOSTILE, HOSTILE * 9, HOSTILE, HOSTILE, HOSTILE, HOSTILE, [HOSTILE * 40] * 9
@@ -225,4 +260,8 @@ def _views(draw: st.DrawFn, size: float, kind: str) -> View:
 @settings(max_examples=60, deadline=None)
 @given(envelopes_drawn(), st.sampled_from(sorted(UNITS)))
 def test_any_envelope_fits_its_sheet(found: list[Envelope], units: str) -> None:
-    assert_fit(sheet(found, units=units))
+    svg = sheet(found, units=units)
+    assert_fit(svg)
+    for path in svg.iter(f"{SVG}path"):
+        if path.get("data-about") == "arrow B":
+            assert_nothing_is_written_over(svg, points_of(path.attrib["d"]))

@@ -37,11 +37,27 @@ def test_lengths_are_in_the_unit_asked_for() -> None:
 def test_a_bound_is_never_told_smaller_than_it_is(value: float, share: float) -> None:
     words = measure_words(Measure(value, share * value), 2, UNITS["m-rad"])
     told, _, _, bound = words.split()
-    # What rounding takes from the value is within half of its last figure.
-    assert abs(float(told) - value) <= 0.5 * float(bound) + 1e-9
-    assert float(bound) >= share * value * (1.0 - 1e-9)
+    # Whatever the true value is, it is within the bound of the one told, rounding included.
+    assert abs(float(told) - value) + share * value <= float(bound) * (1.0 + 1e-6)
+    assert float(bound) <= max(2.0 * share, 2e-4) * value + 1.0
+    assert len(told.partition(".")[2]) == len(bound.partition(".")[2])
+
+
+@pytest.mark.parametrize(
+    ("value", "bound", "words"),
+    [
+        (1.2341, 0.0045, "1.234 m\u00b2 \u00b1 0.005"),
+        (6.299, 0.02, "6.30 m\u00b2 \u00b1 0.03"),
+        (37.0, 0.3, "37.0 m\u00b2 \u00b1 0.3"),
+        (0.9220214, 1e-9, "0.9220 m\u00b2 \u00b1 0.0001"),
+        (0.3, 4.0, "0 m\u00b2 \u00b1 5"),
+        (5.0e12, 2.5e9, "5.000e+12 m\u00b2 \u00b1 3e+09"),
+    ],
+)
+def test_value_and_bound_end_at_the_same_figure(value: float, bound: float, words: str) -> None:
+    assert measure_words(Measure(value, bound), 2, MM) == words
 
 
 def test_small_areas_are_told_in_millimetres() -> None:
-    assert measure_words(Measure(2.5e-6, 0.0), 2, MM).startswith("2.5 mm\u00b2")
+    assert measure_words(Measure(2.5e-6, 0.0), 2, MM).startswith("2.5000 mm\u00b2")
     assert measure_words(Measure(0.0, 0.0), 3, MM) == "0"

@@ -5,11 +5,8 @@ test_runner.py and tests/contract.
 """
 
 import io
-import random
-from collections.abc import Iterator, Sequence
-from contextlib import closing
+from collections.abc import Sequence
 from dataclasses import replace
-from datetime import UTC, datetime
 from typing import Any
 
 import numpy as np
@@ -20,86 +17,19 @@ from kinematics.errors import KinematicsError
 from service.convert import UNITS
 from service.errors import ServiceError, UnusableValue
 from service.operations.arms import Arms
-from service.operations.envelopes import envelope_question
 from service.operations.reach import ManyTargets
 from service.operations.samples import samples_asked
-from service.settings import Settings
-from service.storage.opening import OpenStorage, open_storage
-from service.storage.ports import SUCCEEDED, Head, Survey, SurveyStorage
-from service.surveys import envelopes, reach_checks, samples
-from service.surveys.kinds import Kind, Report
+from service.storage.opening import OpenStorage
+from service.storage.ports import Head
+from service.surveys import reach_checks, samples
+from service.surveys.kinds import Report
 from service.surveys.reach_pieces import given_rows, rows_of
 from service.surveys.registry import SURVEY_KINDS
-from service.wire.arms import ReadArm, read_arm
-from service.wire.envelopes import EnvelopeRequest
+from service.wire.arms import ReadArm
 from service.wire.reach_request import ReachRequest
 from service.wire.reach_targets import read_targets
 from service.wire.samples import SamplesRequest
-
-AT = datetime(2026, 3, 4, 5, 6, 7, tzinfo=UTC)
-ROW = {"joint": "revolute", "a": 400, "alpha": 0, "d": 0, "theta": 0, "travel": [-170, 170]}
-SLIDE = {"joint": "prismatic", "a": 0, "alpha": 0, "d": 0, "theta": 0}
-ARM = {
-    "name": "two-turns",
-    "convention": "standard",
-    "units": "mm-deg",
-    "rows": [{**ROW, "working_travel": [-90, 90]}, {**ROW, "a": 300}],
-}
-
-
-@pytest.fixture
-def opened() -> Iterator[OpenStorage]:
-    with closing(open_storage(Settings(database=":memory:"))) as storage:
-        yield storage
-
-
-@pytest.fixture
-def arms(opened: OpenStorage) -> Arms[ReadArm]:
-    stored = Arms(opened.arms, read_arm)
-    stored.create(ARM)
-    return stored
-
-
-def made(
-    store: SurveyStorage,
-    arms: Arms[ReadArm],
-    kind: Kind,
-    request: dict[str, Any],
-    seed: int | None = None,
-) -> Survey:
-    """Make all pieces of a survey, in an order that a seed gives, and return it as it then is."""
-    accepted = kind.accept(arms, request)
-    about = orjson.loads(
-        orjson.dumps({**accepted.about, "software": "1"}, option=orjson.OPT_SERIALIZE_NUMPY)
-    )
-    name = f"{seed or 0:020x}"
-    survey = Survey(name, kind.name, "", accepted.request, about, accepted.total, AT)
-    pieces = list(accepted.pieces)
-    assert sum(piece.size for piece in pieces) == accepted.total
-    store.add(survey, pieces, key=None, digest="")
-    prepared = kind.prepare(kind.setup(arms, survey))
-    if seed is not None:
-        random.Random(seed).shuffle(pieces)
-    store.begin(name, AT)
-    for piece in pieces:
-        store.keep(name, [kind.make(prepared, piece)])
-    store.end(name, SUCCEEDED, AT)
-    found = store.get(name)
-    assert found is not None
-    return found
-
-
-def told(store: SurveyStorage, survey: Survey, wanted: Any) -> bytes:
-    answer = SURVEY_KINDS[survey.kind].told(survey, wanted, store)
-    pieces = range(len(store.sizes(survey.id)))
-    parts = [answer.part(number, store.made(survey.id, number)) for number in pieces]
-    return b"".join([answer.head, *parts, answer.tail])
-
-
-def of_no_survey(document: bytes) -> dict[str, Any]:
-    read: dict[str, Any] = orjson.loads(document)
-    return {key: value for key, value in read.items() if key not in ("survey", "software")}
-
+from tests.service.surveys.surveys_made import ARM, ASKEW, ROW, SLIDE, made, of_no_survey, told
 
 SAMPLES = {"arm": "two-turns", "count": 20_000, "seed": 5, "orientations": True, "joints": True}
 
@@ -173,22 +103,6 @@ def test_approaches_count_as_in_reach_checks(opened: OpenStorage, arms: Arms[Rea
     ]
 
 
-@pytest.mark.parametrize("seed", [1, 2])
-def test_an_envelope_is_that_of_the_answer(
-    opened: OpenStorage, arms: Arms[ReadArm], seed: int
-) -> None:
-    request = {"arm": "two-turns"}
-    survey = made(opened.surveys, arms, envelopes.Envelopes(), request, seed=seed)
-    assert survey.total == 2
-    asked = envelope_question(arms, EnvelopeRequest.model_validate(request))
-    whole = asked.answer({within: asked.found(within) for within in asked.within})
-    expected = orjson.loads(orjson.dumps(whole, option=orjson.OPT_SERIALIZE_NUMPY))
-    assert of_no_survey(told(opened.surveys, survey, "json")) == expected
-    drawing = told(opened.surveys, survey, "svg")
-    assert drawing == envelopes.sheet_of(survey, envelopes._kept(survey, opened.surveys))
-    assert b"<svg" in drawing[:200]
-
-
 def test_what_was_asked_means_the_same_after_the_arm_changed(
     opened: OpenStorage, arms: Arms[ReadArm]
 ) -> None:
@@ -215,6 +129,9 @@ def test_what_was_asked_means_the_same_after_the_arm_changed(
         ("samples", {"count": 5, "positions": False}, ("positions",)),
         ("envelope", {"resolution": 0}, ("resolution",)),
         ("envelope", {"resolution": -3}, ("resolution",)),
+        ("envelope", {"arm": ASKEW, "resolution": 0.4}, ("resolution",)),
+        ("envelope", {"arm": ASKEW, "resolution": 1e-300}, ("resolution",)),
+        ("envelope", {"arm": ASKEW, "resolution": 900}, ("resolution",)),
         ("envelope", {"point": "wrist"}, ("point",)),
         ("envelope", {"arm": {**ARM, "rows": []}}, ("arm", "rows")),
         ("envelope", {"arm": {**ARM, "rows": [SLIDE]}}, ("arm", "rows", 0, "travel")),

@@ -47,6 +47,15 @@ class Echo:
         return MadePiece(piece.number, piece.given * 2, {"seen": piece.size})
 
 
+class GatheringEcho(Echo):
+    """The same, with a last piece that tells how many others there were, and all of them."""
+
+    def gather(self, prepared: object, piece: GivenPiece, made: Sequence[bytes]) -> MadePiece:
+        self.meanwhile(piece.number)
+        self.made.append(piece.number)
+        return MadePiece(piece.number, bytes([len(made)]) + b"".join(made), {})
+
+
 class DyingExecutor(Executor):
     """Every task finds its process dead."""
 
@@ -100,8 +109,12 @@ class Bench:
 
 
 @pytest.fixture
-def bench(monkeypatch: pytest.MonkeyPatch) -> Iterator[Bench]:
-    kind = Echo()
+def kind() -> Echo:
+    return Echo()
+
+
+@pytest.fixture
+def bench(kind: Echo, monkeypatch: pytest.MonkeyPatch) -> Iterator[Bench]:
     for module in (runner, worker, registry):
         monkeypatch.setattr(module, "SURVEY_KINDS", {"echo": kind})
     opened = open_storage(Settings(database=":memory:"))
@@ -143,6 +156,45 @@ def test_what_is_made_already_is_not_made_again(bench: Bench) -> None:
     assert bench.over().done == 60
     assert bench.store.made("a1", 4) == b"before"
     assert sorted(bench.kind.made) == [n for n in range(20) if n != 4]
+
+
+GATHERED = bytes([19]) + b"".join(piece.given * 2 for piece in PIECES[:-1])
+
+
+@pytest.mark.parametrize("kind", [GatheringEcho()])
+@pytest.mark.parametrize("deaths", [0, MOST_DEATHS])
+@pytest.mark.parametrize("before", [[], [0, 7], [*range(19)]], ids=len)
+def test_the_last_piece_waits_for_all_others(bench: Bench, deaths: int, before: list[int]) -> None:
+    bench.kind.made.clear()
+    bench.pool.deaths = deaths
+    bench.add()
+    bench.store.begin("a1", AT)
+    bench.store.keep("a1", [MadePiece(n, PIECES[n].given * 2, {}) for n in before])
+    bench.runner.wake()
+    found = bench.over()
+    assert (found.state, found.done) == ("succeeded", 60)
+    assert sorted(bench.kind.made) == [n for n in range(20) if n not in before]
+    assert bench.kind.made[-1] == 19
+    assert bench.store.made("a1", 19) == GATHERED
+
+
+@pytest.mark.parametrize("kind", [GatheringEcho()])
+def test_a_worker_that_dies_at_the_last_piece_costs_that_alone(bench: Bench) -> None:
+    dies = [True]
+
+    def meanwhile(number: int) -> None:
+        if number == 19 and dies:
+            dies.clear()
+            raise BrokenExecutor("killed")
+
+    bench.kind.made.clear()
+    bench.kind.meanwhile = meanwhile
+    bench.add()
+    bench.runner.wake()
+    assert bench.over().state == "succeeded"
+    assert not dies
+    assert sorted(bench.kind.made) == list(range(20))
+    assert bench.store.made("a1", 19) == GATHERED
 
 
 def test_dead_workers_cost_their_chunks_alone(bench: Bench) -> None:
