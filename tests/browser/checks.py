@@ -20,8 +20,8 @@ RING = 3.0
 """Width and least contrast of the ring around what has the focus."""
 
 _INSPECTION = Path(__file__).with_name("inspection.js").read_text(encoding="utf-8")
-# The last expression of the file is the object of its functions.
-_CALL = "const inspect = " + _INSPECTION[_INSPECTION.index("(() =>") :] + "\nreturn inspect."
+# The last expression of the file is the object of its functions; a page is given it once.
+_GIVEN = "window.inspection = " + _INSPECTION[_INSPECTION.index("(() =>") :]
 _NAMED = frozenset(
     [
         "button",
@@ -56,7 +56,9 @@ _UNLESS_PLAIN = frozenset({"region", "form", "table", "grid", "group", "option"}
 
 def measured(screen: Screen, call: str, *values: Any) -> Any:
     """Return what a function of inspection.js says of the page."""
-    return screen.run(_CALL + call + ";", *values)
+    if not screen.run("return 'inspection' in window"):
+        screen.run(_GIVEN)
+    return screen.run(f"return inspection.{call};", *values)
 
 
 def contrast_faults(screen: Screen) -> list[str]:
@@ -103,14 +105,12 @@ def size_faults(screen: Screen) -> list[str]:
 
 def focus_faults(screen: Screen, most: int = 400) -> list[str]:
     """Go through the page by Tab; return what was left out, out of order or not seen."""
-    screen.run("document.activeElement?.blur(); scrollTo(0, 0)")
-    screen.run("window.focusOrder = []")
-    expected = measured(screen, "order().length")
+    expected = measured(screen, "begin()")
     assert expected < most, f"{expected} things to press on one page"
     faults = []
     for _ in range(expected):
         screen.press("Tab")
-        seen = measured(screen, "focused()")
+        seen = screen.run("return inspection.focused()")
         if seen is None:
             faults.append("the focus left the page early")
             break
@@ -120,12 +120,7 @@ def focus_faults(screen: Screen, most: int = 400) -> list[str]:
             )
         if not seen["within"]:
             faults.append(f"focus outside of the window: {seen['where']}")
-        screen.run("window.focusOrder.push(document.activeElement)")
-    missed = measured(
-        screen,
-        "order().filter((one, at) => window.focusOrder[at] !== one).map("
-        "(one) => `${one.localName} ${one.id} ${(one.textContent || '').trim().slice(0, 40)}`)",
-    )
+    missed = measured(screen, "missed()")
     return [*faults, *(f"out of order or not reached: {one}" for one in missed)]
 
 

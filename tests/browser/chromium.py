@@ -31,7 +31,7 @@ MISSING = (
 PICTURES = "ARMSPAN_TEST_PICTURES"
 """Names the folder that pictures of all pages and states are written to, for a person to judge."""
 
-PATIENCE_S = 10.0
+PATIENCE_S = 30.0
 KEYS = {
     "Tab": (9, ""),
     "Enter": (13, "\r"),
@@ -98,7 +98,7 @@ class Screen:
 
     def __init__(self, driver: Any) -> None:
         self.driver = driver
-        self._url = ""
+        self._url = "what the browser begins with"
 
     def open(
         self, url: str, look: Look | None = None, *, ready: str = "", fresh: bool = True
@@ -136,6 +136,9 @@ class Screen:
 
     def forget(self) -> None:
         """Leave the page and forget what it said and asked for."""
+        if not self._url:
+            return
+        self._url = ""
         self.driver.get("about:blank")
         self.driver.get_log("browser")
         self.driver.get_log("performance")

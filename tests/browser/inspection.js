@@ -171,15 +171,25 @@
     });
   };
 
+  // Going through a page by Tab: where the focus has been, and what it should have come to.
+  let been = [];
+  const begin = () => {
+    document.activeElement?.blur();
+    scrollTo(0, 0);
+    been = [];
+    return order().length;
+  };
+  const missed = () => order().filter((one, at) => been[at] !== one).map(where);
+
   // The ring around what has the focus: how wide, and its contrast with the ground beside it.
   const focused = () => {
     const element = document.activeElement;
     if (!element || element === document.body) return null;
+    been.push(element);
     const style = getComputedStyle(element);
     const around = ground(element.parentElement, canvasColour());
     const box = element.getBoundingClientRect();
     return {
-      element,
       where: where(element),
       width: style.outlineStyle === "none" ? 0 : parseFloat(style.outlineWidth),
       contrast: style.outlineStyle === "auto" ? 21
@@ -257,5 +267,5 @@
     return one.scrollWidth > one.clientWidth + 1 && one.innerText?.trim();
   }).map(where);
 
-  return { contrasts, fields, small, order, focused, structure, wide, cut, contrast, colour };
+  return { contrasts, fields, small, begin, focused, missed, structure, wide, cut, contrast, colour };
 })();

@@ -3,7 +3,7 @@
 Left out: looks in both themes and at all widths (test_every_page.py).
 """
 
-import time
+from collections.abc import Callable, Iterator
 
 import httpx
 import pytest
@@ -36,12 +36,26 @@ STATES = {
 }
 
 
+@pytest.fixture(scope="module")
+def shared(tab: Screen, hall: ServerProcess) -> Iterator[Callable[[], Screen]]:
+    """The board of the hall, on a large screen: opened once for all that only look at it."""
+    address = f"{hall.url}/"
+
+    def opened() -> Screen:
+        if tab.run("return document.body.dataset.looked ?? ''") != address:
+            tab.open(address, Look(1920, 1080), ready=READY)
+            tab.until(ALL_THERE)
+            tab.run("document.body.dataset.looked = arguments[0]", address)
+        return tab
+
+    yield opened
+    tab.forget()
+
+
 @pytest.fixture
-def board(screen: Screen, hall: ServerProcess) -> Screen:
-    """The board of the hall, on a large screen."""
-    screen.open(f"{hall.url}/", Look(1920, 1080), ready=READY)
-    screen.until(ALL_THERE)
-    return screen
+def board(shared: Callable[[], Screen]) -> Screen:
+    """The board as it stands."""
+    return shared()
 
 
 def card_text(screen: Screen, arm: str) -> str:
@@ -123,14 +137,60 @@ def test_hostile_words_stay_words(board: Screen) -> None:
     assert not [one for one in board.requests() if one.endswith("/x")]
 
 
-def test_numbers_can_be_read_from_five_metres(board: Screen) -> None:
-    """The largest figures of a card are at least 4 % of the width of the screen."""
-    sizes = board.run(
-        f"return [...{CARD.format('regular')}.querySelectorAll('*')].filter((one) =>"
-        " /^[\\s\\u2212\\d.,]+$/.test(one.textContent) && one.textContent.trim())"
-        ".map((one) => parseFloat(getComputedStyle(one).fontSize))"
+def seen(screen: Screen) -> tuple[float, float]:
+    """Return how large figures are and how far the last card reaches, in shares of the screen."""
+    figure, bottom = screen.run(
+        f"const figures = {CARD.format('regular')}.querySelectorAll('.place dd'), all = "
+        "[...document.querySelectorAll('[data-arm]')].map((x) => x.getBoundingClientRect().bottom);"
+        " return [parseFloat(getComputedStyle(figures[0]).fontSize) / innerWidth,"
+        " Math.max(...all) / innerHeight]"
     )
-    assert max(sizes) >= 0.04 * 1920
+    return figure, bottom
+
+
+def test_twelve_arms_are_on_one_screen_and_seven_are_read_from_five_metres(board: Screen) -> None:
+    figure, bottom = seen(board)
+    assert figure >= 0.026
+    assert bottom <= 1
+    seven = ",".join(["regular", *(name for name in sorted(HALL) if name != "regular")][:7])
+    board.open(f"{_url(board)}/?arms={seven}", Look(1280, 800), ready=READY)
+    for look in (Look(1280, 800), Look(1920, 1080)):
+        board.look(look)
+        size = f"getComputedStyle({CARD.format('regular')}.querySelector('.place dd')).fontSize"
+        board.until(f"parseFloat({size}) >= 0.039 * innerWidth")
+        assert seen(board)[1] <= 1
+    # Who chose which arms are shown is told of those that stood still since before.
+    assert "891.1" in card_text(board, "regular")
+
+
+def test_no_card_grows_by_what_it_says(board: Screen) -> None:
+    sizes = board.run(
+        "return [...document.querySelectorAll('[data-arm]')].map((one) => one.offsetHeight + ' '"
+        " + one.querySelector('.head').offsetHeight)"
+    )
+    assert len({one.split()[0] for one in sizes}) == 1
+    assert len({one.split()[1] for one in sizes}) == 1
+    inside = "[...document.querySelectorAll('.card > div')].filter((one) => one.scrollHeight > "
+    assert board.run(f"return {inside} one.clientHeight + 1).length") == 0
+
+
+def test_uncertain_is_plain_from_across_the_hall(board: Screen) -> None:
+    """By word, shape and line, each unlike those of stale and of good."""
+    look = (
+        "const card = document.querySelector('[data-arm=\"{}\"]'), word = [...card.querySelectorAll"
+        "('b')].find((one) => /UNCERTAIN|STALE/.test(one.textContent)), style = (one) =>"
+        " getComputedStyle(one); return [word ? parseFloat(style(word).fontSize) : 0,"
+        " style(card.querySelector('.head')).backgroundColor, style(card.querySelector('dd'))"
+        ".backgroundImage, style(card).backgroundImage, card.querySelector('dl').hidden]"
+    )
+    word, head, line, hatch, no_figure = board.run(look.format("leapt"))
+    good = board.run(look.format("regular"))
+    stale = board.run(look.format("stale"))
+    assert word >= 24
+    assert head not in (good[1], stale[1])
+    assert ("gradient" in line, "gradient" in good[2]) == (True, False)
+    assert ("gradient" in hatch, "gradient" in stale[3]) == (False, True)
+    assert (no_figure, stale[4]) == (False, True)
 
 
 def test_a_card_leads_to_its_sheet_by_keyboard(board: Screen) -> None:
@@ -149,7 +209,8 @@ def test_what_changes_is_written_and_what_does_not_is_left(
     with httpx.Client(base_url=hall.url) as client:
         feed(client, "regular", [UPRIGHT[0] + 5.0, *UPRIGHT[1:]])
     screen.until("window.written.includes('regular')")
-    time.sleep(1.2)  # ages are written twice a second
+    # Ages are written twice a second, of all cards in one turn.
+    screen.until("window.written.filter((name) => name === 'stale').length > 1")
     assert card_text(screen, "regular") != before
     written = set(screen.run("return window.written"))
     with httpx.Client(base_url=hall.url) as client:

@@ -3,8 +3,6 @@
 Left out: what a card says (test_board.py).
 """
 
-from collections.abc import Callable
-
 import httpx
 
 from tests.browser.chromium import Look, Screen
@@ -35,9 +33,9 @@ def test_the_address_says_who_stands_where(screen: Screen, hall: ServerProcess) 
 
 
 def test_new_arms_come_last_and_removed_ones_leave_a_gap(
-    screen: Screen, launch: Callable[..., ServerProcess]
+    screen: Screen, empty: ServerProcess
 ) -> None:
-    server = launch()
+    server = empty
     with httpx.Client(base_url=server.url) as client:
         for name in ("b-arm", "d-arm"):
             client.post("/v1/arms", json={**PATTERN, "name": name}).raise_for_status()
@@ -55,5 +53,7 @@ def test_new_arms_come_last_and_removed_ones_leave_a_gap(
         screen.until("!document.querySelector('[data-arm=a-arm]')")
         assert screen.run(PLACES) == ["-", "d-arm", "-"]
         client.post("/v1/arms", json={**PATTERN, "name": "a-arm"}).raise_for_status()
-    screen.open(f"{server.url}/", Look(1280, 800), ready=READY)
-    assert screen.run(PLACES) == ["a-arm", "d-arm"]
+        screen.open(f"{server.url}/", Look(1280, 800), ready=READY)
+        assert screen.run(PLACES) == ["a-arm", "d-arm"]
+        for name in ("a-arm", "d-arm"):
+            client.delete(f"/v1/arms/{name}", headers={"if-match": "*"}).raise_for_status()

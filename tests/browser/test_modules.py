@@ -159,6 +159,36 @@ def test_events_are_whole_however_their_bytes_come(ask: Callable[..., Any]) -> N
         assert told == [["pose", '{"a": 1,\n"b": ":"}', "7"], ["message", "x", ""]]
 
 
+def test_cards_fill_the_screen_and_never_more(ask: Callable[..., Any]) -> None:
+    """All cards are seen where figures stay legible; else the board scrolls, as wide as it is."""
+    screens = [(1896, 964), (1248, 684), (366, 560)]
+    body = "return values[0].map(([n, w, h]) => all.cardsFitted(n, w, h))"
+    asked = [(count, *size) for size in screens for count in (1, 2, 7, 8, 12, 30, 50)]
+    for (count, width, height), told in zip(asked, ask("board_fit.js", body, asked), strict=True):
+        rows = -(-count // told["columns"])
+        across = (width - 12 * (told["columns"] - 1)) / told["columns"]
+        assert told["figure"] * 5.85 <= across, "eight characters, axis and unit have room"
+        assert told["words"] >= 14
+        if rows * told["high"] + 12 * (rows - 1) <= height + rows:
+            assert told["figure"] >= 26
+        else:
+            assert told["columns"] == {1896: 4, 1248: 4, 366: 1}[width]
+    assert ask("board_fit.js", body, [(12, 1896, 964)])[0]["columns"] == 4
+    assert ask("board_fit.js", "return all.cardsFitted(12, 1896, 964, 6).columns") == 6
+
+
+@pytest.mark.parametrize(
+    ("said", "shown"),
+    [
+        ("base direction (0.95, -0.05, 0.30)", "base direction (0.95, −0.05, 0.30)"),
+        ("-1 x row 2", "−1 x row 2"),
+        ("arm-2, fixture-1 of 2-3 at 1e-09", "arm-2, fixture-1 of 2-3 at 1e-09"),
+    ],
+)
+def test_sentences_have_true_minus_signs(ask: Callable[..., Any], said: str, shown: str) -> None:
+    assert ask("numbers.js", "return all.signs(values[0])", said) == shown
+
+
 def test_elements_take_text_as_text(ask: Callable[..., Any]) -> None:
     body = """
       const made = all.el("p", { title: values[0], lang: null }, values[0], 3, [null]);

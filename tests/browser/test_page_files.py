@@ -16,7 +16,7 @@ from tests.conftest import ServerProcess
 FOLDER = Path(__file__).resolve().parents[2] / "service/web/static/pages"
 MODULES = sorted(FOLDER.glob("*.js"))
 SHEETS = sorted(FOLDER.glob("*.html"))
-MOST_SENT, MOST_WRITTEN = 100_000, 230_000
+MOST_SENT, MOST_WRITTEN = 100_000, 250_000
 """Bytes of all three pages with all they need: as a browser receives them, and as they stand."""
 MOST_LINES, MOST_IN_FUNCTION = 300, 40
 WORDS = "words.js"
@@ -26,6 +26,7 @@ UNSAFE = re.compile(
     r"\b(innerHTML|outerHTML|insertAdjacentHTML|createContextualFragment|setHTMLUnsafe|eval"
     r"|DOMParser|srcdoc)\b|document\.write|new Function|javascript:"
 )
+_EXPORT = re.compile(r"^export (?:async )?(?:const|function) (\w+)", re.MULTILINE)
 # Names of things that are no words: of events, keys, elements, files, fonts, formats.
 _KEY = re.compile(
     r"^(Arrow(Left|Right|Up|Down)|Page(Up|Down)|Enter|Escape|Home|End|Tab|Delete|Esc)$"
@@ -67,6 +68,38 @@ def test_modules_are_small_and_say_what_they_are(file: Path) -> None:
 def test_the_modules_were_found() -> None:
     assert len(MODULES) >= 10
     assert len(SHEETS) >= 3
+
+
+def test_what_a_module_gives_is_taken() -> None:
+    """By another module, or by a test that asks the module itself."""
+    texts = {file.name: file.read_text(encoding="utf-8") for file in MODULES}
+    asked = Path(__file__).with_name("test_modules.py").read_text(encoding="utf-8")
+    found, unused = 0, []
+    for file, text in texts.items():
+        for name in _EXPORT.findall(text):
+            found += 1
+            taking = re.compile(rf'import {{[^}}]*\b{name}\b[^}}]*}} from "\./{file}"')
+            others = (other for module, other in texts.items() if module != file)
+            if f"all.{name}(" not in asked and not any(map(taking.search, others)):
+                unused.append(f"{file}: {name}")
+    assert found > 40
+    assert unused == []
+
+
+def test_styles_are_of_something_that_is_there() -> None:
+    """Each class and id of a style sheet stands in a page, a module or the code of pages."""
+    web = [file for file in FOLDER.parents[1].rglob("*") if file.suffix in (".py", ".js", ".html")]
+    written = "\n".join(file.read_text(encoding="utf-8") for file in web)
+    put_together = tuple(f"{part}-" for part in re.findall(r"`([a-z]+)-\$\{", written))
+    names = set()
+    for file in FOLDER.glob("*.css"):
+        rules = re.sub(r"/\*.*?\*/", "", file.read_text(encoding="utf-8"), flags=re.DOTALL)
+        for selector in re.findall(r"([^{}]+)\{", rules):
+            names.update(re.findall(r"[.#]([a-z][a-z_-]+)", selector))
+    assert len(names) > 50
+    unknown = {name for name in names if not name.startswith(put_together)}
+    unused = [one for one in unknown if not re.search(rf"(?<![\w-]){one}(?![\w-])", written)]
+    assert unused == []
 
 
 @pytest.mark.parametrize("file", MODULES, ids=lambda file: file.name)
@@ -158,10 +191,11 @@ def test_files_of_pages_are_served_and_no_others(demo: ServerProcess) -> None:
     kinds = {".js": "text/javascript", ".css": "text/css", ".svg": "image/svg+xml"}
     served = [file for file in FOLDER.iterdir() if file.suffix in kinds]
     assert served
-    for file in served:
-        answer = httpx.get(f"{demo.url}/pages/{file.name}")
-        assert answer.content == file.read_bytes()
-        assert answer.headers["content-type"].split(";")[0] == kinds[file.suffix]
-        assert answer.headers["x-content-type-options"] == "nosniff"
-    for name in ("__init__.py", "..%2f__init__.py", "%2e%2e/pages.py", "board", "none.js"):
-        assert httpx.get(f"{demo.url}/pages/{name}").status_code == 404
+    with httpx.Client(base_url=f"{demo.url}/pages/") as client:
+        for file in served:
+            answer = client.get(file.name)
+            assert answer.content == file.read_bytes()
+            assert answer.headers["content-type"].split(";")[0] == kinds[file.suffix]
+            assert answer.headers["x-content-type-options"] == "nosniff"
+        for name in ("__init__.py", "..%2f__init__.py", "%2e%2e/pages.py", "board", "none.js"):
+            assert client.get(name).status_code == 404

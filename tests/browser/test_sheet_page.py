@@ -7,6 +7,7 @@ import httpx
 import pytest
 
 from tests.browser.chromium import Look, Screen
+from tests.browser.hall import PATTERN
 from tests.browser.test_every_page import READY
 from tests.conftest import ServerProcess
 
@@ -81,6 +82,36 @@ def test_the_texts_name_the_address_to_ask(sheet: Screen) -> None:
 
 
 def test_the_table_is_that_of_the_stored_arm(sheet: Screen, demo: ServerProcess) -> None:
-    rows = httpx.get(f"{demo.url}/v1/arms/{ARM}").json()["arm"]["rows"]
-    told = sheet.run("return document.querySelectorAll('#table tbody tr').length")
-    assert told == len(rows)
+    arm = httpx.get(f"{demo.url}/v1/arms/{ARM}").json()["arm"]
+    read = (
+        "return [...document.querySelectorAll('#table table')].map((table) =>"
+        " [...table.querySelectorAll('tbody tr')].map((row) =>"
+        " [...row.children].map((one) => one.textContent)))"
+    )
+    rows, standing = sheet.run(read)
+    assert [row[0] for row in rows] == [str(i + 1) for i in range(len(arm["rows"]))]
+    # Where a joint value comes in, and with which sign: axis 3 turns against row 3.
+    assert rows[2][2:6] == ["0", "90", "0", "90 \u2212 q3"]
+    assert [row[0] for row in standing] == ["base", *arm["tools"], *arm["frames"]]
+    assert standing[1][:4] == ["gripper", "1", "flange", "0, 0, 148"]
+
+
+def test_what_changed_between_two_revisions(screen: Screen, demo: ServerProcess) -> None:
+    document = {**PATTERN, "name": "changed"}
+    rows = [dict(row) for row in document["rows"]]
+    rows[1]["theta"] = -0.35
+    tool = {"position": [0, 0, 500], "orientation": {"form": "xyz-fixed", "values": [0, 0, 0]}}
+    after = {**document, "rows": rows, "tools": {**document["tools"], "long": tool}}
+    with httpx.Client(base_url=demo.url) as client:
+        client.post("/v1/arms", json=document).raise_for_status()
+        client.put("/v1/arms/changed", json=after, headers={"If-Match": "*"}).raise_for_status()
+        screen.open(f"{demo.url}/arms/changed", ready=READY)
+        screen.run("document.querySelectorAll('details').forEach((one) => { one.open = true; })")
+        told = screen.until("document.querySelector('.changes tbody')?.innerText")
+        client.delete("/v1/arms/changed", headers={"If-Match": "*"}).raise_for_status()
+    assert [line.split("\t") for line in told.splitlines()] == [
+        ["rows 2 theta", "0", "\u22120.35"],
+        ["tools long position", "not there", "0, 0, 500"],
+        ["tools long orientation form", "not there", "xyz-fixed"],
+        ["tools long orientation values", "not there", "0, 0, 0"],
+    ]

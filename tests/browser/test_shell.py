@@ -4,15 +4,14 @@ Left out: what a page shows of an arm (the modules named after the pages).
 """
 
 import re
-import socket
-from collections.abc import Callable
 
 import httpx
 import pytest
 
 from tests.browser.chromium import Look, Screen
-from tests.browser.hall import fill
+from tests.browser.hall import HALL, fill
 from tests.browser.test_every_page import READY
+from tests.browser.wire import wire_to
 from tests.conftest import ServerProcess
 
 GROUND = "getComputedStyle(document.documentElement).backgroundColor"
@@ -21,11 +20,14 @@ PAGES = ("/", "/arms/regular", "/arms/regular/reach")
 
 
 @pytest.mark.parametrize("path", PAGES)
-def test_paper_is_chosen_kept_and_given_back(
+def test_cautions_stand_below_and_paper_is_chosen_kept_and_given_back(
     screen: Screen, hall: ServerProcess, path: str
 ) -> None:
     """By hand it is the other one, also on the next page; ``auto`` follows the screen again."""
     screen.open(hall.url + path, Look(theme="dark"), ready=READY)
+    footer = screen.run("return document.querySelector('footer').innerText")
+    assert "Not a safety function" in footer
+    assert re.search(r"Armspan \d", footer)
     dark = screen.run(f"return {GROUND}")
     choose = "const choice = document.querySelector('#theme-choice'); choice.value = '{}'; "
     choose += "choice.dispatchEvent(new Event('change', {{ bubbles: true }}))"
@@ -48,13 +50,7 @@ def test_the_first_stop_leads_past_the_header(screen: Screen, hall: ServerProces
 
 
 @pytest.mark.parametrize("path", PAGES)
-def test_cautions_and_version_stand_on_each_page(
-    screen: Screen, hall: ServerProcess, path: str
-) -> None:
-    screen.open(hall.url + path, ready=READY)
-    footer = screen.run("return document.querySelector('footer').innerText")
-    assert "Not a safety function" in footer
-    assert re.search(r"Armspan \d", footer)
+def test_a_bare_page_keeps_one_caution(screen: Screen, hall: ServerProcess, path: str) -> None:
     screen.open(f"{hall.url}{path}?bare", ready=READY)
     text = screen.text()
     assert "Not a safety function" in text, "one caution stays, however small the frame"
@@ -87,28 +83,41 @@ def test_a_hostile_name_is_only_words(screen: Screen, hall: ServerProcess, name:
     )
 
 
-@pytest.fixture
-def port() -> int:
-    with socket.socket() as found:
-        found.bind(("127.0.0.1", 0))
-        number: int = found.getsockname()[1]
-    return number
-
-
-@pytest.mark.parametrize("path", PAGES)
-def test_a_server_that_goes_is_missed_and_one_that_comes_back_is_taken_up(
-    screen: Screen, launch: Callable[..., ServerProcess], port: int, path: str
+def test_a_server_started_anew_is_taken_up(
+    screen: Screen, hall: ServerProcess, empty: ServerProcess
 ) -> None:
-    server = launch("--port", str(port))
-    fill(server.url)
-    screen.open(server.url + path, Look(1280, 800), ready=READY)
-    assert screen.run(f"return {CONNECTION}") == ""
-    server.terminate()
-    screen.until(f"/gone since \\d\\d:\\d\\d/.test({CONNECTION})", 15)
-    screen.picture(f"gone{path.replace('/', '-').rstrip('-')}")
-    told = [one for one in screen.told() if one.role == "status"]
-    assert told, "the line is told to a screen reader"
-    again = launch("--port", str(port))
-    fill(again.url)
-    screen.until(f"!/gone since/.test({CONNECTION})", 20)
-    again.terminate()
+    """It counts afresh, and knows nothing of arms that were told before."""
+    near = "document.querySelector('[data-arm=\"near\"]')"
+    with wire_to(hall.port) as wire, httpx.Client(base_url=empty.url) as client:
+        screen.open(wire.url, Look(1280, 800), ready=READY)
+        assert screen.run(f"return {CONNECTION}") == ""
+        assert screen.run(f"return {near}.dataset.state") == "good"
+        wire.cut()
+        screen.until(f"/gone since \\d\\d:\\d\\d/.test({CONNECTION})")
+        assert screen.run(f"return {near}.dataset.state") == "stale"
+        screen.picture("gone")
+        fill(empty.url, {"near": HALL["near"]})
+        wire.mend(empty.port)
+        screen.until(f"{near}.dataset.state === 'good'")
+        screen.until("document.querySelectorAll('[data-arm]').length === 1")
+        assert "gone since" not in screen.run(f"return {CONNECTION}")
+        client.delete("/v1/arms/near", headers={"if-match": "*"}).raise_for_status()
+
+
+@pytest.mark.parametrize("path", PAGES[1:])
+def test_a_server_that_goes_is_missed_and_one_that_comes_back_is_taken_up(
+    screen: Screen, hall: ServerProcess, path: str
+) -> None:
+    with wire_to(hall.port) as wire:
+        screen.open(wire.url + path, Look(1280, 800), ready=READY)
+        assert screen.run(f"return {CONNECTION}") == ""
+        top = "document.querySelector('main').getBoundingClientRect().top"
+        before = screen.run(f"return {top}")
+        wire.cut()
+        screen.until(f"/gone since \\d\\d:\\d\\d/.test({CONNECTION})")
+        assert screen.run(f"return {top}") == before, "what is below the line does not move"
+        screen.picture(f"gone{path.replace('/', '-').rstrip('-')}")
+        told = [one for one in screen.told() if one.role == "status"]
+        assert told, "the line is told to a screen reader"
+        wire.mend()
+        screen.until(f"!/gone since/.test({CONNECTION})")

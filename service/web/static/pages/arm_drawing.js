@@ -3,7 +3,7 @@
 // paper from back to front and computes nothing about the arm.
 // Left out: where views stand on a sheet (sheet_views.js), lines and letters (pen.js).
 
-import { ground, labelsOn, lostMotion, triad } from "./marks.js";
+import { ground, labelsOn, lostMotion, rising, triad } from "./marks.js";
 import { bounds, column } from "./projection.js";
 import { bodiesOf } from "./solids.js";
 
@@ -17,6 +17,7 @@ import { bodiesOf } from "./solids.js";
  * @property {"thick" | "heavyDashed"} [kind] of the arm's edges
  * @property {string} [struck] a word: the arm is drawn as a dashed line alone
  * @property {boolean} [balloons] number the joints
+ * @property {{axis: object, sign: number}} [rising] an axis of the outline whose sense is shown
  */
 
 /** Return every place a scene takes, to be fitted on the paper. @param {Scene} scene */
@@ -56,10 +57,11 @@ export function drawArm(pen, put, scene, how = {}) {
   for (const frame of scene.frames ?? []) {
     triad(pen, put, frame.matrix, how.axes ?? 26, labels, frame.name);
   }
-  for (const line of how.keep ?? []) labels.keepLine(line, 8);
+  for (const line of how.keep ?? []) labels.keepLine(line, 12);
   if (scene.struck) pen.line(outline.line.map(put), "dashed");
   else bodiesOf(put, outline, size, scene.kind).sort((a, b) => a.near - b.near).forEach((body) => body.draw(pen));
   toolPoint(pen, put, scene, labels, how);
+  if (scene.rising) rising(pen, put, scene.rising, labels);
   if (scene.balloons && !scene.struck) balloons(put, outline, size, labels);
   labels.write();
 }

@@ -5,7 +5,7 @@ import { WORDS } from "./words.js";
 
 const SILENT_MS = 10000; // The server sends a comment every 5 s: two are missing.
 const FIRST_WAIT_MS = 500;
-const LONGEST_WAIT_MS = 8000;
+const LONGEST_WAIT_MS = 4000;
 
 /**
  * @typedef {{code: string, title: string, detail: string, status: number, errors: Array}} Problem
@@ -20,7 +20,8 @@ const LONGEST_WAIT_MS = 8000;
  * @returns {Promise<Answer>} data is JSON where the answer is JSON, else text
  */
 export async function ask(path, { method = "GET", body, headers = {}, signal } = {}) {
-  const raw = body === undefined || typeof body === "string" || body instanceof Blob || ArrayBuffer.isView(body);
+  const raw = body === undefined || typeof body === "string"
+    || body instanceof Blob || ArrayBuffer.isView(body);
   const sent = raw ? body : JSON.stringify(body);
   const type = raw ? {} : { "Content-Type": "application/json" };
   try {
@@ -148,6 +149,7 @@ async function dataOf(answer) {
 }
 
 function problemOf(data, status) {
-  if (data && typeof data === "object" && typeof data.code === "string") return { errors: [], ...data, status };
+  const isProblem = data && typeof data === "object" && typeof data.code === "string";
+  if (isProblem) return { errors: [], ...data, status };
   return { code: "unread", title: WORDS.shell.unread, detail: WORDS.shell.unread_detail, status, errors: [] };
 }

@@ -4,32 +4,36 @@
 // Left out: what a card says (board_words.js) and its elements (card.js).
 import { choose, chosen, withQuery } from "./address.js";
 import { ask, follow } from "./ask.js";
+import { cardsFitted } from "./board_fit.js";
 import { saidOf } from "./board_words.js";
 import { card } from "./card.js";
 import { el, fill, setText } from "./elements.js";
 import { clock, UNITS } from "./numbers.js";
-import { back, begin, gone, ready } from "./shell.js";
+import { back, begin, gone, onTheme, ready } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
 const GAP_MS = 100;
 const AGES_MS = 500;
-const NARROW_PX = 430; // Below it, titles of two lines are the rule.
 const NOBODY_MS = 600; // Who has told nothing by then keeps nobody waiting.
-const TIGHT_PX = 250; // Below it, what stood side by side stands one under the other.
+const BELOW_PX = 8; // of paper under the last row
+const PRINTED_COLUMNS = 3;
 const LIST_MS = 30000;
 const TELL_MS = 4000; // Ears are told of changed states in turns, not ten times a second.
 const ANEW_MS = 1500; // After a break all arms are told anew; who is not has no values.
 
 const early = new Map(); // answers about arms that have no place yet
 const places = new Map(); // name -> {card, told, at, epoch, state}
-const told = { list: document.getElementById("cards"), ears: document.getElementById("told"), changes: new Map() };
-const link = { stop: () => {}, goneSince: null, epoch: 0, backAt: -Infinity, drawAt: 0, isWaiting: false };
+const told = {
+  list: document.getElementById("cards"), ears: document.getElementById("told"), changes: new Map() };
+const link = {
+  stop: () => {}, goneSince: null, epoch: 0, backAt: -Infinity, drawAt: 0, isWaiting: false };
 const seen = new IntersectionObserver(look, { rootMargin: "200px" });
 const choice = chosen({ frame: "base", units: "", columns: "", arms: "" });
 
 begin();
 fitChoices();
-new ResizeObserver(measure).observe(told.list);
+addEventListener("resize", measure);
+onTheme(measure);
 listen();
 await list();
 setTimeout(ready, NOBODY_MS);
@@ -58,7 +62,9 @@ async function list() {
     one.holder.replaceChildren(blankBox());
     places.delete(name);
   }
-  setText(document.getElementById("count"), say(WORDS.board[arms.length === 1 ? "count_one" : "count"], { n: arms.length }));
+  const counted = WORDS.board[arms.length === 1 ? "count_one" : "count"];
+  setText(document.getElementById("count"), say(counted, { n: arms.length }));
+  measure();
   if (!told.list.childElementCount) fill(told.list, el("li", {}, WORDS.board.empty));
 }
 
@@ -71,12 +77,17 @@ function blank() {
 }
 
 function place(arm, isStored) {
-  const made = card(arm, withQuery("", { frame: choice.frame === "base" ? "" : choice.frame, units: choice.units }));
+  const frame = choice.frame === "base" ? "" : choice.frame;
+  const made = card(arm, withQuery("", { frame, units: choice.units }));
   const holder = el("li", {}, made.element);
-  if (!places.size && !told.list.querySelector("article")) told.list.replaceChildren(...told.list.querySelectorAll("[aria-hidden]"));
+  if (!places.size && !told.list.querySelector("article")) {
+    told.list.replaceChildren(...told.list.querySelectorAll("[aria-hidden]"));
+  }
   told.list.append(holder);
   seen.observe(made.element);
-  places.set(arm.name, { ...made, holder, told: null, at: 0, epoch: link.epoch, state: "none", isSeen: true, isUnknown: !isStored, isDirty: true, ...early.get(arm.name) });
+  places.set(arm.name, {
+    ...made, holder, told: null, at: 0, epoch: link.epoch, state: "none",
+    isSeen: true, isUnknown: !isStored, isDirty: true, ...early.get(arm.name) });
   early.delete(arm.name);
   writeOne(places.get(arm.name), arm.name);
 }
@@ -84,7 +95,8 @@ function place(arm, isStored) {
 /** Follow the live poses of all arms, as the address says. */
 function listen() {
   link.stop();
-  const path = withQuery("/v1/live/stream", { nearest: 1, rate: 1000 / GAP_MS, frame: choice.frame, units: choice.units });
+  const { frame, units } = choice;
+  const path = withQuery("/v1/live/stream", { nearest: 1, rate: 1000 / GAP_MS, frame, units });
   const stop = follow(path, {
     event: (name, data) => (name === "removed" ? list() : take(JSON.parse(data))),
     gone: (since) => {
@@ -97,7 +109,8 @@ function listen() {
       back();
       if (link.epoch > 1) list();
     },
-    refused: (problem) => places.forEach((one) => Object.assign(one, { told: { ok: false, problem: { say: problem.detail } }, epoch: link.epoch })),
+    refused: (problem) => places.forEach((one) =>
+      Object.assign(one, { told: { ok: false, problem: { say: problem.detail } }, epoch: link.epoch })),
   });
   link.stop = stop;
 }
@@ -106,9 +119,9 @@ function take(answer) {
   const one = places.get(answer.arm.name);
   const news = { told: answer, at: performance.now(), epoch: link.epoch, isDirty: true };
   if (one) Object.assign(one, news);
-  else if (!choice.arms) {
+  else {
     // Of an arm that is new here: the list is read again, unless that is under way.
-    if (!early.size && places.size) list();
+    if (!choice.arms && !early.size && places.size) list();
     early.set(answer.arm.name, news);
   }
   if (!link.isWaiting) {
@@ -140,10 +153,15 @@ function writeOne(one, name) {
     if (now - link.backAt > ANEW_MS) answer = one.told = null;
     else why = WORDS.board.anew;
   }
-  const said = one.isUnknown ? { ...saidOf(null, 0, ""), state: "bad", word: WORDS.board.unknown } : saidOf(answer, now - one.at, why);
+  const said = one.isUnknown
+    ? { ...saidOf(null, 0, ""), state: "bad", word: WORDS.board.unknown }
+    : saidOf(answer, now - one.at, why);
   one.write(said);
   one.isDirty = false;
-  if (said.state !== one.state) told.changes.set(name, say(WORDS.board.ears, { arm: name, state: said.word || WORDS.board[said.state] }));
+  if (said.state !== one.state) {
+    const state = said.word || WORDS.board[said.state];
+    told.changes.set(name, say(WORDS.board.ears, { arm: name, state }));
+  }
   one.state = said.state;
 }
 
@@ -151,46 +169,47 @@ function tellEars() {
   if (!told.changes.size) return;
   const sentences = [...told.changes.values()];
   told.changes.clear();
-  setText(told.ears, sentences.length > 5 ? say(WORDS.board.ears_many, { n: sentences.length }) : sentences.join(" "));
+  const many = sentences.length > 5;
+  setText(told.ears, many ? say(WORDS.board.ears_many, { n: sentences.length }) : sentences.join(" "));
 }
 
-/** Tell the style how wide a card is. */
+/** Tell the style how large cards are: all on the screen at once, where that leaves legible figures. */
 function measure() {
-  const width = parseFloat(getComputedStyle(told.list).gridTemplateColumns);
-  if (!(width > 0)) return;
-  told.list.style.setProperty("--cw", `${(width / 100).toFixed(3)}px`);
-  told.list.toggleAttribute("data-narrow", width < NARROW_PX);
-  told.list.toggleAttribute("data-tight", width < TIGHT_PX);
+  const count = told.list.childElementCount, { width, top } = told.list.getBoundingClientRect();
+  if (!count || !(width > 0)) return;
+  const caution = document.querySelector(".bare-caution").offsetHeight;
+  const height = innerHeight - top - scrollY - BELOW_PX - caution;
+  const isChosen = /^([1-9]|1\d|20)$/.test(choice.columns), isPrinted = matchMedia("print").matches;
+  const asked = isChosen ? Number(choice.columns) : isPrinted ? PRINTED_COLUMNS : 0;
+  const { columns, figure, words, high } = cardsFitted(count, width, isPrinted ? 0 : height, asked);
+  const sizes = {
+    columns, figure: `${figure.toFixed(1)}px`, letters: `${words.toFixed(1)}px`, high: `${high}px` };
+  for (const [name, size] of Object.entries(sizes)) told.list.style.setProperty(`--${name}`, size);
 }
 
 function fitChoices() {
   const select = (name, label, options) => {
-    const known = options.some(([value]) => value === choice[name]) ? options : [...options, [choice[name], choice[name]]];
-    const box = el("select", { onchange: () => chose(name, box.value) }, known.map(([value, text]) => el("option", { value, selected: value === choice[name] }, text)));
+    const now = choice[name];
+    const known = options.some(([value]) => value === now) ? options : [...options, [now, now]];
+    const box = el("select", { onchange: () => chose(name, box.value) },
+      known.map(([value, text]) => el("option", { value, selected: value === now }, text)));
     return el("label", {}, label, box);
   };
   const units = UNITS.map((name) => [name, name]);
   const columns = ["1", "2", "3", "4", "5", "6", "8", "10"].map((n) => [n, n]);
   fill(
     document.getElementById("choices"),
-    select("frame", WORDS.board.frame_choice, [["base", WORDS.board.base], ["world", WORDS.board.world]]),
+    select("frame", WORDS.board.frame_choice,
+      [["base", WORDS.board.base], ["world", WORDS.board.world]]),
     select("units", WORDS.board.units_choice, [["", WORDS.board.units_own], ...units]),
     select("columns", WORDS.board.columns_choice, [["", WORDS.board.columns_auto], ...columns]),
   );
-  fitColumns();
-}
-
-function fitColumns() {
-  const columns = /^([1-9]|1\d|20)$/.test(choice.columns) ? choice.columns : "";
-  if (columns) told.list.style.setProperty("--columns", columns);
-  else told.list.style.removeProperty("--columns");
-  measure();
 }
 
 function chose(name, value) {
   choice[name] = value;
   choose({ [name]: name === "frame" && value === "base" ? "" : value });
-  if (name === "columns") return fitColumns();
+  if (name === "columns") return measure();
   places.clear();
   told.list.replaceChildren();
   list().then(listen);

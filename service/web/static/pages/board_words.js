@@ -1,6 +1,6 @@
 // What a card says, from one answer about a live pose: its state, its figures, its one sentence.
 // Plain functions of what was told and when; left out: elements, and whatever is not on the card.
-import { length, unitsOf } from "./numbers.js";
+import { length, signs, unitsOf } from "./numbers.js";
 import { say, WORDS } from "./words.js";
 
 const AXES = ["x", "y", "z"];
@@ -10,7 +10,7 @@ const LONGEST_PERIOD_MS = 10000;
 const MOVES_FROM = { mm: 1, m: 0.001, in: 0.04 };
 
 /**
- * @typedef {{state: "good"|"uncertain"|"stale"|"bad"|"none", word: string, note: string,
+ * @typedef {{state: "good"|"uncertain"|"stale"|"bad"|"none", word: string,
  *            axes: string[], near: string, mark: string, sentence: string, simulated: boolean,
  *            tool: string, frame: string, unit: string, ageMs: number|null}} Said
  */
@@ -23,47 +23,57 @@ const MOVES_FROM = { mm: 1, m: 0.001, in: 0.04 };
  * @returns {Said}
  */
 export function saidOf(told, sinceMs, gone) {
-  const said = { state: "none", word: "", note: "", axes: [], near: "", mark: "", sentence: "" };
+  const said = { state: "none", word: "", axes: [], near: "", mark: "", sentence: "" };
   Object.assign(said, { simulated: Boolean(told?.simulated), tool: "", frame: "", unit: "", ageMs: null });
-  if (!told) return Object.assign(said, gone ? { state: "stale", word: WORDS.board.stale, sentence: gone } : nothing());
+  const { stale, uncertain, unheard } = WORDS.board;
+  if (!told) return Object.assign(said, gone ? { state: "stale", word: stale, sentence: gone } : nothing());
   if (!told.ok) return Object.assign(said, refused(told, gone));
   const pose = told.poses[0];
   said.ageMs = told.age_ms + sinceMs;
   said.tool = typeof told.tool === "string" ? told.tool : WORDS.board.given_tool;
   said.frame = told.frame;
   said.unit = unitsOf(told.units).length;
-  const unheard = sinceMs > 3 * Math.min(told.input?.period_ms ?? LONGEST_PERIOD_MS, LONGEST_PERIOD_MS) + GRACE_MS && isPrompt(told);
-  if (gone || told.quality === "bad" || unheard) {
-    const why = gone || (told.quality === "bad" ? whyBad(told) : WORDS.board.unheard);
-    return Object.assign(said, { state: "stale", word: WORDS.board.stale, sentence: why, mark: "✕" });
+  const isBad = told.quality === "bad";
+  if (gone || isBad || isUnheard(told, sinceMs)) {
+    const why = gone || (isBad ? whyBad(told) : unheard);
+    return Object.assign(said, { state: "stale", word: stale, sentence: why, mark: "✕" });
   }
   said.axes = AXES.map((_, index) => length(pose.position[index], told.units));
-  said.near = pose.nearest?.say ?? "";
+  said.near = signs(pose.nearest?.say ?? "");
   if (told.quality === "uncertain") {
-    return Object.assign(said, { state: "uncertain", word: WORDS.board.uncertain, sentence: told.say });
+    return Object.assign(said, { state: "uncertain", word: uncertain, sentence: begun(told.say) });
   }
   return Object.assign(said, { state: "good" }, matters(pose, told));
 }
 
 /** Periods of an hour and the like are no promise to hear anything soon. */
-const isPrompt = (told) => (told.input?.period_ms ?? 0) <= LONGEST_PERIOD_MS;
+function isUnheard(told, sinceMs) {
+  const period = told.input?.period_ms;
+  if (period > LONGEST_PERIOD_MS) return false;
+  return sinceMs > 3 * (period ?? LONGEST_PERIOD_MS) + GRACE_MS;
+}
 
 const nothing = () => ({ word: WORDS.board.never });
 
-const whyBad = (told) => (told.reason === "stale" ? WORDS.board.silent : told.say);
+const whyBad = (told) => (told.reason === "stale" ? WORDS.board.silent : begun(told.say));
+
+/** A sentence of the service, which may go on with others, as one that begins. */
+const begun = (text) => signs(text.charAt(0).toUpperCase() + text.slice(1));
 
 function refused(told, gone) {
   if (told.reason === "stale" && told.problem?.code === "no-live-pose") return nothing();
-  const sentence = gone || told.problem?.say || told.say || "";
+  const sentence = gone || begun(told.problem?.say || told.say || "");
   return { state: "bad", word: WORDS.board.no_pose, sentence, mark: "✕" };
 }
 
 /** Return the one thing that matters most about a pose that can be relied on. */
 function matters(pose, told) {
-  const finding = pose.findings.reduce((most, one) => (one.code > (most?.code ?? 0) && one.code <= 4 ? one : most), null);
+  const isGraver = (one, other) => one.code <= 4 && one.code > (other?.code ?? 0);
+  const finding = pose.findings.reduce((most, one) => (isGraver(one, most) ? one : most), null);
   if (finding?.code >= 3) {
     const key = finding.code === 4 ? "outside" : "outside_work";
-    const who = finding.joint ? say(WORDS.board.joint, { joint: finding.joint }) : WORDS.board.joints_together;
+    const { joint, joints_together: together } = WORDS.board;
+    const who = finding.joint ? say(joint, { joint: finding.joint }) : together;
     return { mark: finding.code === 4 ? "▲" : "△", sentence: say(WORDS.board[key], { who }) };
   }
   if (finding) {

@@ -73,22 +73,44 @@ function hollowArrow(pen, put, from, direction, length, kind) {
 }
 
 function turnArrow(pen, put, place, axis, length, kind) {
-  const { view, px } = put;
-  const helper = Math.abs(axis[2]) < 0.8 ? [0, 0, 1] : [1, 0, 0];
-  const u = unitAcross(axis, helper);
-  const v = cross(axis, u);
-  const r = length / px, points = [];
-  for (let step = 0; step <= 40; step++) {
-    const angle = (-150 + step * 7.5) * (Math.PI / 180);
-    points.push(put(moved(moved(place, u, r * Math.cos(angle)), v, r * Math.sin(angle))));
-  }
+  const points = round(put, place, axis, length);
   pen.line(points, kind);
   pen.arrow(points.at(-3), points.at(-1), "thick", 11);
   pen.arrow(points.at(2), points[0], "thick", 11);
-  if (Math.abs(dot(axis, view.toward)) < 0.97) {
-    const reach = (length * 1.5) / px;
-    pen.line([put(moved(place, axis, -reach)), put(moved(place, axis, reach))], "chain");
-  }
+  centreLine(pen, put, place, axis, length);
+}
+
+/** Five sixths of a circle about an axis, right-handed. */
+function round(put, place, axis, length) {
+  const u = unitAcross(axis, Math.abs(axis[2]) < 0.8 ? [0, 0, 1] : [1, 0, 0]), v = cross(axis, u);
+  const r = length / put.px;
+  return Array.from({ length: 41 }, (_, step) => {
+    const angle = (-150 + step * 7.5) * (Math.PI / 180);
+    return put(moved(moved(place, u, r * Math.cos(angle)), v, r * Math.sin(angle)));
+  });
+}
+
+function centreLine(pen, put, place, axis, length) {
+  if (Math.abs(dot(axis, put.view.toward)) > 0.97) return;
+  const reach = (length * 1.5) / put.px;
+  pen.line([put(moved(place, axis, -reach)), put(moved(place, axis, reach))], "chain");
+}
+
+/**
+ * Draw which way a joint's value rises: an arrow round its axis, or along it, with a plus at its head.
+ * @param {{axis: {slides: boolean, from: number[], to: number[], direction: number[]}, sign: number}} what
+ */
+export function rising(pen, put, { axis, sign }, labels, length = 28) {
+  const direction = axis.direction.map((part) => part * sign);
+  const centre = axis.slides ? axis.to : moved(axis.from, moved(axis.to, axis.from, -1), 0.5);
+  const points = axis.slides
+    ? [0.4, 1.4].map((by) => put(moved(centre, direction, (by * length) / put.px)))
+    : round(put, centre, direction, length);
+  centreLine(pen, put, centre, direction, length);
+  pen.line(points, "thick");
+  pen.arrow(points.at(axis.slides ? 0 : -4), points.at(-1), "thick", 13);
+  labels.keepLine(points, 4);
+  labels.add("+", points.at(-1), { px: 18, weight: 700, gap: 4, from: 99 });
 }
 
 const unitAcross = (axis, helper) => unit(moved(helper, axis, -dot(axis, helper)));
@@ -110,12 +132,13 @@ export function scaleBar(pen, x, y, px, unitName, most = 160) {
   const length = roundLength(most, px), end = x + length * px;
   const parts = [0, 0.2, 0.4, 0.6, 0.8, 1].map((share) => x + share * (end - x));
   for (let i = 0; i < 5; i++) {
-    const corners = [[parts[i], y - 3], [parts[i + 1], y - 3], [parts[i + 1], y + 3], [parts[i], y + 3]];
+    const [from, to] = [parts[i], parts[i + 1]];
+    const corners = [[from, y - 3], [to, y - 3], [to, y + 3], [from, y + 3]];
     pen.closed(corners, "thin", i % 2 ? "paper" : "ink");
   }
   pen.letters("0", x, y - 11, { px: 10, align: "center" });
-  pen.letters(`${length.toLocaleString("en").replaceAll(",", " ")} ${unitName}`, end, y - 11,
-    { px: 10, align: "center" });
+  const written = length.toLocaleString("en").replaceAll(",", "\u00a0");
+  pen.letters(`${written} ${unitName}`, end, y - 11, { px: 10, align: "center" });
 }
 
 /** Draw the sign of first angle projection (ISO 5456-2): a cone from the side, and from its end. */
@@ -158,7 +181,7 @@ const covered = (a, b) =>
 
 function writeLabel(pen, { text, at, how }, taken) {
   const px = how.px ?? 11;
-  const width = how.balloon ? 2 * how.balloon : pen.widthOf(text, px), height = how.balloon ? 2 * how.balloon : px + 2;
+  const [width, height] = how.balloon ? [2 * how.balloon, 2 * how.balloon] : [pen.widthOf(text, px), px + 2];
   const [paperWidth, paperHeight] = pen.size();
   let best = null;
   for (const gap of [how.gap ?? 14, (how.gap ?? 14) * 1.8, (how.gap ?? 14) * 2.8]) {
@@ -180,7 +203,8 @@ function writeLabel(pen, { text, at, how }, taken) {
 function leader(pen, at, best, width, height, how) {
   const [dx, dy] = [best.x - at[0], best.y - at[1]];
   const far = Math.hypot(dx, dy) || 1;
-  const inside = how.balloon ?? Math.min(width / 2 / Math.max(Math.abs(dx / far), 1e-6), height / 2 / Math.max(Math.abs(dy / far), 1e-6));
+  const edge = (half, part) => half / Math.max(Math.abs(part / far), 1e-6);
+  const inside = how.balloon ?? Math.min(edge(width / 2, dx), edge(height / 2, dy));
   const end = 1 - inside / far, begin = (how.from ?? 3) / far;
   if (end <= begin + 2 / far) return;
   const on = (t) => [at[0] + dx * t, at[1] + dy * t];

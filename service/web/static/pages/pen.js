@@ -16,8 +16,7 @@ const KINDS = {
   long: [1.2, [9, 3], "ink"],
   dashDot: [1.2, [6, 2.5, 1.5, 2.5], "ink"],
 };
-const FALLBACK = { ink: "#14181c", paper: "#fbfaf7", quiet: "#4b545b", faint: "#dcdad3",
-  accent: "#3d5a73" };
+const TOKENS = ["ink", "paper", "quiet", "faint", "accent"];
 const ARROW = 9;
 
 /**
@@ -26,7 +25,7 @@ const ARROW = 9;
  */
 export function pen(canvas) {
   const context = canvas.getContext("2d");
-  const state = { colours: { ...FALLBACK }, width: 0, height: 0, font: "sans-serif" };
+  const state = { colours: {}, width: 0, height: 0, font: "sans-serif" };
   const size = () => [state.width, state.height];
   return {
     canvas, context, begin: () => begin(canvas, context, state), size,
@@ -48,14 +47,13 @@ export function pen(canvas) {
 
 function readColours(canvas, state) {
   const style = getComputedStyle(canvas);
-  for (const name of Object.keys(FALLBACK)) {
-    state.colours[name] = style.getPropertyValue(`--${name}`).trim() || FALLBACK[name];
-  }
+  for (const name of TOKENS) state.colours[name] = style.getPropertyValue(`--${name}`).trim();
   state.font = style.fontFamily || "sans-serif";
 }
 
 function begin(canvas, context, state) {
-  const ratio = Math.min(globalThis.devicePixelRatio || 1, 2);
+  // Who draws for a printer says so: paper shows finer lines than a screen.
+  const ratio = Number(canvas.dataset.ratio) || Math.min(globalThis.devicePixelRatio || 1, 2);
   const [width, height] = [canvas.clientWidth, canvas.clientHeight];
   const wanted = [Math.round(width * ratio), Math.round(height * ratio)];
   if (canvas.width !== wanted[0] || canvas.height !== wanted[1]) {
@@ -195,7 +193,7 @@ function hatch(context, state, points, gap = 5) {
 
 /**
  * A dimension line beside two places, level or upright: `off` is where it runs, a y where the
- * places are measured across, `{x}` where they are measured upwards. Returns the ends of the line.
+ * places are measured across, `{x}` where they are measured upwards. Returns a line through all of it.
  */
 function dimension(context, state, from, to, off, text) {
   const upright = off.x !== undefined;
@@ -220,8 +218,9 @@ function dimension(context, state, from, to, off, text) {
     }
   }
   // ISO 129: above the line, read from below or from the right; beside a short one.
-  const room = length > widthOf(context, state, text, 11) + 6 ? 0 : length / 2 + 20 + widthOf(context, state, text, 11) / 2;
+  const width = widthOf(context, state, text, 11);
+  const room = length > width + 6 ? 0 : length / 2 + 20 + width / 2;
   const at = upright ? [middle[0] - 8, middle[1] - room] : [middle[0] + room, middle[1] - 8];
   letters(context, state, text, ...at, { align: "center", turn: upright ? -Math.PI / 2 : 0 });
-  return [a, b];
+  return room ? [a, b, upright ? [at[0], at[1] - width / 2] : [at[0] + width / 2, at[1]]] : [a, b];
 }

@@ -4,8 +4,9 @@
 import { ask, follow } from "./ask.js";
 import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
-import { typed, UNITS, unitsOf } from "./numbers.js";
+import { signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
+import { fixedFrames, framesIn, isUpright } from "./sheet_frames.js";
 import { readings, sentences, showState, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
 import { travelTable } from "./sheet_travel.js";
@@ -15,7 +16,6 @@ import { say, WORDS } from "./words.js";
 const RATE = 10; // a second: what an eye follows
 const PATH_S = 30; // of the path before the page listened
 const MOST_PATH = 600; // places: a minute at that rate
-const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
 const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
 const SETTLED_MS = 250;
 const NEVER_MS = 400; // The stream begins with how the arm stands, if anything ever came of it.
@@ -29,19 +29,21 @@ const state = {
   stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [],
   stop: () => {}, asking: null, settle: 0, text: 0,
 };
-const shown = { arms: new Set() };
+const shown = { arms: [arm] };
 
 async function start() {
   begin();
-  for (const name of ["elevation", "plan", "free"]) shown[name] = document.querySelector(`[data-view=${name}]`);
+  for (const name of ["elevation", "plan", "free"]) {
+    shown[name] = document.querySelector(`[data-view=${name}]`);
+  }
   shown.views = views({ elevation: shown.elevation, plan: shown.plan, free: shown.free },
     (scale) => setText(place("scale"), scale));
-  shown.travel = travelTable(place("travel"), byHand);
+  shown.travel = travelTable(place("travel"), place("step"), { values: byHand, joint: point });
   shown.readings = readings(place("readings"));
   shown.texts = texts(place("text-blocks"));
   onTheme(() => shown.views.retint());
   state.isLive = !state.said.q;
-  const asked = [ask(path), isUpright()];
+  const asked = [ask(path), isUpright(arm)];
   const stored = await asked[0];
   if (!stored.ok) return refused(stored.problem);
   state.stored = stored.data;
@@ -63,9 +65,12 @@ async function fillChoices(upright) {
   const cell = told.cell ? await ask(`/v1/cells/${encodeURIComponent(told.cell)}`) : null;
   const shared = cell?.data?.cell?.frames ?? {};
   const own = Object.keys(told.frames ?? {}), all = Object.keys(shared);
-  shown.drawn = ["base", "world", ...new Set([...own, ...all.filter((name) => isFixed(name, shared))])];
+  const fixed = fixedFrames(shared, arm);
+  shown.arms = [arm, ...fixed.arms];
+  shown.drawn = ["base", "world", ...new Set([...own, ...fixed.names])];
   if (!said.frame) said.frame = (await upright) ? "base" : "world";
-  const triples = [["xyz", "zyx", "xzy", "yxz", "yzx", "zxy"], ["zyz", "zxz", "xyx", "xzx", "yxy", "yzy"]].flat();
+  const triples = [
+    "xyz", "zyx", "xzy", "yxz", "yzx", "zxy", "zyz", "zxz", "xyx", "xzx", "yxy", "yzy"];
   const forms = ["fixed", "current"].flatMap((about) => triples.map((one) => `${one}-${about}`));
   fillSelect("tool", [...tools, "flange"]);
   fillSelect("frame", ["base", "world", ...own, ...all]);
@@ -76,40 +81,14 @@ async function fillChoices(upright) {
 
 function fillSelect(name, options) {
   const select = place(name), now = state.said[name];
-  fill(select, [...new Set([...options, now])].map((one) => el("option", { value: one, selected: one === now }, one)));
+  fill(select, [...new Set([...options, now])].map((one) =>
+    el("option", { value: one, selected: one === now }, one)));
   select.addEventListener("change", () => {
     state.said[name] = select.value;
     choose({ [name]: select.value });
     if (name === "units" && !state.isLive) state.said.q = "";
     anew();
   });
-}
-
-/** Say whether a frame of the cell hangs on the world or a base; one on a flange moves, and has no place here. */
-function isFixed(name, shared) {
-  let under = name;
-  while (shared[under]) under = shared[under].in;
-  const [of, part] = under.split(".");
-  if (part === "base" && of !== arm) shown.arms.add(of);
-  return under === "world" || part === "base";
-}
-
-async function isUpright() {
-  const found = await frames(["base"], "world");
-  return !found.length || found[0].matrix[2][2] > UPRIGHT;
-}
-
-/** Return poses of frames of this arm in one of them, as the interface tells them. */
-async function frames(names, within) {
-  const known = (name) => (name === "world" ? name : `${arm}.${name}`);
-  const body = {
-    arms: [arm, ...shown.arms].map((one) => ({ arm: one })),
-    find: names.map((name) => ({ of: known(name), in: known(within) })),
-    form: "matrix", units: state.said.units || undefined };
-  const { ok, data } = await ask("/v1/frames", { method: "POST", body });
-  if (!ok) return [];
-  return data.answers.map(({ pose }, i) => ({
-    name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
 }
 
 const question = () => {
@@ -123,7 +102,7 @@ async function anew() {
   state.trail = [];
   shown.views.forget();
   const asked = question(), others = shown.drawn.filter((name) => name !== asked.frame);
-  frames(others, asked.frame).then((found) => {
+  framesIn(shown.arms, others, asked.frame, asked.units).then((found) => {
     state.frames = found;
     draw();
   });
@@ -199,7 +178,7 @@ function take(answer, heardAt = performance.now()) {
   setText(place("problem"), "");
   const isRelied = quality() !== "bad";
   shown.readings.show(answer, isRelied);
-  fill(place("says"), (isRelied ? sentences(answer) : [answer.say].filter(Boolean)).map((one) => el("li", {}, one)));
+  note(isRelied ? sentences(answer) : [signs(answer.say ?? "")].filter(Boolean));
   shown.travel.show(item.outline.travel, !state.isLive, isRelied);
   setText(place("revision"), answer.arm.revision);
   setText(place("digest"), answer.arm.digest);
@@ -208,6 +187,19 @@ function take(answer, heardAt = performance.now()) {
   ready();
   clearTimeout(state.settle);
   state.settle = setTimeout(() => state.isLive || writeTexts(), SETTLED_MS);
+}
+
+function note(said) {
+  if (said.join("\n") === shown.said) return;
+  shown.said = said.join("\n");
+  fill(place("says"), said.map((one) => el("li", {}, one)));
+}
+
+/** Show on the drawing which way a joint's value rises. */
+function point(joint) {
+  if (joint === shown.rising) return;
+  shown.rising = joint;
+  draw();
 }
 
 function draw() {
@@ -219,12 +211,19 @@ function draw() {
   const isNear = ({ matrix }) => outline.line.some((point) =>
     Math.hypot(...AXES.map((_, i) => point[i] - matrix[i][3])) < NEAR_SHARE * size);
   shown.views.show({
-    arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "", frameName: answer.frame,
-    frames: state.frames.filter((frame) => frame.name !== "base" && isNear(frame)), path: state.trail, balloons: true,
+    arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "",
+    frameName: answer.frame, frames: state.frames.filter((frame) => frame.name !== "base" && isNear(frame)),
+    path: state.trail, balloons: true, rising: risingOf(outline),
     struck: quality() === "bad" ? wordOf(quality()) : "",
     kind: quality() === "good" || quality() === "typed" ? "thick" : "heavyDashed",
     unit: unitsOf(answer.units).length, units: said.units,
   });
+}
+
+/** The axis of the joint pointed at, and whether its row turns with the value or against it. */
+function risingOf({ axes }) {
+  const axis = axes.find((one) => one.joint !== null && one.joint === shown.rising);
+  return axis ? { axis, sign: state.stored.arm.rows[axis.row - 1].direction ?? 1 } : null;
 }
 
 const quality = () => (!state.isLive ? "typed" : isGone() ? "bad" : state.answer.quality);
@@ -239,7 +238,8 @@ function tick() {
   if (!answer) return;
   const now = quality(), waited = performance.now() - state.heardAt;
   const ageMs = state.isLive ? answer.age_ms + waited : null;
-  showState(place("state"), { state: now, word: wordOf(now), ageMs, simulated: state.isLive && answer.simulated });
+  const simulated = state.isLive && answer.simulated;
+  showState(place("state"), { state: now, word: wordOf(now), ageMs, simulated });
   for (const one of document.querySelectorAll("[data-relied]")) one.dataset.relied = now;
   const was = state.shown;
   state.shown = now;
@@ -261,8 +261,10 @@ function fitModes() {
     toLive();
     anew();
   });
-  place("mode-hand").addEventListener("change", () => byHand(
-    state.answer.poses[0].outline.travel.filter((one) => one.joint !== null).map((one) => String(one.value))));
+  place("mode-hand").addEventListener("change", () => {
+    const { travel } = state.answer.poses[0].outline;
+    byHand(travel.filter((one) => one.joint !== null).map((one) => String(one.value)));
+  });
 }
 
 function toLive() {
@@ -276,12 +278,14 @@ function setMode(isLive) {
   state.isLive = isLive;
   place("mode-live").checked = isLive;
   place("mode-hand").checked = !isLive;
-  setText(place("mode-says"), state.waits ? WORDS.sheet.never : isLive ? "" : WORDS.sheet.by_hand_says);
+  const { never, live_says: live, by_hand_says: byHandSays } = WORDS.sheet;
+  setText(place("mode-says"), state.waits ? never : isLive ? live : byHandSays);
 }
 
 function refused(problem) {
+  back(); // Whoever refuses is there.
   const ways = (problem.errors ?? []).map((one) => one.way_out).filter(Boolean);
-  setText(place("problem"), [problem.detail, ...ways].join(". "));
+  setText(place("problem"), signs([problem.detail, ...ways].join(". ")));
   ready();
 }
 

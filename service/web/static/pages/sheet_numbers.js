@@ -3,11 +3,11 @@
 import { ask } from "./ask.js";
 import { withQuery } from "./address.js";
 import { el, fill, setAttribute, setText } from "./elements.js";
-import { age, angle, length, number, unitsOf } from "./numbers.js";
+import { age, angle, length, number, signs, unitsOf } from "./numbers.js";
 import { say, WORDS } from "./words.js";
 
 const TRIPLE = /^([xyz]{3})-(fixed|current)$/;
-const SINGULAR = 2; // Codes 1 and 2 say near and singular; the sentence on it says so already.
+const SINGULAR = 2; // Codes 1 and 2 say near and singular.
 const PRIMES = ["", "′", "″"];
 
 /** Return the names of an orientation's numbers, as the trade writes them: z, y′, x″. */
@@ -38,7 +38,8 @@ function showNumbers(state, answer, isRelied) {
     const row = (name, cell, unit) =>
       el("div", {}, el("span", { class: "of" }, name), cell, el("span", { class: "unit" }, unit));
     fill(state.place,
-      el("div", { class: "position" }, ["x", "y", "z"].map((axis, i) => row(axis, state.cells[i], lengthUnit))),
+      el("div", { class: "position" },
+        ["x", "y", "z"].map((axis, i) => row(axis, state.cells[i], lengthUnit))),
       names.length
         ? el("div", { class: "orientation" }, names.map((name, i) =>
           row(isAngle ? say(WORDS.sheet.about, { axis: name }) : name, turns[i], isAngle ? angleUnit : "")))
@@ -49,23 +50,25 @@ function showNumbers(state, answer, isRelied) {
 }
 
 /**
- * Return the sentences on what matters, the gravest first.
+ * Return the sentences on what matters, the gravest first. The page's own sentence on singularity holds
+ * all that the finding of that code says, but for the bare measure.
  * @param {object} answer nested, of a pose or a live pose
  */
 export function sentences(answer) {
   const { singularity, findings } = answer.poses[0];
-  const graver = findings.filter((one) => one.code > SINGULAR), other = findings.filter((one) => one.code <= SINGULAR);
-  const said = [...graver, ...other].map((one) => one.say);
-  if (!singularity) return [answer.say, ...said].filter(Boolean);
-  const lost = singularity.lost_motion.map((one) => one.say);
-  const { condition_number: condition, travel_to: to } = singularity;
+  const graver = findings.filter((one) => one.code > SINGULAR || !singularity).map((one) => one.say);
+  const lost = singularity?.lost_motion.map((one) => one.say) ?? [];
+  return [answer.say, ...graver, ...(singularity ? [onSingularity(singularity)] : []), ...lost]
+    .filter(Boolean).map(signs);
+}
+
+function onSingularity({ state, kinds, joints, condition_number: condition, travel_to: to }) {
+  const who = { kinds: kinds.join(", "), joints: joints.join(", ") };
+  const named = kinds.length && joints.length ? say(WORDS.sheet.of_kinds, who) : "";
   const values = {
-    state: WORDS.sheet[singularity.state], condition: condition === null ? "∞" : number(condition, 1) };
-  const near = to
-    ? say(WORDS.sheet.travel_to, { joint: to.joint, value: number(Math.abs(to.value), 1), unit: to.unit }) : "";
-  const nearSaid = `${say(WORDS.sheet.singularity, values)} ${near}`;
-  return [answer.say, ...said.slice(0, graver.length), nearSaid, ...lost, ...said.slice(graver.length)]
-    .filter(Boolean);
+    state: WORDS.sheet[state] + named, condition: condition === null ? "∞" : number(condition, 1) };
+  const near = to ? { joint: to.joint, value: number(Math.abs(to.value), 1), unit: to.unit } : null;
+  return say(WORDS.sheet.singularity, values) + (near ? ` ${say(WORDS.sheet.travel_to, near)}` : "");
 }
 
 /** Say how far an answer can be relied on: the state's word, age, and whether anything stands there. */
@@ -79,7 +82,8 @@ export function showState(place, { state, word, ageMs, simulated }) {
 }
 
 /**
- * Return what shows the same numbers as texts: address, a controller's line, JSON; each with a key to copy it.
+ * Return what shows the same numbers as texts: address, a controller's line, JSON; each with a key to
+ * copy it.
  * @param {HTMLElement} place
  */
 export function texts(place) {

@@ -7,23 +7,65 @@ import { el, fill } from "./elements.js";
 import { say, WORDS } from "./words.js";
 
 const COLUMNS = [
-  "joint", "a", "alpha", "d", "theta", "direction", "couplings", "travel", "working_travel", "working_reason",
-  "top_speed"];
+  "joint", "a", "alpha", "d", "theta", "travel", "working_travel", "working_reason", "top_speed"];
+const MOVED = { revolute: "theta", prismatic: "d" };
 
-/** Show the table and what stands round it. @param {HTMLElement} place @param {object} stored */
+/**
+ * Show the table, how it is read, and what stands round it.
+ * @param {HTMLElement} place @param {object} stored
+ */
 export function showTable(place, { arm, units }) {
+  const words = WORDS.sheet, joints = jointsOf(arm.rows);
   const used = COLUMNS.filter((name) => arm.rows.some((row) => row[name] !== undefined && row[name] !== ""));
-  const words = WORDS.sheet.columns;
+  const part = (row, i, name) =>
+    (name === MOVED[row.joint] ? variable(arm.rows, i, joints) : cell(row[name]));
+  const rowOf = (row, i) => el("tr", {},
+    el("th", { scope: "row" }, row.passive ? say(words.passive, { row: i + 1 }) : i + 1),
+    used.map((name) => el("td", {}, part(row, i, name))));
+  const { convention } = arm;
   fill(place,
-    el("p", {}, say(WORDS.sheet.table_says, { convention: arm.convention, units })),
-    el("div", { class: "wide", tabindex: "0", role: "region", "aria-label": WORDS.sheet.table },
-      el("table", { class: "ruled" },
-        el("thead", {}, el("tr", {}, el("th", { scope: "col" }, words.row),
-          used.map((name) => el("th", { scope: "col" }, words[name])))),
-        el("tbody", {}, arm.rows.map((row, i) =>
-          el("tr", {}, el("th", { scope: "row" }, row.passive ? say(WORDS.sheet.passive, { row: i + 1 }) : i + 1),
-            used.map((name) => el("td", {}, cell(row[name])))))))),
+    el("p", {}, say(words.table_says, { convention, units }), " ", words[`read_${convention}`]),
+    ruled(words.table, ["row", ...used].map((name) => words.columns[name]), arm.rows.map(rowOf)),
+    el("p", {}, words.variables),
+    standing(arm),
     arm.notes ? el("p", { class: "notes" }, arm.notes) : null);
+}
+
+const ruled = (name, heads, rows) =>
+  el("div", { class: "wide", tabindex: "0", role: "region", "aria-label": name },
+    el("table", { class: "ruled" },
+      el("thead", {}, el("tr", {}, heads.map((one) => el("th", { scope: "col" }, one)))),
+      el("tbody", {}, rows)));
+
+/** The number of the joint value that belongs to each row; none of a passive one. */
+function jointsOf(rows) {
+  let count = 0;
+  return rows.map((row) => (row.passive ? null : ++count));
+}
+
+/** What a row's moving parameter is, as a sum: its offset and the joint values that take part. */
+function variable(rows, i, joints) {
+  const row = rows[i], offset = row[MOVED[row.joint]] ?? 0;
+  const terms = row.passive ? [] : [[row.direction ?? 1, joints[i]]];
+  for (const { axis, ratio } of row.couplings ?? []) terms.push([ratio, joints[axis - 1]]);
+  const written = terms.map(([by, joint]) =>
+    `${by < 0 ? "−" : "+"} ${Math.abs(by) === 1 ? "" : `${Math.abs(by)} `}q${joint}`).join(" ");
+  if (offset || !written) return `${cell(offset)} ${written}`;
+  return written.replace(/^\+ /, "").replace(/^− /, "−");
+}
+
+/** Base, tools and frames: what each stands in, and where, as it was stored. */
+function standing({ base, tools, frames }) {
+  const words = WORDS.sheet;
+  const all = [
+    ...(base ? [["base", { in: "world", ...base }]] : []),
+    ...Object.entries(tools ?? {}).map(([name, one]) => [name, { ...one, in: "flange" }]),
+    ...Object.entries(frames ?? {})];
+  if (!all.length) return null;
+  const turned = ({ orientation: { form, values } }) => `${values.flat().map(cell).join(", ")} (${form})`;
+  return ruled(words.standing, words.standing_columns, all.map(([name, one]) =>
+    el("tr", {}, el("th", { scope: "row" }, name), el("td", {}, one.number), el("td", {}, one.in),
+      el("td", {}, one.position.map(cell).join(", ")), el("td", {}, turned(one)))));
 }
 
 function cell(value) {
@@ -47,13 +89,10 @@ export async function showRevisions(place, path) {
   } }, numbers.map((one) => el("option", { value: one, selected: one === picked[name] }, one)));
   const words = WORDS.sheet;
   fill(place,
-    el("div", { class: "wide", tabindex: "0", role: "region", "aria-label": words.revisions },
-      el("table", { class: "ruled" },
-        el("thead", {}, el("tr", {}, [words.revision, words.time, words.author, words.why, words.digest].map(
-          (one) => el("th", { scope: "col" }, one)))),
-        el("tbody", {}, known.map((one) => el("tr", {}, el("th", { scope: "row" }, one.revision),
-          [one.created_at.slice(0, 16).replace("T", " "), one.author, one.reason, one.digest].map(
-            (text) => el("td", {}, text))))))),
+    ruled(words.revisions, [words.revision, words.time, words.author, words.why, words.digest],
+      known.map((one) => el("tr", {}, el("th", { scope: "row" }, one.revision),
+        [one.created_at.slice(0, 16).replace("T", " "), one.author, one.reason, one.digest].map(
+          (text) => el("td", {}, text))))),
     numbers.length > 1
       ? el("p", { class: "compare" }, el("label", { for: "revision-was" }, words.was), select("was"),
         el("label", { for: "revision-is" }, words.is), select("is"))
@@ -81,8 +120,11 @@ async function compare(place, path, { was, is }) {
 function differences(was, is, where = []) {
   const isTree = (one) => one !== null && typeof one === "object"
     && !(Array.isArray(one) && one.every((part) => typeof part !== "object"));
+  const isAbsent = (one) => one === undefined;
+  // What is new or gone as a whole is told part by part.
+  if (isAbsent(was) !== isAbsent(is) && isTree(was ?? is)) return differences(was ?? {}, is ?? {}, where);
   if (!isTree(was) || !isTree(is)) {
-    const [one, other] = [was, is].map((value) => (value === undefined ? WORDS.sheet.absent
+    const [one, other] = [was, is].map((value) => (isAbsent(value) ? WORDS.sheet.absent
       : Array.isArray(value) ? value.map(cell).join(", ") : String(cell(value))));
     return one === other ? [] : [[inWords(where), one, other]];
   }

@@ -11,11 +11,14 @@ import { pen } from "./pen.js";
 import { column, fitted, holds, MM_IN, placed, roundLength, view } from "./projection.js";
 import { say, WORDS } from "./words.js";
 
-const MARGIN = { x: 44, y: 26, right: 52, bottom: 52 };
+const MARGIN = { x: 44, y: 40, right: 52, bottom: 52 };
+const ARROW = 50; // beyond the margins, pixels: what the arrows of a lost motion take round the tool
 const TOLD_MS = 5000; // A screen reader is not told more often.
 const ORIGIN = [0, 0, 0];
 const DEGREE = Math.PI / 180;
 const FIRST_TURN = "-32,22";
+const FIXED = ["elevation", "plan"];
+const PRINTED_RATIO = 3; // pixels for one of CSS: 288 to the inch
 
 /**
  * Return what shows scenes on three canvases.
@@ -25,7 +28,9 @@ const FIRST_TURN = "-32,22";
 export function views(canvases, onScale) {
   const pens = Object.fromEntries(Object.entries(canvases).map(([name, one]) => [name, pen(one)]));
   const [yaw, pitch] = chosen({ turn: FIRST_TURN }).turn.split(",").map(Number);
-  const state = { pens, onScale, scene: null, box: null, yaw: yaw || 0, pitch: pitch || 0, told: 0, dirty: new Set() };
+  const state = {
+    pens, onScale, scene: null, box: null, freeBox: null, yaw: yaw || 0, pitch: pitch || 0, told: 0,
+    dirty: new Set() };
   const repaint = (...names) => request(state, names.length ? names : Object.keys(pens));
   fitTurning(state, canvases.free, repaint);
   new ResizeObserver(() => repaint()).observe(canvases.elevation);
@@ -36,8 +41,12 @@ export function views(canvases, onScale) {
     },
     forget: () => (state.box = state.freeBox = null),
     retint() {
-      for (const one of Object.values(pens)) one.tint();
-      repaint();
+      for (const [name, one] of Object.entries(pens)) {
+        one.canvas.dataset.ratio = matchMedia("print").matches ? PRINTED_RATIO : "";
+        one.tint();
+        state.dirty.add(name);
+      }
+      paint(state); // At once: a printer waits for no frame.
     },
   };
 }
@@ -53,25 +62,62 @@ function paint(state) {
   dirty.clear();
   if (!scene) return;
   for (const name of names) pens[name].begin();
+  forgetOtherPaper(state);
   holdBox(state);
   if (names.has("elevation") || names.has("plan")) paintFixed(state);
   if (names.has("free")) paintFree(state);
   tell(state);
 }
 
-/** Keep the box while all has room in it; else take one with room to spare. */
+/** On paper of another size (a phone turned, a printer) what was held for the last one is of no use. */
+function forgetOtherPaper(state) {
+  const [elevation, plan, free] = ["elevation", "plan", "free"].map((name) => state.pens[name].canvas);
+  const size = [elevation.clientWidth, elevation.clientHeight + plan.clientHeight, free.clientWidth,
+    free.clientHeight].join();
+  if (state.paper !== size) state.box = state.freeBox = null;
+  state.paper = size;
+}
+
+/** Keep the boxes while all has room in them; else take some with room to spare. */
 function holdBox(state) {
   const { scene } = state, foot = column(scene.outline.base, 3);
-  const held = (box, others) => (box && holds(box, boxOf(scene, 0, others)) ? box : boxOf(scene, 0.05, others));
-  state.freeBox = held(state.freeBox, [[foot[0], foot[1], floorOf(scene)]]);
-  const box = held(state.box, [ORIGIN]);
+  const free = [[foot[0], foot[1], floorOf(scene)]];
+  state.freeBox = held(state.freeBox, scene, free, (box) => freePx(state, box));
+  const box = held(state.box, scene, [ORIGIN], (one) => fixedPx(state, one));
   if (box === state.box) return;
   state.box = box;
-  // The heights of elevation and plan follow what they have to show, so that the scale can be large.
-  const [, y, z] = state.box[1].map((high, i) => high - state.box[0][i]);
-  const share = Math.min(Math.max(z / (y + z), 0.36), 0.64);
-  state.pens.plan.canvas.closest(".fixed").style.gridTemplateRows =
-    `minmax(0, ${share}fr) minmax(0, ${1 - share}fr)`;
+  shareHeight(state, box);
+}
+
+/** A box that holds a scene and other places; arrows, which are as long on paper at any scale, too. */
+function held(box, scene, others, pxOf) {
+  const tool = column(scene.outline.tool, 3), lost = scene.singularity?.lost_motion.length;
+  const round = (one) => {
+    const pad = lost ? ARROW / pxOf(one) : 0;
+    return [...others, tool.map((part) => part - pad), tool.map((part) => part + pad)];
+  };
+  const hasRoom = (one) => holds(one, boxOf(scene, 0, round(one)));
+  if (box && hasRoom(box)) return box;
+  let wide = boxOf(scene, 0.05, others);
+  // The larger the box, the smaller the scale, and the longer the arrows in it.
+  for (let turn = 0; turn < 8 && !hasRoom(wide); turn++) wide = boxOf(scene, 0.05, round(wide));
+  return wide;
+}
+
+/** The heights of elevation and plan follow what they have to show, so that the scale can be large. */
+function shareHeight({ pens }, box) {
+  const [, y, z] = box[1].map((high, i) => high - box[0][i]);
+  const share = Math.min(Math.max(z / (y + z), 0.36), 0.64).toFixed(3);
+  const { style } = pens.plan.canvas.closest(".fixed");
+  const rows = `minmax(0, ${share}fr) minmax(0, ${(1 - share).toFixed(3)}fr)`;
+  if (style.gridTemplateRows === rows) return;
+  style.gridTemplateRows = rows;
+  for (const name of FIXED) pens[name].begin();
+}
+
+function fixedPx(state, box) {
+  shareHeight(state, box);
+  return Math.min(...FIXED.map((name) => fittedOn(state.pens[name], name, box, state.scene).px));
 }
 
 /** The height of the floor: the world's, or that of the arm's foot. */
@@ -83,25 +129,41 @@ function roomOf(one) {
   return { x, y, width: width - x - right, height: height - y - bottom };
 }
 
+const fittedOn = (one, name, box, scene, scale) =>
+  fitted(view(name), box, roomOf(one), MM_IN[scene.unit], scale);
+
 function paintFixed(state) {
-  const { pens, scene, box } = state, mm = MM_IN[scene.unit];
-  const looked = { elevation: view("elevation"), plan: view("plan") };
-  const first = Object.entries(looked).map(([name, one]) => fitted(one, box, roomOf(pens[name]), mm));
+  const { pens, scene, box } = state;
+  const first = FIXED.map((name) => fittedOn(pens[name], name, box, scene));
   const scale = first[0].px < first[1].px ? first[0].scale : first[1].scale;
   let size;
-  for (const [name, one] of Object.entries(looked)) {
-    const put = fitted(one, box, roomOf(pens[name]), mm, scale);
-    corner(pens[name], one, scene);
+  for (const name of FIXED) {
+    const put = fittedOn(pens[name], name, box, scene, scale);
+    corner(pens[name], put.view, scene);
     size ??= thicknessOf(put, scene.outline);
     drawn(pens[name], scene, () => {
-      const keep = scene.struck ? [] : dimensions(pens[name], put, scene, name, box);
-      drawArm(pens[name], put, scene, { size, keep });
+      const sizes = scene.struck ? [] : dimensions(pens[name], put, scene, name, box);
+      drawArm(pens[name], put, scene, { size, keep: [...sizes, ...furniture(pens[name], name)] });
     });
   }
-  const [, height] = pens.plan.size();
-  scaleBar(pens.plan, MARGIN.x + 90, height - 12, scale.px, scene.unit);
-  firstAngle(pens.plan, pens.plan.size()[0] - 56, height - 17, 8);
+  const [height, { bar, sign, most }] = [pens.plan.size()[1], feet(pens.plan)];
+  scaleBar(pens.plan, bar, height - 12, scale.px, scene.unit, most);
+  firstAngle(pens.plan, sign, height - 17, 8);
   state.onScale(scale.words);
+}
+
+/** Where scale bar and sign of projection stand at the foot of the plan, and how long the bar may be. */
+function feet(one) {
+  const bar = MARGIN.x + 90, sign = one.size()[0] - 56;
+  return { bar, sign, most: Math.min(160, sign - bar - 48) };
+}
+
+/** Lines that labels keep off: through the axes in the corner, and what stands at the foot. */
+function furniture(one, name) {
+  const low = one.size()[1] - 16, { bar, sign, most } = feet(one);
+  const axes = [[[26, low - 50], [26, low]], [[26, low - 24], [60, low - 24]]];
+  if (name !== "plan") return axes;
+  return [...axes, [[bar, low], [bar + most + 24, low]], [[sign, low], [sign + 36, low]]];
 }
 
 /** Which way the axes of the frame point that all is told in: in the corner, clear of the arm. */
@@ -130,18 +192,24 @@ function dimensions(one, put, scene, name, box) {
   return [one.dimension(from, to, { y }, written(0)), one.dimension(from, to, { x }, written(2))];
 }
 
-function paintFree(state) {
-  const { pens, scene, freeBox: box } = state, one = pens.free, room = roomOf(one);
-  const looked = view("free", state.yaw * DEGREE, state.pitch * DEGREE);
+const freeView = ({ yaw, pitch }) => view("free", yaw * DEGREE, pitch * DEGREE);
+
+/** The scale at which a box has room however it is turned about the vertical. */
+function freePx(state, box) {
+  const room = roomOf(state.pens.free), { up, toward } = freeView(state);
   const sides = box[1].map((high, i) => high - box[0][i]);
   const across = Math.hypot(sides[0], sides[1]);
-  const high = sides[2] * looked.up[2] + across * Math.abs(looked.toward[2]);
-  const px = Math.min(room.width / across, room.height / high);
+  return Math.min(room.width / across, room.height / (sides[2] * up[2] + across * Math.abs(toward[2])));
+}
+
+function paintFree(state) {
+  const { pens, scene, freeBox: box } = state, one = pens.free, room = roomOf(one);
+  const looked = freeView(state), px = freePx(state, box);
   const middle = box[0].map((low, i) => (low + box[1][i]) / 2);
   const put = placed(looked, px, middle, room.x + room.width / 2, room.y + room.height / 2 + 8);
   drawn(one, scene, () => {
     floor(one, put, scene, box);
-    drawArm(one, put, scene);
+    drawArm(one, put, scene, { keep: furniture(one, "free") });
   });
   corner(one, looked, scene);
   const words = say(WORDS.sheet.turned, { yaw: number(state.yaw, 0), pitch: number(state.pitch, 0) });
@@ -194,7 +262,8 @@ function fitTurning(state, canvas, repaint) {
   }
   canvas.addEventListener("keydown", (event) => {
     const step = event.shiftKey ? 15 : 5;
-    const by = { ArrowLeft: [step, 0], ArrowRight: [-step, 0], ArrowUp: [0, step], ArrowDown: [0, -step] }[event.key];
+    const by = {
+      ArrowLeft: [step, 0], ArrowRight: [-step, 0], ArrowUp: [0, step], ArrowDown: [0, -step] }[event.key];
     if (by) turn(state.yaw + by[0], state.pitch + by[1]);
     else if (event.key === "Home") turn(...FIRST_TURN.split(",").map(Number));
     else return;

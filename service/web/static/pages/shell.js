@@ -7,7 +7,7 @@ import { say, WORDS } from "./words.js";
 
 const THEMES = ["auto", "light", "dark"];
 const KEPT = "armspan-theme";
-const PING_MS = 5000;
+const PING_MS = 3000;
 const SAY_BACK_MS = 10000;
 
 let goneSince = null;
@@ -49,12 +49,14 @@ export function back() {
 export const isGone = () => goneSince !== null;
 
 /**
- * Call a function whenever the paper changes, by choice or with the screen.
+ * Call a function whenever the paper changes: by choice, with the screen, or for a printer.
  * @param {() => void} callback
  */
 export function onTheme(callback) {
   document.addEventListener("themechange", callback);
-  matchMedia("(prefers-color-scheme: dark)").addEventListener("change", callback);
+  for (const query of ["(prefers-color-scheme: dark)", "print"]) {
+    matchMedia(query).addEventListener("change", callback);
+  }
 }
 
 function told(text) {

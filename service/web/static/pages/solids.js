@@ -3,7 +3,7 @@
 // table knows them. Each body says how near it is, so that what lies in front is drawn last.
 // Left out: hidden lines between bodies that cut through each other.
 
-import { cross, dot, moved, unit } from "./projection.js";
+import { column, cross, dot, moved, unit } from "./projection.js";
 
 /** @typedef {{near: number, draw: (pen: object) => void}} Body */
 
@@ -94,7 +94,6 @@ function acrossOf(direction) {
  */
 export function bodiesOf(put, outline, size, kind = "thick") {
   const { axes, line } = outline, count = axes.length;
-  const at = (matrix, j) => [matrix[0][j], matrix[1][j], matrix[2][j]];
   const thickness = (i) => size * (1 - (0.5 * i) / Math.max(count, 1));
   const bodies = [footOf(put, outline.base, size, kind)];
   axes.forEach((axis, i) => {
@@ -104,10 +103,10 @@ export function bodiesOf(put, outline, size, kind = "thick") {
     bodies.push(bar(put, link, axis.slides ? r * 0.6 : r * 0.8, kind));
     bodies.push(axis.slides ? sleeve(put, axis, r, kind) : turning(put, axis, r, kind));
   });
-  const flange = at(outline.flange, 3), tool = at(outline.tool, 3);
+  const flange = column(outline.flange, 3), tool = column(outline.tool, 3);
   const thin = thickness(count);
   bodies.push(bar(put, [flange, tool], Math.max(thin * 0.3, 1.2), kind));
-  bodies.push(drum(put, flange, at(outline.flange, 2), thin * 1.25, thin * 0.3, kind, 0));
+  bodies.push(drum(put, flange, column(outline.flange, 2), thin * 1.25, thin * 0.3, kind, 0));
   return bodies;
 }
 
@@ -124,8 +123,7 @@ function sleeve(put, axis, r, kind) {
 }
 
 function footOf(put, base, size, kind) {
-  const z = [base[0][2], base[1][2], base[2][2]], x = [base[0][0], base[1][0], base[2][0]];
-  const origin = [base[0][3], base[1][3], base[2][3]];
+  const [x, z, origin] = [0, 2, 3].map((j) => column(base, j));
   const half = size * 0.55;
   const foot = block(put, moved(origin, z, -half / put.px), z, x, [size * 2.3, size * 2.3, half], kind);
   return { ...foot, near: foot.near - (2 * half) / put.px };

@@ -91,13 +91,15 @@ export const WORDS = {
     "plan": "Plan",
     "free": "Free view",
     "numbers": "Tool",
+    "notes": "Notes",
     "joints": "Joints",
     "reach": "Can it get there?",
     "mode": "Joint values",
     "live": "live",
     "by_hand": "by hand",
     "by_hand_says": "By hand: for this drawing alone; nothing is sent to the arm.",
-    "never": "No joint values have come of this arm yet. Drawn as near to zero as its travel allows.",
+    "live_says": "As values come. Whoever types or nudges goes on by hand from here.",
+    "never": "No values have come yet: drawn as near to zero as travel allows.",
     "block": "Title block",
     "tool": "Tool",
     "frame": "Frame",
@@ -109,6 +111,7 @@ export const WORDS = {
     "digest": "Digest",
     "thickness": "Axes and distances are to scale; how thick an arm is, no table says.",
     "step": "Step",
+    "pointed": "The joint whose row is pointed at, or has the focus, is marked on the drawing: + is the way its value rises.",
     "travel": "Joint values and the travel they have used",
     "travel_columns": ["Joint", "Value", "Nudge", "Travel used"],
     "joint": "Joint {joint}",
@@ -129,6 +132,7 @@ export const WORDS = {
     "regular": "Regular",
     "near": "Near singular",
     "singular": "Singular",
+    "of_kinds": " ({kinds}; joints {joints})",
     "singularity": "{state}: condition number {condition}.",
     "travel_to": "Nearest singular place some {value} {unit} of joint {joint} away.",
     "turned": "turned {yaw}°, raised {pitch}°; drag, or arrow keys",
@@ -146,6 +150,11 @@ export const WORDS = {
     "not_copied": "Not copied",
     "table": "Table",
     "table_says": "Denavit-Hartenberg table, {convention} convention, {units}.",
+    "read_standard": "Each row leads from one frame to the next: turn by theta about z, move by d along z, move by a along x, turn by alpha about x.",
+    "read_modified": "Each row leads from one frame to the next: turn by alpha about x, move by a along x, turn by theta about z, move by d along z.",
+    "variables": "q1, q2 ... are the joint values as the controller shows them, in the order of the numbers on the drawing.",
+    "standing": "Base, tools and frames",
+    "standing_columns": ["Name", "Number", "In", "Position", "Orientation"],
     "passive": "{row}, passive",
     "columns": {
       "row": "Row",
@@ -154,8 +163,6 @@ export const WORDS = {
       "alpha": "alpha",
       "d": "d",
       "theta": "theta",
-      "direction": "Direction",
-      "couplings": "Couplings",
       "travel": "Travel",
       "working_travel": "Working travel",
       "working_reason": "Because of",
@@ -364,8 +371,6 @@ export const WORDS = {
       "scale": "Scale {scale}",
       "beyond": "{name}, beyond this drawing"
     }
-  },
-  "drawing": {
   }
 };
 

@@ -1,0 +1,45 @@
+// The frames that are drawn round an arm: which of them stand still, and where, as the interface tells.
+// Left out: which of them are near enough to be drawn (sheet.js).
+import { ask } from "./ask.js";
+
+const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
+
+/**
+ * Return which frames of a cell hang on the world or a base, and on the bases of which other arms; one on
+ * a flange moves, and has no place on a sheet.
+ * @param {Record<string, {in: string}>} shared @param {string} arm
+ * @returns {{names: string[], arms: string[]}}
+ */
+export function fixedFrames(shared, arm) {
+  const arms = new Set();
+  const names = Object.keys(shared).filter((name) => {
+    let under = name;
+    while (shared[under]) under = shared[under].in;
+    const [of, part] = under.split(".");
+    if (part === "base" && of !== arm) arms.add(of);
+    return under === "world" || part === "base";
+  });
+  return { names, arms: [...arms] };
+}
+
+/**
+ * Return poses of frames of an arm in one of them; none where they are not known.
+ * @param {string[]} arms the arm, then others whose bases carry frames
+ * @param {string[]} names @param {string} within @param {string} [units]
+ * @returns {Promise<{name: string, matrix: number[][]}[]>}
+ */
+export async function framesIn(arms, names, within, units) {
+  const known = (name) => (name === "world" ? name : `${arms[0]}.${name}`);
+  const find = names.map((name) => ({ of: known(name), in: known(within) }));
+  const body = { arms: arms.map((arm) => ({ arm })), find, form: "matrix", units: units || undefined };
+  const { ok, data } = await ask("/v1/frames", { method: "POST", body });
+  if (!ok) return [];
+  return data.answers.map(({ pose }, i) => ({
+    name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
+}
+
+/** Return whether an arm stands upright, so that one looks at it in its base. @param {string} arm */
+export async function isUpright(arm) {
+  const found = await framesIn([arm], ["base"], "world");
+  return !found.length || found[0].matrix[2][2] > UPRIGHT;
+}
