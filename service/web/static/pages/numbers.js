@@ -18,6 +18,9 @@ export function number(value, decimals) {
   return value < 0 && Number(text) !== 0 ? MINUS + text : text;
 }
 
+/** Return a sentence of the service with the minus signs of its numbers as they stand beside it here. */
+export const signs = (text) => text.replace(/(^|[\s(,=])-(?=\d)/g, `$1${MINUS}`);
+
 /** The choices of units that all pages give. */
 export const UNITS = ["mm-deg", "m-rad", "in-deg"];
 
