@@ -215,6 +215,21 @@ def values_out(units: Units, form: str, values: FloatArray) -> FloatArray:
     return units.angle_out(values) if _is_angular(form) else values
 
 
+_NOTHING = 1e-13
+"""In any unit: below every threshold that is told, and what double arithmetic leaves of a zero."""
+
+
+def number_said(value: float) -> str:
+    """Return a number as it stands in a sentence: six digits, what rounding left of 0 as 0.
+
+    Examples
+    --------
+    >>> number_said(500.8036237), number_said(-4.96156e-15), number_said(1e-12)
+    ('500.804', '0', '1e-12')
+    """
+    return "0" if abs(value) < _NOTHING else f"{value:.6g}"
+
+
 def finding_out(units: Units, finding: Finding) -> dict[str, object]:
     """Return a finding as answered, its sentence and numbers in the user's units."""
     return _finding_at(units, finding, units.shortest_out(finding.measure, finding.unit))
@@ -233,8 +248,8 @@ def _finding_at(units: Units, finding: Finding, measure: float) -> dict[str, obj
         "code": finding.code,
         "name": finding.name,
         "say": finding.say.format(
-            measure=f"{measure:.6g}{shown}",
-            threshold=f"{threshold:.6g}{shown}",
+            measure=number_said(measure) + shown,
+            threshold=number_said(threshold) + shown,
             joint=finding.joint,
             row=finding.row,
         ),

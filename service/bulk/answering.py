@@ -10,6 +10,7 @@ from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
 from starlette.responses import Response
 
+from kinematics.envelope.shapes import Envelope
 from service.bulk.process import WorkerProcess
 from service.bulk.reading import Key, bare_poses_of, many_of_body, many_of_table, model_of
 from service.bulk.rendering import RENDERINGS, InPieces, Rendering, Stamp, WorkedOut
@@ -25,6 +26,7 @@ from service.wire.formats import (
     answer_format,
     question_parameters,
 )
+from service.wire.kept_by_words import KeptByWords
 
 # Parsed, worked on and printed in a few milliseconds; more is done in pieces.
 SHORT_BYTES = 64 * 1024
@@ -34,6 +36,8 @@ _TINY_BYTES, _FEW = 4096, 4
 _FEW_PARTS = 4
 # Parsing as a whole holds the interpreter: beyond this size for longer than others should wait.
 LONG_BYTES = 2_000_000
+# Some 50 kB each.
+_ENVELOPES_KEPT = 64
 
 
 class Bulk:
@@ -43,6 +47,8 @@ class Bulk:
         self.threads = Threads()
         # Takes a whole turn of seconds: nobody who asks for less is to wait behind it.
         self.estimates = Threads(1)
+        # A page that is opened again asks for the same again.
+        self.envelopes: KeptByWords[Envelope] = KeptByWords(_ENVELOPES_KEPT)
         self.worker = WorkerProcess()
 
     def stop(self) -> None:

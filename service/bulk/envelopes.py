@@ -12,6 +12,7 @@ from starlette.responses import Response
 
 from kinematics.envelope.shapes import Envelope
 from service.bulk.answering import Bulk
+from service.bulk.leaving import unless_left
 from service.cautions import CAUTIONS
 from service.drawings.envelope_sheet import envelope_sheet
 from service.drawings.envelope_words import SheetLabels
@@ -45,14 +46,26 @@ async def answer_envelope(request: Request) -> Response:
         return envelope_question(arms, EnvelopeRequest.model_validate(body), AT_ONCE)
 
     asked = await bulk.threads.run(begun)
-    # Apart from all that is done in pieces, which would wait behind it for seconds.
-    found = {
-        within: await bulk.estimates.run(partial(asked.found, within), most=_MOST_WAITING)
-        for within in asked.within
-    }
+    found = {within: await _found(request, asked, within) for within in asked.within}
     if wanted == "svg":
         return Response(await bulk.threads.run(partial(drawn, asked, found)), media_type=SVG)
     return json_answer(await bulk.threads.run(partial(asked.answer, found)))
+
+
+async def _found(request: Request, asked: EnvelopeQuestion, within: Within) -> Envelope:
+    """Return an envelope that was worked out lately, or work it out unless the client leaves."""
+    bulk: Bulk = request.app.state.bulk
+    words = asked.words(within)
+
+    def once() -> Envelope:
+        # Who asked the same a little earlier has had it worked out meanwhile.
+        return bulk.envelopes.get(words) or bulk.envelopes.keep(words, asked.found(within))
+
+    kept = bulk.envelopes.get(words)
+    if kept is not None:
+        return kept
+    # Apart from all that is done in pieces, which would wait behind it for seconds.
+    return await unless_left(request, bulk.estimates.run(once, most=_MOST_WAITING))
 
 
 def drawn(asked: EnvelopeQuestion, found: Mapping[Within, Envelope]) -> bytes:

@@ -10,7 +10,13 @@ from kinematics.reach.targets import CODES, NOT_FOUND, OUTSIDE_TRAVEL, UNREACHAB
 from kinematics.table import FloatArray
 from kinematics.transforms import in_frame
 from kinematics.travel.moves import BREAKS, NO_START, Break, Extreme, Followed, Gone, Way
-from service.convert import Units, computed_finding_out, finding_out, joint_row_out
+from service.convert import (
+    Units,
+    computed_finding_out,
+    finding_out,
+    joint_row_out,
+    number_said,
+)
 from service.operations.courses import APPROACH, LEG, AskedCourse
 from service.operations.questions import Question
 from service.operations.reasons_told import reason_say
@@ -158,8 +164,8 @@ def break_say(units: Units, broken: Break, legs: Sequence[Gone], part: str) -> s
         what = "the start" if broken.kind == NO_START else f"the end of {LEG} {broken.leg + 1}"
         return f"{what} cannot be reached: {say}"
     length = legs[broken.leg].length
-    gone = f"{units.value_out(broken.distance, 'm'):.6g} {units.length}"
-    whole = f"{units.value_out(length, 'm'):.6g} {units.length}"
+    gone = f"{number_said(units.value_out(broken.distance, 'm'))} {units.length}"
+    whole = f"{number_said(units.value_out(length, 'm'))} {units.length}"
     if part == TARGET:
         return (
             f"the tool can come straight to the target from {gone} before it, not from {whole}: "

@@ -67,6 +67,14 @@ class EnvelopeQuestion:
         """Whether anything of the arm has a working travel."""
         return bool(limits_of(self.question.arm).working.any())
 
+    def words(self, within: Within) -> bytes:
+        """Return what one envelope follows from, and nothing else: the same give the same."""
+        question = self.question
+        digests = question.meant.read.digests
+        said = (digests.table_digest, digests.setup_digest, self.asked.point, within)
+        fineness = (self.resolution, self.most_cells)
+        return repr((*said, *fineness, question.tool.tool_in_flange.tobytes())).encode()
+
     def found(self, within: Within) -> Envelope:
         """Work out one envelope.
 

@@ -8,7 +8,7 @@ import numpy as np
 from kinematics.reach.targets import Family, Reason
 from kinematics.table import FloatArray
 from kinematics.transforms import in_frame
-from service.convert import Units, joint_values_out
+from service.convert import Units, joint_values_out, number_said
 from service.operations.questions import Question
 from service.wire.poses import pose_answer
 
@@ -17,7 +17,8 @@ def reason_say(units: Units, reason: Reason) -> str:
     """Return the sentence of a reason in the user's units."""
     return reason.say.format(
         **{
-            name: f"{units.value_out(value, reason.unit):.6g} {units.unit_out(reason.unit)}"
+            name: f"{number_said(units.value_out(value, reason.unit))} "
+            + units.unit_out(reason.unit)
             for name, value in (
                 ("shortfall", reason.shortfall),
                 ("measure", reason.measure),
@@ -56,7 +57,7 @@ def family_out(question: Question, family: Family) -> dict[str, object]:
         "witness": {"joints": _joints_out(question, family.witness)},
     }
     if family.relation is not None:
-        constant = f"{units.value_out(family.measure, family.unit):.6g}"
+        constant = number_said(units.value_out(family.measure, family.unit))
         answer["relation"] = family.relation.format(
             measure=f"{constant} {units.unit_out(family.unit)}"
         )

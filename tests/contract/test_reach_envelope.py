@@ -8,6 +8,7 @@ import httpx
 import numpy as np
 import pytest
 
+from service.operations import envelopes
 from service.settings import Settings
 from tests.contract.refusals import AT_ORIGIN, ROW, only_entry, sent
 
@@ -243,3 +244,26 @@ async def test_the_way_out_of_too_fine_a_resolution_is_one(
     assert unit == "mm"
     if is_for_a_survey:
         assert (await told(client, {**body, "resolution": float(length)}))["travel"]
+
+
+async def test_the_same_is_worked_out_once(
+    client: httpx.AsyncClient, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    worked_out = []
+    known = envelopes.envelope_of
+
+    def counted(*given: Any, **how: Any) -> Any:
+        worked_out.append(how)
+        return known(*given, **how)
+
+    monkeypatch.setattr(envelopes, "envelope_of", counted)
+    first = await told(client, {"arm": PLANAR})
+    assert await told(client, {"arm": PLANAR}) == first
+    inches = await told(client, {"arm": PLANAR, "units": "in-deg"})
+    assert inches["travel"]["volume"]["value"] < first["travel"]["volume"]["value"]
+    assert len(worked_out) == 1
+    flange = np.eye(4)
+    flange[0, 3] = 50.0
+    longer = await told(client, {"arm": PLANAR, "tool": {"matrix": flange.tolist()}})
+    assert longer["travel"]["volume"] != first["travel"]["volume"]
+    assert len(worked_out) == 2

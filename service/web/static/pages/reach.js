@@ -4,61 +4,68 @@
 
 import { choose, chosen } from "./address.js";
 import { ask } from "./ask.js";
-import { el, fill, setText } from "./elements.js";
-import { number } from "./numbers.js";
-import { column } from "./projection.js";
-import { checkBody, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
-import { reachDrawing } from "./reach_drawing.js";
-import { download, fileKey, listInput } from "./reach_input.js";
-import { placesTable, verdictOf } from "./reach_list.js";
-import { postures } from "./reach_postures.js";
+import { el, fill } from "./elements.js";
+import { signs, unitsOf } from "./numbers.js";
+import { checkBody, refusal, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
+import { download, fileKey, keep, lineOf, listInput, recall } from "./reach_input.js";
+import { placesTable } from "./reach_list.js";
+import { pictureDesk } from "./reach_picture.js";
 import { questionDesk } from "./reach_question.js";
 import { blankTable, readPlaces } from "./reach_reading.js";
 import { counted, surveyDesk } from "./reach_survey.js";
 import { targetDesk } from "./reach_target.js";
-import { begin, ready } from "./shell.js";
+import { turns } from "./reach_turns.js";
+import { begin } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
 const AT_ONCE = 500;        // Longer lists wait for a key.
 const MOST_AT_ONCE = 10000; // What one question may hold.
-const MOST_DRAWN = 5000;    // More places would cover the paper, and each other.
 const PAUSE_MS = 350;       // After the last key, so that half a number is not asked.
+const STEP_MS = 120;        // Who steps through the list by a key that is held asks for the last alone.
 const AGAIN_MS = 3000;
+const NARROW = "(max-width: 48rem)";
 const words = WORDS.reach;
 const place = (id) => document.getElementById(id);
 
 const page = {
-  name: decodeURIComponent(location.pathname.split("/")[2]),
+  name: decodeURIComponent(location.pathname.split("/")[2]), turn: turns(),
   arm: null, question: null, read: { places: [], faults: [], how: {} }, rows: [], at: -1,
-  solution: null, control: null, timer: 0, method: "",
+  control: null, timer: 0, single: null, method: "",
 };
+const sent = `armspan-reach-sent-${page.name}`;
 
 async function start() {
-  begin({ watch: true });
   const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}`);
   if (!answer.ok) {
-    fill(place("reading"), el("p", { class: "refused" }, answer.problem.detail));
+    fill(place("reading"), refused(answer.problem.detail));
     return setTimeout(start, AGAIN_MS);
   }
   page.arm = answer.data;
+  fit();
+  const { survey } = chosen({ survey: "" });
+  const isOwn = survey && recall(sent) === survey;
+  page.input.begin();
+  if (isOwn) markSent(survey);
+  if (survey) page.survey.watch(survey);
   const cell = page.arm.cell ?? page.arm.arm.cell;
   const shared = cell ? await ask(`/v1/cells/${encodeURIComponent(cell)}`) : null;
-  fit(Object.keys(shared?.data?.cell?.frames ?? shared?.data?.frames ?? {}));
-  page.input.begin();
-  const { survey } = chosen({ survey: "" });
-  if (survey) page.survey.watch(survey);
+  page.desk.frames(Object.keys(shared?.data?.cell?.frames ?? shared?.data?.frames ?? {}));
 }
 
-function fit(cellFrames) {
+const refused = (text) => el("p", { class: "refused" }, text);
+const trouble = (text) => place("reading").append(refused(text));
+
+function fit() {
   about();
-  page.question = questionDesk(place("question"), page.arm, cellFrames, asked);
-  page.postures = postures(page.name);
+  page.desk = questionDesk(place("question"), page.arm, () => asked(false));
+  page.question = page.desk.now;
+  const looked = { canvas: place("drawing"), legend: place("legend"), block: place("block") };
+  page.picture = pictureDesk(looked, page.arm, page.turn);
   page.table = placesTable(place("table"), chosenPlace);
-  page.target = targetDesk(place("target"), stepped);
-  page.draw = reachDrawing(place("drawing"));
+  page.target = targetDesk(place("target"), draw);
   page.survey = surveyDesk(place("survey"), { changed: (id) => choose({ survey: id }), found: surveyFound });
   const parts = { field: place("list"), zone: place("asked"), kept: `armspan-reach-${page.name}` };
-  page.input = listInput(parts, asked, (text) => fill(place("reading"), el("p", { class: "refused" }, text)));
+  page.input = listInput(parts, asked, (text) => fill(place("reading"), refused(text)));
   keys();
   for (const [event, isWhole] of [["beforeprint", true], ["afterprint", false]]) addEventListener(event, () =>
     page.table.whole(isWhole));
@@ -75,18 +82,23 @@ function keys() {
   const key = (text, act) => el("button", { type: "button", onclick: act }, text);
   page.results = key(words.input.results, results);
   page.report = key(words.input.report, report);
-  fill(place("keys"),
-    fileKey(page.input.take),
-    key(words.input.blank, () => download("part-locations.csv", blankTable(turnsOf(page.question().form)))),
-    key(words.input.now, presentPlace), page.results, page.report,
-    key(words.input.print, () => print()), key(words.input.clear, () => page.input("")));
+  page.print = key(words.input.print, () => print());
+  const blank = () => {
+    const { form, units } = page.question();
+    download("part-locations.csv", blankTable(turnsOf(form), unitsOf(units)));
+  };
+  fill(place("keys"), fileKey(page.input.take), key(words.input.blank, blank),
+    key(words.input.now, presentPlace), key(words.input.clear, () => page.input("")));
+  fill(place("outcome"), page.report, page.results, page.print);
+  place("back").onclick = () => place("table").querySelector(".choice[tabindex='0']")?.focus();
 }
 
 /** List or question changed: read anew, forget what was answered, ask if it is short. */
-function asked() {
-  page.isSent = false;
+function asked(isTyped) {
+  markSent(null);
   page.control?.abort();
   clearTimeout(page.timer);
+  page.turn.touch();
   const question = page.question();
   page.read = readPlaces(place("list").value, { turns: turnsOf(question.form), decimal: question.decimal });
   const { places, faults } = page.read;
@@ -95,12 +107,18 @@ function asked() {
   page.rows = all.sort((a, b) => a.line - b.line);
   page.targets = null;
   const count = places.length;
-  for (const one of [page.results, page.report]) one.disabled = !count;
-  page.results.disabled ||= count > MOST_AT_ONCE;
+  for (const id of ["outcome", "back"]) place(id).hidden = !page.rows.length;
+  page.report.disabled = !count;
+  page.results.disabled = !count || count > MOST_AT_ONCE;
   told(count > AT_ONCE ? say(words.long, { count: counted(count) }) : "");
-  shown();
-  if (count && count <= AT_ONCE) page.timer = setTimeout(check, PAUSE_MS);
-  else ready();
+  shown(Math.max(page.at, 0));
+  if (count && count <= AT_ONCE) page.timer = setTimeout(check, isTyped ? PAUSE_MS : 0);
+}
+
+/** Note that a survey was made of the list as it stands, also for who loads the page again. */
+function markSent(id) {
+  page.isSent = id !== null;
+  keep(sent, id ?? "");
 }
 
 function faultWords(fault) {
@@ -113,25 +131,24 @@ function told(more) {
   const lines = [];
   if (places.length || faults.length) {
     const columns = how.columns.filter(Boolean).join(" ");
-    lines.push(el("p", {}, say(words.read, {
+    lines.push(el("p", {}, say(places.length === 1 ? words.read_one : words.read, {
       count: counted(places.length), columns, separator: words.separators[how.separator],
       decimal: words.decimals[how.decimal],
     }), how.left.length ? say(words.left_out, { columns: how.left.join(", ") }) : ""));
   } else lines.push(el("p", { class: "quiet" }, words.empty));
-  if (how.doubt && how.decimal === "comma") lines.push(
-    el("p", { class: "refused" }, say(words.doubt, { cell: how.doubt })));
-  if (faults.length) lines.push(el("p", { class: "refused" },
-    say(words.unread, { count: counted(faults.length) }), " ", faultWords(faults[0])));
+  if (how.doubt && how.decimal === "comma") lines.push(refused(say(words.doubt, { cell: how.doubt })));
+  const unread = faults.length === 1 ? words.unread_one : words.unread;
+  if (faults.length) lines.push(refused(
+    `${say(unread, { count: counted(faults.length) })} ${faultWords(faults[0])}`));
   if (more) lines.push(el("p", {}, more));
   fill(place("reading"), lines);
 }
 
-function shown() {
-  const question = page.question();
-  page.table.show(page.rows, question.units);
-  const known = page.at >= 0 && page.at < page.rows.length;
+/** Show the rows anew, one of them chosen. */
+function shown(at) {
+  page.table.show(page.rows, page.question().units);
   page.at = -1;
-  if (page.rows.length) page.table.choose(known ? page.keptAt : 0);
+  if (page.rows.length) page.table.choose(Math.min(at, page.rows.length - 1));
   else chosenPlace(-1);
 }
 
@@ -140,161 +157,131 @@ function targets() {
   return page.targets;
 }
 
+const checked = (body, signal, end = "") =>
+  page.turn.first(() => ask(`/v1/reach/checks${end}`, { method: "POST", body, signal }));
+
 async function check() {
   const control = (page.control = new AbortController());
-  const body = checkBody(page.name, page.question(), targets(), "best");
-  const answer = await ask("/v1/reach/checks", { method: "POST", body, signal: control.signal });
+  const body = checkBody(page.arm, page.question(), targets(), "best");
+  const answer = await checked(body, control.signal);
   if (control.signal.aborted) return;
-  ready();
   if (answer.ok) return answered(answer.data);
   if (answer.problem.code === "no-answer") {
     page.timer = setTimeout(check, AGAIN_MS);
     return;
   }
-  const found = refusedTargets(answer.problem), rows = page.rows.filter((row) => row.place);
-  found.forEach((text, at) => rows[at] && (rows[at].refused = text));
+  const rows = page.rows.filter((row) => row.place);
+  refusedTargets(answer.problem).forEach((text, at) => rows[at] && (rows[at].refused = text));
   told("");
-  place("reading").append(el("p", { class: "refused" }, refusal(answer.problem)));
+  trouble(refusal(answer.problem));
   redraw();
 }
 
-const refusal = (problem) =>
-  [problem.detail, ...problem.errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; ");
-
+/** Put results beside their rows, of which nothing else was known till then. */
 function answered({ results: found, method }) {
   page.method = method?.say ?? "";
   const rows = page.rows.filter((row) => row.place);
   found.forEach((result, i) => {
-    rows[i].result = result;
-    if (result.verdict === null || result.verdict === undefined) rows[i].refused =
-      result.reason?.say ?? result.say ?? refusal({ detail: "", errors: [], ...result });
+    const why = result.problem ?? result.reason;
+    const isJudged = Boolean(result.verdict);
+    Object.assign(rows[i], { result, isWhole: false, method: null, refused: isJudged ? null : refusal({
+      detail: why?.say ?? "", errors: why ? [why] : [] }) });
   });
+  told("");
   redraw();
 }
 
-/** Show the rows with their verdicts; the choice stays. */
+/** Show the rows with their verdicts; the choice and the page of the table stay. */
 function redraw() {
-  const at = page.at;
-  page.table.show(page.rows, page.question().units);
-  page.at = -1;
-  page.table.choose(Math.max(at, 0));
+  page.table.renew();
+  chosenPlace(page.at);
 }
 
-async function chosenPlace(at) {
-  page.at = page.keptAt = at;
+async function chosenPlace(at, isPointed = false) {
+  page.at = at;
+  page.single?.abort();
   const row = page.rows[at];
-  page.solution = null;
-  if (!row?.place) {
+  if (!row) {
     page.target(null);
-    return drawNow();
+    return draw(null);
   }
-  look(row, true);
-  if (!row.result || row.isWhole) return;
-  const body = checkBody(page.name, page.question(), targetsOf([row.place], page.question()), "all");
-  const answer = await ask("/v1/reach/checks", { method: "POST", body });
-  if (page.rows[page.at] !== row || !answer.ok) return;
+  if (isPointed && matchMedia(NARROW).matches) place("shown").scrollIntoView({ block: "start" });
+  const isOpen = row.place && row.result?.verdict && !row.isWhole;
+  look(row, { waits: isOpen });
+  if (isOpen) single(row);
+}
+
+/** Ask about one place alone, for all its solutions. */
+async function single(row) {
+  const { signal } = (page.single = new AbortController());
+  page.turn.touch();
+  await new Promise((done) => setTimeout(done, STEP_MS));
+  if (signal.aborted) return;
+  const question = page.question();
+  const body = checkBody(page.arm, question, targetsOf([row.place], question), "all");
+  const answer = await checked(body, signal);
+  if (signal.aborted) return;
+  if (!answer.ok) return look(row, { trouble: refusal(answer.problem) });
   Object.assign(row, { result: answer.data.results[0], isWhole: true, method: answer.data.method.say });
-  look(row, false);
+  look(row, {});
 }
 
-function look(row, waits) {
-  const name = row.place.name ?? say(words.list.line, { line: row.place.line });
-  const method = row.method ?? page.method;
-  page.target({ arm: page.arm, row, name, question: page.question(), method, waits: waits && !row.isWhole });
+function look(row, { waits = false, trouble: said = "" }) {
+  const question = row.question ?? page.question();
+  page.target({ arm: page.arm, row, question, method: row.method ?? page.method, waits, trouble: said });
 }
 
-function stepped(solution) {
-  page.solution = solution;
-  drawNow();
-}
-
-/** Draw what is known, and again when more is: outlines first, the envelope when it comes. */
-async function drawNow() {
-  const row = page.rows[page.at], { solution } = page, question = page.question();
-  const isStill = () => page.rows[page.at] === row && page.solution === solution;
-  const approach = solution?.approach, before = approach?.start?.joints ?? approach?.breaks?.joints;
-  const [outline, start, put] = await Promise.all([
-    // Without a solution no arm is drawn: one as it stood once could be taken for where it is.
-    solution ? page.postures.outline(solution.joints, question) : null,
-    before ? page.postures.outline(before, question) : null,
-    page.postures.frameInBase(question),
-  ]);
-  if (!isStill()) return;
-  const picture = pictureOf({ row, outline, before: start, put, question, approach });
-  draw(picture);
-  const envelope = await page.postures.envelope(question);
-  if (isStill() && envelope) draw({ ...picture, envelope });
-}
-
-function pictureOf({ row, outline, before, put, question, approach }) {
-  const at = (one) => ({ at: put(one.place.position), verdict: verdictOf(one) });
-  const reason = row?.result?.reason, near = reason?.nearest;
-  const toolAt = (one) => column(one.tool, 3);
-  return {
-    envelope: page.envelope ?? null, outline, before, units: question.units, toolName: question.tool,
-    places: put ? page.rows.filter((one) => one.place && one !== row).slice(0, MOST_DRAWN).map(at) : [],
-    chosen: put && row?.place ? { ...at(row), name: row.place.name ?? String(page.at + 1) } : null,
-    way: outline && before ? { from: toolAt(before), to: toolAt(outline), isBroken: !approach.ok } : null,
-    nearest: put && near ? put(near.position) : null,
-    missing: near && reason.shortfall ? `${number(reason.shortfall, 1)} ${reason.unit}` : "",
-  };
-}
-
-function draw(picture) {
-  page.envelope = picture.envelope;
-  page.draw(picture);
-  const { frame, tool, units } = page.question(), { name, revision, digest } = page.arm;
-  const lines = {
-    arm: name, revision: `${revision} (${digest})`, tool, frame, units, scale: place("drawing").dataset.scale ?? "" };
-  fill(place("block"), Object.entries(lines).map(([key, value]) =>
-    el("tr", {}, el("th", { scope: "row" }, words.block_lines[key]), el("td", {}, value))));
-  const verdict = picture.chosen
-    ? say(words.drawn, { name: picture.chosen.name, verdict: words.verdicts[picture.chosen.verdict] ?? "" })
-    : words.drawn_none;
-  place("drawing").setAttribute("aria-label", verdict);
-  setText(place("legend"), picture.envelope ? words.legend : words.envelope_waits);
-  ready();
+/** Draw the place that is chosen, at one of its solutions. */
+function draw(solution) {
+  const { rows, at } = page, row = rows[at] ?? null;
+  page.picture({ row, rows, at, solution, question: row?.question ?? page.question() });
 }
 
 /** Append where the tool is now, as the live arm says it, as a line of the list. */
 async function presentPlace() {
   const { tool, frame, units, form } = page.question();
-  const asked = new URLSearchParams({ frame, units, form, ...(tool ? { tool } : {}) });
-  const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}/live?${asked}`);
-  const pose = answer.data?.poses?.[0];
-  if (!answer.ok || !pose?.position) return fill(place("reading"),
-    el("p", { class: "refused" }, answer.problem?.detail ?? words.input.no_live));
-  const field = place("list"), decimal = page.read.how.decimal === "comma" ? "," : ".";
-  const sign = { tab: "\t", semicolon: ";", blank: " " }[page.read.how.separator] ?? ",";
-  const columns = page.read.how.columns?.length ? page.read.how.columns : null;
-  const values = [...pose.position, ...pose.orientation.values.flat()].map((value) =>
-    String(Number(value.toFixed(4))).replace(".", decimal));
-  const line = columns && !columns.includes("name") ? values : [`now-${page.rows.length + 1}`, ...values];
-  page.input(
-    `${field.value}${field.value && !field.value.endsWith("\n") ? "\n" : ""}${line.join(columns ? sign : ", ")}\n`);
+  const said = new URLSearchParams({ frame, units, form, ...(tool ? { tool } : {}) });
+  const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}/live?${said}`);
+  const { poses, quality, simulated, say: why } = answer.data ?? {};
+  const pose = poses?.[0], isDoubted = quality !== "good" && quality !== "uncertain";
+  if (!answer.ok || !pose?.position || isDoubted) return trouble(
+    signs(answer.problem?.detail || why || words.input.no_live));
+  const { value } = place("list");
+  const name = `${simulated ? "simulated" : "now"}-${page.rows.length + 1}`;
+  page.input(`${value}${value && !value.endsWith("\n") ? "\n" : ""}${lineOf(pose, name, page.read.how)}\n`);
+  if (quality !== "good") trouble(signs(why || quality));
 }
 
 async function results() {
-  const body = checkBody(page.name, page.question(), targets(), "all");
-  const answer = await ask("/v1/reach/checks?format=csv", { method: "POST", body });
+  const body = checkBody(page.arm, page.question(), targets(), "all");
+  const answer = await checked(body, undefined, "?format=csv");
   if (answer.ok) download(`${page.name}-reach.csv`, answer.data);
-  else place("reading").append(el("p", { class: "refused" }, refusal(answer.problem)));
+  else trouble(refusal(answer.problem));
 }
 
 async function report() {
-  const body = checkBody(page.name, page.question(), targets(), "best");
+  const body = checkBody(page.arm, page.question(), targets(), "best");
   delete body.solutions;
-  page.isSent = true;
+  const rows = page.rows;
   const title = say(words.survey.title, { arm: page.name, count: counted(page.read.places.length) });
+  page.isSent = true;
   const answer = await page.survey.begin(body, title);
-  if (!answer.ok) place("reading").append(el("p", { class: "refused" }, refusal(answer.problem)));
+  if (!answer.ok) trouble(refusal(answer.problem));
+  else if (rows === page.rows) markSent(answer.data.id);
 }
 
-/** The result of a survey: beside the list it came from while that stands unchanged, or else alone. */
-function surveyFound(survey, found) {
-  if (page.isSent) return answered({ results: found });
-  page.rows = found.map((result, i) => ({ place: null, line: i + 1, result }));
-  page.table.show(page.rows, survey.units);
+/** The result of a survey: beside the list it came from while that stands unchanged, or alone. */
+function surveyFound({ request, arm, units }, found) {
+  if (page.isSent) answered({ results: found });
+  else if (page.rows.length) return false;
+  else {
+    const { tool, frame = "base" } = request;
+    const question = { ...page.question(), tool, frame, units, revision: arm.revision };
+    page.rows = found.map((result, i) => ({ place: null, line: i + 1, name: result.name, result, question }));
+    shown(0);
+  }
+  return true;
 }
 
+begin({ watch: true });
 start();

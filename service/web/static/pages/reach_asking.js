@@ -1,6 +1,8 @@
 // From a list that was read to what is asked of the interface; names of orientation forms.
 // Idea: what a line says wins over what is said for all lines. Left out: asking, and answers.
 
+import { signs, unitsOf } from "./numbers.js";
+
 const THREE = ["xyx", "xyz", "xzx", "xzy", "yxy", "yxz", "yzx", "yzy", "zxy", "zxz", "zyx", "zyz"];
 
 /** Orientation forms a table can carry, the usual one first. */
@@ -41,31 +43,41 @@ export function targetsOf(places, question) {
 
 function placeOf({ position, turns, freedom }, question) {
   if (!turns) return freedom ? { position, freedom } : { position };
-  const left = freedom ?? freedomSaid(question.freedom);
+  const left = freedom ?? freedomSaid(question.freedom, question.units);
   const pose = { position, orientation: { form: question.form, values: turns } };
   return left ? { pose, freedom: left } : { pose };
 }
 
-/** A freedom as the page keeps it: "", "spin", "orientation" or "cone:30". */
-function freedomSaid(said) {
+/** A freedom as the page keeps it, "", "spin", "orientation" or "cone:30": always degrees. */
+function freedomSaid(said, units) {
   const cone = /^cone:(.+)$/.exec(said);
-  return cone ? { cone: Number(cone[1]) } : said;
+  const inUnit = unitsOf(units).angle === "rad" ? Math.PI / 180 : 1;
+  return cone ? { cone: Number(cone[1]) * inUnit } : said;
 }
 
-/** Return the body of a check. @param {"best" | "all"} solutions @param {object[]} targets */
-export function checkBody(arm, question, targets, solutions) {
-  const body = { arm, targets, solutions, frame: question.frame, units: question.units };
+/**
+ * Return the body of a check.
+ * @param {{name: string, revision: number}} arm @param {object} question
+ * @param {object[]} targets @param {"best" | "all"} solutions
+ */
+export function checkBody({ name, revision }, question, targets, solutions) {
+  const { frame, units } = question;
+  const body = { arm: { name, revision }, targets, solutions, frame, units };
   if (question.tool) body.tool = question.tool;
   if (question.order === "singularity") body.order = "singularity";
   return body;
 }
+
+/** What a problem says, and the way out. @param {{detail: string, errors: object[]}} problem */
+export const refusal = ({ detail, errors = [] }) =>
+  signs([detail, ...errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; "));
 
 /** Return what a refused question says of single targets: a map from place in the list to words. */
 export function refusedTargets(problem) {
   const found = new Map();
   for (const error of problem.errors ?? []) {
     const match = /^\/targets\/(\d+)/.exec(error.pointer ?? "");
-    if (match) found.set(Number(match[1]), [error.say, error.way_out].filter(Boolean).join("; "));
+    if (match) found.set(Number(match[1]), signs([error.say, error.way_out].filter(Boolean).join("; ")));
   }
   return found;
 }

@@ -4,26 +4,35 @@
 // axis 1. Left out: envelopes, postures, places in the base: all answered by the interface.
 
 import { drawArm } from "./arm_drawing.js";
-import { scaleBar } from "./marks.js";
+import { labelsOn, scaleBar, triad } from "./marks.js";
 import { unitsOf } from "./numbers.js";
 import { pen } from "./pen.js";
 import { column, cross, dot, MM_IN, moved, placed, scaleWithRoom, unit } from "./projection.js";
-import { SIGNS } from "./reach_list.js";
+import { marks, NUMBERED, stroke, within } from "./reach_signs.js";
 import { onTheme } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
-const MARGIN = 14, TITLE = 26, GAP = 34;
+const MARGIN = 10, TITLE = 24, GAP = 12;
+const AIR = 34;             // Round what a view shows: for letters, arrows and the ground's hatching.
 const FOOT = 34;            // Scale bar below the views.
-const STACKED = 620;        // Narrower paper has the views one above the other.
 const ENOUGH = 100;         // Places tell the paper's room where nothing else does.
-const FAR = 0.6;            // Places farther off the envelope than this share of it stand at the edge.
+const FAR = 0.25;           // Places farther off the envelope than this share of it stand at the edge,
+const FAR_CHOSEN = 0.8;     // the chosen one if it is farther than this.
+const TITLE_PX = 13, BOLD = 1.12;
+const AXES = 64;            // Beside a title: which way the axes of the base point.
+const FINE = 4;             // Pixels of a drawing for print, to one of the screen.
+const PRINTED = {
+  "--ink": "#000", "--paper": "#fff", "--quiet": "#333", "--faint": "#ccc", "--accent": "#000" };
+/** Drawn by where there is nothing yet, mm: a man's reach. */
+const SMALLEST = 1000;
 
 /**
+ * @typedef {{at: number[], verdict: string, number: number, name?: string}} Marked
  * @typedef {{envelope: object|null, outline: object|null, before: object|null, units: string,
- *   places: {at: number[], verdict: string}[], chosen: {at: number[], verdict: string, name: string}|null,
- *   way: {from: number[], to: number[], isBroken: boolean}|null, nearest: number[]|null,
- *   missing: string, toolName: string}} Picture
- *   all in the base: `outline` at the solution, `before` where the approach begins.
+ *   places: Marked[], chosen: Marked|null, way: {from: number[], to: number[], isBroken: boolean}|null,
+ *   nearest: number[]|null, missing: string, slides: boolean}} Picture
+ *   all in the base; slides: row 1 does, so that there is no axis 1; `outline` at the solution, `before`
+ *   where the approach begins.
  */
 
 /** Return what draws pictures on a canvas, anew when paper or room change. */
@@ -36,64 +45,95 @@ export function reachDrawing(canvas) {
     again();
   };
   onTheme(tinted);
-  for (const event of ["beforeprint", "afterprint"]) addEventListener(event, tinted);
-  matchMedia("print").addEventListener("change", tinted);
+  const printed = (isPrinted) => () => {
+    forPrint(canvas, isPrinted);
+    tinted();
+  };
+  addEventListener("beforeprint", printed(true));
+  addEventListener("afterprint", printed(false));
   return (picture) => {
     paper.picture = picture;
     draw(paper);
   };
 }
 
+/** The page's own colours for print hold only while it is laid out for that: too late for a canvas. */
+function forPrint(canvas, isPrinted) {
+  for (const [name, value] of Object.entries(PRINTED)) canvas.style.setProperty(name, isPrinted ? value : "");
+  canvas.dataset.ratio = isPrinted ? FINE : "";
+}
+
 function draw({ pen: drawn, picture, canvas }) {
   drawn.begin();
   const [width, height] = drawn.size();
   if (!width || !height) return;
-  const views = viewsOf(picture);
-  const isStacked = width < STACKED;
-  const sizes = views.map((view) => extent(view, picture));
-  const scale = scaleFor(sizes, width, height, isStacked, picture.units);
-  let [x, y] = [MARGIN, MARGIN + TITLE];
-  const free = isStacked ? 0 : (width - 2 * MARGIN - GAP - sizes[0].wide * scale.px - sizes[1].wide * scale.px) / 2;
-  views.forEach((view, i) => {
-    const size = sizes[i];
-    const [w, h] = [size.wide * scale.px, size.high * scale.px];
-    const left = isStacked ? (width - w) / 2 : x + free;
-    const put = placed(view, scale.px, [0, 0, 0], left - size.left * scale.px, y + size.top * scale.px);
-    paintView(drawn, put, view, picture, { left, top: y, right: left + w, bottom: y + h });
-    if (isStacked) y += h + TITLE + GAP / 2;
-    else x = left + w + GAP - free;
+  const views = viewsOf(picture).map((view) => {
+    const words = WORDS.reach.drawing[view.kind];
+    return { view, words, size: extent(view, picture), least: drawn.widthOf(words, TITLE_PX) * BOLD + AXES };
+  });
+  const { scale, isStacked } = laidOut(views, width, height, picture.units);
+  frames(views, scale.px, width, height, isStacked).forEach((frame, i) => {
+    const { view, words, size } = views[i];
+    const left = (frame.left + frame.right - size.wide * scale.px) / 2;
+    const [x, y] = [left - size.left * scale.px, frame.top + AIR + size.top * scale.px];
+    const put = placed(view, scale.px, [0, 0, 0], x, y);
+    drawn.letters(words, frame.left, frame.top - TITLE / 2, { px: TITLE_PX, weight: 600 });
+    paintView(drawn, put, view, picture, frame);
   });
   const unitName = unitsOf(picture.units).length;
-  scaleBar(drawn, MARGIN + 6, height - 12, scale.px, unitName, Math.min(width / 3, 200));
-  drawn.letters(say(WORDS.reach.drawing.scale, { scale: scale.words }), width - MARGIN, height - 12,
+  scaleBar(drawn, MARGIN + 10, height - 12, scale.px, unitName, Math.min(width / 3, 200));
+  drawn.letters(say(WORDS.reach.drawing.scale, { scale: scale.words }), width - MARGIN - 4, height - 12,
     { align: "right", px: 12 });
   canvas.dataset.scale = scale.words;
 }
 
-function scaleFor(sizes, width, height, isStacked, units) {
-  const [a, b] = sizes;
-  const room = {
-    x: 0, y: 0, width: width - 2 * MARGIN - (isStacked ? 0 : GAP), height: height - 2 * MARGIN - FOOT - TITLE };
-  if (isStacked) room.height -= TITLE + GAP / 2;
-  const wide = isStacked ? Math.max(a.wide, b.wide) : a.wide + b.wide;
-  const high = isStacked ? a.high + b.high : Math.max(a.high, b.high);
-  return scaleWithRoom(wide, high, room, MM_IN[unitsOf(units).length]);
+/** Side by side or one above the other: as the arm is drawn larger. */
+function laidOut(views, width, height, units) {
+  const sizes = views.map((one) => one.size);
+  const sum = (key) => sizes[0][key] + sizes[1][key];
+  const most = (key) => Math.max(sizes[0][key], sizes[1][key]);
+  const free = [width - 2 * MARGIN - 2 * AIR, height - 2 * MARGIN - FOOT - TITLE - 2 * AIR];
+  const scaled = (wide, high, [across, down]) => {
+    const room = { x: 0, y: 0, width: Math.max(across, 9), height: Math.max(down, 9) };
+    return scaleWithRoom(wide, high, room, MM_IN[unitsOf(units).length]);
+  };
+  const beside = scaled(sum("wide"), most("high"), [free[0] - 2 * AIR - GAP, free[1]]);
+  const below = scaled(most("wide"), sum("high"), [free[0], free[1] - 2 * AIR - TITLE]);
+  const isWide = views[0].least + views[1].least + GAP < free[0] && beside.px >= below.px;
+  return isWide ? { scale: beside, isStacked: false } : { scale: below, isStacked: true };
+}
+
+/** The room of each view, in the middle of the paper; a title is never wider than its view. */
+function frames(views, px, width, height, isStacked) {
+  const boxes = views.map(({ size, least }) => ({
+    wide: Math.max(size.wide * px + 2 * AIR, least), high: size.high * px + 2 * AIR }));
+  const titles = isStacked ? 2 * TITLE : TITLE;
+  const [wide, high] = [boxes[0].wide + boxes[1].wide + GAP, boxes[0].high + boxes[1].high];
+  const tall = isStacked ? high : Math.max(boxes[0].high, boxes[1].high);
+  let x = (width - wide) / 2, y = MARGIN + TITLE + Math.max((height - MARGIN - FOOT - titles - tall) / 2, 0);
+  return boxes.map((box) => {
+    const left = isStacked ? (width - box.wide) / 2 : x;
+    const top = isStacked ? y : y + (tall - box.high) / 2;
+    x += box.wide + GAP;
+    y += isStacked ? box.high + TITLE : 0;
+    return { left, top, right: left + box.wide, bottom: top + box.high };
+  });
 }
 
 /** The two ways of looking: along the normal of the section's plane, and from above. */
-function viewsOf({ envelope, chosen, outline }) {
+function viewsOf({ envelope, chosen, outline, slides }) {
   const reach = envelope?.travel ?? envelope?.working_travel;
-  const axis = envelope?.axis ?? (envelope ? null : { point: [0, 0, 0], direction: [0, 0, 1] });
+  const axis = envelope?.axis ?? (envelope || slides ? null : { point: [0, 0, 0], direction: [0, 0, 1] });
   const [first, second] = reach?.section.directions ?? [[1, 0, 0], [0, 0, 1]];
-  const [right, up] = reach?.plan.directions ?? [[1, 0, 0], [0, 1, 0]];
-  const plan = { kind: "plan", across: right, up, toward: cross(right, up) };
+  const [right, ahead] = reach?.plan.directions ?? [[1, 0, 0], [0, 1, 0]];
+  const plan = { kind: "plan", across: right, up: ahead, toward: cross(right, ahead) };
   if (!axis || (reach && reach.section.kind !== "section")) {
     return [{ kind: "side", across: first, up: second, toward: cross(first, second) }, plan];
   }
   const tool = outline ? column(outline.tool, 3) : null;
   const across = bearing(axis, chosen?.at ?? tool) ?? first;
-  const section = { kind: "section", across, up: axis.direction, toward: cross(across, axis.direction), axis };
-  return [section, { ...plan, axis, cut: across }];
+  const up = axis.direction, toward = cross(across, up);
+  return [{ kind: "section", across, up, toward, axis }, { ...plan, axis, cut: across }];
 }
 
 /** The direction from axis 1 to a place, square to the axis; null for a place on the axis. */
@@ -117,24 +157,30 @@ function shown(view, place) {
 function curves(view, reach) {
   const flat = reach?.[view.kind === "plan" ? "plan" : "section"];
   const origin = view.kind === "section" ? view.axis.point : [0, 0, 0];
-  return (flat?.curves ?? []).map(({ outer, points }) => ({
-    outer, points: points.map(([a, b]) => moved(moved(origin, view.across, a), view.up, b)),
-  }));
+  return (flat?.curves ?? []).map(({ points }) =>
+    points.map(([a, b]) => moved(moved(origin, view.across, a), view.up, b)));
 }
 
-function extent(view, { envelope, outline, before, places, chosen }) {
-  const firm = curves(view, envelope?.travel ?? envelope?.working_travel).flatMap((curve) => curve.points);
+function extent(view, { envelope, outline, before, places, chosen, units }) {
+  const firm = curves(view, envelope?.travel ?? envelope?.working_travel).flat();
   for (const one of [outline, before]) firm.push(...(one?.line ?? []));
-  if (!firm.length) firm.push([0, 0, 0], ...places.slice(0, ENOUGH).map((place) => place.at));
   const flat = (point) => [dot(view.across, point), dot(view.up, point)];
+  if (firm.length) firm.push([0, 0, 0]);
+  else {
+    const seen = chosen ? [...places.slice(0, ENOUGH), chosen] : places.slice(0, ENOUGH);
+    const half = SMALLEST / MM_IN[unitsOf(units).length];
+    firm.push([0, 0, 0], moved([0, 0, 0], view.across, half), moved([0, 0, 0], view.up, half),
+      ...seen.map((place) => shown(view, place.at)));
+  }
   const box = boxed(firm.map(flat));
-  const most = FAR * Math.max(box.right - box.left, box.top - box.bottom);
-  const near = [...places, ...(chosen ? [chosen] : [])].map(({ at }) => flat(shown(view, at)))
-    .filter(([a, b]) => a > box.left - most && a < box.right + most && b > box.bottom - most && b < box.top + most);
+  const size = Math.max(box.right - box.left, box.top - box.bottom);
+  const isNear = ([a, b], most) =>
+    a > box.left - most && a < box.right + most && b > box.bottom - most && b < box.top + most;
+  const those = (some, most) =>
+    some.map(({ at }) => flat(shown(view, at))).filter((one) => isNear(one, most));
+  const near = [...those(places, FAR * size), ...those(chosen ? [chosen] : [], FAR_CHOSEN * size)];
   const all = boxed([[box.left, box.bottom], [box.right, box.top], ...near]);
-  const pad = 0.03 * Math.max(all.right - all.left, all.top - all.bottom, 1e-6);
-  const [left, right, bottom, top] = [all.left - pad, all.right + pad, all.bottom - pad, all.top + pad];
-  return { left, right, bottom, top, wide: right - left, high: top - bottom };
+  return { ...all, wide: all.right - all.left, high: all.top - all.bottom };
 }
 
 function boxed(flat) {
@@ -147,19 +193,48 @@ function boxed(flat) {
 }
 
 function paintView(drawn, put, view, picture, frame) {
-  const { envelope, outline, before, places, chosen, toolName } = picture;
-  const words = WORDS.reach.drawing;
-  drawn.letters(words[view.kind], frame.left, frame.top - TITLE / 2, { px: 13, weight: 600 });
-  region(drawn, put, curves(view, envelope?.travel ?? envelope?.working_travel), "medium");
-  if (envelope?.travel) for (const { points } of curves(view, envelope.working_travel)) drawn.closed(
-    points.map(put), "dashed");
-  if (view.axis) axisLine(drawn, put, view, frame);
-  for (const { at, verdict } of places) mark(drawn, put(shown(view, at)), verdict, 12, frame);
+  const { envelope, outline, before, places, chosen } = picture;
+  const outlined = (reach, kind) => {
+    for (const points of curves(view, reach)) drawn.closed(points.map(put), kind);
+  };
+  outlined(envelope?.travel ?? envelope?.working_travel, "medium");
+  if (envelope?.travel) outlined(envelope.working_travel, "dashed");
+  const labels = labelsOn(drawn);
+  if (view.axis) axisLine(drawn, put, view, frame, labels);
+  baseMark(drawn, put, view, outline, labels, frame);
   if (before) drawn.line(before.line.map(put), "dashed");
-  if (outline) drawArm(drawn, put, { outline, toolName: view.kind === "plan" ? "" : toolName },
-    { size: thickness(put, outline), axes: 20 });
+  if (outline) {
+    drawArm(drawn, put, { outline }, { size: thickness(put, outline), axes: 20 });
+    labels.keepLine(outline.line.map(put), 10);
+    // The letters of the tool's axes stand where `drawArm` puts them, behind their arrows.
+    const point = column(outline.tool, 3);
+    const tips = [0, 1, 2].map((j) => put(moved(point, column(outline.tool, j), 26 / put.px)));
+    for (const tip of tips) labels.keepLine([put(point), tip], 7);
+  }
+  const signs = places.map(({ at, verdict }) => ({ verdict, on: within(put(shown(view, at)), frame) }));
+  const isNumbered = places.length <= NUMBERED;
+  marks(drawn, signs, isNumbered);
+  if (isNumbered) for (const { on } of signs) labels.keep(...on, 6);
   way(drawn, put, picture);
-  if (chosen) chosenPlace(drawn, put, view, picture, frame);
+  if (chosen) chosenPlace(drawn, put, view, picture, frame, labels);
+  if (isNumbered) places.forEach(({ number }, i) => {
+    labels.add(String(number), signs[i].on, { px: 10, gap: 8, from: 99 });
+  });
+  labels.write();
+}
+
+/** The base where no arm stands on it, and beside the title which way its axes point. */
+function baseMark(drawn, put, view, outline, labels, { left, top }) {
+  const at = put([0, 0, 0]);
+  if (!outline) {
+    drawn.circle(at[0], at[1], 3.5, "medium", "paper");
+    labels.add(WORDS.reach.drawing.base, at, { gap: 8, from: 99 });
+  }
+  const beside = left + drawn.widthOf(WORDS.reach.drawing[view.kind], TITLE_PX) * BOLD + 26;
+  labels.keepLine([[left, top - TITLE / 2], [beside, top - TITLE / 2]], 9);
+  if (view.kind === "section") return;
+  const corner = placed(view, put.px, [0, 0, 0], beside, top - 4);
+  triad(drawn, corner, [[1, 0, 0, 0], [0, 1, 0, 0], [0, 0, 1, 0], [0, 0, 0, 1]], 18, labels);
 }
 
 /** Bars as thick as the drawing bears: a small arm stays thin. */
@@ -170,46 +245,22 @@ function thickness(put, { line }) {
   return Math.min(Math.max(long * 0.018, 2.5), 9);
 }
 
-function region(drawn, put, found, kind) {
-  const tone = drawn.colour("wash");
-  for (const isOuter of [true, false]) {
-    for (const { outer, points } of found) {
-      if (outer === isOuter) drawn.closed(points.map(put), kind, isOuter && tone !== "wash" ? tone : "paper");
-    }
-  }
-}
-
 /** Axis 1 in the section; in the plan where the section is cut, with arrows the way it is seen. */
-function axisLine(drawn, put, view, { left, top, right, bottom }) {
+function axisLine(drawn, put, view, { left, top, right, bottom }, labels) {
   const at = put(view.axis.point);
-  if (view.kind === "section") return drawn.line([[at[0], top], [at[0], bottom]], "chain");
+  if (view.kind === "section") return drawn.line([[at[0], top + 4], [at[0], bottom - 4]], "chain");
   const [dx, dy] = [dot(view.cut, view.across), -dot(view.cut, view.up)];
-  const long = Math.max(right - left, bottom - top) / 2;
+  // As far as its own letter has room beside the view.
+  const room = (from, way, low, high) => (way > 0 ? high - from : from - low) / Math.max(Math.abs(way), 1e-9);
+  const long = Math.max(Math.min(room(at[0], dx, left, right), room(at[1], dy, top, bottom)) - 14, 30);
   const end = [at[0] + dx * long, at[1] + dy * long], begin = [at[0] - dx * 24, at[1] - dy * 24];
   drawn.line([begin, end], "chain");
   for (const point of [begin, end]) {
     const tip = [point[0] + dy * 16, point[1] - dx * 16];
     drawn.arrow(point, tip, "thick", 8);
+    labels.keepLine([point, [tip[0] + dy * 12, tip[1] - dx * 12]], 7);
     drawn.letters("A", tip[0] + dy * 9, tip[1] - dx * 9, { px: 13, weight: 600, align: "center" });
   }
-}
-
-/** The sign of a verdict at a place; at the edge of its view where it lies beyond. */
-function mark(drawn, [x, y], verdict, size, frame, kind = 1.2) {
-  const path = SIGNS[verdict] ?? "M10 7v6M7 10h6";
-  const [cx, cy] = [Math.min(Math.max(x, frame.left), frame.right), Math.min(Math.max(y, frame.top), frame.bottom)];
-  const { context } = drawn;
-  context.save();
-  context.translate(cx - size / 2, cy - size / 2);
-  context.scale(size / 20, size / 20);
-  context.setLineDash([]);
-  for (const [width, colour] of [[kind * 4.5, "paper"], [kind * 1.6, "ink"]]) {
-    context.lineWidth = width * (12 / size + 0.4);
-    context.strokeStyle = drawn.colour(colour);
-    context.stroke(new Path2D(path));
-  }
-  context.restore();
-  return cx !== x || cy !== y;
 }
 
 function way(drawn, put, { way: found }) {
@@ -217,22 +268,23 @@ function way(drawn, put, { way: found }) {
   const [from, to] = [put(found.from), put(found.to)];
   drawn.arrow(from, to, found.isBroken ? "heavyDashed" : "thick", 11);
   if (!found.isBroken) return drawn.circle(from[0], from[1], 3, "medium", "paper");
-  for (const s of [1, -1]) drawn.line([[from[0] - 6, from[1] - 6 * s], [from[0] + 6, from[1] + 6 * s]], "thick");
+  const [x, y] = from;
+  for (const s of [6, -6]) drawn.line([[x - 6, y - s], [x + 6, y + s]], "thick");
 }
 
-function chosenPlace(drawn, put, view, { chosen, nearest, missing }, frame) {
-  const at = put(shown(view, chosen.at));
+function chosenPlace(drawn, put, view, { chosen, nearest, missing }, frame, labels) {
+  const at = put(shown(view, chosen.at)), edge = within(at, frame);
   if (nearest) {
-    const near = put(shown(view, nearest));
-    drawn.line([at, near], "thin");
+    const near = put(shown(view, nearest)), middle = [(near[0] + edge[0]) / 2, (near[1] + edge[1]) / 2];
+    drawn.line([edge, near], "thin");
     drawn.circle(near[0], near[1], 4, "medium", "paper");
-    const words = { px: 12, align: near[0] > (frame.left + frame.right) / 2 ? "right" : "left" };
-    drawn.letters(missing, near[0] + (words.align === "right" ? -9 : 9), near[1] + 13, words);
+    labels.keepLine([edge, near], 3);
+    if (missing) labels.add(missing, middle, { px: 12, gap: 6, from: 99 });
   }
-  const isBeyond = mark(drawn, at, chosen.verdict, 18, frame, 1.5);
+  for (const colour of ["paper", "ink"]) stroke(drawn, edge, chosen.verdict, 18, colour);
+  labels.keep(...edge, 9);
+  const isBeyond = edge[0] !== at[0] || edge[1] !== at[1];
   const name = isBeyond ? say(WORDS.reach.drawing.beyond, { name: chosen.name }) : chosen.name;
-  const isRight = at[0] > (frame.left + frame.right) / 2;
-  const x = Math.min(Math.max(at[0], frame.left), frame.right) + (isRight ? -14 : 14);
-  const y = Math.min(Math.max(at[1], frame.top), frame.bottom) - 12;
-  drawn.letters(name, x, y, { px: 13, weight: 600, align: isRight ? "right" : "left" });
+  // Its letters are wider than the measure of their size tells: they are bold.
+  labels.add(name, edge, { px: 14, weight: 600, gap: 14, from: 99 });
 }

@@ -9,21 +9,23 @@ const MOST_BYTES = 64 * 1024 * 1024;
 const KEPT_CHARACTERS = 500000;   // A browser's store for a page is small.
 
 /**
- * Fit field, file and drop; `changed` is called with the text, `said` with what cannot be read.
+ * Fit field, file and drop; `changed` is called when the text is another one, `said` with what
+ * cannot be read.
  * @param {{field: HTMLTextAreaElement, zone: HTMLElement, kept: string}} parts
- * @param {(text: string) => void} changed @param {(words: string) => void} said
+ * @param {(isTyped: boolean) => void} changed isTyped: a key more may follow
+ * @param {(words: string) => void} said
  * @returns {(text: string) => void} puts a text into the field
  */
 export function listInput({ field, zone, kept }, changed, said) {
   const put = (text) => {
     field.value = text;
-    told();
+    told(false);
   };
-  const told = () => {
+  const told = (isTyped) => {
     keep(kept, field.value);
-    changed(field.value);
+    changed(isTyped);
   };
-  field.addEventListener("input", told);
+  field.addEventListener("input", ({ inputType }) => told(/^(insertText|insertLine|delete)/.test(inputType)));
   const take = async (file) => {
     const text = await textOf(file);
     if (text === null) said(WORDS.reach.input.no_table);
@@ -41,6 +43,21 @@ export function listInput({ field, zone, kept }, changed, said) {
     else put(event.dataTransfer.getData("text/plain"));
   });
   return Object.assign(put, { take, begin: () => put(field.value || (recall(kept) ?? "")) });
+}
+
+/**
+ * A place as a line of the list that is there, in its columns, separator and decimal mark.
+ * @param {{position: number[], orientation: {values: number[]}}} pose
+ * @param {string} name @param {object} how as `readPlaces` tells it
+ */
+export function lineOf({ position, orientation }, name, how) {
+  const mark = how.decimal === "comma" ? "," : ".";
+  const sign = { tab: "\t", semicolon: ";", blank: " " }[how.separator] ?? ",";
+  const columns = how.columns?.length ? how.columns : null;
+  const values = [...position, ...orientation.values.flat()].map((value) =>
+    String(Number(value.toFixed(4))).replace(".", mark));
+  const line = columns && !columns.includes("name") ? values : [name, ...values];
+  return line.join(columns ? sign : ", ");
 }
 
 /** A key that opens a file of this computer. */
@@ -69,7 +86,8 @@ async function textOf(file) {
   const marks = { "255,254": "utf-16le", "254,255": "utf-16be" };
   const wide = marks[bytes.subarray(0, 2).join()];
   if (wide) return new TextDecoder(wide).decode(bytes);
-  if (bytes.subarray(0, 4096).includes(0) || String.fromCharCode(...bytes.subarray(0, 2)) === "PK") return null;
+  const isPacked = String.fromCharCode(...bytes.subarray(0, 2)) === "PK";
+  if (isPacked || bytes.subarray(0, 4096).includes(0)) return null;
   try {
     return new TextDecoder("utf-8", { fatal: true }).decode(bytes);
   } catch {
@@ -77,7 +95,8 @@ async function textOf(file) {
   }
 }
 
-function keep(name, text) {
+/** Keep a text for this page as long as the tab is open. @param {string} name @param {string} text */
+export function keep(name, text) {
   try {
     if (text.length <= KEPT_CHARACTERS) sessionStorage.setItem(name, text);
     else sessionStorage.removeItem(name);
@@ -86,7 +105,8 @@ function keep(name, text) {
   }
 }
 
-function recall(name) {
+/** What was kept, or null. @param {string} name */
+export function recall(name) {
   try {
     return sessionStorage.getItem(name);
   } catch {

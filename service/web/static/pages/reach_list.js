@@ -1,37 +1,41 @@
 // The table of places: what was read, verdict, reason; counts to sift by; a hundred on a page.
 // Idea: one line for each line of the list, in its order, from the moment it is read; a verdict is
-// told by a mark, a word and a sentence. Left out: asking, and all about the chosen place.
+// told by a sign, a word and a sentence. Left out: asking, and all about the chosen place.
 
 import { el, fill, setAttribute, svg } from "./elements.js";
-import { length, number, unitsOf } from "./numbers.js";
+import { length, number, signs, unitsOf } from "./numbers.js";
+import { SIGNS } from "./reach_signs.js";
 import { counted } from "./reach_survey.js";
 import { say, WORDS } from "./words.js";
 
 const PAGE = 100;
-/** Verdicts in the order of their counts, with the sign each has here and on the drawing. */
-export const SIGNS = {
-  reachable: "M5 10a5 5 0 1 0 10 0a5 5 0 1 0 -10 0M9.5 10h1",
-  "outside-travel": "M10 4L16 15H4Z",
-  unreachable: "M5 5L15 15M15 5L5 15",
-  "not-found": "M10 3L17 10L10 17L3 10Z",
-  refused: "M4 10H16",
-};
+const KINDS = [...Object.keys(SIGNS), "open"];
+/** Codes of the interface with which a place is reachable, but. */
+const CARE = new Set([1, 2, 3]);
+const STATES = new Set(["near-singular", "singular"]);
 
 /**
- * @typedef {{place: object|null, fault: string|null, result: object|null, refused: string|null}} Row
+ * @typedef {{place: object|null, line: number, name?: string, fault?: string, result?: object,
+ *   refused?: string}} Row
  * `place` as read, or the fault of its line in words; `result` as answered.
  */
 
-/** The verdict of a row; "unread" for a line that cannot be read, "open" before the answer. */
-export function verdictOf({ fault, refused, result }) {
+/**
+ * What is told of a row: a verdict of the interface; "care" for one that is reachable, but near
+ * singular or beyond working travel; "unread" for a line that cannot be read, "open" before the answer.
+ * @param {Row} row
+ */
+export function kindOf({ fault, refused, result }) {
   if (fault) return "unread";
   if (refused) return "refused";
-  return result ? result.verdict ?? "refused" : "open";
+  if (!result) return "open";
+  return result.verdict === "reachable" && CARE.has(result.code) ? "care" : result.verdict ?? "refused";
 }
 
 /**
  * Return the table in a place of the page.
- * @param {HTMLElement} place @param {(at: number) => void} chosen called with the number of a row
+ * @param {HTMLElement} place
+ * @param {(at: number, isPointed: boolean) => void} chosen called with the number of a row
  */
 export function placesTable(place, chosen) {
   const table = { place, chosen, rows: [], units: "mm-deg", page: 0, sift: "", at: -1 };
@@ -41,7 +45,8 @@ export function placesTable(place, chosen) {
       Object.assign(table, { rows, units, page: 0, sift: "", at: -1 });
       draw(table);
     },
-    choose: (at) => choose(table, at),
+    renew: () => draw(table),
+    choose: (at) => choose(table, at, false),
     whole(isWhole) {
       table.isWhole = isWhole;
       draw(table);
@@ -50,33 +55,36 @@ export function placesTable(place, chosen) {
 }
 
 function draw(table) {
-  const words = WORDS.reach.list;
-  if (!table.rows.length) return fill(table.place);
+  const words = WORDS.reach.list, { place } = table;
+  if (!table.rows.length) return fill(place);
   const shown = sifted(table);
   const first = table.isWhole ? 0 : table.page * PAGE;
   const part = table.isWhole ? shown : shown.slice(first, first + PAGE);
-  const heads = ["number", "name", "place", "verdict", "travel_left"];
+  const heads = ["number", "name", "place", "verdict", "travel_left", "why"];
+  const focused = place.contains(document.activeElement) ? document.activeElement.dataset.at : undefined;
   fill(
-    table.place, counts(table),
-    el("table", { class: "list" }, el("caption", { class: "unseen" }, words.caption),
-      el("thead", {}, el("tr", {}, heads.map((head) =>
-        el("th", { scope: "col", class: head }, head === "place" ? placeHead(table) : words[head])))),
-      el("tbody", {}, part.map((at) => line(table, at)))),
+    place, counts(table),
+    el("table", { class: "list", role: "table" }, el("caption", { class: "unseen" }, words.caption),
+      el("thead", { role: "rowgroup" }, el("tr", { role: "row" }, heads.map((head) => el(
+        "th", { scope: "col", role: "columnheader", class: head },
+        head === "place" ? placeHead(table) : words[head])))),
+      el("tbody", { role: "rowgroup" }, part.map((at) => line(table, at)))),
     shown.length > PAGE ? pages(table, first, shown.length) : null,
   );
+  // What is drawn anew keeps the focus.
+  if (focused) place.querySelector(`.choice[data-at="${focused}"]`)?.focus({ preventScroll: true });
 }
 
 const placeHead = ({ units }) => say(WORDS.reach.list.place, { unit: unitsOf(units).length });
 
 function sifted({ rows, sift }) {
   const all = rows.map((row, at) => at);
-  return sift ? all.filter((at) => verdictOf(rows[at]) === sift) : all;
+  return sift ? all.filter((at) => kindOf(rows[at]) === sift) : all;
 }
 
 function counts(table) {
   const found = new Map();
-  for (const row of table.rows) found.set(verdictOf(row), (found.get(verdictOf(row)) ?? 0) + 1);
-  const names = ["reachable", "outside-travel", "unreachable", "not-found", "refused", "unread", "open"];
+  for (const row of table.rows) found.set(kindOf(row), (found.get(kindOf(row)) ?? 0) + 1);
   const key = (sift, count) => el("button", {
     type: "button", "aria-pressed": String(table.sift === sift),
     onclick() {
@@ -87,57 +95,69 @@ function counts(table) {
   }, sift ? sign(sift) : null, el("b", {}, counted(count)), ` ${WORDS.reach.verdicts[sift || "all"]}`);
   return el("div", { class: "counts", role: "group", "aria-label": WORDS.reach.list.sift },
     key("", table.rows.length),
-    names.filter((name) => found.has(name)).map((name) => key(name, found.get(name))));
+    KINDS.filter((name) => found.has(name)).map((name) => key(name, found.get(name))));
 }
 
-/** The sign of a verdict. @param {string} verdict */
-export function sign(verdict) {
-  const path = SIGNS[verdict];
+/** The sign of what is told. @param {string} kind */
+export function sign(kind) {
+  const path = SIGNS[kind];
   return path
     ? svg("svg", { viewBox: "0 0 20 20", class: "sign", "aria-hidden": "true" }, svg("path", { d: path }))
     : null;
 }
 
+/** How a row is called. @param {Row} row */
+export const nameOf = (row) => row.name ?? row.place?.name
+  ?? say(WORDS.reach.list.line, { line: row.place?.line ?? row.line });
+
 function line(table, at) {
   const { units } = table;
   const row = table.rows[at], { place, result } = row;
-  const verdict = verdictOf(row);
+  const kind = kindOf(row), why = said(row), label = nameOf(row);
   const margin = result?.solutions?.[0]?.margin;
-  const label = place?.name ?? say(WORDS.reach.list.line, { line: place?.line ?? row.line });
+  const isChosen = at === table.at;
   const key = el("button", {
-    type: "button", class: "choice", dataset: { at }, "aria-pressed": String(at === table.at),
+    type: "button", class: "choice", dataset: { at }, "aria-pressed": String(isChosen),
     "aria-label": say(WORDS.reach.list.show, { number: at + 1, name: label }),
     tabindex: at === focusable(table) ? 0 : -1,
-    onclick: () => choose(table, at),
   }, label);
+  const cell = (name, ...content) => el("td", { role: "cell", class: name }, ...content);
   return el("tr", {
-    class: `is-${verdict}`, dataset: { at }, onclick: () => choose(table, at),
-    "aria-current": at === table.at ? "true" : null },
-    el("td", { class: "number" }, at + 1),
-    el("th", { scope: "row" }, key),
-    el("td", { class: "place figures" }, place ? place.position.map((one) => length(one, units)).join("  ") : ""),
-    el("td", { class: "verdict" }, sign(verdict), el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict), " ",
-      el("span", {}, said(row))),
-    el("td", { class: "travel_left figures" }, margin === undefined ? "" : percent(margin)));
+    role: "row", class: `is-${kind}`, dataset: { at, verdict: result?.verdict ?? kind },
+    onclick: () => choose(table, at, true), "aria-current": isChosen ? "true" : null },
+    cell("number", at + 1),
+    el("th", { role: "rowheader", scope: "row", class: "name" }, key),
+    cell("place figures", place ? place.position.map((one) => length(one, units)).join("  ") : ""),
+    cell("verdict", sign(kind), el("b", {}, WORDS.reach.verdicts[kind] ?? kind)),
+    cell("travel_left figures", margin === undefined ? "" : percent(margin)),
+    cell("why", why));
 }
 
 /** The sentence of a row. @param {Row} row */
 export function said({ fault, refused, result }) {
   if (fault || refused) return fault ?? refused;
   if (!result) return "";
-  if (result.reason) return result.reason.say;
-  const beyond = result.solutions?.[0]?.findings?.map((finding) => finding.say) ?? [];
-  return beyond.concat((result.findings ?? []).map((finding) => finding.say)).join("; ");
+  if (result.reason) return signs(result.reason.say);
+  const [best] = result.solutions ?? [];
+  const all = [...(best?.findings ?? []), ...(result.findings ?? [])];
+  const findings = all.filter((one) => !STATES.has(one.name));
+  const state = best?.singularity?.state;
+  const near = state && state !== "regular" ? [stateSaid(best.singularity)] : [];
+  return signs([...near, ...findings.map((finding) => finding.say)].join("; "));
 }
+
+/** How near to singular a posture is, in words. @param {{state: string, kinds: string[]}} singularity */
+export const stateSaid = ({ state, kinds }) =>
+  say(WORDS.reach.target.states[state] ?? state, { kinds: kinds?.join(", ") ?? "" });
 
 /** A share of travel left, in hundredths; null where an arm has no travel. */
 export function percent(margin) {
-  return margin === null ? WORDS.reach.list.unbounded : `${number(100 * margin, 1)} %`;
+  return margin === null ? WORDS.reach.list.unbounded : `${number(100 * margin, 1)}\u00a0%`;
 }
 
 const focusable = (table) => (table.at >= 0 ? table.at : sifted(table)[table.page * PAGE] ?? 0);
 
-function choose(table, at) {
+function choose(table, at, isPointed) {
   if (at === table.at) return;
   table.at = at;
   for (const key of table.place.querySelectorAll(".choice")) {
@@ -146,7 +166,7 @@ function choose(table, at) {
     setAttribute(key, "tabindex", own ? "0" : "-1");
     setAttribute(key.closest("tr"), "aria-current", own ? "true" : null);
   }
-  table.chosen(at);
+  table.chosen(at, isPointed);
 }
 
 /** Arrow keys go from place to place, over the ends of pages too. */
@@ -161,7 +181,7 @@ function step(table, event) {
     table.page = Math.floor(next / PAGE);
     draw(table);
   }
-  choose(table, shown[next]);
+  choose(table, shown[next], false);
   table.place.querySelector(`.choice[data-at="${shown[next]}"]`)?.focus();
 }
 

@@ -1,38 +1,39 @@
-// What the drawing needs of the interface, each asked once: envelopes, outlines, frames.
-// Idea: everything in the arm's base. Left out: drawing it.
+// What the drawing needs of the interface, each asked once: outlines, frames, envelopes.
+// Idea: everything in the arm's base, of the one revision that the page is about; an envelope takes
+// the service seconds, so it is asked last. Left out: drawing it, and whose turn it is (reach_turns.js).
 
 import { withQuery } from "./address.js";
 import { ask } from "./ask.js";
 import { moved } from "./projection.js";
 
 const MOST_KEPT = 300;
+const BUSY = new Set([0, 429, 503]);
+const AGAIN_MS = 5000;
 
-/** Return what asks for one arm and keeps the answers. @param {string} name */
-export function postures(name) {
+/**
+ * Return what asks about one arm and keeps the answers.
+ * @param {{name: string, revision: number}} arm
+ */
+export function postures({ name, revision }) {
   const kept = new Map();
   const path = `/v1/arms/${encodeURIComponent(name)}`;
-  const once = (key, question) => {
-    if (!kept.has(key)) {
+  const get = (end, parameters) => {
+    const asked = withQuery(path + end, { revision, ...parameters });
+    if (!kept.has(asked)) {
       if (kept.size > MOST_KEPT) kept.delete(kept.keys().next().value);
-      kept.set(key, question().then((answer) => {
-        if (!answer.ok) kept.delete(key);
+      kept.set(asked, ask(asked).then((answer) => {
+        if (!answer.ok) kept.delete(asked);
         return answer.ok ? answer.data : null;
       }));
     }
-    return kept.get(key);
-  };
-  const get = (end, parameters) => {
-    const asked = withQuery(path + end, parameters);
-    return once(asked, () => ask(asked));
+    return kept.get(asked);
   };
   return {
-    async outline(joints, { tool, units }) {
-      const told = await get("/pose", { q: joints.join(","), tool, units, frame: "base", outline: 1, form: "matrix" });
+    async outline(joints, { tool, units, revision: own = revision }) {
+      const q = joints.join(",");
+      const told = await get("/pose", {
+        q, tool, units, frame: "base", outline: 1, form: "matrix", revision: own });
       return told?.poses[0].outline ?? null;
-    },
-    envelope({ tool, units }) {
-      const body = { arm: name, units, ...(tool ? { tool } : {}) };
-      return once(`envelope ${tool} ${units}`, () => ask("/v1/reach/envelope", { method: "POST", body }));
     },
     async frameInBase({ frame, units }) {
       if (frame === "base") return (point) => point;
@@ -43,4 +44,38 @@ export function postures(name) {
       return (point) => point.reduce((sum, value, j) => moved(sum, axes[j], value), position);
     },
   };
+}
+
+/**
+ * Return what tells the envelope for a question, as far as it is known, and sees to the rest.
+ * @param {{name: string, revision: number}} arm
+ * @param {ReturnType<import("./reach_turns.js").turns>} turn @param {() => void} changed more is known
+ * @returns {(question: {tool: string, units: string}) =>
+ *   {state: "waits" | "here" | "refused", data: object | null, say: string}}
+ */
+export function envelopes(arm, turn, changed) {
+  const known = new Map();
+  let now = "";
+  const wait = (key, question) => turn.last(async (signal) => {
+    const { ok, status, data, problem } = await envelope(arm, question, signal);
+    if (signal.aborted) return;
+    if (ok) known.set(key, { state: "here", data, say: "" });
+    else if (!BUSY.has(status)) known.set(key, { state: "refused", data: null, say: problem.detail });
+    else setTimeout(() => key === now && wait(key, question), AGAIN_MS);
+    changed();
+  });
+  return (question) => {
+    const key = `${question.tool} ${question.units}`;
+    if (!known.has(key)) known.set(key, { state: "waits", data: null, say: "" });
+    const isNew = key !== now;
+    now = key;
+    if (isNew && known.get(key).state === "waits") wait(key, question);
+    else if (isNew) turn.drop();
+    return known.get(key);
+  };
+}
+
+function envelope({ name, revision }, { tool, units }, signal) {
+  const body = { arm: { name, revision }, units, ...(tool ? { tool } : {}) };
+  return ask("/v1/reach/envelope", { method: "POST", body, signal });
 }

@@ -1,5 +1,6 @@
 // What is asked of all places of a list: tool, frame, what the numbers mean, what is left open.
-// Idea: each choice stands in the address under its own name. Left out: the list itself.
+// Idea: each choice stands in the address under its own name; what is seldom chosen is folded away
+// as long as it is as usual. Left out: the list itself.
 
 import { choose, chosen } from "./address.js";
 import { el, fill } from "./elements.js";
@@ -12,20 +13,24 @@ const DEFAULTS = {
   order: "margin", decimal: "auto",
 };
 
+const SHOWN = ["tool", "frame", "units", "form", "approach", "along"];
+const FOLDED = ["freedom", "order", "decimal"];
+
 /**
- * Fit the choices into a place of the page; returns what tells them.
+ * Fit the choices into a place of the page; returns what tells them, and takes frames of the cell.
  * @param {HTMLElement} place @param {object} arm as GET /v1/arms/{arm} answers
- * @param {string[]} cellFrames @param {() => void} changed
- * @returns {() => object} the question now: tool, frame, form, units, freedom, approach, along, order
+ * @param {() => void} changed
+ * @returns {{now: () => object, frames: (names: string[]) => void}}
+ *   now: tool, frame, form, units, freedom, approach, along, order
  */
-export function questionDesk(place, arm, cellFrames, changed) {
+export function questionDesk(place, arm, changed) {
   const document = arm.arm, words = WORDS.reach.question;
   const said = chosen({ ...DEFAULTS, tool: document.default_tool ?? "", units: document.units });
   const tools = [...Object.keys(document.tools ?? {}), "flange"];
   if (!said.tool && tools.length === 1) said.tool = "flange";
-  const frames = ["base", "world", ...Object.keys(document.frames ?? {}), ...cellFrames];
   const options = {
-    tool: said.tool ? tools : ["", ...tools], frame: [...new Set(frames)], form: FORMS, units: UNITS,
+    tool: said.tool ? tools : ["", ...tools], form: FORMS, units: UNITS,
+    frame: [...new Set(["base", "world", ...Object.keys(document.frames ?? {})])],
     freedom: ["", "spin", "cone:15", "cone:30", "cone:45", "cone:90", "orientation"],
     along: Object.keys(ALONG), order: ["margin", "singularity"], decimal: ["auto", "point", "comma"],
   };
@@ -37,8 +42,17 @@ export function questionDesk(place, arm, cellFrames, changed) {
   const field = (name) => el("label", {}, words[name], name === "approach"
     ? approachField(said, take)
     : select(name, options[name], said, take));
-  fill(place, ["tool", "frame", "units", "form", "freedom", "approach", "along", "order", "decimal"].map(field));
-  return () => ({ ...said, approach: typed(said.approach) || 0 });
+  const isUsual = FOLDED.every((name) => said[name] === DEFAULTS[name]);
+  fill(place, SHOWN.map(field), el("details", { open: !isUsual },
+    el("summary", {}, words.more), el("div", { class: "fields" }, FOLDED.map(field))));
+  return {
+    now: () => ({ ...said, approach: typed(said.approach) || 0 }),
+    frames(names) {
+      const list = place.querySelector("[name=frame]");
+      const known = new Set([...list.options].map((option) => option.value));
+      for (const name of names) if (!known.has(name)) list.append(el("option", { value: name }, name));
+    },
+  };
 }
 
 /** A choice the address made that is no longer there is shown, so that the refusal says what it was. */

@@ -14,7 +14,8 @@ const MOST_SHOWN = 20000;
 /**
  * Return what shows and steers a survey in a place of the page.
  * @param {HTMLElement} place
- * @param {{changed: (id: string | null) => void, found: (survey: object, results: object[]) => void}} told
+ * @param {{changed: (id: string | null) => void, found: (survey: object, results: object[]) => boolean}} told
+ *   found: returns whether the result stands on the page now
  */
 export function surveyDesk(place, told) {
   const desk = { place, told, stop: null };
@@ -44,7 +45,7 @@ async function watch(desk, id) {
   desk.stop?.();
   const answer = await ask(`/v1/surveys/${encodeURIComponent(id)}`);
   if (!answer.ok) {
-    desk.place.replaceChildren(el("p", {}, answer.problem.detail));
+    desk.place.replaceChildren(el("p", { class: "refused" }, answer.problem.detail));
     return;
   }
   const parts = frame(desk, answer.data);
@@ -93,27 +94,27 @@ function show(parts, { state, done, total, remaining_s: left }) {
 async function ended(desk, id) {
   const { ok, data: survey, problem } = await ask(`/v1/surveys/${id}`);
   const words = WORDS.reach.survey;
-  if (!ok) return desk.place.replaceChildren(el("p", {}, problem.detail));
+  if (!ok) return desk.place.replaceChildren(el("p", { class: "refused" }, problem.detail));
   const line = say(words.over[survey.state] ?? survey.state, {
-    total: counted(survey.total), reason: survey.reason ?? "" });
+    done: counted(survey.done), total: counted(survey.total), reason: survey.reason ?? "" });
   const parts = [el("h2", {}, survey.title ?? words.head), el("p", { role: "status" }, line)];
-  if (survey.state === "succeeded") parts.push(links(survey.links));
-  const leaves = el("button", { type: "button" }, words.leave);
-  leaves.addEventListener("click", () => leave(desk));
-  desk.place.replaceChildren(...parts, leaves);
+  const leaves = el("button", { type: "button", onclick: () => leave(desk) }, words.leave);
+  const taken = survey.state === "succeeded" ? links(survey.links) : null;
+  desk.place.replaceChildren(...parts, el("p", { class: "keys" }, taken, leaves));
   if (survey.state !== "succeeded") return;
   const small = survey.total <= MOST_SHOWN;
   const answer = small ? await ask(survey.links.result) : { ok: true, data: { results: [] } };
-  if (answer.ok) desk.told.found(survey, answer.data.results);
+  const isShown = answer.ok && desk.told.found(survey, answer.data.results);
   if (!small) desk.place.append(el("p", {}, say(words.long, { most: counted(MOST_SHOWN) })));
+  else if (!isShown) desk.place.append(el("p", {}, answer.ok ? words.other : answer.problem.detail));
 }
 
 function links({ report, result }) {
   const words = WORDS.reach.survey;
   const link = (href, text) => el("a", { href }, text);
-  return el("p", { class: "keys" },
+  return [
     link(report, words.report), link(`${result}?format=csv`, words.csv),
-    link(`${result}?format=json`, words.json), link(`${result}?format=npy`, words.npy));
+    link(`${result}?format=json`, words.json), link(`${result}?format=npy`, words.npy)];
 }
 
 /** Whole numbers in groups of three. */

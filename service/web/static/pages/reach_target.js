@@ -4,9 +4,11 @@
 
 import { withQuery } from "./address.js";
 import { el, fill } from "./elements.js";
-import { angle, length, number, unitsOf } from "./numbers.js";
-import { percent, said, sign, verdictOf } from "./reach_list.js";
+import { angle, length, number, signs, unitsOf } from "./numbers.js";
+import { kindOf, nameOf, percent, said, sign, stateSaid } from "./reach_list.js";
 import { say, WORDS } from "./words.js";
+
+const MOST_FAMILIES = 4;    // As many as can be taken in.
 
 /**
  * Return what shows the chosen place.
@@ -26,20 +28,23 @@ export function targetDesk(place, stepped) {
 }
 
 /**
- * @typedef {{arm: object, row: object, name: string, question: object, method: string, waits: boolean}} Shown
+ * @typedef {{arm: object, row: object, question: object, method: string, waits: boolean,
+ *   trouble: string}} Shown
+ *   waits: more solutions may come; trouble: why none came
  */
 
 function draw(desk) {
   const { shown } = desk;
   if (!shown) return fill(desk.place);
-  const { row, name } = shown, verdict = verdictOf(row), words = WORDS.reach.target;
+  const { row } = shown, kind = kindOf(row), words = WORDS.reach.target;
   const solutions = row.result?.solutions ?? [];
   fill(desk.place,
-    el("h2", {}, sign(verdict), ` ${name}`),
-    el("p", { class: "verdict" }, el("b", {}, WORDS.reach.verdicts[verdict] ?? verdict),
+    el("h2", {}, sign(kind), ` ${nameOf(row)}`),
+    el("p", { class: "verdict", dataset: { kind } }, el("b", {}, WORDS.reach.verdicts[kind] ?? kind),
       said(row) ? `: ${said(row)}` : ""),
+    shown.trouble ? el("p", { class: "refused" }, say(words.trouble, { say: shown.trouble })) : null,
     row.result?.proof ? el("p", { class: "quiet" }, say(words.rests, {
-      proof: words.proofs[row.result.proof] ?? row.result.proof, method: shown.method })) : null,
+      proof: words.proofs[row.result.proof] ?? row.result.proof, method: signs(shown.method) })) : null,
     nearestOf(shown), ...familiesOf(shown),
     solutions.length ? stepping(desk, solutions) : null,
     el("div", { class: "solution" }),
@@ -54,15 +59,21 @@ function nearestOf({ row, question }) {
   const values = [
     near.position.map((one) => length(one, question.units)),
     near.orientation.values.flat().map((one) => angle(one, question.units))];
-  return el("p", {}, WORDS.reach.target.nearest, " ", el("span", { class: "figures" }, values.flat().join("  ")),
-    ` (${near.orientation.form})`);
+  const figures = el("span", { class: "figures" }, values.flat().join("  "));
+  return el("p", {}, WORDS.reach.target.nearest, " ", figures, ` (${near.orientation.form})`);
 }
 
 function familiesOf({ row }) {
-  return (row.result?.families ?? []).map((family) => el("p", { class: "quiet" }, say(WORDS.reach.target.family, {
-    joints: family.free_joints.join(", "), unit: family.unit,
-    from: number(family.interval[0][0], 1), to: number(family.interval.at(-1)[1], 1),
-  }), family.relation ? ` ${family.relation}` : ""));
+  const words = WORDS.reach.target;
+  const told = ({ free_joints: joints, interval, unit, relation }) => [
+    say(joints.length === 1 ? words.family_one : words.family, {
+      joints: joints.join(", "), unit, from: number(interval[0][0], 1), to: number(interval.at(-1)[1], 1),
+    }), relation ? signs(relation) : ""].join(" ");
+  // Postures on different branches may move on in the same words.
+  const all = [...new Set((row.result?.families ?? []).map(told))];
+  const rest = all.length - MOST_FAMILIES;
+  const shown = all.slice(0, MOST_FAMILIES).concat(rest > 0 ? say(words.families_more, { count: rest }) : []);
+  return shown.length ? [el("ul", { class: "quiet families" }, shown.map((text) => el("li", {}, text)))] : [];
 }
 
 function stepping(desk, solutions) {
@@ -93,23 +104,26 @@ function look(desk) {
   desk.stepped(solution);
 }
 
-function solutionLines({ arm, question, name }, solution) {
+function solutionLines({ arm, question, row }, solution) {
   const words = WORDS.reach.target, { units } = question;
   const rows = arm.arm.rows.filter((row) => !row.passive);
   const kinds = rows.map((row) => (row.joint === "prismatic" ? length : angle));
   const q = solution.joints.join(",");
   const sheet = withQuery(`/arms/${encodeURIComponent(arm.name)}`, {
     q, tool: question.tool, frame: question.frame, units });
-  const { singularity } = solution, state = singularity?.state ?? solution.state;
+  const { singularity } = solution;
+  const findings = (solution.findings ?? []).filter((one) => !/(^|-)singular$/.test(one.name));
+  const each = (cell) => el("tr", {}, solution.joints.map(cell));
   return [
-    el("table", { class: "joints" }, el("caption", { class: "unseen" }, say(words.joints, { name })),
-      el("tr", {}, solution.joints.map((value, i) => el("th", { scope: "col" }, i + 1))),
-      el("tr", {}, solution.joints.map((value, i) => el("td", { class: "figures" }, kinds[i](value, units))))),
-    el("p", {}, say(words.margin, { margin: percent(solution.margin) }), solution.branch ? `; ${solution.branch}` : ""),
-    state ? el("p", {}, say(words.states[state] ?? state, { kinds: singularity?.kinds?.join(", ") ?? "" }),
-      (singularity?.lost_motion ?? []).map((lost) => `; ${lost.say}`)) : null,
-    ...(solution.findings ?? []).filter((finding) => finding.name !== "near-singular")
-      .map((finding) => el("p", {}, finding.say)),
+    el("table", { class: "joints" },
+      el("caption", { class: "unseen" }, say(words.joints, { name: nameOf(row) })),
+      each((value, i) => el("th", { scope: "col" }, i + 1)),
+      each((value, i) => el("td", { class: "figures" }, kinds[i](value, units)))),
+    el("p", {}, [say(words.margin, { margin: percent(solution.margin) }), solution.branch]
+      .filter(Boolean).join("; ")),
+    singularity ? el("p", { dataset: { state: singularity.state } }, stateSaid(singularity),
+      (singularity.lost_motion ?? []).map((lost) => `; ${signs(lost.say)}`)) : null,
+    ...findings.map((finding) => el("p", {}, signs(finding.say))),
     approachLine(solution.approach, units),
     el("p", { class: "keys" }, copyKey(q), el("a", { href: sheet }, words.sheet)),
   ];
@@ -118,7 +132,8 @@ function solutionLines({ arm, question, name }, solution) {
 function approachLine(approach, units) {
   if (!approach) return null;
   const words = WORDS.reach.target;
-  if (!approach.ok) return el("p", {}, el("b", {}, words.approach), " ", approach.breaks?.say ?? words.breaks);
+  const breaks = signs(approach.breaks?.say ?? words.breaks);
+  if (!approach.ok) return el("p", {}, el("b", {}, words.approach), " ", breaks);
   return el("p", {}, el("b", {}, words.approach), " ", say(words.comes, {
     length: length(approach.length, units), unit: unitsOf(units).length,
     margin: percent(approach.margin?.value ?? null),

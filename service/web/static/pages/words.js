@@ -182,12 +182,16 @@ export const WORDS = {
   "reach": {
     "title": "Reach of",
     "places": "Part locations",
-    "how": "A line each, typed, pasted from a spreadsheet, or a CSV file dropped here: name (if wanted), x, y, z, and if the orientation counts r1, r2, r3. A head line may name them in any order, and add freedom (spin, orientation, cone:30) and approach (how far back along tool z).",
+    "how": "A line each: name (if wanted), x, y, z, and r1, r2, r3 if the orientation counts. Type, paste from a spreadsheet, or drop a CSV file. A head line may name columns in any order, also freedom and approach.",
     "survey_place": "Survey",
     "drawing_head": "Drawing",
-    "legend": "Line: within travel. Dashes: within working travel. Other places are turned into the section about axis 1. Geometry only: no collision, cable, payload or dynamics check.",
-    "envelope_waits": "The envelope is being worked out.",
-    "block": "Title block",
+    "legend": "Line: within travel. Dashes: within working travel.",
+    "legend_turned": "Other places are turned into the section about axis 1.",
+    "legend_many": "Of signs that would lie on one another one is drawn.",
+    "legend_geometry": "Geometry only: no collision, cable, payload or dynamics check.",
+    "envelope_waits": "The envelope follows as soon as nothing else is asked.",
+    "envelope_refused": "No envelope is drawn: {say}.",
+    "back": "Back to the list",
     "block_lines": {
       "arm": "arm",
       "revision": "revision",
@@ -198,10 +202,12 @@ export const WORDS = {
     },
     "sheet": "sheet",
     "revision": "revision {revision}, {status}",
+    "read_one": "Read: 1 place, columns {columns}, {separator}, {decimal}.",
     "read": "Read: {count} places, columns {columns}, {separator}, {decimal}.",
     "left_out": " Left out: {columns}.",
     "empty": "Nothing to ask yet.",
     "doubt": "{cell} was read with a decimal comma. If the comma parts thousands, choose decimal point.",
+    "unread_one": "A line cannot be read.",
     "unread": "{count} lines cannot be read.",
     "long": "{count} places are long work: begin it as a survey. It goes on if you leave, and can be cancelled.",
     "separators": {
@@ -231,9 +237,10 @@ export const WORDS = {
     "verdicts": {
       "all": "all",
       "reachable": "reachable",
+      "care": "reachable, but",
       "outside-travel": "outside travel",
       "unreachable": "unreachable",
-      "not-found": "not found",
+      "not-found": "not found, not ruled out",
       "refused": "refused",
       "unread": "cannot be read",
       "open": "not asked yet"
@@ -261,6 +268,7 @@ export const WORDS = {
       "along": "along",
       "order": "Best is",
       "decimal": "Decimal mark",
+      "more": "Left open, order, decimal mark",
       "approach_wrong": "A length, such as 50, or nothing.",
       "cone": "tool z within {angle} deg",
       "values": {
@@ -299,6 +307,7 @@ export const WORDS = {
       "place": "x  y  z, {unit}",
       "verdict": "Verdict",
       "travel_left": "Travel left",
+      "why": "Reason",
       "sift": "Show",
       "line": "line {line}",
       "show": "Place {number}, {name}: show it",
@@ -308,7 +317,7 @@ export const WORDS = {
       "part": "{first} to {last} of {count}"
     },
     "target": {
-      "rests": "Rests on: {proof}. {method}.",
+      "rests": "Rests on {proof}. Method: {method}.",
       "proofs": {
         "witness": "joint values that bring the tool there",
         "bound": "the lengths of the links",
@@ -318,7 +327,10 @@ export const WORDS = {
         "search": "a search; another may find more"
       },
       "nearest": "Nearest that can be reached:",
+      "family_one": "Joint {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
       "family": "Joints {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
+      "families_more": "And {count} more such motions.",
+      "trouble": "Its other solutions could not be asked for: {say}.",
       "step": "Solutions",
       "before": "Solution before",
       "after": "Next solution",
@@ -356,9 +368,10 @@ export const WORDS = {
       "over": {
         "succeeded": "Done: {total} places.",
         "failed": "Failed: {reason}",
-        "cancelled": "Cancelled."
+        "cancelled": "Cancelled at {done} of {total} places."
       },
       "long": "More than {most} places are not listed here: take them as a file.",
+      "other": "The list above is another one: the result of this survey is in its report and its files.",
       "report": "Report",
       "csv": "CSV",
       "json": "JSON",
@@ -369,6 +382,7 @@ export const WORDS = {
       "side": "Side view",
       "plan": "Plan, from above",
       "scale": "Scale {scale}",
+      "base": "base",
       "beyond": "{name}, beyond this drawing"
     }
   }
