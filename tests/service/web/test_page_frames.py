@@ -24,7 +24,7 @@ GIVEN = {
 
 
 def test_the_words_are_sections_of_texts() -> None:
-    assert {"shell", "board", "sheet", "reach", "drawing"} == set(words())
+    assert {"shell", "board", "sheet", "reach"} == set(words())
     for section in words().values():
         for key, value in section.items():
             assert re.fullmatch(r"[a-z][a-z0-9_-]*", key)
