@@ -34,6 +34,10 @@ _SEARCHES_AFTER = (5000, 20, 20)
 ones are. Answers leave hardly any that the count of references does not free, and a search of all
 holds up every stream by 20 ms: with the usual numbers four times a second."""
 
+_TURN_S = 1e-4
+"""After so long a thread lets another have the interpreter. A pose is answered in several turns;
+with the usual 5 ms each of them could wait as long for the one that keeps a survey."""
+
 _KEEP_ALIVE_S = 65
 # A stop is to be over within a second: requests still open after this are answered 503.
 _GRACE_S = 0.25
@@ -67,6 +71,7 @@ class _Server(uvicorn.Server):
 def run(settings: Settings) -> int:
     """Serve until a signal ends it; return the exit code: 0, or 1 with one line that says why."""
     gc.set_threshold(*_SEARCHES_AFTER)
+    sys.setswitchinterval(_TURN_S)
     # After its clean stop the server raises the signal again; that must not look like a crash.
     signal.signal(signal.SIGTERM, _leave)
     logging.basicConfig(

@@ -17,6 +17,7 @@ from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, Executor, Future
 from contextlib import suppress
 from dataclasses import replace
 from datetime import datetime
+from itertools import islice
 from time import monotonic
 from typing import Any
 
@@ -43,8 +44,9 @@ from service.wire.arms import ReadArm
 
 _LOG = logging.getLogger(__name__)
 
-CHUNK_S = 0.2
-"""Of work in a chunk: its way to the process and into the store takes a fiftieth of that."""
+CHUNK_S = 1.0
+"""Of work in a chunk. Its way to the process and into the store takes some milliseconds, in which
+answers wait: at one a second that is less than one answer in a hundred."""
 
 MOST_IN_CHUNK = 64
 _ENDS_WITHIN_S = 0.7
@@ -222,7 +224,10 @@ class Runner:
         chunks: "_Chunks",
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
     ) -> None:
-        while len(in_hand) < self._pool.room and (pieces := chunks.next(not in_hand)):
+        while (beside := len(in_hand)) < (room := self._pool.room):
+            pieces = chunks.next(room, none_in_hand=not beside)
+            if not pieces:
+                return
             given = survey.kind, survey.id, setup, pieces, chunks.others(pieces)
             try:
                 future = executor.submit(worker.make, *given)
@@ -272,17 +277,26 @@ class _Chunks:
 
     def __init__(self, store: SurveyStorage, survey: str, *, gathers: bool) -> None:
         self._store, self._survey = store, survey
-        self._last = len(store.sizes(survey)) - 1 if gathers else None
+        self._count, self._handed_out = len(store.sizes(survey)), 0
+        self._last = self._count - 1 if gathers else None
         self._pieces = self._stored()
         self._whole: Sequence[GivenPiece] = ()
         self._again: list[Sequence[GivenPiece]] = []
         self._length = 1
 
-    def next(self, none_in_hand: bool) -> Sequence[GivenPiece]:
-        """Return the next chunk; nothing when all pieces are made, or have to wait."""
+    def next(self, room: int, *, none_in_hand: bool) -> Sequence[GivenPiece]:
+        """Return the next chunk; nothing when all pieces are made, or have to wait.
+
+        Parameters
+        ----------
+        room : how many chunks are to be in hand; at the end they share what is left.
+        """
         if self._again:
             return self._again.pop(0)
-        chunk = [piece for _, piece in zip(range(self._length), self._pieces, strict=False)]
+        share = -(-(self._count - self._handed_out) // room)
+        chunk = list(islice(self._pieces, min(self._length, max(share, 1))))
+        if chunk:
+            self._handed_out = chunk[-1].number + 1
         if chunk or not none_in_hand:
             return chunk
         whole, self._whole = self._whole, ()

@@ -197,6 +197,15 @@ def test_a_worker_that_dies_at_the_last_piece_costs_that_alone(bench: Bench) -> 
     assert bench.store.made("a1", 19) == GATHERED
 
 
+def test_at_the_end_chunks_share_what_is_left(bench: Bench) -> None:
+    bench.add()
+    chunks = runner._Chunks(bench.store, "a1", gathers=False)
+    for _ in range(6):
+        chunks.took(1e-3, 64)
+    given = iter(lambda: len(chunks.next(4, none_in_hand=False)), 0)
+    assert list(given) == [5, 4, 3, 2, 2, 1, 1, 1, 1]
+
+
 def test_dead_workers_cost_their_chunks_alone(bench: Bench) -> None:
     bench.pool.deaths = MOST_DEATHS
     bench.add()
