@@ -169,7 +169,8 @@ class JudgementRun:
         decompose(*self._of_svd)
         judgement = self.judgement
         if not self._space.generic_rank:
-            # The task asks nothing the arm can do: nothing can be lost.
+            # The task asks nothing the arm can do: nothing can be lost, and each joint is free.
+            self._right[:] = np.eye(self._right.shape[-1])
             judgement.state[:], judgement.rank[:] = REGULAR, 0
             judgement.readings[:], judgement.step[:] = np.nan, np.nan
             judgement.readings[:, : MANIPULABILITY + 1] = _OF_NO_RANK

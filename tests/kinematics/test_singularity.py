@@ -150,6 +150,10 @@ def test_what_an_arm_never_does_is_no_posture_s_trouble() -> None:
     assert judgement.state.tolist() == [REGULAR, REGULAR]
     assert judgement.smallest.tolist() == judgement.manipulability.tolist() == [0.0, 0.0]
     assert np.isnan(judgement.step).all()
+    # All it can do is of no effect there.
+    _, judgement = judged(arm_of(prismatic(), prismatic()), np.zeros((2, 2)), "orientation")
+    assert judgement.right.shape == (2, 2, 0)
+    np.testing.assert_array_equal(judgement.rest, [np.eye(2), np.eye(2)])
 
 
 def test_spare_joints_keep_an_aligned_wrist_regular() -> None:
