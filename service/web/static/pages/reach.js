@@ -266,13 +266,18 @@ async function report() {
   const title = say(words.survey.title, { arm: page.name, count: counted(page.read.places.length) });
   page.isSent = true;
   const answer = await page.survey.begin(body, title);
-  if (!answer.ok) trouble(refusal(answer.problem));
-  else if (rows === page.rows) markSent(answer.data.id);
+  if (!answer.ok) {
+    page.isSent = false;
+    trouble(refusal(answer.problem));
+  } else if (rows === page.rows) markSent(answer.data.id);
 }
 
 /** The result of a survey: beside the list it came from while that stands unchanged, or alone. */
 function surveyFound({ request, arm, units }, found) {
-  if (page.isSent) answered({ results: found });
+  // Nothing was fetched of a very long one.
+  const fits = [0, page.read.places.length].includes(found.length);
+  const isOfThis = fits && arm.revision === page.arm.revision;
+  if (page.isSent && isOfThis) answered({ results: found });
   else if (page.rows.length) return false;
   else {
     const { tool, frame = "base" } = request;
