@@ -70,7 +70,7 @@ class Envelope:
             try:
                 await self._answer(scope, receive, send_dressed)
             except ClientDisconnect:
-                _LOG.info("%s: the client left before its request was complete", request_id)
+                _LOG.info("%s: the client left before it was answered", request_id)
             except asyncio.CancelledError:
                 # Only a server that stops cancels a request, and it does not ask what became of it.
                 if status:

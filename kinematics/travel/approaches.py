@@ -36,8 +36,8 @@ from kinematics.travel.moves import (
     Leg,
     Place,
     Way,
-    back_along,
 )
+from kinematics.travel.to_targets import back_along
 
 
 @dataclass(frozen=True, eq=False)

@@ -14,7 +14,8 @@ from kinematics.reach.targets import Target
 from kinematics.table import Convention, JointKind, Row, Table, Travel
 from kinematics.travel.courses import Courses
 from kinematics.travel.extremes import largest_rates
-from kinematics.travel.moves import Approach, Course, Leg, Place, back_along
+from kinematics.travel.moves import Approach, Course, Leg, Place
+from kinematics.travel.to_targets import back_along
 
 LAST_OF_COURSES = largest_rates
 """A kernel that it ends with."""

@@ -10,7 +10,8 @@ import numpy as np
 
 from kinematics.errors import KinematicsError
 from kinematics.reach.targets import Checks, Target, Targets
-from kinematics.travel.moves import Approach, Course, Leg, Place, in_base
+from kinematics.travel.moves import Approach, Course, Leg, Place
+from kinematics.travel.to_targets import in_base
 from service.errors import ServiceError
 from service.operations.questions import Question
 from service.wire import reach_request

@@ -11,7 +11,8 @@ from kinematics.findings import Finding
 from kinematics.reach.targets import NONE, ORIENTATION, Target
 from kinematics.transforms import in_frame
 from kinematics.travel import moves
-from kinematics.travel.moves import IN_JOINTS, STRAIGHT, Course, Leg, Place, approached, in_base
+from kinematics.travel.moves import IN_JOINTS, STRAIGHT, Course, Leg, Place
+from kinematics.travel.to_targets import approached, in_base
 from service.errors import MissingField, ServiceError, UnusableValue
 from service.operations.joint_rows import read_joint_row_at
 from service.operations.questions import Question

@@ -7,7 +7,7 @@ for. The envelope is that of the answer at once, to the last bit. Left out: how 
 (the core), tables (envelope_tables.py), the report (envelope_report.py).
 """
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from functools import cache
 from typing import NamedTuple, cast
 
@@ -20,7 +20,7 @@ from service.drawings.envelope_sheet import envelope_sheet
 from service.drawings.envelope_words import SheetLabels
 from service.errors import UnusableValue
 from service.operations.arms import Arms
-from service.operations.envelopes import EnvelopeQuestion, envelope_question
+from service.operations.envelopes import TRAVEL, WORKING, EnvelopeQuestion, envelope_question
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.surveys.envelope_kept import envelope_document, envelope_from
 from service.surveys.envelope_parts import (
@@ -83,6 +83,8 @@ class Envelopes:
 
     def make(self, prepared: "Prepared", piece: GivenPiece) -> MadePiece:
         """See ``Kind.make``."""
+        if piece.given in _TRAVELS:
+            return _at_once(prepared.asked, piece)
         within, name, number = named(piece.given)
         part = prepared.parts(within).piece(name, number)
         return MadePiece(piece.number, json_bytes(part_document(part)), {})
@@ -90,6 +92,8 @@ class Envelopes:
     def gather(self, prepared: "Prepared", piece: GivenPiece, made: Sequence[bytes]) -> MadePiece:
         """See ``Gathers.gather``."""
         asked = prepared.asked
+        if piece.given in _TRAVELS:
+            return _at_once(asked, piece)
         found: dict[Within, dict[str, list[Part]]] = {within: {} for within in asked.within}
         for one, kept in zip(prepared.names(), made, strict=True):
             found[one.within].setdefault(one.name, []).append(part_from(orjson.loads(kept)))
@@ -121,6 +125,16 @@ class Envelopes:
 
 _WHOLE = b"whole"
 """Given to the last piece."""
+
+_TRAVELS: Mapping[bytes, Within] = {within.encode(): within for within in (TRAVEL, WORKING)}
+"""Given to the pieces of surveys that were taken in when each travel was one."""
+
+
+def _at_once(asked: EnvelopeQuestion, piece: GivenPiece) -> MadePiece:
+    within = _TRAVELS[piece.given]
+    found = asked.found(within)
+    kept = {"answer": asked.answer({within: found}), "found": envelope_document(found)}
+    return MadePiece(piece.number, json_bytes(kept), {})
 
 
 class Prepared:

@@ -3,21 +3,19 @@
 Idea: what is to be done stands in the store, and only there: the thread asks for the oldest open
 survey and its unmade pieces, keeps some chunks of them in hand, and writes each chunk that comes
 back in one step with the count of what is done. So a start after a kill goes on where the store
-is, and a worker that dies costs the chunks in hand. How many pieces make a chunk follows from how
-long the last ones took; the bits of a piece do not depend on it. Of a kind that gathers the last
-piece is handed out when all others are in the store.
+is, and a worker that dies costs the chunks in hand. Of a kind that gathers the last piece is handed
+out when all others are in the store.
 
-Left out: what a piece is (kinds.py), where it is made (pool.py).
+Left out: what a piece is (kinds.py), which make a chunk (chunks.py), where it is made (pool.py).
 """
 
 import logging
 import threading
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Sequence
 from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, Executor, Future, wait
 from contextlib import suppress
 from dataclasses import replace
 from datetime import datetime
-from itertools import islice
 from time import monotonic
 from typing import Any
 
@@ -35,6 +33,7 @@ from service.storage.ports import (
     SurveyStorage,
 )
 from service.surveys import worker
+from service.surveys.chunks import Chunks
 from service.surveys.kinds import Gathers
 from service.surveys.pool import Pool
 from service.surveys.progress import Pace
@@ -44,11 +43,6 @@ from service.wire.arms import ReadArm
 
 _LOG = logging.getLogger(__name__)
 
-CHUNK_S = 1.0
-"""Of work in a chunk. Its way to the process and into the store takes some milliseconds, in which
-answers wait: at one a second that is less than one answer in a hundred."""
-
-MOST_IN_CHUNK = 64
 _ENDS_WITHIN_S = 0.7
 """A chunk of a cancelled survey, else its process is ended: a cancel takes a second at most."""
 
@@ -192,7 +186,7 @@ class Runner:
         executor = self._pool.executor()
         pace = self._pace = Pace(survey.id, survey.done)
         gathers = isinstance(SURVEY_KINDS[survey.kind], Gathers)
-        chunks = _Chunks(self._store, survey.id, gathers=gathers)
+        chunks = Chunks(self._store, survey.id, gathers=gathers)
         in_hand: dict[Future[_Made], Sequence[GivenPiece]] = {}
         deaths = 0
         try:
@@ -221,7 +215,7 @@ class Runner:
         executor: Executor,
         survey: Survey,
         setup: Any,
-        chunks: "_Chunks",
+        chunks: Chunks,
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
     ) -> None:
         while (beside := len(in_hand)) < (room := self._pool.room):
@@ -238,7 +232,7 @@ class Runner:
 
     def _anew(
         self,
-        chunks: "_Chunks",
+        chunks: Chunks,
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
         deaths: int,
     ) -> Executor:
@@ -265,66 +259,3 @@ class Runner:
         begun = [future for future in in_hand if not future.cancelled()]
         if begun and not self._stopping.is_set() and wait(begun, _ENDS_WITHIN_S).not_done:
             self._pool.stop()
-
-
-class _Chunks:
-    """Unmade pieces of a survey, some at a time, in order; those given back come first.
-
-    Parameters
-    ----------
-    gathers : whether the last piece is put together of all others.
-    """
-
-    def __init__(self, store: SurveyStorage, survey: str, *, gathers: bool) -> None:
-        self._store, self._survey = store, survey
-        self._count, self._handed_out = len(store.sizes(survey)), 0
-        self._last = self._count - 1 if gathers else None
-        self._pieces = self._stored()
-        self._whole: Sequence[GivenPiece] = ()
-        self._again: list[Sequence[GivenPiece]] = []
-        self._length = 1
-
-    def next(self, room: int, *, none_in_hand: bool) -> Sequence[GivenPiece]:
-        """Return the next chunk; nothing when all pieces are made, or have to wait.
-
-        Parameters
-        ----------
-        room : how many chunks are to be in hand; at the end they share what is left.
-        """
-        if self._again:
-            return self._again.pop(0)
-        share = -(-(self._count - self._handed_out) // room)
-        chunk = list(islice(self._pieces, min(self._length, max(share, 1))))
-        if chunk:
-            self._handed_out = chunk[-1].number + 1
-        if chunk or not none_in_hand:
-            return chunk
-        whole, self._whole = self._whole, ()
-        return whole
-
-    def others(self, pieces: Sequence[GivenPiece]) -> Sequence[bytes] | None:
-        """Return what became of all other pieces, for the one that is put together of them."""
-        if self._last is None or pieces[0].number != self._last:
-            return None
-        return [self._store.made(self._survey, number) for number in range(self._last)]
-
-    def back(self, pieces: Sequence[GivenPiece]) -> None:
-        """Take a chunk back that nobody has made."""
-        self._again.append(pieces)
-
-    def took(self, seconds: float, pieces: int) -> None:
-        """Learn how long a chunk took."""
-        fitting = int(CHUNK_S * pieces / max(seconds, 1e-6))
-        # At most twice as many as before: the first chunk also waits for the process to be ready.
-        self._length = max(1, min(fitting, 2 * self._length, MOST_IN_CHUNK))
-
-    def _stored(self) -> Iterator[GivenPiece]:
-        """Yield unmade pieces, and keep back the one that has to wait for all others."""
-        after = -1
-        while pieces := self._store.left(self._survey, after, MOST_IN_CHUNK):
-            for piece in pieces:
-                if piece.number == self._last:
-                    self._whole = (piece,)
-                else:
-                    yield piece
-            after = pieces[-1].number

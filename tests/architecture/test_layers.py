@@ -181,6 +181,7 @@ LAYERS = (
     # Moves from place to place: the question and answer, lines and postures held against them, one
     # leg followed, what is told of it, whole courses.
     ("travel", "travel.above_zero", "travel.tolerances", "travel.moves", "travel.small_systems"),
+    ("travel.to_targets",),
     ("travel.lines", "travel.on_line", "travel.folds"),
     ("travel.tracking",),
     ("travel.extremes", "travel.trails"),

@@ -13,7 +13,6 @@ import json
 import sys
 import tempfile
 import time
-from concurrent.futures import Executor, Future
 from contextlib import closing
 from itertools import pairwise
 from pathlib import Path
@@ -28,11 +27,11 @@ from service.storage.ports import Survey
 from service.surveys.desk import Surveys
 from service.surveys.envelopes import Envelopes
 from service.surveys.pinned import Setup
-from service.surveys.pool import OwnProcesses
 from service.wire.answers import json_bytes
 from service.wire.arms import ReadArm, read_arm
 from service.wire.envelopes import EnvelopeRequest
 from service.wire.surveys import SurveyRequest
+from tests.benchmarks.watched_processes import Watched
 from tests.conftest import ROOT
 
 NO_ARMS = cast(Arms[ReadArm], None)
@@ -67,35 +66,6 @@ def in_pieces(request: dict[str, Any]) -> tuple[float, list[float]]:
     kind.gather(prepared, last, made)
     ends.append(time.process_time())
     return ends[-1] - begin, [end - start for start, end in pairwise(ends)]
-
-
-class Watched(OwnProcesses):
-    """Processes of which it is noted how long each chunk took them."""
-
-    def __init__(self, count: int) -> None:
-        super().__init__(count)
-        self.seconds: list[float] = []
-
-    def executor(self) -> Executor:
-        """Return what takes pieces."""
-        return cast(Executor, _Noting(super().executor(), self.seconds))
-
-
-class _Noting:
-    """An executor whose answers are noted."""
-
-    def __init__(self, executor: Executor, seconds: list[float]) -> None:
-        self._executor, self._seconds = executor, seconds
-
-    def submit(self, *asked: Any) -> Future[Any]:
-        """Hand on what is asked."""
-        future = self._executor.submit(*asked)
-        future.add_done_callback(self._note)
-        return future
-
-    def _note(self, done: Future[Any]) -> None:
-        if not done.cancelled() and done.exception() is None:
-            self._seconds.append(done.result()[1])
 
 
 def seconds_of(surveys: Surveys, survey: str) -> float:

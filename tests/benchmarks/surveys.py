@@ -19,14 +19,14 @@ import subprocess
 import sys
 import tempfile
 import time
-from concurrent.futures import Executor, Future, ProcessPoolExecutor
+from concurrent.futures import ProcessPoolExecutor
 from contextlib import closing
 from datetime import datetime
 from functools import partial
 from http.client import HTTPConnection
 from multiprocessing import get_context
 from pathlib import Path
-from typing import Any, NamedTuple, cast
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -46,11 +46,11 @@ from service.storage.ports import GivenPiece
 from service.surveys import worker
 from service.surveys.desk import Surveys
 from service.surveys.kinds import LARGEST_PIECE
-from service.surveys.pool import OwnProcesses
 from service.surveys.reach_checks import ReachChecks, Setup
 from service.surveys.targets_sent import TableOfDoubles
 from service.wire.arms import read_arm
 from service.wire.surveys import SurveyRequest
+from tests.benchmarks.watched_processes import Watched
 from tests.conftest import ROOT
 
 REPEATS = 3
@@ -132,35 +132,11 @@ def pieces_seconds(asked: Asked, *, table: bool) -> float:
     return best
 
 
-class Watched(OwnProcesses):
-    """One process, of which it is noted how long each chunk took it."""
-
-    def __init__(self) -> None:
-        super().__init__(1)
-        self.seconds: list[float] = []
-
-    def executor(self) -> Executor:
-        """Return what takes pieces."""
-        return cast(Executor, _Noting(super().executor(), self.seconds))
-
-
-class _Noting:
-    """An executor whose answers are noted."""
-
-    def __init__(self, executor: Executor, seconds: list[float]) -> None:
-        self._executor, self._seconds = executor, seconds
-
-    def submit(self, *asked: Any) -> Future[Any]:
-        future = self._executor.submit(*asked)
-        future.add_done_callback(lambda done: self._seconds.append(done.result()[1]))
-        return future
-
-
 def queue_ms(asked: Asked, folder: Path) -> float:
     """Return by how many milliseconds a chunk takes longer than its work in its process."""
     with closing(open_storage(Settings(database=str(folder / "queue.db")))) as opened:
         arms = Arms(opened.arms, read_arm, Cells(opened.cells, opened.arms, read_arm))
-        pool = Watched()
+        pool = Watched(1)
         surveys = Surveys(opened.surveys, arms, pool, "0")
         try:
             taken = [_per_chunk(surveys, asked, pool) for _ in range(REPEATS)]

@@ -29,9 +29,8 @@ from kinematics.travel.moves import (
     Course,
     Leg,
     Place,
-    approached,
-    back_along,
 )
+from kinematics.travel.to_targets import approached, back_along
 from service import demo
 from service.wire.arms import read_arm
 from service.wire.cells import CellAt, read_cell

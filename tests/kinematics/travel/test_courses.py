@@ -30,9 +30,8 @@ from kinematics.travel.moves import (
     Course,
     Leg,
     Place,
-    approached,
-    back_along,
 )
+from kinematics.travel.to_targets import approached, back_along
 from tests.kinematics.example_arms import PLANAR, SEVEN, arm_of, prismatic
 from tests.kinematics.inverse.seeds import fresh
 from tests.kinematics.reach.arm_classes import postures_within_travel

@@ -5,7 +5,8 @@ import pytest
 
 from kinematics.errors import KinematicsError
 from kinematics.reach.targets import SPIN, Target
-from kinematics.travel.moves import Approach, approached, back_along, in_base
+from kinematics.travel.moves import Approach
+from kinematics.travel.to_targets import approached, back_along, in_base
 from tests.kinematics.example_arms import random_pose
 from tests.kinematics.inverse.seeds import fresh
 

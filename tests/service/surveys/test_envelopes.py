@@ -16,9 +16,8 @@ from service.errors import ServiceError
 from service.operations.arms import Arms
 from service.operations.envelopes import AT_ONCE, EnvelopeQuestion, envelope_question
 from service.storage.opening import OpenStorage
-from service.storage.ports import GivenPiece, MadePiece, Survey, SurveyStorage
+from service.storage.ports import GivenPiece, Survey, SurveyStorage
 from service.surveys import envelopes
-from service.surveys.envelope_kept import envelope_document
 from service.wire.answers import json_bytes
 from service.wire.arms import ReadArm
 from service.wire.envelopes import EnvelopeRequest
@@ -140,22 +139,25 @@ def test_what_does_not_fit_is_refused_as_at_once(arms: Arms[ReadArm], resolution
 
 
 def kept_in_two(store: SurveyStorage, arms: Arms[ReadArm]) -> Survey:
-    """Return a survey as it was kept when each travel was a piece of its own."""
+    """Return a survey taken in when each travel was a piece of its own, made now."""
     accepted = envelopes.Envelopes().accept(arms, EXACT)
     about = orjson.loads(json_bytes({**accepted.about, "software": "1"}))
     survey = Survey("0" * 19 + "9", "envelope", "", accepted.request, about, 2, AT)
-    asked = question(arms, EXACT)
-    pieces = [GivenPiece(n, 1, within.encode()) for n, within in enumerate(asked.within)]
+    within = question(arms, EXACT).within
+    pieces = [GivenPiece(n, 1, one.encode()) for n, one in enumerate(within)]
     store.add(survey, pieces, key=None, digest="")
     store.begin(survey.id, AT)
-    for piece, within in zip(pieces, asked.within, strict=True):
-        found = asked.found(within)
-        kept = {"answer": asked.answer({within: found}), "found": envelope_document(found)}
-        store.keep(survey.id, [MadePiece(piece.number, json_bytes(kept), {})])
+    kind = envelopes.Envelopes()
+    prepared = kind.prepare(kind.setup(arms, survey))
+    store.keep(survey.id, [kind.make(prepared, pieces[0])])
+    # The last piece is taken for the whole.
+    store.keep(survey.id, [kind.gather(prepared, pieces[1], [store.made(survey.id, 0)])])
     return survey
 
 
-def test_what_was_kept_before_is_told_as_ever(opened: OpenStorage, arms: Arms[ReadArm]) -> None:
+def test_what_was_taken_in_before_is_made_and_told_as_ever(
+    opened: OpenStorage, arms: Arms[ReadArm]
+) -> None:
     store = opened.surveys
     now, before = made(store, arms, envelopes.Envelopes(), EXACT), kept_in_two(store, arms)
     assert of_no_survey(told(store, before, "json")) == of_no_survey(told(store, now, "json"))

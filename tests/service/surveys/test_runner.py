@@ -18,6 +18,7 @@ from service.settings import Settings
 from service.storage.opening import OpenStorage, open_storage
 from service.storage.ports import GivenPiece, MadePiece, Survey
 from service.surveys import registry, runner, worker
+from service.surveys.chunks import Chunks
 from service.surveys.runner import MOST_DEATHS, Runner
 
 AT = datetime(2026, 3, 4, 5, 6, 7, tzinfo=UTC)
@@ -199,7 +200,7 @@ def test_a_worker_that_dies_at_the_last_piece_costs_that_alone(bench: Bench) -> 
 
 def test_at_the_end_chunks_share_what_is_left(bench: Bench) -> None:
     bench.add()
-    chunks = runner._Chunks(bench.store, "a1", gathers=False)
+    chunks = Chunks(bench.store, "a1", gathers=False)
     for _ in range(6):
         chunks.took(1e-3, 64)
     given = iter(lambda: len(chunks.next(4, none_in_hand=False)), 0)

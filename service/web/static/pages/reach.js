@@ -30,7 +30,7 @@ const place = (id) => document.getElementById(id);
 const page = {
   name: decodeURIComponent(location.pathname.split("/")[2]), turn: turns(),
   arm: null, question: null, read: { places: [], faults: [], how: {} }, rows: [], at: -1,
-  control: null, timer: 0, single: null, method: "",
+  control: null, timer: 0, single: null, method: "", sent: null, asking: null,
 };
 const sent = `armspan-reach-sent-${page.name}`;
 
@@ -63,7 +63,7 @@ function fit() {
   page.picture = pictureDesk(looked, page.arm, page.turn);
   page.table = placesTable(place("table"), chosenPlace);
   page.target = targetDesk(place("target"), draw);
-  page.survey = surveyDesk(place("survey"), { changed: (id) => choose({ survey: id }), found: surveyFound });
+  page.survey = surveyDesk(place("survey"), { changed: surveyChanged, found: surveyFound });
   const parts = { field: place("list"), zone: place("asked"), kept: `armspan-reach-${page.name}` };
   page.input = listInput(parts, asked, (text) => fill(place("reading"), refused(text)));
   keys();
@@ -115,10 +115,17 @@ function asked(isTyped) {
   if (count && count <= AT_ONCE) page.timer = setTimeout(check, isTyped ? PAUSE_MS : 0);
 }
 
-/** Note that a survey was made of the list as it stands, also for who loads the page again. */
+/** Note which survey was made of the list as it stands, also for who loads the page again. */
 function markSent(id) {
-  page.isSent = id !== null;
+  page.sent = id;
   keep(sent, id ?? "");
+}
+
+/** Another survey is looked at, or none: it is of the list if that is as it was when it was sent. */
+function surveyChanged(id) {
+  choose({ survey: id });
+  if (page.rows === page.asking) markSent(id);
+  page.asking = null;
 }
 
 function faultWords(fault) {
@@ -262,22 +269,15 @@ async function results() {
 async function report() {
   const body = checkBody(page.arm, page.question(), targets(), "best");
   delete body.solutions;
-  const rows = page.rows;
+  page.asking = page.rows;
   const title = say(words.survey.title, { arm: page.name, count: counted(page.read.places.length) });
-  page.isSent = true;
   const answer = await page.survey.begin(body, title);
-  if (!answer.ok) {
-    page.isSent = false;
-    trouble(refusal(answer.problem));
-  } else if (rows === page.rows) markSent(answer.data.id);
+  if (!answer.ok) trouble(refusal(answer.problem));
 }
 
 /** The result of a survey: beside the list it came from while that stands unchanged, or alone. */
-function surveyFound({ request, arm, units }, found) {
-  // Nothing was fetched of a very long one.
-  const fits = [0, page.read.places.length].includes(found.length);
-  const isOfThis = fits && arm.revision === page.arm.revision;
-  if (page.isSent && isOfThis) answered({ results: found });
+function surveyFound({ id, request, arm, units }, found) {
+  if (id === page.sent && arm.revision === page.arm.revision) answered({ results: found });
   else if (page.rows.length) return false;
   else {
     const { tool, frame = "base" } = request;

@@ -49,7 +49,8 @@ async function show(desk, scene) {
   paint(desk);
 }
 
-const keyOf = (question) => question && [question.tool, question.units, question.frame].join(" ");
+const keyOf = (question) =>
+  question && [question.tool, question.units, question.frame, question.revision].join(" ");
 
 function paint(desk) {
   const { scene } = desk, envelope = desk.envelope(scene.question);
@@ -81,8 +82,10 @@ const nameOf = (row, at) => row.name ?? row.place?.name ?? String(at + 1);
 /** The title block, what a screen reader is told of the drawing, and what its lines mean. */
 function said(desk, envelope) {
   const words = WORDS.reach, { row, rows, at, question } = desk.scene, { name, revision, digest } = desk.arm;
+  // Of another revision, whose survey is looked at alone, the page knows no digest.
+  const isOfPage = (question.revision ?? revision) === revision;
   const lines = {
-    arm: name, revision: `${revision} (${digest})`, tool: question.tool || WORDS.shell.none,
+    arm: name, revision: isOfPage ? `${revision} (${digest})` : question.revision, tool: question.tool || WORDS.shell.none,
     frame: question.frame, units: question.units, scale: desk.canvas.dataset.scale ?? "" };
   fill(desk.block, Object.entries(lines).map(([key, value]) =>
     el("div", {}, el("dt", {}, words.block_lines[key]), el("dd", {}, value))));

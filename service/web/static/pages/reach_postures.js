@@ -1,5 +1,5 @@
 // What the drawing needs of the interface, each asked once: outlines, frames, envelopes.
-// Idea: everything in the arm's base, of the one revision that the page is about; an envelope takes
+// Idea: everything in the arm's base, of the one revision that is looked at; an envelope takes
 // the service seconds, so it is asked last. Left out: drawing it, and whose turn it is (reach_turns.js).
 
 import { withQuery } from "./address.js";
@@ -65,7 +65,7 @@ export function envelopes(arm, turn, changed) {
     changed();
   });
   return (question) => {
-    const key = `${question.tool} ${question.units}`;
+    const key = [question.tool, question.units, question.revision].join(" ");
     if (!known.has(key)) known.set(key, { state: "waits", data: null, say: "" });
     const isNew = key !== now;
     now = key;
@@ -75,7 +75,7 @@ export function envelopes(arm, turn, changed) {
   };
 }
 
-function envelope({ name, revision }, { tool, units }, signal) {
-  const body = { arm: { name, revision }, units, ...(tool ? { tool } : {}) };
+function envelope({ name, revision }, { tool, units, revision: own = revision }, signal) {
+  const body = { arm: { name, revision: own }, units, ...(tool ? { tool } : {}) };
   return ask("/v1/reach/envelope", { method: "POST", body, signal });
 }

@@ -6,7 +6,7 @@ import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
 import { signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
-import { fixedFrames, framesIn, isUpright } from "./sheet_frames.js";
+import { fixedFrames, framesIn, framesNear, isUpright } from "./sheet_frames.js";
 import { readings, sentences, showState, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
 import { travelTable } from "./sheet_travel.js";
@@ -16,10 +16,9 @@ import { say, WORDS } from "./words.js";
 const RATE = 10; // a second: what an eye follows
 const PATH_S = 30; // of the path before the page listened
 const MOST_PATH = 600; // places: a minute at that rate
-const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
 const SETTLED_MS = 250;
+const AGAIN_MS = 3000;
 const NEVER_MS = 400; // The stream begins with how the arm stands, if anything ever came of it.
-const AXES = ["x", "y", "z"];
 const place = (id) => document.getElementById(id);
 const arm = decodeURIComponent(location.pathname.split("/")[2]);
 const path = `/v1/arms/${encodeURIComponent(arm)}`;
@@ -27,7 +26,7 @@ const path = `/v1/arms/${encodeURIComponent(arm)}`;
 const state = {
   said: chosen({ tool: "", frame: "", form: "xyz-fixed", units: "", q: "" }),
   stored: null, answer: null, heardAt: 0, isLive: true, frames: [], trail: [],
-  stop: () => {}, asking: null, settle: 0, text: 0,
+  stop: () => {}, asking: null, settle: 0, text: 0, turn: 0,
 };
 const shown = { arms: [arm] };
 
@@ -43,9 +42,18 @@ async function start() {
   shown.texts = texts(place("text-blocks"));
   onTheme(() => shown.views.retint());
   state.isLive = !state.said.q;
+  await load();
+}
+
+async function load() {
   const asked = [ask(path), isUpright(arm)];
   const stored = await asked[0];
+  if (stored.problem?.code === "no-answer") {
+    gone();
+    return setTimeout(load, AGAIN_MS);
+  }
   if (!stored.ok) return refused(stored.problem);
+  back();
   state.stored = stored.data;
   await fillChoices(asked[1]);
   fitModes();
@@ -99,10 +107,12 @@ const question = () => {
 /** Ask everything again, in the words that are chosen now. */
 async function anew() {
   state.stop();
-  state.trail = [];
+  const turn = (state.turn += 1); // What was asked in words chosen before is not drawn any more.
+  Object.assign(state, { trail: [], frames: [] });
   shown.views.forget();
   const asked = question(), others = shown.drawn.filter((name) => name !== asked.frame);
   framesIn(shown.arms, others, asked.frame, asked.units).then((found) => {
+    if (turn !== state.turn) return;
     state.frames = found;
     draw();
   });
@@ -133,8 +143,9 @@ function heard(name, data) {
 
 /** Ask where the tool was before this page listened. */
 async function askPath() {
-  const asked = { ...question(), form: null, every_ms: 100, limit: 10 * PATH_S };
+  const asked = { ...question(), form: null, every_ms: 100, limit: 10 * PATH_S }, { turn } = state;
   const { ok, data } = await ask(withQuery(`${path}/live/history`, asked));
+  if (turn !== state.turn) return;
   if (ok) state.trail = [...data.positions, ...state.trail];
   draw();
 }
@@ -206,13 +217,9 @@ function draw() {
   const { answer, said } = state;
   if (!answer) return;
   const { outline, singularity } = answer.poses[0];
-  const size = Math.max(...AXES.map((_, i) =>
-    Math.max(...outline.line.map((p) => p[i])) - Math.min(...outline.line.map((p) => p[i]))));
-  const isNear = ({ matrix }) => outline.line.some((point) =>
-    Math.hypot(...AXES.map((_, i) => point[i] - matrix[i][3])) < NEAR_SHARE * size);
   shown.views.show({
     arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "",
-    frameName: answer.frame, frames: state.frames.filter((frame) => frame.name !== "base" && isNear(frame)),
+    frameName: answer.frame, frames: framesNear(outline.line, state.frames),
     path: state.trail, balloons: true, rising: risingOf(outline),
     struck: quality() === "bad" ? wordOf(quality()) : "",
     kind: quality() === "good" || quality() === "typed" ? "thick" : "heavyDashed",

@@ -1,8 +1,9 @@
-// The frames that are drawn round an arm: which of them stand still, and where, as the interface tells.
-// Left out: which of them are near enough to be drawn (sheet.js).
+// The frames that are drawn round an arm: which of them stand still, where, as the interface tells, and
+// which are near enough to be drawn. Left out: drawing them.
 import { ask } from "./ask.js";
 
 const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
+const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
 
 /**
  * Return which frames of a cell hang on the world or a base, and on the bases of which other arms; one on
@@ -42,4 +43,16 @@ export async function framesIn(arms, names, within, units) {
 export async function isUpright(arm) {
   const found = await framesIn([arm], ["base"], "world");
   return !found.length || found[0].matrix[2][2] > UPRIGHT;
+}
+
+/**
+ * Return the frames beside the base that are near an arm.
+ * @param {number[][]} line places along the arm @param {{name: string, matrix: number[][]}[]} frames
+ */
+export function framesNear(line, frames) {
+  const along = line[0].map((_, i) => line.map((point) => point[i]));
+  const far = NEAR_SHARE * Math.max(...along.map((values) => Math.max(...values) - Math.min(...values)));
+  const isNear = ({ matrix }) => line.some((point) =>
+    Math.hypot(...point.map((value, i) => value - matrix[i][3])) < far);
+  return frames.filter((frame) => frame.name !== "base" && isNear(frame));
 }
