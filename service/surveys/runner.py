@@ -10,6 +10,7 @@ Left out: what a piece is (kinds.py), which make a chunk (chunks.py), where it i
 """
 
 import logging
+import sys
 import threading
 from collections.abc import Callable, Sequence
 from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, Executor, Future, wait
@@ -121,6 +122,8 @@ class Runner:
         return pace.remaining_s(survey.total)
 
     def _work(self) -> None:
+        if sys.platform == "linux":  # elsewhere it would be the whole service that gives way
+            worker.give_way()
         idle_since = monotonic()
         while not self._stopping.is_set():
             self._wanted.clear()

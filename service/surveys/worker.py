@@ -20,7 +20,7 @@ from service.surveys.registry import SURVEY_KINDS
 
 NICENESS = 15
 """Whoever asks for a pose meanwhile has the processor some thirty times as much (Linux: weight 36
-to 1024)."""
+to 1024), and at once: among equals who wakes up may have to wait out the other's turn, some ms."""
 
 _prepared: tuple[str, Any] = ("", None)
 
@@ -28,14 +28,23 @@ _prepared: tuple[str, Any] = ("", None)
 def start() -> None:
     """Make the process fit for its work: it gives way, ends with its parent, ignores Ctrl-C."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
-    with suppress(AttributeError, OSError):  # there is no such call on Windows
-        os.nice(NICENESS)
+    give_way()
     with suppress(AttributeError, OSError):  # of Linux: gives way at once, not at the next turn
         os.sched_setscheduler(0, os.SCHED_IDLE, os.sched_param(0))
     # Collected between chunks instead: amid the many small lists that targets are read from,
     # looking for cycles takes ten times as long as reading them.
     gc.disable()
     threading.Thread(target=_end_with_parent, daemon=True).start()
+
+
+def give_way() -> None:
+    """Put this thread, and what it starts from now on, behind who waits for an answer.
+
+    Called in a process's first thread it counts for the whole process. Only on Linux a thread has a
+    priority of its own.
+    """
+    with suppress(AttributeError, OSError):  # there is no such call on Windows; or it is lower
+        os.setpriority(os.PRIO_PROCESS, 0, NICENESS)
 
 
 def identity() -> int:

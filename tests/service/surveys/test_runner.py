@@ -3,6 +3,8 @@
 Pieces are made in threads of the test here; processes and kills are met in tests/contract.
 """
 
+import os
+import sys
 import threading
 import time
 from collections.abc import Callable, Iterator, Sequence
@@ -139,6 +141,19 @@ def test_all_pieces_are_made_once_and_kept(bench: Bench) -> None:
     assert sorted(bench.kind.made) == list(range(20))
     assert found.started_at is not None
     assert found.finished_at is not None
+
+
+@pytest.mark.skipif(sys.platform != "linux", reason="elsewhere threads have no own priority")
+def test_what_keeps_surveys_gives_way_and_nobody_else(bench: Bench) -> None:
+    before = os.getpriority(os.PRIO_PROCESS, 0)
+    seen: set[int] = set()
+    # The threads that make pieces here are started by the survey's, and are as it is.
+    bench.kind.meanwhile = lambda number: seen.add(os.getpriority(os.PRIO_PROCESS, 0))
+    bench.add()
+    bench.runner.wake()
+    bench.over()
+    assert seen == {max(before, worker.NICENESS)}
+    assert os.getpriority(os.PRIO_PROCESS, 0) == before
 
 
 def test_the_oldest_comes_first(bench: Bench) -> None:
