@@ -57,8 +57,12 @@ Finds = Callable[[str, Asked], Any]
 what is found."""
 
 
-def at_once(_name: str, asked: Asked) -> Any:
+def at_once(_name: str, asked: Asked, between: Callable[[], None] = lambda: None) -> Any:
     """Find all pieces here and now.
+
+    Parameters
+    ----------
+    between : called before each; what it raises gives the rest up.
 
     Examples
     --------
@@ -69,7 +73,11 @@ def at_once(_name: str, asked: Asked) -> Any:
     >>> at_once("sum", Sum())
     6
     """
-    return asked.told([asked.piece(number) for number in range(asked.pieces)])
+    pieces = []
+    for number in range(asked.pieces):
+        between()
+        pieces.append(asked.piece(number))
+    return asked.told(pieces)
 
 
 @dataclass(frozen=True)

@@ -6,8 +6,9 @@ Left out: the address (routes/reach_regions.py), what the numbers are (operation
 
 from collections.abc import Mapping
 from functools import partial
+from threading import Event
 
-from starlette.requests import Request
+from starlette.requests import ClientDisconnect, Request
 from starlette.responses import Response
 
 from kinematics.envelope.shapes import Envelope
@@ -56,16 +57,26 @@ async def _found(request: Request, asked: EnvelopeQuestion, within: Within) -> E
     """Return an envelope that was worked out lately, or work it out unless the client leaves."""
     bulk: Bulk = request.app.state.bulk
     words = asked.words(within)
+    over = Event()
+
+    def between() -> None:
+        bulk.estimates.refuse_if_stopping()
+        if over.is_set():
+            raise ClientDisconnect
 
     def once() -> Envelope:
         # Who asked the same a little earlier has had it worked out meanwhile.
-        return bulk.envelopes.get(words) or bulk.envelopes.keep(words, asked.found(within))
+        found = bulk.envelopes.get(words)
+        return found or bulk.envelopes.keep(words, asked.found(within, between))
 
     kept = bulk.envelopes.get(words)
     if kept is not None:
         return kept
-    # Apart from all that is done in pieces, which would wait behind it for seconds.
-    return await unless_left(request, bulk.estimates.run(once, most=_MOST_WAITING))
+    try:
+        # Apart from all that is done in pieces, which would wait behind it for seconds.
+        return await unless_left(request, bulk.estimates.run(once, most=_MOST_WAITING))
+    finally:
+        over.set()
 
 
 def drawn(asked: EnvelopeQuestion, found: Mapping[Within, Envelope]) -> bytes:

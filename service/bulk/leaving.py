@@ -1,7 +1,8 @@
 """Work that is given up when who asked for it has left: nobody would read the answer.
 
 Idea: the server says by ``receive`` that a client is gone; whichever comes first, that or the
-answer, ends the other. Work that waits for a thread is taken back, work in hand is finished.
+answer, ends the other. Work that waits for a thread is taken back; work in hand has to look itself
+whether it is over.
 Left out: answers that are sent while they are made, which fail by themselves.
 """
 

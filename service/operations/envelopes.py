@@ -5,12 +5,13 @@ Left out: who works on it (bulk), and how it is drawn (drawings).
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, partial
 from typing import TypeVar
 
 from kinematics.arm import BASE
 from kinematics.envelope.envelope import envelope_of
 from kinematics.envelope.in_parts import EnvelopeInParts
+from kinematics.envelope.inquiry import at_once
 from kinematics.envelope.measures import Measure
 from kinematics.envelope.sampled_views import UnfitResolution
 from kinematics.envelope.shapes import COORDINATES, WRIST, Envelope, Extreme, Turn, View
@@ -75,15 +76,19 @@ class EnvelopeQuestion:
         fineness = (self.resolution, self.most_cells)
         return repr((*said, *fineness, question.tool.tool_in_flange.tobytes())).encode()
 
-    def found(self, within: Within) -> Envelope:
+    def found(self, within: Within, between: Callable[[], None] = lambda: None) -> Envelope:
         """Work out one envelope.
+
+        Parameters
+        ----------
+        between : called now and then; what it raises gives the work up.
 
         Raises
         ------
         KinematicsError, UnusableValue : the arm, its point or the resolution cannot be used.
         TooLarge : the resolution is for a survey, or for nobody.
         """
-        return self._by(envelope_of, within)
+        return self._by(partial(envelope_of, finds=partial(at_once, between=between)), within)
 
     def in_parts(self, within: Within) -> EnvelopeInParts:
         """Return one envelope to be found in parts; what ``found`` refuses is refused here."""

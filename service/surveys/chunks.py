@@ -10,7 +10,7 @@ from itertools import islice
 from service.storage.ports import GivenPiece, SurveyStorage
 
 CHUNK_S = 0.3
-"""Of work in a chunk. Shorter, and its way to the process and into the store, some four milliseconds,
+"""Of work in a chunk. Shorter, and its way to the process and into the store, some four ms,
 begins to count; longer, and a cancel ends the processes, which take seconds to start anew."""
 
 MOST_IN_CHUNK = 64

@@ -1,13 +1,17 @@
 """Envelopes over HTTP: as numbers and as a drawing, and what is refused."""
 
 import asyncio
+import json
 import xml.etree.ElementTree as ET
 from typing import Any
 
 import httpx
 import numpy as np
 import pytest
+from fastapi import FastAPI
+from starlette.requests import ClientDisconnect, Request
 
+from service.bulk.envelopes import answer_envelope
 from service.operations import envelopes
 from service.settings import Settings
 from tests.contract.refusals import AT_ORIGIN, ROW, only_entry, sent
@@ -267,3 +271,37 @@ async def test_the_same_is_worked_out_once(
     longer = await told(client, {"arm": PLANAR, "tool": {"matrix": flange.tolist()}})
     assert longer["travel"]["volume"] != first["travel"]["volume"]
     assert len(worked_out) == 2
+
+
+async def test_who_leaves_lets_the_next_one_in(
+    app: FastAPI, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    loop, left = asyncio.get_running_loop(), asyncio.Event()
+    made: list[int] = []
+
+    class Endless:
+        pieces = 10**9
+
+        def piece(self, number: int) -> None:
+            made.append(number)
+            loop.call_soon_threadsafe(left.set)
+
+    def endless(*_: Any, finds: Any, **__: Any) -> Any:
+        return finds("volume", Endless())
+
+    body = iter([{"type": "http.request", "body": json.dumps(GOOD).encode()}])
+
+    async def receive() -> dict[str, Any]:
+        for part in body:
+            return part
+        await left.wait()
+        return {"type": "http.disconnect"}
+
+    monkeypatch.setattr(envelopes, "envelope_of", endless)
+    kind = (b"content-type", b"application/json")
+    scope = {"type": "http", "app": app, "headers": [kind], "query_string": b"", "path": ENVELOPE}
+    with pytest.raises(ClientDisconnect):
+        await answer_envelope(Request(scope, receive))
+    # There is one thread for all envelopes.
+    await asyncio.wait_for(app.state.bulk.estimates.run(lambda: None), 20)
+    assert made
