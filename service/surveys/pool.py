@@ -7,6 +7,7 @@ been nothing to do for a while. Left out: what they are given (runner.py).
 import os
 from collections.abc import Callable
 from concurrent.futures import Executor, ProcessPoolExecutor
+from contextlib import suppress
 from typing import Any, Protocol
 
 from service.errors import NotAvailable
@@ -17,6 +18,10 @@ ANSWERS_WITHIN_S = 3
 
 _AHEAD = 2
 """Chunks in hand for each process, so that none waits for the store."""
+
+
+_PIPE_BYTES = 2**20
+"""What Linux lets anybody have; a chunk gives some two megabytes."""
 
 
 class Pool(Protocol):
@@ -57,6 +62,7 @@ class OwnProcesses:
         """See ``Pool.executor``."""
         if self._pool is None:
             self._pool = ProcessPoolExecutor(self._count, self._own, initializer=worker.start)
+            _widen(self._pool)
             # One process is made for each task that finds none idle.
             for _ in range(self._count):
                 self._pool.submit(worker.identity)
@@ -73,6 +79,19 @@ class OwnProcesses:
         if self._pool is not None:
             self._own.end(self._pool)
         self._pool = None
+
+
+def _widen(pool: Any) -> None:
+    """Let what a chunk gives pass from process to process in some steps instead of dozens.
+
+    In each step one of the two waits to be woken. Linux alone can, and an executor has no public
+    way to its pipes: where they are not found they stay as they are.
+    """
+    with suppress(ImportError, AttributeError, OSError):
+        from fcntl import F_SETPIPE_SZ, fcntl
+
+        for queue in (pool._call_queue, pool._result_queue):
+            fcntl(queue._reader.fileno(), F_SETPIPE_SZ, _PIPE_BYTES)
 
 
 class Cluster:

@@ -4,6 +4,7 @@ Numbers are those the interface gives. Left out: looks (test_every_page.py), liv
 """
 
 import httpx
+import numpy as np
 import pytest
 
 from tests.browser.chromium import Look, Screen
@@ -72,6 +73,24 @@ def test_what_is_chosen_stands_in_the_address(sheet: Screen, demo: ServerProcess
     shown = f"{expected[0]:.1f}".replace("-", "\u2212")
     sheet.until(f"document.getElementById('readings').innerText.includes('{shown}')")
     assert readings(sheet) == pytest.approx(expected, abs=0.0501)
+
+
+def test_typed_joint_values_stay_where_they_are_in_other_units(
+    sheet: Screen, demo: ServerProcess
+) -> None:
+    choose = (
+        "const one = document.getElementById('units'); one.value = arguments[0];"
+        "one.dispatchEvent(new Event('change', { bubbles: true }))"
+    )
+    sheet.run(choose, "m-rad")
+    expected = asked(demo, q=",".join(map(str, np.radians(JOINTS))), units="m-rad")
+    shown = f"{expected[0]:.4f}".replace("-", "\u2212")
+    sheet.until(f"document.getElementById('readings').innerText.includes('{shown}')")
+    assert readings(sheet) == pytest.approx(expected, abs=0.000051)
+    q = sheet.run("return new URLSearchParams(location.search).get('q')")
+    assert [float(one) for one in q.split(",")] == pytest.approx(np.radians(JOINTS), rel=1e-15)
+    sheet.run(choose, "mm-deg")
+    sheet.until(f"new URLSearchParams(location.search).get('q') === '{','.join(map(str, JOINTS))}'")
 
 
 def test_the_texts_name_the_address_to_ask(sheet: Screen) -> None:

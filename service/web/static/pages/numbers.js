@@ -1,5 +1,5 @@
 // Numbers as people read them: so many digits per unit, a true minus sign, never a minus before zero.
-// Left out: changing units, which the service does.
+// Left out: changing the units of what is answered, which the service does.
 import { WORDS } from "./words.js";
 
 const MINUS = "\u2212";
@@ -32,6 +32,25 @@ export const UNITS = ["mm-deg", "m-rad", "in-deg"];
 export function unitsOf(units) {
   const [length, angle] = units.split("-");
   return { length, angle };
+}
+
+const ANGLES = { deg: Math.PI / 180, rad: 1 }, LENGTHS = { mm: 1e-3, m: 1, in: 0.0254 };
+
+/**
+ * Return joint values that a person typed in the units chosen now; what was short is short again.
+ * @param {string} q @param {{joint: number|null, unit: string}[]} travel which of them are angles
+ * @param {string} from @param {string} to units, as "mm-deg"
+ * @returns {string}
+ */
+export function jointsIn(q, travel, from, to) {
+  if (from === to) return q;
+  const joints = travel.filter((one) => one.joint !== null), was = unitsOf(from), is = unitsOf(to);
+  return q.split(",").map((text, i) => {
+    const factor = joints[i]?.unit in ANGLES
+      ? ANGLES[was.angle] / ANGLES[is.angle] : LENGTHS[was.length] / LENGTHS[is.length];
+    const value = Number(text) * factor, short = Number(value.toPrecision(12));
+    return Math.abs(short - value) <= 1e-14 * Math.abs(value) ? short : value;
+  }).join();
 }
 
 /** Return a length in the decimals of its unit. @param {number|null} value @param {string} units */

@@ -4,7 +4,7 @@
 import { ask, follow } from "./ask.js";
 import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
-import { signs, typed, UNITS, unitsOf } from "./numbers.js";
+import { jointsIn, signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
 import { fixedFrames, framesIn, framesNear, isUpright } from "./sheet_frames.js";
 import { readings, sentences, showState, texts } from "./sheet_numbers.js";
@@ -92,9 +92,10 @@ function fillSelect(name, options) {
   fill(select, [...new Set([...options, now])].map((one) =>
     el("option", { value: one, selected: one === now }, one)));
   select.addEventListener("change", () => {
-    state.said[name] = select.value;
-    choose({ [name]: select.value });
-    if (name === "units" && !state.isLive) state.said.q = "";
+    const { said, answer, isLive, waits } = state, was = said.units;
+    said[name] = select.value;
+    if (!isLive && answer) said.q = jointsIn(said.q, answer.poses[0].outline.travel, was, said.units);
+    choose({ [name]: select.value, q: isLive || waits ? null : said.q });
     anew();
   });
 }
@@ -174,7 +175,6 @@ async function askByHand() {
   state.asking?.abort();
   state.asking = new AbortController();
   const asked = { q: state.said.q, ...question(), outline: 1 };
-  if (!state.said.q && state.answer?.joints) asked.q = state.answer.joints.join();
   const { ok, data, problem } = await ask(withQuery(`${path}/pose`, asked), { signal: state.asking.signal });
   if (ok) take(data);
   else if (problem.code === "no-answer") gone();
