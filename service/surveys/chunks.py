@@ -9,9 +9,10 @@ from itertools import islice
 
 from service.storage.ports import GivenPiece, SurveyStorage
 
-CHUNK_S = 0.3
-"""Of work in a chunk. Shorter, and its way to the process and into the store, some four ms,
-begins to count; longer, and a cancel ends the processes, which take seconds to start anew."""
+CHUNK_S = 2.0
+"""Of work in a chunk. Shorter, and its way to the process and into the store, which low priority
+cannot keep from those who ask for a pose, is taken more often than they notice; longer, and a
+worker that dies loses more and progress stands still for long."""
 
 MOST_IN_CHUNK = 64
 """Pieces; a chunk is one write to the store, and what a worker that dies has to do again."""

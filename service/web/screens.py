@@ -13,7 +13,7 @@ from urllib.parse import quote
 from fastapi import APIRouter
 from starlette.concurrency import run_in_threadpool
 from starlette.requests import Request
-from starlette.responses import Response
+from starlette.responses import RedirectResponse, Response
 
 from service.errors import UnknownArm, UnknownPath
 from service.web.page_answers import page_answer
@@ -67,6 +67,16 @@ async def sheet(request: Request) -> Response:
 async def reach_page(request: Request) -> Response:
     """Answer the reach page of an arm."""
     return await _of_arm(request, "reach")
+
+
+@router.api_route("/arms/{arm}/", methods=_READ)
+@router.api_route("/arms/{arm}/reach/", methods=_READ)
+async def with_stroke(request: Request) -> Response:
+    """Answer where the page of an arm is whose address was typed with a stroke at its end."""
+    name = quote(request.path_params["arm"], safe="")
+    page = "/reach" if request.url.path.endswith("/reach/") else ""
+    query = f"?{request.url.query}" if request.url.query else ""
+    return RedirectResponse(f"/arms/{name}{page}{query}", status_code=308)
 
 
 @router.api_route("/pages/{name}", methods=_READ)

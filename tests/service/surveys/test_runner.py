@@ -104,7 +104,8 @@ class Bench:
         return self.runner.seen(found)
 
     def over(self, name: str = "a1") -> Survey:
-        deadline = time.monotonic() + 20
+        # The thread gives way to all else, also to the tests that run beside this one.
+        deadline = time.monotonic() + 90
         while self.get(name).state in ("queued", "running"):
             assert time.monotonic() < deadline, self.get(name)
             time.sleep(0.01)

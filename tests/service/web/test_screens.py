@@ -34,6 +34,18 @@ async def test_pages(stored: httpx.AsyncClient, path: str) -> None:
     assert "<html data-bare " in (await stored.get(f"{path}?bare")).text
 
 
+@pytest.mark.parametrize("page", ["/arms/press-arm", "/arms/press-arm/reach"])
+async def test_a_stroke_at_the_end_leads_to_the_page(stored: httpx.AsyncClient, page: str) -> None:
+    answer = await stored.get(f"{page}/?frame=a%26b&bare")
+    assert answer.status_code == 308
+    assert answer.headers["location"] == f"{page}?frame=a%26b&bare"
+
+
+async def test_a_stroke_leads_to_no_other_host(client: httpx.AsyncClient) -> None:
+    answer = await client.get("/arms/%5C%0D%0Aelse.example/")
+    assert answer.headers["location"] == "/arms/%5C%0D%0Aelse.example"
+
+
 @pytest.mark.parametrize("page", ["", "/reach"])
 @pytest.mark.parametrize(
     ("name", "like"), [("pres-arm", "press-arm"), ("PRESS-ARM", None), ("zzz", None)]
