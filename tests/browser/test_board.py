@@ -11,6 +11,7 @@ import pytest
 from tests.browser.chromium import Look, Screen
 from tests.browser.hall import HALL, UPRIGHT, feed
 from tests.browser.test_every_page import READY
+from tests.browser.test_reach_page import of
 from tests.conftest import ServerProcess
 
 CARD = "document.querySelector('[data-arm=\"{}\"]')"
@@ -217,6 +218,16 @@ def test_what_changes_is_written_and_what_does_not_is_left(
         feed(client, "regular", UPRIGHT)
     # Ages go on by themselves; a card whose numbers stand says nothing else anew.
     assert "never" not in written
+
+
+def test_values_that_were_all_refused_are_not_told_as_none(board: Screen) -> None:
+    body = """
+      const problem = { code: "no-live-pose", say: "joint values have stopped" };
+      return all.saidOf({ ok: false, reason: "stale", problem }, 0, "");
+    """
+    said = of("board_words.js", body, board)
+    assert (said["state"], said["word"]) == ("bad", "NO POSE")
+    assert said["sentence"] == "Values came; none could be relied on."
 
 
 def _url(screen: Screen) -> str:

@@ -322,6 +322,38 @@ def test_a_survey_with_its_report(page: Screen, demo: ServerProcess, judged: lis
     names = page.run(f"return [...{ROWS}].map((row) => row.querySelector('.choice').innerText)")
     assert names == list(PLACES)
     page.until("document.querySelector('#target table.joints')")
+    assert "Method:" not in page.text(), "a survey kept none"
+
+
+def test_what_a_survey_keeps_says_why_a_yes_has_a_but(page: Screen) -> None:
+    body = """
+      const kept = (code, state) => ({ verdict: "reachable", code, solutions: [{ state }] });
+      return [kept(1, "near"), kept(2, "singular"), kept(3, "regular"), kept(3, "near"),
+        kept(0, "regular")].map((result) => all.said({ result }));
+    """
+    work = "Outside working travel"
+    assert of("reach_list.js", body, page) == [
+        "Near singular", "Singular", work, f"Near singular; {work}", ""]  # fmt: skip
+
+
+def test_the_scale_on_paper_is_that_of_the_drawing(page: Screen) -> None:
+    paste(page, "bench,900,300,700,180,0,90")
+    page.until(ANSWERED)
+    scales = """
+      const drawing = document.getElementById("drawing");
+      return [drawing.clientWidth, drawing.dataset.scale,
+        [...document.querySelectorAll("#block dd")].at(-1).innerText];
+    """
+    width, told, block = page.run(scales)
+    assert told == block
+    page.run("dispatchEvent(new Event('beforeprint'))")
+    page.tell("Emulation.setEmulatedMedia", media="print")
+    on_paper, printed, block = page.run(scales)
+    assert on_paper == pytest.approx(180 / 25.4 * 96, abs=1), "180 mm, and nothing shrinks it"
+    assert printed == block
+    page.tell("Emulation.setEmulatedMedia", media="")
+    page.run("dispatchEvent(new Event('afterprint'))")
+    assert page.run(scales) == [width, told, told]
 
 
 def test_the_list_asks_for_nothing_else_than_the_interface(page: Screen) -> None:

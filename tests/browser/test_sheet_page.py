@@ -134,3 +134,33 @@ def test_what_changed_between_two_revisions(screen: Screen, demo: ServerProcess)
         ["tools long orientation form", "not there", "xyz-fixed"],
         ["tools long orientation values", "not there", "0, 0, 0"],
     ]
+
+
+def test_a_revision_stored_meanwhile_is_shown_whole(screen: Screen, demo: ServerProcess) -> None:
+    name = "measured-anew"
+    stored = httpx.post(f"{demo.url}/v1/arms", json={**PATTERN, "name": name})
+    assert stored.status_code == 201
+    q = ",".join(map(str, JOINTS))
+    screen.open(f"{demo.url}/arms/{name}?q={q}", Look(1280, 800), ready=READY)
+    table = "document.getElementById('table').textContent"
+    assert "123.456" not in screen.run(f"return {table}")
+    first, *others = PATTERN["rows"]
+    tools = {"probe-tip": {**next(iter(PATTERN["tools"].values())), "number": 77}}
+    document = {**PATTERN, "name": name, "rows": [{**first, "a": 123.456}, *others]}
+    document["tools"] = {**PATTERN["tools"], **tools}
+    headers = {"If-Match": stored.headers["etag"]}
+    assert httpx.put(f"{demo.url}/v1/arms/{name}", json=document, headers=headers).is_success
+    screen.run("document.querySelectorAll('#travel button')[1].click()")
+    screen.until(f"{table}.includes('123.456') && {table}.includes('probe-tip')")
+    screen.until("document.querySelectorAll('#revisions tbody th').length >= 2")
+    assert screen.run("return document.querySelector('#tool option[value=probe-tip]') !== null")
+    assert screen.run("return document.getElementById('revision').innerText") == "2"
+    # What was chosen asks once, not once for each time the choices were filled.
+    screen.requests()
+    screen.run(
+        "const tool = document.getElementById('tool'); tool.value = 'probe-tip';"
+        "tool.dispatchEvent(new Event('change'))"
+    )
+    screen.until("location.search.includes('tool=probe-tip')")
+    asked = [one for one in screen.requests() if "/live/stream" in one]
+    assert len(asked) <= 1, asked

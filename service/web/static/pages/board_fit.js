@@ -20,7 +20,7 @@ const AS_WIDE = [[1088, 4], [608, 2]];
  * Return how cards are laid out.
  * @param {number} count of places @param {number} width @param {number} height there is, pixels
  * @param {number} [asked] columns, 0: as they fit
- * @returns {{columns: number, figure: number, words: number, high: number}} figure, words: sizes of letters
+ * @returns {object} columns; figure, words: sizes of letters; high
  */
 export function cardsFitted(count, width, height, asked = 0) {
   const ways = asked ? [asked] : Array.from({ length: Math.max(count, 2) }, (_, i) => i + 1);

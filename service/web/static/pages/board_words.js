@@ -10,9 +10,8 @@ const LONGEST_PERIOD_MS = 10000;
 const MOVES_FROM = { mm: 1, m: 0.001, in: 0.04 };
 
 /**
- * @typedef {{state: "good"|"uncertain"|"stale"|"bad"|"none", word: string,
- *            axes: string[], near: string, mark: string, sentence: string, simulated: boolean,
- *            tool: string, frame: string, unit: string, ageMs: number|null}} Said
+ * @typedef {object} Said state (good, uncertain, stale, bad, none), word, axes, near, mark, sentence,
+ *   simulated, tool, frame, unit, ageMs
  */
 
 /**
@@ -61,8 +60,8 @@ const whyBad = (told) => (told.reason === "stale" ? WORDS.board.silent : begun(t
 const begun = (text) => signs(text.charAt(0).toUpperCase() + text.slice(1));
 
 function refused(told, gone) {
-  if (told.reason === "stale" && told.problem?.code === "no-live-pose") return nothing();
-  const sentence = gone || begun(told.problem?.say || told.say || "");
+  const isSilent = told.reason === "stale" && told.problem?.code === "no-live-pose";
+  const sentence = gone || (isSilent ? WORDS.board.refused : begun(told.problem?.say || told.say || ""));
   return { state: "bad", word: WORDS.board.no_pose, sentence, mark: "✕" };
 }
 

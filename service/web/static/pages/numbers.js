@@ -24,6 +24,15 @@ export const signs = (text) => text.replace(/(^|[\s(,=])-(?=\d)/g, `$1${MINUS}`)
 /** The choices of units that all pages give. */
 export const UNITS = ["mm-deg", "m-rad", "in-deg"];
 
+const THREE = ["xyx", "xyz", "xzx", "xzy", "yxy", "yxz", "yzx", "yzy", "zxy", "zxz", "zyx", "zyz"];
+
+/** Orientation forms a table can carry, the usual one first. */
+export const FORMS = [
+  ...["xyz", ...THREE.filter((one) => one !== "xyz")].map((one) => `${one}-fixed`),
+  ...THREE.map((one) => `${one}-current`),
+  "rotation-vector", "quaternion-wxyz", "quaternion-xyzw",
+];
+
 /**
  * Return the unit of lengths and the unit of angles that "mm-deg" names.
  * @param {string} units

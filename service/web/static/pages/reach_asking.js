@@ -1,16 +1,7 @@
-// From a list that was read to what is asked of the interface; names of orientation forms.
+// From a list that was read to what is asked of the interface.
 // Idea: what a line says wins over what is said for all lines. Left out: asking, and answers.
 
 import { signs, unitsOf } from "./numbers.js";
-
-const THREE = ["xyx", "xyz", "xzx", "xzy", "yxy", "yxz", "yzx", "yzy", "zxy", "zxz", "zyx", "zyz"];
-
-/** Orientation forms a table can carry, the usual one first. */
-export const FORMS = [
-  ...["xyz", ...THREE.filter((one) => one !== "xyz")].map((one) => `${one}-fixed`),
-  ...THREE.map((one) => `${one}-current`),
-  "rotation-vector", "quaternion-wxyz", "quaternion-xyzw",
-];
 
 /** Numbers of an orientation form. @param {string} form */
 export const turnsOf = (form) => (form.startsWith("quaternion") ? 4 : 3);

@@ -21,6 +21,7 @@ const FAR_CHOSEN = 0.8;     // the chosen one if it is farther than this.
 const TITLE_PX = 13, BOLD = 1.12;
 const AXES = 64;            // Beside a title: which way the axes of the base point.
 const FINE = 4;             // Pixels of a drawing for print, to one of the screen.
+const SHEET = ["180mm", "105mm"]; // A4 and Letter have room for it: the scale holds on both.
 const PRINTED = {
   "--ink": "#000", "--paper": "#fff", "--quiet": "#333", "--faint": "#ccc", "--accent": "#000" };
 /** Drawn by where there is nothing yet, mm: a man's reach. */
@@ -57,8 +58,9 @@ export function reachDrawing(canvas) {
   };
 }
 
-/** The page's own colours for print hold only while it is laid out for that: too late for a canvas. */
+/** The page's rules for print hold only while it is laid out for that: too late for a canvas. */
 function forPrint(canvas, isPrinted) {
+  [canvas.style.width, canvas.style.height] = isPrinted ? SHEET : ["", ""];
   for (const [name, value] of Object.entries(PRINTED)) canvas.style.setProperty(name, isPrinted ? value : "");
   canvas.dataset.ratio = isPrinted ? FINE : "";
 }

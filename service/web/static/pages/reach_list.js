@@ -11,14 +11,10 @@ import { say, WORDS } from "./words.js";
 const PAGE = 100;
 const KINDS = [...Object.keys(SIGNS), "open"];
 /** Codes of the interface with which a place is reachable, but. */
-const CARE = new Set([1, 2, 3]);
+const OUTSIDE_WORK = 3, CARE = new Set([1, 2, OUTSIDE_WORK]);
 const STATES = new Set(["near-singular", "singular"]);
 
-/**
- * @typedef {{place: object|null, line: number, name?: string, fault?: string, result?: object,
- *   refused?: string}} Row
- * `place` as read, or the fault of its line in words; `result` as answered.
- */
+/** @typedef {object} Row place as read, line; fault of the line in words; result, refused as answered. */
 
 /**
  * What is told of a row: a verdict of the interface; "care" for one that is reachable, but near
@@ -133,6 +129,13 @@ function line(table, at) {
     cell("why", why));
 }
 
+/** How near to singular the best posture is; a survey keeps the state alone. */
+function stateOf(best) {
+  const state = best?.singularity?.state ?? best?.state;
+  if (!state || state === "regular") return "";
+  return best.singularity ? stateSaid(best.singularity) : WORDS.sheet[state];
+}
+
 /** The sentence of a row. @param {Row} row */
 export function said({ fault, refused, result }) {
   if (fault || refused) return fault ?? refused;
@@ -141,9 +144,9 @@ export function said({ fault, refused, result }) {
   const [best] = result.solutions ?? [];
   const all = [...(best?.findings ?? []), ...(result.findings ?? [])];
   const findings = all.filter((one) => !STATES.has(one.name));
-  const state = best?.singularity?.state;
-  const near = state && state !== "regular" ? [stateSaid(best.singularity)] : [];
-  return signs([...near, ...findings.map((finding) => finding.say)].join("; "));
+  const told = [stateOf(best), ...findings.map((finding) => finding.say)].filter(Boolean);
+  if (!best?.findings && result.code === OUTSIDE_WORK) told.push(WORDS.reach.list.outside_work);
+  return signs(told.join("; "));
 }
 
 /** How near to singular a posture is, in words. @param {{state: string, kinds: string[]}} singularity */

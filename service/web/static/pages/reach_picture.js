@@ -16,17 +16,16 @@ const MOST_DRAWN = 5000;    // More places would cover the paper, and each other
 const FLICKER_MS = 150;     // So long the picture before stays, so that stepping does not flicker.
 
 /**
- * Return what draws a scene, and whatever becomes known of it later.
+ * Return what draws a scene (row, rows, at, solution, question), and what becomes known of it later.
  * @param {{canvas: HTMLCanvasElement, legend: HTMLElement, block: HTMLElement}} places
- * @param {object} arm as GET /v1/arms/{arm} answers
- * @param {ReturnType<import("./reach_turns.js").turns>} turn
- * @typedef {{row: object|null, rows: object[], at: number, solution: object|null, question: object}} Scene
- * @returns {(scene: Scene) => void}
+ * @param {object} arm as GET /v1/arms/{arm} answers @param {object} turn of reach_turns.js
  */
 export function pictureDesk(places, arm, turn) {
   const desk = {
     ...places, arm, turn, draw: reachDrawing(places.canvas), asked: postures(arm), scene: null, parts: {} };
   desk.envelope = envelopes(arm, turn, () => paint(desk));
+  // On paper the scale is another.
+  for (const event of ["beforeprint", "afterprint"]) addEventListener(event, () => desk.scene && paint(desk));
   return (scene) => show(desk, scene);
 }
 

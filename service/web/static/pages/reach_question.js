@@ -4,8 +4,8 @@
 
 import { choose, chosen } from "./address.js";
 import { el, fill } from "./elements.js";
-import { typed, UNITS } from "./numbers.js";
-import { ALONG, FORMS } from "./reach_asking.js";
+import { FORMS, typed, UNITS } from "./numbers.js";
+import { ALONG } from "./reach_asking.js";
 import { say, WORDS } from "./words.js";
 
 const DEFAULTS = {

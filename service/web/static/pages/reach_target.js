@@ -27,12 +27,7 @@ export function targetDesk(place, stepped) {
   };
 }
 
-/**
- * @typedef {{arm: object, row: object, question: object, method: string, waits: boolean,
- *   trouble: string}} Shown
- *   waits: more solutions may come; trouble: why none came
- */
-
+/** Shown: arm, row, question, method; waits: more solutions may come; trouble: why none came. */
 function draw(desk) {
   const { shown } = desk;
   if (!shown) return fill(desk.place);
@@ -43,8 +38,9 @@ function draw(desk) {
     el("p", { class: "verdict", dataset: { kind } }, el("b", {}, WORDS.reach.verdicts[kind] ?? kind),
       said(row) ? `: ${said(row)}` : ""),
     shown.trouble ? el("p", { class: "refused" }, say(words.trouble, { say: shown.trouble })) : null,
-    row.result?.proof ? el("p", { class: "quiet" }, say(words.rests, {
-      proof: words.proofs[row.result.proof] ?? row.result.proof, method: signs(shown.method) })) : null,
+    row.result?.proof ? el("p", { class: "quiet" },
+      say(words.rests, { proof: words.proofs[row.result.proof] ?? row.result.proof }),
+      shown.method ? say(words.method, { method: signs(shown.method) }) : "") : null,
     nearestOf(shown), ...familiesOf(shown),
     solutions.length ? stepping(desk, solutions) : null,
     el("div", { class: "solution" }),
@@ -60,7 +56,8 @@ function nearestOf({ row, question }) {
     near.position.map((one) => length(one, question.units)),
     near.orientation.values.flat().map((one) => angle(one, question.units))];
   const figures = el("span", { class: "figures" }, values.flat().join("  "));
-  return el("p", {}, WORDS.reach.target.nearest, " ", figures, ` (${near.orientation.form})`);
+  const { met, nearest } = WORDS.reach.target, isOpen = row.result.verdict === "not-found";
+  return el("p", {}, isOpen ? met : nearest, " ", figures, ` (${near.orientation.form})`);
 }
 
 function familiesOf({ row }) {

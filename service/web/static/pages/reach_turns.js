@@ -5,11 +5,8 @@
 const QUIET_MS = 400;
 
 /**
- * Return what keeps the turns of a page.
- * @returns {{first: <T>(question: () => Promise<T>) => Promise<T>, touch: () => void,
- *   last: (question: (signal: AbortSignal) => Promise<void>) => void, drop: () => void}}
- *   first: asked at once; touch: something is about to be asked; last: asked when all is quiet, in
- *   place of the one before; drop: it is not wanted any more
+ * Return what keeps the turns of a page. first: asked at once; touch: something is about to be asked;
+ * last: asked when all is quiet, in place of the one before; drop: it is not wanted any more.
  */
 export function turns() {
   const state = { open: 0, waiting: null, running: null, timer: 0, isLeft: false };

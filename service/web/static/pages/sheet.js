@@ -4,10 +4,10 @@
 import { ask, follow } from "./ask.js";
 import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
-import { jointsIn, signs, typed, UNITS, unitsOf } from "./numbers.js";
+import { FORMS, jointsIn, signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
-import { fixedFrames, framesIn, framesNear, isUpright } from "./sheet_frames.js";
-import { readings, sentences, showState, texts } from "./sheet_numbers.js";
+import { fixedFrames, framesIn, framesNear, isUpright, risingOf } from "./sheet_frames.js";
+import { notes, readings, sentences, showState, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
 import { travelTable } from "./sheet_travel.js";
 import { views } from "./sheet_views.js";
@@ -39,6 +39,7 @@ async function start() {
     (scale) => setText(place("scale"), scale));
   shown.travel = travelTable(place("travel"), place("step"), { values: byHand, joint: point });
   shown.readings = readings(place("readings"));
+  shown.notes = notes(place("says"));
   shown.texts = texts(place("text-blocks"));
   onTheme(() => shown.views.retint());
   state.isLive = !state.said.q;
@@ -58,10 +59,25 @@ async function load() {
   await fillChoices(asked[1]);
   fitModes();
   await anew();
-  showTable(place("table"), state.stored);
-  showRevisions(place("revisions"), path);
+  showStored();
   setInterval(tick, 250);
   place("texts").addEventListener("toggle", writeTexts);
+}
+
+function showStored() {
+  showTable(place("table"), state.stored);
+  showRevisions(place("revisions"), path);
+}
+
+/** A newer revision answers than is shown: show it, too, where it does not come with each answer. */
+async function renew() {
+  state.renews = true;
+  const { ok, data } = await ask(path);
+  state.renews = false;
+  if (!ok) return;
+  state.stored = data;
+  await fillChoices(true);
+  showStored();
 }
 
 /** The choices of the title block; what is not said takes what the arm says, and a z that is upright. */
@@ -77,12 +93,9 @@ async function fillChoices(upright) {
   shown.arms = [arm, ...fixed.arms];
   shown.drawn = ["base", "world", ...new Set([...own, ...fixed.names])];
   if (!said.frame) said.frame = (await upright) ? "base" : "world";
-  const triples = [
-    "xyz", "zyx", "xzy", "yxz", "yzx", "zxy", "zyz", "zxz", "xyx", "xzx", "yxy", "yzy"];
-  const forms = ["fixed", "current"].flatMap((about) => triples.map((one) => `${one}-${about}`));
   fillSelect("tool", [...tools, "flange"]);
   fillSelect("frame", ["base", "world", ...own, ...all]);
-  fillSelect("form", [...forms, "quaternion-wxyz", "quaternion-xyzw", "rotation-vector", "matrix"]);
+  fillSelect("form", [...FORMS, "matrix"]);
   fillSelect("units", UNITS);
   setText(place("arm-title"), told.title ?? "");
 }
@@ -91,19 +104,16 @@ function fillSelect(name, options) {
   const select = place(name), now = state.said[name];
   fill(select, [...new Set([...options, now])].map((one) =>
     el("option", { value: one, selected: one === now }, one)));
-  select.addEventListener("change", () => {
+  select.onchange = () => {
     const { said, answer, isLive, waits } = state, was = said.units;
     said[name] = select.value;
     if (!isLive && answer) said.q = jointsIn(said.q, answer.poses[0].outline.travel, was, said.units);
     choose({ [name]: select.value, q: isLive || waits ? null : said.q });
     anew();
-  });
+  };
 }
 
-const question = () => {
-  const { tool, frame, form, units } = state.said;
-  return { tool, frame, form, units };
-};
+const question = () => (({ tool, frame, form, units }) => ({ tool, frame, form, units }))(state.said);
 
 /** Ask everything again, in the words that are chosen now. */
 async function anew() {
@@ -189,21 +199,16 @@ function take(answer, heardAt = performance.now()) {
   setText(place("problem"), "");
   const isRelied = quality() !== "bad";
   shown.readings.show(answer, isRelied);
-  note(isRelied ? sentences(answer) : [signs(answer.say ?? "")].filter(Boolean));
+  shown.notes(isRelied ? sentences(answer) : [signs(answer.say ?? "")].filter(Boolean));
   shown.travel.show(item.outline.travel, !state.isLive, isRelied);
   setText(place("revision"), answer.arm.revision);
   setText(place("digest"), answer.arm.digest);
+  if (answer.arm.revision > state.stored.revision && !state.renews) renew();
   draw();
   tick();
   ready();
   clearTimeout(state.settle);
   state.settle = setTimeout(() => state.isLive || writeTexts(), SETTLED_MS);
-}
-
-function note(said) {
-  if (said.join("\n") === shown.said) return;
-  shown.said = said.join("\n");
-  fill(place("says"), said.map((one) => el("li", {}, one)));
 }
 
 /** Show on the drawing which way a joint's value rises. */
@@ -220,17 +225,11 @@ function draw() {
   shown.views.show({
     arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "",
     frameName: answer.frame, frames: framesNear(outline.line, state.frames),
-    path: state.trail, balloons: true, rising: risingOf(outline),
+    path: state.trail, balloons: true, rising: risingOf(outline.axes, state.stored.arm.rows, shown.rising),
     struck: quality() === "bad" ? wordOf(quality()) : "",
     kind: quality() === "good" || quality() === "typed" ? "thick" : "heavyDashed",
     unit: unitsOf(answer.units).length, units: said.units,
   });
-}
-
-/** The axis of the joint pointed at, and whether its row turns with the value or against it. */
-function risingOf({ axes }) {
-  const axis = axes.find((one) => one.joint !== null && one.joint === shown.rising);
-  return axis ? { axis, sign: state.stored.arm.rows[axis.row - 1].direction ?? 1 } : null;
 }
 
 const quality = () => (!state.isLive ? "typed" : isGone() ? "bad" : state.answer.quality);

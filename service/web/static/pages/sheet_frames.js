@@ -56,3 +56,9 @@ export function framesNear(line, frames) {
     Math.hypot(...point.map((value, i) => value - matrix[i][3])) < far);
   return frames.filter((frame) => frame.name !== "base" && isNear(frame));
 }
+
+/** The axis of the joint pointed at, and whether its row turns with the value or against it. */
+export function risingOf(axes, rows, joint) {
+  const axis = axes.find((one) => one.joint !== null && one.joint === joint);
+  return axis ? { axis, sign: rows[axis.row - 1].direction ?? 1 } : null;
+}

@@ -124,3 +124,13 @@ async function copy(text) {
     return document.execCommand("copy");
   }
 }
+
+/** Return what writes sentences into a list, where they are others than there. */
+export function notes(place) {
+  let now = "";
+  return (said) => {
+    if (said.join("\n") === now) return;
+    now = said.join("\n");
+    fill(place, said.map((one) => el("li", {}, one)));
+  };
+}

@@ -51,6 +51,7 @@ export const WORDS = {
     "stale": "STALE",
     "uncertain": "UNCERTAIN",
     "never": "no values yet",
+    "refused": "Values came; none could be relied on.",
     "no_pose": "NO POSE",
     "unknown": "no such arm",
     "last": "last {age} ago",
@@ -312,12 +313,14 @@ export const WORDS = {
       "line": "line {line}",
       "show": "Place {number}, {name}: show it",
       "unbounded": "no limits",
+      "outside_work": "Outside working travel",
       "before": "Before",
       "after": "Next",
       "part": "{first} to {last} of {count}"
     },
     "target": {
-      "rests": "Rests on {proof}. Method: {method}.",
+      "rests": "Rests on {proof}.",
+      "method": " Method: {method}.",
       "proofs": {
         "witness": "joint values that bring the tool there",
         "bound": "the lengths of the links",
@@ -327,6 +330,7 @@ export const WORDS = {
         "search": "a search; another may find more"
       },
       "nearest": "Nearest that can be reached:",
+      "met": "Nearest met:",
       "family_one": "Joint {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
       "family": "Joints {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
       "families_more": "And {count} more such motions.",
