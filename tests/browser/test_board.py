@@ -220,6 +220,19 @@ def test_what_changes_is_written_and_what_does_not_is_left(
     assert "never" not in written
 
 
+def test_what_stands_below_never_runs_into_its_neighbour(board: Screen) -> None:
+    fields = board.run("""
+      return [...document.querySelectorAll(".card .block dd")].map((one) => {
+        one.textContent = "a-tool-whose-name-is-far-too-long-for-any-card-of-a-board".repeat(3);
+        const [own, room] = [one, one.parentElement].map((box) => box.getBoundingClientRect());
+        const isCut = one.scrollWidth > one.clientWidth;
+        return [own.right <= room.right + 0.5, getComputedStyle(one).overflowX, isCut];
+      });
+    """)
+    assert len(fields) >= 3 * len(HALL) - 3
+    assert {tuple(one) for one in fields} == {(True, "hidden", True)}
+
+
 def test_values_that_were_all_refused_are_not_told_as_none(board: Screen) -> None:
     body = """
       const problem = { code: "no-live-pose", say: "joint values have stopped" };

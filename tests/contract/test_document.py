@@ -25,7 +25,8 @@ ASKING = {"get", "post", "put", "delete", "head"}
 # For people, and the document itself: their addresses are not part of the interface.
 PAGES = {
     *("/docs", "/docs/controllers", "/docs/problems", "/docs/files/{name}", "/openapi.json"),
-    *("/", "/arms/{arm}", "/arms/{arm}/reach", "/pages/{name}"),
+    *("/", "/arms/{arm}", "/arms/{arm}/", "/arms/{arm}/reach", "/arms/{arm}/reach/"),
+    "/pages/{name}",
 }
 
 

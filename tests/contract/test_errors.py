@@ -60,7 +60,7 @@ CALLS_WITH_BODY = sorted(set(calls_with_body()))
 MAY_HAVE_NO_BODY = set(calls_without_a_body())
 PATHS = sorted({path for _, path in CALLS})
 # For people: what a viewer chose stands in their query, and a wrong name is told on a page.
-SCREENS = {"/", "/arms/{arm}", "/arms/{arm}/reach"}
+SCREENS = {"/", *(f"/arms/{{arm}}{end}" for end in ("", "/", "/reach", "/reach/"))}
 
 
 def filled(path: str, arm: str = ARM["name"]) -> str:  # type: ignore[assignment]

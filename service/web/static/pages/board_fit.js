@@ -12,9 +12,9 @@ const WORDS_OF_CARD = 1 / 19.5; // at most: a name of 14 characters and a word b
 const LEAST_WORDS_PX = 14;
 const LEAST_PX = 26; // Smaller figures serve nobody across the hall: then the board scrolls.
 const LEAST_CARD_PX = 240; // Below it, words do not fit on their lines.
+const SCROLLED_CARD_PX = 300; // A board that scrolls shows as many as can be: names and a word beside.
 const MOST_SHARE = 0.08; // of the screen, however few the arms
 const MOST_AIR = 1.2; // Cards fill the screen, unless it is nearly empty.
-const AS_WIDE = [[1088, 4], [608, 2]];
 
 /**
  * Return how cards are laid out.
@@ -33,7 +33,7 @@ export function cardsFitted(count, width, height, asked = 0) {
     // Fewer columns, on which words have room, where figures are much the same.
     if (!best || figure > 1.05 * best.figure) best = { columns, figure, room: high };
   }
-  const columns = asked || (AS_WIDE.find(([least]) => width >= least)?.[1] ?? 1);
+  const columns = asked || Math.max(Math.floor((width + GAP_PX) / (SCROLLED_CARD_PX + GAP_PX)), 1);
   best ??= { columns, figure: ofWidth(cardWidth(width, columns)) };
   const { figure, room = 0 } = best, [least, most] = WORDS_OF_FIGURE.map((share) => share * figure);
   const withRoom = (room - FRAME_PX - HIGH * figure) / LINES;

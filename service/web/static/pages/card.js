@@ -71,6 +71,7 @@ function write(parts, said) {
   const aged = said.ageMs === null ? "" : age(said.ageMs);
   setText(parts.note, hasPose || !aged ? "" : say(WORDS.board.last, { age: aged }));
   setText(parts.tool, said.tool || WORDS.shell.none);
+  setAttribute(parts.tool, "title", said.tool || null);
   setText(parts.frame, said.frame || WORDS.shell.none);
   setText(parts.old, aged || WORDS.shell.none);
 }

@@ -28,8 +28,6 @@ export function svg(tag, attributes = {}, ...children) {
 
 /**
  * Write a text only where it is another one: what stays costs no layout.
- * @param {Node} node
- * @param {string} text
  */
 export function setText(node, text) {
   if (node.textContent !== text) node.textContent = text;
