@@ -79,7 +79,7 @@ class LiveArm:
     period, history, counts : of its input; ``counts`` says how many samples were taken (``good``),
         doubted and dropped, by reason.
     looked_at_s : when somebody last asked how it stands, by the steady clock.
-    heard_s : when something new came last.
+    heard_s, heard_from : when something new came last, and from which source, good or doubted.
     """
 
     def __init__(
@@ -92,6 +92,7 @@ class LiveArm:
         self.counts: Counter[str] = Counter()
         self.looked_at_s = float("-inf")
         self.heard_s = float("-inf")
+        self.heard_from = ""
         self._sources: dict[str, Source] = {}
         self._recent: deque[Sample] = deque(maxlen=_RATES_FROM)
         self._is_real = False
@@ -120,7 +121,7 @@ class LiveArm:
 
         A gateway whose controller has stopped may well repeat its last values for ever.
         """
-        self.heard_s = sample.received_s
+        self.heard_s, self.heard_from = sample.received_s, sample.source
         self.period.arrived(sample.received_s, sample.period_s)
 
     def take(self, sample: Sample) -> Taken:

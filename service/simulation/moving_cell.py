@@ -152,10 +152,11 @@ class MovingCell:
 
     def _is_moved_by_others(self, name: str) -> bool:
         """Return whether another input has an arm at present: two would tear at it."""
-        standing = self.live.newest(name)
-        if standing is None or standing.sample is None or standing.reason == STALE:
+        arm = self.live.get(name)
+        if arm is None or not arm.heard_from or arm.standing.reason == STALE:
             return False
-        return standing.sample.source != SOURCE
+        # Who sent last, not whose values stand: the first of another input are doubted as a leap.
+        return arm.heard_from != SOURCE
 
     async def _stored(self, name: str) -> StoredArm[ReadArm]:
         """Return the arm as it is stored; live arms are kept in step with that."""

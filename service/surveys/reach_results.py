@@ -5,6 +5,7 @@ them (reach_checks.py), and how they are kept (reach_kept.py).
 """
 
 from collections.abc import Callable
+from math import isnan
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -17,7 +18,14 @@ from service.wire import csv_text, npy
 from service.wire.answers import json_bytes
 from service.wire.csv_text import REFUSALS_FROM
 from service.wire.formats import JSON, Format
-from service.wire.reach_lines import ReachColumns, SameInAll, joint_keys, reach_head, reach_lines
+from service.wire.reach_lines import (
+    PLACE,
+    ReachColumns,
+    SameInAll,
+    joint_keys,
+    reach_head,
+    reach_lines,
+)
 
 
 def summary_of(survey: Survey) -> dict[str, int]:
@@ -53,16 +61,18 @@ def columns_told(joints: int) -> tuple[str, ...]:
 
     Examples
     --------
-    >>> columns_told(1)
-    ('code', 'verdict', 'solutions', 'solution', 'q1', 'margin', 'position_error', 'angle_error')
+    >>> columns_told(1)[:6]
+    ('code', 'verdict', 'solutions', 'solution', 'q1', 'margin')
+    >>> columns_told(1)[6:]
+    ('position_error', 'angle_error', 'x', 'y', 'z')
     """
     before, after = ("code", "verdict", "solutions", "solution"), ("position_error", "angle_error")
-    return (*before, *joint_keys(joints), "margin", *after)
+    return (*before, *joint_keys(joints), "margin", *after, *PLACE)
 
 
 def _doubles(_: int, columns: ReachColumns) -> bytes:
     told = columns.codes, columns.verdicts.which, columns.counts, columns.ranks
-    numbers = columns.joints, columns.margins, columns.errors
+    numbers = columns.joints, columns.margins, columns.errors, columns.positions
     return npy.npy_bytes(np.column_stack([*told, *numbers])).tobytes()
 
 
@@ -97,8 +107,10 @@ def _item(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:
     code, reason = int(columns.codes[line]), columns.reasons.get(line)
     verdict, why = texts.verdicts[line] or None, columns.why.get(line) or {}
     said = {"say": reason} if reason else None
+    place = columns.positions[line].tolist()
     item: dict[str, Any] = {
         "name": columns.names.get(line),
+        "position": None if isnan(place[0]) else place,
         "ok": code < REFUSALS_FROM,
         "code": code,
         "verdict": verdict,

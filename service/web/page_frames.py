@@ -10,26 +10,18 @@ import re
 from collections.abc import Mapping
 from functools import cache
 from html import escape
-from importlib import resources
 from typing import Any
 
 import orjson
 
 from service.cautions import CAUTIONS, NOT_A_SAFETY_FUNCTION
 from service.web.page_answers import version_here
+from service.web.page_files import files
 
-_FOLDER = "service.web.static.pages"
 _IMPORT = re.compile(r"^(?:im|ex)port\b[^;]*?\bfrom \"\./([a-z_]+\.js)\";", re.MULTILINE)
 _MODULE = re.compile(r'<script type="module" src="/pages/([a-z_]+\.js)">')
 _PLACE = re.compile(r"\{\{([a-z_.]+)\}\}")
 _WORDS = re.compile(r"^export const WORDS = (\{$.*?^\});$", re.DOTALL | re.MULTILINE)
-
-
-@cache
-def files() -> dict[str, bytes]:
-    """Return the files of the pages by name, as they were when first asked for."""
-    found = resources.files(_FOLDER).iterdir()
-    return {one.name: one.read_bytes() for one in found if one.is_file()}
 
 
 @cache

@@ -17,7 +17,8 @@ from starlette.responses import RedirectResponse, Response
 
 from service.errors import UnknownArm, UnknownPath
 from service.web.page_answers import page_answer
-from service.web.page_frames import files, framed, said
+from service.web.page_files import files, sent
+from service.web.page_frames import framed, said
 from service.wire.query import known_parameters
 
 router = APIRouter(include_in_schema=False)
@@ -87,7 +88,7 @@ async def page_part(request: Request) -> Response:
     media_type = _MEDIA_TYPES.get(name.rpartition(".")[2])
     if media_type is None or name not in files():
         raise UnknownPath("no such file", location="path", value=name)
-    return page_answer(request, files()[name], media_type)
+    return page_answer(request, sent(name), media_type)
 
 
 async def _of_arm(request: Request, page: str) -> Response:

@@ -18,8 +18,10 @@ from service.wire.flat import NO_LIMITS_MARGIN, NO_NUMBER
 
 AFTER_STAMP = ("verdict", "solutions")
 AFTER_JOINTS = ("margin", "state", "units", "revision", "digest")
-BESIDE = ("solution", "proof", "branch", "position_error", "angle_error", "reason", NAME)
-"""What a line has beside the keys of a flat answer: ``solution`` counts those of one target."""
+PLACE = ("x", "y", "z")
+BESIDE = ("solution", "proof", "branch", "position_error", "angle_error", "reason", NAME, *PLACE)
+"""What a line has beside the keys of a flat answer: ``solution`` counts those of one target, and
+``x y z`` are what was asked for, empty where that cannot be read."""
 
 _END = "\r\n"
 
@@ -53,6 +55,7 @@ class ReachColumns:
     counts, ranks : solutions of the target, and which of them a line tells, from 1; 0 for none.
     joints : (lines, joints), in the user's units; NaN where there is no solution to be used.
     why : of a line with a reason, all that JSON tells of it, where that was asked for.
+    positions : (lines, 3), asked for, in the user's units and frame; NaN where none can be read.
     margins : (lines,), infinite without travel limits; errors : (lines, 2), position and angle.
     """
 
@@ -67,6 +70,7 @@ class ReachColumns:
     proofs: Texts
     branches: Texts
     errors: FloatArray
+    positions: FloatArray
     reasons: Mapping[int, str]
     names: Mapping[int, str]
     why: Mapping[int, Mapping[str, object]] = field(default_factory=dict)
@@ -111,6 +115,12 @@ def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
     numbers = np.column_stack([columns.joints, margins])
     joints = number_texts(np.where(none[:, None], NO_NUMBER, numbers))
     errors = number_texts(np.where(none[:, None], NO_NUMBER, columns.errors))
+    positions = [
+        ",," if unread else text
+        for text, unread in zip(
+            number_texts(columns.positions), np.isnan(columns.positions[:, 0]), strict=True
+        )
+    ]
     tail = f"{same.units},{same.revision},{same.digest}"
     reasons, names = (
         [noted.get(line, "") for line in range(len(none))]
@@ -119,11 +129,13 @@ def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
     told = zip(
         begins, columns.verdicts.told(), columns.counts.tolist(), joints, columns.states.told(),
         columns.ranks.tolist(), columns.proofs.told(), columns.branches.told(), errors, reasons,
-        names, strict=True,
+        names, positions, strict=True,
     )  # fmt: skip
     lines = [
         f"{begin},{verdict},{count},{values},{state},{tail},{rank},{proof},{quoted(branch)},"
-        f"{error},{quoted(reason)},{quoted(name)}"
-        for begin, verdict, count, values, state, rank, proof, branch, error, reason, name in told
-    ]
+        f"{error},{quoted(reason)},{quoted(name)},{place}"
+        for (
+            begin, verdict, count, values, state, rank, proof, branch, error, reason, name, place,
+        ) in told
+    ]  # fmt: skip
     return (_END.join(lines) + _END).encode("utf-8")

@@ -10,6 +10,7 @@ from pathlib import Path
 import httpx
 import pytest
 
+from service.web.page_files import without_comments
 from tests.browser.module_text import functions, taken_apart
 from tests.conftest import ServerProcess
 
@@ -63,6 +64,27 @@ def test_modules_are_small_and_say_what_they_are(file: Path) -> None:
         name: n for name, n in functions(taken_apart(text).code).items() if n > MOST_IN_FUNCTION
     }
     assert long == {}
+
+
+@pytest.mark.parametrize("file", MODULES, ids=lambda file: file.name)
+def test_nothing_but_comments_is_left_out_of_what_is_sent(file: Path) -> None:
+    text = file.read_text(encoding="utf-8")
+    sent = without_comments(text)
+    assert len(sent) < len(text)
+    before, after = taken_apart(text), taken_apart(sent)
+    assert after.literals == before.literals
+    lines = [[line.rstrip() for line in one.code.split("\n")] for one in (before, after)]
+    assert lines[0] == lines[1]
+
+
+@pytest.mark.parametrize("file", sorted(FOLDER.glob("*.css")), ids=lambda file: file.name)
+def test_rules_are_sent_whole(file: Path) -> None:
+    text = file.read_text(encoding="utf-8")
+    before, after = (
+        re.sub(r"/\*.*?\*/", "", one, flags=re.DOTALL).split()
+        for one in (text, without_comments(text))
+    )
+    assert after == before
 
 
 def test_the_modules_were_found() -> None:
@@ -194,7 +216,7 @@ def test_files_of_pages_are_served_and_no_others(demo: ServerProcess) -> None:
     with httpx.Client(base_url=f"{demo.url}/pages/") as client:
         for file in served:
             answer = client.get(file.name)
-            assert answer.content == file.read_bytes()
+            assert answer.content == without_comments(file.read_text(encoding="utf-8")).encode()
             assert answer.headers["content-type"].split(";")[0] == kinds[file.suffix]
             assert answer.headers["x-content-type-options"] == "nosniff"
         for name in ("__init__.py", "..%2f__init__.py", "%2e%2e/pages.py", "board", "none.js"):

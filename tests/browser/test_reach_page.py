@@ -163,6 +163,17 @@ def test_a_line_that_cannot_be_read_is_told_and_harms_no_other(page: Screen) -> 
     paste(page, "bench,900,300,700,180,0,90\nnonsense,here\nshelf,1600,0,700,180,0,90")
     page.until(ANSWERED)
     assert verdicts(page) == ["reachable", "unread", "unreachable"]
+    names = page.run(f"return [...{ROWS}].map((row) => row.querySelector('.choice').innerText)")
+    assert names == ["bench", "nonsense", "shelf"]
+
+
+def test_a_place_that_cannot_be_come_to_straight_is_no_far_one(page: Screen) -> None:
+    head = "name,x,y,z,r1,r2,r3,approach"
+    paste(page, f"{head}\nbench,900,300,700,180,0,90,1500\nshelf,1600,0,700,180,0,90,")
+    page.until(ANSWERED)
+    words = page.run(f"return [...{ROWS}].map((row) => row.querySelector('.verdict b').innerText)")
+    assert words == ["no straight approach", "unreachable"]
+    page.until("/no straight approach: .*not from 1500 mm/.test(document.body.innerText)")
 
 
 def test_names_with_markup_stay_words(page: Screen) -> None:
@@ -313,15 +324,22 @@ def test_a_survey_with_its_report(page: Screen, demo: ServerProcess, judged: lis
     page.until(solutions)
     found = page.run("return location.search")
     assert "survey=" in found
+    places = f"return [...{ROWS}].map((row) => row.querySelector('.place').innerText)"
+    typed = page.run(places)
     link = page.run("return document.querySelector('#survey a[href$=report]').href")
     assert httpx.get(link).headers["content-type"].startswith("text/html")
-    # Who has the address but not the list sees the names all the same, and a posture.
+    # Who has the address but not the list sees names and places all the same, and a posture.
     opened(page, demo, found)
     page.until(f"{ROWS}.length === {len(PLACES)}")
     assert verdicts(page) == judged
     names = page.run(f"return [...{ROWS}].map((row) => row.querySelector('.choice').innerText)")
     assert names == list(PLACES)
+    assert page.run(places) == typed
+    assert "900.0" in typed[0]
     page.until("document.querySelector('#target table.joints')")
+    # All that is known of them is known: none is asked about again.
+    asked = [httpx.URL(one).path for one in page.requests()]
+    assert "/v1/reach/checks" not in asked[asked.index(f"/arms/{ARM}/reach") :]
     assert "Method:" not in page.text(), "a survey kept none"
 
 
@@ -334,6 +352,63 @@ def test_what_a_survey_keeps_says_why_a_yes_has_a_but(page: Screen) -> None:
     work = "Outside working travel"
     assert of("reach_list.js", body, page) == [
         "Near singular", "Singular", work, f"Near singular; {work}", ""]  # fmt: skip
+
+
+def test_the_drawing_is_held_as_one_stands_before_the_arm(page: Screen) -> None:
+    """Of a base that lies, hangs or stands: up is up, and nothing is seen from below."""
+    body = """
+      const envelope = { axis: { point: [0, 0, 0], direction: [0, 0, 1] } };
+      const plain = (way) => way.map((one) => one + 0);
+      const seen = (slides, vertical) =>
+        all.viewsOf({ slides, vertical, envelope: slides ? null : envelope })
+          .map(({ title, across, up }) => [title, plain(across), plain(up)]);
+      return { stands: seen(false, [0, 0, 1]), hangs: seen(false, [0, 0, -1]),
+        rises: seen(true, [1, 0, 0]), flies: seen(true, [0, 1, 0]) };
+    """
+    x, y, z = [1, 0, 0], [0, 1, 0], [0, 0, 1]
+    left, down = [-1, 0, 0], [0, 0, -1]
+    assert of("reach_views.js", body, page) == {
+        "stands": [["section", x, z], ["plan", x, y]],
+        "hangs": [["section", left, down], ["plan", left, y]],
+        "rises": [["side", down, x], ["end", [0, -1, 0], x]],
+        "flies": [["plan", left, z], ["end", x, y]],
+    }
+
+
+def test_views_are_right_handed_and_upright_however_a_base_lies(page: Screen) -> None:
+    body = """
+      const { cross, dot, unit } = await import("/pages/projection.js");
+      const found = [];
+      for (let k = 0; k < 500; k++) {
+        // Spread evenly over the sphere.
+        const z = 1 - (2 * k + 1) / 500, turn = 2.399963 * k, r = Math.sqrt(1 - z * z);
+        const vertical = [r * Math.cos(turn), r * Math.sin(turn), z];
+        for (const slides of [true, false]) for (const view of all.viewsOf({ slides, vertical })) {
+          const { kind, across, up, toward, looks, cut } = view;
+          found.push({ kind, seen: dot(toward, vertical), up: dot(up, vertical),
+            off: Math.hypot(...cross(across, up).map((one, i) => one - toward[i])),
+            // The plan's arrows are square to the cut, and level with the plan.
+            arrows: looks ? Math.abs(dot(looks, cut)) : 0 });
+        }
+      }
+      return found;
+    """
+    views = of("reach_views.js", body, page)
+    assert len(views) == 2000
+    assert max(view["off"] for view in views) < 1e-9
+    assert max(view["arrows"] for view in views) < 1e-9
+    elevations = [view for view in views if abs(view["seen"]) <= 0.7]
+    assert len(elevations) > 500
+    assert min(view["up"] for view in elevations) > 0.5
+    flat = [view for view in views if abs(view["seen"]) > 0.7 and view["kind"] != "section"]
+    assert len(flat) > 300
+    assert min(view["seen"] for view in flat) > 0.7
+
+
+def test_which_way_is_up_is_told_by_the_base(page: Screen, demo: ServerProcess) -> None:
+    body = "return Promise.all(['housing-loader', 'line-runner', 'none'].map(all.verticalOf))"
+    stands, lies, unknown = of("frames.js", body, page)
+    assert (stands, lies, unknown) == ([0, 0, 1], [1, 0, 0], [0, 0, 1])
 
 
 def test_the_scale_on_paper_is_that_of_the_drawing(page: Screen) -> None:

@@ -128,6 +128,34 @@ async def test_a_simulation_from_outside_is_left_alone_while_it_lasts(
     pytest.fail("it does not go on")
 
 
+async def test_a_simulation_that_begins_elsewhere_is_not_torn_at(
+    app: FastAPI, live: LiveArms
+) -> None:
+    """Its first values are a leap from where the demonstration left the arm, and doubted."""
+    await until_moved(live, NAMES)
+    live.look_at(LOADER)
+    stored = app.state.arms.get(LOADER)
+    travel = stored.read.arm.table.rows[0].travel
+    standing = live.newest(LOADER)
+    assert standing is not None
+    assert standing.sample is not None
+    first, *others = standing.sample.joints
+    # Half of the first joint's travel away.
+    away = first + (travel[1] - travel[0]) / 2.0 * (-1.0 if first > sum(travel) / 2.0 else 1.0)
+    qualities = []
+    for _ in range(60):
+        now_s, now_ms = live.clock.steady_s(), live.clock.wall_ms()
+        given = {"source": "commissioning", "simulated": True, "period_s": 0.1}
+        sample = Sample((away, *others), now_s, now_ms, **given)  # type: ignore[arg-type]
+        live.feed(stored, [sample])
+        qualities.append(live.newest(LOADER).quality)  # type: ignore[union-attr]
+        await asyncio.sleep(0.05)
+    assert qualities[0] == "uncertain"
+    assert qualities[-1] == "good"
+    # Once relied on, it stays so: nobody else moves the arm.
+    assert "uncertain" not in qualities[qualities.index("good") :]
+
+
 async def test_a_new_revision_is_wandered_within_its_own_travel(app: FastAPI) -> None:
     arms, live = app.state.arms, app.state.live
     moving, first = MovingArm(LOADER), arms.get(LOADER)

@@ -5,7 +5,8 @@ import re
 import pytest
 
 from service.cautions import CAUTIONS
-from service.web.page_frames import files, framed, said, words
+from service.web.page_files import files
+from service.web.page_frames import framed, said, words
 
 FRAMES = sorted(name for name in files() if name.endswith(".html"))
 PLACE = re.compile(r"\{\{([a-z_.]+)\}\}")

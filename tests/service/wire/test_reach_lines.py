@@ -31,6 +31,7 @@ def columns() -> ReachColumns:
         proofs=Texts(("witness", "bound"), np.array([0, 1, -1])),
         branches=Texts(("wrist ahead of axis 1, elbow above",), np.array([0, -1, -1])),
         errors=np.array([[1e-9, 0.0], [np.nan, np.nan], [np.nan, np.nan]]),
+        positions=np.array([[1.25, -0.0, 300.1], [9e5, 0.0, 0.0], [np.nan] * 3]),
         reasons={1: "31 mm too far", 2: '"x" must be a number'},
         names={0: "lug-1", 1: "lug, second", 2: 'the "third"'},
     )
@@ -41,7 +42,8 @@ def test_the_head_begins_with_the_keys_of_a_flat_answer() -> None:
     flat = [*BEGIN, *joint_keys(6), *END]
     assert keys[: len(flat)] == flat
     assert keys[len(flat) :] == [
-        *("solution", "proof", "branch", "position_error", "angle_error", "reason", "name")
+        *("solution", "proof", "branch", "position_error", "angle_error", "reason", "name"),
+        *("x", "y", "z"),
     ]
 
 
@@ -58,6 +60,10 @@ def test_lines_can_be_read_back() -> None:
     assert no_number == {"-999999.9999"}
     assert (two["reason"], two["name"]) == ("31 mm too far", "lug, second")
     assert (three["reason"], three["name"]) == ('"x" must be a number', 'the "third"')
+    # A no has no numbers, but for those that were asked about.
+    assert [one[key] for key in "xyz"] == ["1.25", "0.0", "300.1"]
+    assert [two[key] for key in "xyz"] == ["900000.0", "0.0", "0.0"]
+    assert [three[key] for key in "xyz"] == ["", "", ""]
     assert {line["digest"] for line in (one, two, three)} == {"e994bb33"}
 
 
@@ -66,6 +72,6 @@ def test_none_are_none() -> None:
     texts = Texts((), whole)
     empty = ReachColumns(
         whole, {}, texts, whole, np.empty((0, 2)), numbers, texts, whole, texts, texts,
-        np.empty((0, 2)), {}, {},
+        np.empty((0, 2)), np.empty((0, 3)), {}, {},
     )  # fmt: skip
     assert reach_lines(empty, SAME) == b""

@@ -15,6 +15,7 @@ import { blankTable, readPlaces } from "./reach_reading.js";
 import { counted, surveyDesk } from "./reach_survey.js";
 import { targetDesk } from "./reach_target.js";
 import { turns } from "./reach_turns.js";
+import { verticalOf } from "./frames.js";
 import { begin } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
@@ -35,13 +36,14 @@ const page = {
 const sent = `armspan-reach-sent-${page.name}`;
 
 async function start() {
-  const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}`);
+  const [answer, vertical] = await Promise.all([
+    ask(`/v1/arms/${encodeURIComponent(page.name)}`), verticalOf(page.name)]);
   if (!answer.ok) {
     fill(place("reading"), refused(answer.problem.detail));
     return setTimeout(start, AGAIN_MS);
   }
   page.arm = answer.data;
-  fit();
+  fit(vertical);
   const { survey } = chosen({ survey: "" });
   const isOwn = survey && recall(sent) === survey;
   page.input.begin();
@@ -55,12 +57,12 @@ async function start() {
 const refused = (text) => el("p", { class: "refused" }, text);
 const trouble = (text) => place("reading").append(refused(text));
 
-function fit() {
+function fit(vertical) {
   about();
   page.desk = questionDesk(place("question"), page.arm, () => asked(false));
   page.question = page.desk.now;
   const looked = { canvas: place("drawing"), legend: place("legend"), block: place("block") };
-  page.picture = pictureDesk(looked, page.arm, page.turn);
+  page.picture = pictureDesk(looked, page.arm, vertical, page.turn);
   page.table = placesTable(place("table"), chosenPlace);
   page.target = targetDesk(place("target"), draw);
   page.survey = surveyDesk(place("survey"), { changed: surveyChanged, found: surveyFound });
@@ -103,7 +105,7 @@ function asked(isTyped) {
   page.read = readPlaces(place("list").value, { turns: turnsOf(question.form), decimal: question.decimal });
   const { places, faults } = page.read;
   const all = [...places.map((one) => ({ place: one, line: one.line })),
-    ...faults.map((fault) => ({ place: null, line: fault.line, fault: faultWords(fault) }))];
+    ...faults.map((fault) => ({ place: null, line: fault.line, name: fault.name, fault: faultWords(fault) }))];
   page.rows = all.sort((a, b) => a.line - b.line);
   page.targets = null;
   const count = places.length;
@@ -282,7 +284,10 @@ function surveyFound({ id, request, arm, units }, found) {
   else {
     const { tool, frame = "base" } = request;
     const question = { ...page.question(), tool, frame, units, revision: arm.revision };
-    page.rows = found.map((result, i) => ({ place: null, line: i + 1, name: result.name, result, question }));
+    // Known is where, not how turned: nothing more can be asked about such a place.
+    page.rows = found.map((result, i) => ({
+      place: result.position && { position: result.position, line: i + 1 },
+      line: i + 1, name: result.name, result, question, isWhole: true }));
     shown(0);
   }
   return true;

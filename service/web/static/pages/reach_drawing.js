@@ -1,14 +1,16 @@
 // The drawing of the reach page: envelope, places, the arm at a solution, the way it comes.
 // Idea: a section through axis 1, turned to the bearing of the chosen place, beside a plan at the
 // same scale that tells by A-A where it is cut; other places are turned into the section about
-// axis 1. Left out: envelopes, postures, places in the base: all answered by the interface.
+// axis 1. Left out: the ways of looking (reach_views.js); envelopes, postures, places in the base, which
+// the interface answers.
 
 import { drawArm } from "./arm_drawing.js";
 import { labelsOn, scaleBar, triad } from "./marks.js";
 import { unitsOf } from "./numbers.js";
 import { pen } from "./pen.js";
-import { column, cross, dot, MM_IN, moved, placed, scaleWithRoom, unit } from "./projection.js";
+import { column, dot, MM_IN, moved, placed, scaleWithRoom } from "./projection.js";
 import { marks, NUMBERED, stroke, within } from "./reach_signs.js";
+import { curves, shown, viewsOf } from "./reach_views.js";
 import { onTheme } from "./shell.js";
 import { say, WORDS } from "./words.js";
 
@@ -19,7 +21,7 @@ const ENOUGH = 100;         // Places tell the paper's room where nothing else d
 const FAR = 0.25;           // Places farther off the envelope than this share of it stand at the edge,
 const FAR_CHOSEN = 0.8;     // the chosen one if it is farther than this.
 const TITLE_PX = 13, BOLD = 1.12;
-const AXES = 64;            // Beside a title: which way the axes of the base point.
+const AXES = 78;            // Beside a title: which way the axes of the base point.
 const FINE = 4;             // Pixels of a drawing for print, to one of the screen.
 const SHEET = ["180mm", "105mm"]; // A4 and Letter have room for it: the scale holds on both.
 const PRINTED = {
@@ -31,9 +33,9 @@ const SMALLEST = 1000;
  * @typedef {{at: number[], verdict: string, number: number, name?: string}} Marked
  * @typedef {{envelope: object|null, outline: object|null, before: object|null, units: string,
  *   places: Marked[], chosen: Marked|null, way: {from: number[], to: number[], isBroken: boolean}|null,
- *   nearest: number[]|null, missing: string, slides: boolean}} Picture
- *   all in the base; slides: row 1 does, so that there is no axis 1; `outline` at the solution, `before`
- *   where the approach begins.
+ *   nearest: number[]|null, missing: string, slides: boolean, vertical: number[]}} Picture
+ *   all in the base, the vertical too; slides: row 1 does, so that there is no axis 1; `outline` at the
+ *   solution, `before` where the approach begins.
  */
 
 /** Return what draws pictures on a canvas, anew when paper or room change. */
@@ -70,7 +72,7 @@ function draw({ pen: drawn, picture, canvas }) {
   const [width, height] = drawn.size();
   if (!width || !height) return;
   const views = viewsOf(picture).map((view) => {
-    const words = WORDS.reach.drawing[view.kind];
+    const words = WORDS.reach.drawing[view.title];
     return { view, words, size: extent(view, picture), least: drawn.widthOf(words, TITLE_PX) * BOLD + AXES };
   });
   const { scale, isStacked } = laidOut(views, width, height, picture.units);
@@ -120,47 +122,6 @@ function frames(views, px, width, height, isStacked) {
     y += isStacked ? box.high + TITLE : 0;
     return { left, top, right: left + box.wide, bottom: top + box.high };
   });
-}
-
-/** The two ways of looking: along the normal of the section's plane, and from above. */
-function viewsOf({ envelope, chosen, outline, slides }) {
-  const reach = envelope?.travel ?? envelope?.working_travel;
-  const axis = envelope?.axis ?? (envelope || slides ? null : { point: [0, 0, 0], direction: [0, 0, 1] });
-  const [first, second] = reach?.section.directions ?? [[1, 0, 0], [0, 0, 1]];
-  const [right, ahead] = reach?.plan.directions ?? [[1, 0, 0], [0, 1, 0]];
-  const plan = { kind: "plan", across: right, up: ahead, toward: cross(right, ahead) };
-  if (!axis || (reach && reach.section.kind !== "section")) {
-    return [{ kind: "side", across: first, up: second, toward: cross(first, second) }, plan];
-  }
-  const tool = outline ? column(outline.tool, 3) : null;
-  const across = bearing(axis, chosen?.at ?? tool) ?? first;
-  const up = axis.direction, toward = cross(across, up);
-  return [{ kind: "section", across, up, toward, axis }, { ...plan, axis, cut: across }];
-}
-
-/** The direction from axis 1 to a place, square to the axis; null for a place on the axis. */
-function bearing({ point, direction }, place) {
-  if (!place) return null;
-  const off = moved(place, point, -1);
-  const level = moved(off, direction, -dot(off, direction));
-  return Math.hypot(...level) > 1e-9 * Math.hypot(...off, 1) ? unit(level) : null;
-}
-
-/** A place as the view shows it: turned about axis 1 into the section, else as it stands. */
-function shown(view, place) {
-  if (view.kind !== "section") return place;
-  const { point, direction } = view.axis;
-  const off = moved(place, point, -1), height = dot(off, direction);
-  const radius = Math.hypot(...moved(off, direction, -height));
-  return moved(moved(point, view.across, radius), direction, height);
-}
-
-/** The curves of a view in the base. */
-function curves(view, reach) {
-  const flat = reach?.[view.kind === "plan" ? "plan" : "section"];
-  const origin = view.kind === "section" ? view.axis.point : [0, 0, 0];
-  return (flat?.curves ?? []).map(({ points }) =>
-    points.map(([a, b]) => moved(moved(origin, view.across, a), view.up, b)));
 }
 
 function extent(view, { envelope, outline, before, places, chosen, units }) {
@@ -232,7 +193,7 @@ function baseMark(drawn, put, view, outline, labels, { left, top }) {
     drawn.circle(at[0], at[1], 3.5, "medium", "paper");
     labels.add(WORDS.reach.drawing.base, at, { gap: 8, from: 99 });
   }
-  const beside = left + drawn.widthOf(WORDS.reach.drawing[view.kind], TITLE_PX) * BOLD + 26;
+  const beside = left + drawn.widthOf(WORDS.reach.drawing[view.title], TITLE_PX) * BOLD + 40;
   labels.keepLine([[left, top - TITLE / 2], [beside, top - TITLE / 2]], 9);
   if (view.kind === "section") return;
   const corner = placed(view, put.px, [0, 0, 0], beside, top - 4);
@@ -250,18 +211,23 @@ function thickness(put, { line }) {
 /** Axis 1 in the section; in the plan where the section is cut, with arrows the way it is seen. */
 function axisLine(drawn, put, view, { left, top, right, bottom }, labels) {
   const at = put(view.axis.point);
-  if (view.kind === "section") return drawn.line([[at[0], top + 4], [at[0], bottom - 4]], "chain");
-  const [dx, dy] = [dot(view.cut, view.across), -dot(view.cut, view.up)];
+  if (view.kind === "section") {
+    const isLevel = Math.abs(dot(view.axis.direction, view.across)) > 0.5;
+    const ends = isLevel ? [[left + 4, at[1]], [right - 4, at[1]]] : [[at[0], top + 4], [at[0], bottom - 4]];
+    return drawn.line(ends, "chain");
+  }
+  const onPaper = (way) => [dot(way, view.across), -dot(way, view.up)];
+  const [dx, dy] = onPaper(view.cut), [sx, sy] = onPaper(view.looks);
   // As far as its own letter has room beside the view.
   const room = (from, way, low, high) => (way > 0 ? high - from : from - low) / Math.max(Math.abs(way), 1e-9);
   const long = Math.max(Math.min(room(at[0], dx, left, right), room(at[1], dy, top, bottom)) - 14, 30);
   const end = [at[0] + dx * long, at[1] + dy * long], begin = [at[0] - dx * 24, at[1] - dy * 24];
   drawn.line([begin, end], "chain");
   for (const point of [begin, end]) {
-    const tip = [point[0] + dy * 16, point[1] - dx * 16];
+    const tip = [point[0] + sx * 16, point[1] + sy * 16];
     drawn.arrow(point, tip, "thick", 8);
-    labels.keepLine([point, [tip[0] + dy * 12, tip[1] - dx * 12]], 7);
-    drawn.letters("A", tip[0] + dy * 9, tip[1] - dx * 9, { px: 13, weight: 600, align: "center" });
+    labels.keepLine([point, [tip[0] + sx * 12, tip[1] + sy * 12]], 7);
+    drawn.letters("A", tip[0] + sx * 9, tip[1] + sy * 9, { px: 13, weight: 600, align: "center" });
   }
 }
 

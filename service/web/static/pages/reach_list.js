@@ -28,6 +28,12 @@ export function kindOf({ fault, refused, result }) {
   return result.verdict === "reachable" && CARE.has(result.code) ? "care" : result.verdict ?? "refused";
 }
 
+/** What a row is told by, in words: a place that is reached, but not as it is to be come to, is no far one. */
+export function verdictOf(row) {
+  const kind = row.result?.reason?.stage === "approach" ? "no-approach" : kindOf(row);
+  return WORDS.reach.verdicts[kind] ?? kind;
+}
+
 /**
  * Return the table in a place of the page.
  * @param {HTMLElement} place
@@ -124,7 +130,7 @@ function line(table, at) {
     cell("number", at + 1),
     el("th", { role: "rowheader", scope: "row", class: "name" }, key),
     cell("place figures", place ? place.position.map((one) => length(one, units)).join("  ") : ""),
-    cell("verdict", sign(kind), el("b", {}, WORDS.reach.verdicts[kind] ?? kind)),
+    cell("verdict", sign(kind), el("b", {}, verdictOf(row))),
     cell("travel_left figures", margin === undefined ? "" : percent(margin)),
     cell("why", why));
 }

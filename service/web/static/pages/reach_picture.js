@@ -6,7 +6,7 @@ import { el, fill, setText } from "./elements.js";
 import { number, signs } from "./numbers.js";
 import { column } from "./projection.js";
 import { reachDrawing } from "./reach_drawing.js";
-import { kindOf } from "./reach_list.js";
+import { kindOf, verdictOf } from "./reach_list.js";
 import { envelopes, postures } from "./reach_postures.js";
 import { NUMBERED } from "./reach_signs.js";
 import { ready } from "./shell.js";
@@ -18,11 +18,12 @@ const FLICKER_MS = 150;     // So long the picture before stays, so that steppin
 /**
  * Return what draws a scene (row, rows, at, solution, question), and what becomes known of it later.
  * @param {{canvas: HTMLCanvasElement, legend: HTMLElement, block: HTMLElement}} places
- * @param {object} arm as GET /v1/arms/{arm} answers @param {object} turn of reach_turns.js
+ * @param {object} arm as GET /v1/arms/{arm} answers @param {number[]} vertical of the world, in its base
+ * @param {object} turn of reach_turns.js
  */
-export function pictureDesk(places, arm, turn) {
+export function pictureDesk(places, arm, vertical, turn) {
   const desk = {
-    ...places, arm, turn, draw: reachDrawing(places.canvas), asked: postures(arm), scene: null, parts: {} };
+    ...places, arm, vertical, turn, draw: reachDrawing(places.canvas), asked: postures(arm), scene: null, parts: {} };
   desk.envelope = envelopes(arm, turn, () => paint(desk));
   // On paper the scale is another.
   for (const event of ["beforeprint", "afterprint"]) addEventListener(event, () => desk.scene && paint(desk));
@@ -54,7 +55,7 @@ const keyOf = (question) =>
 function paint(desk) {
   const { scene } = desk, envelope = desk.envelope(scene.question);
   const slides = desk.arm.arm.rows[0]?.joint === "prismatic";
-  desk.draw({ ...pictureOf(scene, desk.parts, envelope.data), slides });
+  desk.draw({ ...pictureOf(scene, desk.parts, envelope.data), slides, vertical: desk.vertical });
   said(desk, envelope);
   ready();
 }
@@ -89,7 +90,7 @@ function said(desk, envelope) {
   fill(desk.block, Object.entries(lines).map(([key, value]) =>
     el("div", {}, el("dt", {}, words.block_lines[key]), el("dd", {}, value))));
   desk.canvas.setAttribute("aria-label", row
-    ? say(words.drawn, { name: nameOf(row, at), verdict: words.verdicts[kindOf(row)] ?? "" })
+    ? say(words.drawn, { name: nameOf(row, at), verdict: verdictOf(row) })
     : words.drawn_none);
   desk.legend.dataset.envelope = envelope.state;
   const refused = say(words.envelope_refused, { say: signs(envelope.say) });

@@ -23,7 +23,7 @@ const PLAIN = new RegExp(`^[+-]?(\\d{1,3}(${GROUPING}\\d{3})+|\\d+)$`);
  * @returns {{places: Place[], faults: Fault[], how: How}} of each line a place or a fault; no blank ones
  * @typedef {{line: number, name: string|null, position: number[], turns: number[]|null,
  *   freedom: string|{cone: number}|null, approach: number|null}} Place
- * @typedef {{line: number, code: string, cell?: string, column?: string, text?: string}} Fault
+ * @typedef {{line: number, name?: string|null, code: string, cell?: string, column?: string, text?: string}} Fault
  * @typedef {{separator: string, decimal: string, columns: string[], header: boolean, left: string[],
  *   doubt: string|null}} How
  */
@@ -247,8 +247,9 @@ function placeOf(row, columns, turns, mark) {
   const { line } = row;
   const cells = new Map();
   columns.forEach((column, at) => column && cells.set(column, row.cells[at] ?? ""));
+  const name = cells.get("name") || null;
   const beyond = trimmed(row.cells).slice(columns.length);
-  if (beyond.length) return { line, code: "wide", cell: beyond[0] };
+  if (beyond.length) return { line, name, code: "wide", cell: beyond[0] };
   const numbers = (names) => names.map((name) => numberOf(cells.get(name) ?? "", mark.decimal));
   const wrong = (names, values) => {
     const at = values.findIndex((value) => !Number.isFinite(value));
@@ -256,7 +257,7 @@ function placeOf(row, columns, turns, mark) {
     const cell = cells.get(names[at]) ?? "";
     const isEither = mark.decimal === "mixed" && cell.includes(",");
     const code = cell === "" ? "empty" : isEither ? "two-ways" : "not-a-number";
-    return { line, code, column: names[at], cell };
+    return { line, name, code, column: names[at], cell };
   };
   const position = numbers(POSITION);
   const names = turnNames(turns).filter((name) => columns.includes(name));
@@ -265,11 +266,10 @@ function placeOf(row, columns, turns, mark) {
   const said = { freedom: cells.get("freedom") ?? "", approach: cells.get("approach") ?? "" };
   const freedom = freedomOf(said.freedom.toLowerCase(), mark.decimal);
   const approach = said.approach === "" ? null : numberOf(said.approach, mark.decimal);
-  const name = cells.get("name") || null;
   const fault = wrong(POSITION, position) ?? (posed ? wrong(names, values) : null);
   if (fault) return fault;
-  if (freedom === undefined) return { line, code: "freedom", cell: said.freedom };
-  if (approach !== null && !(approach >= 0)) return { line, code: "approach", cell: said.approach };
+  if (freedom === undefined) return { line, name, code: "freedom", cell: said.freedom };
+  if (approach !== null && !(approach >= 0)) return { line, name, code: "approach", cell: said.approach };
   if (name && name.length > LONGEST_NAME) return { line, code: "long-name", cell: name.slice(0, 20) };
   return { line, name, position, turns: values, freedom, approach: approach || null };
 }

@@ -5,7 +5,7 @@
 import { withQuery } from "./address.js";
 import { el, fill } from "./elements.js";
 import { angle, length, number, signs, unitsOf } from "./numbers.js";
-import { kindOf, nameOf, percent, said, sign, stateSaid } from "./reach_list.js";
+import { kindOf, nameOf, percent, said, sign, stateSaid, verdictOf } from "./reach_list.js";
 import { say, WORDS } from "./words.js";
 
 const MOST_FAMILIES = 4;    // As many as can be taken in.
@@ -35,7 +35,7 @@ function draw(desk) {
   const solutions = row.result?.solutions ?? [];
   fill(desk.place,
     el("h2", {}, sign(kind), ` ${nameOf(row)}`),
-    el("p", { class: "verdict", dataset: { kind } }, el("b", {}, WORDS.reach.verdicts[kind] ?? kind),
+    el("p", { class: "verdict", dataset: { kind } }, el("b", {}, verdictOf(row)),
       said(row) ? `: ${said(row)}` : ""),
     shown.trouble ? el("p", { class: "refused" }, say(words.trouble, { say: shown.trouble })) : null,
     row.result?.proof ? el("p", { class: "quiet" },

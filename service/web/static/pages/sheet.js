@@ -6,7 +6,7 @@ import { choose, chosen, withQuery } from "./address.js";
 import { el, fill, setText } from "./elements.js";
 import { FORMS, jointsIn, signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
-import { fixedFrames, framesIn, framesNear, isUpright, risingOf } from "./sheet_frames.js";
+import { fixedFrames, framesIn, framesNear, isUpright, risingOf } from "./frames.js";
 import { notes, readings, sentences, showState, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
 import { travelTable } from "./sheet_travel.js";

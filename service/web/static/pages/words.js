@@ -241,6 +241,7 @@ export const WORDS = {
       "care": "reachable, but",
       "outside-travel": "outside travel",
       "unreachable": "unreachable",
+      "no-approach": "no straight approach",
       "not-found": "not found, not ruled out",
       "refused": "refused",
       "unread": "cannot be read",
@@ -384,6 +385,7 @@ export const WORDS = {
     "drawing": {
       "section": "A–A, section through axis 1",
       "side": "Side view",
+      "end": "Seen along z of the base",
       "plan": "Plan, from above",
       "scale": "Scale {scale}",
       "base": "base",

@@ -1,6 +1,7 @@
-// The frames that are drawn round an arm: which of them stand still, where, as the interface tells, and
-// which are near enough to be drawn. Left out: drawing them.
+// The frames that are drawn round an arm: which of them stand still, where, as the interface tells,
+// which are near enough to be drawn, and which way is up. Left out: drawing them.
 import { ask } from "./ask.js";
+import { column } from "./projection.js";
 
 const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
 const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
@@ -39,11 +40,14 @@ export async function framesIn(arms, names, within, units) {
     name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
 }
 
-/** Return whether an arm stands upright, so that one looks at it in its base. @param {string} arm */
-export async function isUpright(arm) {
-  const found = await framesIn([arm], ["base"], "world");
-  return !found.length || found[0].matrix[2][2] > UPRIGHT;
+/** Return the vertical of the world in an arm's base; the base's own where it is not known. */
+export async function verticalOf(arm) {
+  const [world] = await framesIn([arm], ["world"], "base");
+  return world ? column(world.matrix, 2) : [0, 0, 1];
 }
+
+/** Return whether an arm stands upright, so that one looks at it in its base. @param {string} arm */
+export const isUpright = async (arm) => (await verticalOf(arm))[2] > UPRIGHT;
 
 /**
  * Return the frames beside the base that are near an arm.
