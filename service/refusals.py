@@ -1,4 +1,4 @@
-"""Turns what handlers and the router raise into problem documents.
+"""Turns what handlers and the router raise into problem documents; a wrong page is a page.
 
 Left out: failures nobody foresaw; the envelope answers those.
 """
@@ -17,6 +17,7 @@ from kinematics.errors import KinematicsError
 from kinematics.known_names import way_out_of_unknown
 from service.errors import MethodNotAllowed, ServiceError, TooLarge, UnknownPath, Unparseable
 from service.problems import Problem, problem_of
+from service.web.screens import is_for_people, no_such_page
 from service.wire.answers import json_problem
 
 
@@ -43,6 +44,8 @@ async def _refuse(request: Request, error: Exception) -> Response:
 
 async def _refuse_routing(request: Request, error: Exception) -> Response:
     assert isinstance(error, HTTPException)
+    if error.status_code == HTTPStatus.NOT_FOUND and is_for_people(request):
+        return no_such_page(request)
     return json_problem(problem_of(_meant(request, error)), request.state.request_id)
 
 

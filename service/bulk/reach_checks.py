@@ -36,11 +36,12 @@ async def answer_checks(request: Request) -> Response:
     ------
     ServiceError, KinematicsError, pydantic.ValidationError : the request is refused.
     """
-    is_csv = media_type_of(request) == CSV
-    if is_csv:
-        parameters = known_parameters(request, TABLE_PARAMETERS)
-    else:
+    media_type = media_type_of(request)
+    is_csv = media_type == CSV
+    if media_type == JSON:
         parameters = beside_body(request, TABLE_PARAMETERS, BODY_PARAMETERS)
+    else:
+        parameters = known_parameters(request, TABLE_PARAMETERS)
     accept = request.headers.get("accept", "")
     wanted = answer_format(parameters, accept, "csv" if is_csv else "json", FORMATS)
     stamp = Stamp(next(request.app.state.sequence), wanted_tag(parameters), time_ns() // 1_000_000)

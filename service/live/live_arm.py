@@ -47,7 +47,7 @@ _RATES_FROM = 64
 apart an encoder's last digit would be all."""
 
 _SAY = {
-    STALE: "joint values have stopped: stale after {:.3g} s without any",
+    STALE: "joint values have stopped: stale after {} s without any",
     NOT_FINITE: "the last joint values are not all finite numbers",
     IN_FUTURE: "the last joint values are from the future by the clock of their source",
     TOO_OLD: "the last joint values are old by the clock of their source, or it was set",
@@ -156,7 +156,7 @@ class LiveArm:
             # Whoever begins again may count anew.
             source.order.begin_anew()
         self._recent.clear()
-        self._stand("bad", STALE, _SAY[STALE].format(self.period.stale_after_s))
+        self._stand("bad", STALE, _SAY[STALE].format(_seconds(self.period.stale_after_s)))
         return True
 
     def revised(self, stored: StoredArm[ReadArm]) -> bool:
@@ -272,3 +272,14 @@ class LiveArm:
     def _dropped(self, why: str) -> Taken:
         self.counts[why] += 1
         return Taken(self.standing, dropped=why)
+
+
+def _seconds(duration: float) -> str:
+    """Return seconds as a person says them.
+
+    Examples
+    --------
+    >>> _seconds(0.0547), _seconds(0.3), _seconds(2.04), _seconds(1234.5)
+    ('0.055', '0.3', '2', '1234')
+    """
+    return f"{duration:.2g}" if duration < 10.0 else f"{duration:.0f}"

@@ -66,7 +66,8 @@ router = APIRouter(route_class=ReachRoute)
         "the format of the body, that of `Accept`, or that of `format`, which wins; as CSV one "
         "line for each target, or with `solutions=all` one for each solution: the keys of a flat "
         "answer, then `solution` (which of them), `proof`, `branch`, `position_error`, "
-        "`angle_error`, `reason`, `name`. At most 10 000 targets, and 5 s of estimated work.",
+        "`angle_error`, `reason`, `name`, and `x`, `y`, `z` as asked. At most 10 000 targets, and "
+        "5 s of estimated work.",
         request=ReachRequest,
         answer=ReachAnswers,
         parameters=TABLE_QUERY_PARAMETERS,

@@ -11,6 +11,7 @@ from typing import Any
 
 import numpy as np
 
+from kinematics.findings import NEAR, OUTSIDE_WORKING_TRAVEL, SINGULAR
 from service.storage.ports import Survey, SurveyStorage
 from service.surveys.kinds import Point, Report, ReportTable
 from service.surveys.reach_kept import columns_from
@@ -30,6 +31,12 @@ _FARTHEST = 1e12
 """In whatever unit: targets farther off, or that are no numbers, are refused, and would leave a
 drawing of all no scale."""
 
+_RESERVES = {
+    NEAR: "near singular",
+    SINGULAR: "singular",
+    OUTSIDE_WORKING_TRAVEL: "outside working travel",
+}
+
 _BORDERS = (0.0, 0.02, 0.05, 0.1, 0.2, 0.5)
 """Of margins: the smallest share of travel left."""
 
@@ -40,6 +47,7 @@ class _Seen:
     def __init__(self) -> None:
         self.margins: list[float] = []
         self.tight: list[tuple[float, str, str]] = []
+        self.doubtful: list[tuple[str, str]] = []
         self.without: list[tuple[str, str, str]] = []
         self.points: list[Point] = []
         self._targets = 0
@@ -52,6 +60,7 @@ class _Seen:
         self._targets += len(firsts)
         self.margins += _margins_of(columns, firsts)
         self.tight = sorted(self.tight + _tight_of(columns, firsts, names))[:MOST_TIGHT]
+        self.doubtful = (self.doubtful + _doubtful_of(columns, firsts, names))[:MOST_WITHOUT]
         self.without = (self.without + _without_of(columns, firsts, names))[:MOST_WITHOUT]
         if len(self.points) < MOST_DRAWN:
             verdicts = columns.verdicts.told()
@@ -97,6 +106,12 @@ def _tables(summary: Mapping[str, int], seen: _Seen) -> Sequence[ReportTable]:
             ("target", "margin", "branch"),
             [_tight_line(one) for one in seen.tight],
             _listed_of(len(seen.tight), reached),
+        ),
+        ReportTable(
+            "Reached, but",
+            ("target", "what is to be known of the best posture"),
+            seen.doubtful,
+            f"At most {MOST_WITHOUT} are listed." if len(seen.doubtful) == MOST_WITHOUT else "",
         ),
         ReportTable(
             "Not reached",
@@ -169,6 +184,22 @@ def _tight_of(
         for line in firsts
         if columns.codes[line] < REFUSALS_FROM and np.isfinite(columns.margins[line])
     ]
+
+
+def _doubtful_of(
+    columns: ReachColumns, firsts: Sequence[int], names: Mapping[int, str]
+) -> list[tuple[str, str]]:
+    """Return why a target that is reached is so with a reserve, of each such."""
+    found = []
+    for line in firsts:
+        said = [
+            say
+            for code, say in _RESERVES.items()
+            if code in columns.applying and columns.applying[code][line]
+        ]
+        if said and columns.codes[line] < REFUSALS_FROM:
+            found.append((names[line], ", ".join(said)))
+    return found
 
 
 def _without_of(

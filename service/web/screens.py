@@ -1,7 +1,8 @@
 """The pages on screens: board, sheet and reach page of an arm, and the files they are made of.
 
 Idea: nothing of what they show comes in by here; their modules ask the public interface, as any
-client can. A name of no arm is a page too, with the names most like it.
+client can. A name of no arm is a page too, with the names most like it, and so is an address of
+no page.
 Left out: the frames themselves (page_frames.py); the documentation (pages.py).
 """
 
@@ -91,6 +92,18 @@ async def page_part(request: Request) -> Response:
     return page_answer(request, sent(name), media_type)
 
 
+def is_for_people(request: Request) -> bool:
+    """Return whether a person's browser asks, at an address that is none of the interface."""
+    is_page = request.method in _READ and not request.url.path.startswith("/v1")
+    return is_page and "text/html" in request.headers.get("accept", "")
+
+
+def no_such_page(request: Request) -> Response:
+    """Answer that there is no such page."""
+    why = said("shell.no_page", name=_shown(request.url.path))
+    return _nothing(request, said("shell.unknown_page"), why, "")
+
+
 async def _of_arm(request: Request, page: str) -> Response:
     name, arms = request.path_params["arm"], request.app.state.arms
     try:
@@ -111,7 +124,11 @@ async def _unknown(request: Request, name: str) -> Response:
     links = "".join(f'<li><a href="/arms/{quote(one)}">{escape(one)}</a></li>' for one in like)
     key = "shell.like_it" if like else "shell.nothing_like_it"
     told = f"<p>{escape(said(key))}</p>" + (f"<ul>{links}</ul>" if like else "")
-    values = {"said": escape(said("shell.no_arm", name=_shown(name))), "like": told}
+    return _nothing(request, said("shell.unknown"), said("shell.no_arm", name=_shown(name)), told)
+
+
+def _nothing(request: Request, what: str, why: str, like: str) -> Response:
+    values = {"what": escape(what), "said": escape(why), "like": like}
     bare = _BARE in request.query_params
     content = framed(_text("unknown"), "", values, bare=bare)
     return page_answer(request, content, "text/html", _policy_of(request), status=404)

@@ -169,10 +169,15 @@ async def test_something_else_than_this_service_ends_it(
     assert out.getvalue() == "wash-arm: 0 sent, 0 taken; it answered 403\n"
 
 
-def command(*options: str, **how: Any) -> "subprocess.Popen[str]":
+def hears_interrupts() -> None:
+    """Be interrupted as at a keyboard: who is started in the background inherits deafness."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
+def command(*options: str) -> "subprocess.Popen[str]":
     words = [sys.executable, "-m", "service", "simulate", *options]
-    pipes = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "text": True}
-    return subprocess.Popen(words, cwd=ROOT, **{**pipes, **how})
+    pipes: Any = {"stdout": subprocess.PIPE, "stderr": subprocess.PIPE, "text": True}
+    return subprocess.Popen(words, cwd=ROOT, preexec_fn=hears_interrupts, **pipes)
 
 
 def test_the_command_simulates_until_it_is_interrupted(launch: Launch) -> None:

@@ -1,6 +1,7 @@
 """Surveys over HTTP: taken in, gone on with after kills, cancelled, refused; results to the bit."""
 
 import base64
+import csv
 import hashlib
 import io
 import json
@@ -161,6 +162,43 @@ def test_all_formats_tell_the_same(served: httpx.Client, finished: str) -> None:
         if item["solutions"]:
             joints = row[columns.index("q1") : columns.index("q6") + 1]
             assert joints.tolist() == item["solutions"][0]["joints"]
+
+
+def test_what_was_asked_stands_beside_what_was_found(served: httpx.Client, finished: str) -> None:
+    """As it was typed, to the last digit: planners sort and find by it."""
+    asked_for = [
+        row.get("position") or row["pose"]["position"]
+        for row in question(300)["request"]["targets"]
+    ]
+    told = served.get(f"/v1/surveys/{finished}/result").json()["results"]
+    response = served.get(f"/v1/surveys/{finished}/result", params={"format": "npy"})
+    places = np.load(io.BytesIO(response.content))[:, -3:]
+    rows = list(csv.DictReader(io.StringIO(result(served, finished, "csv").decode(), newline="")))
+    refused = 0
+    for wanted, item, place, row in zip(asked_for, told, places, rows, strict=True):
+        if item["verdict"] is None:
+            refused += 1
+            assert item["position"] is None
+            assert np.isnan(place).all()
+            assert [row[key] for key in "xyz"] == ["", "", ""]
+        else:
+            assert item["position"] == pytest.approx(wanted, rel=0, abs=1e-9)
+            assert item["position"] == place.tolist() == [float(row[key]) for key in "xyz"]
+    assert refused == 1
+
+
+def test_the_report_names_what_is_reached_with_a_reserve(
+    served: httpx.Client, finished: str
+) -> None:
+    page = served.get(f"/v1/surveys/{finished}/report").text
+    section = page.split("Reached, but", 1)[1].split("</table>", 1)[0]
+    items = served.get(f"/v1/surveys/{finished}/result").json()["results"]
+    reserved = {item["name"] for item in items if item["code"] in (1, 2, 3) and item["name"]}
+    assert reserved
+    for item in items:
+        if item["name"]:
+            assert (f"<td>{item['name']}</td>" in section) == (item["name"] in reserved)
+    assert re.search("near singular|singular|outside working travel", section)
 
 
 def test_the_report_is_one_page_with_nothing_outside(served: httpx.Client, finished: str) -> None:

@@ -19,6 +19,7 @@ GIVEN = {
     "caution",
     "version",
     "arm",
+    "what",
     "said",
     "like",
 }

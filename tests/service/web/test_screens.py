@@ -60,6 +60,35 @@ async def test_a_wrong_name_is_a_page(
     assert ('<a href="/arms/press-arm">' in answer.text) == (like is not None)
 
 
+BROWSER = "text/html,application/xhtml+xml,application/xml;q=0.9,*/*;q=0.8"
+
+
+@pytest.mark.parametrize("path", ["/arms", "/arms/press-arm/reach/more", "/board", "/%3Cb%3E"])
+async def test_a_wrong_page_is_a_page_for_people(client: httpx.AsyncClient, path: str) -> None:
+    answer = await client.get(path, headers={"Accept": BROWSER})
+    assert answer.status_code == 404
+    assert answer.headers["content-type"] == "text/html; charset=utf-8"
+    assert answer.headers["content-security-policy"].startswith("default-src 'none'; ")
+    assert "There is no page at" in answer.text
+    assert "<b>" not in answer.text
+    assert '<a href="/">' in answer.text
+
+
+@pytest.mark.parametrize(
+    ("path", "accept"),
+    [("/arms", "*/*"), ("/arms", "application/json"), ("/v1/armz", BROWSER), ("/v2", "")],
+)
+async def test_programs_are_told_of_a_wrong_address_as_of_all_else(
+    client: httpx.AsyncClient, path: str, accept: str
+) -> None:
+    answer = await client.get(path, headers={"Accept": accept})
+    assert answer.status_code == 404
+    assert answer.headers["content-type"] == "application/problem+json"
+    assert answer.json()["code"] == "unknown-path"
+    posted = await client.post(path, headers={"Accept": BROWSER})
+    assert posted.headers["content-type"] == "application/problem+json"
+
+
 async def test_a_wrong_name_is_never_markup(stored: httpx.AsyncClient) -> None:
     answer = await stored.get("/arms/%3Cimg src=x onerror=alert(1)%3E%7B%7Bshell.name%7D%7D")
     assert answer.status_code == 404

@@ -63,6 +63,7 @@ function draw(table) {
   const first = table.isWhole ? 0 : table.page * PAGE;
   const part = table.isWhole ? shown : shown.slice(first, first + PAGE);
   const heads = ["number", "name", "place", "verdict", "travel_left", "why"];
+  const places = aligned(part.map((at) => table.rows[at].place?.position ?? []), table.units);
   const focused = place.contains(document.activeElement) ? document.activeElement.dataset.at : undefined;
   fill(
     place, counts(table),
@@ -70,7 +71,7 @@ function draw(table) {
       el("thead", { role: "rowgroup" }, el("tr", { role: "row" }, heads.map((head) => el(
         "th", { scope: "col", role: "columnheader", class: head },
         head === "place" ? placeHead(table) : words[head])))),
-      el("tbody", { role: "rowgroup" }, part.map((at) => line(table, at)))),
+      el("tbody", { role: "rowgroup" }, part.map((at, i) => line(table, at, places[i])))),
     shown.length > PAGE ? pages(table, first, shown.length) : null,
   );
   // What is drawn anew keeps the focus.
@@ -112,9 +113,15 @@ export function sign(kind) {
 export const nameOf = (row) => row.name ?? row.place?.name
   ?? say(WORDS.reach.list.line, { line: row.place?.line ?? row.line });
 
-function line(table, at) {
-  const { units } = table;
-  const row = table.rows[at], { place, result } = row;
+/** Positions as texts in which x stands below x, y below y, z below z. */
+function aligned(positions, units) {
+  const texts = positions.map((position) => position.map((one) => length(one, units)));
+  const wide = [0, 1, 2].map((i) => Math.max(0, ...texts.map((one) => one[i]?.length ?? 0)));
+  return texts.map((one) => one.map((text, i) => text.padStart(wide[i])).join("  "));
+}
+
+function line(table, at, place) {
+  const row = table.rows[at], { result } = row;
   const kind = kindOf(row), why = said(row), label = nameOf(row);
   const margin = result?.solutions?.[0]?.margin;
   const isChosen = at === table.at;
@@ -129,7 +136,7 @@ function line(table, at) {
     onclick: () => choose(table, at, true), "aria-current": isChosen ? "true" : null },
     cell("number", at + 1),
     el("th", { role: "rowheader", scope: "row", class: "name" }, key),
-    cell("place figures", place ? place.position.map((one) => length(one, units)).join("  ") : ""),
+    cell("place figures", place),
     cell("verdict", sign(kind), el("b", {}, verdictOf(row))),
     cell("travel_left figures", margin === undefined ? "" : percent(margin)),
     cell("why", why));

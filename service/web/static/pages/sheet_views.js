@@ -212,7 +212,9 @@ function paintFree(state) {
     drawArm(one, put, scene, { keep: furniture(one, "free") });
   });
   corner(one, looked, scene);
-  const words = say(WORDS.sheet.turned, { yaw: number(state.yaw, 0), pitch: number(state.pitch, 0) });
+  const turned = { yaw: number(state.yaw, 0), pitch: number(state.pitch, 0) };
+  // Paper cannot be dragged.
+  const words = say(WORDS.sheet.turned, turned) + (matchMedia("print").matches ? "" : WORDS.sheet.turn_it);
   one.letters(words, one.size()[0] - 12, one.size()[1] - 12, { px: 11, colour: "quiet", align: "right" });
 }
 
