@@ -1,6 +1,7 @@
-"""Turns what handlers and the router raise into problem documents; a wrong page is a page.
+"""Turns what handlers and the router raise into problem documents.
 
-Left out: failures nobody foresaw; the envelope answers those.
+An address of nothing is told to a person's browser as a page. Left out: failures nobody foresaw;
+the envelope answers those.
 """
 
 from http import HTTPStatus
@@ -44,9 +45,14 @@ async def _refuse(request: Request, error: Exception) -> Response:
 
 async def _refuse_routing(request: Request, error: Exception) -> Response:
     assert isinstance(error, HTTPException)
-    if error.status_code == HTTPStatus.NOT_FOUND and is_for_people(request):
-        return no_such_page(request)
-    return json_problem(problem_of(_meant(request, error)), request.state.request_id)
+    if error.status_code != HTTPStatus.NOT_FOUND:
+        return json_problem(problem_of(_meant(request, error)), request.state.request_id)
+    if is_for_people(request):
+        answer = no_such_page(request)
+    else:
+        answer = json_problem(problem_of(_meant(request, error)), request.state.request_id)
+    answer.headers.add_vary_header("Accept")
+    return answer
 
 
 def _meant(request: Request, error: HTTPException) -> Exception:

@@ -92,7 +92,7 @@ class LiveArm:
         self.counts: Counter[str] = Counter()
         self.looked_at_s = float("-inf")
         self.heard_s = float("-inf")
-        self.heard_from = ""
+        self.heard_from: str | None = None
         self._sources: dict[str, Source] = {}
         self._recent: deque[Sample] = deque(maxlen=_RATES_FROM)
         self._is_real = False

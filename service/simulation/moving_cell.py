@@ -153,7 +153,7 @@ class MovingCell:
     def _is_moved_by_others(self, name: str) -> bool:
         """Return whether another input has an arm at present: two would tear at it."""
         arm = self.live.get(name)
-        if arm is None or not arm.heard_from or arm.standing.reason == STALE:
+        if arm is None or arm.heard_from is None or arm.standing.reason == STALE:
             return False
         # Who sent last, not whose values stand: the first of another input are doubted as a leap.
         return arm.heard_from != SOURCE

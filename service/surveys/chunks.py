@@ -12,7 +12,8 @@ from service.storage.ports import GivenPiece, SurveyStorage
 CHUNK_S = 2.0
 """Of work in a chunk. Shorter, and its way to the process and into the store, which low priority
 cannot keep from those who ask for a pose, is taken more often than they notice; longer, and a
-worker that dies loses more and progress stands still for long."""
+worker that dies loses more and progress stands still for long. The price: what runs when a survey
+is cancelled is mostly not waited for, and processes take seconds to start anew."""
 
 MOST_IN_CHUNK = 64
 """Pieces; a chunk is one write to the store, and what a worker that dies has to do again."""

@@ -72,13 +72,15 @@ async def reach_page(request: Request) -> Response:
 
 
 @router.api_route("/arms/{arm}/", methods=_READ)
+async def sheet_with_stroke(request: Request) -> Response:
+    """Answer where the sheet is whose address was typed with a stroke at its end."""
+    return _without_stroke(request, "")
+
+
 @router.api_route("/arms/{arm}/reach/", methods=_READ)
-async def with_stroke(request: Request) -> Response:
-    """Answer where the page of an arm is whose address was typed with a stroke at its end."""
-    name = quote(request.path_params["arm"], safe="")
-    page = "/reach" if request.url.path.endswith("/reach/") else ""
-    query = f"?{request.url.query}" if request.url.query else ""
-    return RedirectResponse(f"/arms/{name}{page}{query}", status_code=308)
+async def reach_page_with_stroke(request: Request) -> Response:
+    """Answer where the reach page is whose address was typed with a stroke at its end."""
+    return _without_stroke(request, "/reach")
 
 
 @router.api_route("/pages/{name}", methods=_READ)
@@ -102,6 +104,12 @@ def no_such_page(request: Request) -> Response:
     """Answer that there is no such page."""
     why = said("shell.no_page", name=_shown(request.url.path))
     return _nothing(request, said("shell.unknown_page"), why, "")
+
+
+def _without_stroke(request: Request, page: str) -> Response:
+    name = quote(request.path_params["arm"], safe="")
+    query = f"?{request.url.query}" if request.url.query else ""
+    return RedirectResponse(f"/arms/{name}{page}{query}", status_code=308)
 
 
 async def _of_arm(request: Request, page: str) -> Response:

@@ -79,10 +79,12 @@ class ResultItem(Open):
     """One target: verdict, what it rests on, and solutions, the best first.
 
     `reason` as in reach checks. A target that could not be used has a `problem`, whose `pointer`
-    leads into the target, and `reason` with its sentence.
+    leads into the target, and `reason` with its sentence. `position` is what was asked for, in
+    units and frame of the survey; null where that cannot be used, or was not kept in former days.
     """
 
     name: str | None
+    position: list[float] | None
     ok: bool
     code: int
     verdict: str | None

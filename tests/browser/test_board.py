@@ -230,6 +230,8 @@ def test_what_stands_below_never_runs_into_its_neighbour(board: Screen) -> None:
       });
     """)
     assert len(fields) >= 3 * len(HALL) - 3
+    told = "[...document.querySelectorAll('.card .block dd[title]')].map((one) => one.title)"
+    assert len(board.run(f"return {told}.filter((one) => one.length > 3)")) >= 8
     assert {tuple(one) for one in fields} == {(True, "hidden", True)}
 
 
@@ -240,7 +242,7 @@ def test_values_that_were_all_refused_are_not_told_as_none(board: Screen) -> Non
     """
     said = of("board_words.js", body, board)
     assert (said["state"], said["word"]) == ("bad", "NO POSE")
-    assert said["sentence"] == "Values came; none could be relied on."
+    assert said["sentence"] == "Of the values that came none can be relied on."
 
 
 def _url(screen: Screen) -> str:

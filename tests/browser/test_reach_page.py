@@ -384,8 +384,8 @@ def test_views_are_right_handed_and_upright_however_a_base_lies(page: Screen) ->
         const z = 1 - (2 * k + 1) / 500, turn = 2.399963 * k, r = Math.sqrt(1 - z * z);
         const vertical = [r * Math.cos(turn), r * Math.sin(turn), z];
         for (const slides of [true, false]) for (const view of all.viewsOf({ slides, vertical })) {
-          const { kind, across, up, toward, looks, cut } = view;
-          found.push({ kind, seen: dot(toward, vertical), up: dot(up, vertical),
+          const { kind, title, across, up, toward, looks, cut } = view;
+          found.push({ kind, title, seen: dot(toward, vertical), up: dot(up, vertical),
             off: Math.hypot(...cross(across, up).map((one, i) => one - toward[i])),
             // The plan's arrows are square to the cut, and level with the plan.
             arrows: looks ? Math.abs(dot(looks, cut)) : 0 });
@@ -395,20 +395,67 @@ def test_views_are_right_handed_and_upright_however_a_base_lies(page: Screen) ->
     """
     views = of("reach_views.js", body, page)
     assert len(views) == 2000
+    assert all(
+        one["title"] != other["title"] for one, other in zip(views[::2], views[1::2], strict=True)
+    )
     assert max(view["off"] for view in views) < 1e-9
     assert max(view["arrows"] for view in views) < 1e-9
-    elevations = [view for view in views if abs(view["seen"]) <= 0.7]
+    elevations = [view for view in views if abs(view["seen"]) <= 0.71]
     assert len(elevations) > 500
     assert min(view["up"] for view in elevations) > 0.5
-    flat = [view for view in views if abs(view["seen"]) > 0.7 and view["kind"] != "section"]
+    flat = [view for view in views if abs(view["seen"]) > 0.71 and view["kind"] != "section"]
     assert len(flat) > 300
     assert min(view["seen"] for view in flat) > 0.7
 
 
-def test_which_way_is_up_is_told_by_the_base(page: Screen, demo: ServerProcess) -> None:
-    body = "return Promise.all(['housing-loader', 'line-runner', 'none'].map(all.verticalOf))"
-    stands, lies, unknown = of("frames.js", body, page)
-    assert (stands, lies, unknown) == ([0, 0, 1], [1, 0, 0], [0, 0, 1])
+def test_views_are_called_what_they_show(page: Screen) -> None:
+    body = """
+      // An axis 1 that lies, on an upright base; and a base at 45 deg, of a slide.
+      const plan = { directions: [[0, 1, 0], [0, 0, 1]], curves: [] };
+      const section = { kind: "section", directions: [[0, 1, 0], [1, 0, 0]], curves: [] };
+      const axis = { point: [0, 0, 0], direction: [1, 0, 0] };
+      const leaning = { vertical: [0, 0, 1], envelope: { axis, travel: { section, plan } } };
+      const half = { slides: true, vertical: [0, -Math.SQRT1_2, Math.SQRT1_2] };
+      return [leaning, half].map((one) => all.viewsOf(one).map(({ title }) => title));
+    """
+    leaning, half = of("reach_views.js", body, page)
+    assert leaning == ["section", "end_axis"]
+    assert len({*half}) == 2
+
+
+def test_which_way_is_up_is_told_by_the_base(page: Screen) -> None:
+    body = """
+      const ask = window.fetch, [held] = [new Response("", { status: 503 })];
+      window.fetch = () => { window.fetch = ask; return Promise.resolve(held); };
+      const late = await all.verticalOf("line-runner");
+      const told = await Promise.all(["housing-loader", "line-runner", "none"].map(all.verticalOf));
+      return [late, ...told];
+    """
+    assert of("frames.js", body, page) == [[1, 0, 0], [0, 0, 1], [1, 0, 0], [0, 0, 1]]
+
+
+def test_frames_are_those_of_the_revision_that_is_looked_at(page: Screen) -> None:
+    body = """
+      const ask = window.fetch, asked = [];
+      window.fetch = (path, how) => { asked.push(path); return ask(path, how); };
+      const desk = all.postures({ name: "housing-loader", revision: 1 });
+      await desk.frameInBase({ frame: "world", units: "mm-deg", revision: 7 });
+      await desk.frameInBase({ frame: "world", units: "mm-deg" });
+      window.fetch = ask;
+      return asked.map((path) => new URL(path, location).searchParams.get("revision"));
+    """
+    assert of("reach_postures.js", body, page) == ["7", "1"]
+
+
+def test_a_no_that_nothing_proves_stays_open_on_the_way_too(page: Screen) -> None:
+    body = """
+      const told = (verdict, stage) => all.verdictOf({ result: { verdict, reason: { stage } } });
+      return [told("not-found", "approach"), told("unreachable", "approach"),
+        told("unreachable", "links"), told("outside-travel", "approach")];
+    """
+    assert of("reach_list.js", body, page) == [
+        *("not found, not ruled out", "no straight approach", "unreachable", "outside travel")
+    ]
 
 
 def test_the_scale_on_paper_is_that_of_the_drawing(page: Screen) -> None:

@@ -150,11 +150,14 @@ def test_a_revision_stored_meanwhile_is_shown_whole(screen: Screen, demo: Server
     document["tools"] = {**PATTERN["tools"], **tools}
     headers = {"If-Match": stored.headers["etag"]}
     assert httpx.put(f"{demo.url}/v1/arms/{name}", json=document, headers=headers).is_success
+    screen.requests()
     screen.run("document.querySelectorAll('#travel button')[1].click()")
     screen.until(f"{table}.includes('123.456') && {table}.includes('probe-tip')")
     screen.until("document.querySelectorAll('#revisions tbody th').length >= 2")
     assert screen.run("return document.querySelector('#tool option[value=probe-tip]') !== null")
     assert screen.run("return document.getElementById('revision').innerText") == "2"
+    # What stands round the arm may have moved with it.
+    assert [one for one in screen.requests() if one.endswith("/v1/frames")]
     # What was chosen asks once, not once for each time the choices were filled.
     screen.requests()
     screen.run(

@@ -156,11 +156,12 @@ def test_reports_say_what_was_found(opened: OpenStorage, arms: Arms[ReadArm]) ->
     store = opened.surveys
     checks = made(store, arms, reach_checks.ReachChecks(), {"arm": "two-turns", "targets": TARGETS})
     report: Report = SURVEY_KINDS["reach-checks"].reported(checks, store)
-    verdicts, _, tight, without = report.tables
+    verdicts, _, tight, doubtful, without = report.tables
     assert ("targets", 4, "100.0 %") in verdicts.lines
     assert {line[0] for line in tight.lines} | {line[0] for line in without.lines} == {
         *("near", "far", "no. 3", "<b>&")
     }
+    assert doubtful.lines == []
     assert [point.position for point in report.points] == [
         tuple(map(float, row["position"]))  # type: ignore[call-overload]
         for row in TARGETS

@@ -41,6 +41,11 @@ async def test_a_stroke_at_the_end_leads_to_the_page(stored: httpx.AsyncClient, 
     assert answer.headers["location"] == f"{page}?frame=a%26b&bare"
 
 
+@pytest.mark.parametrize("page", ["/arms/reach", "/arms/reach/reach"])
+async def test_an_arm_may_be_called_as_its_page(client: httpx.AsyncClient, page: str) -> None:
+    assert (await client.get(f"{page}/")).headers["location"] == page
+
+
 async def test_a_stroke_leads_to_no_other_host(client: httpx.AsyncClient) -> None:
     answer = await client.get("/arms/%5C%0D%0Aelse.example/")
     assert answer.headers["location"] == "/arms/%5C%0D%0Aelse.example"
@@ -72,6 +77,7 @@ async def test_a_wrong_page_is_a_page_for_people(client: httpx.AsyncClient, path
     assert "There is no page at" in answer.text
     assert "<b>" not in answer.text
     assert '<a href="/">' in answer.text
+    assert "Accept" in answer.headers["vary"].split(", ")
 
 
 @pytest.mark.parametrize(
@@ -85,6 +91,7 @@ async def test_programs_are_told_of_a_wrong_address_as_of_all_else(
     assert answer.status_code == 404
     assert answer.headers["content-type"] == "application/problem+json"
     assert answer.json()["code"] == "unknown-path"
+    assert answer.headers["vary"] == "Accept"
     posted = await client.post(path, headers={"Accept": BROWSER})
     assert posted.headers["content-type"] == "application/problem+json"
 

@@ -39,6 +39,9 @@ export async function ask(path, { method = "GET", body, headers = {}, signal } =
   }
 }
 
+/** Whether what was asked may well be answered later. @param {Answer} answer */
+export const isBusy = ({ status }) => [0, 429, 503].includes(status);
+
 /**
  * Follow a stream of events until stop() is called. After a break it is asked for anew from the newest
  * on: a server that was started again counts afresh, and what it never says again must not stand.

@@ -72,6 +72,7 @@ function write(parts, said) {
   setText(parts.note, hasPose || !aged ? "" : say(WORDS.board.last, { age: aged }));
   setText(parts.tool, said.tool || WORDS.shell.none);
   setAttribute(parts.tool, "title", said.tool || null);
+  setAttribute(parts.frame, "title", said.frame || null);
   setText(parts.frame, said.frame || WORDS.shell.none);
   setText(parts.old, aged || WORDS.shell.none);
 }

@@ -1,8 +1,9 @@
 // The frames that are drawn round an arm: which of them stand still, where, as the interface tells,
 // which are near enough to be drawn, and which way is up. Left out: drawing them.
-import { ask } from "./ask.js";
+import { ask, isBusy } from "./ask.js";
 import { column } from "./projection.js";
 
+const AGAIN_MS = 1000;
 const UPRIGHT = 0.7; // z of the base within 45 deg of the world's
 const NEAR_SHARE = 0.8; // Frames farther off than so many sizes of the arm would make it small.
 
@@ -31,18 +32,27 @@ export function fixedFrames(shared, arm) {
  * @returns {Promise<{name: string, matrix: number[][]}[]>}
  */
 export async function framesIn(arms, names, within, units) {
+  return posesOf(names, await asked(arms, names, within, units));
+}
+
+function asked(arms, names, within, units) {
   const known = (name) => (name === "world" ? name : `${arms[0]}.${name}`);
   const find = names.map((name) => ({ of: known(name), in: known(within) }));
   const body = { arms: arms.map((arm) => ({ arm })), find, form: "matrix", units: units || undefined };
-  const { ok, data } = await ask("/v1/frames", { method: "POST", body });
+  return ask("/v1/frames", { method: "POST", body });
+}
+
+function posesOf(names, { ok, data }) {
   if (!ok) return [];
   return data.answers.map(({ pose }, i) => ({
     name: names[i], matrix: pose.orientation.values.map((row, j) => [...row, pose.position[j]]) }));
 }
 
-/** Return the vertical of the world in an arm's base; the base's own where it is not known. */
+/** Return the vertical of the world in an arm's base, as soon as it is told; its own z if it never is. */
 export async function verticalOf(arm) {
-  const [world] = await framesIn([arm], ["world"], "base");
+  const answer = await asked([arm], ["world"], "base");
+  if (isBusy(answer)) return new Promise((done) => setTimeout(() => done(verticalOf(arm)), AGAIN_MS));
+  const [world] = posesOf(["world"], answer);
   return world ? column(world.matrix, 2) : [0, 0, 1];
 }
 

@@ -36,14 +36,14 @@ const page = {
 const sent = `armspan-reach-sent-${page.name}`;
 
 async function start() {
-  const [answer, vertical] = await Promise.all([
-    ask(`/v1/arms/${encodeURIComponent(page.name)}`), verticalOf(page.name)]);
+  page.vertical ??= verticalOf(page.name);
+  const answer = await ask(`/v1/arms/${encodeURIComponent(page.name)}`);
   if (!answer.ok) {
     fill(place("reading"), refused(answer.problem.detail));
     return setTimeout(start, AGAIN_MS);
   }
   page.arm = answer.data;
-  fit(vertical);
+  fit(await page.vertical);
   const { survey } = chosen({ survey: "" });
   const isOwn = survey && recall(sent) === survey;
   page.input.begin();
@@ -287,7 +287,7 @@ function surveyFound({ id, request, arm, units }, found) {
     // Known is where, not how turned: nothing more can be asked about such a place.
     page.rows = found.map((result, i) => ({
       place: result.position && { position: result.position, line: i + 1 },
-      line: i + 1, name: result.name, result, question, isWhole: true }));
+      line: i + 1, name: result.name, result, question, method: "", isWhole: true }));
     shown(0);
   }
   return true;

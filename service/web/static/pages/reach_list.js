@@ -30,8 +30,8 @@ export function kindOf({ fault, refused, result }) {
 
 /** What a row is told by, in words: a place that is reached, but not as it is to be come to, is no far one. */
 export function verdictOf(row) {
-  const kind = row.result?.reason?.stage === "approach" ? "no-approach" : kindOf(row);
-  return WORDS.reach.verdicts[kind] ?? kind;
+  const kind = kindOf(row), isWay = row.result?.reason?.stage === "approach";
+  return WORDS.reach.verdicts[isWay && kind === "unreachable" ? "no-approach" : kind] ?? kind;
 }
 
 /**

@@ -3,11 +3,10 @@
 // the service seconds, so it is asked last. Left out: drawing it, and whose turn it is (reach_turns.js).
 
 import { withQuery } from "./address.js";
-import { ask } from "./ask.js";
+import { ask, isBusy } from "./ask.js";
 import { moved } from "./projection.js";
 
 const MOST_KEPT = 300;
-const BUSY = new Set([0, 429, 503]);
 const AGAIN_MS = 5000;
 
 /**
@@ -35,9 +34,9 @@ export function postures({ name, revision }) {
         q, tool, units, frame: "base", outline: 1, form: "matrix", revision: own });
       return told?.poses[0].outline ?? null;
     },
-    async frameInBase({ frame, units }) {
+    async frameInBase({ frame, units, revision: own = revision }) {
       if (frame === "base") return (point) => point;
-      const told = await get("/relation", { of: frame, in: "base", units, form: "matrix" });
+      const told = await get("/relation", { of: frame, in: "base", units, form: "matrix", revision: own });
       if (!told) return null;
       const { position, orientation } = told.answers[0].pose;
       const axes = [0, 1, 2].map((j) => orientation.values.map((row) => row[j]));
@@ -57,10 +56,10 @@ export function envelopes(arm, turn, changed) {
   const known = new Map();
   let now = "";
   const wait = (key, question) => turn.last(async (signal) => {
-    const { ok, status, data, problem } = await envelope(arm, question, signal);
+    const answer = await envelope(arm, question, signal), { ok, data, problem } = answer;
     if (signal.aborted) return;
     if (ok) known.set(key, { state: "here", data, say: "" });
-    else if (!BUSY.has(status)) known.set(key, { state: "refused", data: null, say: problem.detail });
+    else if (!isBusy(answer)) known.set(key, { state: "refused", data: null, say: problem.detail });
     else setTimeout(() => key === now && wait(key, question), AGAIN_MS);
     changed();
   });

@@ -5,7 +5,8 @@
 
 import { column, cross, dot, moved, unit } from "./projection.js";
 
-const LEVEL = 0.7; // Within 45 deg of the vertical one looks from above or below.
+// Within 45 deg of the vertical one looks from above or below; never in both views.
+const LEVEL = 0.71;
 const less = (a) => a.map((one) => -one);
 
 /**
@@ -43,7 +44,7 @@ function held(view, vertical) {
   }
   const turned = [[right, ahead], [ahead, less(right)], [less(right), less(ahead)], [less(ahead), right]];
   const rising = turned.map(([, up]) => dot(up, vertical)), upright = turned[rising.indexOf(Math.max(...rising))];
-  return named(view, isSection ? "section" : view.kind === "side" ? "side" : "end", [...upright, toward]);
+  return named(view, isSection ? "section" : view.kind === "side" ? "side" : view.axis ? "end_axis" : "end", [...upright, toward]);
 }
 
 const named = (view, title, [across, up, toward]) => ({ ...view, title, across, up, toward });

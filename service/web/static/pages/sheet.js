@@ -32,11 +32,9 @@ const shown = { arms: [arm] };
 
 async function start() {
   begin();
-  for (const name of ["elevation", "plan", "free"]) {
-    shown[name] = document.querySelector(`[data-view=${name}]`);
-  }
-  shown.views = views({ elevation: shown.elevation, plan: shown.plan, free: shown.free },
-    (scale) => setText(place("scale"), scale));
+  const [elevation, plan, free] = ["elevation", "plan", "free"].map((name) =>
+    document.querySelector(`[data-view=${name}]`));
+  shown.views = views({ elevation, plan, free }, (scale) => setText(place("scale"), scale));
   shown.travel = travelTable(place("travel"), place("step"), { values: byHand, joint: point });
   shown.readings = readings(place("readings"));
   shown.notes = notes(place("says"));
@@ -47,8 +45,8 @@ async function start() {
 }
 
 async function load() {
-  const asked = [ask(path), isUpright(arm)];
-  const stored = await asked[0];
+  state.upright ??= isUpright(arm);
+  const stored = await ask(path);
   if (stored.problem?.code === "no-answer") {
     gone();
     return setTimeout(load, AGAIN_MS);
@@ -56,7 +54,7 @@ async function load() {
   if (!stored.ok) return refused(stored.problem);
   back();
   state.stored = stored.data;
-  await fillChoices(asked[1]);
+  await fillChoices();
   fitModes();
   await anew();
   showStored();
@@ -73,15 +71,17 @@ function showStored() {
 async function renew() {
   state.renews = true;
   const { ok, data } = await ask(path);
-  state.renews = false;
-  if (!ok) return;
-  state.stored = data;
-  await fillChoices(true);
-  showStored();
+  if (ok) {
+    state.stored = data;
+    await fillChoices();
+    askFrames();
+    showStored();
+  }
+  setTimeout(() => (state.renews = false), ok ? 0 : AGAIN_MS);
 }
 
 /** The choices of the title block; what is not said takes what the arm says, and a z that is upright. */
-async function fillChoices(upright) {
+async function fillChoices() {
   const { arm: told, units } = state.stored, { said } = state;
   const tools = Object.keys(told.tools ?? {});
   said.units ||= units;
@@ -92,7 +92,7 @@ async function fillChoices(upright) {
   const fixed = fixedFrames(shared, arm);
   shown.arms = [arm, ...fixed.arms];
   shown.drawn = ["base", "world", ...new Set([...own, ...fixed.names])];
-  if (!said.frame) said.frame = (await upright) ? "base" : "world";
+  if (!said.frame) said.frame = (await state.upright) ? "base" : "world";
   fillSelect("tool", [...tools, "flange"]);
   fillSelect("frame", ["base", "world", ...own, ...all]);
   fillSelect("form", [...FORMS, "matrix"]);
@@ -118,17 +118,11 @@ const question = () => (({ tool, frame, form, units }) => ({ tool, frame, form, 
 /** Ask everything again, in the words that are chosen now. */
 async function anew() {
   state.stop();
-  const turn = (state.turn += 1); // What was asked in words chosen before is not drawn any more.
-  Object.assign(state, { trail: [], frames: [] });
+  state.turn += 1; // What was asked in words chosen before is not drawn any more.
+  Object.assign(state, { trail: [], frames: [], heard: false });
   shown.views.forget();
-  const asked = question(), others = shown.drawn.filter((name) => name !== asked.frame);
-  framesIn(shown.arms, others, asked.frame, asked.units).then((found) => {
-    if (turn !== state.turn) return;
-    state.frames = found;
-    draw();
-  });
-  state.heard = false;
-  state.stop = follow(withQuery(`${path}/live/stream`, { ...asked, outline: 1, rate: RATE }), {
+  askFrames();
+  state.stop = follow(withQuery(`${path}/live/stream`, { ...question(), outline: 1, rate: RATE }), {
     event: heard, gone, refused,
     back() {
       back();
@@ -136,6 +130,14 @@ async function anew() {
     },
   });
   if (!state.isLive) askByHand();
+}
+
+async function askFrames() {
+  const { turn } = state, { frame, units } = question();
+  const found = await framesIn(shown.arms, shown.drawn.filter((name) => name !== frame), frame, units);
+  if (turn !== state.turn) return;
+  state.frames = found;
+  draw();
 }
 
 function heard(name, data) {
