@@ -4,6 +4,7 @@ Idea: between a page and its server answers are held until the test lets them go
 when the page has read them: nothing here depends on how long anything takes. Left out: streams.
 """
 
+import json
 from collections.abc import Iterator
 from typing import Any
 
@@ -177,6 +178,21 @@ def test_a_sheet_whose_first_question_got_no_answer_asks_again(
     between.until(READY)
     between.until(f"{READINGS}.length > 20")
     assert "gone since" not in between.text()
+
+
+def test_a_pose_that_is_not_of_the_typed_values_is_not_shown_as_theirs(
+    between: Screen, hall: ServerProcess
+) -> None:
+    between.open(f"{hall.url}/arms/near?q=0,-60,90,0,30,0", Look(1280, 800), ready=READY)
+    said = "document.getElementById('state').innerText.toLowerCase()"
+    between.until(f"{said}.includes('by hand')")
+    shown = between.run(f"return {READINGS}")
+    between.run("window.silent = '/pose'")
+    between.run("document.querySelectorAll('#travel button')[3].click()")
+    between.until(f"!{said}.includes('by hand')")
+    between.run("window.silent = null")
+    # It is asked again until it is answered.
+    between.until(f"{said}.includes('by hand') && {READINGS} !== {json.dumps(shown)}")
 
 
 def test_what_was_asked_in_units_chosen_before_is_not_drawn(

@@ -175,6 +175,9 @@ def test_cards_fill_the_screen_and_never_more(ask: Callable[..., Any]) -> None:
             assert told["columns"] == {1896: 6, 1248: 4, 366: 1}[width]
     assert ask("board_fit.js", body, [(12, 1896, 964)])[0]["columns"] == 4
     assert ask("board_fit.js", "return all.cardsFitted(12, 1896, 964, 6).columns") == 6
+    # As many as have room for their words, however many are asked for.
+    assert ask("board_fit.js", "return all.cardsFitted(12, 1248, 684, 12).columns") == 5
+    assert ask("board_fit.js", "return all.cardsFitted(12, 200, 684, 12).columns") == 1
 
 
 @pytest.mark.parametrize(

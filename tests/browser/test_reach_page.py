@@ -337,10 +337,47 @@ def test_a_survey_with_its_report(page: Screen, demo: ServerProcess, judged: lis
     assert page.run(places) == typed
     assert "900.0" in typed[0]
     page.until("document.querySelector('#target table.joints')")
+    assert re.search(r"The best of [2-9]; a survey keeps no others", page.text())
     # All that is known of them is known: none is asked about again.
     asked = [httpx.URL(one).path for one in page.requests()]
     assert "/v1/reach/checks" not in asked[asked.index(f"/arms/{ARM}/reach") :]
     assert "Method:" not in page.text(), "a survey kept none"
+
+    # Below another arm's name it would be taken for that one's.
+    page.open(f"{demo.url}/arms/line-runner/reach{found}", Look(1280, 800), ready=READY)
+    page.until("document.querySelector('#survey .refused')")
+    link = page.run("return document.querySelector('#survey .refused a').href")
+    assert link.endswith(f"/arms/{ARM}/reach{found}")
+    assert verdicts(page) == []
+
+
+def test_what_would_come_nearest_is_told_for_what_it_is(page: Screen) -> None:
+    paste(page, lines(PLACES))
+    page.until(ANSWERED)
+    near = "document.querySelector('#target').innerText.includes('Nearest')"
+    told = {}
+    for number, name in enumerate(PLACES):
+        page.run(f"document.querySelectorAll('#table .choice')[{number}].click()")
+        page.until(f"document.querySelector('#target h2').innerText.includes('{name}')")
+        told[name] = page.run(f"return {near}")
+    # Where travel alone is in the way the nearest place is the place itself.
+    assert told == {"bench": False, "shelf": True, "behind": False}
+    page.run("document.querySelectorAll('#table .choice')[1].click()")
+    page.until("/links allow, travel not looked at:.*xyz-fixed/.test(document.body.innerText)")
+
+
+def test_what_lies_beyond_a_drawing_is_pointed_at(page: Screen) -> None:
+    body = """
+      const frame = { left: 0, top: 0, right: 200, bottom: 100 };
+      const places = [[50, 50, 7], [900, 50, 7], [100, -80, 7], [900, 1e9, 7]];
+      return places.map((at) => all.seenAt(at, frame));
+    """
+    inside, right, above, far = of("reach_signs.js", body, page)
+    assert inside == {"on": [50, 50], "way": None}
+    assert right == {"on": [178, 50], "way": [1, 0]}
+    assert above == {"on": [100, 22], "way": [0, -1]}
+    assert far["way"] == pytest.approx([0, 1], abs=1e-5)
+    assert all(0 < value < most for value, most in zip(far["on"], (200, 100), strict=True))
 
 
 def test_what_a_survey_keeps_says_why_a_yes_has_a_but(page: Screen) -> None:

@@ -1,6 +1,7 @@
 // Questions to the service, and streams of events that come back after any break.
 // A stream is read by fetch, not by EventSource: so its comments count as signs of life, and a refusal
 // can be read. Left out: what is said about it on the page (shell.js).
+import { signs } from "./numbers.js";
 import { WORDS } from "./words.js";
 
 const SILENT_MS = 10000; // The server sends a comment every 5 s: two are missing.
@@ -38,6 +39,10 @@ export async function ask(path, { method = "GET", body, headers = {}, signal } =
     return { ok: false, status: 0, data: null, problem, headers: null };
   }
 }
+
+/** What a problem says, and the way out. @param {{detail: string, errors: object[]}} problem */
+export const refusal = ({ detail, errors = [] }) =>
+  signs([detail, ...errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; "));
 
 /** Whether what was asked may well be answered later. @param {Answer} answer */
 export const isBusy = ({ status }) => [0, 429, 503].includes(status);

@@ -23,6 +23,8 @@ const MOST_AIR = 1.2; // Cards fill the screen, unless it is nearly empty.
  * @returns {object} columns; figure, words: sizes of letters; high
  */
 export function cardsFitted(count, width, height, asked = 0) {
+  // More than have room for words would show none.
+  asked = Math.min(asked, Math.max(Math.floor((width + GAP_PX) / (LEAST_CARD_PX + GAP_PX)), 1));
   const ways = asked ? [asked] : Array.from({ length: Math.max(count, 2) }, (_, i) => i + 1);
   let best = null;
   for (const columns of ways) {

@@ -26,6 +26,10 @@ export function svg(tag, attributes = {}, ...children) {
   return dressed(document.createElementNS(SVG, tag), attributes, children);
 }
 
+/** What can be chosen, in the words it is said with, one of them chosen now. */
+export const options = (values, now) =>
+  values.map((one) => el("option", { value: one, selected: one === now }, one));
+
 /**
  * Write a text only where it is another one: what stays costs no layout.
  */

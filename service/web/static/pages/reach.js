@@ -3,10 +3,10 @@
 // than what stands beside it; long ones are a survey, begun by a key. Left out: all parts (reach_*).
 
 import { choose, chosen } from "./address.js";
-import { ask } from "./ask.js";
+import { ask, refusal } from "./ask.js";
 import { el, fill } from "./elements.js";
 import { signs, unitsOf } from "./numbers.js";
-import { checkBody, refusal, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
+import { checkBody, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
 import { download, fileKey, keep, lineOf, listInput, recall } from "./reach_input.js";
 import { placesTable } from "./reach_list.js";
 import { pictureDesk } from "./reach_picture.js";
@@ -65,7 +65,7 @@ function fit(vertical) {
   page.picture = pictureDesk(looked, page.arm, vertical, page.turn);
   page.table = placesTable(place("table"), chosenPlace);
   page.target = targetDesk(place("target"), draw);
-  page.survey = surveyDesk(place("survey"), { changed: surveyChanged, found: surveyFound });
+  page.survey = surveyDesk(place("survey"), page.name, { changed: surveyChanged, found: surveyFound });
   const parts = { field: place("list"), zone: place("asked"), kept: `armspan-reach-${page.name}` };
   page.input = listInput(parts, asked, (text) => fill(place("reading"), refused(text)));
   keys();
@@ -76,8 +76,8 @@ function fit(vertical) {
 function about() {
   const { name, revision, arm } = page.arm;
   const link = el("a", { href: `/arms/${encodeURIComponent(name)}` }, words.sheet);
-  fill(place("about"), arm.title ?? "", arm.title ? " · " : "",
-    say(words.revision, { revision, status: arm.status ?? "" }), " · ", link);
+  const said = [say(words.revision, { revision }), arm.status].filter(Boolean).join(", ");
+  fill(place("about"), arm.title ?? "", arm.title ? " · " : "", said, " · ", link);
 }
 
 function keys() {

@@ -59,10 +59,6 @@ export function checkBody({ name, revision }, question, targets, solutions) {
   return body;
 }
 
-/** What a problem says, and the way out. @param {{detail: string, errors: object[]}} problem */
-export const refusal = ({ detail, errors = [] }) =>
-  signs([detail, ...errors.slice(0, 1).map((error) => error.way_out)].filter(Boolean).join("; "));
-
 /** Return what a refused question says of single targets: a map from place in the list to words. */
 export function refusedTargets(problem) {
   const found = new Map();

@@ -9,7 +9,7 @@ import { labelsOn, scaleBar, triad } from "./marks.js";
 import { unitsOf } from "./numbers.js";
 import { pen } from "./pen.js";
 import { column, dot, MM_IN, moved, placed, scaleWithRoom } from "./projection.js";
-import { marks, NUMBERED, stroke, within } from "./reach_signs.js";
+import { beyond, marks, NUMBERED, seenAt, stroke } from "./reach_signs.js";
 import { curves, shown, viewsOf } from "./reach_views.js";
 import { onTheme } from "./shell.js";
 import { say, WORDS } from "./words.js";
@@ -72,23 +72,23 @@ function draw({ pen: drawn, picture, canvas }) {
   const [width, height] = drawn.size();
   if (!width || !height) return;
   const views = viewsOf(picture).map((view) => {
-    const words = WORDS.reach.drawing[view.title];
-    return { view, words, size: extent(view, picture), least: drawn.widthOf(words, TITLE_PX) * BOLD + AXES };
+    const words = WORDS.reach.drawing[view.title], beside = view.kind === "section" ? 0 : AXES;
+    return { view, words, size: extent(view, picture), least: drawn.widthOf(words, TITLE_PX) * BOLD + beside };
   });
   const { scale, isStacked } = laidOut(views, width, height, picture.units);
-  frames(views, scale.px, width, height, isStacked).forEach((frame, i) => {
+  const areBeyond = frames(views, scale.px, width, height, isStacked).map((frame, i) => {
     const { view, words, size } = views[i];
     const left = (frame.left + frame.right - size.wide * scale.px) / 2;
     const [x, y] = [left - size.left * scale.px, frame.top + AIR + size.top * scale.px];
     const put = placed(view, scale.px, [0, 0, 0], x, y);
     drawn.letters(words, frame.left, frame.top - TITLE / 2, { px: TITLE_PX, weight: 600 });
-    paintView(drawn, put, view, picture, frame);
+    return paintView(drawn, put, view, picture, frame);
   });
   const unitName = unitsOf(picture.units).length;
   scaleBar(drawn, MARGIN + 10, height - 12, scale.px, unitName, Math.min(width / 3, 200));
   drawn.letters(say(WORDS.reach.drawing.scale, { scale: scale.words }), width - MARGIN - 4, height - 12,
     { align: "right", px: 12 });
-  canvas.dataset.scale = scale.words;
+  Object.assign(canvas.dataset, { scale: scale.words, beyond: areBeyond.some(Boolean) ? "yes" : "" });
 }
 
 /** Side by side or one above the other: as the arm is drawn larger. */
@@ -101,7 +101,13 @@ function laidOut(views, width, height, units) {
     const room = { x: 0, y: 0, width: Math.max(across, 9), height: Math.max(down, 9) };
     return scaleWithRoom(wide, high, room, MM_IN[unitsOf(units).length]);
   };
-  const beside = scaled(sum("wide"), most("high"), [free[0] - 2 * AIR - GAP, free[1]]);
+  const across = free[0] - 2 * AIR - GAP;
+  const beside = views.reduce((found, { least }, i) => {
+    // Beside a title that is wider than its view the other has less room.
+    if (least < sizes[i].wide * found.px + 2 * AIR) return found;
+    const other = scaled(sizes[1 - i].wide, most("high"), [across + 2 * AIR - least, free[1]]);
+    return other.px < found.px ? other : found;
+  }, scaled(sum("wide"), most("high"), [across, free[1]]));
   const below = scaled(most("wide"), sum("high"), [free[0], free[1] - 2 * AIR - TITLE]);
   const isWide = views[0].least + views[1].least + GAP < free[0] && beside.px >= below.px;
   return isWide ? { scale: beside, isStacked: false } : { scale: below, isStacked: true };
@@ -155,6 +161,7 @@ function boxed(flat) {
   return box;
 }
 
+/** Return whether there is a place beyond the view. */
 function paintView(drawn, put, view, picture, frame) {
   const { envelope, outline, before, places, chosen } = picture;
   const outlined = (reach, kind) => {
@@ -174,16 +181,19 @@ function paintView(drawn, put, view, picture, frame) {
     const tips = [0, 1, 2].map((j) => put(moved(point, column(outline.tool, j), 26 / put.px)));
     for (const tip of tips) labels.keepLine([put(point), tip], 7);
   }
-  const signs = places.map(({ at, verdict }) => ({ verdict, on: within(put(shown(view, at)), frame) }));
+  const signs = places.map(({ at, verdict }) => ({ verdict, ...seenAt(put(shown(view, at)), frame) }));
   const isNumbered = places.length <= NUMBERED;
   marks(drawn, signs, isNumbered);
+  const far = signs.filter(({ way }) => way);
+  for (const one of far.slice(0, NUMBERED)) beyond(drawn, labels, one);
   if (isNumbered) for (const { on } of signs) labels.keep(...on, 6);
   way(drawn, put, picture);
-  if (chosen) chosenPlace(drawn, put, view, picture, frame, labels);
+  const isBeyond = chosen && chosenPlace(drawn, put, view, picture, frame, labels);
   if (isNumbered) places.forEach(({ number }, i) => {
     labels.add(String(number), signs[i].on, { px: 10, gap: 8, from: 99 });
   });
   labels.write();
+  return isBeyond || far.length > 0;
 }
 
 /** The base where no arm stands on it, and beside the title which way its axes point. */
@@ -241,7 +251,7 @@ function way(drawn, put, { way: found }) {
 }
 
 function chosenPlace(drawn, put, view, { chosen, nearest, missing }, frame, labels) {
-  const at = put(shown(view, chosen.at)), edge = within(at, frame);
+  const seen = seenAt(put(shown(view, chosen.at)), frame), edge = seen.on;
   if (nearest) {
     const near = put(shown(view, nearest)), middle = [(near[0] + edge[0]) / 2, (near[1] + edge[1]) / 2];
     drawn.line([edge, near], "thin");
@@ -251,8 +261,8 @@ function chosenPlace(drawn, put, view, { chosen, nearest, missing }, frame, labe
   }
   for (const colour of ["paper", "ink"]) stroke(drawn, edge, chosen.verdict, 18, colour);
   labels.keep(...edge, 9);
-  const isBeyond = edge[0] !== at[0] || edge[1] !== at[1];
-  const name = isBeyond ? say(WORDS.reach.drawing.beyond, { name: chosen.name }) : chosen.name;
+  if (seen.way) beyond(drawn, labels, seen);
   // Its letters are wider than the measure of their size tells: they are bold.
-  labels.add(name, edge, { px: 14, weight: 600, gap: 14, from: 99 });
+  labels.add(chosen.name, edge, { px: 14, weight: 600, gap: 14, from: 99 });
+  return seen.way !== null;
 }

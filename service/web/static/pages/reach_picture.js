@@ -97,5 +97,6 @@ function said(desk, envelope) {
   const state = { waits: words.envelope_waits, refused, here: words.legend };
   setText(desk.legend, [
     state[envelope.state], envelope.data?.axis && rows.length > 1 ? words.legend_turned : "",
-    rows.length > NUMBERED ? words.legend_many : "", words.legend_geometry].filter(Boolean).join(" "));
+    rows.length > NUMBERED ? words.legend_many : "",
+    desk.canvas.dataset.beyond ? words.legend_beyond : "", words.legend_geometry].filter(Boolean).join(" "));
 }

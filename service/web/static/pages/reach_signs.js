@@ -16,8 +16,23 @@ export const NUMBERED = 40;
 const OPEN = "M10 7v6M7 10h6";
 
 /** A point of the paper, or the nearest on the edge of its view. */
-export const within = ([x, y], { left, top, right, bottom }) =>
+const within = ([x, y], { left, top, right, bottom }) =>
   [Math.min(Math.max(x, left + 6), right - 6), Math.min(Math.max(y, top + 6), bottom - 6)];
+
+/** Where a place is seen: on its point, or short of the edge beyond which it lies, and then which way. */
+export function seenAt(at, frame) {
+  const edge = within(at, frame), off = edge.map((one, i) => at[i] - one), far = Math.hypot(...off);
+  if (far < 1) return { on: edge, way: null };
+  const way = off.map((one) => one / far);
+  return { on: edge.map((one, i) => one - 16 * way[i]), way };
+}
+
+/** Point from a sign to the place itself; letters keep off. */
+export function beyond(drawn, labels, { on, way }) {
+  const [from, to] = [9, 20].map((far) => on.map((one, i) => one + far * way[i]));
+  drawn.arrow(from, to, "medium", 7);
+  labels.keepLine([from, to], 5);
+}
 
 /** Stroke a sign in ink, or the paper that keeps it clear of the lines below. */
 export function stroke({ context, colour }, [x, y], verdict, size, name) {

@@ -2,6 +2,7 @@
 // Idea: the survey's number stands in the address, so who reloads or comes back finds it again.
 // Left out: what the result looks like (reach_list.js) and the report, which the service makes.
 
+import { withQuery } from "./address.js";
 import { ask, follow } from "./ask.js";
 import { el } from "./elements.js";
 import { back, gone } from "./shell.js";
@@ -13,12 +14,12 @@ const MOST_SHOWN = 20000;
 
 /**
  * Return what shows and steers a survey in a place of the page.
- * @param {HTMLElement} place
+ * @param {HTMLElement} place @param {string} arm whose surveys it shows
  * @param {{changed: (id: string | null) => void, found: (survey: object, results: object[]) => boolean}} told
  *   found: returns whether the result stands on the page now
  */
-export function surveyDesk(place, told) {
-  const desk = { place, told, stop: null };
+export function surveyDesk(place, arm, told) {
+  const desk = { place, arm, told, stop: null };
   return {
     begin: (body, title) => begin(desk, body, title),
     watch: (id) => watch(desk, id),
@@ -47,6 +48,11 @@ async function watch(desk, id) {
   if (!answer.ok) {
     desk.place.replaceChildren(el("p", { class: "refused" }, answer.problem.detail));
     return;
+  }
+  const { name } = answer.data.arm, words = WORDS.reach.survey;
+  if (name !== desk.arm) {
+    const there = withQuery(`/arms/${encodeURIComponent(name)}/reach`, { survey: id });
+    return desk.place.replaceChildren(el("p", { class: "refused" }, words.other_arm, " ", el("a", { href: there }, name)));
   }
   const parts = frame(desk, answer.data);
   if (!OPEN.has(answer.data.state)) return ended(desk, answer.data.id);

@@ -52,12 +52,15 @@ function draw(desk) {
 function nearestOf({ row, question }) {
   const near = row.result?.reason?.nearest;
   if (!near) return null;
-  const values = [
-    near.position.map((one) => length(one, question.units)),
-    near.orientation.values.flat().map((one) => angle(one, question.units))];
-  const figures = el("span", { class: "figures" }, values.flat().join("  "));
-  const { met, nearest } = WORDS.reach.target, isOpen = row.result.verdict === "not-found";
-  return el("p", {}, isOpen ? met : nearest, " ", figures, ` (${near.orientation.form})`);
+  const { met, nearest } = WORDS.reach.target, { form, values } = near.orientation, { verdict } = row.result;
+  // Where travel alone is in the way the links get there: that is no other place.
+  if (verdict === "outside-travel") return null;
+  const figures = near.position.map((one) => length(one, question.units));
+  // In another form than that of the list it would be misread: then it was not asked for.
+  const isTurned = form === question.form;
+  if (isTurned) figures.push(...values.flat().map((one) => angle(one, question.units)));
+  return el("p", {}, verdict === "not-found" ? met : nearest, " ",
+    el("span", { class: "figures" }, figures.join("  ")), isTurned ? ` (${form})` : "");
 }
 
 function familiesOf({ row }) {
@@ -94,8 +97,10 @@ function look(desk) {
   const solutions = shown.row.result?.solutions ?? [];
   const solution = solutions[now] ?? null;
   if (solution) {
-    const count = shown.waits ? WORDS.reach.target.more : solutions.length;
-    place.querySelector("output").textContent = say(WORDS.reach.target.solution, { number: now + 1, count });
+    const words = WORDS.reach.target, { found } = shown.row.result;
+    place.querySelector("output").textContent = !shown.waits && solutions.length === 1 && found > 1
+      ? say(words.best, { count: found })
+      : say(words.solution, { number: now + 1, count: shown.waits ? words.more : solutions.length });
     fill(place.querySelector(".solution"), ...solutionLines(shown, solution));
   }
   desk.stepped(solution);

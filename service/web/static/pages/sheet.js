@@ -1,13 +1,13 @@
 // The sheet of one arm: what is asked, of whom, and when; live, or by joint values typed or nudged.
 // Idea: one answer of the interface at a time is shown everywhere; what the viewer chose stands in the
 // address and in every question. Left out: drawing (sheet_views.js) and writing (other sheet modules).
-import { ask, follow } from "./ask.js";
+import { ask, follow, refusal } from "./ask.js";
 import { choose, chosen, withQuery } from "./address.js";
-import { el, fill, setText } from "./elements.js";
+import { fill, options, setText } from "./elements.js";
 import { FORMS, jointsIn, signs, typed, UNITS, unitsOf } from "./numbers.js";
 import { back, begin, gone, isGone, onTheme, ready } from "./shell.js";
 import { fixedFrames, framesIn, framesNear, isUpright, risingOf } from "./frames.js";
-import { notes, readings, sentences, showState, texts } from "./sheet_numbers.js";
+import { notes, readings, sentences, showState, stateWord, texts } from "./sheet_numbers.js";
 import { showRevisions, showTable } from "./sheet_table.js";
 import { travelTable } from "./sheet_travel.js";
 import { views } from "./sheet_views.js";
@@ -54,17 +54,11 @@ async function load() {
   if (!stored.ok) return refused(stored.problem);
   back();
   state.stored = stored.data;
-  await fillChoices();
+  await showStored();
   fitModes();
-  await anew();
-  showStored();
+  anew();
   setInterval(tick, 250);
   place("texts").addEventListener("toggle", writeTexts);
-}
-
-function showStored() {
-  showTable(place("table"), state.stored);
-  showRevisions(place("revisions"), path);
 }
 
 /** A newer revision answers than is shown: show it, too, where it does not come with each answer. */
@@ -73,15 +67,14 @@ async function renew() {
   const { ok, data } = await ask(path);
   if (ok) {
     state.stored = data;
-    await fillChoices();
+    await showStored();
     askFrames();
-    showStored();
   }
   setTimeout(() => (state.renews = false), ok ? 0 : AGAIN_MS);
 }
 
-/** The choices of the title block; what is not said takes what the arm says, and a z that is upright. */
-async function fillChoices() {
+/** What is stored, and the choices; what is not said takes what the arm says, and a z that is upright. */
+async function showStored() {
   const { arm: told, units } = state.stored, { said } = state;
   const tools = Object.keys(told.tools ?? {});
   said.units ||= units;
@@ -98,12 +91,13 @@ async function fillChoices() {
   fillSelect("form", [...FORMS, "matrix"]);
   fillSelect("units", UNITS);
   setText(place("arm-title"), told.title ?? "");
+  showTable(place("table"), state.stored);
+  showRevisions(place("revisions"), path);
 }
 
-function fillSelect(name, options) {
+function fillSelect(name, known) {
   const select = place(name), now = state.said[name];
-  fill(select, [...new Set([...options, now])].map((one) =>
-    el("option", { value: one, selected: one === now }, one)));
+  fill(select, options([...new Set([...known, now])], now));
   select.onchange = () => {
     const { said, answer, isLive, waits } = state, was = said.units;
     said[name] = select.value;
@@ -116,7 +110,7 @@ function fillSelect(name, options) {
 const question = () => (({ tool, frame, form, units }) => ({ tool, frame, form, units }))(state.said);
 
 /** Ask everything again, in the words that are chosen now. */
-async function anew() {
+function anew() {
   state.stop();
   state.turn += 1; // What was asked in words chosen before is not drawn any more.
   Object.assign(state, { trail: [], frames: [], heard: false });
@@ -185,12 +179,17 @@ function byHand(values) {
 
 async function askByHand() {
   state.asking?.abort();
-  state.asking = new AbortController();
+  const { signal } = (state.asking = new AbortController());
   const asked = { q: state.said.q, ...question(), outline: 1 };
-  const { ok, data, problem } = await ask(withQuery(`${path}/pose`, asked), { signal: state.asking.signal });
-  if (ok) take(data);
-  else if (problem.code === "no-answer") gone();
-  else if (problem.code !== "aborted") refused(problem);
+  const { ok, data, problem } = await ask(withQuery(`${path}/pose`, asked), { signal });
+  if (signal.aborted) return;
+  state.isOther = !ok;
+  if (ok) return take(data);
+  if (problem.code === "no-answer") {
+    gone();
+    setTimeout(() => signal.aborted || state.isLive || askByHand(), AGAIN_MS);
+  } else refused(problem);
+  tick();
 }
 
 /** Show one answer everywhere. */
@@ -227,18 +226,18 @@ function draw() {
   shown.views.show({
     arm, outline, singularity, toolName: typeof answer.tool === "string" ? answer.tool : "",
     frameName: answer.frame, frames: framesNear(outline.line, state.frames),
-    path: state.trail, balloons: true, rising: risingOf(outline.axes, state.stored.arm.rows, shown.rising),
+    path: state.isLive ? state.trail : [], balloons: true, rising: risingOf(outline.axes, state.stored.arm.rows, shown.rising),
     struck: quality() === "bad" ? wordOf(quality()) : "",
     kind: quality() === "good" || quality() === "typed" ? "thick" : "heavyDashed",
     unit: unitsOf(answer.units).length, units: said.units,
   });
 }
 
-const quality = () => (!state.isLive ? "typed" : isGone() ? "bad" : state.answer.quality);
+/** What is shown may be of other values than those typed, where these got no answer. */
+const quality = () => (!state.isLive ? (state.isOther ? "bad" : "typed") : isGone() ? "bad" : state.answer.quality);
 
 const wordOf = (now) =>
-  WORDS.sheet[`state_${state.isLive && isGone() ? "gone" : state.isLive ? state.answer.reason : ""}`]
-  ?? WORDS.sheet[`state_${now}`] ?? now;
+  stateWord(now, now !== "typed" && isGone() ? "gone" : state.isLive ? state.answer.reason : "");
 
 /** What changes by itself: ages, and whether anything can be relied on. */
 function tick() {
@@ -292,8 +291,7 @@ function setMode(isLive) {
 
 function refused(problem) {
   back(); // Whoever refuses is there.
-  const ways = (problem.errors ?? []).map((one) => one.way_out).filter(Boolean);
-  setText(place("problem"), signs([problem.detail, ...ways].join(". ")));
+  setText(place("problem"), refusal(problem));
   ready();
 }
 

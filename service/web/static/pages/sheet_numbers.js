@@ -10,6 +10,10 @@ const TRIPLE = /^([xyz]{3})-(fixed|current)$/;
 const SINGULAR = 2; // Codes 1 and 2 say near and singular.
 const PRIMES = ["", "′", "″"];
 
+/** How the state of an answer is called, by its reason where that has a word of its own. */
+export const stateWord = (state, reason) =>
+  WORDS.sheet[`state_${reason}`] ?? WORDS.sheet[`state_${state}`] ?? state;
+
 /** Return the names of an orientation's numbers, as the trade writes them: z, y′, x″. */
 function namesOf(form) {
   const triple = TRIPLE.exec(form);

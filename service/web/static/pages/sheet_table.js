@@ -3,7 +3,7 @@
 // Left out: what a change does to poses; the service answers that for either revision.
 import { ask } from "./ask.js";
 import { choose, chosen } from "./address.js";
-import { el, fill } from "./elements.js";
+import { el, fill, options } from "./elements.js";
 import { say, WORDS } from "./words.js";
 
 const COLUMNS = [
@@ -86,7 +86,7 @@ export async function showRevisions(place, path) {
     picked[name] = event.target.value;
     choose(picked);
     compare(changes, path, picked);
-  } }, numbers.map((one) => el("option", { value: one, selected: one === picked[name] }, one)));
+  } }, options(numbers, picked[name]));
   const words = WORDS.sheet;
   fill(place,
     ruled(words.revisions, [words.revision, words.time, words.author, words.why, words.digest],

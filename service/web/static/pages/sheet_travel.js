@@ -1,7 +1,7 @@
 // The stepping table: each joint value with its travel as a ruled scale; typed, nudged, or as it comes.
 // Idea: the same table shows what comes live and takes what is typed: whoever types or nudges goes on
 // by hand from there. Left out: what is beyond travel, which the answer says in words.
-import { el, fill, setAttribute, setText, svg } from "./elements.js";
+import { el, fill, options, setAttribute, setText, svg } from "./elements.js";
 import { DECIMALS, number, signs, typed } from "./numbers.js";
 import { say, WORDS } from "./words.js";
 
@@ -14,7 +14,7 @@ const STEPS = ["0.01", "0.1", "1", "10", "100"];
  *     values: what was typed or nudged; joint: whose row is pointed at or has the focus
  */
 export function travelTable(place, step, told) {
-  fill(step, STEPS.map((one) => el("option", { value: one, selected: one === "1" }, one)));
+  fill(step, options(STEPS, "1"));
   const body = el("tbody"), state = { rows: [], key: "", byHand: false, told, step, body };
   fill(place,
     el("table", { class: "travel" }, el("caption", { class: "unseen" }, WORDS.sheet.travel),

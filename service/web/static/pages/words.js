@@ -192,6 +192,7 @@ export const WORDS = {
     "legend": "Line: within travel. Dashes: within working travel.",
     "legend_turned": "Other places are turned into the section about axis 1.",
     "legend_many": "Of signs that would lie on one another one is drawn.",
+    "legend_beyond": "Arrow at a place: it lies beyond the drawing.",
     "legend_geometry": "Geometry only: no collision, cable, payload or dynamics check.",
     "envelope_waits": "The envelope follows as soon as nothing else is asked.",
     "envelope_refused": "No envelope is drawn: {say}.",
@@ -205,7 +206,7 @@ export const WORDS = {
       "scale": "scale"
     },
     "sheet": "sheet",
-    "revision": "revision {revision}, {status}",
+    "revision": "revision {revision}",
     "read_one": "Read: 1 place, columns {columns}, {separator}, {decimal}.",
     "read": "Read: {count} places, columns {columns}, {separator}, {decimal}.",
     "left_out": " Left out: {columns}.",
@@ -333,7 +334,7 @@ export const WORDS = {
         "branch-and-bound": "boxes of joint values that all miss it",
         "search": "a search; another may find more"
       },
-      "nearest": "Nearest that can be reached:",
+      "nearest": "Nearest that the links allow, travel not looked at:",
       "met": "Nearest met:",
       "family_one": "Joint {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
       "family": "Joints {joints} can move on without the tool leaving the place, from {from} to {to} {unit}.",
@@ -343,6 +344,7 @@ export const WORDS = {
       "before": "Solution before",
       "after": "Next solution",
       "solution": "Solution {number} of {count}",
+      "best": "The best of {count}; a survey keeps no others",
       "more": "…",
       "joints": "Joint values for {name}",
       "margin": "{margin} of travel left at the joint nearest to a limit",
@@ -379,6 +381,7 @@ export const WORDS = {
         "cancelled": "Cancelled at {done} of {total} places."
       },
       "long": "More than {most} places are not listed here: take them as a file.",
+      "other_arm": "This survey is of another arm:",
       "other": "The list above is another one: the result of this survey is in its report and its files.",
       "report": "Report",
       "csv": "CSV",
@@ -392,8 +395,7 @@ export const WORDS = {
       "end_axis": "Seen along axis 1",
       "plan": "Plan, from above",
       "scale": "Scale {scale}",
-      "base": "base",
-      "beyond": "{name}, beyond this drawing"
+      "base": "base"
     }
   }
 };
