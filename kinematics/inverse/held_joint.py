@@ -67,11 +67,11 @@ class HeldJoint:
 
     @property
     def say(self) -> str:
-        """What is held, in which steps, and what solves the rest, for people."""
-        slides = self.locked.screws.prismatic[self.row]
-        apart = f"{self.step:.3g} m" if slides else f"{np.degrees(self.step):.3g} deg"
-        held = f"joint {self.number} held at {len(self.values)} values {apart} apart"
-        return f"{held}, for each: {self.locked.say}"
+        """What is held, at how many values, and what solves the rest, for people.
+
+        How far they are apart is told in the asker's units, beside each answer.
+        """
+        return f"joint {self.number} held at {len(self.values)} values, for each: {self.locked.say}"
 
     def postures(
         self, motions: FloatArray, near: FloatArray | None

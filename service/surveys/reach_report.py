@@ -47,6 +47,7 @@ class _Seen:
     def __init__(self) -> None:
         self.margins: list[float] = []
         self.tight: list[tuple[float, str, str]] = []
+        self.reserves = 0
         self.doubtful: list[tuple[str, str]] = []
         self.without: list[tuple[str, str, str]] = []
         self.points: list[Point] = []
@@ -60,7 +61,9 @@ class _Seen:
         self._targets += len(firsts)
         self.margins += _margins_of(columns, firsts)
         self.tight = sorted(self.tight + _tight_of(columns, firsts, names))[:MOST_TIGHT]
-        self.doubtful = (self.doubtful + _doubtful_of(columns, firsts, names))[:MOST_WITHOUT]
+        doubtful = _doubtful_of(columns, firsts, names)
+        self.reserves += len(doubtful)
+        self.doubtful = (self.doubtful + doubtful)[:MOST_WITHOUT]
         self.without = (self.without + _without_of(columns, firsts, names))[:MOST_WITHOUT]
         if len(self.points) < MOST_DRAWN:
             verdicts = columns.verdicts.told()
@@ -87,6 +90,8 @@ def report_of(survey: Survey, store: SurveyStorage) -> Report:
     if len(seen.points) == MOST_DRAWN:
         said += f"The first {MOST_DRAWN} targets are drawn."
     asked = [("targets", survey.total), ("of these reachable", summary["reachable"])]
+    if looked_at == count:
+        asked.append(("of these with a reserve", seen.reserves))
     return Report(asked, _tables(summary, seen), seen.points, said=said)
 
 
@@ -111,7 +116,7 @@ def _tables(summary: Mapping[str, int], seen: _Seen) -> Sequence[ReportTable]:
             "Reached, but",
             ("target", "what is to be known of the best posture"),
             seen.doubtful,
-            f"At most {MOST_WITHOUT} are listed." if len(seen.doubtful) == MOST_WITHOUT else "",
+            _listed_of(len(seen.doubtful), seen.reserves),
         ),
         ReportTable(
             "Not reached",

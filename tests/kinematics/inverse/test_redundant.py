@@ -147,5 +147,5 @@ def test_a_slide_without_travel_is_refused() -> None:
 
 def test_what_is_held_is_said() -> None:
     redundant, _ = made("on a track", fresh())
-    assert redundant.geometry.say.startswith("joint 1 held at 121 values 0.0")
+    assert redundant.geometry.say.startswith("joint 1 held at 121 values, for each: ")
     assert redundant.geometry.say.endswith("meet in a point: a spherical wrist")
