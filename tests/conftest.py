@@ -63,14 +63,9 @@ def pytest_xdist_auto_num_workers() -> int:
 
 @pytest.hookimpl(optionalhook=True)
 def pytest_xdist_make_scheduler(config: pytest.Config, log: Any) -> Any:
-    """Keep the tests of a file together, since they share servers and compiled code.
-
-    In the order of their folders: files of few tests that take minutes, those of the service as a
-    process, come first, and the many short ones of the core fill up the end.
-    """
+    """Keep the tests of a file together, since they share servers and compiled code."""
     from xdist.scheduler import LoadFileScheduling
 
-    config.option.loadscopereorder = False
     return LoadFileScheduling(config, log)
 
 
