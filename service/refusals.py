@@ -45,13 +45,13 @@ async def _refuse(request: Request, error: Exception) -> Response:
 
 async def _refuse_routing(request: Request, error: Exception) -> Response:
     assert isinstance(error, HTTPException)
-    if error.status_code != HTTPStatus.NOT_FOUND:
-        return json_problem(problem_of(_meant(request, error)), request.state.request_id)
-    if is_for_people(request):
+    is_nowhere = error.status_code == HTTPStatus.NOT_FOUND
+    if is_nowhere and is_for_people(request):
         answer = no_such_page(request)
     else:
         answer = json_problem(problem_of(_meant(request, error)), request.state.request_id)
-    answer.headers.add_vary_header("Accept")
+    if is_nowhere:
+        answer.headers.add_vary_header("Accept")
     return answer
 
 

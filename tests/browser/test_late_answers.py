@@ -195,6 +195,25 @@ def test_a_pose_that_is_not_of_the_typed_values_is_not_shown_as_theirs(
     between.until(f"{said}.includes('by hand') && {READINGS} !== {json.dumps(shown)}")
 
 
+def test_a_refusal_stays_beside_a_pose_of_other_values(
+    between: Screen, hall: ServerProcess
+) -> None:
+    between.open(f"{hall.url}/arms/near?q=0,-60,90,0,30,0", Look(1280, 800), ready=READY)
+    said = "document.getElementById('state').innerText.toLowerCase()"
+    between.until(f"{said}.includes('by hand')")
+    between.run("""
+      const ask = window.fetch, headers = { "Content-Type": "application/problem+json" };
+      const problem = { code: "unusable-value", detail: "no such posture", errors: [] };
+      const body = JSON.stringify(problem);
+      window.fetch = (path, how) => path.includes("/pose?")
+        ? Promise.resolve(new Response(body, { status: 422, headers })) : ask(path, how);
+    """)
+    between.run("document.querySelectorAll('#travel button')[3].click()")
+    between.until(f"{said}.includes('not valid')")
+    between.run("return new Promise((done) => setTimeout(done, 600))")
+    assert between.run("return document.getElementById('problem').innerText") == "no such posture"
+
+
 def test_what_was_asked_in_units_chosen_before_is_not_drawn(
     between: Screen, demo: ServerProcess, arm: str
 ) -> None:

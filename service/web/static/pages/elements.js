@@ -32,6 +32,8 @@ export const options = (values, now) =>
 
 /**
  * Write a text only where it is another one: what stays costs no layout.
+ * @param {Node} node
+ * @param {string} text
  */
 export function setText(node, text) {
   if (node.textContent !== text) node.textContent = text;

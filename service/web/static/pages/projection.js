@@ -34,17 +34,20 @@ export function view(kind, yaw = 0, pitch = 0) {
   return { kind, across: [c, s, 0], up: [-s * sp, c * sp, cp], toward: [s * cp, -c * cp, sp] };
 }
 
+/** @param {number[]} a @param {number[]} b */
 export const dot = (a, b) => a[0] * b[0] + a[1] * b[1] + a[2] * b[2];
 
-/** Return `a + b * by`. */
+/** Return `a + b * by`. @param {number[]} a @param {number[]} b @param {number} by */
 export const moved = (a, b, by) => [a[0] + b[0] * by, a[1] + b[1] * by, a[2] + b[2] * by];
 
+/** @param {number[]} a @param {number[]} b */
 export const cross = (a, b) => [
   a[1] * b[2] - a[2] * b[1],
   a[2] * b[0] - a[0] * b[2],
   a[0] * b[1] - a[1] * b[0],
 ];
 
+/** @param {number[]} a */
 export function unit(a) {
   const length = Math.hypot(...a);
   return length > 0 ? a.map((one) => one / length) : [0, 0, 1];
@@ -69,7 +72,7 @@ export function bounds(points, padding = 0) {
   return [low.map((one) => one - padding), high.map((one) => one + padding)];
 }
 
-/** Whether a box holds another. */
+/** Whether a box holds another. @param {number[][]} outer @param {number[][]} inner */
 export const holds = (outer, inner) =>
   inner[0].every((one, i) => one >= outer[0][i]) && inner[1].every((one, i) => one <= outer[1][i]);
 

@@ -5,6 +5,7 @@
 import { choose, chosen } from "./address.js";
 import { ask, refusal } from "./ask.js";
 import { el, fill } from "./elements.js";
+import { verticalOf } from "./frames.js";
 import { signs, unitsOf } from "./numbers.js";
 import { checkBody, refusedTargets, targetsOf, turnsOf } from "./reach_asking.js";
 import { download, fileKey, keep, lineOf, listInput, recall } from "./reach_input.js";
@@ -15,7 +16,6 @@ import { blankTable, readPlaces } from "./reach_reading.js";
 import { counted, surveyDesk } from "./reach_survey.js";
 import { targetDesk } from "./reach_target.js";
 import { turns } from "./reach_turns.js";
-import { verticalOf } from "./frames.js";
 import { begin } from "./shell.js";
 import { say, WORDS } from "./words.js";
 

@@ -44,7 +44,7 @@ function held(view, vertical) {
   }
   const turned = [[right, ahead], [ahead, less(right)], [less(right), less(ahead)], [less(ahead), right]];
   const rising = turned.map(([, up]) => dot(up, vertical)), upright = turned[rising.indexOf(Math.max(...rising))];
-  return named(view, isSection ? "section" : view.kind === "side" ? "side" : view.axis ? "end_axis" : "end", [...upright, toward]);
+  return named(view, view.kind !== "plan" ? view.kind : view.axis ? "end_axis" : "end", [...upright, toward]);
 }
 
 const named = (view, title, [across, up, toward]) => ({ ...view, title, across, up, toward });

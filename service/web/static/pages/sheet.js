@@ -185,11 +185,11 @@ async function askByHand() {
   if (signal.aborted) return;
   state.isOther = !ok;
   if (ok) return take(data);
-  if (problem.code === "no-answer") {
-    gone();
-    setTimeout(() => signal.aborted || state.isLive || askByHand(), AGAIN_MS);
-  } else refused(problem);
-  tick();
+  const isGoneNow = problem.code === "no-answer";
+  if (isGoneNow) gone();
+  tick(); // Before what is refused is said, which what is shown anew takes away.
+  if (isGoneNow) setTimeout(() => signal.aborted || state.isLive || askByHand(), AGAIN_MS);
+  else refused(problem);
 }
 
 /** Show one answer everywhere. */
