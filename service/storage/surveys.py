@@ -234,12 +234,18 @@ class SqlSurveys(SqlStore):
             return False
 
     def close(self) -> None:
-        """Let another process run the surveys."""
+        """Let another process run the surveys: whoever asks after this returns may lead."""
         with self._lock:
-            if self._lead is not None:
+            if self._lead is None:
+                return
+            try:
+                # Asked for and answered: a connection that is only hung up holds the lock for as
+                # long as the database takes to notice.
+                self._lead.execute(sa.select(sa.func.pg_advisory_unlock(_LEADER)))
+            except sa.exc.DBAPIError:
                 self._lead.invalidate()
-                self._lead.close()
-                self._lead = None
+            self._lead.close()
+            self._lead = None
 
     def _of_piece(self, column: sa.Column[Any], survey: str, number: int) -> bytes:
         this = (SURVEY_PIECES.c.survey == survey, SURVEY_PIECES.c.number == number)
