@@ -97,7 +97,9 @@ class CsvRendering(ReachRendering):
             digest=question.meant.read.digests.digest,
         )
         refused = sum(place in many.read.refused for place in range(begin, end))
-        return Piece(reach_lines(columns_of(many, begin, end), same), {REFUSED: refused})
+        places = many.read.positions_out(question.units)[begin:end]
+        lines = reach_lines(columns_of(many, begin, end), places, same)
+        return Piece(lines, {REFUSED: refused})
 
     def answer(self, pieces: Sequence[Piece]) -> WorkedOut:
         """Return the line of keys, then all lines."""

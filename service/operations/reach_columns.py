@@ -13,7 +13,6 @@ from numpy.typing import NDArray
 from kinematics.findings import FINE, OUTSIDE_TRAVEL, OUTSIDE_WORKING_TRAVEL
 from kinematics.reach.targets import CODES, PROOFS, REACHABLE, VERDICTS
 from kinematics.singularity import STATES
-from kinematics.table import FloatArray
 from service.operations.reach import ManyTargets
 from service.operations.reach_told import NO_STATE, ToldChecks
 from service.problems import KINDS
@@ -21,9 +20,6 @@ from service.wire.reach_gathered import FIELD
 from service.wire.reach_lines import ReachColumns, Texts
 
 _CODES = np.array(CODES)
-_DECIMALS = 9
-"""Of positions, in any unit: a nanometre at most."""
-
 _REFUSED = -1
 """In place of a target's index, for a line about one that could not be used."""
 
@@ -78,7 +74,6 @@ def columns_of(
         proofs=Texts(PROOFS, proofs),
         branches=Texts(checks.branches, branches),
         errors=np.concatenate([told.errors_out(), np.full((1, 2), np.nan)])[lines.solutions],
-        positions=_positions_of(many, span, lines),
         reasons=_reasons_of(many, told, lines),
         names=_names_of(many, lines),
         why=_why(many, told, lines, span.start) if whole_reasons else {},
@@ -158,15 +153,6 @@ def _states_of(told: ToldChecks, solutions: NDArray[np.intp]) -> Texts:
     if told.judged is None:
         return Texts((NO_STATE,), np.where(solutions < 0, -1, 0))
     return Texts(STATES, np.append(told.judged.column_of_states(), -1)[solutions])
-
-
-def _positions_of(many: ManyTargets, span: range, lines: _Lines) -> FloatArray:
-    """Return where each line's target is, (lines, 3), in the user's units; NaN where unusable."""
-    metres = many.read.tool_in_frame[span.start : span.stop, :3, 3]
-    # SI and back costs the last digit: what was typed reads the same.
-    asked = np.round(many.question.units.length_out(metres), _DECIMALS)
-    found: FloatArray = np.concatenate([asked, np.full((1, 3), np.nan)])[lines.targets]
-    return found
 
 
 def _names_of(many: ManyTargets, lines: _Lines) -> dict[int, str]:

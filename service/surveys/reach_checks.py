@@ -6,29 +6,24 @@ survey is accepted, so that mistakes are refused at once; of more, the others ar
 one in the result. Left out: how results are told (reach_results.py).
 """
 
-from dataclasses import replace
-from typing import Any, NamedTuple, cast
+from typing import NamedTuple, cast
 
-import numpy as np
-
-from service.details import Detail
-from service.errors import ServiceError, TooLarge, UnusableValue
+from service.errors import TooLarge, UnusableValue
 from service.operations.arms import Arms
 from service.operations.questions import Question
 from service.operations.reach import ManyTargets, Wanted, reach_question, wanted_solutions
 from service.operations.reach_columns import columns_of
-from service.problems import KINDS
 from service.storage.ports import Document, GivenPiece, MadePiece, Survey, SurveyStorage
 from service.surveys.kinds import Accepted, Report, SentTargets, Told, piece_size
 from service.surveys.pinned import OneArm, Setup, pinned, setup_of
 from service.surveys.reach_kept import columns_bytes, counts_of
-from service.surveys.reach_pieces import quickly_read, rows_of
+from service.surveys.reach_reading import read_piece
 from service.surveys.reach_report import report_of
 from service.surveys.reach_results import told_results
 from service.surveys.targets_sent import MOST_TARGETS, Rows, listed_targets
 from service.wire.arms import ReadArm
 from service.wire.formats import FORMATS, Format
-from service.wire.reach_gathered import FIELD, ReadTargets
+from service.wire.reach_gathered import FIELD
 from service.wire.reach_request import MOST_TARGETS as READ_AT_ONCE
 from service.wire.reach_request import ReachRequest
 from service.wire.reach_targets import read_targets
@@ -79,16 +74,14 @@ class ReachChecks:
     def make(self, prepared: Prepared, piece: GivenPiece) -> MadePiece:
         """See ``Kind.make``."""
         question = prepared.question
-        read = quickly_read(piece.given, question.units)
-        if read is None:
-            read = _read(rows_of(piece.given), question)
+        read = read_piece(piece.given, question.units)
         many = ManyTargets(question, read, prepared.wanted)
         columns = columns_of(many, 0, read.count, whole_reasons=True)
         return MadePiece(piece.number, columns_bytes(columns), counts_of(columns))
 
     def told(self, survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
         """See ``Kind.told``."""
-        return told_results(survey, wanted)
+        return told_results(survey, wanted, store)
 
     def reported(self, survey: Survey, store: SurveyStorage) -> Report:
         """See ``Kind.reported``."""
@@ -111,39 +104,3 @@ def _refuse_count(count: int) -> None:
             way_out="ask in several surveys",
             status=422,
         )
-
-
-def _read(rows: list[Any], question: Question) -> ReadTargets:
-    """Return targets read; those that spoil the reading of all are refused alone."""
-    try:
-        return read_targets(rows, question.units)
-    except ServiceError:
-        parts = [_read_alone(row, question) for row in rows]
-    usable = [place for place, part in enumerate(parts) if isinstance(part, ReadTargets)]
-    read = [part for part in parts if isinstance(part, ReadTargets)]
-    names = [row.get("name") if isinstance(row, dict) else None for row in rows]
-
-    def joined(field: str, shape: tuple[int, ...] = (0,), dtype: Any = float) -> Any:
-        return np.concatenate([np.empty(shape, dtype), *(getattr(part, field) for part in read)])
-
-    return ReadTargets(
-        names=[name if isinstance(name, str) else None for name in names],
-        places=np.array(usable, dtype=np.intp),
-        tool_in_frame=joined("tool_in_frame", (0, 4, 4)),
-        freedom=joined("freedom", dtype=np.int64),
-        cone=joined("cone"),
-        position_tolerance=joined("position_tolerance"),
-        angle_tolerance=joined("angle_tolerance"),
-        forms=[part.forms[0] for part in read],
-        repaired={at: part.repaired[0] for at, part in enumerate(read) if 0 in part.repaired},
-        approaches={at: part.approaches[0] for at, part in enumerate(read) if 0 in part.approaches},
-        refused={at: part for at, part in enumerate(parts) if isinstance(part, Detail)},
-    )
-
-
-def _read_alone(row: object, question: Question) -> ReadTargets | Detail:
-    try:
-        return read_targets([row], question.units)
-    except ServiceError as error:
-        worst = max(error.details(), key=lambda detail: KINDS[detail.code].number)
-        return replace(worst, where=worst.where[2:])

@@ -19,7 +19,6 @@ from service.wire.reach_lines import ReachColumns, Texts
 REFUSED, LINES = "refused", "lines"
 _TEXTS = ("verdicts", "proofs", "branches", "states")
 _NUMBERS = {"joints": "<f8", "margins": "<f8", "errors": "<f8"}
-_PLACES = "positions"
 _COUNTS = {"codes": "<i4", "counts": "<i8", "ranks": "<i4"}
 _HEAD = 8
 """Bytes that say how long the JSON is, which is filled up to a multiple of as many."""
@@ -36,7 +35,6 @@ def columns_bytes(columns: ReachColumns) -> bytes:
         "reasons": list(columns.reasons.items()),
         "names": list(columns.names.items()),
         "why": list(columns.why.items()),
-        _PLACES: True,
     }
     told = orjson.dumps(head, option=orjson.OPT_SERIALIZE_NUMPY)
     told += b" " * (-len(told) % _HEAD)
@@ -45,7 +43,6 @@ def columns_bytes(columns: ReachColumns) -> bytes:
         *(np.ascontiguousarray(getattr(columns, name), kind) for name, kind in _COUNTS.items()),
         *(np.ascontiguousarray(text.which, "<i2") for text in texts.values()),
         *(np.ascontiguousarray(where, "?") for where in columns.applying.values()),
-        np.ascontiguousarray(columns.positions, "<f8"),
     ]
     return b"".join(
         [len(told).to_bytes(_HEAD, "little"), told, *(each.tobytes() for each in arrays)]
@@ -61,7 +58,7 @@ def columns_from(kept: bytes) -> ReachColumns:
     >>> no = Texts((), np.array([-1, -1, -1]))
     >>> columns = ReachColumns(
     ...     whole, {}, no, whole, numbers[:, None], numbers, no, whole, no, no,
-    ...     np.zeros((3, 2)), np.zeros((3, 3)), {1: "too far"}, {},
+    ...     np.zeros((3, 2)), {1: "too far"}, {},
     ... )
     >>> back = columns_from(columns_bytes(columns))
     >>> back.margins, back.reasons
@@ -86,11 +83,9 @@ def columns_from(kept: bytes) -> ReachColumns:
     return ReachColumns(
         **columns,
         applying=applying,
-        # What was kept before has none.
-        positions=array("<f8", (3,)) if _PLACES in head else np.full((lines, 3), np.nan),
         reasons=dict(head["reasons"]),
         names=dict(head["names"]),
-        why=dict(head.get("why", ())),  # nor these, if it was kept long ago
+        why=dict(head.get("why", ())),  # what was kept long ago has none
     )
 
 

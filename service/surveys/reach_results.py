@@ -4,16 +4,19 @@ Columns are told piece by piece, so that a million targets never stand in memory
 them (reach_checks.py), and how they are kept (reach_kept.py).
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from math import isnan
 from typing import Any, NamedTuple
 
 import numpy as np
 
 from kinematics.reach.targets import VERDICTS
-from service.storage.ports import Survey
+from kinematics.table import FloatArray
+from service.convert import UNITS
+from service.storage.ports import Survey, SurveyStorage
 from service.surveys.kinds import Told
 from service.surveys.reach_kept import LINES, REFUSED, columns_from
+from service.surveys.reach_reading import read_piece
 from service.wire import csv_text, npy
 from service.wire.answers import json_bytes
 from service.wire.csv_text import REFUSALS_FROM
@@ -34,16 +37,22 @@ def summary_of(survey: Survey) -> dict[str, int]:
     return {"targets": survey.done} | {key.replace("-", "_"): n for key, n in found.items()}
 
 
-def told_results(survey: Survey, wanted: Format) -> Told:
+def told_results(survey: Survey, wanted: Format, store: SurveyStorage) -> Told:
     """Return how the result is told."""
-    joints = int(survey.about["joints"])
+    joints, units = int(survey.about["joints"]), UNITS[survey.about["units"]]
 
-    def of_columns(tell: Callable[[int, ReachColumns], bytes]) -> Callable[[int, bytes], bytes]:
-        return lambda number, made: tell(number, columns_from(made))
+    def of_columns(
+        tell: Callable[[int, ReachColumns, FloatArray], bytes],
+    ) -> Callable[[int, bytes], bytes]:
+        def part(number: int, made: bytes) -> bytes:
+            asked = read_piece(store.given(survey.id, number), units)
+            return tell(number, columns_from(made), asked.positions_out(units))
+
+        return part
 
     if wanted == "csv":
         same = _same(survey)
-        lines = of_columns(lambda _, columns: reach_lines(columns, same))
+        lines = of_columns(lambda _, columns, places: reach_lines(columns, places, same))
         return Told(csv_text.MEDIA_TYPE, reach_head(joints), lines)
     if wanted == "npy":
         names = columns_told(joints)
@@ -70,9 +79,9 @@ def columns_told(joints: int) -> tuple[str, ...]:
     return (*before, *joint_keys(joints), "margin", *after, *PLACE)
 
 
-def _doubles(_: int, columns: ReachColumns) -> bytes:
+def _doubles(_: int, columns: ReachColumns, places: FloatArray) -> bytes:
     told = columns.codes, columns.verdicts.which, columns.counts, columns.ranks
-    numbers = columns.joints, columns.margins, columns.errors, columns.positions
+    numbers = columns.joints, columns.margins, columns.errors, places[columns.targets]
     return npy.npy_bytes(np.column_stack([*told, *numbers])).tobytes()
 
 
@@ -83,12 +92,13 @@ def _same(survey: Survey) -> SameInAll:
     return SameInAll(0, 0, at, survey.about["units"], arm["revision"] or 0, arm["digest"])
 
 
-def _items(number: int, columns: ReachColumns) -> bytes:
+def _items(number: int, columns: ReachColumns, places: FloatArray) -> bytes:
+    where = [None if isnan(place[0]) else place for place in places.tolist()]
     texts = _Spelled(*(getattr(columns, name).told() for name in _Spelled._fields))
     items: list[dict[str, Any]] = []
     for line, rank in enumerate(columns.ranks.tolist()):
         if rank <= 1:
-            items.append(_item(columns, texts, line))
+            items.append(_item(columns, texts, line, where[len(items)]))
         if rank:
             items[-1]["solutions"].append(_solution(columns, texts, line))
     return (b"," if number else b"") + json_bytes(items)[1:-1]
@@ -103,14 +113,15 @@ class _Spelled(NamedTuple):
     states: list[str]
 
 
-def _item(columns: ReachColumns, texts: _Spelled, line: int) -> dict[str, Any]:
+def _item(
+    columns: ReachColumns, texts: _Spelled, line: int, place: Sequence[float] | None
+) -> dict[str, Any]:
     code, reason = int(columns.codes[line]), columns.reasons.get(line)
     verdict, why = texts.verdicts[line] or None, columns.why.get(line) or {}
     said = {"say": reason} if reason else None
-    place = columns.positions[line].tolist()
     item: dict[str, Any] = {
         "name": columns.names.get(line),
-        "position": None if isnan(place[0]) else place,
+        "position": place,
         "ok": code < REFUSALS_FROM,
         "code": code,
         "verdict": verdict,

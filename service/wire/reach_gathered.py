@@ -16,6 +16,7 @@ from kinematics.reach.targets import CONE, FREEDOMS
 from kinematics.table import FloatArray
 from kinematics.tolerances import TARGET_ANGLE, TARGET_POSITION
 from kinematics.travel.moves import Approach
+from service.convert import Units
 from service.details import Detail
 from service.errors import ServiceError, TooLarge, UnusableValue
 from service.wire.poses import Where
@@ -23,6 +24,9 @@ from service.wire.reach_request import MOST_TARGETS
 
 Noted = TypeVar("Noted")
 FIELD = "targets"
+_DECIMALS = 9
+"""Of positions that are told, in any unit: a nanometre at most."""
+
 USUAL_FORM = "quaternion-wxyz"
 FREEDOM_WORDS: Mapping[str, int] = {
     word: number for number, word in enumerate(FREEDOMS) if number != CONE
@@ -81,6 +85,16 @@ class ReadTargets:
     def count(self) -> int:
         """Targets in all."""
         return len(self.names)
+
+    def positions_out(self, units: Units) -> FloatArray:
+        """Return where targets are, (count, 3), in the user's units; NaN of one that is unusable.
+
+        What was typed reads the same: SI and back costs the last digit, which is rounded away.
+        """
+        found = np.full((self.count, 3), np.nan)
+        metres = self.tool_in_frame[:, :3, 3]
+        found[self.places] = np.round(units.length_out(metres), _DECIMALS)
+        return found
 
 
 class Gathered:

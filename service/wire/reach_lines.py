@@ -55,7 +55,6 @@ class ReachColumns:
     counts, ranks : solutions of the target, and which of them a line tells, from 1; 0 for none.
     joints : (lines, joints), in the user's units; NaN where there is no solution to be used.
     why : of a line with a reason, all that JSON tells of it, where that was asked for.
-    positions : (lines, 3), asked for, in the user's units and frame; NaN where none can be read.
     margins : (lines,), infinite without travel limits; errors : (lines, 2), position and angle.
     """
 
@@ -70,10 +69,15 @@ class ReachColumns:
     proofs: Texts
     branches: Texts
     errors: FloatArray
-    positions: FloatArray
     reasons: Mapping[int, str]
     names: Mapping[int, str]
     why: Mapping[int, Mapping[str, object]] = field(default_factory=dict)
+
+    @property
+    def targets(self) -> NDArray[np.intp]:
+        """Which of the targets each line is about, counted from the first one told."""
+        found: NDArray[np.intp] = np.cumsum(self.ranks <= 1) - 1
+        return found
 
 
 @dataclass(frozen=True)
@@ -105,8 +109,13 @@ def reach_head(joints: int) -> bytes:
     return (",".join(keys) + _END).encode("ascii")
 
 
-def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
-    """Return the lines."""
+def reach_lines(columns: ReachColumns, places: FloatArray, same: SameInAll) -> bytes:
+    """Return the lines.
+
+    Parameters
+    ----------
+    places : of the targets, (targets, 3), as they are told; NaN where one cannot be read.
+    """
     if not len(columns.codes):
         return b""
     begins = line_begins(columns.codes, columns.applying, (same.seq, same.tag, same.t_ms))
@@ -115,12 +124,9 @@ def reach_lines(columns: ReachColumns, same: SameInAll) -> bytes:
     numbers = np.column_stack([columns.joints, margins])
     joints = number_texts(np.where(none[:, None], NO_NUMBER, numbers))
     errors = number_texts(np.where(none[:, None], NO_NUMBER, columns.errors))
-    positions = [
-        ",," if unread else text
-        for text, unread in zip(
-            number_texts(columns.positions), np.isnan(columns.positions[:, 0]), strict=True
-        )
-    ]
+    unread = np.isnan(places[:, 0]).tolist()
+    where = [",," if no else text for text, no in zip(number_texts(places), unread, strict=True)]
+    positions = [where[target] for target in columns.targets.tolist()]
     tail = f"{same.units},{same.revision},{same.digest}"
     reasons, names = (
         [noted.get(line, "") for line in range(len(none))]

@@ -2,6 +2,7 @@
 
 import csv
 import io
+from dataclasses import replace
 
 import numpy as np
 
@@ -18,6 +19,9 @@ from service.wire.reach_lines import (
 SAME = SameInAll(7, 5, 1_796_145_917_630, "mm-deg", 3, "e994bb33")
 
 
+PLACES = np.array([[1.25, -0.0, 300.1], [9e5, 0.0, 0.0], [np.nan] * 3])
+
+
 def columns() -> ReachColumns:
     return ReachColumns(
         codes=np.array([3, 200, 105]),
@@ -31,7 +35,6 @@ def columns() -> ReachColumns:
         proofs=Texts(("witness", "bound"), np.array([0, 1, -1])),
         branches=Texts(("wrist ahead of axis 1, elbow above",), np.array([0, -1, -1])),
         errors=np.array([[1e-9, 0.0], [np.nan, np.nan], [np.nan, np.nan]]),
-        positions=np.array([[1.25, -0.0, 300.1], [9e5, 0.0, 0.0], [np.nan] * 3]),
         reasons={1: "31 mm too far", 2: '"x" must be a number'},
         names={0: "lug-1", 1: "lug, second", 2: 'the "third"'},
     )
@@ -48,7 +51,7 @@ def test_the_head_begins_with_the_keys_of_a_flat_answer() -> None:
 
 
 def test_lines_can_be_read_back() -> None:
-    text = (reach_head(2) + reach_lines(columns(), SAME)).decode("utf-8")
+    text = (reach_head(2) + reach_lines(columns(), PLACES, SAME)).decode("utf-8")
     assert text.count("\r\n") == 4
     one, two, three = csv.DictReader(io.StringIO(text, newline=""))
     assert (one["ok"], one["code"], one["flags"]) == ("1", "3", "5")
@@ -67,11 +70,19 @@ def test_lines_can_be_read_back() -> None:
     assert {line["digest"] for line in (one, two, three)} == {"e994bb33"}
 
 
+def test_each_line_has_the_place_of_its_target() -> None:
+    # The first target's second posture, then two targets without one.
+    several = replace(columns(), ranks=np.array([1, 2, 0]))
+    assert several.targets.tolist() == [0, 0, 1]
+    text = (reach_head(2) + reach_lines(several, PLACES[:2], SAME)).decode("utf-8")
+    assert [line["x"] for line in csv.DictReader(io.StringIO(text))] == ["1.25", "1.25", "900000.0"]
+
+
 def test_none_are_none() -> None:
     numbers, whole = np.empty(0), np.empty(0, dtype=np.int64)
     texts = Texts((), whole)
     empty = ReachColumns(
         whole, {}, texts, whole, np.empty((0, 2)), numbers, texts, whole, texts, texts,
-        np.empty((0, 2)), np.empty((0, 3)), {}, {},
+        np.empty((0, 2)), {}, {},
     )  # fmt: skip
-    assert reach_lines(empty, SAME) == b""
+    assert reach_lines(empty, np.empty((0, 3)), SAME) == b""
