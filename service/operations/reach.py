@@ -97,9 +97,9 @@ class ManyTargets:
         first, last = np.searchsorted(self.read.places, (begin, end)).tolist()
         targets = self.targets.only(np.arange(first, last))
         approaches = {
-            number - first: self.read.approaches[number]
-            for number in range(first, last)
-            if number in self.read.approaches
+            number - first: approach
+            for number, approach in self.read.approaches.items()
+            if first <= number < last
         }
         by_singularity = self.wanted.order == SINGULARITY
         every_way = by_singularity or not self.wanted.best_only

@@ -4,7 +4,6 @@ Left out: printing them (wire/reach_lines.py).
 """
 
 from dataclasses import replace
-from itertools import chain
 from typing import NamedTuple
 
 import numpy as np
@@ -87,11 +86,10 @@ def _lines_of(many: ManyTargets, span: range, told: ToldChecks, asked: range) ->
     counts = np.where(reached, listed, 1)
     targets = np.repeat(np.arange(len(counts)), counts)
     within = np.arange(len(targets)) - np.repeat(np.cumsum(counts) - counts, counts)
-    in_order = np.fromiter(chain.from_iterable(told.ranks), np.intp, len(checks.margin))
     first = checks.offsets[:-1][targets] + within
     tells = reached[targets]
     solutions = np.full(len(targets), -1)
-    solutions[tells] = in_order[first[tells]]
+    solutions[tells] = told.in_order[first[tells]]
     lines = _Lines(
         many.read.places[span.start : span.stop][targets],
         targets,

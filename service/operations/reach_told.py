@@ -6,7 +6,7 @@ Words are made one target at a time. Left out: asking for solutions (reach.py), 
 
 from collections.abc import Sequence
 from functools import cached_property
-from itertools import pairwise
+from itertools import chain, pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -59,7 +59,6 @@ class ToldChecks:
     ----------
     judged : the solutions' singularity; None where there are none.
     exceeded : which solutions are beyond a working travel, and which beyond a travel limit.
-    ranks : for each target, indices into all solutions, the best first.
 
     With ``best_only`` one solution is told of each target, but all that exceed travel; with
     ``first_alone`` the first of one target, which takes less.
@@ -81,10 +80,21 @@ class ToldChecks:
         self.judged, self.exceeded = judged, exceeded
         self._approached = approached
         self._best_only, self._first_alone = best_only, first_alone
-        spans = [range(*span) for span in pairwise(checks.offsets.tolist())]
-        self.ranks: Sequence[Sequence[int]] = (
-            [self._ranked(span) for span in spans] if by_singularity else spans
-        )
+        self._by_singularity = by_singularity
+
+    @cached_property
+    def ranks(self) -> Sequence[Sequence[int]]:
+        """For each target, indices into all solutions, the best first."""
+        spans = [range(*span) for span in pairwise(self.checks.offsets.tolist())]
+        return [self._ranked(span) for span in spans] if self._by_singularity else spans
+
+    @property
+    def in_order(self) -> NDArray[np.intp]:
+        """All that ``ranks`` says in a row; solutions stand in their order unless sorted anew."""
+        count = len(self.checks.margin)
+        if not self._by_singularity:
+            return np.arange(count)
+        return np.fromiter(chain.from_iterable(self.ranks), np.intp, count)
 
     def _ranked(self, solutions: range) -> Sequence[int]:
         """Return solutions, those with a whole approach first, the farthest from singular first."""

@@ -8,7 +8,9 @@ with the same targets in the same pieces, for what a survey tells: verdict and b
 singularity; its rate for verdict and posture alone is printed beside. Targets come as a table (NPY)
 and as JSON, which workers still have to read. A survey is timed from its beginning to its end, with
 its processes started before; the queue is by how much a chunk takes longer than the work on it. Two
-bare processes that solve show what the machine has to give. Least of three.
+bare processes that solve show what the machine has to give. Solver and surveys take turns, for a
+machine that is slow for half a minute would else be slow for one of them alone; what is said is the
+median of turns.
 """
 
 import gc
@@ -19,6 +21,7 @@ import subprocess
 import sys
 import tempfile
 import time
+from collections.abc import Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from contextlib import closing
 from datetime import datetime
@@ -54,9 +57,27 @@ from tests.benchmarks.watched_processes import Watched
 from tests.conftest import ROOT
 
 REPEATS = 3
+TURNS = 6
+LONGER = 3
+"""Times as many targets in surveys beside which poses are asked for, so that 1 % is some dozen."""
+
 ARM = json.loads((ROOT / "service/demo/arms/housing-loader.json").read_text("utf-8"))
 ARM = {key: value for key, value in ARM.items() if key not in ("cell", "frames")}
 NPY = "application/x-npy"
+
+
+class Way(NamedTuple):
+    """How many processes a survey has, and what its targets came as."""
+
+    workers: int
+    name: str
+
+
+class Turn(NamedTuple):
+    """Targets a second of the solver alone, and of a survey right after it."""
+
+    solver: float
+    survey: float
 
 
 class Asked(NamedTuple):
@@ -86,13 +107,13 @@ def question(count: int, seed: int) -> Asked:
     return Asked({"kind": "reach-checks", "request": request}, table, targets)
 
 
-def solver_seconds(targets: Targets, *, judged: bool) -> float:
+def solver_seconds(targets: Targets, *, judged: bool, repeats: int = REPEATS) -> float:
     """Return how long the solver takes alone, in the pieces of a survey."""
     arm = read_arm(ARM).arm
     reacher, space = Reacher(arm, np.eye(4)), task_space(arm, np.eye(4))
     reacher.check(targets.only(np.arange(10)))
     best = np.inf
-    for _ in range(REPEATS):
+    for _ in range(repeats):
         begin = time.perf_counter()
         for first in range(0, len(targets), LARGEST_PIECE):
             last = min(first + LARGEST_PIECE, len(targets))
@@ -233,25 +254,40 @@ class Served:
         self._process.wait(10)
 
 
-def rates(served: Served, asked: Asked) -> dict[str, float]:
-    """Return targets a second of surveys of a table, and of a body."""
-    ways = {"table": partial(served.of_table, asked), "JSON": partial(served.of_body, asked)}
-    for way in ways.values():
-        served.seconds(way())
-    return {
-        name: len(asked.table) / min(served.seconds(way()) for _ in range(REPEATS))
-        for name, way in ways.items()
+def in_turns(servers: Mapping[int, Served], asked: Asked) -> Mapping[Way, Sequence[Turn]]:
+    """Return what each turn of each survey came to, just after one of the solver alone."""
+    ways = {
+        Way(workers, name): (served, create)
+        for name in ("table", "JSON")
+        for workers, served in servers.items()
+        for create in [partial(served.of_table if name == "table" else served.of_body, asked)]
     }
+    count, some = len(asked.table), asked.targets.only(np.arange(len(asked.table) // 2))
+    turns: dict[Way, list[Turn]] = {way: [] for way in ways}
+    for served, create in ways.values():
+        served.seconds(create())
+    for _ in range(TURNS):
+        for way, (served, create) in ways.items():
+            alone = solver_seconds(some, judged=True, repeats=1)
+            turns[way].append(Turn(len(some) / alone, count / served.seconds(create())))
+    return turns
+
+
+def spread(numbers: NDArray[np.float64]) -> str:
+    """Return a median, and between what it lies."""
+    return f"{np.median(numbers):.2f} ({numbers.min():.2f} to {numbers.max():.2f})"
 
 
 def meanwhile(served: Served, asked: Asked, rate: float) -> str:
     """Return what a GET pose takes with and without a survey."""
     idle, beside, busy = np.inf, np.inf, np.inf
+    asked = asked._replace(table=np.tile(asked.table, (LONGER, 1)))
+    seconds = max(len(asked.table) / rate * 0.8, 0.5)
     for _ in range(REPEATS):
-        idle = min(idle, served.p99(2.0))
+        idle = min(idle, served.p99(seconds))
         beside = min(beside, _beside_bare_work(served))
         survey = served.of_table(asked)
-        busy = min(busy, served.p99(max(len(asked.table) / rate * 0.8, 0.5)))
+        busy = min(busy, served.p99(seconds))
         served.seconds(survey)
     ratio = f"{busy / idle:.2f} times (asked: 1.5), {busy / beside:.2f} times that beside them"
     return (
@@ -292,21 +328,21 @@ def main() -> None:
         print(f"{name}: read, solved, told {count / each:8.0f} targets/s, {whole / each:.2f} of it")
     bare = bare_rate(count, seed)
     print(f"two bare processes {bare:.0f} targets/s, {bare * whole / count:.2f} times one")
-    found = {}
     with tempfile.TemporaryDirectory() as folder:
         print(f"queue {queue_ms(asked, Path(folder)):.1f} ms a chunk (asked: 5)")
-        for workers in (1, 2):
-            served = Served(workers, Path(folder))
-            found[workers] = rates(served, asked)
-            for name, rate in found[workers].items():
-                share = rate * whole / count / workers
-                said = f"{share:.2f} of the solver's rate a core (asked: 0.9)"
-                print(f"survey of {name}, {workers} process(es) {rate:8.0f} targets/s, {said}")
-            if workers == 2:
-                print(meanwhile(served, asked, found[2]["table"]))
+        servers = {workers: Served(workers, Path(folder)) for workers in (1, 2)}
+        turns = in_turns(servers, asked)
+        for way, each in turns.items():
+            share = np.array([turn.survey / turn.solver / way.workers for turn in each])
+            rate = np.median([turn.survey for turn in each])
+            said = f"{spread(share)} of the solver's rate a core (asked: 0.9)"
+            print(f"survey of {way.name}, {way.workers} process(es) {rate:8.0f} targets/s, {said}")
+        for name in ("table", "JSON"):
+            one, two = (np.array([turn.survey for turn in turns[Way(n, name)]]) for n in (1, 2))
+            print(f"two processes: {spread(two / one)} times one ({name}, asked: 1.8)")
+        print(meanwhile(servers[2], asked, min(turn.survey for turn in turns[Way(2, "table")])))
+        for served in servers.values():
             served.stop()
-    told = ", ".join(f"{found[2][name] / found[1][name]:.2f} ({name})" for name in found[1])
-    print(f"two processes: {told} times one (asked: 1.8)")
 
 
 if __name__ == "__main__":
