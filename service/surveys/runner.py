@@ -60,6 +60,8 @@ MOST_DEATHS = 3
 """Of workers in a row, with nothing made between: then it is the survey that kills them."""
 
 _Made = tuple[list[MadePiece], float]
+_Finished = tuple[Sequence[GivenPiece], list[MadePiece]]
+"""A chunk that has come back and is not in the store yet."""
 
 
 class _Over(Exception):
@@ -191,21 +193,25 @@ class Runner:
         gathers = isinstance(SURVEY_KINDS[survey.kind], Gathers)
         chunks = Chunks(self._store, survey.id, gathers=gathers)
         in_hand: dict[Future[_Made], Sequence[GivenPiece]] = {}
+        unwritten: list[_Finished] = []
         deaths = 0
         try:
             while True:
                 try:
-                    self._hand_out(executor, survey, setup, chunks, in_hand)
-                    if not in_hand:
+                    # First what is next: no process waits for the disk.
+                    self._hand_out(executor, survey, setup, chunks, in_hand, unwritten)
+                    if not in_hand and not unwritten:
                         return
-                    for future in wait(in_hand, _LOOK_S, FIRST_COMPLETED).done:
-                        made, seconds = future.result()
-                        pieces = in_hand.pop(future)
+                    while unwritten:
+                        pieces, made = unwritten.pop(0)
                         if not self._store.keep(survey.id, made):
                             raise _Over
-                        deaths = 0
-                        chunks.took(seconds, len(pieces))
                         pace.went_on(sum(piece.size for piece in pieces))
+                    for future in wait(in_hand, _LOOK_S, FIRST_COMPLETED).done:
+                        made, seconds = future.result()
+                        unwritten.append((in_hand.pop(future), made))
+                        chunks.took(seconds, len(made))
+                        deaths = 0
                 except BrokenExecutor:
                     deaths += 1
                     executor = self._anew(chunks, in_hand, deaths)
@@ -220,9 +226,10 @@ class Runner:
         setup: Any,
         chunks: Chunks,
         in_hand: dict[Future[_Made], Sequence[GivenPiece]],
+        unwritten: Sequence[_Finished],
     ) -> None:
         while (beside := len(in_hand)) < (room := self._pool.room):
-            pieces = chunks.next(room, none_in_hand=not beside)
+            pieces = chunks.next(room, none_in_hand=not (beside or unwritten))
             if not pieces:
                 return
             given = survey.kind, survey.id, setup, pieces, chunks.others(pieces)

@@ -3,14 +3,13 @@
     python -m tests.benchmarks.surveys [targets] [seed]
 
 Asked: 0.9 of the solver's rate on a core, 1.8 times on two, at most 5 ms of queue for a chunk, and
-a GET pose whose p99 is at most 1.5 times that without a survey. The solver is asked in this process
-with the same targets in the same pieces, for what a survey tells: verdict and best posture, and its
-singularity; its rate for verdict and posture alone is printed beside. Targets come as a table (NPY)
-and as JSON, which workers still have to read. A survey is timed from its beginning to its end, with
-its processes started before; the queue is by how much a chunk takes longer than the work on it. Two
-bare processes that solve show what the machine has to give. Solver and surveys take turns, for a
-machine that is slow for half a minute would else be slow for one of them alone; what is said is the
-median of turns.
+a GET pose whose p99 is at most 1.5 times that without a survey. The solver is asked in processes of
+its own, as many as the survey has, for such targets in such pieces, and for what a survey tells:
+verdict and best posture, and its singularity. Targets come as a table (NPY) and as JSON, which
+workers still have to read. A survey is timed from its beginning to its end, with its processes
+started before; the queue is by how much a chunk takes longer than the work on it. Solver and
+surveys take turns, for a machine that is slow for half a minute would else be slow for one of them
+alone; what is said is the median of turns, and between what they lie.
 """
 
 import gc
@@ -57,9 +56,15 @@ from tests.benchmarks.watched_processes import Watched
 from tests.conftest import ROOT
 
 REPEATS = 3
-TURNS = 6
-LONGER = 3
+TURNS = 5
+SOME = 100_000
+"""Targets where a survey's many would take long and show no more."""
+
+LONGER = 2
 """Times as many targets in surveys beside which poses are asked for, so that 1 % is some dozen."""
+
+LOOK_S = 0.5
+"""How often it is looked whether a survey has ended: each look takes some ms from it."""
 
 ARM = json.loads((ROOT / "service/demo/arms/housing-loader.json").read_text("utf-8"))
 ARM = {key: value for key, value in ARM.items() if key not in ("cell", "frames")}
@@ -74,7 +79,7 @@ class Way(NamedTuple):
 
 
 class Turn(NamedTuple):
-    """Targets a second of the solver alone, and of a survey right after it."""
+    """Targets a second of a process of the bare solver, and of a whole survey right after it."""
 
     solver: float
     survey: float
@@ -124,15 +129,34 @@ def solver_seconds(targets: Targets, *, judged: bool, repeats: int = REPEATS) ->
     return best
 
 
-def bare_rate(count: int, seed: int) -> float:
-    """Return targets a second of two processes that solve and judge, and do nothing else."""
-    with ProcessPoolExecutor(2, get_context("spawn")) as pool:
-        ends = [pool.submit(_bare, count, seed + number) for number in range(2)]
-        return sum(count / end.result() for end in ends)
+class Solver:
+    """Processes that solve and judge, and do nothing else."""
+
+    def __init__(self, processes: int, seed: int) -> None:
+        self.processes = processes
+        self._pool = ProcessPoolExecutor(processes, get_context("spawn"), _ready, (seed,))
+        self.rate()
+
+    def rate(self) -> float:
+        """Return targets a second of each of them, all at the same time."""
+        ends = [self._pool.submit(_solve) for _ in range(self.processes)]
+        return sum(end.result() for end in ends) / self.processes
+
+    def stop(self) -> None:
+        """End them."""
+        self._pool.shutdown()
 
 
-def _bare(count: int, seed: int) -> float:
-    return solver_seconds(question(count, seed).targets, judged=True)
+_targets: list[Targets] = []
+
+
+def _ready(seed: int) -> None:
+    _targets.append(question(SOME, seed).targets)
+    gc.disable()  # as in the processes of surveys
+
+
+def _solve() -> float:
+    return SOME / solver_seconds(_targets[0], judged=True, repeats=1)
 
 
 def pieces_seconds(asked: Asked, *, table: bool) -> float:
@@ -172,7 +196,7 @@ def _per_chunk(surveys: Surveys, asked: Asked, pool: Watched) -> float:
     pool.seconds.clear()
     survey, _ = surveys.create(wanted, None, b"", TableOfDoubles(asked.table))
     while not (found := surveys.get(survey.id)).finished_at:
-        time.sleep(0.05)
+        time.sleep(LOOK_S)
     assert found.state == "succeeded", found.reason
     assert found.started_at
     taken = (found.finished_at - found.started_at).total_seconds()
@@ -230,7 +254,7 @@ class Served:
             found = self.ask("GET", f"/v1/surveys/{survey}")
             if found["finished_at"]:
                 break
-            time.sleep(0.05)
+            time.sleep(LOOK_S)
         assert found["state"] == "succeeded", found
         ends = [datetime.fromisoformat(found[key]) for key in ("started_at", "finished_at")]
         return (ends[1] - ends[0]).total_seconds()
@@ -254,22 +278,24 @@ class Served:
         self._process.wait(10)
 
 
-def in_turns(servers: Mapping[int, Served], asked: Asked) -> Mapping[Way, Sequence[Turn]]:
-    """Return what each turn of each survey came to, just after one of the solver alone."""
+def in_turns(
+    servers: Mapping[int, Served], solvers: Mapping[int, Solver], asked: Asked
+) -> Mapping[Way, Sequence[Turn]]:
+    """Return what each turn of each survey came to, just after one of as many bare solvers."""
     ways = {
         Way(workers, name): (served, create)
         for name in ("table", "JSON")
         for workers, served in servers.items()
         for create in [partial(served.of_table if name == "table" else served.of_body, asked)]
     }
-    count, some = len(asked.table), asked.targets.only(np.arange(len(asked.table) // 2))
+    count = len(asked.table)
     turns: dict[Way, list[Turn]] = {way: [] for way in ways}
     for served, create in ways.values():
         served.seconds(create())
     for _ in range(TURNS):
         for way, (served, create) in ways.items():
-            alone = solver_seconds(some, judged=True, repeats=1)
-            turns[way].append(Turn(len(some) / alone, count / served.seconds(create())))
+            alone = solvers[way.workers].rate()
+            turns[way].append(Turn(alone, count / served.seconds(create())))
     return turns
 
 
@@ -316,27 +342,30 @@ def _solve_for(seconds: float, seed: int) -> None:
 
 def main() -> None:
     """Print everything."""
-    count = int(sys.argv[1]) if len(sys.argv) > 1 else 200_000
+    count = int(sys.argv[1]) if len(sys.argv) > 1 else 250_000
     seed = int(sys.argv[2]) if len(sys.argv) > 2 else int.from_bytes(os.urandom(4), "big")
     print(f"{count} targets, seed {seed}, {os.cpu_count()} processors")
-    asked = question(count, seed)
-    alone, whole = (solver_seconds(asked.targets, judged=judged) for judged in (False, True))
-    print(f"solver alone, verdict and posture {count / alone:8.0f} targets/s")
-    print(f"the same and its singularity      {count / whole:8.0f} targets/s")
+    asked, some = question(count, seed), question(SOME, seed)
+    alone, whole = (solver_seconds(some.targets, judged=judged) for judged in (False, True))
+    print(f"solver alone, verdict and posture {SOME / alone:8.0f} targets/s")
+    print(f"the same and its singularity      {SOME / whole:8.0f} targets/s")
     for name in ("table", "JSON"):
-        each = pieces_seconds(asked, table=name == "table")
-        print(f"{name}: read, solved, told {count / each:8.0f} targets/s, {whole / each:.2f} of it")
-    bare = bare_rate(count, seed)
-    print(f"two bare processes {bare:.0f} targets/s, {bare * whole / count:.2f} times one")
+        each = pieces_seconds(some, table=name == "table")
+        print(f"{name}: read, solved, told {SOME / each:8.0f} targets/s, {whole / each:.2f} of it")
     with tempfile.TemporaryDirectory() as folder:
         print(f"queue {queue_ms(asked, Path(folder)):.1f} ms a chunk (asked: 5)")
         servers = {workers: Served(workers, Path(folder)) for workers in (1, 2)}
-        turns = in_turns(servers, asked)
+        solvers = {processes: Solver(processes, seed) for processes in (1, 2)}
+        turns = in_turns(servers, solvers, asked)
         for way, each in turns.items():
             share = np.array([turn.survey / turn.solver / way.workers for turn in each])
             rate = np.median([turn.survey for turn in each])
             said = f"{spread(share)} of the solver's rate a core (asked: 0.9)"
             print(f"survey of {way.name}, {way.workers} process(es) {rate:8.0f} targets/s, {said}")
+        for solver in solvers.values():
+            solver.stop()
+        one, two = (np.array([turn.solver for turn in turns[Way(n, "table")]]) for n in (1, 2))
+        print(f"two bare solvers: {spread(2 * two / one)} times one")
         for name in ("table", "JSON"):
             one, two = (np.array([turn.survey for turn in turns[Way(n, name)]]) for n in (1, 2))
             print(f"two processes: {spread(two / one)} times one ({name}, asked: 1.8)")
