@@ -1,4 +1,7 @@
-"""Every threshold of the core, each with its reason. Lengths in metres, angles in radians."""
+"""Thresholds that several parts of the core share, each with its reason.
+
+Lengths in metres, angles in radians. Left out: those of one package (its own tolerances.py).
+"""
 
 # --- input ---------------------------------------------------------------------------------
 LARGEST_MAGNITUDE = 1e9
@@ -230,17 +233,13 @@ SUSPECTS_ALIKE = 1e-6
 """Relative difference of two relations' statistics within which neither is the more likely wrong:
 in a single loop all are the same, but for rounding and the bend of large residuals."""
 
-# --- reach -----------------------------------------------------------------------------------
+# --- joint motions for a pose ----------------------------------------------------------------
 TARGET_POSITION = 1e-5
 """Metres (0.01 mm) by which an arm with fewer than six joints may miss a target that states no
 tolerance of its own: what two decimals of a millimetre leave; fixed by the wire's contract."""
 
 TARGET_ANGLE = 1.7453292519943296e-4
 """Radians (0.01 deg), likewise: what two decimals of a degree leave."""
-
-EXACT_REACH = 1e-9
-"""Share of the length, and radians, within which six joints and more are on their target; fixed by
-the wire's contract."""
 
 TRAVEL_EDGE = 1e-7
 """Radians or metres by which a joint value may exceed its limit and be put onto it, if the tool is
@@ -252,17 +251,6 @@ it: far above the rounding of solutions, far below what whole turns through a ra
 
 MOST_TURNS = 256
 """Postures of one solution that are looked at: six joints of two turns each have 64."""
-
-BOUND_ROUNDING = 1e-9
-"""Share of the arm's length by which a target must exceed a bound: a target that is exactly as
-far away as the links reach is theirs, and what solvers accept is within 1e-9 as well."""
-
-BRANCH_LEVEL = 1e-9
-"""Sign of a feature, over the length, that is told as the first of its words: where two ways meet
-rounding must not choose."""
-
-BRANCH_SETTLED = 1e-6
-"""The same in the posture that settles which side of an arm is which: tables are typed."""
 
 LOST_RANK = 1e-6
 """Smallest singular value, lengths over the arm's, of solutions that may be points of a continuum,
@@ -277,46 +265,14 @@ WORTH_COMPROMISING = 100.0
 """Tolerances by which a solution of five joints may miss, where it is in line with the missing one,
 for a no not to be proved: what a hundredfold magnification leaves of an error."""
 
-WORTH_LEADING = 1000.0
-"""Tolerances by which a solution of few joints may miss and still be led to where it misses least:
-beside a fold what is typed moves it a hundred times as far and more, and leading it takes
-microseconds."""
-
 SAME_COMPROMISE = 1e-6
 """Radians, or metres, within which two postures that miss a target least are one: steps downhill
 end within the root of the rounding of what is left."""
-
-FAMILY_MEMBER = 1e-6
-"""Radians, or metres, by which a posture may differ from a family in the joints that this holds
-still and be one of its points: near singular places joint values are good to some 1e-8."""
 
 NEARLY_REACHED = 10.0
 """Tolerances by which an arm of few joints may fall short at some stage and still be tried for a
 pose within tolerance: shortfalls of one stage are not yet errors of the pose."""
 
-MOST_FOLLOWED = 200
-"""Targets checked together whose families are followed: some 5 to 20 ms each, seconds in all."""
-
-MOST_SPARE_FOLLOWED = 1
-"""The same for arms with joints to spare, whose every posture is of families: some 50 ms each."""
-
-MOST_SPANNED = 50
-"""The same for arms of which one joint is held at many values: some 10 ms each, half a second."""
-
 AXES_WELL_ASLANT = 0.01
 """Sine between tool z and the axes of an arm that cannot tilt from which on a target has one turn
 about tool z alone: below it the tolerance of an angle leaves some degrees of that turn open."""
-
-MOST_LISTED = 64
-"""Postures of one target that are listed, best first: nobody chooses among more."""
-
-LARGEST_CONE = 3.141592653589793
-"""Radians: a cone of half a turn to each side holds every direction."""
-
-FEWEST_SAMPLES_KEPT = 1.0 / 1024.0
-"""Share of the postures drawn in the box around travel that keep to combined travel: below it a
-million samples take minutes, and the limits are most often typed wrong."""
-
-SAMPLES_JUDGED = 16384
-"""Samples whose nearness to singular postures is judged: a share is then told to half a percent,
-in some 50 ms; evenly spread, they err less than so many drawn by chance."""

@@ -22,8 +22,9 @@ from kinematics.inverse.measured import POSE, errors_of
 from kinematics.inverse.screws import Screws
 from kinematics.kernels.compiler import for_kernel
 from kinematics.reach.targets import Family
+from kinematics.reach.tolerances import EXACT_REACH, FAMILY_MEMBER
 from kinematics.table import FloatArray, Travel
-from kinematics.tolerances import EXACT_REACH, FAMILY_MEMBER, LOST_RANK, TRAVEL_EDGE
+from kinematics.tolerances import LOST_RANK, TRAVEL_EDGE
 from kinematics.travel_limits import travel_margin
 
 TURN = 2.0 * np.pi

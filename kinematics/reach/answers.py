@@ -42,10 +42,10 @@ from kinematics.reach.targets import (
     Checks,
     Targets,
 )
+from kinematics.reach.tolerances import MOST_LISTED
 from kinematics.reach.verdicts import Ranked, Ranking
 from kinematics.reach.ways import Asked, Basis
 from kinematics.table import FloatArray
-from kinematics.tolerances import MOST_LISTED
 
 
 class Answerer:

@@ -18,8 +18,9 @@ from numpy.typing import NDArray
 
 from kinematics.inverse.screws import Screws
 from kinematics.reach.arm_parts import meeting_point
+from kinematics.reach.tolerances import BOUND_ROUNDING
 from kinematics.table import FloatArray
-from kinematics.tolerances import BOUND_ROUNDING, SHORTEST_LENGTH
+from kinematics.tolerances import SHORTEST_LENGTH
 
 _SWEEPS = 60
 """Improvements of every point in turn; any points are a bound, these a near best one."""

@@ -20,8 +20,8 @@ from kinematics.inverse.screws import Screws
 from kinematics.kernels.branch_signs import branch_codes, branch_signs
 from kinematics.kernels.compiler import for_kernel
 from kinematics.reach.arm_parts import BY_OFFSET, parts_of
+from kinematics.reach.tolerances import BRANCH_LEVEL, BRANCH_SETTLED
 from kinematics.table import FloatArray
-from kinematics.tolerances import BRANCH_LEVEL, BRANCH_SETTLED
 
 _NUMBERS = ("", "second", "third", "fourth", "fifth", "sixth", "seventh", "eighth")
 

@@ -26,8 +26,8 @@ from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import Method
 from kinematics.reach.aligned_joints import AlignedJoints
 from kinematics.reach.targets import Family
+from kinematics.reach.tolerances import FAMILY_MEMBER, MOST_FOLLOWED
 from kinematics.table import FloatArray
-from kinematics.tolerances import FAMILY_MEMBER, MOST_FOLLOWED
 
 FamiliesOf = dict[int, tuple[Family, ...]]
 

@@ -21,9 +21,9 @@ from kinematics.inverse.several import joined
 from kinematics.inverse.solve import Method
 from kinematics.inverse.tolerances import BOX_BUDGET, BOX_BUDGET_OF_MANY, BOXES_TO_CONFIRM
 from kinematics.reach.targets import Targets
+from kinematics.reach.tolerances import EXACT_REACH
 from kinematics.reach.verdicts import Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import EXACT_REACH
 
 _SELDOM_BEYOND = 6
 """Joints beyond which even a million boxes seldom prove anything, so that a second is not spent."""

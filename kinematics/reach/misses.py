@@ -24,9 +24,9 @@ from kinematics.inverse.iterative import TASKS, Search
 from kinematics.inverse.measured import DIRECTION, POSE, POSITION, errors_of
 from kinematics.kernels.compiler import for_kernel
 from kinematics.reach.targets import Reason, Targets
+from kinematics.reach.tolerances import MOST_FOLLOWED
 from kinematics.reach.verdicts import Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import MOST_FOLLOWED
 
 _STEPS = 40
 _PLACE_KEPT = 0.005

@@ -21,9 +21,10 @@ from kinematics.inverse.measured import errors_of, wrapped
 from kinematics.inverse.several import joined, picked
 from kinematics.inverse.solve import Method
 from kinematics.reach.targets import Targets
+from kinematics.reach.tolerances import WORTH_LEADING
 from kinematics.reach.verdicts import Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import NEARLY_REACHED, WORTH_LEADING
+from kinematics.tolerances import NEARLY_REACHED
 
 _SEVERAL, _SHORT = 4, 16
 """Postures that a short search looks for, and its starts."""

@@ -50,9 +50,9 @@ from kinematics.reach.targets import (
     Reason,
     Targets,
 )
+from kinematics.reach.tolerances import MOST_SPANNED, MOST_SPARE_FOLLOWED
 from kinematics.reach.verdicts import Ranked, Ranking
 from kinematics.table import FloatArray
-from kinematics.tolerances import MOST_SPANNED, MOST_SPARE_FOLLOWED
 from kinematics.travel_limits import limits_of
 
 _SAID = {

@@ -20,9 +20,9 @@ from numpy.typing import NDArray
 from kinematics.arm import Arm
 from kinematics.chain import tool_in_base
 from kinematics.errors import KinematicsError
+from kinematics.reach.tolerances import FEWEST_SAMPLES_KEPT
 from kinematics.reach.travel_region import travel_region
 from kinematics.table import FloatArray
-from kinematics.tolerances import FEWEST_SAMPLES_KEPT
 
 BLOCK = 4096
 """Postures of which numbers, poses and positions stay within a processor's fast memory."""

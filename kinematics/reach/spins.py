@@ -34,9 +34,9 @@ from kinematics.reach.targets import (
     Targets,
     Words,
 )
+from kinematics.reach.tolerances import EXACT_REACH
 from kinematics.reach.ways import Asked, Basis, Way
 from kinematics.table import FloatArray
-from kinematics.tolerances import EXACT_REACH
 
 RING = 72
 """Turns about tool z that are tried: every 5 deg."""

@@ -25,9 +25,10 @@ from kinematics.kernels.best_postures import best_first, in_steps, preferred
 from kinematics.kernels.decomposition import decompose
 from kinematics.reach.branches import Branches
 from kinematics.reach.targets import Targets
+from kinematics.reach.tolerances import EXACT_REACH, MOST_LISTED
 from kinematics.table import FloatArray
 from kinematics.task_space import TaskSpace, task_space
-from kinematics.tolerances import EXACT_REACH, MOST_LISTED, TRAVEL_EDGE
+from kinematics.tolerances import TRAVEL_EDGE
 
 
 class Ranked(NamedTuple):

@@ -13,8 +13,9 @@ import numpy as np
 
 from kinematics.chain import tool_in_base
 from kinematics.kernels.compiler import for_kernel
+from kinematics.reach.tolerances import EXACT_REACH
 from kinematics.table import FloatArray
-from kinematics.tolerances import EXACT_REACH, TRAVEL_EDGE
+from kinematics.tolerances import TRAVEL_EDGE
 from kinematics.travel.arm_on_lines import ArmOnLines
 from kinematics.travel.extremes import first_beyond
 from kinematics.travel.folds import fold_at

@@ -19,8 +19,8 @@ from kinematics.reach.sample_summary import (
     summary_of,
 )
 from kinematics.reach.samples import JointSamples, tool_positions
+from kinematics.reach.tolerances import SAMPLES_JUDGED
 from kinematics.table import FloatArray
-from kinematics.tolerances import SAMPLES_JUDGED
 from service.convert import joint_values_out, pose_orientations_out
 from service.errors import TooLarge, UnusableValue
 from service.operations.arms import Arms

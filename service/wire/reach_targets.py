@@ -14,8 +14,9 @@ from kinematics.errors import KinematicsError
 from kinematics.orientation_forms import FORMS
 from kinematics.pose_batches import poses_as_given
 from kinematics.reach.targets import CONE, NONE, ORIENTATION
+from kinematics.reach.tolerances import LARGEST_CONE
 from kinematics.table import FloatArray
-from kinematics.tolerances import LARGEST_CONE, LARGEST_MAGNITUDE, TARGET_ANGLE, TARGET_POSITION
+from kinematics.tolerances import LARGEST_MAGNITUDE, TARGET_ANGLE, TARGET_POSITION
 from kinematics.transforms import checked_position, pose
 from service.convert import Units
 from service.errors import MissingField, ServiceError, UnusableValue

@@ -147,7 +147,14 @@ LAYERS = (
     ("inverse.few_joints",),
     ("inverse.solve",),
     # Verdicts on targets: what is asked and answered, the parts of an arm, and how they are made.
-    ("reach", "reach.targets", "reach.arm_parts", "reach.aligned_joints", "reach.ways"),
+    (
+        "reach",
+        "reach.tolerances",
+        "reach.targets",
+        "reach.arm_parts",
+        "reach.aligned_joints",
+        "reach.ways",
+    ),
     ("reach.branches", "reach.bounds", "reach.durations", "reach.family_members"),
     ("reach.redundant_families",),
     ("reach.verdicts",),

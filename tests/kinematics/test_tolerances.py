@@ -4,8 +4,6 @@ import ast
 import re
 from pathlib import Path
 
-import pytest
-
 from kinematics import tolerances
 from kinematics.tolerances import (
     AXES_MEET,
@@ -28,41 +26,47 @@ from kinematics.tolerances import (
     SUPPORT_NEAR,
 )
 
-NAMES = [name for name in vars(tolerances) if name.isupper()]
 PACKAGES = Path(tolerances.__file__).parents[1]
+MODULES = sorted(Path(tolerances.__file__).parent.rglob("tolerances.py"))
 
 
-def reasons() -> dict[str, str]:
-    """Return the docstring under each constant."""
-    body = ast.parse(Path(tolerances.__file__).read_text(encoding="utf-8")).body
+def reasons(module: Path) -> dict[str, str]:
+    """Return the docstring under each constant; those on lines that follow each other share one."""
     found: dict[str, str] = {}
-    for node, following in zip(body, [*body[1:], None], strict=True):
-        if isinstance(node, ast.Assign) and isinstance(node.targets[0], ast.Name):
-            says = isinstance(following, ast.Expr) and isinstance(following.value, ast.Constant)
-            found[node.targets[0].id] = str(following.value.value) if says else ""  # type: ignore[union-attr]
+    reason, begins = "", 0
+    for node in reversed(ast.parse(module.read_text(encoding="utf-8")).body):
+        if node.end_lineno is None or node.end_lineno + 1 != begins:
+            reason = ""
+        if isinstance(node, ast.Expr) and isinstance(node.value, ast.Constant):
+            reason = str(node.value.value)
+        elif isinstance(node, ast.Assign) and isinstance(node.targets[0], ast.Name):
+            found[node.targets[0].id] = reason
+        begins = node.lineno
     return found
 
 
+REASONS = [(module, *each) for module in MODULES for each in reasons(module).items()]
+
+
 def test_all_are_found() -> None:
-    assert sorted(reasons()) == sorted(NAMES)
-    assert len(NAMES) >= 25
+    named = [name for name in vars(tolerances) if name.isupper()]
+    assert sorted(reasons(Path(tolerances.__file__))) == sorted(named)
+    assert len(MODULES) >= 5
+    assert len(REASONS) >= 150
 
 
-@pytest.mark.parametrize("name", NAMES)
-def test_every_threshold_has_its_reason(name: str) -> None:
-    assert len(reasons()[name].split()) >= 6
+def test_every_threshold_has_its_reason() -> None:
+    without = [(module, name) for module, name, reason in REASONS if len(reason.split()) < 6]
+    assert without == []
 
 
-@pytest.mark.parametrize("name", NAMES)
-def test_every_threshold_is_used(name: str) -> None:
-    users = [
-        path
-        for package in ("kinematics", "service")
-        for path in (PACKAGES / package).rglob("*.py")
-        if path.name != "tolerances.py"
-        and re.search(rf"\b{name}\b", path.read_text(encoding="utf-8"))
-    ]
-    assert users
+def test_every_threshold_is_used() -> None:
+    words: set[str] = set()
+    for package in ("kinematics", "service"):
+        for path in (PACKAGES / package).rglob("*.py"):
+            if path.name != "tolerances.py":
+                words.update(re.findall(r"\w+", path.read_text(encoding="utf-8")))
+    assert [name for _, name, _ in REASONS if name not in words] == []
 
 
 def test_numbers_of_the_contract() -> None:

@@ -27,8 +27,9 @@ from kinematics.reach.targets import (
     Checks,
     Targets,
 )
+from kinematics.reach.tolerances import EXACT_REACH
 from kinematics.table import Travel
-from kinematics.tolerances import EXACT_REACH, TARGET_ANGLE, TARGET_POSITION
+from kinematics.tolerances import TARGET_ANGLE, TARGET_POSITION
 from kinematics.travel_limits import travel_margin
 from tests.kinematics.example_arms import AT_FLANGE
 from tests.kinematics.inverse.seeds import fresh

@@ -8,8 +8,8 @@ from kinematics.inverse.screws import screws_of
 from kinematics.inverse.several import picked
 from kinematics.reach.branches import Branches
 from kinematics.reach.checks import Reacher
+from kinematics.reach.tolerances import EXACT_REACH
 from kinematics.table import Travel
-from kinematics.tolerances import EXACT_REACH
 from tests.kinematics.example_arms import (
     AT_FLANGE,
     PLANAR,

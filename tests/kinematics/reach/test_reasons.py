@@ -18,8 +18,8 @@ from kinematics.reach.targets import (
     Target,
     Targets,
 )
+from kinematics.reach.tolerances import MOST_SPANNED
 from kinematics.rotations import rotation_about
-from kinematics.tolerances import MOST_SPANNED
 from tests.kinematics.example_arms import (
     AT_FLANGE,
     PLANAR,

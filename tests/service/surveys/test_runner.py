@@ -88,6 +88,31 @@ class ThreadsPool:
         """Leave the threads: what they do ends of itself."""
 
 
+class DyingWhenAskedAgain(ThreadsPool):
+    """Its processes end once, after their first chunk has come back."""
+
+    room = 1
+
+    def executor(self) -> Executor:
+        self.started += 1
+        return AnswersOnce() if self.started == 1 else self._threads
+
+
+class AnswersOnce(DyingExecutor):
+    """The first task is done; whoever hands another over finds the processes dead."""
+
+    def __init__(self) -> None:
+        self._asked = 0
+
+    def submit(self, task: Callable[..., Any], /, *given: Any, **named: Any) -> Future[Any]:
+        self._asked += 1
+        if self._asked > 1:
+            raise BrokenExecutor("killed")
+        future: Future[Any] = Future()
+        future.set_result(task(*given, **named))
+        return future
+
+
 class Bench:
     """A store in memory, a kind, a pool and the thread under test."""
 
@@ -142,6 +167,41 @@ def test_all_pieces_are_made_once_and_kept(bench: Bench) -> None:
     assert sorted(bench.kind.made) == list(range(20))
     assert found.started_at is not None
     assert found.finished_at is not None
+
+
+def test_the_next_is_made_while_the_last_is_written(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    bench.pool.room = 1
+    bench.add()
+    begun: list[int] = []
+    bench.kind.meanwhile = begun.append
+    keep, waited = bench.store.keep, []
+
+    def slowly(survey: str, made: Sequence[MadePiece]) -> bool:
+        last = made[-1].number
+        deadline = time.monotonic() + 10
+        while last < 19 and max(begun) <= last and time.monotonic() < deadline:
+            time.sleep(0.001)
+        waited.append(last == 19 or max(begun) > last)
+        return keep(survey, made)
+
+    monkeypatch.setattr(bench.store, "keep", slowly)
+    bench.runner.wake()
+    assert bench.over().state == "succeeded"
+    assert all(waited)
+    assert sorted(bench.kind.made) == list(range(20))
+
+
+def test_what_came_back_before_a_death_is_not_made_again(bench: Bench) -> None:
+    bench.pool = pool = DyingWhenAskedAgain()
+    bench.runner = Runner(bench.store, None, pool)  # type: ignore[arg-type]
+    bench.add()
+    bench.runner.wake()
+    found = bench.over()
+    assert (found.state, found.done) == ("succeeded", 60)
+    assert pool.started > 1
+    assert sorted(bench.kind.made) == list(range(20))
 
 
 @pytest.mark.skipif(sys.platform != "linux", reason="elsewhere threads have no own priority")

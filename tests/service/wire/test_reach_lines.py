@@ -71,7 +71,7 @@ def test_lines_can_be_read_back() -> None:
 
 
 def test_each_line_has_the_place_of_its_target() -> None:
-    # The first target's second posture, then two targets without one.
+    # The first target's two postures, then a target without one.
     several = replace(columns(), ranks=np.array([1, 2, 0]))
     assert several.targets.tolist() == [0, 0, 1]
     text = (reach_head(2) + reach_lines(several, PLACES[:2], SAME)).decode("utf-8")
