@@ -80,7 +80,7 @@ class ResultItem(Open):
 
     `reason` as in reach checks. A target that could not be used has a `problem`, whose `pointer`
     leads into the target, and `reason` with its sentence. `position` is what was asked for, in
-    units and frame of the survey; null where that cannot be used, or was not kept in former days.
+    units and frame of the survey; null where that cannot be used.
     """
 
     name: str | None
